@@ -1,0 +1,1 @@
+"""From what the user typed to a `Case`: read, check, understand, write."""

@@ -1,0 +1,141 @@
+"""A case as understood: frozen, SI, every value with the place it came from."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+
+from actuator_sizing.core.mechanisms import Mechanism
+from actuator_sizing.core.motion_laws import Phase
+from actuator_sizing.core.parameters import (
+    DriveParameters,
+    GearheadParameters,
+    MotorParameters,
+    Surroundings,
+)
+from actuator_sizing.errors import Problem
+
+MISSING, STATED, DERIVED, ASSUMED = 0, 1, 2, 3
+ORIGINS = ("missing", "stated", "derived", "assumed")
+
+
+@dataclass(frozen=True)
+class Entry:
+    """One input as entered and as understood."""
+
+    table: str
+    row: int | None  # as the user's spreadsheet shows it; None for a default nobody typed
+    label: str  # part name, segment name or axis quantity
+    column: str
+    as_entered: str  # with the unit of the heading; empty when not entered
+    value_si: float | str | None
+    unit: str  # SI unit of value_si, empty for text
+    origin: str  # stated, derived, assumed
+    rule: str = ""  # how it was derived or why it was assumed
+    source: str = ""
+
+
+@dataclass(frozen=True)
+class Segment:
+    """One row of the duty cycle. Displacement, speeds and efforts are along the coordinate of the
+    mechanism: m, m/s, N for a linear axis; rad, rad/s, N·m for a rotary one."""
+
+    row: int
+    name: str
+    law: str
+    phases: tuple[Phase, ...]
+    start_s: float
+    duration_s: float
+    payload: float  # kg, or kg·m² for a rotary load
+    process_effort: float  # positive opposes positive motion
+    brake_closed: bool
+    note: str = ""
+
+
+@dataclass(frozen=True)
+class Limit:
+    """How one check is judged."""
+
+    check: str
+    applies: str  # "yes", "no" or "advice"
+    allowed_utilisation: float
+    recommended_reserve: float
+
+
+@dataclass(frozen=True)
+class Tolerance:
+    """Distribution of one input quantity; kept for the robustness study."""
+
+    row: int
+    quantity: str
+    distribution: str
+    width: float
+    relative: bool
+
+
+@dataclass(frozen=True)
+class Catalog:
+    """One catalog table in columns: numbers in SI with their origin, text as typed.
+
+    `values[column]` is a float array (NaN where missing) or an object array of str;
+    `origins[column]` holds MISSING, STATED, DERIVED or ASSUMED per row;
+    `rules[column]` holds, per row that is derived or assumed, the rule in words.
+    """
+
+    table: str
+    names: tuple[str, ...]
+    rows: NDArray[np.int64]
+    values: Mapping[str, NDArray[np.float64] | NDArray[np.object_]]
+    origins: Mapping[str, NDArray[np.int8]]
+    headings: Mapping[str, str]  # column key -> heading as typed
+    as_entered: Mapping[str, NDArray[np.object_]]  # raw text per row
+    rules: Mapping[str, Mapping[int, str]] = field(default_factory=dict)
+
+    def __len__(self) -> int:
+        return len(self.names)
+
+
+@dataclass(frozen=True)
+class Case:
+    """Everything known about one axis."""
+
+    name: str
+    path: Path | None
+    mechanism: Mechanism
+    surroundings: Surroundings
+    segments: tuple[Segment, ...]
+    motors: Catalog
+    gearheads: Catalog  # row 0 is direct drive (name "") unless the case excludes it
+    drives: Catalog
+    motor_parameters: MotorParameters
+    gearhead_parameters: GearheadParameters
+    drive_parameters: DriveParameters
+    limits: Mapping[str, Limit]
+    tolerances: tuple[Tolerance, ...]
+    options: Mapping[str, float | str | None]  # rank by, number to detail, inertia-ratio advice, revision, ...
+    entries: tuple[Entry, ...]  # axis, duty cycle and limits; catalog entries come from `catalog_entries`
+    problems: tuple[Problem, ...]  # warnings and notes only; errors never make a Case
+    fingerprint: str
+
+    @property
+    def cycle_duration_s(self) -> float:
+        """Duration of one cycle. [s]"""
+        return sum(segment.duration_s for segment in self.segments)
+
+    def catalog_entries(self, table: str, index: int) -> tuple[Entry, ...]:
+        """Every known value of one catalog row, as entered and as understood.
+
+        Parameters
+        ----------
+        table : str
+            ``"motors"``, ``"gearheads"`` or ``"drives"``.
+        index : int
+            Row index into the catalog (0-based). [-]
+        """
+        from actuator_sizing.case.understanding import entries_of_row
+
+        return entries_of_row(getattr(self, table), index)

@@ -1,0 +1,190 @@
+"""What every mechanism tells the sizing chain: its geometry, its effort, its losses."""
+
+from __future__ import annotations
+
+from abc import ABC, abstractmethod
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import ClassVar, Self
+
+import numpy as np
+from numpy.typing import NDArray
+
+FloatArray = NDArray[np.float64]
+
+GRAVITY_M_S2 = 9.80665  # standard acceleration of gravity, CGPM 1901
+
+LINEAR, ROTARY = "linear", "rotary"
+
+
+@dataclass(frozen=True)
+class Parameter:
+    """One quantity that a mechanism takes from the `axis` table.
+
+    Attributes
+    ----------
+    name : str
+        Name in the `axis` table, e.g. ``"lead"``; the field is the same with underscores.
+    kind : str
+        Kind of quantity, a key of `actuator_sizing.units.KINDS`.
+    help : str
+        One line for the template and the documentation.
+    default : float or None
+        Value assumed when the row is missing; None means required unless `optional`.
+    minimum, maximum : float
+        Allowed range in SI, inclusive.
+    positive : bool
+        Zero is not allowed either.
+    optional : bool
+        May be missing without a default; the mechanism says what follows.
+    example : str
+        Filled-in example for the template, as a user would type it, with its unit after a blank.
+    """
+
+    name: str
+    kind: str
+    help: str
+    default: float | None = None
+    minimum: float = -np.inf
+    maximum: float = np.inf
+    positive: bool = False
+    optional: bool = False
+    example: str = ""
+
+    @property
+    def field(self) -> str:
+        """Name of the attribute that holds the value."""
+        return self.name.replace(" ", "_").replace("-", "_")
+
+
+@dataclass(frozen=True)
+class Efforts:
+    """Effort at the load along +x by cause [N or N·m]; the total is what the transmission must give."""
+
+    inertia: FloatArray
+    gravity: FloatArray
+    friction: FloatArray
+    process: FloatArray
+
+    @property
+    def total(self) -> FloatArray:
+        """Sum of all causes."""
+        return self.inertia + self.gravity + self.friction + self.process
+
+
+class Mechanism(ABC):
+    """A one-degree-of-freedom chain from the load coordinate x to the driven shaft φ.
+
+    Subclasses are frozen dataclasses whose fields are the `parameters` in SI. A constant-ratio mechanism
+    only states `shaft_ratio`; one whose ratio changes along the stroke overrides `ratio_at`.
+    """
+
+    name: ClassVar[str]
+    help: ClassVar[str]
+    coordinate: ClassVar[str]  # LINEAR (x in m) or ROTARY (x in rad)
+    drives_linear_motor: ClassVar[bool] = False
+    parameters: ClassVar[tuple[Parameter, ...]]
+
+    @classmethod
+    def from_values(cls, values: Mapping[str, float | None]) -> Self:
+        """Build from SI values keyed by parameter name; a missing optional value is NaN.
+
+        Raises
+        ------
+        KeyError
+            If a required value is missing; the reader reports that before it calls.
+        """
+        arguments: dict[str, float] = {}
+        for parameter in cls.parameters:
+            value = values.get(parameter.name)
+            if value is None:
+                value = parameter.default
+            if value is None and parameter.optional:
+                value = np.nan
+            if value is None:
+                raise KeyError(parameter.name)
+            arguments[parameter.field] = float(value)
+        return cls(**arguments)
+
+    # -- geometry -----------------------------------------------------------------------------------
+    @abstractmethod
+    def ratio_at(self, position: FloatArray) -> tuple[FloatArray, FloatArray]:
+        """dφ/dx and d²φ/dx² at `position`."""
+
+    # -- load ---------------------------------------------------------------------------------------
+    @abstractmethod
+    def efforts(
+        self,
+        position: FloatArray,
+        speed: FloatArray,
+        acceleration: FloatArray,
+        direction: FloatArray,
+        payload: FloatArray,
+        process: FloatArray,
+    ) -> Efforts:
+        """Effort along +x by cause.
+
+        `direction` is the sign of motion on the smooth piece (0 at rest, where friction does not act);
+        all arguments broadcast together.
+        """
+
+    @abstractmethod
+    def inertia_at_shaft(self, payload: FloatArray) -> FloatArray:
+        """Largest inertia of load and mechanism at the driven shaft for a payload. [kg·m², or kg]"""
+
+    # -- losses between load and driven shaft -------------------------------------------------------
+    @property
+    def efficiency_forward(self) -> float:
+        """Power to the load over power at the driven shaft, when motoring. [-]"""
+        return 1.0
+
+    @property
+    def efficiency_back(self) -> float:
+        """Power at the driven shaft over power from the load, when the load drives; ≤ 0 self-locking. [-]"""
+        return 1.0
+
+    @property
+    def shaft_inertia_kg_m2(self) -> float:
+        """Inertia of what turns with the driven shaft, behind the stage's efficiency. [kg·m²]"""
+        return 0.0
+
+    @property
+    def shaft_friction_nm(self) -> float:
+        """Coulomb friction of bearings and seals at the driven shaft. [N·m]"""
+        return 0.0
+
+    @property
+    def specific_gravity_m_s2(self) -> float:
+        """Gravity along +x that acts on the motor's own moving mass (linear motors). [m/s²]"""
+        return 0.0
+
+    @property
+    def specific_friction_m_s2(self) -> float:
+        """Guide friction per motor mass (linear motors on the same guide). [m/s²]"""
+        return 0.0
+
+
+def back_driving_efficiency(efficiency_forward: float) -> float:
+    """Back-driving efficiency for equal friction loss both ways: ``2 − 1/η``.
+
+    Parameters
+    ----------
+    efficiency_forward : float
+        Forward efficiency, 0 < η ≤ 1. [-]
+
+    Returns
+    -------
+    float
+        Back-driving efficiency; zero or negative means self-locking. [-]
+
+    Notes
+    -----
+    The loss torque, taken equal in both directions at the same load torque, is ``T (1/η − 1)``.
+    Derived from first principles; common practice.
+
+    Examples
+    --------
+    >>> back_driving_efficiency(0.9)
+    0.8889
+    """
+    return 2.0 - 1.0 / efficiency_forward

@@ -1,0 +1,1 @@
+"""The chain: demand, screening, evaluation, checks, ranking, comparison."""

@@ -1,0 +1,183 @@
+"""What a comparison answers: frozen, SI, ready for every writer. No number is born after this point."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    from pathlib import Path
+
+    import pandas as pd
+
+    from actuator_sizing.case.model import Case
+    from actuator_sizing.sizing.demand import Demand
+
+PASSES = "passes"
+LOW_RESERVE = "passes, low reserve"
+FAILS = "fails"
+NOT_CHECKED = "not checked"
+VERDICTS = (PASSES, LOW_RESERVE, NOT_CHECKED, FAILS)
+
+
+@dataclass(frozen=True)
+class CheckResult:
+    """One check of one set.
+
+    `demand`, `capacity` and `utilisation` are None where the check could not be made; `missing` then names
+    the data to ask the supplier for. `at_time_s` is None where no instant governs.
+    """
+
+    check: str  # key, e.g. "winding_temperature"
+    title: str  # as printed, e.g. "Winding temperature"
+    group: str  # "motor", "drive", "gearhead", "axis"
+    demand: float | None
+    capacity: float | None
+    unit: str  # SI unit of demand and capacity
+    utilisation: float | None
+    allowed: float  # allowed utilisation
+    recommended_reserve: float
+    verdict: str
+    at_time_s: float | None
+    segment: str | None
+    formula: str
+    source: str
+    working: str  # the formula with the numbers put in, so that a calculator confirms it
+    missing: tuple[str, ...] = ()
+    inputs: tuple[tuple[str, str], ...] = ()  # (input used, origin)
+    is_advice: bool = False
+
+    @property
+    def margin(self) -> float | None:
+        """capacity/demand − 1, None where not known."""
+        if self.utilisation is None or self.utilisation == 0.0:
+            return None
+        return 1.0 / self.utilisation - 1.0
+
+
+@dataclass(frozen=True)
+class SetDetail:
+    """Curves of one set for figures and tables; every column name ends in its SI unit."""
+
+    #: over one cycle in periodic steady state, with both one-sided values at every jump: time_s, segment,
+    #: position, speed, acceleration (load coordinate), shaft_torque_nm (driven shaft), motor_speed_rad_s,
+    #: motor_torque_nm (air gap), motor_shaft_torque_nm, current_a (motor's basis), voltage_v,
+    #: torque by cause at the motor: inertia_load_nm inertia_rotor_nm gravity_nm friction_nm process_nm losses_nm
+    cycle: pd.DataFrame
+    #: winding_degc and housing_degc against time_s over one cycle in periodic steady state (None: no equilibrium)
+    periodic_temperature: pd.DataFrame | None
+    #: the same from cold (both at ambient) until periodic or until past the limit: time_s, winding_degc,
+    #: housing_degc and, where it ripples, winding_low_degc, winding_high_degc (None: data missing)
+    warm_up: pd.DataFrame | None
+    #: against speed_rad_s: torque_peak_min_bus_nm, torque_peak_nominal_bus_nm, torque_peak_max_bus_nm,
+    #: torque_continuous_nm (NaN where out of reach or not known), all air-gap torque
+    envelope: pd.DataFrame
+    #: voltage step of motor plus load: time_s, current_a, speed_rad_s (motor side)
+    step_response: pd.DataFrame | None
+    #: levels for limit lines, e.g. motor_peak_current_a, drive_peak_current_a, drive_continuous_current_a,
+    #: speed_max_rad_s, winding_limit_degc, ambient_degc, voltage_available_v (NaN: not known)
+    levels: Mapping[str, float]
+
+
+@dataclass(frozen=True)
+class SetResult:
+    """One motor + gearhead + drive, evaluated exactly."""
+
+    rank: int
+    motor: str
+    gearhead: str | None  # None: direct drive
+    ratio: float
+    drive: str
+    verdict: str
+    governing_check: str  # key of the check with the highest utilisation against its allowed value
+    price: float | None
+    mass_kg: float | None
+    quantities: Mapping[str, Any]
+    checks: tuple[CheckResult, ...]
+    motor_index: int
+    gearhead_index: int
+    drive_index: int
+    detail: SetDetail | None = None
+    levers: tuple[Mapping[str, Any], ...] = ()
+
+    @property
+    def label(self) -> str:
+        """Motor, gearhead and drive in one line."""
+        return " + ".join([self.motor, self.gearhead or "direct", self.drive])
+
+    def check(self, key: str) -> CheckResult:
+        """The result of one check by its key.
+
+        Raises
+        ------
+        KeyError
+            If the check does not apply to this set.
+        """
+        for result in self.checks:
+            if result.check == key:
+                return result
+        raise KeyError(key)
+
+
+@dataclass(frozen=True)
+class Rejections:
+    """Why sets lost, over all sets of the catalogs."""
+
+    sets_total: int  # every motor x gearhead x drive combination
+    incompatible: int  # drive cannot commutate the motor, or motor does not fit the mechanism
+    screened: int  # compared by bounds
+    rejected: int  # at least one check cannot pass
+    by_check: Mapping[str, int]  # governing check -> number of rejected sets
+    survivors: int  # might pass by bounds
+    confirmed_passing: int  # pass by exact evaluation
+    evaluated: int  # evaluated exactly
+    complete: bool  # every survivor was evaluated exactly
+
+
+@dataclass(frozen=True)
+class Comparison:
+    """The answer: ranked sets, the reasons of the losers, and the demand they were held against."""
+
+    case: Case
+    demand: Demand
+    ranked_by: str
+    sets: tuple[SetResult, ...]  # best first: passing sets, then the nearest losers
+    rejections: Rejections
+    candidates: pd.DataFrame  # one row per listed candidate: motor, gearhead, ratio, drive, verdict, ...
+    cycle: Mapping[str, Any]  # cycle quantities of results.json
+    assumptions: tuple[tuple[str, str], ...] = ()  # (subject, what was assumed or derived)
+    questions: tuple[tuple[str, str, str], ...] = field(default=())  # (part, data missing, check not made)
+    version: str = ""
+
+    @property
+    def best(self) -> SetResult:
+        """The leading set; a loser if none passes."""
+        return self.sets[0]
+
+    @property
+    def passes(self) -> bool:
+        """Whether a set passes every check."""
+        return bool(self.sets) and self.sets[0].verdict in (PASSES, LOW_RESERVE)
+
+    def write_report(self, folder: str | Path) -> tuple[Path, ...]:
+        """Write report, tables, figures and results into `folder`; whole or not at all.
+
+        Parameters
+        ----------
+        folder : str or Path
+            Output folder; made if missing.
+
+        Returns
+        -------
+        tuple of Path
+            The files written.
+
+        Raises
+        ------
+        OutputError
+            If a file cannot be written; what was there before is untouched.
+        """
+        from actuator_sizing.report import write_report
+
+        return write_report(self, folder)
