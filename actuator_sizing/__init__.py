@@ -1,0 +1,60 @@
+"""Choose the motor, gearhead, drive and supply of a motion axis, and defend the choice.
+
+Examples
+--------
+::
+
+    import actuator_sizing as act
+
+    case = act.read_case("catalogs_demo/tray_lift")
+    comparison = act.compare(case)
+    comparison.best.checks
+    comparison.write_report("reports/tray_lift")
+"""
+
+from __future__ import annotations
+
+from importlib import import_module
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    from actuator_sizing.case.audit import audit_case
+    from actuator_sizing.case.converting import convert_case
+    from actuator_sizing.case.reading import check_case, read_case
+    from actuator_sizing.case.writing import start_case
+    from actuator_sizing.sizing import compare
+
+__version__ = "0.1.0"
+
+__all__ = [
+    "__version__",
+    "audit_case",
+    "check_case",
+    "compare",
+    "convert_case",
+    "read_case",
+    "start_case",
+]
+
+# Where each public name lives. They are imported on first use, so that `import actuator_sizing` and the
+# help page of the command line stay fast.
+_HOMES = {
+    "audit_case": "actuator_sizing.case.audit",
+    "check_case": "actuator_sizing.case.reading",
+    "compare": "actuator_sizing.sizing",
+    "convert_case": "actuator_sizing.case.converting",
+    "read_case": "actuator_sizing.case.reading",
+    "start_case": "actuator_sizing.case.writing",
+}
+
+
+def __getattr__(name: str) -> Any:
+    if name in _HOMES:
+        value = getattr(import_module(_HOMES[name]), name)
+        globals()[name] = value
+        return value
+    raise AttributeError(f"module '{__name__}' has no attribute '{name}'")
+
+
+def __dir__() -> list[str]:
+    return sorted(set(globals()) | set(__all__))
