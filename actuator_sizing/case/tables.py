@@ -1,0 +1,295 @@
+"""Every table, column and word of a case, declared once.
+
+The reader, the template writer, the audit and the documentation of columns all read these declarations.
+Catalog columns are declared in `catalog_columns`; bounds are SI.
+"""
+
+from __future__ import annotations
+
+from functools import cache
+
+from actuator_sizing.case.catalog_columns import DRIVE_COLUMNS, GEARHEAD_COLUMNS, MOTOR_COLUMNS
+from actuator_sizing.case.columns import (
+    TEXT,
+    UNITLESS_KINDS,
+    WORDS,
+    YES_NO,
+    Column,
+    Table,
+    find,
+    fold,
+    key_of,
+    nearest,
+)
+from actuator_sizing.core.mechanisms import MECHANISMS, Mechanism, Parameter
+
+CHECK_NAMES: tuple[tuple[str, str], ...] = (
+    ("speed_torque", "peak torque over speed"),
+    ("rms_current", "RMS current"),
+    ("winding_temperature", "winding temperature"),
+    ("motor_peak_current", "motor peak current"),
+    ("motor_speed", "motor speed"),
+    ("voltage", "voltage"),
+    ("drive_continuous_current", "drive continuous current"),
+    ("drive_peak_current", "drive peak current"),
+    ("drive_peak_time", "drive peak time"),
+    ("drive_bus_voltage", "drive bus voltage range"),
+    ("gearhead_equivalent_torque", "gearhead equivalent torque"),
+    ("gearhead_peak_torque", "gearhead peak torque"),
+    ("gearhead_mean_speed", "gearhead mean input speed"),
+    ("gearhead_maximum_speed", "gearhead maximum input speed"),
+    ("inertia_ratio", "inertia ratio"),
+)
+
+ADVICE_CHECKS = ("inertia_ratio",)  # judged as advice unless the limits table says otherwise
+DEFAULT_ALLOWED_UTILISATION = 1.0
+DEFAULT_RECOMMENDED_RESERVE = 0.1
+RANKINGS = ("price", "mass", "reserve", "energy")
+ABSOLUTE_ZERO_DEGC = -273.15
+
+LAW_WORDS = (
+    "trapezoid",
+    "triangular",
+    "jerk-limited",
+    "3-4-5 polynomial",
+    "4-5-6-7 polynomial",
+    "cycloidal",
+    "modified sine",
+    "modified trapezoid",
+    "simple harmonic",
+    "constant speed",
+    "speed ramp",
+    "dwell",
+)
+
+# -- axis: one quantity per row ---------------------------------------------------------------------------
+
+AXIS_COLUMNS = (
+    Column("quantity", TEXT, "name of the quantity", required=True, example="moving mass"),
+    Column("value", TEXT, "number or word", required=True, example="18"),
+    Column("unit", TEXT, "unit of the number; empty for words and plain numbers", example="kg"),
+    Column("source", TEXT, "where the value comes from: drawing, measurement, standard", example="drawing"),
+)
+
+COMMON_QUANTITIES = (
+    Column("mechanism", WORDS, "what carries the load from the driven shaft", required=True,
+           words=tuple(MECHANISMS), example="ball screw"),
+    Column("title", TEXT, "name of the axis as printed on the report", example="Tray lift"),
+    Column("revision", TEXT, "revision of this specification", example="A"),
+    Column("prepared by", TEXT, "who stands behind the numbers", example=""),
+    Column("ambient temperature", "temperature", "air around the motor, in the hottest room", default=40.0,
+           assumed="40 °C, the usual reference site", minimum=-60.0, maximum=200.0, example="40", unit="°C"),
+    Column("altitude", "length", "height above sea level; cooling weakens above 1000 m", default=0.0,
+           assumed="at or below 1000 m", minimum=-500.0, maximum=9000.0, example="200", unit="m"),
+    Column("nominal bus voltage", "voltage", "DC bus voltage as planned", required=True, positive=True,
+           maximum=1.0e5, example="320", unit="V"),
+    Column("minimum bus voltage", "voltage", "lowest DC bus voltage under load", positive=True, maximum=1.0e5,
+           assumed="nominal bus voltage −10 %", example="288", unit="V"),
+    Column("maximum bus voltage", "voltage", "highest DC bus voltage from the supply", positive=True,
+           maximum=1.0e5, assumed="nominal bus voltage +10 %", example="352", unit="V"),
+    Column("modulation limit", "ratio", "largest line-to-line peak voltage over bus voltage", default=0.95,
+           assumed="linear range with a reserve for control", positive=True, maximum=1.2, example="95",
+           unit="%"),
+    Column("judged winding temperature", "temperature", "winding temperature at which voltage and peak "
+           "torque "
+           "are judged (default: the winding limit of each motor)", minimum=-60.0, maximum=400.0, example="",
+           unit="°C"),
+    Column("current loop rise time", "time", "time in which the drive can change the current at a step of "
+           "acceleration", default=1.0e-3, assumed="common for a digital current loop", positive=True,
+           maximum=10.0, example="1", unit="ms"),
+    Column("bus capacitance", "capacitance", "capacitance on the DC bus besides the drive's own", minimum=0.0,
+           example="680", unit="µF"),
+    Column("chopper threshold", "voltage", "bus voltage at which the brake chopper switches on",
+           positive=True,
+           example="385", unit="V"),
+    Column("brake resistor", "resistance", "resistance of the brake resistor", positive=True, example="40",
+           unit="Ω"),
+    Column("supply feeds back", YES_NO, "whether the supply returns regenerated energy to the mains",
+           default="no", assumed="a rectifier does not feed back", example="no"),
+    Column("catalog folder", TEXT, "folder with shared catalog tables, relative to the case", example=""),
+    Column("direct drive allowed", YES_NO, "whether sets without gearhead are candidates", default="yes",
+           assumed="nothing speaks against it", example="yes"),
+    Column("rank by", WORDS, "what orders the sets that pass", words=RANKINGS, default="price",
+           assumed="cheapest first", example="price"),
+    Column("sets to detail", "count", "how many of the best sets are worked out in detail", default=10.0,
+           assumed="ten", minimum=1.0, maximum=1000.0, example="10"),
+    Column("recommended inertia ratio", "ratio", "load inertia over motor inertia that advice is given "
+           "against",
+           default=10.0, assumed="common practice", positive=True, maximum=1.0e6, example="10"),
+    Column("required life", "time", "operating hours the axis must reach", positive=True, example="20000",
+           unit="h"),
+)  # fmt: skip
+
+
+def _from_parameter(parameter: Parameter) -> Column:
+    """Axis quantity that a mechanism asks for."""
+    value, _, unit = parameter.example.partition(" ")
+    return Column(
+        parameter.name,
+        parameter.kind,
+        parameter.help,
+        required=parameter.default is None and not parameter.optional,
+        default=parameter.default,
+        assumed="default of the mechanism" if parameter.default is not None else "",
+        minimum=parameter.minimum,
+        maximum=parameter.maximum,
+        positive=parameter.positive,
+        example=value,
+        unit=unit,
+    )
+
+
+def mechanism_quantities(mechanism: type[Mechanism]) -> tuple[Column, ...]:
+    """Axis quantities of one mechanism beside the common ones."""
+    return tuple(_from_parameter(parameter) for parameter in mechanism.parameters)
+
+
+def axis_quantities(mechanism: type[Mechanism] | None = None) -> tuple[Column, ...]:
+    """Axis quantities of a case: common ones first, then those of the mechanism.
+
+    Without a mechanism, those of every mechanism are listed (the first declaration of a name counts).
+    """
+    chosen = tuple(MECHANISMS.values()) if mechanism is None else (mechanism,)
+    found = {column.key: column for column in COMMON_QUANTITIES}
+    for each in chosen:
+        for column in mechanism_quantities(each):
+            found.setdefault(column.key, column)
+    return tuple(found.values())
+
+
+# -- duty cycle, limits, tolerances -----------------------------------------------------------------------
+
+DUTY_CYCLE_COLUMNS = (
+    Column("segment", TEXT, "name of the segment", required=True, example="lift"),
+    Column("motion law", WORDS, "how the segment moves", required=True, words=LAW_WORDS, example="trapezoid"),
+    Column("displacement", ("length", "angle"), "signed distance moved in the segment", example=("0.3", "90"),
+           unit=("m", "deg")),
+    Column("end speed", ("linear speed", "angular speed"), "signed speed at the end of a speed ramp, or the "
+           "speed of a constant-speed segment", unit=("m/s", "rpm")),
+    Column("duration", "time", "time the segment takes", positive=True, maximum=1.0e9, example="0.6",
+           unit="s"),
+    Column("maximum speed", ("linear speed", "angular speed"), "limit, not a target", positive=True,
+           unit=("m/s", "rpm")),
+    Column("maximum acceleration", ("linear acceleration", "angular acceleration"), "limit, not a target",
+           positive=True, unit=("m/s²", "rad/s²")),
+    Column("maximum jerk", ("linear jerk", "angular jerk"), "limit, not a target", positive=True,
+           unit=("m/s³", "rad/s³")),
+    Column("acceleration share", "ratio", "part of the duration spent speeding up", minimum=0.0, maximum=1.0,
+           unit="%"),
+    Column("deceleration share", "ratio", "part of the duration spent slowing down", minimum=0.0,
+           maximum=1.0, unit="%"),
+    Column("jerk share", "ratio", "part of the acceleration phase taken by each jerk ramp", minimum=0.0,
+           maximum=1.0, unit="%"),
+    Column("payload", ("mass", "inertia"), "what is carried in this segment beside the moving mass or the "
+           "load "
+           "inertia", default=0.0, assumed="no payload", minimum=0.0, example=("12", "0.2"),
+           unit=("kg", "kg·m²")),
+    Column("process force", ("force", "torque"), "force or torque of the process; positive opposes positive "
+           "motion and keeps its sign when the direction reverses", default=0.0, assumed="no process effort",
+           example=("0", "0"), unit=("N", "N·m"), aliases=("process torque", "process effort")),
+    Column("brake closed", YES_NO, "whether the holding brake carries the load (standstill only)",
+           default="no",
+           assumed="the motor holds", example="no"),
+    Column("note", TEXT, "remark", example=""),
+)  # fmt: skip
+
+LIMIT_COLUMNS = (
+    Column("check", WORDS, "which check", required=True, words=tuple(title for _, title in CHECK_NAMES),
+           example="RMS current"),
+    Column("applies", WORDS, "yes: must pass; advice: reported only; no: left out",
+           words=("yes", "no", "advice"), default="yes", assumed="every check applies", example="yes"),
+    Column("allowed utilisation", "ratio", "demand over capacity that still passes",
+           default=DEFAULT_ALLOWED_UTILISATION, assumed="the full capacity", positive=True, maximum=100.0,
+           example="100", unit="%"),
+    Column("recommended reserve", "ratio", "reserve below which a pass is marked low",
+           default=DEFAULT_RECOMMENDED_RESERVE, assumed="common practice", minimum=0.0, maximum=1.0,
+           example="10", unit="%"),
+)  # fmt: skip
+
+TOLERANCE_COLUMNS = (
+    Column("quantity", TEXT, "name of an axis quantity, or of a motor, gearhead or drive column",
+           required=True,
+           example="moving mass"),
+    Column("distribution", WORDS, "shape of the spread", required=True,
+           words=("normal", "uniform", "triangular"), example="normal"),
+    Column("width", TEXT, "standard deviation of a normal, half width of a uniform or triangular "
+           "distribution",
+           required=True, example="5"),
+    Column("unit", TEXT, "% of the value, or a unit of the quantity", required=True, example="%"),
+    Column("source", TEXT, "where the spread comes from", example="scale tolerance"),
+)  # fmt: skip
+
+TABLES: dict[str, Table] = {
+    table.name: table
+    for table in (
+        Table("axis", "One row is one quantity of the axis: mechanism, masses, friction, supply, "
+              "surroundings.",
+              AXIS_COLUMNS, required=True),
+        Table("duty_cycle", "One row is one segment of the motion; the rows follow each other and repeat.",
+              DUTY_CYCLE_COLUMNS, required=True),
+        Table("motors", "One row is one motor as its data sheet states it.", MOTOR_COLUMNS, required=True,
+              is_catalog=True,
+              one_of=(("rotary", ("torque constant", "back-EMF constant", "speed constant")),
+                      ("linear", ("force constant", "linear back-EMF constant")),
+                      ("rotary", ("continuous current", "continuous torque")),
+                      ("linear", ("continuous current", "continuous force")),
+                      ("", ("winding temperature limit", "thermal class")))),
+        Table("gearheads", "One row is one gearhead with one ratio.", GEARHEAD_COLUMNS, is_catalog=True),
+        Table("drives", "One row is one drive.", DRIVE_COLUMNS, required=True, is_catalog=True),
+        Table("limits", "One row says how one check is judged; checks not listed keep their defaults.",
+              LIMIT_COLUMNS),
+        Table("tolerances", "One row is the spread of one input quantity.", TOLERANCE_COLUMNS),
+    )
+}  # fmt: skip
+
+CATALOG_TABLES = tuple(name for name, table in TABLES.items() if table.is_catalog)
+
+
+@cache
+def quantity_kinds() -> dict[str, Column]:
+    """Every quantity that a tolerance may name: folded name -> its declaration."""
+    found: dict[str, Column] = {}
+    for column in (
+        *axis_quantities(),
+        *MOTOR_COLUMNS,
+        *GEARHEAD_COLUMNS,
+        *DRIVE_COLUMNS,
+        *DUTY_CYCLE_COLUMNS,
+    ):
+        if column.is_number:
+            found.setdefault(fold(column.name), column)
+    return found
+
+
+__all__ = [
+    "ABSOLUTE_ZERO_DEGC",
+    "ADVICE_CHECKS",
+    "AXIS_COLUMNS",
+    "CATALOG_TABLES",
+    "CHECK_NAMES",
+    "COMMON_QUANTITIES",
+    "DEFAULT_ALLOWED_UTILISATION",
+    "DEFAULT_RECOMMENDED_RESERVE",
+    "DRIVE_COLUMNS",
+    "DUTY_CYCLE_COLUMNS",
+    "GEARHEAD_COLUMNS",
+    "LAW_WORDS",
+    "LIMIT_COLUMNS",
+    "MOTOR_COLUMNS",
+    "RANKINGS",
+    "TABLES",
+    "TEXT",
+    "TOLERANCE_COLUMNS",
+    "UNITLESS_KINDS",
+    "WORDS",
+    "YES_NO",
+    "Column",
+    "Table",
+    "axis_quantities",
+    "find",
+    "fold",
+    "key_of",
+    "mechanism_quantities",
+    "nearest",
+    "quantity_kinds",
+]
