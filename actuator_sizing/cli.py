@@ -1,0 +1,255 @@
+"""The command line: parse, call, print, exit status. Nothing here that a notebook could not do."""
+
+from __future__ import annotations
+
+import os
+import sys
+from collections.abc import Callable
+from pathlib import Path
+from typing import Any, NoReturn, TextIO
+
+import click
+
+from actuator_sizing import __version__
+from actuator_sizing.errors import ActuatorSizingError, InputError, OutputError
+
+PASSED, NONE_PASSES, BAD_INPUT, INTERNAL = 0, 1, 2, 3
+INTERRUPTED, BROKEN_PIPE = 130, 141  # 128 + number of the signal, as shells report it
+
+_HELP = {"help_option_names": ["-h", "--help"], "max_content_width": 100}
+
+
+def _remember_debug(context: click.Context, _parameter: click.Parameter, value: bool) -> None:
+    if value:
+        context.find_root().ensure_object(dict)["debug"] = True
+
+
+_debug = click.option(
+    "--debug",
+    is_flag=True,
+    expose_value=False,
+    callback=_remember_debug,
+    help="Show the traceback of an error.",
+)
+
+
+def _case_argument(name: str) -> Callable[[Any], Any]:
+    return click.argument(name, type=click.Path(exists=True, path_type=Path))
+
+
+class _StartCommand(click.Command):
+    """Lists the mechanisms under the help page; they are looked up only when it is shown."""
+
+    def format_epilog(self, _context: click.Context, formatter: click.HelpFormatter) -> None:
+        from actuator_sizing.core.mechanisms import MECHANISMS
+
+        formatter.write_paragraph()
+        with formatter.section("Mechanisms"):
+            formatter.write_dl([(name, mechanism.help) for name, mechanism in MECHANISMS.items()])
+
+
+@click.group(context_settings=_HELP)
+@click.version_option(__version__, prog_name="actuator-sizing")
+@_debug
+def commands() -> None:
+    """Choose the motor, gearhead, drive and supply of a motion axis, and defend the choice.
+
+    A case is a folder of CSV files or one .xlsx workbook. Make one with 'start', fill it in, look it over
+    with 'audit', and size it with 'compare'.
+
+    Exit status: 0 a set passes every check, 1 sized but none passes, 2 bad input or usage,
+    3 fault of the program.
+    """
+
+
+@commands.command(cls=_StartCommand)
+@click.argument("path", type=click.Path(path_type=Path))
+@click.option("--mechanism", metavar="NAME", help="Mechanism of the axis; the choices stand below.")
+@_debug
+def start(path: Path, mechanism: str | None) -> None:
+    """Write a new case to PATH: a workbook if it ends in .xlsx, else a folder of CSV files.
+
+    Every table has its headings with units, the allowed values, hints and filled example rows.
+    """
+    from actuator_sizing.case.writing import start_case
+
+    written = start_case(path) if mechanism is None else start_case(path, mechanism)
+    click.echo(
+        f"Started {_files(len(written))} in {path}" if path.suffix.lower() != ".xlsx" else f"Started {path}"
+    )
+    click.echo(f"Fill it in, then: actuator-sizing audit {path}")
+
+
+@commands.command()
+@_case_argument("case")
+@_debug
+def audit(case: Path) -> int:
+    """Read CASE and look over its data sheets; report every problem at once."""
+    from actuator_sizing.case.audit import audit_case
+    from actuator_sizing.console import count_line, print_problems
+
+    problems = audit_case(case)
+    print_problems(problems)
+    failed = any(problem.severity == "error" for problem in problems)
+    click.echo(count_line(problems), err=failed)
+    return BAD_INPUT if failed else PASSED
+
+
+@commands.command()
+@_case_argument("case")
+@click.option("--out", type=click.Path(file_okay=False, path_type=Path), help="Folder of the report.")
+@click.option(
+    "--rank-by",
+    type=click.Choice(["price", "mass", "reserve", "energy"]),
+    help="What the passing sets are ranked by; default: the case's own, else price.",
+)
+@click.option(
+    "--detail", type=click.IntRange(min=1), metavar="N", help="How many sets to evaluate in detail."
+)
+@click.option("--json", "as_json", is_flag=True, help="Print results.json; no files unless --out is given.")
+@_debug
+def compare(case: Path, out: Path | None, rank_by: str | None, detail: int | None, as_json: bool) -> int:
+    """Size CASE: all motor x gearhead x drive sets, ranked; writes the report.
+
+    The report goes to reports/<case name>/ below the current folder unless --out says otherwise.
+    """
+    from actuator_sizing.case.reading import read_case
+    from actuator_sizing.console import ProgressBar, print_problems, print_summary
+    from actuator_sizing.sizing import compare as compare_sets
+
+    understood = read_case(case)
+    with ProgressBar() as progress:
+        comparison = compare_sets(understood, rank_by=rank_by, detail=detail, progress=progress)
+        written: tuple[Path, ...] = ()
+        if out is not None or not as_json:
+            from actuator_sizing.report import write_report
+
+            written = write_report(comparison, out or _report_folder(understood.name))
+    print_problems(understood.problems, at_most=10)
+    if as_json:
+        from actuator_sizing.report import results_json
+
+        _write_bytes(results_json(comparison))
+    else:
+        print_summary(comparison, written)
+    return PASSED if comparison.passes else NONE_PASSES
+
+
+@commands.command()
+@_case_argument("case")
+@click.argument("target", type=click.Path(path_type=Path))
+@click.option("--force", is_flag=True, help="Replace TARGET if it exists.")
+@_debug
+def convert(case: Path, target: Path, force: bool) -> None:
+    """Rewrite CASE as TARGET, folder to workbook or back, without loss."""
+    from actuator_sizing.case.converting import convert_case
+
+    convert_case(case, target, overwrite=force)
+    click.echo(f"Wrote {target}")
+
+
+@commands.command()
+@click.option(
+    "--out", type=click.Path(dir_okay=False, path_type=Path), help="Write here instead of printing."
+)
+@_debug
+def columns(out: Path | None) -> None:
+    """Print the page of every table and column: units, bounds, words (Markdown)."""
+    from actuator_sizing.case.documentation import columns_page
+
+    page = columns_page().encode()
+    if out is None:
+        _write_bytes(page)
+        return
+    from actuator_sizing.files import write_atomically
+
+    write_atomically(out, page)
+    click.echo(f"Wrote {out}")
+
+
+def main(arguments: list[str] | None = None) -> NoReturn:
+    """Run the command line and leave with its exit status.
+
+    Parameters
+    ----------
+    arguments : list of str or None
+        Command-line arguments; None takes those of the process.
+
+    Raises
+    ------
+    SystemExit
+        Always, with the exit status.
+    """
+    for stream in (sys.stdout, sys.stderr):
+        if hasattr(stream, "reconfigure"):
+            stream.reconfigure(errors="replace")  # an ASCII terminal gets "?" for Ω, not an error
+    state: dict[str, Any] = {}
+    try:
+        status = commands.main(arguments, prog_name="actuator-sizing", standalone_mode=False, obj=state)
+        sys.stdout.flush()
+    except BrokenPipeError:
+        _silence(sys.stdout)
+        status = BROKEN_PIPE
+    except Exception as error:  # the outermost edge: no user ever meets a bare traceback
+        if state.get("debug"):
+            raise
+        status = _tell(error)
+    except KeyboardInterrupt:
+        click.echo("Stopped.", err=True)
+        status = INTERRUPTED
+    sys.exit(status or PASSED)
+
+
+def _tell(error: Exception) -> int:
+    """Say what went wrong on stderr and return the exit status."""
+    if isinstance(error, click.exceptions.Exit):
+        return error.exit_code
+    if isinstance(error, click.Abort):  # how click passes on an interrupt
+        click.echo("Stopped.", err=True)
+        return INTERRUPTED
+    if isinstance(error, click.ClickException):
+        error.show()
+        return BAD_INPUT
+    if isinstance(error, InputError):
+        from actuator_sizing.console import count_line, print_problems
+
+        print_problems(error.problems)
+        click.echo(count_line(error.problems), err=True)
+        return BAD_INPUT
+    if isinstance(error, OutputError | ActuatorSizingError):
+        click.echo(f"Error: {error}", err=True)
+        return BAD_INPUT
+    if isinstance(error, MemoryError):
+        click.echo("Error: not enough memory for this case.", err=True)
+        return BAD_INPUT
+    click.echo(
+        f"Fault of the program, not of the case: {type(error).__name__}: {error}\n"
+        "Run the same command with --debug and report what it prints.",
+        err=True,
+    )
+    return INTERNAL
+
+
+def _silence(stream: TextIO) -> None:
+    """Point a broken stream at nothing, so that the flush at exit does not complain."""
+    try:
+        os.dup2(os.open(os.devnull, os.O_WRONLY), stream.fileno())
+    except (OSError, ValueError):  # no real file behind the stream
+        return
+
+
+def _write_bytes(content: bytes) -> None:
+    sys.stdout.flush()
+    stream = click.get_binary_stream("stdout")
+    stream.write(content if content.endswith(b"\n") else content + b"\n")
+    stream.flush()
+
+
+def _report_folder(name: str) -> Path:
+    """``reports/<case name>`` with what a file system may refuse replaced."""
+    safe = "".join("_" if c in '<>:"/\\|?*' or not c.isprintable() else c for c in name).strip(" .")
+    return Path("reports") / (safe or "case")
+
+
+def _files(count: int) -> str:
+    return f"{count} file" if count == 1 else f"{count} files"
