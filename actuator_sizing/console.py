@@ -58,7 +58,7 @@ def print_problems(problems: Iterable[Problem], at_most: int | None = None) -> N
 
 
 def _sentence(problem: Problem) -> str:
-    """The problem without its table, which stands above it."""
+    """Word a problem without its table, which stands above it."""
     text = str(problem).removeprefix(problem.table)
     return text.lstrip(" ,:") or problem.table
 
@@ -113,7 +113,7 @@ def print_summary(comparison: Comparison, written: Sequence[Path]) -> None:
 
 
 def verdict_sentence(comparison: Comparison) -> str:
-    """The verdict in one or two sentences: which set, which check governs, by how much."""
+    """Say in one or two sentences which set wins, which check governs, and by how much."""
     from actuator_sizing.report.formatting import percent
     from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED
 
@@ -211,7 +211,7 @@ def _print_table(headings: Sequence[str], rows: Sequence[Sequence[str]]) -> None
 
 
 def _report_line(written: Sequence[Path]) -> str:
-    """The page to open first, and where the rest is."""
+    """Name the page to open first, and where the rest is."""
     pages = [path for path in written if path.suffix == ".html"]
     first = pages[0] if pages else written[0]
     others = len(written) - 1
@@ -237,6 +237,15 @@ class ProgressBar:
         return self
 
     def __call__(self, part_done: float, what: str = "") -> None:
+        """Show how far the work is.
+
+        Parameters
+        ----------
+        part_done : float
+            Part of the whole work, 0 to 1. [-]
+        what : str
+            What is being done.
+        """
         if not self._enabled:
             return
         if self._bar is None:
