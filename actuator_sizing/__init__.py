@@ -21,7 +21,7 @@ if TYPE_CHECKING:
     from actuator_sizing.case.audit import audit_case
     from actuator_sizing.case.converting import convert_case
     from actuator_sizing.case.reading import check_case, read_case
-    from actuator_sizing.case.writing import start_case
+    from actuator_sizing.case.starting import start_case
     from actuator_sizing.sizing import compare
 
 __version__ = "0.1.0"
@@ -44,7 +44,7 @@ _HOMES = {
     "compare": "actuator_sizing.sizing",
     "convert_case": "actuator_sizing.case.converting",
     "read_case": "actuator_sizing.case.reading",
-    "start_case": "actuator_sizing.case.writing",
+    "start_case": "actuator_sizing.case.starting",
 }
 
 

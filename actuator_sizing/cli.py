@@ -71,7 +71,7 @@ def start(path: Path, mechanism: str | None) -> None:
 
     Every table has its headings with units, the allowed values, hints and filled example rows.
     """
-    from actuator_sizing.case.writing import start_case
+    from actuator_sizing.case.starting import start_case
 
     written = start_case(path) if mechanism is None else start_case(path, mechanism)
     click.echo(

@@ -1,0 +1,148 @@
+"""Start a new case: every table with headings, units, hints and example rows that size to a result."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from actuator_sizing.case.columns import Column, Table, nearest
+from actuator_sizing.case.documentation import columns_page
+from actuator_sizing.case.tables import (
+    ADVICE_CHECKS,
+    CHECK_NAMES,
+    DUTY_CYCLE_COLUMNS,
+    TABLES,
+    axis_quantities,
+)
+from actuator_sizing.case.writing import Sheet, is_workbook, write_sheets
+from actuator_sizing.core.mechanisms import MECHANISMS, Mechanism
+from actuator_sizing.errors import InputError, Problem
+
+DEFAULT_MECHANISM = "ball screw"
+
+# A linear motor carries the load on a level guide in the example; the others lift it.
+_EXAMPLES = {("linear motor", "inclination"): "0"}
+
+
+def start_case(path: str | Path, mechanism: str = DEFAULT_MECHANISM) -> tuple[Path, ...]:
+    """Write a new case with example rows to fill in.
+
+    Parameters
+    ----------
+    path : str or Path
+        A folder, or a workbook if it ends in ``.xlsx``; nothing of that name may exist, except an
+        empty folder.
+    mechanism : str
+        Word of a mechanism, e.g. ``"ball screw"``.
+
+    Returns
+    -------
+    tuple of Path
+        The files written.
+
+    Raises
+    ------
+    InputError
+        If something of that name exists, or the mechanism is not known.
+    OutputError
+        If a file cannot be written.
+    """
+    path = Path(path)
+    chosen = _mechanism(mechanism)
+    workbook = is_workbook(path)
+    if path.exists() and (workbook or not path.is_dir() or any(path.iterdir())):
+        raise InputError(
+            [
+                Problem(
+                    str(path),
+                    got="a path where something exists already",
+                    allowed="a new name or an empty folder",
+                    remedy="Choose another name; nothing was changed.",
+                )
+            ]
+        )
+    extras = {} if workbook else {"columns.md": columns_page(chosen).encode()}
+    return write_sheets(path, example_sheets(chosen), extras)
+
+
+def _mechanism(word: str) -> type[Mechanism]:
+    if word in MECHANISMS:
+        return MECHANISMS[word]
+    near = nearest(word, MECHANISMS)
+    raise InputError(
+        [
+            Problem(
+                "axis",
+                column="mechanism",
+                got=f"'{word}'",
+                allowed=f"one of: {', '.join(MECHANISMS)}",
+                remedy=f"Did you mean '{near}'?" if near else "Choose one of them.",
+            )
+        ]
+    )
+
+
+def example_sheets(mechanism: type[Mechanism]) -> tuple[Sheet, ...]:
+    """Every table of a new case, from the declarations of its columns."""
+    return tuple(_sheet(table, mechanism) for table in TABLES.values())
+
+
+def _sheet(table: Table, mechanism: type[Mechanism]) -> Sheet:
+    coordinate = mechanism.coordinate
+    machine = "linear" if mechanism.drives_linear_motor else "rotary"
+    if table.is_catalog:
+        coordinate = machine
+    columns = [column for column in table.columns if column.machine in ("", machine)]
+    headings = tuple(column.heading_for(coordinate) for column in columns)
+    rows: list[tuple[str, ...]]
+    if table.name == "axis":
+        rows = _axis_rows(mechanism)
+    elif table.name == "duty_cycle":
+        rows = _duty_cycle_rows(coordinate)
+    elif table.name == "limits":
+        rows = _limit_rows(columns)
+    elif table.name == "gearheads" and mechanism.drives_linear_motor:
+        rows = []  # a linear motor has no gearhead
+    else:
+        rows = [tuple(column.example_for(coordinate) for column in columns)]
+    return Sheet(table.name, (headings, *rows))
+
+
+def _axis_rows(mechanism: type[Mechanism]) -> list[tuple[str, ...]]:
+    rows = []
+    for column in axis_quantities(mechanism):
+        value = column.example_for(mechanism.coordinate)
+        if column.name == "mechanism":
+            value = mechanism.name
+        value = _EXAMPLES.get((mechanism.name, column.name), value)
+        unit = column.unit_for(mechanism.coordinate)
+        hint = f"example: {column.help}" if value else f"left empty: {column.help}"
+        rows.append((column.name, value, unit, hint))
+    return rows
+
+
+def _duty_cycle_rows(coordinate: str) -> list[tuple[str, ...]]:
+    """There, wait, back, wait: a cycle that closes."""
+    example = {column.name: column.example_for(coordinate) for column in DUTY_CYCLE_COLUMNS}
+    wait = {
+        "motion law": "dwell",
+        "duration": "0.4",
+        "payload": example["payload"],
+        "process force": example["process force"],
+        "brake closed": "no",
+    }
+    segments = (
+        example | {"segment": "out"},
+        wait | {"segment": "wait out"},
+        example | {"segment": "back", "displacement": f"-{example['displacement']}"},
+        wait | {"segment": "wait back"},
+    )
+    return [tuple(row.get(column.name, "") for column in DUTY_CYCLE_COLUMNS) for row in segments]
+
+
+def _limit_rows(columns: list[Column]) -> list[tuple[str, ...]]:
+    """Every check with its default, ready to be changed."""
+    rows = []
+    for key, title in CHECK_NAMES:
+        given = {"check": title, "applies": "advice" if key in ADVICE_CHECKS else "yes"}
+        rows.append(tuple(given.get(column.name, column.example_for("rotary")) for column in columns))
+    return rows
