@@ -27,7 +27,7 @@ def _same_side(shown: float, value: float, limit: float, shown_limit: float) -> 
 
 
 def percent(value: float | None, limit: float = 1.0) -> str:
-    """A ratio as a percentage that is never rounded onto or across `limit`.
+    """Write a ratio as a percentage that is never rounded onto or across `limit`.
 
     Parameters
     ----------
@@ -65,7 +65,7 @@ def percent(value: float | None, limit: float = 1.0) -> str:
 
 
 def number(value: float | None, digits: int = 4, limit: float | None = None) -> str:
-    """A number with `digits` significant digits that is never rounded onto or across `limit`.
+    """Write a number with `digits` significant digits that is never rounded onto or across `limit`.
 
     Parameters
     ----------
@@ -135,7 +135,7 @@ def _significant(value: float, digits: int) -> str:
 
 
 def _plain(value: float) -> str:
-    """A limit as text with at least one decimal, without the noise of the last bits."""
+    """Write a limit with at least one decimal, without the noise of the last bits."""
     text = f"{value:.12g}"
     return text if "." in text or "e" in text else f"{text}.0"
 
@@ -191,7 +191,7 @@ def _converted(kind: str, spelling: str) -> DisplayUnit:
 
 
 def display_unit(si_label: str, values: Iterable[Any] = (), fixed: str | None = None) -> DisplayUnit:
-    """The unit in which values of an SI unit are printed.
+    """Choose the unit in which values of an SI unit are printed.
 
     Parameters
     ----------
@@ -211,8 +211,8 @@ def display_unit(si_label: str, values: Iterable[Any] = (), fixed: str | None = 
         return _converted(kind, fixed)
     sizes = [abs(v) for v in values if isinstance(v, int | float) and math.isfinite(v)]
     largest = max(sizes, default=0.0)
-    if largest == 0.0:
-        return _converted(kind, choices[0][0])
+    if largest == 0.0 and si_label in dict(choices):
+        return _converted(kind, si_label)
     for spelling, smallest in choices:
         if largest >= smallest:
             return _converted(kind, spelling)
@@ -220,7 +220,7 @@ def display_unit(si_label: str, values: Iterable[Any] = (), fixed: str | None = 
 
 
 def quantity(value_si: float | None, si_label: str, digits: int = 4) -> str:
-    """Number and unit of the trade in one text, e.g. ``"850 mN·m"``; ``"not known"`` without a value."""
+    """Write number and unit of the trade, e.g. ``"850 mN·m"``; ``"not known"`` without a value."""
     if value_si is None or math.isnan(value_si):
         return NOT_KNOWN
     unit = display_unit(si_label, (value_si,))

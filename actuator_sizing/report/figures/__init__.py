@@ -1,0 +1,74 @@
+"""Figures of the report, one file per family; each function takes results and gives a matplotlib figure."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from actuator_sizing.report.figures.over_time import draw_causes, draw_current, draw_motion
+from actuator_sizing.report.figures.speed_torque import draw_speed_torque
+from actuator_sizing.report.figures.step import draw_step_response
+from actuator_sizing.report.figures.style import house_style, to_svg
+from actuator_sizing.report.figures.temperature import draw_temperature
+from actuator_sizing.report.figures.units import AxisUnits
+from actuator_sizing.report.figures.utilisation import draw_utilisation
+
+if TYPE_CHECKING:
+    from matplotlib.figure import Figure
+
+    from actuator_sizing.sizing.results import Comparison
+
+__all__ = ["DrawnFigure", "draw_figures", "house_style", "to_svg"]
+
+
+@dataclass(frozen=True)
+class DrawnFigure:
+    """One figure as vector graphics.
+
+    Attributes
+    ----------
+    key : str
+        Name of the file and prefix of every id inside.
+    svg : bytes
+        The drawing.
+    """
+
+    key: str
+    svg: bytes
+
+
+def draw_figures(comparison: Comparison) -> dict[str, DrawnFigure]:
+    """Draw every figure that the results allow, keyed by name, in the order of the report.
+
+    Parameters
+    ----------
+    comparison : Comparison
+        The answer; the figures show its best set.
+    """
+    drawn: dict[str, DrawnFigure] = {}
+    with house_style():
+        for key, draw in _figures_of(comparison).items():
+            figure = draw()
+            if figure is not None:
+                drawn[key] = DrawnFigure(key, to_svg(figure, key))
+    return drawn
+
+
+def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]]:
+    figures: dict[str, Callable[[], Figure | None]] = {
+        "utilisation": lambda: draw_utilisation(comparison.sets)
+    }
+    best = comparison.sets[0] if comparison.sets else None
+    detail = best.detail if best is not None else None
+    if best is None or detail is None:
+        return figures
+    units = AxisUnits.of(comparison.case)
+    return {
+        "speed_torque": lambda: draw_speed_torque(best, detail, units),
+        "motion": lambda: draw_motion(detail, units),
+        "torque_by_cause": lambda: draw_causes(detail, units),
+        "current": lambda: draw_current(best, detail),
+        "temperature": lambda: draw_temperature(detail),
+        "step_response": lambda: draw_step_response(best, detail, units),
+    } | figures

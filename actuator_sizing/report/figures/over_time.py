@@ -1,0 +1,164 @@
+"""Curves over one cycle: motion, torque by cause, and current against the limits of drive and motor."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from actuator_sizing.report.figures import style
+from actuator_sizing.report.figures.units import AxisUnits, current_label
+from actuator_sizing.report.formatting import DisplayUnit, display_unit, number
+
+if TYPE_CHECKING:
+    import pandas as pd
+    from matplotlib.axes import Axes
+    from matplotlib.figure import Figure
+
+    from actuator_sizing.sizing.results import SetDetail, SetResult
+
+#: column of the cycle, name in the legend, colour, dashes
+_CAUSES = (
+    ("inertia_load_nm", "load inertia", style.DEMAND, "-"),
+    ("inertia_rotor_nm", "rotor inertia", style.SECOND, (0, (6, 2))),
+    ("gravity_nm", "gravity", style.CONTINUOUS, (0, (3, 1.5))),
+    ("friction_nm", "friction", style.THIRD, (0, (6, 2, 1, 2))),
+    ("process_nm", "process", style.FOURTH, (0, (1.2, 1.4))),
+    ("losses_nm", "losses", style.PEAK_LIMIT, (0, (2, 1, 1, 1, 1, 1))),
+)
+
+
+def draw_motion(detail: SetDetail, units: AxisUnits) -> Figure:
+    """Draw position, speed and acceleration of the load and the air-gap torque of the motor over one cycle.
+
+    Parameters
+    ----------
+    detail : SetDetail
+        Curves of the set.
+    units : AxisUnits
+        Units and words to draw in.
+    """
+    cycle = detail.cycle
+    time, unit = _time(cycle)
+    panels = (
+        ("position", units.position(cycle["position"]), "position"),
+        ("speed", units.speed(), "speed"),
+        ("acceleration", units.acceleration(), "acceleration"),
+        ("motor_torque_nm", units.effort(cycle["motor_torque_nm"]), f"motor {units.effort_word}"),
+    )
+    figure, axes = style.new_axes(5.4, rows=len(panels), left_in=0.95, right_in=0.25, top_in=0.32)
+    for ax, (column, shown, name) in zip(axes, panels, strict=True):
+        ax.plot(time, shown.convert(cycle[column].to_numpy(float)), color=style.DEMAND)
+        ax.axhline(0.0, color=style.QUIET, linewidth=0.8)
+        ax.set_ylabel(f"{name}\n[{shown.label}]")
+        ax.margins(y=0.12)
+    figure.align_ylabels(axes)
+    _mark_segments(axes, cycle, unit)
+    axes[-1].set_xlabel(f"time [{unit.label}], all values positive along +x")
+    return figure
+
+
+def draw_causes(detail: SetDetail, units: AxisUnits) -> Figure:
+    """Draw the air-gap torque over one cycle, split by what asks for it.
+
+    Parameters
+    ----------
+    detail : SetDetail
+        Curves of the set.
+    units : AxisUnits
+        Units and words to draw in.
+    """
+    cycle = detail.cycle
+    time, unit = _time(cycle)
+    total = cycle["motor_torque_nm"].to_numpy(float)
+    parts = [cause for cause in _CAUSES if cause[0] in cycle and np.nanmax(np.abs(cycle[cause[0]])) > 0.0]
+    shown = units.effort([*total, *(v for cause in parts for v in cycle[cause[0]])])
+    figure, (ax,) = style.new_axes(3.5, right_in=0.25, top_in=0.78)
+    ax.fill_between(time, 0.0, shown.convert(total), facecolor="#e3e3e3", edgecolor="none", zorder=1)
+    for column, name, color, dash in parts:
+        values = shown.convert(cycle[column].to_numpy(float))
+        ax.plot(time, values, color=color, linestyle=dash, linewidth=1.4, label=name)
+    ax.plot(time, shown.convert(total), color=style.INK, linewidth=2.0, label="sum (air gap)")
+    ax.axhline(0.0, color=style.QUIET, linewidth=0.8)
+    ax.set_ylabel(f"{units.effort_word} at the motor [{shown.label}]")
+    ax.set_xlabel(f"time [{unit.label}], positive drives +x")
+    _mark_segments([ax], cycle, unit)
+    style.legend_above(ax, columns=4, bbox_to_anchor=(0.0, 1.09))
+    return figure
+
+
+def draw_current(best: SetResult, detail: SetDetail) -> Figure:
+    """Draw the motor current over one cycle with the limits of motor and drive.
+
+    Parameters
+    ----------
+    best : SetResult
+        Set with its quantities.
+    detail : SetDetail
+        Curves and levels of the set, in the motor's kind of ampere.
+    """
+    cycle = detail.cycle
+    time, unit = _time(cycle)
+    current = cycle["current_a"].to_numpy(float)
+    figure, (ax,) = style.new_axes(3.3, top_in=0.32)
+    ax.plot(time, current, color=style.DEMAND)
+    ax.margins(y=0.12)
+    ax.axhline(0.0, color=style.QUIET, linewidth=0.8)
+    rms = best.quantities.get("current_rms_a")
+    levels = [
+        _level(detail, "motor_peak_current_a", "motor peak", style.PEAK_LIMIT, style.LIMIT_DASH),
+        _level(detail, "drive_peak_current_a", "drive peak", style.PEAK_LIMIT, (0, (6, 2, 1, 2))),
+        _level(detail, "drive_continuous_current_a", "drive continuous", style.CONTINUOUS, (0, (3, 1.5))),
+        _level(detail, "motor_continuous_current_a", "motor continuous", style.CONTINUOUS, (0, (6, 2, 1, 2))),
+    ]
+    if rms is not None:
+        levels.append(style.Level(rms, f"RMS of the cycle {number(rms, 3)} A", style.INK, style.QUIET_DASH))
+    style.draw_levels(ax, levels)
+    basis = best.quantities.get("current_basis")
+    ax.set_ylabel(current_label(basis))
+    ax.set_xlabel(f"time [{unit.label}], positive current drives +x; limits hold for both signs")
+    _mark_segments([ax], cycle, unit)
+    return figure
+
+
+def _level(detail: SetDetail, key: str, name: str, color: str, dash: Any) -> style.Level:
+    value = float(detail.levels.get(key, np.nan))
+    return style.Level(value, f"{name} {number(value, 3)} A", color, dash)
+
+
+def _time(cycle: pd.DataFrame) -> tuple[Any, DisplayUnit]:
+    time = cycle["time_s"].to_numpy(float)
+    unit = display_unit("s", (float(time[-1]),))
+    return unit.convert(time), unit
+
+
+def _mark_segments(axes: list[Axes], cycle: pd.DataFrame, unit: DisplayUnit) -> None:
+    """Draw the borders of the segments through every panel and name them over the first one."""
+    time = unit.convert(cycle["time_s"].to_numpy(float))
+    names = cycle["segment"].astype(str).to_numpy()
+    starts = np.concatenate([[0], np.flatnonzero(names[1:] != names[:-1]) + 1])
+    ends = np.append(starts[1:], len(names) - 1)
+    top = axes[0]
+    width_pt = top.get_position().width * top.figure.get_figwidth() * 72.0
+    span = max(float(time[-1] - time[0]), 1e-300)
+    for count, (start, end) in enumerate(zip(starts, ends, strict=True), 1):
+        for ax in axes:
+            if start > 0:
+                ax.axvline(time[start], color=style.QUIET, linewidth=0.6, linestyle=style.QUIET_DASH)
+        room = int((time[end] - time[start]) / span * width_pt / 4.9)  # about 4.9 pt a letter at size 7.5
+        text = style.shorten(names[start], max(room, 1))
+        if len(text) < min(len(names[start]), 5):
+            text = str(count) if room >= 2 else ""
+        top.annotate(
+            text,
+            ((time[start] + time[end]) / 2.0, 1.0),
+            xycoords=("data", "axes fraction"),
+            xytext=(0, 4),
+            textcoords="offset points",
+            ha="center",
+            va="bottom",
+            fontsize=7.5,
+            color=style.QUIET,
+            annotation_clip=False,
+        )
+    axes[0].set_xlim(time[0], time[-1])
