@@ -7,11 +7,11 @@ later product finite.
 from __future__ import annotations
 
 from actuator_sizing.case.columns import TEXT, WORDS, Column
+from actuator_sizing.core.materials import MAGNET_COEFFICIENTS_PER_K, THERMAL_CLASSES
 from actuator_sizing.core.parameters import COMMUTATIONS, CURRENT_BASES
 
 VOLTAGE_BASES = ("DC", "rms line-to-line", "peak line-to-line", "rms phase", "peak phase")
-THERMAL_CLASSES = ("A", "E", "B", "F", "H", "N")
-MAGNET_MATERIALS = ("NdFeB", "ferrite", "SmCo", "AlNiCo", "none", "unknown")
+MAGNET_MATERIALS = (*MAGNET_COEFFICIENTS_PER_K, "none", "unknown")
 
 _AMBIENT_ASSUMED = "25 °C, where nothing is stated"
 
@@ -60,9 +60,10 @@ MOTOR_COLUMNS = (
            minimum=0.0, maximum=1.0e6, machine="rotary", example="0.05", unit="Nm"),
     Column("friction force", "force", "constant (Coulomb) friction of a linear motor", minimum=0.0,
            maximum=1.0e7, machine="linear", example="", unit="N"),
-    Column("viscous friction", ("linear damping", "rotary damping"), "friction and iron loss in proportion "
-           "to "
-           "speed", minimum=0.0, maximum=1.0e6, example=("", "0.02"), unit=("N·s/m", "Nm/krpm")),
+    Column("viscous friction", "rotary damping", "friction and iron loss in proportion to speed", minimum=0.0,
+           maximum=1.0e6, machine="rotary", example="0.02", unit="Nm/krpm"),
+    Column("linear viscous friction", "linear damping", "friction and iron loss of a linear motor in "
+           "proportion to speed", minimum=0.0, maximum=1.0e7, machine="linear", example="", unit="N·s/m"),
     Column("no-load current", "current", "current at the no-load speed; gives the friction if that is not "
            "stated", minimum=0.0, maximum=1.0e5, machine="rotary", example="", unit="A"),
     Column("no-load speed", "angular speed", "speed without load at the nominal voltage", positive=True,
@@ -91,7 +92,7 @@ MOTOR_COLUMNS = (
     Column("winding temperature limit", "temperature", "largest winding temperature", minimum=0.0,
            maximum=400.0, example="", unit="°C"),
     Column("thermal class", WORDS, "thermal class of the insulation (IEC 60085); gives the winding limit",
-           words=THERMAL_CLASSES, example="F"),
+           words=tuple(THERMAL_CLASSES), example="F"),
     Column("thermal resistance winding-housing", "thermal resistance", "temperature difference per watt, "
            "winding to housing", positive=True, maximum=1.0e6, example="0.35", unit="K/W",
            aliases=("thermal resistance winding to housing",)),

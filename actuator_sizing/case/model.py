@@ -116,7 +116,9 @@ class Case:
     drive_parameters: DriveParameters
     limits: Mapping[str, Limit]
     tolerances: tuple[Tolerance, ...]
-    options: Mapping[str, float | str | None]  # rank by, number to detail, inertia-ratio advice, revision, ...
+    options: Mapping[
+        str, float | str | None
+    ]  # rank by, number to detail, inertia-ratio advice, revision, ...
     entries: tuple[Entry, ...]  # axis, duty cycle and limits; catalog entries come from `catalog_entries`
     problems: tuple[Problem, ...]  # warnings and notes only; errors never make a Case
     fingerprint: str
