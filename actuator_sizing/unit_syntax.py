@@ -69,10 +69,9 @@ _MARKS = {
     "phase": "phase", "ph": "phase", "l-n": "phase", "ln": "phase",
 }  # fmt: skip
 _MARK = "|".join(sorted(map(re.escape, _MARKS), key=len, reverse=True))
-_AFTER_SYMBOL = re.compile(
-    rf"(?<![A-Za-zμ])([kmμu]?[AV])((?:[\s_,]?[\s(]?(?:{_MARK})\)?)+)(?![A-Za-zμ0-9])", re.IGNORECASE
-)
-_AT_END = re.compile(rf"(?<=[^A-Za-zμ*/^-])[(,]?\s?((?:{_MARK})(?:[\s,]+(?:{_MARK}))*)\)?$", re.IGNORECASE)
+# Patterns stay text: `re` compiles them at first use, so that a start of the program does not pay for them.
+_AFTER_SYMBOL = rf"(?i)(?<![A-Za-zμ])([kmμu]?[AV])((?:[\s_,]?[\s(]?(?:{_MARK})\)?)+)(?![A-Za-zμ0-9])"
+_AT_END = rf"(?i)(?<=[^A-Za-zμ*/^-])[(,]?\s?((?:{_MARK})(?:[\s,]+(?:{_MARK}))*)\)?$"
 
 
 def split_basis(text: str) -> tuple[str, str]:
@@ -88,13 +87,13 @@ def split_basis(text: str) -> tuple[str, str]:
     def keep_symbol(match: re.Match[str]) -> str:
         if match[1][-1] in "av":  # only the marks may be in any case, not the symbol
             return match[0]
-        marks.extend(_MARKS[one.lower()] for one in _ONE_MARK.findall(match[2]))
+        marks.extend(_MARKS[one] for one in re.findall(_MARK, match[2].lower()))
         return match[1]
 
-    text = _AFTER_SYMBOL.sub(keep_symbol, text)
-    at_end = _AT_END.search(text)
+    text = re.sub(_AFTER_SYMBOL, keep_symbol, text)
+    at_end = re.search(_AT_END, text)
     if at_end:
-        marks.extend(_MARKS[one.lower()] for one in _ONE_MARK.findall(at_end[1]))
+        marks.extend(_MARKS[one] for one in re.findall(_MARK, at_end[1].lower()))
         text = text[: at_end.start()].rstrip(" ,")
     sizes = sorted({mark for mark in marks if mark in ("rms", "peak", "DC")})
     places = sorted({mark for mark in marks if mark in ("line-to-line", "phase")})
@@ -112,15 +111,14 @@ class _Token(NamedTuple):
     adjacent: bool  # no blank before
 
 
-_TOKEN = re.compile(
-    r"(?P<blank> ?)(?:(?P<number>\d+(?:\.\d+)?(?:e[+-]?\d{1,3}(?![A-Za-z0-9]))?)"
-    r"|(?P<symbol>° ?[CF](?![A-Za-z])|[A-Za-zμΩ]+|[°%‰'\"])|(?P<sign>[()/*^√+-]))",
-    re.ASCII,
+_TOKEN = (
+    r"(?P<blank> ?)(?:(?P<number>[0-9]+(?:\.[0-9]+)?(?:e[+-]?[0-9]{1,3}(?![A-Za-z0-9]))?)"
+    r"|(?P<symbol>° ?[CF](?![A-Za-z])|[A-Za-zμΩ]+|[°%‰'\"])|(?P<sign>[()/*^√+-]))"
 )
-_FLYWHEEL = re.compile(r"[(\s]*\b(GD|WK|WR)\^?2\b[)\s]*")
-_LEADING_TIMES_TEN = re.compile(r"^[x*] ?(?=10)")
-_GLUED_POWER_OF_TEN = re.compile(r"(?<=[A-Za-z]2)\s?[e]([+-]?\d{1,2})$")
-_PER_RADIAN_PER_SECOND = re.compile(r"/ ?rad ?/ ?s(?:ec)?$")
+_FLYWHEEL = r"[(\s]*\b(GD|WK|WR)\^?2\b[)\s]*"
+_LEADING_TIMES_TEN = r"^[x*] ?(?=10)"
+_GLUED_POWER_OF_TEN = r"(?<=[A-Za-z]2)\s?e([+-]?[0-9]{1,2})$"
+_PER_RADIAN_PER_SECOND = r"/ ?rad ?/ ?s(?:ec)?$"
 
 
 def read_product(text: str, kind: str) -> Product:
@@ -143,14 +141,14 @@ def read_product(text: str, kind: str) -> Product:
     (('kg', 1.0), ('cm', 2.0))
     """
     flywheel = ""
-    found = _FLYWHEEL.search(text)
+    found = re.search(_FLYWHEEL, text)
     if found:
         flywheel = "GD2" if found[1] == "GD" else "WK2"
         text = (text[: found.start()] + " " + text[found.end() :]).strip(" ,")
-    text = _LEADING_TIMES_TEN.sub("", text)
-    text = _GLUED_POWER_OF_TEN.sub(r" * 10^\1", text)
+    text = re.sub(_LEADING_TIMES_TEN, "", text)
+    text = re.sub(_GLUED_POWER_OF_TEN, r" * 10^\1", text)
     if kind in ("back-EMF constant", "rotary damping"):
-        text = _PER_RADIAN_PER_SECOND.sub("/(rad/s)", text)
+        text = re.sub(_PER_RADIAN_PER_SECOND, "/(rad/s)", text)
     reader = _Reader(_tokens(text))
     number, powers = reader.product(top=True)
     return Product(number, tuple(powers), flywheel)
@@ -158,8 +156,9 @@ def read_product(text: str, kind: str) -> Product:
 
 def _tokens(text: str) -> list[_Token]:
     tokens, position = [], 0
+    token = re.compile(_TOKEN)
     while position < len(text):
-        match = _TOKEN.match(text, position)
+        match = token.match(text, position)
         if match is None:
             raise SpellingError(f"'{text[position]}' is not part of a unit.")
         sort = match.lastgroup or ""
@@ -270,13 +269,9 @@ class _Reader:
             raise SpellingError("'^' needs a number.")
         value = sign * float(self.peek().text)
         self.at += 1
-        if (
-            bracket
-            and self.peek().text == "/"
-            and self.peek(1).sort == "number"
-            and float(self.peek(1).text) > 0
-        ):
-            value /= float(self.peek(1).text)
+        below = self.peek(1)
+        if bracket and self.peek().text == "/" and below.sort == "number" and float(below.text) > 0.0:
+            value /= float(below.text)
             self.at += 2
         if bracket:
             if self.peek().text != ")":
