@@ -1,4 +1,4 @@
-"""A small comparison for the tests of the writers: a belt axis lifted straight up, worked out by hand formulas.
+"""A small comparison for the tests of the writers: a belt axis that lifts, worked out by hand.
 
 Everything is computed from the constants below with the closed forms of a trapezoid move, so that the numbers
 hang together; it is no second sizing chain: friction, efficiency and torque saturation are left out.
@@ -33,7 +33,7 @@ MASS_UP, MASS_DOWN, RADIUS, RATIO, STROKE, MOVE, DWELL = 12.0, 8.0, 0.03, 5.0, 0
 AMBIENT, LIMIT, BUS = 40.0, 130.0, 320.0
 COPPER = 1.0 / (235.0 + 25.0)
 
-#: name, torque constant [N·m/A rms], model resistance [Ω], rotor inertia [kg·m²], continuous [A rms], mass, price
+#: name, torque constant [N·m/A rms], resistance [Ω], rotor inertia [kg·m²], continuous [A rms], mass, price
 MOTORS = (
     ("Lynx 60-B", 0.80, 9.0, 1.2e-4, 1.60, 2.1, 310.0),
     ("Lynx 60-C", 0.62, 5.6, 1.2e-4, 2.00, 2.1, 318.0),
@@ -309,15 +309,15 @@ def build_case(name: str = "tray_lift", title: str = "Tray lift") -> SimpleNames
         entry("axis", "mechanism", "mechanism", "belt", "belt", ""),
         entry("axis", "pulley diameter", "pulley diameter", "60 mm", 0.06, "m", row=3),
         entry("axis", "moving mass", "moving mass", "8 kg", 8.0, "kg", row=4),
-        entry("axis", "ambient temperature", "ambient temperature", "", 40.0, "°C", row=None, origin="assumed",
-              rule="usual upper limit of indoor machinery", source=""),
+        entry("axis", "ambient temperature", "ambient temperature", "", 40.0, "°C", row=None,
+              origin="assumed", rule="usual upper limit of indoor machinery", source=""),
         entry("duty_cycle", "lift", "displacement", "600 mm", 0.6, "m"),
         entry("duty_cycle", "lift", "duration", "600 ms", 0.6, "s"),
         entry("limits", "rms_current", "allowed utilisation", "100 %", 1.0, "-"),
     )  # fmt: skip
     parts = {
         "motors": (
-            entry("motors", "Lynx 60-B", "torque constant", "0.8 N·m/A", 0.8, "N·m/A", source="data sheet rev. 3"),
+            entry("motors", "Lynx 60-B", "torque constant", "0.8 N·m/A", 0.8, "N·m/A", source="sheet rev. 3"),
             entry("motors", "Lynx 60-B", "rotor inertia", "1.2 kg·cm²", 1.2e-4, "kg·m²"),
             entry("motors", "Lynx 60-B", "resistance temperature coefficient", "", 1 / 260.0, "1/K",
                   origin="assumed", rule="copper, 235 K constant"),
@@ -364,8 +364,9 @@ def build_comparison() -> Comparison:
     candidates = pd.DataFrame(
         [
             {
-                "motor": s.motor, "gearhead": s.gearhead, "ratio": s.ratio, "drive": s.drive, "verdict": s.verdict,
-                "governing_check": s.governing_check, "utilisation": s.check(s.governing_check).utilisation,
+                "motor": s.motor, "gearhead": s.gearhead, "ratio": s.ratio, "drive": s.drive,
+                "verdict": s.verdict, "governing_check": s.governing_check,
+                "utilisation": s.check(s.governing_check).utilisation,
                 "price": s.price, "mass_kg": s.mass_kg,
             }
             for s in ranked

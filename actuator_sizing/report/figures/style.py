@@ -224,11 +224,11 @@ def legend_above(ax: Axes, columns: int = 4, **options: Any) -> None:
 
 
 def shorten(text: str, length: int) -> str:
-    """One line of printable text, cut with an ellipsis after `length` characters.
+    r"""Cut text to one line of printable letters, with an ellipsis after `length` of them.
 
     Examples
     --------
-    >>> shorten("two\\nlines", 20), shorten("abcdefgh", 5)
+    >>> shorten("two\nlines", 20), shorten("abcdefgh", 5)
     ('two lines', 'abcd…')
     """
     line = " ".join("".join(c if c.isprintable() else " " for c in text).split())

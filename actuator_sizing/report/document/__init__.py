@@ -1,0 +1,68 @@
+"""The report as a document: prepared once from a comparison, rendered by one writer per format."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from datetime import date
+from typing import TYPE_CHECKING
+
+from actuator_sizing.report.document.blocks import Document, Section
+from actuator_sizing.report.document.checks import checks_section, working_section
+from actuator_sizing.report.document.closing import (
+    cautions_section,
+    commissioning_section,
+    not_checked_section,
+    sign_off_section,
+)
+from actuator_sizing.report.document.comparing import comparison_section
+from actuator_sizing.report.document.drawings import figures_section
+from actuator_sizing.report.document.inputs import assumptions_section, inputs_section
+from actuator_sizing.report.document.verdict import cover_facts, verdict_section, verdict_sentence
+from actuator_sizing.report.text import clean, option
+
+if TYPE_CHECKING:
+    from actuator_sizing.sizing.results import Comparison
+
+__all__ = ["prepare_document"]
+
+
+def prepare_document(comparison: Comparison, day: date, figures: Iterable[str] = ()) -> Document:
+    """Turn a comparison into a document in the order in which a reviewer thinks.
+
+    Parameters
+    ----------
+    comparison : Comparison
+        The answer.
+    day : date
+        Date of the report.
+    figures : iterable of str
+        Keys of the figures that were drawn; only these get a place.
+    """
+    case = comparison.case
+    drawn = tuple(figures)
+    sentence, state = verdict_sentence(comparison)
+    title = option(case, "title", clean(case.name))
+    revision = option(case, "revision")
+    sections: list[Section] = [verdict_section(comparison), comparison_section(comparison, drawn)]
+    if comparison.sets:
+        best = comparison.sets[0]
+        sections += [checks_section(best), working_section(best)]
+        figure_section = figures_section(comparison, drawn)
+        if figure_section.blocks:
+            sections.append(figure_section)
+    sections += [inputs_section(comparison), assumptions_section(comparison), not_checked_section(comparison)]
+    if comparison.sets:
+        sections.append(commissioning_section(comparison))
+    sections += [cautions_section(), sign_off_section(comparison)]
+    running = f"{clean(title, 60)}, revision {clean(revision, 20)}" if revision else clean(title, 60)
+    return Document(
+        title=title,
+        subtitle="Actuator sizing report",
+        cover=cover_facts(comparison, day),
+        verdict=sentence,
+        verdict_state=state,
+        sections=tuple(sections),
+        running_title=running,
+        footer=f"Inputs {case.fingerprint[:12]}, actuator_sizing {comparison.version}, {day.isoformat()}",
+        date=day.isoformat(),
+    )

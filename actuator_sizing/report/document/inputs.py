@@ -1,0 +1,143 @@
+"""What went in: as entered, as understood, assumed, derived, and remarked on."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable
+from itertools import groupby
+from typing import TYPE_CHECKING, Any
+
+from actuator_sizing.report.document.blocks import Cell, Column, Paragraph, Section, Table, row
+from actuator_sizing.report.text import clean
+
+if TYPE_CHECKING:
+    from actuator_sizing.case.model import Entry
+    from actuator_sizing.errors import Problem
+    from actuator_sizing.sizing.results import Comparison, SetResult
+
+TITLES = {
+    "axis": "Axis",
+    "duty_cycle": "Duty cycle",
+    "motors": "Motor of the leading set",
+    "gearheads": "Gearhead of the leading set",
+    "drives": "Drive of the leading set",
+    "limits": "Limits",
+    "tolerances": "Tolerances",
+}
+
+
+def part_entries(comparison: Comparison, item: SetResult | None) -> tuple[Entry, ...]:
+    """Collect the catalog values of the parts of one set."""
+    if item is None:
+        return ()
+    case = comparison.case
+    parts = [*case.catalog_entries("motors", item.motor_index)]
+    if item.gearhead is not None:
+        parts += case.catalog_entries("gearheads", item.gearhead_index)
+    return (*parts, *case.catalog_entries("drives", item.drive_index))
+
+
+def understood(entry: Entry) -> str:
+    """Write the value as understood, in SI, to six digits."""
+    value: Any = entry.value_si
+    if value is None or (isinstance(value, float) and math.isnan(value)):
+        return "not known"
+    if isinstance(value, str):
+        return clean(value)
+    unit = "" if entry.unit in ("", "-", "1") else f" {entry.unit}"
+    return f"{float(value):.6g}{unit}"
+
+
+def inputs_section(comparison: Comparison) -> Section:
+    """List every input of the case and of the leading set's parts, one table for each input table."""
+    best = comparison.sets[0] if comparison.sets else None
+    entries = [*comparison.case.entries, *part_entries(comparison, best)]
+    blocks: list[Paragraph | Table] = [
+        Paragraph(
+            "As entered is what the tables say, in the unit of the heading; as understood is the value "
+            "used, in SI units. Rows are counted as the spreadsheet shows them."
+        )
+    ]
+    for table, rows in groupby(entries, key=lambda e: e.table):
+        blocks.append(_entry_table(table, list(rows)))
+    if comparison.case.problems:
+        blocks.append(_remarks_table(comparison.case.problems))
+    return Section("inputs", "Inputs as entered and as understood", tuple(blocks))
+
+
+def _entry_table(table: str, entries: list[Entry]) -> Table:
+    named = any(e.label != e.column for e in entries)
+    columns = [Column("Row", numeric=True, weight=0.5)]
+    if named:
+        columns.append(Column("Name", weight=1.4))
+    columns += [
+        Column("Quantity", weight=2.0),
+        Column("As entered", weight=1.4),
+        Column("As understood", weight=1.6),
+        Column("Origin", weight=2.2),
+        Column("Source", weight=1.6),
+    ]
+    rows = []
+    for entry in entries:
+        origin = f"{entry.origin}: {clean(entry.rule, 300)}" if entry.rule else entry.origin
+        cells: list[str | Cell] = ["" if entry.row is None else str(entry.row)]
+        if named:
+            cells.append(clean(entry.label))
+        cells += [
+            clean(entry.column),
+            clean(entry.as_entered),
+            understood(entry),
+            origin,
+            clean(entry.source),
+        ]
+        rows.append(row(*cells))
+    return Table(TITLES.get(table, table.replace("_", " ").capitalize()), tuple(columns), tuple(rows))
+
+
+def _remarks_table(problems: Iterable[Problem]) -> Table:
+    columns = (
+        Column("Kind", weight=0.8),
+        Column("Table", weight=1.0),
+        Column("Row", numeric=True, weight=0.5),
+        Column("Column", weight=1.3),
+        Column("Read", weight=1.2),
+        Column("Expected", weight=1.6),
+        Column("What to do", weight=2.4),
+    )
+    rows = tuple(
+        row(
+            p.severity,
+            clean(p.table),
+            "" if p.row is None else str(p.row),
+            clean(p.column),
+            clean(p.got),
+            clean(p.allowed),
+            clean(p.remedy, 300),
+        )
+        for p in problems
+    )
+    return Table("Remarks of the audit on the input", columns, rows)
+
+
+def assumptions_section(comparison: Comparison) -> Section:
+    """List what nobody entered: values assumed or derived, and the assumptions of the method."""
+    best = comparison.sets[0] if comparison.sets else None
+    rows = [row(clean(subject), clean(text, 400), "", "") for subject, text in comparison.assumptions]
+    for entry in [*comparison.case.entries, *part_entries(comparison, best)]:
+        if entry.origin in ("assumed", "derived"):
+            subject = f"{clean(entry.label, 60)}: " if entry.label not in (entry.column, "") else ""
+            rows.append(
+                row(
+                    f"{subject}{clean(entry.column)}", clean(entry.rule, 300), understood(entry), entry.origin
+                )
+            )
+    columns = (
+        Column("Subject", weight=2.0),
+        Column("What was assumed or derived", weight=4.0),
+        Column("Value", weight=1.2),
+        Column("Origin", weight=0.8),
+    )
+    if not rows:
+        return Section("assumptions", "Assumptions and derived values", (Paragraph("None."),))
+    table = Table("Confirm these before the design is released", columns, tuple(rows))
+    return Section("assumptions", "Assumptions and derived values", (table,))

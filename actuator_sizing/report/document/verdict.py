@@ -1,0 +1,137 @@
+"""The first page: what was sized, and the answer in one sentence."""
+
+from __future__ import annotations
+
+from datetime import date
+from typing import TYPE_CHECKING
+
+from actuator_sizing.report.document.blocks import Bullets, Facts, Paragraph, Section
+from actuator_sizing.report.formatting import percent, quantity
+from actuator_sizing.report.text import clean, option, plural
+from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
+
+if TYPE_CHECKING:
+    from actuator_sizing.sizing.results import CheckResult, Comparison, SetResult
+
+
+def cover_facts(comparison: Comparison, day: date) -> tuple[tuple[str, str], ...]:
+    """Collect the cover block: what, whose, when, from which inputs and by which version."""
+    case = comparison.case
+    return (
+        ("Axis", option(case, "title", clean(case.name))),
+        ("Case", clean(case.name)),
+        ("Mechanism", clean(case.mechanism.name)),
+        ("Revision", option(case, "revision", "not stated")),
+        ("Prepared by", option(case, "prepared by", "not stated")),
+        ("Date", day.isoformat()),
+        ("Fingerprint of the inputs", clean(case.fingerprint)),
+        ("Computed with", f"actuator_sizing {comparison.version}".strip()),
+    )
+
+
+def governing(item: SetResult) -> CheckResult | None:
+    """Find the check that governs a set; None when no check could be made."""
+    for check in item.checks:
+        if check.check == item.governing_check:
+            return check
+    return None
+
+
+def describe_set(item: SetResult) -> str:
+    """Name motor, gearhead with ratio, and drive."""
+    gearhead = "direct drive" if item.gearhead is None else clean(item.gearhead, 60)
+    return f"{clean(item.motor, 60)} + {gearhead} + {clean(item.drive, 60)}"
+
+
+def describe_check(check: CheckResult) -> str:
+    """Say how far a check is used, and what is left."""
+    use = f"{percent(check.utilisation, check.allowed)} of the capacity"
+    if check.allowed != 1.0:
+        use += f" ({percent(check.allowed)} allowed)"
+    if check.margin is None:
+        return f"{check.title} uses {use}"
+    return f"{check.title} uses {use}, a margin of {percent(check.margin, 1.0 / check.allowed - 1.0)}"
+
+
+def verdict_sentence(comparison: Comparison) -> tuple[str, str]:
+    """Put the answer into one sentence, and its verdict."""
+    if not comparison.sets:
+        return "No set could be compared: no motor, gearhead and drive of the catalogs fit together.", FAILS
+    best = comparison.sets[0]
+    name, check = describe_set(best), governing(best)
+    reason = f" {_capital(describe_check(check))}; no other check is nearer to its limit." if check else ""
+    open_checks = [c.title for c in best.checks if c.verdict == NOT_CHECKED and not c.is_advice]
+    every = "every check that could be made" if open_checks else "every check"
+    if open_checks:
+        reason += f" Not checked for want of data: {_listed(open_checks)}."
+    if best.verdict == PASSES:
+        return f"{name} passes {every} with the recommended reserve.{reason}", PASSES
+    if best.verdict == LOW_RESERVE:
+        return f"{name} passes {every}, but with less than the recommended reserve.{reason}", LOW_RESERVE
+    if best.verdict == NOT_CHECKED:
+        return f"{name} fails none of the checks that could be made.{reason}", NOT_CHECKED
+    failing = [c.title for c in best.checks if c.verdict == FAILS and not c.is_advice]
+    reason = f" {_capital(describe_check(check))}." if check else ""
+    return f"No set passes. The nearest is {name}, which fails {_listed(failing)}.{reason}", FAILS
+
+
+def verdict_section(comparison: Comparison) -> Section:
+    """Say what the answer rests on, under the sentence on the cover."""
+    case, around = comparison.case, comparison.case.surroundings
+    facts: list[tuple[str, str]] = []
+    if comparison.sets:
+        best = comparison.sets[0]
+        facts += [
+            ("Motor", clean(best.motor)),
+            ("Gearhead", "none (direct drive)" if best.gearhead is None else clean(best.gearhead)),
+            ("Ratio", f"{best.ratio:.6g}"),
+            ("Drive", clean(best.drive)),
+        ]
+        if best.price is not None:
+            facts.append(("Price", f"{best.price:.2f} (currency of the catalogs)"))
+        if best.mass_kg is not None:
+            facts.append(("Mass", quantity(best.mass_kg, "kg")))
+    facts += [
+        ("Cycle", f"{plural(len(case.segments), 'segment')}, {quantity(case.cycle_duration_s, 's')}"),
+        ("Ambient", f"{quantity(around.ambient_degc, '°C')}, {quantity(around.altitude_m, 'm')} altitude"),
+        ("DC bus, minimum / nominal / maximum", _bus(comparison)),
+    ]
+    notes = [
+        "Signs: motor torque, speed and power are positive when they drive the load along +x; positive "
+        "power is motoring.",
+        "Ratio is input turns over output turns; utilisation is demand over capacity; margin is capacity "
+        "over demand minus 1.",
+    ]
+    advice = [
+        c.title
+        for c in (comparison.sets[0].checks if comparison.sets else ())
+        if c.is_advice and c.verdict == FAILS
+    ]
+    if advice:
+        notes.insert(0, f"Advice not met, which does not decide the verdict: {_listed(advice)}.")
+    return Section(
+        "summary",
+        "The chosen set" if comparison.passes else "The leading set",
+        (Facts(tuple(facts)), Bullets(tuple(notes)))
+        if comparison.sets
+        else (
+            Paragraph("There is no set to show; see the remarks on the input.", "note"),
+            Facts(tuple(facts)),
+        ),
+    )
+
+
+def _bus(comparison: Comparison) -> str:
+    around = comparison.case.surroundings
+    values = (around.bus_min_v, around.bus_nominal_v, around.bus_max_v)
+    return " / ".join(quantity(value, "V") for value in values)
+
+
+def _capital(text: str) -> str:
+    return text[:1].upper() + text[1:]
+
+
+def _listed(names: list[str]) -> str:
+    if not names:
+        return "a check"
+    return names[0] if len(names) == 1 else f"{', '.join(names[:-1])} and {names[-1]}"
