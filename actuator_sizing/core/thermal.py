@@ -2,30 +2,46 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
-from numpy.typing import ArrayLike
+from numpy.typing import ArrayLike, NDArray
 
-from actuator_sizing.core.thermal_network import HeatLoss, ThermalNetwork
+from actuator_sizing.core.thermal_network import FloatArray, HeatLoss, ThermalNetwork
 from actuator_sizing.core.thermal_periodic import PeriodicState, periodic_state
 from actuator_sizing.core.thermal_pieces import subpiece_counts, subpiece_durations, subpiece_means
+from actuator_sizing.core.warm_up import (
+    TemperatureCourse,
+    WarmUp,
+    temperature_course,
+    temperatures_after,
+    warm_up,
+)
 
 __all__ = [
     "HeatLoss",
     "PeriodicState",
+    "SteadyState",
+    "TemperatureCourse",
     "ThermalNetwork",
+    "WarmUp",
     "altitude_factor",
     "continuous_copper_loss",
     "periodic_state",
+    "steady_state",
     "subpiece_counts",
     "subpiece_durations",
     "subpiece_means",
+    "temperature_course",
+    "temperatures_after",
+    "warm_up",
 ]
 
 #: Up to this altitude the permissible rise is not reduced. IEC 60034-1, reference site (from memory). [m]
 REFERENCE_ALTITUDE_M = 1000.0
 _RISE_LOST_PER_M = 0.01 / 100.0
+_MOST_ITERATIONS = 60
 
 
 def altitude_factor(altitude_m: ArrayLike) -> Any:
@@ -99,3 +115,77 @@ def continuous_copper_loss(
     by_speed = np.where(one_body, R_1, R_2) * np.asarray(speed_loss_w, dtype=float)
     loss = (np.asarray(rise_permitted_k, dtype=float) - by_speed) / total
     return float(loss) if np.ndim(loss) == 0 else loss
+
+
+@dataclass(frozen=True)
+class SteadyState:
+    """Steady state of candidates under constant loss; each field has shape (B,).
+
+    Attributes
+    ----------
+    has_equilibrium : ndarray of bool
+        Whether a steady state exists; False: thermal runaway, or not known.
+    winding_degc, housing_degc : ndarray
+        Temperatures; NaN without equilibrium, the housing also with one body. [°C]
+    copper_loss_w : ndarray
+        Copper loss at those temperatures. [W]
+    loop_gain : ndarray
+        Further loss that a loss causes through temperature; ≥ 1 is runaway. [-]
+    """
+
+    has_equilibrium: NDArray[np.bool_]
+    winding_degc: FloatArray
+    housing_degc: FloatArray
+    copper_loss_w: FloatArray
+    loop_gain: FloatArray
+
+
+def steady_state(network: ThermalNetwork, loss: HeatLoss, ambient_degc: float) -> SteadyState:
+    """Steady state under the mean loss of the cycle, without ripple.
+
+    Parameters
+    ----------
+    network, loss : ThermalNetwork, HeatLoss
+        As for `periodic_state`; only the means over the cycle count.
+    ambient_degc : float
+        Temperature of the surroundings. [°C]
+
+    Returns
+    -------
+    SteadyState
+        Fields of shape (B,).
+
+    Notes
+    -----
+    Balance ``P = q r(ϑ(P))`` in the one unknown P, with ``ϑ_h = ϑ_a + R_2 (P + P_ω)`` and
+    ``ϑ_w = ϑ_h + R_1 P``. Without magnet term it is linear, ``P = q r_0/(1 − g)`` with the loop gain
+    ``g = α q (R_1 + R_2)``; with it the right side is convex, and Newton from P = 0 rises to the least
+    root if there is one. Stands for the periodic state where the cycle is short against the winding's
+    time constant. Derived from first principles.
+    """
+    duration = np.asarray(loss.duration_s, dtype=float)
+    q, by_speed = (column @ duration / duration.sum() for column in (loss.copper_loss_w, loss.speed_loss_w))
+    two = network.has_housing
+    R_total, R_speed = network.total_resistance_k_w, network.speed_resistance_k_w
+    R_magnet = np.where(two, R_speed, R_total)
+    alpha, beta = loss.resistance_coefficient_per_k, loss.magnet_coefficient_per_k
+    P = np.zeros_like(q)
+    lost = ~np.isfinite(q + by_speed + R_total + alpha + beta)
+    with np.errstate(all="ignore"):
+        for _ in range(_MOST_ITERATIONS):
+            winding = ambient_degc + R_total * P + R_speed * by_speed
+            magnet = 1.0 + beta * (
+                ambient_degc + R_magnet * P + R_speed * by_speed - loss.magnet_reference_degc
+            )
+            copper = 1.0 + alpha * (winding - loss.resistance_reference_degc)
+            gain = q * (alpha * R_total - 2.0 * beta * R_magnet * copper / magnet) / magnet**2
+            move = (q * copper / magnet**2 - P) / (1.0 - gain)
+            lost |= ~(gain < 1.0) | ~(magnet > 0.0) | ~np.isfinite(move)
+            P = np.where(lost, P, P + move)
+            if np.all(lost | (np.abs(move) <= 1e-13 * np.abs(P))):
+                break
+    temperatures = [
+        np.where(lost, np.nan, ambient_degc + R * P + R_speed * by_speed) for R in (R_total, R_magnet)
+    ]
+    housing = np.where(two, temperatures[1], np.nan)
+    return SteadyState(~lost, temperatures[0], housing, np.where(lost, np.nan, P), gain)

@@ -15,6 +15,8 @@ from actuator_sizing.core.thermal_kernel import (
     linearise,
 )
 
+#: The one "not a number" of this module, so that plain floats can be compared with it by identity.
+NAN = math.nan
 #: Nearest to −1 that an eigenvalue of the cycle map minus one is taken, so that its logarithm exists.
 _FORGOTTEN = -1.0 + 2.0**-52
 
@@ -81,7 +83,8 @@ def cycle_map(k: Coefficients, steps: Steps, ops: Operations, x1: Number, x2: Nu
         gain = gain + h * q * at.ratio_winding
         gain_housing = gain_housing + h * q * at.ratio_housing
         hottest = ops.maximum(hottest, on_winding * (x1 + d1) + (1.0 - on_winding) * (x2 + d2))
-    return CycleMap(d1, d2, *n, hottest, gain, gain_housing)
+    n11, n12, n21, n22 = n
+    return CycleMap(d1, d2, n11, n12, n21, n22, hottest, gain, gain_housing)
 
 
 def growth(at: CycleMap, ops: Operations) -> tuple[Number, Number]:
@@ -123,7 +126,7 @@ def turning_instant(at: Local, ops: Operations, h: float, housing: bool) -> Numb
     slow = ((diagonal - at.fast) * own + cross) / at.gap  # x' = slow e^{l1 t} + fast e^{l2 t}
     fast = own - slow
     instant = ops.log(-fast / ops.select(slow == 0.0, 1e-300, slow)) / at.gap
-    return ops.select((instant > 0.0) & (instant < h), instant, math.nan)
+    return ops.select((instant > 0.0) & (instant < h), instant, NAN)
 
 
 def moved(at: Local, ops: Operations, t: Number) -> tuple[Number, Number]:
@@ -146,6 +149,8 @@ def survey(k: Coefficients, steps: Steps, ops: Operations, x1: Number, x2: Numbe
         turn1 = turning_instant(at, ops, h, housing=False)
         turn2 = turning_instant(at, ops, h, housing=True)
         for instant in (turn1, h):
+            if instant is NAN:
+                continue  # plain floats: the winding does not turn within this step
             slow, fast = ops.expm1(at.slow * instant), ops.expm1(at.fast * instant)
             step1, step2 = apply(at, slow / at.slow, fast / at.fast, at.f1, at.f2)
             there = _compose(n, at, slow, fast)
@@ -156,7 +161,7 @@ def survey(k: Coefficients, steps: Steps, ops: Operations, x1: Number, x2: Numbe
             row1 = ops.select(rises, 1.0 + there[0], row1)
             row2 = ops.select(rises, there[1], row2)
             w_min = ops.select(winding < w_min, winding, w_min)
-        for housing in (y2 + moved(at, ops, turn2)[1], y2 + step2):
+        for housing in (y2 + step2,) if turn2 is NAN else (y2 + step2, y2 + moved(at, ops, turn2)[1]):
             h_max = ops.select(housing > h_max, housing, h_max)
             h_min = ops.select(housing < h_min, housing, h_min)
         area1, area2 = apply(

@@ -50,7 +50,7 @@ class Operations(NamedTuple):
 
 
 def _expm1(z: float) -> float:
-    return math.expm1(z) if z < 700.0 else math.inf
+    return math.inf if z > 700.0 else math.expm1(z)
 
 
 def _log(z: float) -> float:
@@ -196,28 +196,24 @@ def sub_steps(network: ThermalNetwork, loss: HeatLoss) -> Steps:
     """
     duration = np.asarray(loss.duration_s, dtype=float)
     two = network.has_housing
-    slow = np.where(two, network.housing_resistance_k_w * network.housing_capacity_j_k, np.inf)
-    alone = np.where(two, np.inf, network.winding_resistance_k_w * network.winding_capacity_j_k)
+    C_1, C_2 = network.winding_capacity_j_k, network.housing_capacity_j_k
+    speed, copper = loss.speed_loss_w.T, loss.copper_loss_w.T
+    winding_rate = speed * np.where(two, 0.0, 1.0 / C_1)
+    housing_rate = speed * np.where(two, 1.0 / C_2, 0.0)
+    piece = np.arange(len(duration))
     nonlinear = loss.magnet_coefficient_per_k != 0.0
-    constants = np.where(nonlinear, np.fmin(slow, alone), np.inf)
-    step = float(np.nanmin(constants, initial=np.inf)) / _STEP_PARTS
-    heated = (loss.copper_loss_w > 0.0).any(axis=0)
-    if math.isfinite(step) and step > 0.0:
+    if nonlinear.any():
+        constant = np.where(two, network.housing_resistance_k_w * C_2, network.winding_resistance_k_w * C_1)
+        step = float(constant[nonlinear].min()) / _STEP_PARTS
         counts = np.clip(np.ceil(duration / step), 1, _MOST_STEPS_PER_PIECE).astype(int)
-        counts = np.where(heated, counts, 1)
-    else:
-        counts = np.ones(len(duration), dtype=int)
-    piece = np.repeat(np.arange(len(duration)), counts)
-    C_2 = np.where(two, network.housing_capacity_j_k, 1.0)
-    on_winding = np.where(two, 0.0, 1.0 / network.winding_capacity_j_k)
-    on_housing = np.where(two, 1.0 / C_2, 0.0)
-    speed = np.ascontiguousarray(loss.speed_loss_w.T)
-    copper = np.ascontiguousarray(loss.copper_loss_w.T)
+        counts = np.where((copper > 0.0).any(axis=1), counts, 1)
+        piece = np.repeat(piece, counts)
+        duration = (duration / counts)[piece]
     return Steps(
-        (duration / counts)[piece].tolist(),
+        duration.tolist(),
         list(copper[piece]),
-        list((speed * on_winding)[piece]),
-        list((speed * on_housing)[piece]),
+        list(winding_rate[piece]),
+        list(housing_rate[piece]),
         piece.tolist(),
     )
 
@@ -238,15 +234,15 @@ def select_steps(steps: Steps, rows: NDArray[np.bool_]) -> Steps:
     )
 
 
-def as_floats(k: Coefficients, steps: Steps) -> tuple[Coefficients, Steps]:
-    """Coefficients and steps of a batch of one as plain floats."""
+def as_floats(k: Coefficients, steps: Steps, row: int = 0) -> tuple[Coefficients, Steps]:
+    """Coefficients and steps of one row of a batch as plain floats."""
     return (
-        Coefficients(*(float(column[0]) for column in k)),
+        Coefficients(*(float(column[row]) for column in k)),
         Steps(
             steps.duration,
-            [float(value[0]) for value in steps.copper],
-            [float(value[0]) for value in steps.winding_rate],
-            [float(value[0]) for value in steps.housing_rate],
+            [float(value[row]) for value in steps.copper],
+            [float(value[row]) for value in steps.winding_rate],
+            [float(value[row]) for value in steps.housing_rate],
             steps.piece,
         ),
     )

@@ -108,7 +108,7 @@ class _Answer:
         self.total = network.total_resistance_k_w
         self.housing = self.total - network.winding_resistance_k_w
 
-    def runaway_margin(self, rows: NDArray[np.intp], at: CycleMap, ops: Operations) -> None:
+    def runaway_margin(self, rows: NDArray[np.intp] | int, at: CycleMap, ops: Operations) -> None:
         """Loop gain and spectral radius of these rows."""
         gain = at.gain * self.total[rows] + at.gain_housing * self.housing[rows]
         self.columns["loop_gain"][rows] = gain / self.span
@@ -116,7 +116,7 @@ class _Answer:
 
     def equilibrium(
         self,
-        rows: NDArray[np.intp],
+        rows: NDArray[np.intp] | int,
         k: Coefficients,
         steps: Steps,
         ops: Operations,
@@ -172,25 +172,21 @@ def periodic_state(network: ThermalNetwork, loss: HeatLoss, ambient_degc: float)
     known = known_candidates(network, loss)
     answer = _Answer(network, loss, len(known))
     rows = np.flatnonzero(known)
-    if len(rows) <= _FEW:
-        for row in rows:
-            index = np.array([row])
-            single = select_candidates(network, loss, index)
-            k, steps = as_floats(coefficients(*single, ambient_degc), sub_steps(*single))
-            at, state = solve_one(k, steps)
-            answer.runaway_margin(index, at, FLOATS)
-            if state is not None:
-                answer.equilibrium(index, k, steps, FLOATS, at, state)
-    else:
-        with np.errstate(all="ignore"):  # candidates on their way to runaway overflow, and are dropped
-            _solve_many(answer, rows, network, loss, ambient_degc)
+    with np.errstate(all="ignore"):  # candidates on their way to runaway overflow, and are dropped
+        chosen = select_candidates(network, loss, rows)
+        k, steps = coefficients(*chosen, ambient_degc), sub_steps(*chosen)
+        if len(rows) > _FEW:
+            _solve_many(answer, rows, k, steps)
+        else:
+            for position, row in enumerate(rows.tolist()):
+                _solve_alone(answer, row, *as_floats(k, steps, position))
     columns = answer.columns
     mean_speed = loss.speed_loss_w @ np.asarray(loss.duration_s, dtype=float) / answer.span
     columns["mean_speed_loss_w"] = np.where(answer.found, mean_speed, np.nan)
     for name, column in columns.items():
         if name.startswith("housing"):
             column[~network.has_housing] = np.nan
-    return PeriodicState(**(columns | {"known": known, "has_equilibrium": answer.found}))  # type: ignore[arg-type]
+    return PeriodicState(**(columns | {"known": known, "has_equilibrium": answer.found}))
 
 
 def solve_one(k: Coefficients, steps: Steps) -> tuple[CycleMap, tuple[float, float] | None]:
@@ -204,7 +200,10 @@ def solve_one(k: Coefficients, steps: Steps) -> tuple[CycleMap, tuple[float, flo
         x1, x2 = x1 + step1, x2 + step2
         if not math.isfinite(x1 + x2):
             return at, None
-        if abs(step1) + abs(step2) <= _TOLERANCE * (1.0 + abs(x1 - k.ambient)):
+        moved = abs(step1) + abs(step2)
+        if k.beta == 0.0 or moved <= _TOLERANCE * (
+            1.0 + abs(x1 - k.ambient)
+        ):  # affine: the first step is exact
             return at, (x1, x2)
     return at, None
 
@@ -213,19 +212,23 @@ def _of(at: CycleMap, rows: NDArray[np.bool_]) -> CycleMap:
     return CycleMap(*(column[rows] for column in at))
 
 
-def _solve_many(
-    answer: _Answer, rows: NDArray[np.intp], network: ThermalNetwork, loss: HeatLoss, ambient_degc: float
-) -> None:
+def _solve_alone(answer: _Answer, row: int, k: Coefficients, steps: Steps) -> None:
+    at, state = solve_one(k, steps)
+    answer.runaway_margin(row, at, FLOATS)
+    if state is not None:
+        answer.equilibrium(row, k, steps, FLOATS, at, state)
+
+
+def _solve_many(answer: _Answer, rows: NDArray[np.intp], k: Coefficients, steps: Steps) -> None:
     """Newton for many candidates at once; those that are done leave the batch."""
-    chosen = select_candidates(network, loss, rows)
-    k, steps = coefficients(*chosen, ambient_degc), sub_steps(*chosen)
     x1, x2 = k.ambient.copy(), k.ambient.copy()
     for iteration in range(_MOST_ITERATIONS):
         at = cycle_map(k, steps, ARRAYS, x1, x2)
         step1, step2 = newton_step(at)
         x1, x2 = x1 + step1, x2 + step2
         lost = ~(growth(at, ARRAYS)[0] < 0.0) | demagnetised(k, at) | ~np.isfinite(x1 + x2)
-        settled = ~lost & (np.abs(step1) + np.abs(step2) <= _TOLERANCE * (1.0 + np.abs(x1 - k.ambient)))
+        moved = np.abs(step1) + np.abs(step2)
+        settled = ~lost & ((k.beta == 0.0) | (moved <= _TOLERANCE * (1.0 + np.abs(x1 - k.ambient))))
         done = lost | settled | (iteration == _MOST_ITERATIONS - 1)
         if not done.any():
             continue
