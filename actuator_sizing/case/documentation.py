@@ -54,7 +54,9 @@ def default_text(column: Column, coordinate: str = "rotary") -> str:
     text = str(column.default)
     if isinstance(column.default, float):
         text = f"{column.default:g} {_si(column, coordinate)}".strip()
-    return f"{text} ({column.assumed})" if column.assumed and text != column.assumed else text
+    if column.assumed.startswith(text):
+        return column.assumed
+    return f"{text} ({column.assumed})" if column.assumed else text
 
 
 def columns_page(mechanism: type[Mechanism] | None = None) -> str:

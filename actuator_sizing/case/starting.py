@@ -108,10 +108,10 @@ def _sheet(table: Table, mechanism: type[Mechanism]) -> Sheet:
 
 
 def _axis_rows(mechanism: type[Mechanism]) -> list[tuple[str, ...]]:
-    rows = []
+    rows: list[tuple[str, ...]] = []
     for column in axis_quantities(mechanism):
         value = column.example_for(mechanism.coordinate)
-        if column.name == "mechanism":
+        if column.name in ("mechanism", "title"):
             value = mechanism.name
         value = _EXAMPLES.get((mechanism.name, column.name), value)
         unit = column.unit_for(mechanism.coordinate)

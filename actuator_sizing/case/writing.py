@@ -12,6 +12,7 @@ from typing import TYPE_CHECKING, Any
 
 from actuator_sizing.case.columns import TEXT, WORDS, YES_NO, Column, Table, fold
 from actuator_sizing.case.documentation import column_facts
+from actuator_sizing.case.headings import split_heading
 from actuator_sizing.case.tables import TABLES, axis_quantities
 from actuator_sizing.errors import InputError, Problem
 from actuator_sizing.files import replace_folder_files, write_atomically
@@ -147,7 +148,7 @@ def coordinate_of(sheets: Iterable[Sheet]) -> str:
     from actuator_sizing.core.mechanisms import MECHANISMS
 
     for sheet in sheets:
-        if sheet.name == "axis":
+        if fold(sheet.name) == "axis":
             for row in sheet.rows:
                 if len(row) > 1 and fold(row[0]) == "mechanism":
                     words = {fold(name): mechanism for name, mechanism in MECHANISMS.items()}
@@ -186,7 +187,7 @@ def _misfits(sheets: Iterable[Sheet]) -> Iterable[Problem]:
 
 def _write_sheet(book: Workbook, sheet: Sheet, coordinate: str) -> None:
     page = book.add_worksheet(sheet.name)
-    table = TABLES.get(sheet.name)
+    table = next((table for name, table in TABLES.items() if fold(name) == fold(sheet.name)), None)
     head = book.add_format({"bold": True, "text_wrap": True, "valign": "top", "bottom": 1})
     decimals: dict[int, Format] = {}
     headings = sheet.rows[0] if sheet.rows else ()
@@ -249,7 +250,7 @@ def shows_exactly(text: str) -> bool:
 
 
 def _column_of(table: Table | None, heading: str) -> Column | None:
-    return table.find(heading.partition("[")[0]) if table is not None else None
+    return table.find(split_heading(heading)[0]) if table is not None else None
 
 
 def _comment_shape() -> dict[str, Any]:
@@ -278,7 +279,7 @@ def _offer_words(page: Worksheet, column: Column, first: int, last: int, at: int
 def _dress_axis(page: Worksheet, sheet: Sheet, coordinate: str) -> None:
     """Explain every quantity of the `axis` table, and offer words beside those that take a word."""
     known = {fold(column.name): column for column in axis_quantities()}
-    headings = [fold(heading.partition("[")[0]) for heading in sheet.rows[0]]
+    headings = [split_heading(heading)[0] for heading in sheet.rows[0]]
     if not {"quantity", "value"} <= set(headings):
         return
     name_at, value_at = headings.index("quantity"), headings.index("value")
