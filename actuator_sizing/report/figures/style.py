@@ -5,6 +5,7 @@ from __future__ import annotations
 import io
 import re
 import threading
+import warnings
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass
@@ -237,10 +238,12 @@ def shorten(text: str, length: int) -> str:
 
 def to_svg(figure: Figure, key: str) -> bytes:
     """Write a figure as SVG that is the same, byte for byte, every time; ids begin with `key`."""
-    stream = io.BytesIO()
     import matplotlib
 
-    with house_style():
+    stream = io.BytesIO()
+    with house_style(), warnings.catch_warnings():
+        # Text stays text in the file, so that a letter which the measuring font lacks is no loss.
+        warnings.filterwarnings("ignore", message="Glyph .* missing from", category=UserWarning)
         matplotlib.rcParams["svg.hashsalt"] = key
         metadata = {"Date": None, "Creator": None, "Format": None, "Type": None}
         figure.savefig(stream, format="svg", metadata=metadata)
