@@ -53,10 +53,10 @@ def fold_characters(text: str) -> str:
     >>> fold_characters("kg·cm²"), fold_characters("min⁻¹")
     ('kg*cm2', 'min-1')
     """
-    text = unicodedata.normalize("NFKC", text.translate(_BEFORE)).translate(_AFTER)
+    text = unicodedata.normalize("NFKC", text.replace("**", "^").translate(_BEFORE)).translate(_AFTER)
     text = re.sub(r"\b(in|ft|oz|lbs?|sec|min|rev|hr)\.(?![A-Za-z0-9])", r"\1", text)
     text = re.sub(r"(?<=[A-Za-zμΩ0-9])\.(?=[A-Za-zμΩ])", "*", text)
-    return " ".join(text.replace("**", "^").split())
+    return " ".join(text.split())
 
 
 # -- rms, peak, DC ------------------------------------------------------------------------------------------
