@@ -82,7 +82,7 @@ class StepResponse:
     _jump_a: float  # current at once after the step, without inductance
 
     def speed_at(self, time_s: ArrayLike) -> FloatArray:
-        """Speed at instants after the step.
+        """Evaluate the speed at instants after the step.
 
         Parameters
         ----------
@@ -99,7 +99,7 @@ class StepResponse:
         return self.final_speed_rad_s + self._modes.free(-self.final_speed_rad_s, slope, t)
 
     def current_at(self, time_s: ArrayLike) -> FloatArray:
-        """Current at instants after the step.
+        """Evaluate the current at instants after the step.
 
         Parameters
         ----------
@@ -194,11 +194,13 @@ def voltage_step(
     has_lag = L > 0.0 and math.isfinite(R / L)
     if has_lag:
         modes, poles = _second_order(R / L, b / J, K * K / (L * J))
-        peak_current_time = _current_peak_time(modes, R / L)
+        peak_current_time = _current_peak_time(modes, R / L, K * K / (L * J))
         start_slope = u / L
     else:
         modes, poles = _Modes(-stiffness / (R * J), 0.0, 0.0), (complex(-stiffness / (R * J)),)
         peak_current_time, start_slope = (0.0 if K > 0.0 else math.nan), math.nan
+    if u == 0.0:
+        peak_current_time = math.nan
     rise, settling, peak_time, overshoot = _speed_figures(modes, has_lag, moves=final_speed != 0.0)
     bare = StepResponse(
         electrical_time_constant_s=L / R if has_lag else 0.0,
@@ -207,7 +209,7 @@ def voltage_step(
         final_speed_rad_s=final_speed,
         final_current_a=final_current,
         rise_time_s=rise,
-        peak_speed_rad_s=final_speed * (1.0 + overshoot),
+        peak_speed_rad_s=final_speed * (1.0 + overshoot) if final_speed != 0.0 else 0.0,
         peak_time_s=peak_time,
         overshoot_ratio=overshoot,
         settling_time_s=settling,
@@ -239,14 +241,17 @@ def _second_order(
     return _Modes(slow, slow - fast if root > 0.0 else 0.0, 0.0), (complex(slow), complex(fast))
 
 
-def _current_peak_time(modes: _Modes, electrical: float) -> float:
+def _current_peak_time(modes: _Modes, electrical: float, coupling: float) -> float:
     """Root of ``i'``, which starts as ``i'' = −(R/L) i'`` and obeys the same equation; NaN if none."""
     lead = electrical + modes.slow
     if modes.frequency > 0.0:
         return math.atan2(modes.frequency, lead) / modes.frequency
-    if lead <= modes.gap * (1.0 + 1e-15):
+    if not (lead > 0.0 and coupling > 0.0):
         return math.nan
-    return -math.log1p(-modes.gap / lead) / modes.gap if modes.gap > 0.0 else 1.0 / lead
+    if modes.gap <= 0.5 * lead:
+        return -math.log1p(-modes.gap / lead) / modes.gap if modes.gap > 0.0 else 1.0 / lead
+    # (R/L + p_1)(R/L + p_2) = K²/(L J) gives 1 − gap/lead without cancellation
+    return (2.0 * math.log(lead) - math.log(coupling)) / modes.gap
 
 
 def _speed_figures(modes: _Modes, has_lag: bool, moves: bool) -> tuple[float, float, float, float]:
