@@ -45,11 +45,13 @@ class StepResponse:
 
     Attributes
     ----------
+    voltage_v : float
+        Height of the step. [V]
     electrical_time_constant_s : float
         ``L/R``; 0 without inductance. [s]
     mechanical_time_constant_s : float
         ``R J/K²``; infinite without torque. [s]
-    poles_rad_s : tuple of complex
+    poles_per_s : tuple of complex
         Slow and fast pole; only one without inductance. [1/s]
     final_speed_rad_s, final_current_a : float
         Where both end. [rad/s], [A]
@@ -65,9 +67,10 @@ class StepResponse:
         Largest current and its instant; the final current and NaN if it is only approached. [A], [s]
     """
 
+    voltage_v: float
     electrical_time_constant_s: float
     mechanical_time_constant_s: float
-    poles_rad_s: tuple[complex, ...]
+    poles_per_s: tuple[complex, ...]
     final_speed_rad_s: float
     final_current_a: float
     rise_time_s: float
@@ -135,7 +138,7 @@ class StepResponse:
             Time, current, speed; early points are closer together. [s], [A], [rad/s]
         """
         if end_s is None:
-            rates = [abs(pole.real) for pole in self.poles_rad_s if pole.real < 0.0]
+            rates = [abs(pole.real) for pole in self.poles_per_s if pole.real < 0.0]
             end_s = 5.0 / min(rates) if rates else 1.0
             if math.isfinite(self.settling_time_s):
                 end_s = 1.4 * self.settling_time_s
@@ -146,10 +149,10 @@ class StepResponse:
 def voltage_step(
     resistance_ohm: float,
     inductance_h: float,
-    torque_constant_nm_per_a: float,
-    inertia_kg_m2: float,
-    viscous_friction_nm_s: float,
-    voltage_v: float,
+    torque_constant: float,
+    inertia: float,
+    viscous: float,
+    voltage: float,
 ) -> StepResponse:
     """Response of motor and rigid load to a step of voltage.
 
@@ -159,13 +162,13 @@ def voltage_step(
         DC-equivalent resistance, > 0. [Ω]
     inductance_h : float
         DC-equivalent inductance; 0 or NaN: current follows at once. [H]
-    torque_constant_nm_per_a : float
-        Torque constant, equal to the back-EMF constant, ≥ 0. [N·m/A]
-    inertia_kg_m2 : float
-        All inertia referred to the motor, > 0. [kg·m²]
-    viscous_friction_nm_s : float
-        All viscous friction referred to the motor, ≥ 0. [N·m·s]
-    voltage_v : float
+    torque_constant : float
+        Torque or force constant, equal to the back-EMF constant, ≥ 0. [N·m/A or N/A]
+    inertia : float
+        All inertia or mass referred to the motor, > 0. [kg·m² or kg]
+    viscous : float
+        All viscous friction referred to the motor, ≥ 0. [N·m·s or N·s/m]
+    voltage : float
         Height of the step, any sign. [V]
 
     Returns
@@ -185,8 +188,8 @@ def voltage_step(
     >>> voltage_step(1.0, 0.5, 0.01, 0.01, 0.1, 1.0).final_speed_rad_s
     0.0999
     """
-    R, L, K, J = resistance_ohm, inductance_h, torque_constant_nm_per_a, inertia_kg_m2
-    b, u = viscous_friction_nm_s, voltage_v
+    R, L, K, J = resistance_ohm, inductance_h, torque_constant, inertia
+    b, u = viscous, voltage
     stiffness = R * b + K * K
     final_speed = K * u / stiffness if stiffness > 0.0 else 0.0
     final_current = b * u / stiffness if stiffness > 0.0 else u / R
@@ -203,9 +206,10 @@ def voltage_step(
         peak_current_time = math.nan
     rise, settling, peak_time, overshoot = _speed_figures(modes, has_lag, moves=final_speed != 0.0)
     bare = StepResponse(
+        voltage_v=u,
         electrical_time_constant_s=L / R if has_lag else 0.0,
         mechanical_time_constant_s=mechanical,
-        poles_rad_s=poles,
+        poles_per_s=poles,
         final_speed_rad_s=final_speed,
         final_current_a=final_current,
         rise_time_s=rise,
