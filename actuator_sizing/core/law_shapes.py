@@ -54,7 +54,7 @@ class Shape:
     def durations(
         self, distance: float, speed_max: float, acceleration_max: float, jerk_max: float
     ) -> tuple[float, float, float]:
-        """Shortest time for each limit by itself; arguments as in `shortest_duration`. [s]"""
+        """Shortest time for each limit by itself, arguments as in `shortest_duration` [s]."""
         h = distance
         by_jerk = 0.0 if math.isinf(jerk_max) else math.cbrt(self.peak_jerk * h / jerk_max)
         return (
@@ -64,7 +64,7 @@ class Shape:
         )
 
     def spread(self, displacement: float, duration_s: float) -> tuple[Phase, ...]:
-        """The law over a signed displacement [m] in a duration [s]."""
+        """Spread the law over a signed displacement [m] in a duration [s]."""
         end = self.phases[-1].end()[0]  # 1 but for rounding
         return tuple(phase.scaled(displacement / end, duration_s) for phase in self.phases)
 
@@ -125,24 +125,24 @@ def _cruise(k_a: float, k_d: float) -> float:
 
 
 def polynomial_345() -> Shape:
-    """``10 t³ − 15 t⁴ + 6 t⁵`` (VDI 2143 part 1, 1980, quoted from memory). [-]"""
+    """``10 t³ − 15 t⁴ + 6 t⁵`` (VDI 2143 part 1, 1980, quoted from memory) [-]."""
     return Shape((Phase(1.0, (0.0, 0.0, 0.0, 10.0, -15.0, 6.0)),), 15.0 / 8.0, 10.0 / math.sqrt(3.0), 60.0)
 
 
 def polynomial_4567() -> Shape:
-    """``35 t⁴ − 84 t⁵ + 70 t⁶ − 20 t⁷``: jerk too is zero at the ends; coefficients follow from that. [-]"""
+    """``35 t⁴ − 84 t⁵ + 70 t⁶ − 20 t⁷``: jerk too is zero at the ends; coefficients follow from that [-]."""
     phase = Phase(1.0, (0.0, 0.0, 0.0, 0.0, 35.0, -84.0, 70.0, -20.0))
     return Shape((phase,), 35.0 / 16.0, 84.0 * math.sqrt(5.0) / 25.0, 52.5)
 
 
 def cycloidal() -> Shape:
-    """One period of sine acceleration: ``t − sin(2π t)/(2π)``. [-]"""
+    """One period of sine acceleration: ``t − sin(2π t)/(2π)`` [-]."""
     w = 2.0 * math.pi
     return Shape((Phase(1.0, (0.0, 1.0), -1.0 / w, w, 0.0),), 2.0, w, w * w)
 
 
 def simple_harmonic() -> Shape:
-    """Half a period of cosine acceleration: ``(1 − cos(π t))/2``; acceleration jumps at both ends. [-]"""
+    """Half a period of cosine acceleration: ``(1 − cos(π t))/2``; acceleration jumps at both ends [-]."""
     w = math.pi
     phase = Phase(1.0, (0.5,), -0.5, w, 0.5 * math.pi)
     return Shape((phase,), 0.5 * w, 0.5 * w * w, math.inf)

@@ -145,9 +145,8 @@ def plan_segment(
     return LAWS[law].plan(request)
 
 
-def _rest_to_rest(request: Request, shape: Shape) -> tuple[Phase, ...]:
+def _rest_to_rest(request: Request, displacement: float, shape: Shape) -> tuple[Phase, ...]:
     """Give a shape its distance and time, and check both against the limits."""
-    displacement = request.values["displacement"]
     limits = [request.limit(f"maximum {quantity}") for quantity in ("speed", "acceleration", "jerk")]
     by_limit = shape.durations(abs(displacement), *limits)
     shortest = max(by_limit)
@@ -181,31 +180,32 @@ def _rest_to_rest(request: Request, shape: Shape) -> tuple[Phase, ...]:
 
 def _plan_fixed(shape: Shape) -> Planner:
     def plan(request: Request) -> tuple[Phase, ...]:
-        request.require_move()
+        displacement = request.require_move()
         if math.isinf(shape.peak_jerk):
             request.refuse_jerk_limit()
         request.require_any(("duration", "maximum speed", "maximum acceleration", "maximum jerk"))
-        return _rest_to_rest(request, shape)
+        return _rest_to_rest(request, displacement, shape)
 
     return plan
 
 
 def _plan_trapezoid(request: Request) -> tuple[Phase, ...]:
-    request.require_move()
+    displacement = request.require_move()
     request.refuse_jerk_limit()
     a_max = request.limit("maximum acceleration")
     if request.has("acceleration share") or request.has("deceleration share"):
         request.require_any(("duration", "maximum speed", "maximum acceleration"))
-        return _rest_to_rest(request, trapezoid(*request.stage_shares(DEFAULT_SHARE)))
+        return _rest_to_rest(request, displacement, trapezoid(*request.stage_shares(DEFAULT_SHARE)))
     if math.isfinite(a_max):
-        distance = abs(request.values["displacement"])
-        return _rest_to_rest(request, fastest_trapezoid(distance, request.limit("maximum speed"), a_max))
+        return _rest_to_rest(
+            request, displacement, fastest_trapezoid(abs(displacement), request.limit("maximum speed"), a_max)
+        )
     request.require_any(("duration",), instead="maximum acceleration")
-    return _rest_to_rest(request, trapezoid(DEFAULT_SHARE, DEFAULT_SHARE))
+    return _rest_to_rest(request, displacement, trapezoid(DEFAULT_SHARE, DEFAULT_SHARE))
 
 
 def _plan_triangular(request: Request) -> tuple[Phase, ...]:
-    request.require_move()
+    displacement = request.require_move()
     request.refuse_jerk_limit()
     request.require_any(("duration", "maximum speed", "maximum acceleration"))
     shares = (request.get("acceleration share"), request.get("deceleration share"))
@@ -221,17 +221,16 @@ def _plan_triangular(request: Request) -> tuple[Phase, ...]:
             "two shares above 0 that add up to 1",
             "Leave one of the shares empty, or choose the trapezoid.",
         )
-    return _rest_to_rest(request, trapezoid(k_a, 1.0 - k_a))
+    return _rest_to_rest(request, displacement, trapezoid(k_a, 1.0 - k_a))
 
 
 def _plan_jerk_limited(request: Request) -> tuple[Phase, ...]:
-    request.require_move()
+    displacement = request.require_move()
     j_max = request.limit("maximum jerk")
     shares = ("acceleration share", "deceleration share", "jerk share")
     if math.isfinite(j_max) and not any(request.has(share) for share in shares):
-        distance = abs(request.values["displacement"])
         limits = request.limit("maximum speed"), request.limit("maximum acceleration")
-        return _rest_to_rest(request, fastest_double_s(distance, *limits, j_max))
+        return _rest_to_rest(request, displacement, fastest_double_s(abs(displacement), *limits, j_max))
     if any(request.has(share) for share in shares):
         request.require_any(("duration", "maximum speed", "maximum acceleration", "maximum jerk"))
     else:
@@ -245,7 +244,7 @@ def _plan_jerk_limited(request: Request) -> tuple[Phase, ...]:
             "above 0, at most 0.5",
             "For acceleration that jumps, choose the trapezoid.",
         )
-    return _rest_to_rest(request, double_s(*request.stage_shares(DEFAULT_SHARE), s))
+    return _rest_to_rest(request, displacement, double_s(*request.stage_shares(DEFAULT_SHARE), s))
 
 
 _ANY_LIMIT = "displacement, and duration or at least one maximum (speed, acceleration, jerk)"
@@ -306,8 +305,8 @@ _LAWS = (
     MotionLaw(
         "constant speed",
         "carries on at the speed of the segment before",
-        "two of displacement, duration and end speed (the speed); or one of displacement and duration when "
-        "the segment before ends at that speed",
+        "duration or displacement; 'end speed' may repeat the speed, and must state it where the cycle "
+        "starts with this segment",
         frozenset({"displacement", "end speed", "duration", "maximum speed"}),
         plan_constant_speed,
     ),

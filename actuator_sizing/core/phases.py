@@ -75,7 +75,7 @@ class Phase:
         return float(x), float(v)
 
     def scaled(self, displacement: float, duration_s: float) -> Phase:
-        """The phase with position times `displacement` and time times `duration_s`.
+        """Stretch the phase: position times `displacement` and time times `duration_s`.
 
         Parameters
         ----------

@@ -12,7 +12,7 @@ ABSURD_BELOW, ABSURD_ABOVE = 1e-12, 1e15  # SI; beyond any axis, and safe from o
 
 _SIGNED = ("displacement", "end speed")
 _SHARES = ("acceleration share", "deceleration share", "jerk share")
-_SUM_ROUNDING = 1e-9
+_SUM_ROUNDING = _SMALLEST_SHARE = 1e-9
 
 
 @dataclass(frozen=True)
@@ -37,15 +37,15 @@ class Request:
     needs: str
 
     def get(self, column: str) -> float | None:
-        """Value of a column, None when empty. [-]"""
+        """Value of a column, None when empty [-]."""
         return self.values[column]
 
     def has(self, column: str) -> bool:
-        """Whether the column is filled in. [-]"""
+        """Whether the column is filled in [-]."""
         return self.values[column] is not None
 
     def limit(self, column: str) -> float:
-        """Value of a limit, infinite when empty. [-]"""
+        """Value of a limit, infinite when empty [-]."""
         value = self.values[column]
         return math.inf if value is None else value
 
@@ -71,7 +71,7 @@ class Request:
                     column, f"{value:.6g}", f"nothing: '{self.law}' does not use it", "Leave the cell empty."
                 )
             if column in _SHARES:
-                if not 0.0 <= value <= 1.0:
+                if not (value == 0.0 or _SMALLEST_SHARE <= value <= 1.0):
                     raise MotionError(column, f"{value:.6g}", "0 to 1 (0 % to 100 %)", "Correct the share.")
             else:
                 _check_number(column, value, signed=column in _SIGNED, zero=column in _SIGNED)
@@ -170,9 +170,8 @@ class Request:
         """
         k_a, k_d = self.get("acceleration share"), self.get("deceleration share")
         column = "acceleration share" if k_a is not None else "deceleration share"
-        up = default if k_a is None and k_d is None else (k_d if k_a is None else k_a)
-        down = up if k_d is None else k_d
-        assert up is not None
+        up = k_a if k_a is not None else (k_d if k_d is not None else default)
+        down = k_d if k_d is not None else up
         if up <= 0.0 or down <= 0.0 or up + down > 1.0 + _SUM_ROUNDING:
             raise MotionError(
                 column,
