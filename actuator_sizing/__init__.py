@@ -17,14 +17,14 @@ from __future__ import annotations
 from importlib import import_module
 from typing import TYPE_CHECKING, Any
 
+from actuator_sizing.version import __version__
+
 if TYPE_CHECKING:
     from actuator_sizing.case.audit import audit_case
     from actuator_sizing.case.converting import convert_case
     from actuator_sizing.case.reading import check_case, read_case
     from actuator_sizing.case.starting import start_case
     from actuator_sizing.sizing import compare
-
-__version__ = "0.1.0"
 
 __all__ = [
     "__version__",

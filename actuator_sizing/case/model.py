@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
 
@@ -41,8 +41,11 @@ class Entry:
 
 @dataclass(frozen=True)
 class Segment:
-    """One row of the duty cycle. Displacement, speeds and efforts are along the coordinate of the
-    mechanism: m, m/s, N for a linear axis; rad, rad/s, N·m for a rotary one."""
+    """One row of the duty cycle.
+
+    Displacement, speeds and efforts are along the coordinate of the mechanism: m, m/s, N for a linear axis;
+    rad, rad/s, N·m for a rotary one.
+    """
 
     row: int
     name: str
@@ -92,8 +95,9 @@ class Catalog:
     values: Mapping[str, NDArray[np.float64] | NDArray[np.object_]]
     origins: Mapping[str, NDArray[np.int8]]
     headings: Mapping[str, str]  # column key -> heading as typed
-    as_entered: Mapping[str, NDArray[np.object_]]  # raw text per row
+    as_entered: Mapping[str, Sequence[str]]  # raw text per row, without the unit
     rules: Mapping[str, Mapping[int, str]] = field(default_factory=dict)
+    entered_units: Mapping[str, str] = field(default_factory=dict)  # column key -> unit of the heading
 
     def __len__(self) -> int:
         return len(self.names)
@@ -116,16 +120,14 @@ class Case:
     drive_parameters: DriveParameters
     limits: Mapping[str, Limit]
     tolerances: tuple[Tolerance, ...]
-    options: Mapping[
-        str, float | str | None
-    ]  # rank by, number to detail, inertia-ratio advice, revision, ...
+    options: Mapping[str, float | str | None]  # axis quantities that neither mechanism nor surroundings hold
     entries: tuple[Entry, ...]  # axis, duty cycle and limits; catalog entries come from `catalog_entries`
     problems: tuple[Problem, ...]  # warnings and notes only; errors never make a Case
     fingerprint: str
 
     @property
     def cycle_duration_s(self) -> float:
-        """Duration of one cycle. [s]"""
+        """Duration of one cycle. [s]."""
         return sum(segment.duration_s for segment in self.segments)
 
     def catalog_entries(self, table: str, index: int) -> tuple[Entry, ...]:

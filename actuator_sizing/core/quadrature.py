@@ -209,6 +209,23 @@ def largest(values: FloatArray) -> tuple[FloatArray, NDArray[np.intp], FloatArra
     return maximum, piece, position
 
 
+def largest_magnitude(values: FloatArray) -> tuple[FloatArray, NDArray[np.intp], FloatArray]:
+    """Largest magnitude over all pieces: `largest` of the square, which has no kink where the sign changes.
+
+    Parameters
+    ----------
+    values : ndarray, shape (B, P, K)
+        Node values, one row per candidate. [-]
+
+    Returns
+    -------
+    maximum, piece, position : ndarray, shape (B,)
+        As in `largest`. [-]
+    """
+    squared, piece, position = largest(values**2)
+    return np.sqrt(np.maximum(squared, 0.0)), piece, position
+
+
 def _newton_extremum(series: FloatArray, start: FloatArray, grid: FloatArray) -> FloatArray:
     """Newton's method on the derivative, kept within the neighbouring grid points of the start."""
     first = legendre.legder(series, axis=1)

@@ -71,12 +71,14 @@ class LinearLoad(Mechanism):
         """Newton's second law along the guide; friction only where the load moves."""
         hanging = self.moving_mass + payload
         weight = hanging * GRAVITY_M_S2
-        friction = (
-            self.guide_friction_force + self.guide_friction_coefficient * weight * np.cos(self.inclination)
+        friction = self.guide_friction_force + self.guide_friction_coefficient * weight * np.cos(
+            self.inclination
         )
         return Efforts(
             inertia=self._mass(payload) * acceleration,
-            gravity=weight * np.sin(self.inclination) - self.counterweight_mass * GRAVITY_M_S2 + 0.0 * position,
+            gravity=weight * np.sin(self.inclination)
+            - self.counterweight_mass * GRAVITY_M_S2
+            + 0.0 * position,
             friction=friction * direction + self.viscous_friction * speed,
             process=process + 0.0 * position,
         )

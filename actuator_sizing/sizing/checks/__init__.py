@@ -1,0 +1,42 @@
+"""Every check, declared once; screening, evaluation, report and the limits table read this list.
+
+To add one: declare a `Check` in the file of its group and list it here.
+"""
+
+from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets
+from actuator_sizing.sizing.checks.drive import DRIVE_BUS, DRIVE_CONTINUOUS, DRIVE_PEAK, DRIVE_PEAK_TIME
+from actuator_sizing.sizing.checks.gearhead import (
+    GEARHEAD_EQUIVALENT,
+    GEARHEAD_MAX_SPEED,
+    GEARHEAD_MEAN_SPEED,
+    GEARHEAD_PEAK,
+    INERTIA_RATIO,
+)
+from actuator_sizing.sizing.checks.motor import (
+    MOTOR_PEAK_CURRENT,
+    MOTOR_SPEED,
+    RMS_CURRENT,
+    SPEED_TORQUE,
+    VOLTAGE,
+    WINDING_TEMPERATURE,
+)
+
+CHECKS: tuple[Check, ...] = (
+    SPEED_TORQUE,
+    RMS_CURRENT,
+    WINDING_TEMPERATURE,
+    MOTOR_PEAK_CURRENT,
+    MOTOR_SPEED,
+    VOLTAGE,
+    DRIVE_CONTINUOUS,
+    DRIVE_PEAK,
+    DRIVE_PEAK_TIME,
+    DRIVE_BUS,
+    GEARHEAD_EQUIVALENT,
+    GEARHEAD_PEAK,
+    GEARHEAD_MEAN_SPEED,
+    GEARHEAD_MAX_SPEED,
+    INERTIA_RATIO,
+)
+
+__all__ = ["CHECKS", "Check", "Measure", "Need", "Sets"]

@@ -1,0 +1,140 @@
+"""How a check is declared: once, for screening, evaluation, report and limits table alike."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+from numpy.typing import NDArray
+
+from actuator_sizing.core.parameters import (
+    DriveParameters,
+    GearheadParameters,
+    MotorParameters,
+    Surroundings,
+)
+
+if TYPE_CHECKING:
+    from actuator_sizing.sizing.demand import Demand
+    from actuator_sizing.sizing.evaluation import PairResults
+    from actuator_sizing.sizing.block import Block
+
+FloatArray = NDArray[np.float64]
+
+
+@dataclass(frozen=True)
+class Sets:
+    """S sets of motor, gearhead and drive, evaluated: what a check measures."""
+
+    demand: Demand
+    surroundings: Surroundings
+    recommended_inertia_ratio: float
+    motors: MotorParameters
+    gearheads: GearheadParameters
+    drives: DriveParameters
+    pairs: PairResults
+    #: drive side, in amperes of the drive's own basis
+    drive_current_peak_a: FloatArray
+    drive_current_rms_a: FloatArray  # largest over the drive's window
+    drive_current_rms_at_s: FloatArray
+    overload_a2s: FloatArray  # largest i²t accumulator in the periodic regime
+    overload_at_s: FloatArray
+
+    def __len__(self) -> int:
+        return len(self.motors)
+
+
+@dataclass(frozen=True)
+class Measure:
+    """Demand and capacity of S sets in SI; `utilisation` only where it is not demand/capacity."""
+
+    demand: FloatArray
+    capacity: FloatArray
+    at_s: FloatArray | None = None
+    utilisation: FloatArray | None = None
+
+    def ratio(self) -> FloatArray:
+        """Utilisation, shape (S,); infinite where there is demand but no capacity. [-]"""
+        if self.utilisation is not None:
+            return self.utilisation
+        with np.errstate(divide="ignore", invalid="ignore"):
+            ratio = self.demand / self.capacity
+        return np.where((self.demand == 0.0) & (self.capacity == 0.0), 0.0, ratio)
+
+
+@dataclass(frozen=True)
+class Need:
+    """One datum without which a check cannot be made.
+
+    `part` is ``"motors"``, ``"gearheads"``, ``"drives"`` or ``"pairs"``; `field` its parameter, `column` the
+    heading a user would fill in (for linear motors `linear_column`).
+    """
+
+    part: str
+    field: str
+    column: str
+    linear_column: str = ""
+
+    def known(self, sets: Sets) -> NDArray[np.bool_]:
+        """Which of the sets have it, shape (S,). [-]"""
+        value = getattr(getattr(sets, self.part), self.field)
+        return value if value.dtype == bool else ~np.isnan(value)
+
+
+def _always(sets: Sets) -> NDArray[np.bool_]:
+    return np.ones(len(sets), dtype=bool)
+
+
+def has_gearhead(sets: Sets) -> NDArray[np.bool_]:
+    """Sets with a gearhead, shape (S,). [-]"""
+    return ~sets.gearheads.is_direct
+
+
+@dataclass(frozen=True)
+class Check:
+    """One check.
+
+    Attributes
+    ----------
+    key, title, group : str
+        Name in results and in the `limits` table; as printed; "motor", "drive", "gearhead" or "axis".
+    unit, linear_unit : str
+        SI unit of demand and capacity, for rotary and for linear motors.
+    formula, source : str
+        The equation in symbols, and where it comes from.
+    needs : tuple of Need
+        Data without which the verdict is "not checked".
+    measure : callable
+        Sets → Measure.
+    bound : callable or None
+        Screening block → lower bound of the utilisation, broadcastable to (M, N); NaN where not known.
+    drive_bound : callable or None
+        The same for the part that depends on the drive: (pairs, drives) → (K, D).
+    working : callable
+        (sets, index) → the formula with its numbers put in.
+    applies : callable
+        Sets → mask of the sets that the check concerns.
+    is_advice : bool
+        Never fails unless the user makes it a limit.
+    """
+
+    key: str
+    title: str
+    group: str
+    unit: str
+    formula: str
+    source: str
+    needs: tuple[Need, ...]
+    measure: Callable[[Sets], Measure]
+    working: Callable[[Sets, int], str]
+    bound: Callable[[Block], FloatArray] | None = None
+    applies: Callable[[Sets], NDArray[np.bool_]] = _always
+    linear_unit: str = ""
+    is_advice: bool = False
+
+
+def digits(value: float) -> str:
+    """A number of a working with five significant digits, so that a calculator confirms it."""
+    return f"{value:.5g}"

@@ -1,0 +1,144 @@
+"""Checks of the gearhead and of the inertia seen through it."""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from actuator_sizing.core.transmission import equivalent_torque
+from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits, has_gearhead
+from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.block import Block
+
+FloatArray = NDArray[np.float64]
+
+GEAR_EXPONENT = 3.0  # equivalent torque of gears and ball bearings; common practice
+
+
+def shaft_equivalent_torque(demand: Demand) -> float:
+    """Equivalent torque at the driven shaft over the cycle. [N·m]"""
+    return equivalent_torque(demand.duration_s, demand.shaft_speed, demand.shaft_torque, GEAR_EXPONENT)[0]
+
+
+def _same(value: float, sets: Sets) -> FloatArray:
+    return np.full(len(sets), value)
+
+
+def _working(symbol: str, unit: str, measure, note: str = ""):  # type: ignore[no-untyped-def]
+    def working(sets: Sets, i: int) -> str:
+        m = measure(sets)
+        return f"{symbol} = {digits(m.demand[i])} {unit} / {digits(m.capacity[i])} {unit} = {digits(m.ratio()[i])}{note}"
+
+    return working
+
+
+def _equivalent_measure(sets: Sets) -> Measure:
+    return Measure(_same(shaft_equivalent_torque(sets.demand), sets), sets.gearheads.continuous_torque_nm)
+
+
+GEARHEAD_EQUIVALENT = Check(
+    key="gearhead_equivalent_torque",
+    title="Gearhead equivalent torque",
+    group="gearhead",
+    unit="N·m",
+    formula="T_eq = (∫ |ω| |T|³ dt / ∫ |ω| dt)^(1/3) at the output ≤ T_continuous",
+    source="Equivalent load weighted by revolutions (form of ISO 3408-5), exponent 3: common practice",
+    needs=(Need("gearheads", "continuous_torque_nm", "continuous torque"),),
+    measure=_equivalent_measure,
+    bound=lambda block: shaft_equivalent_torque(block.demand) / block.gearheads.continuous_torque_nm[None, :],
+    working=_working("T_eq / T_continuous", "N·m", _equivalent_measure),
+    applies=has_gearhead,
+)
+
+
+def _peak_measure(sets: Sets) -> Measure:
+    torque = sets.demand.shaft_torque
+    piece, node = np.unravel_index(np.abs(torque).argmax(), torque.shape)
+    return Measure(
+        _same(sets.demand.peak(torque), sets),
+        sets.gearheads.peak_torque_nm,
+        _same(float(sets.demand.time_s[piece, node]), sets),
+    )
+
+
+GEARHEAD_PEAK = Check(
+    key="gearhead_peak_torque",
+    title="Gearhead peak torque",
+    group="gearhead",
+    unit="N·m",
+    formula="max |T_output| ≤ T_peak",
+    source="Repeated peak torque of the data sheet",
+    needs=(Need("gearheads", "peak_torque_nm", "peak torque"),),
+    measure=_peak_measure,
+    bound=lambda block: (
+        block.demand.peak(block.demand.shaft_torque) / block.gearheads.peak_torque_nm[None, :]
+    ),
+    working=_working("T_max / T_peak", "N·m", _peak_measure),
+    applies=has_gearhead,
+)
+
+
+def _mean_speed_measure(sets: Sets) -> Measure:
+    return Measure(sets.pairs.speed_mean_abs_rad_s, sets.gearheads.speed_mean_max_rad_s)
+
+
+GEARHEAD_MEAN_SPEED = Check(
+    key="gearhead_mean_speed",
+    title="Gearhead mean input speed",
+    group="gearhead",
+    unit="rad/s",
+    formula="n · (1/T) ∫ |ω_shaft| dt ≤ ω_mean,max, dwell included",
+    source="Mean (nominal) input speed of the data sheet",
+    needs=(Need("gearheads", "speed_mean_max_rad_s", "mean input speed"),),
+    measure=_mean_speed_measure,
+    bound=lambda block: (
+        block.gearheads.ratio * block.demand.shaft_speed_mean / block.gearheads.speed_mean_max_rad_s
+    )[None, :],
+    working=_working("ω_mean / ω_mean,max", "rad/s", _mean_speed_measure),
+    applies=has_gearhead,
+)
+
+
+def _max_speed_measure(sets: Sets) -> Measure:
+    return Measure(sets.pairs.speed_peak_rad_s, sets.gearheads.speed_max_rad_s, sets.pairs.speed_peak_at_s)
+
+
+GEARHEAD_MAX_SPEED = Check(
+    key="gearhead_maximum_speed",
+    title="Gearhead maximum input speed",
+    group="gearhead",
+    unit="rad/s",
+    formula="n · max |ω_shaft| ≤ ω_max",
+    source="Maximum input speed of the data sheet",
+    needs=(Need("gearheads", "speed_max_rad_s", "maximum input speed"),),
+    measure=_max_speed_measure,
+    bound=lambda block: (
+        block.gearheads.ratio * block.demand.shaft_speed_peak / block.gearheads.speed_max_rad_s
+    )[None, :],
+    working=_working("ω_max / ω_limit", "rad/s", _max_speed_measure),
+    applies=has_gearhead,
+)
+
+
+def _inertia_measure(sets: Sets) -> Measure:
+    return Measure(sets.pairs.inertia_ratio, _same(sets.recommended_inertia_ratio, sets))
+
+
+def _inertia_bound(block: Block) -> FloatArray:
+    reflected = block.demand.load_inertia / block.gearheads.ratio**2
+    return reflected[None, :] / block.motors.rotor_inertia_kg_m2[:, None] / block.recommended_inertia_ratio
+
+
+INERTIA_RATIO = Check(
+    key="inertia_ratio",
+    title="Inertia ratio",
+    group="axis",
+    unit="-",
+    formula="(J_load/n²) / J_motor against the recommended ratio",
+    source="Rule of thumb, common practice, no source; stiffness and bandwidth decide",
+    needs=(),
+    measure=_inertia_measure,
+    bound=_inertia_bound,
+    working=_working("(J_load/n²)/J_motor against recommended", "", _inertia_measure),
+    is_advice=True,
+)

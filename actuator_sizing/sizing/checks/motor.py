@@ -1,0 +1,302 @@
+"""Checks of the motor: torque over speed, continuous rating, temperature, current, speed, voltage."""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from actuator_sizing.core.capability import continuous_current
+from actuator_sizing.core.machine import resistance_at, torque_of_current
+from actuator_sizing.core.parameters import MotorParameters, Surroundings
+from actuator_sizing.core.thermal import altitude_factor
+from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits
+from actuator_sizing.sizing.block import Block
+
+FloatArray = NDArray[np.float64]
+
+_CONTINUOUS = Need("motors", "continuous_current_a", "continuous current", "continuous force")
+_PEAK_CURRENT = Need("motors", "peak_current_a", "peak current")
+_LIMIT = Need("motors", "winding_limit_degc", "winding temperature limit")
+
+
+# -- continuous rating ------------------------------------------------------------------------------
+def rerated_continuous_current(
+    motors: MotorParameters, surroundings: Surroundings, speed_rad_s: FloatArray
+) -> FloatArray:
+    """Continuous current at a speed, re-rated from the sheet's ambient to the case's ambient and altitude.
+
+    Parameters
+    ----------
+    motors : MotorParameters
+        n motors. [-]
+    surroundings : Surroundings
+        Ambient and altitude. [-]
+    speed_rad_s : ndarray
+        Speed; its friction and iron loss takes part of the permitted rise. Shape (n,) or (n, m). [rad/s]
+
+    Returns
+    -------
+    ndarray, shape of `speed_rad_s`
+        ``√((ΔT − R_2 P_ω)/(R_th R_hot))`` with ``R_th = ΔT_rated/(R_hot I_cont²)``; NaN where data is missing.
+        The rating is taken as one near standstill, as sheets state it. [A]
+    """
+    shape = (slice(None),) + (None,) * (speed_rad_s.ndim - 1)
+    limit = motors.winding_limit_degc
+    hot = resistance_at(motors, limit)
+    altitude = altitude_factor(surroundings.altitude_m)
+    rise = (limit - surroundings.ambient_degc) * altitude
+    with np.errstate(divide="ignore", invalid="ignore"):
+        rating = (limit - motors.continuous_ambient_degc) / (hot * motors.continuous_current_a**2)
+    R_2 = motors.thermal_resistance_housing_k_w
+    speed_resistance = np.where(np.isnan(R_2), rating, np.fmin(R_2, rating))
+    loss = (
+        motors.friction_torque_nm[shape] * np.abs(speed_rad_s)
+        + motors.viscous_friction_nm_s[shape] * speed_rad_s**2
+    )
+    with np.errstate(divide="ignore", invalid="ignore"):
+        return continuous_current(rise[shape], rating[shape], speed_resistance[shape], loss, hot[shape])
+
+
+def _rms_measure(sets: Sets) -> Measure:
+    capacity = rerated_continuous_current(sets.motors, sets.surroundings, sets.pairs.speed_rms_rad_s)
+    return Measure(sets.pairs.current_rms_a, capacity)
+
+
+def _rms_bound(block: Block) -> FloatArray:
+    capacity = rerated_continuous_current(block.motors, block.surroundings, block.speed_rms)
+    with np.errstate(divide="ignore"):
+        return block.current_rms / capacity
+
+
+def _rms_working(sets: Sets, i: int) -> str:
+    m, p = sets.motors, sets.pairs
+    limit, hot = m.winding_limit_degc[i], resistance_at(m, m.winding_limit_degc)[i]
+    rating = (limit - m.continuous_ambient_degc[i]) / (hot * m.continuous_current_a[i] ** 2)
+    R_2 = m.thermal_resistance_housing_k_w[i]
+    share = rating if np.isnan(R_2) else min(R_2, rating)
+    omega = p.speed_rms_rad_s[i]
+    loss = m.friction_torque_nm[i] * omega + m.viscous_friction_nm_s[i] * omega**2
+    altitude = altitude_factor(sets.surroundings.altitude_m)
+    rise = (limit - sets.surroundings.ambient_degc) * altitude
+    capacity = _rms_measure(sets).capacity[i]
+    return (
+        f"R_th = ({digits(limit)} − {digits(m.continuous_ambient_degc[i])}) °C / ({digits(hot)} Ω · "
+        f"({digits(m.continuous_current_a[i])} A)²) = {digits(rating)} K/W; "
+        f"ΔT = ({digits(limit)} − {digits(sets.surroundings.ambient_degc)}) · {digits(altitude)} = {digits(rise)} K; "
+        f"P_ω at ω_rms {digits(omega)} rad/s = {digits(loss)} W; "
+        f"I_cont = √(({digits(rise)} − {digits(share)} · {digits(loss)}) / ({digits(rating)} · {digits(hot)})) "
+        f"= {digits(capacity)} A; I_rms/I_cont = {digits(p.current_rms_a[i])} / {digits(capacity)} "
+        f"= {digits(p.current_rms_a[i] / capacity) if capacity else '∞'}"
+    )
+
+
+RMS_CURRENT = Check(
+    key="rms_current",
+    title="RMS current",
+    group="motor",
+    unit="A",
+    formula="I_rms = √(1/T ∫ i² dt) ≤ I_cont(ω_rms) = √((ΔT − R_2 P_ω) / (R_th R_hot))",
+    source="Continuous rating of the data sheet, re-rated to ambient and altitude by the steady heat balance; "
+    "duty as in IEC 60034-1",
+    needs=(_CONTINUOUS, _LIMIT),
+    measure=_rms_measure,
+    bound=_rms_bound,
+    working=_rms_working,
+)
+
+
+# -- torque over the speed–torque plane -------------------------------------------------------------
+def current_limited_torque(sets: Sets) -> FloatArray:
+    """Air-gap torque at the smaller of the peak currents of motor and drive, shape (S,). [N·m]"""
+    from actuator_sizing.core.machine import amplitude_per_unit_current, saturation_coefficient
+
+    to_motor = amplitude_per_unit_current(sets.drives.current_basis) / amplitude_per_unit_current(
+        sets.motors.current_basis
+    )
+    current = np.fmin(sets.motors.peak_current_a, sets.drives.peak_current_a * to_motor)
+    K = sets.pairs.torque_constant_nm_per_a
+    torque = torque_of_current(current, K, saturation_coefficient(sets.motors))
+    # A peak torque stated on the sheet is a limit of its own, also where the current would allow more.
+    return np.fmin(torque, sets.motors.peak_torque_nm)
+
+
+def _plane_measure(sets: Sets) -> Measure:
+    p = sets.pairs
+    by_current = current_limited_torque(sets)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        current_utilisation = p.torque_peak_nm / by_current
+    voltage_governs = p.plane_utilisation >= current_utilisation
+    return Measure(
+        demand=np.where(voltage_governs, p.plane_torque_nm, p.torque_peak_nm),
+        capacity=np.where(voltage_governs, p.plane_capacity_nm, by_current),
+        at_s=np.where(voltage_governs, p.plane_at_s, p.torque_peak_at_s),
+        utilisation=np.where(voltage_governs, p.plane_utilisation, current_utilisation),
+    )
+
+
+def _plane_bound(block: Block) -> FloatArray:
+    return np.fmax(block.voltage_plane_utilisation, block.torque_peak / block.torque_limit)
+
+
+def _plane_working(sets: Sets, i: int) -> str:
+    m = _plane_measure(sets)
+    p = sets.pairs
+    unit = "N" if sets.motors.is_linear[i] else "N·m"
+    by_voltage = p.plane_utilisation[i] >= p.torque_peak_nm[i] / current_limited_torque(sets)[i]
+    what = (
+        f"largest torque at that speed within U = {digits(p.voltage_available_v[i])} V "
+        f"(R {digits(p.resistance_ohm[i])} Ω and K {digits(p.torque_constant_nm_per_a[i])} N·m/A at "
+        f"winding {digits(p.judged_winding_degc[i])} °C)"
+        if by_voltage
+        else "torque at the smaller peak current of motor and drive "
+        f"(K {digits(p.torque_constant_nm_per_a[i])} N·m/A, magnet at {digits(p.magnet_degc[i])} °C)"
+    )
+    return (
+        f"T = {digits(m.demand[i])} {unit}; T_available = {digits(m.capacity[i])} {unit}: {what}; "
+        f"T/T_available = {digits(m.ratio()[i])}"
+    )
+
+
+SPEED_TORQUE = Check(
+    key="speed_torque",
+    title="Peak torque over speed",
+    group="motor",
+    unit="N·m",
+    linear_unit="N",
+    formula="max over the cycle of |T| / T_available(ω), T_available from peak current and from "
+    "√((R i + K ω)² + (p ω L i)²) ≤ U at minimum bus voltage and hot winding",
+    source="Speed–torque plane of a DC-equivalent machine; textbook dq relations at i_d = 0",
+    needs=(
+        Need("motors", "peak_current_a", "peak current"),
+        Need("drives", "peak_current_a", "peak current"),
+    ),
+    measure=_plane_measure,
+    bound=_plane_bound,
+    working=_plane_working,
+)
+
+
+# -- winding temperature ----------------------------------------------------------------------------
+def _temperature_measure(sets: Sets) -> Measure:
+    ambient = sets.surroundings.ambient_degc
+    runaway = sets.pairs.thermal_known & ~sets.pairs.has_equilibrium
+    rise = np.where(runaway, np.inf, sets.pairs.winding_max_degc - ambient)
+    return Measure(rise, sets.motors.winding_limit_degc - ambient, sets.pairs.winding_max_at_s)
+
+
+def _temperature_bound(block: Block) -> FloatArray:
+    return (
+        block.mean_winding_rise / (block.motors.winding_limit_degc - block.surroundings.ambient_degc)[:, None]
+    )
+
+
+def _temperature_working(sets: Sets, i: int) -> str:
+    ambient = sets.surroundings.ambient_degc
+    limit = sets.motors.winding_limit_degc[i]
+    if not sets.pairs.has_equilibrium[i]:
+        return "no equilibrium: each cycle leaves the winding hotter than the last"
+    peak = sets.pairs.winding_max_degc[i]
+    return (
+        f"ϑ_max = {digits(peak)} °C in periodic steady state (mean {digits(sets.pairs.winding_mean_degc[i])} °C, "
+        f"housing mean {digits(sets.pairs.housing_mean_degc[i])} °C); rise ({digits(peak)} − {digits(ambient)}) / "
+        f"({digits(limit)} − {digits(ambient)}) = {digits((peak - ambient) / (limit - ambient))}"
+    )
+
+
+WINDING_TEMPERATURE = Check(
+    key="winding_temperature",
+    title="Winding temperature",
+    group="motor",
+    unit="K",
+    formula="max over the periodic steady state of ϑ_w − ϑ_a ≤ ϑ_limit − ϑ_a; two bodies, R(ϑ) and K(ϑ) fed back",
+    source="Two-body thermal network; periodic state by the cycle map; classes of IEC 60085",
+    needs=(
+        _LIMIT,
+        Need("pairs", "thermal_known", "thermal resistance and time constant of winding and housing"),
+    ),
+    measure=_temperature_measure,
+    bound=_temperature_bound,
+    working=_temperature_working,
+)
+
+
+# -- peak current -----------------------------------------------------------------------------------
+def _ratio_working(symbol: str, unit: str, measure) -> object:  # type: ignore[no-untyped-def]
+    def working(sets: Sets, i: int) -> str:
+        m = measure(sets)
+        shown = unit
+        if sets.motors.is_linear[i]:
+            shown = {"rad/s": "m/s"}.get(unit, unit)
+        return f"{symbol} = {digits(m.demand[i])} {shown} / {digits(m.capacity[i])} {shown} = {digits(m.ratio()[i])}"
+
+    return working
+
+
+def _current_measure(sets: Sets) -> Measure:
+    return Measure(sets.pairs.current_peak_a, sets.motors.peak_current_a, sets.pairs.torque_peak_at_s)
+
+
+def _current_bound(block: Block) -> FloatArray:
+    return block.current_peak / block.motors.peak_current_a[:, None]
+
+
+MOTOR_PEAK_CURRENT = Check(
+    key="motor_peak_current",
+    title="Motor peak current",
+    group="motor",
+    unit="A",
+    formula="max |i| ≤ I_peak; T = K(ϑ_magnet) i (1 − s i²), s from the stated peak torque",
+    source="Peak current of the data sheet (demagnetisation or saturation limit)",
+    needs=(_PEAK_CURRENT,),
+    measure=_current_measure,
+    bound=_current_bound,
+    working=_ratio_working("i_max / I_peak", "A", _current_measure),
+)
+
+
+# -- speed ------------------------------------------------------------------------------------------
+def _speed_measure(sets: Sets) -> Measure:
+    return Measure(sets.pairs.speed_peak_rad_s, sets.motors.speed_max_rad_s, sets.pairs.speed_peak_at_s)
+
+
+def _speed_bound(block: Block) -> FloatArray:
+    return block.speed_peak / block.motors.speed_max_rad_s[:, None]
+
+
+MOTOR_SPEED = Check(
+    key="motor_speed",
+    title="Motor speed",
+    group="motor",
+    unit="rad/s",
+    linear_unit="m/s",
+    formula="max |ω| = n max |ω_shaft| ≤ ω_max",
+    source="Maximum speed of the data sheet",
+    needs=(Need("motors", "speed_max_rad_s", "maximum speed", "maximum linear speed"),),
+    measure=_speed_measure,
+    bound=_speed_bound,
+    working=_ratio_working("ω_max / ω_limit", "rad/s", _speed_measure),
+)
+
+
+# -- voltage ----------------------------------------------------------------------------------------
+def _voltage_measure(sets: Sets) -> Measure:
+    return Measure(sets.pairs.voltage_peak_v, sets.pairs.voltage_available_v, sets.pairs.voltage_peak_at_s)
+
+
+def _voltage_bound(block: Block) -> FloatArray:
+    return block.voltage_peak / block.judged.voltage_available_v[:, None]
+
+
+VOLTAGE = Check(
+    key="voltage",
+    title="Voltage",
+    group="motor",
+    unit="V",
+    formula="max √((R i + K ω + L di/dt)² + (p ω L i)²) ≤ U_bus,min · m in the motor's basis",
+    source="DC-equivalent machine; textbook dq relations at i_d = 0; the larger of the values with and without "
+    "L di/dt counts",
+    needs=(),
+    measure=_voltage_measure,
+    bound=_voltage_bound,
+    working=_ratio_working("u_max / U", "V", _voltage_measure),
+)

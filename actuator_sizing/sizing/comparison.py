@@ -1,0 +1,219 @@
+"""The main job: a case goes in, a ranked and explained comparison comes out."""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Callable
+from typing import TYPE_CHECKING
+
+import numpy as np
+from numpy.typing import NDArray
+
+from actuator_sizing.case.model import Case
+from actuator_sizing.errors import InputError, Problem
+from actuator_sizing.sizing.candidates import candidate_table
+from actuator_sizing.sizing.checks import Sets
+from actuator_sizing.sizing.demand import build_demand, cycle_quantities
+from actuator_sizing.sizing.detail import SetModel, quantities, set_detail
+from actuator_sizing.sizing.evaluation import functions_of
+from actuator_sizing.sizing.judging import (
+    ORDER,
+    Verdicts,
+    active_checks,
+    check_results,
+    is_binding,
+    judge_sets,
+)
+from actuator_sizing.sizing.provenance import assumptions_of, questions_of
+from actuator_sizing.sizing.ranking import RANKINGS, nearest_drives, ranking_key
+from actuator_sizing.sizing.results import FAILS, NOT_CHECKED, Comparison, Rejections, SetResult
+from actuator_sizing.sizing.screening import Screened, screen
+from actuator_sizing.sizing.shortlist import evaluate_sets
+from actuator_sizing.version import __version__
+
+if TYPE_CHECKING:
+    from actuator_sizing.sizing.demand import Demand
+
+IndexArray = NDArray[np.intp]
+Progress = Callable[[str, float], None]
+
+_KEEP = 20_000  # survivors evaluated exactly at most, the best by the ranking
+_NEAREST_LOSERS = 40  # motor × gearhead pairs that came closest, evaluated exactly too
+
+
+def compare(
+    case: Case, *, rank_by: str | None = None, detail: int | None = None, progress: Progress | None = None
+) -> Comparison:
+    """Compare every motor × gearhead × drive set of a case.
+
+    Parameters
+    ----------
+    case : Case
+        The axis with its catalogs. [-]
+    rank_by : str, optional
+        ``"price"``, ``"mass"``, ``"reserve"`` or ``"energy"``; default: what the case says. [-]
+    detail : int, optional
+        How many sets to list with all their checks; default: what the case says. [-]
+    progress : callable, optional
+        Called with a stage and the part of it that is done, 0 to 1. [-]
+
+    Returns
+    -------
+    Comparison
+        Ranked sets, reasons of the losers, and what was not checked. [-]
+
+    Raises
+    ------
+    InputError
+        If no set can be formed at all, or the ranking is not known.
+    """
+    ranked_by = str(rank_by or case.options["rank by"])
+    if ranked_by not in RANKINGS:
+        raise InputError(
+            [Problem("axis", None, "rank by", ranked_by, " | ".join(RANKINGS), "Choose one of these.")]
+        )
+    wanted = int(detail or case.options["sets to detail"])  # type: ignore[arg-type]
+    demand = build_demand(case)
+    checks, limits = active_checks(case.limits)
+    binding = tuple(c for c, limit in zip(checks, limits, strict=True) if is_binding(c, limit))
+    allowed = {c.key: case.limits[c.key].allowed_utilisation for c in binding}
+    screened = screen(
+        case,
+        demand,
+        functions_of(demand),
+        binding,
+        allowed,
+        ranked_by,
+        keep=_KEEP,
+        losers=_NEAREST_LOSERS,
+        progress=_stage(progress, "screening"),
+    )
+    if screened.screened == 0:
+        raise InputError([_no_set(case)])
+    losers = nearest_drives(case, demand, screened.nearest_losers)
+    index = np.unique(np.concatenate([screened.survivors, losers]), axis=0)
+    sets = evaluate_sets(case, demand, index, _stage(progress, "evaluation"))
+    verdicts = judge_sets(sets, checks, limits)
+    order = _rank(case, sets, verdicts, index, ranked_by)
+    listed = _listed(order, verdicts, index, wanted)
+    results = tuple(
+        _set_result(case, demand, sets, verdicts, index, int(i), rank, with_curves=rank == 1)
+        for rank, i in enumerate(listed, start=1)
+    )
+    survivor_rows = _is_survivor(index, screened.survivors)
+    return Comparison(
+        case=case,
+        demand=demand,
+        ranked_by=ranked_by,
+        sets=results,
+        rejections=_rejections(screened, verdicts, survivor_rows),
+        candidates=candidate_table(case, sets, verdicts, index, order, screened),
+        cycle=cycle_quantities(demand),
+        assumptions=assumptions_of(case, results[0]),
+        questions=questions_of(results),
+        version=__version__,
+    )
+
+
+def _stage(progress: Progress | None, name: str) -> Callable[[float], None] | None:
+    if progress is None:
+        return None
+    return lambda done: progress(name, done)
+
+
+def _no_set(case: Case) -> Problem:
+    kind = "linear" if case.mechanism.drives_linear_motor else "rotary"
+    return Problem(
+        "motors",
+        None,
+        "",
+        f"{len(case.motors)} motors, {len(case.gearheads)} gearheads, {len(case.drives)} drives",
+        f"at least one {kind} motor and a drive that serves its commutation",
+        "Add such parts, or check the mechanism and the commutation columns.",
+    )
+
+
+def _rank(case: Case, sets: Sets, verdicts: Verdicts, index: IndexArray, ranked_by: str) -> IndexArray:
+    """Passing sets first, by the key; then those not fully checked; then the losers, nearest first."""
+    key = ranking_key(case, sets, verdicts, index, ranked_by)
+    fails = verdicts.verdict == ORDER.index(FAILS)
+    unchecked = verdicts.verdict == ORDER.index(NOT_CHECKED)
+    group = np.where(fails, 2, np.where(unchecked, 1, 0))
+    key = np.where(fails, verdicts.severity, key)
+    return np.lexsort((index[:, 2], index[:, 1], index[:, 0], key, group))
+
+
+def _listed(order: IndexArray, verdicts: Verdicts, index: IndexArray, wanted: int) -> IndexArray:
+    """The sets shown in full: the best, and as many losers, each motor and gearhead once."""
+    fails = verdicts.verdict[order] == ORDER.index(FAILS)
+    best = order[~fails][:wanted]
+    nearest: list[int] = []
+    seen: set[tuple[int, int]] = set()
+    for i in order[fails]:
+        pair = (int(index[i, 0]), int(index[i, 1]))
+        if pair not in seen:
+            seen.add(pair)
+            nearest.append(int(i))
+        if len(nearest) == wanted:
+            break
+    return np.concatenate([best, np.array(nearest, dtype=np.intp)])
+
+
+def _is_survivor(index: IndexArray, survivors: IndexArray) -> NDArray[np.bool_]:
+    known = {tuple(row) for row in survivors.tolist()}
+    return np.array([tuple(row) in known for row in index.tolist()], dtype=bool)
+
+
+def _rejections(screened: Screened, verdicts: Verdicts, survivor: NDArray[np.bool_]) -> Rejections:
+    failed = survivor & (verdicts.verdict == ORDER.index(FAILS))
+    counts = Counter(screened.rejected_by_check)
+    for column in verdicts.governing[failed]:
+        counts[verdicts.checks[column].key] += 1
+    passing = survivor & (verdicts.verdict < ORDER.index(NOT_CHECKED))
+    rejected = screened.screened - screened.survivor_count + int(failed.sum())
+    return Rejections(
+        sets_total=screened.sets_total,
+        incompatible=screened.incompatible,
+        screened=screened.screened,
+        rejected=rejected,
+        by_check=dict(sorted(counts.items(), key=lambda item: -item[1])),
+        survivors=screened.survivor_count,
+        confirmed_passing=int(passing.sum()),
+        evaluated=int(survivor.sum()),
+        complete=screened.survivor_count == len(screened.survivors),
+    )
+
+
+def _set_result(
+    case: Case,
+    demand: Demand,
+    sets: Sets,
+    verdicts: Verdicts,
+    index: IndexArray,
+    i: int,
+    rank: int,
+    *,
+    with_curves: bool,
+) -> SetResult:
+    motor, gearhead, drive = (int(x) for x in index[i])
+    model = SetModel(case, demand, motor, gearhead, drive)
+    parts = (sets.motors, sets.gearheads, sets.drives)
+    price, mass = (float(sum(getattr(part, name)[i] for part in parts)) for name in ("price", "mass_kg"))
+    is_direct = bool(sets.gearheads.is_direct[i])
+    return SetResult(
+        rank=rank,
+        motor=case.motors.names[motor],
+        gearhead=None if is_direct else case.gearheads.names[gearhead],
+        ratio=float(sets.gearheads.ratio[i]),
+        drive=case.drives.names[drive],
+        verdict=ORDER[int(verdicts.verdict[i])],
+        governing_check=verdicts.checks[int(verdicts.governing[i])].key,
+        price=price if np.isfinite(price) else None,
+        mass_kg=mass if np.isfinite(mass) else None,
+        quantities=quantities(model, sets, i),
+        checks=check_results(sets, verdicts, i, [segment.name for segment in case.segments]),
+        motor_index=motor,
+        gearhead_index=gearhead,
+        drive_index=drive,
+        detail=set_detail(model, sets, i) if with_curves else None,
+    )

@@ -1,0 +1,175 @@
+"""Utilisation to verdict: hold S sets against every check and find what governs."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from actuator_sizing.case.model import Limit
+from actuator_sizing.sizing.checks import CHECKS, Check, Measure, Sets
+from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES, CheckResult
+
+FloatArray = NDArray[np.float64]
+
+#: Verdicts from best to worst; a set is as good as its worst check.
+ORDER = (PASSES, LOW_RESERVE, NOT_CHECKED, FAILS)
+_PASSES, _LOW, _UNKNOWN, _FAILS = range(4)
+NOT_APPLICABLE = -1
+
+
+@dataclass(frozen=True)
+class Verdicts:
+    """S sets against C checks."""
+
+    checks: tuple[Check, ...]
+    limits: tuple[Limit, ...]
+    utilisation: FloatArray  # (S, C), NaN where not checked or not applicable
+    codes: NDArray[np.int8]  # (S, C), index into ORDER, or NOT_APPLICABLE
+    verdict: NDArray[np.int8]  # (S,)
+    governing: NDArray[np.intp]  # (S,) column of the check that governs
+    severity: FloatArray  # (S,) utilisation over allowed of the governing check
+
+
+def active_checks(limits: Mapping[str, Limit]) -> tuple[tuple[Check, ...], tuple[Limit, ...]]:
+    """The checks that the case applies, with their limits, in the order of the list. [-]"""
+    kept = [(check, limits[check.key]) for check in CHECKS if limits[check.key].applies != "no"]
+    return tuple(check for check, _ in kept), tuple(limit for _, limit in kept)
+
+
+def is_binding(check: Check, limit: Limit) -> bool:
+    """Whether a set can fail this check, or is only advised by it."""
+    return limit.applies == "yes"
+
+
+def judge_sets(sets: Sets, checks: tuple[Check, ...], limits: tuple[Limit, ...]) -> Verdicts:
+    """Hold S sets against the checks.
+
+    Parameters
+    ----------
+    sets : Sets
+        Evaluated sets. [-]
+    checks : tuple of Check
+        Active checks. [-]
+    limits : tuple of Limit
+        Their limits, in the same order. [-]
+
+    Returns
+    -------
+    Verdicts
+        Utilisation, verdict and governing check. Comparisons use unrounded values; a check whose data is
+        missing is "not checked", never passed. [-]
+    """
+    count = len(sets)
+    utilisation = np.full((count, len(checks)), np.nan)
+    codes = np.full((count, len(checks)), NOT_APPLICABLE, dtype=np.int8)
+    relative = np.full((count, len(checks)), -np.inf)
+    for column, (check, limit) in enumerate(zip(checks, limits, strict=True)):
+        applies = check.applies(sets)
+        known = applies.copy()
+        for need in check.needs:
+            known &= need.known(sets)
+        ratio = check.measure(sets).ratio()
+        known &= ~np.isnan(ratio)
+        code = np.full(count, _UNKNOWN, dtype=np.int8)
+        code[known] = _PASSES
+        reserve = limit.allowed_utilisation * (1.0 - limit.recommended_reserve)
+        code[known & (ratio > reserve)] = _LOW
+        beyond = known & (ratio > limit.allowed_utilisation)
+        binding = is_binding(check, limit)
+        code[beyond] = _FAILS if binding else _LOW
+        codes[applies, column] = code[applies]
+        utilisation[known, column] = ratio[known]
+        # Advice never governs while a limit is there to govern.
+        relative[known, column] = ratio[known] / limit.allowed_utilisation if binding else -1.0
+        if not binding:
+            # Advice that was not followed is said in its own row, not in the verdict of the set.
+            codes[:, column] = np.where(codes[:, column] == _FAILS, _LOW, codes[:, column])
+    binding_columns = np.array([is_binding(c, x) for c, x in zip(checks, limits, strict=True)])
+    verdict = np.max(np.where(binding_columns, codes, _PASSES), axis=1, initial=_PASSES).astype(np.int8)
+    governing = relative.argmax(axis=1)
+    return Verdicts(
+        checks,
+        limits,
+        utilisation,
+        codes,
+        verdict,
+        governing,
+        relative[np.arange(count), governing],
+    )
+
+
+def check_results(
+    sets: Sets, verdicts: Verdicts, index: int, segment_at: list[str]
+) -> tuple[CheckResult, ...]:
+    """The checks of one set in full, for report and results.
+
+    Parameters
+    ----------
+    sets : Sets
+        Evaluated sets. [-]
+    verdicts : Verdicts
+        Their verdicts. [-]
+    index : int
+        Which set. [-]
+    segment_at : list of str
+        Names of the segments. [-]
+
+    Returns
+    -------
+    tuple of CheckResult
+        In the order of the checks; those that do not apply are left out. [-]
+    """
+    results = []
+    linear = bool(sets.motors.is_linear[index])
+    for column, (check, limit) in enumerate(zip(verdicts.checks, verdicts.limits, strict=True)):
+        code = int(verdicts.codes[index, column])
+        if code == NOT_APPLICABLE:
+            continue
+        measure: Measure = check.measure(sets)
+        known = code != _UNKNOWN
+        missing = tuple(
+            need.linear_column if linear and need.linear_column else need.column
+            for need in check.needs
+            if not need.known(sets)[index]
+        )
+        at = float(measure.at_s[index]) if known and measure.at_s is not None else None
+        if at is not None and not np.isfinite(at):
+            at = None
+        unit = check.linear_unit if linear and check.linear_unit else check.unit
+        results.append(
+            CheckResult(
+                check=check.key,
+                title=check.title,
+                group=check.group,
+                demand=_number(measure.demand[index]) if known else None,
+                capacity=_number(measure.capacity[index]) if known else None,
+                unit=unit,
+                utilisation=float(verdicts.utilisation[index, column]) if known else None,
+                allowed=limit.allowed_utilisation,
+                recommended_reserve=limit.recommended_reserve,
+                verdict=ORDER[code],
+                at_time_s=at,
+                segment=_segment_name(sets, at, segment_at),
+                formula=check.formula,
+                source=check.source,
+                working=check.working(sets, index) if known else "",
+                missing=missing,
+                is_advice=not is_binding(check, limit),
+            )
+        )
+    return tuple(results)
+
+
+def _number(value: float) -> float | None:
+    return float(value) if not np.isnan(value) else None
+
+
+def _segment_name(sets: Sets, at_s: float | None, names: list[str]) -> str | None:
+    if at_s is None:
+        return None
+    demand = sets.demand
+    piece = int(np.clip(np.searchsorted(demand.start_s, at_s, side="left") - 1, 0, len(demand.start_s) - 1))
+    return names[int(demand.segment[piece])]

@@ -1,0 +1,431 @@
+"""All motor × gearhead × drive sets at once, by lower bounds: who can possibly pass, who fails and why.
+
+RMS torque is exact from moments, peaks are lower bounds from support points, so that no set that passes is
+ever lost; the survivors are then evaluated exactly. A set whose motor and gearhead fail whatever the drive is
+counted under the worst of their checks, the others under the worst check of the drive.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+from numpy.typing import NDArray
+
+from actuator_sizing.case.model import Case
+from actuator_sizing.core.machine import amplitude_per_unit_current, judge, torque_of_current
+from actuator_sizing.core.moments import (
+    SupportPoints,
+    gearhead_rows,
+    mean_products,
+    mean_square_tables,
+    support_points,
+)
+from actuator_sizing.core.parameters import (
+    BRUSHED,
+    SINUSOIDAL,
+    SIX_STEP,
+    DriveParameters,
+    MotorParameters,
+)
+from actuator_sizing.sizing.block import Block
+from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.thermal_data import thermal_network
+
+if TYPE_CHECKING:
+    from actuator_sizing.sizing.checks.base import Check
+
+FloatArray = NDArray[np.float64]
+
+_MOTORS_PER_BLOCK, _GEARHEADS_PER_BLOCK = 2048, 16  # (M, N) arrays of 256 kB stay in the L2 cache
+LISTED_SETS = 200_000  # up to so many sets, each loser is listed with what governs it
+_ROUNDING = 1e-9  # bounds are rejected only beyond this part above the allowed value
+
+
+@dataclass(frozen=True)
+class Screened:
+    """What the bounds say about all sets."""
+
+    sets_total: int
+    incompatible: int
+    screened: int
+    rejected_by_check: Mapping[str, int]
+    survivor_count: int
+    #: sets that may pass, at most `keep` of them, best key first: motor, gearhead, drive index
+    survivors: NDArray[np.intp]  # (S, 3)
+    #: motor, gearhead index of the rejected pairs that came closest, nearest first
+    nearest_losers: NDArray[np.intp]  # (L, 2)
+    #: the rejected sets with what governs them, only where all sets are at most `LISTED_SETS`
+    lost: NDArray[np.intp]  # (R, 3)
+    lost_check: NDArray[np.intp]  # (R,) index into check_names
+    lost_bound: FloatArray  # (R,) lower bound of the utilisation over allowed
+    check_names: tuple[str, ...]
+
+
+def compatible(motors: MotorParameters, drives: DriveParameters) -> NDArray[np.bool_]:
+    """Which drive can commutate which motor, shape (M, D). [-]"""
+    served = {
+        BRUSHED: drives.serves_brushed,
+        SIX_STEP: drives.serves_six_step,
+        SINUSOIDAL: drives.serves_sinusoidal,
+    }
+    answer = np.zeros((len(motors), len(drives)), dtype=bool)
+    for commutation, mask in served.items():
+        answer |= (motors.commutation == commutation)[:, None] & mask[None, :]
+    return answer
+
+
+def fits_mechanism(case: Case) -> tuple[NDArray[np.intp], NDArray[np.intp]]:
+    """Indices of the motors and gearheads that the mechanism can use at all. [-]"""
+    wants_linear = case.mechanism.drives_linear_motor
+    motors = np.flatnonzero(case.motor_parameters.is_linear == wants_linear)
+    gearheads = np.arange(len(case.gearhead_parameters))
+    if wants_linear:
+        gearheads = np.flatnonzero(case.gearhead_parameters.is_direct)
+    return motors, gearheads
+
+
+class _Pool:
+    """The best `keep` sets by key, whatever number is added."""
+
+    def __init__(self, keep: int):
+        self.keep = keep
+        self.rows: list[NDArray[np.intp]] = []
+        self.keys: list[FloatArray] = []
+        self.size = 0
+
+    def add(self, rows: NDArray[np.intp], keys: FloatArray) -> None:
+        self.rows.append(rows)
+        self.keys.append(keys)
+        self.size += len(keys)
+        if self.size > 4 * self.keep:
+            self._prune()
+
+    def _prune(self) -> None:
+        rows, keys = np.concatenate(self.rows), np.concatenate(self.keys)
+        best = np.argpartition(keys, self.keep)[: self.keep]
+        self.rows, self.keys, self.size = [rows[best]], [keys[best]], self.keep
+
+    def sorted(self, width: int) -> NDArray[np.intp]:
+        if not self.rows:
+            return np.empty((0, width), dtype=np.intp)
+        rows, keys = np.concatenate(self.rows), np.concatenate(self.keys)
+        # Ties fall back on the index order, so that the answer does not depend on the block size.
+        order = np.lexsort((*rows.T[::-1], keys))[: self.keep]
+        return np.asarray(rows[order])
+
+
+def screen(
+    case: Case,
+    demand: Demand,
+    functions: FloatArray,
+    checks: tuple[Check, ...],
+    allowed: Mapping[str, float],
+    key: str,
+    *,
+    keep: int,
+    losers: int,
+    progress: Callable[[float], None] | None = None,
+) -> Screened:
+    """Screen every set of a case.
+
+    Parameters
+    ----------
+    case : Case
+        The case with its catalogs. [-]
+    demand : Demand
+        The cycle at the driven shaft. [-]
+    functions : ndarray, shape (6, P, K)
+        The six functions of `core.moments`. [-]
+    checks : tuple of Check
+        Checks that can fail a set. [-]
+    allowed : mapping
+        Allowed utilisation by check key. [-]
+    key : str
+        ``"price"``, ``"mass"``, ``"reserve"`` or ``"energy"``: what the survivors are ordered by. [-]
+    keep : int
+        Most survivors kept. [-]
+    losers : int
+        Most nearest losers kept. [-]
+    progress : callable, optional
+        Called with the part done, 0 to 1. [-]
+
+    Returns
+    -------
+    Screened
+        Counts, survivors and nearest losers. [-]
+    """
+    motor_index, gearhead_index = fits_mechanism(case)
+    drives = case.drive_parameters
+    products = mean_products(demand.duration_s, functions)
+    context = _Context(
+        case=case,
+        demand=demand,
+        products=products,
+        support=support_points(functions, demand.flow),
+        voltage_support=_voltage_points(functions, demand),
+        checks=tuple(check for check in checks if check.bound is not None),
+        allowed=allowed,
+        drive_side=_DriveSide(case, allowed),
+        key=key,
+    )
+    total = len(case.motor_parameters) * len(case.gearhead_parameters) * len(drives)
+    losses = _Losses(
+        (*(check.key for check in context.checks), *context.drive_side.names), listed=total <= LISTED_SETS
+    )
+    pool, nearest = _Pool(keep), _Pool(losers)
+    survivors = screened = 0
+    blocks = [
+        (motor_index[a : a + _MOTORS_PER_BLOCK], gearhead_index[b : b + _GEARHEADS_PER_BLOCK])
+        for a in range(0, len(motor_index), _MOTORS_PER_BLOCK)
+        for b in range(0, len(gearhead_index), _GEARHEADS_PER_BLOCK)
+    ]
+    for done, (m, g) in enumerate(blocks):
+        part = _screen_block(context, m, g, pool, nearest, losses)
+        survivors += part[0]
+        screened += part[1]
+        if progress is not None:
+            progress((done + 1) / len(blocks))
+    counts: dict[str, int] = {}
+    for name, number in zip(losses.names, losses.counts, strict=True):
+        counts[name] = counts.get(name, 0) + int(number)
+    lost, lost_check, lost_bound = losses.table()
+    return Screened(
+        sets_total=total,
+        incompatible=total - screened,
+        screened=screened,
+        rejected_by_check={name: count for name, count in counts.items() if count},
+        survivor_count=survivors,
+        survivors=pool.sorted(3),
+        nearest_losers=nearest.sorted(2),
+        lost=lost,
+        lost_check=lost_check,
+        lost_bound=lost_bound,
+        check_names=losses.names,
+    )
+
+
+class _Losses:
+    """Counts of rejected sets by check and, for catalogs of a size to list, the sets themselves."""
+
+    def __init__(self, names: tuple[str, ...], *, listed: bool):
+        self.names = names
+        self.counts = np.zeros(len(names), dtype=np.int64)
+        self.listed = listed
+        self.rows: list[NDArray[np.intp]] = []
+        self.checks: list[NDArray[np.intp]] = []
+        self.bounds: list[FloatArray] = []
+
+    def add(self, check: NDArray[np.intp], weight: NDArray[np.intp]) -> None:
+        """Count `weight` sets under each check."""
+        self.counts += np.bincount(check, weights=weight, minlength=len(self.names)).astype(np.int64)
+
+    def keep(self, rows: NDArray[np.intp], check: NDArray[np.intp], bound: FloatArray) -> None:
+        """List the sets themselves."""
+        if self.listed:
+            self.rows.append(rows)
+            self.checks.append(check)
+            self.bounds.append(bound)
+
+    def table(self) -> tuple[NDArray[np.intp], NDArray[np.intp], FloatArray]:
+        """All listed sets."""
+        if not self.rows:
+            return np.empty((0, 3), dtype=np.intp), np.empty(0, dtype=np.intp), np.empty(0)
+        return np.concatenate(self.rows), np.concatenate(self.checks), np.concatenate(self.bounds)
+
+
+@dataclass(frozen=True)
+class _Context:
+    case: Case
+    demand: Demand
+    products: FloatArray
+    support: SupportPoints
+    voltage_support: SupportPoints
+    checks: tuple[Check, ...]
+    allowed: Mapping[str, float]
+    drive_side: _DriveSide
+    key: str
+
+
+class _DriveSide:
+    """The drives' limits as amplitudes over the allowed utilisation, and what they cost."""
+
+    def __init__(self, case: Case, allowed: Mapping[str, float]):
+        d, s = case.drive_parameters, case.surroundings
+        amplitude = amplitude_per_unit_current(d.current_basis)
+        self.peak = np.where(np.isnan(d.peak_current_a), np.inf, d.peak_current_a * amplitude)
+        self.continuous = np.where(
+            np.isnan(d.continuous_current_a), np.inf, d.continuous_current_a * amplitude
+        )
+        # The drive's peak current also bounds the torque over speed; the stricter of the two allowed values counts.
+        strict = min(allowed.get("drive_peak_current", np.inf), allowed.get("speed_torque", np.inf))
+        self.peak_allowed = strict
+        self.peak_check = "drive_peak_current" if "drive_peak_current" in allowed else "speed_torque"
+        self.continuous_allowed = allowed.get("drive_continuous_current", np.inf)
+        with np.errstate(invalid="ignore"):
+            bus = np.fmax(s.bus_max_v / d.bus_voltage_max_v, d.bus_voltage_min_v / s.bus_min_v)
+        self.bus = np.nan_to_num(bus, nan=0.0) / allowed.get("drive_bus_voltage", np.inf)
+        self.price = d.price
+        self.mass = d.mass_kg
+        self.names = ("drive_bus_voltage", "drive_continuous_current", self.peak_check)
+
+
+def _voltage_points(functions: FloatArray, demand: Demand) -> SupportPoints:
+    """Instants of largest ``|ω|`` mixed with torque: where the voltage can govern."""
+    flat = functions.reshape(6, -1)
+    direction = np.repeat(demand.direction, functions.shape[2])
+    moving = np.flatnonzero(direction != 0.0)
+    if not len(moving):
+        return SupportPoints(np.empty((0, 6)), np.empty(0))
+    speed = direction[moving] * flat[5, moving]
+    torque = direction[moving] * (flat[1] + flat[2])[moving]
+    along = direction[moving] * flat[0, moving]
+    speed, torque, along = (x / (np.max(np.abs(x)) or 1.0) for x in (speed, torque, along))
+    chosen = {
+        int(moving[(speed + w * torque + u * along).argmax()])
+        for w, u in ((1e-6, 0.0), (0.0, 1e-6), (0.3, 0.0), (0.0, 0.3), (0.3, 0.3))
+    }
+    index = np.array(sorted(chosen))
+    return SupportPoints(flat[:, index].T, direction[index])
+
+
+def _screen_block(
+    context: _Context,
+    motor_index: NDArray[np.intp],
+    gearhead_index: NDArray[np.intp],
+    pool: _Pool,
+    nearest: _Pool,
+    losses: _Losses,
+) -> tuple[int, int]:
+    case = context.case
+    motors, gearheads = case.motor_parameters.take(motor_index), case.gearhead_parameters.take(gearhead_index)
+    judged = judge(motors, case.surroundings)
+    by_current = torque_of_current(
+        motors.peak_current_a, judged.torque_constant_nm_per_a, judged.saturation_per_a2
+    )
+    U, V = mean_square_tables(
+        context.products,
+        gearhead_rows(gearheads),
+        motors.rotor_inertia_kg_m2,
+        motors.friction_torque_nm,
+        motors.viscous_friction_nm_s,
+    )
+    block = Block(
+        demand=context.demand,
+        surroundings=case.surroundings,
+        recommended_inertia_ratio=float(case.options["recommended inertia ratio"]),  # type: ignore[arg-type]
+        motors=motors,
+        judged=judged,
+        network=thermal_network(motors, case.surroundings),
+        torque_limit=np.fmin(by_current, motors.peak_torque_nm)[:, None],
+        gearheads=gearheads,
+        mean_square=np.maximum(U @ V, 0.0),
+        support=context.support,
+        voltage_support=context.voltage_support,
+    )
+    shape = (len(motors), len(gearheads))
+    worst = np.zeros(shape)
+    which = np.zeros(shape, dtype=np.int8)
+    for number, check in enumerate(context.checks):
+        assert check.bound is not None
+        utilisation = check.bound(block) / context.allowed[check.key]
+        if check.group == "gearhead":
+            utilisation = np.where(gearheads.is_direct[None, :], 0.0, utilisation)
+        higher = utilisation > worst  # NaN, not known, is never higher
+        worst = np.where(higher, utilisation, worst)
+        which = np.where(higher, np.int8(number), which)
+    fails = worst > 1.0 + _ROUNDING
+
+    served = compatible(motors, case.drive_parameters)
+    drives_per_motor = served.sum(axis=1)
+    losses.add(which[fails], np.broadcast_to(drives_per_motor[:, None], shape)[fails])
+    if losses.listed:
+        row, column, drive = np.nonzero(fails[:, :, None] & served[:, None, :])
+        losses.keep(
+            np.column_stack([motor_index[row], gearhead_index[column], drive]),
+            which[row, column].astype(np.intp),
+            worst[row, column],
+        )
+    rows, columns = np.nonzero(fails & (drives_per_motor > 0)[:, None])
+    if len(rows):
+        nearest.add(np.column_stack([motor_index[rows], gearhead_index[columns]]), worst[rows, columns])
+    survivors = _screen_drives(
+        context, block, ~fails, served, motor_index, gearhead_index, worst, pool, nearest, losses
+    )
+    return survivors, int(drives_per_motor.sum()) * len(gearheads)
+
+
+def _screen_drives(
+    context: _Context,
+    block: Block,
+    passing: NDArray[np.bool_],
+    served: NDArray[np.bool_],
+    motor_index: NDArray[np.intp],
+    gearhead_index: NDArray[np.intp],
+    worst: FloatArray,
+    pool: _Pool,
+    nearest: _Pool,
+    losses: _Losses,
+) -> int:
+    """Hold the pairs that may pass against every drive; returns how many sets survive."""
+    side = context.drive_side
+    rows, columns = np.nonzero(passing)
+    amplitude = amplitude_per_unit_current(block.motors.current_basis)
+    total = 0
+    step = max(1, 2**16 // max(1, len(side.peak)))
+    for start in range(0, len(rows), step):
+        r, c = rows[start : start + step], columns[start : start + step]
+        peak = (block.current_peak[r, c] * amplitude[r])[:, None]
+        rms = (block.current_rms[r, c] * amplitude[r])[:, None]
+        ok = served[r]
+        bus = np.broadcast_to(side.bus[None, :], ok.shape)
+        continuous = rms / (side.continuous * side.continuous_allowed)[None, :]
+        top = peak / (side.peak * side.peak_allowed)[None, :]
+        stack = np.stack([bus, continuous, top])
+        drive_worst = stack.max(axis=0)
+        survives = ok & (drive_worst <= 1.0 + _ROUNDING)
+        check = len(context.checks) + stack.argmax(axis=0)
+        out_row, out_drive = np.nonzero(ok & ~survives)
+        losses.add(check[out_row, out_drive], np.ones(len(out_row), dtype=np.intp))
+        losses.keep(
+            np.column_stack([motor_index[r[out_row]], gearhead_index[c[out_row]], out_drive]),
+            check[out_row, out_drive],
+            drive_worst[out_row, out_drive],
+        )
+        k, d = np.nonzero(survives)
+        total += len(k)
+        if len(k):
+            m, g = motor_index[r[k]], gearhead_index[c[k]]
+            bound = np.maximum(worst[r[k], c[k]], drive_worst[k, d])
+            pool.add(np.column_stack([m, g, d]), _key(context, block, m, g, d, r[k], c[k], bound))
+        none = ok.any(axis=1) & ~survives.any(axis=1)
+        if none.any():
+            closest = np.where(ok, drive_worst, np.inf).min(axis=1)
+            nearest.add(np.column_stack([motor_index[r[none]], gearhead_index[c[none]]]), closest[none])
+    return total
+
+
+def _key(
+    context: _Context,
+    block: Block,
+    m: NDArray[np.intp],
+    g: NDArray[np.intp],
+    d: NDArray[np.intp],
+    row: NDArray[np.intp],
+    column: NDArray[np.intp],
+    bound: FloatArray,
+) -> FloatArray:
+    """What the survivors are ordered by; smaller is better, unknown comes last."""
+    case = context.case
+    if context.key == "reserve":
+        return bound
+    if context.key == "energy":
+        j = block.judged
+        loss = j.resistance_ohm[row] / j.torque_constant_nm_per_a[row] ** 2 * block.mean_square[row, column]
+        return np.asarray(loss)
+    name = "price" if context.key == "price" else "mass_kg"
+    parts = (case.motor_parameters, case.gearhead_parameters, case.drive_parameters)
+    total = sum(getattr(part, name)[index] for part, index in zip(parts, (m, g, d), strict=True))
+    return np.nan_to_num(np.asarray(total), nan=np.finfo(float).max)

@@ -1,0 +1,124 @@
+"""From screened survivors to exactly evaluated sets."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, fields
+
+import numpy as np
+from numpy.typing import NDArray
+
+from actuator_sizing.case.model import Case
+from actuator_sizing.core.machine import amplitude_per_unit_current, judge
+from actuator_sizing.sizing.checks import Sets
+from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.drive_currents import SquaredCurrent, overload, windowed_rms
+from actuator_sizing.sizing.evaluation import PairResults, course, evaluate_pairs
+
+FloatArray = NDArray[np.float64]
+IndexArray = NDArray[np.intp]
+
+_PAIRS_PER_CHUNK = 256
+
+
+@dataclass(frozen=True)
+class _DriveView:
+    peak: FloatArray
+    rms: FloatArray
+    rms_at: FloatArray
+    overload: FloatArray
+    overload_at: FloatArray
+
+
+def evaluate_sets(
+    case: Case, demand: Demand, index: IndexArray, progress: Callable[[float], None] | None = None
+) -> Sets:
+    """Evaluate sets exactly; each distinct motor × gearhead pair only once.
+
+    Parameters
+    ----------
+    case : Case
+        The case with its catalogs. [-]
+    demand : Demand
+        The cycle. [-]
+    index : ndarray of int, shape (S, 3)
+        Motor, gearhead and drive of each set. [-]
+    progress : callable, optional
+        Called with the part done, 0 to 1. [-]
+
+    Returns
+    -------
+    Sets
+        Everything the checks measure, in the order of `index`. [-]
+    """
+    pairs, pair_of_set = np.unique(index[:, :2], axis=0, return_inverse=True)
+    pair_of_set = pair_of_set.reshape(-1)
+    results: list[PairResults] = []
+    order: list[IndexArray] = []
+    views: list[_DriveView] = []
+    for start in range(0, len(pairs), _PAIRS_PER_CHUNK):
+        chunk = pairs[start : start + _PAIRS_PER_CHUNK]
+        motors = case.motor_parameters.take(chunk[:, 0])
+        gearheads = case.gearhead_parameters.take(chunk[:, 1])
+        results.append(evaluate_pairs(demand, motors, gearheads, case.surroundings))
+        members = np.flatnonzero((pair_of_set >= start) & (pair_of_set < start + len(chunk)))
+        order.append(members)
+        views.append(
+            _drive_view(case, demand, chunk, pair_of_set[members] - start, index[members, 2], results[-1])
+        )
+        if progress is not None:
+            progress(min(1.0, (start + _PAIRS_PER_CHUNK) / len(pairs)))
+    all_pairs = PairResults(
+        **{f.name: np.concatenate([getattr(part, f.name) for part in results]) for f in fields(PairResults)}
+    )
+    back = np.argsort(np.concatenate(order), kind="stable")
+    view = {
+        f.name: np.concatenate([getattr(part, f.name) for part in views])[back] for f in fields(_DriveView)
+    }
+    return Sets(
+        demand=demand,
+        surroundings=case.surroundings,
+        recommended_inertia_ratio=float(case.options["recommended inertia ratio"]),  # type: ignore[arg-type]
+        motors=case.motor_parameters.take(index[:, 0]),
+        gearheads=case.gearhead_parameters.take(index[:, 1]),
+        drives=case.drive_parameters.take(index[:, 2]),
+        pairs=all_pairs.take(pair_of_set),
+        drive_current_peak_a=view["peak"],
+        drive_current_rms_a=view["rms"],
+        drive_current_rms_at_s=view["rms_at"],
+        overload_a2s=view["overload"],
+        overload_at_s=view["overload_at"],
+    )
+
+
+def _drive_view(
+    case: Case,
+    demand: Demand,
+    pairs: IndexArray,
+    pair: IndexArray,
+    drive: IndexArray,
+    results: PairResults,
+) -> _DriveView:
+    """Currents as the drives see them: amplitudes compared, expressed in the basis of each drive."""
+    motors = case.motor_parameters.take(pairs[:, 0])
+    gearheads = case.gearhead_parameters.take(pairs[:, 1])
+    drives = case.drive_parameters.take(drive)
+    amplitude = amplitude_per_unit_current(motors.current_basis)
+    current = course(demand, motors, gearheads, judge(motors, case.surroundings)).current_a
+    squared = SquaredCurrent(demand.duration_s, (current * amplitude[:, None, None]) ** 2)
+    per_drive = amplitude_per_unit_current(drives.current_basis)
+    rms = results.current_rms_a[pair] * amplitude[pair] / per_drive
+    rms_at = np.full(len(pair), np.nan)
+    for window in np.unique(drives.rms_window_s[np.isfinite(drives.rms_window_s)]):
+        largest, start = windowed_rms(squared, float(window))
+        mine = drives.rms_window_s == window
+        rms[mine] = largest[pair[mine]] / per_drive[mine]
+        rms_at[mine] = start[pair[mine]]
+    accumulated, when = overload(squared, drives.continuous_current_a * per_drive, pair)
+    return _DriveView(
+        peak=results.current_peak_a[pair] * amplitude[pair] / per_drive,
+        rms=rms,
+        rms_at=rms_at,
+        overload=accumulated / per_drive**2,
+        overload_at=when,
+    )

@@ -1,0 +1,59 @@
+"""Thermal network of each motor from what its sheet states, for the thermal equations."""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from actuator_sizing.core.parameters import MotorParameters, Surroundings
+from actuator_sizing.core.thermal import ThermalNetwork, altitude_factor
+
+FloatArray = NDArray[np.float64]
+
+#: Heat capacity of a motor without its winding, per kilogram of motor: iron, aluminium and magnets.
+#: Common practice (450 to 900), the low end so that temperature swings are not understated.
+HOUSING_CAPACITY_J_KG_K = 450.0
+#: Copper: share of the motor's mass and specific heat. Common practice (8 to 15 %), the low end.
+COPPER_MASS_SHARE = 0.08
+COPPER_CAPACITY_J_KG_K = 385.0
+
+
+def thermal_network(motors: MotorParameters, surroundings: Surroundings) -> ThermalNetwork:
+    """Resistances and capacities of the two-body or one-body model.
+
+    Parameters
+    ----------
+    motors : MotorParameters
+        n motors. [-]
+    surroundings : Surroundings
+        Altitude raises the resistance to the air. [-]
+
+    Returns
+    -------
+    ThermalNetwork
+        Shape (n,); housing fields are NaN for the one-body model, all are NaN where data is missing. [-]
+
+    Notes
+    -----
+    Two bodies where both resistances are known; a missing time constant then follows from the mass
+    (constants above). One body where only one resistance is known, with whichever time constant is known.
+    """
+    factor = altitude_factor(surroundings.altitude_m)
+    R_1, R_2 = motors.thermal_resistance_winding_k_w, motors.thermal_resistance_housing_k_w
+    tau_1, tau_2 = motors.winding_time_constant_s, motors.housing_time_constant_s
+    two = ~np.isnan(R_1) & ~np.isnan(R_2)
+    with np.errstate(invalid="ignore", divide="ignore"):
+        C_1 = np.where(
+            np.isnan(tau_1), COPPER_MASS_SHARE * motors.mass_kg * COPPER_CAPACITY_J_KG_K, tau_1 / R_1
+        )
+        C_2 = np.where(
+            np.isnan(tau_2), HOUSING_CAPACITY_J_KG_K * motors.mass_kg * (1 - COPPER_MASS_SHARE), tau_2 / R_2
+        )
+        R_only = np.where(np.isnan(R_1), R_2, R_1)
+        C_only = np.where(np.isnan(tau_2), tau_1, tau_2) / R_only
+    R_w = np.where(two, R_1, R_only / factor)
+    R_h = np.where(two, R_2 / factor, np.nan)
+    C_w = np.where(two, C_1, C_only)
+    C_h = np.where(two, C_2, np.nan)
+    unknown = np.isnan(R_w) | np.isnan(C_w) | (two & np.isnan(C_h))
+    return ThermalNetwork(*(np.where(unknown, np.nan, column) for column in (R_w, R_h, C_w, C_h)))
