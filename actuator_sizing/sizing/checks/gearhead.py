@@ -6,9 +6,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.core.transmission import equivalent_torque
+from actuator_sizing.sizing.block import Block
 from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits, has_gearhead
 from actuator_sizing.sizing.demand import Demand
-from actuator_sizing.sizing.block import Block
 
 FloatArray = NDArray[np.float64]
 
@@ -24,7 +24,7 @@ def _same(value: float, sets: Sets) -> FloatArray:
     return np.full(len(sets), value)
 
 
-def _working(symbol: str, unit: str, measure, note: str = ""):  # type: ignore[no-untyped-def]
+def _working(symbol: str, unit: str, measure):  # type: ignore[no-untyped-def]
     def working(sets: Sets, i: int) -> str:
         m = measure(sets)
         return f"{symbol} = {digits(m.demand[i])} {unit} / {digits(m.capacity[i])} {unit} = {digits(m.ratio()[i])}{note}"
