@@ -1,1 +1,77 @@
 """Writers: one per format, all fed the same comparison; no number is born here."""
+
+from __future__ import annotations
+
+import os
+from datetime import UTC, date, datetime
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from actuator_sizing.sizing.results import Comparison
+
+__all__ = ["render_report", "write_report"]
+
+
+def write_report(comparison: Comparison, folder: str | Path, *, date: date | None = None) -> tuple[Path, ...]:
+    """Write page, workbook, results, candidates and figures into a folder; whole or not at all.
+
+    Parameters
+    ----------
+    comparison : Comparison
+        The answer.
+    folder : str or Path
+        Output folder; made if missing.
+    date : datetime.date or None
+        Date of the report; by default today, or the day in the environment variable ``SOURCE_DATE_EPOCH``.
+
+    Returns
+    -------
+    tuple of Path
+        The files written.
+
+    Raises
+    ------
+    OutputError
+        If a file cannot be written; what was there before is untouched.
+    """
+    from actuator_sizing.files import replace_folder_files
+
+    return replace_folder_files(folder, render_report(comparison, date=date))
+
+
+def render_report(comparison: Comparison, *, date: date | None = None) -> dict[str, bytes]:
+    """Make every file of the report in memory, keyed by its path in the folder.
+
+    Parameters
+    ----------
+    comparison : Comparison
+        The answer.
+    date : datetime.date or None
+        Date of the report, see `write_report`.
+    """
+    from actuator_sizing.report.candidates_csv import render_candidates
+    from actuator_sizing.report.document import prepare_document
+    from actuator_sizing.report.figures import draw_figures
+    from actuator_sizing.report.html import render_html
+    from actuator_sizing.report.json_results import render_json
+    from actuator_sizing.report.workbook import render_workbook
+
+    day = date if date is not None else _today()
+    figures = draw_figures(comparison)
+    document = prepare_document(comparison, day, figures)
+    files = {
+        "sizing_report.html": render_html(document, figures),
+        "sizing_tables.xlsx": render_workbook(comparison, day),
+        "results.json": render_json(comparison),
+        "candidates.csv": render_candidates(comparison),
+    }
+    return files | {f"figures/{figure.key}.svg": figure.svg for figure in figures.values()}
+
+
+def _today() -> date:
+    """Today, or the day that a reproducible build states."""
+    stated = os.environ.get("SOURCE_DATE_EPOCH", "").strip()
+    if stated.isdigit():
+        return datetime.fromtimestamp(int(stated), UTC).date()
+    return datetime.now().date()

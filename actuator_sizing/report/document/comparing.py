@@ -45,7 +45,7 @@ def comparison_section(comparison: Comparison, figures: Iterable[str]) -> Sectio
 
 def _leading_table(comparison: Comparison) -> Table:
     columns = (
-        Column("Rank", numeric=True, weight=0.5),
+        Column("Rank", numeric=True, weight=0.75),
         Column("Motor", weight=1.7),
         Column("Gearhead", weight=1.5),
         Column("Ratio", numeric=True, weight=0.7),

@@ -71,7 +71,7 @@ def _row_label(item: SetResult) -> str:
     while sum(map(len, parts)) > _LABEL_LETTERS - 6:  # two " + "
         longest = max(range(len(parts)), key=lambda i: len(parts[i]))
         parts[longest] = style.shorten(parts[longest], len(parts[longest]) - 1)
-    return f"{' + '.join(parts)}  {item.rank}"
+    return f"{item.rank}. {' + '.join(parts)}"
 
 
 def _draw_cell(ax: Axes, x: float, y: float, check: CheckResult | None, governs: bool) -> None:

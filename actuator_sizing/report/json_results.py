@@ -1,0 +1,150 @@
+"""`results.json`: the contract with other programs. Raw SI values; null is not known, never zero."""
+
+from __future__ import annotations
+
+import json
+import math
+from collections.abc import Mapping
+from typing import TYPE_CHECKING, Any
+
+from actuator_sizing.report.document.comparing import shown_pair
+from actuator_sizing.report.document.inputs import part_entries
+from actuator_sizing.report.formatting import percent
+
+if TYPE_CHECKING:
+    from actuator_sizing.case.model import Entry
+    from actuator_sizing.sizing.results import CheckResult, Comparison, SetResult
+
+SCHEMA = "actuator-sizing/results/1"
+
+
+def results_dict(comparison: Comparison) -> dict[str, Any]:
+    """Collect the results under the names of the schema, in plain types that JSON knows.
+
+    Parameters
+    ----------
+    comparison : Comparison
+        The answer.
+
+    Returns
+    -------
+    dict
+        Values in SI; None where not known or not finite.
+    """
+    case, counts = comparison.case, comparison.rejections
+    best = comparison.sets[0] if comparison.sets else None
+    entries = [*case.entries, *part_entries(comparison, best)]
+    return {
+        "schema": SCHEMA,
+        "version": comparison.version,
+        "fingerprint": case.fingerprint,
+        "case": {
+            "name": case.name,
+            "mechanism": case.mechanism.name,
+            "inputs": [_input(entry) for entry in entries],
+            "assumptions": [{"subject": subject, "text": text} for subject, text in comparison.assumptions],
+            "remarks": [str(problem) for problem in case.problems],
+        },
+        "cycle": _plain(comparison.cycle),
+        "ranked_by": comparison.ranked_by,
+        "sets": [_set(item) for item in comparison.sets],
+        "rejected": {
+            "count": int(counts.rejected),
+            "by_check": _plain(counts.by_check),
+            "sets_total": int(counts.sets_total),
+            "incompatible": int(counts.incompatible),
+            "survivors": int(counts.survivors),
+            "confirmed_passing": int(counts.confirmed_passing),
+            "evaluated": int(counts.evaluated),
+            "complete": bool(counts.complete),
+        },
+        "questions": [
+            {"part": part, "missing": missing, "check": check}
+            for part, missing, check in comparison.questions
+        ],
+    }
+
+
+def render_json(comparison: Comparison) -> bytes:
+    """Write the results as UTF-8 text; the same, byte for byte, for the same comparison."""
+    text = json.dumps(results_dict(comparison), ensure_ascii=False, allow_nan=False, indent=1)
+    # a lone surrogate of a badly decoded table has no UTF-8 form; its escape is valid JSON
+    return (text + "\n").encode("utf-8", "backslashreplace")
+
+
+def _set(item: SetResult) -> dict[str, Any]:
+    return {
+        "rank": int(item.rank),
+        "motor": item.motor,
+        "gearhead": item.gearhead,
+        "ratio": _plain(item.ratio),
+        "drive": item.drive,
+        "verdict": item.verdict,
+        "governing_check": item.governing_check,
+        "price": _plain(item.price),
+        "mass_kg": _plain(item.mass_kg),
+        "quantities": _plain(item.quantities),
+        "checks": [_check(check) for check in item.checks],
+        "levers": _plain(item.levers),
+    }
+
+
+def _check(check: CheckResult) -> dict[str, Any]:
+    demand, capacity, unit = shown_pair(check)
+    return {
+        "check": check.check,
+        "title": check.title,
+        "group": check.group,
+        "demand": _plain(check.demand),
+        "capacity": _plain(check.capacity),
+        "unit": check.unit,
+        "utilisation": _plain(check.utilisation),
+        "allowed": _plain(check.allowed),
+        "recommended_reserve": _plain(check.recommended_reserve),
+        "margin": _plain(check.margin),
+        "verdict": check.verdict,
+        "advice": bool(check.is_advice),
+        "at_time_s": _plain(check.at_time_s),
+        "segment": check.segment,
+        "formula": check.formula,
+        "source": check.source,
+        "working": check.working,
+        "missing": list(check.missing),
+        "inputs": [{"input": name, "origin": origin} for name, origin in check.inputs],
+        "displayed": {
+            "demand": demand,
+            "capacity": capacity,
+            "unit": unit,
+            "utilisation": percent(check.utilisation, check.allowed),
+        },
+    }
+
+
+def _input(entry: Entry) -> dict[str, Any]:
+    return {
+        "table": entry.table,
+        "row": None if entry.row is None else int(entry.row),
+        "label": entry.label,
+        "column": entry.column,
+        "value_si": _plain(entry.value_si),
+        "unit": entry.unit,
+        "as_entered": entry.as_entered,
+        "origin": entry.origin,
+        "rule": entry.rule,
+        "source": entry.source,
+    }
+
+
+def _plain(value: Any) -> Any:
+    """Turn numpy scalars, arrays and mappings into plain types; what is not a finite number is None."""
+    if value is None or isinstance(value, str | bool | int):
+        return value
+    if isinstance(value, Mapping):
+        return {str(key): _plain(item) for key, item in value.items()}
+    if hasattr(value, "tolist"):
+        return _plain(value.tolist())
+    if isinstance(value, list | tuple):
+        return [_plain(item) for item in value]
+    if isinstance(value, float):
+        return value if math.isfinite(value) else None
+    return str(value)

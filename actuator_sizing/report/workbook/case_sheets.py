@@ -1,0 +1,75 @@
+"""Sheets of the case: segments, parts used, inputs with assumptions, questions to the supplier."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, Any
+
+from actuator_sizing.report.document.inputs import part_entries
+from actuator_sizing.report.workbook.writer import Field, Sheets
+
+if TYPE_CHECKING:
+    from actuator_sizing.case.model import Entry
+    from actuator_sizing.sizing.results import Comparison
+
+_ENTRY_FIELDS = (
+    Field("table"), Field("row", "integer"), Field("name"), Field("quantity"), Field("as entered"),
+    Field("as understood [unit beside]", "number"), Field("unit"), Field("origin"),
+    Field("rule of the derived or assumed value"), Field("source"),
+)  # fmt: skip
+
+
+def add_segments(sheets: Sheets, comparison: Comparison) -> None:
+    """Write the duty cycle, one row a segment."""
+    linear = comparison.case.mechanism.coordinate == "linear"
+    payload, effort = ("kg", "N") if linear else ("kg·m²", "N·m")
+    fields = (
+        Field("row", "integer"), Field("segment"), Field("motion law"), Field("start [s]", "number"),
+        Field("duration [s]", "number"), Field("end [s]", "number"), Field(f"payload [{payload}]", "number"),
+        Field(f"process effort [{effort}]", "number"), Field("brake closed"), Field("note"),
+    )  # fmt: skip
+    rows = [
+        (
+            s.row, s.name, s.law, s.start_s, s.duration_s, s.start_s + s.duration_s, s.payload,
+            s.process_effort, s.brake_closed, s.note,
+        )
+        for s in comparison.case.segments
+    ]  # fmt: skip
+    sheets.add_table("motion segments", fields, rows)
+
+
+def add_parts(sheets: Sheets, comparison: Comparison) -> None:
+    """Write the data sheets of the leading set's parts, as entered and as understood."""
+    best = comparison.sets[0] if comparison.sets else None
+    sheets.add_table("parts used", _ENTRY_FIELDS, [_entry_row(e) for e in part_entries(comparison, best)])
+
+
+def add_inputs(sheets: Sheets, comparison: Comparison) -> None:
+    """Write every input with its origin, then the assumptions of the method and the remarks of the audit."""
+    rows: list[tuple[Any, ...]] = [_entry_row(entry) for entry in comparison.case.entries]
+    rows += [
+        ("assumption", "", subject, "", "", "", "", "assumed", text, "")
+        for subject, text in comparison.assumptions
+    ]
+    rows += [
+        (
+            p.table, "" if p.row is None else p.row, f"remark: {p.severity}", p.column, p.got, "", "", "",
+            f"{p.allowed} {p.remedy}".strip(), "",
+        )
+        for p in comparison.case.problems
+    ]  # fmt: skip
+    sheets.add_table("inputs and assumptions", _ENTRY_FIELDS, rows)
+
+
+def add_questions(sheets: Sheets, comparison: Comparison) -> None:
+    """Write what to ask the suppliers."""
+    fields = (Field("part"), Field("data missing"), Field("check not made"), Field("answer"))
+    sheets.add_table("questions", fields, [(*question, None) for question in comparison.questions])
+
+
+def _entry_row(entry: Entry) -> tuple[Any, ...]:
+    row: Any = "" if entry.row is None else entry.row
+    unit = entry.unit or ("" if isinstance(entry.value_si, str) else "-")
+    return (
+        entry.table, row, entry.label, entry.column, entry.as_entered, entry.value_si, unit,
+        entry.origin, entry.rule, entry.source,
+    )  # fmt: skip

@@ -1,0 +1,138 @@
+"""Sheets of curves of the leading set, and the speed–torque plane as a chart of the workbook."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, Any
+
+from actuator_sizing.report.figures.units import AxisUnits
+from actuator_sizing.report.headings import name_and_unit
+from actuator_sizing.report.workbook.writer import Field, Sheets
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+    from actuator_sizing.sizing.results import Comparison, SetDetail
+
+_PEAKS = (
+    ("torque_peak_min_bus_nm", "peak at minimum bus", "solid"),
+    ("torque_peak_nominal_bus_nm", "peak at nominal bus", "dash"),
+    ("torque_peak_max_bus_nm", "peak at maximum bus", "round_dot"),
+)
+_DEMAND, _LIMIT, _CONTINUOUS = "#0072B2", "#D55E00", "#009E73"
+
+
+def _detail(comparison: Comparison) -> SetDetail | None:
+    return comparison.sets[0].detail if comparison.sets else None
+
+
+def add_time_series(sheets: Sheets, comparison: Comparison) -> None:
+    """Write one cycle of the leading set in periodic state, both one-sided values at every jump."""
+    detail = _detail(comparison)
+    if detail is not None:
+        _add_frame(sheets, "time series", detail.cycle, AxisUnits.of(comparison.case))
+
+
+def add_warm_up(sheets: Sheets, comparison: Comparison) -> None:
+    """Write the temperatures from cold to the periodic state."""
+    detail = _detail(comparison)
+    if detail is not None and detail.warm_up is not None:
+        _add_frame(sheets, "warm-up", detail.warm_up, AxisUnits.of(comparison.case))
+
+
+def add_speed_torque(sheets: Sheets, comparison: Comparison) -> None:
+    """Write the limits over speed and draw them with the cycle as a chart."""
+    detail = _detail(comparison)
+    if detail is None:
+        return
+    units = AxisUnits.of(comparison.case)
+    _add_frame(sheets, "speed-torque limits", detail.envelope, units)
+    sheet = sheets.book.get_worksheet_by_name("speed-torque limits")
+    chart = sheets.book.add_chart({"type": "scatter", "subtype": "straight"})
+    columns = list(map(str, detail.envelope.columns))
+    last = len(detail.envelope)
+    speed = columns.index("speed_rad_s")
+    for name, label, dash in (*_PEAKS, ("torque_continuous_nm", "continuous", "long_dash")):
+        color = _CONTINUOUS if label == "continuous" else _LIMIT
+        chart.add_series(
+            {
+                "name": label,
+                "categories": ["speed-torque limits", 1, speed, last, speed],
+                "values": ["speed-torque limits", 1, columns.index(name), last, columns.index(name)],
+                "line": {"color": color, "width": 1.5, "dash_type": dash},
+                "marker": {"type": "none"},
+            }
+        )
+    cycle = list(map(str, detail.cycle.columns))
+    chart.add_series(
+        {
+            "name": "duty cycle",
+            "categories": [
+                "time series", 1, cycle.index("motor_speed_rad_s"), len(detail.cycle),
+                cycle.index("motor_speed_rad_s"),
+            ],
+            "values": [
+                "time series", 1, cycle.index("motor_torque_nm"), len(detail.cycle),
+                cycle.index("motor_torque_nm"),
+            ],
+            "line": {"color": _DEMAND, "width": 2.0},
+            "marker": {"type": "none"},
+        }
+    )  # fmt: skip
+    effort = "N" if units.linear_motor else "N·m"
+    speed_unit = "m/s" if units.linear_motor else "rad/s"
+    grid = {"visible": True, "line": {"color": "#D9D9D9", "width": 0.5}}
+    chart.set_x_axis(
+        {
+            "name": f"motor speed [{speed_unit}], positive with +x",
+            "label_position": "low",
+            "major_gridlines": grid,
+        }
+    )
+    chart.set_y_axis(
+        {
+            "name": f"air-gap {units.effort_word} [{effort}], positive drives +x",
+            "label_position": "low",
+            "major_gridlines": grid,
+        }
+    )
+    chart.set_legend({"position": "bottom"})
+    chart.set_size({"width": 760, "height": 460})
+    chart.show_na_as_empty_cell()
+    description = "Duty cycle of the leading set in the speed-torque plane with its limits"
+    sheet.insert_chart(1, len(columns) + 1, chart, {"description": description})
+
+
+def _add_frame(sheets: Sheets, name: str, table: pd.DataFrame, units: AxisUnits) -> None:
+    """Write a frame of curves; what is not known leaves its cell empty, so that charts show a gap."""
+    fields = [Field(_curve_heading(str(column), units), _style(table[column])) for column in table.columns]
+    sheet = sheets.add_table(name, fields, [])
+    for column, (field, label) in enumerate(zip(fields, table.columns, strict=True)):
+        style = sheets.format()
+        for row, value in enumerate(table[label].tolist(), 1):
+            if field.style == "text":
+                sheets.write(sheet, row, column, field, value)
+            elif value == value and abs(value) != float("inf"):
+                sheet.write_number(row, column, value, style)
+        sheet.set_column(column, column, 18 if field.style == "text" else 13)
+    sheet.set_row(0, 30)
+    sheet.autofilter(0, 0, max(len(table), 1), len(fields) - 1)
+
+
+def _style(values: Any) -> str:
+    return "number" if values.dtype.kind in "if" else "text"
+
+
+def _curve_heading(name: str, units: AxisUnits) -> str:
+    """Name a column of curves; load coordinates and a linear motor's columns carry their own units."""
+    load = {
+        "position": "m" if units.linear_load else "rad",
+        "speed": "m/s" if units.linear_load else "rad/s",
+        "acceleration": "m/s²" if units.linear_load else "rad/s²",
+    }
+    if name in load:
+        return f"load {name} [{load[name]}]"
+    words, unit = name_and_unit(name)
+    if units.linear_motor and unit in ("N·m", "rad/s"):
+        words = words.replace("torque", "force")
+        unit = {"N·m": "N", "rad/s": "m/s"}[unit]
+    return f"{words} [{unit}]" if unit else words
