@@ -40,6 +40,7 @@ class Operations(NamedTuple):
     """Elementary functions for floats or for arrays; none of them raises or warns."""
 
     sqrt: Callable[[Number], Number]
+    hypot: Callable[[Number, Number], Number]
     expm1: Callable[[Number], Number]
     log: Callable[[Number], Number]
     log1p: Callable[[Number], Number]
@@ -69,6 +70,7 @@ def _second_integrals(rate: FloatArray, h: float, first: FloatArray) -> FloatArr
 
 FLOATS = Operations(
     lambda z: math.sqrt(z) if z >= 0.0 else math.nan,
+    math.hypot,
     _expm1,
     _log,
     lambda z: math.log1p(z) if z > -1.0 else math.nan,
@@ -77,7 +79,7 @@ FLOATS = Operations(
     _second_integral,
 )
 #: Call under ``np.errstate(all="ignore")``.
-ARRAYS = Operations(np.sqrt, np.expm1, np.log, np.log1p, np.maximum, np.where, _second_integrals)
+ARRAYS = Operations(np.sqrt, np.hypot, np.expm1, np.log, np.log1p, np.maximum, np.where, _second_integrals)
 
 
 # -- the kernel -------------------------------------------------------------------------------------------
@@ -149,7 +151,7 @@ def linearise(
     c = k.housing_to_winding
     d = -k.housing_to_winding - k.housing_to_ambient
     half = 0.5 * (a - d)
-    root = ops.sqrt(half * half + b * c)  # real: b, c >= 0
+    root = ops.hypot(half, ops.sqrt(b * c))  # real: b, c >= 0
     middle = 0.5 * (a + d)
     # 1e-200 keeps 0/0 out of ∫e^{lτ}dτ = expm1(l h)/l at l = 0 and changes nothing else
     slow, fast = middle + root + 1e-200, middle - root + 1e-200

@@ -83,7 +83,7 @@ def _crossing(k: Coefficients, steps: Steps, x1: float, x2: float, limit: float)
         at = linearise(k, FLOATS, x1, x2, q, s1, s2)
         turn = turning_instant(at, FLOATS, h, housing=False)
         for end in (h if math.isnan(turn) else turn, h):
-            if x1 + moved(at, FLOATS, end)[0] >= limit:
+            if not x1 + moved(at, FLOATS, end)[0] < limit:  # what overflows is past the limit, too
                 low, high = 0.0, end  # the winding rises all the way to `end`, or first falls and then rises
                 for _ in range(60):
                     middle = 0.5 * (low + high)
