@@ -12,7 +12,7 @@ from fractions import Fraction
 from actuator_sizing.case.text_columns import OddCell
 
 MISSING_WORDS = frozenset(
-    {"", "-", "--", "n/a", "na", "n.a.", "#n/a", "none", "nil", "tbd", "?", "\u2013", "\u2014", "\u2212"}
+    {"", "-", "--", "n/a", "na", "n.a.", "none", "nil", "tbd", "?", "\u2013", "\u2014", "\u2212"}
 )
 POINT, COMMA = ".", ","
 
@@ -74,7 +74,7 @@ def evidence(text: str) -> str:
 
 
 def parse_number(text: str, decimal: str = "", *, fraction: bool = False) -> tuple[float, bool]:
-    """Number in a cell.
+    """Read the number in a cell.
 
     Parameters
     ----------

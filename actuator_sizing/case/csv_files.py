@@ -163,8 +163,8 @@ def _build(
     problems: ProblemList,
 ) -> RawTable | None:
     headings: list[str] = []
-    number = 0
-    for number, record in enumerate(records, start=1):
+    numbered = enumerate(records, start=1)
+    for _, record in numbered:
         if any(cell.strip() for cell in record):
             headings = [cell.strip() for cell in record]
             break
@@ -181,7 +181,7 @@ def _build(
         return None
     builder = TableBuilder(headings)
     width = len(headings)
-    for number, record in enumerate(records, start=number + 1):  # noqa: B020 - goes on after the heading
+    for number, record in numbered:
         if number > MAX_ROWS:
             problems.report(file, None, got=f"more than {MAX_ROWS} rows", allowed=f"at most {MAX_ROWS} rows",
                             remedy="Split the table.")  # fmt: skip

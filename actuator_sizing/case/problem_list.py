@@ -89,6 +89,13 @@ class ProblemList:
         """Whether the work cannot go on."""
         return any(severity == ERROR for _, _, severity in self._counts)
 
+    def mentions(self, table: str) -> bool:
+        """Whether an error about this table, or the file that should hold it, is already known."""
+        return any(
+            severity == ERROR and (name == table or name.rpartition(".")[0] == table)
+            for name, _, severity in self._counts
+        )
+
     def finished(self) -> tuple[Problem, ...]:
         """All problems, errors first, with a count of those that were left out."""
         more = [

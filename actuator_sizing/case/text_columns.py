@@ -20,6 +20,7 @@ class OddCell(str):
     remedy: str
 
     def __new__(cls, shown: str, fault: str, remedy: str) -> OddCell:
+        """Make the cell from the text that is shown for it."""
         cell = super().__new__(cls, shown)
         cell.fault, cell.remedy = fault, remedy
         return cell
@@ -102,6 +103,11 @@ class RowRules(Mapping[int, str]):
         if text not in self._texts:
             self._texts.append(text)
         self._codes[mask] = self._texts.index(text)
+
+    def masks(self) -> Iterator[tuple[str, NDArray[np.bool_]]]:
+        """Every rule with the rows it is for."""
+        for code, text in enumerate(self._texts[1:], start=1):
+            yield text, self._codes == code
 
     def __getitem__(self, row: int) -> str:
         code = int(self._codes[row])

@@ -32,7 +32,8 @@ _MERGED = re.compile(rb"<(?:\w+:)?mergeCell\s[^>]*?ref=\"([A-Z]+\d+:[A-Z]+\d+)\"
 _FORMULA = re.compile(rb"<(?:\w+:)?f[\s>/]")
 _FAULTS = (
     zipfile.BadZipFile, zipfile.LargeZipFile, zlib.error, struct.error, ParseError, KeyError, ValueError,
-    TypeError, AttributeError, IndexError, OSError, EOFError, RuntimeError, NotImplementedError, OverflowError,
+    TypeError, AttributeError, IndexError, OSError, EOFError, RuntimeError, NotImplementedError,
+    OverflowError,
 )  # fmt: skip
 
 
@@ -180,8 +181,9 @@ def _read_sheet(
     marks = {COMMA: False, POINT: False}
     for number, row in enumerate(rows, start=1):
         twin = next(twins, ()) if twins is not None else ()
+        hidden = {column: area for column, area in inner.get(number, {}).items() if column < len(headings)}
         filled = any(cell.value is not None for cell in row) or any(cell.value is not None for cell in twin)
-        if number > MAX_ROWS or not (filled or (number in inner and builder is not None)):
+        if number > MAX_ROWS or not (filled or hidden):
             continue
         texts = [_text(cell, twin[i] if i < len(twin) else None) for i, cell in enumerate(row)]
         if builder is None:
@@ -197,7 +199,7 @@ def _read_sheet(
                 _report_merged(name, sheet, number, problems)
                 builder = TableBuilder(headings)
             continue
-        _add_row(builder, name, number, len(headings), texts, inner.get(number, {}), problems)
+        _add_row(builder, name, number, len(headings), texts, hidden, problems)
         for text in texts:
             if "," in text or "." in text:
                 mark = evidence(text)
@@ -251,7 +253,7 @@ def _text(cell: Any, twin: Any) -> str:
             return OddCell(
                 f"formula in {where}",
                 f"the formula in {where} without a stored value",
-                "Open the workbook in a spreadsheet program, let it calculate, and save it; or type the number.",
+                "Open the workbook in a spreadsheet program, let it calculate and save it; or type the number.",
             )
         return ""
     if cell.data_type == "e":

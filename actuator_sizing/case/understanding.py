@@ -1,0 +1,163 @@
+"""From raw tables to a Case: every table understood, all problems at once."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from pathlib import Path
+
+from actuator_sizing.case.axis import Axis, options_of, surroundings_of
+from actuator_sizing.case.catalogs import to_catalog
+from actuator_sizing.case.columns import Column, key_of
+from actuator_sizing.case.drives import understand_drives
+from actuator_sizing.case.fingerprint import fingerprint
+from actuator_sizing.case.gearheads import understand_gearheads
+from actuator_sizing.case.judging import understand_limits, understand_tolerances
+from actuator_sizing.case.model import MISSING, ORIGINS, STATED, Case, Catalog, Entry
+from actuator_sizing.case.motion import motion_entries, understand_motion
+from actuator_sizing.case.motors import understand_motors
+from actuator_sizing.case.parsed_tables import ParsedTable, parse_table
+from actuator_sizing.case.problem_list import ProblemList
+from actuator_sizing.case.raw_tables import RawTable
+from actuator_sizing.case.tables import TABLES
+from actuator_sizing.errors import NOTE
+from actuator_sizing.units import si_unit
+
+
+def understand(
+    raw: Mapping[str, RawTable], axis: Axis, problems: ProblemList, name: str, path: Path | None
+) -> Case | None:
+    """Understand every table of a case.
+
+    Parameters
+    ----------
+    raw : mapping of str to RawTable
+        Tables as they stand in the files.
+    axis : Axis
+        The `axis` table, already understood (it names the catalog folder).
+    problems : ProblemList
+        Takes everything that is wrong.
+    name : str
+        Name of the case.
+    path : Path or None
+        Where it was read from.
+
+    Returns
+    -------
+    Case or None
+        None where there are errors.
+    """
+    parsed = {
+        table: _parse(raw[table], axis, problems) for table in TABLES if table in raw and table != "axis"
+    }
+    motion = parsed.get("duty_cycle")
+    segments = understand_motion(motion, axis.coordinate, problems) if motion and axis.mechanism else ()
+    motors, drives = parsed.get("motors"), parsed.get("drives")
+    motor_parameters = understand_motors(motors) if motors else None
+    drive_parameters = understand_drives(drives) if drives else None
+    gearheads, gearhead_parameters = understand_gearheads(
+        _wanted_gearheads(parsed.get("gearheads"), axis, problems),
+        TABLES["gearheads"],
+        _direct_drive(axis),
+        problems,
+    )
+    if len(gearheads) == 0 and "gearheads" not in parsed:
+        problems.report("gearheads", None, got="no table, and direct drive is not allowed",
+                        allowed="gearheads, or direct drive",
+                        remedy="Add the table, or set 'direct drive allowed' to yes.")  # fmt: skip
+    limits, limit_entries = understand_limits(parsed.get("limits"))
+    decimal = raw["tolerances"].decimal if "tolerances" in raw else ""
+    tolerances = understand_tolerances(parsed.get("tolerances"), decimal, problems)
+    if problems.has_errors:
+        return None
+    if not (motion and motors and drives and axis.mechanism and motor_parameters and drive_parameters):
+        return None  # a required table is missing, which was reported
+    mechanism = axis.mechanism.from_values(
+        {parameter.name: _number(axis, parameter.name) for parameter in axis.mechanism.parameters}
+    )
+    entries = (*axis.entries, *motion_entries(motion, axis.coordinate), *limit_entries)
+    catalogs = to_catalog(motors), to_catalog(gearheads), to_catalog(drives)
+    return Case(
+        name=name,
+        path=path,
+        mechanism=mechanism,
+        surroundings=surroundings_of(axis),
+        segments=segments,
+        motors=catalogs[0],
+        gearheads=catalogs[1],
+        drives=catalogs[2],
+        motor_parameters=motor_parameters,
+        gearhead_parameters=gearhead_parameters,
+        drive_parameters=drive_parameters,
+        limits=limits,
+        tolerances=tolerances,
+        options=options_of(axis),
+        entries=entries,
+        problems=problems.finished(),
+        fingerprint=fingerprint(entries, catalogs, limits, tolerances),
+    )
+
+
+def _parse(raw: RawTable, axis: Axis, problems: ProblemList) -> ParsedTable:
+    return parse_table(raw, TABLES[raw.name], problems, axis.coordinate, broad=axis.mechanism is None)
+
+
+def _number(axis: Axis, name: str) -> float | None:
+    value = axis.values.get(key_of(name))
+    return value if isinstance(value, float) else None
+
+
+def _direct_drive(axis: Axis) -> bool:
+    linear_motor = axis.mechanism is not None and axis.mechanism.drives_linear_motor
+    return linear_motor or axis.word("direct_drive_allowed") != "no"
+
+
+def _wanted_gearheads(parsed: ParsedTable | None, axis: Axis, problems: ProblemList) -> ParsedTable | None:
+    """Give the gearheads, or none for a linear motor."""
+    if parsed is not None and axis.mechanism is not None and axis.mechanism.drives_linear_motor:
+        problems.report("gearheads", None, got=f"{len(parsed)} gearheads", allowed="none for a linear motor",
+                        remedy="They are left out.", severity=NOTE)  # fmt: skip
+        return None
+    return parsed
+
+
+def entries_of_row(catalog: Catalog, index: int) -> tuple[Entry, ...]:
+    """Every known value of one catalog row, as entered and as understood.
+
+    Parameters
+    ----------
+    catalog : Catalog
+        Part table.
+    index : int
+        Row index, 0-based. [-]
+    """
+    declared = TABLES[catalog.table].columns
+    entries = [_entry(catalog, index, column, column.key) for column in declared]
+    known = {column.key for column in declared}
+    for key in catalog.values:
+        if key not in known:
+            extra = Column(catalog.headings.get(key, key), "text", "")
+            entries.append(_entry(catalog, index, extra, key))
+    return tuple(entry for entry in entries if entry is not None)
+
+
+def _entry(catalog: Catalog, index: int, column: Column, key: str) -> Entry | None:
+    origin = int(catalog.origins[key][index])
+    if origin == MISSING:
+        return None
+    value = catalog.values[key][index]
+    typed = ""
+    if origin == STATED and key in catalog.as_entered:
+        typed = f"{catalog.as_entered[key][index]} {catalog.entered_units.get(key, '')}".strip()
+    machine = "linear" if column.machine == "linear" else "rotary"
+    return Entry(
+        catalog.table,
+        int(catalog.rows[index]) or None,
+        catalog.names[index],
+        column.name,
+        typed,
+        float(value) if column.is_number else str(value),
+        si_unit(column.kind_for(machine)) if column.is_number else "",
+        ORIGINS[origin],
+        catalog.rules.get(key, {}).get(index, ""),
+        str(catalog.values["source"][index]) if "source" in catalog.values else "",
+    )
