@@ -78,9 +78,13 @@ def not_checked_section(comparison: Comparison) -> Section:
     if comparison.sets:
         missing = [c for c in comparison.sets[0].checks if c.verdict == NOT_CHECKED]
     if missing:
-        columns = (Column("Check not made", weight=1.5), Column("Data that is missing", weight=3.0))
-        rows = tuple(row(c.title, ", ".join(map(clean, c.missing)) or "not stated") for c in missing)
-        blocks.append(Table("Checks of the leading set that could not be made", columns, rows))
+        blocks.append(
+            Table(
+                "Checks of the leading set that could not be made",
+                (Column("Check not made", weight=1.5), Column("Data that is missing", weight=3.0)),
+                tuple(row(c.title, ", ".join(map(clean, c.missing)) or "not stated") for c in missing),
+            )
+        )
     else:
         blocks.append(Paragraph("Every check that applies to the leading set was made."))
     if comparison.questions:

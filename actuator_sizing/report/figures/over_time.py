@@ -139,7 +139,7 @@ def _mark_segments(axes: list[Axes], cycle: pd.DataFrame, unit: DisplayUnit) -> 
     starts = np.concatenate([[0], np.flatnonzero(names[1:] != names[:-1]) + 1])
     ends = np.append(starts[1:], len(names) - 1)
     top = axes[0]
-    width_pt = top.get_position().width * top.figure.get_figwidth() * 72.0
+    width_pt = style.panel_size_pt(top)[0]
     span = max(float(time[-1] - time[0]), 1e-300)
     for count, (start, end) in enumerate(zip(starts, ends, strict=True), 1):
         for ax in axes:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -57,8 +58,9 @@ def draw_speed_torque(best: SetResult, detail: SetDetail, units: AxisUnits) -> F
     ax.set_xlabel(f"motor speed [{speed_unit.label}], positive with +x")
     ax.set_ylabel(f"air-gap {units.effort_word} [{effort_unit.label}], positive drives +x")
     if not units.linear_motor:
-        factor = speed_unit.factor
-        top = ax.secondary_xaxis("top", functions=(lambda v: v * factor, lambda v: v / factor))
+        top = ax.secondary_xaxis(
+            "top", functions=(_times(speed_unit.factor), _times(1.0 / speed_unit.factor))
+        )
         top.set_xlabel("[rad/s]", fontsize=7.5, labelpad=2)
         top.tick_params(labelsize=7.5)
     handles, labels = ax.get_legend_handles_labels()
@@ -66,6 +68,10 @@ def draw_speed_torque(best: SetResult, detail: SetDetail, units: AxisUnits) -> F
         handles, labels, loc="lower center", ncols=3, bbox_to_anchor=(0.5, 0.005), columnspacing=1.6
     )
     return figure
+
+
+def _times(factor: float) -> Callable[[Any], Any]:
+    return lambda values: values * factor
 
 
 def _quadrants(speed: FloatArray, torque: FloatArray) -> tuple[tuple[int, ...], tuple[int, ...]]:
@@ -83,6 +89,10 @@ def _draw_limits(ax: Axes, detail: SetDetail, quadrants: Any, to_speed: Any, to_
     envelope = detail.envelope
     speed = to_speed(envelope["speed_rad_s"].to_numpy(float))
     first = True
+
+    def once(label: str) -> str | None:
+        return label if first else None
+
     for sign_w in quadrants[0]:
         for sign_t in quadrants[1]:
             continuous = to_effort(envelope["torque_continuous_nm"].to_numpy(float))
@@ -95,7 +105,7 @@ def _draw_limits(ax: Axes, detail: SetDetail, quadrants: Any, to_speed: Any, to_
                 hatch="////",
                 edgecolor=style.CONTINUOUS,
                 linewidth=0.0,
-                label="continuous region" if first else None,
+                label=once("continuous region"),
             )
             for name, label, dash, width in _PEAK_CURVES:
                 curve = _closed(speed, to_effort(envelope[name].to_numpy(float)))
@@ -105,18 +115,17 @@ def _draw_limits(ax: Axes, detail: SetDetail, quadrants: Any, to_speed: Any, to_
                     color=style.PEAK_LIMIT,
                     linestyle=dash,
                     linewidth=width,
-                    label=label if first else None,
+                    label=once(label),
                 )
             first = False
         limit = detail.levels.get("speed_max_rad_s", np.nan)
         if np.isfinite(limit):
-            label = "motor speed limit" if sign_w == quadrants[0][0] else None
             ax.axvline(
                 sign_w * to_speed(limit),
                 color=style.INK,
                 linestyle=(0, (6, 2, 1, 2)),
                 linewidth=1.1,
-                label=label,
+                label="motor speed limit" if sign_w == quadrants[0][0] else None,
             )
 
 

@@ -75,7 +75,8 @@ def house_style() -> Iterator[None]:
     """Apply the look while a figure is drawn or written; leaves the user's settings as they were."""
     import matplotlib
 
-    with _LOCK, matplotlib.rc_context({**matplotlib.rcParamsDefault, **_STYLE, "backend": "agg"}):
+    settings: dict[Any, Any] = {**matplotlib.rcParamsDefault}
+    with _LOCK, matplotlib.rc_context(settings | _STYLE | {"backend": "agg"}):
         yield
 
 
@@ -167,7 +168,7 @@ def draw_levels(ax: Axes, levels: Sequence[Level], reach: float = 2.2) -> None:
     for level in inside:
         ax.axhline(level.value, color=level.color, linestyle=level.dash, linewidth=1.2, zorder=1.5)
     places = [_label_place(level, low, high) for level in known]
-    height_pt = ax.get_position().height * ax.figure.get_figheight() * 72.0
+    height_pt = panel_size_pt(ax)[1]
     size = 7.6
     spread = _spread([place for place, _ in places], 1.25 * size / height_pt)
     for level, (_, arrow), y in zip(known, places, spread, strict=True):
@@ -183,6 +184,13 @@ def draw_levels(ax: Axes, levels: Sequence[Level], reach: float = 2.2) -> None:
             color=INK,
             annotation_clip=False,
         )
+
+
+def panel_size_pt(ax: Axes) -> tuple[float, float]:
+    """Width and height of a panel on paper. [pt]"""
+    width, height = ax.get_position().size
+    figure_width, figure_height = ax.figure.get_size_inches()  # type: ignore[union-attr]
+    return 72.0 * float(width * figure_width), 72.0 * float(height * figure_height)
 
 
 def _label_place(level: Level, low: float, high: float) -> tuple[float, str]:
@@ -220,7 +228,11 @@ def _overlap(lower: Sequence[float], upper: Sequence[float], gap: float) -> bool
 
 def legend_above(ax: Axes, columns: int = 4, **options: Any) -> None:
     """Put the legend over the panel, outside the data."""
-    place = {"loc": "lower left", "bbox_to_anchor": (0.0, 1.0), "borderaxespad": 0.2} | options
+    place: dict[str, Any] = {
+        "loc": "lower left",
+        "bbox_to_anchor": (0.0, 1.0),
+        "borderaxespad": 0.2,
+    } | options
     ax.legend(ncols=columns, columnspacing=1.4, handletextpad=0.6, **place)
 
 

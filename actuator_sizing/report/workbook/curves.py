@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from typing import TYPE_CHECKING, Any
 
 from actuator_sizing.report.figures.units import AxisUnits
@@ -107,15 +108,24 @@ def _add_frame(sheets: Sheets, name: str, table: pd.DataFrame, units: AxisUnits)
     fields = [Field(_curve_heading(str(column), units), _style(table[column])) for column in table.columns]
     sheet = sheets.add_table(name, fields, [])
     for column, (field, label) in enumerate(zip(fields, table.columns, strict=True)):
-        style = sheets.format()
+        style = sheets.format(num_format=_column_format(table[label]) if field.style == "number" else "@")
         for row, value in enumerate(table[label].tolist(), 1):
             if field.style == "text":
                 sheets.write(sheet, row, column, field, value)
             elif value == value and abs(value) != float("inf"):
                 sheet.write_number(row, column, value, style)
         sheet.set_column(column, column, 18 if field.style == "text" else 13)
-    sheet.set_row(0, 30)
+    sheets.set_head_height(sheet, fields, [18 if field.style == "text" else 13 for field in fields])
     sheet.autofilter(0, 0, max(len(table), 1), len(fields) - 1)
+
+
+def _column_format(values: pd.Series) -> str:
+    """Give a column of curves five digits at its largest value, the same for every row."""
+    size = values.abs().max()
+    if not 0.0 < size < float("inf"):
+        return "0"
+    decimals = max(0, min(9, 4 - math.floor(math.log10(size))))
+    return f"0.{'0' * decimals}" if decimals else "0"
 
 
 def _style(values: Any) -> str:

@@ -102,23 +102,21 @@ def add_checks(sheets: Sheets, comparison: Comparison) -> None:
         Field("rank", "integer"), Field("motor"), Field("gearhead"), Field("drive"), Field("check"),
         Field("group"), Field("demand [unit beside]", "number"), Field("capacity [unit beside]", "number"),
         Field("unit"), Field("utilisation [-]", "percent", bar=True),
-        Field("allowed utilisation [-]", "percent"), Field("margin [-]", "percent"), Field("verdict"), Field("advice only"), Field("at [s]", "number"),
-        Field("segment"), Field("formula"), Field("source"), Field("missing data"),
+        Field("allowed utilisation [-]", "percent"), Field("margin [-]", "percent"), Field("verdict"),
+        Field("advice only"), Field("at [s]", "number"), Field("segment"),
+        Field("formula"), Field("source"), Field("missing data"),
     ]  # fmt: skip
     rows, live = [], []
     for item in comparison.sets:
         for check in item.checks:
-            time = (
-                "whole cycle"
-                if check.at_time_s is None and check.utilisation is not None
-                else check.at_time_s
-            )
+            known = check.utilisation is not None
+            time = "whole cycle" if known and check.at_time_s is None else check.at_time_s
             rows.append(
                 (
                     item.rank, item.motor, "direct" if item.gearhead is None else item.gearhead, item.drive,
                     check.title, check.group, check.demand, check.capacity, check.unit or "-",
-                    check.utilisation, check.allowed, check.margin, check.verdict, check.is_advice, time, check.segment,
-                    check.formula, check.source, ", ".join(check.missing),
+                    check.utilisation, check.allowed, check.margin, check.verdict, check.is_advice, time,
+                    check.segment, check.formula, check.source, ", ".join(check.missing),
                 )
             )  # fmt: skip
             live.append(check)

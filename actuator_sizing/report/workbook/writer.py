@@ -6,6 +6,7 @@ import math
 import re
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from textwrap import wrap
 from typing import TYPE_CHECKING, Any
 
 from actuator_sizing.report.formatting import NOT_KNOWN, percent
@@ -17,7 +18,7 @@ if TYPE_CHECKING:
 
 # The format allows 32767 letters in a cell; a longer text says that it was cut.
 _MOST_LETTERS = 32_767
-_WIDEST = 60
+_WIDEST = 42
 FONT = "Calibri"
 _BAR_COLOR, _HEAD_COLOR = "#7DB3D8", "#E9EEF2"
 
@@ -82,6 +83,7 @@ class Sheets:
                 widths[column] = max(widths[column], min(shown + 2, _WIDEST))
         for column, width in enumerate(widths):
             sheet.set_column(column, column, max(width, 8))
+        self.set_head_height(sheet, fields, [max(width, 8) for width in widths])
         sheet.freeze_panes(1, 1)
         sheet.autofilter(0, 0, max(len(rows), 1), len(fields) - 1)
         for column, field in enumerate(fields):
@@ -89,6 +91,11 @@ class Sheets:
                 sheet.conditional_format(1, column, len(rows), column, _bar())
         self._set_print(sheet, name)
         return sheet
+
+    def set_head_height(self, sheet: Worksheet, fields: Sequence[Field], widths: Sequence[int]) -> None:
+        """Make the heading row as high as its longest heading, which wraps within its column."""
+        lines = [len(wrap(field.title, width - 1)) for field, width in zip(fields, widths, strict=True)]
+        sheet.set_row(0, 14.0 * max(lines, default=1) + 3.0)
 
     def write(self, sheet: Worksheet, row: int, column: int, field: Field, value: Any) -> int:
         """Write one cell by the style of its column; return how many letters it shows."""
@@ -103,9 +110,12 @@ class Sheets:
             value = "infinite" if value > 0 else "-infinite"
         if isinstance(value, str) or field.style == "text":
             text = cell_text(value)
-            quiet = {"font_color": "#595959", "align": "right"} if field.style != "text" else {}
-            wrap = {"text_wrap": True} if len(text) > _WIDEST else {}
-            sheet.write_string(row, column, text, self.format(**quiet, **wrap))
+            quiet: dict[str, Any] = (
+                {} if field.style == "text" else {"font_color": "#595959", "align": "right"}
+            )
+            layout: dict[str, Any] = quiet or {"indent": 1}
+            wrapped = {"text_wrap": True} if len(text) > _WIDEST else {}
+            sheet.write_string(row, column, text, self.format(**layout, **wrapped))
             return len(text)
         number_format = self.format(num_format=_number_format(field.style, float(value)))
         if field.formula is not None:
