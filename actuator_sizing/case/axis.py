@@ -124,7 +124,8 @@ def _rows(raw: RawTable, problems: ProblemList) -> list[_Row] | None:
         value: str = odd["value"].get(position, text["value"])
         if not text["quantity"]:
             problems.report(_TABLE, number, "quantity", got=f"a value {shown(value)} without a name",
-                            allowed="the name of a quantity", remedy="Name the quantity or clear the row.")  # fmt: skip
+                            allowed="the name of a quantity",
+                            remedy="Name the quantity or clear the row.")  # fmt: skip
             continue
         rows.append(_Row(number, text["quantity"], value, text.get("unit", ""), text.get("source", "")))
     if not rows:
@@ -314,9 +315,9 @@ def surroundings_of(axis: Axis) -> Surroundings:
 
 
 def options_of(axis: Axis) -> dict[str, float | str | None]:
-    """Quantities that neither the mechanism nor the surroundings hold, by key."""
+    """Quantities that neither the mechanism nor the surroundings hold, by name."""
     return {
-        column.key: axis.values.get(column.key)
+        column.name: axis.values.get(column.key)
         for column in COMMON_QUANTITIES
         if column.key not in IN_SURROUNDINGS
     }

@@ -120,7 +120,7 @@ class Case:
     drive_parameters: DriveParameters
     limits: Mapping[str, Limit]
     tolerances: tuple[Tolerance, ...]
-    options: Mapping[str, float | str | None]  # axis quantities that neither mechanism nor surroundings hold
+    options: Mapping[str, float | str | None]  # by name, e.g. "rank by"; what mechanism and surroundings do not hold
     entries: tuple[Entry, ...]  # axis, duty cycle and limits; catalog entries come from `catalog_entries`
     problems: tuple[Problem, ...]  # warnings and notes only; errors never make a Case
     fingerprint: str
