@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 import sys
+import traceback
 from collections.abc import Callable
 from pathlib import Path
 from typing import Any, NoReturn, TextIO
@@ -124,12 +125,13 @@ def compare(case: Path, out: Path | None, rank_by: str | None, detail: int | Non
         if out is not None or not as_json:
             from actuator_sizing.report import write_report
 
+            progress("writing the report", 0.0)
             written = write_report(comparison, out or _report_folder(understood.name))
     print_problems(understood.problems, at_most=10)
     if as_json:
-        from actuator_sizing.report import results_json
+        from actuator_sizing.report.json_results import render_json
 
-        _write_bytes(results_json(comparison))
+        _write_bytes(render_json(comparison))
     else:
         print_summary(comparison, written)
     return PASSED if comparison.passes else NONE_PASSES
@@ -185,14 +187,17 @@ def main(arguments: list[str] | None = None) -> NoReturn:
             stream.reconfigure(errors="replace")  # an ASCII terminal gets "?" for Ω, not an error
     state: dict[str, Any] = {}
     try:
-        status = commands.main(arguments, prog_name="actuator-sizing", standalone_mode=False, obj=state)
+        # Not commands.main: it ends a broken pipe with status 1, which here means that no set passes.
+        given = sys.argv[1:] if arguments is None else list(arguments)
+        with commands.make_context("actuator-sizing", given, obj=state) as context:
+            status = commands.invoke(context)
         sys.stdout.flush()
     except BrokenPipeError:
         _silence(sys.stdout)
         status = BROKEN_PIPE
     except Exception as error:  # the outermost edge: no user ever meets a bare traceback
         if state.get("debug"):
-            raise
+            traceback.print_exc()
         status = _tell(error)
     except KeyboardInterrupt:
         click.echo("Stopped.", err=True)
@@ -204,9 +209,6 @@ def _tell(error: Exception) -> int:
     """Say what went wrong on stderr and return the exit status."""
     if isinstance(error, click.exceptions.Exit):
         return error.exit_code
-    if isinstance(error, click.Abort):  # how click passes on an interrupt
-        click.echo("Stopped.", err=True)
-        return INTERRUPTED
     if isinstance(error, click.ClickException):
         error.show()
         return BAD_INPUT

@@ -222,10 +222,7 @@ def _report_line(written: Sequence[Path]) -> str:
 
 
 class ProgressBar:
-    """A bar on stderr for work over a second; silent when stderr is not a terminal.
-
-    Call it with the part done (0 to 1) and what is being done.
-    """
+    """A bar on stderr for work over a second; silent when stderr is not a terminal."""
 
     def __init__(self) -> None:
         self._enabled = sys.stderr.isatty()
@@ -236,15 +233,15 @@ class ProgressBar:
     def __enter__(self) -> Self:
         return self
 
-    def __call__(self, part_done: float, what: str = "") -> None:
+    def __call__(self, stage: str, part_done: float) -> None:
         """Show how far the work is.
 
         Parameters
         ----------
-        part_done : float
-            Part of the whole work, 0 to 1. [-]
-        what : str
+        stage : str
             What is being done.
+        part_done : float
+            Part of it that is done, 0 to 1. [-]
         """
         if not self._enabled:
             return
@@ -253,7 +250,7 @@ class ProgressBar:
                 return
             self._bar, self._task = _rich_bar()
             self._bar.start()
-        self._bar.update(self._task, completed=part_done, description=clean(what))
+        self._bar.update(self._task, completed=part_done, description=clean(stage))
 
     def __exit__(self, *_exception: object) -> None:
         if self._bar is not None:

@@ -83,7 +83,10 @@ def _mechanism(word: str) -> type[Mechanism]:
 
 def example_sheets(mechanism: type[Mechanism]) -> tuple[Sheet, ...]:
     """Every table of a new case, from the declarations of its columns."""
-    return tuple(_sheet(table, mechanism) for table in TABLES.values())
+    tables = list(TABLES.values())
+    if mechanism.drives_linear_motor:  # it has no gearhead
+        tables = [table for table in tables if table.name != "gearheads"]
+    return tuple(_sheet(table, mechanism) for table in tables)
 
 
 def _sheet(table: Table, mechanism: type[Mechanism]) -> Sheet:
@@ -100,8 +103,6 @@ def _sheet(table: Table, mechanism: type[Mechanism]) -> Sheet:
         rows = _duty_cycle_rows(coordinate)
     elif table.name == "limits":
         rows = _limit_rows(columns)
-    elif table.name == "gearheads" and mechanism.drives_linear_motor:
-        rows = []  # a linear motor has no gearhead
     else:
         rows = [tuple(column.example_for(coordinate) for column in columns)]
     return Sheet(table.name, (headings, *rows))
