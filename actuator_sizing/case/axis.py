@@ -8,10 +8,9 @@ from dataclasses import dataclass, field
 import numpy as np
 
 from actuator_sizing.case.cells import CellError, is_missing, parse_number, tidy
-from actuator_sizing.case.columns import TEXT, WORDS, Column, find, nearest
+from actuator_sizing.case.columns import TEXT, WORDS, Column, allowed_text, find, nearest
 from actuator_sizing.case.headings import understand_headings
 from actuator_sizing.case.model import Entry
-from actuator_sizing.case.parsed_tables import allowed_text
 from actuator_sizing.case.problem_list import ProblemList, shown
 from actuator_sizing.case.raw_tables import RawTable
 from actuator_sizing.case.tables import COMMON_QUANTITIES, TABLES, axis_quantities
@@ -161,6 +160,7 @@ def _take(axis: Axis, row: _Row, column: Column, decimal: str, problems: Problem
     """Understand one value; False where it is wrong, which is then reported."""
     if not isinstance(row.value, OddCell) and is_missing(row.value):
         return True
+    value: float | str | None
     if column.is_number:
         value = _number(row, column, decimal, problems)
         unit = si_unit(column.kind_for(axis.coordinate or "rotary"))

@@ -7,7 +7,8 @@ from numpy.typing import NDArray
 
 from actuator_sizing.case.columns import Column, Table
 from actuator_sizing.case.model import MISSING, STATED, Catalog
-from actuator_sizing.case.parsed_tables import ParsedTable, report_empty_cells, report_missing_column
+from actuator_sizing.case.parsed_tables import ParsedTable
+from actuator_sizing.case.parsing import report_empty_cells, report_missing_column
 from actuator_sizing.errors import NOTE, WARNING
 
 BoolArray = NDArray[np.bool_]

@@ -8,6 +8,10 @@ import re
 import unicodedata
 from collections.abc import Iterable
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from actuator_sizing.units import Unit
 
 TEXT, WORDS, YES_NO = "text", "words", "yes/no"
 UNITLESS_KINDS = ("ratio", "count", "price")  # a heading of these kinds may leave the unit out
@@ -146,19 +150,32 @@ class Column:
             return f"one or more of: {listed}" if self.several else f"one of: {listed}"
         if self.kind == TEXT:
             return "text"
-        from actuator_sizing.units import si_unit
+        from actuator_sizing.units import Unit, si_unit
 
-        unit = si_unit(self.kind_for(coordinate))
-        suffix = f" {unit}" if unit not in ("", "-") else ""
-        low = f"{self.minimum:.6g}{suffix}" if math.isfinite(self.minimum) else ""
-        high = f"{self.maximum:.6g}{suffix}" if math.isfinite(self.maximum) else ""
-        if self.positive:
-            return f"a number > 0 and ≤ {high}" if high else "a number > 0"
-        if low and high:
-            return f"a number from {low} to {high}"
-        if low or high:
-            return f"a number ≥ {low}" if low else f"a number ≤ {high}"
+        kind = self.kind_for(coordinate)
+        label = si_unit(kind)
+        return allowed_text(self, Unit(kind, 1.0, 0.0, "" if label == "-" else label))
+
+
+def allowed_text(column: Column, unit: Unit | None) -> str:
+    """Say what a number cell may hold, bounds in the unit of the heading; just a number without a unit."""
+    if unit is None:
         return "a number"
+
+    def bound(value: float) -> str:
+        if not math.isfinite(value):
+            return ""
+        return f"{(value - unit.offset) / unit.factor:.6g} {unit.spelling}".rstrip()
+
+    low, high = bound(column.minimum), bound(column.maximum)
+    number = "a whole number" if column.kind == "count" else "a number"
+    if column.positive:
+        return f"{number} > 0 and ≤ {high}" if high else f"{number} > 0"
+    if low and high:
+        return f"{number} from {low} to {high}"
+    if low or high:
+        return f"{number} ≥ {low}" if low else f"{number} ≤ {high}"
+    return number
 
 
 def _side(value: str | tuple[str, str], coordinate: str) -> str:

@@ -38,41 +38,44 @@ def understand_limits(parsed: ParsedTable | None) -> tuple[dict[str, Limit], lis
     ----------
     parsed : ParsedTable or None
         The table `limits`; None where the case has none.
+
+    Returns
+    -------
+    limits : dict of str to Limit
+        By check key.
+    entries : list of Entry
+        Every value with its origin.
     """
     limits, entries = default_limits(), []
-    keys = {title: key for key, title in CHECK_NAMES}
-    stated: dict[str, int] = {}
+    rows = {}
     if parsed is not None:
         check_required(parsed)
-        for index, title in enumerate(parsed.names):
-            if title in keys:
-                stated[keys[title]] = index
+        rows = {str(title): index for index, title in enumerate(parsed.names)}
     for key, title in CHECK_NAMES:
-        found = stated.get(key)
-        values = {
-            "applies": limits[key].applies,
-            "allowed utilisation": limits[key].allowed_utilisation,
-            "recommended reserve": limits[key].recommended_reserve,
-        }
-        for name in values:
-            row, shown_cell, origin = None, "", "assumed"
-            if parsed is not None and found is not None:
-                row = int(parsed.rows[found])
-                column_key = name.replace(" ", "_")
-                if parsed.stated(column_key)[found]:
-                    value = parsed.values[column_key][found]
-                    values[name] = str(value) if name == "applies" else float(value)
-                    shown_cell, origin = parsed.shown_cell(column_key, found), "stated"
-            unit = "" if name == "applies" else "-"
-            rule = "" if origin == "stated" else "default"
-            entries.append(Entry("limits", row, title, name, shown_cell, values[name], unit, origin, rule))
+        default, index = limits[key], rows.get(title)
+        applies = _limit_entry(parsed, index, title, "applies", default.applies)
+        allowed = _limit_entry(parsed, index, title, "allowed utilisation", default.allowed_utilisation)
+        reserve = _limit_entry(parsed, index, title, "recommended reserve", default.recommended_reserve)
+        entries += [applies, allowed, reserve]
         limits[key] = Limit(
-            key,
-            str(values["applies"]),
-            float(values["allowed utilisation"]),
-            float(values["recommended reserve"]),
+            key, str(applies.value_si), float(allowed.value_si or 0.0), float(reserve.value_si or 0.0)
         )
     return limits, entries
+
+
+def _limit_entry(
+    parsed: ParsedTable | None, index: int | None, title: str, name: str, default: float | str
+) -> Entry:
+    """One value of one check, stated or the default."""
+    key, is_word = name.replace(" ", "_"), isinstance(default, str)
+    unit = "" if is_word else "-"
+    if parsed is None or index is None:
+        return Entry("limits", None, title, name, "", default, unit, "assumed", "default")
+    row = int(parsed.rows[index])
+    if not parsed.stated(key)[index]:
+        return Entry("limits", row, title, name, "", default, unit, "assumed", "default")
+    value = parsed.text(key)[index] if is_word else float(parsed.number(key)[index])
+    return Entry("limits", row, title, name, parsed.shown_cell(key, index), value, unit, "stated")
 
 
 def understand_tolerances(

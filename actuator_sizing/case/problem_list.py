@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable
-from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -72,8 +71,15 @@ class ProblemList:
         """Take in one problem for each row index where `where` is true; texts may depend on the index."""
         indices = np.flatnonzero(where)
         for index in indices[:KEPT_PER_COLUMN].tolist():
-            parts = [part(index) if callable(part) else part for part in (got, allowed, remedy)]
-            self.add(Problem(table, int(rows[index]), column, *parts, severity))
+            self.report(
+                table,
+                int(rows[index]),
+                column,
+                got=got(index) if callable(got) else got,
+                allowed=allowed(index) if callable(allowed) else allowed,
+                remedy=remedy(index) if callable(remedy) else remedy,
+                severity=severity,
+            )
         place = (table, column, severity)
         more = max(len(indices) - KEPT_PER_COLUMN, 0)
         if more:
@@ -110,5 +116,4 @@ class ProblemList:
             for (table, column, severity), count in self._counts.items()
             if count > KEPT_PER_COLUMN
         ]
-        everything: list[Any] = [*self._kept, *more]
-        return tuple(sorted(everything, key=lambda problem: _ORDER[problem.severity]))
+        return tuple(sorted((*self._kept, *more), key=lambda problem: _ORDER[problem.severity]))

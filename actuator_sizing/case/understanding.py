@@ -15,7 +15,8 @@ from actuator_sizing.case.judging import understand_limits, understand_tolerance
 from actuator_sizing.case.model import MISSING, ORIGINS, STATED, Case, Catalog, Entry
 from actuator_sizing.case.motion import motion_entries, understand_motion
 from actuator_sizing.case.motors import understand_motors
-from actuator_sizing.case.parsed_tables import ParsedTable, parse_table
+from actuator_sizing.case.parsed_tables import ParsedTable
+from actuator_sizing.case.parsing import parse_table
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.raw_tables import RawTable
 from actuator_sizing.case.tables import TABLES
