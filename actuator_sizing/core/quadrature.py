@@ -17,6 +17,7 @@ FloatArray = NDArray[np.float64]
 
 NODES = 16  # relative interpolation error below 1e-10 on half a sine period, products of two included
 _DENSE = 65  # points per piece on which extrema and sign changes are bracketed
+_NOTHING = 1e-12  # a value this small against the largest one has no sign
 _BORDER = 1e-6  # roots closer than this part of a piece to its border are the border (rounding)
 
 
@@ -155,8 +156,11 @@ def roots(values: FloatArray) -> FloatArray:
     if not len(inside):
         return np.empty(0)
     borders = np.concatenate([[-1.0], inside, [1.0]])
-    signs = np.sign(legendre.legval(0.5 * (borders[1:] + borders[:-1]), series))
-    return inside[signs[1:] * signs[:-1] < 0]
+    middle = legendre.legval(0.5 * (borders[1:] + borders[:-1]), series)
+    # A multiple root at a border splits, by rounding, into roots nearby; between them the function is nothing.
+    real = np.flatnonzero(np.abs(middle) > _NOTHING)
+    changes = real[1:][np.sign(middle[real[1:]]) != np.sign(middle[real[:-1]])]
+    return np.asarray(inside[changes - 1])
 
 
 def largest(values: FloatArray) -> tuple[FloatArray, NDArray[np.intp], FloatArray]:

@@ -17,9 +17,9 @@ from actuator_sizing.core.parameters import (
 )
 
 if TYPE_CHECKING:
+    from actuator_sizing.sizing.block import Block
     from actuator_sizing.sizing.demand import Demand
     from actuator_sizing.sizing.evaluation import PairResults
-    from actuator_sizing.sizing.block import Block
 
 FloatArray = NDArray[np.float64]
 

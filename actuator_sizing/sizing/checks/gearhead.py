@@ -27,7 +27,10 @@ def _same(value: float, sets: Sets) -> FloatArray:
 def _working(symbol: str, unit: str, measure):  # type: ignore[no-untyped-def]
     def working(sets: Sets, i: int) -> str:
         m = measure(sets)
-        return f"{symbol} = {digits(m.demand[i])} {unit} / {digits(m.capacity[i])} {unit} = {digits(m.ratio()[i])}{note}"
+        return (
+            f"{symbol} = {digits(m.demand[i])} {unit} / {digits(m.capacity[i])} {unit} "
+            f"= {digits(m.ratio()[i])}"
+        )
 
     return working
 

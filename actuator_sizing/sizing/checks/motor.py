@@ -9,8 +9,8 @@ from actuator_sizing.core.capability import continuous_current
 from actuator_sizing.core.machine import resistance_at, torque_of_current
 from actuator_sizing.core.parameters import MotorParameters, Surroundings
 from actuator_sizing.core.thermal import altitude_factor
-from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits
 from actuator_sizing.sizing.block import Block
+from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits
 
 FloatArray = NDArray[np.float64]
 
