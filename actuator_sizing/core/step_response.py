@@ -167,7 +167,7 @@ def voltage_step(
     inertia : float
         All inertia or mass referred to the motor, > 0. [kg·m² or kg]
     viscous : float
-        All viscous friction referred to the motor, ≥ 0. [N·m·s or N·s/m]
+        All viscous friction referred to the motor, ≥ 0. [N·m·s/rad or N·s/m]
     voltage : float
         Height of the step, any sign. [V]
 
