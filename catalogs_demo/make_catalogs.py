@@ -27,7 +27,7 @@ _MAINS = (("325f", 325.0, FAST), ("325s", 325.0, SLOW))
 _BRUSHED = ((25, "", 1.0, _LOW), (32, "", 1.0, _LOW), (40, "", 1.0, _LOW), (52, "", 0.9, _LOW),
             (65, "", 0.9, _48), (80, "", 0.9, _48))  # fmt: skip
 _SIX_STEP = ((32, "", 0.9, (_LOW[0], *_48)), (42, "", 0.9, (_LOW[0], *_48)), (57, "", 0.9, (_LOW[0], *_48)),
-             (70, "", 0.9, (*_48, *_MAINS)), (86, "", 0.9, (*_48, *_MAINS)))  # fmt: skip
+             (70, "", 0.9, _48), (86, "", 0.9, _48))  # fmt: skip
 _325 = (("325", 325.0, FAST),)
 _565 = (("565f", 565.0, FAST), ("565s", 565.0, SLOW))
 _SINUSOIDAL = (
@@ -42,15 +42,18 @@ _LINEAR = ((0.040, 0.10, "48", 48.0, 1.5), (0.060, 0.16, "325", 325.0, 4.0), (0.
            (0.090, 0.24, "565", 565.0, 4.0), (0.090, 0.48, "565", 565.0, 4.0))  # fmt: skip
 
 MOTOR_HEADINGS = (
-    "motor", "commutation", "current basis", "nominal voltage [V]", "resistance terminal-to-terminal [mΩ]",
-    "resistance temperature [°C]", "inductance terminal-to-terminal [mH]", "torque constant [mNm/A]",
-    "back-EMF constant [V/krpm]", "speed constant [rpm/V]", "force constant [N/A]", "pole pairs", "pole pitch [mm]",
-    "rotor inertia [kg·cm²]", "moving mass [kg]", "friction torque [mNm]", "viscous friction [mNm/krpm]",
-    "no-load current [A]", "no-load speed [min⁻¹]", "continuous current [A]", "continuous-rating ambient [°C]",
-    "peak current [A]", "peak torque [Nm]", "maximum speed [min⁻¹]", "maximum linear speed [m/s]",
-    "winding temperature limit [°C]", "thermal class", "thermal resistance winding-housing [K/W]",
-    "thermal resistance housing-ambient [K/W]", "winding time constant [s]", "housing time constant [min]",
-    "magnet material", "brake torque [Nm]", "brake inertia [kg·cm²]", "mass [kg]", "price [EUR]", "source",
+    "motor", "commutation", "current basis", "nominal voltage [V]",
+    "resistance terminal-to-terminal [mΩ]", "resistance temperature [°C]",
+    "inductance terminal-to-terminal [mH]", "torque constant [mNm/A]", "back-EMF constant [V/krpm]",
+    "back-EMF constant basis", "speed constant [rpm/V]", "force constant [N/A]", "pole pairs",
+    "pole pitch [mm]", "rotor inertia [kg·cm²]", "moving mass [kg]", "friction torque [mNm]",
+    "viscous friction [mNm/krpm]", "no-load current [A]", "no-load speed [min⁻¹]",
+    "continuous current [A]", "continuous-rating ambient [°C]", "peak current [A]", "peak torque [Nm]",
+    "maximum speed [min⁻¹]", "maximum linear speed [m/s]", "winding temperature limit [°C]",
+    "thermal class", "thermal resistance winding-housing [K/W]",
+    "thermal resistance housing-ambient [K/W]", "winding time constant [s]",
+    "housing time constant [min]", "magnet material", "brake torque [Nm]", "brake inertia [kg·cm²]",
+    "mass [kg]", "price [EUR]", "source",
 )  # fmt: skip
 GEARHEAD_HEADINGS = (
     "gearhead", "ratio", "stages", "continuous torque [Nm]", "peak torque [Nm]", "emergency-stop torque [Nm]",
@@ -59,24 +62,39 @@ GEARHEAD_HEADINGS = (
     "source",
 )  # fmt: skip
 DRIVE_HEADINGS = (
-    "drive", "current basis", "commutation", "continuous current [A]", "peak current [A]", "peak time [s]",
-    "continuous-rating ambient [°C]", "minimum bus voltage [V]", "maximum bus voltage [V]", "internal capacitance [µF]",
-    "chopper threshold [V]", "minimum brake resistor [Ω]", "efficiency [%]", "control rate [kHz]", "mass [kg]",
-    "price [EUR]", "source",
+    "drive", "current basis", "commutation", "continuous current [A]", "peak current [A]",
+    "peak time [s]", "continuous-rating ambient [°C]", "minimum bus voltage [V]",
+    "maximum bus voltage [V]", "internal capacitance [µF]", "chopper threshold [V]",
+    "minimum brake resistor [Ω]", "efficiency [%]", "control rate [kHz]", "mass [kg]", "price [EUR]",
+    "source",
 )  # fmt: skip
 
 
 def motors() -> list[Row]:
     """Every motor as a row keyed by heading."""
     rows = []
-    for kind, prefix, frames in ((BRUSHED, "brush", _BRUSHED), (SIX_STEP, "block", _SIX_STEP), (SINUSOIDAL, "sine", _SINUSOIDAL)):
+    for kind, prefix, frames in (
+        (BRUSHED, "brush", _BRUSHED),
+        (SIX_STEP, "block", _SIX_STEP),
+        (SINUSOIDAL, "sine", _SINUSOIDAL),
+    ):
         for diameter, letter, slenderness, windings in frames:
             frame = Frame(kind, diameter / 1000.0, slenderness * diameter / 1000.0)
             for suffix, bus_v, share in windings:
-                basis = "DC" if kind is not SINUSOIDAL else "peak" if (diameter, suffix) == (100, "565s") else "rms"
-                rows.append(_rotary(f"{prefix}-{diameter}{letter}-{suffix}", Winding(frame, basis, bus_v, share)))
+                basis = (
+                    "DC"
+                    if kind is not SINUSOIDAL
+                    else "peak"
+                    if (diameter, suffix) == (100, "565s")
+                    else "rms"
+                )
+                rows.append(
+                    _rotary(f"{prefix}-{diameter}{letter}-{suffix}", Winding(frame, basis, bus_v, share))
+                )
     rows += [_linear(*size) for size in _LINEAR]
-    _leave_empty(rows, 9, 4, "thermal resistance winding-housing [K/W]", "thermal resistance housing-ambient [K/W]")
+    _leave_empty(
+        rows, 9, 4, "thermal resistance winding-housing [K/W]", "thermal resistance housing-ambient [K/W]"
+    )
     _leave_empty(rows, 13, 7, "winding time constant [s]", "housing time constant [min]")
     return rows
 
@@ -113,7 +131,12 @@ def _rotary(name: str, winding: Winding) -> Row:
         row["speed constant [rpm/V]"] = 30.0 / math.pi / K
         row |= {"pole pairs": 4.0, "thermal class": "F", "magnet material": "NdFeB"}
     else:
-        row |= {"pole pairs": 5.0, "thermal class": "F", "magnet material": "NdFeB", "peak torque [Nm]": winding.peak_torque}
+        row |= {
+            "pole pairs": 5.0,
+            "thermal class": "F",
+            "magnet material": "NdFeB",
+            "peak torque [Nm]": winding.peak_torque,
+        }
         _sinusoidal_constant(row, winding, K)
         if frame.diameter_m >= 0.080 and winding.bus_v > 100.0:
             row["brake torque [Nm]"] = 1.3 * K * winding.continuous_current
@@ -141,6 +164,7 @@ def _sinusoidal_constant(row: Row, winding: Winding, K: float) -> None:
     if winding.bus_v < 500.0 or winding.basis == "peak":
         row["torque constant [mNm/A]"] = 1e3 * K
     else:
+        row["back-EMF constant basis"] = "rms line-to-line"
         row["back-EMF constant [V/krpm]"] = K / math.sqrt(3.0) * 1000.0 * math.pi / 30.0
 
 
@@ -176,7 +200,17 @@ def _linear(width_m: float, length_m: float, suffix: str, bus_v: float, speed_m_
 
 def gearheads() -> list[Row]:
     """Every gearhead as a row keyed by heading; two ratios are exact fractions of tooth counts."""
-    ratios = (("3", 1), ("5", 1), ("7", 1), ("10", 1), ("63/4", 2), ("25", 2), ("104/3", 2), ("50", 2), ("100", 3))
+    ratios = (
+        ("3", 1),
+        ("5", 1),
+        ("7", 1),
+        ("10", 1),
+        ("63/4", 2),
+        ("25", 2),
+        ("104/3", 2),
+        ("50", 2),
+        ("100", 3),
+    )
     rows = []
     for diameter in (40, 60, 80, 115, 140):
         for ratio, stages in ratios:
@@ -186,7 +220,7 @@ def gearheads() -> list[Row]:
                 "ratio": ratio,
                 "stages": float(stages),
                 "continuous torque [Nm]": gear.torque,
-                "peak torque [Nm]": 2.0 * gear.torque,
+                "peak torque [Nm]": (1.5 if ratio in ("10", "100") else 2.0) * gear.torque,
                 "emergency-stop torque [Nm]": 4.0 * gear.torque,
                 "mean input speed [min⁻¹]": _round(gear.speed_rpm, 50.0),
                 "maximum input speed [min⁻¹]": _round(1.8 * gear.speed_rpm, 100.0),
@@ -209,7 +243,6 @@ _FEEDERS = (
     *((24.0, "DC", amperes) for amperes in (4.0, 10.0, 25.0)),
     *((48.0, "DC", amperes) for amperes in (4.0, 10.0, 20.0, 40.0)),
     *((48.0, "rms", amperes) for amperes in (6.0, 15.0, 30.0)),
-    *((325.0, "DC", amperes) for amperes in (3.0, 8.0)),
     *((325.0, "rms", amperes) for amperes in (1.5, 3.0, 5.0, 8.0, 13.0, 20.0)),
     *((325.0, "peak", amperes) for amperes in (6.0, 15.0)),
     *((565.0, "rms", amperes) for amperes in (1.5, 3.0, 5.0, 8.0, 14.0, 22.0)),
@@ -228,7 +261,7 @@ def drives() -> list[Row]:
         rows.append({
             "drive": f"feed-{bus_v:.0f}-{amperes:g}{basis.lower()}",
             "current basis": basis,
-            "commutation": "sinusoidal" if basis != "DC" else "six-step" if mains else "brushed / six-step",
+            "commutation": "sinusoidal" if basis != "DC" else "brushed / six-step",
             "continuous current [A]": amperes,
             "peak current [A]": (3.0 if mains else 2.5) * amperes,
             "peak time [s]": 2.0 if mains else 4.0,

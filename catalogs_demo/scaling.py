@@ -145,7 +145,11 @@ class Winding:
     @property
     def torque_constant(self) -> float:
         """[N·m/A in this basis]."""
-        volts = self.bus_v * MODULATION * {"DC": 1.0, "rms": SQRT_3_2, "peak": SQRT_3_2 / math.sqrt(2.0)}[self.basis]
+        volts = (
+            self.bus_v
+            * MODULATION
+            * {"DC": 1.0, "rms": SQRT_3_2, "peak": SQRT_3_2 / math.sqrt(2.0)}[self.basis]
+        )
         return LINK_UTILISATION * volts / (self.speed_rpm * math.pi / 30.0)
 
     @property
@@ -235,7 +239,7 @@ class Gear:
     def torque(self) -> float:
         """Small ratios load the planets, ratio 10 a small sun. [N·m]."""
         first = self.value if self.stages == 1 else 5.0
-        return 30.0 * self.size**3 * (1.0 - 0.012 * abs(first - 5.0) ** 1.9)
+        return 14.0 * self.size**3 * (1.0 - 0.012 * abs(first - 5.0) ** 1.9)
 
     @property
     def efficiency(self) -> float:
@@ -256,7 +260,7 @@ class Gear:
 
     @property
     def stiffness_nm_arcmin(self) -> float:
-        return 3.4 * self.size**3
+        return 2.6 * self.size**3
 
     @property
     def mass(self) -> float:
