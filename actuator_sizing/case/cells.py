@@ -31,7 +31,7 @@ _AMBIGUOUS = re.compile(r"[-+]?[1-9]\d{0,2}([.,])\d{3}", re.ASCII)
 _COMMA_NUMBER = re.compile(r"[-+]?\d*,\d+([eE][-+]?\d+)?|[-+]?\d+,([eE][-+]?\d+)?", re.ASCII)
 _RANGE = re.compile(r"[-+]?[\d.,]+\s*(\.\.\.?|\u2026|~|to|bis|/|-)\s*[-+]?[\d.,]+\s*\S*", re.ASCII)
 _FRACTION = re.compile(r"\+?(\d{1,12})\s*[/:]\s*(\d{1,12})", re.ASCII)
-_WITH_UNIT = re.compile(r"([-+]?[\d.,]+(?:[eE][-+]?\d+)?)\s*([^\d\s].*)")
+_WITH_UNIT = re.compile(r"([-+]?\d[\d.,]*(?:[eE][-+]?\d+)?)\s*([^\W\d_].*|[%°‰\"'].*)", re.DOTALL)
 _EVIDENCE = re.compile(r"[-+]?(?:0|[1-9]\d*|)([.,])(\d+)", re.ASCII)
 
 
@@ -156,7 +156,9 @@ def _not_a_number(cell: str) -> CellError:
     if cell.startswith("#"):
         return CellError("The spreadsheet's formula failed: mend the formula or type the number.",
                          allowed="a number, not a spreadsheet error")  # fmt: skip
-    if cell[0] in "<>\u2264\u2265~\u2248\u00b1" or low.startswith(("approx", "ca.", "max", "min", "up to")):
+    if cell[:1] in ("<", ">", "\u2264", "\u2265", "~", "\u2248", "\u00b1") or low.startswith(
+        ("approx", "ca.", "max", "min", "up to")
+    ):
         return CellError("Write the one number to calculate with; put the remark in a note column.",
                          allowed="one number without a comparison sign")  # fmt: skip
     if _RANGE.fullmatch(cell):

@@ -64,7 +64,7 @@ class ParsedTable:
         """Rows in which the sheet states the value."""
         if key not in self.origins:
             return np.zeros(len(self), dtype=bool)
-        return self.origins[key] == STATED
+        return np.asarray(self.origins[key] == STATED, dtype=bool)
 
     def is_bad(self, key: str) -> BoolArray:
         """Rows in which the cell was reported as wrong."""
