@@ -68,9 +68,10 @@ def commands() -> None:
 @click.option("--mechanism", metavar="NAME", help="Mechanism of the axis; the choices stand below.")
 @_debug
 def start(path: Path, mechanism: str | None) -> None:
-    """Write a new case to PATH: a workbook if it ends in .xlsx, else a folder of CSV files.
+    """Write a new case with example rows to PATH.
 
-    Every table has its headings with units, the allowed values, hints and filled example rows.
+    It is a workbook if PATH ends in .xlsx, else a folder of CSV files. Every table has its headings with
+    units, the allowed values, hints and filled example rows.
     """
     from actuator_sizing.case.starting import start_case
 
@@ -85,7 +86,10 @@ def start(path: Path, mechanism: str | None) -> None:
 @_case_argument("case")
 @_debug
 def audit(case: Path) -> int:
-    """Read CASE and look over its data sheets; report every problem at once."""
+    """Report every problem of CASE at once.
+
+    Reads and checks every table, and finds the entries of a data sheet that contradict each other.
+    """
     from actuator_sizing.case.audit import audit_case
     from actuator_sizing.console import count_line, print_problems
 
@@ -110,10 +114,12 @@ def audit(case: Path) -> int:
 @click.option("--json", "as_json", is_flag=True, help="Print results.json; no files unless --out is given.")
 @_debug
 def compare(case: Path, out: Path | None, rank_by: str | None, detail: int | None, as_json: bool) -> int:
-    """Size CASE: all motor x gearhead x drive sets, ranked; writes the report.
+    """Size CASE and write the report.
 
-    The report goes to reports/<case name>/ below the current folder unless --out says otherwise.
+    Compares all motor x gearhead x drive sets and ranks those that pass. The report goes to
+    reports/<case name>/ below the current folder unless --out says otherwise.
     """
+    from actuator_sizing.case.audit import audit_catalogs
     from actuator_sizing.case.reading import read_case
     from actuator_sizing.console import ProgressBar, print_problems, print_summary
     from actuator_sizing.sizing import compare as compare_sets
@@ -127,11 +133,11 @@ def compare(case: Path, out: Path | None, rank_by: str | None, detail: int | Non
 
             progress("writing the report", 0.0)
             written = write_report(comparison, out or _report_folder(understood.name))
-    print_problems(understood.problems, at_most=10)
+    print_problems(dict.fromkeys((*understood.problems, *audit_catalogs(understood))), at_most=10)
     if as_json:
         from actuator_sizing.report.json_results import render_json
 
-        _write_bytes(render_json(comparison))
+        click.echo(render_json(comparison).rstrip(b"\n"))
     else:
         print_summary(comparison, written)
     return PASSED if comparison.passes else NONE_PASSES
@@ -143,7 +149,10 @@ def compare(case: Path, out: Path | None, rank_by: str | None, detail: int | Non
 @click.option("--force", is_flag=True, help="Replace TARGET if it exists.")
 @_debug
 def convert(case: Path, target: Path, force: bool) -> None:
-    """Rewrite CASE as TARGET, folder to workbook or back, without loss."""
+    """Rewrite CASE as a folder or a workbook.
+
+    A folder becomes the workbook TARGET, a workbook the folder TARGET, without loss.
+    """
     from actuator_sizing.case.converting import convert_case
 
     convert_case(case, target, overwrite=force)
@@ -156,12 +165,15 @@ def convert(case: Path, target: Path, force: bool) -> None:
 )
 @_debug
 def columns(out: Path | None) -> None:
-    """Print the page of every table and column: units, bounds, words (Markdown)."""
+    """Print what every table and column may hold.
+
+    The page is Markdown: columns, units, bounds, words, and what is assumed where nothing is given.
+    """
     from actuator_sizing.case.documentation import columns_page
 
     page = columns_page().encode()
     if out is None:
-        _write_bytes(page)
+        click.echo(page, nl=False)
         return
     from actuator_sizing.files import write_atomically
 
@@ -238,13 +250,6 @@ def _silence(stream: TextIO) -> None:
         os.dup2(os.open(os.devnull, os.O_WRONLY), stream.fileno())
     except (OSError, ValueError):  # no real file behind the stream
         return
-
-
-def _write_bytes(content: bytes) -> None:
-    sys.stdout.flush()
-    stream = click.get_binary_stream("stdout")
-    stream.write(content if content.endswith(b"\n") else content + b"\n")
-    stream.flush()
 
 
 def _report_folder(name: str) -> Path:

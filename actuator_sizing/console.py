@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import shutil
 import sys
 import time
@@ -124,6 +125,8 @@ def verdict_sentence(comparison: Comparison) -> str:
     governing = _governing(best)
     if governing is None or governing.utilisation is None:
         how = "nothing could be checked"
+    elif math.isinf(governing.utilisation):
+        how = f"{governing.title} governs, beyond any limit ({clean(governing.working)})"
     else:
         how = f"{governing.title} governs at {percent(governing.utilisation, governing.allowed)}"
         if governing.allowed != 1.0:

@@ -39,7 +39,9 @@ def audit_case(path: str | Path) -> tuple[Problem, ...]:
     from actuator_sizing.case.reading import check_case
 
     case, problems = check_case(path)
-    return problems if case is None else (*problems, *audit_catalogs(case))
+    if case is None:
+        return problems
+    return tuple(dict.fromkeys((*problems, *audit_catalogs(case))))  # reading may have audited already
 
 
 def audit_catalogs(case: Case) -> tuple[Problem, ...]:

@@ -13,6 +13,7 @@ from actuator_sizing.case.columns import Column, Table, find, fold
 from actuator_sizing.case.headings import split_heading
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.raw_tables import RawTable
+from actuator_sizing.case.reading import CSV_ENDINGS
 from actuator_sizing.case.tables import TABLES, axis_quantities
 from actuator_sizing.case.writing import Sheet, is_workbook, write_sheets
 from actuator_sizing.errors import InputError, Problem
@@ -57,7 +58,7 @@ def convert_case(source: str | Path, target: str | Path, *, overwrite: bool = Fa
     _check_paths(source, target, overwrite)
     problems = ProblemList()
     sheets = list(
-        _workbook_sheets(source, problems) if is_workbook(source) else _folder_sheets(source, problems)
+        _workbook_sheets(source, problems) if source.is_file() else _folder_sheets(source, problems)
     )
     if not sheets and not problems.has_errors:
         problems.report(source.name, got="no tables", allowed="at least one table", remedy="Choose a case.")
@@ -69,8 +70,8 @@ def convert_case(source: str | Path, target: str | Path, *, overwrite: bool = Fa
 
 
 def _check_paths(source: Path, target: Path, overwrite: bool) -> None:
-    if is_workbook(source) == is_workbook(target):
-        form = "workbook" if is_workbook(source) else "folder"
+    if source.is_file() == is_workbook(target):
+        form = "workbook" if source.is_file() else "folder"
         raise InputError(
             [
                 Problem(
@@ -101,9 +102,14 @@ def _check_paths(source: Path, target: Path, overwrite: bool) -> None:
 def _folder_sheets(folder: Path, problems: ProblemList) -> Iterator[Sheet]:
     from actuator_sizing.case.csv_files import read_csv
 
-    for path in sorted(folder.glob("*.[cC][sS][vV]")):
+    for path in sorted(folder.iterdir()):
+        if path.suffix.lower() not in CSV_ENDINGS or not path.is_file():
+            continue
         table = _table_of(path.stem)
-        known = frozenset(fold(column.name) for column in table.columns) if table else frozenset[str]()
+        spellings = (
+            (name for column in table.columns for name in (column.name, *column.aliases)) if table else ()
+        )
+        known = frozenset(split_heading(name)[0] for name in spellings)
         raw = read_csv(path, path.stem, known, problems)
         if raw is not None:
             yield Sheet(path.stem, tuple(_plain_rows(_grid(raw), table, raw.decimal)))
@@ -266,7 +272,8 @@ def _without_doubt(sheet: Sheet) -> tuple[tuple[str, ...], ...]:
 
 def _moved(sheet: Sheet, source: Path, target: Path) -> Sheet:
     """Let a relative `catalog folder` still name the same folder, seen from where the case is now."""
-    before, after = (path.parent if is_workbook(path) else path for path in (source, target))
+    before = source.parent if source.is_file() else source
+    after = target.parent if is_workbook(target) else target
     if _table_of(sheet.name) is not TABLES["axis"] or before.resolve() == after.resolve():
         return sheet
     folded = [split_heading(heading)[0] for heading in sheet.rows[0]]

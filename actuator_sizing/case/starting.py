@@ -19,8 +19,14 @@ from actuator_sizing.errors import InputError, Problem
 
 DEFAULT_MECHANISM = "ball screw"
 
-# A linear motor carries the load on a level guide in the example; the others lift it.
-_EXAMPLES = {("linear motor", "inclination"): "0"}
+# The example motor is the same for every mechanism, so some loads and moves are fitted to it: the examples
+# of a new case size to a set that passes.
+_EXAMPLES: dict[str, dict[str, str]] = {
+    "rotary load": {"load inertia": "0.8"},
+    "ball screw": {"lead": "20"},
+    "lead screw": {"displacement": "0.1", "duration": "1"},
+    "linear motor": {"inclination": "0"},
+}
 
 
 def start_case(path: str | Path, mechanism: str = DEFAULT_MECHANISM) -> tuple[Path, ...]:
@@ -100,7 +106,7 @@ def _sheet(table: Table, mechanism: type[Mechanism]) -> Sheet:
     if table.name == "axis":
         rows = _axis_rows(mechanism)
     elif table.name == "duty_cycle":
-        rows = _duty_cycle_rows(coordinate)
+        rows = _duty_cycle_rows(mechanism)
     elif table.name == "limits":
         rows = _limit_rows(columns)
     else:
@@ -114,16 +120,20 @@ def _axis_rows(mechanism: type[Mechanism]) -> list[tuple[str, ...]]:
         value = column.example_for(mechanism.coordinate)
         if column.name in ("mechanism", "title"):
             value = mechanism.name
-        value = _EXAMPLES.get((mechanism.name, column.name), value)
+        value = _EXAMPLES.get(mechanism.name, {}).get(column.name, value)
         unit = column.unit_for(mechanism.coordinate)
         hint = f"example: {column.help}" if value else f"left empty: {column.help}"
         rows.append((column.name, value, unit, hint))
     return rows
 
 
-def _duty_cycle_rows(coordinate: str) -> list[tuple[str, ...]]:
+def _duty_cycle_rows(mechanism: type[Mechanism]) -> list[tuple[str, ...]]:
     """There, wait, back, wait: a cycle that closes."""
-    example = {column.name: column.example_for(coordinate) for column in DUTY_CYCLE_COLUMNS}
+    fitted = _EXAMPLES.get(mechanism.name, {})
+    example = {
+        column.name: fitted.get(column.name, column.example_for(mechanism.coordinate))
+        for column in DUTY_CYCLE_COLUMNS
+    }
     wait = {
         "motion law": "dwell",
         "duration": "0.4",

@@ -13,7 +13,10 @@ PACKAGE = Path(actuator_sizing.__file__).parent
 ROOT = PACKAGE.parent
 
 # Higher may import lower or its own layer. `files` is plumbing beside `errors` and `units`.
-LAYERS = {"errors": 0, "units": 0, "files": 0, "version": 0, "core": 1, "case": 2, "sizing": 3, "report": 4}
+LAYERS = {
+    "version": 0, "errors": 0, "files": 0, "units": 0, "unit_kinds": 0, "unit_syntax": 0,
+    "core": 1, "case": 2, "sizing": 3, "report": 4,
+}  # fmt: skip
 TOP = {"cli": 5, "console": 5, "workbench": 5, "__main__": 6}
 
 # Upward arrows that are wanted: a convenience method that calls a writer, imported when it is called.
