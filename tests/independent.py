@@ -77,7 +77,7 @@ class PointModel:
             for phase in segment.phases:
                 v = phase.kinematics(np.array([0.5 * phase.duration_s]))[1][0]
                 s = float(np.sign(v))  # rest-to-rest laws do not turn back inside a phase
-                grid = np.linspace(0.0, phase.duration_s, 1201)
+                grid = 0.5 * phase.duration_s * (1.0 - np.cos(np.linspace(0.0, np.pi, 2001)))  # dense at ends
                 borders = {0.0, phase.duration_s}
                 for key in ("load_sign", "stage_sign", "airgap", "terminals", "shaft"):
                     value = self.at(segment, phase, grid, s)[key]

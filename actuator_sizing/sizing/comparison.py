@@ -14,7 +14,7 @@ from actuator_sizing.errors import InputError, Problem
 from actuator_sizing.sizing.candidates import candidate_table
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import build_demand, cycle_quantities
-from actuator_sizing.sizing.detail import SetModel, quantities, set_detail
+from actuator_sizing.sizing.detail import SetModel, commissioning_quantities, quantities, set_detail
 from actuator_sizing.sizing.evaluation import functions_of
 from actuator_sizing.sizing.judging import (
     ORDER,
@@ -210,7 +210,7 @@ def _set_result(
         governing_check=verdicts.checks[int(verdicts.governing[i])].key,
         price=price if np.isfinite(price) else None,
         mass_kg=mass if np.isfinite(mass) else None,
-        quantities=quantities(model, sets, i),
+        quantities=quantities(model, sets, i) | (commissioning_quantities(model) if with_curves else {}),
         checks=check_results(sets, verdicts, i, [segment.name for segment in case.segments]),
         motor_index=motor,
         gearhead_index=gearhead,

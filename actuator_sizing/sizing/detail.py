@@ -257,7 +257,7 @@ def quantities(model: SetModel, sets: Sets, index: int) -> dict[str, Any]:
     answer["current_basis"] = CURRENT_BASES[int(model.motor.current_basis[0])]
     answer["speed_torque_margin"] = _margin(sets, index)
     answer.update(_bus_energies(model, answer))
-    answer.update(_warm_up_quantities(model))
+    answer.update(_warm_up_quantities(model, answer["winding_max_degc"]))
     answer["drive_current_peak_a"] = _known(sets.drive_current_peak_a[index])
     answer["drive_current_rms_a"] = _known(sets.drive_current_rms_a[index])
     answer["drive_current_basis"] = CURRENT_BASES[int(model.drive.current_basis[0])]
@@ -306,19 +306,25 @@ def _bus_energies(model: SetModel, known: dict[str, Any]) -> dict[str, Any]:
     }
 
 
-def _warm_up_quantities(model: SetModel) -> dict[str, Any]:
+def _warm_up_quantities(model: SetModel, winding_max_degc: float | None) -> dict[str, Any]:
+    """When the winding passes its limit from cold; None where it never does or where data is missing."""
+    limit = float(model.motor.winding_limit_degc[0])
+    if winding_max_degc is not None and not winding_max_degc > limit:
+        return {"time_to_limit_s": None}
+    warming = warm_up(model.network, model.loss, model.case.surroundings.ambient_degc, limit)
+    return {"time_to_limit_s": None if warming is None else _known(warming.time_to_limit_s)}
+
+
+def commissioning_quantities(model: SetModel) -> dict[str, Any]:
+    """Winding and housing temperature after given times from cold, to compare on the machine."""
     ambient = model.case.surroundings.ambient_degc
-    warming = warm_up(model.network, model.loss, ambient, float(model.motor.winding_limit_degc[0]))
     after = temperatures_after(model.network, model.loss, ambient, COMMISSIONING_TIMES_S)
-    answer: dict[str, Any] = {"time_to_limit_s": None if warming is None else _known(warming.time_to_limit_s)}
+    answer: dict[str, Any] = {}
     for position, time in enumerate(COMMISSIONING_TIMES_S):
         minutes = f"{time / 60.0:.0f}_min"
-        answer[f"winding_after_{minutes}_degc"] = (
-            None if after is None else _known(after.winding_degc[position])
-        )
-        answer[f"housing_after_{minutes}_degc"] = (
-            None if after is None else _known(after.housing_degc[position])
-        )
+        for body in ("winding", "housing"):
+            value = None if after is None else _known(getattr(after, f"{body}_degc")[position])
+            answer[f"{body}_after_{minutes}_degc"] = value
     return answer
 
 
