@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass, fields
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -43,6 +44,10 @@ _FEW = 24
 _MOST_ITERATIONS = 100
 #: Newton stops when the state moves by less than this part of one kelvin plus its rise.
 _TOLERANCE = 1e-11
+#: ... or, where rounding is in the way (cycles far shorter than the time constants), after this many steps
+#: by less than this part.
+_PATIENCE = 12
+_ROUNDING = 1e-8
 #: Share of the rise still missing when a warm-up counts as done.
 _MISSING = 0.05
 
@@ -189,27 +194,26 @@ def periodic_state(network: ThermalNetwork, loss: HeatLoss, ambient_degc: float)
     return PeriodicState(**(columns | {"known": known, "has_equilibrium": answer.found}))
 
 
+def _is_settled(iteration: int, is_affine: Any, moved: Number, rise: Number) -> Any:
+    """Whether Newton is done; where the equations are affine its first step is exact."""
+    tolerance = _TOLERANCE if iteration < _PATIENCE else _ROUNDING
+    return is_affine | (moved <= tolerance * (1.0 + abs(rise)))
+
+
 def solve_one(k: Coefficients, steps: Steps) -> tuple[CycleMap, tuple[float, float] | None]:
     """Newton for one candidate in plain floats: last cycle map, and the start state or None for runaway."""
     x1 = x2 = k.ambient
-    for _ in range(_MOST_ITERATIONS):
+    for iteration in range(_MOST_ITERATIONS):
         at = cycle_map(k, steps, FLOATS, x1, x2)
         if not growth(at, FLOATS)[0] < 0.0 or demagnetised(k, at):
-            return at, None
+            break
         step1, step2 = newton_step(at)
         x1, x2 = x1 + step1, x2 + step2
         if not math.isfinite(x1 + x2):
-            return at, None
-        moved = abs(step1) + abs(step2)
-        if k.beta == 0.0 or moved <= _TOLERANCE * (
-            1.0 + abs(x1 - k.ambient)
-        ):  # affine: the first step is exact
+            break
+        if _is_settled(iteration, k.beta == 0.0, abs(step1) + abs(step2), x1 - k.ambient):
             return at, (x1, x2)
     return at, None
-
-
-def _of(at: CycleMap, rows: NDArray[np.bool_]) -> CycleMap:
-    return CycleMap(*(column[rows] for column in at))
 
 
 def _solve_alone(answer: _Answer, row: int, k: Coefficients, steps: Steps) -> None:
@@ -220,30 +224,40 @@ def _solve_alone(answer: _Answer, row: int, k: Coefficients, steps: Steps) -> No
 
 
 def _solve_many(answer: _Answer, rows: NDArray[np.intp], k: Coefficients, steps: Steps) -> None:
-    """Newton for many candidates at once; those that are done leave the batch."""
+    """Newton for many candidates at once; those that are done leave the batch when they are its half."""
+    count = len(rows)
+    maps = CycleMap(*(np.full(count, np.nan) for _ in CycleMap._fields))
+    final1, final2 = np.full(count, np.nan), np.full(count, np.nan)
+    found = np.zeros(count, dtype=bool)
+    left, k_left, steps_left = np.arange(count), k, steps
     x1, x2 = k.ambient.copy(), k.ambient.copy()
+    open_ = np.ones(count, dtype=bool)  # of those that are left in the batch
     for iteration in range(_MOST_ITERATIONS):
-        at = cycle_map(k, steps, ARRAYS, x1, x2)
+        at = cycle_map(k_left, steps_left, ARRAYS, x1, x2)
         step1, step2 = newton_step(at)
         x1, x2 = x1 + step1, x2 + step2
-        lost = ~(growth(at, ARRAYS)[0] < 0.0) | demagnetised(k, at) | ~np.isfinite(x1 + x2)
+        lost = ~(growth(at, ARRAYS)[0] < 0.0) | demagnetised(k_left, at) | ~np.isfinite(x1 + x2)
         moved = np.abs(step1) + np.abs(step2)
-        settled = ~lost & ((k.beta == 0.0) | (moved <= _TOLERANCE * (1.0 + np.abs(x1 - k.ambient))))
-        done = lost | settled | (iteration == _MOST_ITERATIONS - 1)
-        if not done.any():
-            continue
-        answer.runaway_margin(rows[done], _of(at, done), ARRAYS)
-        if settled.any():
-            answer.equilibrium(
-                rows[settled],
-                select_coefficients(k, settled),
-                select_steps(steps, settled),
-                ARRAYS,
-                _of(at, settled),
-                (x1[settled], x2[settled]),
-            )
-        left = ~done
-        if not left.any():
-            return
-        rows, x1, x2 = rows[left], x1[left], x2[left]
-        k, steps = select_coefficients(k, left), select_steps(steps, left)
+        settled = ~lost & _is_settled(iteration, k_left.beta == 0.0, moved, x1 - k_left.ambient)
+        done = open_ & (lost | settled | (iteration == _MOST_ITERATIONS - 1))
+        for kept, column in zip(maps, at, strict=True):
+            kept[left[done]] = column[done]
+        final1[left[done]], final2[left[done]] = x1[done], x2[done]
+        found[left[done & settled]] = True
+        open_ &= ~done
+        if not open_.any():
+            break
+        if open_.sum() <= 0.5 * len(left):
+            left, x1, x2 = left[open_], x1[open_], x2[open_]
+            k_left, steps_left = select_coefficients(k_left, open_), select_steps(steps_left, open_)
+            open_ = np.ones(len(left), dtype=bool)
+    answer.runaway_margin(rows, maps, ARRAYS)
+    if found.any():
+        answer.equilibrium(
+            rows[found],
+            select_coefficients(k, found),
+            select_steps(steps, found),
+            ARRAYS,
+            CycleMap(*(column[found] for column in maps)),
+            (final1[found], final2[found]),
+        )
