@@ -8,7 +8,8 @@ from typing import Any
 
 import numpy as np
 
-from actuator_sizing.case.model import Case, Catalog, Limit, Segment
+from actuator_sizing.case.model import MISSING, Case, Catalog, Limit, Segment
+from actuator_sizing.case.tables import TABLES
 from actuator_sizing.core.mechanisms import MECHANISMS
 from actuator_sizing.core.motion_laws import plan_segment, speed_after
 from actuator_sizing.core.parameters import DriveParameters, GearheadParameters, MotorParameters, Surroundings
@@ -74,7 +75,16 @@ def columns(cls: type, rows: Sequence[dict[str, Any]]) -> Any:
 def catalog(table: str, count: int, names: Sequence[str] | None = None) -> Catalog:
     """A catalog of names only."""
     names = tuple(names or (f"{table[0].upper()}{i}" for i in range(count)))
-    return Catalog(table, names, np.arange(2, count + 2), {}, {}, {}, {}, {})
+    columns_of_table = [column.key for column in TABLES[table].columns]
+    return Catalog(
+        table=table,
+        names=names,
+        rows=np.arange(2, count + 2),
+        values={key: np.full(count, np.nan) for key in columns_of_table},
+        origins={key: np.full(count, MISSING, dtype=np.int8) for key in columns_of_table},
+        headings={},
+        as_entered={},
+    )
 
 
 def segment(row: int, law: str, *, start_s: float = 0.0, start_speed: float = 0.0, **given: Any) -> Segment:

@@ -88,33 +88,37 @@ def fits_mechanism(case: Case) -> tuple[NDArray[np.intp], NDArray[np.intp]]:
 
 
 class _Pool:
-    """The best `keep` sets by key, whatever number is added."""
+    """The best `keep` rows by key, then by index, whatever number is added and in whatever order."""
 
     def __init__(self, keep: int):
         self.keep = keep
         self.rows: list[NDArray[np.intp]] = []
         self.keys: list[FloatArray] = []
         self.size = 0
+        self.bar = np.inf  # no worse key can get in any more
 
     def add(self, rows: NDArray[np.intp], keys: FloatArray) -> None:
-        self.rows.append(rows)
-        self.keys.append(keys)
-        self.size += len(keys)
+        """Offer rows."""
+        good = keys <= self.bar
+        self.rows.append(rows[good])
+        self.keys.append(keys[good])
+        self.size += int(good.sum())
         if self.size > 4 * self.keep:
-            self._prune()
+            rows, keys = self._best()
+            self.rows, self.keys, self.size, self.bar = [rows], [keys], len(keys), keys[-1]
 
-    def _prune(self) -> None:
+    def _best(self) -> tuple[NDArray[np.intp], FloatArray]:
         rows, keys = np.concatenate(self.rows), np.concatenate(self.keys)
-        best = np.argpartition(keys, self.keep)[: self.keep]
-        self.rows, self.keys, self.size = [rows[best]], [keys[best]], self.keep
+        if len(keys) > self.keep:
+            good = keys <= np.partition(keys, self.keep - 1)[self.keep - 1]
+            rows, keys = rows[good], keys[good]
+        # Ties fall back on the index, so that the answer does not depend on the block size.
+        order = np.lexsort((*rows.T[::-1], keys))[: self.keep]
+        return rows[order], keys[order]
 
     def sorted(self, width: int) -> NDArray[np.intp]:
-        if not self.rows:
-            return np.empty((0, width), dtype=np.intp)
-        rows, keys = np.concatenate(self.rows), np.concatenate(self.keys)
-        # Ties fall back on the index order, so that the answer does not depend on the block size.
-        order = np.lexsort((*rows.T[::-1], keys))[: self.keep]
-        return np.asarray(rows[order])
+        """The rows, best first."""
+        return self._best()[0] if self.rows else np.empty((0, width), dtype=np.intp)
 
 
 def screen(

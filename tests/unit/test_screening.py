@@ -1,0 +1,131 @@
+"""Screening loses no set that passes, counts every set once, and does not depend on its block size."""
+
+import numpy as np
+import pytest
+
+from actuator_sizing.sizing import screening
+from actuator_sizing.sizing.comparison import compare
+from actuator_sizing.sizing.demand import build_demand
+from actuator_sizing.sizing.evaluation import functions_of
+from actuator_sizing.sizing.judging import ORDER, active_checks, is_binding, judge_sets
+from actuator_sizing.sizing.results import FAILS
+from actuator_sizing.sizing.shortlist import evaluate_sets
+from tests.made_cases import DIRECT, DRIVE, GEARHEAD, MOTOR, case, cycle
+
+LAWS = ("trapezoid", "jerk-limited", "3-4-5 polynomial", "cycloidal", "modified sine", "simple harmonic")
+
+
+def scaled(rng, base, spread, **keep):
+    """A part like `base` with its numbers scattered by a factor."""
+    made = dict(base)
+    for key, value in base.items():
+        if isinstance(value, float) and not np.isnan(value) and key not in keep:
+            made[key] = value * float(np.exp(rng.uniform(-spread, spread)))
+    made.update(keep)
+    return made
+
+
+def random_case(seed):
+    rng = np.random.default_rng(seed)
+    steady = {"resistance_reference_degc": 25.0, "magnet_reference_degc": 25.0, "pole_pairs": 4.0,
+              "magnet_coefficient_per_k": -0.0011, "resistance_coefficient_per_k": 1 / 260,
+              "winding_limit_degc": 155.0, "continuous_ambient_degc": 40.0}  # fmt: skip
+    motors = [scaled(rng, MOTOR, 0.9, **steady) for _ in range(7)]
+    motors[0]["pole_pairs"] = np.nan
+    motors[1]["thermal_resistance_housing_k_w"] = np.nan
+    motors[2]["peak_torque_nm"] = 0.7 * motors[2]["peak_current_a"] * motors[2]["torque_constant_nm_per_a"]
+    gearheads = [DIRECT] + [
+        scaled(rng, GEARHEAD, 0.8, efficiency=rng.uniform(0.6, 0.98), efficiency_back=rng.uniform(-0.3, 0.97))
+        for _ in range(5)
+    ]
+    drives = [
+        scaled(rng, DRIVE, 0.8, bus_voltage_min_v=100.0, bus_voltage_max_v=rng.choice([340.0, 400.0]),
+               rms_window_s=rng.choice([np.nan, 0.3, 7.0]), efficiency=0.95)
+        for _ in range(4)
+    ]  # fmt: skip
+    law = LAWS[seed % len(LAWS)]
+    stroke = rng.uniform(0.1, 0.9)
+    values = {
+        "lead": rng.choice([0.005, 0.01, 0.02]), "moving mass": rng.uniform(5.0, 60.0),
+        "inclination": rng.choice([0.0, 0.5, np.pi / 2]), "efficiency": rng.uniform(0.5, 0.95),
+        "guide friction force": rng.uniform(0.0, 80.0), "driven shaft inertia": 1e-4,
+    }  # fmt: skip
+    segments = cycle(
+        {"law": law, "displacement": stroke, "duration_s": stroke / rng.uniform(0.2, 0.7), "payload": 20.0},
+        {"law": "dwell", "duration_s": 0.3, "payload": 20.0},
+        {"law": law, "displacement": -stroke, "duration_s": stroke / rng.uniform(0.2, 0.7)},
+        {"law": "dwell", "duration_s": 0.6, "brake_closed": bool(seed % 2)},
+    )
+    return case("ball screw", values, segments, motors=motors, gearheads=gearheads, drives=drives)
+
+
+def brute_force(made):
+    """Every set evaluated exactly."""
+    sizes = (len(made.motor_parameters), len(made.gearhead_parameters), len(made.drive_parameters))
+    index = np.stack(np.meshgrid(*(np.arange(n) for n in sizes), indexing="ij"), axis=-1).reshape(-1, 3)
+    demand = build_demand(made)
+    checks, limits = active_checks(made.limits)
+    return index, judge_sets(evaluate_sets(made, demand, index), checks, limits)
+
+
+def screened(made, **options):
+    demand = build_demand(made)
+    checks, limits = active_checks(made.limits)
+    binding = tuple(c for c, limit in zip(checks, limits, strict=True) if is_binding(c, limit))
+    allowed = {c.key: made.limits[c.key].allowed_utilisation for c in binding}
+    return screening.screen(
+        made, demand, functions_of(demand), binding, allowed, "price", keep=10_000, losers=10, **options
+    )
+
+
+@pytest.mark.parametrize("seed", range(200))
+def test_no_passing_set_is_lost(seed):
+    made = random_case(seed)
+    index, verdicts = brute_force(made)
+    answer = screened(made)
+    survivors = {tuple(row) for row in answer.survivors.tolist()}
+    passing = {tuple(row) for row in index[verdicts.verdict != ORDER.index(FAILS)].tolist()}
+    assert passing <= survivors
+    lost = {tuple(row) for row in answer.lost.tolist()}
+    assert not lost & survivors
+    assert len(lost) + len(survivors) == answer.screened == len(index)
+    assert sum(answer.rejected_by_check.values()) == len(lost)
+
+
+def test_the_random_cases_have_winners_and_losers():
+    # Without both, the test above would prove nothing.
+    passing = [int((brute_force(random_case(seed))[1].verdict != ORDER.index(FAILS)).sum()) for seed in range(30)]
+    assert sum(n > 0 for n in passing) > 10
+    assert min(passing) < 50
+
+
+def test_blocks_of_any_size_give_the_same_answer(monkeypatch):
+    made = random_case(4)
+    whole = screened(made)
+    monkeypatch.setattr(screening, "_MOTORS_PER_BLOCK", 2)
+    monkeypatch.setattr(screening, "_GEARHEADS_PER_BLOCK", 1)
+    pieces = screened(made)
+    assert whole.rejected_by_check == pieces.rejected_by_check
+    np.testing.assert_array_equal(whole.survivors, pieces.survivors)
+    np.testing.assert_array_equal(whole.nearest_losers, pieces.nearest_losers)
+
+
+def test_bounds_are_below_exact_utilisations():
+    for seed in range(12):
+        made = random_case(seed)
+        index, verdicts = brute_force(made)
+        answer = screened(made)
+        exact = {tuple(row): u for row, u in zip(index.tolist(), verdicts.severity, strict=True)}
+        for row, bound in zip(answer.lost.tolist(), answer.lost_bound, strict=True):
+            # 1e-9: rounding of two orders of summation.
+            assert bound <= exact[tuple(row)] * (1.0 + 1e-9)
+
+
+def test_a_comparison_lists_passing_sets_by_price_and_then_the_nearest_losers():
+    made = random_case(0)
+    comparison = compare(made)
+    verdicts = [one.verdict for one in comparison.sets]
+    assert verdicts == sorted(verdicts, key=lambda v: v == FAILS)
+    prices = [one.price for one in comparison.sets if one.verdict != FAILS]
+    assert prices == sorted(prices)
+    assert comparison.rejections.rejected + comparison.rejections.confirmed_passing <= comparison.rejections.screened
