@@ -130,7 +130,9 @@ def report_empty_cells(parsed: ParsedTable, column: Column, relevant: BoolArray 
         empty,
         got=lambda i: _empty(parsed, key, i),
         allowed=allowed_text(column, parsed.units.get(key)) if column.is_number else column.allowed(),
-        remedy="Fill in the value; ask the supplier where the data sheet does not state it.",
+        remedy="Fill in the value; ask the supplier where the data sheet does not state it."
+        if parsed.table.is_catalog and column.is_number
+        else "Fill in the cell, or clear the whole row.",
     )
 
 

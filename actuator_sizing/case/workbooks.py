@@ -186,6 +186,8 @@ def _read_sheet(
         if number > MAX_ROWS or not (filled or hidden):
             continue
         texts = [_text(cell, twin[i] if i < len(twin) else None) for i, cell in enumerate(row)]
+        if not (hidden or any(texts)):
+            continue
         if builder is None:
             headings = [str(text).strip() for text in texts]
             while headings and not headings[-1]:
