@@ -83,7 +83,11 @@ def count_line(problems: Sequence[Problem]) -> str:
 
 
 def _plural(count: int, noun: str) -> str:
-    return f"{count} {noun}" if count == 1 else f"{count:,} {noun}s".replace(",", " ")
+    return f"{count} {noun}" if count == 1 else f"{_grouped(count)} {noun}s"
+
+
+def _grouped(count: int) -> str:
+    return f"{count:,}".replace(",", " ")
 
 
 # -- the summary of a comparison ---------------------------------------------------------------------
@@ -150,17 +154,20 @@ def rejection_lines(comparison: Comparison) -> list[str]:
 
     counts = comparison.rejections
     titles = dict(CHECK_NAMES)
-    passing = f"{counts.confirmed_passing:,}" if counts.complete else f"at least {counts.confirmed_passing:,}"
-    line = f"{counts.sets_total:,} sets: {passing} pass, {counts.rejected:,} rejected"
+    at_least = "" if counts.complete else "at least "
+    parts = [
+        f"{at_least}{_grouped(counts.confirmed_passing)} pass",
+        f"{_grouped(counts.rejected)} rejected",
+    ]
     if counts.incompatible:
-        line += f", {counts.incompatible:,} incompatible"
+        parts.append(f"{_grouped(counts.incompatible)} incompatible")
     if not counts.complete:
-        line += f"; {counts.survivors - counts.evaluated:,} possible ones not evaluated exactly"
-    lines = [line.replace(",", " ").replace("  ", ", ") + "."]
+        parts.append(f"{_grouped(counts.survivors - counts.evaluated)} possible ones not evaluated exactly")
+    lines = [f"{_plural(counts.sets_total, 'set')}: {', '.join(parts)}."]
     ranked = sorted(counts.by_check.items(), key=lambda item: -item[1])
-    if ranked:
-        reasons = ", ".join(f"{titles.get(check, check)} {count}" for check, count in ranked if count)
-        lines.append(f"Rejected by: {reasons}.")
+    reasons = [f"{titles.get(check, check)} {_grouped(count)}" for check, count in ranked if count]
+    if reasons:
+        lines.append(f"Rejected by: {', '.join(reasons)}.")
     return lines
 
 

@@ -28,6 +28,8 @@ _OTHER_SPREADSHEETS = (".xls", ".xlsm", ".xlsb", ".ods", ".csv", ".tsv")
 _MAX_ROWS, _MAX_COLUMNS, _MAX_CELL, _MAX_SHEET_NAME = 1_048_576, 16_384, 32_767, 31  # of the xlsx format
 _MAX_LIST = 255  # characters of a data-validation list
 _BAD_SHEET_NAME = re.compile(r"[\[\]:*?/\\]")
+_WIDEST = 44  # characters of a column
+_LINE_POINTS = 15  # height of a text line
 _SPARE_ROWS = 500  # rows below the last one that still offer their words
 
 # A number that a spreadsheet shows exactly as it was typed, given a format with as many decimals.
@@ -203,6 +205,9 @@ def _write_sheet(book: Workbook, sheet: Sheet, coordinate: str) -> None:
             )
             _write_cell(book, page, index, column, text, is_text, decimals)
     page.freeze_panes(1, 1)
+    page.set_landscape()
+    page.fit_to_pages(1, 0)
+    page.repeat_rows(0)
     _set_widths(page, sheet.rows)
     for column, declared in enumerate(columns):
         if declared is not None:
@@ -291,9 +296,15 @@ def _dress_axis(page: Worksheet, sheet: Sheet, coordinate: str) -> None:
 
 
 def _set_widths(page: Worksheet, rows: Sequence[Sequence[str]]) -> None:
-    """Wide enough for the first rows; long remarks are cut off by the screen, not by us."""
+    """Wide enough for the first rows; headings wrap, and long remarks are cut off by the screen, not by us."""
+    from textwrap import wrap
+
+    lines = 1
     for column in range(max((len(row) for row in rows[:50]), default=0)):
         longest = max((len(row[column]) for row in rows[1:50] if column < len(row)), default=0)
-        # A heading wraps, so only its longest word counts.
-        words = rows[0][column].split() if column < len(rows[0]) else []
-        page.set_column(column, column, min(max(longest, *map(len, words or [""]), 8) + 2, 44))
+        heading = rows[0][column] if column < len(rows[0]) else ""
+        longest_word = max(map(len, heading.split()), default=0)
+        width = min(max(longest, longest_word, 8) + 2, _WIDEST)
+        page.set_column(column, column, width)
+        lines = max(lines, len(wrap(heading, width - 2)))
+    page.set_row(0, _LINE_POINTS * lines + 1)

@@ -2,12 +2,14 @@
 
 import csv
 import io
+import shutil
 import zipfile
+from pathlib import Path
 
 import pytest
 from openpyxl import load_workbook
 
-from actuator_sizing import check_case, convert_case, start_case
+from actuator_sizing import check_case, convert_case, read_case, start_case
 from actuator_sizing.case.starting import example_sheets
 from actuator_sizing.case.tables import TABLES
 from actuator_sizing.case.writing import Sheet, csv_bytes, shows_exactly, workbook_bytes
@@ -151,6 +153,22 @@ def test_relative_catalog_folder_still_names_the_same_folder(tmp_path):
     assert load_workbook(tmp_path / "cases" / "lift.xlsx")["axis"]["B2"].value == "../parts"
     convert_case(tmp_path / "cases" / "lift.xlsx", tmp_path / "cases" / "back")
     assert read_csv(tmp_path / "cases" / "back" / "axis.csv")[1] == ["catalog folder", "../../parts"]
+
+
+DEMO = Path(__file__).parents[2] / "catalogs_demo"
+
+
+@pytest.mark.parametrize("name", ["tray_lift", "tray_shuttle", "potting_table"])
+def test_demo_cases_mean_the_same_in_every_form(tmp_path, name):
+    """One of them has semicolons, decimal commas and a shared catalog folder."""
+    shutil.copytree(DEMO / "catalog", tmp_path / "catalog")
+    shutil.copytree(DEMO / name, tmp_path / name)
+    convert_case(tmp_path / name, tmp_path / "sub" / "case.xlsx")
+    convert_case(tmp_path / "sub" / "case.xlsx", tmp_path / "back")
+    cases = [read_case(tmp_path / each) for each in (name, "sub/case.xlsx", "back")]
+    assert len({case.fingerprint for case in cases}) == 1
+    entries = [[(e.column, e.value_si, e.origin, e.source) for e in case.entries] for case in cases]
+    assert entries[0] == entries[1] == entries[2]
 
 
 @pytest.mark.parametrize("target", ["taken.xlsx", "other"])
