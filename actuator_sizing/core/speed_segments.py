@@ -8,7 +8,8 @@ from actuator_sizing.core.phases import Phase, constant_jerk_phases
 from actuator_sizing.core.segment_request import ABSURD_ABOVE, ABSURD_BELOW, Request
 from actuator_sizing.errors import MotionError
 
-_ROUNDING = 1e-9  # relative difference below which two statements agree
+_ROUNDING = 1e-9  # a limit exceeded by less than this part is met
+_TYPED = 1e-6  # relative difference below which two statements agree: typed figures are rounded
 
 
 def plan_dwell(request: Request) -> tuple[Phase, ...]:
@@ -183,7 +184,7 @@ def _ramp_duration(displacement: float, start: float, end: float, duration: floa
 
 
 def _agree(one: float, other: float) -> bool:
-    return abs(one - other) <= _ROUNDING * max(abs(one), abs(other))
+    return abs(one - other) <= _TYPED * max(abs(one), abs(other))
 
 
 def _check_speed_limit(request: Request, speed: float) -> None:

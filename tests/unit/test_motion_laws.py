@@ -231,6 +231,8 @@ def test_constant_speed():
     assert by_distance.duration_s == 3.0
     (stated,) = plan("constant speed", -2.0, displacement=-6.0, end_speed=-2.0, duration_s=3.0, speed_max=2.0)
     assert stated == by_distance
+    (rounded,) = plan("constant speed", 0.3, displacement=0.1, duration_s=0.3333333)
+    assert rounded.end() == pytest.approx((0.1, 0.3), rel=1e-14)  # speed and displacement hold exactly
 
 
 def test_speed_ramp():
