@@ -16,10 +16,11 @@ from actuator_sizing.core.moments import demand_functions
 from actuator_sizing.core.parameters import GearheadParameters, MotorParameters, Surroundings, _Columns
 from actuator_sizing.core.quadrature import (
     differentiation_matrix,
-    interpolate,
     largest,
     largest_magnitude,
+    series_value,
     signed_integrals,
+    to_series,
 )
 from actuator_sizing.core.thermal import (
     HeatLoss,
@@ -343,12 +344,8 @@ def _plane(demand: Demand, c: PairCourse, judged: JudgedMotor) -> dict[str, Floa
         ratio = demanded / np.where(capacity > 0.0, capacity, np.inf)
         utilisation, piece, position = largest(ratio)
         at = demand.instant(piece, position)
-        there = np.array(
-            [
-                interpolate(demanded[b, p], np.array([x]))[0]
-                for b, p, x in zip(np.arange(len(at)), piece, position, strict=True)
-            ]
-        )
+        row = np.arange(len(at))
+        there = series_value((demanded[row, piece] @ to_series(demanded.shape[2]).T).T, position)
         hopeless = beyond.reshape(len(at), -1)
         first = hopeless.argmax(axis=1)
         never = hopeless.any(axis=1)
