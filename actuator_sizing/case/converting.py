@@ -14,8 +14,9 @@ from actuator_sizing.case.headings import split_heading
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.raw_tables import RawTable
 from actuator_sizing.case.reading import CSV_ENDINGS
+from actuator_sizing.case.sheets import Sheet, is_workbook
 from actuator_sizing.case.tables import TABLES, axis_quantities
-from actuator_sizing.case.writing import Sheet, is_workbook, write_sheets
+from actuator_sizing.case.writing import write_sheets
 from actuator_sizing.errors import InputError, Problem
 
 _DECIMALS = re.compile(r"0\.(0+)")  # number format with a fixed count of decimals

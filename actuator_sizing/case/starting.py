@@ -6,6 +6,7 @@ from pathlib import Path
 
 from actuator_sizing.case.columns import Column, Table, nearest
 from actuator_sizing.case.documentation import columns_page
+from actuator_sizing.case.sheets import Sheet, is_workbook
 from actuator_sizing.case.tables import (
     ADVICE_CHECKS,
     CHECK_NAMES,
@@ -13,7 +14,7 @@ from actuator_sizing.case.tables import (
     TABLES,
     axis_quantities,
 )
-from actuator_sizing.case.writing import Sheet, is_workbook, write_sheets
+from actuator_sizing.case.writing import write_sheets
 from actuator_sizing.core.mechanisms import MECHANISMS, Mechanism
 from actuator_sizing.errors import InputError, Problem
 

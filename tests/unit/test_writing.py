@@ -10,9 +10,11 @@ import pytest
 from openpyxl import load_workbook
 
 from actuator_sizing import check_case, convert_case, read_case, start_case
+from actuator_sizing.case.sheets import Sheet
 from actuator_sizing.case.starting import example_sheets
 from actuator_sizing.case.tables import TABLES
-from actuator_sizing.case.writing import Sheet, csv_bytes, shows_exactly, workbook_bytes
+from actuator_sizing.case.workbook_writing import shows_exactly, workbook_bytes
+from actuator_sizing.case.writing import csv_bytes
 from actuator_sizing.core.mechanisms import MECHANISMS
 from actuator_sizing.errors import InputError
 
