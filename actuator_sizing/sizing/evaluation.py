@@ -103,6 +103,50 @@ def _column(values: FloatArray) -> FloatArray:
     return values[:, None, None]
 
 
+def air_gap_torque(
+    demand: Demand, motors: MotorParameters, gearheads: GearheadParameters
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Air-gap torque, motor speed and motor shaft torque at the nodes for B pairs.
+
+    Parameters
+    ----------
+    demand : Demand
+        The cycle at the driven shaft. [-]
+    motors, gearheads : MotorParameters, GearheadParameters
+        B rows each: the pairs. [-]
+
+    Returns
+    -------
+    torque_nm, speed_rad_s, shaft_torque_nm : ndarray, shape (B, P, K)
+        Torque at the air gap [N·m], speed [rad/s], torque at the motor shaft [N·m].
+
+    Notes
+    -----
+    ``T = (J_m + J_g) n α + k T_shaft/n + (T_c + T_0) sgn ω + c n ω`` with k by the direction of power of the
+    gearhead; with the holding brake closed there is no torque.
+    """
+    n = _column(gearheads.ratio)
+    factor = stage_factor(
+        demand.flow[None, :], gearheads.efficiency[:, None], gearheads.efficiency_back[:, None]
+    )
+    released = np.where(demand.brake_closed & (demand.flow == STANDSTILL), 0.0, 1.0)
+    s = demand.direction[None, :, None]
+    omega = n * demand.shaft_speed
+    alpha = n * demand.motor_acceleration
+    at_shaft = (
+        _column(gearheads.inertia_kg_m2) * alpha
+        + (factor * released)[..., None] * demand.shaft_torque / n
+        + _column(gearheads.no_load_torque_nm) * s
+    )
+    torque = (
+        at_shaft
+        + _column(motors.rotor_inertia_kg_m2) * alpha
+        + _column(motors.friction_torque_nm) * s
+        + _column(motors.viscous_friction_nm_s) * omega
+    )
+    return torque, omega, at_shaft
+
+
 def course(
     demand: Demand, motors: MotorParameters, gearheads: GearheadParameters, judged: JudgedMotor
 ) -> PairCourse:
@@ -124,26 +168,9 @@ def course(
 
     Notes
     -----
-    ``T = (J_m + J_g) n α + k T_shaft/n + (T_c + T_0) sgn ω + c n ω`` with k by the direction of power of the
-    gearhead, ``i = T/K``, ``u = R i + K ω + L di/dt``; with the holding brake closed there is no torque.
+    ``i = T/K`` (saturation solved), ``u = √((R i + K ω + L di/dt)² + (p ω L i)²)``.
     """
-    n = _column(gearheads.ratio)
-    flow = demand.flow[None, :]
-    factor = stage_factor(flow, gearheads.efficiency[:, None], gearheads.efficiency_back[:, None])
-    released = np.where(demand.brake_closed & (demand.flow == STANDSTILL), 0.0, 1.0)
-    s = demand.direction[None, :, None]
-    omega = n * demand.shaft_speed
-    alpha = n * demand.motor_acceleration
-    through_gear = (factor * released)[..., None] * demand.shaft_torque / n
-    at_shaft = (
-        _column(gearheads.inertia_kg_m2) * alpha + through_gear + _column(gearheads.no_load_torque_nm) * s
-    )
-    torque = (
-        at_shaft
-        + _column(motors.rotor_inertia_kg_m2) * alpha
-        + _column(motors.friction_torque_nm) * s
-        + _column(motors.viscous_friction_nm_s) * omega
-    )
+    torque, omega, at_shaft = air_gap_torque(demand, motors, gearheads)
     current = current_of_torque(
         torque, _column(judged.torque_constant_nm_per_a), _column(judged.saturation_per_a2)
     )
