@@ -202,3 +202,13 @@ def test_the_public_face_offers_what_it_lists():
     assert set(actuator_sizing.__all__) <= set(dir(actuator_sizing))
     with pytest.raises(AttributeError, match="no attribute 'nothing'"):
         actuator_sizing.nothing  # noqa: B018
+
+
+def test_the_limits_table_knows_every_check():
+    """The case layer cannot import the checks, so it keeps their names; the two lists must agree."""
+    from actuator_sizing.case.tables import CHECK_NAMES
+    from actuator_sizing.sizing.checks import CHECKS
+
+    assert [(check.key, check.title.casefold()) for check in CHECKS] == [
+        (key, title.casefold()) for key, title in CHECK_NAMES
+    ]
