@@ -30,7 +30,7 @@ _GROUPED = {
 _AMBIGUOUS = re.compile(r"[-+]?[1-9]\d{0,2}([.,])\d{3}", re.ASCII)
 _COMMA_NUMBER = re.compile(r"[-+]?\d*,\d+([eE][-+]?\d+)?|[-+]?\d+,([eE][-+]?\d+)?", re.ASCII)
 _RANGE = re.compile(r"[-+]?[\d.,]+\s*(\.\.\.?|\u2026|~|to|bis|/|-)\s*[-+]?[\d.,]+\s*\S*", re.ASCII)
-_FRACTION = re.compile(r"\+?(\d{1,12})\s*[/:]\s*(\d{1,12})", re.ASCII)
+_FRACTION = re.compile(r"([-+]?\d{1,12})\s*[/:]\s*(\d{1,12})", re.ASCII)
 _WITH_UNIT = re.compile(r"([-+]?\d[\d.,]*(?:[eE][-+]?\d+)?)\s*([^\W\d_].*|[%°‰\"'].*)", re.DOTALL)
 _EVIDENCE = re.compile(r"[-+]?(?:0|[1-9]\d*|)([.,])(\d+)", re.ASCII)
 

@@ -130,7 +130,7 @@ def _delimiter(text: str, known: frozenset[str]) -> str:
         recognised = sum(split_heading(cell)[0] in known for cell in cells)
         return recognised, bare.count(delimiter)
 
-    return max(_DELIMITERS, key=score) if line else COMMA
+    return max(_DELIMITERS, key=score if line else text.count)
 
 
 def _decimal(data: bytes, delimiter: str) -> str:

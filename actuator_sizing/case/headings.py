@@ -11,6 +11,7 @@ from actuator_sizing.case.raw_tables import RawTable
 from actuator_sizing.errors import WARNING
 from actuator_sizing.units import Unit, UnitError, parse_unit, si_unit
 
+LONGEST_HEADING = 200
 _BRACKETS = re.compile(r"(.*?)\s*\[([^\[\]]*)\]\s*\*?\s*", re.DOTALL)
 _ROUND = re.compile(r"(.*?)\s*\(([^()]*)\)\s*", re.DOTALL)
 
@@ -71,6 +72,11 @@ def understand_headings(
     for index, text in enumerate(raw.headings):
         if not text:
             _report_nameless(raw, index, problems)
+            continue
+        if len(text) > LONGEST_HEADING:
+            problems.report(raw.name, None, f"column {index + 1}", got=shown(text),
+                            allowed=f"a heading of at most {LONGEST_HEADING} characters",
+                            remedy="Shorten the heading.")  # fmt: skip
             continue
         name, unit_text = split_heading(text)
         column = table.find(name)

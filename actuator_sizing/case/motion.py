@@ -117,8 +117,12 @@ def _plan(
         )
     except MotionError as error:
         column = parsed.table.find(error.column)
-        heading = parsed.heading(column.key) if column else error.column
-        problems.report(_TABLE, int(parsed.rows[index]), heading, got=error.got, allowed=error.allowed,
+        heading, got = error.column, error.got
+        if column is not None:
+            heading = parsed.heading(column.key)
+            if column.is_number and parsed.stated(column.key)[index]:
+                got = f"{parsed.shown_cell(column.key, index)} ({error.got} in SI)"
+        problems.report(_TABLE, int(parsed.rows[index]), heading, got=got, allowed=error.allowed,
                         remedy=error.remedy)  # fmt: skip
         return None
 

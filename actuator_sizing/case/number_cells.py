@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from typing import NamedTuple
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -12,7 +14,7 @@ from actuator_sizing.case.model import MISSING, STATED
 from actuator_sizing.case.parsed_tables import BAD, ParsedTable
 from actuator_sizing.case.problem_list import shown
 from actuator_sizing.case.raw_tables import RawTable
-from actuator_sizing.case.text_columns import OddCell, TextColumn
+from actuator_sizing.case.text_columns import LARGEST_MEMORY, TextColumn
 from actuator_sizing.errors import WARNING
 from actuator_sizing.units import Unit
 
@@ -40,6 +42,8 @@ def parse_numbers(parsed: ParsedTable, key: str, heading: Heading, raw: RawTable
     origins = np.full(len(parsed), STATED, dtype=np.int8)
     text = parsed.texts[key]
     grouped: list[int] = []
+    wrong: dict[int, tuple[str, CellError]] = {}
+    memory: dict[str, _Reading] = {}
     for start, cells in text.blocks():
         fast = _fast_numbers(cells, raw.decimal)
         stop = start + len(cells)
@@ -47,21 +51,21 @@ def parse_numbers(parsed: ParsedTable, key: str, heading: Heading, raw: RawTable
             values[start:stop] = fast
             origins[start:stop][np.isnan(fast)] = MISSING
             continue
-        for index, plain in enumerate(cells, start=start):
-            cell = text.odd.get(index, plain)
-            try:
-                values[index], origins[index], lone = _slow_number(cell, column, unit, raw.decimal)
-                if lone:
-                    grouped.append(index)
-            except CellError as error:
-                _report_cell(parsed, heading, index, cell, error)
-                values[index], origins[index] = np.nan, BAD
-    for index, cell in text.odd.items():
-        if origins[index] != BAD:
-            _report_cell(
-                parsed, heading, index, cell, CellError(cell.remedy, allowed=f"a number, not {cell.fault}")
-            )
-            values[index], origins[index] = np.nan, BAD
+        for index, cell in enumerate(cells, start=start):
+            reading = memory.get(cell)
+            if reading is None:
+                reading = memory[cell] = _slow_number(cell, column, unit, raw.decimal)
+            values[index], origins[index] = reading.value, reading.origin
+            if reading.grouped:
+                grouped.append(index)
+            elif reading.error is not None:
+                wrong[index] = cell, reading.error
+        if len(memory) > LARGEST_MEMORY:
+            memory.clear()
+    for index, odd in text.odd.items():
+        wrong[index] = odd.fault, CellError(odd.remedy, allowed=f"a number, not {odd.fault}")
+        values[index], origins[index] = np.nan, BAD
+    _report_wrong(parsed, heading, wrong, text)
     _report_grouped(parsed, heading, grouped, text)
     if unit is not None:
         values = values * unit.factor + unit.offset
@@ -99,27 +103,47 @@ def _fast_numbers(cells: list[str], decimal: str) -> FloatArray | None:
     return numbers
 
 
-def _slow_number(cell: str, column: Column, unit: Unit | None, decimal: str) -> tuple[float, int, bool]:
-    """One cell: number in the unit of the heading, origin code, whether a lone separator was resolved."""
-    if is_missing(cell) or is_missing(tidy(cell)):
-        return np.nan, MISSING, False
-    stripped = tidy(cell)
-    if column.kind == "ratio" and stripped.endswith("%") and unit is not None:
-        value, grouped = parse_number(stripped[:-1], decimal)
-        return value * 0.01 / unit.factor, STATED, grouped
-    value, grouped = parse_number(cell, decimal, fraction=column.fraction)
-    return value, STATED, grouped
+class _Reading(NamedTuple):
+    """What one cell says, in the unit of the heading."""
+
+    value: float = np.nan
+    origin: int = MISSING
+    grouped: bool = False  # a lone separator was resolved by the rest of the table
+    error: CellError | None = None
 
 
-def _report_cell(parsed: ParsedTable, heading: Heading, index: int, cell: str, error: CellError) -> None:
-    got = cell.fault if isinstance(cell, OddCell) else shown(cell)
-    parsed.problems.report(
+def _slow_number(cell: str, column: Column, unit: Unit | None, decimal: str) -> _Reading:
+    tidied = tidy(cell)
+    if is_missing(cell) or is_missing(tidied):
+        return _Reading()
+    try:
+        if column.kind == "ratio" and tidied.endswith("%") and unit is not None:
+            value, grouped = parse_number(tidied[:-1], decimal)
+            return _Reading(value * 0.01 / unit.factor, STATED, grouped)
+        value, grouped = parse_number(cell, decimal, fraction=column.fraction)
+    except CellError as error:
+        return _Reading(origin=BAD, error=error)
+    return _Reading(value, STATED, grouped)
+
+
+def _report_wrong(
+    parsed: ParsedTable, heading: Heading, wrong: dict[int, tuple[str, CellError]], text: TextColumn
+) -> None:
+    where = np.zeros(len(parsed), dtype=bool)
+    where[list(wrong)] = True
+
+    def allowed(index: int) -> str:
+        stated = wrong[index][1].allowed
+        return stated if stated != "a number" else allowed_text(heading.column, heading.unit)
+
+    parsed.problems.report_rows(
         parsed.table.name,
-        int(parsed.rows[index]),
+        parsed.rows,
         heading.text,
-        got=got,
-        allowed=error.allowed if error.allowed != "a number" else allowed_text(heading.column, heading.unit),
-        remedy=error.remedy,
+        where,
+        got=lambda i: wrong[i][0] if i in text.odd else shown(wrong[i][0]),
+        allowed=allowed,
+        remedy=lambda i: wrong[i][1].remedy,
     )
 
 

@@ -116,4 +116,10 @@ class ProblemList:
             for (table, column, severity), count in self._counts.items()
             if count > KEPT_PER_COLUMN
         ]
-        return tuple(sorted((*self._kept, *more), key=lambda problem: _ORDER[problem.severity]))
+        seen = list(dict.fromkeys(table for table, _, _ in self._counts))
+
+        def order(problem: Problem) -> tuple[int, int, bool, int]:
+            counted = problem.row is None and problem in more
+            return _ORDER[problem.severity], seen.index(problem.table), counted, problem.row or 0
+
+        return tuple(sorted((*self._kept, *more), key=order))

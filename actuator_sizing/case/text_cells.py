@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 
 import numpy as np
+from numpy.typing import NDArray
 
 from actuator_sizing.case.cells import is_missing
 from actuator_sizing.case.columns import TEXT, YES_NO, Column, nearest
@@ -12,6 +13,7 @@ from actuator_sizing.case.headings import Heading
 from actuator_sizing.case.model import MISSING, STATED
 from actuator_sizing.case.parsed_tables import BAD, ParsedTable
 from actuator_sizing.case.problem_list import shown
+from actuator_sizing.case.text_columns import LARGEST_MEMORY, OddCell
 from actuator_sizing.case.words import canonical_word, canonical_words
 
 
@@ -27,34 +29,26 @@ def parse_text(parsed: ParsedTable, key: str, heading: Heading) -> None:
             if cell not in understood:
                 understood[cell] = reader(cell)
             value = understood[cell]
-            if value is None:
-                _report_word(parsed, heading, index, cell)
-                values[index], origins[index] = "", BAD
-            else:
-                values[index] = value
-                if not value:
-                    origins[index] = MISSING
-        if len(understood) > 100_000:
+            values[index] = value or ""
+            if not value:
+                origins[index] = MISSING if value == "" else BAD
+        if len(understood) > LARGEST_MEMORY:
             understood.clear()
-    for index, odd in text.odd.items():
-        if column.kind == YES_NO and odd in ("TRUE", "FALSE"):
-            continue
-        if column.kind == TEXT and not column.required and not odd.fault.startswith("the "):
-            continue  # a date or a truth value in a remark is as good as its text
-        if origins[index] != BAD:
-            parsed.problems.report(
-                parsed.table.name,
-                int(parsed.rows[index]),
-                heading.text,
-                got=odd.fault,
-                allowed=column.allowed(),
-                remedy=odd.remedy.replace("number", "text"),
-            )
-            values[index], origins[index] = "", BAD
+    odd = {index: cell for index, cell in text.odd.items() if not _is_harmless(column, cell)}
+    origins[list(odd)] = BAD
+    values[list(odd)] = ""
+    _report_wrong(parsed, heading, origins == BAD, odd)
     parsed.values[key] = values
     parsed.bad[key] = origins == BAD
     origins[origins == BAD] = MISSING
     parsed.origins[key] = origins
+
+
+def _is_harmless(column: Column, cell: OddCell) -> bool:
+    """Whether an odd cell is as good as its text: a truth value for yes or no, a date in a remark."""
+    if column.kind == YES_NO:
+        return cell in ("TRUE", "FALSE")
+    return column.kind == TEXT and not column.required and not cell.fault.startswith("the ")
 
 
 def _text_reader(column: Column) -> Callable[[str], str | None]:
@@ -68,14 +62,23 @@ def _text_reader(column: Column) -> Callable[[str], str | None]:
     return lambda cell: "" if is_missing(cell) else canonical_word(cell, column.words)
 
 
-def _report_word(parsed: ParsedTable, heading: Heading, index: int, cell: str) -> None:
-    words = heading.column.words or ("yes", "no")
-    close = nearest(cell, words)
-    parsed.problems.report(
+def _report_wrong(
+    parsed: ParsedTable, heading: Heading, where: NDArray[np.bool_], odd: Mapping[int, OddCell]
+) -> None:
+    column, text = heading.column, parsed.texts[heading.column.key]
+
+    def remedy(index: int) -> str:
+        if index in odd:
+            return odd[index].remedy.replace("number", "text")
+        close = nearest(text[index], column.words or ("yes", "no"))
+        return f"Did you mean '{close}'?" if close else "Write one of these words."
+
+    parsed.problems.report_rows(
         parsed.table.name,
-        int(parsed.rows[index]),
+        parsed.rows,
         heading.text,
-        got=shown(cell),
-        allowed=heading.column.allowed(),
-        remedy=f"Did you mean '{close}'?" if close else "Write one of these words.",
+        where,
+        got=lambda i: odd[i].fault if i in odd else shown(text[i]),
+        allowed=column.allowed(),
+        remedy=remedy,
     )

@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 BLOCK_ROWS = 4096
+LARGEST_MEMORY = 100_000  # different cells remembered while reading one column
 _SEPARATOR = "\x1f"  # the control character "unit separator"; replaced by a blank where a cell contains it
 
 

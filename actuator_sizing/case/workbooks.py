@@ -67,21 +67,18 @@ def read_workbook(path: Path, wanted: Iterable[str], problems: ProblemList) -> d
 
     tables: dict[str, RawTable] = {}
     try:
-        with warnings.catch_warnings():
+        with warnings.catch_warnings(), path.open("rb") as first, path.open("rb") as second:
             warnings.simplefilter("ignore")  # what openpyxl cannot keep does not matter for reading
-            values = load_workbook(path, read_only=True, data_only=True)
-            formulas = load_workbook(path, read_only=True, data_only=False)
-            try:
-                for name, title in _matching(values.sheetnames, wanted, path.name, problems).items():
-                    sheet = _inspect(path, values[title])
-                    table = _read_sheet(name, path, sheet, values[title], formulas[title], problems)
-                    if table is not None:
-                        tables[name] = table
-            finally:
-                values.close()
-                formulas.close()
+            values = load_workbook(first, read_only=True, data_only=True)
+            formulas = load_workbook(second, read_only=True, data_only=False)
+            for name, title in _matching(values.sheetnames, wanted, path.name, problems).items():
+                sheet = _inspect(path, values[title])
+                table = _read_sheet(name, path, sheet, values[title], formulas[title], problems)
+                if table is not None:
+                    tables[name] = table
     except _FAULTS as error:
-        _report_no_workbook(path, f"{type(error).__name__}: {error}"[:120], problems)
+        cause = error.__cause__ or error.__context__ or error  # openpyxl wraps what it met
+        _report_no_workbook(path, f"a workbook that cannot be read ({type(cause).__name__})", problems)
         return {}
     return tables
 
