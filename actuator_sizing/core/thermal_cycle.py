@@ -19,6 +19,8 @@ from actuator_sizing.core.thermal_kernel import (
 NAN = math.nan
 #: Nearest to −1 that an eigenvalue of the cycle map minus one is taken, so that its logarithm exists.
 _FORGOTTEN = -1.0 + 2.0**-52
+#: Beyond this a cycle map is rounding, and an equilibrium of no use. [°C]
+_HOTTEST_DEGC = 1e9
 
 
 class CycleMap(NamedTuple):
@@ -30,6 +32,7 @@ class CycleMap(NamedTuple):
     n12: Number
     n21: Number
     n22: Number
+    hottest_winding: Number
     hottest_magnet: Number
     gain: Number  # time integral of q dr/dϑ_w
     gain_housing: Number  # time integral of q dr/dϑ_h
@@ -72,8 +75,7 @@ def cycle_map(k: Coefficients, steps: Steps, ops: Operations, x1: Number, x2: Nu
     """
     d1 = d2 = gain = gain_housing = x1 * 0.0
     n: tuple[Number, ...] = (d1, d1, d1, d1)
-    hottest = x2
-    on_winding = k.magnet_on_winding
+    hottest1, hottest2 = x1, x2
     for h, q, s1, s2, _ in zip(*steps, strict=True):
         at = linearise(k, ops, x1 + d1, x2 + d2, q, s1, s2)
         slow, fast = ops.expm1(at.slow * h), ops.expm1(at.fast * h)
@@ -82,9 +84,10 @@ def cycle_map(k: Coefficients, steps: Steps, ops: Operations, x1: Number, x2: Nu
         n = _compose(n, at, slow, fast)
         gain = gain + h * q * at.ratio_winding
         gain_housing = gain_housing + h * q * at.ratio_housing
-        hottest = ops.maximum(hottest, on_winding * (x1 + d1) + (1.0 - on_winding) * (x2 + d2))
+        hottest1, hottest2 = ops.maximum(hottest1, x1 + d1), ops.maximum(hottest2, x2 + d2)
+    magnet = k.magnet_on_winding * hottest1 + (1.0 - k.magnet_on_winding) * hottest2
     n11, n12, n21, n22 = n
-    return CycleMap(d1, d2, n11, n12, n21, n22, hottest, gain, gain_housing)
+    return CycleMap(d1, d2, n11, n12, n21, n22, hottest1, magnet, gain, gain_housing)
 
 
 def growth(at: CycleMap, ops: Operations) -> tuple[Number, Number]:
@@ -210,6 +213,12 @@ def cycles_until(
     return ops.select(first > target, n, x1 * 0.0)
 
 
-def demagnetised(k: Coefficients, at: CycleMap) -> Any:
-    """Whether the torque constant is as good as gone within the cycle."""
-    return 1.0 + k.beta * (at.hottest_magnet - k.magnet_reference) < 2e-3
+def runs_away(k: Coefficients, at: CycleMap, ops: Operations) -> Any:
+    """Whether a cycle from below the periodic state shows that there is none.
+
+    Either the cycle map grows, or the torque constant is as good as gone within the cycle, or the winding is
+    hotter than any number that means something.
+    """
+    slow = growth(at, ops)[0]
+    magnet = 1.0 + k.beta * (at.hottest_magnet - k.magnet_reference)
+    return (slow >= 0.0) | (slow != slow) | (magnet < 2e-3) | (at.hottest_winding > _HOTTEST_DEGC)

@@ -13,9 +13,9 @@ from actuator_sizing.core.thermal_cycle import (
     CycleMap,
     cycle_map,
     cycles_until,
-    demagnetised,
     growth,
     newton_step,
+    runs_away,
     survey,
 )
 from actuator_sizing.core.thermal_kernel import (
@@ -64,7 +64,7 @@ class PeriodicState:
     known : ndarray of bool
         Whether the data suffice.
     has_equilibrium : ndarray of bool
-        Whether a periodic state exists; False: thermal runaway, or not known.
+        Whether a periodic state exists (below 1e9 °C); False: thermal runaway, or not known.
     winding_max_degc, winding_min_degc, winding_mean_degc : ndarray
         Winding over the cycle. [°C]
     winding_max_time_s : ndarray
@@ -205,7 +205,7 @@ def solve_one(k: Coefficients, steps: Steps) -> tuple[CycleMap, tuple[float, flo
     x1 = x2 = k.ambient
     for iteration in range(_MOST_ITERATIONS):
         at = cycle_map(k, steps, FLOATS, x1, x2)
-        if not growth(at, FLOATS)[0] < 0.0 or demagnetised(k, at):
+        if runs_away(k, at, FLOATS):
             break
         step1, step2 = newton_step(at)
         x1, x2 = x1 + step1, x2 + step2
@@ -236,7 +236,7 @@ def _solve_many(answer: _Answer, rows: NDArray[np.intp], k: Coefficients, steps:
         at = cycle_map(k_left, steps_left, ARRAYS, x1, x2)
         step1, step2 = newton_step(at)
         x1, x2 = x1 + step1, x2 + step2
-        lost = ~(growth(at, ARRAYS)[0] < 0.0) | demagnetised(k_left, at) | ~np.isfinite(x1 + x2)
+        lost = runs_away(k_left, at, ARRAYS) | ~np.isfinite(x1 + x2)
         moved = np.abs(step1) + np.abs(step2)
         settled = ~lost & _is_settled(iteration, k_left.beta == 0.0, moved, x1 - k_left.ambient)
         done = open_ & (lost | settled | (iteration == _MOST_ITERATIONS - 1))

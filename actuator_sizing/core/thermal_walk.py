@@ -17,8 +17,8 @@ from actuator_sizing.core.thermal_kernel import FLOATS, Coefficients, Steps, lin
 _LARGEST_JUMP_K = 2.0
 _MOST_JUMPS = 64
 #: Share of the cycles so far by which the search for the limit goes on, and how often at most.
-_WIDENING = 0.05
-_MOST_LOOKS = 600
+_WIDENING = 1.0
+_MOST_LOOKS = 100
 
 
 class Walker:

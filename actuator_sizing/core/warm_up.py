@@ -34,7 +34,7 @@ from actuator_sizing.core.thermal_periodic import solve_one
 from actuator_sizing.core.thermal_walk import Walker, time_to_limit
 
 #: Points of a warm-up, of which each costs one cycle; and steps within a cycle drawn one by one.
-_POINTS = 150
+_POINTS = 90
 _MOST_DRAWN_STEPS = 800
 #: Share of the rise still missing where the drawn warm-up ends.
 _END_MISSING = 0.01
@@ -221,9 +221,9 @@ def warm_up(
 
     Notes
     -----
-    Few cycles are drawn step by step. Of many, about 150 are followed exactly and those between are jumped
+    Few cycles are drawn step by step. Of many, about 90 are followed exactly and those between are jumped
     by the affine continuation of the cycle before (exact without magnet term, else in jumps of at most
-    2 K), so that the work does not grow with the number of cycles: at most some 600 cycles are followed,
+    2 K), so that the work does not grow with the number of cycles: at most some thousand cycles are followed,
     whatever the input. The crossing of the limit is the exact root of the locally linear equations within
     the first cycle that reaches it.
     """
@@ -252,7 +252,7 @@ def warm_up(
             means = end.winding_sum / walker.span, end.housing_sum / walker.span
             rows.append(((cycle + 0.5) * walker.span, *means, end.winding_min, end.winding_max))
     else:
-        per_cycle = max(_MOST_DRAWN_STEPS // (last + 1), 2)
+        per_cycle = _MOST_DRAWN_STEPS // (last + 1)
         for cycle in range(last + 1):
             walker.go_to(cycle)
             inside = _inside(k, steps, walker.x1, walker.x2, per_cycle)

@@ -20,6 +20,13 @@ pieces = st.lists(
 )
 
 
+def is_well_conditioned(state):
+    """Whether the periodic state exists well away from runaway and from temperatures of no meaning."""
+    return (
+        state.has_equilibrium[0] and state.spectral_radius[0] < 1.0 - 1e-6 and state.winding_max_degc[0] < 1e5
+    )
+
+
 def loss_of(rows, alpha=1 / 255, beta=0.0, scale=1.0):
     duration, copper, speed = (np.array(column) for column in zip(*rows, strict=True))
     one = np.ones(1)
@@ -68,7 +75,7 @@ def test_the_maximum_does_not_ask_where_the_cycle_starts(network, rows, shift):
     turned = rows[shift % len(rows) :] + rows[: shift % len(rows)]
     one, other = (periodic_state(network, loss_of(r), AMBIENT) for r in (rows, turned))
     assert one.has_equilibrium[0] == other.has_equilibrium[0] or abs(one.spectral_radius[0] - 1.0) < 1e-6
-    if one.has_equilibrium[0] and one.spectral_radius[0] < 1.0 - 1e-6:
+    if is_well_conditioned(one):
         rise = one.winding_max_degc[0] - AMBIENT
         assert math.isclose(one.winding_max_degc[0], other.winding_max_degc[0], abs_tol=1e-6 * (1.0 + rise))
 
@@ -78,7 +85,7 @@ def test_the_maximum_does_not_ask_where_the_cycle_starts(network, rows, shift):
 def test_a_piece_cut_in_two_changes_nothing(network, rows):
     cut = [(0.5 * h, q, p) for h, q, p in rows for _ in range(2)]
     one, other = (periodic_state(network, loss_of(r), AMBIENT) for r in (rows, cut))
-    if one.has_equilibrium[0] and one.spectral_radius[0] < 1.0 - 1e-6:
+    if is_well_conditioned(one):
         rise = one.winding_max_degc[0] - AMBIENT
         assert math.isclose(one.winding_max_degc[0], other.winding_max_degc[0], abs_tol=1e-6 * (1.0 + rise))
 
@@ -92,4 +99,4 @@ def test_time_to_limit_exists_exactly_when_the_periodic_state_passes_it(network,
     assert course.is_runaway == (not state.has_equilibrium[0])
     near = abs(state.winding_max_degc[0] - limit) < 1e-6 * limit
     assert near or math.isfinite(course.time_to_limit_s) == reached
-    assert len(course.time_s) <= 1200
+    assert len(course.time_s) <= 1000

@@ -238,6 +238,35 @@ def test_fold_of_the_magnet_curve_is_found_as_by_the_steady_balance():
         assert periodic_state(network(), loss, AMBIENT).has_equilibrium[0] == stands
 
 
+@pytest.mark.parametrize("count", [1, 50])
+@pytest.mark.parametrize("shift", [0, 1, 2])
+def test_growth_within_a_piece_is_runaway_although_the_dwell_forgets_it(shift, count):
+    # 40 s of growth at e^36 before 78 s of decay: the cycle map shrinks, but over 1e15 °C
+    duration, copper = np.roll([1.0, 78.0, 40.0], shift), np.roll([91.0, 0.0, 178.0], shift)
+    net = network(4.15625, NAN, 0.5, NAN, count=count)
+    state = periodic_state(net, losses(duration, np.tile(copper, (count, 1)), alpha=ALPHA), AMBIENT)
+    assert state.known.all()
+    assert not state.has_equilibrium.any()
+
+
+@pytest.mark.parametrize("duration", [1e-5, 1e-3, 10.0, 1e3])
+@pytest.mark.parametrize("count", [1, 50])
+def test_cycles_of_any_length_settle(duration, count):
+    net = network(C_2=5e6, count=count)  # housing 1e7 s: up to 1e12 cycles long
+    loss = losses(
+        np.array([0.3, 0.2, 0.5]) * duration,
+        np.tile([40.0, 10.0, 0.0], (count, 1)),
+        alpha=ALPHA,
+        beta=-0.0011,
+    )
+    state, steady = periodic_state(net, loss, AMBIENT), steady_state(net, loss, AMBIENT)
+    assert state.has_equilibrium.all()
+    heat_out = (state.housing_mean_degc - AMBIENT) / 2.0
+    np.testing.assert_allclose(state.mean_copper_loss_w, heat_out, rtol=1e-9)
+    if duration < 0.1:  # without ripple it is the steady state of the mean loss
+        np.testing.assert_allclose(state.winding_max_degc, steady.winding_degc, rtol=1e-6)
+
+
 @pytest.mark.parametrize("watt", [1e6, 1e150, 1e300])
 @pytest.mark.parametrize("count", [1, 50])
 def test_absurd_losses_run_away_quietly(watt, count):
