@@ -64,13 +64,13 @@ def model_factor(current_basis: ArrayLike) -> FloatArray:
 
 
 def torque_constant_from_back_emf(
-    back_emf_v_s_rad: ArrayLike, volt_basis: str, current_basis: ArrayLike
+    back_emf_v_s_per_rad: ArrayLike, volt_basis: str, current_basis: ArrayLike
 ) -> FloatArray:
     r"""Torque constant in the current basis of the sheet from a back-EMF constant.
 
     Parameters
     ----------
-    back_emf_v_s_rad : array_like, shape (n,)
+    back_emf_v_s_per_rad : array_like, shape (n,)
         Back-EMF constant in the stated volts. [V·s/rad]
     volt_basis : str
         Which volt: a key of `PEAK_LINE_VOLTS`.
@@ -95,7 +95,7 @@ def torque_constant_from_back_emf(
     >>> torque_constant_from_back_emf([1.0], "rms line-to-line", [1])
     array([1.7321])
     """
-    k = np.asarray(back_emf_v_s_rad, dtype=float) * PEAK_LINE_VOLTS[volt_basis]
+    k = np.asarray(back_emf_v_s_per_rad, dtype=float) * PEAK_LINE_VOLTS[volt_basis]
     basis = np.asarray(current_basis)
     is_dc_volt = volt_basis == "DC"
     per_dc = k if is_dc_volt else k * SIX_STEP_MEAN_OF_SINE
@@ -240,6 +240,5 @@ def motor_constant(torque_constant_nm_per_a: ArrayLike, resistance_ohm: ArrayLik
     >>> motor_constant([0.5, 1.0], [3.0, 12.0])
     array([0.2887, 0.2887])
     """
-    return np.asarray(torque_constant_nm_per_a, dtype=float) / np.sqrt(
-        np.asarray(resistance_ohm, dtype=float)
-    )
+    K, R = np.asarray(torque_constant_nm_per_a, dtype=float), np.asarray(resistance_ohm, dtype=float)
+    return np.asarray(K / np.sqrt(R), dtype=float)
