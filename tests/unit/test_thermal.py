@@ -263,8 +263,8 @@ def test_cycles_of_any_length_settle(duration, count):
     assert state.has_equilibrium.all()
     heat_out = (state.housing_mean_degc - AMBIENT) / 2.0
     np.testing.assert_allclose(state.mean_copper_loss_w, heat_out, rtol=1e-9)
-    if duration < 0.1:  # without ripple it is the steady state of the mean loss
-        np.testing.assert_allclose(state.winding_max_degc, steady.winding_degc, rtol=1e-6)
+    if duration < 0.1:  # almost without ripple its mean is the steady state of the mean loss
+        np.testing.assert_allclose(state.winding_mean_degc, steady.winding_degc, rtol=1e-8)
 
 
 @pytest.mark.parametrize("watt", [1e6, 1e150, 1e300])
