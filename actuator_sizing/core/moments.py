@@ -110,17 +110,11 @@ def gearhead_rows(gearheads: GearheadParameters) -> FloatArray:
     return rows
 
 
-def mean_square_tables(
-    products: FloatArray, rows: FloatArray, J: FloatArray, T_c: FloatArray, b: FloatArray
-) -> tuple[FloatArray, FloatArray]:
-    """Factors U (M×10) and V (10×N) whose product is the table of mean-square torque.
+def motor_columns(J: FloatArray, T_c: FloatArray, b: FloatArray) -> FloatArray:
+    """What multiplies the rows of `gearhead_rows`: 1, inertia, Coulomb friction, viscous friction.
 
     Parameters
     ----------
-    products : ndarray, shape (6, 6)
-        Mean products of φ. [-]
-    rows : ndarray, shape (N, 4, 6)
-        From `gearhead_rows`. [-]
     J : ndarray, shape (M,)
         Rotor inertia. [kg·m²]
     T_c : ndarray, shape (M,)
@@ -130,15 +124,37 @@ def mean_square_tables(
 
     Returns
     -------
-    U, V : ndarray, shape (M, 10) and (10, N)
-        ``(U V)[m, n]`` is the exact mean square of the air-gap torque. [N²·m²]
+    ndarray, shape (M, 4)
+        Columns in SI. [-]
+    """
+    return np.stack([np.ones_like(J), J, T_c, b], axis=1)
+
+
+_UPPER = tuple((i, j) for i in range(4) for j in range(i, 4))
+
+
+def motor_products(columns: FloatArray) -> FloatArray:
+    """Products of the motor columns, shape (M, 4) to (M, 10), to be multiplied with `gearhead_products`. [-]"""
+    return np.stack([columns[:, i] * columns[:, j] for i, j in _UPPER], axis=1)
+
+
+def gearhead_products(products: FloatArray, rows: FloatArray) -> FloatArray:
+    """Mean products of torque parts for each gearhead.
+
+    Parameters
+    ----------
+    products : ndarray, shape (6, 6)
+        Mean products of φ. [-]
+    rows : ndarray, shape (N, 4, 6)
+        From `gearhead_rows`. [-]
+
+    Returns
+    -------
+    ndarray, shape (10, N)
+        ``motor_products @ gearhead_products`` is the exact mean square of the air-gap torque, (M, N). [N²·m²]
     """
     gram = rows @ products @ rows.transpose(0, 2, 1)  # (N, 4, 4)
-    motor = np.stack([np.ones_like(J), J, T_c, b], axis=1)  # (M, 4)
-    upper = [(i, j) for i in range(4) for j in range(i, 4)]
-    U = np.stack([motor[:, i] * motor[:, j] for i, j in upper], axis=1)
-    V = np.stack([gram[:, i, j] * (1.0 if i == j else 2.0) for i, j in upper])
-    return U, V
+    return np.stack([gram[:, i, j] * (1.0 if i == j else 2.0) for i, j in _UPPER])
 
 
 @dataclass(frozen=True)

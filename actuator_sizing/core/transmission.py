@@ -13,6 +13,8 @@ FloatArray = NDArray[np.float64]
 
 STANDSTILL, MOTORING, BACK_DRIVING = 0, 1, 2
 
+GEAR_EXPONENT = 3.0  # equivalent torque of gears and ball bearings; common practice, no source
+
 
 def stage_factor(flow: NDArray[np.int8], efficiency: FloatArray, efficiency_back: FloatArray) -> FloatArray:
     """Torque at the input of a stage times its ratio, per torque at its output.

@@ -18,7 +18,14 @@ from actuator_sizing.case.model import Case, Segment
 from actuator_sizing.core.mechanisms import Mechanism
 from actuator_sizing.core.motion_laws import Phase
 from actuator_sizing.core.quadrature import NODES, integrate, largest_magnitude, lobatto, roots
-from actuator_sizing.core.transmission import BACK_DRIVING, MOTORING, STANDSTILL, stage_factor
+from actuator_sizing.core.transmission import (
+    BACK_DRIVING,
+    GEAR_EXPONENT,
+    MOTORING,
+    STANDSTILL,
+    equivalent_torque,
+    stage_factor,
+)
 
 FloatArray = NDArray[np.float64]
 
@@ -70,6 +77,16 @@ class Demand:
     def peak(self, values: FloatArray) -> float:
         """Largest magnitude over the cycle of node values, shape (P, K). [-]"""
         return float(largest_magnitude(values[None])[0][0])
+
+    @cached_property
+    def shaft_torque_peak(self) -> float:
+        """Largest torque at the driven shaft, magnitude. [N·m]"""
+        return self.peak(self.shaft_torque)
+
+    @cached_property
+    def shaft_torque_equivalent(self) -> float:
+        """Equivalent torque at the driven shaft for the wear of a gearhead. [N·m]"""
+        return equivalent_torque(self.duration_s, self.shaft_speed, self.shaft_torque, GEAR_EXPONENT)[0]
 
     @cached_property
     def shaft_speed_peak(self) -> float:

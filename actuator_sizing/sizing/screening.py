@@ -15,12 +15,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
-from actuator_sizing.core.machine import amplitude_per_unit_current, judge, torque_of_current
+from actuator_sizing.core.machine import amplitude_per_unit_current
 from actuator_sizing.core.moments import (
     SupportPoints,
-    gearhead_rows,
     mean_products,
-    mean_square_tables,
     support_points,
 )
 from actuator_sizing.core.parameters import (
@@ -30,16 +28,15 @@ from actuator_sizing.core.parameters import (
     DriveParameters,
     MotorParameters,
 )
-from actuator_sizing.sizing.block import Block
+from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
 from actuator_sizing.sizing.demand import Demand
-from actuator_sizing.sizing.thermal_data import thermal_network
 
 if TYPE_CHECKING:
     from actuator_sizing.sizing.checks.base import Check
 
 FloatArray = NDArray[np.float64]
 
-_MOTORS_PER_BLOCK, _GEARHEADS_PER_BLOCK = 2048, 16  # (M, N) arrays of 256 kB stay in the L2 cache
+_MOTORS_PER_BLOCK, _GEARHEADS_PER_BLOCK = 1024, 24  # (M, N) arrays of about 200 kB stay in the L2 cache
 LISTED_SETS = 200_000  # up to so many sets, each loser is listed with what governs it
 _ROUNDING = 1e-9  # bounds are rejected only beyond this part above the allowed value
 
@@ -163,35 +160,43 @@ def screen(
     """
     motor_index, gearhead_index = fits_mechanism(case)
     drives = case.drive_parameters
-    products = mean_products(demand.duration_s, functions)
     context = _Context(
         case=case,
         demand=demand,
-        products=products,
-        support=support_points(functions, demand.flow),
-        voltage_support=_voltage_points(functions, demand),
         checks=tuple(check for check in checks if check.bound is not None),
         allowed=allowed,
         drive_side=_DriveSide(case, allowed),
         key=key,
     )
+    gearhead_side = GearheadSide.of(
+        case.gearhead_parameters.take(gearhead_index),
+        mean_products(demand.duration_s, functions),
+        support_points(functions, demand.flow),
+        _voltage_points(functions, demand),
+    )
+    gearhead_parts = [
+        (
+            gearhead_index[start : start + _GEARHEADS_PER_BLOCK],
+            gearhead_side.part(slice(start, start + _GEARHEADS_PER_BLOCK)),
+        )
+        for start in range(0, len(gearhead_index), _GEARHEADS_PER_BLOCK)
+    ]
     total = len(case.motor_parameters) * len(case.gearhead_parameters) * len(drives)
     losses = _Losses(
         (*(check.key for check in context.checks), *context.drive_side.names), listed=total <= LISTED_SETS
     )
     pool, nearest = _Pool(keep), _Pool(losers)
     survivors = screened = 0
-    blocks = [
-        (motor_index[a : a + _MOTORS_PER_BLOCK], gearhead_index[b : b + _GEARHEADS_PER_BLOCK])
-        for a in range(0, len(motor_index), _MOTORS_PER_BLOCK)
-        for b in range(0, len(gearhead_index), _GEARHEADS_PER_BLOCK)
-    ]
-    for done, (m, g) in enumerate(blocks):
-        part = _screen_block(context, m, g, pool, nearest, losses)
-        survivors += part[0]
-        screened += part[1]
+    for start in range(0, len(motor_index), _MOTORS_PER_BLOCK):
+        m = motor_index[start : start + _MOTORS_PER_BLOCK]
+        motor_side = MotorSide.of(case.motor_parameters.take(m), case.surroundings)
+        served = compatible(motor_side.motors, drives)
+        for g, part in gearhead_parts:
+            block = Block(demand, case.surroundings, context.recommended_inertia_ratio, motor_side, part)
+            survivors += _screen_block(context, block, m, g, served, pool, nearest, losses)
+        screened += int(served.sum()) * len(gearhead_index)
         if progress is not None:
-            progress((done + 1) / len(blocks))
+            progress((start + len(m)) / len(motor_index))
     counts: dict[str, int] = {}
     for name, number in zip(losses.names, losses.counts, strict=True):
         counts[name] = counts.get(name, 0) + int(number)
@@ -244,13 +249,14 @@ class _Losses:
 class _Context:
     case: Case
     demand: Demand
-    products: FloatArray
-    support: SupportPoints
-    voltage_support: SupportPoints
     checks: tuple[Check, ...]
     allowed: Mapping[str, float]
     drive_side: _DriveSide
     key: str
+
+    @property
+    def recommended_inertia_ratio(self) -> float:
+        return float(self.case.options["recommended inertia ratio"])  # type: ignore[arg-type]
 
 
 class _DriveSide:
@@ -289,7 +295,7 @@ def _voltage_points(functions: FloatArray, demand: Demand) -> SupportPoints:
     speed, torque, along = (x / (np.max(np.abs(x)) or 1.0) for x in (speed, torque, along))
     chosen = {
         int(moving[(speed + w * torque + u * along).argmax()])
-        for w, u in ((1e-6, 0.0), (0.0, 1e-6), (0.3, 0.0), (0.0, 0.3), (0.3, 0.3))
+        for w, u in ((1e-6, 0.0), (0.3, 0.0), (0.0, 0.3))
     }
     index = np.array(sorted(chosen))
     return SupportPoints(flat[:, index].T, direction[index])
@@ -297,52 +303,19 @@ def _voltage_points(functions: FloatArray, demand: Demand) -> SupportPoints:
 
 def _screen_block(
     context: _Context,
+    block: Block,
     motor_index: NDArray[np.intp],
     gearhead_index: NDArray[np.intp],
+    served: NDArray[np.bool_],
     pool: _Pool,
     nearest: _Pool,
     losses: _Losses,
-) -> tuple[int, int]:
-    case = context.case
-    motors, gearheads = case.motor_parameters.take(motor_index), case.gearhead_parameters.take(gearhead_index)
-    judged = judge(motors, case.surroundings)
-    by_current = torque_of_current(
-        motors.peak_current_a, judged.torque_constant_nm_per_a, judged.saturation_per_a2
-    )
-    U, V = mean_square_tables(
-        context.products,
-        gearhead_rows(gearheads),
-        motors.rotor_inertia_kg_m2,
-        motors.friction_torque_nm,
-        motors.viscous_friction_nm_s,
-    )
-    block = Block(
-        demand=context.demand,
-        surroundings=case.surroundings,
-        recommended_inertia_ratio=float(case.options["recommended inertia ratio"]),  # type: ignore[arg-type]
-        motors=motors,
-        judged=judged,
-        network=thermal_network(motors, case.surroundings),
-        torque_limit=np.fmin(by_current, motors.peak_torque_nm)[:, None],
-        gearheads=gearheads,
-        mean_square=np.maximum(U @ V, 0.0),
-        support=context.support,
-        voltage_support=context.voltage_support,
-    )
-    shape = (len(motors), len(gearheads))
-    worst = np.zeros(shape)
-    which = np.zeros(shape, dtype=np.int8)
-    for number, check in enumerate(context.checks):
-        assert check.bound is not None
-        utilisation = check.bound(block) / context.allowed[check.key]
-        if check.group == "gearhead":
-            utilisation = np.where(gearheads.is_direct[None, :], 0.0, utilisation)
-        higher = utilisation > worst  # NaN, not known, is never higher
-        worst = np.where(higher, utilisation, worst)
-        which = np.where(higher, np.int8(number), which)
+) -> int:
+    """Screen one block; returns how many sets survive."""
+    worst, which = _worst(context, block)
+    shape = worst.shape
     fails = worst > 1.0 + _ROUNDING
 
-    served = compatible(motors, case.drive_parameters)
     drives_per_motor = served.sum(axis=1)
     losses.add(which[fails], np.broadcast_to(drives_per_motor[:, None], shape)[fails])
     if losses.listed:
@@ -352,13 +325,38 @@ def _screen_block(
             which[row, column].astype(np.intp),
             worst[row, column],
         )
-    rows, columns = np.nonzero(fails & (drives_per_motor > 0)[:, None])
+    rows, columns = np.nonzero(fails & (worst <= nearest.bar) & (drives_per_motor > 0)[:, None])
     if len(rows):
         nearest.add(np.column_stack([motor_index[rows], gearhead_index[columns]]), worst[rows, columns])
-    survivors = _screen_drives(
+    return _screen_drives(
         context, block, ~fails, served, motor_index, gearhead_index, worst, pool, nearest, losses
     )
-    return survivors, int(drives_per_motor.sum()) * len(gearheads)
+
+
+def _worst(context: _Context, block: Block) -> tuple[FloatArray, NDArray[np.int8]]:
+    """Largest utilisation over allowed of the motor and gearhead checks, and which check it is, (M, N)."""
+    gearhead_only = np.zeros((1, len(block.gearheads)))
+    gearhead_which = np.zeros(gearhead_only.shape, dtype=np.int8)
+    others: list[tuple[int, FloatArray]] = []
+    for number, check in enumerate(context.checks):
+        assert check.bound is not None
+        utilisation = check.bound(block) / context.allowed[check.key]
+        if check.group == "gearhead":
+            utilisation = np.where(block.gearheads.is_direct[None, :], 0.0, utilisation)
+        if utilisation.shape[0] == 1:
+            higher = utilisation > gearhead_only
+            gearhead_only = np.where(higher, utilisation, gearhead_only)
+            gearhead_which = np.where(higher, np.int8(number), gearhead_which)
+        else:
+            others.append((number, utilisation))
+    shape = block.mean_square.shape
+    worst = np.broadcast_to(gearhead_only, shape).copy()
+    which = np.broadcast_to(gearhead_which, shape).copy()
+    for number, utilisation in others:
+        higher = utilisation > worst  # NaN, not known, is never higher
+        np.copyto(worst, utilisation, where=higher)
+        np.copyto(which, np.int8(number), where=higher)
+    return worst, which
 
 
 def _screen_drives(

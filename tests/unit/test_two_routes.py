@@ -4,7 +4,13 @@ import numpy as np
 import pytest
 
 from actuator_sizing.core.machine import judge
-from actuator_sizing.core.moments import gearhead_rows, mean_products, mean_square_tables
+from actuator_sizing.core.moments import (
+    gearhead_products,
+    gearhead_rows,
+    mean_products,
+    motor_columns,
+    motor_products,
+)
 from actuator_sizing.sizing.demand import build_demand
 from actuator_sizing.sizing.evaluation import evaluate_pairs, functions_of
 from tests.independent import PointModel
@@ -81,9 +87,8 @@ def test_moments_give_the_same_rms_as_the_nodes(law):
     demand = build_demand(made)
     products = mean_products(demand.duration_s, functions_of(demand))
     m, g = made.motor_parameters, made.gearhead_parameters
-    U, V = mean_square_tables(
-        products, gearhead_rows(g), m.rotor_inertia_kg_m2, m.friction_torque_nm, m.viscous_friction_nm_s
-    )
+    U = motor_products(motor_columns(m.rotor_inertia_kg_m2, m.friction_torque_nm, m.viscous_friction_nm_s))
+    V = gearhead_products(products, gearhead_rows(g))
     rows, columns = np.divmod(np.arange(4), 2)
     exact = evaluate_pairs(demand, m.take(rows), g.take(columns), made.surroundings)
     # Same quadrature, other order of summation: rounding of sums of some hundred terms.

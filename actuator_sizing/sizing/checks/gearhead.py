@@ -5,19 +5,10 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.core.transmission import equivalent_torque
 from actuator_sizing.sizing.block import Block
 from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits, has_gearhead
-from actuator_sizing.sizing.demand import Demand
 
 FloatArray = NDArray[np.float64]
-
-GEAR_EXPONENT = 3.0  # equivalent torque of gears and ball bearings; common practice
-
-
-def shaft_equivalent_torque(demand: Demand) -> float:
-    """Equivalent torque at the driven shaft over the cycle. [N·m]"""
-    return equivalent_torque(demand.duration_s, demand.shaft_speed, demand.shaft_torque, GEAR_EXPONENT)[0]
 
 
 def _same(value: float, sets: Sets) -> FloatArray:
@@ -36,7 +27,7 @@ def _working(symbol: str, unit: str, measure):  # type: ignore[no-untyped-def]
 
 
 def _equivalent_measure(sets: Sets) -> Measure:
-    return Measure(_same(shaft_equivalent_torque(sets.demand), sets), sets.gearheads.continuous_torque_nm)
+    return Measure(_same(sets.demand.shaft_torque_equivalent, sets), sets.gearheads.continuous_torque_nm)
 
 
 GEARHEAD_EQUIVALENT = Check(
@@ -48,7 +39,7 @@ GEARHEAD_EQUIVALENT = Check(
     source="Equivalent load weighted by revolutions (form of ISO 3408-5), exponent 3: common practice",
     needs=(Need("gearheads", "continuous_torque_nm", "continuous torque"),),
     measure=_equivalent_measure,
-    bound=lambda block: shaft_equivalent_torque(block.demand) / block.gearheads.continuous_torque_nm[None, :],
+    bound=lambda block: block.demand.shaft_torque_equivalent / block.gearheads.continuous_torque_nm[None, :],
     working=_working("T_eq / T_continuous", "N·m", _equivalent_measure),
     applies=has_gearhead,
 )
@@ -58,7 +49,7 @@ def _peak_measure(sets: Sets) -> Measure:
     torque = sets.demand.shaft_torque
     piece, node = np.unravel_index(np.abs(torque).argmax(), torque.shape)
     return Measure(
-        _same(sets.demand.peak(torque), sets),
+        _same(sets.demand.shaft_torque_peak, sets),
         sets.gearheads.peak_torque_nm,
         _same(float(sets.demand.time_s[piece, node]), sets),
     )
@@ -73,9 +64,7 @@ GEARHEAD_PEAK = Check(
     source="Repeated peak torque of the data sheet",
     needs=(Need("gearheads", "peak_torque_nm", "peak torque"),),
     measure=_peak_measure,
-    bound=lambda block: (
-        block.demand.peak(block.demand.shaft_torque) / block.gearheads.peak_torque_nm[None, :]
-    ),
+    bound=lambda block: block.demand.shaft_torque_peak / block.gearheads.peak_torque_nm[None, :],
     working=_working("T_max / T_peak", "N·m", _peak_measure),
     applies=has_gearhead,
 )
