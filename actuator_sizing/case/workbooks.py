@@ -1,47 +1,34 @@
 """Workbooks: every sheet as a raw table, with the cells that hold no plain number or text marked.
 
-A workbook is a zip of XML files from someone else, so its declared size is checked before anything is
-unpacked, and entity tricks in the XML are refused by defusedxml (which openpyxl uses when it is installed).
+A workbook is a zip of XML files from someone else: its declared size is checked before anything is unpacked
+(a zip cannot give more than it declares), and `workbook_xml` refuses document type definitions.
 """
 
 from __future__ import annotations
 
-import datetime
 import re
 import struct
-import warnings
 import zipfile
 import zlib
 from collections.abc import Iterable, Iterator
-from dataclasses import dataclass
 from pathlib import Path
-from typing import IO, Any
-from xml.etree.ElementTree import ParseError
+from typing import IO
 
 from actuator_sizing.case.cells import COMMA, POINT, evidence
+from actuator_sizing.case.columns import fold
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.raw_tables import MAX_COLUMNS, MAX_ROWS, RawTable, TableBuilder
 from actuator_sizing.case.text_columns import OddCell
+from actuator_sizing.case.workbook_cells import CellReader
+from actuator_sizing.case.workbook_xml import WorkbookError, open_parts, sheet_rows
 
 MAX_UNPACKED_BYTES = 1_000_000_000
 MAX_PACKING_RATIO = 200  # honest sheets pack 10 to 30 times
 SMALL_BYTES = 20_000_000  # below this the ratio does not matter
 MAX_PARTS = 5000
 _OLE_SIGNATURE = b"\xd0\xcf\x11\xe0"
-_MERGED = re.compile(rb"<(?:\w+:)?mergeCell\s[^>]*?ref=\"([A-Z]+\d+:[A-Z]+\d+)\"")
-_FORMULA = re.compile(rb"<(?:\w+:)?f[\s>/]")
-_FAULTS = (
-    zipfile.BadZipFile, zipfile.LargeZipFile, zlib.error, struct.error, ParseError, KeyError, ValueError,
-    TypeError, AttributeError, IndexError, OSError, EOFError, RuntimeError, NotImplementedError,
-    OverflowError,
-)  # fmt: skip
-
-
-@dataclass(frozen=True)
-class _Sheet:
-    name: str
-    merged: tuple[str, ...]
-    has_formulas: bool
+_MERGED = re.compile(rb"<(?:\w+:)?mergeCell\s[^>]*?ref=\"([A-Z]{1,3}\d{1,7}:[A-Z]{1,3}\d{1,7})\"")
+_ZIP_FAULTS = (zipfile.BadZipFile, zlib.error, struct.error, EOFError, RuntimeError, NotImplementedError)
 
 
 def read_workbook(path: Path, wanted: Iterable[str], problems: ProblemList) -> dict[str, RawTable]:
@@ -63,22 +50,21 @@ def read_workbook(path: Path, wanted: Iterable[str], problems: ProblemList) -> d
     """
     if not _is_safe(path, problems):
         return {}
-    from openpyxl import load_workbook
-
     tables: dict[str, RawTable] = {}
     try:
-        with warnings.catch_warnings(), path.open("rb") as first, path.open("rb") as second:
-            warnings.simplefilter("ignore")  # what openpyxl cannot keep does not matter for reading
-            values = load_workbook(first, read_only=True, data_only=True)
-            formulas = load_workbook(second, read_only=True, data_only=False)
-            for name, title in _matching(values.sheetnames, wanted, path.name, problems).items():
-                sheet = _inspect(path, values[title])
-                table = _read_sheet(name, path, sheet, values[title], formulas[title], problems)
+        with zipfile.ZipFile(path) as archive:
+            parts = open_parts(archive)
+            reader = CellReader(parts)
+            for name, title in _matching(parts.sheets, wanted, path.name, problems).items():
+                place = f"{path.name}, sheet {title}"
+                table = _read_sheet(archive, parts.sheets[title], reader, name, place, problems)
                 if table is not None:
                     tables[name] = table
-    except _FAULTS as error:
-        cause = error.__cause__ or error.__context__ or error  # openpyxl wraps what it met
-        _report_no_workbook(path, f"a workbook that cannot be read ({type(cause).__name__})", problems)
+    except WorkbookError as fault:
+        _report_no_workbook(path, str(fault), problems)
+        return {}
+    except (*_ZIP_FAULTS, OSError, KeyError, ValueError, IndexError, OverflowError) as error:
+        _report_no_workbook(path, f"a workbook that cannot be read ({type(error).__name__})", problems)
         return {}
     return tables
 
@@ -128,8 +114,6 @@ def _matching(
     titles: Iterable[str], wanted: Iterable[str], file: str, problems: ProblemList
 ) -> dict[str, str]:
     """Table name -> sheet title."""
-    from actuator_sizing.case.columns import fold
-
     names = {fold(name): name for name in wanted}
     found: dict[str, str] = {}
     for title in titles:
@@ -144,16 +128,13 @@ def _matching(
     return found
 
 
-def _inspect(path: Path, worksheet: Any) -> _Sheet:
-    """Find merged ranges and formulas by scanning the sheet's XML once, without keeping it."""
-    part = str(getattr(worksheet, "_worksheet_path", "")).lstrip("/")
+def _merged_ranges(archive: zipfile.ZipFile, part: str) -> tuple[str, ...]:
+    """Merged ranges of a sheet; they stand behind the cells, so the sheet is scanned for them first."""
     merged: list[str] = []
-    has_formulas = False
-    with zipfile.ZipFile(path) as archive, archive.open(part) as stream:
+    with archive.open(part) as stream:
         for chunk in _overlapping(stream):
-            has_formulas = has_formulas or _FORMULA.search(chunk) is not None
             merged += [match.decode("ascii") for match in _MERGED.findall(chunk)]
-    return _Sheet(worksheet.title, tuple(dict.fromkeys(merged)), has_formulas)
+    return tuple(dict.fromkeys(merged))
 
 
 def _overlapping(stream: IO[bytes], size: int = 1 << 20, overlap: int = 200) -> Iterator[bytes]:
@@ -165,121 +146,64 @@ def _overlapping(stream: IO[bytes], size: int = 1 << 20, overlap: int = 200) -> 
 
 
 def _read_sheet(
-    name: str, path: Path, sheet: _Sheet, values: Any, formulas: Any, problems: ProblemList
+    archive: zipfile.ZipFile, part: str, reader: CellReader, name: str, place: str, problems: ProblemList
 ) -> RawTable | None:
-    place = f"{path.name}, sheet {sheet.name}"
-    values.reset_dimensions()
-    formulas.reset_dimensions()
-    rows: Iterable[tuple[Any, ...]] = values.iter_rows()
-    twins: Iterator[tuple[Any, ...]] | None = iter(formulas.iter_rows()) if sheet.has_formulas else None
-    inner = _covered_cells(sheet.merged)
-    headings: list[str] = []
+    merged = _merged_ranges(archive, part)
+    covered = _covered_cells(merged)
     builder: TableBuilder | None = None
-    marks = {COMMA: False, POINT: False}
-    for number, row in enumerate(rows, start=1):
-        twin = next(twins, ()) if twins is not None else ()
-        hidden = {column: area for column, area in inner.get(number, {}).items() if column < len(headings)}
-        filled = any(cell.value is not None for cell in row) or any(cell.value is not None for cell in twin)
-        if number > MAX_ROWS or not (filled or hidden):
-            continue
-        texts = [_text(cell, twin[i] if i < len(twin) else None) for i, cell in enumerate(row)]
-        if not (hidden or any(texts)):
+    headings: list[str] = []
+    marks: set[str] = set()
+    for number, cells in sheet_rows(archive, part):
+        texts = {cell.column: text for cell in cells if (text := reader.text(cell, number))}
+        if not texts or number > MAX_ROWS:
             continue
         if builder is None:
-            headings = [str(text).strip() for text in texts]
-            while headings and not headings[-1]:
-                headings.pop()
+            headings = _headings(texts)
             if len(headings) > MAX_COLUMNS:
                 problems.report(name, number, got=f"{len(headings)} columns",
                                 allowed=f"at most {MAX_COLUMNS} columns",
                                 remedy="Remove columns that are not needed.")  # fmt: skip
                 return None
-            if headings:
-                _report_merged(name, sheet, number, problems)
-                builder = TableBuilder(headings)
+            _report_merged(name, merged, number, problems)
+            builder = TableBuilder(headings)
             continue
-        _add_row(builder, name, number, len(headings), texts, hidden, problems)
-        for text in texts:
-            if "," in text or "." in text:
-                mark = evidence(text)
-                if mark and text.__class__ is not _NumberText:
-                    marks[mark] = True
+        _add_row(builder, name, number, texts, covered.get(number, {}), problems)
+        marks.update(evidence(text) for text in reader.typed if "," in text or "." in text)
+        reader.typed.clear()
     if builder is None:
         problems.report(name, None, got="an empty sheet", allowed="a heading row",
                         remedy="Write the column names in the first row.")  # fmt: skip
         return None
-    decimal = (COMMA if marks[COMMA] else POINT) if marks[COMMA] != marks[POINT] else ""
-    return builder.finish(name, place, decimal)
+    proven = marks & {COMMA, POINT}
+    return builder.finish(name, place, proven.pop() if len(proven) == 1 else "")
 
 
-class _NumberText(str):
-    """Text of a number cell: always with a decimal point, so it proves nothing about typed text."""
-
-    __slots__ = ()
+def _headings(texts: dict[int, str]) -> list[str]:
+    return [str(texts.get(column, "")).strip() for column in range(max(texts) + 1)]
 
 
 def _add_row(
     builder: TableBuilder,
     name: str,
     number: int,
-    width: int,
-    texts: list[str],
-    merged: dict[int, str],
+    texts: dict[int, str],
+    covered: dict[int, str],
     problems: ProblemList,
 ) -> None:
-    extra = [text for text in texts[width:] if text]
+    width = len(builder.headings)
+    extra = sum(column >= width for column in texts)
     if extra:
-        problems.report(name, number, got=f"{len(extra)} cells beyond the last heading",
+        problems.report(name, number, got=f"{extra} cells beyond the last heading",
                         allowed=f"{width} cells, one for each heading",
                         remedy="Remove them or give them a heading.")  # fmt: skip
-    cells = (texts + [""] * width)[:width]
-    odd = [(i, cell) for i, cell in enumerate(cells) if isinstance(cell, OddCell)]
-    for column, area in merged.items():
-        if column < width and not cells[column]:
-            odd.append((column, OddCell("", f"part of the merged cells {area}",
-                                        "Unmerge the cells and fill in each row.")))  # fmt: skip
-    builder.add(number, cells)
-    for column, cell in odd:
-        builder.mark_odd(column, cell)
-
-
-def _text(cell: Any, twin: Any) -> str:
-    """Text of a cell; `twin` is the same cell with its formula instead of its value."""
-    value = cell.value
-    where = getattr(cell, "coordinate", "")
-    if value is None:
-        if twin is not None and twin.value is not None and twin.data_type == "f":
-            return OddCell(
-                f"formula in {where}",
-                f"the formula in {where} without a stored value",
-                "Open the workbook in a spreadsheet program, let it calculate and save it; or type the number.",
-            )
-        return ""
-    if cell.data_type == "e":
-        return OddCell(str(value), f"the spreadsheet error {value} in {where}",
-                       "Mend the formula or type the number.")  # fmt: skip
-    if isinstance(value, bool):
-        return OddCell("TRUE" if value else "FALSE", f"a truth value in {where}", "Type a number.")
-    if isinstance(value, int | float):
-        return _number_text(value, str(getattr(cell, "number_format", "") or ""))
-    if isinstance(value, datetime.datetime | datetime.date | datetime.time | datetime.timedelta):
-        return OddCell(_date_text(value), f"a date or time in {where}",
-                       "Format the cell as a number and type the number again.")  # fmt: skip
-    return str(value).strip()
-
-
-def _number_text(value: float, number_format: str) -> str:
-    if isinstance(value, float) and value.is_integer() and abs(value) < 1e15:
-        value = int(value)
-    if "%" in number_format and '"' not in number_format:
-        return _NumberText(f"{value * 100:.15g}%")
-    return _NumberText(repr(value))
-
-
-def _date_text(value: Any) -> str:
-    if isinstance(value, datetime.datetime) and value.time() == datetime.time():
-        return value.date().isoformat()
-    return str(value)
+    builder.add(number, [texts.get(column, "") for column in range(width)])
+    for column, text in texts.items():
+        if isinstance(text, OddCell) and column < width:
+            builder.mark_odd(column, text)
+    for column, area in covered.items():
+        if column < width and column not in texts:
+            builder.mark_odd(column, OddCell("", f"part of the merged cells {area}",
+                                             "Unmerge the cells and fill in each row."))  # fmt: skip
 
 
 def _covered_cells(merged: Iterable[str]) -> dict[int, dict[int, str]]:
@@ -298,10 +222,10 @@ def _covered_cells(merged: Iterable[str]) -> dict[int, dict[int, str]]:
     return covered
 
 
-def _report_merged(name: str, sheet: _Sheet, heading_row: int, problems: ProblemList) -> None:
+def _report_merged(name: str, merged: Iterable[str], heading_row: int, problems: ProblemList) -> None:
     from openpyxl.utils import range_boundaries
 
-    for area in sheet.merged:
+    for area in merged:
         _, top, _, bottom = range_boundaries(area)
         if top <= heading_row <= bottom:
             problems.report(name, heading_row, got=f"the merged cells {area} in the heading row",
