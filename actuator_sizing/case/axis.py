@@ -210,7 +210,7 @@ def _number(row: _Row, column: Column, decimal: str, problems: ProblemList) -> f
         if column.kind == "ratio" and unit.factor == 1.0 and column.maximum <= 5.0 < value:
             remedy = "If it is meant in percent, write % in the unit column."
         problems.report(_TABLE, row.number, column.name, got=row.as_entered,
-                        allowed=allowed_text(column, unit), remedy=remedy)  # fmt: skip
+                        allowed=allowed_text(column, unit, value), remedy=remedy)  # fmt: skip
         return None
     return value
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.case.columns import Column, Table
+from actuator_sizing.case.columns import Column
 from actuator_sizing.case.model import MISSING, STATED, Catalog
 from actuator_sizing.case.parsed_tables import ParsedTable
 from actuator_sizing.case.parsing import report_empty_cells, report_missing_column
@@ -90,13 +90,22 @@ def assume_default(parsed: ParsedTable, key: str) -> None:
 def note_rows(
     parsed: ParsedTable, key: str, where: BoolArray, text: str, *, severity: str = NOTE, remedy: str = ""
 ) -> None:
-    """Report once for a whole column how many rows were understood in a way worth knowing."""
+    """Report once for a whole column, at its first row, how cells were understood.
+
+    The message is the cell followed by `text`.
+    """
     count = int(np.count_nonzero(where))
     if count:
         first = int(np.flatnonzero(where)[0])
-        rows = "1 row" if count == 1 else f"{count} rows"
-        parsed.problems.report(parsed.table.name, int(parsed.rows[first]), parsed.heading(key),
-                               got=f"{text} ({rows})", remedy=remedy, severity=severity)  # fmt: skip
+        more = f" (so in {count} rows)" if count > 1 else ""
+        parsed.problems.report(
+            parsed.table.name,
+            int(parsed.rows[first]),
+            parsed.heading(key),
+            got=f"{parsed.shown_cell(key, first)}, {text}{more}",
+            remedy=remedy,
+            severity=severity,
+        )
 
 
 def warn_rows(parsed: ParsedTable, key: str, where: BoolArray, text: str, remedy: str) -> None:
@@ -130,8 +139,3 @@ def to_catalog(parsed: ParsedTable) -> Catalog:
         rules=dict(parsed.rules),
         entered_units={key: unit.spelling for key, unit in parsed.units.items()},
     )
-
-
-def empty_table(table: Table, problems: object) -> ParsedTable:
-    """Parsed table without rows."""
-    return ParsedTable(table, np.zeros(0, dtype=np.int64), problems)  # type: ignore[arg-type]

@@ -16,6 +16,8 @@ if TYPE_CHECKING:
 TEXT, WORDS, YES_NO = "text", "words", "yes/no"
 UNITLESS_KINDS = ("ratio", "count", "price")  # a heading of these kinds may leave the unit out
 
+_SLIP_BOUND = 1.0e3  # SI; upper bounds from here on are far beyond anything built
+
 _DASHES = dict.fromkeys(map(ord, "\u2010\u2011\u2012\u2013\u2014\u2015\u2212_-/"), " ")
 
 
@@ -157,13 +159,17 @@ class Column:
         return allowed_text(self, Unit(kind, 1.0, 0.0, "" if label == "-" else label))
 
 
-def allowed_text(column: Column, unit: Unit | None) -> str:
-    """Say what a number cell may hold, bounds in the unit of the heading; just a number without a unit."""
+def allowed_text(column: Column, unit: Unit | None, value_si: float = 0.0) -> str:
+    """Say what a number cell may hold, bounds in the unit of the heading; just a number without a unit.
+
+    A very large upper bound only catches slips of the unit; it is named where `value_si` is above it.
+    """
     if unit is None:
         return "a number"
 
     def bound(value: float) -> str:
-        if not math.isfinite(value):
+        plain = abs(value) < _SLIP_BOUND or column.kind == "count" or value_si > value
+        if not math.isfinite(value) or not plain:
             return ""
         return f"{(value - unit.offset) / unit.factor:.6g} {unit.spelling}".rstrip()
 

@@ -129,7 +129,7 @@ def _from_volts(
             remedy="Correct the basis of the constant or the current basis.",
         )
     guessed = needed & assumed & (commutation == SINUSOIDAL)
-    warn_rows(parsed, key, guessed, "the sheet does not say which volt; rms line-to-line is assumed",
+    warn_rows(parsed, key, guessed, "with no word on which volt; rms line-to-line is assumed",
               f"State it in a column '{parsed.table.column(basis_key).name}'; if it is the peak value, the "
               "torque constant is wrong by √2.")  # fmt: skip
 

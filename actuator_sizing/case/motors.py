@@ -153,7 +153,7 @@ def _check_basis(parsed: ParsedTable, commutation: IntArray, basis: IntArray) ->
         "amperes are of a sine.",
     )
     odd = known & (basis == BASIS_DC) & (commutation == SINUSOIDAL)
-    note_rows(parsed, "current_basis", odd, "DC for a sinusoidal motor, taken as its six-step equivalent")
+    note_rows(parsed, "current_basis", odd, "for a sinusoidal motor taken as its six-step equivalent")
 
 
 def _check_rows(parsed: ParsedTable, linear: BoolArray) -> None:

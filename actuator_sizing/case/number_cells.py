@@ -192,7 +192,7 @@ def _check_bounds(parsed: ParsedTable, key: str, heading: Heading, unit: Unit) -
         heading.text,
         wrong,
         got=lambda i: parsed.shown_cell(key, i),
-        allowed=allowed_text(column, unit),
+        allowed=lambda i: allowed_text(column, unit, float(values[i])),
         remedy=remedy,
     )
     values[wrong] = np.nan
