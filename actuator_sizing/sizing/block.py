@@ -1,4 +1,4 @@
-"""M motors against N gearheads: the quantities that the lower bounds of the checks are made of."""
+"""N gearheads against M motors: the quantities that the lower bounds of the checks are made of."""
 
 from __future__ import annotations
 
@@ -23,7 +23,7 @@ from actuator_sizing.sizing.thermal_data import thermal_network
 
 FloatArray = NDArray[np.float64]
 
-_NO_VOLTAGE = 1e-200
+_NOTHING = 1e-200  # in place of zero and less in a denominator
 _TEMPERATURE_SLACK_K = 0.5  # the averaged balance may lie this much above the exact mean
 
 
@@ -34,9 +34,9 @@ class MotorSide:
     motors: MotorParameters
     judged: JudgedMotor
     network: ThermalNetwork
-    torque_limit: FloatArray  # (M, 1) at the motor's peak current
-    columns: FloatArray  # (M, 4)
-    products: FloatArray  # (M, 10)
+    torque_limit: FloatArray  # (M,) at the motor's peak current
+    columns: FloatArray  # (4, M)
+    products: FloatArray  # (10, M)
 
     @classmethod
     def of(cls, motors: MotorParameters, surroundings: Surroundings) -> MotorSide:
@@ -52,9 +52,9 @@ class MotorSide:
             motors,
             judged,
             thermal_network(motors, surroundings),
-            np.fmin(by_current, motors.peak_torque_nm)[:, None],
-            columns,
-            motor_products(columns),
+            np.fmin(by_current, motors.peak_torque_nm),
+            np.ascontiguousarray(columns.T),
+            np.ascontiguousarray(motor_products(columns).T),
         )
 
 
@@ -63,10 +63,10 @@ class GearheadSide:
     """N gearheads with the demand brought to their input."""
 
     gearheads: GearheadParameters
-    products: FloatArray  # (10, N)
-    torque: FloatArray  # (V, 4, N) parts of the torque at each support point
-    torque_for_voltage: FloatArray  # (W, 4, N) the same where voltage can govern
-    speed_for_voltage: FloatArray  # (W, 1, N) motor speed there, in the sense of the torque
+    products: FloatArray  # (N, 10)
+    torque: FloatArray  # (V, N, 4) parts of the torque at each support point
+    torque_for_voltage: FloatArray  # (W, N, 4) the same where voltage can govern
+    speed_for_voltage: FloatArray  # (W, N, 1) motor speed there, in the sense of the torque
 
     @classmethod
     def of(
@@ -75,25 +75,28 @@ class GearheadSide:
         """Prepare N gearheads for mean products and support points of a demand."""
         rows = gearhead_rows(gearheads)
         at_peak, at_voltage = (
-            (rows @ points.functions.T * points.sign).transpose(2, 1, 0) for points in (peak, voltage)
+            (rows @ points.functions.T * points.sign).transpose(2, 0, 1) for points in (peak, voltage)
         )
         speed = (voltage.functions[:, 5] * voltage.sign)[:, None] * gearheads.ratio
-        return cls(gearheads, gearhead_products(products, rows), at_peak, at_voltage, speed[:, None, :])
+        return cls(gearheads, gearhead_products(products, rows).T, at_peak, at_voltage, speed[:, :, None])
 
     def part(self, which: slice) -> GearheadSide:
         """Some of the gearheads."""
         return GearheadSide(
             self.gearheads.take(which),
-            self.products[:, which],
-            np.ascontiguousarray(self.torque[:, :, which]),
-            np.ascontiguousarray(self.torque_for_voltage[:, :, which]),
-            self.speed_for_voltage[:, :, which],
+            self.products[which],
+            self.torque[:, which],
+            self.torque_for_voltage[:, which],
+            self.speed_for_voltage[:, which],
         )
 
 
 @dataclass(frozen=True)
 class Block:
-    """M motors against N gearheads; what the bounds of the checks are made of, each (M, N) or narrower."""
+    """N gearheads against M motors; what the bounds of the checks are made of, each (N, M) or narrower.
+
+    Motors lie along the last axis, since there are more of them: long rows are what numpy is fast on.
+    """
 
     demand: Demand
     surroundings: Surroundings
@@ -118,56 +121,56 @@ class Block:
 
     @property
     def torque_limit(self) -> FloatArray:
-        """Torque at the motor's peak current, shape (M, 1). [N·m]"""
+        """Torque at the motor's peak current, shape (M,). [N·m]"""
         return self.motor_side.torque_limit
 
     @cached_property
     def mean_square(self) -> FloatArray:
-        """Mean square of the air-gap torque, exact, shape (M, N). [N²·m²]"""
-        product = self.motor_side.products @ self.gearhead_side.products
+        """Mean square of the air-gap torque, exact, shape (N, M). [N²·m²]"""
+        product = self.gearhead_side.products @ self.motor_side.products
         return np.maximum(product, 0.0, out=product)
 
     @cached_property
     def speed_peak(self) -> FloatArray:
-        """Largest motor speed, shape (1, N). [rad/s]"""
-        return np.asarray(self.gearheads.ratio * self.demand.shaft_speed_peak)[None, :]
+        """Largest motor speed, shape (N, 1). [rad/s]"""
+        return np.asarray(self.gearheads.ratio * self.demand.shaft_speed_peak)[:, None]
 
     @cached_property
     def speed_rms(self) -> FloatArray:
-        """RMS motor speed, shape (1, N). [rad/s]"""
-        return np.asarray(self.gearheads.ratio * self.demand.shaft_speed_rms)[None, :]
+        """RMS motor speed, shape (N, 1). [rad/s]"""
+        return np.asarray(self.gearheads.ratio * self.demand.shaft_speed_rms)[:, None]
 
     @cached_property
     def current_rms(self) -> FloatArray:
         """RMS current without saturation: exact for a linear machine, else a lower bound. [A]"""
-        return np.asarray(np.sqrt(self.mean_square) / self.judged.torque_constant_nm_per_a[:, None])
+        return np.asarray(np.sqrt(self.mean_square) / self.judged.torque_constant_nm_per_a)
 
     @cached_property
     def torque_peak(self) -> FloatArray:
         """Lower bound of the largest air-gap torque, magnitude. [N·m]"""
         peak = np.zeros_like(self.mean_square)
         for part in self.gearhead_side.torque:
-            np.maximum(peak, self.motor_side.columns @ part, out=peak)
+            np.maximum(peak, part @ self.motor_side.columns, out=peak)
         return peak
 
     @cached_property
     def current_peak(self) -> FloatArray:
         """Lower bound of the largest current, magnitude. [A]"""
-        return np.asarray(self.torque_peak / self.judged.torque_constant_nm_per_a[:, None])
+        return np.asarray(self.torque_peak / self.judged.torque_constant_nm_per_a)
 
     @cached_property
     def _voltage(self) -> tuple[FloatArray, FloatArray]:
-        K = self.judged.torque_constant_nm_per_a[:, None]
-        per_torque = self.judged.resistance_ohm[:, None] / K
-        available = self.judged.voltage_available_v[:, None]
+        K = self.judged.torque_constant_nm_per_a
+        per_torque = self.judged.resistance_ohm / K
+        available = self.judged.voltage_available_v
         voltage = np.zeros_like(self.mean_square)
         plane = np.zeros_like(self.mean_square)
         side = self.gearhead_side
         for part, omega in zip(side.torque_for_voltage, side.speed_for_voltage, strict=True):
-            drop, emf = per_torque * (self.motor_side.columns @ part), K * omega
+            drop, emf = per_torque * (part @ self.motor_side.columns), K * omega
             np.maximum(voltage, drop + emf, out=voltage)
             # Above the no-load speed there is no motoring torque at all: the ratio becomes immense.
-            left = np.maximum(np.subtract(available, emf, out=emf), _NO_VOLTAGE)
+            left = np.maximum(np.subtract(available, emf, out=emf), _NOTHING)
             np.maximum(plane, np.divide(drop, left, out=drop), out=plane)
         return voltage, plane
 
@@ -194,12 +197,13 @@ class Block:
             1.0 + m.resistance_coefficient_per_k * (ambient - m.resistance_reference_degc)
         )
         n = self.gearheads.ratio
-        speed_loss = (
-            m.friction_torque_nm[:, None] * (n * self.demand.shaft_speed_mean)
-            + m.viscous_friction_nm_s[:, None] * (n * self.demand.shaft_speed_rms) ** 2
+        by_speed = np.stack(
+            [n * self.demand.shaft_speed_mean, (n * self.demand.shaft_speed_rms) ** 2], axis=1
         )
+        rise = by_speed @ (path * np.stack([m.friction_torque_nm, m.viscous_friction_nm_s]))
+        rise += (total * start / cold_K**2) * self.mean_square
         gain = total * m.resistance_ohm * m.resistance_coefficient_per_k / cold_K**2
-        rise = (total * start / cold_K**2)[:, None] * self.mean_square + path[:, None] * speed_loss
-        left = 1.0 - gain[:, None] * self.mean_square
-        with np.errstate(divide="ignore", invalid="ignore"):
-            return np.where(left > 0.0, rise / left, np.inf) - _TEMPERATURE_SLACK_K
+        left = np.subtract(1.0, gain * self.mean_square)
+        # A feedback of one or more is runaway: the rise becomes immense.
+        np.divide(rise, np.maximum(left, _NOTHING, out=left), out=rise)
+        return np.subtract(rise, _TEMPERATURE_SLACK_K, out=rise)

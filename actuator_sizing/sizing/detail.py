@@ -204,7 +204,7 @@ def _envelope(model: SetModel) -> pd.DataFrame:
 
     for name, voltage in volts.items():
         frame[f"torque_peak_{name}_bus_nm"] = torque(peak, voltage)
-    continuous = rerated_continuous_current(motor, s, speed[None, :])[0]
+    continuous = rerated_continuous_current(motor, s, speed)
     frame["torque_continuous_nm"] = np.where(np.isnan(continuous), np.nan, torque(continuous, volts["min"]))
     return pd.DataFrame(frame)
 

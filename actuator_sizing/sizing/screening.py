@@ -36,7 +36,7 @@ if TYPE_CHECKING:
 
 FloatArray = NDArray[np.float64]
 
-_MOTORS_PER_BLOCK, _GEARHEADS_PER_BLOCK = 1024, 24  # (M, N) arrays of about 200 kB stay in the L2 cache
+_MOTORS_PER_BLOCK, _GEARHEADS_PER_BLOCK = 2048, 16  # arrays of 256 kB stay in the L2 cache
 LISTED_SETS = 200_000  # up to so many sets, each loser is listed with what governs it
 _ROUNDING = 1e-9  # bounds are rejected only beyond this part above the allowed value
 
@@ -159,6 +159,8 @@ def screen(
         Counts, survivors and nearest losers. [-]
     """
     motor_index, gearhead_index = fits_mechanism(case)
+    # Motors that the same drives serve lie together: their sets are then counted in one stroke.
+    motor_index = motor_index[np.argsort(case.motor_parameters.commutation[motor_index], kind="stable")]
     drives = case.drive_parameters
     context = _Context(
         case=case,
@@ -231,6 +233,14 @@ class _Losses:
         """Count `weight` sets under each check."""
         self.counts += np.bincount(check, weights=weight, minlength=len(self.names)).astype(np.int64)
 
+    def count(self, check: int, governed: NDArray[np.bool_], drives_per_motor: NDArray[np.intp]) -> None:
+        """Count under one check the sets of the pairs that it governs, (N, M)."""
+        drives = drives_per_motor[0]
+        if np.all(drives_per_motor == drives):
+            self.counts[check] += int(np.count_nonzero(governed)) * int(drives)
+        else:
+            self.counts[check] += int(np.count_nonzero(governed, axis=0) @ drives_per_motor)
+
     def keep(self, rows: NDArray[np.intp], check: NDArray[np.intp], bound: FloatArray) -> None:
         """List the sets themselves."""
         if self.listed:
@@ -293,10 +303,7 @@ def _voltage_points(functions: FloatArray, demand: Demand) -> SupportPoints:
     torque = direction[moving] * (flat[1] + flat[2])[moving]
     along = direction[moving] * flat[0, moving]
     speed, torque, along = (x / (np.max(np.abs(x)) or 1.0) for x in (speed, torque, along))
-    chosen = {
-        int(moving[(speed + w * torque + u * along).argmax()])
-        for w, u in ((1e-6, 0.0), (0.3, 0.0), (0.0, 0.3))
-    }
+    chosen = {int(moving[(speed + w * torque + u * along).argmax()]) for w, u in ((1e-6, 0.0), (0.3, 0.3))}
     index = np.array(sorted(chosen))
     return SupportPoints(flat[:, index].T, direction[index])
 
@@ -312,51 +319,62 @@ def _screen_block(
     losses: _Losses,
 ) -> int:
     """Screen one block; returns how many sets survive."""
-    worst, which = _worst(context, block)
-    shape = worst.shape
+    gearhead_worst, gearhead_check, others = _utilisations(context, block)
+    worst = np.broadcast_to(gearhead_worst, block.mean_square.shape).copy()
+    for _, utilisation in others:
+        np.fmax(worst, utilisation, out=worst)  # NaN, not known, is never the worst
     fails = worst > 1.0 + _ROUNDING
 
     drives_per_motor = served.sum(axis=1)
-    losses.add(which[fails], np.broadcast_to(drives_per_motor[:, None], shape)[fails])
-    if losses.listed:
-        row, column, drive = np.nonzero(fails[:, :, None] & served[:, None, :])
-        losses.keep(
-            np.column_stack([motor_index[row], gearhead_index[column], drive]),
-            which[row, column].astype(np.intp),
-            worst[row, column],
-        )
-    rows, columns = np.nonzero(fails & (worst <= nearest.bar) & (drives_per_motor > 0)[:, None])
-    if len(rows):
-        nearest.add(np.column_stack([motor_index[rows], gearhead_index[columns]]), worst[rows, columns])
+    left = fails.copy()
+    by_gearhead = (
+        (number, np.where(gearhead_check == number, gearhead_worst, np.nan))
+        for number in np.unique(gearhead_check).tolist()
+    )
+    for number, utilisation in (*others, *by_gearhead):
+        governed = utilisation == worst
+        governed &= left
+        left ^= governed
+        losses.count(number, governed, drives_per_motor)
+        if losses.listed:
+            j, i, drive = np.nonzero(governed[:, :, None] & served)
+            losses.keep(
+                np.column_stack([motor_index[i], gearhead_index[j], drive]),
+                np.full(len(i), number),
+                worst[j, i],
+            )
+    j, i = np.nonzero(fails & (worst <= nearest.bar) & (drives_per_motor > 0))
+    if len(i):
+        nearest.add(np.column_stack([motor_index[i], gearhead_index[j]]), worst[j, i])
     return _screen_drives(
         context, block, ~fails, served, motor_index, gearhead_index, worst, pool, nearest, losses
     )
 
 
-def _worst(context: _Context, block: Block) -> tuple[FloatArray, NDArray[np.int8]]:
-    """Largest utilisation over allowed of the motor and gearhead checks, and which check it is, (M, N)."""
-    gearhead_only = np.zeros((1, len(block.gearheads)))
-    gearhead_which = np.zeros(gearhead_only.shape, dtype=np.int8)
-    others: list[tuple[int, FloatArray]] = []
+def _utilisations(
+    context: _Context, block: Block
+) -> tuple[FloatArray, NDArray[np.intp], list[tuple[int, FloatArray]]]:
+    """Utilisation over allowed of every motor and gearhead check.
+
+    Those that depend on the gearhead alone come as the worst of them and which it is, both (N, 1); the others
+    with their number in the list of checks, each (N, M).
+    """
+    worst = np.zeros((len(block.gearheads), 1))
+    check_number = np.zeros(worst.shape, dtype=np.intp)
+    others = []
     for number, check in enumerate(context.checks):
         assert check.bound is not None
-        utilisation = check.bound(block) / context.allowed[check.key]
+        utilisation = check.bound(block)
+        if context.allowed[check.key] != 1.0:
+            utilisation = utilisation / context.allowed[check.key]
         if check.group == "gearhead":
-            utilisation = np.where(block.gearheads.is_direct[None, :], 0.0, utilisation)
-        if utilisation.shape[0] == 1:
-            higher = utilisation > gearhead_only
-            gearhead_only = np.where(higher, utilisation, gearhead_only)
-            gearhead_which = np.where(higher, np.int8(number), gearhead_which)
+            utilisation = np.where(block.gearheads.is_direct[:, None], 0.0, utilisation)
+            higher = utilisation > worst
+            worst = np.where(higher, utilisation, worst)
+            check_number = np.where(higher, number, check_number)
         else:
             others.append((number, utilisation))
-    shape = block.mean_square.shape
-    worst = np.broadcast_to(gearhead_only, shape).copy()
-    which = np.broadcast_to(gearhead_which, shape).copy()
-    for number, utilisation in others:
-        higher = utilisation > worst  # NaN, not known, is never higher
-        np.copyto(worst, utilisation, where=higher)
-        np.copyto(which, np.int8(number), where=higher)
-    return worst, which
+    return worst, check_number, others
 
 
 def _screen_drives(
@@ -373,14 +391,14 @@ def _screen_drives(
 ) -> int:
     """Hold the pairs that may pass against every drive; returns how many sets survive."""
     side = context.drive_side
-    rows, columns = np.nonzero(passing)
+    columns, rows = np.nonzero(passing)  # gearheads, motors
     amplitude = amplitude_per_unit_current(block.motors.current_basis)
     total = 0
     step = max(1, 2**16 // max(1, len(side.peak)))
     for start in range(0, len(rows), step):
         r, c = rows[start : start + step], columns[start : start + step]
-        peak = (block.current_peak[r, c] * amplitude[r])[:, None]
-        rms = (block.current_rms[r, c] * amplitude[r])[:, None]
+        peak = (block.current_peak[c, r] * amplitude[r])[:, None]
+        rms = (block.current_rms[c, r] * amplitude[r])[:, None]
         ok = served[r]
         bus = np.broadcast_to(side.bus[None, :], ok.shape)
         continuous = rms / (side.continuous * side.continuous_allowed)[None, :]
@@ -400,7 +418,7 @@ def _screen_drives(
         total += len(k)
         if len(k):
             m, g = motor_index[r[k]], gearhead_index[c[k]]
-            bound = np.maximum(worst[r[k], c[k]], drive_worst[k, d])
+            bound = np.maximum(worst[c[k], r[k]], drive_worst[k, d])
             pool.add(np.column_stack([m, g, d]), _key(context, block, m, g, d, r[k], c[k], bound))
         none = ok.any(axis=1) & ~survives.any(axis=1)
         if none.any():
@@ -425,7 +443,7 @@ def _key(
         return bound
     if context.key == "energy":
         j = block.judged
-        loss = j.resistance_ohm[row] / j.torque_constant_nm_per_a[row] ** 2 * block.mean_square[row, column]
+        loss = j.resistance_ohm[row] / j.torque_constant_nm_per_a[row] ** 2 * block.mean_square[column, row]
         return np.asarray(loss)
     name = "price" if context.key == "price" else "mass_kg"
     parts = (case.motor_parameters, case.gearhead_parameters, case.drive_parameters)

@@ -39,7 +39,7 @@ GEARHEAD_EQUIVALENT = Check(
     source="Equivalent load weighted by revolutions (form of ISO 3408-5), exponent 3: common practice",
     needs=(Need("gearheads", "continuous_torque_nm", "continuous torque"),),
     measure=_equivalent_measure,
-    bound=lambda block: block.demand.shaft_torque_equivalent / block.gearheads.continuous_torque_nm[None, :],
+    bound=lambda block: block.demand.shaft_torque_equivalent / block.gearheads.continuous_torque_nm[:, None],
     working=_working("T_eq / T_continuous", "N·m", _equivalent_measure),
     applies=has_gearhead,
 )
@@ -64,7 +64,7 @@ GEARHEAD_PEAK = Check(
     source="Repeated peak torque of the data sheet",
     needs=(Need("gearheads", "peak_torque_nm", "peak torque"),),
     measure=_peak_measure,
-    bound=lambda block: block.demand.shaft_torque_peak / block.gearheads.peak_torque_nm[None, :],
+    bound=lambda block: block.demand.shaft_torque_peak / block.gearheads.peak_torque_nm[:, None],
     working=_working("T_max / T_peak", "N·m", _peak_measure),
     applies=has_gearhead,
 )
@@ -85,7 +85,7 @@ GEARHEAD_MEAN_SPEED = Check(
     measure=_mean_speed_measure,
     bound=lambda block: (
         block.gearheads.ratio * block.demand.shaft_speed_mean / block.gearheads.speed_mean_max_rad_s
-    )[None, :],
+    )[:, None],
     working=_working("ω_mean / ω_mean,max", "rad/s", _mean_speed_measure),
     applies=has_gearhead,
 )
@@ -106,7 +106,7 @@ GEARHEAD_MAX_SPEED = Check(
     measure=_max_speed_measure,
     bound=lambda block: (
         block.gearheads.ratio * block.demand.shaft_speed_peak / block.gearheads.speed_max_rad_s
-    )[None, :],
+    )[:, None],
     working=_working("ω_max / ω_limit", "rad/s", _max_speed_measure),
     applies=has_gearhead,
 )
@@ -118,7 +118,7 @@ def _inertia_measure(sets: Sets) -> Measure:
 
 def _inertia_bound(block: Block) -> FloatArray:
     reflected = block.demand.load_inertia / block.gearheads.ratio**2
-    return reflected[None, :] / block.motors.rotor_inertia_kg_m2[:, None] / block.recommended_inertia_ratio
+    return reflected[:, None] / block.motors.rotor_inertia_kg_m2 / block.recommended_inertia_ratio
 
 
 INERTIA_RATIO = Check(

@@ -32,15 +32,15 @@ def rerated_continuous_current(
     surroundings : Surroundings
         Ambient and altitude. [-]
     speed_rad_s : ndarray
-        Speed; its friction and iron loss takes part of the permitted rise. Shape (n,) or (n, m). [rad/s]
+        Speed; its friction and iron loss takes part of the permitted rise. Anything that
+        broadcasts with (n,). [rad/s]
 
     Returns
     -------
-    ndarray, shape of `speed_rad_s`
+    ndarray, broadcast shape
         ``√((ΔT − R_2 P_ω)/(R_th R_hot))`` with ``R_th = ΔT_rated/(R_hot I_cont²)``; NaN where data is missing.
         The rating is taken as one near standstill, as sheets state it. [A]
     """
-    shape = (slice(None),) + (None,) * (speed_rad_s.ndim - 1)
     limit = motors.winding_limit_degc
     hot = resistance_at(motors, limit)
     altitude = altitude_factor(surroundings.altitude_m)
@@ -49,12 +49,9 @@ def rerated_continuous_current(
         rating = (limit - motors.continuous_ambient_degc) / (hot * motors.continuous_current_a**2)
     R_2 = motors.thermal_resistance_housing_k_w
     speed_resistance = np.where(np.isnan(R_2), rating, np.fmin(R_2, rating))
-    loss = (
-        motors.friction_torque_nm[shape] * np.abs(speed_rad_s)
-        + motors.viscous_friction_nm_s[shape] * speed_rad_s**2
-    )
+    loss = motors.friction_torque_nm * np.abs(speed_rad_s) + motors.viscous_friction_nm_s * speed_rad_s**2
     with np.errstate(divide="ignore", invalid="ignore"):
-        return continuous_current(rise[shape], rating[shape], speed_resistance[shape], loss, hot[shape])
+        return continuous_current(rise, rating, speed_resistance, loss, hot)
 
 
 def _rms_measure(sets: Sets) -> Measure:
@@ -185,9 +182,7 @@ def _temperature_measure(sets: Sets) -> Measure:
 
 
 def _temperature_bound(block: Block) -> FloatArray:
-    return (
-        block.mean_winding_rise / (block.motors.winding_limit_degc - block.surroundings.ambient_degc)[:, None]
-    )
+    return block.mean_winding_rise / (block.motors.winding_limit_degc - block.surroundings.ambient_degc)
 
 
 def _temperature_working(sets: Sets, i: int) -> str:
@@ -237,7 +232,7 @@ def _current_measure(sets: Sets) -> Measure:
 
 
 def _current_bound(block: Block) -> FloatArray:
-    return block.current_peak / block.motors.peak_current_a[:, None]
+    return block.current_peak / block.motors.peak_current_a
 
 
 MOTOR_PEAK_CURRENT = Check(
@@ -260,7 +255,7 @@ def _speed_measure(sets: Sets) -> Measure:
 
 
 def _speed_bound(block: Block) -> FloatArray:
-    return block.speed_peak / block.motors.speed_max_rad_s[:, None]
+    return block.speed_peak / block.motors.speed_max_rad_s
 
 
 MOTOR_SPEED = Check(
@@ -284,7 +279,7 @@ def _voltage_measure(sets: Sets) -> Measure:
 
 
 def _voltage_bound(block: Block) -> FloatArray:
-    return block.voltage_peak / block.judged.voltage_available_v[:, None]
+    return block.voltage_peak / block.judged.voltage_available_v
 
 
 VOLTAGE = Check(
