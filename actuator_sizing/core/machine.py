@@ -62,8 +62,8 @@ def model_voltage(bus_v: FloatArray | float, modulation_limit: float, basis: NDA
     Examples
     --------
     >>> import numpy as np
-    >>> model_voltage(100.0, 1.0, np.array([0, 1, 2], dtype=np.int8))
-    array([100.    , 122.4745,  86.6025])
+    >>> model_voltage(100.0, 1.0, np.array([0, 1, 2], dtype=np.int8)).tolist()
+    [100.0, 122.4745, 86.6025]
     """
     factor = np.ones(np.shape(basis))
     for key, value in _VOLTS_PER_LINE_PEAK.items():

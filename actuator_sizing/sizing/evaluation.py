@@ -117,8 +117,12 @@ def air_gap_torque(
 
     Returns
     -------
-    torque_nm, speed_rad_s, shaft_torque_nm : ndarray, shape (B, P, K)
-        Torque at the air gap [N·m], speed [rad/s], torque at the motor shaft [N·m].
+    torque_nm : ndarray, shape (B, P, K)
+        Torque at the air gap. [N·m]
+    speed_rad_s : ndarray, shape (B, P, K)
+        Motor speed. [rad/s]
+    shaft_torque_nm : ndarray, shape (B, P, K)
+        Torque at the motor shaft. [N·m]
 
     Notes
     -----

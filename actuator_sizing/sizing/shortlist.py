@@ -10,9 +10,9 @@ from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
 from actuator_sizing.core.machine import amplitude_per_unit_current, judge
+from actuator_sizing.core.windows import overload_accumulator, windowed_rms
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import Demand
-from actuator_sizing.sizing.drive_currents import SquaredCurrent, overload, windowed_rms
 from actuator_sizing.sizing.evaluation import PairResults, course, evaluate_pairs
 
 FloatArray = NDArray[np.float64]
@@ -105,16 +105,17 @@ def _drive_view(
     drives = case.drive_parameters.take(drive)
     amplitude = amplitude_per_unit_current(motors.current_basis)
     current = course(demand, motors, gearheads, judge(motors, case.surroundings)).current_a
-    squared = SquaredCurrent(demand.duration_s, (current * amplitude[:, None, None]) ** 2)
+    squared = (current * amplitude[:, None, None]) ** 2
     per_drive = amplitude_per_unit_current(drives.current_basis)
     rms = results.current_rms_a[pair] * amplitude[pair] / per_drive
     rms_at = np.full(len(pair), np.nan)
     for window in np.unique(drives.rms_window_s[np.isfinite(drives.rms_window_s)]):
-        largest, start = windowed_rms(squared, float(window))
-        mine = drives.rms_window_s == window
-        rms[mine] = largest[pair[mine]] / per_drive[mine]
-        rms_at[mine] = start[pair[mine]]
-    accumulated, when = overload(squared, drives.continuous_current_a * per_drive, pair)
+        mine = np.flatnonzero(drives.rms_window_s == window)
+        wanted, place = np.unique(pair[mine], return_inverse=True)
+        largest, start = windowed_rms(demand.duration_s, squared[wanted], float(window))
+        rms[mine] = largest[place] / per_drive[mine]
+        rms_at[mine] = start[place]
+    accumulated, when = _overload(demand, squared, results, pair, amplitude, drives.continuous_current_a * per_drive)
     return _DriveView(
         peak=results.current_peak_a[pair] * amplitude[pair] / per_drive,
         rms=rms,
@@ -122,3 +123,24 @@ def _drive_view(
         overload=accumulated / per_drive**2,
         overload_at=when,
     )
+
+
+def _overload(
+    demand: Demand,
+    squared: FloatArray,
+    results: PairResults,
+    pair: IndexArray,
+    amplitude: FloatArray,
+    continuous_a: FloatArray,
+) -> tuple[FloatArray, FloatArray]:
+    """Largest i²t accumulator per set; asked of the exact method only where the peak exceeds the rating."""
+    peak = results.current_peak_a[pair] * amplitude[pair]
+    accumulated, when = np.zeros(len(pair)), np.full(len(pair), np.nan)
+    accumulated[np.isnan(continuous_a)] = np.nan
+    above = np.flatnonzero(peak > continuous_a)
+    for start in range(0, len(above), _PAIRS_PER_CHUNK):
+        some = above[start : start + _PAIRS_PER_CHUNK]
+        accumulated[some], when[some] = overload_accumulator(
+            demand.duration_s, squared[pair[some]], continuous_a[some] ** 2
+        )
+    return accumulated, when

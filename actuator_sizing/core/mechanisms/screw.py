@@ -57,7 +57,7 @@ def screw_efficiencies(
     Examples
     --------
     >>> screw_efficiencies(0.020, 0.020, 0.15)
-    (0.6525, 0.5051)
+    (0.6472, 0.5047)
     """
     lead_angle = np.arctan(lead_m / (np.pi * mean_diameter_m))
     friction_angle = np.arctan(friction_coefficient)
