@@ -10,6 +10,8 @@ from typing import TYPE_CHECKING, Any
 from actuator_sizing.report.headings import heading
 
 if TYPE_CHECKING:
+    import pandas as pd
+
     from actuator_sizing.sizing.results import Comparison
 
 _STARTS_FORMULA = ("=", "+", "-", "@", "\t", "\r")
@@ -32,9 +34,15 @@ def render_candidates(comparison: Comparison) -> bytes:
     stream = io.StringIO(newline="")
     writer = csv.writer(stream, lineterminator="\r\n")
     writer.writerow([heading(str(name)) for name in table.columns])
-    columns = [table[name].tolist() for name in table.columns]
-    writer.writerows([_cell(value) for value in values] for values in zip(*columns, strict=True))
+    writer.writerows(zip(*(_column(table[name]) for name in table.columns), strict=True))
     return stream.getvalue().encode("utf-8-sig", "replace")
+
+
+def _column(values: pd.Series) -> list[Any]:
+    """Cells of one column; numbers, of which there are millions, take the short way."""
+    if values.dtype.kind == "f":
+        return ["" if value != value else value for value in values.tolist()]
+    return [_cell(value) for value in values.tolist()]
 
 
 def _cell(value: Any) -> Any:

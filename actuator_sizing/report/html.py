@@ -9,6 +9,7 @@ from importlib import resources
 from typing import TYPE_CHECKING, Any
 
 from actuator_sizing.report.document.blocks import FigureBlock
+from actuator_sizing.report.document.verdict import ADVICE_MET, ADVICE_NOT_MET
 from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
 
 if TYPE_CHECKING:
@@ -17,7 +18,14 @@ if TYPE_CHECKING:
     from actuator_sizing.report.document.blocks import Column, Document
     from actuator_sizing.report.figures import DrawnFigure
 
-_STATES = {PASSES: "passes", LOW_RESERVE: "low", NOT_CHECKED: "open", FAILS: "fails"}
+_STATES = {
+    PASSES: "passes",
+    LOW_RESERVE: "low",
+    NOT_CHECKED: "open",
+    FAILS: "fails",
+    ADVICE_NOT_MET: "low",
+    ADVICE_MET: "passes",
+}
 _WORDS = {
     PASSES: "Passes",
     LOW_RESERVE: "Passes with low reserve",

@@ -60,6 +60,17 @@ def check_name(key: str) -> str:
     return key.replace("_", " ")
 
 
+def in_sentence(title: str) -> str:
+    """Write a title as it stands inside a sentence; abbreviations keep their capitals.
+
+    Examples
+    --------
+    >>> in_sentence("Winding temperature"), in_sentence("RMS current")
+    ('winding temperature', 'RMS current')
+    """
+    return title[:1].lower() + title[1:] if title[1:2].islower() else title
+
+
 def plural(count: int, noun: str) -> str:
     """Write a count with its noun.
 

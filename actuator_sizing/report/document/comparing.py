@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 from actuator_sizing.report.document.blocks import Cell, Column, FigureBlock, Paragraph, Section, Table, row
 from actuator_sizing.report.document.verdict import describe_set, governing
 from actuator_sizing.report.formatting import compared, display_unit, percent, quantity
-from actuator_sizing.report.text import check_name, clean, plural
+from actuator_sizing.report.text import check_name, clean, in_sentence, plural
 from actuator_sizing.sizing.results import FAILS
 
 if TYPE_CHECKING:
@@ -122,7 +122,7 @@ def _losers_table(losers: list[SetResult]) -> Table:
     for item in losers:
         check = governing(item)
         others = [
-            c.title
+            in_sentence(c.title)
             for c in item.checks
             if c.verdict == FAILS and not c.is_advice and c.check != item.governing_check
         ]
@@ -157,7 +157,9 @@ def _matrix_alt(comparison: Comparison) -> str:
         check = governing(item)
         if check is not None:
             use = percent(check.utilisation, check.allowed)
-            parts.append(f"{describe_set(item)} {item.verdict}, governed by {check.title} at {use}")
+            parts.append(
+                f"{describe_set(item)} {item.verdict}, governed by {in_sentence(check.title)} at {use}"
+            )
     return f"Matrix of sets against checks. {'; '.join(parts)}. All values are in the workbook."
 
 

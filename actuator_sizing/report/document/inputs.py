@@ -66,7 +66,7 @@ def inputs_section(comparison: Comparison) -> Section:
 
 
 def _entry_table(table: str, entries: list[Entry]) -> Table:
-    named = any(e.label != e.column for e in entries)
+    named = any(label_of(e) for e in entries)
     columns = [Column("Row", numeric=True, weight=0.5)]
     if named:
         columns.append(Column("Name", weight=1.4))
@@ -82,16 +82,20 @@ def _entry_table(table: str, entries: list[Entry]) -> Table:
         origin = f"{entry.origin}: {clean(entry.rule, 300)}" if entry.rule else entry.origin
         cells: list[str | Cell] = ["" if entry.row is None else str(entry.row)]
         if named:
-            cells.append(clean(entry.label))
-        cells += [
-            clean(entry.column),
-            clean(entry.as_entered),
-            understood(entry),
-            origin,
-            clean(entry.source),
-        ]
+            cells.append(clean(label_of(entry)))
+        cells += [quantity_of(entry), clean(entry.as_entered), understood(entry), origin, clean(entry.source)]
         rows.append(row(*cells))
     return Table(TITLES.get(table, table.replace("_", " ").capitalize()), tuple(columns), tuple(rows))
+
+
+def quantity_of(entry: Entry) -> str:
+    """Name the quantity: the axis table has one quantity a row, the others one a column."""
+    return clean(entry.label if entry.table == "axis" else entry.column)
+
+
+def label_of(entry: Entry) -> str:
+    """Name the part, segment or check that an entry belongs to; empty on the axis table."""
+    return "" if entry.table == "axis" or entry.label == entry.column else entry.label
 
 
 def _remarks_table(problems: Iterable[Problem]) -> Table:
@@ -122,15 +126,14 @@ def _remarks_table(problems: Iterable[Problem]) -> Table:
 def assumptions_section(comparison: Comparison) -> Section:
     """List what nobody entered: values assumed or derived, and the assumptions of the method."""
     best = comparison.sets[0] if comparison.sets else None
-    rows = [row(clean(subject), clean(text, 400), "", "") for subject, text in comparison.assumptions]
-    for entry in [*comparison.case.entries, *part_entries(comparison, best)]:
-        if entry.origin in ("assumed", "derived"):
-            subject = f"{clean(entry.label, 60)}: " if entry.label not in (entry.column, "") else ""
-            rows.append(
-                row(
-                    f"{subject}{clean(entry.column)}", clean(entry.rule, 300), understood(entry), entry.origin
-                )
-            )
+    entries = [
+        entry
+        for entry in (*comparison.case.entries, *part_entries(comparison, best))
+        if entry.origin in ("assumed", "derived")
+    ]
+    told = {f"{entry.origin}: {entry.rule}" for entry in entries}
+    method = [(subject, text) for subject, text in comparison.assumptions if text not in told]
+    rows = [*_entry_statements(entries), *(row(clean(s), clean(text, 400), "", "") for s, text in method)]
     columns = (
         Column("Subject", weight=2.0),
         Column("What was assumed or derived", weight=4.0),
@@ -141,3 +144,19 @@ def assumptions_section(comparison: Comparison) -> Section:
         return Section("assumptions", "Assumptions and derived values", (Paragraph("None."),))
     table = Table("Confirm these before the design is released", columns, tuple(rows))
     return Section("assumptions", "Assumptions and derived values", (table,))
+
+
+def _entry_statements(entries: Iterable[Entry]) -> list[tuple[Cell, ...]]:
+    """Make one row of each statement; the same default in many rows of a table is said once."""
+    labels: dict[tuple[str, ...], list[str]] = {}
+    for entry in entries:
+        statement = (entry.table, quantity_of(entry), entry.rule, understood(entry), entry.origin)
+        labels.setdefault(statement, []).append(clean(label_of(entry), 60))
+    rows = []
+    for (table, name, rule, value, origin), found in labels.items():
+        if len(found) > 1:
+            subject = f"{name} ({len(found)} rows of {table.replace('_', ' ')})"
+        else:
+            subject = f"{found[0]}: {name}" if found[0] else name
+        rows.append(row(subject, clean(rule, 300), value, origin))
+    return rows

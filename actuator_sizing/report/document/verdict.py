@@ -7,8 +7,10 @@ from typing import TYPE_CHECKING
 
 from actuator_sizing.report.document.blocks import Bullets, Facts, Paragraph, Section
 from actuator_sizing.report.formatting import percent, quantity
-from actuator_sizing.report.text import clean, option, plural
+from actuator_sizing.report.text import clean, in_sentence, option, plural
 from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
+
+ADVICE_MET, ADVICE_NOT_MET = "advice met", "advice not met"
 
 if TYPE_CHECKING:
     from actuator_sizing.sizing.results import CheckResult, Comparison, SetResult
@@ -43,6 +45,13 @@ def describe_set(item: SetResult) -> str:
     return f"{clean(item.motor, 60)} + {gearhead} + {clean(item.drive, 60)}"
 
 
+def shown_verdict(check: CheckResult) -> str:
+    """Word the verdict of a check; advice neither passes nor fails."""
+    if not check.is_advice or check.utilisation is None:
+        return check.verdict
+    return ADVICE_NOT_MET if check.utilisation > check.allowed else ADVICE_MET
+
+
 def describe_check(check: CheckResult) -> str:
     """Say how far a check is used, and what is left."""
     use = f"{percent(check.utilisation, check.allowed)} of the capacity"
@@ -60,7 +69,7 @@ def verdict_sentence(comparison: Comparison) -> tuple[str, str]:
     best = comparison.sets[0]
     name, check = describe_set(best), governing(best)
     reason = f" {_capital(describe_check(check))}; no other check is nearer to its limit." if check else ""
-    open_checks = [c.title for c in best.checks if c.verdict == NOT_CHECKED and not c.is_advice]
+    open_checks = [in_sentence(c.title) for c in best.checks if c.verdict == NOT_CHECKED and not c.is_advice]
     every = "every check that could be made" if open_checks else "every check"
     if open_checks:
         reason += f" Not checked for want of data: {_listed(open_checks)}."
@@ -70,7 +79,7 @@ def verdict_sentence(comparison: Comparison) -> tuple[str, str]:
         return f"{name} passes {every}, but with less than the recommended reserve.{reason}", LOW_RESERVE
     if best.verdict == NOT_CHECKED:
         return f"{name} fails none of the checks that could be made.{reason}", NOT_CHECKED
-    failing = [c.title for c in best.checks if c.verdict == FAILS and not c.is_advice]
+    failing = [in_sentence(c.title) for c in best.checks if c.verdict == FAILS and not c.is_advice]
     reason = f" {_capital(describe_check(check))}." if check else ""
     return f"No set passes. The nearest is {name}, which fails {_listed(failing)}.{reason}", FAILS
 
@@ -103,9 +112,9 @@ def verdict_section(comparison: Comparison) -> Section:
         "over demand minus 1.",
     ]
     advice = [
-        c.title
+        in_sentence(c.title)
         for c in (comparison.sets[0].checks if comparison.sets else ())
-        if c.is_advice and c.verdict == FAILS
+        if shown_verdict(c) == ADVICE_NOT_MET
     ]
     if advice:
         notes.insert(0, f"Advice not met, which does not decide the verdict: {_listed(advice)}.")

@@ -6,7 +6,7 @@ import math
 from datetime import date
 from typing import TYPE_CHECKING, Any
 
-from actuator_sizing.report.document.verdict import cover_facts, governing, verdict_sentence
+from actuator_sizing.report.document.verdict import cover_facts, governing, shown_verdict, verdict_sentence
 from actuator_sizing.report.headings import heading, name_and_unit
 from actuator_sizing.report.workbook.writer import Field, Sheets
 from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
@@ -89,8 +89,8 @@ def _candidate_field(name: str, kind: str) -> Field:
         return Field(heading(name))
     if name == "price":
         return Field("price [currency of the catalogs]", "money")
-    if name in ("utilisation", "margin") or name.endswith(("_utilisation", "_margin")):
-        return Field(f"{heading(name)} [-]", "percent", bar="utilisation" in name)
+    if "utilisation" in name:
+        return Field(f"{heading(name)} [-]", "percent", bar=True)
     words, unit = name_and_unit(name)
     title = f"{words} [{unit}]" if unit else (f"{words} [-]" if "ratio" in name else words)
     return Field(title, "integer" if kind == "i" else "number")
@@ -115,7 +115,7 @@ def add_checks(sheets: Sheets, comparison: Comparison) -> None:
                 (
                     item.rank, item.motor, "direct" if item.gearhead is None else item.gearhead, item.drive,
                     check.title, check.group, check.demand, check.capacity, check.unit or "-",
-                    check.utilisation, check.allowed, check.margin, check.verdict, check.is_advice, time,
+                    check.utilisation, check.allowed, check.margin, shown_verdict(check), check.is_advice, time,
                     check.segment, check.formula, check.source, ", ".join(check.missing),
                 )
             )  # fmt: skip

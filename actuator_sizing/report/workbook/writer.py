@@ -113,7 +113,7 @@ class Sheets:
             quiet: dict[str, Any] = (
                 {} if field.style == "text" else {"font_color": "#595959", "align": "right"}
             )
-            layout: dict[str, Any] = quiet or {"indent": 1}
+            layout: dict[str, Any] = quiet or {"align": "left", "indent": 1}
             wrapped = {"text_wrap": True} if len(text) > _WIDEST else {}
             sheet.write_string(row, column, text, self.format(**layout, **wrapped))
             return len(text)

@@ -1,0 +1,170 @@
+"""Figures: complete, deterministic, readable by machine, with what they must say at a glance."""
+
+import dataclasses
+import xml.etree.ElementTree as ElementTree
+
+import numpy as np
+import pytest
+from report_fixture import build_comparison, build_hostile
+
+from actuator_sizing.report.figures import _figures_of, draw_figures, house_style
+from actuator_sizing.report.figures.over_time import draw_current
+from actuator_sizing.report.figures.speed_torque import governing_row
+from actuator_sizing.report.figures.style import _spread
+from actuator_sizing.report.figures.temperature import draw_temperature
+from actuator_sizing.report.figures.utilisation import draw_utilisation
+
+KEYS = {
+    "speed_torque",
+    "motion",
+    "torque_by_cause",
+    "current",
+    "temperature",
+    "step_response",
+    "utilisation",
+}
+
+
+@pytest.fixture(scope="module")
+def comparison():
+    return build_comparison()
+
+
+@pytest.fixture(scope="module")
+def drawn(comparison):
+    return draw_figures(comparison)
+
+
+def texts(svg: bytes) -> list[str]:
+    root = ElementTree.fromstring(svg)
+    return ["".join(node.itertext()).strip() for node in root.iter("{http://www.w3.org/2000/svg}text")]
+
+
+def test_every_figure_is_drawn_and_is_xml(drawn):
+    assert set(drawn) == KEYS
+    for figure in drawn.values():
+        assert ElementTree.fromstring(figure.svg).tag.endswith("svg")
+
+
+def test_drawing_twice_gives_the_same_bytes(comparison, drawn):
+    again = draw_figures(comparison)
+    assert {key: figure.svg for key, figure in again.items()} == {key: f.svg for key, f in drawn.items()}
+
+
+def test_ids_of_different_figures_never_meet(drawn):
+    seen: set[str] = set()
+    for figure in drawn.values():
+        ids = {node.get("id") for node in ElementTree.fromstring(figure.svg).iter() if node.get("id")}
+        assert not ids & seen
+        seen |= ids
+
+
+@pytest.mark.parametrize(
+    ("key", "words"),
+    [
+        ("speed_torque", ["motor speed [1/min], positive with +x", "air-gap torque [N·m], positive drives +x",
+                          "peak at minimum bus", "continuous region", "duty cycle", "motor speed limit"]),
+        ("current", ["current [A rms]", "drive continuous 3 A", "motor peak 6.4 A", "lift"]),
+        ("temperature", ["temperature [°C]", "winding limit 130 °C", "winding", "housing"]),
+        ("torque_by_cause", ["load inertia", "rotor inertia", "gravity", "sum (air gap)"]),
+        ("utilisation", ["inertia ratio (advice)", "? not checked", "governs", "fails"]),
+    ],
+)  # fmt: skip
+def test_figures_say_what_they_show(drawn, key, words):
+    said = texts(drawn[key].svg)
+    assert [word for word in words if word not in said] == []
+
+
+def test_causes_that_are_zero_are_left_out(drawn):
+    assert "friction" not in texts(drawn["torque_by_cause"].svg)
+
+
+def test_the_matrix_shows_the_fixture_s_utilisation(comparison, drawn):
+    use = comparison.best.check("voltage").utilisation
+    assert f"{100.0 * use:.1f}" in texts(drawn["utilisation"].svg)
+
+
+def test_the_matrix_holds_what_a_page_can_carry(comparison):
+    many = comparison.sets * 10
+    with house_style():
+        figure = draw_utilisation(many)
+    assert figure.get_figheight() < 11.0  # A4 is 11.7 in high
+    with house_style():
+        assert draw_utilisation(()) is None
+
+
+def test_the_governing_point_is_the_worst_value_at_that_instant(comparison):
+    best = comparison.best
+    time, segment, speed, torque = governing_row(best, best.detail)
+    check = best.check("speed_torque")
+    assert time == pytest.approx(check.at_time_s)
+    assert abs(torque) == pytest.approx(check.demand)
+    assert segment == check.segment
+
+
+def test_a_limit_far_above_the_data_is_named_at_the_edge_and_does_not_flatten_the_curve(comparison):
+    best = comparison.best
+    levels = {**best.detail.levels, "drive_peak_current_a": 1.0e4}
+    detail = dataclasses.replace(best.detail, levels=levels)
+    with house_style():
+        figure = draw_current(best, detail)
+        axes = figure.axes[0]
+        assert axes.get_ylim()[1] < 100.0
+        assert any(text.get_text() == "↑ drive peak 10000 A" for text in axes.texts)
+
+
+def test_no_equilibrium_is_said_and_missing_data_draws_nothing(comparison):
+    detail = comparison.best.detail
+    with house_style():
+        runaway = draw_temperature(dataclasses.replace(detail, periodic_temperature=None))
+        assert "no equilibrium" in runaway.axes[0].get_xlabel()
+        assert draw_temperature(dataclasses.replace(detail, warm_up=None)) is None
+
+
+def unseen_tick_labels(figure):
+    """Labels of ticks beyond the range of their axis: matplotlib keeps them and does not draw them."""
+    axes = [*figure.axes, *(child for ax in figure.axes for child in ax.child_axes)]
+    for axis in (axis for ax in axes for axis in (ax.xaxis, ax.yaxis)):
+        low, high = sorted(axis.get_view_interval())
+        slack = 1e-9 * (high - low)
+        for tick in axis.get_major_ticks() + axis.get_minor_ticks():
+            if not low - slack <= tick.get_loc() <= high + slack:
+                yield from (tick.label1, tick.label2)
+
+
+def test_no_text_is_clipped(comparison):
+    from matplotlib.backends.backend_agg import FigureCanvasAgg
+    from matplotlib.text import Text
+
+    with house_style():
+        for key, draw in _figures_of(comparison).items():
+            figure = draw()
+            canvas = FigureCanvasAgg(figure)
+            canvas.draw()
+            unseen = set(unseen_tick_labels(figure))
+            for text in figure.findobj(Text):
+                if text.get_text() and text.get_visible() and text not in unseen:
+                    box = text.get_window_extent(canvas.get_renderer())
+                    inside = figure.bbox.padded(1.0)  # a pixel for rounding
+                    assert inside.containsx(box.x0), (key, text.get_text())
+                    assert inside.containsx(box.x1), (key, text.get_text())
+                    assert inside.containsy(box.y0), (key, text.get_text())
+                    assert inside.containsy(box.y1), (key, text.get_text())
+
+
+def test_labels_are_spread_without_overlap_and_in_order():
+    placed = _spread([0.5, 0.51, 0.52, 0.9], 0.1)
+    assert np.all(np.diff(placed) >= 0.1 - 1e-12)
+    assert np.mean(placed[:3]) == pytest.approx(0.51)
+
+
+def test_hostile_names_draw():
+    assert set(draw_figures(build_hostile())) == KEYS
+
+
+def test_the_user_s_matplotlib_settings_stay(comparison):
+    import matplotlib
+
+    with matplotlib.rc_context({"font.size": 23.0}):
+        draw_figures(dataclasses.replace(comparison, sets=comparison.sets[:1]))
+        assert matplotlib.rcParams["font.size"] == 23.0

@@ -1,0 +1,65 @@
+"""Writing the report: whole or not at all, the same every time, dated as told."""
+
+import dataclasses
+import os
+from datetime import date
+
+import pytest
+from report_fixture import build_comparison, build_hostile
+
+from actuator_sizing.errors import OutputError
+from actuator_sizing.report import render_report, write_report
+
+DAY = date(2025, 3, 4)
+EXPECTED = {"sizing_report.html", "sizing_tables.xlsx", "results.json", "candidates.csv"}
+
+
+@pytest.fixture(scope="module")
+def comparison():
+    base = build_comparison()
+    return dataclasses.replace(base, sets=base.sets[:3])
+
+
+def test_all_files_are_written(comparison, tmp_path):
+    paths = write_report(comparison, tmp_path / "out", date=DAY)
+    names = {path.relative_to(tmp_path / "out").as_posix() for path in paths}
+    assert names >= EXPECTED
+    assert {name for name in names if name.startswith("figures/")} >= {"figures/speed_torque.svg"}
+    assert all(path.stat().st_size > 0 for path in paths)
+
+
+def test_the_same_comparison_gives_the_same_bytes(comparison):
+    assert render_report(comparison, date=DAY) == render_report(comparison, date=DAY)
+
+
+def test_the_date_follows_the_environment(comparison, monkeypatch):
+    monkeypatch.setenv("SOURCE_DATE_EPOCH", "1700000000")  # 2023-11-14 in UTC
+    assert b"2023-11-14" in render_report(comparison)["sizing_report.html"]
+
+
+def test_the_results_do_not_depend_on_the_date(comparison):
+    other = render_report(comparison, date=date(1999, 12, 31))
+    assert other["results.json"] == render_report(comparison, date=DAY)["results.json"]
+
+
+@pytest.mark.skipif(os.name == "nt", reason="modes of POSIX")
+def test_a_folder_that_cannot_be_written_is_an_output_error(comparison, tmp_path):
+    blocker = tmp_path / "out"
+    blocker.write_text("a file where the folder should be")
+    with pytest.raises(OutputError):
+        write_report(comparison, blocker, date=DAY)
+    assert blocker.read_text() == "a file where the folder should be"
+
+
+def test_nothing_is_touched_when_one_file_cannot_be_replaced(comparison, tmp_path):
+    (tmp_path / "results.json").mkdir()  # a folder where a file has to go
+    (tmp_path / "sizing_report.html").write_text("old")
+    with pytest.raises(OutputError):
+        write_report(comparison, tmp_path, date=DAY)
+    assert (tmp_path / "sizing_report.html").read_text() == "old"
+    assert not (tmp_path / "sizing_tables.xlsx").exists()
+
+
+def test_hostile_and_empty_comparisons_make_a_report(comparison):
+    assert set(render_report(build_hostile(), date=DAY)) >= EXPECTED
+    assert set(render_report(dataclasses.replace(comparison, sets=()), date=DAY)) >= EXPECTED
