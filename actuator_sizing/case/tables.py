@@ -113,6 +113,10 @@ COMMON_QUANTITIES = (
            assumed="cheapest first", example="price"),
     Column("sets to detail", "count", "how many of the best sets are worked out in detail", default=10.0,
            assumed="ten", minimum=1.0, maximum=1000.0, example="10"),
+    Column("largest bus over nominal voltage", "ratio", "motors whose stated nominal voltage is below the "
+           "nominal bus voltage over this are left out: their insulation is not made for the bus", default=2.0,
+           assumed="a winding may be fed from up to twice its nominal voltage", positive=True, example="2",
+           unit="-"),
     Column("recommended inertia ratio", "ratio", "load inertia over motor inertia that advice is given "
            "against",
            default=10.0, assumed="common practice", positive=True, maximum=1.0e6, example="10"),

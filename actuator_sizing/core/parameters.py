@@ -66,6 +66,7 @@ class MotorParameters(_Columns):
     winding_time_constant_s: FloatArray
     housing_time_constant_s: FloatArray
     brake_torque_nm: FloatArray
+    nominal_voltage_v: FloatArray
     mass_kg: FloatArray
     price: FloatArray
 

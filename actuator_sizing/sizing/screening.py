@@ -74,10 +74,25 @@ def compatible(motors: MotorParameters, drives: DriveParameters) -> NDArray[np.b
     return answer
 
 
-def fits_mechanism(case: Case) -> tuple[NDArray[np.intp], NDArray[np.intp]]:
-    """Indices of the motors and gearheads that the mechanism can use at all. [-]"""
+def fits_axis(case: Case) -> tuple[NDArray[np.intp], NDArray[np.intp]]:
+    """Indices of the motors and gearheads that the axis can use at all.
+
+    Parameters
+    ----------
+    case : Case
+        The case. [-]
+
+    Returns
+    -------
+    motors, gearheads : ndarray of int
+        Linear motors where the mechanism is one, rotary ones elsewhere; no winding whose stated nominal
+        voltage is far below the bus, since its insulation is not made for it. [-]
+    """
     wants_linear = case.mechanism.drives_linear_motor
-    motors = np.flatnonzero(case.motor_parameters.is_linear == wants_linear)
+    allowed = case.options["largest bus over nominal voltage"]
+    with np.errstate(invalid="ignore"):
+        overfed = case.surroundings.bus_nominal_v > allowed * case.motor_parameters.nominal_voltage_v  # type: ignore[operator]
+    motors = np.flatnonzero((case.motor_parameters.is_linear == wants_linear) & ~overfed)
     gearheads = np.arange(len(case.gearhead_parameters))
     if wants_linear:
         gearheads = np.flatnonzero(case.gearhead_parameters.is_direct)
@@ -158,7 +173,7 @@ def screen(
     Screened
         Counts, survivors and nearest losers. [-]
     """
-    motor_index, gearhead_index = fits_mechanism(case)
+    motor_index, gearhead_index = fits_axis(case)
     # Motors that the same drives serve lie together: their sets are then counted in one stroke.
     motor_index = motor_index[np.argsort(case.motor_parameters.commutation[motor_index], kind="stable")]
     drives = case.drive_parameters
