@@ -59,7 +59,8 @@ def inputs_section(comparison: Comparison) -> Section:
         )
     ]
     for table, rows in groupby(entries, key=lambda e: e.table):
-        blocks.append(_entry_table(table, list(rows)))
+        make = _wide_table if table in ("duty_cycle", "limits", "tolerances") else _entry_table
+        blocks.append(make(table, list(rows)))
     if comparison.case.problems:
         blocks.append(_remarks_table(comparison.case.problems))
     return Section("inputs", "Inputs as entered and as understood", tuple(blocks))
@@ -86,6 +87,32 @@ def _entry_table(table: str, entries: list[Entry]) -> Table:
         cells += [quantity_of(entry), clean(entry.as_entered), understood(entry), origin, clean(entry.source)]
         rows.append(row(*cells))
     return Table(TITLES.get(table, table.replace("_", " ").capitalize()), tuple(columns), tuple(rows))
+
+
+def _wide_table(table: str, entries: list[Entry]) -> Table:
+    """Keep the shape of a table whose rows are segments or checks: as entered, below it as understood."""
+    names = list(dict.fromkeys(quantity_of(e) for e in entries))
+    by_row: dict[tuple[int | None, str], dict[str, Cell]] = {}
+    for entry in entries:
+        by_row.setdefault((entry.row, clean(entry.label)), {})[quantity_of(entry)] = _wide_cell(entry)
+    columns = (
+        Column("Row", numeric=True, weight=0.5),
+        Column("Name", weight=1.5),
+        *(Column(name[:1].upper() + name[1:], weight=1.6 if name == "note" else 1.0) for name in names),
+    )
+    rows = [
+        row("" if number is None else str(number), label, *(cells.get(name, "") for name in names))
+        for (number, label), cells in by_row.items()
+    ]
+    return Table(TITLES.get(table, table), columns, tuple(rows))
+
+
+def _wide_cell(entry: Entry) -> Cell:
+    known = understood(entry)
+    if not entry.as_entered:
+        return Cell(known, note=f"{entry.origin}: {clean(entry.rule)}" if entry.rule else entry.origin)
+    typed = clean(entry.as_entered)
+    return Cell(typed, note="" if known == typed else f"= {known}")
 
 
 def quantity_of(entry: Entry) -> str:

@@ -6,6 +6,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
+from actuator_sizing.report.curves import leading_detail
 from actuator_sizing.report.figures.over_time import draw_causes, draw_current, draw_motion
 from actuator_sizing.report.figures.speed_torque import draw_speed_torque
 from actuator_sizing.report.figures.step import draw_step_response
@@ -60,7 +61,7 @@ def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]
         "utilisation": lambda: draw_utilisation(comparison.sets)
     }
     best = comparison.sets[0] if comparison.sets else None
-    detail = best.detail if best is not None else None
+    detail = leading_detail(comparison)
     if best is None or detail is None:
         return figures
     units = AxisUnits.of(comparison.case)

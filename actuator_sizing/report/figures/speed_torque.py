@@ -177,18 +177,16 @@ def governing_row(best: SetResult, detail: SetDetail) -> tuple[float, str, float
     checks = [c for c in best.checks if c.check == "speed_torque" and c.at_time_s is not None]
     if not checks:
         return None
-    cycle = detail.cycle
-    time = cycle["time_s"].to_numpy(float)
-    near = np.abs(time - checks[0].at_time_s)
-    rows = np.flatnonzero(near <= near.min() + 1e-9 * max(float(time[-1]), 1e-12))
-    torque = np.abs(cycle["motor_torque_nm"].to_numpy(float)[rows])
-    row = cycle.iloc[int(rows[int(np.argmax(torque))])]
-    return (
-        float(row["time_s"]),
-        str(checks[0].segment or row["segment"]),
-        float(row["motor_speed_rad_s"]),
-        float(row["motor_torque_nm"]),
+    cycle, at = detail.cycle, float(checks[0].at_time_s or 0.0)
+    time, speed, torque = (
+        cycle[name].to_numpy(float) for name in ("time_s", "motor_speed_rad_s", "motor_torque_nm")
     )
+    segment = str(checks[0].segment or "")
+    rows = np.flatnonzero(np.abs(time - at) <= 1e-9 * max(float(time[-1]), 1e-12))
+    if rows.size:  # at a jump, the worse of the two one-sided values
+        row = int(rows[int(np.argmax(np.abs(torque[rows])))])
+        return at, segment, float(speed[row]), float(torque[row])
+    return at, segment, float(np.interp(at, time, speed)), float(np.interp(at, time, torque))
 
 
 def _set_ranges(ax: Axes, quadrants: tuple[tuple[int, ...], tuple[int, ...]]) -> None:

@@ -18,7 +18,7 @@ if TYPE_CHECKING:
 
 #: Rows that one page carries.
 MOST_ROWS = 25
-_LABEL_LETTERS = 40
+_LABEL_LETTERS = 38  # of the three names together
 
 # From nothing used to all of it used, in steps that stay ordered in grey; above the limit one dark colour.
 _STEPS = (
@@ -46,7 +46,7 @@ def draw_utilisation(sets: Sequence[SetResult]) -> Figure | None:
     keys = list(titles.items())
     cell_in = 0.235
     figure, (ax,) = style.new_axes(
-        2.2 + cell_in * len(rows), left_in=2.35, right_in=0.15, bottom_in=0.5, top_in=1.7
+        2.2 + cell_in * len(rows), left_in=2.85, right_in=0.15, bottom_in=0.5, top_in=1.7
     )
     cells = _Cells()
     for y, item in enumerate(rows):
@@ -69,11 +69,20 @@ def draw_utilisation(sets: Sequence[SetResult]) -> Figure | None:
 
 
 def _row_label(item: SetResult) -> str:
-    parts = [style.shorten(part, 40) for part in (item.motor, item.gearhead or "direct", item.drive)]
-    while sum(map(len, parts)) > _LABEL_LETTERS - 6:  # two " + "
-        longest = max(range(len(parts)), key=lambda i: len(parts[i]))
-        parts[longest] = style.shorten(parts[longest], len(parts[longest]) - 1)
+    names = [style.shorten(name, 60) for name in (item.motor, item.gearhead or "direct", item.drive)]
+    room = [len(name) for name in names]
+    while sum(room) > _LABEL_LETTERS:
+        room[room.index(max(room))] -= 1
+    parts = [_middle_out(name, letters) for name, letters in zip(names, room, strict=True)]
     return f"{item.rank}. {' + '.join(parts)}"
+
+
+def _middle_out(name: str, letters: int) -> str:
+    """Cut a name in its middle, for names of one family differ at their ends."""
+    if len(name) <= letters:
+        return name
+    tail = (letters - 1) // 2
+    return f"{name[: letters - 1 - tail]}…{name[len(name) - tail :]}"
 
 
 class _Cells:

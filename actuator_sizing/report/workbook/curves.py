@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from typing import TYPE_CHECKING, Any
 
+from actuator_sizing.report.curves import leading_detail
 from actuator_sizing.report.figures.units import AxisUnits
 from actuator_sizing.report.headings import name_and_unit
 from actuator_sizing.report.workbook.writer import Field, Sheets
@@ -12,7 +13,7 @@ from actuator_sizing.report.workbook.writer import Field, Sheets
 if TYPE_CHECKING:
     import pandas as pd
 
-    from actuator_sizing.sizing.results import Comparison, SetDetail
+    from actuator_sizing.sizing.results import Comparison
 
 _PEAKS = (
     ("torque_peak_min_bus_nm", "peak at minimum bus", "solid"),
@@ -22,27 +23,23 @@ _PEAKS = (
 _DEMAND, _LIMIT, _CONTINUOUS = "#0072B2", "#D55E00", "#009E73"
 
 
-def _detail(comparison: Comparison) -> SetDetail | None:
-    return comparison.sets[0].detail if comparison.sets else None
-
-
 def add_time_series(sheets: Sheets, comparison: Comparison) -> None:
     """Write one cycle of the leading set in periodic state, both one-sided values at every jump."""
-    detail = _detail(comparison)
+    detail = leading_detail(comparison)
     if detail is not None:
         _add_frame(sheets, "time series", detail.cycle, AxisUnits.of(comparison.case))
 
 
 def add_warm_up(sheets: Sheets, comparison: Comparison) -> None:
     """Write the temperatures from cold to the periodic state."""
-    detail = _detail(comparison)
+    detail = leading_detail(comparison)
     if detail is not None and detail.warm_up is not None:
         _add_frame(sheets, "warm-up", detail.warm_up, AxisUnits.of(comparison.case))
 
 
 def add_speed_torque(sheets: Sheets, comparison: Comparison) -> None:
     """Write the limits over speed and draw them with the cycle as a chart."""
-    detail = _detail(comparison)
+    detail = leading_detail(comparison)
     if detail is None:
         return
     units = AxisUnits.of(comparison.case)
