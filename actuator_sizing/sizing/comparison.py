@@ -144,15 +144,15 @@ def _rank(case: Case, sets: Sets, verdicts: Verdicts, index: IndexArray, ranked_
 
 
 def _listed(order: IndexArray, verdicts: Verdicts, index: IndexArray, wanted: int) -> IndexArray:
-    """The sets shown in full: the best, and as many losers, each motor and gearhead once."""
+    """The sets shown in full: the best, and as many losers, each motor once for each check that governs it."""
     fails = verdicts.verdict[order] == ORDER.index(FAILS)
     best = order[~fails][:wanted]
     nearest: list[int] = []
     seen: set[tuple[int, int]] = set()
     for i in order[fails]:
-        pair = (int(index[i, 0]), int(index[i, 1]))
-        if pair not in seen:
-            seen.add(pair)
+        kind = (int(index[i, 0]), int(verdicts.governing[i]))
+        if kind not in seen:
+            seen.add(kind)
             nearest.append(int(i))
         if len(nearest) == wanted:
             break

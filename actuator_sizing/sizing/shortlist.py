@@ -115,7 +115,9 @@ def _drive_view(
         largest, start = windowed_rms(demand.duration_s, squared[wanted], float(window))
         rms[mine] = largest[place] / per_drive[mine]
         rms_at[mine] = start[place]
-    accumulated, when = _overload(demand, squared, results, pair, amplitude, drives.continuous_current_a * per_drive)
+    accumulated, when = _overload(
+        demand, squared, results, pair, amplitude, drives.continuous_current_a * per_drive
+    )
     return _DriveView(
         peak=results.current_peak_a[pair] * amplitude[pair] / per_drive,
         rms=rms,

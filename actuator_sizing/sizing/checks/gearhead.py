@@ -5,6 +5,8 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
+from actuator_sizing.core.quadrature import integrate
+from actuator_sizing.core.transmission import GEAR_EXPONENT
 from actuator_sizing.sizing.block import Block
 from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits, has_gearhead
 
@@ -30,6 +32,17 @@ def _equivalent_measure(sets: Sets) -> Measure:
     return Measure(_same(sets.demand.shaft_torque_equivalent, sets), sets.gearheads.continuous_torque_nm)
 
 
+def _equivalent_working(sets: Sets, i: int) -> str:
+    d, m = sets.demand, _equivalent_measure(sets)
+    turned = float(integrate(d.duration_s, np.abs(d.shaft_speed)))
+    worked = float(integrate(d.duration_s, np.abs(d.shaft_speed) * np.abs(d.shaft_torque) ** GEAR_EXPONENT))
+    return (
+        f"∫ |ω| |T|³ dt = {digits(worked)} rad·(N·m)³, ∫ |ω| dt = {digits(turned)} rad per cycle; "
+        f"T_eq = ({digits(worked)} / {digits(turned)})^(1/3) = {digits(float(m.demand[i]))} N·m; "
+        f"{digits(float(m.demand[i]))} / {digits(float(m.capacity[i]))} = {digits(float(m.ratio()[i]))}"
+    )
+
+
 GEARHEAD_EQUIVALENT = Check(
     key="gearhead_equivalent_torque",
     title="Gearhead equivalent torque",
@@ -40,7 +53,7 @@ GEARHEAD_EQUIVALENT = Check(
     needs=(Need("gearheads", "continuous_torque_nm", "continuous torque"),),
     measure=_equivalent_measure,
     bound=lambda block: block.demand.shaft_torque_equivalent / block.gearheads.continuous_torque_nm[:, None],
-    working=_working("T_eq / T_continuous", "N·m", _equivalent_measure),
+    working=_equivalent_working,
     applies=has_gearhead,
 )
 
@@ -121,6 +134,16 @@ def _inertia_bound(block: Block) -> FloatArray:
     return reflected[:, None] / block.motors.rotor_inertia_kg_m2 / block.recommended_inertia_ratio
 
 
+def _inertia_working(sets: Sets, i: int) -> str:
+    m = _inertia_measure(sets)
+    unit = "kg" if sets.motors.is_linear[i] else "kg·m²"
+    return (
+        f"(J_load/n²) / J_m = ({digits(sets.demand.load_inertia)} {unit} / "
+        f"{digits(float(sets.gearheads.ratio[i]))}²) / {digits(float(sets.motors.rotor_inertia_kg_m2[i]))} {unit} "
+        f"= {digits(float(m.demand[i]))}; recommended {digits(float(m.capacity[i]))}"
+    )
+
+
 INERTIA_RATIO = Check(
     key="inertia_ratio",
     title="Inertia ratio",
@@ -131,6 +154,6 @@ INERTIA_RATIO = Check(
     needs=(),
     measure=_inertia_measure,
     bound=_inertia_bound,
-    working=_working("(J_load/n²)/J_motor against recommended", "", _inertia_measure),
+    working=_inertia_working,
     is_advice=True,
 )

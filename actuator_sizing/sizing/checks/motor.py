@@ -11,6 +11,15 @@ from actuator_sizing.core.parameters import MotorParameters, Surroundings
 from actuator_sizing.core.thermal import altitude_factor
 from actuator_sizing.sizing.block import Block
 from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits
+from actuator_sizing.sizing.checks.working import (
+    available_voltage_working,
+    current_working,
+    instant_of,
+    rms_working,
+    torque_working,
+    voltage_limit_working,
+    voltage_working,
+)
 
 FloatArray = NDArray[np.float64]
 
@@ -77,6 +86,7 @@ def _rms_working(sets: Sets, i: int) -> str:
     rise = (limit - sets.surroundings.ambient_degc) * altitude
     capacity = _rms_measure(sets).capacity[i]
     return (
+        f"{rms_working(sets, i)}; "
         f"R_th = ({digits(limit)} − {digits(m.continuous_ambient_degc[i])}) °C / ({digits(hot)} Ω · "
         f"({digits(m.continuous_current_a[i])} A)²) = {digits(rating)} K/W; "
         f"ΔT = ({digits(limit)} − {digits(sets.surroundings.ambient_degc)}) · {digits(altitude)} = {digits(rise)} K; "
@@ -137,20 +147,17 @@ def _plane_bound(block: Block) -> FloatArray:
 
 def _plane_working(sets: Sets, i: int) -> str:
     m = _plane_measure(sets)
+    at = instant_of(sets, i, float(m.at_s[i]), "torque")  # type: ignore[index]
     p = sets.pairs
-    unit = "N" if sets.motors.is_linear[i] else "N·m"
-    by_voltage = p.plane_utilisation[i] >= p.torque_peak_nm[i] / current_limited_torque(sets)[i]
-    what = (
-        f"largest torque at that speed within U = {digits(p.voltage_available_v[i])} V "
-        f"(R {digits(p.resistance_ohm[i])} Ω and K {digits(p.torque_constant_nm_per_a[i])} N·m/A at "
-        f"winding {digits(p.judged_winding_degc[i])} °C)"
-        if by_voltage
-        else "torque at the smaller peak current of motor and drive "
-        f"(K {digits(p.torque_constant_nm_per_a[i])} N·m/A, magnet at {digits(p.magnet_degc[i])} °C)"
-    )
+    unit = at.units[0]
+    by_current = float(current_limited_torque(sets)[i])
+    if p.plane_utilisation[i] >= p.torque_peak_nm[i] / by_current:
+        limit = voltage_limit_working(sets, i, at)
+    else:
+        limit = f"T_available = {digits(by_current)} {unit} at the smaller peak current of motor and drive"
     return (
-        f"T = {digits(m.demand[i])} {unit}; T_available = {digits(m.capacity[i])} {unit}: {what}; "
-        f"T/T_available = {digits(m.ratio()[i])}"
+        f"{torque_working(at)}; {limit}; {digits(float(m.demand[i]))} / {digits(float(m.capacity[i]))} "
+        f"= {digits(float(m.ratio()[i]))}"
     )
 
 
@@ -191,9 +198,11 @@ def _temperature_working(sets: Sets, i: int) -> str:
     if not sets.pairs.has_equilibrium[i]:
         return "no equilibrium: each cycle leaves the winding hotter than the last"
     peak = sets.pairs.winding_max_degc[i]
+    mean = sets.pairs.housing_mean_degc[i]
+    housing = "one thermal body" if np.isnan(mean) else f"housing mean {digits(mean)} °C"
     return (
         f"ϑ_max = {digits(peak)} °C in periodic steady state (mean {digits(sets.pairs.winding_mean_degc[i])} °C, "
-        f"housing mean {digits(sets.pairs.housing_mean_degc[i])} °C); rise ({digits(peak)} − {digits(ambient)}) / "
+        f"{housing}); rise ({digits(peak)} − {digits(ambient)}) / "
         f"({digits(limit)} − {digits(ambient)}) = {digits((peak - ambient) / (limit - ambient))}"
     )
 
@@ -216,19 +225,17 @@ WINDING_TEMPERATURE = Check(
 
 
 # -- peak current -----------------------------------------------------------------------------------
-def _ratio_working(symbol: str, unit: str, measure) -> object:  # type: ignore[no-untyped-def]
-    def working(sets: Sets, i: int) -> str:
-        m = measure(sets)
-        shown = unit
-        if sets.motors.is_linear[i]:
-            shown = {"rad/s": "m/s"}.get(unit, unit)
-        return f"{symbol} = {digits(m.demand[i])} {shown} / {digits(m.capacity[i])} {shown} = {digits(m.ratio()[i])}"
-
-    return working
-
-
 def _current_measure(sets: Sets) -> Measure:
     return Measure(sets.pairs.current_peak_a, sets.motors.peak_current_a, sets.pairs.torque_peak_at_s)
+
+
+def _current_working(sets: Sets, i: int) -> str:
+    m = _current_measure(sets)
+    at = instant_of(sets, i, float(m.at_s[i]), "torque")  # type: ignore[index]
+    return (
+        f"{torque_working(at)}; {current_working(at)}; |i| / I_peak = {digits(float(m.demand[i]))} / "
+        f"{digits(float(m.capacity[i]))} = {digits(float(m.ratio()[i]))}"
+    )
 
 
 def _current_bound(block: Block) -> FloatArray:
@@ -245,13 +252,23 @@ MOTOR_PEAK_CURRENT = Check(
     needs=(_PEAK_CURRENT,),
     measure=_current_measure,
     bound=_current_bound,
-    working=_ratio_working("i_max / I_peak", "A", _current_measure),
+    working=_current_working,
 )
 
 
 # -- speed ------------------------------------------------------------------------------------------
 def _speed_measure(sets: Sets) -> Measure:
     return Measure(sets.pairs.speed_peak_rad_s, sets.motors.speed_max_rad_s, sets.pairs.speed_peak_at_s)
+
+
+def _speed_working(sets: Sets, i: int) -> str:
+    m = _speed_measure(sets)
+    unit = "m/s" if sets.motors.is_linear[i] else "rad/s"
+    return (
+        f"ω_max = n · max |ω_shaft| = {digits(float(sets.gearheads.ratio[i]))} · "
+        f"{digits(sets.demand.shaft_speed_peak)} {unit} = {digits(float(m.demand[i]))} {unit}; "
+        f"{digits(float(m.demand[i]))} / {digits(float(m.capacity[i]))} = {digits(float(m.ratio()[i]))}"
+    )
 
 
 def _speed_bound(block: Block) -> FloatArray:
@@ -269,13 +286,25 @@ MOTOR_SPEED = Check(
     needs=(Need("motors", "speed_max_rad_s", "maximum speed", "maximum linear speed"),),
     measure=_speed_measure,
     bound=_speed_bound,
-    working=_ratio_working("ω_max / ω_limit", "rad/s", _speed_measure),
+    working=_speed_working,
 )
 
 
 # -- voltage ----------------------------------------------------------------------------------------
 def _voltage_measure(sets: Sets) -> Measure:
     return Measure(sets.pairs.voltage_peak_v, sets.pairs.voltage_available_v, sets.pairs.voltage_peak_at_s)
+
+
+def _voltage_working(sets: Sets, i: int) -> str:
+    m = _voltage_measure(sets)
+    at = instant_of(sets, i, float(m.at_s[i]), "voltage")  # type: ignore[index]
+    with_slope = sets.pairs.voltage_peak_v[i] > sets.pairs.voltage_peak_without_inductance_v[i]
+    note = "" if with_slope else " (the value without L di/dt governs)"
+    return (
+        f"{torque_working(at)}; {current_working(at)}; {voltage_working(at, with_slope=bool(with_slope))}{note}; "
+        f"{available_voltage_working(sets, i)}; {digits(float(m.demand[i]))} / {digits(float(m.capacity[i]))} "
+        f"= {digits(float(m.ratio()[i]))}"
+    )
 
 
 def _voltage_bound(block: Block) -> FloatArray:
@@ -293,5 +322,5 @@ VOLTAGE = Check(
     needs=(),
     measure=_voltage_measure,
     bound=_voltage_bound,
-    working=_ratio_working("u_max / U", "V", _voltage_measure),
+    working=_voltage_working,
 )
