@@ -13,8 +13,10 @@ if TYPE_CHECKING:
 __all__ = ["render_report", "write_report"]
 
 
-def write_report(comparison: Comparison, folder: str | Path, *, date: date | None = None) -> tuple[Path, ...]:
-    """Write page, workbook, results, candidates and figures into a folder; whole or not at all.
+def write_report(
+    comparison: Comparison, folder: str | Path, *, date: date | None = None, pdf: bool | None = None
+) -> tuple[Path, ...]:
+    """Write page, PDF, workbook, results, candidates and figures into a folder; whole or not at all.
 
     Parameters
     ----------
@@ -24,6 +26,8 @@ def write_report(comparison: Comparison, folder: str | Path, *, date: date | Non
         Output folder; made if missing.
     date : datetime.date or None
         Date of the report; by default today, or the day in the environment variable ``SOURCE_DATE_EPOCH``.
+    pdf : bool or None
+        Write the PDF too; None writes it if the optional package for it is installed.
 
     Returns
     -------
@@ -33,14 +37,17 @@ def write_report(comparison: Comparison, folder: str | Path, *, date: date | Non
     Raises
     ------
     OutputError
-        If a file cannot be written; what was there before is untouched.
+        If a file cannot be written, or the PDF is asked for without its package; what was there before is
+        untouched.
     """
     from actuator_sizing.files import replace_folder_files
 
-    return replace_folder_files(folder, render_report(comparison, date=date))
+    return replace_folder_files(folder, render_report(comparison, date=date, pdf=pdf))
 
 
-def render_report(comparison: Comparison, *, date: date | None = None) -> dict[str, bytes]:
+def render_report(
+    comparison: Comparison, *, date: date | None = None, pdf: bool | None = None
+) -> dict[str, bytes]:
     """Make every file of the report in memory, keyed by its path in the folder.
 
     Parameters
@@ -49,12 +56,15 @@ def render_report(comparison: Comparison, *, date: date | None = None) -> dict[s
         The answer.
     date : datetime.date or None
         Date of the report, see `write_report`.
+    pdf : bool or None
+        Make the PDF too, see `write_report`.
     """
     from actuator_sizing.report.candidates_csv import render_candidates
     from actuator_sizing.report.document import prepare_document
     from actuator_sizing.report.figures import draw_figures
     from actuator_sizing.report.html import render_html
     from actuator_sizing.report.json_results import render_json
+    from actuator_sizing.report.pdf import can_write_pdf, render_pdf
     from actuator_sizing.report.workbook import render_workbook
 
     day = date if date is not None else _today()
@@ -66,6 +76,8 @@ def render_report(comparison: Comparison, *, date: date | None = None) -> dict[s
         "results.json": render_json(comparison),
         "candidates.csv": render_candidates(comparison),
     }
+    if pdf or (pdf is None and can_write_pdf()):
+        files["sizing_report.pdf"] = render_pdf(document, figures)
     return files | {f"figures/{figure.key}.svg": figure.svg for figure in figures.values()}
 
 

@@ -9,29 +9,13 @@ from importlib import resources
 from typing import TYPE_CHECKING, Any
 
 from actuator_sizing.report.document.blocks import FigureBlock
-from actuator_sizing.report.document.verdict import ADVICE_MET, ADVICE_NOT_MET
-from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
+from actuator_sizing.report.states import headline, state_of
 
 if TYPE_CHECKING:
     from jinja2 import Template
 
     from actuator_sizing.report.document.blocks import Column, Document
     from actuator_sizing.report.figures import DrawnFigure
-
-_STATES = {
-    PASSES: "passes",
-    LOW_RESERVE: "low",
-    NOT_CHECKED: "open",
-    FAILS: "fails",
-    ADVICE_NOT_MET: "low",
-    ADVICE_MET: "passes",
-}
-_WORDS = {
-    PASSES: "Passes",
-    LOW_RESERVE: "Passes with low reserve",
-    NOT_CHECKED: "Not completely checked",
-    FAILS: "Fails",
-}
 
 
 def render_html(document: Document, figures: Mapping[str, DrawnFigure]) -> bytes:
@@ -62,8 +46,8 @@ def render_html(document: Document, figures: Mapping[str, DrawnFigure]) -> bytes
         page_css=Markup(_page_css(document)),
         drawing=drawing,
         figure_name=lambda block: f"{numbers[block.key]}.",
-        state=lambda verdict: _STATES.get(verdict, "open"),
-        verdict_word=lambda verdict: _WORDS.get(verdict, verdict),
+        state=state_of,
+        verdict_word=headline,
         widths=_widths,
         bar_width=lambda share: f"{100.0 * min(max(share, 0.0), 1.0):.1f}",
     )

@@ -63,3 +63,15 @@ def test_nothing_is_touched_when_one_file_cannot_be_replaced(comparison, tmp_pat
 def test_hostile_and_empty_comparisons_make_a_report(comparison):
     assert set(render_report(build_hostile(), date=DAY)) >= EXPECTED
     assert set(render_report(dataclasses.replace(comparison, sets=()), date=DAY)) >= EXPECTED
+
+
+def test_segments_that_are_counted_get_their_names(comparison):
+    from actuator_sizing.report.curves import leading_detail
+
+    best = comparison.best
+    names = [segment.name for segment in comparison.case.segments]
+    numbers = best.detail.cycle["segment"].map(names.index)
+    cycle = best.detail.cycle.assign(segment=numbers)
+    counted = dataclasses.replace(best, detail=dataclasses.replace(best.detail, cycle=cycle))
+    detail = leading_detail(dataclasses.replace(comparison, sets=(counted,)))
+    assert detail.cycle["segment"].tolist() == best.detail.cycle["segment"].tolist()

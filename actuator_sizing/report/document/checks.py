@@ -85,11 +85,11 @@ def working_section(best: SetResult) -> Section:
         )
     ]
     for check in known[:MOST_WORKINGS]:
-        facts = [("Formula", clean(check.formula, 400)), ("Source", clean(check.source, 400))]
+        facts = [("Formula", clean(check.formula, 1000)), ("Source", clean(check.source, 1000))]
         if check.inputs:
             inputs = "; ".join(f"{clean(name)} ({origin})" for name, origin in check.inputs)
             facts.append(("Inputs used", inputs))
-        lines = tuple(clean(line, 400) for line in check.working.splitlines() if line.strip())
+        lines = tuple(clean(line, 2000) for line in check.working.splitlines() if line.strip())
         blocks.append(Working(describe_check(check), lines, tuple(facts)))
     return Section("working", "The working of the governing checks", tuple(blocks))
 

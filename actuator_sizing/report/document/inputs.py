@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from itertools import groupby
 from typing import TYPE_CHECKING, Any
 
@@ -67,26 +67,38 @@ def inputs_section(comparison: Comparison) -> Section:
 
 
 def _entry_table(table: str, entries: list[Entry]) -> Table:
-    named = any(label_of(e) for e in entries)
-    columns = [Column("Row", numeric=True, weight=0.5)]
-    if named:
-        columns.append(Column("Name", weight=1.4))
-    columns += [
-        Column("Quantity", weight=2.0),
-        Column("As entered", weight=1.4),
-        Column("As understood", weight=1.6),
-        Column("Origin", weight=2.2),
-        Column("Source", weight=1.6),
+    """One row a value; what is the same for all of them, as for one part of a catalog, goes to the caption."""
+    same = len(entries) > 1
+    one_part = same and len({(e.label, e.row) for e in entries}) == 1 and bool(label_of(entries[0]))
+    one_source = same and len({e.source for e in entries}) == 1 and bool(entries[0].source)
+    caption = TITLES.get(table, table.replace("_", " ").capitalize())
+    if one_part:
+        where = "" if entries[0].row is None else f" (row {entries[0].row})"
+        caption += f": {clean(entries[0].label, 60)}{where}"
+    if one_source:
+        caption += f". Source: {clean(entries[0].source)}"
+    shown: list[tuple[Column, Callable[[Entry], str]]] = [
+        (Column("Row", numeric=True, weight=0.5), lambda e: "" if e.row is None else str(e.row)),
+        (Column("Name", weight=1.4), lambda e: clean(label_of(e))),
+        (Column("Quantity", weight=2.0), quantity_of),
+        (Column("As entered", weight=1.4), lambda e: clean(e.as_entered)),
+        (Column("As understood", weight=1.6), understood),
+        (Column("Origin", weight=2.4), _origin),
+        (Column("Source", weight=1.6), lambda e: clean(e.source)),
     ]
-    rows = []
-    for entry in entries:
-        origin = f"{entry.origin}: {clean(entry.rule, 300)}" if entry.rule else entry.origin
-        cells: list[str | Cell] = ["" if entry.row is None else str(entry.row)]
-        if named:
-            cells.append(clean(label_of(entry)))
-        cells += [quantity_of(entry), clean(entry.as_entered), understood(entry), origin, clean(entry.source)]
-        rows.append(row(*cells))
-    return Table(TITLES.get(table, table.replace("_", " ").capitalize()), tuple(columns), tuple(rows))
+    left_out = {"Source"} if one_source else set()
+    if one_part:
+        left_out |= {"Row", "Name"}
+    elif not any(label_of(e) for e in entries):
+        left_out |= {"Name"}
+    shown = [(column, text) for column, text in shown if column.title not in left_out]
+    listed = [e for e in entries if not (one_source and e.column == "source")]
+    rows = tuple(row(*(text(entry) for _, text in shown)) for entry in listed)
+    return Table(caption, tuple(column for column, _ in shown), rows)
+
+
+def _origin(entry: Entry) -> str:
+    return f"{entry.origin}: {clean(entry.rule, 300)}" if entry.rule else entry.origin
 
 
 def _wide_table(table: str, entries: list[Entry]) -> Table:
@@ -108,11 +120,17 @@ def _wide_table(table: str, entries: list[Entry]) -> Table:
 
 
 def _wide_cell(entry: Entry) -> Cell:
-    known = understood(entry)
-    if not entry.as_entered:
-        return Cell(known, note=f"{entry.origin}: {clean(entry.rule)}" if entry.rule else entry.origin)
-    typed = clean(entry.as_entered)
-    return Cell(typed, note="" if known == typed else f"= {known}")
+    known, typed = _unbroken(understood(entry)), _unbroken(clean(entry.as_entered))
+    if not typed:
+        return Cell(known, note=_origin(entry))
+    return Cell(typed, note="" if known == typed else f"=\N{NO-BREAK SPACE}{known}")
+
+
+def _unbroken(text: str) -> str:
+    """Keep a number and its unit on one line."""
+    return (
+        text.replace(" ", "\N{NO-BREAK SPACE}") if len(text) <= 14 and text[:1] in "-+.0123456789" else text
+    )
 
 
 def quantity_of(entry: Entry) -> str:
