@@ -182,32 +182,33 @@ def largest(values: FloatArray) -> tuple[FloatArray, NDArray[np.intp], FloatArra
 
     Notes
     -----
-    Bracketed on a dense Chebyshev grid, then Newton's method on the derivative of the interpolant for every
-    piece that comes within 0.2 % of the range of the leading one.
+    A piece whose Legendre coefficients sum to less than the largest node value cannot hold the maximum. The
+    others are bracketed on a dense Chebyshev grid and refined by Newton's method on the derivative.
     """
-    batch, pieces, count = values.shape
+    batch, _, count = values.shape
     points, dense_matrix = _dense_matrix(count)
-    maximum = np.full(batch, -np.inf)
-    piece = np.zeros(batch, dtype=np.intp)
-    position = np.full(batch, -1.0)
-    dense = values @ dense_matrix.T  # (B, P, D)
-    peak_index = dense.argmax(axis=2)
-    peak = np.take_along_axis(dense, peak_index[..., None], axis=2)[..., 0]
+    series = values @ to_series(count).T
+    ceiling = np.abs(series[..., 1:]).sum(axis=2) + series[..., 0]  # |P_k| ≤ 1
     node_peak = values.max(axis=2)  # exact at piece ends, where the dense grid carries rounding
-    reach = np.maximum(peak, node_peak)
-    span = np.nanmax(np.abs(reach), axis=1, initial=0.0)[:, None]
-    contenders = reach >= reach.max(axis=1)[:, None] - 2e-3 * span
-    row, column = np.nonzero(contenders)
-    series = values[row, column] @ to_series(count).T  # (n, K)
-    x = points[peak_index[row, column]]
-    step = _newton_extremum(series, x, points)
-    refined = series_value(series.T, step)
-    best = np.maximum(refined, node_peak[row, column])
-    at_node = node_peak[row, column] >= refined
-    nodes = lobatto(count)[0]
-    x = np.where(at_node, nodes[values[row, column].argmax(axis=1)], step)
-    order = np.argsort(best, kind="stable")  # the last write below is the largest
-    maximum[row[order]] = best[order]
+    best_node = node_peak.max(axis=1)
+    spans = np.ptp(values, axis=2)
+    flat = spans <= 1e-14 * np.abs(best_node)[:, None]  # nothing to gain between the nodes
+    row, column = np.nonzero((ceiling >= best_node[:, None]) & ~flat)
+    dense = values[row, column] @ dense_matrix.T  # (n, D)
+    top = dense.argmax(axis=1)
+    # Between two points of the grid a polynomial of this degree rises by less than this part of its span.
+    near = dense[np.arange(len(row)), top] >= best_node[row] - 2e-2 * spans[row, column]
+    row, column, top = row[near], column[near], top[near]
+    mine = series[row, column]
+    x = _newton_extremum(mine, points[top], points)
+    refined = series_value(mine.T, x)
+
+    piece = node_peak.argmax(axis=1)
+    node = values[np.arange(batch), piece].argmax(axis=1)
+    maximum, position = best_node.copy(), lobatto(count)[0][node]
+    order = np.argsort(refined, kind="stable")  # the last write below is the largest
+    order = order[refined[order] > best_node[row[order]]]
+    maximum[row[order]] = refined[order]
     piece[row[order]] = column[order]
     position[row[order]] = x[order]
     return maximum, piece, position
@@ -294,18 +295,21 @@ def signed_integrals(duration_s: FloatArray, values: FloatArray) -> tuple[FloatA
     -----
     Pieces that change sign are cut at the roots of their interpolant; each part is integrated in closed form.
     """
-    batch, _, count = values.shape
+    count = values.shape[2]
     points, dense_matrix = _dense_matrix(count)
-    total = piece_means(values) * duration_s  # (B, P)
-    positive = np.where(total > 0.0, total, 0.0)
-    dense = values @ dense_matrix.T
-    scale = np.abs(dense).max(axis=2)
-    mixed = (dense.min(axis=2) < -1e-13 * scale) & (dense.max(axis=2) > 1e-13 * scale)
-    row, column = np.nonzero(mixed)
+    series = values @ to_series(count).T
+    total = series[..., 0] * duration_s  # (B, P): the first coefficient is the mean
+    positive = np.maximum(total, 0.0)
+    # Where the mean outweighs all the rest there is no change of sign.
+    row, column = np.nonzero(np.abs(series[..., 1:]).sum(axis=2) > np.abs(series[..., 0]))
+    dense = values[row, column] @ dense_matrix.T
+    nothing = 1e-13 * np.abs(dense).max(axis=1, initial=0.0)
+    mixed = (dense.min(axis=1, initial=0.0) < -nothing) & (dense.max(axis=1, initial=0.0) > nothing)
+    row, column = row[mixed], column[mixed]
     if len(row):
-        series = values[row, column] @ to_series(count).T
-        integral = series @ antiderivative_matrix(count).T  # (n, K + 1)
-        parts = _positive_parts(series, integral, dense[row, column], points)
+        mine = series[row, column]
+        integral = mine @ antiderivative_matrix(count).T  # (n, K + 1)
+        parts = _positive_parts(mine, integral, dense[mixed], points)
         positive[row, column] = 0.5 * duration_s[column] * parts
     positive_sum = positive.sum(axis=1)
     return positive_sum, positive_sum - total.sum(axis=1)
@@ -327,9 +331,23 @@ def _positive_parts(
         slope = series_value(slope_series, x)
         move = series_value(value_series, x) / np.where(slope == 0.0, 1.0, slope)
         x = np.clip(x - move, low, high)
+    # Where two roots nearly meet Newton is slow: halve the bracket instead.
+    slow = np.abs(series_value(value_series, x)) > 1e-13 * np.abs(value_series).sum(axis=0)
+    if slow.any():
+        x[slow] = _bisected(value_series[:, slow], low[slow], high[slow])
     area = series_value(integral_series, x)
     rising = f_high > f_low
     # From -1 to 1: each falling root ends a positive stretch (+F), each rising root starts one (-F).
     np.add.at(result, row, np.where(rising, -area, area))
     at_end = integral.sum(axis=1)  # every Legendre polynomial is 1 at 1
     return result + np.where(dense[:, -1] > 0.0, at_end, 0.0)
+
+
+def _bisected(series: FloatArray, low: FloatArray, high: FloatArray) -> FloatArray:
+    """Root of each series between two points of unlike sign, to rounding."""
+    rising = series_value(series, high) > 0.0
+    for _ in range(50):
+        middle = 0.5 * (low + high)
+        above = (series_value(series, middle) > 0.0) == rising
+        low, high = np.where(above, low, middle), np.where(above, middle, high)
+    return np.asarray(0.5 * (low + high))

@@ -15,7 +15,6 @@ from actuator_sizing.sizing.candidates import candidate_table
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import build_demand, cycle_quantities
 from actuator_sizing.sizing.detail import SetModel, commissioning_quantities, quantities, set_detail
-from actuator_sizing.sizing.evaluation import functions_of
 from actuator_sizing.sizing.judging import (
     ORDER,
     Verdicts,
@@ -80,7 +79,6 @@ def compare(
     screened = screen(
         case,
         demand,
-        functions_of(demand),
         binding,
         allowed,
         ranked_by,

@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case, Segment
 from actuator_sizing.core.mechanisms import Mechanism
+from actuator_sizing.core.moments import demand_functions
 from actuator_sizing.core.motion_laws import Phase
 from actuator_sizing.core.quadrature import NODES, integrate, largest_magnitude, lobatto, roots
 from actuator_sizing.core.transmission import (
@@ -55,6 +56,18 @@ class Demand:
     motor_acceleration: FloatArray  # shaft acceleration as the motor's own moving mass feels it
     torque_by_cause: Mapping[str, FloatArray]  # (P, K) parts of shaft_torque
     load_inertia: float  # largest inertia of load and mechanism at the driven shaft
+
+    @cached_property
+    def functions(self) -> FloatArray:
+        """The six functions of `core.moments` at the nodes, shape (6, P, K)."""
+        return demand_functions(
+            self.flow,
+            self.direction,
+            self.brake_closed,
+            self.motor_acceleration,
+            self.shaft_torque,
+            self.shaft_speed,
+        )
 
     @property
     def cycle_s(self) -> float:

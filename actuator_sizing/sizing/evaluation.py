@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 
 from actuator_sizing.core.capability import terminal_voltage, voltage_limited_current
 from actuator_sizing.core.machine import JudgedMotor, current_of_torque, judge, torque_of_current
-from actuator_sizing.core.moments import demand_functions
+from actuator_sizing.core.moments import gearhead_rows, motor_columns
 from actuator_sizing.core.parameters import GearheadParameters, MotorParameters, Surroundings, _Columns
 from actuator_sizing.core.quadrature import (
     differentiation_matrix,
@@ -29,7 +29,6 @@ from actuator_sizing.core.thermal import (
     subpiece_durations,
     subpiece_means,
 )
-from actuator_sizing.core.transmission import STANDSTILL, stage_factor
 from actuator_sizing.sizing.demand import Demand
 from actuator_sizing.sizing.thermal_data import thermal_network
 
@@ -127,27 +126,16 @@ def air_gap_torque(
     Notes
     -----
     ``T = (J_m + J_g) n α + k T_shaft/n + (T_c + T_0) sgn ω + c n ω`` with k by the direction of power of the
-    gearhead; with the holding brake closed there is no torque.
+    gearhead; with the holding brake closed there is no torque. Linear in the six functions of `core.moments`,
+    so that one product of matrices serves all pairs.
     """
-    n = _column(gearheads.ratio)
-    factor = stage_factor(
-        demand.flow[None, :], gearheads.efficiency[:, None], gearheads.efficiency_back[:, None]
-    )
-    released = np.where(demand.brake_closed & (demand.flow == STANDSTILL), 0.0, 1.0)
-    s = demand.direction[None, :, None]
-    omega = n * demand.shaft_speed
-    alpha = n * demand.motor_acceleration
-    at_shaft = (
-        _column(gearheads.inertia_kg_m2) * alpha
-        + (factor * released)[..., None] * demand.shaft_torque / n
-        + _column(gearheads.no_load_torque_nm) * s
-    )
-    torque = (
-        at_shaft
-        + _column(motors.rotor_inertia_kg_m2) * alpha
-        + _column(motors.friction_torque_nm) * s
-        + _column(motors.viscous_friction_nm_s) * omega
-    )
+    rows = gearhead_rows(gearheads)
+    motor = motor_columns(motors.rotor_inertia_kg_m2, motors.friction_torque_nm, motors.viscous_friction_nm_s)
+    functions = demand.functions.reshape(6, -1)
+    shape = (len(motors), *demand.shaft_speed.shape)
+    at_shaft = (rows[:, 0] @ functions).reshape(shape)
+    torque = (np.einsum("bi,bij->bj", motor, rows) @ functions).reshape(shape)
+    omega = _column(gearheads.ratio) * demand.shaft_speed
     return torque, omega, at_shaft
 
 
@@ -413,16 +401,4 @@ def _voltage_at_steps(c: PairCourse, judged: JudgedMotor, rise_s: float) -> Floa
             judged.torque_constant_nm_per_a[:, None],
             judged.reactance_per_speed[:, None],
         ).max(axis=1)
-    )
-
-
-def functions_of(demand: Demand) -> FloatArray:
-    """The six functions of `core.moments` for a demand, shape (6, P, K). [-]"""
-    return demand_functions(
-        demand.flow,
-        demand.direction,
-        demand.brake_closed,
-        demand.motor_acceleration,
-        demand.shaft_torque,
-        demand.shaft_speed,
     )

@@ -136,7 +136,6 @@ class _Pool:
 def screen(
     case: Case,
     demand: Demand,
-    functions: FloatArray,
     checks: tuple[Check, ...],
     allowed: Mapping[str, float],
     key: str,
@@ -153,8 +152,6 @@ def screen(
         The case with its catalogs. [-]
     demand : Demand
         The cycle at the driven shaft. [-]
-    functions : ndarray, shape (6, P, K)
-        The six functions of `core.moments`. [-]
     checks : tuple of Check
         Checks that can fail a set. [-]
     allowed : mapping
@@ -187,9 +184,9 @@ def screen(
     )
     gearhead_side = GearheadSide.of(
         case.gearhead_parameters.take(gearhead_index),
-        mean_products(demand.duration_s, functions),
-        support_points(functions, demand.flow),
-        _voltage_points(functions, demand),
+        mean_products(demand.duration_s, demand.functions),
+        support_points(demand.functions, demand.flow),
+        _voltage_points(demand),
     )
     gearhead_parts = [
         (
@@ -307,10 +304,10 @@ class _DriveSide:
         self.names = ("drive_bus_voltage", "drive_continuous_current", self.peak_check)
 
 
-def _voltage_points(functions: FloatArray, demand: Demand) -> SupportPoints:
+def _voltage_points(demand: Demand) -> SupportPoints:
     """Instants of largest ``|ω|`` mixed with torque: where the voltage can govern."""
-    flat = functions.reshape(6, -1)
-    direction = np.repeat(demand.direction, functions.shape[2])
+    flat = demand.functions.reshape(6, -1)
+    direction = np.repeat(demand.direction, demand.shaft_speed.shape[1])
     moving = np.flatnonzero(direction != 0.0)
     if not len(moving):
         return SupportPoints(np.empty((0, 6)), np.empty(0))

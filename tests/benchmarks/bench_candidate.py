@@ -21,7 +21,7 @@ from actuator_sizing.sizing.evaluation import air_gap_torque  # noqa: E402
 from tests.benchmarks.sampled import sample_profile, sampled_set  # noqa: E402
 from tests.made_cases import GEARHEAD, MOTOR, case, cycle  # noqa: E402
 
-BATCH, RATE = 256, 10_000
+BATCH, RATE = 128, 10_000
 
 
 def made_case():

@@ -17,7 +17,6 @@ import numpy as np
 sys.path.insert(0, str(Path(__file__).parents[2]))
 
 from actuator_sizing.sizing.demand import build_demand  # noqa: E402
-from actuator_sizing.sizing.evaluation import functions_of  # noqa: E402
 from actuator_sizing.sizing.judging import active_checks, is_binding  # noqa: E402
 from actuator_sizing.sizing.screening import screen  # noqa: E402
 from tests.benchmarks.bench_candidate import made_case  # noqa: E402
@@ -42,7 +41,8 @@ def big_case(motors, gearheads, drives):
     rng = np.random.default_rng(1)
     small = made_case()
     fixed_motor = {"resistance_reference_degc", "magnet_reference_degc", "winding_limit_degc", "pole_pairs",
-                   "resistance_coefficient_per_k", "magnet_coefficient_per_k", "continuous_ambient_degc"}  # fmt: skip
+                   "resistance_coefficient_per_k", "magnet_coefficient_per_k", "continuous_ambient_degc",
+                   "nominal_voltage_v"}  # fmt: skip
     gears = scattered(rng, GEARHEAD, gearheads, {"efficiency", "efficiency_back"})
     values = {p.name: getattr(small.mechanism, p.field) for p in small.mechanism.parameters}
     values = {name: value for name, value in values.items() if value == value}
@@ -61,11 +61,10 @@ def main(millions):
     checks, limits = active_checks(made.limits)
     binding = tuple(c for c, limit in zip(checks, limits, strict=True) if is_binding(c, limit))
     allowed = {c.key: made.limits[c.key].allowed_utilisation for c in binding}
-    functions = functions_of(demand)
     times = []
     for _ in range(3):
         start = time.perf_counter()
-        answer = screen(made, demand, functions, binding, allowed, "price", keep=20_000, losers=40)
+        answer = screen(made, demand, binding, allowed, "price", keep=20_000, losers=40)
         times.append(time.perf_counter() - start)
     pairs = len(made.motor_parameters) * gearheads
     rate = pairs / statistics.median(times)

@@ -6,7 +6,6 @@ import pytest
 from actuator_sizing.sizing import screening
 from actuator_sizing.sizing.comparison import compare
 from actuator_sizing.sizing.demand import build_demand
-from actuator_sizing.sizing.evaluation import functions_of
 from actuator_sizing.sizing.judging import ORDER, active_checks, is_binding, judge_sets
 from actuator_sizing.sizing.results import FAILS
 from actuator_sizing.sizing.shortlist import evaluate_sets
@@ -29,7 +28,7 @@ def random_case(seed):
     rng = np.random.default_rng(seed)
     steady = {"resistance_reference_degc": 25.0, "magnet_reference_degc": 25.0, "pole_pairs": 4.0,
               "magnet_coefficient_per_k": -0.0011, "resistance_coefficient_per_k": 1 / 260,
-              "winding_limit_degc": 155.0, "continuous_ambient_degc": 40.0}  # fmt: skip
+              "winding_limit_degc": 155.0, "continuous_ambient_degc": 40.0, "nominal_voltage_v": 325.0}  # fmt: skip
     motors = [scaled(rng, MOTOR, 0.9, **steady) for _ in range(7)]
     motors[0]["pole_pairs"] = np.nan
     motors[1]["thermal_resistance_housing_k_w"] = np.nan
@@ -74,7 +73,7 @@ def screened(made, **options):
     binding = tuple(c for c, limit in zip(checks, limits, strict=True) if is_binding(c, limit))
     allowed = {c.key: made.limits[c.key].allowed_utilisation for c in binding}
     return screening.screen(
-        made, demand, functions_of(demand), binding, allowed, "price", keep=10_000, losers=10, **options
+        made, demand, binding, allowed, "price", keep=10_000, losers=10, **options
     )
 
 

@@ -12,7 +12,7 @@ from actuator_sizing.core.moments import (
     motor_products,
 )
 from actuator_sizing.sizing.demand import build_demand
-from actuator_sizing.sizing.evaluation import evaluate_pairs, functions_of
+from actuator_sizing.sizing.evaluation import evaluate_pairs
 from tests.independent import PointModel
 from tests.made_cases import GEARHEAD, MOTOR, case, cycle
 
@@ -85,7 +85,7 @@ def test_moments_give_the_same_rms_as_the_nodes(law):
         gearheads=[GEARHEAD, {**GEARHEAD, "ratio": 2.5, "efficiency_back": -0.2}],
     )
     demand = build_demand(made)
-    products = mean_products(demand.duration_s, functions_of(demand))
+    products = mean_products(demand.duration_s, demand.functions)
     m, g = made.motor_parameters, made.gearhead_parameters
     U = motor_products(motor_columns(m.rotor_inertia_kg_m2, m.friction_torque_nm, m.viscous_friction_nm_s))
     V = gearhead_products(products, gearhead_rows(g))
