@@ -25,8 +25,8 @@ def name_and_unit(name: str) -> tuple[str, str]:
 
     Examples
     --------
-    >>> name_and_unit("winding_max_degc"), name_and_unit("inertia_ratio"), name_and_unit("a")
-    (('winding max', '°C'), ('inertia ratio', ''), ('a', ''))
+    >>> name_and_unit("winding_max_degc"), name_and_unit("inertia_ratio"), name_and_unit("pole_real_per_s")
+    (('winding max', '°C'), ('inertia ratio', ''), ('pole real', '1/s'))
     """
     from actuator_sizing.units import SUFFIXES
 
@@ -34,5 +34,7 @@ def name_and_unit(name: str) -> tuple[str, str]:
     for start in range(1, len(parts)):
         suffix = "_".join(parts[start:])
         if suffix in SUFFIXES and suffix != "ratio":
+            if parts[start - 1] == "per":
+                return " ".join(parts[: start - 1]), f"1/{SUFFIXES[suffix]}"
             return " ".join(parts[:start]), SUFFIXES[suffix]
     return " ".join(parts), ""

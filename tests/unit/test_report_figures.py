@@ -12,7 +12,7 @@ from actuator_sizing.report.figures.over_time import draw_current
 from actuator_sizing.report.figures.speed_torque import governing_row
 from actuator_sizing.report.figures.style import _spread
 from actuator_sizing.report.figures.temperature import draw_temperature
-from actuator_sizing.report.figures.utilisation import draw_utilisation
+from actuator_sizing.report.figures.utilisation import _FAILS_COLOR, _STEPS, draw_utilisation
 
 KEYS = {
     "speed_torque",
@@ -82,6 +82,14 @@ def test_causes_that_are_zero_are_left_out(drawn):
 def test_the_matrix_shows_the_fixture_s_utilisation(comparison, drawn):
     use = comparison.best.check("voltage").utilisation
     assert f"{100.0 * use:.1f}" in texts(drawn["utilisation"].svg)
+
+
+def test_the_matrix_gets_darker_with_utilisation_also_in_grey():
+    colors = [*(color for _, color in _STEPS), _FAILS_COLOR]
+    grey = [
+        np.dot([0.299, 0.587, 0.114], [int(c[i : i + 2], 16) for i in (1, 3, 5)]) for c in colors
+    ]  # ITU-R BT.601
+    assert np.all(np.diff(grey) < -10.0)  # told apart on paper: 4 % of the range between neighbours
 
 
 def test_the_matrix_holds_what_a_page_can_carry(comparison):
