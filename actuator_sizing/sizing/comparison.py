@@ -120,14 +120,38 @@ def _stage(progress: Progress | None, name: str) -> Callable[[float], None] | No
 
 
 def _no_set(case: Case) -> Problem:
-    kind = "linear" if case.mechanism.drives_linear_motor else "rotary"
+    """Say why not one motor, gearhead and drive fit together."""
+    linear = case.mechanism.drives_linear_motor
+    kind, other = ("linear", "rotary") if linear else ("rotary", "linear")
+    of_kind = case.motor_parameters.is_linear == linear
+    if not of_kind.any():
+        return Problem(
+            "motors",
+            None,
+            "",
+            f"{other} motors only",
+            f"at least one {kind} motor, which the mechanism '{case.mechanism.name}' needs",
+            f"Add a {kind} motor, or change the mechanism in the table axis.",
+        )
+    served = compatible(case.motor_parameters, case.drive_parameters).any(axis=1)
+    if not (of_kind & served).any():
+        return Problem(
+            "drives",
+            None,
+            "commutation",
+            "no drive that serves a motor",
+            f"at least one {kind} motor and a drive that serves its commutation",
+            "Add such a drive, or check commutation and current basis of motors and drives.",
+        )
     return Problem(
         "motors",
         None,
-        "",
-        f"{len(case.motors)} motors, {len(case.gearheads)} gearheads, {len(case.drives)} drives",
-        f"at least one {kind} motor and a drive that serves its commutation",
-        "Add such parts, or check the mechanism and the commutation columns.",
+        "nominal voltage",
+        f"windings that are not made for the bus of {case.surroundings.bus_nominal_v:g} V",
+        f"a nominal bus voltage of at most {case.options['largest bus over nominal voltage']:g} times the "
+        "nominal voltage of a motor",
+        "Add motors with another winding, lower the bus voltage, or raise 'largest bus over nominal voltage' "
+        "if the makers allow it.",
     )
 
 

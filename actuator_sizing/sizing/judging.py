@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Limit
 from actuator_sizing.sizing.checks import CHECKS, Check, Measure, Sets
-from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES, CheckResult
+from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES, CheckResult, Checks
 
 FloatArray = NDArray[np.float64]
 
@@ -101,9 +101,7 @@ def judge_sets(sets: Sets, checks: tuple[Check, ...], limits: tuple[Limit, ...])
     )
 
 
-def check_results(
-    sets: Sets, verdicts: Verdicts, index: int, segment_at: list[str]
-) -> tuple[CheckResult, ...]:
+def check_results(sets: Sets, verdicts: Verdicts, index: int, segment_at: list[str]) -> Checks:
     """The checks of one set in full, for report and results.
 
     Parameters
@@ -119,7 +117,7 @@ def check_results(
 
     Returns
     -------
-    tuple of CheckResult
+    Checks
         In the order of the checks; those that do not apply are left out. [-]
     """
     results = []
@@ -160,7 +158,7 @@ def check_results(
                 is_advice=not is_binding(check, limit),
             )
         )
-    return tuple(results)
+    return Checks(results)
 
 
 def _number(value: float) -> float | None:
