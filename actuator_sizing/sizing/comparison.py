@@ -26,7 +26,7 @@ from actuator_sizing.sizing.judging import (
 from actuator_sizing.sizing.provenance import assumptions_of, questions_of
 from actuator_sizing.sizing.ranking import RANKINGS, nearest_drives, ranking_key
 from actuator_sizing.sizing.results import FAILS, NOT_CHECKED, Comparison, Rejections, SetResult
-from actuator_sizing.sizing.screening import Screened, screen
+from actuator_sizing.sizing.screening import Screened, compatible, screen
 from actuator_sizing.sizing.shortlist import evaluate_sets
 from actuator_sizing.version import __version__
 
@@ -37,6 +37,10 @@ IndexArray = NDArray[np.intp]
 Progress = Callable[[str, float], None]
 
 _KEEP = 20_000  # survivors evaluated exactly at most, the best by the ranking
+_FAR, _FEWEST_LOSERS = (
+    2.0,
+    3,
+)  # losers beyond twice the allowed value teach nothing, unless there are no others
 _NEAREST_LOSERS = 40  # motor × gearhead pairs that came closest, evaluated exactly too
 
 
@@ -172,6 +176,8 @@ def _listed(order: IndexArray, verdicts: Verdicts, index: IndexArray, wanted: in
     nearest: list[int] = []
     seen: set[tuple[int, int]] = set()
     for i in order[fails]:
+        if len(nearest) >= _FEWEST_LOSERS and verdicts.severity[i] > _FAR:
+            break
         kind = (int(index[i, 0]), int(verdicts.governing[i]))
         if kind not in seen:
             seen.add(kind)

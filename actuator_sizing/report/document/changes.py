@@ -13,7 +13,7 @@ if TYPE_CHECKING:
     from actuator_sizing.report.document.blocks import Block
     from actuator_sizing.report.revision import Revision
 
-MOST_ROWS = 40
+MOST_ROWS = 24
 
 
 def changes_section(revision: Revision) -> Section:
@@ -44,10 +44,20 @@ def changes_section(revision: Revision) -> Section:
             )
         )
     if revision.checks:
-        ordered = sorted(revision.checks, key=lambda change: not change.turned)[:MOST_ROWS]
+        turned = [change for change in revision.checks if change.turned][:MOST_ROWS]
+        rest = [
+            change
+            for change in revision.checks
+            if not change.turned and change.set_label == revision.new_leader
+        ]
+        ordered = [*turned, *rest][:MOST_ROWS]
         blocks.append(
             Table(
-                _caption("Checks that moved, changed verdicts first", len(ordered), len(revision.checks)),
+                _caption(
+                    "Verdicts that turned, then the leading set's checks that moved",
+                    len(ordered),
+                    len(revision.checks),
+                ),
                 (
                     Column("Set", weight=2.4),
                     Column("Check", weight=1.5),
