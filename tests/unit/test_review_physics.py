@@ -4,11 +4,15 @@ from dataclasses import replace
 
 import numpy as np
 
+from actuator_sizing.core.moments import mean_products, support_points
+from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
+from actuator_sizing.sizing.checks.motor import VOLTAGE
 from actuator_sizing.sizing.demand import build_demand
 from actuator_sizing.sizing.judging import ORDER, active_checks, judge_sets
 from actuator_sizing.sizing.results import FAILS
+from actuator_sizing.sizing.screening import _voltage_points as voltage_points
 from actuator_sizing.sizing.shortlist import evaluate_sets
-from tests.made_cases import GEARHEAD, SURROUNDINGS, case, cycle
+from tests.made_cases import GEARHEAD, MOTOR, SURROUNDINGS, case, cycle
 
 
 def judged(made):
@@ -44,3 +48,40 @@ def test_an_ambient_above_the_winding_limit_fails_the_winding_temperature():
     at = column(verdicts, "winding_temperature")
     assert ORDER[verdicts.codes[0, at]] == FAILS
     assert np.isinf(verdicts.utilisation[0, at])
+
+
+def block_of(made):
+    """Every gearhead against every motor, as the screening sees them."""
+    demand = build_demand(made)
+    gearheads = GearheadSide.of(
+        made.gearhead_parameters,
+        mean_products(demand.duration_s, demand.functions),
+        support_points(demand.functions, demand.flow),
+        voltage_points(demand),
+    )
+    motors = MotorSide.of(made.motor_parameters, made.surroundings)
+    return Block(demand, made.surroundings, 10.0, motors, gearheads)
+
+
+def test_the_bound_of_the_voltage_holds_for_a_saturated_motor_that_brakes():
+    # Lowering a heavy load fast, never lifting it: at top speed the motor brakes with much current.
+    made = case(
+        "belt",
+        {"pulley diameter": 0.06, "moving mass": 30.0, "inclination": -np.pi / 2},
+        cycle(
+            {"law": "speed ramp", "end_speed": 2.4, "duration_s": 2.0},
+            {"law": "constant speed", "end_speed": 2.4, "duration_s": 0.5},
+            {"law": "speed ramp", "end_speed": 0.0, "duration_s": 0.2},
+            {"law": "dwell", "duration_s": 3.0, "brake_closed": True},
+        ),
+        motors=[
+            {**MOTOR, "peak_torque_nm": 6.1, "resistance_ohm": 0.4, "pole_pairs": np.nan, "inductance_h": 0.0}
+        ],
+        gearheads=[{**GEARHEAD, "ratio": 5.0}],
+    )
+    sets, verdicts = judged(made)
+    bound = VOLTAGE.bound(block_of(made))[0, 0]
+    exact = verdicts.utilisation[0, column(verdicts, "voltage")]
+    # 1e-9: rounding of two orders of summation, as the screening allows.
+    assert bound <= exact * (1.0 + 1e-9)
+    assert sets.pairs.voltage_peak_v[0] > 0.0
