@@ -85,3 +85,24 @@ def test_the_bound_of_the_voltage_holds_for_a_saturated_motor_that_brakes():
     # 1e-9: rounding of two orders of summation, as the screening allows.
     assert bound <= exact * (1.0 + 1e-9)
     assert sets.pairs.voltage_peak_v[0] > 0.0
+
+
+def test_braking_above_the_no_load_speed_is_beyond_the_speed_torque_plane():
+    # The load overhauls the motor at a speed whose EMF alone exceeds the voltage, with hardly any torque.
+    made = case(
+        "rotary load",
+        {"load inertia": 0.01},
+        cycle(
+            {"law": "speed ramp", "end_speed": 70.0, "duration_s": 4.0, "process_effort": -8.0},
+            {"law": "constant speed", "end_speed": 70.0, "duration_s": 0.5, "process_effort": -8.0},
+            {"law": "speed ramp", "end_speed": 0.0, "duration_s": 4.0, "process_effort": -8.0},
+        ),
+        motors=[{**MOTOR, "torque_constant_nm_per_a": 1.2}],
+        gearheads=[{**GEARHEAD, "ratio": 5.0}],
+    )
+    sets, verdicts = judged(made)
+    assert sets.pairs.torque_peak_nm[0] < 0.25 * MOTOR["peak_torque_nm"]
+    assert sets.pairs.voltage_peak_without_inductance_v[0] > sets.pairs.voltage_available_v[0]
+    at = column(verdicts, "speed_torque")
+    assert ORDER[verdicts.codes[0, at]] == FAILS
+    assert "braking current of at least" in verdicts.checks[at].working(sets, 0)
