@@ -108,7 +108,7 @@ def compare(
         demand=demand,
         ranked_by=ranked_by,
         sets=results,
-        rejections=_rejections(screened, verdicts, survivor_rows),
+        rejections=_rejections(screened, verdicts, index, survivor_rows),
         candidates=candidate_table(case, sets, verdicts, index, order, screened),
         cycle=cycle_quantities(demand),
         assumptions=assumptions_of(case, results[0]),
@@ -192,11 +192,24 @@ def _is_survivor(index: IndexArray, survivors: IndexArray) -> NDArray[np.bool_]:
     return np.array([tuple(row) in known for row in index.tolist()], dtype=bool)
 
 
-def _rejections(screened: Screened, verdicts: Verdicts, survivor: NDArray[np.bool_]) -> Rejections:
-    failed = survivor & (verdicts.verdict == ORDER.index(FAILS))
+def _rejections(
+    screened: Screened, verdicts: Verdicts, index: IndexArray, survivor: NDArray[np.bool_]
+) -> Rejections:
+    fails = verdicts.verdict == ORDER.index(FAILS)
+    failed = survivor & fails
     counts = Counter(screened.rejected_by_check)
     for column in verdicts.governing[failed]:
         counts[verdicts.checks[column].key] += 1
+    # A loser that was evaluated after all counts under what governs it exactly, as the list of candidates says.
+    bound_of = {
+        tuple(row): int(check) for row, check in zip(screened.lost.tolist(), screened.lost_check, strict=True)
+    }
+    for row, column in zip(
+        index[fails & ~survivor].tolist(), verdicts.governing[fails & ~survivor], strict=True
+    ):
+        if tuple(row) in bound_of:
+            counts[screened.check_names[bound_of[tuple(row)]]] -= 1
+            counts[verdicts.checks[column].key] += 1
     passing = survivor & (verdicts.verdict < ORDER.index(NOT_CHECKED))
     rejected = screened.screened - screened.survivor_count + int(failed.sum())
     return Rejections(
@@ -204,7 +217,7 @@ def _rejections(screened: Screened, verdicts: Verdicts, survivor: NDArray[np.boo
         incompatible=screened.incompatible,
         screened=screened.screened,
         rejected=rejected,
-        by_check=dict(sorted(counts.items(), key=lambda item: -item[1])),
+        by_check=dict(sorted(((k, n) for k, n in counts.items() if n), key=lambda item: -item[1])),
         survivors=screened.survivor_count,
         confirmed_passing=int(passing.sum()),
         evaluated=int(survivor.sum()),

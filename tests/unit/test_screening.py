@@ -157,3 +157,11 @@ def test_a_comparison_lists_passing_sets_by_price_and_then_the_nearest_losers():
         comparison.rejections.rejected + comparison.rejections.confirmed_passing
         <= comparison.rejections.screened
     )
+
+
+@pytest.mark.parametrize("seed", range(12))
+def test_the_counts_of_losers_agree_with_the_list_of_candidates(seed):
+    comparison = compare(random_case(seed))
+    frame = comparison.candidates
+    listed = frame[frame["verdict"] == FAILS]["governing_check"].value_counts().to_dict()
+    assert listed == dict(comparison.rejections.by_check)
