@@ -3,6 +3,7 @@
 from dataclasses import replace
 
 import numpy as np
+import pytest
 
 from actuator_sizing.core.moments import mean_products, support_points
 from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
@@ -12,7 +13,7 @@ from actuator_sizing.sizing.judging import ORDER, active_checks, judge_sets
 from actuator_sizing.sizing.results import FAILS
 from actuator_sizing.sizing.screening import _voltage_points as voltage_points
 from actuator_sizing.sizing.shortlist import evaluate_sets
-from tests.made_cases import GEARHEAD, MOTOR, SURROUNDINGS, case, cycle
+from tests.made_cases import DIRECT, GEARHEAD, MOTOR, SURROUNDINGS, case, cycle
 
 
 def judged(made):
@@ -106,3 +107,25 @@ def test_braking_above_the_no_load_speed_is_beyond_the_speed_torque_plane():
     at = column(verdicts, "speed_torque")
     assert ORDER[verdicts.codes[0, at]] == FAILS
     assert "braking current of at least" in verdicts.checks[at].working(sets, 0)
+
+
+def test_a_long_overload_is_not_smoothed_out_where_only_the_total_thermal_resistance_is_known():
+    # 60 s at 1.7 times the continuous torque, then 180 s at rest: the RMS is below the rating, the winding is not.
+    stated = {**MOTOR, "mass_kg": 2.6, "magnet_coefficient_per_k": 0.0, "continuous_ambient_degc": 35.0,
+              "thermal_resistance_winding_k_w": 0.5, "winding_time_constant_s": 40.0}  # fmt: skip
+    total = {**stated, "thermal_resistance_winding_k_w": 1.6, "thermal_resistance_housing_k_w": np.nan}
+    made = case(
+        "rotary load",
+        {"load inertia": 1e-4},
+        cycle(
+            {"law": "dwell", "duration_s": 60.0, "process_effort": 5.6},
+            {"law": "dwell", "duration_s": 180.0},
+        ),
+        motors=[stated, total],
+        gearheads=[DIRECT],
+    )
+    sets, verdicts = judged(made)
+    at = column(verdicts, "winding_temperature")
+    assert [ORDER[code] for code in verdicts.codes[:, at]] == [FAILS, FAILS]
+    # Copper of 8 % of the mass is 80 J/K, which is what the full sheet says too (40 s over 0.5 K/W).
+    assert sets.pairs.winding_max_degc[1] == pytest.approx(sets.pairs.winding_max_degc[0], rel=0.01)
