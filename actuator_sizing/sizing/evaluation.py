@@ -30,7 +30,7 @@ from actuator_sizing.core.thermal import (
     subpiece_means,
 )
 from actuator_sizing.sizing.demand import Demand
-from actuator_sizing.sizing.thermal_data import thermal_network
+from actuator_sizing.sizing.thermal_data import fastest_time_constant, thermal_network
 
 FloatArray = NDArray[np.float64]
 
@@ -323,7 +323,7 @@ def heat_loss(demand: Demand, motors: MotorParameters, judged: JudgedMotor, c: P
     cold = (judged.torque_constant_nm_per_a / motors.torque_constant_nm_per_a)[:, None, None]
     copper = _column(motors.resistance_ohm) * (c.current_a * cold) ** 2
     by_speed = speed_loss(motors, c.motor_speed_rad_s)
-    tau = motors.winding_time_constant_s
+    tau = fastest_time_constant(motors)
     shortest = float(np.nanmin(tau)) if np.isfinite(tau).any() else np.inf
     counts = subpiece_counts(demand.duration_s, copper, shortest)
     return HeatLoss(

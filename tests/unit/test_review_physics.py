@@ -129,3 +129,21 @@ def test_a_long_overload_is_not_smoothed_out_where_only_the_total_thermal_resist
     assert [ORDER[code] for code in verdicts.codes[:, at]] == [FAILS, FAILS]
     # Copper of 8 % of the mass is 80 J/K, which is what the full sheet says too (40 s over 0.5 K/W).
     assert sets.pairs.winding_max_degc[1] == pytest.approx(sets.pairs.winding_max_degc[0], rel=0.01)
+
+
+def test_a_winding_time_constant_from_the_mass_resolves_a_long_move_as_a_stated_one_does():
+    # One move of a minute, many time constants of a light winding: its mean loss does not stand for its course.
+    light = {
+        **MOTOR,
+        "mass_kg": 0.8,
+        "winding_time_constant_s": np.nan,
+        "thermal_resistance_winding_k_w": 0.6,
+    }
+    stated = {**light, "winding_time_constant_s": 0.08 * 0.8 * 385.0 * 0.6}
+    values = {"load inertia": 100.0}
+    move = {"law": "simple harmonic", "displacement": 25.0, "duration_s": 60.0}
+    peaks = []
+    for motor in (light, stated):
+        made = case("rotary load", values, cycle(move), motors=[motor], gearheads=[DIRECT])
+        peaks.append(float(judged(made)[0].pairs.winding_max_degc[0]))
+    assert peaks[0] == pytest.approx(peaks[1], rel=1e-9)  # the same network, so only rounding
