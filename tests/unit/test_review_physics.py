@@ -6,6 +6,7 @@ import numpy as np
 import pytest
 
 from actuator_sizing.core.moments import mean_products, support_points
+from actuator_sizing.errors import InputError
 from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
 from actuator_sizing.sizing.checks.motor import VOLTAGE
 from actuator_sizing.sizing.demand import build_demand
@@ -147,3 +148,27 @@ def test_a_winding_time_constant_from_the_mass_resolves_a_long_move_as_a_stated_
         made = case("rotary load", values, cycle(move), motors=[motor], gearheads=[DIRECT])
         peaks.append(float(judged(made)[0].pairs.winding_max_degc[0]))
     assert peaks[0] == pytest.approx(peaks[1], rel=1e-9)  # the same network, so only rounding
+
+
+STEEP = {"lead": 0.1, "screw diameter": 0.008, "thread friction coefficient": 0.3, "moving mass": 50.0}
+
+
+def test_a_thread_that_jams_is_refused():
+    # tan(lead angle) · friction = 3.98 · 0.3 > 1: the torque would come out negative, as if the load helped.
+    made = case("lead screw", STEEP, cycle({"law": "trapezoid", "displacement": 0.5, "duration_s": 1.0}))
+    with pytest.raises(InputError, match=r"below 0.251"):
+        build_demand(made)
+
+
+def test_bearings_of_a_self_locking_screw_cost_torque_in_both_directions():
+    values = {"lead": 0.004, "screw diameter": 0.02, "thread friction coefficient": 0.15, "moving mass": 60.0,
+              "inclination": np.pi / 2}  # fmt: skip
+    down = {"law": "constant speed", "displacement": -0.1, "end_speed": -0.05}
+    demands = [
+        build_demand(case("lead screw", {**values, "efficiency": rest}, cycle(
+            {"law": "speed ramp", "end_speed": -0.05, "duration_s": 0.5}, down)))
+        for rest in (1.0, 0.9)
+    ]  # fmt: skip
+    free, lossy = (float(demand.shaft_torque[-1, 0]) for demand in demands)
+    assert free < 0.0  # the screw is driven down
+    assert lossy == pytest.approx(free / 0.9, rel=1e-12)  # the motor gives what the bearings take, too
