@@ -253,7 +253,10 @@ def _evaluate_chunk(
         torque_min_nm=-largest(-T)[0],
         torque_rms_nm=np.sqrt(demand.mean(T**2)),
         shaft_torque_peak_nm=largest_magnitude(c.shaft_torque_nm)[0],
-        current_peak_a=largest_magnitude(i)[0],
+        # From the largest torque, since current rises with it: near saturation i itself is hard to interpolate.
+        current_peak_a=current_of_torque(
+            torque_peak, judged.torque_constant_nm_per_a, judged.saturation_per_a2
+        ),
         current_rms_a=np.sqrt(demand.mean(i**2)),
         speed_peak_rad_s=speed_peak,
         speed_peak_at_s=demand.instant(speed_piece, speed_position),

@@ -5,6 +5,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from actuator_sizing.core.machine import judge, torque_of_current
 from actuator_sizing.core.moments import mean_products, support_points
 from actuator_sizing.errors import InputError
 from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
@@ -172,3 +173,22 @@ def test_bearings_of_a_self_locking_screw_cost_torque_in_both_directions():
     free, lossy = (float(demand.shaft_torque[-1, 0]) for demand in demands)
     assert free < 0.0  # the screw is driven down
     assert lossy == pytest.approx(free / 0.9, rel=1e-12)  # the motor gives what the bearings take, too
+
+
+def test_the_peak_current_of_a_saturated_motor_belongs_to_the_peak_torque():
+    made = case(
+        "rotary load",
+        {"load inertia": 0.02, "friction torque": 0.3},
+        cycle(
+            {"law": "cycloidal", "displacement": 6.0, "duration_s": 0.42}, {"law": "dwell", "duration_s": 1.0}
+        ),
+        motors=[{**MOTOR, "peak_torque_nm": 5.0}],
+        gearheads=[DIRECT],
+    )
+    sets, _ = judged(made)
+    motor = judge(made.motor_parameters, made.surroundings)
+    torque = torque_of_current(
+        sets.pairs.current_peak_a, motor.torque_constant_nm_per_a, motor.saturation_per_a2
+    )
+    assert 0.9 * 5.0 < sets.pairs.torque_peak_nm[0] < 5.0  # close to saturation
+    assert torque[0] == pytest.approx(sets.pairs.torque_peak_nm[0], rel=1e-12)  # an inverse, only rounding
