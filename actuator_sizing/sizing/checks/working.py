@@ -77,7 +77,7 @@ def instant_of(sets: Sets, i: int, at_s: float, largest: str) -> Instant:
         x = np.clip(2.0 * (at_s - demand.start_s[piece]) / demand.duration_s[piece] - 1.0, -1.0, 1.0)
         return float(interpolate(values[piece], np.array([x]))[0])
 
-    piece = int(max(inside, key=lambda p: read(decides, p)))
+    piece = int(max(inside.tolist(), key=lambda p: read(decides, p)))
     n = float(gearhead.ratio[0])
     factor = stage_factor(demand.flow[piece : piece + 1], gearhead.efficiency, gearhead.efficiency_back)
     torque = np.array([read(c.torque_nm[0], piece)])
