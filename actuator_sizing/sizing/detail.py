@@ -17,6 +17,7 @@ from actuator_sizing.core.machine import (
     torque_of_current,
 )
 from actuator_sizing.core.parameters import CURRENT_BASES, GearheadParameters, MotorParameters
+from actuator_sizing.core.quadrature import piece_means
 from actuator_sizing.core.step_response import StepResponse, voltage_step
 from actuator_sizing.core.thermal import HeatLoss, ThermalNetwork
 from actuator_sizing.core.warm_up import temperature_course, temperatures_after, warm_up
@@ -131,6 +132,7 @@ def set_detail(model: SetModel, sets: Sets, index: int) -> SetDetail:
         envelope=_envelope(model),
         step_response=pd.DataFrame(dict(zip(("time_s", "current_a", "speed_rad_s"), step, strict=True))),
         levels=_levels(model, sets, index),
+        segments=_segment_frame(model),
     )
 
 
@@ -170,6 +172,28 @@ def _cycle_frame(model: SetModel) -> pd.DataFrame:
         "losses_nm": parts["losses"],
     }
     return pd.DataFrame({name: np.ravel(values) for name, values in flat.items()})
+
+
+def _segment_frame(model: SetModel) -> pd.DataFrame:
+    """RMS torque and current of every segment, and the integral that the RMS current of the cycle is made of."""
+    import pandas as pd
+
+    d, c = model.demand, model.course
+    count = len(model.case.segments)
+
+    def sums(values: FloatArray) -> FloatArray:
+        return np.bincount(d.segment, piece_means(values) * d.duration_s, minlength=count)
+
+    duration = np.bincount(d.segment, d.duration_s, minlength=count)
+    torque, current = sums(c.torque_nm[0] ** 2), sums(c.current_a[0] ** 2)
+    lasting = np.where(duration > 0.0, duration, 1.0)
+    return pd.DataFrame(
+        {
+            "torque_rms_nm": np.sqrt(torque / lasting),
+            "current_rms_a": np.sqrt(current / lasting),
+            "current_squared_a2_s": current,
+        }
+    )
 
 
 def _envelope(model: SetModel) -> pd.DataFrame:
