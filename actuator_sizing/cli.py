@@ -133,7 +133,6 @@ def compare(
     Compares all motor x gearhead x drive sets and ranks those that pass. The report goes to
     reports/<case name>/ below the current folder unless --out says otherwise.
     """
-    from actuator_sizing.case.audit import audit_catalogs
     from actuator_sizing.case.reading import read_case
     from actuator_sizing.console import ProgressBar, print_problems, print_summary
     from actuator_sizing.sizing import compare as compare_sets
@@ -152,7 +151,7 @@ def compare(
 
             progress("writing the report", 0.0)
             written = write_report(comparison, out or _report_folder(understood.name), pdf=pdf, since=earlier)
-    print_problems(dict.fromkeys((*understood.problems, *audit_catalogs(understood))), at_most=10)
+    print_problems(understood.problems, at_most=10)
     if as_json:
         from actuator_sizing.report.json_results import render_json
 
