@@ -101,7 +101,7 @@ def compare(
     if screened.screened == 0:
         raise InputError([_no_set(case)])
     losers = nearest_drives(case, demand, screened.nearest_losers)
-    index = np.unique(np.concatenate([screened.survivors, losers]), axis=0)
+    index = np.unique(np.concatenate([screened.survivors, losers, screened.nearest_by_drive]), axis=0)
     sets = evaluate_sets(case, demand, index, _stage(progress, "evaluation"))
     verdicts = judge_sets(sets, checks, limits)
     order = _rank(case, sets, verdicts, index, ranked_by)

@@ -54,6 +54,8 @@ class Screened:
     survivors: NDArray[np.intp]  # (S, 3)
     #: motor, gearhead index of the rejected pairs that came closest, nearest first
     nearest_losers: NDArray[np.intp]  # (L, 2)
+    #: motor, gearhead, drive index of the sets that only their drive rejects, nearest first
+    nearest_by_drive: NDArray[np.intp]  # (L, 3)
     #: the rejected sets with what governs them, only where all sets are at most `LISTED_SETS`
     lost: NDArray[np.intp]  # (R, 3)
     lost_check: NDArray[np.intp]  # (R,) index into check_names
@@ -199,7 +201,7 @@ def screen(
     losses = _Losses(
         (*(check.key for check in context.checks), *context.drive_side.names), listed=total <= LISTED_SETS
     )
-    pool, nearest = _Pool(keep), _Pool(losers)
+    pool, nearest, by_drive = _Pool(keep), _Pool(losers), _Pool(losers)
     survivors = screened = 0
     for start in range(0, len(motor_index), _MOTORS_PER_BLOCK):
         m = motor_index[start : start + _MOTORS_PER_BLOCK]
@@ -207,7 +209,7 @@ def screen(
         served = compatible(motor_side.motors, drives)
         for g, part in gearhead_parts:
             block = Block(demand, case.surroundings, context.recommended_inertia_ratio, motor_side, part)
-            survivors += _screen_block(context, block, m, g, served, pool, nearest, losses)
+            survivors += _screen_block(context, block, m, g, served, pool, nearest, by_drive, losses)
         screened += int(served.sum()) * len(gearhead_index)
         if progress is not None:
             progress((start + len(m)) / len(motor_index))
@@ -223,6 +225,7 @@ def screen(
         survivor_count=survivors,
         survivors=pool.sorted(3),
         nearest_losers=nearest.sorted(2),
+        nearest_by_drive=by_drive.sorted(3),
         lost=lost,
         lost_check=lost_check,
         lost_bound=lost_bound,
@@ -328,6 +331,7 @@ def _screen_block(
     served: NDArray[np.bool_],
     pool: _Pool,
     nearest: _Pool,
+    by_drive: _Pool,
     losses: _Losses,
 ) -> int:
     """Screen one block; returns how many sets survive."""
@@ -359,7 +363,7 @@ def _screen_block(
     if len(i):
         nearest.add(np.column_stack([motor_index[i], gearhead_index[j]]), worst[j, i])
     return _screen_drives(
-        context, block, ~fails, served, motor_index, gearhead_index, worst, pool, nearest, losses
+        context, block, ~fails, served, motor_index, gearhead_index, worst, pool, by_drive, losses
     )
 
 
@@ -398,7 +402,7 @@ def _screen_drives(
     gearhead_index: NDArray[np.intp],
     worst: FloatArray,
     pool: _Pool,
-    nearest: _Pool,
+    by_drive: _Pool,
     losses: _Losses,
 ) -> int:
     """Hold the pairs that may pass against every drive; returns how many sets survive."""
@@ -421,21 +425,15 @@ def _screen_drives(
         check = len(context.checks) + stack.argmax(axis=0)
         out_row, out_drive = np.nonzero(ok & ~survives)
         losses.add(check[out_row, out_drive], np.ones(len(out_row), dtype=np.intp))
-        losses.keep(
-            np.column_stack([motor_index[r[out_row]], gearhead_index[c[out_row]], out_drive]),
-            check[out_row, out_drive],
-            drive_worst[out_row, out_drive],
-        )
+        lost = np.column_stack([motor_index[r[out_row]], gearhead_index[c[out_row]], out_drive])
+        losses.keep(lost, check[out_row, out_drive], drive_worst[out_row, out_drive])
+        by_drive.add(lost, drive_worst[out_row, out_drive])
         k, d = np.nonzero(survives)
         total += len(k)
         if len(k):
             m, g = motor_index[r[k]], gearhead_index[c[k]]
             bound = np.maximum(worst[c[k], r[k]], drive_worst[k, d])
             pool.add(np.column_stack([m, g, d]), _key(context, block, m, g, d, r[k], c[k], bound))
-        none = ok.any(axis=1) & ~survives.any(axis=1)
-        if none.any():
-            closest = np.where(ok, drive_worst, np.inf).min(axis=1)
-            nearest.add(np.column_stack([motor_index[r[none]], gearhead_index[c[none]]]), closest[none])
     return total
 
 
