@@ -117,6 +117,13 @@ def audit(case: Path) -> int:
     type=click.Path(path_type=Path),
     help="Earlier results.json, or its folder: say which inputs changed and what moved.",
 )
+@click.option(
+    "--levers",
+    type=click.IntRange(min=0),
+    default=0,
+    metavar="N",
+    help="For the N nearest losers, find the smallest change of each lever that lets them pass.",
+)
 @click.option("--pdf/--no-pdf", default=None, help="Write the PDF too; default: if its package is installed.")
 @_debug
 def compare(
@@ -126,6 +133,7 @@ def compare(
     detail: int | None,
     as_json: bool,
     since: Path | None,
+    levers: int,
     pdf: bool | None,
 ) -> int:
     """Size CASE and write the report.
@@ -144,7 +152,9 @@ def compare(
         earlier = read_results(since)  # before the report, which may replace it
     understood = read_case(case)
     with ProgressBar() as progress:
-        comparison = compare_sets(understood, rank_by=rank_by, detail=detail, progress=progress)
+        comparison = compare_sets(
+            understood, rank_by=rank_by, detail=detail, levers=levers, progress=progress
+        )
         written: tuple[Path, ...] = ()
         if out is not None or not as_json:
             from actuator_sizing.report import write_report

@@ -45,6 +45,8 @@ class Screened:
     survivors: NDArray[np.intp]  # (S, 3)
     #: motor, gearhead index of the rejected pairs that came closest, nearest first
     nearest_losers: NDArray[np.intp]  # (L, 2)
+    #: motor, gearhead, drive index of the sets that only their drive rejects, nearest first
+    nearest_by_drive: NDArray[np.intp]  # (L, 3)
     #: the rejected sets with what governs them, only where all sets are at most `LISTED_SETS`
     lost: NDArray[np.intp]  # (R, 3)
     lost_check: NDArray[np.intp]  # (R,) index into check_names
@@ -98,7 +100,8 @@ def screen(
     drive_side = DriveSide(case, allowed)
     names = (*(check.key for check in bounded), *drive_side.names)
     losses = Losses(names, listed=total <= LISTED_SETS)
-    run = _Run(case, bounded, allowed, drive_side, key, Pool(keep), Pool(losers), losses)
+    pools = (Pool(keep), Pool(losers), Pool(losers))
+    run = _Run(case, bounded, allowed, drive_side, key, *pools, losses)
     gearhead_side = GearheadSide.of(case.gearhead_parameters.take(gearhead_index), demand)
     gearhead_parts = [
         (
@@ -131,6 +134,7 @@ def screen(
         survivor_count=survivors,
         survivors=run.pool.sorted(3),
         nearest_losers=run.nearest.sorted(2),
+        nearest_by_drive=run.by_drive.sorted(3),
         lost=lost,
         lost_check=lost_check,
         lost_bound=lost_bound,
@@ -149,6 +153,7 @@ class _Run:
     key: str
     pool: Pool
     nearest: Pool
+    by_drive: Pool
     losses: Losses
 
 
@@ -239,21 +244,15 @@ def _screen_drives(run: _Run, tile: _Tile, passing: NDArray[np.bool_], worst: Fl
         check = len(run.checks) + stack.argmax(axis=0)
         out_row, out_drive = np.nonzero(ok & ~survives)
         losses.add(check[out_row, out_drive], np.ones(len(out_row), dtype=np.intp))
-        losses.keep(
-            np.column_stack([tile.pairs(c[out_row], r[out_row]), out_drive]),
-            check[out_row, out_drive],
-            drive_worst[out_row, out_drive],
-        )
+        lost = np.column_stack([tile.pairs(c[out_row], r[out_row]), out_drive])
+        losses.keep(lost, check[out_row, out_drive], drive_worst[out_row, out_drive])
+        run.by_drive.add(lost, drive_worst[out_row, out_drive])
         k, d = np.nonzero(survives)
         total += len(k)
         if len(k):
             sets = np.column_stack([tile.pairs(c[k], r[k]), d])
             bound = np.maximum(worst[c[k], r[k]], drive_worst[k, d])
             run.pool.add(sets, _key(run, block, sets, r[k], c[k], bound))
-        none = ok.any(axis=1) & ~survives.any(axis=1)
-        if none.any():
-            closest = np.where(ok, drive_worst, np.inf).min(axis=1)
-            run.nearest.add(tile.pairs(c[none], r[none]), closest[none])
     return total
 
 
