@@ -68,7 +68,7 @@ def rerated_continuous_current(
 def _current_at_limit(
     motors: MotorParameters, surroundings: Surroundings, K: FloatArray
 ) -> FloatArray | float:
-    """Current with the winding at its limit over current as judged, for the same torque.
+    """Current with the winding at its limit over current as judged, for the same torque (saturation left out).
 
     The rating belongs to the winding limit; a temperature stated for judging voltage must not soften it.
     """
