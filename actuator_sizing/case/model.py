@@ -9,7 +9,7 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.core.mechanisms import Mechanism
+from actuator_sizing.core.mechanisms import SHAFT, Mechanism
 from actuator_sizing.core.motion_laws import Phase
 from actuator_sizing.core.parameters import (
     DriveParameters,
@@ -129,6 +129,11 @@ class Case:
     def cycle_duration_s(self) -> float:
         """Duration of one cycle. [s]."""
         return sum(segment.duration_s for segment in self.segments)
+
+    @property
+    def motion_at_shaft(self) -> bool:
+        """Whether the duty cycle states the motion of the driven shaft rather than that of the load."""
+        return (self.options.get("motion stated at") or self.mechanism.motion_at) == SHAFT
 
     def catalog_entries(self, table: str, index: int) -> tuple[Entry, ...]:
         """Every known value of one catalog row, as entered and as understood.
