@@ -9,6 +9,7 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
+from actuator_sizing.core.inertias import Part
 from actuator_sizing.core.mechanisms import SHAFT, Mechanism
 from actuator_sizing.core.motion_laws import Phase
 from actuator_sizing.core.parameters import (
@@ -124,6 +125,7 @@ class Case:
     entries: tuple[Entry, ...]  # axis, duty cycle and limits; catalog entries come from `catalog_entries`
     problems: tuple[Problem, ...]  # warnings and notes only; errors never make a Case
     fingerprint: str
+    parts: tuple[Part, ...] = ()  # inertia inventory; already added to mechanism and gearhead parameters
 
     @property
     def cycle_duration_s(self) -> float:

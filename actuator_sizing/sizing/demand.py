@@ -256,9 +256,11 @@ def _places(case: Case) -> tuple[_Place, ...]:
     for place in places:
         for phase in place.segment.phases:
             for part in _halves(phase):
-                for name, values in _load(part, place).items():
-                    if name in scale:
-                        scale[name] = max(scale[name], float(np.max(np.abs(values))))
+                found = _load(part, place)
+                # Causes may cancel, but their rounding does not: the sum of their sizes is the measure.
+                found |= {"effort": found["effort_size"], "lossless_torque": found["effort_size"] * found["lever"]}
+                for name in _RESOLVED:
+                    scale[name] = max(scale[name], float(np.max(np.abs(found[name]))))
     return tuple(replace(place, scale=scale) for place in places)
 
 
@@ -364,6 +366,7 @@ def _load(stretch: _Stretch, place: _Place, direction_of_load: float | None = No
         "speed": v,
         "acceleration": a,
         "effort": effort,
+        "effort_size": sum(abs(part) for part in (efforts.inertia, efforts.gravity, efforts.friction, efforts.process)),
         "lossless_torque": effort * lever,
         "shaft_speed": shaft_speed,
         "shaft_acceleration": shaft_acceleration,
