@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, fields, replace
-from functools import cached_property
+from functools import cached_property, lru_cache
 from typing import Any
 
 import numpy as np
@@ -298,16 +298,23 @@ def _resolved(stretch: _Stretch, place: _Place, names: tuple[str, ...], depth: i
     half = stretch.middle
     parts = (_Stretch(stretch.phase, stretch.begin, half), _Stretch(stretch.phase, half, stretch.end))
     whole = _load(stretch, place)
-    between = 0.5 * (lobatto()[0] - 1.0)
-    for part, at in zip(parts, (between, between + 1.0), strict=True):
+    values = np.array([whole[name] for name in names])
+    allowed = _RESOLUTION * np.array([place.scale[name] for name in names])
+    for part, matrix in zip(parts, _to_halves(), strict=True):
         exact = _load(part, place, whole["load_direction"])
-        for name in names:
-            error = np.max(np.abs(interpolate(whole[name], at) - exact[name]))
-            if error > _RESOLUTION * place.scale[name] and depth < _DEEPEST:
-                for finer in parts:
-                    yield from _resolved(finer, place, names, depth + 1)
-                return
+        error = np.max(np.abs(values @ matrix - np.array([exact[name] for name in names])), axis=1)
+        if np.any(error > allowed) and depth < _DEEPEST:
+            for finer in parts:
+                yield from _resolved(finer, place, names, depth + 1)
+            return
     yield stretch
+
+
+@lru_cache(maxsize=1)
+def _to_halves() -> tuple[FloatArray, FloatArray]:
+    """Matrices from node values to the interpolant at the nodes of the first and second half."""
+    first = 0.5 * (lobatto()[0] - 1.0)
+    return interpolate(np.eye(NODES), first), interpolate(np.eye(NODES), first + 1.0)
 
 
 def _same_power(stretch: _Stretch, place: _Place) -> Iterator[dict[str, Any]]:
