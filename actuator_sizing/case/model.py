@@ -121,7 +121,8 @@ class Case:
     drive_parameters: DriveParameters
     limits: Mapping[str, Limit]
     tolerances: tuple[Tolerance, ...]
-    options: Mapping[str, float | str | None]  # by name, e.g. "rank by"; what mechanism and surroundings do not hold
+    #: by name, e.g. "rank by": what mechanism and surroundings do not hold
+    options: Mapping[str, float | str | None]
     entries: tuple[Entry, ...]  # axis, duty cycle and limits; catalog entries come from `catalog_entries`
     problems: tuple[Problem, ...]  # warnings and notes only; errors never make a Case
     fingerprint: str
@@ -136,6 +137,29 @@ class Case:
     def motion_at_shaft(self) -> bool:
         """Whether the duty cycle states the motion of the driven shaft rather than that of the load."""
         return (self.options.get("motion stated at") or self.mechanism.motion_at) == SHAFT
+
+    def number(self, option: str) -> float:
+        """Value of an option that is a number and has a default.
+
+        Parameters
+        ----------
+        option : str
+            Name in the `axis` table.
+
+        Returns
+        -------
+        float
+            In SI. [-]
+
+        Raises
+        ------
+        TypeError
+            If the option is a word, or has neither value nor default.
+        """
+        value = self.options[option]
+        if not isinstance(value, int | float):
+            raise TypeError(f"option '{option}' is not a number but {value!r}")
+        return float(value)
 
     def catalog_entries(self, table: str, index: int) -> tuple[Entry, ...]:
         """Every known value of one catalog row, as entered and as understood.

@@ -14,7 +14,9 @@ from actuator_sizing.errors import InputError, Problem
 from actuator_sizing.sizing.candidates import candidate_table
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import build_demand, cycle_quantities
-from actuator_sizing.sizing.detail import SetModel, commissioning_quantities, quantities, set_detail
+from actuator_sizing.sizing.detail import set_detail
+from actuator_sizing.sizing.fitting import compatible
+from actuator_sizing.sizing.inertias import inertia_shares
 from actuator_sizing.sizing.judging import (
     ORDER,
     Verdicts,
@@ -24,9 +26,11 @@ from actuator_sizing.sizing.judging import (
     judge_sets,
 )
 from actuator_sizing.sizing.provenance import assumptions_of, questions_of
+from actuator_sizing.sizing.quantities import commissioning_quantities, quantities
 from actuator_sizing.sizing.ranking import RANKINGS, nearest_drives, ranking_key
 from actuator_sizing.sizing.results import FAILS, NOT_CHECKED, Comparison, Rejections, SetResult
-from actuator_sizing.sizing.screening import Screened, compatible, screen
+from actuator_sizing.sizing.screening import Screened, screen
+from actuator_sizing.sizing.set_model import SetModel
 from actuator_sizing.sizing.shortlist import evaluate_sets
 from actuator_sizing.version import __version__
 
@@ -75,7 +79,7 @@ def compare(
         raise InputError(
             [Problem("axis", None, "rank by", ranked_by, " | ".join(RANKINGS), "Choose one of these.")]
         )
-    wanted = int(detail or case.options["sets to detail"])  # type: ignore[arg-type]
+    wanted = int(detail or case.number("sets to detail"))
     demand = build_demand(case)
     checks, limits = active_checks(case.limits)
     binding = tuple(c for c, limit in zip(checks, limits, strict=True) if is_binding(c, limit))
@@ -108,11 +112,12 @@ def compare(
         demand=demand,
         ranked_by=ranked_by,
         sets=results,
-        rejections=_rejections(screened, verdicts, survivor_rows),
+        rejections=_rejections(screened, verdicts, index, survivor_rows),
         candidates=candidate_table(case, sets, verdicts, index, order, screened),
         cycle=cycle_quantities(demand),
         assumptions=assumptions_of(case, results[0]),
         questions=questions_of(results),
+        inertias=inertia_shares(case, demand, results[0].ratio),
         version=__version__,
     )
 
@@ -192,11 +197,24 @@ def _is_survivor(index: IndexArray, survivors: IndexArray) -> NDArray[np.bool_]:
     return np.array([tuple(row) in known for row in index.tolist()], dtype=bool)
 
 
-def _rejections(screened: Screened, verdicts: Verdicts, survivor: NDArray[np.bool_]) -> Rejections:
-    failed = survivor & (verdicts.verdict == ORDER.index(FAILS))
+def _rejections(
+    screened: Screened, verdicts: Verdicts, index: IndexArray, survivor: NDArray[np.bool_]
+) -> Rejections:
+    fails = verdicts.verdict == ORDER.index(FAILS)
+    failed = survivor & fails
     counts = Counter(screened.rejected_by_check)
     for column in verdicts.governing[failed]:
         counts[verdicts.checks[column].key] += 1
+    # A loser that was evaluated after all counts under what governs it exactly, as the list of candidates says.
+    bound_of = {
+        tuple(row): int(check) for row, check in zip(screened.lost.tolist(), screened.lost_check, strict=True)
+    }
+    for row, column in zip(
+        index[fails & ~survivor].tolist(), verdicts.governing[fails & ~survivor], strict=True
+    ):
+        if tuple(row) in bound_of:
+            counts[screened.check_names[bound_of[tuple(row)]]] -= 1
+            counts[verdicts.checks[column].key] += 1
     passing = survivor & (verdicts.verdict < ORDER.index(NOT_CHECKED))
     rejected = screened.screened - screened.survivor_count + int(failed.sum())
     return Rejections(
@@ -204,7 +222,7 @@ def _rejections(screened: Screened, verdicts: Verdicts, survivor: NDArray[np.boo
         incompatible=screened.incompatible,
         screened=screened.screened,
         rejected=rejected,
-        by_check=dict(sorted(counts.items(), key=lambda item: -item[1])),
+        by_check=dict(sorted(((k, n) for k, n in counts.items() if n), key=lambda item: -item[1])),
         survivors=screened.survivor_count,
         confirmed_passing=int(passing.sum()),
         evaluated=int(survivor.sum()),

@@ -14,6 +14,7 @@ from actuator_sizing.core.mechanisms.linear_load import (
     STAGE_PARAMETERS,
     RotatingDriveOfLinearLoad,
 )
+from actuator_sizing.errors import InputError, Problem
 
 STEEL_DENSITY_KG_M3 = 7850.0  # common practice for plain and alloyed steel
 
@@ -115,6 +116,18 @@ def solid_cylinder_inertia(diameter_m: float, length_m: float, density_kg_m3: fl
     return np.pi * density_kg_m3 * length_m * diameter_m**4 / 32.0
 
 
+def _jammed(lead_m: float, diameter_m: float, friction_coefficient: float) -> Problem:
+    """What to say of a thread whose lead angle and friction angle together reach 90°: turning cannot move it."""
+    return Problem(
+        "axis",
+        None,
+        "thread friction coefficient",
+        got=f"{friction_coefficient:g} with a lead of {1e3 * lead_m:g} mm on {1e3 * diameter_m:g} mm diameter",
+        allowed=f"below {np.pi * diameter_m / lead_m:.3g}, from where on the nut jams however hard the screw turns",
+        remedy="Check lead, screw diameter and friction coefficient.",
+    )
+
+
 @dataclass(frozen=True, kw_only=True)
 class Screw(RotatingDriveOfLinearLoad):
     """Screw and nut: ``φ = 2π x / lead``."""
@@ -141,6 +154,8 @@ class Screw(RotatingDriveOfLinearLoad):
         diameter = self.screw_diameter if np.isnan(stated) else stated
         if np.isnan(self.thread_friction_coefficient) or np.isnan(diameter):
             return None
+        if self._jams(diameter):
+            raise InputError([_jammed(self.lead, diameter, self.thread_friction_coefficient)])
         return screw_efficiencies(
             self.lead,
             diameter,
@@ -150,13 +165,17 @@ class Screw(RotatingDriveOfLinearLoad):
             self.collar_mean_diameter,
         )
 
+    def _jams(self, diameter: float) -> bool:
+        pressed = self.thread_friction_coefficient / np.cos(self.flank_angle)
+        return bool(pressed * self.lead >= np.pi * diameter)  # lead angle plus friction angle reach 90°
+
     def complaints(self) -> Iterable[Complaint]:
         """A thread that jams, a collar without size; self-locking is worth knowing."""
-        pair = self._from_friction
-        if pair is not None and not 0.0 < pair[0] <= 1.0:
-            yield Complaint("thread friction coefficient", f"{self.thread_friction_coefficient:.6g}",
-                            "lead angle plus friction angle below 90°",
-                            "The thread jams: check lead, diameter and friction.")  # fmt: skip
+        try:
+            pair = self._from_friction
+        except InputError as error:
+            for problem in error.problems:
+                yield Complaint(problem.column, problem.got, problem.allowed, problem.remedy)
             return
         if self.collar_friction_coefficient > 0.0 and self.collar_mean_diameter == 0.0:
             yield Complaint("collar mean diameter", "no value beside a collar friction coefficient",
@@ -183,7 +202,9 @@ class Screw(RotatingDriveOfLinearLoad):
         pair = self._from_friction
         if pair is None or not np.isnan(self.back_driving_efficiency):
             return super().efficiency_back
-        return pair[1] * (2.0 - 1.0 / self.efficiency) if pair[1] > 0.0 else pair[1]
+        if pair[1] > 0.0:
+            return pair[1] * (2.0 - 1.0 / self.efficiency)
+        return pair[1] / self.efficiency  # self-locking: the rest transmits from the motor both ways
 
     @property
     def shaft_inertia_kg_m2(self) -> float:
