@@ -82,7 +82,8 @@ def _part(
         return None
     if given("inner_diameter") >= given("diameter"):
         wrong("inner_diameter", parsed.shown_cell("inner_diameter", index),
-              f"below the diameter of {parsed.shown_cell('diameter', index)}", "Exchange or correct them.")  # fmt: skip
+              f"below the diameter of {parsed.shown_cell('diameter', index)}",
+              "Exchange or correct them.")  # fmt: skip
         return None
     mass, inertia, rule = _mass_and_inertia(shape, given)
     if np.isnan(mass) and given("offset") > 0.0:

@@ -156,8 +156,7 @@ def _duty_cycle_rows(mechanism: type[Mechanism], columns: list[Column]) -> list[
     """There, wait, back, wait: a cycle that closes."""
     fitted = _EXAMPLES.get(mechanism.name, {})
     example = {
-        column.name: fitted.get(column.name, column.example_for(mechanism.coordinate))
-        for column in columns
+        column.name: fitted.get(column.name, column.example_for(mechanism.coordinate)) for column in columns
     }
     wait = {
         "motion law": "dwell",

@@ -22,7 +22,16 @@ from actuator_sizing.case.columns import (
     key_of,
     nearest,
 )
-from actuator_sizing.core.mechanisms import LINEAR, LOAD, MASS, MECHANISMS, ROTARY, SHAFT, Mechanism, Parameter
+from actuator_sizing.core.mechanisms import (
+    LINEAR,
+    LOAD,
+    MASS,
+    MECHANISMS,
+    ROTARY,
+    SHAFT,
+    Mechanism,
+    Parameter,
+)
 
 CHECK_NAMES: tuple[tuple[str, str], ...] = (
     ("speed_torque", "peak torque over speed"),
@@ -220,7 +229,8 @@ INERTIA_COLUMNS = (
     Column("mass", "mass", "mass, where it is known; else from size and density", minimum=0.0, unit="kg"),
     Column("diameter", "length", "outer diameter of a cylinder, screw, pulley, coupling or brake; diameter that a "
            "belt runs on", positive=True, unit="mm"),
-    Column("inner diameter", "length", "bore of a hollow cylinder, pulley, coupling or brake", minimum=0.0, unit="mm"),
+    Column("inner diameter", "length", "bore of a hollow cylinder, pulley, coupling or brake", minimum=0.0,
+           unit="mm"),
     Column("length", "length", "length of a cylinder along its axis; of a block along one side", positive=True,
            unit="mm"),
     Column("width", "length", "second side of a block", positive=True, unit="mm"),
@@ -297,7 +307,11 @@ def table_for(name: str, mechanism: type[Mechanism] | None, stated_at: str = "")
     table = TABLES[name]
     if mechanism is None or name not in ("duty_cycle", "map"):
         return table
-    moved = ROTARY if (stated_at or mechanism.motion_at) == SHAFT and name == "duty_cycle" else mechanism.coordinate
+    moved = (
+        ROTARY
+        if (stated_at or mechanism.motion_at) == SHAFT and name == "duty_cycle"
+        else mechanism.coordinate
+    )
     if mechanism.drives_linear_motor:
         moved = LINEAR
     carried = mechanism.coordinate
@@ -312,7 +326,9 @@ def table_for(name: str, mechanism: type[Mechanism] | None, stated_at: str = "")
             side = carried
         elif column.kind[0] == "force":
             side = mechanism.coordinate
-        return replace(column, kind=column.kind_for(side), example=column.example_for(side), unit=column.unit_for(side))
+        return replace(
+            column, kind=column.kind_for(side), example=column.example_for(side), unit=column.unit_for(side)
+        )
 
     return replace(table, columns=tuple(resolved(column) for column in table.columns))
 

@@ -54,7 +54,9 @@ def understand(
         table: _parse(raw[table], axis, problems) for table in TABLES if table in raw and table != "axis"
     }
     motion = parsed.get("duty_cycle")
-    segments = understand_motion(motion, axis.motion_coordinate, problems) if motion and axis.mechanism else ()
+    segments = (
+        understand_motion(motion, axis.motion_coordinate, problems) if motion and axis.mechanism else ()
+    )
     mechanism = build_mechanism(axis, understand_map(parsed.get("map"), axis, problems), problems)
     if mechanism is not None and motion:
         at_shaft = (axis.word("motion_stated_at") or mechanism.motion_at) == SHAFT

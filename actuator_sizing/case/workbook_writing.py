@@ -15,10 +15,11 @@ from actuator_sizing.case.tables import TABLES, axis_quantities, table_for
 from actuator_sizing.errors import InputError, Problem
 
 if TYPE_CHECKING:
-    from actuator_sizing.core.mechanisms import Mechanism
     from xlsxwriter.format import Format
     from xlsxwriter.workbook import Workbook
     from xlsxwriter.worksheet import Worksheet
+
+    from actuator_sizing.core.mechanisms import Mechanism
 
 _MAX_ROWS, _MAX_COLUMNS, _MAX_CELL, _MAX_SHEET_NAME = 1_048_576, 16_384, 32_767, 31  # of the xlsx format
 _MAX_LIST = 255  # characters of a data-validation list

@@ -201,9 +201,7 @@ class _Stretch:
             yield _Stretch(self.phase, begin, end)
 
 
-def _largest_inertia(
-    case: Case, segment: NDArray[np.intp], position: FloatArray, lever: FloatArray
-) -> float:
+def _largest_inertia(case: Case, segment: NDArray[np.intp], position: FloatArray, lever: FloatArray) -> float:
     """Over every segment with its payload, of load and mechanism at the driven shaft. [kg·m², or kg]"""
     mechanism = case.mechanism
     if mechanism.resolved_by_nodes:
@@ -258,7 +256,10 @@ def _places(case: Case) -> tuple[_Place, ...]:
             for part in _halves(phase):
                 found = _load(part, place)
                 # Causes may cancel, but their rounding does not: the sum of their sizes is the measure.
-                found |= {"effort": found["effort_size"], "lossless_torque": found["effort_size"] * found["lever"]}
+                found |= {
+                    "effort": found["effort_size"],
+                    "lossless_torque": found["effort_size"] * found["lever"],
+                }
                 for name in _RESOLVED:
                     scale[name] = max(scale[name], float(np.max(np.abs(found[name]))))
     return tuple(replace(place, scale=scale) for place in places)
@@ -373,7 +374,9 @@ def _load(stretch: _Stretch, place: _Place, direction_of_load: float | None = No
         "speed": v,
         "acceleration": a,
         "effort": effort,
-        "effort_size": sum(abs(part) for part in (efforts.inertia, efforts.gravity, efforts.friction, efforts.process)),
+        "effort_size": sum(
+            abs(part) for part in (efforts.inertia, efforts.gravity, efforts.friction, efforts.process)
+        ),
         "lossless_torque": effort * lever,
         "shaft_speed": shaft_speed,
         "shaft_acceleration": shaft_acceleration,

@@ -38,8 +38,14 @@ def inertia_shares(case: Case, demand: Demand, ratio: float) -> tuple[InertiaSha
         return ()
     lever = _largest_lever(demand)
     at_shaft = [_at_shaft(case, part, lever, ratio) for part in case.parts]
-    behind = sum(J for part, J in zip(case.parts, at_shaft, strict=True) if part.referred_to in (LOAD, DRIVEN_SHAFT))
-    at_motor = sum(J for part, J in zip(case.parts, at_shaft, strict=True) if part.referred_to not in (LOAD, DRIVEN_SHAFT))
+    behind = sum(
+        J for part, J in zip(case.parts, at_shaft, strict=True) if part.referred_to in (LOAD, DRIVEN_SHAFT)
+    )
+    at_motor = sum(
+        J
+        for part, J in zip(case.parts, at_shaft, strict=True)
+        if part.referred_to not in (LOAD, DRIVEN_SHAFT)
+    )
     total = demand.load_inertia + at_motor
     shares = [
         InertiaShare(

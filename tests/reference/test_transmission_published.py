@@ -124,7 +124,9 @@ def test_falling_mass_drives_a_geared_rotor(efficiency, printed):
 def test_hoist_with_gear():
     # Dubey, Fundamentals of Electrical Drives, Ex. 2.1 p. 16: 1000 kg at 1.5 m/s and 1420 rpm, 85 %
     speed = 1420 * 2 * np.pi / 60
-    hoist = MECHANISMS["winch"].from_values({"drum diameter": 2 * 1.5 / speed, "moving mass": 1000.0, "efficiency": 0.85})
+    hoist = MECHANISMS["winch"].from_values(
+        {"drum diameter": 2 * 1.5 / speed, "moving mass": 1000.0, "efficiency": 0.85}
+    )
     made = replace(
         case("rotary load", {"load inertia": 1.0},
              cycle({"law": "speed ramp", "end_speed": 1.5, "duration_s": 1.0},

@@ -24,7 +24,10 @@ PROMISED = 1e-9
 q, w, t = sp.symbols("q w t")
 G = GRAVITY_M_S2
 
-TURN = ({"law": "cycloidal", "displacement": 2 * np.pi, "duration_s": 1.1}, {"law": "dwell", "duration_s": 0.2})
+TURN = (
+    {"law": "cycloidal", "displacement": 2 * np.pi, "duration_s": 1.1},
+    {"law": "dwell", "duration_s": 0.2},
+)
 BACK_AND_FORTH = (
     {"law": "4-5-6-7 polynomial", "displacement": 0.9, "duration_s": 0.8, "payload": 1.5},
     {"law": "dwell", "duration_s": 0.1, "payload": 1.5},
@@ -42,7 +45,8 @@ STAGE = {"efficiency": 0.85, "driven shaft inertia": 2e-3, "driven shaft frictio
 # name: values without losses, losses, cycle, map
 SPEC = {
     "crank-slider": ({"crank radius": 0.04, "rod length": 0.15, "slide offset": 0.012, "moving mass": 3.0,
-                      "inclination": 0.6, "start angle": 0.4, "driven shaft inertia": 2e-3}, STAGE | FRICTION, TURN, ()),
+                      "inclination": 0.6, "start angle": 0.4, "driven shaft inertia": 2e-3},
+                      STAGE | FRICTION, TURN, ()),
     "Scotch yoke": ({"crank radius": 0.04, "moving mass": 3.0, "inclination": -0.4, "start angle": 0.4},
                     STAGE | FRICTION, TURN, ()),
     "toggle lever": ({"lever length": 0.06, "link length": 0.07, "moving mass": 3.0, "start angle": -1.1,
@@ -54,18 +58,22 @@ SPEC = {
     "four-bar": ({"crank radius": 0.04, "coupler length": 0.15, "rocker length": 0.1, "ground length": 0.16,
                   "load inertia": 0.05, "lever mass": 1.2, "lever mass radius": 0.1, "lever mass angle": 0.2,
                   "start angle": 0.3, "driven shaft inertia": 1e-3}, STAGE | TURNING, TURN, ()),
-    "tabulated slider": ({"map period": 2 * np.pi, "moving mass": 2.0, "inclination": 0.9}, STAGE | FRICTION, TURN, CAM),
+    "tabulated slider": ({"map period": 2 * np.pi, "moving mass": 2.0, "inclination": 0.9}, STAGE | FRICTION,
+                         TURN, CAM),
     "tabulated lever": ({"load inertia": 0.05, "lever mass": 1.2, "lever mass radius": 0.1, "start angle": 1.0},
                         STAGE | TURNING, BACK_AND_FORTH, SWING),
-    "arm": ({"arm mass": 4.0, "arm mass radius": 0.2, "payload radius": 0.35, "load inertia": 0.25, "start angle": -0.3,
-             "counterweight mass": 3.0, "counterweight radius": 0.1, "spring rate": 2500.0, "spring free length": 0.12,
+    "arm": ({"arm mass": 4.0, "arm mass radius": 0.2, "payload radius": 0.35, "load inertia": 0.25,
+             "start angle": -0.3,
+             "counterweight mass": 3.0, "counterweight radius": 0.1, "spring rate": 2500.0,
+             "spring free length": 0.12,
              "spring anchor radius": 0.2, "spring anchor angle": 1.7, "spring arm radius": 0.1},
             TURNING | {"breakaway torque": 1.2, "Stribeck speed": 0.1}, BACK_AND_FORTH, ()),
     "unbalanced table": ({"eccentric mass": 3.0, "eccentricity": 0.05, "axis inclination": 0.7, "load inertia": 0.1,
                           "start angle": 0.5}, TURNING, TURN, ()),
     "winch": ({"drum diameter": 0.12, "rope diameter": 0.008, "turns per layer": 6.0, "turns at start": 4.0,
                "falls": 2.0, "moving mass": 30.0}, STAGE | {"viscous friction": 5.0}, BACK_AND_FORTH, ()),
-    "conveyor": ({"drum diameter": 0.12, "belt mass": 4.0, "roller mass": 1.0, "moving mass": 9.0, "inclination": 0.2},
+    "conveyor": ({"drum diameter": 0.12, "belt mass": 4.0, "roller mass": 1.0, "moving mass": 9.0,
+                  "inclination": 0.2},
                  STAGE | FRICTION, BACK_AND_FORTH, ()),
     "wheel drive": ({"wheel diameter": 0.2, "adhesion coefficient": 0.6, "moving mass": 40.0, "inclination": 0.05},
                     STAGE | FRICTION, BACK_AND_FORTH, ()),
@@ -124,13 +132,15 @@ def energies(name, v, payload):
         T = (v["load inertia"] * sp.diff(psi, q) ** 2 + J) * w**2 / 2
         return T, v["lever mass"] * v["lever mass radius"] * G * sp.sin(psi + v["lever mass angle"])
     if name == "arm":
-        m, l, mc, lc = (v[p] for p in ("arm mass", "arm mass radius", "counterweight mass", "counterweight radius"))
+        m, lm, mc, lc = (
+            v[p] for p in ("arm mass", "arm mass radius", "counterweight mass", "counterweight radius")
+        )
         J = v["load inertia"] + payload * v["payload radius"] ** 2 + mc * lc**2
         r, b = v["spring anchor radius"], v["spring arm radius"]
         dx = r * sp.cos(v["spring anchor angle"]) - b * sp.cos(angle)
         dy = r * sp.sin(v["spring anchor angle"]) - b * sp.sin(angle)
         spring = v["spring rate"] * (sp.sqrt(dx**2 + dy**2) - v["spring free length"]) ** 2 / 2
-        return J * w**2 / 2, (m * l + payload * v["payload radius"] - mc * lc) * G * sp.sin(angle) + spring
+        return J * w**2 / 2, (m * lm + payload * v["payload radius"] - mc * lc) * G * sp.sin(angle) + spring
     if name == "unbalanced table":
         me = v["eccentric mass"] * v["eccentricity"]
         J = v["load inertia"] + me * v["eccentricity"] + payload
@@ -143,7 +153,9 @@ def energies(name, v, payload):
         return mass * sp.diff(x, q) ** 2 * w**2 / 2, mass * G * x
     if name == "conveyor":
         x = q * v["drum diameter"] / 2
-        return (mass + v["belt mass"] + v["roller mass"]) * sp.diff(x, q) ** 2 * w**2 / 2, mass * G * slope * x
+        return (mass + v["belt mass"] + v["roller mass"]) * sp.diff(
+            x, q
+        ) ** 2 * w**2 / 2, mass * G * slope * x
     if name == "wheel drive":
         return slider(q * v["wheel diameter"] / 2)
     if name == "gantry":
@@ -185,7 +197,9 @@ def test_torque_without_losses_is_that_of_lagrange(name):
 def test_inertia_and_gravity_take_no_work_over_a_closed_cycle(name):
     made = build(name, SPEC[name][1])
     demand = build_demand(made)
-    work = {c: float(integrate(demand.duration_s, demand.torque_by_cause[c] * demand.shaft_speed)) for c in CAUSES}
+    work = {
+        c: float(integrate(demand.duration_s, demand.torque_by_cause[c] * demand.shaft_speed)) for c in CAUSES
+    }
     flow = float(integrate(demand.duration_s, np.abs(demand.shaft_torque * demand.shaft_speed)))
     assert abs(work["inertia"] + work["gravity"]) <= PROMISED * flow
     total = float(integrate(demand.duration_s, demand.shaft_torque * demand.shaft_speed))
@@ -208,7 +222,9 @@ def test_pieces_are_resolved(name):
     payload = np.array([made.segments[i].payload for i in demand.segment])[:, None]
     direction = np.sign(demand.speed[:, 8])[:, None] * np.ones_like(x)
     for row in range(len(x)):
-        found = made.mechanism.efforts(x[row], v[row], a[row], direction[row], payload[row], 0.0 * x[row]).total
+        found = made.mechanism.efforts(
+            x[row], v[row], a[row], direction[row], payload[row], 0.0 * x[row]
+        ).total
         between = interpolate(demand.effort[row], at)
         # Position, speed and acceleration are interpolated too, each to 1e-10 of its largest value.
         np.testing.assert_allclose(between, found, atol=3e-9 * demand.peak(demand.effort) + 1e-12)
@@ -217,7 +233,9 @@ def test_pieces_are_resolved(name):
 @pytest.mark.parametrize("name", ["crank-slider", "four-bar", "toggle lever", "eccentric", "winch"])
 def test_the_demanded_torque_moves_the_chain_as_prescribed(name):
     """Feed the torque to the equation of motion; the motion that was asked for comes back."""
-    made = build(name, rows=({"law": "3-4-5 polynomial", "displacement": 0.8, "duration_s": 0.5},), at="shaft")
+    made = build(
+        name, rows=({"law": "3-4-5 polynomial", "displacement": 0.8, "duration_s": 0.5},), at="shaft"
+    )
     demand = build_demand(made)
     T, V = energies(name, SPEC[name][0], 0.0)
     J = sp.lambdify(q, sp.diff(T, w, 2), "numpy")
@@ -242,7 +260,9 @@ def test_the_demanded_torque_moves_the_chain_as_prescribed(name):
     assert state[1] == pytest.approx(0.0, abs=1e-5)
 
 
-@pytest.mark.parametrize("name", ["crank-slider", "four-bar", "toggle lever", "tabulated lever", "winch", "winder"])
+@pytest.mark.parametrize(
+    "name", ["crank-slider", "four-bar", "toggle lever", "tabulated lever", "winch", "winder"]
+)
 def test_motion_of_the_load_turns_the_shaft_as_motion_of_the_shaft_moves_the_load(name):
     values, losses, _, points = SPEC.get(name, (ROLL, {}, (), ()))
     mechanism = MECHANISMS[name].from_values({**values, **losses}, points)

@@ -5,7 +5,7 @@ from __future__ import annotations
 from abc import ABC, abstractmethod
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
-from typing import ClassVar, Self
+from typing import Any, ClassVar, Self
 
 import numpy as np
 from numpy.typing import NDArray
@@ -126,7 +126,6 @@ class Mechanism(ABC):
     #: field that takes the parts of the inertia inventory which are referred to the load or driven shaft
     load_parts_field: ClassVar[str] = ""
     shaft_parts_field: ClassVar[str] = ""
-    pulls_only: ClassVar[bool] = False  # a rope: it cannot push, and goes slack instead
     parameters: ClassVar[tuple[Parameter, ...]]
 
     @classmethod
@@ -140,7 +139,7 @@ class Mechanism(ABC):
         KeyError
             If a required value is missing; the reader reports that before it calls.
         """
-        arguments: dict[str, float] = {}
+        arguments: dict[str, Any] = {}
         for parameter in cls.parameters:
             value = values.get(parameter.name)
             if value is None:
@@ -151,7 +150,7 @@ class Mechanism(ABC):
                 raise KeyError(parameter.name)
             arguments[parameter.field] = float(value)
         if cls.needs_map:
-            return cls(points=tuple((float(a), float(x)) for a, x in points), **arguments)
+            arguments["points"] = tuple((float(angle), float(position)) for angle, position in points)
         return cls(**arguments)
 
     @property
@@ -259,6 +258,12 @@ class Mechanism(ABC):
     def specific_friction_m_s2(self) -> float:
         """Guide friction per motor mass (linear motors on the same guide). [m/s²]"""
         return 0.0
+
+
+def direction_of(speed: FloatArray) -> FloatArray:
+    """Sign of the motion at instants of one phase; at a stop, that of the phase's largest speed. [-]"""
+    fastest = np.sign(speed[int(np.argmax(np.abs(speed)))])
+    return np.where(speed == 0.0, fastest, np.sign(speed))
 
 
 def back_driving_efficiency(efficiency_forward: float) -> float:

@@ -115,5 +115,9 @@ class ToggleLever(DrivenSlider):
         if self.link_length > self.lever_length:
             return -np.inf, np.inf
         # At the end itself the slider would need infinite speed.
-        widest = np.arcsin(self.link_length / self.lever_length) if self.link_length < self.lever_length else 0.5 * np.pi
+        widest = (
+            np.arcsin(self.link_length / self.lever_length)
+            if self.link_length < self.lever_length
+            else 0.5 * np.pi
+        )
         return -widest * (1.0 - 1e-6), widest * (1.0 - 1e-6)

@@ -8,7 +8,13 @@ from typing import ClassVar
 
 import numpy as np
 
-from actuator_sizing.core.mechanisms.base import Complaint, Efforts, FloatArray, Parameter, back_driving_efficiency
+from actuator_sizing.core.mechanisms.base import (
+    Complaint,
+    Efforts,
+    FloatArray,
+    Parameter,
+    back_driving_efficiency,
+)
 from actuator_sizing.core.mechanisms.rotary import TURNING_PARAMETERS, TurningLoad
 
 
@@ -95,5 +101,7 @@ class DisplacementPump(TurningLoad):
         ideal = self.displacement_volume * self.pressure_difference / (2.0 * np.pi)
         eta = self.hydromechanical_efficiency
         delivers = ideal * direction
-        factor = np.where(delivers > 0.0, 1.0 / eta, np.where(delivers < 0.0, back_driving_efficiency(eta), 1.0))
+        factor = np.where(
+            delivers > 0.0, 1.0 / eta, np.where(delivers < 0.0, back_driving_efficiency(eta), 1.0)
+        )
         return replace(plain, process=plain.process + ideal * factor)

@@ -135,7 +135,8 @@ class FourBar(DrivenLever):
         a, b, c, d = self.crank_radius, self.coupler_length, self.rocker_length, self.ground_length
         near, far = abs(d - a), d + a
         if near <= abs(b - c) or far >= b + c:
-            yield Complaint("coupler length", f"links of {a * 1e3:.6g}, {b * 1e3:.6g}, {c * 1e3:.6g}, {d * 1e3:.6g} mm "
+            yield Complaint("coupler length",
+                            f"links of {a * 1e3:.6g}, {b * 1e3:.6g}, {c * 1e3:.6g}, {d * 1e3:.6g} mm "
                             "(crank, coupler, rocker, ground)",
                             "coupler and rocker that close at every angle of the crank: their sum above ground plus "
                             "crank, their difference below ground minus crank",

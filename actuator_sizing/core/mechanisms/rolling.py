@@ -8,7 +8,14 @@ from typing import ClassVar
 
 import numpy as np
 
-from actuator_sizing.core.mechanisms.base import GRAVITY_M_S2, Complaint, Efforts, FloatArray, Parameter
+from actuator_sizing.core.mechanisms.base import (
+    GRAVITY_M_S2,
+    Complaint,
+    Efforts,
+    FloatArray,
+    Parameter,
+    direction_of,
+)
 from actuator_sizing.core.mechanisms.linear_load import (
     GUIDE_PARAMETERS,
     STAGE_PARAMETERS,
@@ -102,9 +109,8 @@ class WheelDrive(RotatingDriveOfLinearLoad):
         process: float,
     ) -> Iterable[Complaint]:
         """Wheels that would slip."""
-        direction = np.sign(speed[len(speed) // 2]) * np.ones_like(speed)
         efforts = self.efforts(
-            position, speed, acceleration, direction, np.asarray(payload), np.asarray(process)
+            position, speed, acceleration, direction_of(speed), np.asarray(payload), np.asarray(process)
         )
         needed, limit = float(np.max(np.abs(efforts.total))), self.traction_limit_n(payload)
         if needed > limit:
@@ -156,8 +162,15 @@ class Gantry(RotatingDriveOfLinearLoad):
         process: FloatArray,
     ) -> Efforts:
         """Newton's second law for the share of this side."""
-        side = replace(self, moving_mass=float(self._mass(np.zeros(()))), carriage_mass=0.0, carriage_share=0.0)
+        side = replace(
+            self, moving_mass=float(self._mass(np.zeros(()))), carriage_mass=0.0, carriage_share=0.0
+        )
         plain = super(Gantry, side).efforts(
-            position, speed, acceleration, direction, self.carriage_share * payload, self.carriage_share * process
+            position,
+            speed,
+            acceleration,
+            direction,
+            self.carriage_share * payload,
+            self.carriage_share * process,
         )
         return replace(plain, inertia=self._mass(payload) * acceleration)

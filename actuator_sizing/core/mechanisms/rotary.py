@@ -258,6 +258,8 @@ class Arm(TurningLoad):
         apart = np.arccos((a**2 + b**2 - self.spring_free_length**2) / (2.0 * a * b))
         low, high = float(stated.min()), float(stated.max())
         at = np.array([self.spring_anchor_angle - apart, self.spring_anchor_angle + apart]) - self.start_angle
-        turns = np.arange(np.floor((low - at.max()) / (2 * np.pi)), np.ceil((high - at.min()) / (2 * np.pi)) + 1)
+        turns = np.arange(
+            np.floor((low - at.max()) / (2 * np.pi)), np.ceil((high - at.min()) / (2 * np.pi)) + 1
+        )
         every = (at[:, None] + 2.0 * np.pi * turns).ravel()
         return np.sort(every[(every > low) & (every < high)])

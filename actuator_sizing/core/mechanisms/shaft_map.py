@@ -71,7 +71,9 @@ class ShaftMap(Mechanism):
         if u[k + 1] == 0.0 or np.sign(u[k]) == np.sign(u[k + 1]):
             return float(angles[k + 1])
         return float(
-            brentq(lambda a: float(self.load_of_shaft(np.array([a]))[1][0]), angles[k], angles[k + 1], xtol=1e-15)
+            brentq(
+                lambda a: float(self.load_of_shaft(np.array([a]))[1][0]), angles[k], angles[k + 1], xtol=1e-15
+            )
         )
 
     def _starts_dead(self) -> bool:

@@ -64,7 +64,8 @@ class TabulatedMap(ShaftMap):
         angles = np.array([angle for angle, _ in self.points])
         if self.is_periodic:
             turns = np.arange(
-                np.floor((low - angles[-1]) / self.map_period), np.ceil((high - angles[0]) / self.map_period) + 1
+                np.floor((low - angles[-1]) / self.map_period),
+                np.ceil((high - angles[0]) / self.map_period) + 1,
             )
             angles = np.unique((angles[:-1, None] + turns * self.map_period).ravel())
         return np.asarray(angles[(angles > low) & (angles < high)])
@@ -73,7 +74,8 @@ class TabulatedMap(ShaftMap):
         """A period that the rows do not span, or a map that does not come back."""
         span = self.points[-1][0] - self.points[0][0]
         if self.is_periodic and abs(span - self.map_period) > _CLOSES * self.map_period:
-            yield Complaint("map period", f"{np.degrees(self.map_period):.6g}°, rows that span {np.degrees(span):.6g}°",
+            yield Complaint("map period",
+                            f"{np.degrees(self.map_period):.6g}°, rows that span {np.degrees(span):.6g}°",
                             "first and last row one period apart",
                             "Add a last row one period after the first, or clear the period.")  # fmt: skip
             return

@@ -63,7 +63,7 @@ class Roll(ShaftMap):
     back_driving_efficiency: float = np.nan
     driven_shaft_inertia: float = 0.0
     driven_shaft_friction_torque: float = 0.0
-    start_angle: ClassVar[float] = 0.0
+    start_angle: float = 0.0
 
     @property
     def efficiency_forward(self) -> float:

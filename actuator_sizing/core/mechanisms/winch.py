@@ -8,7 +8,7 @@ from typing import ClassVar
 
 import numpy as np
 
-from actuator_sizing.core.mechanisms.base import LOAD, Complaint, FloatArray, Parameter
+from actuator_sizing.core.mechanisms.base import LOAD, Complaint, FloatArray, Parameter, direction_of
 from actuator_sizing.core.mechanisms.driven_slider import DrivenSlider
 from actuator_sizing.core.mechanisms.linear_load import GUIDE_PARAMETERS, STAGE_PARAMETERS
 
@@ -107,9 +107,8 @@ class Winch(DrivenSlider):
         process: float,
     ) -> Iterable[Complaint]:
         """A slack rope: it cannot push the load."""
-        direction = np.sign(speed[len(speed) // 2]) * np.ones_like(speed)
         efforts = self.efforts(
-            position, speed, acceleration, direction, np.asarray(payload), np.asarray(process)
+            position, speed, acceleration, direction_of(speed), np.asarray(payload), np.asarray(process)
         )
         least, largest = float(np.min(efforts.total)), float(np.max(np.abs(efforts.total)))
         if least < -1e-9 * largest:

@@ -8,7 +8,7 @@ from typing import ClassVar
 
 import numpy as np
 
-from actuator_sizing.core.mechanisms.base import Complaint, Efforts, FloatArray, Parameter
+from actuator_sizing.core.mechanisms.base import Complaint, Efforts, FloatArray, Parameter, direction_of
 from actuator_sizing.core.mechanisms.crank import crank_slider
 from actuator_sizing.core.mechanisms.driven_slider import SLIDER_PARAMETERS, DrivenSlider
 
@@ -103,7 +103,7 @@ class Eccentric(DrivenSlider):
     ) -> Iterable[Complaint]:
         """A roller that lifts off, because nothing pulls it down."""
         efforts = self.efforts(
-            position, speed, acceleration, np.sign(speed), np.asarray(payload), np.asarray(process)
+            position, speed, acceleration, direction_of(speed), np.asarray(payload), np.asarray(process)
         )
         least = float(np.min(efforts.total))
         if least < 0.0:
