@@ -67,6 +67,12 @@ class Measure:
             ratio = self.demand / self.capacity
         return np.where((self.demand == 0.0) & (self.capacity == 0.0), 0.0, ratio)
 
+    def quotient(self, index: int) -> str:
+        """Demand over capacity of one set with its numbers put in, the end of most workings."""
+        return (
+            f"{digits(self.demand[index])} / {digits(self.capacity[index])} = {digits(self.ratio()[index])}"
+        )
+
 
 @dataclass(frozen=True)
 class Need:

@@ -155,10 +155,7 @@ def _plane_working(sets: Sets, i: int) -> str:
         limit = voltage_limit_working(sets, i, at)
     else:
         limit = f"T_available = {digits(by_current)} {unit} at the smaller peak current of motor and drive"
-    return (
-        f"{torque_working(at)}; {limit}; {digits(float(m.demand[i]))} / {digits(float(m.capacity[i]))} "
-        f"= {digits(float(m.ratio()[i]))}"
-    )
+    return f"{torque_working(at)}; {limit}; {m.quotient(i)}"
 
 
 SPEED_TORQUE = Check(
@@ -236,10 +233,7 @@ def _current_measure(sets: Sets) -> Measure:
 def _current_working(sets: Sets, i: int) -> str:
     m = _current_measure(sets)
     at = instant_of(sets, i, m.instant(i), "torque")
-    return (
-        f"{torque_working(at)}; {current_working(at)}; |i| / I_peak = {digits(float(m.demand[i]))} / "
-        f"{digits(float(m.capacity[i]))} = {digits(float(m.ratio()[i]))}"
-    )
+    return f"{torque_working(at)}; {current_working(at)}; |i| / I_peak = {m.quotient(i)}"
 
 
 def _current_bound(block: Block) -> FloatArray:
@@ -271,7 +265,7 @@ def _speed_working(sets: Sets, i: int) -> str:
     return (
         f"ω_max = n · max |ω_shaft| = {digits(float(sets.gearheads.ratio[i]))} · "
         f"{digits(sets.demand.shaft_speed_peak)} {unit} = {digits(float(m.demand[i]))} {unit}; "
-        f"{digits(float(m.demand[i]))} / {digits(float(m.capacity[i]))} = {digits(float(m.ratio()[i]))}"
+        f"{m.quotient(i)}"
     )
 
 
@@ -306,8 +300,7 @@ def _voltage_working(sets: Sets, i: int) -> str:
     note = "" if with_slope else " (the value without L di/dt governs)"
     return (
         f"{torque_working(at)}; {current_working(at)}; {voltage_working(at, with_slope=bool(with_slope))}{note}; "
-        f"{available_voltage_working(sets, i)}; {digits(float(m.demand[i]))} / {digits(float(m.capacity[i]))} "
-        f"= {digits(float(m.ratio()[i]))}"
+        f"{available_voltage_working(sets, i)}; {m.quotient(i)}"
     )
 
 
