@@ -220,6 +220,7 @@ class _Place:
     mechanism: Mechanism
     at_shaft: bool
     origin: float
+    factors: tuple[float, float, float]  # of the stage, by direction of power
     scale: Mapping[str, float]  # sizes that interpolation errors are held against; empty: nodes resolve it
 
     def kinks(self, stated: FloatArray) -> FloatArray:
@@ -242,9 +243,10 @@ def _pieces(case: Case) -> Iterator[dict[str, Any]]:
 
 
 def _places(case: Case) -> tuple[_Place, ...]:
+    factors = _stage_factors(case.mechanism)
     places, origin = [], 0.0
     for segment in case.segments:
-        places.append(_Place(segment, case.mechanism, case.motion_at_shaft, origin, {}))
+        places.append(_Place(segment, case.mechanism, case.motion_at_shaft, origin, factors, {}))
         if segment.phases:
             last = segment.phases[-1]
             origin += float(last.kinematics(np.array([last.duration_s]))[0][0])
@@ -256,13 +258,19 @@ def _places(case: Case) -> tuple[_Place, ...]:
             for part in _halves(phase):
                 found = _load(part, place)
                 # Causes may cancel, but their rounding does not: the sum of their sizes is the measure.
-                found |= {
-                    "effort": found["effort_size"],
-                    "lossless_torque": found["effort_size"] * found["lever"],
-                }
+                size = found["efforts"].size
+                found |= {"effort": size, "lossless_torque": size * found["lever"]}
                 for name in _RESOLVED:
                     scale[name] = max(scale[name], float(np.max(np.abs(found[name]))))
     return tuple(replace(place, scale=scale) for place in places)
+
+
+def _stage_factors(mechanism: Mechanism) -> tuple[float, float, float]:
+    """`stage_factor` at standstill, motoring and back-driving."""
+    forward, back = np.array(mechanism.efficiency_forward), np.array(mechanism.efficiency_back)
+    flows = (STANDSTILL, MOTORING, BACK_DRIVING)
+    first, second, third = (float(stage_factor(np.array(flow), forward, back)) for flow in flows)
+    return first, second, third
 
 
 def _halves(phase: Phase) -> Iterator[_Stretch]:
@@ -323,7 +331,8 @@ def _same_power(stretch: _Stretch, place: _Place) -> Iterator[dict[str, Any]]:
     for one_way in stretch.cut(roots(_load(stretch, place)["effort"])):
         torque = _load(one_way, place)["shaft_torque"]
         for piece in one_way.cut(roots(torque)):
-            yield _load(piece, place)
+            loaded = _load(piece, place)
+            yield loaded | {"by_cause": _by_cause(loaded)}
 
 
 def _sign(speed: FloatArray) -> float:
@@ -349,13 +358,7 @@ def _load(stretch: _Stretch, place: _Place, direction_of_load: float | None = No
     )
     effort = efforts.total
     load_flow = _flow(effort, direction)
-    factor = float(
-        stage_factor(
-            np.array(load_flow),
-            np.array(mechanism.efficiency_forward),
-            np.array(mechanism.efficiency_back),
-        )
-    )
+    factor = place.factors[load_flow]
     shaft_direction = np.full(NODES, _sign(shaft_speed))
     inertia_torque = mechanism.shaft_inertia_kg_m2 * shaft_acceleration
     drag = mechanism.shaft_friction_nm * shaft_direction
@@ -374,21 +377,27 @@ def _load(stretch: _Stretch, place: _Place, direction_of_load: float | None = No
         "speed": v,
         "acceleration": a,
         "effort": effort,
-        "effort_size": sum(
-            abs(part) for part in (efforts.inertia, efforts.gravity, efforts.friction, efforts.process)
-        ),
+        "efforts": efforts,
+        "factor": factor,
+        "drag": drag,
+        "inertia_torque": inertia_torque,
         "lossless_torque": effort * lever,
         "shaft_speed": shaft_speed,
         "shaft_acceleration": shaft_acceleration,
         "shaft_torque": torque,
         "motor_acceleration": motor_acceleration * (0.0 if segment.brake_closed else 1.0),
-        "by_cause": {
-            "inertia": efforts.inertia * lever + inertia_torque,
-            "gravity": efforts.gravity * lever,
-            "friction": efforts.friction * lever + drag,
-            "process": efforts.process * lever,
-            "losses": effort * lever * (factor - 1.0),
-        },
+    }
+
+
+def _by_cause(loaded: Mapping[str, Any]) -> dict[str, FloatArray]:
+    """Torque at the driven shaft in its parts."""
+    efforts, lever = loaded["efforts"], loaded["lever"]
+    return {
+        "inertia": efforts.inertia * lever + loaded["inertia_torque"],
+        "gravity": efforts.gravity * lever,
+        "friction": efforts.friction * lever + loaded["drag"],
+        "process": efforts.process * lever,
+        "losses": loaded["lossless_torque"] * (loaded["factor"] - 1.0),
     }
 
 

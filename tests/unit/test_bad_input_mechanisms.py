@@ -50,7 +50,7 @@ MAP = [
          ("axis", 7, "rod length"), "30 mm", "above crank radius plus slide offset, 40 mm", "lengthen the rod"),
         (made("four-bar", ("crank radius", 80, "mm"), ("coupler length", 90, "mm"), ("rocker length", 60, "mm"),
               ("ground length", 100, "mm"), ("load inertia", 1, "kg·m²")),
-         ("axis", 7, "coupler length"), "80, 90, 60, 100 mm", "close at every angle", "Change a length"),
+         ("axis", 7, "coupler length"), "80, 90, 60, 100 mm", "close at every crank angle", "Change a length"),
         (made("eccentric", ("eccentricity", 40, "mm"), ("disc radius", 30, "mm"), ("moving mass", 2, "kg")),
          ("axis", 6, "eccentricity"), "40 mm", "below the disc radius, 30 mm", "within the disc"),
         (made("ball screw", ("lead", 0, "mm"), ("moving mass", 2, "kg"), cycle=LIFT),

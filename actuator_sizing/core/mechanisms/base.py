@@ -73,6 +73,11 @@ class Efforts:
         """Sum of all causes."""
         return self.inertia + self.gravity + self.friction + self.process
 
+    @property
+    def size(self) -> FloatArray:
+        """Sum of the magnitudes of all causes."""
+        return sum((abs(part) for part in (self.gravity, self.friction, self.process)), abs(self.inertia))
+
 
 @dataclass(frozen=True)
 class Transfer:

@@ -136,8 +136,8 @@ class FourBar(DrivenLever):
         near, far = abs(d - a), d + a
         if near <= abs(b - c) or far >= b + c:
             yield Complaint("coupler length",
-                            f"links of {a * 1e3:.6g}, {b * 1e3:.6g}, {c * 1e3:.6g}, {d * 1e3:.6g} mm "
-                            "(crank, coupler, rocker, ground)",
-                            "coupler and rocker that close at every angle of the crank: their sum above ground plus "
+                            "links of " + ", ".join(f"{link * 1e3:.6g}" for link in (a, b, c, d))
+                            + " mm (crank, coupler, rocker, ground)",
+                            "coupler and rocker that close at every crank angle: their sum above ground plus "
                             "crank, their difference below ground minus crank",
-                            "Change a length, or describe the part of a turn that is used by a table map.")  # fmt: skip
+                            "Change a length, or describe the part of a turn that is used by a map.")  # fmt: skip

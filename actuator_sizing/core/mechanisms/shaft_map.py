@@ -7,7 +7,6 @@ from collections.abc import Iterable
 from functools import cached_property
 
 import numpy as np
-from scipy.optimize import brentq
 
 from actuator_sizing.core.mechanisms.base import (
     SHAFT,
@@ -61,6 +60,8 @@ class ShaftMap(Mechanism):
         return self._next_dead_centre(-1.0, low), self._next_dead_centre(1.0, high)
 
     def _next_dead_centre(self, side: float, end: float) -> float:
+        from scipy.optimize import brentq
+
         reach = min(2.0 * np.pi, abs(end - self.start_angle)) * (1.0 - 1e-12)
         angles = self.start_angle + side * np.linspace(0.0, reach, _SCAN)
         u = self.load_of_shaft(angles)[1]
