@@ -13,7 +13,7 @@ from actuator_sizing.sizing.checks.motor import VOLTAGE
 from actuator_sizing.sizing.demand import build_demand
 from actuator_sizing.sizing.judging import ORDER, active_checks, judge_sets
 from actuator_sizing.sizing.pair_course import course
-from actuator_sizing.sizing.results import FAILS
+from actuator_sizing.sizing.results import FAILS, NOT_CHECKED
 from actuator_sizing.sizing.shortlist import evaluate_sets
 from tests.made_cases import DIRECT, GEARHEAD, MOTOR, SURROUNDINGS, case, cycle
 
@@ -229,3 +229,49 @@ def test_the_speed_torque_plane_is_searched_between_the_nodes(constant):
     exact = judged(made)[0].pairs.plane_utilisation[0]
     # The largest between samples is above both of its neighbours by their distance squared, 1e-4 of a piece.
     assert exact == pytest.approx(sampled_plane_utilisation(made), rel=1e-6)
+
+
+def test_a_judged_temperature_for_voltage_does_not_soften_the_continuous_rating():
+    made = _rated_lift()
+    cold = replace(made, surroundings=replace(made.surroundings, judged_winding_degc=20.0))
+    hot_use, cold_use = (
+        dict(zip((c.key for c in v.checks), v.utilisation[0], strict=True))
+        for v in map(_judged, (made, cold))
+    )
+    assert cold_use["rms_current"] == pytest.approx(hot_use["rms_current"], rel=1e-12)
+    assert cold_use["voltage"] != hot_use["voltage"]
+
+
+def test_what_only_fits_or_not_does_not_govern_while_it_fits():
+    made = _rated_lift()
+    verdicts = _judged(made)
+    assert verdicts.checks[int(verdicts.governing[0])].key != "drive_bus_voltage"
+    tight = replace(made, surroundings=replace(made.surroundings, bus_max_v=450.0))
+    verdicts = _judged(tight)
+    assert verdicts.verdict[0] == ORDER.index(FAILS)
+
+
+def test_a_set_that_no_binding_check_concerns_is_not_passed():
+    made = _rated_lift()
+    only = {
+        key: replace(limit, applies="yes" if key == "gearhead_peak_torque" else "no")
+        for key, limit in made.limits.items()
+    }
+    verdicts = _judged(replace(made, limits=only))  # direct drive: no gearhead to judge
+    assert ORDER[int(verdicts.verdict[0])] == NOT_CHECKED
+
+
+def _rated_lift():
+    segments = cycle(
+        {"law": "trapezoid", "displacement": 0.4, "duration_s": 1.0, "payload": 10.0},
+        {"law": "trapezoid", "displacement": -0.4, "duration_s": 1.0},
+        {"law": "dwell", "duration_s": 0.5},
+    )
+    values = {"lead": 0.01, "moving mass": 10.0, "inclination": np.pi / 2, "efficiency": 0.9}
+    # Without saturation current goes as one over K, and the comparison is exact.
+    return case("ball screw", values, segments, motors=[{**MOTOR, "peak_torque_nm": np.nan}])
+
+
+def _judged(made):
+    index = np.zeros((1, 3), dtype=int)
+    return judge_sets(evaluate_sets(made, build_demand(made), index), *active_checks(made.limits))

@@ -128,6 +128,8 @@ class Check:
         Sets → mask of the sets that the check concerns.
     is_advice : bool
         Never fails unless the user makes it a limit.
+    is_fit : bool
+        Parts fit together or do not: such a check governs only where it fails.
     yields_to : str
         Key of the check that fails too wherever this one is infinite, and says by how much.
     """
@@ -145,6 +147,7 @@ class Check:
     applies: Callable[[Sets], NDArray[np.bool_]] = _always
     linear_unit: str = ""
     is_advice: bool = False
+    is_fit: bool = False
     yields_to: str = ""
 
 

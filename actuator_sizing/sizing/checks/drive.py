@@ -126,4 +126,5 @@ DRIVE_BUS = Check(
     needs=(Need("drives", "bus_voltage_max_v", "maximum bus voltage"),),
     measure=_bus_measure,
     working=_bus_working,
+    is_fit=True,
 )

@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.core.capability import continuous_current
-from actuator_sizing.core.machine import resistance_at, torque_of_current
+from actuator_sizing.core.machine import judge, resistance_at, torque_of_current
 from actuator_sizing.core.parameters import MotorParameters, Surroundings
 from actuator_sizing.core.thermal import altitude_factor
 from actuator_sizing.sizing.block import Block
@@ -63,15 +65,30 @@ def rerated_continuous_current(
         return continuous_current(rise, rating, speed_resistance, loss, hot)
 
 
+def _current_at_limit(
+    motors: MotorParameters, surroundings: Surroundings, K: FloatArray
+) -> FloatArray | float:
+    """Current with the winding at its limit over current as judged, for the same torque (saturation left out).
+
+    The rating belongs to the winding limit; a temperature stated for judging voltage must not soften it.
+    """
+    if np.isnan(surroundings.judged_winding_degc):
+        return 1.0
+    at_limit = judge(motors, replace(surroundings, judged_winding_degc=np.nan))
+    return np.asarray(K / at_limit.torque_constant_nm_per_a)
+
+
 def _rms_measure(sets: Sets) -> Measure:
     capacity = rerated_continuous_current(sets.motors, sets.surroundings, sets.pairs.speed_rms_rad_s)
-    return Measure(sets.pairs.current_rms_a, capacity)
+    K = sets.pairs.torque_constant_nm_per_a
+    return Measure(sets.pairs.current_rms_a * _current_at_limit(sets.motors, sets.surroundings, K), capacity)
 
 
 def _rms_bound(block: Block) -> FloatArray:
     capacity = rerated_continuous_current(block.motors, block.surroundings, block.speed_rms)
+    K = block.judged.torque_constant_nm_per_a
     with np.errstate(divide="ignore"):
-        return block.current_rms / capacity
+        return block.current_rms * _current_at_limit(block.motors, block.surroundings, K) / capacity
 
 
 def _rms_working(sets: Sets, i: int) -> str:
@@ -84,16 +101,19 @@ def _rms_working(sets: Sets, i: int) -> str:
     loss = m.friction_torque_nm[i] * omega + m.viscous_friction_nm_s[i] * omega**2
     altitude = altitude_factor(sets.surroundings.altitude_m)
     rise = (limit - sets.surroundings.ambient_degc) * altitude
-    capacity = _rms_measure(sets).capacity[i]
+    measure = _rms_measure(sets)
+    demand, capacity = float(measure.demand[i]), float(measure.capacity[i])
+    same = demand == p.current_rms_a[i]
+    at_limit = "" if same else f"with K at the winding limit {digits(demand)} A; "
     return (
-        f"{rms_working(sets, i)}; "
+        f"{rms_working(sets, i)}; {at_limit}"
         f"R_th = ({digits(limit)} − {digits(m.continuous_ambient_degc[i])}) °C / ({digits(hot)} Ω · "
         f"({digits(m.continuous_current_a[i])} A)²) = {digits(rating)} K/W; "
         f"ΔT = ({digits(limit)} − {digits(sets.surroundings.ambient_degc)}) · {digits(altitude)} = {digits(rise)} K; "
         f"P_ω at ω_rms {digits(omega)} rad/s = {digits(loss)} W; "
         f"I_cont = √(({digits(rise)} − {digits(share)} · {digits(loss)}) / ({digits(rating)} · {digits(hot)})) "
-        f"= {digits(capacity)} A; I_rms/I_cont = {digits(p.current_rms_a[i])} / {digits(capacity)} "
-        f"= {digits(p.current_rms_a[i] / capacity) if capacity else '∞'}"
+        f"= {digits(capacity)} A; I_rms/I_cont = {digits(demand)} / {digits(capacity)} "
+        f"= {digits(demand / capacity) if capacity else '∞'}"
     )
 
 
