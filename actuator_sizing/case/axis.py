@@ -263,6 +263,9 @@ def _complete(
                             allowed=column.allowed(axis.coordinate or "rotary"), remedy=remedy)  # fmt: skip
         elif column.default is not None:
             _assume(axis, column.name, column.key, column.default, unit, column.assumed)
+    if axis.mechanism is not None and axis.mechanism.motion_at == SHAFT:
+        if "motion_stated_at" not in axis.values and "motion_stated_at" not in broken:
+            _assume(axis, "motion stated at", "motion_stated_at", SHAFT, "", "usual for this mechanism")
     nominal = axis.number("nominal_bus_voltage")
     if np.isfinite(nominal):
         for key, factor, sign in (("minimum_bus_voltage", 1.0 - BUS_TOLERANCE, "−"),

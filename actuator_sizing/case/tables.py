@@ -25,7 +25,6 @@ from actuator_sizing.case.columns import (
 from actuator_sizing.core.mechanisms import (
     LINEAR,
     LOAD,
-    MASS,
     MECHANISMS,
     ROTARY,
     SHAFT,
@@ -315,9 +314,7 @@ def table_for(name: str, mechanism: type[Mechanism] | None, stated_at: str = "")
     )
     if mechanism.drives_linear_motor:
         moved = LINEAR
-    carried = mechanism.coordinate
-    if mechanism.payload_kind:
-        carried = LINEAR if mechanism.payload_kind == MASS else ROTARY
+    carried = LINEAR if mechanism.carries_mass() else ROTARY
 
     def resolved(column: Column) -> Column:
         if isinstance(column.kind, str):

@@ -334,3 +334,26 @@ def test_reversal_keeps_friction_against_the_motion():
     assert len(demand.duration_s) == 4  # the ramp through zero is two pieces, each with one sign
     np.testing.assert_array_equal(demand.shaft_torque, 2.0 * demand.direction[:, None] * np.ones((4, 16)))
     np.testing.assert_array_equal(demand.direction, [1.0, 1.0, -1.0, -1.0])
+
+
+def test_the_figure_shows_friction_without_chatter_at_rest_and_reversal():
+    from actuator_sizing.sizing import compare
+    from tests.made_cases import DIRECT, MOTOR
+
+    made = replace(
+        case("rotary load", {"load inertia": 1.0}, cycle(
+            {"law": "speed ramp", "end_speed": 20.0, "duration_s": 1.0},
+            {"law": "speed ramp", "end_speed": -20.0, "duration_s": 2.0},
+            {"law": "speed ramp", "end_speed": 0.0, "duration_s": 1.0},
+            {"law": "dwell", "duration_s": 0.5}),
+            motors=[{**MOTOR, "friction_torque_nm": 0.0, "viscous_friction_nm_s": 0.0}], gearheads=[DIRECT]),
+        mechanism=MECHANISMS["rotary load"].from_values(
+            {"load inertia": 1e-4, "friction torque": 0.2, "breakaway torque": 0.5, "Stribeck speed": 0.5}),
+    )  # fmt: skip
+    shown = compare(made).best.detail.cycle
+    time, friction, speed = (shown[name].to_numpy() for name in ("time_s", "friction_nm", "motor_speed_rad_s"))
+    assert np.max(np.abs(friction)) == pytest.approx(0.5, rel=1e-9)  # breakaway, and no spike above it
+    assert np.all(friction * speed >= -1e-9)  # zero speed is rounding at the ends of pieces
+    signs = np.sign(friction[time < 4.0])
+    assert np.count_nonzero(np.diff(signs)) == 1  # one jump, at the reversal
+    assert np.all(friction[time > 4.0] == 0.0)

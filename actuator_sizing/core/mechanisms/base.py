@@ -158,6 +158,11 @@ class Mechanism(ABC):
             arguments["points"] = tuple((float(angle), float(position)) for angle, position in points)
         return cls(**arguments)
 
+    @classmethod
+    def carries_mass(cls) -> bool:
+        """Whether a payload is a mass rather than an inertia."""
+        return (cls.payload_kind or (MASS if cls.coordinate == LINEAR else INERTIA)) == MASS
+
     @property
     def resolved_by_nodes(self) -> bool:
         """Whether every piece of a polynomial or sinusoidal motion is resolved without subdivision."""
