@@ -351,7 +351,9 @@ def test_the_figure_shows_friction_without_chatter_at_rest_and_reversal():
             {"load inertia": 1e-4, "friction torque": 0.2, "breakaway torque": 0.5, "Stribeck speed": 0.5}),
     )  # fmt: skip
     shown = compare(made).best.detail.cycle
-    time, friction, speed = (shown[name].to_numpy() for name in ("time_s", "friction_nm", "motor_speed_rad_s"))
+    time, friction, speed = (
+        shown[name].to_numpy() for name in ("time_s", "friction_nm", "motor_speed_rad_s")
+    )
     assert np.max(np.abs(friction)) == pytest.approx(0.5, rel=1e-9)  # breakaway, and no spike above it
     assert np.all(friction * speed >= -1e-9)  # zero speed is rounding at the ends of pieces
     signs = np.sign(friction[time < 4.0])
