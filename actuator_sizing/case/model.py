@@ -17,6 +17,7 @@ from actuator_sizing.core.parameters import (
     MotorParameters,
     Surroundings,
 )
+from actuator_sizing.core.process_load import ProcessLoad
 from actuator_sizing.errors import Problem
 
 MISSING, STATED, DERIVED, ASSUMED = 0, 1, 2, 3
@@ -57,6 +58,7 @@ class Segment:
     process_effort: float  # positive opposes positive motion
     brake_closed: bool
     note: str = ""
+    process: ProcessLoad | None = None  # where the process effort is not constant; None: `process_effort` is all
 
 
 @dataclass(frozen=True)

@@ -90,7 +90,7 @@ def _mechanism(word: str) -> type[Mechanism]:
 
 def example_sheets(mechanism: type[Mechanism]) -> tuple[Sheet, ...]:
     """Every table of a new case, from the declarations of its columns."""
-    tables = list(TABLES.values())
+    tables = [table for table in TABLES.values() if table.in_template]
     if mechanism.drives_linear_motor:  # it has no gearhead
         tables = [table for table in tables if table.name != "gearheads"]
     return tuple(_sheet(table, mechanism) for table in tables)

@@ -8,6 +8,7 @@ from pathlib import Path
 from actuator_sizing.case.axis import Axis, options_of, surroundings_of
 from actuator_sizing.case.catalogs import to_catalog
 from actuator_sizing.case.columns import Column, key_of
+from actuator_sizing.case.courses import side_tables
 from actuator_sizing.case.drives import understand_drives
 from actuator_sizing.case.fingerprint import fingerprint
 from actuator_sizing.case.gearheads import understand_gearheads
@@ -51,7 +52,8 @@ def understand(
         table: _parse(raw[table], axis, problems) for table in TABLES if table in raw and table != "axis"
     }
     motion = parsed.get("duty_cycle")
-    segments = understand_motion(motion, axis.coordinate, problems) if motion and axis.mechanism else ()
+    courses = side_tables(parsed, axis.number("cycles_per_minute"))
+    segments = understand_motion(motion, axis.coordinate, problems, courses) if motion and axis.mechanism else ()
     motors, drives = parsed.get("motors"), parsed.get("drives")
     motor_parameters = understand_motors(motors) if motors else None
     drive_parameters = understand_drives(drives) if drives else None
@@ -75,7 +77,9 @@ def understand(
     mechanism = axis.mechanism.from_values(
         {parameter.name: _number(axis, parameter.name) for parameter in axis.mechanism.parameters}
     )
-    entries = (*axis.entries, *motion_entries(motion, axis.coordinate), *limit_entries)
+    described = (motion, *(table for table in (courses.points, courses.process) if table))
+    moving = (entry for table in described for entry in motion_entries(table, axis.coordinate))
+    entries = (*axis.entries, *moving, *limit_entries)
     catalogs = to_catalog(motors), to_catalog(gearheads), to_catalog(drives)
     return Case(
         name=name,

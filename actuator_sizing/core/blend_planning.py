@@ -15,9 +15,7 @@ _SHARES = ("acceleration share", "deceleration share", "jerk share")
 
 def is_blend(request: Request) -> bool:
     """Whether a move starts or ends at speed, or has a limit of its own for slowing down [-]."""
-    return bool(
-        request.start_speed != 0.0 or request.get("end speed") or request.has("maximum deceleration")
-    )
+    return bool(request.start_speed != 0.0 or request.get("end speed") or request.has("maximum deceleration"))
 
 
 def plan_blend(request: Request, default_share: float, jerk_share: float) -> tuple[Phase, ...]:
@@ -80,9 +78,7 @@ def _check_direction(request: Request, sign: float, end_speed: float) -> None:
             )
 
 
-def _plan_limits(
-    request: Request, displacement: float, end_speed: float, sign: float
-) -> tuple[Phase, ...]:
+def _plan_limits(request: Request, displacement: float, end_speed: float, sign: float) -> tuple[Phase, ...]:
     """Fastest move under limits, or a slower cruise for a stated duration."""
     a_max = request.limit("maximum acceleration")
     d_max = request.limit("maximum deceleration") if request.has("maximum deceleration") else a_max

@@ -7,6 +7,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 
 from actuator_sizing.core.blend_planning import is_blend, plan_blend
+from actuator_sizing.core.free_segments import plan_sinusoid, plan_spline
 from actuator_sizing.core.law_shapes import (
     FIXED,
     SHORTEST_SHARE,
@@ -75,6 +76,10 @@ def plan_segment(
     acceleration_share: float | None = None,
     deceleration_share: float | None = None,
     jerk_share: float | None = None,
+    amplitude: float | None = None,
+    frequency_hz: float | None = None,
+    cycles: float | None = None,
+    points: tuple[tuple[float, float], ...] = (),
 ) -> tuple[Phase, ...]:
     """Plan one segment of the duty cycle.
 
@@ -103,6 +108,14 @@ def plan_segment(
         Parts of the duration spent speeding up and slowing down; one third each when nothing says more. [-]
     jerk_share : float, optional
         Part of the stage of acceleration that each jerk ramp takes; 1/2 when nothing says more. [-]
+    amplitude : float, optional
+        Signed amplitude of a sinusoid: half of the way between its extremes. [m]
+    frequency_hz : float, optional
+        Of a sinusoid. [Hz]
+    cycles : float, optional
+        Periods of a sinusoid, whole or half. [-]
+    points : tuple of (float, float), optional
+        Time [s] and position [m] of the points of a spline, from the start of the segment. [-]
 
     Returns
     -------
@@ -144,8 +157,12 @@ def plan_segment(
             "acceleration share": acceleration_share,
             "deceleration share": deceleration_share,
             "jerk share": jerk_share,
+            "amplitude": amplitude,
+            "frequency": frequency_hz,
+            "cycles": cycles,
         },
         LAWS[law].needs,
+        tuple(points),
     )
     request.check(LAWS[law].uses)
     return LAWS[law].plan(request)
@@ -322,6 +339,22 @@ _LAWS = (
     *(
         _from_shape(name, _FIXED_HELP[name], _ANY_LIMIT, _MOVE, _plan_fixed(build()), build())
         for name, build in FIXED.items()
+    ),
+    MotionLaw(
+        "sinusoid",
+        "swings to and fro from one extreme, any number of half periods",
+        "amplitude, and two of frequency, cycles and duration",
+        frozenset(
+            {"amplitude", "frequency", "cycles", "duration", "maximum speed", "maximum acceleration"}
+        ),
+        plan_sinusoid,
+    ),
+    MotionLaw(
+        "spline",
+        "cubic spline through the rows of the table 'points'",
+        "rows of the table 'points' that name the segment; 'end speed' where it does not end at rest",
+        frozenset({"end speed"}),
+        plan_spline,
     ),
     MotionLaw(
         "constant speed",

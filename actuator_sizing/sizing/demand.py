@@ -18,6 +18,7 @@ from actuator_sizing.case.model import Case, Segment
 from actuator_sizing.core.mechanisms import Mechanism
 from actuator_sizing.core.moments import demand_functions
 from actuator_sizing.core.motion_laws import Phase
+from actuator_sizing.core.process_load import TIME
 from actuator_sizing.core.quadrature import NODES, integrate, largest_magnitude, lobatto, roots
 from actuator_sizing.core.transmission import (
     BACK_DRIVING,
@@ -178,6 +179,7 @@ class _Stretch:
     phase: Phase
     begin: float
     end: float
+    phase_start: float = 0.0  # time in the segment at which the phase starts
 
     @property
     def tau(self) -> FloatArray:
@@ -188,31 +190,65 @@ class _Stretch:
         """Split at positions on (−1, 1)."""
         borders = [self.begin, *(self.begin + 0.5 * (at + 1.0) * (self.end - self.begin)), self.end]
         for begin, end in zip(borders[:-1], borders[1:], strict=True):
-            yield _Stretch(self.phase, begin, end)
+            yield _Stretch(self.phase, begin, end, self.phase_start)
 
 
 def _pieces(segments: tuple[Segment, ...], mechanism: Mechanism) -> Iterator[dict[str, Any]]:
     start, origin = 0.0, 0.0
     for index, segment in enumerate(segments):
+        phase_start = 0.0
         for phase in segment.phases:
-            for reversal_free in _halves(phase):
+            for reversal_free in _halves(phase, phase_start):
                 speed = phase.kinematics(reversal_free.tau)[1]
-                for stretch in reversal_free.cut(roots(speed)):
-                    for piece in _same_power(stretch, segment, mechanism, origin):
-                        yield {"segment": index, "start_s": start, **piece}
-                        start += piece["duration_s"]
+                for one_way in reversal_free.cut(roots(speed)):
+                    for stretch in one_way.cut(_process_kinks(one_way, segment, origin)):
+                        for piece in _same_power(stretch, segment, mechanism, origin):
+                            yield {"segment": index, "start_s": start, **piece}
+                            start += piece["duration_s"]
+            phase_start += phase.duration_s
         if segment.phases:
             last = segment.phases[-1]
             origin += float(last.kinematics(np.array([last.duration_s]))[0][0])
 
 
-def _halves(phase: Phase) -> Iterator[_Stretch]:
+def _process_kinks(stretch: _Stretch, segment: Segment, origin: float) -> FloatArray:
+    """Where on (−1, 1) the process load of a stretch without reversal has a kink."""
+    load = segment.process
+    if load is None:
+        return np.empty(0)
+    length = stretch.end - stretch.begin
+    if load.over == TIME:
+        begin = stretch.phase_start + stretch.begin
+        tau = load.kinks_between(begin, begin + length) - stretch.phase_start
+    else:
+        x = origin + stretch.phase.kinematics(np.array([stretch.begin, stretch.end]))[0]
+        knots = load.kinks_between(float(x.min()), float(x.max()))
+        rising = x[1] > x[0]
+        low, high = np.full_like(knots, stretch.begin), np.full_like(knots, stretch.end)
+        for _ in range(60):  # position is monotonic here: bisection reaches rounding
+            middle = 0.5 * (low + high)
+            before = (origin + stretch.phase.kinematics(middle)[0] < knots) == rising
+            low, high = np.where(before, middle, low), np.where(before, high, middle)
+        tau = np.sort(low)
+    at = 2.0 * (tau - stretch.begin) / length - 1.0
+    return np.asarray(at[np.abs(at) < 1.0 - 1e-9])
+
+
+def _process(stretch: _Stretch, segment: Segment, x: FloatArray, direction: float) -> FloatArray:
+    """Process effort at the nodes of a stretch that holds no kink of it."""
+    if segment.process is None:
+        return np.full(NODES, segment.process_effort)
+    at = stretch.phase_start + stretch.tau if segment.process.over == TIME else x
+    return segment.process.values(at, direction)
+
+
+def _halves(phase: Phase, phase_start: float) -> Iterator[_Stretch]:
     """The phase in parts of at most half a sine period, which the nodes resolve to rounding."""
     turns = abs(phase.sine_frequency_rad_s) * phase.duration_s / np.pi if phase.sine_amplitude else 0.0
     parts = max(1, int(np.ceil(turns - 1e-9)))
     borders = np.linspace(0.0, phase.duration_s, parts + 1)
     for begin, end in zip(borders[:-1], borders[1:], strict=True):
-        yield _Stretch(phase, float(begin), float(end))
+        yield _Stretch(phase, float(begin), float(end), phase_start)
 
 
 def _same_power(
@@ -234,7 +270,7 @@ def _load(stretch: _Stretch, segment: Segment, mechanism: Mechanism, origin: flo
     moving = scale > 0.0 and abs(middle_speed) > 1e-12 * scale
     direction = np.full(NODES, np.sign(middle_speed) if moving else 0.0)
     efforts = mechanism.efforts(
-        x, v, a, direction, np.full(NODES, segment.payload), np.full(NODES, segment.process_effort)
+        x, v, a, direction, np.full(NODES, segment.payload), _process(stretch, segment, x, direction[0])
     )
     effort = efforts.total
     r, dr = mechanism.ratio_at(x)
