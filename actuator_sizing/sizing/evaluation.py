@@ -30,7 +30,7 @@ from actuator_sizing.core.thermal import (
     subpiece_means,
 )
 from actuator_sizing.sizing.demand import Demand
-from actuator_sizing.sizing.thermal_data import thermal_network
+from actuator_sizing.sizing.thermal_data import fastest_time_constant, thermal_network
 
 FloatArray = NDArray[np.float64]
 
@@ -323,7 +323,7 @@ def heat_loss(demand: Demand, motors: MotorParameters, judged: JudgedMotor, c: P
     cold = (judged.torque_constant_nm_per_a / motors.torque_constant_nm_per_a)[:, None, None]
     copper = _column(motors.resistance_ohm) * (c.current_a * cold) ** 2
     by_speed = speed_loss(motors, c.motor_speed_rad_s)
-    tau = motors.winding_time_constant_s
+    tau = fastest_time_constant(motors)
     shortest = float(np.nanmin(tau)) if np.isfinite(tau).any() else np.inf
     counts = subpiece_counts(demand.duration_s, copper, shortest)
     return HeatLoss(
@@ -359,7 +359,9 @@ def _plane(demand: Demand, c: PairCourse, judged: JudgedMotor) -> dict[str, Floa
         demanded = np.where(direction == 0.0, np.abs(torque), demanded)
         reachable = np.nan_to_num(current_limit, nan=0.0)
         capacity = torque_of_current(np.clip(reachable, 0.0, turning), K, s)
-        beyond = (capacity <= 0.0) & (demanded > 0.0)
+        # Above the no-load speed only braking torque keeps within the voltage, and of it a least one is needed.
+        most = torque_of_current(np.clip(current_limit, -turning, 0.0), K, s)
+        beyond = (capacity <= 0.0) & ~(demanded <= most)  # NaN: no current at all
         ratio = demanded / np.where(capacity > 0.0, capacity, np.inf)
         utilisation, piece, position = largest(ratio)
         at = demand.instant(piece, position)
@@ -370,7 +372,7 @@ def _plane(demand: Demand, c: PairCourse, judged: JudgedMotor) -> dict[str, Floa
         never = hopeless.any(axis=1)
         utilisation = np.where(never, np.inf, np.maximum(utilisation, 0.0))
         at = np.where(never, demand.time_s.reshape(-1)[first], at)
-        there = np.where(never, demanded.reshape(len(at), -1)[np.arange(len(at)), first], there)
+        there = np.where(never, np.abs(demanded.reshape(len(at), -1)[np.arange(len(at)), first]), there)
         with np.errstate(invalid="ignore", divide="ignore"):
             available = np.where(never, 0.0, there / utilisation)
         branch = {
