@@ -9,6 +9,7 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
+from actuator_sizing.case.recording import Recording
 from actuator_sizing.core.mechanisms import Mechanism
 from actuator_sizing.core.motion_laws import Phase
 from actuator_sizing.core.parameters import (
@@ -126,6 +127,7 @@ class Case:
     entries: tuple[Entry, ...]  # axis, duty cycle and limits; catalog entries come from `catalog_entries`
     problems: tuple[Problem, ...]  # warnings and notes only; errors never make a Case
     fingerprint: str
+    recording: Recording | None = None  # a measured cycle in place of planned segments
 
     @property
     def cycle_duration_s(self) -> float:

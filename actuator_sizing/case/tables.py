@@ -124,6 +124,14 @@ COMMON_QUANTITIES = (
            default=10.0, assumed="common practice", positive=True, maximum=1.0e6, example="10"),
     Column("cycles per minute", "count", "pace of the whole cycle; the segments are stretched to it, or take "
            "their part of a master turn", positive=True, maximum=1.0e6, example=""),
+    Column("measured period", "time", "duration of one cycle of the table 'measured'; found when empty",
+           positive=True, maximum=1.0e7, example="", unit="s"),
+    Column("smoothing cut-off", "frequency", "measured motion is not followed above this frequency; it is a choice "
+           "that decides the acceleration", positive=True, maximum=1.0e6, example="", unit="Hz"),
+    Column("remove drift", YES_NO, "whether the measured cycle is bent back so that it closes", default="no",
+           assumed="the measured motion is kept", example="no"),
+    Column("recorded torque constant", "torque constant", "torque at the driven shaft per ampere of the measured "
+           "current", positive=True, example="", unit="Nm/A"),
     Column("required life", "time", "operating hours the axis must reach", positive=True, example="20000",
            unit="h"),
 )  # fmt: skip
@@ -240,6 +248,20 @@ PROCESS_COLUMNS = (
            aliases=("process torque", "process effort")),
 )  # fmt: skip
 
+MEASURED_COLUMNS = (
+    Column("sample", TEXT, "remark", example=""),
+    Column("time", "time", "instant of the sample, rising; spacing may vary", required=True, example="0", unit="s"),
+    Column("position", ("length", "angle"), "measured position of the load", unit=("mm", "deg")),
+    Column("speed", ("linear speed", "angular speed"), "instead of the position", unit=("m/s", "rpm")),
+    Column("process force", ("force", "torque"), "process alone; the mechanism adds inertia, gravity and friction",
+           unit=("N", "N·m"), aliases=("process torque", "process effort")),
+    Column("load force", ("force", "torque"), "all that the load asks for, inertia, gravity and friction included",
+           unit=("N", "N·m"), aliases=("load torque", "load effort")),
+    Column("shaft torque", "torque", "all that the driven shaft must give, losses of the mechanism included",
+           unit="N·m"),
+    Column("current", "current", "of the motor that drove the axis; needs 'recorded torque constant'", unit="A"),
+)  # fmt: skip
+
 LIMIT_COLUMNS = (
     Column("check", WORDS, "which check", required=True, words=tuple(title for _, title in CHECK_NAMES),
            example="RMS current"),
@@ -278,6 +300,9 @@ TABLES: dict[str, Table] = {
               POINT_COLUMNS, repeats_names=True, in_template=False),
         Table("process", "One row is one value of a process force along a segment.",
               PROCESS_COLUMNS, repeats_names=True, in_template=False),
+        Table("measured", "One row is one sample of a measured or simulated cycle, in place of the duty cycle. "
+              "Efforts are straight between samples; a motion is smoothed by 'smoothing cut-off'.",
+              MEASURED_COLUMNS, repeats_names=True, in_template=False),
         Table("motors", "One row is one motor as its data sheet states it.", MOTOR_COLUMNS, required=True,
               is_catalog=True,
               one_of=(("rotary", ("torque constant", "back-EMF constant", "speed constant")),

@@ -13,6 +13,7 @@ from actuator_sizing.case.drives import understand_drives
 from actuator_sizing.case.fingerprint import fingerprint
 from actuator_sizing.case.gearheads import understand_gearheads
 from actuator_sizing.case.judging import understand_limits, understand_tolerances
+from actuator_sizing.case.measuring import understand_recording
 from actuator_sizing.case.model import MISSING, ORIGINS, STATED, Case, Catalog, Entry
 from actuator_sizing.case.motion import motion_entries, understand_motion
 from actuator_sizing.case.motors import understand_motors
@@ -49,11 +50,17 @@ def understand(
         None where there are errors.
     """
     parsed = {
-        table: _parse(raw[table], axis, problems) for table in TABLES if table in raw and table != "axis"
+        table: _parse(raw[table], axis, problems)
+        for table in TABLES
+        if table in raw and table not in ("axis", "measured")
     }
     motion = parsed.get("duty_cycle")
     courses = side_tables(parsed, axis.number("cycles_per_minute"))
     segments = understand_motion(motion, axis.coordinate, problems, courses) if motion and axis.mechanism else ()
+    recording = None
+    if "measured" in raw and axis.mechanism:
+        recording = understand_recording(raw["measured"], axis, problems, motion is not None)
+        segments = (recording.segment,) if recording else ()
     motors, drives = parsed.get("motors"), parsed.get("drives")
     motor_parameters = understand_motors(motors) if motors else None
     drive_parameters = understand_drives(drives) if drives else None
@@ -72,14 +79,14 @@ def understand(
     tolerances = understand_tolerances(parsed.get("tolerances"), decimal, problems)
     if problems.has_errors:
         return None
-    if not (motion and motors and drives and axis.mechanism and motor_parameters and drive_parameters):
+    if not ((motion or recording) and motors and drives and axis.mechanism and motor_parameters and drive_parameters):
         return None  # a required table is missing, which was reported
     mechanism = axis.mechanism.from_values(
         {parameter.name: _number(axis, parameter.name) for parameter in axis.mechanism.parameters}
     )
-    described = (motion, *(table for table in (courses.points, courses.process) if table))
+    described = [table for table in (motion, courses.points, courses.process) if table]
     moving = (entry for table in described for entry in motion_entries(table, axis.coordinate))
-    entries = (*axis.entries, *moving, *limit_entries)
+    entries = (*axis.entries, *moving, *(recording.entries if recording else ()), *limit_entries)
     catalogs = to_catalog(motors), to_catalog(gearheads), to_catalog(drives)
     return Case(
         name=name,
@@ -99,6 +106,7 @@ def understand(
         entries=entries,
         problems=problems.finished(),
         fingerprint=fingerprint(entries, catalogs, limits, tolerances),
+        recording=recording.recording if recording else None,
     )
 
 

@@ -78,7 +78,8 @@ class Demand:
     @cached_property
     def time_s(self) -> FloatArray:
         """Instants of the nodes, shape (P, K). [s]"""
-        return np.asarray(self.start_s[:, None] + 0.5 * (lobatto()[0] + 1.0) * self.duration_s[:, None])
+        nodes = lobatto(self.position.shape[1])[0]
+        return np.asarray(self.start_s[:, None] + 0.5 * (nodes + 1.0) * self.duration_s[:, None])
 
     def instant(self, piece: NDArray[np.intp], position: FloatArray) -> FloatArray:
         """Time of a point given by piece and position on [−1, 1]; shapes broadcast. [s]"""
@@ -131,6 +132,12 @@ def build_demand(case: Case) -> Demand:
     Demand
         Pieces, node values and their moments; independent of any motor. [-]
     """
+    payloads = np.array([segment.payload for segment in case.segments])
+    inertia = float(np.max(case.mechanism.inertia_at_shaft(payloads)))
+    if case.recording is not None:
+        from actuator_sizing.sizing.measured_demand import recorded_pieces
+
+        return Demand(**recorded_pieces(case, case.recording), load_inertia=inertia)
     pieces = list(_pieces(case.segments, case.mechanism))
     stacked: dict[str, Any] = {
         f.name: np.array([piece[f.name] for piece in pieces])
@@ -139,8 +146,6 @@ def build_demand(case: Case) -> Demand:
     }
     stacked["flow"] = stacked["flow"].astype(np.int8)
     causes = {cause: np.array([piece["by_cause"][cause] for piece in pieces]) for cause in CAUSES}
-    payloads = np.array([segment.payload for segment in case.segments])
-    inertia = float(np.max(case.mechanism.inertia_at_shaft(payloads)))
     return Demand(**stacked, torque_by_cause=causes, load_inertia=inertia)
 
 

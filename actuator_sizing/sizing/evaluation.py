@@ -166,7 +166,7 @@ def course(
     current = current_of_torque(
         torque, _column(judged.torque_constant_nm_per_a), _column(judged.saturation_per_a2)
     )
-    slope = (current @ differentiation_matrix().T) * (2.0 / demand.duration_s[:, None])
+    slope = (current @ differentiation_matrix(current.shape[-1]).T) * (2.0 / demand.duration_s[:, None])
     electrical = (
         _column(judged.resistance_ohm),
         _column(judged.inductance_h),
