@@ -33,7 +33,7 @@ _EFFORTS = ("process_force", "load_force", "shaft_torque", "current")
 _FEWEST = 16  # samples that can be called a cycle
 _OPEN = 0.02  # part of the range by which the ends of one cycle may differ unnoticed
 _MOST_KNOTS = 20_000
-_GAP = 20.0  # times the usual spacing
+_GAP = 10.0  # times the usual spacing
 
 
 @dataclass(frozen=True)
@@ -176,12 +176,12 @@ def _period(
     stated = axis.number("measured_period")
     key = next(k for k in ("speed", *_EFFORTS, "position") if k in values)
     if np.isfinite(stated):
-        if stated > span * (1.0 + 1e-6):
+        if stated > span + 2.0 * spacing:
             problems.report("axis", axis.rows.get("measured_period"), "measured period", got=f"{stated:.6g} s",
                             allowed=f"at most the {span:.6g} s of the record",
                             remedy="Correct the period, or record a whole cycle.")  # fmt: skip
             return None
-        return float(stated * np.floor(span / stated * (1.0 + 1e-6)))
+        return float(stated * max(1.0, np.floor((span + spacing) / stated)))
     signal = values[key]
     if "position" in values:
         signal = values["position"] - (values["position"][-1] - values["position"][0]) * t / t[-1]

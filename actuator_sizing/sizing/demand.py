@@ -57,6 +57,7 @@ class Demand:
     motor_acceleration: FloatArray  # shaft acceleration as the motor's own moving mass feels it
     torque_by_cause: Mapping[str, FloatArray]  # (P, K) parts of shaft_torque
     load_inertia: float  # largest inertia of load and mechanism at the driven shaft
+    heat_start: NDArray[np.intp] | None = None  # first piece of each block of a condensed record
 
     @cached_property
     def functions(self) -> FloatArray:
@@ -142,7 +143,7 @@ def build_demand(case: Case) -> Demand:
     stacked: dict[str, Any] = {
         f.name: np.array([piece[f.name] for piece in pieces])
         for f in fields(Demand)
-        if f.name not in ("torque_by_cause", "load_inertia")
+        if f.name not in ("torque_by_cause", "load_inertia", "heat_start")
     }
     stacked["flow"] = stacked["flow"].astype(np.int8)
     causes = {cause: np.array([piece["by_cause"][cause] for piece in pieces]) for cause in CAUSES}

@@ -18,6 +18,7 @@ from actuator_sizing.core.quadrature import (
     differentiation_matrix,
     largest,
     largest_magnitude,
+    piece_means,
     series_value,
     signed_integrals,
     to_series,
@@ -325,9 +326,13 @@ def heat_loss(demand: Demand, motors: MotorParameters, judged: JudgedMotor, c: P
     by_speed = speed_loss(motors, c.motor_speed_rad_s)
     tau = fastest_time_constant(motors)
     shortest = float(np.nanmin(tau)) if np.isfinite(tau).any() else np.inf
-    counts = subpiece_counts(demand.duration_s, copper, shortest)
+    duration = demand.duration_s
+    if demand.heat_start is not None:  # the order within a block of a record is not known: its mean heats it
+        copper, by_speed = (_block_means(duration, demand.heat_start, loss) for loss in (copper, by_speed))
+        duration = np.add.reduceat(duration, demand.heat_start)
+    counts = subpiece_counts(duration, copper, shortest)
     return HeatLoss(
-        duration_s=subpiece_durations(demand.duration_s, counts),
+        duration_s=subpiece_durations(duration, counts),
         copper_loss_w=subpiece_means(copper, counts),
         speed_loss_w=subpiece_means(by_speed, counts),
         resistance_coefficient_per_k=motors.resistance_coefficient_per_k,
@@ -335,6 +340,12 @@ def heat_loss(demand: Demand, motors: MotorParameters, judged: JudgedMotor, c: P
         magnet_coefficient_per_k=motors.magnet_coefficient_per_k,
         magnet_reference_degc=motors.magnet_reference_degc,
     )
+
+
+def _block_means(duration_s: FloatArray, start: NDArray[np.intp], loss: FloatArray) -> FloatArray:
+    """Means over blocks of pieces, as constant node values, shape (B, P, K) to (B, G, K)."""
+    total = np.add.reduceat(piece_means(loss) * duration_s, start, axis=1)
+    return np.repeat((total / np.add.reduceat(duration_s, start))[..., None], loss.shape[2], axis=2)
 
 
 def _plane(demand: Demand, c: PairCourse, judged: JudgedMotor) -> dict[str, FloatArray]:

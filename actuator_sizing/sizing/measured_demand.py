@@ -1,9 +1,9 @@
 """Demand of a recorded cycle: the effort straight between its samples, the motion a spline.
 
-Up to `EXACT_INTERVALS` stretches stay pieces of their own. A longer record is condensed: each hundredth of the
+Up to `EXACT_INTERVALS` stretches stay pieces of their own. A longer record is condensed: each fortieth of the
 cycle keeps few instants whose means and mean products are those of all its samples, so that RMS values,
 losses and energies stay exact, and every instant that can govern a peak is kept. What is lost is the order
-of the instants inside a hundredth of the cycle, and the voltage of changing current.
+of the instants inside a fortieth of the cycle, and the voltage of changing current.
 """
 
 from __future__ import annotations
@@ -23,7 +23,7 @@ FloatArray = NDArray[np.float64]
 
 NODES = 3  # straight efforts: their squares are exact, products with the smooth motion to fourth order
 EXACT_INTERVALS = 400
-BLOCKS = 100
+BLOCKS = 40
 _GROUP = 32  # stretches of which only the largest and the smallest torque can be extreme
 _FAN = 5  # directions of each of three axes in which extremes are looked for
 
@@ -91,6 +91,7 @@ def _condensed(case: Case, recording: Recording, borders: FloatArray) -> dict[st
     out["start_s"] = np.concatenate([[0.0], np.cumsum(duration)[:-1]])
     out["flow"] = (kinds // 3).astype(np.int8)
     out["direction"] = (kinds % 3 - 1).astype(float)
+    out["heat_start"] = np.flatnonzero(np.diff(block[order], prepend=-1))
     return _finished(out)
 
 

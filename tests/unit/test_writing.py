@@ -160,7 +160,7 @@ def test_relative_catalog_folder_still_names_the_same_folder(tmp_path):
 DEMO = Path(__file__).parents[2] / "catalogs_demo"
 
 
-@pytest.mark.parametrize("name", ["tray_lift", "tray_shuttle", "potting_table"])
+@pytest.mark.parametrize("name", ["tray_lift", "tray_shuttle", "tray_shuttle_measured", "potting_table"])
 def test_demo_cases_mean_the_same_in_every_form(tmp_path, name):
     """One of them has semicolons, decimal commas and a shared catalog folder."""
     shutil.copytree(DEMO / "catalog", tmp_path / "catalog")
