@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Callable
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -14,7 +15,8 @@ from actuator_sizing.errors import InputError, Problem
 from actuator_sizing.sizing.candidates import candidate_table
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import build_demand, cycle_quantities
-from actuator_sizing.sizing.detail import SetModel, commissioning_quantities, quantities, set_detail
+from actuator_sizing.sizing.detail import set_detail
+from actuator_sizing.sizing.fitting import compatible
 from actuator_sizing.sizing.judging import (
     ORDER,
     Verdicts,
@@ -24,9 +26,11 @@ from actuator_sizing.sizing.judging import (
     judge_sets,
 )
 from actuator_sizing.sizing.provenance import assumptions_of, questions_of
+from actuator_sizing.sizing.quantities import commissioning_quantities, quantities
 from actuator_sizing.sizing.ranking import RANKINGS, nearest_drives, ranking_key
 from actuator_sizing.sizing.results import FAILS, NOT_CHECKED, Comparison, Rejections, SetResult
-from actuator_sizing.sizing.screening import Screened, compatible, screen
+from actuator_sizing.sizing.screening import Screened, screen
+from actuator_sizing.sizing.set_model import SetModel
 from actuator_sizing.sizing.shortlist import evaluate_sets
 from actuator_sizing.version import __version__
 
@@ -45,7 +49,12 @@ _NEAREST_LOSERS = 40  # motor × gearhead pairs that came closest, evaluated exa
 
 
 def compare(
-    case: Case, *, rank_by: str | None = None, detail: int | None = None, progress: Progress | None = None
+    case: Case,
+    *,
+    rank_by: str | None = None,
+    detail: int | None = None,
+    levers: int = 0,
+    progress: Progress | None = None,
 ) -> Comparison:
     """Compare every motor × gearhead × drive set of a case.
 
@@ -57,6 +66,8 @@ def compare(
         ``"price"``, ``"mass"``, ``"reserve"`` or ``"energy"``; default: what the case says. [-]
     detail : int, optional
         How many sets to list with all their checks; default: what the case says. [-]
+    levers : int
+        For how many of the nearest losers to find the smallest change that lets them pass. [-]
     progress : callable, optional
         Called with a stage and the part of it that is done, 0 to 1. [-]
 
@@ -75,7 +86,7 @@ def compare(
         raise InputError(
             [Problem("axis", None, "rank by", ranked_by, " | ".join(RANKINGS), "Choose one of these.")]
         )
-    wanted = int(detail or case.options["sets to detail"])  # type: ignore[arg-type]
+    wanted = int(detail or case.number("sets to detail"))
     demand = build_demand(case)
     checks, limits = active_checks(case.limits)
     binding = tuple(c for c, limit in zip(checks, limits, strict=True) if is_binding(c, limit))
@@ -93,7 +104,7 @@ def compare(
     if screened.screened == 0:
         raise InputError([_no_set(case)])
     losers = nearest_drives(case, demand, screened.nearest_losers)
-    index = np.unique(np.concatenate([screened.survivors, losers]), axis=0)
+    index = np.unique(np.concatenate([screened.survivors, losers, screened.nearest_by_drive]), axis=0)
     sets = evaluate_sets(case, demand, index, _stage(progress, "evaluation"))
     verdicts = judge_sets(sets, checks, limits)
     order = _rank(case, sets, verdicts, index, ranked_by)
@@ -102,6 +113,7 @@ def compare(
         _set_result(case, demand, sets, verdicts, index, int(i), rank, with_curves=rank == 1)
         for rank, i in enumerate(listed, start=1)
     )
+    results = _with_levers(case, demand, results, levers, _stage(progress, "levers"))
     survivor_rows = _is_survivor(index, screened.survivors)
     return Comparison(
         case=case,
@@ -115,6 +127,30 @@ def compare(
         questions=questions_of(results),
         version=__version__,
     )
+
+
+def _with_levers(
+    case: Case,
+    demand: Demand,
+    results: tuple[SetResult, ...],
+    count: int,
+    progress: Callable[[float], None] | None,
+) -> tuple[SetResult, ...]:
+    """The results, the nearest losers with what would let them pass."""
+    if count <= 0:
+        return results
+    from actuator_sizing.sizing.levers import levers_of
+
+    chosen = [item.rank for item in results if item.verdict == FAILS][:count]
+    answered = []
+    for item in results:
+        if item.rank in chosen:
+            parts = (item.motor_index, item.gearhead_index, item.drive_index)
+            item = replace(item, levers=levers_of(case, demand, *parts))
+            if progress is not None:
+                progress((chosen.index(item.rank) + 1) / len(chosen))
+        answered.append(item)
+    return tuple(answered)
 
 
 def _stage(progress: Progress | None, name: str) -> Callable[[float], None] | None:

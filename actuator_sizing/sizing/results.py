@@ -7,6 +7,7 @@ from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
+    from datetime import date
     from pathlib import Path
 
     import pandas as pd
@@ -19,6 +20,8 @@ LOW_RESERVE = "passes, low reserve"
 FAILS = "fails"
 NOT_CHECKED = "not checked"
 VERDICTS = (PASSES, LOW_RESERVE, NOT_CHECKED, FAILS)
+#: What a check that only advises says instead; it neither passes nor fails.
+ADVICE_MET, ADVICE_NOT_MET = "advice met", "advice not met"
 
 
 @dataclass(frozen=True)
@@ -47,6 +50,13 @@ class CheckResult:
     missing: tuple[str, ...] = ()
     inputs: tuple[tuple[str, str], ...] = ()  # (input used, origin)
     is_advice: bool = False
+
+    @property
+    def shown_verdict(self) -> str:
+        """The verdict as every format words it: advice neither passes nor fails."""
+        if not self.is_advice or self.utilisation is None:
+            return self.verdict
+        return ADVICE_NOT_MET if self.utilisation > self.allowed else ADVICE_MET
 
     @property
     def margin(self) -> float | None:
@@ -96,6 +106,9 @@ class SetDetail:
     #: levels for limit lines, e.g. motor_peak_current_a, drive_peak_current_a, drive_continuous_current_a,
     #: speed_max_rad_s, winding_limit_degc, ambient_degc, voltage_available_v (NaN: not known)
     levels: Mapping[str, float]
+    #: one row per segment of the duty cycle: torque_rms_nm, current_rms_a and current_squared_a2_s, the integral
+    #: of the squared current over the segment; their sum over the cycle time is the squared RMS current
+    segments: pd.DataFrame | None = None
 
 
 @dataclass(frozen=True)
@@ -194,6 +207,7 @@ class Comparison:
         self,
         folder: str | Path,
         *,
+        date: date | None = None,
         pdf: bool | None = None,
         since: Mapping[str, Any] | None = None,
     ) -> tuple[Path, ...]:
@@ -203,6 +217,9 @@ class Comparison:
         ----------
         folder : str or Path
             Output folder; made if missing.
+        date : datetime.date or None
+            Date of the report; by default today, or the day in the environment variable
+            ``SOURCE_DATE_EPOCH``.
         pdf : bool or None
             Write the PDF too; None writes it if the optional package for it is installed.
         since : mapping or None
@@ -220,4 +237,4 @@ class Comparison:
         """
         from actuator_sizing.report import write_report
 
-        return write_report(self, folder, pdf=pdf, since=since)
+        return write_report(self, folder, date=date, pdf=pdf, since=since)

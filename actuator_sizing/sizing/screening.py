@@ -16,20 +16,11 @@ from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
 from actuator_sizing.core.machine import amplitude_per_unit_current
-from actuator_sizing.core.moments import (
-    SupportPoints,
-    mean_products,
-    support_points,
-)
-from actuator_sizing.core.parameters import (
-    BRUSHED,
-    SINUSOIDAL,
-    SIX_STEP,
-    DriveParameters,
-    MotorParameters,
-)
 from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
 from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.drive_side import DriveSide
+from actuator_sizing.sizing.fitting import compatible, fits_axis
+from actuator_sizing.sizing.tallies import Losses, Pool
 
 if TYPE_CHECKING:
     from actuator_sizing.sizing.checks.base import Check
@@ -54,83 +45,13 @@ class Screened:
     survivors: NDArray[np.intp]  # (S, 3)
     #: motor, gearhead index of the rejected pairs that came closest, nearest first
     nearest_losers: NDArray[np.intp]  # (L, 2)
+    #: motor, gearhead, drive index of the sets that only their drive rejects, nearest first
+    nearest_by_drive: NDArray[np.intp]  # (L, 3)
     #: the rejected sets with what governs them, only where all sets are at most `LISTED_SETS`
     lost: NDArray[np.intp]  # (R, 3)
     lost_check: NDArray[np.intp]  # (R,) index into check_names
     lost_bound: FloatArray  # (R,) lower bound of the utilisation over allowed
     check_names: tuple[str, ...]
-
-
-def compatible(motors: MotorParameters, drives: DriveParameters) -> NDArray[np.bool_]:
-    """Which drive can commutate which motor, shape (M, D). [-]"""
-    served = {
-        BRUSHED: drives.serves_brushed,
-        SIX_STEP: drives.serves_six_step,
-        SINUSOIDAL: drives.serves_sinusoidal,
-    }
-    answer = np.zeros((len(motors), len(drives)), dtype=bool)
-    for commutation, mask in served.items():
-        answer |= (motors.commutation == commutation)[:, None] & mask[None, :]
-    return answer
-
-
-def fits_axis(case: Case) -> tuple[NDArray[np.intp], NDArray[np.intp]]:
-    """Indices of the motors and gearheads that the axis can use at all.
-
-    Parameters
-    ----------
-    case : Case
-        The case. [-]
-
-    Returns
-    -------
-    motors, gearheads : ndarray of int
-        Linear motors where the mechanism is one, rotary ones elsewhere; no winding whose stated nominal
-        voltage is far below the bus, since its insulation is not made for it. [-]
-    """
-    wants_linear = case.mechanism.drives_linear_motor
-    allowed = case.options["largest bus over nominal voltage"]
-    with np.errstate(invalid="ignore"):
-        overfed = case.surroundings.bus_nominal_v > allowed * case.motor_parameters.nominal_voltage_v  # type: ignore[operator]
-    motors = np.flatnonzero((case.motor_parameters.is_linear == wants_linear) & ~overfed)
-    gearheads = np.arange(len(case.gearhead_parameters))
-    if wants_linear:
-        gearheads = np.flatnonzero(case.gearhead_parameters.is_direct)
-    return motors, gearheads
-
-
-class _Pool:
-    """The best `keep` rows by key, then by index, whatever number is added and in whatever order."""
-
-    def __init__(self, keep: int):
-        self.keep = keep
-        self.rows: list[NDArray[np.intp]] = []
-        self.keys: list[FloatArray] = []
-        self.size = 0
-        self.bar = np.inf  # no worse key can get in any more
-
-    def add(self, rows: NDArray[np.intp], keys: FloatArray) -> None:
-        """Offer rows."""
-        good = keys <= self.bar
-        self.rows.append(rows[good])
-        self.keys.append(keys[good])
-        self.size += int(good.sum())
-        if self.size > 4 * self.keep:
-            rows, keys = self._best()
-            self.rows, self.keys, self.size, self.bar = [rows], [keys], len(keys), keys[-1]
-
-    def _best(self) -> tuple[NDArray[np.intp], FloatArray]:
-        rows, keys = np.concatenate(self.rows), np.concatenate(self.keys)
-        if len(keys) > self.keep:
-            good = keys <= np.partition(keys, self.keep - 1)[self.keep - 1]
-            rows, keys = rows[good], keys[good]
-        # Ties fall back on the index, so that the answer does not depend on the block size.
-        order = np.lexsort((*rows.T[::-1], keys))[: self.keep]
-        return rows[order], keys[order]
-
-    def sorted(self, width: int) -> NDArray[np.intp]:
-        """The rows, best first."""
-        return self._best()[0] if self.rows else np.empty((0, width), dtype=np.intp)
 
 
 def screen(
@@ -174,20 +95,14 @@ def screen(
     # Motors that the same drives serve lie together: their sets are then counted in one stroke.
     motor_index = motor_index[np.argsort(case.motor_parameters.commutation[motor_index], kind="stable")]
     drives = case.drive_parameters
-    context = _Context(
-        case=case,
-        demand=demand,
-        checks=tuple(check for check in checks if check.bound is not None),
-        allowed=allowed,
-        drive_side=_DriveSide(case, allowed),
-        key=key,
-    )
-    gearhead_side = GearheadSide.of(
-        case.gearhead_parameters.take(gearhead_index),
-        mean_products(demand.duration_s, demand.functions),
-        support_points(demand.functions, demand.flow),
-        _voltage_points(demand),
-    )
+    total = len(case.motor_parameters) * len(case.gearhead_parameters) * len(drives)
+    bounded = tuple(check for check in checks if check.bound is not None)
+    drive_side = DriveSide(case, allowed)
+    names = (*(check.key for check in bounded), *drive_side.names)
+    losses = Losses(names, listed=total <= LISTED_SETS)
+    pools = (Pool(keep), Pool(losers), Pool(losers))
+    run = _Run(case, bounded, allowed, drive_side, key, *pools, losses)
+    gearhead_side = GearheadSide.of(case.gearhead_parameters.take(gearhead_index), demand)
     gearhead_parts = [
         (
             gearhead_index[start : start + _GEARHEADS_PER_BLOCK],
@@ -195,19 +110,15 @@ def screen(
         )
         for start in range(0, len(gearhead_index), _GEARHEADS_PER_BLOCK)
     ]
-    total = len(case.motor_parameters) * len(case.gearhead_parameters) * len(drives)
-    losses = _Losses(
-        (*(check.key for check in context.checks), *context.drive_side.names), listed=total <= LISTED_SETS
-    )
-    pool, nearest = _Pool(keep), _Pool(losers)
+    recommended = case.number("recommended inertia ratio")
     survivors = screened = 0
     for start in range(0, len(motor_index), _MOTORS_PER_BLOCK):
         m = motor_index[start : start + _MOTORS_PER_BLOCK]
         motor_side = MotorSide.of(case.motor_parameters.take(m), case.surroundings)
         served = compatible(motor_side.motors, drives)
         for g, part in gearhead_parts:
-            block = Block(demand, case.surroundings, context.recommended_inertia_ratio, motor_side, part)
-            survivors += _screen_block(context, block, m, g, served, pool, nearest, losses)
+            block = Block(demand, case.surroundings, recommended, motor_side, part)
+            survivors += _screen_tile(run, _Tile(block, m, g, served))
         screened += int(served.sum()) * len(gearhead_index)
         if progress is not None:
             progress((start + len(m)) / len(motor_index))
@@ -221,8 +132,9 @@ def screen(
         screened=screened,
         rejected_by_check={name: count for name, count in counts.items() if count},
         survivor_count=survivors,
-        survivors=pool.sorted(3),
-        nearest_losers=nearest.sorted(2),
+        survivors=run.pool.sorted(3),
+        nearest_losers=run.nearest.sorted(2),
+        nearest_by_drive=run.by_drive.sorted(3),
         lost=lost,
         lost_check=lost_check,
         lost_bound=lost_bound,
@@ -230,114 +142,45 @@ def screen(
     )
 
 
-class _Losses:
-    """Counts of rejected sets by check and, for catalogs of a size to list, the sets themselves."""
+@dataclass(frozen=True)
+class _Run:
+    """What all blocks of one screening share: how to judge, and where to put what is found."""
 
-    def __init__(self, names: tuple[str, ...], *, listed: bool):
-        self.names = names
-        self.counts = np.zeros(len(names), dtype=np.int64)
-        self.listed = listed
-        self.rows: list[NDArray[np.intp]] = []
-        self.checks: list[NDArray[np.intp]] = []
-        self.bounds: list[FloatArray] = []
-
-    def add(self, check: NDArray[np.intp], weight: NDArray[np.intp]) -> None:
-        """Count `weight` sets under each check."""
-        self.counts += np.bincount(check, weights=weight, minlength=len(self.names)).astype(np.int64)
-
-    def count(self, check: int, governed: NDArray[np.bool_], drives_per_motor: NDArray[np.intp]) -> None:
-        """Count under one check the sets of the pairs that it governs, (N, M)."""
-        drives = drives_per_motor[0]
-        if np.all(drives_per_motor == drives):
-            self.counts[check] += int(np.count_nonzero(governed)) * int(drives)
-        else:
-            self.counts[check] += int(np.count_nonzero(governed, axis=0) @ drives_per_motor)
-
-    def keep(self, rows: NDArray[np.intp], check: NDArray[np.intp], bound: FloatArray) -> None:
-        """List the sets themselves."""
-        if self.listed:
-            self.rows.append(rows)
-            self.checks.append(check)
-            self.bounds.append(bound)
-
-    def table(self) -> tuple[NDArray[np.intp], NDArray[np.intp], FloatArray]:
-        """All listed sets."""
-        if not self.rows:
-            return np.empty((0, 3), dtype=np.intp), np.empty(0, dtype=np.intp), np.empty(0)
-        return np.concatenate(self.rows), np.concatenate(self.checks), np.concatenate(self.bounds)
+    case: Case
+    checks: tuple[Check, ...]
+    allowed: Mapping[str, float]
+    drive_side: DriveSide
+    key: str
+    pool: Pool
+    nearest: Pool
+    by_drive: Pool
+    losses: Losses
 
 
 @dataclass(frozen=True)
-class _Context:
-    case: Case
-    demand: Demand
-    checks: tuple[Check, ...]
-    allowed: Mapping[str, float]
-    drive_side: _DriveSide
-    key: str
+class _Tile:
+    """One block with the place of its N gearheads and M motors in the catalogs."""
 
-    @property
-    def recommended_inertia_ratio(self) -> float:
-        return float(self.case.options["recommended inertia ratio"])  # type: ignore[arg-type]
+    block: Block
+    motor_index: NDArray[np.intp]  # (M,)
+    gearhead_index: NDArray[np.intp]  # (N,)
+    served: NDArray[np.bool_]  # (M, D) which drive can commutate which motor
 
-
-class _DriveSide:
-    """The drives' limits as amplitudes over the allowed utilisation, and what they cost."""
-
-    def __init__(self, case: Case, allowed: Mapping[str, float]):
-        d, s = case.drive_parameters, case.surroundings
-        amplitude = amplitude_per_unit_current(d.current_basis)
-        self.peak = np.where(np.isnan(d.peak_current_a), np.inf, d.peak_current_a * amplitude)
-        self.continuous = np.where(
-            np.isnan(d.continuous_current_a), np.inf, d.continuous_current_a * amplitude
-        )
-        # The drive's peak current also bounds the torque over speed; the stricter of the two allowed values counts.
-        strict = min(allowed.get("drive_peak_current", np.inf), allowed.get("speed_torque", np.inf))
-        self.peak_allowed = strict
-        self.peak_check = "drive_peak_current" if "drive_peak_current" in allowed else "speed_torque"
-        self.continuous_allowed = allowed.get("drive_continuous_current", np.inf)
-        with np.errstate(invalid="ignore"):
-            bus = np.fmax(s.bus_max_v / d.bus_voltage_max_v, d.bus_voltage_min_v / s.bus_min_v)
-        self.bus = np.nan_to_num(bus, nan=0.0) / allowed.get("drive_bus_voltage", np.inf)
-        self.price = d.price
-        self.mass = d.mass_kg
-        self.names = ("drive_bus_voltage", "drive_continuous_current", self.peak_check)
+    def pairs(self, gearhead: NDArray[np.intp], motor: NDArray[np.intp]) -> NDArray[np.intp]:
+        """Catalog rows of motor and gearhead for places in the block, shape (n, 2)."""
+        return np.column_stack([self.motor_index[motor], self.gearhead_index[gearhead]])
 
 
-def _voltage_points(demand: Demand) -> SupportPoints:
-    """Instants of largest ``|ω|`` mixed with torque: where the voltage can govern."""
-    flat = demand.functions.reshape(6, -1)
-    direction = np.repeat(demand.direction, demand.shaft_speed.shape[1])
-    moving = np.flatnonzero(direction != 0.0)
-    if not len(moving):
-        return SupportPoints(np.empty((0, 6)), np.empty(0))
-    speed = direction[moving] * flat[5, moving]
-    torque = direction[moving] * (flat[1] + flat[2])[moving]
-    along = direction[moving] * flat[0, moving]
-    speed, torque, along = (x / (np.max(np.abs(x)) or 1.0) for x in (speed, torque, along))
-    chosen = {int(moving[(speed + w * torque + u * along).argmax()]) for w, u in ((1e-6, 0.0), (0.3, 0.3))}
-    index = np.array(sorted(chosen))
-    return SupportPoints(flat[:, index].T, direction[index])
-
-
-def _screen_block(
-    context: _Context,
-    block: Block,
-    motor_index: NDArray[np.intp],
-    gearhead_index: NDArray[np.intp],
-    served: NDArray[np.bool_],
-    pool: _Pool,
-    nearest: _Pool,
-    losses: _Losses,
-) -> int:
+def _screen_tile(run: _Run, tile: _Tile) -> int:
     """Screen one block; returns how many sets survive."""
-    gearhead_worst, gearhead_check, others = _utilisations(context, block)
-    worst = np.broadcast_to(gearhead_worst, block.mean_square.shape).copy()
+    losses = run.losses
+    gearhead_worst, gearhead_check, others = _utilisations(run, tile.block)
+    worst = np.broadcast_to(gearhead_worst, tile.block.mean_square.shape).copy()
     for _, utilisation in others:
         np.fmax(worst, utilisation, out=worst)  # NaN, not known, is never the worst
     fails = worst > 1.0 + _ROUNDING
 
-    drives_per_motor = served.sum(axis=1)
+    drives_per_motor = tile.served.sum(axis=1)
     left = fails.copy()
     by_gearhead = (
         (number, np.where(gearhead_check == number, gearhead_worst, np.nan))
@@ -349,22 +192,16 @@ def _screen_block(
         left ^= governed
         losses.count(number, governed, drives_per_motor)
         if losses.listed:
-            j, i, drive = np.nonzero(governed[:, :, None] & served)
-            losses.keep(
-                np.column_stack([motor_index[i], gearhead_index[j], drive]),
-                np.full(len(i), number),
-                worst[j, i],
-            )
-    j, i = np.nonzero(fails & (worst <= nearest.bar) & (drives_per_motor > 0))
+            j, i, drive = np.nonzero(governed[:, :, None] & tile.served)
+            losses.keep(np.column_stack([tile.pairs(j, i), drive]), np.full(len(i), number), worst[j, i])
+    j, i = np.nonzero(fails & (worst <= run.nearest.bar) & (drives_per_motor > 0))
     if len(i):
-        nearest.add(np.column_stack([motor_index[i], gearhead_index[j]]), worst[j, i])
-    return _screen_drives(
-        context, block, ~fails, served, motor_index, gearhead_index, worst, pool, nearest, losses
-    )
+        run.nearest.add(tile.pairs(j, i), worst[j, i])
+    return _screen_drives(run, tile, ~fails, worst)
 
 
 def _utilisations(
-    context: _Context, block: Block
+    run: _Run, block: Block
 ) -> tuple[FloatArray, NDArray[np.intp], list[tuple[int, FloatArray]]]:
     """Utilisation over allowed of every motor and gearhead check.
 
@@ -374,11 +211,11 @@ def _utilisations(
     worst = np.zeros((len(block.gearheads), 1))
     check_number = np.zeros(worst.shape, dtype=np.intp)
     others = []
-    for number, check in enumerate(context.checks):
+    for number, check in enumerate(run.checks):
         assert check.bound is not None
         utilisation = check.bound(block)
-        if context.allowed[check.key] != 1.0:
-            utilisation = utilisation / context.allowed[check.key]
+        if run.allowed[check.key] != 1.0:
+            utilisation = utilisation / run.allowed[check.key]
         if check.group == "gearhead":
             utilisation = np.where(block.gearheads.is_direct[:, None], 0.0, utilisation)
             higher = utilisation > worst
@@ -389,75 +226,53 @@ def _utilisations(
     return worst, check_number, others
 
 
-def _screen_drives(
-    context: _Context,
-    block: Block,
-    passing: NDArray[np.bool_],
-    served: NDArray[np.bool_],
-    motor_index: NDArray[np.intp],
-    gearhead_index: NDArray[np.intp],
-    worst: FloatArray,
-    pool: _Pool,
-    nearest: _Pool,
-    losses: _Losses,
-) -> int:
+def _screen_drives(run: _Run, tile: _Tile, passing: NDArray[np.bool_], worst: FloatArray) -> int:
     """Hold the pairs that may pass against every drive; returns how many sets survive."""
-    side = context.drive_side
+    side, block, losses = run.drive_side, tile.block, run.losses
     columns, rows = np.nonzero(passing)  # gearheads, motors
     amplitude = amplitude_per_unit_current(block.motors.current_basis)
     total = 0
-    step = max(1, 2**16 // max(1, len(side.peak)))
+    step = max(1, 2**16 // max(1, len(side)))
     for start in range(0, len(rows), step):
         r, c = rows[start : start + step], columns[start : start + step]
-        peak = (block.current_peak[c, r] * amplitude[r])[:, None]
-        rms = (block.current_rms[c, r] * amplitude[r])[:, None]
-        ok = served[r]
-        bus = np.broadcast_to(side.bus[None, :], ok.shape)
-        continuous = rms / (side.continuous * side.continuous_allowed)[None, :]
-        top = peak / (side.peak * side.peak_allowed)[None, :]
-        stack = np.stack([bus, continuous, top])
+        ok = tile.served[r]
+        stack = side.utilisations(
+            block.current_peak[c, r] * amplitude[r], block.current_rms[c, r] * amplitude[r]
+        )
         drive_worst = stack.max(axis=0)
         survives = ok & (drive_worst <= 1.0 + _ROUNDING)
-        check = len(context.checks) + stack.argmax(axis=0)
+        check = len(run.checks) + stack.argmax(axis=0)
         out_row, out_drive = np.nonzero(ok & ~survives)
         losses.add(check[out_row, out_drive], np.ones(len(out_row), dtype=np.intp))
-        losses.keep(
-            np.column_stack([motor_index[r[out_row]], gearhead_index[c[out_row]], out_drive]),
-            check[out_row, out_drive],
-            drive_worst[out_row, out_drive],
-        )
+        lost = np.column_stack([tile.pairs(c[out_row], r[out_row]), out_drive])
+        losses.keep(lost, check[out_row, out_drive], drive_worst[out_row, out_drive])
+        run.by_drive.add(lost, drive_worst[out_row, out_drive])
         k, d = np.nonzero(survives)
         total += len(k)
         if len(k):
-            m, g = motor_index[r[k]], gearhead_index[c[k]]
+            sets = np.column_stack([tile.pairs(c[k], r[k]), d])
             bound = np.maximum(worst[c[k], r[k]], drive_worst[k, d])
-            pool.add(np.column_stack([m, g, d]), _key(context, block, m, g, d, r[k], c[k], bound))
-        none = ok.any(axis=1) & ~survives.any(axis=1)
-        if none.any():
-            closest = np.where(ok, drive_worst, np.inf).min(axis=1)
-            nearest.add(np.column_stack([motor_index[r[none]], gearhead_index[c[none]]]), closest[none])
+            run.pool.add(sets, _key(run, block, sets, r[k], c[k], bound))
     return total
 
 
 def _key(
-    context: _Context,
+    run: _Run,
     block: Block,
-    m: NDArray[np.intp],
-    g: NDArray[np.intp],
-    d: NDArray[np.intp],
+    sets: NDArray[np.intp],
     row: NDArray[np.intp],
     column: NDArray[np.intp],
     bound: FloatArray,
 ) -> FloatArray:
     """What the survivors are ordered by; smaller is better, unknown comes last."""
-    case = context.case
-    if context.key == "reserve":
+    case = run.case
+    if run.key == "reserve":
         return bound
-    if context.key == "energy":
+    if run.key == "energy":
         j = block.judged
         loss = j.resistance_ohm[row] / j.torque_constant_nm_per_a[row] ** 2 * block.mean_square[column, row]
         return np.asarray(loss)
-    name = "price" if context.key == "price" else "mass_kg"
+    name = "price" if run.key == "price" else "mass_kg"
     parts = (case.motor_parameters, case.gearhead_parameters, case.drive_parameters)
-    total = sum(getattr(part, name)[index] for part, index in zip(parts, (m, g, d), strict=True))
-    return np.nan_to_num(np.asarray(total), nan=np.finfo(float).max)
+    total = sum(getattr(part, name)[index] for part, index in zip(parts, sets.T, strict=True))
+    return np.asarray(np.nan_to_num(np.asarray(total), nan=np.finfo(float).max))

@@ -103,6 +103,17 @@ def mean_square(time: np.ndarray, value: np.ndarray) -> float:
     return float(np.sum(dt * (a * a + a * b + b * b)) / 3.0 / (time[-1] - time[0]))
 
 
+def segment_table(cycle: pd.DataFrame) -> pd.DataFrame:
+    """RMS torque and current of each segment, exact for values linear between instants."""
+    rows = []
+    for name in cycle["segment"].drop_duplicates():
+        part = cycle[cycle["segment"] == name]
+        time = part["time_s"].to_numpy()
+        torque, current = (mean_square(time, part[c].to_numpy()) for c in ("motor_torque_nm", "current_a"))
+        rows.append((math.sqrt(torque), math.sqrt(current), current * (time[-1] - time[0])))
+    return pd.DataFrame(rows, columns=["torque_rms_nm", "current_rms_a", "current_squared_a2_s"])
+
+
 def temperatures(
     loss: float, ripple: float, r1: float, r2: float, tau_w: float, tau_h: float
 ) -> tuple[pd.DataFrame, pd.DataFrame]:
@@ -234,6 +245,7 @@ def build_set(motor_index: int, drive_index: int, detailed: bool) -> SetResult:
         warm_up=warm,
         envelope=limits,
         step_response=step_response(constant, resistance, inertia + load_inertia),
+        segments=segment_table(cycle),
         levels={
             "motor_peak_current_a": peak,
             "drive_peak_current_a": drive_peak,
@@ -426,6 +438,13 @@ def build_hostile() -> Comparison:
     case.entries = tuple(
         entry("axis", text, text, text, text, "", rule=text, source=text) for text in HOSTILE
     ) + (entry("axis", "mass", "mass", "inf kg", math.inf, "kg"), entry("axis", "n", "n", "", None, "A"))
+    case.segments = tuple(
+        SimpleNamespace(
+            **(vars(segment) | {"name": HOSTILE[n], "law": HOSTILE[n + 1], "note": HOSTILE[n + 2]})
+        )
+        for n, segment in enumerate(case.segments)
+    )
+    case.problems = tuple(Problem(text, 2, text, text, text, text, WARNING) for text in HOSTILE)
     case.options = {"title": HOSTILE[1], "revision": HOSTILE[0], "prepared by": HOSTILE[5]}
     candidates = base.candidates.assign(
         motor=[s.motor for s in sets], gearhead=[s.gearhead for s in sets], drive=[s.drive for s in sets]

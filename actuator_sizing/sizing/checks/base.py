@@ -55,6 +55,10 @@ class Measure:
     at_s: FloatArray | None = None
     utilisation: FloatArray | None = None
 
+    def instant(self, index: int) -> float:
+        """When the demand of one set is largest; NaN where the check has no instant. [s]"""
+        return np.nan if self.at_s is None else float(self.at_s[index])
+
     def ratio(self) -> FloatArray:
         """Utilisation, shape (S,); infinite where there is demand but no capacity. [-]"""
         if self.utilisation is not None:
@@ -62,6 +66,12 @@ class Measure:
         with np.errstate(divide="ignore", invalid="ignore"):
             ratio = self.demand / self.capacity
         return np.where((self.demand == 0.0) & (self.capacity == 0.0), 0.0, ratio)
+
+    def quotient(self, index: int) -> str:
+        """Demand over capacity of one set with its numbers put in, the end of most workings."""
+        return (
+            f"{digits(self.demand[index])} / {digits(self.capacity[index])} = {digits(self.ratio()[index])}"
+        )
 
 
 @dataclass(frozen=True)
@@ -79,7 +89,7 @@ class Need:
 
     def known(self, sets: Sets) -> NDArray[np.bool_]:
         """Which of the sets have it, shape (S,). [-]"""
-        value = getattr(getattr(sets, self.part), self.field)
+        value = np.asarray(getattr(getattr(sets, self.part), self.field))
         return value if value.dtype == bool else ~np.isnan(value)
 
 
@@ -118,6 +128,8 @@ class Check:
         Sets → mask of the sets that the check concerns.
     is_advice : bool
         Never fails unless the user makes it a limit.
+    is_fit : bool
+        Parts fit together or do not: such a check governs only where it fails.
     yields_to : str
         Key of the check that fails too wherever this one is infinite, and says by how much.
     """
@@ -135,6 +147,7 @@ class Check:
     applies: Callable[[Sets], NDArray[np.bool_]] = _always
     linear_unit: str = ""
     is_advice: bool = False
+    is_fit: bool = False
     yields_to: str = ""
 
 

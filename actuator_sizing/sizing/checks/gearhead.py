@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -17,7 +19,7 @@ def _same(value: float, sets: Sets) -> FloatArray:
     return np.full(len(sets), value)
 
 
-def _working(symbol: str, unit: str, measure):  # type: ignore[no-untyped-def]
+def _working(symbol: str, unit: str, measure: Callable[[Sets], Measure]) -> Callable[[Sets, int], str]:
     def working(sets: Sets, i: int) -> str:
         m = measure(sets)
         return (
@@ -39,7 +41,7 @@ def _equivalent_working(sets: Sets, i: int) -> str:
     return (
         f"∫ |ω| |T|³ dt = {digits(worked)} rad·(N·m)³, ∫ |ω| dt = {digits(turned)} rad per cycle; "
         f"T_eq = ({digits(worked)} / {digits(turned)})^(1/3) = {digits(float(m.demand[i]))} N·m; "
-        f"{digits(float(m.demand[i]))} / {digits(float(m.capacity[i]))} = {digits(float(m.ratio()[i]))}"
+        f"{m.quotient(i)}"
     )
 
 

@@ -2,16 +2,18 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.core.machine import JudgedMotor, judge
+from actuator_sizing.core.machine import JudgedMotor, current_of_torque, judge
 from actuator_sizing.core.parameters import BASIS_PEAK, BASIS_RMS, GearheadParameters, MotorParameters
 from actuator_sizing.core.quadrature import integrate, interpolate
 from actuator_sizing.core.transmission import stage_factor
 from actuator_sizing.sizing.checks.base import Sets, digits
+from actuator_sizing.sizing.pair_course import course
 
 FloatArray = NDArray[np.float64]
 
@@ -36,6 +38,8 @@ class Instant:
     current: float
     current_slope: float
     held: bool
+    load_acceleration: float  # load coordinate
+    causes: Mapping[str, float]  # parts of the torque at the driven shaft
 
     @property
     def units(self) -> tuple[str, str, str]:
@@ -62,8 +66,6 @@ def instant_of(sets: Sets, i: int, at_s: float, largest: str) -> Instant:
     Instant
         Everything that the working of a check names. [-]
     """
-    from actuator_sizing.sizing.evaluation import course
-
     demand = sets.demand
     motor, gearhead = sets.motors.take(slice(i, i + 1)), sets.gearheads.take(slice(i, i + 1))
     judged = judge(motor, sets.surroundings)
@@ -77,9 +79,10 @@ def instant_of(sets: Sets, i: int, at_s: float, largest: str) -> Instant:
         x = np.clip(2.0 * (at_s - demand.start_s[piece]) / demand.duration_s[piece] - 1.0, -1.0, 1.0)
         return float(interpolate(values[piece], np.array([x]))[0])
 
-    piece = int(max(inside, key=lambda p: read(decides, p)))
+    piece = int(max(inside.tolist(), key=lambda p: read(decides, p)))
     n = float(gearhead.ratio[0])
     factor = stage_factor(demand.flow[piece : piece + 1], gearhead.efficiency, gearhead.efficiency_back)
+    torque = np.array([read(c.torque_nm[0], piece)])
     return Instant(
         motor=motor,
         gearhead=gearhead,
@@ -91,10 +94,14 @@ def instant_of(sets: Sets, i: int, at_s: float, largest: str) -> Instant:
         shaft_torque=read(demand.shaft_torque, piece),
         shaft_speed=read(demand.shaft_speed, piece),
         speed=read(c.motor_speed_rad_s[0], piece),
-        torque=read(c.torque_nm[0], piece),
-        current=read(c.current_a[0], piece),
+        torque=float(torque[0]),
+        current=float(
+            current_of_torque(torque, judged.torque_constant_nm_per_a, judged.saturation_per_a2)[0]
+        ),
         current_slope=read(c.current_slope_a_s[0], piece),
         held=bool(demand.brake_closed[piece]) and demand.direction[piece] == 0.0,
+        load_acceleration=read(demand.acceleration, piece),
+        causes={cause: read(torque, piece) for cause, torque in demand.torque_by_cause.items()},
     )
 
 
@@ -106,7 +113,10 @@ def torque_working(at: Instant) -> str:
     J = float(m.rotor_inertia_kg_m2[0] + g.inertia_kg_m2[0])
     friction = float(m.friction_torque_nm[0] + g.no_load_torque_nm[0])
     c = float(m.viscous_friction_nm_s[0])
+    parts = " + ".join(f"{cause} {digits(value)}" for cause, value in at.causes.items())
     return (
+        f"T_shaft = {parts} = {digits(at.shaft_torque)} {unit} at the driven shaft, by cause, "
+        f"the load accelerating at {digits(at.load_acceleration)} (SI); "
         f"T = (J_m + J_g) α + k T_shaft/n + (T_c + T_0) sgn ω + c ω = {digits(J)} · {digits(at.acceleration)} "
         f"{alpha_unit} + {digits(at.gearhead_factor)} · {digits(at.shaft_torque)} / {digits(n)} + "
         f"{digits(friction)} · {digits(at.direction)} + {digits(c)} · {digits(at.speed)} "
@@ -192,8 +202,6 @@ def available_voltage_working(sets: Sets, i: int) -> str:
 
 def rms_working(sets: Sets, i: int) -> str:
     """RMS current from the integral of i² over each segment."""
-    from actuator_sizing.sizing.evaluation import course
-
     demand = sets.demand
     motor, gearhead = sets.motors.take(slice(i, i + 1)), sets.gearheads.take(slice(i, i + 1))
     current = course(demand, motor, gearhead, judge(motor, sets.surroundings)).current_a[0]
