@@ -14,7 +14,13 @@ from actuator_sizing.case.model import Entry, Segment
 from actuator_sizing.case.parsing import parse_table, report_empty_cells
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.raw_tables import RawTable
-from actuator_sizing.case.recording import RECORDED_EFFORT, RECORDED_PROCESS, RECORDED_SHAFT, Recording
+from actuator_sizing.case.recording import (
+    EXACT_INTERVALS,
+    RECORDED_EFFORT,
+    RECORDED_PROCESS,
+    RECORDED_SHAFT,
+    Recording,
+)
 from actuator_sizing.case.sample_files import NumberTable
 from actuator_sizing.case.tables import TABLES
 from actuator_sizing.core.measured import (
@@ -85,6 +91,13 @@ def understand_recording(
     motion = _motion(rows[kept], t[kept], {k: v[kept] for k, v in values.items()}, period, axis, problems)
     if motion is None:
         return None
+    stretches = int(kept.sum()) + len(motion.coefficients)
+    if stretches > EXACT_INTERVALS:
+        problems.report(_TABLE, None, got=f"{stretches} stretches between instants",
+                        allowed=f"up to {EXACT_INTERVALS} one by one",
+                        remedy="Condensed: means, RMS values and losses stay exact; the order within a short part of "
+                        "the cycle, and the voltage that a changing current takes, are left out.",
+                        severity=NOTE)  # fmt: skip
     return _understood(t[kept], {k: v[kept] for k, v in values.items()}, period, motion, axis)
 
 
@@ -240,7 +253,8 @@ def _motion(
     fits = {
         factor: smooth_position(t, values[key], period, factor * cut_off, drift, order)
         for factor in (0.5, 1.0, 2.0)
-        if period / knots_for(period, factor * cut_off) >= gap and knots_for(period, factor * cut_off) < _MOST_KNOTS
+        if period / knots_for(period, factor * cut_off) >= gap
+        and knots_for(period, factor * cut_off) < _MOST_KNOTS
     }
     _report_effect(fits, cut_off, axis.coordinate, problems)
     return fits[1.0]

@@ -13,6 +13,8 @@ FloatArray = NDArray[np.float64]
 
 RECORDED_PROCESS, RECORDED_EFFORT, RECORDED_SHAFT = "process force", "load force", "shaft torque"
 
+EXACT_INTERVALS = 400  # stretches between instants that are evaluated one by one; more are condensed
+
 
 @dataclass(frozen=True)
 class Recording:

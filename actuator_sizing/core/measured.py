@@ -129,7 +129,9 @@ def smooth_position(
     from scipy.sparse.linalg import spsolve
 
     n = knots_for(period_s, cut_off_hz)
-    weight = 0.5 * (np.diff(time_s, append=time_s[0] + period_s) + np.diff(time_s, prepend=time_s[-1] - period_s))
+    weight = 0.5 * (
+        np.diff(time_s, append=time_s[0] + period_s) + np.diff(time_s, prepend=time_s[-1] - period_s)
+    )
     target = value - (drift / period_s) * (time_s if order == 0 else 1.0)
     group = np.floor(time_s * (n * _PER_KNOT / period_s)).astype(np.int64)
     first = np.flatnonzero(np.diff(group, prepend=-1))

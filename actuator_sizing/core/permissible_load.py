@@ -95,7 +95,9 @@ def short_time_current(machine: LoadedMachine, on_s: float) -> float:
     """
 
     def too_hot(current: float) -> bool | None:
-        course = temperatures_after(machine.network, machine.heat(current, on_s, 0.0), machine.ambient_degc, on_s)
+        course = temperatures_after(
+            machine.network, machine.heat(current, on_s, 0.0), machine.ambient_degc, on_s
+        )
         if course is None:
             return None
         return not float(course.winding_degc[0]) <= machine.limit_degc

@@ -1,9 +1,10 @@
 """Demand of a recorded cycle: the effort straight between its samples, the motion a spline.
 
-Up to `EXACT_INTERVALS` stretches stay pieces of their own. A longer record is condensed: each fortieth of the
+Up to `EXACT_INTERVALS` stretches stay pieces of their own. A longer record is condensed: each 24th part of the
 cycle keeps few instants whose means and mean products are those of all its samples, so that RMS values,
-losses and energies stay exact, and every instant that can govern a peak is kept. What is lost is the order
-of the instants inside a fortieth of the cycle, and the voltage of changing current.
+losses and energies stay exact, and the instants that are extreme in a fan of directions over acceleration,
+torque and speed are kept besides. What is lost is the order of the instants inside such a part, and the
+voltage of changing current.
 """
 
 from __future__ import annotations
@@ -14,7 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
-from actuator_sizing.case.recording import RECORDED_EFFORT, RECORDED_SHAFT, Recording
+from actuator_sizing.case.recording import EXACT_INTERVALS, RECORDED_EFFORT, RECORDED_SHAFT, Recording
 from actuator_sizing.core.condensing import condense
 from actuator_sizing.core.quadrature import lobatto
 from actuator_sizing.core.transmission import BACK_DRIVING, MOTORING, STANDSTILL, stage_factor
@@ -22,8 +23,7 @@ from actuator_sizing.core.transmission import BACK_DRIVING, MOTORING, STANDSTILL
 FloatArray = NDArray[np.float64]
 
 NODES = 3  # straight efforts: their squares are exact, products with the smooth motion to fourth order
-EXACT_INTERVALS = 400
-BLOCKS = 40
+BLOCKS = 24
 _GROUP = 32  # stretches of which only the largest and the smallest torque can be extreme
 _FAN = 5  # directions of each of three axes in which extremes are looked for
 
@@ -79,9 +79,11 @@ def _condensed(case: Case, recording: Recording, borders: FloatArray) -> dict[st
     # An extreme lasts next to nothing here: its share of the means is in the condensed instants already.
     duration = np.concatenate([*weights, np.full(len(peak_rows), 1e-12 * period)])
     kinds = np.concatenate([*classes, peak_classes])
-    block = np.concatenate([*blocks, peak_blocks])
+    block_of = np.concatenate([*blocks, peak_blocks])
     torque = flat[:, _NODE_FIELDS.index("shaft_torque")]
-    order = np.lexsort((np.abs(torque), block))  # heaviest together: never milder for a window than the record
+    order = np.lexsort(
+        (np.abs(torque), block_of)
+    )  # heaviest together: never milder for a window than the record
     flat, duration, kinds = flat[order], duration[order], kinds[order]
     duration *= period / duration.sum()
     out: dict[str, Any] = {
@@ -91,7 +93,7 @@ def _condensed(case: Case, recording: Recording, borders: FloatArray) -> dict[st
     out["start_s"] = np.concatenate([[0.0], np.cumsum(duration)[:-1]])
     out["flow"] = (kinds // 3).astype(np.int8)
     out["direction"] = (kinds % 3 - 1).astype(float)
-    out["heat_start"] = np.flatnonzero(np.diff(block[order], prepend=-1))
+    out["heat_start"] = np.flatnonzero(np.diff(block_of[order], prepend=-1))
     return _finished(out)
 
 
@@ -107,8 +109,12 @@ class _Extremes:
 
     def offer(self, rows: FloatArray, kind: int, block: int) -> None:
         """Take the points of one class of one block."""
-        if len(rows) > 8 * _GROUP * NODES:  # motion hardly changes within a group: its extremes of torque suffice
-            torque = rows[: len(rows) // (_GROUP * NODES) * _GROUP * NODES, _MOMENTS[1]].reshape(-1, _GROUP * NODES)
+        if (
+            len(rows) > 8 * _GROUP * NODES
+        ):  # motion hardly changes within a group: its extremes of torque suffice
+            torque = rows[: len(rows) // (_GROUP * NODES) * _GROUP * NODES, _MOMENTS[1]].reshape(
+                -1, _GROUP * NODES
+            )
             first = np.arange(len(torque)) * _GROUP * NODES
             rest = np.arange(torque.size, len(rows))
             rows = rows[np.concatenate([first + torque.argmax(axis=1), first + torque.argmin(axis=1), rest])]
@@ -216,7 +222,9 @@ def _nodes(case: Case, recording: Recording, borders: FloatArray) -> dict[str, A
         torque = effort / r * factor + inertia + drag
         causes["inertia"] = causes["inertia"] + inertia
         causes["friction"] = causes["friction"] + drag
-    motor = shaft_acceleration + mechanism.specific_gravity_m_s2 + mechanism.specific_friction_m_s2 * direction
+    motor = (
+        shaft_acceleration + mechanism.specific_gravity_m_s2 + mechanism.specific_friction_m_s2 * direction
+    )
     return {
         "duration_s": length, "start_s": begin, "direction": turning[:, 0],
         "flow": _flows(torque, turning), "position": x, "speed": v, "acceleration": a, "effort": effort,
@@ -260,4 +268,3 @@ def _flows(torque: FloatArray, direction: FloatArray) -> NDArray[np.int8]:
     power = torque.mean(axis=1) * direction[:, 0]
     moving = np.where(power >= 0.0, MOTORING, BACK_DRIVING)
     return np.where(direction[:, 0] == 0.0, STANDSTILL, moving).astype(np.int8)
-

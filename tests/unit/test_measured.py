@@ -26,7 +26,9 @@ def test_spline_gives_back_a_smooth_motion(order):
     w = 2.0 * np.pi / 2.0
 
     def exact(t, n):
-        return (0.1 * w**n) * np.sin(w * t + n * np.pi / 2) + 0.03 * (2 * w) ** n * np.cos(2 * w * t + n * np.pi / 2)
+        return (0.1 * w**n) * np.sin(w * t + n * np.pi / 2) + 0.03 * (2 * w) ** n * np.cos(
+            2 * w * t + n * np.pi / 2
+        )
 
     spline = smooth_position(t, exact(t, order), 2.0, 10.0, 0.0, order)
     at = np.linspace(0.0, 2.0, 333)
@@ -103,7 +105,9 @@ def by_hand(t, T, period):
     """Mean square and peak of samples that are linear in between, closed."""
     t, T = np.append(t, period), np.append(T, T[0])
     a, b = T[:-1], T[1:]
-    return float(np.sqrt(np.sum(np.diff(t) * (a * a + a * b + b * b)) / (3.0 * period))), float(np.abs(T).max())
+    return float(np.sqrt(np.sum(np.diff(t) * (a * a + a * b + b * b)) / (3.0 * period))), float(
+        np.abs(T).max()
+    )
 
 
 @pytest.mark.parametrize("count", [40, 300, 6000])
@@ -112,7 +116,9 @@ def test_a_recorded_torque_is_exact_between_samples(tmp_path, count):
     t = uneven(count, 4.0).round(6)
     T = (2.0 * np.sin(2 * np.pi * t / 4.0) + RNG.normal(0.0, 0.3, count)).round(4)
     tables = measured_case(
-        list(zip(t.tolist(), T.tolist(), strict=True)), ["time [s]", "shaft torque [Nm]"], measured_period=[4, "s"]
+        list(zip(t.tolist(), T.tolist(), strict=True)),
+        ["time [s]", "shaft torque [Nm]"],
+        measured_period=[4, "s"],
     )
     case, errors, _ = errors_of(tmp_path, tables)
     assert errors == []
@@ -230,7 +236,9 @@ def test_motion_needs_a_cut_off_within_reach(tmp_path):
     _, errors, _ = errors_of(tmp_path, measured_case(rows, heading, measured_period=[2, "s"]))
     assert ["cut-off" in p.allowed for p in errors] == [True]
     cut_off = {"smoothing_cut-off": [500, "Hz"]}
-    _, errors, _ = errors_of(tmp_path / "2", measured_case(rows, heading, measured_period=[2, "s"], **cut_off))
+    _, errors, _ = errors_of(
+        tmp_path / "2", measured_case(rows, heading, measured_period=[2, "s"], **cut_off)
+    )
     assert [p.column for p in errors] == ["smoothing cut-off"]
     assert "at most 10 Hz" in errors[0].allowed
 
@@ -241,3 +249,19 @@ def test_absurd_acceleration_is_told(tmp_path):
     _, _, problems = errors_of(tmp_path, measured_case(rows, ["time [s]", "position [m]"], measured_period=[2, "s"],
                                                        **cut_off))  # fmt: skip
     assert any(p.severity == "warning" and "an axis can have" in p.allowed for p in problems)
+
+
+def test_the_demo_case_is_two_cycles_of_a_shuttle():
+    from pathlib import Path
+
+    folder = Path(__file__).parents[2] / "catalogs_demo" / "tray_shuttle_measured"
+    case, problems = check_case(folder)
+    assert [p for p in problems if p.severity in ("error", "warning")] == []
+    demand = build_demand(case)
+    assert demand.cycle_s == pytest.approx(18.0)
+    # Made from moves of 2.4 m there and back, twice, with 0.05 mm of noise on the position.
+    assert demand.mean(np.abs(demand.speed)) * 18.0 == pytest.approx(9.6, rel=2e-3)
+    # Made with 30 N in 2.6 s of each 9 s and 18 N in the rest, with 1.5 N of noise around them.
+    process = demand.torque_by_cause["process"] * demand.shaft_speed / demand.speed.clip(1e-9, None)
+    moving = demand.speed > 0.3
+    assert float(np.mean(process[moving])) == pytest.approx(30.0, abs=1.0)

@@ -37,6 +37,7 @@ def two_bodies(alpha=0.0039):
     return LoadedMachine(network, 1.5, alpha, 25.0, 4.0, 40.0, 155.0)
 
 
+@pytest.mark.published("A5.3")
 def test_short_time_overload_with_constant_losses():
     """[P]: one decimal printed; 60.2219 recomputed."""
     continuous = 1.0  # copper loss at rated load; constant losses 0.9 of it; the rise is their sum
@@ -46,6 +47,7 @@ def test_short_time_overload_with_constant_losses():
     assert 25.0 * current == pytest.approx(60.2219, abs=5e-5)
 
 
+@pytest.mark.published("A5.10")
 def test_cyclic_duration_factor():
     """[C]: 25 % with 10 min of run leaves 30 min of rest; 40 % of a cycle of 10 min runs 4 min."""
     assert rest_time(600.0, 0.25) == 1800.0
@@ -58,7 +60,9 @@ def test_intermittent_of_one_body(on, off):
     """Peak ``q (1 − e^{−on/τ})/(1 − e^{−(on+off)/τ})`` of one body; from first principles."""
     current = intermittent_current(one_body(1.0), on, off)
     expected = math.sqrt(100.0 * math.expm1(-(on + off)) / math.expm1(-on))
-    assert current == pytest.approx(expected, rel=1e-8)  # Newton of the periodic state stops at 1e-11 of the rise
+    assert current == pytest.approx(
+        expected, rel=1e-8
+    )  # Newton of the periodic state stops at 1e-11 of the rise
 
 
 def test_between_continuous_and_short_time():
