@@ -183,7 +183,7 @@ def process_load(
     parsed : ParsedTable
         The duty cycle.
     index : int
-        Row of the segment.
+        Row of the segment. [-]
     courses : Courses
         With the table `process`.
     segment : Segment
