@@ -294,7 +294,7 @@ def side_tables(tables: Mapping[str, ParsedTable], cycles_per_minute: float) -> 
     tables : mapping of str to ParsedTable
         Every table of the case.
     cycles_per_minute : float
-        Pace, NaN where nothing is said.
+        Pace, NaN where nothing is said. [-]
     """
     pace = 60.0 / cycles_per_minute if cycles_per_minute > 0.0 else float("nan")
     return Courses(tables.get("points"), tables.get("process"), pace)
