@@ -7,13 +7,15 @@ from pathlib import Path
 
 from actuator_sizing.case.axis import Axis, options_of, surroundings_of
 from actuator_sizing.case.catalogs import to_catalog
-from actuator_sizing.case.columns import Column, key_of
+from actuator_sizing.case.columns import Column
 from actuator_sizing.case.courses import side_tables
 from actuator_sizing.case.drives import understand_drives
 from actuator_sizing.case.fingerprint import fingerprint
 from actuator_sizing.case.gearheads import understand_gearheads
+from actuator_sizing.case.inertias import at_the_motor, table_entries, understand_parts, with_parts
 from actuator_sizing.case.judging import understand_limits, understand_tolerances
 from actuator_sizing.case.measuring import understand_recording
+from actuator_sizing.case.mechanics import build_mechanism, check_motion, understand_map
 from actuator_sizing.case.model import MISSING, ORIGINS, STATED, Case, Catalog, Entry
 from actuator_sizing.case.motion import motion_entries, understand_motion
 from actuator_sizing.case.motors import understand_motors
@@ -21,7 +23,8 @@ from actuator_sizing.case.parsed_tables import ParsedTable
 from actuator_sizing.case.parsing import parse_table
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.raw_tables import RawTable
-from actuator_sizing.case.tables import TABLES
+from actuator_sizing.case.tables import TABLES, table_for
+from actuator_sizing.core.mechanisms import SHAFT
 from actuator_sizing.errors import NOTE
 from actuator_sizing.units import si_unit
 
@@ -56,11 +59,18 @@ def understand(
     }
     motion = parsed.get("duty_cycle")
     courses = side_tables(parsed, axis.number("cycles_per_minute"))
-    segments = understand_motion(motion, axis.coordinate, problems, courses) if motion and axis.mechanism else ()
+    segments = (
+        understand_motion(motion, axis.motion_coordinate, problems, courses) if motion and axis.mechanism else ()
+    )
     recording = None
     if "measured" in raw and axis.mechanism:
         recording = understand_recording(raw["measured"], axis, problems, motion is not None)
         segments = (recording.segment,) if recording else ()
+    mechanism = build_mechanism(axis, understand_map(parsed.get("map"), axis, problems), problems)
+    if mechanism is not None and motion:
+        at_shaft = (axis.word("motion_stated_at") or mechanism.motion_at) == SHAFT
+        check_motion(mechanism, at_shaft, segments, problems)
+    parts = understand_parts(parsed.get("inertias"), axis.mechanism, problems)
     motors, drives = parsed.get("motors"), parsed.get("drives")
     motor_parameters = understand_motors(motors) if motors else None
     drive_parameters = understand_drives(drives) if drives else None
@@ -79,26 +89,30 @@ def understand(
     tolerances = understand_tolerances(parsed.get("tolerances"), decimal, problems)
     if problems.has_errors:
         return None
-    if not ((motion or recording) and motors and drives and axis.mechanism and motor_parameters and drive_parameters):
+    if not ((motion or recording) and motors and drives and mechanism and motor_parameters and drive_parameters):
         return None  # a required table is missing, which was reported
-    mechanism = axis.mechanism.from_values(
-        {parameter.name: _number(axis, parameter.name) for parameter in axis.mechanism.parameters}
-    )
     described = [table for table in (motion, courses.points, courses.process) if table]
-    moving = (entry for table in described for entry in motion_entries(table, axis.coordinate))
-    entries = (*axis.entries, *moving, *(recording.entries if recording else ()), *limit_entries)
+    entries = (
+        *axis.entries,
+        *(entry for table in described for entry in motion_entries(table, axis.coordinate)),
+        *(recording.entries if recording else ()),
+        *table_entries(parsed.get("map") if mechanism.needs_map else None),
+        *table_entries(parsed.get("inertias")),
+        *limit_entries,
+    )
     catalogs = to_catalog(motors), to_catalog(gearheads), to_catalog(drives)
     return Case(
         name=name,
         path=path,
-        mechanism=mechanism,
+        mechanism=with_parts(mechanism, parts),
+        parts=parts,
         surroundings=surroundings_of(axis),
         segments=segments,
         motors=catalogs[0],
         gearheads=catalogs[1],
         drives=catalogs[2],
         motor_parameters=motor_parameters,
-        gearhead_parameters=gearhead_parameters,
+        gearhead_parameters=at_the_motor(gearhead_parameters, parts),
         drive_parameters=drive_parameters,
         limits=limits,
         tolerances=tolerances,
@@ -111,12 +125,8 @@ def understand(
 
 
 def _parse(raw: RawTable, axis: Axis, problems: ProblemList) -> ParsedTable:
-    return parse_table(raw, TABLES[raw.name], problems, axis.coordinate, broad=axis.mechanism is None)
-
-
-def _number(axis: Axis, name: str) -> float | None:
-    value = axis.values.get(key_of(name))
-    return value if isinstance(value, float) else None
+    table = table_for(raw.name, axis.mechanism, axis.word("motion_stated_at"))
+    return parse_table(raw, table, problems, axis.coordinate, broad=axis.mechanism is None)
 
 
 def _direct_drive(axis: Axis) -> bool:

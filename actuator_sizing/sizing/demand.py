@@ -7,8 +7,8 @@ direction of power in the mechanism and at the driven shaft), so that everything
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass, fields
-from functools import cached_property
+from dataclasses import dataclass, fields, replace
+from functools import cached_property, lru_cache
 from typing import Any
 
 import numpy as np
@@ -19,7 +19,7 @@ from actuator_sizing.core.mechanisms import Mechanism
 from actuator_sizing.core.moments import demand_functions
 from actuator_sizing.core.motion_laws import Phase
 from actuator_sizing.core.process_load import TIME
-from actuator_sizing.core.quadrature import NODES, integrate, largest_magnitude, lobatto, roots
+from actuator_sizing.core.quadrature import NODES, integrate, interpolate, largest_magnitude, lobatto, roots
 from actuator_sizing.core.transmission import (
     BACK_DRIVING,
     GEAR_EXPONENT,
@@ -32,6 +32,11 @@ from actuator_sizing.core.transmission import (
 FloatArray = NDArray[np.float64]
 
 CAUSES = ("inertia", "gravity", "friction", "process", "losses")
+
+#: Relative interpolation error that a piece may have where the geometry bends: what `NODES` nodes promise.
+_RESOLUTION = 1e-10
+_DEEPEST = 14  # halvings of one stretch; a stretch that short is below a part in ten thousand
+_RESOLVED = ("position", "speed", "effort", "lossless_torque", "shaft_speed", "shaft_acceleration")
 
 
 @dataclass(frozen=True)
@@ -133,20 +138,22 @@ def build_demand(case: Case) -> Demand:
     Demand
         Pieces, node values and their moments; independent of any motor. [-]
     """
-    payloads = np.array([segment.payload for segment in case.segments])
-    inertia = float(np.max(case.mechanism.inertia_at_shaft(payloads)))
     if case.recording is not None:
         from actuator_sizing.sizing.measured_demand import recorded_pieces
 
-        return Demand(**recorded_pieces(case, case.recording), load_inertia=inertia)
-    pieces = list(_pieces(case.segments, case.mechanism))
+        payloads = np.array([segment.payload for segment in case.segments])
+        largest = float(np.max(case.mechanism.inertia_at_shaft(payloads)))
+        return Demand(**recorded_pieces(case, case.recording), load_inertia=largest)
+    pieces = list(_pieces(case))
     stacked: dict[str, Any] = {
-        f.name: np.array([piece[f.name] for piece in pieces])
-        for f in fields(Demand)
-        if f.name not in ("torque_by_cause", "load_inertia", "heat_start")
+        name: np.array([piece[name] for piece in pieces])
+        for name in (*(f.name for f in fields(Demand)), "lever")
+        if name not in ("torque_by_cause", "load_inertia", "heat_start")
     }
     stacked["flow"] = stacked["flow"].astype(np.int8)
     causes = {cause: np.array([piece["by_cause"][cause] for piece in pieces]) for cause in CAUSES}
+    inertia = _largest_inertia(case, stacked["segment"], stacked["position"], stacked["lever"])
+    del stacked["lever"]
     return Demand(**stacked, torque_by_cause=causes, load_inertia=inertia)
 
 
@@ -192,6 +199,11 @@ class _Stretch:
         """Phase time at the nodes."""
         return np.asarray(self.begin + 0.5 * (lobatto()[0] + 1.0) * (self.end - self.begin))
 
+    @property
+    def middle(self) -> float:
+        """Phase time half way."""
+        return 0.5 * (self.begin + self.end)
+
     def cut(self, at: FloatArray) -> Iterator[_Stretch]:
         """Split at positions on (−1, 1)."""
         borders = [self.begin, *(self.begin + 0.5 * (at + 1.0) * (self.end - self.begin)), self.end]
@@ -199,41 +211,103 @@ class _Stretch:
             yield _Stretch(self.phase, begin, end, self.phase_start)
 
 
-def _pieces(segments: tuple[Segment, ...], mechanism: Mechanism) -> Iterator[dict[str, Any]]:
-    start, origin = 0.0, 0.0
-    for index, segment in enumerate(segments):
+def _largest_inertia(case: Case, segment: NDArray[np.intp], position: FloatArray, lever: FloatArray) -> float:
+    """Over every segment with its payload, of load and mechanism at the driven shaft. [kg·m², or kg]"""
+    mechanism = case.mechanism
+    if mechanism.resolved_by_nodes:
+        return float(np.max(mechanism.inertia_at_shaft(np.array([s.payload for s in case.segments]))))
+    return max(
+        mechanism.inertia_over(position[segment == i], lever[segment == i], case.segments[i].payload)
+        for i in np.unique(segment)
+    )
+
+
+@dataclass(frozen=True)
+class _Place:
+    """What a stretch needs to know of its segment: where it starts, and how finely it must be cut."""
+
+    segment: Segment
+    mechanism: Mechanism
+    at_shaft: bool
+    origin: float
+    factors: tuple[float, float, float]  # of the stage, by direction of power
+    scale: Mapping[str, float]  # sizes that interpolation errors are held against; empty: nodes resolve it
+
+    def kinks(self, stated: FloatArray) -> FloatArray:
+        """Kinks of the geometry within a stretch, in the coordinate of the cycle."""
+        ends = np.array([stated.min(), stated.max()]) + self.origin
+        return self.mechanism.borders(ends, self.at_shaft)
+
+
+def _pieces(case: Case) -> Iterator[dict[str, Any]]:
+    start = 0.0
+    for index, place in enumerate(_places(case)):
         phase_start = 0.0
-        for phase in segment.phases:
-            for reversal_free in _halves(phase, phase_start):
-                speed = phase.kinematics(reversal_free.tau)[1]
-                for one_way in reversal_free.cut(roots(speed)):
-                    for stretch in one_way.cut(_process_kinks(one_way, segment, origin)):
-                        for piece in _same_power(stretch, segment, mechanism, origin):
-                            yield {"segment": index, "start_s": start, **piece}
-                            start += piece["duration_s"]
+        for phase in place.segment.phases:
+            for part in _halves(phase, phase_start):
+                for smooth in _at_kinks(part, place):
+                    for stretch in smooth.cut(roots(phase.kinematics(smooth.tau)[1])):
+                        for one_way in _one_way(stretch, place):
+                            for even in one_way.cut(_process_kinks(one_way, place)):
+                                for piece in _same_power(even, place):
+                                    yield {"segment": index, "start_s": start, **piece}
+                                    start += piece["duration_s"]
             phase_start += phase.duration_s
+
+
+def _places(case: Case) -> tuple[_Place, ...]:
+    factors = _stage_factors(case.mechanism)
+    places, origin = [], 0.0
+    for segment in case.segments:
+        places.append(_Place(segment, case.mechanism, case.motion_at_shaft, origin, factors, {}))
         if segment.phases:
             last = segment.phases[-1]
             origin += float(last.kinematics(np.array([last.duration_s]))[0][0])
+    if case.mechanism.resolved_by_nodes:
+        return tuple(places)
+    scale: dict[str, float] = {name: 0.0 for name in _RESOLVED}
+    for place in places:
+        for phase in place.segment.phases:
+            for part in _halves(phase):
+                found = _load(part, place)
+                # Causes may cancel, but their rounding does not: the sum of their sizes is the measure.
+                size = found["efforts"].size
+                found |= {"effort": size, "lossless_torque": size * found["lever"]}
+                for name in _RESOLVED:
+                    scale[name] = max(scale[name], float(np.max(np.abs(found[name]))))
+    return tuple(replace(place, scale=scale) for place in places)
 
 
-def _process_kinks(stretch: _Stretch, segment: Segment, origin: float) -> FloatArray:
+def _stage_factors(mechanism: Mechanism) -> tuple[float, float, float]:
+    """`stage_factor` at standstill, motoring and back-driving."""
+    forward, back = np.array(mechanism.efficiency_forward), np.array(mechanism.efficiency_back)
+    flows = (STANDSTILL, MOTORING, BACK_DRIVING)
+    first, second, third = (float(stage_factor(np.array(flow), forward, back)) for flow in flows)
+    return first, second, third
+
+
+def _process_kinks(stretch: _Stretch, place: _Place) -> FloatArray:
     """Where on (−1, 1) the process load of a stretch without reversal has a kink."""
-    load = segment.process
+    load = place.segment.process
     if load is None:
         return np.empty(0)
+
+    def position(tau: FloatArray) -> FloatArray:
+        stated = place.origin + stretch.phase.kinematics(tau)[0]
+        return np.asarray(place.mechanism.transfer(stated, place.at_shaft).position)
+
     length = stretch.end - stretch.begin
     if load.over == TIME:
         begin = stretch.phase_start + stretch.begin
         tau = load.kinks_between(begin, begin + length) - stretch.phase_start
     else:
-        x = origin + stretch.phase.kinematics(np.array([stretch.begin, stretch.end]))[0]
+        x = position(np.array([stretch.begin, stretch.end]))
         knots = load.kinks_between(float(x.min()), float(x.max()))
         rising = x[1] > x[0]
         low, high = np.full_like(knots, stretch.begin), np.full_like(knots, stretch.end)
         for _ in range(60):  # position is monotonic here: bisection reaches rounding
             middle = 0.5 * (low + high)
-            before = (origin + stretch.phase.kinematics(middle)[0] < knots) == rising
+            before = (position(middle) < knots) == rising
             low, high = np.where(before, middle, low), np.where(before, high, middle)
         tau = np.sort(low)
     at = 2.0 * (tau - stretch.begin) / length - 1.0
@@ -248,7 +322,7 @@ def _process(stretch: _Stretch, segment: Segment, x: FloatArray, direction: floa
     return segment.process.values(at, direction)
 
 
-def _halves(phase: Phase, phase_start: float) -> Iterator[_Stretch]:
+def _halves(phase: Phase, phase_start: float = 0.0) -> Iterator[_Stretch]:
     """The phase in parts of at most half a sine period, which the nodes resolve to rounding."""
     turns = abs(phase.sine_frequency_rad_s) * phase.duration_s / np.pi if phase.sine_amplitude else 0.0
     parts = max(1, int(np.ceil(turns - 1e-9)))
@@ -257,64 +331,121 @@ def _halves(phase: Phase, phase_start: float) -> Iterator[_Stretch]:
         yield _Stretch(phase, float(begin), float(end), phase_start)
 
 
-def _same_power(
-    stretch: _Stretch, segment: Segment, mechanism: Mechanism, origin: float
-) -> Iterator[dict[str, Any]]:
+def _at_kinks(part: _Stretch, place: _Place) -> Iterator[_Stretch]:
+    """Cut where the geometry has a kink, so that what follows is smooth."""
+    if not place.scale:
+        yield part
+        return
+    stated = part.phase.kinematics(part.tau)[0]
+    found = [roots(stated + place.origin - kink) for kink in place.kinks(stated)]
+    yield from part.cut(np.unique(np.concatenate(found)) if found else np.empty(0))
+
+
+def _one_way(stretch: _Stretch, place: _Place) -> Iterator[_Stretch]:
+    """Cut at dead centres, where the load turns back under a shaft that turns on; resolve what is left."""
+    if not place.scale:
+        yield stretch
+        return
+    for fine in _resolved(stretch, place, ("speed", "shaft_speed")):
+        for one_way in fine.cut(roots(_load(fine, place)["speed"])):
+            yield from _resolved(one_way, place, tuple(place.scale))
+
+
+def _resolved(stretch: _Stretch, place: _Place, names: tuple[str, ...], depth: int = 0) -> Iterator[_Stretch]:
+    """Halve until the interpolant of each function meets the function at the nodes of both halves."""
+    parts = tuple(stretch.cut(np.zeros(1)))
+    whole = _load(stretch, place)
+    values = np.array([whole[name] for name in names])
+    allowed = _RESOLUTION * np.array([place.scale[name] for name in names])
+    for part, matrix in zip(parts, _to_halves(), strict=True):
+        exact = _load(part, place, whole["load_direction"])
+        error = np.max(np.abs(values @ matrix - np.array([exact[name] for name in names])), axis=1)
+        if np.any(error > allowed) and depth < _DEEPEST:
+            for finer in parts:
+                yield from _resolved(finer, place, names, depth + 1)
+            return
+    yield stretch
+
+
+@lru_cache(maxsize=1)
+def _to_halves() -> tuple[FloatArray, FloatArray]:
+    """Matrices from node values to the interpolant at the nodes of the first and second half."""
+    first = 0.5 * (lobatto()[0] - 1.0)
+    return interpolate(np.eye(NODES), first), interpolate(np.eye(NODES), first + 1.0)
+
+
+def _same_power(stretch: _Stretch, place: _Place) -> Iterator[dict[str, Any]]:
     """Cut where the power of the load, then that of the driven shaft, changes direction."""
-    for one_way in stretch.cut(roots(_load(stretch, segment, mechanism, origin)["effort"])):
-        torque = _load(one_way, segment, mechanism, origin)["shaft_torque"]
+    for one_way in stretch.cut(roots(_load(stretch, place)["effort"])):
+        torque = _load(one_way, place)["shaft_torque"]
         for piece in one_way.cut(roots(torque)):
-            yield _load(piece, segment, mechanism, origin)
+            loaded = _load(piece, place)
+            yield loaded | {"by_cause": _by_cause(loaded)}
 
 
-def _load(stretch: _Stretch, segment: Segment, mechanism: Mechanism, origin: float) -> dict[str, Any]:
+def _sign(speed: FloatArray) -> float:
+    """Direction of motion on a piece, from its middle; 0 at rest."""
+    middle, scale = speed[NODES // 2], np.max(np.abs(speed))
+    return float(np.sign(middle)) if scale > 0.0 and abs(middle) > 1e-12 * scale else 0.0
+
+
+def _load(stretch: _Stretch, place: _Place, direction_of_load: float | None = None) -> dict[str, Any]:
     """Everything at the nodes of one stretch, with one direction of motion and of power on all of it."""
-    x, v, a, _ = stretch.phase.kinematics(stretch.tau)
-    x = x + origin
-    middle_speed = v[NODES // 2]
-    scale = np.max(np.abs(v))
-    moving = scale > 0.0 and abs(middle_speed) > 1e-12 * scale
-    direction = np.full(NODES, np.sign(middle_speed) if moving else 0.0)
+    segment, mechanism = place.segment, place.mechanism
+    q, dq, ddq, _ = stretch.phase.kinematics(stretch.tau)
+    geometry = mechanism.transfer(q + place.origin, place.at_shaft)
+    x = geometry.position
+    v, a = geometry.load_rate * dq, geometry.load_rate * ddq + geometry.load_bend * dq**2
+    shaft_speed = geometry.shaft_rate * dq
+    shaft_acceleration = geometry.shaft_rate * ddq + geometry.shaft_bend * dq**2
+    lever = geometry.lever
+    load_sign = _sign(v) if direction_of_load is None else direction_of_load
+    direction = np.full(NODES, load_sign)
     efforts = mechanism.efforts(
         x, v, a, direction, np.full(NODES, segment.payload), _process(stretch, segment, x, direction[0])
     )
     effort = efforts.total
-    r, dr = mechanism.ratio_at(x)
-    shaft_speed, shaft_acceleration = r * v, r * a + dr * v**2
     load_flow = _flow(effort, direction)
-    factor = float(
-        stage_factor(
-            np.array(load_flow),
-            np.array(mechanism.efficiency_forward),
-            np.array(mechanism.efficiency_back),
-        )
-    )
+    factor = place.factors[load_flow]
+    shaft_direction = np.full(NODES, _sign(shaft_speed))
     inertia_torque = mechanism.shaft_inertia_kg_m2 * shaft_acceleration
-    drag = mechanism.shaft_friction_nm * direction * np.sign(r)
-    torque = effort / r * factor + inertia_torque + drag
+    drag = mechanism.shaft_friction_nm * shaft_direction
+    torque = effort * lever * factor + inertia_torque + drag
     motor_acceleration = (
         shaft_acceleration + mechanism.specific_gravity_m_s2 + mechanism.specific_friction_m_s2 * direction
     )
     return {
         "duration_s": stretch.end - stretch.begin,
-        "direction": direction[0] * np.sign(r[0]),
-        "flow": _flow(torque, direction * np.sign(r)),
+        "direction": shaft_direction[0],
+        "load_direction": load_sign,
+        "lever": lever,
+        "flow": _flow(torque, shaft_direction),
         "brake_closed": segment.brake_closed,
         "position": x,
         "speed": v,
         "acceleration": a,
         "effort": effort,
+        "efforts": efforts,
+        "factor": factor,
+        "drag": drag,
+        "inertia_torque": inertia_torque,
+        "lossless_torque": effort * lever,
         "shaft_speed": shaft_speed,
         "shaft_acceleration": shaft_acceleration,
         "shaft_torque": torque,
         "motor_acceleration": motor_acceleration * (0.0 if segment.brake_closed else 1.0),
-        "by_cause": {
-            "inertia": efforts.inertia / r + inertia_torque,
-            "gravity": efforts.gravity / r,
-            "friction": efforts.friction / r + drag,
-            "process": efforts.process / r,
-            "losses": effort / r * (factor - 1.0),
-        },
+    }
+
+
+def _by_cause(loaded: Mapping[str, Any]) -> dict[str, FloatArray]:
+    """Torque at the driven shaft in its parts."""
+    efforts, lever = loaded["efforts"], loaded["lever"]
+    return {
+        "inertia": efforts.inertia * lever + loaded["inertia_torque"],
+        "gravity": efforts.gravity * lever,
+        "friction": efforts.friction * lever + loaded["drag"],
+        "process": efforts.process * lever,
+        "losses": loaded["lossless_torque"] * (loaded["factor"] - 1.0),
     }
 
 

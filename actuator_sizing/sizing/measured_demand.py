@@ -199,7 +199,8 @@ def _nodes(case: Case, recording: Recording, borders: FloatArray) -> dict[str, A
     recorded = recording.effort_at(t)
     process = recorded if recording.kind not in (RECORDED_EFFORT, RECORDED_SHAFT) else np.zeros_like(t)
     parts = mechanism.efforts(x, v, a, direction, np.full_like(t, recording.payload), process)
-    r, dr = mechanism.ratio_at(x)
+    geometry = mechanism.transfer(x, False)
+    r, dr = geometry.shaft_rate, geometry.shaft_bend
     zero = np.zeros_like(t)
     causes = {name: getattr(parts, name) / r + zero for name in ("inertia", "gravity", "friction", "process")}
     effort = parts.total + zero
