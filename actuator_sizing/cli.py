@@ -88,16 +88,24 @@ def start(path: Path, mechanism: str | None) -> None:
 def audit(case: Path) -> int:
     """Report every problem of CASE at once.
 
-    Reads and checks every table, and finds the entries of a data sheet that contradict each other.
+    Reads and checks every table, finds the entries of a data sheet that contradict each other, and draws
+    the motion to reports/<case name>/motion.svg.
     """
-    from actuator_sizing.case.audit import audit_case
+    from actuator_sizing.case.audit import audit_catalogs
+    from actuator_sizing.case.reading import check_case
     from actuator_sizing.console import count_line, print_problems
 
-    problems = audit_case(case)
+    understood, problems = check_case(case)
+    if understood is not None:  # reading may have audited already
+        problems = tuple(dict.fromkeys((*problems, *audit_catalogs(understood))))
     print_problems(problems)
-    failed = any(problem.severity == "error" for problem in problems)
-    click.echo(count_line(problems), err=failed)
-    return BAD_INPUT if failed else PASSED
+    click.echo(count_line(problems), err=understood is None)
+    if understood is None:
+        return BAD_INPUT
+    from actuator_sizing.report.motion_picture import write_motion
+
+    click.echo(f"Motion: {write_motion(understood, _report_folder(understood.name))}")
+    return PASSED
 
 
 @commands.command()

@@ -208,6 +208,10 @@ class Table:
         The table may live in the shared catalog folder.
     one_of : tuple of tuple of str
         Groups of column names of which a row must fill at least one; with the machine they belong to first.
+    repeats_names : bool
+        Several rows may bear one name.
+    in_template : bool
+        A new case holds it; other tables are added where they are needed.
     """
 
     name: str
@@ -216,6 +220,8 @@ class Table:
     required: bool = False
     is_catalog: bool = False
     one_of: tuple[tuple[str, tuple[str, ...]], ...] = ()
+    repeats_names: bool = False
+    in_template: bool = True
 
     def column(self, name: str) -> Column:
         """Find a declared column by name or key.

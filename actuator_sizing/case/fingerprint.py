@@ -55,6 +55,7 @@ def fingerprint(
     def add(*parts: Any) -> None:
         digest.update(("\x1f".join(map(_text, parts)) + "\n").encode("utf-8", "surrogatepass"))
 
+    entries = tuple(entries)
     axis = sorted(
         (entry.label, _text(entry.value_si))
         for entry in entries
@@ -62,15 +63,11 @@ def fingerprint(
     )
     for label, value in axis:
         add("axis", label, value)
-    for name in ("map", "inertias"):
-        rows = [entry for entry in entries if entry.table == name and entry.column not in _NOT_HASHED]
+    for table in ("map", "inertias", "duty_cycle", "points", "process", "measured"):
+        rows = [entry for entry in entries if entry.table == table and entry.column not in _NOT_HASHED]
         order = {row: position for position, row in enumerate(sorted({entry.row or 0 for entry in rows}))}
         for entry in sorted(rows, key=lambda entry: (entry.row or 0, entry.column)):
-            add(name, order[entry.row or 0], entry.label, entry.column, entry.value_si)
-    cycle = [entry for entry in entries if entry.table == "duty_cycle" and entry.column not in _NOT_HASHED]
-    order = {row: position for position, row in enumerate(sorted({entry.row or 0 for entry in cycle}))}
-    for entry in sorted(cycle, key=lambda entry: (entry.row or 0, entry.column)):
-        add("duty_cycle", order[entry.row or 0], entry.label, entry.column, entry.value_si)
+            add(table, order[entry.row or 0], entry.label, entry.column, entry.value_si)
     for check in sorted(limits):
         limit = limits[check]
         add("limits", check, limit.applies, limit.allowed_utilisation, limit.recommended_reserve)

@@ -9,6 +9,7 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
+from actuator_sizing.case.recording import Recording
 from actuator_sizing.core.inertias import Part
 from actuator_sizing.core.mechanisms import SHAFT, Mechanism
 from actuator_sizing.core.motion_laws import Phase
@@ -18,6 +19,7 @@ from actuator_sizing.core.parameters import (
     MotorParameters,
     Surroundings,
 )
+from actuator_sizing.core.process_load import ProcessLoad
 from actuator_sizing.errors import Problem
 
 MISSING, STATED, DERIVED, ASSUMED = 0, 1, 2, 3
@@ -58,6 +60,7 @@ class Segment:
     process_effort: float  # positive opposes positive motion
     brake_closed: bool
     note: str = ""
+    process: ProcessLoad | None = None  # where the process effort is not constant; None: `process_effort` is all
 
 
 @dataclass(frozen=True)
@@ -126,6 +129,7 @@ class Case:
     entries: tuple[Entry, ...]  # axis, duty cycle and limits; catalog entries come from `catalog_entries`
     problems: tuple[Problem, ...]  # warnings and notes only; errors never make a Case
     fingerprint: str
+    recording: Recording | None = None  # a measured cycle in place of planned segments
     parts: tuple[Part, ...] = ()  # inertia inventory; already added to mechanism and gearhead parameters
 
     @property

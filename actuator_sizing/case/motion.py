@@ -2,10 +2,13 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 
 from actuator_sizing.case.catalogs import check_required
 from actuator_sizing.case.columns import Column
+from actuator_sizing.case.courses import Courses, check_side_tables, pace_durations, paced, process_load
 from actuator_sizing.case.model import ORIGINS, STATED, Entry, Segment
 from actuator_sizing.case.parsed_tables import ParsedTable
 from actuator_sizing.case.problem_list import ProblemList
@@ -15,12 +18,16 @@ from actuator_sizing.errors import NOTE, WARNING, MotionError
 from actuator_sizing.units import from_si, si_unit
 
 _TABLE = "duty_cycle"
-_DWELL, _CONSTANT, _RAMP = "dwell", "constant speed", "speed ramp"
+NO_COURSES = Courses()
+_CONSTANT, _RAMP = "constant speed", "speed ramp"
+_BLENDING = ("trapezoid", "jerk-limited", "spline")  # may end at speed, end at rest where nothing is said
 _SPEED_TOLERANCE = 1e-6  # of the largest speed of the cycle: typed figures are rounded
 _CLOSING_TOLERANCE = 1e-6  # of the travel
 
 
-def understand_motion(parsed: ParsedTable, coordinate: str, problems: ProblemList) -> tuple[Segment, ...]:
+def understand_motion(
+    parsed: ParsedTable, coordinate: str, problems: ProblemList, courses: Courses = NO_COURSES
+) -> tuple[Segment, ...]:
     """Plan every segment of the duty cycle.
 
     Parameters
@@ -31,6 +38,8 @@ def understand_motion(parsed: ParsedTable, coordinate: str, problems: ProblemLis
         ``"linear"`` or ``"rotary"``.
     problems : ProblemList
         Takes what cannot be planned and what does not join.
+    courses : Courses
+        Tables beside the duty cycle, and its pace.
 
     Returns
     -------
@@ -39,13 +48,15 @@ def understand_motion(parsed: ParsedTable, coordinate: str, problems: ProblemLis
     """
     check_required(parsed)
     _assume_defaults(parsed)
+    check_side_tables(parsed, courses, problems)
+    by_angle = pace_durations(parsed, courses, problems)
     segments: list[Segment] = []
-    start_s, speed = 0.0, _speed_before_first(parsed)
+    start_s, position, speed = 0.0, 0.0, _speed_before_first(parsed)
     for index in range(len(parsed)):
         if not parsed.text("motion_law")[index] or any(bad[index] for bad in parsed.bad.values()):
             speed = np.nan  # the rest can be planned, but not joined to this row
             continue
-        phases = _plan(parsed, index, 0.0 if np.isnan(speed) else speed, problems)
+        phases = _plan(parsed, index, 0.0 if np.isnan(speed) else speed, courses, problems)
         if phases is None:
             speed = np.nan
             continue
@@ -53,12 +64,17 @@ def understand_motion(parsed: ParsedTable, coordinate: str, problems: ProblemLis
         if not np.isnan(speed):
             _check_join(parsed, index, speed, begin, phases, problems)
         segment = _segment(parsed, index, phases, start_s)
+        segment = replace(
+            segment, process=process_load(parsed, index, courses, segment, position, problems)
+        )
         _check_brake(parsed, index, phases, problems)
         segments.append(segment)
         start_s += segment.duration_s
+        position += phases[-1].end()[0]
         speed = 0.0 if abs(end) <= _SPEED_TOLERANCE * _largest_speed(phases) else end
     if len(segments) == len(parsed) > 0:
         _check_closing(segments, coordinate, problems)
+        return paced(tuple(segments), parsed, courses, by_angle, problems)
     return tuple(segments)
 
 
@@ -71,11 +87,13 @@ def _assume_defaults(parsed: ParsedTable) -> None:
 def _own_end_speed(parsed: ParsedTable, index: int) -> float | None:
     """Speed in which a row ends by itself; None for a constant speed taken over from before."""
     law = parsed.text("motion_law")[index]
-    if law not in (_CONSTANT, _RAMP):
+    if law not in (_CONSTANT, _RAMP, *_BLENDING):
         return 0.0
     stated = float(parsed.number("end_speed")[index])
     if np.isfinite(stated):
         return stated
+    if law in _BLENDING:
+        return 0.0
     if law == _CONSTANT:
         speed = float(parsed.number("displacement")[index] / parsed.number("duration")[index])
         if np.isfinite(speed):
@@ -94,7 +112,7 @@ def _speed_before_first(parsed: ParsedTable) -> float:
 
 
 def _plan(
-    parsed: ParsedTable, index: int, start_speed: float, problems: ProblemList
+    parsed: ParsedTable, index: int, start_speed: float, courses: Courses, problems: ProblemList
 ) -> tuple[Phase, ...] | None:
     def given(key: str) -> float | None:
         value = float(parsed.number(key)[index])
@@ -110,10 +128,15 @@ def _plan(
             duration_s=given("duration"),
             speed_max=given("maximum_speed"),
             acceleration_max=given("maximum_acceleration"),
+            deceleration_max=given("maximum_deceleration"),
             jerk_max=given("maximum_jerk"),
             acceleration_share=given("acceleration_share"),
             deceleration_share=given("deceleration_share"),
             jerk_share=given("jerk_share"),
+            amplitude=given("amplitude"),
+            frequency_hz=given("frequency"),
+            cycles=given("cycles"),
+            points=courses.points_of(str(parsed.text("segment")[index])) if law == "spline" else (),
         )
     except MotionError as error:
         column = parsed.table.find(error.column)
@@ -227,8 +250,9 @@ def _displacement(phases: tuple[Phase, ...]) -> float:
 def motion_entries(parsed: ParsedTable, coordinate: str) -> list[Entry]:
     """Every value of the duty cycle as entered and as understood."""
     entries = []
+    columns = parsed.table.columns[1:]
     for index, name in enumerate(parsed.names):
-        for column in parsed.table.columns[1:]:
+        for column in columns:
             entry = _entry(parsed, index, str(name), column, coordinate)
             if entry is not None:
                 entries.append(entry)
@@ -243,7 +267,7 @@ def _entry(parsed: ParsedTable, index: int, name: str, column: Column, coordinat
     origin = int(parsed.origins[key][index])
     rule = parsed.rules[key].get(index, "") if key in parsed.rules else ""
     return Entry(
-        _TABLE,
+        parsed.table.name,
         int(parsed.rows[index]),
         name,
         column.name,

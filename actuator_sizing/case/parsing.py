@@ -75,7 +75,7 @@ def _take_names(parsed: ParsedTable) -> None:
         allowed=f"a name of at most {LONGEST_NAME} characters",
         remedy="Shorten the name; put remarks in the note column.",
     )
-    if parsed.table.name == "duty_cycle":
+    if parsed.table.repeats_names:
         return  # the same move may occur twice
     seen: dict[str, int] = {}
     repeated: dict[int, int] = {}

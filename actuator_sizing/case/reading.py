@@ -115,6 +115,7 @@ def _read_folder(
 ) -> dict[str, RawTable] | None:
     from actuator_sizing.case.csv_files import read_csv
     from actuator_sizing.case.headings import split_heading
+    from actuator_sizing.case.sample_files import read_samples
 
     names = {fold(name): name for name in wanted}
     try:
@@ -143,7 +144,9 @@ def _read_folder(
             for column in TABLES[name].columns
             for spelling in (column.name, *column.aliases)
         )
-        table = read_csv(file, name, known, problems)
+        table: RawTable | None = read_samples(file, name) if name == "measured" else None
+        if table is None:
+            table = read_csv(file, name, known, problems)
         if table is not None:
             tables[name] = table
     return tables
@@ -183,6 +186,8 @@ def _add_shared_catalogs(
 
 def _report_missing_tables(raw: dict[str, RawTable], problems: ProblemList) -> None:
     for name, table in TABLES.items():
+        if name == "duty_cycle" and "measured" in raw:
+            continue  # the record is the cycle
         if table.required and name not in raw and not problems.mentions(name):
             where = ", in the case or in its catalog folder" if table.is_catalog else ""
             columns = ", ".join(

@@ -111,7 +111,9 @@ def _mechanism(word: str) -> type[Mechanism]:
 
 def example_sheets(mechanism: type[Mechanism]) -> tuple[Sheet, ...]:
     """Every table of a new case, from the declarations of its columns."""
-    left_out = set() if mechanism.needs_map else {"map"}
+    left_out = {name for name, table in TABLES.items() if not table.in_template}
+    if not mechanism.needs_map:
+        left_out.add("map")
     if mechanism.drives_linear_motor:  # it has no gearhead, and nothing turns
         left_out |= {"gearheads", "inertias"}
     tables = [table_for(name, mechanism) for name in TABLES if name not in left_out]

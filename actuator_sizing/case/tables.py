@@ -67,6 +67,8 @@ LAW_WORDS = (
     "modified sine",
     "modified trapezoid",
     "simple harmonic",
+    "sinusoid",
+    "spline",
     "constant speed",
     "speed ramp",
     "dwell",
@@ -132,6 +134,16 @@ COMMON_QUANTITIES = (
     Column("recommended inertia ratio", "ratio", "load inertia over motor inertia that advice is given "
            "against",
            default=10.0, assumed="common practice", positive=True, maximum=1.0e6, example="10"),
+    Column("cycles per minute", "count", "pace of the whole cycle; the segments are stretched to it, or take "
+           "their part of a master turn", positive=True, maximum=1.0e6, example=""),
+    Column("measured period", "time", "duration of one cycle of the table 'measured'; found when empty",
+           positive=True, maximum=1.0e7, example="", unit="s"),
+    Column("smoothing cut-off", "frequency", "measured motion is not followed above this frequency; it is a choice "
+           "that decides the acceleration", positive=True, maximum=1.0e6, example="", unit="Hz"),
+    Column("remove drift", YES_NO, "whether the measured cycle is bent back so that it closes", default="no",
+           assumed="the measured motion is kept", example="no"),
+    Column("recorded torque constant", "torque constant", "torque at the driven shaft per ampere of the measured "
+           "current", positive=True, example="", unit="Nm/A"),
     Column("required life", "time", "operating hours the axis must reach", positive=True, example="20000",
            unit="h"),
 )  # fmt: skip
@@ -180,14 +192,18 @@ DUTY_CYCLE_COLUMNS = (
     Column("motion law", WORDS, "how the segment moves", required=True, words=LAW_WORDS, example="trapezoid"),
     Column("displacement", ("length", "angle"), "signed distance moved in the segment", example=("0.3", "90"),
            unit=("m", "deg")),
-    Column("end speed", ("linear speed", "angular speed"), "signed speed at the end of a speed ramp, or the "
-           "speed of a constant-speed segment", unit=("m/s", "rpm")),
+    Column("end speed", ("linear speed", "angular speed"), "signed speed at the end of a speed ramp, the "
+           "speed of a constant-speed segment, or the speed at which a trapezoid, jerk-limited move or spline "
+           "hands over to the next segment", unit=("m/s", "rpm")),
     Column("duration", "time", "time the segment takes", positive=True, maximum=1.0e9, example="0.6",
            unit="s"),
     Column("maximum speed", ("linear speed", "angular speed"), "limit, not a target", positive=True,
            unit=("m/s", "rpm")),
     Column("maximum acceleration", ("linear acceleration", "angular acceleration"), "limit, not a target",
            positive=True, unit=("m/s²", "rad/s²")),
+    Column("maximum deceleration", ("linear acceleration", "angular acceleration"), "limit while slowing down "
+           "(trapezoid, jerk-limited); the maximum acceleration when empty", positive=True,
+           unit=("m/s²", "rad/s²")),
     Column("maximum jerk", ("linear jerk", "angular jerk"), "limit, not a target", positive=True,
            unit=("m/s³", "rad/s³")),
     Column("acceleration share", "ratio", "part of the duration spent speeding up", minimum=0.0, maximum=1.0,
@@ -196,6 +212,11 @@ DUTY_CYCLE_COLUMNS = (
            maximum=1.0, unit="%"),
     Column("jerk share", "ratio", "part of the acceleration phase taken by each jerk ramp", minimum=0.0,
            maximum=1.0, unit="%"),
+    Column("amplitude", ("length", "angle"), "half of the way of a sinusoid, signed", unit=("mm", "deg")),
+    Column("frequency", "frequency", "of a sinusoid", positive=True, maximum=1.0e6, unit="Hz"),
+    Column("cycles", "count", "periods of a sinusoid, whole or half", positive=True, maximum=1000.0),
+    Column("master angle", "angle", "part of the turn of a master shaft that the segment takes, in place of the "
+           "duration; needs 'cycles per minute' in the axis table", positive=True, maximum=6.2832, unit="deg"),
     Column("payload", ("mass", "inertia"), "what is carried in this segment beside the moving mass or the "
            "load "
            "inertia", default=0.0, assumed="no payload", minimum=0.0, example=("12", "0.2"),
@@ -203,10 +224,54 @@ DUTY_CYCLE_COLUMNS = (
     Column("process force", ("force", "torque"), "force or torque of the process; positive opposes positive "
            "motion and keeps its sign when the direction reverses", default=0.0, assumed="no process effort",
            example=("0", "0"), unit=("N", "N·m"), aliases=("process torque", "process effort")),
+    Column("process force end", ("force", "torque"), "where the process force changes evenly: its value at the "
+           "end of the segment, or of the window", unit=("N", "N·m"),
+           aliases=("process torque end", "process effort end")),
+    Column("process over", WORDS, "whether the process force changes over time or position", words=("time",
+           "position")),
+    Column("process from", ("length", "angle"), "position at which a window of process force begins, counted "
+           "from the start of the cycle; there is none outside the window", unit=("mm", "deg")),
+    Column("process to", ("length", "angle"), "position at which the window ends", unit=("mm", "deg")),
+    Column("process reverses", YES_NO, "whether the process force turns round with the direction of motion, as "
+           "wind resistance or friction does", default="no", assumed="it keeps its sign"),
     Column("brake closed", YES_NO, "whether the holding brake carries the load (standstill only)",
            default="no",
            assumed="the motor holds", example="no"),
     Column("note", TEXT, "remark", example=""),
+)  # fmt: skip
+
+POINT_COLUMNS = (
+    Column("segment", TEXT, "segment of the duty cycle with the motion law 'spline'", required=True,
+           example="swing"),
+    Column("time", "time", "from the start of the segment; the first point is at 0", required=True, minimum=0.0,
+           maximum=1.0e9, example="0", unit="s"),
+    Column("position", ("length", "angle"), "counted from anywhere; the first point is where the segment starts",
+           required=True, example="0", unit=("mm", "deg")),
+)  # fmt: skip
+
+PROCESS_COLUMNS = (
+    Column("segment", TEXT, "segment of the duty cycle in which this process force acts", required=True,
+           example="press"),
+    Column("time", "time", "from the start of the segment", minimum=0.0, maximum=1.0e9, unit="s"),
+    Column("position", ("length", "angle"), "instead of time: position counted from the start of the cycle",
+           example="0", unit=("mm", "deg")),
+    Column("process force", ("force", "torque"), "force or torque there, straight between the rows; two rows at "
+           "one place make a jump", required=True, example="0", unit=("N", "N·m"),
+           aliases=("process torque", "process effort")),
+)  # fmt: skip
+
+MEASURED_COLUMNS = (
+    Column("sample", TEXT, "remark", example=""),
+    Column("time", "time", "instant of the sample, rising; spacing may vary", required=True, example="0", unit="s"),
+    Column("position", ("length", "angle"), "measured position of the load", unit=("mm", "deg")),
+    Column("speed", ("linear speed", "angular speed"), "instead of the position", unit=("m/s", "rpm")),
+    Column("process force", ("force", "torque"), "process alone; the mechanism adds inertia, gravity and friction",
+           unit=("N", "N·m"), aliases=("process torque", "process effort")),
+    Column("load force", ("force", "torque"), "all that the load asks for, inertia, gravity and friction included",
+           unit=("N", "N·m"), aliases=("load torque", "load effort")),
+    Column("shaft torque", "torque", "all that the driven shaft must give, losses of the mechanism included",
+           unit="N·m"),
+    Column("current", "current", "of the motor that drove the axis; needs 'recorded torque constant'", unit="A"),
 )  # fmt: skip
 
 MAP_COLUMNS = (
@@ -276,7 +341,14 @@ TABLES: dict[str, Table] = {
               "surroundings.",
               AXIS_COLUMNS, required=True),
         Table("duty_cycle", "One row is one segment of the motion; the rows follow each other and repeat.",
-              DUTY_CYCLE_COLUMNS, required=True),
+              DUTY_CYCLE_COLUMNS, required=True, repeats_names=True),
+        Table("points", "One row is one point that a segment with the motion law 'spline' passes.",
+              POINT_COLUMNS, repeats_names=True, in_template=False),
+        Table("process", "One row is one value of a process force along a segment.",
+              PROCESS_COLUMNS, repeats_names=True, in_template=False),
+        Table("measured", "One row is one sample of a measured or simulated cycle, in place of the duty cycle. "
+              "Efforts are straight between samples; a motion is smoothed by 'smoothing cut-off'.",
+              MEASURED_COLUMNS, repeats_names=True, in_template=False),
         Table("motors", "One row is one motor as its data sheet states it.", MOTOR_COLUMNS, required=True,
               is_catalog=True,
               one_of=(("rotary", ("torque constant", "back-EMF constant", "speed constant")),

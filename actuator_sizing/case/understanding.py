@@ -8,11 +8,13 @@ from pathlib import Path
 from actuator_sizing.case.axis import Axis, options_of, surroundings_of
 from actuator_sizing.case.catalogs import to_catalog
 from actuator_sizing.case.columns import Column
+from actuator_sizing.case.courses import side_tables
 from actuator_sizing.case.drives import understand_drives
 from actuator_sizing.case.fingerprint import fingerprint
 from actuator_sizing.case.gearheads import understand_gearheads
 from actuator_sizing.case.inertias import at_the_motor, table_entries, understand_parts, with_parts
 from actuator_sizing.case.judging import understand_limits, understand_tolerances
+from actuator_sizing.case.measuring import understand_recording
 from actuator_sizing.case.mechanics import build_mechanism, check_motion, understand_map
 from actuator_sizing.case.model import MISSING, ORIGINS, STATED, Case, Catalog, Entry
 from actuator_sizing.case.motion import motion_entries, understand_motion
@@ -51,12 +53,19 @@ def understand(
         None where there are errors.
     """
     parsed = {
-        table: _parse(raw[table], axis, problems) for table in TABLES if table in raw and table != "axis"
+        table: _parse(raw[table], axis, problems)
+        for table in TABLES
+        if table in raw and table not in ("axis", "measured")
     }
     motion = parsed.get("duty_cycle")
+    courses = side_tables(parsed, axis.number("cycles_per_minute"))
     segments = (
-        understand_motion(motion, axis.motion_coordinate, problems) if motion and axis.mechanism else ()
+        understand_motion(motion, axis.motion_coordinate, problems, courses) if motion and axis.mechanism else ()
     )
+    recording = None
+    if "measured" in raw and axis.mechanism:
+        recording = understand_recording(raw["measured"], axis, problems, motion is not None)
+        segments = (recording.segment,) if recording else ()
     mechanism = build_mechanism(axis, understand_map(parsed.get("map"), axis, problems), problems)
     if mechanism is not None and motion:
         at_shaft = (axis.word("motion_stated_at") or mechanism.motion_at) == SHAFT
@@ -80,11 +89,13 @@ def understand(
     tolerances = understand_tolerances(parsed.get("tolerances"), decimal, problems)
     if problems.has_errors:
         return None
-    if not (motion and motors and drives and mechanism and motor_parameters and drive_parameters):
+    if not ((motion or recording) and motors and drives and mechanism and motor_parameters and drive_parameters):
         return None  # a required table is missing, which was reported
+    described = [table for table in (motion, courses.points, courses.process) if table]
     entries = (
         *axis.entries,
-        *motion_entries(motion, axis.coordinate),
+        *(entry for table in described for entry in motion_entries(table, axis.coordinate)),
+        *(recording.entries if recording else ()),
         *table_entries(parsed.get("map") if mechanism.needs_map else None),
         *table_entries(parsed.get("inertias")),
         *limit_entries,
@@ -109,6 +120,7 @@ def understand(
         entries=entries,
         problems=problems.finished(),
         fingerprint=fingerprint(entries, catalogs, limits, tolerances),
+        recording=recording.recording if recording else None,
     )
 
 

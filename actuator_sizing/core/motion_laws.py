@@ -6,6 +6,8 @@ import math
 from collections.abc import Callable
 from dataclasses import dataclass
 
+from actuator_sizing.core.blend_planning import is_blend, plan_blend
+from actuator_sizing.core.free_segments import plan_sinusoid, plan_spline
 from actuator_sizing.core.law_shapes import (
     FIXED,
     SHORTEST_SHARE,
@@ -69,10 +71,15 @@ def plan_segment(
     duration_s: float | None = None,
     speed_max: float | None = None,
     acceleration_max: float | None = None,
+    deceleration_max: float | None = None,
     jerk_max: float | None = None,
     acceleration_share: float | None = None,
     deceleration_share: float | None = None,
     jerk_share: float | None = None,
+    amplitude: float | None = None,
+    frequency_hz: float | None = None,
+    cycles: float | None = None,
+    points: tuple[tuple[float, float], ...] = (),
 ) -> tuple[Phase, ...]:
     """Plan one segment of the duty cycle.
 
@@ -85,19 +92,30 @@ def plan_segment(
     displacement : float, optional
         Signed distance. [m]
     end_speed : float, optional
-        Signed speed at the end of a speed ramp, or of a segment of constant speed. [m/s]
+        Signed speed at the end of a speed ramp, of a segment of constant speed, or of a trapezoid or
+        jerk-limited move that blends into the next segment. [m/s]
     duration_s : float, optional
         Time of the segment. [s]
     speed_max : float, optional
         Limit of the magnitude, not a target. [m/s]
     acceleration_max : float, optional
         Limit of the magnitude, not a target. [m/s²]
+    deceleration_max : float, optional
+        Limit of the magnitude while slowing down; the limit of acceleration when empty. [m/s²]
     jerk_max : float, optional
         Limit of the magnitude, not a target. [m/s³]
     acceleration_share, deceleration_share : float, optional
         Parts of the duration spent speeding up and slowing down; one third each when nothing says more. [-]
     jerk_share : float, optional
         Part of the stage of acceleration that each jerk ramp takes; 1/2 when nothing says more. [-]
+    amplitude : float, optional
+        Signed amplitude of a sinusoid: half of the way between its extremes. [m]
+    frequency_hz : float, optional
+        Of a sinusoid. [Hz]
+    cycles : float, optional
+        Periods of a sinusoid, whole or half. [-]
+    points : tuple of (float, float), optional
+        Time [s] and position [m] of the points of a spline, from the start of the segment. [-]
 
     Returns
     -------
@@ -134,12 +152,17 @@ def plan_segment(
             "duration": duration_s,
             "maximum speed": speed_max,
             "maximum acceleration": acceleration_max,
+            "maximum deceleration": deceleration_max,
             "maximum jerk": jerk_max,
             "acceleration share": acceleration_share,
             "deceleration share": deceleration_share,
             "jerk share": jerk_share,
+            "amplitude": amplitude,
+            "frequency": frequency_hz,
+            "cycles": cycles,
         },
         LAWS[law].needs,
+        tuple(points),
     )
     request.check(LAWS[law].uses)
     return LAWS[law].plan(request)
@@ -190,6 +213,9 @@ def _plan_fixed(shape: Shape) -> Planner:
 
 
 def _plan_trapezoid(request: Request) -> tuple[Phase, ...]:
+    if is_blend(request):
+        request.refuse_jerk_limit()
+        return plan_blend(request, DEFAULT_SHARE, 0.0)
     displacement = request.require_move()
     request.refuse_jerk_limit()
     a_max = request.limit("maximum acceleration")
@@ -225,6 +251,8 @@ def _plan_triangular(request: Request) -> tuple[Phase, ...]:
 
 
 def _plan_jerk_limited(request: Request) -> tuple[Phase, ...]:
+    if is_blend(request):
+        return plan_blend(request, DEFAULT_SHARE, _jerk_share(request))
     displacement = request.require_move()
     j_max = request.limit("maximum jerk")
     shares = ("acceleration share", "deceleration share", "jerk share")
@@ -235,6 +263,12 @@ def _plan_jerk_limited(request: Request) -> tuple[Phase, ...]:
         request.require_any(("duration", "maximum speed", "maximum acceleration", "maximum jerk"))
     else:
         request.require_any(("duration",), instead="maximum jerk")
+    return _rest_to_rest(
+        request, displacement, double_s(*request.stage_shares(DEFAULT_SHARE), _jerk_share(request))
+    )
+
+
+def _jerk_share(request: Request) -> float:
     s = request.get("jerk share")
     s = DEFAULT_JERK_SHARE if s is None else s
     if not 0.0 < s <= 0.5:
@@ -244,7 +278,7 @@ def _plan_jerk_limited(request: Request) -> tuple[Phase, ...]:
             "above 0, at most 0.5",
             "For acceleration that jumps, choose the trapezoid.",
         )
-    return _rest_to_rest(request, displacement, double_s(*request.stage_shares(DEFAULT_SHARE), s))
+    return s
 
 
 _ANY_LIMIT = "displacement, and duration or at least one maximum (speed, acceleration, jerk)"
@@ -252,6 +286,7 @@ _MOVE = frozenset(
     {"displacement", "end speed", "duration", "maximum speed", "maximum acceleration", "maximum jerk"}
 )
 _STAGES = frozenset({"acceleration share", "deceleration share"})
+_BLENDS = frozenset({"maximum deceleration"})
 
 
 def _from_shape(
@@ -276,8 +311,9 @@ _LAWS = (
         "trapezoid",
         "constant acceleration, constant speed, constant deceleration",
         "displacement, and either duration (shares default to one third) or maximum acceleration (with or "
-        "without maximum speed); with shares, any maximum will do",
-        _MOVE | _STAGES,
+        "without maximum speed); with shares, any maximum will do. 'end speed' and the speed of the segment "
+        "before blend it with its neighbours; 'maximum deceleration' limits slowing down on its own",
+        _MOVE | _STAGES | _BLENDS,
         _plan_trapezoid,
         trapezoid(DEFAULT_SHARE, DEFAULT_SHARE),
     ),
@@ -293,14 +329,32 @@ _LAWS = (
         "jerk-limited",
         "seven phases of constant jerk, fewer where a limit is not reached",
         "displacement, and either duration (shares default to one third, jerk share to one half) or maximum "
-        "jerk (with or without maximum speed and acceleration); with shares, any maximum will do",
-        _MOVE | _STAGES | {"jerk share"},
+        "jerk (with or without maximum speed and acceleration); with shares, any maximum will do. 'end speed' "
+        "and the speed of the segment before blend it with its neighbours; 'maximum deceleration' limits "
+        "slowing down on its own",
+        _MOVE | _STAGES | _BLENDS | {"jerk share"},
         _plan_jerk_limited,
         double_s(DEFAULT_SHARE, DEFAULT_SHARE, DEFAULT_JERK_SHARE),
     ),
     *(
         _from_shape(name, _FIXED_HELP[name], _ANY_LIMIT, _MOVE, _plan_fixed(build()), build())
         for name, build in FIXED.items()
+    ),
+    MotionLaw(
+        "sinusoid",
+        "swings to and fro from one extreme, any number of half periods",
+        "amplitude, and two of frequency, cycles and duration",
+        frozenset(
+            {"amplitude", "frequency", "cycles", "duration", "maximum speed", "maximum acceleration"}
+        ),
+        plan_sinusoid,
+    ),
+    MotionLaw(
+        "spline",
+        "cubic spline through the rows of the table 'points'",
+        "rows of the table 'points' that name the segment; 'end speed' where it does not end at rest",
+        frozenset({"end speed"}),
+        plan_spline,
     ),
     MotionLaw(
         "constant speed",

@@ -189,3 +189,36 @@ def speed_after(phases: tuple[Phase, ...]) -> float:
     peak = max(float(np.max(np.abs(p.kinematics(np.linspace(0.0, p.duration_s, 9))[1]))) for p in phases)
     final = phases[-1].end()[1]
     return final if abs(final) > _REST * peak else 0.0
+
+
+def position_range(phases: tuple[Phase, ...]) -> tuple[float, float]:
+    """Lowest and highest position of a segment.
+
+    Parameters
+    ----------
+    phases : tuple of Phase
+        The segment, as planned. [-]
+
+    Returns
+    -------
+    low, high : float
+        From the start of the segment; zero and zero at rest. [m]
+
+    Notes
+    -----
+    Extremes lie at ends of phases or where the speed changes sign, found on a grid and refined by bisection.
+    """
+    lowest = highest = 0.0
+    for phase in phases:
+        parts = 16 + 8 * int(abs(phase.sine_frequency_rad_s) * phase.duration_s) if phase.sine_amplitude else 64
+        tau = np.linspace(0.0, phase.duration_s, parts + 1)
+        v = phase.kinematics(tau)[1]
+        turns = np.flatnonzero(v[:-1] * v[1:] < 0.0)
+        low, high, rising = tau[turns], tau[turns + 1], v[turns] < 0.0
+        for _ in range(60):
+            middle = 0.5 * (low + high)
+            before = (phase.kinematics(middle)[1] < 0.0) == rising
+            low, high = np.where(before, middle, low), np.where(before, high, middle)
+        x = phase.kinematics(np.concatenate([tau, low]))[0]
+        lowest, highest = min(lowest, float(x.min())), max(highest, float(x.max()))
+    return lowest, highest

@@ -10,7 +10,7 @@ from actuator_sizing.errors import MotionError
 
 ABSURD_BELOW, ABSURD_ABOVE = 1e-12, 1e15  # SI; beyond any axis, and safe from overflow in seventh powers
 
-_SIGNED = ("displacement", "end speed")
+_SIGNED = ("displacement", "end speed", "amplitude")
 _SHARES = ("acceleration share", "deceleration share", "jerk share")
 _SUM_ROUNDING = _SMALLEST_SHARE = 1e-9
 
@@ -29,12 +29,15 @@ class Request:
         Column name to value. [-]
     needs : str
         Which columns the law needs, for messages. [-]
+    points : tuple of (float, float)
+        Time [s] and position [m] from the start of the segment, for a spline. [-]
     """
 
     law: str
     start_speed: float
     values: Mapping[str, float | None]
     needs: str
+    points: tuple[tuple[float, float], ...] = ()
 
     def get(self, column: str) -> float | None:
         """Value of a column, None when empty [-]."""

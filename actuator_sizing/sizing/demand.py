@@ -18,6 +18,7 @@ from actuator_sizing.case.model import Case, Segment
 from actuator_sizing.core.mechanisms import Mechanism
 from actuator_sizing.core.moments import demand_functions
 from actuator_sizing.core.motion_laws import Phase
+from actuator_sizing.core.process_load import TIME
 from actuator_sizing.core.quadrature import NODES, integrate, interpolate, largest_magnitude, lobatto, roots
 from actuator_sizing.core.transmission import (
     BACK_DRIVING,
@@ -61,6 +62,7 @@ class Demand:
     motor_acceleration: FloatArray  # shaft acceleration as the motor's own moving mass feels it
     torque_by_cause: Mapping[str, FloatArray]  # (P, K) parts of shaft_torque
     load_inertia: float  # largest inertia of load and mechanism at the driven shaft
+    heat_start: NDArray[np.intp] | None = None  # first piece of each block of a condensed record
 
     @cached_property
     def functions(self) -> FloatArray:
@@ -82,7 +84,8 @@ class Demand:
     @cached_property
     def time_s(self) -> FloatArray:
         """Instants of the nodes, shape (P, K). [s]"""
-        return np.asarray(self.start_s[:, None] + 0.5 * (lobatto()[0] + 1.0) * self.duration_s[:, None])
+        nodes = lobatto(self.position.shape[1])[0]
+        return np.asarray(self.start_s[:, None] + 0.5 * (nodes + 1.0) * self.duration_s[:, None])
 
     def instant(self, piece: NDArray[np.intp], position: FloatArray) -> FloatArray:
         """Time of a point given by piece and position on [−1, 1]; shapes broadcast. [s]"""
@@ -135,11 +138,17 @@ def build_demand(case: Case) -> Demand:
     Demand
         Pieces, node values and their moments; independent of any motor. [-]
     """
+    if case.recording is not None:
+        from actuator_sizing.sizing.measured_demand import recorded_pieces
+
+        payloads = np.array([segment.payload for segment in case.segments])
+        largest = float(np.max(case.mechanism.inertia_at_shaft(payloads)))
+        return Demand(**recorded_pieces(case, case.recording), load_inertia=largest)
     pieces = list(_pieces(case))
     stacked: dict[str, Any] = {
         name: np.array([piece[name] for piece in pieces])
         for name in (*(f.name for f in fields(Demand)), "lever")
-        if name not in ("torque_by_cause", "load_inertia")
+        if name not in ("torque_by_cause", "load_inertia", "heat_start")
     }
     stacked["flow"] = stacked["flow"].astype(np.int8)
     causes = {cause: np.array([piece["by_cause"][cause] for piece in pieces]) for cause in CAUSES}
@@ -183,6 +192,7 @@ class _Stretch:
     phase: Phase
     begin: float
     end: float
+    phase_start: float = 0.0  # time in the segment at which the phase starts
 
     @property
     def tau(self) -> FloatArray:
@@ -198,7 +208,7 @@ class _Stretch:
         """Split at positions on (−1, 1)."""
         borders = [self.begin, *(self.begin + 0.5 * (at + 1.0) * (self.end - self.begin)), self.end]
         for begin, end in zip(borders[:-1], borders[1:], strict=True):
-            yield _Stretch(self.phase, begin, end)
+            yield _Stretch(self.phase, begin, end, self.phase_start)
 
 
 def _largest_inertia(case: Case, segment: NDArray[np.intp], position: FloatArray, lever: FloatArray) -> float:
@@ -232,14 +242,17 @@ class _Place:
 def _pieces(case: Case) -> Iterator[dict[str, Any]]:
     start = 0.0
     for index, place in enumerate(_places(case)):
+        phase_start = 0.0
         for phase in place.segment.phases:
-            for part in _halves(phase):
+            for part in _halves(phase, phase_start):
                 for smooth in _at_kinks(part, place):
                     for stretch in smooth.cut(roots(phase.kinematics(smooth.tau)[1])):
                         for one_way in _one_way(stretch, place):
-                            for piece in _same_power(one_way, place):
-                                yield {"segment": index, "start_s": start, **piece}
-                                start += piece["duration_s"]
+                            for even in one_way.cut(_process_kinks(one_way, place)):
+                                for piece in _same_power(even, place):
+                                    yield {"segment": index, "start_s": start, **piece}
+                                    start += piece["duration_s"]
+            phase_start += phase.duration_s
 
 
 def _places(case: Case) -> tuple[_Place, ...]:
@@ -273,13 +286,49 @@ def _stage_factors(mechanism: Mechanism) -> tuple[float, float, float]:
     return first, second, third
 
 
-def _halves(phase: Phase) -> Iterator[_Stretch]:
+def _process_kinks(stretch: _Stretch, place: _Place) -> FloatArray:
+    """Where on (−1, 1) the process load of a stretch without reversal has a kink."""
+    load = place.segment.process
+    if load is None:
+        return np.empty(0)
+
+    def position(tau: FloatArray) -> FloatArray:
+        stated = place.origin + stretch.phase.kinematics(tau)[0]
+        return np.asarray(place.mechanism.transfer(stated, place.at_shaft).position)
+
+    length = stretch.end - stretch.begin
+    if load.over == TIME:
+        begin = stretch.phase_start + stretch.begin
+        tau = load.kinks_between(begin, begin + length) - stretch.phase_start
+    else:
+        x = position(np.array([stretch.begin, stretch.end]))
+        knots = load.kinks_between(float(x.min()), float(x.max()))
+        rising = x[1] > x[0]
+        low, high = np.full_like(knots, stretch.begin), np.full_like(knots, stretch.end)
+        for _ in range(60):  # position is monotonic here: bisection reaches rounding
+            middle = 0.5 * (low + high)
+            before = (position(middle) < knots) == rising
+            low, high = np.where(before, middle, low), np.where(before, high, middle)
+        tau = np.sort(low)
+    at = 2.0 * (tau - stretch.begin) / length - 1.0
+    return np.asarray(at[np.abs(at) < 1.0 - 1e-9])
+
+
+def _process(stretch: _Stretch, segment: Segment, x: FloatArray, direction: float) -> FloatArray:
+    """Process effort at the nodes of a stretch that holds no kink of it."""
+    if segment.process is None:
+        return np.full(NODES, segment.process_effort)
+    at = stretch.phase_start + stretch.tau if segment.process.over == TIME else x
+    return segment.process.values(at, direction)
+
+
+def _halves(phase: Phase, phase_start: float = 0.0) -> Iterator[_Stretch]:
     """The phase in parts of at most half a sine period, which the nodes resolve to rounding."""
     turns = abs(phase.sine_frequency_rad_s) * phase.duration_s / np.pi if phase.sine_amplitude else 0.0
     parts = max(1, int(np.ceil(turns - 1e-9)))
     borders = np.linspace(0.0, phase.duration_s, parts + 1)
     for begin, end in zip(borders[:-1], borders[1:], strict=True):
-        yield _Stretch(phase, float(begin), float(end))
+        yield _Stretch(phase, float(begin), float(end), phase_start)
 
 
 def _at_kinks(part: _Stretch, place: _Place) -> Iterator[_Stretch]:
@@ -304,8 +353,7 @@ def _one_way(stretch: _Stretch, place: _Place) -> Iterator[_Stretch]:
 
 def _resolved(stretch: _Stretch, place: _Place, names: tuple[str, ...], depth: int = 0) -> Iterator[_Stretch]:
     """Halve until the interpolant of each function meets the function at the nodes of both halves."""
-    half = stretch.middle
-    parts = (_Stretch(stretch.phase, stretch.begin, half), _Stretch(stretch.phase, half, stretch.end))
+    parts = tuple(stretch.cut(np.zeros(1)))
     whole = _load(stretch, place)
     values = np.array([whole[name] for name in names])
     allowed = _RESOLUTION * np.array([place.scale[name] for name in names])
@@ -354,7 +402,7 @@ def _load(stretch: _Stretch, place: _Place, direction_of_load: float | None = No
     load_sign = _sign(v) if direction_of_load is None else direction_of_load
     direction = np.full(NODES, load_sign)
     efforts = mechanism.efforts(
-        x, v, a, direction, np.full(NODES, segment.payload), np.full(NODES, segment.process_effort)
+        x, v, a, direction, np.full(NODES, segment.payload), _process(stretch, segment, x, direction[0])
     )
     effort = efforts.total
     load_flow = _flow(effort, direction)

@@ -11,7 +11,7 @@ from actuator_sizing.core.capability import terminal_voltage
 from actuator_sizing.core.machine import JudgedMotor, current_of_torque
 from actuator_sizing.core.moments import gearhead_rows, motor_columns
 from actuator_sizing.core.parameters import GearheadParameters, MotorParameters
-from actuator_sizing.core.quadrature import differentiation_matrix
+from actuator_sizing.core.quadrature import differentiation_matrix, piece_means
 from actuator_sizing.core.thermal import HeatLoss, subpiece_counts, subpiece_durations, subpiece_means
 from actuator_sizing.sizing.demand import Demand
 from actuator_sizing.sizing.thermal_data import fastest_time_constant
@@ -101,7 +101,7 @@ def course(
     current = current_of_torque(
         torque, per_pair(judged.torque_constant_nm_per_a), per_pair(judged.saturation_per_a2)
     )
-    slope = (current @ differentiation_matrix().T) * (2.0 / demand.duration_s[:, None])
+    slope = (current @ differentiation_matrix(current.shape[-1]).T) * (2.0 / demand.duration_s[:, None])
     electrical = (
         per_pair(judged.resistance_ohm),
         per_pair(judged.inductance_h),
@@ -154,9 +154,13 @@ def heat_loss(demand: Demand, motors: MotorParameters, judged: JudgedMotor, c: P
     by_speed = speed_loss(motors, c.motor_speed_rad_s)
     tau = fastest_time_constant(motors)
     shortest = float(np.nanmin(tau)) if np.isfinite(tau).any() else np.inf
-    counts = subpiece_counts(demand.duration_s, copper, shortest)
+    duration = demand.duration_s
+    if demand.heat_start is not None:  # the order within a block of a record is not known: its mean heats it
+        copper, by_speed = (_block_means(duration, demand.heat_start, loss) for loss in (copper, by_speed))
+        duration = np.add.reduceat(duration, demand.heat_start)
+    counts = subpiece_counts(duration, copper, shortest)
     return HeatLoss(
-        duration_s=subpiece_durations(demand.duration_s, counts),
+        duration_s=subpiece_durations(duration, counts),
         copper_loss_w=subpiece_means(copper, counts),
         speed_loss_w=subpiece_means(by_speed, counts),
         resistance_coefficient_per_k=motors.resistance_coefficient_per_k,
@@ -164,3 +168,9 @@ def heat_loss(demand: Demand, motors: MotorParameters, judged: JudgedMotor, c: P
         magnet_coefficient_per_k=motors.magnet_coefficient_per_k,
         magnet_reference_degc=motors.magnet_reference_degc,
     )
+
+
+def _block_means(duration_s: FloatArray, start: NDArray[np.intp], loss: FloatArray) -> FloatArray:
+    """Means over blocks of pieces, as constant node values, shape (B, P, K) to (B, G, K)."""
+    total = np.add.reduceat(piece_means(loss) * duration_s, start, axis=1)
+    return np.repeat((total / np.add.reduceat(duration_s, start))[..., None], loss.shape[2], axis=2)

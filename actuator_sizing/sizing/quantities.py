@@ -7,11 +7,17 @@ from typing import Any
 import numpy as np
 
 from actuator_sizing.core.parameters import CURRENT_BASES
+from actuator_sizing.core.permissible_load import LoadedMachine, intermittent_current, short_time_current
 from actuator_sizing.core.warm_up import temperatures_after, warm_up
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.checks.motor import current_limited_torque
 from actuator_sizing.sizing.set_model import SetModel
 
+#: Usual short times, cyclic duration factors, and the cycle that the latter refer to when nothing else is
+#: said; practice around IEC 60034-1 (from memory).
+SHORT_TIMES_MIN = (10, 30, 60)
+DUTY_FACTORS_PERCENT = (15, 25, 40, 60)
+INTERMITTENT_CYCLE_S = 600.0
 COMMISSIONING_TIMES_S = (600.0, 1800.0, 3600.0)
 
 _FROM_PAIRS = (
@@ -104,6 +110,29 @@ def commissioning_quantities(model: SetModel) -> dict[str, Any]:
         for body in ("winding", "housing"):
             value = None if after is None else _known(getattr(after, f"{body}_degc")[position])
             answer[f"{body}_after_{minutes}_degc"] = value
+    return answer | _permissible_currents(model)
+
+
+def _permissible_currents(model: SetModel) -> dict[str, Any]:
+    """Current for a short time from cold, and again and again with rests, at the mean speed loss of the cycle."""
+    motor, loss = model.motor, model.loss
+    machine = LoadedMachine(
+        network=model.network,
+        resistance_ohm=float(motor.resistance_ohm[0]),
+        resistance_coefficient_per_k=float(motor.resistance_coefficient_per_k[0]),
+        resistance_reference_degc=float(motor.resistance_reference_degc[0]),
+        speed_loss_w=float(loss.speed_loss_w[0] @ loss.duration_s / loss.duration_s.sum()),
+        ambient_degc=model.case.surroundings.ambient_degc,
+        limit_degc=float(motor.winding_limit_degc[0]),
+    )
+    answer: dict[str, Any] = {}
+    for minutes in SHORT_TIMES_MIN:
+        key = f"permissible_short_time_{minutes}_min_current_a"
+        answer[key] = _known(short_time_current(machine, 60.0 * minutes))
+    for percent in DUTY_FACTORS_PERCENT:
+        on = INTERMITTENT_CYCLE_S * percent / 100.0
+        key = f"permissible_intermittent_{percent}_percent_current_a"
+        answer[key] = _known(intermittent_current(machine, on, INTERMITTENT_CYCLE_S - on))
     return answer
 
 

@@ -77,22 +77,37 @@ def test_coefficients_from_the_definition(law, speed, acceleration, rms):
 
 @pytest.mark.published("A1.7")
 def test_double_s_stage_lengths():
-    """[B]: limits 5, 10, 30 give a stop in 0.8333 s with jerk ramps of 0.3333 s.
-
-    The example starts at speed 1; only its stop from full speed to rest is a stage of a move from rest.
-    """
+    """[B]: from speed 1 over 10 with limits 5, 10, 30 to rest."""
     phases = plan_segment(
         "jerk-limited",
-        start_speed=0.0,
+        start_speed=1.0,
         displacement=10.0,
+        end_speed=0.0,
         speed_max=5.0,
         acceleration_max=10.0,
         jerk_max=30.0,
     )
-    stop = [phase.duration_s for phase in phases[-3:]]
-    assert sum(stop) == pytest.approx(0.8333, abs=5e-5)
-    assert stop[0] == pytest.approx(0.3333, abs=5e-5)
-    assert stop[2] == pytest.approx(0.3333, abs=5e-5)
+    lengths = [phase.duration_s for phase in phases]
+    # Printed to four decimals; the recomputed values are 11/15, 1.14333, 5/6 and 1/3.
+    assert sum(lengths[:3]) == pytest.approx(0.7333, abs=5e-5)
+    assert lengths[3] == pytest.approx(1.1433, abs=5e-5)
+    assert sum(lengths[4:]) == pytest.approx(0.8333, abs=5e-5)
+    assert [lengths[k] for k in (0, 2, 4, 6)] == pytest.approx([1 / 3] * 4, rel=1e-9)
+    assert lengths[3] == pytest.approx(10.0 / 5.0 - 0.6 * 11.0 / 15.0 - 0.5 * 5.0 / 6.0, rel=1e-9)
+
+
+def test_asymmetric_trapezoid_from_its_rates():
+    """[G]: the speed limit with which 1.5 km at 2.4 and 3.2 km/h/s takes 100 s is the printed one."""
+    phases = plan_segment(
+        "trapezoid",
+        start_speed=0.0,
+        displacement=1500.0,
+        duration_s=100.0,
+        acceleration_max=2.4 / 3.6,
+        deceleration_max=3.2 / 3.6,
+    )
+    assert 3.6 * maximum(phases, 1) == pytest.approx(74.0, abs=0.5)  # printed without decimals
+    assert 3.6 * maximum(phases, 1) == pytest.approx(73.9231, abs=5e-5)  # recomputed
 
 
 @pytest.mark.published("A1.8")

@@ -126,8 +126,13 @@ def test_a_name_cannot_lead_out_of_the_reports_folder():
 # -- audit -------------------------------------------------------------------------------------------
 
 
-def test_audit_of_a_clean_case(case, run):
-    assert run("audit", case) == (0, "No problems found.\n", "")
+def test_audit_of_a_clean_case_draws_its_motion(case, run, tmp_path):
+    picture = os.path.join("reports", "my axis", "motion.svg")
+    assert run("audit", case) == (0, f"No problems found.\nMotion: {picture}\n", "")
+    drawn = (tmp_path / picture).read_text("utf-8")
+    assert drawn.startswith("<?xml")
+    assert "acceleration" in drawn
+    assert "effort at the load" in drawn
 
 
 def test_audit_tells_all_problems_grouped_with_errors_first(case, run):
@@ -161,7 +166,7 @@ def test_warnings_alone_do_not_fail(case, run):
     rewrite(case, "drives", lambda rows: [[*rows[0], "colour"], [*rows[1], "red"]])
     status, out, err = run("audit", case)
     assert status == 0
-    assert out == "1 warning in 1 table.\n"
+    assert out.splitlines()[0] == "1 warning in 1 table."
     assert "colour" in err
 
 

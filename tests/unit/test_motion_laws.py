@@ -37,7 +37,8 @@ def peak(phases, order):
 def test_the_words_of_the_duty_cycle():
     assert list(LAWS) == [
         "trapezoid", "triangular", "jerk-limited", "3-4-5 polynomial", "4-5-6-7 polynomial", "cycloidal",
-        "modified sine", "modified trapezoid", "simple harmonic", "constant speed", "speed ramp", "dwell",
+        "modified sine", "modified trapezoid", "simple harmonic", "sinusoid", "spline", "constant speed",
+        "speed ramp", "dwell",
     ]  # fmt: skip
     assert all(law.name == name and law.help and law.needs for name, law in LAWS.items())
 

@@ -160,7 +160,7 @@ def test_relative_catalog_folder_still_names_the_same_folder(tmp_path):
 DEMO = Path(__file__).parents[2] / "catalogs_demo"
 
 
-@pytest.mark.parametrize("name", ["tray_lift", "tray_shuttle", "potting_table"])
+@pytest.mark.parametrize("name", ["tray_lift", "tray_shuttle", "tray_shuttle_measured", "potting_table"])
 def test_demo_cases_mean_the_same_in_every_form(tmp_path, name):
     """One of them has semicolons, decimal commas and a shared catalog folder."""
     shutil.copytree(DEMO / "catalog", tmp_path / "catalog")
@@ -239,7 +239,7 @@ def test_both_forms_of_a_started_case_say_the_same(tmp_path):
 def test_the_workbook_guides_the_hand(tmp_path):
     start_case(tmp_path / "new.xlsx", "lead screw")
     book = load_workbook(tmp_path / "new.xlsx")
-    assert book.sheetnames == [name for name in TABLES if name != "map"]  # a lead screw has none
+    assert book.sheetnames == [name for name, table in TABLES.items() if table.in_template and name != "map"]
     motors = book["motors"]
     assert motors.freeze_panes == "B2"
     assert "Required." in motors["A1"].comment.text
@@ -262,5 +262,5 @@ def test_start_refuses_what_exists_and_what_it_does_not_know(tmp_path):
     assert not (tmp_path / "new").exists()
     (tmp_path / "empty").mkdir()
     assert {path.name for path in start_case(tmp_path / "empty")} == {"columns.md"} | {
-        f"{t}.csv" for t in TABLES if t != "map"
+        f"{name}.csv" for name, table in TABLES.items() if table.in_template and name != "map"
     }

@@ -100,7 +100,7 @@ def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]
     units = AxisUnits.of(comparison.case)
     return {
         "speed_torque": lambda: draw_speed_torque(best, detail, units),
-        "motion": lambda: draw_motion(detail, units),
+        "motion": lambda: draw_motion(detail.cycle, units),
         "torque_by_cause": lambda: draw_causes(detail, units),
         "current": lambda: draw_current(best, detail),
         "temperature": lambda: draw_temperature(detail),

@@ -29,23 +29,25 @@ _CAUSES = (
 )
 
 
-def draw_motion(detail: SetDetail, units: AxisUnits) -> Figure:
-    """Draw position, speed and acceleration of the load and the air-gap torque of the motor over one cycle.
+def draw_motion(cycle: pd.DataFrame, units: AxisUnits) -> Figure:
+    """Draw position, speed and acceleration of the load over one cycle, and what asks for them.
 
     Parameters
     ----------
-    detail : SetDetail
-        Curves of the set.
+    cycle : DataFrame
+        Curves over one cycle; the last panel is the air-gap torque of the motor, or the effort at the load
+        as long as no motor is chosen.
     units : AxisUnits
         Units and words to draw in.
     """
-    cycle = detail.cycle
     time, unit = _time(cycle)
+    effort = "motor_torque_nm" if "motor_torque_nm" in cycle else "effort"
+    whose = f"motor {units.effort_word}" if effort == "motor_torque_nm" else "effort at the load"
     panels = (
         ("position", units.position(cycle["position"]), "position"),
         ("speed", units.speed(), "speed"),
         ("acceleration", units.acceleration(), "acceleration"),
-        ("motor_torque_nm", units.effort(cycle["motor_torque_nm"]), f"motor {units.effort_word}"),
+        (effort, units.effort(cycle[effort]) if effort != "effort" else units.load_effort(cycle[effort]), whose),
     )
     figure, axes = style.new_axes(5.4, rows=len(panels), left_in=0.95, right_in=0.25, top_in=0.32)
     for ax, (column, shown, name) in zip(axes, panels, strict=True):

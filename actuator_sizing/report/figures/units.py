@@ -35,6 +35,10 @@ class AxisUnits:
         """Choose the unit of motor torque or force for these SI values."""
         return DisplayUnit("N") if self.linear_motor else display_unit("N·m", values)
 
+    def load_effort(self, values: Any) -> DisplayUnit:
+        """Choose the unit of force or torque at the load for these SI values."""
+        return display_unit("N" if self.linear_load else "N·m", values)
+
     def motor_speed(self) -> DisplayUnit:
         """Choose the unit of motor speed."""
         return DisplayUnit("m/s") if self.linear_motor else display_unit("rad/s", (1.0,))
