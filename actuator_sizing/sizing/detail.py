@@ -20,6 +20,7 @@ from actuator_sizing.core.parameters import CURRENT_BASES, GearheadParameters, M
 from actuator_sizing.core.step_response import StepResponse, voltage_step
 from actuator_sizing.core.thermal import HeatLoss, ThermalNetwork
 from actuator_sizing.core.warm_up import temperature_course, temperatures_after, warm_up
+from actuator_sizing.sizing.bus import bus_quantities
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.checks.motor import current_limited_torque, rerated_continuous_current
 from actuator_sizing.sizing.demand import Demand
@@ -261,8 +262,7 @@ def quantities(model: SetModel, sets: Sets, index: int) -> dict[str, Any]:
     answer["drive_current_peak_a"] = _known(sets.drive_current_peak_a[index])
     answer["drive_current_rms_a"] = _known(sets.drive_current_rms_a[index])
     answer["drive_current_basis"] = CURRENT_BASES[int(model.drive.current_basis[0])]
-    for name in ("bus_voltage_max_v", "brake_energy_per_cycle_j", "brake_power_mean_w", "brake_power_peak_w"):
-        answer[name] = None
+    answer.update(bus_quantities(sets, index))
     answer.update(_step_quantities(model))
     return answer
 
