@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
+from dataclasses import replace
 from pathlib import Path
 
 from actuator_sizing.case.columns import fold, nearest
@@ -28,17 +29,20 @@ def read_case(path: str | Path) -> Case:
     Returns
     -------
     Case
-        Everything known about the axis, in SI, each value with its source.
+        Everything known about the axis, in SI, each value with its source; its problems hold what the audit
+        of the data sheets found too, so that a report says it.
 
     Raises
     ------
     InputError
         If the case cannot be used; it carries every problem found.
     """
+    from actuator_sizing.case.audit import audit_catalogs
+
     case, problems = check_case(path)
     if case is None:
         raise InputError(problem for problem in problems if problem.severity == ERROR)
-    return case
+    return replace(case, problems=tuple(dict.fromkeys((*case.problems, *audit_catalogs(case)))))
 
 
 def check_case(path: str | Path) -> tuple[Case | None, tuple[Problem, ...]]:
@@ -181,7 +185,11 @@ def _report_missing_tables(raw: dict[str, RawTable], problems: ProblemList) -> N
     for name, table in TABLES.items():
         if table.required and name not in raw and not problems.mentions(name):
             where = ", in the case or in its catalog folder" if table.is_catalog else ""
-            columns = ", ".join(column.name for column in table.columns if column.required)
+            columns = ", ".join(
+                f"{column.name} ({column.machine} motor)" if column.machine else column.name
+                for column in table.columns
+                if column.required
+            )
             problems.report(name, None, got="no such table", allowed=f"a required table{where}",
                             remedy=f"Add a sheet '{name}' or a file {name}.csv with at least the columns: "
                             f"{columns}.")  # fmt: skip

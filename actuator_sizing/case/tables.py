@@ -52,6 +52,8 @@ CHECK_NAMES: tuple[tuple[str, str], ...] = (
 ADVICE_CHECKS = ("inertia_ratio",)  # judged as advice unless the limits table says otherwise
 DEFAULT_ALLOWED_UTILISATION = 1.0
 DEFAULT_RECOMMENDED_RESERVE = 0.1
+#: Checks whose common practice differs: a bus may come within 5 % of the trip, a stated smallest resistor is met.
+RECOMMENDED_RESERVES = {"bus_maximum_voltage": 0.05, "brake_resistor_value": 0.0}
 RANKINGS = ("price", "mass", "reserve", "energy")
 ABSOLUTE_ZERO_DEGC = -273.15
 
@@ -298,6 +300,7 @@ __all__ = [
     "LIMIT_COLUMNS",
     "MOTOR_COLUMNS",
     "RANKINGS",
+    "RECOMMENDED_RESERVES",
     "TABLES",
     "TEXT",
     "TOLERANCE_COLUMNS",

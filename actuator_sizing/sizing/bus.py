@@ -20,7 +20,7 @@ from actuator_sizing.core.machine import judge
 from actuator_sizing.core.parameters import _Columns
 from actuator_sizing.core.quadrature import integrate, largest
 from actuator_sizing.sizing.checks.base import Sets
-from actuator_sizing.sizing.evaluation import course
+from actuator_sizing.sizing.pair_course import course
 
 FloatArray = NDArray[np.float64]
 

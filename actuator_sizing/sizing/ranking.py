@@ -10,8 +10,8 @@ from actuator_sizing.core.machine import amplitude_per_unit_current
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import Demand
 from actuator_sizing.sizing.evaluation import evaluate_pairs
+from actuator_sizing.sizing.fitting import compatible
 from actuator_sizing.sizing.judging import Verdicts
-from actuator_sizing.sizing.screening import compatible
 
 FloatArray = NDArray[np.float64]
 IndexArray = NDArray[np.intp]
@@ -50,7 +50,7 @@ def ranking_key(case: Case, sets: Sets, verdicts: Verdicts, index: IndexArray, r
     else:
         name = "price" if ranked_by == "price" else "mass_kg"
         key = sum(getattr(part, name) for part in (sets.motors, sets.gearheads, sets.drives))
-    return np.nan_to_num(np.asarray(key, dtype=float), nan=np.inf)
+    return np.asarray(np.nan_to_num(np.asarray(key, dtype=float), nan=np.inf))
 
 
 def nearest_drives(case: Case, demand: Demand, pairs: IndexArray) -> IndexArray:

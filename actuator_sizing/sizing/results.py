@@ -7,6 +7,7 @@ from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
+    from datetime import date
     from pathlib import Path
 
     import pandas as pd
@@ -19,6 +20,8 @@ LOW_RESERVE = "passes, low reserve"
 FAILS = "fails"
 NOT_CHECKED = "not checked"
 VERDICTS = (PASSES, LOW_RESERVE, NOT_CHECKED, FAILS)
+#: What a check that only advises says instead; it neither passes nor fails.
+ADVICE_MET, ADVICE_NOT_MET = "advice met", "advice not met"
 
 
 @dataclass(frozen=True)
@@ -49,11 +52,36 @@ class CheckResult:
     is_advice: bool = False
 
     @property
+    def shown_verdict(self) -> str:
+        """The verdict as every format words it: advice neither passes nor fails."""
+        if not self.is_advice or self.utilisation is None:
+            return self.verdict
+        return ADVICE_NOT_MET if self.utilisation > self.allowed else ADVICE_MET
+
+    @property
     def margin(self) -> float | None:
         """capacity/demand − 1, None where not known."""
         if self.utilisation is None or self.utilisation == 0.0:
             return None
         return 1.0 / self.utilisation - 1.0
+
+
+class Checks(tuple[CheckResult, ...]):
+    """The checks of one set; a tuple that shows itself as a table."""
+
+    __slots__ = ()
+
+    @property
+    def table(self) -> pd.DataFrame:
+        """Demand, capacity, unit, utilisation, verdict and place of each check, one row each."""
+        from actuator_sizing.sizing.notebook import checks_frame
+
+        return checks_frame(self)
+
+    def _repr_html_(self) -> str:
+        from actuator_sizing.sizing.notebook import checks_html
+
+        return checks_html(self)
 
 
 @dataclass(frozen=True)
@@ -78,6 +106,9 @@ class SetDetail:
     #: levels for limit lines, e.g. motor_peak_current_a, drive_peak_current_a, drive_continuous_current_a,
     #: speed_max_rad_s, winding_limit_degc, ambient_degc, voltage_available_v (NaN: not known)
     levels: Mapping[str, float]
+    #: one row per segment of the duty cycle: torque_rms_nm, current_rms_a and current_squared_a2_s, the integral
+    #: of the squared current over the segment; their sum over the cycle time is the squared RMS current
+    segments: pd.DataFrame | None = None
 
 
 @dataclass(frozen=True)
@@ -94,7 +125,7 @@ class SetResult:
     price: float | None
     mass_kg: float | None
     quantities: Mapping[str, Any]
-    checks: tuple[CheckResult, ...]
+    checks: Checks
     motor_index: int
     gearhead_index: int
     drive_index: int
@@ -105,6 +136,12 @@ class SetResult:
     def label(self) -> str:
         """Motor, gearhead and drive in one line."""
         return " + ".join([self.motor, self.gearhead or "direct", self.drive])
+
+    def _repr_html_(self) -> str:
+        """Its checks as a table for notebooks."""
+        from actuator_sizing.sizing.notebook import set_html
+
+        return set_html(self)
 
     def check(self, key: str) -> CheckResult:
         """The result of one check by its key.
@@ -160,13 +197,33 @@ class Comparison:
         """Whether a set passes every check."""
         return bool(self.sets) and self.sets[0].verdict in (PASSES, LOW_RESERVE)
 
-    def write_report(self, folder: str | Path) -> tuple[Path, ...]:
+    def _repr_html_(self) -> str:
+        """A compact table for notebooks."""
+        from actuator_sizing.sizing.notebook import comparison_html
+
+        return comparison_html(self)
+
+    def write_report(
+        self,
+        folder: str | Path,
+        *,
+        date: date | None = None,
+        pdf: bool | None = None,
+        since: Mapping[str, Any] | None = None,
+    ) -> tuple[Path, ...]:
         """Write report, tables, figures and results into `folder`; whole or not at all.
 
         Parameters
         ----------
         folder : str or Path
             Output folder; made if missing.
+        date : datetime.date or None
+            Date of the report; by default today, or the day in the environment variable
+            ``SOURCE_DATE_EPOCH``.
+        pdf : bool or None
+            Write the PDF too; None writes it if the optional package for it is installed.
+        since : mapping or None
+            Contents of an earlier ``results.json``: the report then says what changed.
 
         Returns
         -------
@@ -180,4 +237,4 @@ class Comparison:
         """
         from actuator_sizing.report import write_report
 
-        return write_report(self, folder)
+        return write_report(self, folder, date=date, pdf=pdf, since=since)

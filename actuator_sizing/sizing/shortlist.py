@@ -13,7 +13,8 @@ from actuator_sizing.core.machine import amplitude_per_unit_current, judge
 from actuator_sizing.core.windows import overload_accumulator, windowed_rms
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import Demand
-from actuator_sizing.sizing.evaluation import PairResults, course, evaluate_pairs
+from actuator_sizing.sizing.evaluation import PairResults, evaluate_pairs
+from actuator_sizing.sizing.pair_course import course
 
 FloatArray = NDArray[np.float64]
 IndexArray = NDArray[np.intp]
@@ -80,7 +81,7 @@ def evaluate_sets(
         index=index,
         demand=demand,
         surroundings=case.surroundings,
-        recommended_inertia_ratio=float(case.options["recommended inertia ratio"]),  # type: ignore[arg-type]
+        recommended_inertia_ratio=case.number("recommended inertia ratio"),
         motors=case.motor_parameters.take(index[:, 0]),
         gearheads=case.gearhead_parameters.take(index[:, 1]),
         drives=case.drive_parameters.take(index[:, 2]),

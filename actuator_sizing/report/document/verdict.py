@@ -2,15 +2,14 @@
 
 from __future__ import annotations
 
+import math
 from datetime import date
 from typing import TYPE_CHECKING
 
 from actuator_sizing.report.document.blocks import Bullets, Facts, Paragraph, Section
 from actuator_sizing.report.formatting import percent, quantity
 from actuator_sizing.report.text import clean, in_sentence, option, plural
-from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
-
-ADVICE_MET, ADVICE_NOT_MET = "advice met", "advice not met"
+from actuator_sizing.sizing.results import ADVICE_NOT_MET, FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
 
 if TYPE_CHECKING:
     from actuator_sizing.sizing.results import CheckResult, Comparison, SetResult
@@ -45,15 +44,10 @@ def describe_set(item: SetResult) -> str:
     return f"{clean(item.motor, 60)} + {gearhead} + {clean(item.drive, 60)}"
 
 
-def shown_verdict(check: CheckResult) -> str:
-    """Word the verdict of a check; advice neither passes nor fails."""
-    if not check.is_advice or check.utilisation is None:
-        return check.verdict
-    return ADVICE_NOT_MET if check.utilisation > check.allowed else ADVICE_MET
-
-
 def describe_check(check: CheckResult) -> str:
     """Say how far a check is used, and what is left."""
+    if check.utilisation is not None and math.isinf(check.utilisation):
+        return f"{check.title} has no capacity left at all"
     use = f"{percent(check.utilisation, check.allowed)} of the capacity"
     if check.allowed != 1.0:
         use += f" ({percent(check.allowed)} allowed)"
@@ -114,7 +108,7 @@ def verdict_section(comparison: Comparison) -> Section:
     advice = [
         in_sentence(c.title)
         for c in (comparison.sets[0].checks if comparison.sets else ())
-        if shown_verdict(c) == ADVICE_NOT_MET
+        if c.shown_verdict == ADVICE_NOT_MET
     ]
     if advice:
         notes.insert(0, f"Advice not met, which does not decide the verdict: {_listed(advice)}.")

@@ -20,7 +20,18 @@ if TYPE_CHECKING:
 
     from actuator_sizing.sizing.results import Comparison
 
-__all__ = ["DrawnFigure", "draw_figures", "house_style", "to_svg"]
+__all__ = ["FIGURES", "DrawnFigure", "draw_figures", "house_style", "to_svg"]
+
+#: Keys of all figures, which name their files.
+FIGURES = (
+    "utilisation",
+    "speed_torque",
+    "motion",
+    "torque_by_cause",
+    "current",
+    "temperature",
+    "step_response",
+)
 
 
 @dataclass(frozen=True)

@@ -80,6 +80,10 @@ class Measure:
     at_s: FloatArray | None = None
     utilisation: FloatArray | None = None
 
+    def instant(self, index: int) -> float:
+        """When the demand of one set is largest; NaN where the check has no instant. [s]"""
+        return np.nan if self.at_s is None else float(self.at_s[index])
+
     def ratio(self) -> FloatArray:
         """Utilisation, shape (S,); infinite where there is demand but no capacity. [-]"""
         if self.utilisation is not None:
@@ -110,7 +114,7 @@ class Need:
         parameters = getattr(sets, self.part)
         if not hasattr(parameters, self.field):
             return ~np.isnan(sets.catalog_values(self.part, self.field))
-        value = getattr(parameters, self.field)
+        value = np.asarray(getattr(parameters, self.field))
         return value if value.dtype == bool else ~np.isnan(value)
 
 
@@ -149,6 +153,8 @@ class Check:
         Sets → mask of the sets that the check concerns.
     is_advice : bool
         Never fails unless the user makes it a limit.
+    yields_to : str
+        Key of the check that fails too wherever this one is infinite, and says by how much.
     """
 
     key: str
@@ -164,6 +170,7 @@ class Check:
     applies: Callable[[Sets], NDArray[np.bool_]] = _always
     linear_unit: str = ""
     is_advice: bool = False
+    yields_to: str = ""
 
 
 def digits(value: float) -> str:

@@ -7,11 +7,12 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.core.machine import JudgedMotor, judge
+from actuator_sizing.core.machine import JudgedMotor, current_of_torque, judge
 from actuator_sizing.core.parameters import BASIS_PEAK, BASIS_RMS, GearheadParameters, MotorParameters
 from actuator_sizing.core.quadrature import integrate, interpolate
 from actuator_sizing.core.transmission import stage_factor
 from actuator_sizing.sizing.checks.base import Sets, digits
+from actuator_sizing.sizing.pair_course import course
 
 FloatArray = NDArray[np.float64]
 
@@ -62,8 +63,6 @@ def instant_of(sets: Sets, i: int, at_s: float, largest: str) -> Instant:
     Instant
         Everything that the working of a check names. [-]
     """
-    from actuator_sizing.sizing.evaluation import course
-
     demand = sets.demand
     motor, gearhead = sets.motors.take(slice(i, i + 1)), sets.gearheads.take(slice(i, i + 1))
     judged = judge(motor, sets.surroundings)
@@ -77,9 +76,10 @@ def instant_of(sets: Sets, i: int, at_s: float, largest: str) -> Instant:
         x = np.clip(2.0 * (at_s - demand.start_s[piece]) / demand.duration_s[piece] - 1.0, -1.0, 1.0)
         return float(interpolate(values[piece], np.array([x]))[0])
 
-    piece = int(max(inside, key=lambda p: read(decides, p)))
+    piece = int(max(inside.tolist(), key=lambda p: read(decides, p)))
     n = float(gearhead.ratio[0])
     factor = stage_factor(demand.flow[piece : piece + 1], gearhead.efficiency, gearhead.efficiency_back)
+    torque = np.array([read(c.torque_nm[0], piece)])
     return Instant(
         motor=motor,
         gearhead=gearhead,
@@ -91,8 +91,10 @@ def instant_of(sets: Sets, i: int, at_s: float, largest: str) -> Instant:
         shaft_torque=read(demand.shaft_torque, piece),
         shaft_speed=read(demand.shaft_speed, piece),
         speed=read(c.motor_speed_rad_s[0], piece),
-        torque=read(c.torque_nm[0], piece),
-        current=read(c.current_a[0], piece),
+        torque=float(torque[0]),
+        current=float(
+            current_of_torque(torque, judged.torque_constant_nm_per_a, judged.saturation_per_a2)[0]
+        ),
         current_slope=read(c.current_slope_a_s[0], piece),
         held=bool(demand.brake_closed[piece]) and demand.direction[piece] == 0.0,
     )
@@ -161,6 +163,12 @@ def voltage_limit_working(sets: Sets, i: int, at: Instant) -> str:
     under = b**2 - a * (emf**2 - U**2)
     if under < 0.0 or (motoring and emf >= U):
         return f"K ω = {digits(K)} · {digits(omega)} = {digits(emf)} V uses up U = {digits(U)} V: no torque is left"
+    least = (b - under**0.5) / a
+    if emf >= U and abs(at.current) < least:
+        return (
+            f"K ω = {digits(K)} · {digits(omega)} = {digits(emf)} V is more than U = {digits(U)} V: at this speed "
+            f"a braking current of at least {digits(least)} A is needed to stay within the voltage"
+        )
     current = (-b + under**0.5) / a if motoring else (b + under**0.5) / a
     sign = "−" if motoring else ""
     torque = K * current * (1.0 - sat * current**2)
@@ -186,8 +194,6 @@ def available_voltage_working(sets: Sets, i: int) -> str:
 
 def rms_working(sets: Sets, i: int) -> str:
     """RMS current from the integral of i² over each segment."""
-    from actuator_sizing.sizing.evaluation import course
-
     demand = sets.demand
     motor, gearhead = sets.motors.take(slice(i, i + 1)), sets.gearheads.take(slice(i, i + 1))
     current = course(demand, motor, gearhead, judge(motor, sets.surroundings)).current_a[0]
