@@ -46,14 +46,36 @@ CHECK_NAMES: tuple[tuple[str, str], ...] = (
     ("gearhead_peak_torque", "gearhead peak torque"),
     ("gearhead_mean_speed", "gearhead mean input speed"),
     ("gearhead_maximum_speed", "gearhead maximum input speed"),
+    ("stop_controlled", "controlled stop"),
+    ("stop_shorted", "stop by shorted winding"),
+    ("stop_brake", "stop by the holding brake"),
+    ("motor_shorted_current", "short-circuit current"),
+    ("holding_brake_static", "holding brake torque"),
+    ("holding_brake_energy", "holding brake energy"),
+    ("drop_distance", "drop distance"),
+    ("gearhead_emergency_torque", "gearhead emergency torque"),
+    ("gearhead_jam_torque", "gearhead torque in a jam"),
     ("inertia_ratio", "inertia ratio"),
 )
 
-ADVICE_CHECKS = ("inertia_ratio",)  # judged as advice unless the limits table says otherwise
+#: Judged as advice unless the limits table says otherwise: rules of thumb, and events that need not be possible.
+ADVICE_CHECKS = (
+    "stop_shorted",
+    "stop_brake",
+    "motor_shorted_current",
+    "gearhead_emergency_torque",
+    "gearhead_jam_torque",
+    "inertia_ratio",
+)
 DEFAULT_ALLOWED_UTILISATION = 1.0
 DEFAULT_RECOMMENDED_RESERVE = 0.1
-#: Checks whose common practice differs: a bus may come within 5 % of the trip, a stated smallest resistor is met.
-RECOMMENDED_RESERVES = {"bus_maximum_voltage": 0.05, "brake_resistor_value": 0.0}
+#: Checks whose common practice differs: a bus may come within 5 % of the trip, a stated smallest resistor is met,
+#: a holding brake has 1.5 times the torque of the load.
+RECOMMENDED_RESERVES = {
+    "bus_maximum_voltage": 0.05,
+    "brake_resistor_value": 0.0,
+    "holding_brake_static": 0.33,
+}
 RANKINGS = ("price", "mass", "reserve", "energy")
 ABSOLUTE_ZERO_DEGC = -273.15
 
@@ -126,6 +148,13 @@ COMMON_QUANTITIES = (
            "is then the one without load", positive=True, maximum=1.0e6, example="", unit="Ω"),
     Column("supply feeds back", YES_NO, "whether the supply returns regenerated energy to the mains",
            default="no", assumed="a rectifier does not feed back", example="no"),
+    Column("stop reaction time", "time", "from the event that asks for a stop until the drive or the brake is told",
+           default=0.05, assumed="50 ms, detection and relays; to be measured", minimum=0.0, maximum=100.0,
+           example="50", unit="ms"),
+    Column("allowed stopping distance", ("length", "angle"), "way the load may go on moving after an emergency stop",
+           positive=True, example=("", ""), unit=("mm", "deg")),
+    Column("allowed drop distance", ("length", "angle"), "way a held load may sink until the holding brake carries "
+           "it, when torque is removed", positive=True, example=("", ""), unit=("mm", "deg")),
     Column("catalog folder", TEXT, "folder with shared catalog tables, relative to the case", example=""),
     Column("direct drive allowed", YES_NO, "whether sets without gearhead are candidates", default="yes",
            assumed="nothing speaks against it", example="yes"),

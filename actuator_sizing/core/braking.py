@@ -46,7 +46,7 @@ def stop(
     load_nm: FloatArray,
     friction_nm: FloatArray,
     delay_s: FloatArray,
-    braking_nm: Callable[[FloatArray], FloatArray],
+    braking_nm: FloatArray | Callable[[FloatArray], FloatArray],
 ) -> Stop:
     """Stop after a delay without torque, then by a torque that depends on speed.
 
@@ -62,8 +62,8 @@ def stop(
         Coulomb friction, ≥ 0. [N·m]
     delay_s : ndarray
         From command to braking torque; gravity and friction act meanwhile. [s]
-    braking_nm : callable
-        Speeds, shape (..., n), to braking torque of that shape or one that broadcasts. [N·m]
+    braking_nm : ndarray or callable
+        Constant braking torque, or a function of speeds, shape (..., n), to torques of that shape. [N·m]
 
     Returns
     -------
@@ -72,7 +72,8 @@ def stop(
 
     Notes
     -----
-    ``t = ∫ J dω / T(ω)`` and ``φ = ∫ J ω dω / T(ω)``, Gauss–Legendre by decades of speed. A load that is lifted
+    ``t = ∫ J dω / T(ω)`` and ``φ = ∫ J ω dω / T(ω)``: in closed form for a constant torque, else by Gauss–Legendre
+    on decades of speed. A load that is lifted
     may come to rest within the delay and fall back until the brake takes hold; the larger of the two ways counts.
     First principles; losses of transmission stages are the caller's to leave out, since they shorten a stop.
     """
@@ -105,8 +106,17 @@ def stop(
 
 
 def _braked(
-    start: FloatArray, J: FloatArray, against: FloatArray, braking_nm: Callable[[FloatArray], FloatArray]
+    start: FloatArray,
+    J: FloatArray,
+    against: FloatArray,
+    braking_nm: FloatArray | Callable[[FloatArray], FloatArray],
 ) -> tuple[FloatArray, FloatArray]:
+    if not callable(braking_nm):
+        torque = braking_nm + against
+        with np.errstate(divide="ignore", invalid="ignore"):
+            time = np.where(torque > 0.0, J * start / torque, np.inf)
+        time = np.where(start == 0.0, 0.0, np.where(np.isnan(torque), np.nan, time))
+        return time, np.asarray(0.5 * start * time)
     shares, weights = _speed_shares()
     omega = start[..., None] * shares
     torque = braking_nm(omega) + against[..., None]

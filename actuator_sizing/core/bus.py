@@ -290,7 +290,9 @@ def bus_course(
     return np.concatenate(time), np.concatenate(stored), np.concatenate(power)
 
 
-def stored_voltage(supply_v: FloatArray | float, capacitance_f: FloatArray, stored_j: FloatArray) -> FloatArray:
+def stored_voltage(
+    supply_v: FloatArray | float, capacitance_f: FloatArray, stored_j: FloatArray
+) -> FloatArray:
     """Bus voltage with an energy stored above the level of the supply.
 
     Parameters

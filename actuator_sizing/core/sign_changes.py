@@ -20,7 +20,7 @@ _NOTHING = 1e-13  # a value this small against the largest one has no sign
 @lru_cache(maxsize=8)
 def _grid(count: int) -> tuple[FloatArray, FloatArray]:
     points = np.cos(np.pi * np.arange(_DENSE - 1, -1, -1) / (_DENSE - 1))
-    return points, legendre.legvander(points, count - 1).T
+    return points, np.asarray(legendre.legvander(points, count - 1).T, dtype=np.float64)
 
 
 def sign_changes(series: FloatArray) -> tuple[NDArray[np.intp], NDArray[np.intp], FloatArray]:

@@ -12,6 +12,7 @@ from actuator_sizing.sizing.bus import bus_quantities
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.checks.motor import current_limited_torque
 from actuator_sizing.sizing.set_model import SetModel
+from actuator_sizing.sizing.stops import stop_quantities
 
 COMMISSIONING_TIMES_S = (600.0, 1800.0, 3600.0)
 
@@ -56,6 +57,7 @@ def quantities(model: SetModel, sets: Sets, index: int) -> dict[str, Any]:
     answer["drive_current_rms_a"] = _known(sets.drive_current_rms_a[index])
     answer["drive_current_basis"] = CURRENT_BASES[int(model.drive.current_basis[0])]
     answer.update(bus_quantities(sets, index))
+    answer.update(stop_quantities(sets, index))
     answer.update(_step_quantities(model))
     return answer
 

@@ -41,11 +41,14 @@ def stopped(speed, inertia, friction, braking):
 def test_constant_torque_stop():  # [G] Ex. 42
     found = stopped(750.0 * RPM, 630.0, 1.4 * KGF_M, lambda w: np.full(w.shape, 165.0 * KGF_M))
     assert found.time_s[0] == pytest.approx(30.3, abs=0.05)
-    assert found.angle_rad[0] / (2.0 * np.pi) == pytest.approx(189.0, abs=0.6)  # the book rounds the time first
+    assert found.angle_rad[0] / (2.0 * np.pi) == pytest.approx(
+        189.0, abs=0.6
+    )  # the book rounds the time first
 
 
 def test_rheostatic_decay_with_friction():  # [G] Ex. 44
     K = 240.0 / (1500.0 * RPM)
+
     # Down to 600 rpm: the difference of two stops.
     def braking(w):
         return K**2 * w / 15.0

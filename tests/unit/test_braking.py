@@ -16,9 +16,10 @@ def one(*values):
 
 
 @pytest.mark.parametrize("load", [3.0, 0.0, -2.0])
-def test_constant_torque_stops_in_closed_form(load):
+@pytest.mark.parametrize("torque", [np.array([8.0]), constant(8.0)], ids=["closed form", "quadrature"])
+def test_constant_torque_stops_in_closed_form(load, torque):
     omega, J, gravity, friction, delay = one(200.0, 0.02, load, 0.5, 0.05)
-    found = stop(omega, J, gravity, friction, delay, constant(8.0))
+    found = stop(omega, J, gravity, friction, delay, torque)
     slow = (load + 0.5) / 0.02
     left = 200.0 - slow * 0.05
     hard = (8.0 + 0.5 + load) / 0.02

@@ -41,7 +41,7 @@ def simulated(duration, coefficients, capacitance, threshold_v, cycles=4):
     """dU/dt = −p/(C U) from event to event: supply conducts at the bottom, chopper clamps at the top."""
     voltage, dumped, supplied, peak, clamp_peak = SUPPLY_V, 0.0, 0.0, SUPPLY_V, 0.0
     trace = []
-    for cycle in range(cycles):
+    for _ in range(cycles):
         dumped = supplied = clamp_peak = 0.0
         peak = voltage
         trace.append(voltage)
@@ -61,9 +61,16 @@ def simulated(duration, coefficients, capacitance, threshold_v, cycles=4):
                 else:
                     mode = "float"
                 if mode == "float":
-                    def rate(t, y): return [-power(t) / (capacitance * y[0])]
-                    def low(t, y): return y[0] - SUPPLY_V
-                    def high(t, y): return y[0] - threshold_v
+
+                    def rate(t, y, power=power):
+                        return [-power(t) / (capacitance * y[0])]
+
+                    def low(t, y):
+                        return y[0] - SUPPLY_V
+
+                    def high(t, y):
+                        return y[0] - threshold_v
+
                     low.terminal, low.direction, high.terminal, high.direction = True, -1, True, 1
                     run = solve_ivp(rate, (t, length), [voltage], events=(low, high), rtol=1e-11, atol=1e-9,
                                     max_step=length / 40)  # fmt: skip
@@ -75,9 +82,12 @@ def simulated(duration, coefficients, capacitance, threshold_v, cycles=4):
                         voltage = threshold_v
                 else:
                     sense = 1.0 if mode == "supply" else -1.0
-                    def ends(t, y): return power(t)
+
+                    def ends(t, y, power=power):
+                        return power(t)
+
                     ends.terminal, ends.direction = True, -sense
-                    run = solve_ivp(lambda t, y: [sense * power(t)], (t, length), [0.0], events=ends,
+                    run = solve_ivp(lambda t, y, s=sense: [s * power(t)], (t, length), [0.0], events=ends,
                                     rtol=1e-11, atol=1e-10, max_step=length / 40)  # fmt: skip
                     if mode == "supply":
                         supplied += run.y[0, -1]

@@ -21,6 +21,7 @@ from actuator_sizing.sizing.checks.motor import (
     VOLTAGE,
     WINDING_TEMPERATURE,
 )
+from actuator_sizing.sizing.checks.stopping import STOPPING_CHECKS
 
 CHECKS: tuple[Check, ...] = (
     SPEED_TORQUE,
@@ -38,6 +39,7 @@ CHECKS: tuple[Check, ...] = (
     GEARHEAD_PEAK,
     GEARHEAD_MEAN_SPEED,
     GEARHEAD_MAX_SPEED,
+    *STOPPING_CHECKS,
     INERTIA_RATIO,
 )
 

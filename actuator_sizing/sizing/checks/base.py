@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING, Any, TypeVar
 
 import numpy as np
@@ -57,6 +57,23 @@ class Sets:
         result: _T = self._found[study]
         return result
 
+    def only(self, index: int) -> Sets:
+        """One of the sets by itself."""
+        row = slice(index, index + 1)
+        taken = {name: getattr(self, name).take(row) for name in ("motors", "gearheads", "drives", "pairs")}
+        arrays = {
+            name: getattr(self, name)[row]
+            for name in (
+                "index",
+                "drive_current_peak_a",
+                "drive_current_rms_a",
+                "drive_current_rms_at_s",
+                "overload_a2s",
+                "overload_at_s",
+            )
+        }
+        return replace(self, **taken, **arrays, _found={})
+
     def option(self, name: str) -> float:
         """Quantity of the `axis` table in SI, NaN where nothing is known."""
         value = self.case.options.get(name)
@@ -99,16 +116,19 @@ class Need:
 
     `part` is ``"motors"``, ``"gearheads"``, ``"drives"`` or ``"pairs"`` with `field` its parameter or the key of
     a column of the catalog, or ``"axis"`` with `field` a quantity of that table. `column` is the heading a user
-    would fill in (for linear motors `linear_column`).
+    would fill in (for linear motors `linear_column`). `known_by` tells where the datum is not needed.
     """
 
     part: str
     field: str
     column: str
     linear_column: str = ""
+    known_by: Callable[[Sets], NDArray[np.bool_]] | None = None
 
     def known(self, sets: Sets) -> NDArray[np.bool_]:
         """Which of the sets have it, shape (S,). [-]"""
+        if self.known_by is not None:
+            return self.known_by(sets)
         if self.part == "axis":
             return np.full(len(sets), not np.isnan(sets.option(self.field)))
         parameters = getattr(sets, self.part)

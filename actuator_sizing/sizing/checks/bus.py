@@ -52,6 +52,11 @@ def _voltage_measure(sets: Sets) -> Measure:
     return Measure(b.voltage_max_v, sets.drives.bus_voltage_max_v, b.voltage_max_at_s)
 
 
+def _is_known(sets: Sets) -> NDArray[np.bool_]:
+    """A clamp, or nothing that comes back, makes the capacitance needless."""
+    return ~np.isnan(sets.once(bus_results).voltage_max_v)
+
+
 def _voltage_working(sets: Sets, i: int) -> str:
     b, m, top = sets.once(bus_results), _voltage_measure(sets), sets.surroundings.bus_max_v
     demand, capacity = float(m.demand[i]), float(m.capacity[i])
@@ -80,7 +85,10 @@ BUS_MAXIMUM = Check(
     formula="U_max = √(U_0² + 2 W_max/C) or the chopper threshold ≤ U_drive,max; W in periodic steady state, "
     "from the highest supply voltage, dW/dt = −p, a rectifier never feeds back",
     source=_PRACTICE,
-    needs=(Need("drives", "bus_voltage_max_v", "maximum bus voltage"),),
+    needs=(
+        Need("drives", "bus_voltage_max_v", "maximum bus voltage"),
+        Need("drives", "capacitance_f", "internal capacitance", known_by=_is_known),
+    ),
     measure=_voltage_measure,
     working=_voltage_working,
 )
