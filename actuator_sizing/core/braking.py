@@ -167,8 +167,12 @@ def shorted_current(
     ----------
     speed_rad_s : ndarray
         Motor speed. [rad/s]
-    resistance_ohm, torque_constant, reactance : ndarray
-        As in `shorted_torque`. [-]
+    resistance_ohm : ndarray
+        Model resistance. [Ω]
+    torque_constant : ndarray
+        Model torque constant K. [N·m/A]
+    reactance : ndarray
+        ``p L``, reactance per speed; zero for a DC machine. [Ω·s/rad]
 
     Returns
     -------

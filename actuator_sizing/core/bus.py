@@ -257,8 +257,10 @@ def bus_course(
     ----------
     runs : PowerRuns
         One row. [-]
-    efficiency, room_j : ndarray, shape (1,)
+    efficiency : ndarray, shape (1,)
         As in `bus_cycle`. [-]
+    room_j : ndarray, shape (1,)
+        As in `bus_cycle`. [J]
     cycle : BusCycle
         What `bus_cycle` found for it. [-]
     points : int
