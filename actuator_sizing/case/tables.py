@@ -67,13 +67,15 @@ ADVICE_CHECKS = (
     "gearhead_jam_torque",
     "inertia_ratio",
 )
+#: Parts fit or do not; a reserve would mean nothing.
+FITTING_CHECKS = ("drive_bus_voltage", "brake_resistor_value")
 DEFAULT_ALLOWED_UTILISATION = 1.0
 DEFAULT_RECOMMENDED_RESERVE = 0.1
-#: Checks whose common practice differs: a bus may come within 5 % of the trip, a stated smallest resistor is met,
-#: a holding brake has 1.5 times the torque of the load.
+#: Checks whose common practice differs: a bus may come within 5 % of the trip, a holding brake has 1.5 times the
+#: torque of the load.
 RECOMMENDED_RESERVES = {
+    **dict.fromkeys(FITTING_CHECKS, 0.0),
     "bus_maximum_voltage": 0.05,
-    "brake_resistor_value": 0.0,
     "holding_brake_static": 0.33,
 }
 RANKINGS = ("price", "mass", "reserve", "energy")
@@ -322,6 +324,7 @@ __all__ = [
     "COMMON_QUANTITIES",
     "DEFAULT_ALLOWED_UTILISATION",
     "DEFAULT_RECOMMENDED_RESERVE",
+    "FITTING_CHECKS",
     "DRIVE_COLUMNS",
     "DUTY_CYCLE_COLUMNS",
     "GEARHEAD_COLUMNS",

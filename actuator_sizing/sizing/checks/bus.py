@@ -134,6 +134,7 @@ BRAKE_VALUE = Check(
     measure=_value_measure,
     working=_ratio_working("R_min / R", "Ω", _value_measure),
     applies=_burns,
+    is_fit=True,
 )
 
 
