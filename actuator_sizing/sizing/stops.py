@@ -24,10 +24,9 @@ _SETS_PER_CHUNK = 256
 
 @dataclass(frozen=True)
 class StopInstants:
-    """Instants from which a stop can be worst: the fastest of each segment and direction, and one at rest for
-    each segment that gravity or process could set in motion; each field has shape (I,).
+    """Instants from which a stop can be worst; each field has shape (I,).
 
-    Torques are at the driven shaft, in the sense of the motion that is to end.
+    The fastest of each segment and direction, and both directions of each segment at rest. Torques are at the driven shaft, in the sense of the motion that is to end.
     """
 
     at_s: FloatArray
