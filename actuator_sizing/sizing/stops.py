@@ -26,7 +26,8 @@ _SETS_PER_CHUNK = 256
 class StopInstants:
     """Instants from which a stop can be worst; each field has shape (I,).
 
-    The fastest of each segment and direction, and both directions of each segment at rest. Torques are at the driven shaft, in the sense of the motion that is to end.
+    The fastest of each segment and direction, and both directions of each segment at rest. Torques are
+    at the driven shaft, in the sense of the motion that is to end.
     """
 
     at_s: FloatArray
