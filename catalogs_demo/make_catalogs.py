@@ -53,7 +53,7 @@ MOTOR_HEADINGS = (
     "thermal class", "thermal resistance winding-housing [K/W]",
     "thermal resistance housing-ambient [K/W]", "winding time constant [s]",
     "housing time constant [min]", "magnet material", "brake torque [Nm]", "brake inertia [kg·cm²]",
-    "mass [kg]", "price [EUR]", "source",
+    "brake closing time [ms]", "brake energy per stop [J]", "mass [kg]", "price [EUR]", "source",
 )  # fmt: skip
 GEARHEAD_HEADINGS = (
     "gearhead", "ratio", "stages", "continuous torque [Nm]", "peak torque [Nm]", "emergency-stop torque [Nm]",
@@ -141,6 +141,8 @@ def _rotary(name: str, winding: Winding) -> Row:
         if frame.diameter_m >= 0.080 and winding.bus_v > 100.0:
             row["brake torque [Nm]"] = 1.3 * K * winding.continuous_current
             row["brake inertia [kg·cm²]"] = 1e4 * 0.08 * frame.inertia
+            row["brake closing time [ms]"] = 20.0 + 250.0 * frame.diameter_m
+            row["brake energy per stop [J]"] = 1.2e6 * frame.diameter_m**3
             row["price [EUR]"] = _round(frame.price * 1.12 + 30.0, 1.0)
     return row
 

@@ -8,18 +8,12 @@ from typing import Any
 
 import numpy as np
 
+from actuator_sizing.case.judging import default_limits
 from actuator_sizing.case.model import MISSING, Case, Catalog, Limit, Segment
 from actuator_sizing.case.tables import TABLES
 from actuator_sizing.core.mechanisms import MECHANISMS
 from actuator_sizing.core.motion_laws import plan_segment, speed_after
 from actuator_sizing.core.parameters import DriveParameters, GearheadParameters, MotorParameters, Surroundings
-
-CHECK_KEYS = (
-    "speed_torque", "rms_current", "winding_temperature", "motor_peak_current", "motor_speed", "voltage",
-    "drive_continuous_current", "drive_peak_current", "drive_peak_time", "drive_bus_voltage",
-    "gearhead_equivalent_torque", "gearhead_peak_torque", "gearhead_mean_speed", "gearhead_maximum_speed",
-    "inertia_ratio",
-)  # fmt: skip
 
 MOTOR = dict(
     is_linear=False, commutation=2, current_basis=1, resistance_ohm=1.2, resistance_reference_degc=25.0,
@@ -119,9 +113,9 @@ def case(
     drives: Sequence[dict[str, Any]] = (DRIVE,),
     surroundings: Surroundings = SURROUNDINGS,
     limits: dict[str, Limit] | None = None,
+    options: dict[str, Any] | None = None,
 ) -> Case:
-    """A case of plain numbers."""
-    default = {key: Limit(key, "advice" if key == "inertia_ratio" else "yes", 1.0, 0.1) for key in CHECK_KEYS}
+    """A case of plain numbers; the supply takes everything back unless `options` says otherwise."""
     return Case(
         name="made",
         path=None,
@@ -134,13 +128,15 @@ def case(
         motor_parameters=columns(MotorParameters, motors),
         gearhead_parameters=columns(GearheadParameters, gearheads),
         drive_parameters=columns(DriveParameters, drives),
-        limits={**default, **(limits or {})},
+        limits={**default_limits(), **(limits or {})},
         tolerances=(),
         options={
             "rank by": "price",
             "sets to detail": 10.0,
             "recommended inertia ratio": 10.0,
             "largest bus over nominal voltage": 2.0,
+            "supply feeds back": "yes",
+            **(options or {}),
         },
         entries=(),
         problems=(),

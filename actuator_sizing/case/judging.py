@@ -13,7 +13,7 @@ from actuator_sizing.case.tables import (
     CHECK_NAMES,
     DEFAULT_ALLOWED_UTILISATION,
     DEFAULT_RECOMMENDED_RESERVE,
-    FITTING_CHECKS,
+    RECOMMENDED_RESERVES,
     quantity_kinds,
 )
 from actuator_sizing.units import UnitError, parse_unit
@@ -26,7 +26,7 @@ def default_limits() -> dict[str, Limit]:
             key,
             "advice" if key in ADVICE_CHECKS else "yes",
             DEFAULT_ALLOWED_UTILISATION,
-            0.0 if key in FITTING_CHECKS else DEFAULT_RECOMMENDED_RESERVE,
+            RECOMMENDED_RESERVES.get(key, DEFAULT_RECOMMENDED_RESERVE),
         )
         for key, _ in CHECK_NAMES
     }

@@ -10,6 +10,8 @@ from actuator_sizing.case.sheets import Sheet, is_workbook
 from actuator_sizing.case.tables import (
     ADVICE_CHECKS,
     CHECK_NAMES,
+    DEFAULT_RECOMMENDED_RESERVE,
+    RECOMMENDED_RESERVES,
     TABLES,
     axis_quantities,
     table_for,
@@ -180,6 +182,11 @@ def _limit_rows(columns: list[Column]) -> list[tuple[str, ...]]:
     """Every check with its default, ready to be changed."""
     rows = []
     for key, title in CHECK_NAMES:
-        given = {"check": title, "applies": "advice" if key in ADVICE_CHECKS else "yes"}
+        reserve = RECOMMENDED_RESERVES.get(key, DEFAULT_RECOMMENDED_RESERVE)
+        given = {
+            "check": title,
+            "applies": "advice" if key in ADVICE_CHECKS else "yes",
+            "recommended reserve": f"{100.0 * reserve:.4g}",
+        }
         rows.append(tuple(given.get(column.name, column.example_for("rotary")) for column in columns))
     return rows

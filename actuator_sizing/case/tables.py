@@ -43,17 +43,50 @@ CHECK_NAMES: tuple[tuple[str, str], ...] = (
     ("drive_peak_current", "drive peak current"),
     ("drive_peak_time", "drive peak time"),
     ("drive_bus_voltage", "drive bus voltage range"),
+    ("bus_maximum_voltage", "highest bus voltage"),
+    ("bus_sag", "voltage on a sagging bus"),
+    ("brake_resistor_value", "brake resistor value"),
+    ("brake_resistor_peak_power", "brake resistor peak power"),
+    ("brake_resistor_mean_power", "brake resistor mean power"),
+    ("brake_resistor_pulse_energy", "brake resistor pulse energy"),
+    ("supply_mean_power", "supply mean power"),
+    ("supply_peak_power", "supply peak power"),
     ("gearhead_equivalent_torque", "gearhead equivalent torque"),
     ("gearhead_peak_torque", "gearhead peak torque"),
     ("gearhead_mean_speed", "gearhead mean input speed"),
     ("gearhead_maximum_speed", "gearhead maximum input speed"),
+    ("stop_controlled", "controlled stop"),
+    ("stop_shorted", "stop by shorted winding"),
+    ("stop_brake", "stop by the holding brake"),
+    ("motor_shorted_current", "short-circuit current"),
+    ("holding_brake_static", "holding brake torque"),
+    ("holding_brake_energy", "holding brake energy"),
+    ("drop_distance", "drop distance"),
+    ("gearhead_emergency_torque", "gearhead emergency torque"),
+    ("gearhead_jam_torque", "gearhead torque in a jam"),
     ("inertia_ratio", "inertia ratio"),
 )
 
-ADVICE_CHECKS = ("inertia_ratio",)  # judged as advice unless the limits table says otherwise
-FITTING_CHECKS = ("drive_bus_voltage",)  # parts fit or do not; a reserve would mean nothing
+#: Judged as advice unless the limits table says otherwise: rules of thumb, and events that need not be possible.
+ADVICE_CHECKS = (
+    "stop_shorted",
+    "stop_brake",
+    "motor_shorted_current",
+    "gearhead_emergency_torque",
+    "gearhead_jam_torque",
+    "inertia_ratio",
+)
+#: Parts fit or do not; a reserve would mean nothing.
+FITTING_CHECKS = ("drive_bus_voltage", "brake_resistor_value")
 DEFAULT_ALLOWED_UTILISATION = 1.0
 DEFAULT_RECOMMENDED_RESERVE = 0.1
+#: Checks whose common practice differs: a bus may come within 5 % of the trip, a holding brake has 1.5 times the
+#: torque of the load.
+RECOMMENDED_RESERVES = {
+    **dict.fromkeys(FITTING_CHECKS, 0.0),
+    "bus_maximum_voltage": 0.05,
+    "holding_brake_static": 0.33,
+}
 RANKINGS = ("price", "mass", "reserve", "energy")
 ABSOLUTE_ZERO_DEGC = -273.15
 
@@ -118,8 +151,25 @@ COMMON_QUANTITIES = (
            example="385", unit="V"),
     Column("brake resistor", "resistance", "resistance of the brake resistor", positive=True, example="40",
            unit="Ω"),
+    Column("brake resistor continuous power", "power", "power the brake resistor stands for ever", positive=True,
+           maximum=1.0e7, example="150", unit="W"),
+    Column("brake resistor pulse energy", "energy", "energy the brake resistor takes in one pulse, hot",
+           positive=True, maximum=1.0e9, example="2", unit="kJ"),
+    Column("supply continuous power", "power", "power the supply gives for ever", positive=True, maximum=1.0e9,
+           example="", unit="kW"),
+    Column("supply peak power", "power", "largest power the supply gives", positive=True, maximum=1.0e9,
+           example="", unit="kW"),
+    Column("supply internal resistance", "resistance", "resistance of supply and leads; the minimum bus voltage "
+           "is then the one without load", positive=True, maximum=1.0e6, example="", unit="Ω"),
     Column("supply feeds back", YES_NO, "whether the supply returns regenerated energy to the mains",
            default="no", assumed="a rectifier does not feed back", example="no"),
+    Column("stop reaction time", "time", "from the event that asks for a stop until the drive or the brake is told",
+           default=0.05, assumed="50 ms, detection and relays; to be measured", minimum=0.0, maximum=100.0,
+           example="50", unit="ms"),
+    Column("allowed stopping distance", ("length", "angle"), "way the load may go on moving after an emergency stop",
+           positive=True, example=("", ""), unit=("mm", "deg")),
+    Column("allowed drop distance", ("length", "angle"), "way a held load may sink until the holding brake carries "
+           "it, when torque is removed", positive=True, example=("", ""), unit=("mm", "deg")),
     Column("catalog folder", TEXT, "folder with shared catalog tables, relative to the case", example=""),
     Column("direct drive allowed", YES_NO, "whether sets without gearhead are candidates", default="yes",
            assumed="nothing speaks against it", example="yes"),
@@ -440,6 +490,7 @@ __all__ = [
     "MAP_COLUMNS",
     "MOTOR_COLUMNS",
     "RANKINGS",
+    "RECOMMENDED_RESERVES",
     "TABLES",
     "TEXT",
     "TOLERANCE_COLUMNS",

@@ -68,6 +68,8 @@ def judge_sets(sets: Sets, checks: tuple[Check, ...], limits: tuple[Limit, ...])
     relative = np.full((count, len(checks)), -np.inf)
     for column, (check, limit) in enumerate(zip(checks, limits, strict=True)):
         applies = check.applies(sets)
+        if not applies.any():
+            continue  # nothing to measure, and a study for nothing is dear
         known = applies.copy()
         for need in check.needs:
             known &= need.known(sets)

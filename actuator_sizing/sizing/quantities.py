@@ -9,9 +9,11 @@ import numpy as np
 from actuator_sizing.core.parameters import CURRENT_BASES
 from actuator_sizing.core.permissible_load import LoadedMachine, intermittent_current, short_time_current
 from actuator_sizing.core.warm_up import temperatures_after, warm_up
+from actuator_sizing.sizing.bus import bus_quantities
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.checks.motor import current_limited_torque
 from actuator_sizing.sizing.set_model import SetModel
+from actuator_sizing.sizing.stops import stop_quantities
 
 #: Usual short times, cyclic duration factors, and the cycle that the latter refer to when nothing else is
 #: said; practice around IEC 60034-1 (from memory).
@@ -60,8 +62,8 @@ def quantities(model: SetModel, sets: Sets, index: int) -> dict[str, Any]:
     answer["drive_current_peak_a"] = _known(sets.drive_current_peak_a[index])
     answer["drive_current_rms_a"] = _known(sets.drive_current_rms_a[index])
     answer["drive_current_basis"] = CURRENT_BASES[int(model.drive.current_basis[0])]
-    for name in ("bus_voltage_max_v", "brake_energy_per_cycle_j", "brake_power_mean_w", "brake_power_peak_w"):
-        answer[name] = None
+    answer.update(bus_quantities(sets, index))
+    answer.update(stop_quantities(sets, index))
     answer.update(_step_quantities(model))
     return answer
 

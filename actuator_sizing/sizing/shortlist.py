@@ -77,6 +77,8 @@ def evaluate_sets(
         f.name: np.concatenate([getattr(part, f.name) for part in views])[back] for f in fields(_DriveView)
     }
     return Sets(
+        case=case,
+        index=index,
         demand=demand,
         surroundings=case.surroundings,
         recommended_inertia_ratio=case.number("recommended inertia ratio"),

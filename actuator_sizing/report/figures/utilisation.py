@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Any
 
+import numpy as np
+
 from actuator_sizing.report.figures import style
 from actuator_sizing.report.formatting import percent
 from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED
@@ -18,6 +20,8 @@ if TYPE_CHECKING:
 
 #: Rows that one page carries.
 MOST_ROWS = 25
+#: Checks that its width carries; those with the least reserve are drawn.
+MOST_COLUMNS = 18
 _LABEL_LETTERS = 38  # of the three names together
 
 # From nothing used to all of it used, in steps that stay ordered in grey; above the limit one dark colour.
@@ -42,8 +46,7 @@ def draw_utilisation(sets: Sequence[SetResult]) -> Figure | None:
     rows = list(sets[:MOST_ROWS])
     if not rows:
         return None
-    titles = {c.check: c.title + (" (advice)" if c.is_advice else "") for item in rows for c in item.checks}
-    keys = list(titles.items())
+    keys, left_out = _columns(rows)
     cell_in = 0.235
     figure, (ax,) = style.new_axes(
         2.2 + cell_in * len(rows), left_in=2.85, right_in=0.15, bottom_in=0.5, top_in=1.7
@@ -64,8 +67,25 @@ def draw_utilisation(sets: Sequence[SetResult]) -> Figure | None:
     ax.tick_params(axis="both", labelsize=6.8)
     for side in ax.spines.values():
         side.set_visible(False)
-    _draw_key(ax)
+    _draw_key(ax, left_out)
     return figure
+
+
+def _columns(rows: list[SetResult]) -> tuple[list[tuple[str, str]], int]:
+    """Key and title of the checks that are drawn, and how many are not."""
+    titles: dict[str, str] = {}
+    weight: dict[str, tuple[bool, float]] = {}
+    for item in rows:
+        for check in item.checks:
+            key = check.check
+            titles.setdefault(key, check.title + (" (advice)" if check.is_advice else ""))
+            known = check.utilisation is not None and check.allowed > 0.0
+            share = check.utilisation / check.allowed if known else 1.0  # type: ignore[operator]
+            # What governs or binds comes before advice.
+            mine = (not check.is_advice, np.inf if key == item.governing_check else share)
+            weight[key] = max(weight.get(key, mine), mine)
+    kept = set(sorted(titles, key=lambda key: weight[key], reverse=True)[:MOST_COLUMNS])
+    return [(key, title) for key, title in titles.items() if key in kept], len(titles) - len(kept)
 
 
 def _row_label(item: SetResult) -> str:
@@ -151,7 +171,7 @@ def _short_percent(check: CheckResult) -> str:
     return ">999" if check.utilisation > 9.99 and check.utilisation > check.allowed else text
 
 
-def _draw_key(ax: Axes) -> None:
+def _draw_key(ax: Axes, left_out: int) -> None:
     """Explain the colours under the matrix."""
     from matplotlib.patches import Patch
 
@@ -171,7 +191,8 @@ def _draw_key(ax: Axes) -> None:
         loc="lower center",
         bbox_to_anchor=(0.5, 0.0),
         ncols=len(patches),
-        title="utilisation of what is allowed; cells show demand over capacity in %",
+        title="utilisation of what is allowed; cells show demand over capacity in %"
+        + (f"; {left_out} checks with more reserve are in the tables" if left_out else ""),
         title_fontsize=7.2,
         fontsize=7.0,
         handlelength=1.4,

@@ -4,6 +4,7 @@ To add one: declare a `Check` in the file of its group and list it here.
 """
 
 from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets
+from actuator_sizing.sizing.checks.bus import BUS_CHECKS
 from actuator_sizing.sizing.checks.drive import DRIVE_BUS, DRIVE_CONTINUOUS, DRIVE_PEAK, DRIVE_PEAK_TIME
 from actuator_sizing.sizing.checks.gearhead import (
     GEARHEAD_EQUIVALENT,
@@ -20,6 +21,7 @@ from actuator_sizing.sizing.checks.motor import (
     VOLTAGE,
     WINDING_TEMPERATURE,
 )
+from actuator_sizing.sizing.checks.stopping import STOPPING_CHECKS
 
 CHECKS: tuple[Check, ...] = (
     SPEED_TORQUE,
@@ -32,10 +34,12 @@ CHECKS: tuple[Check, ...] = (
     DRIVE_PEAK,
     DRIVE_PEAK_TIME,
     DRIVE_BUS,
+    *BUS_CHECKS,
     GEARHEAD_EQUIVALENT,
     GEARHEAD_PEAK,
     GEARHEAD_MEAN_SPEED,
     GEARHEAD_MAX_SPEED,
+    *STOPPING_CHECKS,
     INERTIA_RATIO,
 )
 

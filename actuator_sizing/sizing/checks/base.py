@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
-from typing import TYPE_CHECKING
+from dataclasses import dataclass, field, replace
+from typing import TYPE_CHECKING, Any, TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -17,17 +17,21 @@ from actuator_sizing.core.parameters import (
 )
 
 if TYPE_CHECKING:
+    from actuator_sizing.case.model import Case
     from actuator_sizing.sizing.block import Block
     from actuator_sizing.sizing.demand import Demand
     from actuator_sizing.sizing.evaluation import PairResults
 
 FloatArray = NDArray[np.float64]
+_T = TypeVar("_T")
 
 
 @dataclass(frozen=True)
 class Sets:
     """S sets of motor, gearhead and drive, evaluated: what a check measures."""
 
+    case: Case
+    index: NDArray[np.intp]  # (S, 3) motor, gearhead, drive
     demand: Demand
     surroundings: Surroundings
     recommended_inertia_ratio: float
@@ -41,9 +45,47 @@ class Sets:
     drive_current_rms_at_s: FloatArray
     overload_a2s: FloatArray  # largest i²t accumulator in the periodic regime
     overload_at_s: FloatArray
+    _found: dict[Callable[[Sets], Any], Any] = field(default_factory=dict, repr=False)
 
     def __len__(self) -> int:
         return len(self.motors)
+
+    def once(self, study: Callable[[Sets], _T]) -> _T:
+        """Result of a study of these sets that several checks share, made when first asked for."""
+        if study not in self._found:
+            self._found[study] = study(self)
+        result: _T = self._found[study]
+        return result
+
+    def only(self, index: int) -> Sets:
+        """One of the sets by itself."""
+        row = slice(index, index + 1)
+        taken = {name: getattr(self, name).take(row) for name in ("motors", "gearheads", "drives", "pairs")}
+        arrays = {
+            name: getattr(self, name)[row]
+            for name in (
+                "index",
+                "drive_current_peak_a",
+                "drive_current_rms_a",
+                "drive_current_rms_at_s",
+                "overload_a2s",
+                "overload_at_s",
+            )
+        }
+        return replace(self, **taken, **arrays, _found={})
+
+    def option(self, name: str) -> float:
+        """Quantity of the `axis` table in SI, NaN where nothing is known."""
+        value = self.case.options.get(name)
+        return float(value) if isinstance(value, int | float) else np.nan
+
+    def catalog_values(self, table: str, column: str) -> FloatArray:
+        """Column of a catalog for each set, shape (S,), in SI; NaN where nothing is known."""
+        part = ("motors", "gearheads", "drives").index(table)
+        values = getattr(self.case, table).values.get(column)
+        if values is None:
+            return np.full(len(self), np.nan)
+        return np.asarray(values[self.index[:, part]], dtype=float)
 
 
 @dataclass(frozen=True)
@@ -78,18 +120,27 @@ class Measure:
 class Need:
     """One datum without which a check cannot be made.
 
-    `part` is ``"motors"``, ``"gearheads"``, ``"drives"`` or ``"pairs"``; `field` its parameter, `column` the
-    heading a user would fill in (for linear motors `linear_column`).
+    `part` is ``"motors"``, ``"gearheads"``, ``"drives"`` or ``"pairs"`` with `field` its parameter or the key of
+    a column of the catalog, or ``"axis"`` with `field` a quantity of that table. `column` is the heading a user
+    would fill in (for linear motors `linear_column`). `known_by` tells where the datum is not needed.
     """
 
     part: str
     field: str
     column: str
     linear_column: str = ""
+    known_by: Callable[[Sets], NDArray[np.bool_]] | None = None
 
     def known(self, sets: Sets) -> NDArray[np.bool_]:
         """Which of the sets have it, shape (S,). [-]"""
-        value = np.asarray(getattr(getattr(sets, self.part), self.field))
+        if self.known_by is not None:
+            return self.known_by(sets)
+        if self.part == "axis":
+            return np.full(len(sets), not np.isnan(sets.option(self.field)))
+        parameters = getattr(sets, self.part)
+        if not hasattr(parameters, self.field):
+            return ~np.isnan(sets.catalog_values(self.part, self.field))
+        value = np.asarray(getattr(parameters, self.field))
         return value if value.dtype == bool else ~np.isnan(value)
 
 

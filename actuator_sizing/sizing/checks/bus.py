@@ -1,0 +1,257 @@
+"""Checks of DC bus, brake resistor and supply."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+
+import numpy as np
+from numpy.typing import NDArray
+
+from actuator_sizing.sizing.bus import BusResults, bus_results, supply_feeds_back
+from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits
+
+FloatArray = NDArray[np.float64]
+
+_PRACTICE = "Energy account of the DC bus, chopper as ideal clamp; first principles"
+
+
+def _same(value: float, sets: Sets) -> FloatArray:
+    return np.full(len(sets), value)
+
+
+def _has_resistor(sets: Sets) -> NDArray[np.bool_]:
+    """Sets whose bus a brake resistor holds."""
+    stated = not np.isnan(sets.option("brake resistor")) and not supply_feeds_back(sets)
+    return np.full(len(sets), stated)
+
+
+def _burns(sets: Sets) -> NDArray[np.bool_]:
+    """Sets whose resistor has something to burn, or where that is not known."""
+    return np.asarray(_has_resistor(sets) & ~(sets.once(bus_results).brake_energy_j == 0.0))
+
+
+def _supply_is_rated(sets: Sets) -> NDArray[np.bool_]:
+    rated = (sets.option("supply continuous power"), sets.option("supply peak power"))
+    return np.full(len(sets), not np.all(np.isnan(rated)))
+
+
+def _ratio_working(symbols: str, unit: str, measure: Callable[[Sets], Measure]) -> Callable[[Sets, int], str]:
+    def working(sets: Sets, i: int) -> str:
+        m = measure(sets)
+        return (
+            f"{symbols} = {digits(float(m.demand[i]))} {unit} / {digits(float(m.capacity[i]))} {unit} "
+            f"= {digits(float(m.ratio()[i]))}"
+        )
+
+    return working
+
+
+# -- highest voltage --------------------------------------------------------------------------------
+def _voltage_measure(sets: Sets) -> Measure:
+    b = sets.once(bus_results)
+    return Measure(b.voltage_max_v, sets.drives.bus_voltage_max_v, b.voltage_max_at_s)
+
+
+def _is_known(sets: Sets) -> NDArray[np.bool_]:
+    """A clamp, or nothing that comes back, makes the capacitance needless."""
+    return ~np.isnan(sets.once(bus_results).voltage_max_v)
+
+
+def _voltage_working(sets: Sets, i: int) -> str:
+    b, m, top = sets.once(bus_results), _voltage_measure(sets), sets.surroundings.bus_max_v
+    demand, capacity = float(m.demand[i]), float(m.capacity[i])
+    verdict = f"{digits(demand)} / {digits(capacity)} = {digits(float(m.ratio()[i]))}"
+    if supply_feeds_back(sets):
+        return f"the supply takes regenerated energy back and holds the bus at {digits(top)} V; {verdict}"
+    if demand == top:
+        return f"nothing comes back beyond the losses; the bus stays at {digits(top)} V; {verdict}"
+    if np.isinf(demand):
+        return "each cycle leaves more energy on the bus than the last, and nothing burns it"
+    if b.brake_energy_j[i] > 0.0:
+        return f"the chopper holds the bus at U_ch = {digits(demand)} V; {verdict}"
+    C = float(b.capacitance_f[i])
+    stored = 0.5 * C * (demand**2 - top**2)
+    return (
+        f"W_max = {digits(stored)} J above {digits(top)} V in C = {digits(C)} F; "
+        f"U_max = √({digits(top)}² + 2 · {digits(stored)} / {digits(C)}) = {digits(demand)} V; {verdict}"
+    )
+
+
+BUS_MAXIMUM = Check(
+    key="bus_maximum_voltage",
+    title="Highest bus voltage",
+    group="drive",
+    unit="V",
+    formula="U_max = √(U_0² + 2 W_max/C) or the chopper threshold ≤ U_drive,max; W in periodic steady state, "
+    "from the highest supply voltage, dW/dt = −p, a rectifier never feeds back",
+    source=_PRACTICE,
+    needs=(
+        Need("drives", "bus_voltage_max_v", "maximum bus voltage"),
+        Need("drives", "capacitance_f", "internal capacitance", known_by=_is_known),
+    ),
+    measure=_voltage_measure,
+    working=_voltage_working,
+)
+
+
+# -- sag --------------------------------------------------------------------------------------------
+def _sag_measure(sets: Sets) -> Measure:
+    b = sets.once(bus_results)
+    return Measure(b.sag_voltage_needed_v, b.sag_voltage_available_v, b.sag_at_s, b.sag_utilisation)
+
+
+def _sags(sets: Sets) -> NDArray[np.bool_]:
+    return np.full(len(sets), not np.isnan(sets.option("supply internal resistance")))
+
+
+BUS_SAG = Check(
+    key="bus_sag",
+    title="Voltage on a sagging bus",
+    group="motor",
+    unit="V",
+    formula="max u ≤ U(p) · m in the motor's basis, U(p) = U_min/2 + √(U_min²/4 − R_s p) at each instant",
+    source="Internal resistance of the supply, capacitors left out; first principles",
+    needs=(),
+    measure=_sag_measure,
+    working=_ratio_working("u / U(p) m", "V", _sag_measure),
+    applies=_sags,
+)
+
+
+# -- brake resistor ---------------------------------------------------------------------------------
+def _value_measure(sets: Sets) -> Measure:
+    return Measure(sets.drives.brake_resistor_min_ohm, _same(sets.option("brake resistor"), sets))
+
+
+BRAKE_VALUE = Check(
+    key="brake_resistor_value",
+    title="Brake resistor value",
+    group="drive",
+    unit="Ω",
+    formula="R_min of the drive's chopper ≤ R",
+    source="Smallest resistor of the data sheet",
+    needs=(Need("drives", "brake_resistor_min_ohm", "minimum brake resistor"),),
+    measure=_value_measure,
+    working=_ratio_working("R_min / R", "Ω", _value_measure),
+    applies=_burns,
+    is_fit=True,
+)
+
+
+def _peak_measure(sets: Sets) -> Measure:
+    b = sets.once(bus_results)
+    return Measure(b.brake_power_peak_w, b.threshold_v**2 / sets.option("brake resistor"))
+
+
+def _peak_working(sets: Sets, i: int) -> str:
+    m, b = _peak_measure(sets), sets.once(bus_results)
+    return (
+        f"U_ch²/R = ({digits(float(b.threshold_v[i]))} V)² / {digits(sets.option('brake resistor'))} Ω = "
+        f"{digits(float(m.capacity[i]))} W; {digits(float(m.demand[i]))} / {digits(float(m.capacity[i]))} "
+        f"= {digits(float(m.ratio()[i]))}"
+    )
+
+
+BRAKE_PEAK = Check(
+    key="brake_resistor_peak_power",
+    title="Brake resistor peak power",
+    group="drive",
+    unit="W",
+    formula="max of the power given back while the chopper clamps ≤ U_ch²/R, else the bus rises past the threshold",
+    source=_PRACTICE,
+    needs=(),
+    measure=_peak_measure,
+    working=_peak_working,
+    applies=_burns,
+)
+
+
+def _mean_measure(sets: Sets) -> Measure:
+    rating = sets.option("brake resistor continuous power")
+    return Measure(sets.once(bus_results).brake_power_mean_w, _same(rating, sets))
+
+
+BRAKE_MEAN = Check(
+    key="brake_resistor_mean_power",
+    title="Brake resistor mean power",
+    group="drive",
+    unit="W",
+    formula="energy dumped per cycle / cycle time ≤ continuous power of the resistor",
+    source=_PRACTICE,
+    needs=(Need("axis", "brake resistor continuous power", "brake resistor continuous power"),),
+    measure=_mean_measure,
+    working=_ratio_working("P_mean / P_cont", "W", _mean_measure),
+    applies=_burns,
+)
+
+
+def _pulse_measure(sets: Sets) -> Measure:
+    rating = sets.option("brake resistor pulse energy")
+    return Measure(sets.once(bus_results).brake_pulse_j, _same(rating, sets))
+
+
+BRAKE_PULSE = Check(
+    key="brake_resistor_pulse_energy",
+    title="Brake resistor pulse energy",
+    group="drive",
+    unit="J",
+    formula="largest energy dumped between two times of motoring ≤ pulse energy of the resistor",
+    source=_PRACTICE,
+    needs=(Need("axis", "brake resistor pulse energy", "brake resistor pulse energy"),),
+    measure=_pulse_measure,
+    working=_ratio_working("E_pulse / E_max", "J", _pulse_measure),
+    applies=_burns,
+)
+
+
+# -- supply -----------------------------------------------------------------------------------------
+_EFFICIENCY = Need("drives", "efficiency", "efficiency")
+
+
+def _supply_check(
+    key: str, title: str, option: str, pick: Callable[[BusResults], Measure], formula: str
+) -> Check:
+    def measure(sets: Sets) -> Measure:
+        m = pick(sets.once(bus_results))
+        return Measure(m.demand, _same(sets.option(option), sets), m.at_s)
+
+    return Check(
+        key=key,
+        title=title,
+        group="drive",
+        unit="W",
+        formula=formula,
+        source="Power at the terminals over the drive's efficiency; ratings of the supply",
+        needs=(_EFFICIENCY, Need("axis", option, option)),
+        measure=measure,
+        working=_ratio_working("P / P_rated", "W", measure),
+        applies=_supply_is_rated,
+    )
+
+
+SUPPLY_MEAN = _supply_check(
+    "supply_mean_power",
+    "Supply mean power",
+    "supply continuous power",
+    lambda b: Measure(b.supply_power_mean_w, b.supply_power_mean_w),
+    "energy from the supply per cycle / cycle time ≤ continuous power of the supply",
+)
+
+SUPPLY_PEAK = _supply_check(
+    "supply_peak_power",
+    "Supply peak power",
+    "supply peak power",
+    lambda b: Measure(b.supply_power_peak_w, b.supply_power_peak_w, b.supply_power_peak_at_s),
+    "max of the power taken from the bus, without help from the capacitors ≤ peak power of the supply",
+)
+
+BUS_CHECKS = (
+    BUS_MAXIMUM,
+    BUS_SAG,
+    BRAKE_VALUE,
+    BRAKE_PEAK,
+    BRAKE_MEAN,
+    BRAKE_PULSE,
+    SUPPLY_MEAN,
+    SUPPLY_PEAK,
+)
