@@ -18,6 +18,7 @@ RPM = np.pi / 30.0
 KGF_M = 9.81  # N·m, as the book rounds it
 
 
+@pytest.mark.published("A4.7")
 def test_rheostatic_braking_with_inductance():  # [D]
     K = (220.0 - 175.0 * 0.08) / (1000.0 * RPM)
     speed = 1050.0 * RPM
@@ -38,6 +39,7 @@ def stopped(speed, inertia, friction, braking):
     return stop(*values, braking)
 
 
+@pytest.mark.published("A8.4")
 def test_constant_torque_stop():  # [G] Ex. 42
     found = stopped(750.0 * RPM, 630.0, 1.4 * KGF_M, lambda w: np.full(w.shape, 165.0 * KGF_M))
     assert found.time_s[0] == pytest.approx(30.3, abs=0.05)
@@ -46,6 +48,7 @@ def test_constant_torque_stop():  # [G] Ex. 42
     )  # the book rounds the time first
 
 
+@pytest.mark.published("A8.9")
 def test_rheostatic_decay_with_friction():  # [G] Ex. 44
     K = 240.0 / (1500.0 * RPM)
 
@@ -57,6 +60,7 @@ def test_rheostatic_decay_with_friction():  # [G] Ex. 44
     assert times[0] - times[1] == pytest.approx(60.3, abs=0.1)
 
 
+@pytest.mark.published("A4.8")
 def test_run_up_with_constant_surplus_torque():  # [G] Ex. 22: time = J ω / surplus
     rated = 37500.0 / (500.0 * RPM)
     found = stopped(500.0 * RPM, 20.0, 0.25 * rated, lambda w: np.zeros(w.shape))
