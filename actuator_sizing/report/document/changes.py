@@ -165,6 +165,6 @@ def _value(name: str, value: Any) -> str:
     if value is None:
         return "not known"
     if isinstance(value, bool | str):
-        return check_name(value) if name == "governing_check" else clean(str(value))
+        return check_name(str(value)) if name == "governing_check" else clean(str(value))
     unit = suffix_unit(name)
     return quantity(float(value), unit) if unit else number(float(value))
