@@ -60,7 +60,9 @@ class Segment:
     process_effort: float  # positive opposes positive motion
     brake_closed: bool
     note: str = ""
-    process: ProcessLoad | None = None  # where the process effort is not constant; None: `process_effort` is all
+    process: ProcessLoad | None = (
+        None  # where the process effort is not constant; None: `process_effort` is all
+    )
 
 
 @dataclass(frozen=True)

@@ -64,9 +64,7 @@ def understand_motion(
         if not np.isnan(speed):
             _check_join(parsed, index, speed, begin, phases, problems)
         segment = _segment(parsed, index, phases, start_s)
-        segment = replace(
-            segment, process=process_load(parsed, index, courses, segment, position, problems)
-        )
+        segment = replace(segment, process=process_load(parsed, index, courses, segment, position, problems))
         _check_brake(parsed, index, phases, problems)
         segments.append(segment)
         start_s += segment.duration_s

@@ -60,7 +60,9 @@ def understand(
     motion = parsed.get("duty_cycle")
     courses = side_tables(parsed, axis.number("cycles_per_minute"))
     segments = (
-        understand_motion(motion, axis.motion_coordinate, problems, courses) if motion and axis.mechanism else ()
+        understand_motion(motion, axis.motion_coordinate, problems, courses)
+        if motion and axis.mechanism
+        else ()
     )
     recording = None
     if "measured" in raw and axis.mechanism:
@@ -89,7 +91,9 @@ def understand(
     tolerances = understand_tolerances(parsed.get("tolerances"), decimal, problems)
     if problems.has_errors:
         return None
-    if not ((motion or recording) and motors and drives and mechanism and motor_parameters and drive_parameters):
+    if not (
+        (motion or recording) and motors and drives and mechanism and motor_parameters and drive_parameters
+    ):
         return None  # a required table is missing, which was reported
     described = [table for table in (motion, courses.points, courses.process) if table]
     entries = (

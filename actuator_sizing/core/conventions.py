@@ -210,7 +210,7 @@ def thermal_resistance_from_rating(
     limit, ambient = np.asarray(winding_limit_degc, dtype=float), np.asarray(ambient_degc, dtype=float)
     rise = limit - np.asarray(resistance_reference_degc, dtype=float)
     R = np.asarray(resistance_ohm, dtype=float) * (1.0 + np.asarray(resistance_coefficient_per_k) * rise)
-    with np.errstate(divide="ignore", invalid="ignore"):
+    with np.errstate(divide="ignore", invalid="ignore", over="ignore"):
         result = (limit - ambient) / (R * np.asarray(continuous_current_a, dtype=float) ** 2)
         return np.asarray(np.where(np.isfinite(result) & (result > 0.0), result, np.nan))
 

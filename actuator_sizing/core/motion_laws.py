@@ -344,9 +344,7 @@ _LAWS = (
         "sinusoid",
         "swings to and fro from one extreme, any number of half periods",
         "amplitude, and two of frequency, cycles and duration",
-        frozenset(
-            {"amplitude", "frequency", "cycles", "duration", "maximum speed", "maximum acceleration"}
-        ),
+        frozenset({"amplitude", "frequency", "cycles", "duration", "maximum speed", "maximum acceleration"}),
         plan_sinusoid,
     ),
     MotionLaw(

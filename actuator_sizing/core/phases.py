@@ -210,7 +210,9 @@ def position_range(phases: tuple[Phase, ...]) -> tuple[float, float]:
     """
     lowest = highest = 0.0
     for phase in phases:
-        parts = 16 + 8 * int(abs(phase.sine_frequency_rad_s) * phase.duration_s) if phase.sine_amplitude else 64
+        parts = (
+            16 + 8 * int(abs(phase.sine_frequency_rad_s) * phase.duration_s) if phase.sine_amplitude else 64
+        )
         tau = np.linspace(0.0, phase.duration_s, parts + 1)
         v = phase.kinematics(tau)[1]
         turns = np.flatnonzero(v[:-1] * v[1:] < 0.0)

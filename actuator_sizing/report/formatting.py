@@ -113,7 +113,7 @@ def compared(demand: float | None, capacity: float | None, digits: int = 4) -> t
         pair = _significant(demand, digits + extra), _significant(capacity, digits + extra)
         if _order(float(pair[0]), float(pair[1])) == _order(demand, capacity):
             return pair
-    return number(demand, digits, limit=capacity), _plain(capacity)
+    return f"{demand:.17g}", f"{capacity:.17g}"  # the digits that tell any two numbers apart
 
 
 def _order(a: float, b: float) -> int:

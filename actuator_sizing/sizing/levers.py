@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 from actuator_sizing.case.model import Case, Segment
 from actuator_sizing.core.phases import Phase
 from actuator_sizing.sizing.demand import Demand, build_demand
+from actuator_sizing.sizing.fitting import compatible, fits_axis
 from actuator_sizing.sizing.judging import ORDER, active_checks, judge_sets
 from actuator_sizing.sizing.results import FAILS
 from actuator_sizing.sizing.shortlist import evaluate_sets
@@ -390,8 +391,6 @@ def other_parts(case: Case, demand: Demand, motor: int, gearhead: int, drive: in
     tuple of PartAnswer
         One for each catalog. [-]
     """
-    from actuator_sizing.sizing.screening import compatible, fits_axis
-
     checks, limits = active_checks(case.limits)
     motors, gearheads = fits_axis(case)
     served = compatible(case.motor_parameters, case.drive_parameters)

@@ -12,7 +12,10 @@ if TYPE_CHECKING:
     from actuator_sizing.sizing.results import SetResult
 
 #: Quantities of the axis that a case keeps and no check reads.
-UNUSED_QUANTITIES = ("bus capacitance", "chopper threshold", "brake resistor", "required life")
+UNUSED_QUANTITIES = ("required life",)
+
+#: Checks that judge a holding brake.
+BRAKE_CHECKS = ("holding_brake_static",)
 
 _PARTS_NOT_CHECKED = {
     "ball screw": "critical speed, buckling and life of the screw",
@@ -66,7 +69,7 @@ def model_statements(case: Case, best: SetResult) -> tuple[tuple[str, str], ...]
         ("model: stiffness", "load, gearhead and motor turn as one rigid body"),
         ("model: drive rating", _drive_rating(case, best)),
     ]
-    said += _braking(case, best) + _holding_brake(case, best)
+    said += _holding_brake(case, best)
     if case.mechanism.name in _PARTS_NOT_CHECKED:
         said.append(("model: mechanism", f"{_PARTS_NOT_CHECKED[case.mechanism.name]} are not checked"))
     idle = [
@@ -89,26 +92,10 @@ def _drive_rating(case: Case, best: SetResult) -> str:
     return text
 
 
-def _braking(case: Case, best: SetResult) -> list[tuple[str, str]]:
-    """Energy that comes back and is not followed further, where the supply does not take it."""
-    returned = best.quantities.get("energy_terminals_regenerated_j")
-    if (
-        case.options.get("supply feeds back") == "yes"
-        or not isinstance(returned, float)
-        or not returned > 0.0
-    ):
-        return []
-    return [
-        (
-            "model: braking",
-            f"the motor returns {returned:.4g} J per cycle; how far that lifts the bus, and what chopper and "
-            "brake resistor bear, is not checked",
-        )
-    ]
-
-
 def _holding_brake(case: Case, best: SetResult) -> list[tuple[str, str]]:
-    if not any(segment.brake_closed for segment in case.segments):
+    """A brake that the cycle relies on and that no check of this set judged."""
+    judged = any(check.check in BRAKE_CHECKS and check.utilisation is not None for check in best.checks)
+    if judged or not any(segment.brake_closed for segment in case.segments):
         return []
     torque = float(case.motor_parameters.brake_torque_nm[best.motor_index])
     stated = "" if torque == torque else f"; {best.motor} states none"

@@ -7,8 +7,7 @@ from actuator_sizing.case.reading import read_case
 from actuator_sizing.sizing.comparison import compare
 from actuator_sizing.sizing.model_limits import UNUSED_QUANTITIES
 
-UNITS = {"bus capacitance": ("µF", 50, 4700), "chopper threshold": ("V", 54, 59),
-         "brake resistor": ("Ω", 2, 50), "required life": ("h", 1, 90_000)}  # fmt: skip
+UNITS = {"required life": ("h", 1, 90_000)}
 
 
 def compared(tmp_path, tables):
@@ -39,14 +38,6 @@ def test_quantities_called_unused_change_no_result(tmp_path, name):
 
 def test_nothing_is_called_unused_where_nothing_idle_is_stated(tmp_path):
     assert "model: stated, not used" not in said(compared(tmp_path, small_case()))
-
-
-def test_returned_energy_is_told_unless_the_supply_takes_it(tmp_path):
-    comparison = compared(tmp_path, small_case())
-    returned = comparison.best.quantities["energy_terminals_regenerated_j"]
-    assert returned > 0.0
-    assert f"{returned:.4g} J per cycle" in said(comparison)["model: braking"]
-    assert "model: braking" not in said(compared(tmp_path, with_quantity("supply feeds back", "yes", "")))
 
 
 def test_a_closed_brake_is_not_taken_for_a_checked_one(tmp_path):

@@ -94,7 +94,11 @@ def not_checked_section(comparison: Comparison) -> Section:
             )
         )
     else:
-        blocks.append(Paragraph("Every check that applies to the leading set was made."))
+        blocks.append(
+            Paragraph(
+                "Every check of this list that concerns the leading set was made. The assumptions say what no check of this tool judges."
+            )
+        )
     if comparison.questions:
         columns = (
             Column("Part", weight=1.2),

@@ -47,7 +47,11 @@ def draw_motion(cycle: pd.DataFrame, units: AxisUnits) -> Figure:
         ("position", units.position(cycle["position"]), "position"),
         ("speed", units.speed(), "speed"),
         ("acceleration", units.acceleration(), "acceleration"),
-        (effort, units.effort(cycle[effort]) if effort != "effort" else units.load_effort(cycle[effort]), whose),
+        (
+            effort,
+            units.effort(cycle[effort]) if effort != "effort" else units.load_effort(cycle[effort]),
+            whose,
+        ),
     )
     figure, axes = style.new_axes(5.4, rows=len(panels), left_in=0.95, right_in=0.25, top_in=0.32)
     for ax, (column, shown, name) in zip(axes, panels, strict=True):
