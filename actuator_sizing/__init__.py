@@ -24,6 +24,7 @@ if TYPE_CHECKING:
     from actuator_sizing.case.converting import convert_case
     from actuator_sizing.case.reading import check_case, read_case
     from actuator_sizing.case.starting import start_case
+    from actuator_sizing.report.revision import read_results
     from actuator_sizing.sizing import compare
 
 __all__ = [
@@ -33,6 +34,7 @@ __all__ = [
     "compare",
     "convert_case",
     "read_case",
+    "read_results",
     "start_case",
 ]
 
@@ -44,6 +46,7 @@ _HOMES = {
     "compare": "actuator_sizing.sizing",
     "convert_case": "actuator_sizing.case.converting",
     "read_case": "actuator_sizing.case.reading",
+    "read_results": "actuator_sizing.report.revision",
     "start_case": "actuator_sizing.case.starting",
 }
 

@@ -112,8 +112,22 @@ def audit(case: Path) -> int:
     "--detail", type=click.IntRange(min=1), metavar="N", help="How many sets to evaluate in detail."
 )
 @click.option("--json", "as_json", is_flag=True, help="Print results.json; no files unless --out is given.")
+@click.option(
+    "--since",
+    type=click.Path(path_type=Path),
+    help="Earlier results.json, or its folder: say which inputs changed and what moved.",
+)
+@click.option("--pdf/--no-pdf", default=None, help="Write the PDF too; default: if its package is installed.")
 @_debug
-def compare(case: Path, out: Path | None, rank_by: str | None, detail: int | None, as_json: bool) -> int:
+def compare(
+    case: Path,
+    out: Path | None,
+    rank_by: str | None,
+    detail: int | None,
+    as_json: bool,
+    since: Path | None,
+    pdf: bool | None,
+) -> int:
     """Size CASE and write the report.
 
     Compares all motor x gearhead x drive sets and ranks those that pass. The report goes to
@@ -124,6 +138,11 @@ def compare(case: Path, out: Path | None, rank_by: str | None, detail: int | Non
     from actuator_sizing.console import ProgressBar, print_problems, print_summary
     from actuator_sizing.sizing import compare as compare_sets
 
+    earlier = None
+    if since is not None:
+        from actuator_sizing.report.revision import read_results
+
+        earlier = read_results(since)  # before the report, which may replace it
     understood = read_case(case)
     with ProgressBar() as progress:
         comparison = compare_sets(understood, rank_by=rank_by, detail=detail, progress=progress)
@@ -132,7 +151,7 @@ def compare(case: Path, out: Path | None, rank_by: str | None, detail: int | Non
             from actuator_sizing.report import write_report
 
             progress("writing the report", 0.0)
-            written = write_report(comparison, out or _report_folder(understood.name))
+            written = write_report(comparison, out or _report_folder(understood.name), pdf=pdf, since=earlier)
     print_problems(dict.fromkeys((*understood.problems, *audit_catalogs(understood))), at_most=10)
     if as_json:
         from actuator_sizing.report.json_results import render_json
@@ -140,6 +159,12 @@ def compare(case: Path, out: Path | None, rank_by: str | None, detail: int | Non
         click.echo(render_json(comparison).rstrip(b"\n"))
     else:
         print_summary(comparison, written)
+        if earlier is not None:
+            from actuator_sizing.report.document.changes import changes_lines
+            from actuator_sizing.report.json_results import results_dict
+            from actuator_sizing.report.revision import revision_since
+
+            click.echo("\n" + "\n".join(changes_lines(revision_since(earlier, results_dict(comparison)))))
     return PASSED if comparison.passes else NONE_PASSES
 
 

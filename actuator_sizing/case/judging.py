@@ -31,13 +31,17 @@ def default_limits() -> dict[str, Limit]:
     }
 
 
-def understand_limits(parsed: ParsedTable | None) -> tuple[dict[str, Limit], list[Entry]]:
+def understand_limits(
+    parsed: ParsedTable | None, problems: ProblemList
+) -> tuple[dict[str, Limit], list[Entry]]:
     """Limits of every check; those not listed, and cells left empty, keep their defaults.
 
     Parameters
     ----------
     parsed : ParsedTable or None
         The table `limits`; None where the case has none.
+    problems : ProblemList
+        Takes what is wrong: a set that no check can fail would pass without having been judged.
 
     Returns
     -------
@@ -60,6 +64,10 @@ def understand_limits(parsed: ParsedTable | None) -> tuple[dict[str, Limit], lis
         limits[key] = Limit(
             key, str(applies.value_si), float(allowed.value_si or 0.0), float(reserve.value_si or 0.0)
         )
+    if parsed is not None and not any(limit.applies == "yes" for limit in limits.values()):
+        problems.report("limits", None, parsed.heading("applies"), got="no check with 'yes'",
+                        allowed="yes for at least one check, or nothing could fail",
+                        remedy="Write yes for the checks that a set must pass.")  # fmt: skip
     return limits, entries
 
 

@@ -209,7 +209,8 @@ def _check_closing(segments: list[Segment], coordinate: str, problems: ProblemLi
             _TABLE, segments[-1].row, "displacement",
             got=f"an end {shown} away from the start",
             allowed="a closed cycle" if not rotary else "a closed cycle, or an axis that turns on",
-            remedy="The axis walks on with every cycle; add the way back." if not rotary
+            remedy="The axis walks on with every cycle: right for a conveyor, else add the way back."
+            if not rotary
             else "Taken as an axis that turns on by this angle every cycle.",
             severity=NOTE if rotary else WARNING,
         )  # fmt: skip

@@ -181,7 +181,11 @@ def _report_missing_tables(raw: dict[str, RawTable], problems: ProblemList) -> N
     for name, table in TABLES.items():
         if table.required and name not in raw and not problems.mentions(name):
             where = ", in the case or in its catalog folder" if table.is_catalog else ""
-            columns = ", ".join(column.name for column in table.columns if column.required)
+            columns = ", ".join(
+                f"{column.name} ({column.machine} motor)" if column.machine else column.name
+                for column in table.columns
+                if column.required
+            )
             problems.report(name, None, got="no such table", allowed=f"a required table{where}",
                             remedy=f"Add a sheet '{name}' or a file {name}.csv with at least the columns: "
                             f"{columns}.")  # fmt: skip

@@ -65,7 +65,7 @@ def understand(
         problems.report("gearheads", None, got="no table, and direct drive is not allowed",
                         allowed="gearheads, or direct drive",
                         remedy="Add the table, or set 'direct drive allowed' to yes.")  # fmt: skip
-    limits, limit_entries = understand_limits(parsed.get("limits"))
+    limits, limit_entries = understand_limits(parsed.get("limits"), problems)
     decimal = raw["tolerances"].decimal if "tolerances" in raw else ""
     tolerances = understand_tolerances(parsed.get("tolerances"), decimal, problems)
     if problems.has_errors:

@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 import os
+from collections.abc import Mapping
 from datetime import UTC, date, datetime
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
     from actuator_sizing.sizing.results import Comparison
@@ -14,7 +15,12 @@ __all__ = ["render_report", "write_report"]
 
 
 def write_report(
-    comparison: Comparison, folder: str | Path, *, date: date | None = None, pdf: bool | None = None
+    comparison: Comparison,
+    folder: str | Path,
+    *,
+    date: date | None = None,
+    pdf: bool | None = None,
+    since: Mapping[str, Any] | None = None,
 ) -> tuple[Path, ...]:
     """Write page, PDF, workbook, results, candidates and figures into a folder; whole or not at all.
 
@@ -28,6 +34,8 @@ def write_report(
         Date of the report; by default today, or the day in the environment variable ``SOURCE_DATE_EPOCH``.
     pdf : bool or None
         Write the PDF too; None writes it if the optional package for it is installed.
+    since : mapping or None
+        Earlier results, as from `read_results`: the report then says what changed.
 
     Returns
     -------
@@ -42,11 +50,15 @@ def write_report(
     """
     from actuator_sizing.files import replace_folder_files
 
-    return replace_folder_files(folder, render_report(comparison, date=date, pdf=pdf))
+    return replace_folder_files(folder, render_report(comparison, date=date, pdf=pdf, since=since))
 
 
 def render_report(
-    comparison: Comparison, *, date: date | None = None, pdf: bool | None = None
+    comparison: Comparison,
+    *,
+    date: date | None = None,
+    pdf: bool | None = None,
+    since: Mapping[str, Any] | None = None,
 ) -> dict[str, bytes]:
     """Make every file of the report in memory, keyed by its path in the folder.
 
@@ -58,22 +70,26 @@ def render_report(
         Date of the report, see `write_report`.
     pdf : bool or None
         Make the PDF too, see `write_report`.
+    since : mapping or None
+        Earlier results, see `write_report`.
     """
     from actuator_sizing.report.candidates_csv import render_candidates
     from actuator_sizing.report.document import prepare_document
     from actuator_sizing.report.figures import draw_figures
     from actuator_sizing.report.html import render_html
-    from actuator_sizing.report.json_results import render_json
+    from actuator_sizing.report.json_results import render_json, results_dict
     from actuator_sizing.report.pdf import can_write_pdf, render_pdf
+    from actuator_sizing.report.revision import revision_since
     from actuator_sizing.report.workbook import render_workbook
 
     day = date if date is not None else _today()
     figures = draw_figures(comparison)
-    document = prepare_document(comparison, day, figures)
+    revision = None if since is None else revision_since(since, results_dict(comparison))
+    document = prepare_document(comparison, day, figures, revision)
     files = {
         "sizing_report.html": render_html(document, figures),
         "sizing_tables.xlsx": render_workbook(comparison, day),
-        "results.json": render_json(comparison),
+        "results.json": render_json(comparison, revision),
         "candidates.csv": render_candidates(comparison),
     }
     if pdf or (pdf is None and can_write_pdf()):

@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 import math
 from collections.abc import Mapping
+from dataclasses import asdict
 from typing import TYPE_CHECKING, Any
 
 from actuator_sizing.report.document.comparing import shown_pair
@@ -13,6 +14,7 @@ from actuator_sizing.report.formatting import percent
 
 if TYPE_CHECKING:
     from actuator_sizing.case.model import Entry
+    from actuator_sizing.report.revision import Revision
     from actuator_sizing.sizing.results import CheckResult, Comparison, SetResult
 
 SCHEMA = "actuator-sizing/results/1"
@@ -65,9 +67,12 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
     }
 
 
-def render_json(comparison: Comparison) -> bytes:
+def render_json(comparison: Comparison, revision: Revision | None = None) -> bytes:
     """Write the results as UTF-8 text; the same, byte for byte, for the same comparison."""
-    text = json.dumps(results_dict(comparison), ensure_ascii=False, allow_nan=False, indent=1)
+    results = results_dict(comparison)
+    if revision is not None:
+        results["changes"] = _plain(asdict(revision))
+    text = json.dumps(results, ensure_ascii=False, allow_nan=False, indent=1)
     # a lone surrogate of a badly decoded table has no UTF-8 form; its escape is valid JSON
     return (text + "\n").encode("utf-8", "backslashreplace")
 

@@ -69,7 +69,7 @@ def render_pdf(document: Document, figures: Mapping[str, DrawnFigure]) -> bytes:
             template.read_bytes(),
             font_paths=[_font_folder()],
             ignore_system_fonts=True,  # the fonts are those of the figures, on every computer
-            sys_inputs={"document": json.dumps(_data(document, figures, day))},
+            sys_inputs={"document": json.dumps(_data(document, figures, day), allow_nan=False)},
             format="pdf",
             pdf_standards=["ua-1"],
             timestamp=int(datetime.combine(day, time(), UTC).timestamp()),

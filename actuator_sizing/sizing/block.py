@@ -163,12 +163,15 @@ class Block:
         K = self.judged.torque_constant_nm_per_a
         per_torque = self.judged.resistance_ohm / K
         available = self.judged.voltage_available_v
+        # Saturated current over T/K, at most: the turning point of the cubic is at 3/2 of the linear current.
+        most_current = np.where(self.judged.saturation_per_a2 > 0.0, 1.5, 1.0)
         voltage = np.zeros_like(self.mean_square)
         plane = np.zeros_like(self.mean_square)
         side = self.gearhead_side
         for part, omega in zip(side.torque_for_voltage, side.speed_for_voltage, strict=True):
             drop, emf = per_torque * (part @ self.motor_side.columns), K * omega
-            np.maximum(voltage, drop + emf, out=voltage)
+            # While braking a larger current means less voltage: there the bound needs the most current there can be.
+            np.maximum(voltage, np.minimum(drop, most_current * drop) + emf, out=voltage)
             # Above the no-load speed there is no motoring torque at all: the ratio becomes immense.
             left = np.maximum(np.subtract(available, emf, out=emf), _NOTHING)
             np.maximum(plane, np.divide(drop, left, out=drop), out=plane)

@@ -26,7 +26,7 @@ from actuator_sizing.sizing.judging import (
 from actuator_sizing.sizing.provenance import assumptions_of, questions_of
 from actuator_sizing.sizing.ranking import RANKINGS, nearest_drives, ranking_key
 from actuator_sizing.sizing.results import FAILS, NOT_CHECKED, Comparison, Rejections, SetResult
-from actuator_sizing.sizing.screening import Screened, screen
+from actuator_sizing.sizing.screening import Screened, compatible, screen
 from actuator_sizing.sizing.shortlist import evaluate_sets
 from actuator_sizing.version import __version__
 
@@ -37,6 +37,10 @@ IndexArray = NDArray[np.intp]
 Progress = Callable[[str, float], None]
 
 _KEEP = 20_000  # survivors evaluated exactly at most, the best by the ranking
+_FAR, _FEWEST_LOSERS = (
+    2.0,
+    3,
+)  # losers beyond twice the allowed value teach nothing, unless there are no others
 _NEAREST_LOSERS = 40  # motor × gearhead pairs that came closest, evaluated exactly too
 
 
@@ -104,7 +108,7 @@ def compare(
         demand=demand,
         ranked_by=ranked_by,
         sets=results,
-        rejections=_rejections(screened, verdicts, survivor_rows),
+        rejections=_rejections(screened, verdicts, index, survivor_rows),
         candidates=candidate_table(case, sets, verdicts, index, order, screened),
         cycle=cycle_quantities(demand),
         assumptions=assumptions_of(case, results[0]),
@@ -120,14 +124,38 @@ def _stage(progress: Progress | None, name: str) -> Callable[[float], None] | No
 
 
 def _no_set(case: Case) -> Problem:
-    kind = "linear" if case.mechanism.drives_linear_motor else "rotary"
+    """Say why not one motor, gearhead and drive fit together."""
+    linear = case.mechanism.drives_linear_motor
+    kind, other = ("linear", "rotary") if linear else ("rotary", "linear")
+    of_kind = case.motor_parameters.is_linear == linear
+    if not of_kind.any():
+        return Problem(
+            "motors",
+            None,
+            "",
+            f"{other} motors only",
+            f"at least one {kind} motor, which the mechanism '{case.mechanism.name}' needs",
+            f"Add a {kind} motor, or change the mechanism in the table axis.",
+        )
+    served = compatible(case.motor_parameters, case.drive_parameters).any(axis=1)
+    if not (of_kind & served).any():
+        return Problem(
+            "drives",
+            None,
+            "commutation",
+            "no drive that serves a motor",
+            f"at least one {kind} motor and a drive that serves its commutation",
+            "Add such a drive, or check commutation and current basis of motors and drives.",
+        )
     return Problem(
         "motors",
         None,
-        "",
-        f"{len(case.motors)} motors, {len(case.gearheads)} gearheads, {len(case.drives)} drives",
-        f"at least one {kind} motor and a drive that serves its commutation",
-        "Add such parts, or check the mechanism and the commutation columns.",
+        "nominal voltage",
+        f"windings that are not made for the bus of {case.surroundings.bus_nominal_v:g} V",
+        f"a nominal bus voltage of at most {case.options['largest bus over nominal voltage']:g} times the "
+        "nominal voltage of a motor",
+        "Add motors with another winding, lower the bus voltage, or raise 'largest bus over nominal voltage' "
+        "if the makers allow it.",
     )
 
 
@@ -148,6 +176,8 @@ def _listed(order: IndexArray, verdicts: Verdicts, index: IndexArray, wanted: in
     nearest: list[int] = []
     seen: set[tuple[int, int]] = set()
     for i in order[fails]:
+        if len(nearest) >= _FEWEST_LOSERS and verdicts.severity[i] > _FAR:
+            break
         kind = (int(index[i, 0]), int(verdicts.governing[i]))
         if kind not in seen:
             seen.add(kind)
@@ -162,11 +192,24 @@ def _is_survivor(index: IndexArray, survivors: IndexArray) -> NDArray[np.bool_]:
     return np.array([tuple(row) in known for row in index.tolist()], dtype=bool)
 
 
-def _rejections(screened: Screened, verdicts: Verdicts, survivor: NDArray[np.bool_]) -> Rejections:
-    failed = survivor & (verdicts.verdict == ORDER.index(FAILS))
+def _rejections(
+    screened: Screened, verdicts: Verdicts, index: IndexArray, survivor: NDArray[np.bool_]
+) -> Rejections:
+    fails = verdicts.verdict == ORDER.index(FAILS)
+    failed = survivor & fails
     counts = Counter(screened.rejected_by_check)
     for column in verdicts.governing[failed]:
         counts[verdicts.checks[column].key] += 1
+    # A loser that was evaluated after all counts under what governs it exactly, as the list of candidates says.
+    bound_of = {
+        tuple(row): int(check) for row, check in zip(screened.lost.tolist(), screened.lost_check, strict=True)
+    }
+    for row, column in zip(
+        index[fails & ~survivor].tolist(), verdicts.governing[fails & ~survivor], strict=True
+    ):
+        if tuple(row) in bound_of:
+            counts[screened.check_names[bound_of[tuple(row)]]] -= 1
+            counts[verdicts.checks[column].key] += 1
     passing = survivor & (verdicts.verdict < ORDER.index(NOT_CHECKED))
     rejected = screened.screened - screened.survivor_count + int(failed.sum())
     return Rejections(
@@ -174,7 +217,7 @@ def _rejections(screened: Screened, verdicts: Verdicts, survivor: NDArray[np.boo
         incompatible=screened.incompatible,
         screened=screened.screened,
         rejected=rejected,
-        by_check=dict(sorted(counts.items(), key=lambda item: -item[1])),
+        by_check=dict(sorted(((k, n) for k, n in counts.items() if n), key=lambda item: -item[1])),
         survivors=screened.survivor_count,
         confirmed_passing=int(passing.sum()),
         evaluated=int(survivor.sum()),

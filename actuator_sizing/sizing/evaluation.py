@@ -359,7 +359,9 @@ def _plane(demand: Demand, c: PairCourse, judged: JudgedMotor) -> dict[str, Floa
         demanded = np.where(direction == 0.0, np.abs(torque), demanded)
         reachable = np.nan_to_num(current_limit, nan=0.0)
         capacity = torque_of_current(np.clip(reachable, 0.0, turning), K, s)
-        beyond = (capacity <= 0.0) & (demanded > 0.0)
+        # Above the no-load speed only braking torque keeps within the voltage, and of it a least one is needed.
+        most = torque_of_current(np.clip(current_limit, -turning, 0.0), K, s)
+        beyond = (capacity <= 0.0) & ~(demanded <= most)  # NaN: no current at all
         ratio = demanded / np.where(capacity > 0.0, capacity, np.inf)
         utilisation, piece, position = largest(ratio)
         at = demand.instant(piece, position)
@@ -370,7 +372,7 @@ def _plane(demand: Demand, c: PairCourse, judged: JudgedMotor) -> dict[str, Floa
         never = hopeless.any(axis=1)
         utilisation = np.where(never, np.inf, np.maximum(utilisation, 0.0))
         at = np.where(never, demand.time_s.reshape(-1)[first], at)
-        there = np.where(never, demanded.reshape(len(at), -1)[np.arange(len(at)), first], there)
+        there = np.where(never, np.abs(demanded.reshape(len(at), -1)[np.arange(len(at)), first]), there)
         with np.errstate(invalid="ignore", divide="ignore"):
             available = np.where(never, 0.0, there / utilisation)
         branch = {

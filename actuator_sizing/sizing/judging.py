@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Limit
 from actuator_sizing.sizing.checks import CHECKS, Check, Measure, Sets
-from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES, CheckResult
+from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES, CheckResult, Checks
 
 FloatArray = NDArray[np.float64]
 
@@ -79,14 +79,13 @@ def judge_sets(sets: Sets, checks: tuple[Check, ...], limits: tuple[Limit, ...])
         code[known & (ratio > reserve)] = _LOW
         beyond = known & (ratio > limit.allowed_utilisation)
         binding = is_binding(check, limit)
+        # Advice that was not followed is said in its own row, not in the verdict of the set.
         code[beyond] = _FAILS if binding else _LOW
         codes[applies, column] = code[applies]
         utilisation[known, column] = ratio[known]
         # Advice never governs while a limit is there to govern.
         relative[known, column] = ratio[known] / limit.allowed_utilisation if binding else -1.0
-        if not binding:
-            # Advice that was not followed is said in its own row, not in the verdict of the set.
-            codes[:, column] = np.where(codes[:, column] == _FAILS, _LOW, codes[:, column])
+    _let_numbers_govern(relative, codes, checks)
     binding_columns = np.array([is_binding(c, x) for c, x in zip(checks, limits, strict=True)])
     verdict = np.max(np.where(binding_columns, codes, _PASSES), axis=1, initial=_PASSES).astype(np.int8)
     governing = relative.argmax(axis=1)
@@ -101,9 +100,17 @@ def judge_sets(sets: Sets, checks: tuple[Check, ...], limits: tuple[Limit, ...])
     )
 
 
-def check_results(
-    sets: Sets, verdicts: Verdicts, index: int, segment_at: list[str]
-) -> tuple[CheckResult, ...]:
+def _let_numbers_govern(relative: FloatArray, codes: NDArray[np.int8], checks: tuple[Check, ...]) -> None:
+    """Keep an infinite check from governing where the check it yields to fails and says by how much."""
+    column_of = {check.key: column for column, check in enumerate(checks)}
+    for column, check in enumerate(checks):
+        other = column_of.get(check.yields_to)
+        if other is not None:
+            told = np.isinf(relative[:, column]) & (codes[:, other] == _FAILS)
+            relative[told, column] = -1.0
+
+
+def check_results(sets: Sets, verdicts: Verdicts, index: int, segment_at: list[str]) -> Checks:
     """The checks of one set in full, for report and results.
 
     Parameters
@@ -119,7 +126,7 @@ def check_results(
 
     Returns
     -------
-    tuple of CheckResult
+    Checks
         In the order of the checks; those that do not apply are left out. [-]
     """
     results = []
@@ -160,7 +167,7 @@ def check_results(
                 is_advice=not is_binding(check, limit),
             )
         )
-    return tuple(results)
+    return Checks(results)
 
 
 def _number(value: float) -> float | None:

@@ -2,9 +2,15 @@
 
 from __future__ import annotations
 
-from actuator_sizing.case.model import Case
-from actuator_sizing.core.machine import ASSUMED_HOT_WINDING_DEGC
+from actuator_sizing.case.model import Case, Entry
+from actuator_sizing.sizing.model_limits import model_statements
 from actuator_sizing.sizing.results import NOT_CHECKED, SetResult
+from actuator_sizing.sizing.thermal_data import COPPER_MASS_SHARE, has_divided_resistance
+
+_DIVIDED = (
+    f"assumed: the total thermal resistance is divided by the winding's heat capacity, taken as copper of "
+    f"{COPPER_MASS_SHARE:.0%} of the motor's mass".replace("%", " %")
+)
 
 
 def assumptions_of(case: Case, best: SetResult) -> tuple[tuple[str, str], ...]:
@@ -23,7 +29,7 @@ def assumptions_of(case: Case, best: SetResult) -> tuple[tuple[str, str], ...]:
         In the order axis, duty cycle, motor, gearhead, drive, model. [-]
     """
     said = [
-        (f"{entry.table}: {entry.column}", f"{entry.origin}: {entry.rule}")
+        (_subject(entry), f"{entry.origin}: {entry.rule}")
         for entry in case.entries
         if entry.origin in ("derived", "assumed") and entry.rule
     ]
@@ -40,26 +46,14 @@ def assumptions_of(case: Case, best: SetResult) -> tuple[tuple[str, str], ...]:
             for entry in case.catalog_entries(table, index)
             if entry.origin in ("derived", "assumed")
         ]
-    return (*said, *_model_statements(case))
+    if has_divided_resistance(case.motor_parameters.take(slice(best.motor_index, best.motor_index + 1)))[0]:
+        said.append((f"{best.motor}: winding and housing", _DIVIDED))
+    return (*said, *model_statements(case, best))
 
 
-def _model_statements(case: Case) -> tuple[tuple[str, str], ...]:
-    s = case.surroundings
-    judged = (
-        f"each motor's winding limit ({ASSUMED_HOT_WINDING_DEGC:g} °C where the sheet states none)"
-        if s.judged_winding_degc != s.judged_winding_degc
-        else f"{s.judged_winding_degc:g} °C"
-    )
-    return (
-        ("model: hot winding", f"current and voltage are judged with the winding at {judged}"),
-        ("model: minimum bus", f"voltage and speed–torque limits are judged at {s.bus_min_v:g} V"),
-        (
-            "model: standstill",
-            "holding is taken without help from friction; with the brake closed no current flows",
-        ),
-        ("model: cycle", "the cycle repeats for ever; dwell counts in RMS values"),
-        ("model: stiffness", "load, gearhead and motor turn as one rigid body"),
-    )
+def _subject(entry: Entry) -> str:
+    """Name what an entry of the case is about: a row of `axis` is one quantity, elsewhere the column is."""
+    return f"axis: {entry.label}" if entry.table == "axis" else f"{entry.table}: {entry.label}: {entry.column}"
 
 
 def questions_of(results: tuple[SetResult, ...]) -> tuple[tuple[str, str, str], ...]:

@@ -56,6 +56,24 @@ class CheckResult:
         return 1.0 / self.utilisation - 1.0
 
 
+class Checks(tuple[CheckResult, ...]):
+    """The checks of one set; a tuple that shows itself as a table."""
+
+    __slots__ = ()
+
+    @property
+    def table(self) -> pd.DataFrame:
+        """Demand, capacity, unit, utilisation, verdict and place of each check, one row each."""
+        from actuator_sizing.sizing.notebook import checks_frame
+
+        return checks_frame(self)
+
+    def _repr_html_(self) -> str:
+        from actuator_sizing.sizing.notebook import checks_html
+
+        return checks_html(self)
+
+
 @dataclass(frozen=True)
 class SetDetail:
     """Curves of one set for figures and tables; every column name ends in its SI unit."""
@@ -94,7 +112,7 @@ class SetResult:
     price: float | None
     mass_kg: float | None
     quantities: Mapping[str, Any]
-    checks: tuple[CheckResult, ...]
+    checks: Checks
     motor_index: int
     gearhead_index: int
     drive_index: int
@@ -105,6 +123,12 @@ class SetResult:
     def label(self) -> str:
         """Motor, gearhead and drive in one line."""
         return " + ".join([self.motor, self.gearhead or "direct", self.drive])
+
+    def _repr_html_(self) -> str:
+        """Its checks as a table for notebooks."""
+        from actuator_sizing.sizing.notebook import set_html
+
+        return set_html(self)
 
     def check(self, key: str) -> CheckResult:
         """The result of one check by its key.
@@ -160,13 +184,29 @@ class Comparison:
         """Whether a set passes every check."""
         return bool(self.sets) and self.sets[0].verdict in (PASSES, LOW_RESERVE)
 
-    def write_report(self, folder: str | Path) -> tuple[Path, ...]:
+    def _repr_html_(self) -> str:
+        """A compact table for notebooks."""
+        from actuator_sizing.sizing.notebook import comparison_html
+
+        return comparison_html(self)
+
+    def write_report(
+        self,
+        folder: str | Path,
+        *,
+        pdf: bool | None = None,
+        since: Mapping[str, Any] | None = None,
+    ) -> tuple[Path, ...]:
         """Write report, tables, figures and results into `folder`; whole or not at all.
 
         Parameters
         ----------
         folder : str or Path
             Output folder; made if missing.
+        pdf : bool or None
+            Write the PDF too; None writes it if the optional package for it is installed.
+        since : mapping or None
+            Contents of an earlier ``results.json``: the report then says what changed.
 
         Returns
         -------
@@ -180,4 +220,4 @@ class Comparison:
         """
         from actuator_sizing.report import write_report
 
-        return write_report(self, folder)
+        return write_report(self, folder, pdf=pdf, since=since)

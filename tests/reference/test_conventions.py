@@ -19,6 +19,7 @@ from actuator_sizing.core.parameters import BASIS_DC, BASIS_PEAK, BASIS_RMS
 RPM = 2.0 * np.pi / 60.0
 
 
+@pytest.mark.published("A6.1")
 def test_volts_line_to_line_per_thousand_rpm_to_torque_per_rms_ampere():
     # Commonly quoted factor 0.01654 N·m/A per V/(1000 1/min), M and D; tolerance: half its last printed digit.
     constant = torque_constant_from_back_emf([1.0 / (1000.0 * RPM)], "rms line-to-line", [BASIS_RMS])
@@ -27,6 +28,7 @@ def test_volts_line_to_line_per_thousand_rpm_to_torque_per_rms_ampere():
     assert constant[0] == pytest.approx(0.0165399, abs=1e-6)
 
 
+@pytest.mark.published("A6.2")
 def test_published_motor_table_agrees_with_root_three():
     # Electrical Engineering Stack Exchange, "BLDC Motor Constants: why is my Kt and Ke different?" (S):
     # 0.318 V rms l-l per rad/s and 0.55 N·m/A rms. 0.55 is printed to two digits, hence ±0.005.
@@ -34,12 +36,14 @@ def test_published_motor_table_agrees_with_root_three():
     assert constant[0] == pytest.approx(0.55, abs=0.005)
 
 
+@pytest.mark.published("A6.3")
 def test_speed_constant_of_peak_line_volts_times_torque_per_peak_ampere():
     # Widely published relation of open-source drives, K_t·K_v = 8.27 (S); tolerance: half the last digit.
     constant = torque_constant_from_back_emf([1.0 / RPM], "peak line-to-line", [BASIS_PEAK])
     assert constant[0] == pytest.approx(8.27, abs=0.005)
 
 
+@pytest.mark.published("A6.4")
 def test_convention_factors_of_a_star_winding():
     # Definitions (D): R_ll = 2 R_ph, copper loss 1.5 R_ll I_rms² = 1.5 R_ph I_peak², K_rms/K_peak = √2.
     dc, rms, peak = model_factor([BASIS_DC, BASIS_RMS, BASIS_PEAK])
@@ -50,6 +54,7 @@ def test_convention_factors_of_a_star_winding():
     assert per_rms[0] / per_peak[0] == pytest.approx(np.sqrt(2.0), abs=1e-12)
 
 
+@pytest.mark.published("A6.5")
 def test_six_step_against_sine_at_equal_loss_and_equal_peak_emf():
     # Pillay & Krishnan, IEEE Trans. Ind. Appl. 27 (1991) 986-996: about 15 % more output (M, D): 2/√3,
     # tolerance: the 1.1547 as printed. Loss R_ll i² in both models, flat-top EMF for six-step.
@@ -61,6 +66,7 @@ def test_six_step_against_sine_at_equal_loss_and_equal_peak_emf():
     assert flat / sine == pytest.approx(1.1547, abs=1e-4)
 
 
+@pytest.mark.published("A6.6")
 def test_motor_constant_does_not_depend_on_the_winding():
     # Definition (D): twice the turns at half the area doubles K and quadruples R; K per peak ampere,
     # phase resistance 2 Ω, loss 1.5 R I². Tolerance: rounding.

@@ -8,6 +8,7 @@ import pytest
 from actuator_sizing.core.capability import terminal_voltage, voltage_limited_current
 from actuator_sizing.core.materials import resistance_factor
 from actuator_sizing.core.step_response import voltage_step
+from actuator_sizing.units import parse_unit, to_si
 
 RPM = math.tau / 60.0
 
@@ -16,6 +17,7 @@ def voltage(current, speed, R, K):
     return float(terminal_voltage(*(np.float64(value) for value in (current, speed, 0.0, R, 0.0, K, 0.0))))
 
 
+@pytest.mark.published("A4.2")
 def test_no_load_point_with_viscous_loss():
     """Krause, Wasynczuk & Sudhoff, Analysis of Electric Machinery, PM motor example [I; 3350 rpm, 0.15 A from M]."""
     step = voltage_step(7.0, 0.120, 1.41e-2, 1e-6, 6.04e-6, 6.0)
@@ -26,6 +28,7 @@ def test_no_load_point_with_viscous_loss():
     assert step.electrical_time_constant_s == pytest.approx(0.0171429, abs=5e-8)
 
 
+@pytest.mark.published("A4.3")
 def test_speed_torque_line():
     """Textbook formulas [D]: 6 V, 7 Ω, 1.41e-2 V·s/rad, no-load current 0.15 A."""
     R, K, U, I_0 = 7.0, 1.41e-2, 6.0, 0.15
@@ -44,6 +47,7 @@ def test_speed_torque_line():
     assert current[running][best] == pytest.approx(0.358569, abs=2e-4)  # flat top on a grid of 4e-5 A
 
 
+@pytest.mark.published("A4.4")
 def test_constant_from_a_no_load_test():
     """Fitzgerald, Kingsley & Umans, Electric Machinery, 6th ed., Ex. 7.9 p. 389 [S]: 0.22 V·s/rad, 61 W, 275 W.
 
@@ -61,6 +65,7 @@ def test_constant_from_a_no_load_test():
     assert 0.22 * speed * current - 61.0 == pytest.approx(275.0, abs=1.0)
 
 
+@pytest.mark.published("A4.5")
 def test_nominal_point():
     """Modelica Standard Library (BSD-3), DcPermanentMagnetData and DCPM_Start [S]: 95 V, 63.66 N·m, 1500 rpm."""
     K = 95.0 / (1425.0 * RPM)
@@ -73,6 +78,7 @@ def test_nominal_point():
     assert step.mechanical_time_constant_s == pytest.approx(0.0185055, abs=5e-8)
 
 
+@pytest.mark.published("A4.6")
 def test_nominal_point_with_all_losses():
     """Modelica Standard Library, DCMachines.DCPM_withLosses, documentation [S]: 94.5 V, 9100 W, 61.3 N·m."""
     hot = 0.03864 * resistance_factor(95.0, 20.0, 1.0 / 0.00392 - 20.0)  # coefficient stated at 20 °C
@@ -85,3 +91,11 @@ def test_nominal_point_with_all_losses():
     shaft = inner * 100.0 - stray_core_friction
     assert shaft == pytest.approx(9100.0, abs=0.5)
     assert shaft / speed == pytest.approx(61.3, abs=0.005)
+
+
+@pytest.mark.published("A6.7")
+def test_no_load_speed_from_a_speed_constant():
+    """Wikipedia, Motor constants, as carried by fxsolver.com [S]: 5700 rpm/V at 11.1 V turn at 63 270 rpm."""
+    K = 1.0 / to_si(5700.0, parse_unit("rpm/V", "speed constant"))
+    step = voltage_step(0.1, 0.0, K, 1e-6, 0.0, 11.1)
+    assert step.final_speed_rad_s / RPM == pytest.approx(63270.0, rel=1e-12)

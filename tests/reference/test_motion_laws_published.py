@@ -52,6 +52,7 @@ def rms_acceleration(phases):
     return math.sqrt(integrate(duration, squared) / duration.sum())
 
 
+@pytest.mark.published("A1.1", "A1.2", "A1.3", "A1.4", "A1.5", "A1.6", "A1.10")
 @pytest.mark.parametrize(("law", "columns", "speed", "acceleration", "jerk", "rms"), COEFFICIENTS)
 def test_coefficients(law, columns, speed, acceleration, jerk, rms):
     phases = plan_segment(law, start_speed=0.0, displacement=1.0, duration_s=1.0, **columns)
@@ -74,6 +75,7 @@ def test_coefficients_from_the_definition(law, speed, acceleration, rms):
     assert rms_acceleration(phases) == pytest.approx(rms, abs=5e-4)
 
 
+@pytest.mark.published("A1.7")
 def test_double_s_stage_lengths():
     """[B]: limits 5, 10, 30 give a stop in 0.8333 s with jerk ramps of 0.3333 s.
 
@@ -93,6 +95,7 @@ def test_double_s_stage_lengths():
     assert stop[2] == pytest.approx(0.3333, abs=5e-5)
 
 
+@pytest.mark.published("A1.8")
 def test_asymmetric_trapezoid():
     """[G]: 1.5 km in 100 s at 2.4 and 3.2 km/h/s asks for 74 km/h (73.92 by the formula)."""
     speed = 73.9231  # km/h; gives the shares below, of which the peak speed must be the same again
@@ -111,6 +114,7 @@ def test_asymmetric_trapezoid():
     assert rates == pytest.approx([2.4, 3.2], abs=1e-4)
 
 
+@pytest.mark.published("A1.9")
 def test_fastest_trapezoid():
     """[M]: 120° at 3 rad/s and 10 rad/s²."""
     phases = plan_segment(

@@ -14,6 +14,7 @@ from actuator_sizing.core.overload import overload_trip_time
 from actuator_sizing.core.windows import windowed_rms
 
 
+@pytest.mark.published("A11.1", "A11.2")
 @pytest.mark.parametrize(
     ("current", "preload", "minutes"),
     [(2.0, 0.0, 3.22446), (1.5, 0.0, 6.73345), (2.0, 0.9, 0.961726)],  # [T], digits as shown
@@ -32,6 +33,7 @@ def pulse(seconds):
     return np.array([seconds, 1000.0]), np.array([[9.0] * 3, [0.0] * 3])
 
 
+@pytest.mark.published("A11.3")
 def test_window_and_first_order_are_different_models():
     # [D]: 3 A, continuous limit 1.5 A, window 10 s and time constant 10 s.
     rms, _ = windowed_rms(*pulse(2.0), 10.0)

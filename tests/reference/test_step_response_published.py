@@ -13,6 +13,7 @@ def second_order(natural_frequency, damping):
     return voltage_step(2.0 * damping * natural_frequency * L, L, K, J, 0.0, K)
 
 
+@pytest.mark.published("A4.1")
 def test_small_motor_of_the_control_tutorials():
     """Control Tutorials for MATLAB and Simulink, Univ. of Michigan (CC BY-SA), DC motor speed [S, poles M]."""
     step = voltage_step(1.0, 0.5, 0.01, 0.01, 0.1, 1.0)
@@ -25,6 +26,7 @@ def test_small_motor_of_the_control_tutorials():
     assert step.overshoot_ratio == 0.0
 
 
+@pytest.mark.published("A4.9")
 def test_speed_transfer_function_of_a_lightly_damped_motor():
     """Franklin, Powell & Emami-Naeini, Feedback Control of Dynamic Systems, 6th ed., Ex. 3.17 [S, parameters M].
 
@@ -42,6 +44,7 @@ def test_speed_transfer_function_of_a_lightly_damped_motor():
     )
 
 
+@pytest.mark.published("A7.2")
 def test_magnitude_optimum():
     """Leonhard, Control of Electrical Drives; Schröder [M, D]: ``1/(1 + 2Ts + 2T²s²)`` overshoots by 4.32 %."""
     T = 0.003
@@ -51,6 +54,7 @@ def test_magnitude_optimum():
     assert step.peak_time_s / T == pytest.approx(6.28319, abs=5e-6)
 
 
+@pytest.mark.published("A7.5")
 def test_second_order_figures():
     """Nagoor Kani, Control Systems, Ex. 3.6 [I]: ``16/(s² + 4s + 16)``: 16.3 %, 0.907 s, settling estimate 2 s."""
     step = second_order(4.0, 0.5)

@@ -50,6 +50,7 @@ def rise_after(net, loss, time_s):
     return temperatures_after(net, loss, 0.0, [time_s]).winding_degc[0]
 
 
+@pytest.mark.published("A5.1")
 def test_two_readings_of_a_heating_curve():
     """Gupta & Singhal, Electric drives, Ex. 4.1 p. 49 [S]: 30 K at 40 min, 45 K at 80 min -> 57.71 min, 60 K."""
     net, loss = one_body(1.0, 57.71 * MINUTE), constant_resistance([MINUTE], [60.0])
@@ -58,6 +59,7 @@ def test_two_readings_of_a_heating_curve():
     assert rise_after(net, loss, 80 * MINUTE) == pytest.approx(45.0, abs=0.01)
 
 
+@pytest.mark.published("A5.17")
 def test_two_slopes_of_a_heating_curve():
     """Gupta & Singhal, Ex. 4.5 p. 52 [S]: 0.08 K/min at 20 K, 0.06 K/min at 28 K -> final rise 52 K, 400 min."""
     net, loss = one_body(1.0, 400.0 * MINUTE), constant_resistance([MINUTE], [52.0])
@@ -67,6 +69,7 @@ def test_two_slopes_of_a_heating_curve():
         assert np.diff(around)[0] == pytest.approx(slope, rel=1e-6)  # chord over 1 min of a 400 min curve
 
 
+@pytest.mark.published("A5.2")
 def test_machine_as_a_cylinder():
     """J. B. Gupta, Elements of Electric Drives, Ex. 45 p. 144 [S]: final rise 40 K, time constant 11427 s."""
     surface = math.pi * 0.65 * 1.0  # the curved side alone, as the printed time constant confirms
@@ -82,6 +85,7 @@ def test_machine_as_a_cylinder():
     )
 
 
+@pytest.mark.published("A5.3")
 def test_half_hour_rating_with_constant_loss():
     """Pillai, A First Course on Electrical Drives, Ex. 7.3 p. 155; Gupta Ex. 48 p. 146 [S]: 60.22 kW for 25 kW."""
     overload = 60.2219 / 25.0
@@ -92,6 +96,7 @@ def test_half_hour_rating_with_constant_loss():
     assert rise_after(net, short, 1800.0) == pytest.approx(1.9, abs=2e-5)
 
 
+@pytest.mark.published("A5.6", "A5.18")
 @pytest.mark.parametrize(
     ("rated", "short_time", "tau_min", "time_min", "accuracy", "source"),
     [
@@ -115,6 +120,7 @@ def test_short_time_rating_with_copper_loss_only(rated, short_time, tau_min, tim
     assert rise_after(net, rounded, time_min * MINUTE) == pytest.approx(1.0, abs=2.0 * accuracy / short_time)
 
 
+@pytest.mark.published("A5.13")
 @pytest.mark.parametrize(
     ("ratio", "factor"), [(0.1, 10.5083), (0.5, 2.54149), (1.0, 1.58198), (2.0, 1.15652)]
 )
@@ -124,6 +130,7 @@ def test_short_time_loss_factor(ratio, factor):
     assert rise_after(net, loss, 100.0 * ratio) == pytest.approx(1.0, abs=1e-5)
 
 
+@pytest.mark.published("A5.5")
 def test_periodic_state_between_two_load_levels():
     """Dubey, Ex. 4.1 p. 47 [S]: 10 s on, 20 s off, 60 s both; 15 K unloaded, minimum 40 K -> 49.9 and 104.4 K."""
     loss = constant_resistance([10.0, 20.0], [104.424, 15.0])
@@ -139,6 +146,7 @@ def two_node_armature():
     return ThermalNetwork(to_core, to_coolant, np.full(1, 20.0), np.full(1, 50.0))
 
 
+@pytest.mark.published("A5.11")
 def test_two_node_rises_at_nominal_loss():
     """Modelica Standard Library (BSD-3), DCMachines.DCPM_Cooling, documentation [S]: 27.5 K, 55 K, 80 °C."""
     state = periodic_state(two_node_armature(), constant_resistance([10.0], [500.0]), 25.0)
@@ -146,6 +154,7 @@ def test_two_node_rises_at_nominal_loss():
     assert state.winding_mean_degc[0] == pytest.approx(80.0, abs=1e-9)
 
 
+@pytest.mark.published("A5.12")
 def test_two_node_time_constants():
     """Same machine [I]: eigenvalues of its matrix, 0.714141 s and 4.23586 s, six digits."""
     net, loss = two_node_armature(), constant_resistance([1.0], [500.0])
@@ -155,6 +164,7 @@ def test_two_node_time_constants():
     assert -1.0 / at.slow == pytest.approx(4.23586, abs=1e-5)
 
 
+@pytest.mark.published("A5.7")
 @pytest.mark.parametrize(
     ("temperature", "factor", "accuracy"),
     [(75, 1.193, 5e-4), (100, 1.289, 5e-4), (125, 1.385, 5e-4), (130, 1.404, 1e-3)],
@@ -167,6 +177,7 @@ def test_copper_correction_table(temperature, factor, accuracy):
     assert resistance_factor(temperature, 25.0, 234.5) == pytest.approx(factor, abs=accuracy)
 
 
+@pytest.mark.published("A5.8")
 def test_temperature_by_resistance():
     """IEC 60034-1 resistance method [constants M, figures D]: 1.200 Ω at 22 °C, 1.560 Ω hot."""
     assert temperature_from_resistance(1.56 / 1.2, 22.0) == pytest.approx(99.1, abs=1e-9)
@@ -176,17 +187,20 @@ def test_temperature_by_resistance():
     assert temperature_from_resistance(1.56 / 1.2, 22.0, 234.5) == pytest.approx(98.95, abs=1e-9)
 
 
+@pytest.mark.published("A5.9")
 def test_thermal_classes():
     """IEC 60085 / IEC 62114 class table, as shown at tnlab.org [S]."""
     assert THERMAL_CLASSES == {"A": 105, "E": 120, "B": 130, "F": 155, "H": 180, "N": 200, "R": 220}
 
 
+@pytest.mark.published("A5.14")
 @pytest.mark.parametrize(("excess", "hours"), [(-10.0, 40000.0), (10.0, 10000.0), (25.0, 3535.53)])
 def test_life_halving(excess, hours):
     """Montsinger (1930) [M, D]: 20 000 h at class temperature."""
     assert 20000.0 * insulation_life_factor(155.0 + excess, 155.0) == pytest.approx(hours, abs=0.005)
 
 
+@pytest.mark.published("A5.15")
 def test_magnet_drop():
     """Ranges of NdFeB and SmCo5 as published, LIGO laboratory wiki and Modelica materials [I]."""
     assert magnet_factor(120.0, 20.0, -0.0011) == pytest.approx(0.89, abs=1e-12)
@@ -194,6 +208,7 @@ def test_magnet_drop():
     assert magnet_factor(150.0, 20.0, -0.00043) == pytest.approx(0.9441, abs=1e-12)
 
 
+@pytest.mark.published("A5.20")
 def test_altitude_lowers_the_permitted_rise():
     """IEC 60034-1 practice as recalled [M, D]: class F rise 105 K at 2500 m becomes 89.25 K."""
     assert 105.0 * altitude_factor(2500.0) == pytest.approx(89.25, abs=1e-9)

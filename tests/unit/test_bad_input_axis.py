@@ -7,6 +7,7 @@ from case_files import add_column, row_of, set_cell, small_case, write_folder
 from test_bad_input_cells import problems_of, the_only
 
 from actuator_sizing.case.reading import check_case
+from actuator_sizing.case.tables import CHECK_NAMES
 
 # -- axis ---------------------------------------------------------------------------------------------------
 
@@ -227,6 +228,20 @@ def test_unknown_check(tmp_path):
     assert (first.table, first.row, first.column, first.got) == ("limits", 2, "check", "'RMS curent'")
     assert first.remedy == "Did you mean 'RMS current'?"
     assert (second.row, second.column, second.got) == (3, "applies", "'maybe'")
+
+
+@pytest.mark.parametrize("word", ["no", "advice"])
+def test_limits_that_nothing_could_fail(tmp_path, word):
+    tables = small_case()
+    tables["limits"] = [["check", "applies"], *([title, word] for _, title in CHECK_NAMES)]
+    problem = the_only(problems_of(tmp_path, tables))
+    assert (problem.table, problem.column, problem.severity) == ("limits", "applies", "error")
+    assert (problem.got, problem.remedy) == (
+        "no check with 'yes'",
+        "Write yes for the checks that a set must pass.",
+    )
+    tables["limits"][1][1] = "yes"
+    assert problems_of(tmp_path / "one", tables) == ()
 
 
 @pytest.mark.parametrize(

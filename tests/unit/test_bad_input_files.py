@@ -56,6 +56,7 @@ def test_empty_folder_names_every_required_table(tmp_path):
     assert [problem.table for problem in problems] == ["axis", "duty_cycle", "motors", "drives"]
     assert all(problem.got == "no such table" for problem in problems)
     assert "motors.csv with at least the columns: motor, commutation" in problems[2].remedy
+    assert "rotor inertia (rotary motor), moving mass (linear motor)" in problems[2].remedy
     assert "catalog folder" in problems[2].allowed
 
 

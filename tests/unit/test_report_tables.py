@@ -15,7 +15,7 @@ from report_fixture import HOSTILE, build_comparison, build_hostile
 from actuator_sizing.report.candidates_csv import render_candidates
 from actuator_sizing.report.json_results import render_json
 from actuator_sizing.report.workbook import render_workbook
-from actuator_sizing.report.workbook.results_sheets import MOST_CANDIDATES
+from actuator_sizing.report.workbook.results_sheets import LEADING_CANDIDATES, MOST_CANDIDATES
 
 DAY = date(2025, 3, 4)
 
@@ -141,9 +141,11 @@ def test_a_long_list_of_candidates_goes_to_the_file_beside(comparison):
 
     long = pd.concat([comparison.candidates] * (MOST_CANDIDATES // len(comparison.candidates) + 1))
     changed = dataclasses.replace(comparison, candidates=long)
-    sheet = load(render_workbook(changed, DAY))["candidates"]
-    assert sheet.max_row == 2
-    assert "candidates.csv" in sheet["A2"].value
+    book = load(render_workbook(changed, DAY))
+    assert book["candidates"].max_row == 1 + LEADING_CANDIDATES
+    said = next(row for row in book["summary"].iter_rows(values_only=True) if row[0] == "candidates listed")
+    assert said[1] == len(long)
+    assert said[2] == "the first 500 in sheet candidates, all in candidates.csv"
     assert render_candidates(changed).count(b"\r\n") == len(long) + 1
 
 

@@ -1,6 +1,8 @@
 """Writing the report: whole or not at all, the same every time, dated as told."""
 
 import dataclasses
+import json
+import math
 import os
 from datetime import date
 
@@ -9,6 +11,7 @@ from report_fixture import build_comparison, build_hostile
 
 from actuator_sizing.errors import OutputError
 from actuator_sizing.report import render_report, write_report
+from actuator_sizing.sizing.results import FAILS
 
 DAY = date(2025, 3, 4)
 EXPECTED = {"sizing_report.html", "sizing_tables.xlsx", "results.json", "candidates.csv"}
@@ -75,3 +78,19 @@ def test_segments_that_are_counted_get_their_names(comparison):
     counted = dataclasses.replace(best, detail=dataclasses.replace(best.detail, cycle=cycle))
     detail = leading_detail(dataclasses.replace(comparison, sets=(counted,)))
     assert detail.cycle["segment"].tolist() == best.detail.cycle["segment"].tolist()
+
+
+def test_a_check_without_any_capacity_is_reported_in_every_format(comparison):
+    best = comparison.best
+    stuck = dataclasses.replace(
+        best.checks[0], demand=1.4, capacity=0.0, utilisation=math.inf, verdict=FAILS, working="1.4 / 0"
+    )
+    loser = dataclasses.replace(
+        best, checks=(stuck, *best.checks[1:]), governing_check=stuck.check, verdict=FAILS
+    )
+    files = render_report(dataclasses.replace(comparison, sets=(loser,)), date=DAY)
+    page = files["sizing_report.html"].decode()
+    assert "uses infinite of the capacity" not in page
+    assert "has no capacity left at all" in page
+    check = json.loads(files["results.json"])["sets"][0]["checks"][0]
+    assert (check["capacity"], check["utilisation"], check["verdict"]) == (0.0, None, "fails")

@@ -3,6 +3,7 @@
 import numpy as np
 import pytest
 
+from actuator_sizing.case.model import Limit
 from actuator_sizing.sizing import screening
 from actuator_sizing.sizing.comparison import compare
 from actuator_sizing.sizing.demand import build_demand
@@ -72,9 +73,7 @@ def screened(made, **options):
     checks, limits = active_checks(made.limits)
     binding = tuple(c for c, limit in zip(checks, limits, strict=True) if is_binding(c, limit))
     allowed = {c.key: made.limits[c.key].allowed_utilisation for c in binding}
-    return screening.screen(
-        made, demand, binding, allowed, "price", keep=10_000, losers=10, **options
-    )
+    return screening.screen(made, demand, binding, allowed, "price", keep=10_000, losers=10, **options)
 
 
 @pytest.mark.parametrize("seed", range(200))
@@ -93,7 +92,9 @@ def test_no_passing_set_is_lost(seed):
 
 def test_the_random_cases_have_winners_and_losers():
     # Without both, the test above would prove nothing.
-    passing = [int((brute_force(random_case(seed))[1].verdict != ORDER.index(FAILS)).sum()) for seed in range(30)]
+    passing = [
+        int((brute_force(random_case(seed))[1].verdict != ORDER.index(FAILS)).sum()) for seed in range(30)
+    ]
     assert sum(n > 0 for n in passing) > 10
     assert min(passing) < 50
 
@@ -120,6 +121,31 @@ def test_bounds_are_below_exact_utilisations():
             assert bound <= exact[tuple(row)] * (1.0 + 1e-9)
 
 
+def overloaded(limits=None):
+    """Passes but for the drive, whose continuous current is just below the RMS current of the cycle."""
+    segments = cycle({"law": "trapezoid", "displacement": 0.3, "duration_s": 0.5},
+                     {"law": "trapezoid", "displacement": -0.3, "duration_s": 0.5})  # fmt: skip
+    values = {"lead": 0.02, "moving mass": 40.0, "efficiency": 0.9}
+    rms = compare(case("ball screw", values, segments, gearheads=(DIRECT,))).best.quantities["current_rms_a"]
+    drive = dict(DRIVE, continuous_current_a=float(rms) / 1.02)
+    return compare(case("ball screw", values, segments, gearheads=(DIRECT,), drives=(drive,), limits=limits)).best
+
+
+def test_a_drive_overloaded_for_ever_is_told_by_how_much():
+    best = overloaded()
+    assert best.check("drive_peak_time").utilisation == np.inf
+    assert best.check("drive_peak_time").verdict == FAILS
+    assert best.governing_check == "drive_continuous_current"
+    # 1e-9: rounding; the factor is put in above.
+    assert best.check("drive_continuous_current").utilisation == pytest.approx(1.02, rel=1e-9)
+
+
+@pytest.mark.parametrize("applies", ["no", "advice"])
+def test_the_peak_time_governs_where_the_continuous_current_is_no_limit(applies):
+    best = overloaded({"drive_continuous_current": Limit("drive_continuous_current", applies, 1.0, 0.1)})
+    assert (best.verdict, best.governing_check) == (FAILS, "drive_peak_time")
+
+
 def test_a_comparison_lists_passing_sets_by_price_and_then_the_nearest_losers():
     made = random_case(0)
     comparison = compare(made)
@@ -127,4 +153,15 @@ def test_a_comparison_lists_passing_sets_by_price_and_then_the_nearest_losers():
     assert verdicts == sorted(verdicts, key=lambda v: v == FAILS)
     prices = [one.price for one in comparison.sets if one.verdict != FAILS]
     assert prices == sorted(prices)
-    assert comparison.rejections.rejected + comparison.rejections.confirmed_passing <= comparison.rejections.screened
+    assert (
+        comparison.rejections.rejected + comparison.rejections.confirmed_passing
+        <= comparison.rejections.screened
+    )
+
+
+@pytest.mark.parametrize("seed", range(12))
+def test_the_counts_of_losers_agree_with_the_list_of_candidates(seed):
+    comparison = compare(random_case(seed))
+    frame = comparison.candidates
+    listed = frame[frame["verdict"] == FAILS]["governing_check"].value_counts().to_dict()
+    assert listed == dict(comparison.rejections.by_check)

@@ -7,6 +7,7 @@ from datetime import date
 from typing import TYPE_CHECKING
 
 from actuator_sizing.report.document.blocks import Document, Section
+from actuator_sizing.report.document.changes import changes_section
 from actuator_sizing.report.document.checks import checks_section, working_section
 from actuator_sizing.report.document.closing import (
     cautions_section,
@@ -21,12 +22,15 @@ from actuator_sizing.report.document.verdict import cover_facts, verdict_section
 from actuator_sizing.report.text import clean, option
 
 if TYPE_CHECKING:
+    from actuator_sizing.report.revision import Revision
     from actuator_sizing.sizing.results import Comparison
 
 __all__ = ["prepare_document"]
 
 
-def prepare_document(comparison: Comparison, day: date, figures: Iterable[str] = ()) -> Document:
+def prepare_document(
+    comparison: Comparison, day: date, figures: Iterable[str] = (), revision: Revision | None = None
+) -> Document:
     """Turn a comparison into a document in the order in which a reviewer thinks.
 
     Parameters
@@ -37,13 +41,18 @@ def prepare_document(comparison: Comparison, day: date, figures: Iterable[str] =
         Date of the report.
     figures : iterable of str
         Keys of the figures that were drawn; only these get a place.
+    revision : Revision or None
+        What changed since an earlier comparison.
     """
     case = comparison.case
     drawn = tuple(figures)
     sentence, state = verdict_sentence(comparison)
     title = option(case, "title", clean(case.name))
-    revision = option(case, "revision")
-    sections: list[Section] = [verdict_section(comparison), comparison_section(comparison, drawn)]
+    issue = option(case, "revision")
+    sections: list[Section] = [verdict_section(comparison)]
+    if revision is not None:
+        sections.append(changes_section(revision))
+    sections.append(comparison_section(comparison, drawn))
     if comparison.sets:
         best = comparison.sets[0]
         sections += [checks_section(best), working_section(best)]
@@ -54,7 +63,7 @@ def prepare_document(comparison: Comparison, day: date, figures: Iterable[str] =
     if comparison.sets:
         sections.append(commissioning_section(comparison))
     sections += [cautions_section(), sign_off_section(comparison)]
-    running = f"{clean(title, 60)}, revision {clean(revision, 20)}" if revision else clean(title, 60)
+    running = f"{clean(title, 60)}, revision {clean(issue, 20)}" if issue else clean(title, 60)
     return Document(
         title=title,
         subtitle="Actuator sizing report",

@@ -17,6 +17,7 @@ if TYPE_CHECKING:
 
 #: Checks whose working is shown: the governing one, those that fail, and the nearest to their limit.
 MOST_WORKINGS = 4
+_LONGEST_BAR = 10.0
 _GROUPS = {"motor": "Motor", "drive": "Drive", "gearhead": "Gearhead", "axis": "Axis"}
 
 _COLUMNS = (
@@ -54,7 +55,7 @@ def _check_row(check: CheckResult) -> tuple[Cell, ...]:
         note += f" Missing: {', '.join(clean(item) for item in check.missing)}."
     share, verdict = None, shown_verdict(check)
     if check.utilisation is not None and check.allowed > 0.0:
-        share = check.utilisation / check.allowed
+        share = min(check.utilisation / check.allowed, _LONGEST_BAR)  # infinite where there is no capacity
     text = percent(check.utilisation, check.allowed)
     allowed = "" if check.allowed == 1.0 else f"{percent(check.allowed)} allowed"
     where = "whole cycle" if check.at_time_s is None else f"{quantity(check.at_time_s, 's')}"

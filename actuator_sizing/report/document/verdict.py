@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from datetime import date
 from typing import TYPE_CHECKING
 
@@ -54,6 +55,8 @@ def shown_verdict(check: CheckResult) -> str:
 
 def describe_check(check: CheckResult) -> str:
     """Say how far a check is used, and what is left."""
+    if check.utilisation is not None and math.isinf(check.utilisation):
+        return f"{check.title} has no capacity left at all"
     use = f"{percent(check.utilisation, check.allowed)} of the capacity"
     if check.allowed != 1.0:
         use += f" ({percent(check.allowed)} allowed)"

@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Any
 
 from actuator_sizing.report.document.verdict import cover_facts, governing, shown_verdict, verdict_sentence
 from actuator_sizing.report.headings import heading, name_and_unit
-from actuator_sizing.report.workbook.writer import Field, Sheets
+from actuator_sizing.report.workbook.writer import Field, Sheets, row_height
 from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
 
 if TYPE_CHECKING:
@@ -16,8 +16,8 @@ if TYPE_CHECKING:
 
     from actuator_sizing.sizing.results import CheckResult, Comparison
 
-#: A longer list of candidates is left to the file beside the workbook.
-MOST_CANDIDATES = 20_000
+#: Of a list with more candidates than the first number, the workbook shows the second; the file beside has all.
+MOST_CANDIDATES, LEADING_CANDIDATES = 20_000, 500
 _VERDICT_COLORS = {
     PASSES: ("#DDEFE6", "#00583F"),
     LOW_RESERVE: ("#FBEBCB", "#7A4F00"),
@@ -36,6 +36,13 @@ def add_summary(sheets: Sheets, comparison: Comparison, day: date) -> None:
     counts = comparison.rejections
     for name in ("sets_total", "incompatible", "rejected", "evaluated", "confirmed_passing"):
         rows.append((name.replace("_", " "), getattr(counts, name), "sets", name))
+    total = len(comparison.candidates)
+    listed = (
+        "all in sheet candidates"
+        if shown_candidates(comparison) == total
+        else (f"the first {shown_candidates(comparison)} in sheet candidates, all in candidates.csv")
+    )
+    rows.append(("candidates listed", total, listed, "candidates_listed"))
     if comparison.sets:
         best = comparison.sets[0]
         rows += [
@@ -63,23 +70,25 @@ def add_summary(sheets: Sheets, comparison: Comparison, day: date) -> None:
         if isinstance(value, str):
             wrapped = sheets.format(text_wrap=True)
             sheets.write(sheet, index, 1, Field("value"), value)
-            sheet.set_row(index, 15 * max(1, math.ceil(min(len(value), 800) / 46)), wrapped)
+            sheet.set_row(index, row_height(len(value), 46), wrapped)
         if name:
             sheets.book.define_name(name, f"=summary!$B${index + 1}")
 
 
 def add_candidates(sheets: Sheets, comparison: Comparison) -> None:
-    """Write one row for each listed candidate, or say where the long list is."""
-    table = comparison.candidates
-    if len(table) > MOST_CANDIDATES:
-        note = f"{len(table)} candidates are listed in candidates.csv beside this workbook"
-        sheets.add_table("candidates", (Field("note"),), [(note,)])
-        return
+    """Write one row for each listed candidate, best first; of a very long list only the leading ones."""
+    table = comparison.candidates.head(shown_candidates(comparison))
     fields = [_candidate_field(name, table[name].dtype.kind) for name in map(str, table.columns)]
     rows = table.astype(object).where(table.notna(), None).to_numpy().tolist()
     sheet = sheets.add_table("candidates", fields, rows)
     if "verdict" in table and len(table):
         _color_verdicts(sheets, sheet, list(table.columns).index("verdict"), len(table))
+
+
+def shown_candidates(comparison: Comparison) -> int:
+    """Count the candidates that the workbook shows."""
+    total = len(comparison.candidates)
+    return total if total <= MOST_CANDIDATES else LEADING_CANDIDATES
 
 
 def _candidate_field(name: str, kind: str) -> Field:

@@ -78,9 +78,13 @@ class Sheets:
             sheet.write_string(0, column, field.title, head)
         widths = [min(max(len(word) for word in field.title.split()) + 2, _WIDEST) for field in fields]
         for index, values in enumerate(rows, 1):
+            longest = 0
             for column, (field, value) in enumerate(zip(fields, values, strict=True)):
                 shown = self.write(sheet, index, column, field, value)
                 widths[column] = max(widths[column], min(shown + 2, _WIDEST))
+                longest = max(longest, shown)
+            if longest > _WIDEST:
+                sheet.set_row(index, row_height(longest, _WIDEST))
         for column, width in enumerate(widths):
             sheet.set_column(column, column, max(width, 8))
         self.set_head_height(sheet, fields, [max(width, 8) for width in widths])
@@ -132,6 +136,11 @@ class Sheets:
         sheet.set_margins(left=0.4, right=0.4, top=0.7, bottom=0.6)
         sheet.set_header(f"&L&10{name}")
         sheet.set_footer("&R&9&P / &N")
+
+
+def row_height(letters: int, width: int) -> float:
+    """Height of a row for a text that wraps in a column; a very long text is not shown whole. [pt]"""
+    return 13.5 * min(math.ceil(1.1 * letters / width), 12) + 2.0
 
 
 def _bar() -> dict[str, Any]:

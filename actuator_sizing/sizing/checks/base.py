@@ -118,6 +118,8 @@ class Check:
         Sets → mask of the sets that the check concerns.
     is_advice : bool
         Never fails unless the user makes it a limit.
+    yields_to : str
+        Key of the check that fails too wherever this one is infinite, and says by how much.
     """
 
     key: str
@@ -133,6 +135,7 @@ class Check:
     applies: Callable[[Sets], NDArray[np.bool_]] = _always
     linear_unit: str = ""
     is_advice: bool = False
+    yields_to: str = ""
 
 
 def digits(value: float) -> str:

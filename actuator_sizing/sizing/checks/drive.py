@@ -89,6 +89,9 @@ DRIVE_PEAK_TIME = Check(
     needs=(_CONTINUOUS, _PEAK, Need("drives", "peak_time_s", "peak time")),
     measure=_time_measure,
     working=_time_working,
+    # The accumulator grows for ever when the mean of i² exceeds I_cont²; the largest windowed mean is never below
+    # the mean of the cycle, so the continuous current fails as well, with a number.
+    yields_to="drive_continuous_current",
 )
 
 

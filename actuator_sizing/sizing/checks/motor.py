@@ -185,7 +185,9 @@ def _temperature_measure(sets: Sets) -> Measure:
     ambient = sets.surroundings.ambient_degc
     runaway = sets.pairs.thermal_known & ~sets.pairs.has_equilibrium
     rise = np.where(runaway, np.inf, sets.pairs.winding_max_degc - ambient)
-    return Measure(rise, sets.motors.winding_limit_degc - ambient, sets.pairs.winding_max_at_s)
+    # In air hotter than the limit no rise at all is permitted: the ratio must not turn negative and pass.
+    permitted = np.maximum(sets.motors.winding_limit_degc - ambient, 0.0)
+    return Measure(rise, permitted, sets.pairs.winding_max_at_s)
 
 
 def _temperature_bound(block: Block) -> FloatArray:
@@ -198,6 +200,8 @@ def _temperature_working(sets: Sets, i: int) -> str:
     if not sets.pairs.has_equilibrium[i]:
         return "no equilibrium: each cycle leaves the winding hotter than the last"
     peak = sets.pairs.winding_max_degc[i]
+    if limit <= ambient:
+        return f"the air at {digits(ambient)} °C leaves no rise up to the limit of {digits(limit)} °C"
     mean = sets.pairs.housing_mean_degc[i]
     housing = "one thermal body" if np.isnan(mean) else f"housing mean {digits(mean)} °C"
     return (

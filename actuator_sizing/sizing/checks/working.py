@@ -161,6 +161,12 @@ def voltage_limit_working(sets: Sets, i: int, at: Instant) -> str:
     under = b**2 - a * (emf**2 - U**2)
     if under < 0.0 or (motoring and emf >= U):
         return f"K ω = {digits(K)} · {digits(omega)} = {digits(emf)} V uses up U = {digits(U)} V: no torque is left"
+    least = (b - under**0.5) / a
+    if emf >= U and abs(at.current) < least:
+        return (
+            f"K ω = {digits(K)} · {digits(omega)} = {digits(emf)} V is more than U = {digits(U)} V: at this speed "
+            f"a braking current of at least {digits(least)} A is needed to stay within the voltage"
+        )
     current = (-b + under**0.5) / a if motoring else (b + under**0.5) / a
     sign = "−" if motoring else ""
     torque = K * current * (1.0 - sat * current**2)

@@ -1,0 +1,131 @@
+"""Cases at the edge of the physics: what fails must be said to fail, and a bound must be a bound."""
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+
+from actuator_sizing.core.moments import mean_products, support_points
+from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
+from actuator_sizing.sizing.checks.motor import VOLTAGE
+from actuator_sizing.sizing.demand import build_demand
+from actuator_sizing.sizing.judging import ORDER, active_checks, judge_sets
+from actuator_sizing.sizing.results import FAILS
+from actuator_sizing.sizing.screening import _voltage_points as voltage_points
+from actuator_sizing.sizing.shortlist import evaluate_sets
+from tests.made_cases import DIRECT, GEARHEAD, MOTOR, SURROUNDINGS, case, cycle
+
+
+def judged(made):
+    """Evaluated sets of all combinations and their verdicts."""
+    sizes = (len(made.motor_parameters), len(made.gearhead_parameters), len(made.drive_parameters))
+    index = np.stack(np.meshgrid(*(np.arange(n) for n in sizes), indexing="ij"), axis=-1).reshape(-1, 3)
+    sets = evaluate_sets(made, build_demand(made), index)
+    checks, limits = active_checks(made.limits)
+    return sets, judge_sets(sets, checks, limits)
+
+
+def column(verdicts, key):
+    return [check.key for check in verdicts.checks].index(key)
+
+
+def table(**options):
+    """A rotary table that turns a quarter and rests."""
+    return case(
+        "rotary load",
+        {"load inertia": 0.02},
+        cycle(
+            {"law": "cycloidal", "displacement": 1.5, "duration_s": 0.6},
+            {"law": "dwell", "duration_s": 0.8},
+        ),
+        gearheads=[GEARHEAD],
+        **options,
+    )
+
+
+def test_an_ambient_above_the_winding_limit_fails_the_winding_temperature():
+    made = table(surroundings=replace(SURROUNDINGS, ambient_degc=160.0))
+    _, verdicts = judged(made)
+    at = column(verdicts, "winding_temperature")
+    assert ORDER[verdicts.codes[0, at]] == FAILS
+    assert np.isinf(verdicts.utilisation[0, at])
+
+
+def block_of(made):
+    """Every gearhead against every motor, as the screening sees them."""
+    demand = build_demand(made)
+    gearheads = GearheadSide.of(
+        made.gearhead_parameters,
+        mean_products(demand.duration_s, demand.functions),
+        support_points(demand.functions, demand.flow),
+        voltage_points(demand),
+    )
+    motors = MotorSide.of(made.motor_parameters, made.surroundings)
+    return Block(demand, made.surroundings, 10.0, motors, gearheads)
+
+
+def test_the_bound_of_the_voltage_holds_for_a_saturated_motor_that_brakes():
+    # Lowering a heavy load fast, never lifting it: at top speed the motor brakes with much current.
+    made = case(
+        "belt",
+        {"pulley diameter": 0.06, "moving mass": 30.0, "inclination": -np.pi / 2},
+        cycle(
+            {"law": "speed ramp", "end_speed": 2.4, "duration_s": 2.0},
+            {"law": "constant speed", "end_speed": 2.4, "duration_s": 0.5},
+            {"law": "speed ramp", "end_speed": 0.0, "duration_s": 0.2},
+            {"law": "dwell", "duration_s": 3.0, "brake_closed": True},
+        ),
+        motors=[
+            {**MOTOR, "peak_torque_nm": 6.1, "resistance_ohm": 0.4, "pole_pairs": np.nan, "inductance_h": 0.0}
+        ],
+        gearheads=[{**GEARHEAD, "ratio": 5.0}],
+    )
+    sets, verdicts = judged(made)
+    bound = VOLTAGE.bound(block_of(made))[0, 0]
+    exact = verdicts.utilisation[0, column(verdicts, "voltage")]
+    # 1e-9: rounding of two orders of summation, as the screening allows.
+    assert bound <= exact * (1.0 + 1e-9)
+    assert sets.pairs.voltage_peak_v[0] > 0.0
+
+
+def test_braking_above_the_no_load_speed_is_beyond_the_speed_torque_plane():
+    # The load overhauls the motor at a speed whose EMF alone exceeds the voltage, with hardly any torque.
+    made = case(
+        "rotary load",
+        {"load inertia": 0.01},
+        cycle(
+            {"law": "speed ramp", "end_speed": 70.0, "duration_s": 4.0, "process_effort": -8.0},
+            {"law": "constant speed", "end_speed": 70.0, "duration_s": 0.5, "process_effort": -8.0},
+            {"law": "speed ramp", "end_speed": 0.0, "duration_s": 4.0, "process_effort": -8.0},
+        ),
+        motors=[{**MOTOR, "torque_constant_nm_per_a": 1.2}],
+        gearheads=[{**GEARHEAD, "ratio": 5.0}],
+    )
+    sets, verdicts = judged(made)
+    assert sets.pairs.torque_peak_nm[0] < 0.25 * MOTOR["peak_torque_nm"]
+    assert sets.pairs.voltage_peak_without_inductance_v[0] > sets.pairs.voltage_available_v[0]
+    at = column(verdicts, "speed_torque")
+    assert ORDER[verdicts.codes[0, at]] == FAILS
+    assert "braking current of at least" in verdicts.checks[at].working(sets, 0)
+
+
+def test_a_long_overload_is_not_smoothed_out_where_only_the_total_thermal_resistance_is_known():
+    # 60 s at 1.7 times the continuous torque, then 180 s at rest: the RMS is below the rating, the winding is not.
+    stated = {**MOTOR, "mass_kg": 2.6, "magnet_coefficient_per_k": 0.0, "continuous_ambient_degc": 35.0,
+              "thermal_resistance_winding_k_w": 0.5, "winding_time_constant_s": 40.0}  # fmt: skip
+    total = {**stated, "thermal_resistance_winding_k_w": 1.6, "thermal_resistance_housing_k_w": np.nan}
+    made = case(
+        "rotary load",
+        {"load inertia": 1e-4},
+        cycle(
+            {"law": "dwell", "duration_s": 60.0, "process_effort": 5.6},
+            {"law": "dwell", "duration_s": 180.0},
+        ),
+        motors=[stated, total],
+        gearheads=[DIRECT],
+    )
+    sets, verdicts = judged(made)
+    at = column(verdicts, "winding_temperature")
+    assert [ORDER[code] for code in verdicts.codes[:, at]] == [FAILS, FAILS]
+    # Copper of 8 % of the mass is 80 J/K, which is what the full sheet says too (40 s over 0.5 K/W).
+    assert sets.pairs.winding_max_degc[1] == pytest.approx(sets.pairs.winding_max_degc[0], rel=0.01)
