@@ -63,10 +63,11 @@ class Plant:
 
     def __post_init__(self) -> None:
         """Refuse what has no solution."""
-        for name in ("resistance_ohm", "inductance_h", "torque_constant_nm_per_a", "motor_inertia_kg_m2"):
+        for name in ("resistance_ohm", "inductance_h", "motor_inertia_kg_m2"):
             _need(name, getattr(self, name), getattr(self, name) > 0.0, "a finite number > 0")
         for name in ("load_inertia_kg_m2", "damping_nm_s", "motor_viscous_nm_s", "load_viscous_nm_s",
-                     "motor_coulomb_nm", "load_coulomb_nm", "backlash_rad", "reactance_ohm_s"):  # fmt: skip
+                     "motor_coulomb_nm", "load_coulomb_nm", "backlash_rad", "reactance_ohm_s",
+                     "torque_constant_nm_per_a"):  # fmt: skip
             _need(name, getattr(self, name), getattr(self, name) >= 0.0, "a finite number ≥ 0")
         if not math.isnan(self.stiffness_nm_per_rad):
             _need("stiffness_nm_per_rad", self.stiffness_nm_per_rad, self.stiffness_nm_per_rad > 0.0,

@@ -222,8 +222,12 @@ class LinearCascade:
         ndarray of complex, shape (m,)
             Closed-loop response, filters of the set point left out. [-]
         """
-        A, B, C = _system(self.plant, self.settings, loop)
+        A, B, C = self.system(loop)
         return transfer(A, B, C, frequency_rad_s, step_s=self.settings.sample_time_s)
+
+    def system(self, loop: str) -> tuple[FloatArray, FloatArray, FloatArray]:
+        """Matrices of one loop closed, those outside it open: set point to measured value."""
+        return _system(self.plant, self.settings, loop)
 
     def open(self, loop: str, frequency_rad_s: FloatArray) -> ComplexArray:
         """Open-loop response ``T/(1 − T)`` of one loop; arguments as for `closed`."""
