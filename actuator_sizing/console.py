@@ -130,7 +130,8 @@ def verdict_sentence(comparison: Comparison) -> str:
     if governing is None or governing.utilisation is None:
         how = "nothing could be checked"
     elif math.isinf(governing.utilisation):
-        how = f"{governing.title} governs, beyond any limit ({clean(governing.working)})"
+        where = f", in segment {clean(governing.segment)}" if governing.segment else ""
+        how = f"{governing.title} governs, with no capacity left at all{where}; the report shows the working"
     else:
         how = f"{governing.title} governs at {percent(governing.utilisation, governing.allowed)}"
         if governing.allowed != 1.0:

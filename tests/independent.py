@@ -36,7 +36,9 @@ class PointModel:
         _, v, a, _ = phase.kinematics(np.atleast_1d(np.asarray(tau, dtype=float)))
         mass = mech.moving_mass + segment.payload
         weight = mass * G
-        guide = mech.guide_friction_force + mech.guide_friction_coefficient * weight * np.cos(mech.inclination)
+        guide = mech.guide_friction_force + mech.guide_friction_coefficient * weight * np.cos(
+            mech.inclination
+        )
         F = (
             mass * a
             + weight * np.sin(mech.inclination)

@@ -120,7 +120,8 @@ class Case:
     drive_parameters: DriveParameters
     limits: Mapping[str, Limit]
     tolerances: tuple[Tolerance, ...]
-    options: Mapping[str, float | str | None]  # by name, e.g. "rank by"; what mechanism and surroundings do not hold
+    #: by name, e.g. "rank by": what mechanism and surroundings do not hold
+    options: Mapping[str, float | str | None]
     entries: tuple[Entry, ...]  # axis, duty cycle and limits; catalog entries come from `catalog_entries`
     problems: tuple[Problem, ...]  # warnings and notes only; errors never make a Case
     fingerprint: str
@@ -129,6 +130,29 @@ class Case:
     def cycle_duration_s(self) -> float:
         """Duration of one cycle. [s]."""
         return sum(segment.duration_s for segment in self.segments)
+
+    def number(self, option: str) -> float:
+        """Value of an option that is a number and has a default.
+
+        Parameters
+        ----------
+        option : str
+            Name in the `axis` table.
+
+        Returns
+        -------
+        float
+            In SI. [-]
+
+        Raises
+        ------
+        TypeError
+            If the option is a word, or has neither value nor default.
+        """
+        value = self.options[option]
+        if not isinstance(value, int | float):
+            raise TypeError(f"option '{option}' is not a number but {value!r}")
+        return float(value)
 
     def catalog_entries(self, table: str, index: int) -> tuple[Entry, ...]:
         """Every known value of one catalog row, as entered and as understood.

@@ -56,7 +56,7 @@ def lobatto(count: int = NODES) -> tuple[FloatArray, FloatArray]:
 @lru_cache(maxsize=8)
 def to_series(count: int = NODES) -> FloatArray:
     """Matrix from node values to Legendre coefficients, shape (count, count). [-]"""
-    return np.linalg.inv(legendre.legvander(lobatto(count)[0], count - 1))
+    return np.asarray(np.linalg.inv(legendre.legvander(lobatto(count)[0], count - 1)), dtype=float)
 
 
 @lru_cache(maxsize=8)
@@ -249,8 +249,8 @@ def _newton_extremum(series: FloatArray, start: FloatArray, grid: FloatArray) ->
 @lru_cache(maxsize=8)
 def _derivative_matrices(count: int) -> tuple[FloatArray, FloatArray]:
     """From Legendre coefficients (in rows) to those of the first and second derivative."""
-    first = legendre.legder(np.eye(count))
-    second = legendre.legder(first)
+    first = np.asarray(legendre.legder(np.eye(count)), dtype=float)
+    second = np.asarray(legendre.legder(first), dtype=float)
     return first.T, second.T
 
 

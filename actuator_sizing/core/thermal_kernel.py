@@ -203,9 +203,9 @@ def sub_steps(network: ThermalNetwork, loss: HeatLoss) -> Steps:
     winding_rate = speed * np.where(two, 0.0, 1.0 / C_1)
     housing_rate = speed * np.where(two, 1.0 / C_2, 0.0)
     piece = np.arange(len(duration))
-    nonlinear = loss.magnet_coefficient_per_k != 0.0
+    constant = np.where(two, network.housing_resistance_k_w * C_2, network.winding_resistance_k_w * C_1)
+    nonlinear = (loss.magnet_coefficient_per_k != 0.0) & (constant > 0.0)  # not known: nothing to divide by
     if nonlinear.any():
-        constant = np.where(two, network.housing_resistance_k_w * C_2, network.winding_resistance_k_w * C_1)
         step = float(constant[nonlinear].min()) / _STEP_PARTS
         counts = np.clip(np.ceil(duration / step), 1, _MOST_STEPS_PER_PIECE).astype(int)
         counts = np.where((copper > 0.0).any(axis=1), counts, 1)

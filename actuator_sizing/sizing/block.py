@@ -209,4 +209,4 @@ class Block:
         left = np.subtract(1.0, gain * self.mean_square)
         # A feedback of one or more is runaway: the rise becomes immense.
         np.divide(rise, np.maximum(left, _NOTHING, out=left), out=rise)
-        return np.subtract(rise, _TEMPERATURE_SLACK_K, out=rise)
+        return np.asarray(np.subtract(rise, _TEMPERATURE_SLACK_K, out=rise))

@@ -75,7 +75,7 @@ def compare(
         raise InputError(
             [Problem("axis", None, "rank by", ranked_by, " | ".join(RANKINGS), "Choose one of these.")]
         )
-    wanted = int(detail or case.options["sets to detail"])  # type: ignore[arg-type]
+    wanted = int(detail or case.number("sets to detail"))
     demand = build_demand(case)
     checks, limits = active_checks(case.limits)
     binding = tuple(c for c, limit in zip(checks, limits, strict=True) if is_binding(c, limit))

@@ -30,7 +30,7 @@ from actuator_sizing.core.thermal import (
     subpiece_means,
 )
 from actuator_sizing.sizing.demand import Demand
-from actuator_sizing.sizing.thermal_data import thermal_network
+from actuator_sizing.sizing.thermal_data import fastest_time_constant, thermal_network
 
 FloatArray = NDArray[np.float64]
 
@@ -253,7 +253,10 @@ def _evaluate_chunk(
         torque_min_nm=-largest(-T)[0],
         torque_rms_nm=np.sqrt(demand.mean(T**2)),
         shaft_torque_peak_nm=largest_magnitude(c.shaft_torque_nm)[0],
-        current_peak_a=largest_magnitude(i)[0],
+        # From the largest torque, since current rises with it: near saturation i itself is hard to interpolate.
+        current_peak_a=current_of_torque(
+            torque_peak, judged.torque_constant_nm_per_a, judged.saturation_per_a2
+        ),
         current_rms_a=np.sqrt(demand.mean(i**2)),
         speed_peak_rad_s=speed_peak,
         speed_peak_at_s=demand.instant(speed_piece, speed_position),
@@ -323,7 +326,7 @@ def heat_loss(demand: Demand, motors: MotorParameters, judged: JudgedMotor, c: P
     cold = (judged.torque_constant_nm_per_a / motors.torque_constant_nm_per_a)[:, None, None]
     copper = _column(motors.resistance_ohm) * (c.current_a * cold) ** 2
     by_speed = speed_loss(motors, c.motor_speed_rad_s)
-    tau = motors.winding_time_constant_s
+    tau = fastest_time_constant(motors)
     shortest = float(np.nanmin(tau)) if np.isfinite(tau).any() else np.inf
     counts = subpiece_counts(demand.duration_s, copper, shortest)
     return HeatLoss(

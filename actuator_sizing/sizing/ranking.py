@@ -50,7 +50,7 @@ def ranking_key(case: Case, sets: Sets, verdicts: Verdicts, index: IndexArray, r
     else:
         name = "price" if ranked_by == "price" else "mass_kg"
         key = sum(getattr(part, name) for part in (sets.motors, sets.gearheads, sets.drives))
-    return np.nan_to_num(np.asarray(key, dtype=float), nan=np.inf)
+    return np.asarray(np.nan_to_num(np.asarray(key, dtype=float), nan=np.inf))
 
 
 def nearest_drives(case: Case, demand: Demand, pairs: IndexArray) -> IndexArray:

@@ -89,9 +89,9 @@ def fits_axis(case: Case) -> tuple[NDArray[np.intp], NDArray[np.intp]]:
         voltage is far below the bus, since its insulation is not made for it. [-]
     """
     wants_linear = case.mechanism.drives_linear_motor
-    allowed = case.options["largest bus over nominal voltage"]
+    allowed = case.number("largest bus over nominal voltage")
     with np.errstate(invalid="ignore"):
-        overfed = case.surroundings.bus_nominal_v > allowed * case.motor_parameters.nominal_voltage_v  # type: ignore[operator]
+        overfed = case.surroundings.bus_nominal_v > allowed * case.motor_parameters.nominal_voltage_v
     motors = np.flatnonzero((case.motor_parameters.is_linear == wants_linear) & ~overfed)
     gearheads = np.arange(len(case.gearhead_parameters))
     if wants_linear:
@@ -278,7 +278,7 @@ class _Context:
 
     @property
     def recommended_inertia_ratio(self) -> float:
-        return float(self.case.options["recommended inertia ratio"])  # type: ignore[arg-type]
+        return self.case.number("recommended inertia ratio")
 
 
 class _DriveSide:
@@ -460,4 +460,4 @@ def _key(
     name = "price" if context.key == "price" else "mass_kg"
     parts = (case.motor_parameters, case.gearhead_parameters, case.drive_parameters)
     total = sum(getattr(part, name)[index] for part, index in zip(parts, (m, g, d), strict=True))
-    return np.nan_to_num(np.asarray(total), nan=np.finfo(float).max)
+    return np.asarray(np.nan_to_num(np.asarray(total), nan=np.finfo(float).max))

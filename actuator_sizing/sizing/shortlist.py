@@ -78,7 +78,7 @@ def evaluate_sets(
     return Sets(
         demand=demand,
         surroundings=case.surroundings,
-        recommended_inertia_ratio=float(case.options["recommended inertia ratio"]),  # type: ignore[arg-type]
+        recommended_inertia_ratio=case.number("recommended inertia ratio"),
         motors=case.motor_parameters.take(index[:, 0]),
         gearheads=case.gearhead_parameters.take(index[:, 1]),
         drives=case.drive_parameters.take(index[:, 2]),

@@ -70,6 +70,16 @@ def has_divided_resistance(motors: MotorParameters) -> NDArray[np.bool_]:
     return np.asarray(one & both & np.isfinite(_capacities(motors)[0]))
 
 
+def fastest_time_constant(motors: MotorParameters) -> FloatArray:
+    """Time constant of the winding, from the mass or of the whole motor where it is not stated, shape (n,). [s]"""
+    stated = np.where(
+        np.isnan(motors.winding_time_constant_s),
+        _capacities(motors)[0] * motors.thermal_resistance_winding_k_w,
+        motors.winding_time_constant_s,
+    )
+    return np.asarray(np.fmin(stated, motors.housing_time_constant_s))
+
+
 def _capacities(motors: MotorParameters) -> tuple[FloatArray, FloatArray]:
     """Heat capacity of the copper and of the rest from the mass; NaN where the mass is not known. [J/K]"""
     mass = np.where(motors.mass_kg > 0.0, motors.mass_kg, np.nan)

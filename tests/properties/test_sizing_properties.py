@@ -105,7 +105,9 @@ def test_energy_taken_at_the_terminals_is_work_and_losses(a):
     process = a["process"] * a["stroke"]
     payload_lifted = a["payload"] * 9.80665 * np.sin(a["inclination"]) * a["stroke"]  # it stays up there
     bearings = integrate(t, bearing)
-    account = copper + motor_friction + drag + screw_loss + gear_loss + guide + process + payload_lifted + bearings
+    account = (
+        copper + motor_friction + drag + screw_loss + gear_loss + guide + process + payload_lifted + bearings
+    )
     scale = result.energy_terminals_motoring_j + result.energy_terminals_regenerated_j
     # 1e-9 of the energy that flows: the promised accuracy of every integral.
     assert net[0] == pytest.approx(account[0], abs=1e-9 * scale[0] + 1e-12)
@@ -171,7 +173,9 @@ def test_a_winding_with_more_turns_needs_the_same_heat(a, turns):
 
 
 def test_direct_drive_is_a_gearhead_of_ratio_one_without_losses():
-    segments = cycle({"law": "cycloidal", "displacement": 1.0, "duration_s": 0.5}, {"law": "dwell", "duration_s": 0.2})
+    segments = cycle(
+        {"law": "cycloidal", "displacement": 1.0, "duration_s": 0.5}, {"law": "dwell", "duration_s": 0.2}
+    )
     made = case("rotary load", {"load inertia": 0.01, "friction torque": 0.3}, segments, gearheads=[DIRECT])
     demand, result = evaluated(made)
     # Kinetic energy of load and rotor comes back, friction does not: shaft energy is friction work.

@@ -56,6 +56,21 @@ def set_axis(case, quantity, value):
 # -- compare -----------------------------------------------------------------------------------------
 
 
+def test_a_check_without_any_capacity_is_told_in_one_line(case, run):
+    set_axis(case, "nominal bus voltage", 12)
+    set_axis(case, "minimum bus voltage", 10)
+    set_axis(case, "maximum bus voltage", 14)
+    rewrite(case, "limits", lambda rows: [[r[0], "no", *r[2:]] if r[0] == "drive bus voltage range" else r
+                                          for r in rows])  # fmt: skip
+    status, out, _ = run("compare", case)
+    first = out.splitlines()[0]
+    assert status == 1
+    assert first.startswith("No set passes. The nearest is ")
+    assert "governs, with no capacity left at all" in first
+    assert first.endswith("; the report shows the working.")
+    assert len(first) < 240
+
+
 def test_compare_prints_the_verdict_first_and_writes_the_report(case, run, tmp_path):
     status, out, err = run("compare", case)
     lines = out.splitlines()

@@ -5,7 +5,9 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from actuator_sizing.core.machine import judge, torque_of_current
 from actuator_sizing.core.moments import mean_products, support_points
+from actuator_sizing.errors import InputError
 from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
 from actuator_sizing.sizing.checks.motor import VOLTAGE
 from actuator_sizing.sizing.demand import build_demand
@@ -129,3 +131,64 @@ def test_a_long_overload_is_not_smoothed_out_where_only_the_total_thermal_resist
     assert [ORDER[code] for code in verdicts.codes[:, at]] == [FAILS, FAILS]
     # Copper of 8 % of the mass is 80 J/K, which is what the full sheet says too (40 s over 0.5 K/W).
     assert sets.pairs.winding_max_degc[1] == pytest.approx(sets.pairs.winding_max_degc[0], rel=0.01)
+
+
+def test_a_winding_time_constant_from_the_mass_resolves_a_long_move_as_a_stated_one_does():
+    # One move of a minute, many time constants of a light winding: its mean loss does not stand for its course.
+    light = {
+        **MOTOR,
+        "mass_kg": 0.8,
+        "winding_time_constant_s": np.nan,
+        "thermal_resistance_winding_k_w": 0.6,
+    }
+    stated = {**light, "winding_time_constant_s": 0.08 * 0.8 * 385.0 * 0.6}
+    values = {"load inertia": 100.0}
+    move = {"law": "simple harmonic", "displacement": 25.0, "duration_s": 60.0}
+    peaks = []
+    for motor in (light, stated):
+        made = case("rotary load", values, cycle(move), motors=[motor], gearheads=[DIRECT])
+        peaks.append(float(judged(made)[0].pairs.winding_max_degc[0]))
+    assert peaks[0] == pytest.approx(peaks[1], rel=1e-9)  # the same network, so only rounding
+
+
+STEEP = {"lead": 0.1, "screw diameter": 0.008, "thread friction coefficient": 0.3, "moving mass": 50.0}
+
+
+def test_a_thread_that_jams_is_refused():
+    # tan(lead angle) · friction = 3.98 · 0.3 > 1: the torque would come out negative, as if the load helped.
+    made = case("lead screw", STEEP, cycle({"law": "trapezoid", "displacement": 0.5, "duration_s": 1.0}))
+    with pytest.raises(InputError, match=r"below 0.251"):
+        build_demand(made)
+
+
+def test_bearings_of_a_self_locking_screw_cost_torque_in_both_directions():
+    values = {"lead": 0.004, "screw diameter": 0.02, "thread friction coefficient": 0.15, "moving mass": 60.0,
+              "inclination": np.pi / 2}  # fmt: skip
+    down = {"law": "constant speed", "displacement": -0.1, "end_speed": -0.05}
+    demands = [
+        build_demand(case("lead screw", {**values, "efficiency": rest}, cycle(
+            {"law": "speed ramp", "end_speed": -0.05, "duration_s": 0.5}, down)))
+        for rest in (1.0, 0.9)
+    ]  # fmt: skip
+    free, lossy = (float(demand.shaft_torque[-1, 0]) for demand in demands)
+    assert free < 0.0  # the screw is driven down
+    assert lossy == pytest.approx(free / 0.9, rel=1e-12)  # the motor gives what the bearings take, too
+
+
+def test_the_peak_current_of_a_saturated_motor_belongs_to_the_peak_torque():
+    made = case(
+        "rotary load",
+        {"load inertia": 0.02, "friction torque": 0.3},
+        cycle(
+            {"law": "cycloidal", "displacement": 6.0, "duration_s": 0.42}, {"law": "dwell", "duration_s": 1.0}
+        ),
+        motors=[{**MOTOR, "peak_torque_nm": 5.0}],
+        gearheads=[DIRECT],
+    )
+    sets, _ = judged(made)
+    motor = judge(made.motor_parameters, made.surroundings)
+    torque = torque_of_current(
+        sets.pairs.current_peak_a, motor.torque_constant_nm_per_a, motor.saturation_per_a2
+    )
+    assert 0.9 * 5.0 < sets.pairs.torque_peak_nm[0] < 5.0  # close to saturation
+    assert torque[0] == pytest.approx(sets.pairs.torque_peak_nm[0], rel=1e-12)  # an inverse, only rounding

@@ -128,7 +128,9 @@ def overloaded(limits=None):
     values = {"lead": 0.02, "moving mass": 40.0, "efficiency": 0.9}
     rms = compare(case("ball screw", values, segments, gearheads=(DIRECT,))).best.quantities["current_rms_a"]
     drive = dict(DRIVE, continuous_current_a=float(rms) / 1.02)
-    return compare(case("ball screw", values, segments, gearheads=(DIRECT,), drives=(drive,), limits=limits)).best
+    return compare(
+        case("ball screw", values, segments, gearheads=(DIRECT,), drives=(drive,), limits=limits)
+    ).best
 
 
 def test_a_drive_overloaded_for_ever_is_told_by_how_much():

@@ -47,13 +47,9 @@ def test_rms_peak_and_energies_agree_with_adaptive_quadrature(law):
         gearheads=[{**GEARHEAD, "ratio": 3.0}],
     )
     demand = build_demand(made)
-    result = evaluate_pairs(
-        demand, made.motor_parameters, made.gearhead_parameters, made.surroundings
-    )
+    result = evaluate_pairs(demand, made.motor_parameters, made.gearhead_parameters, made.surroundings)
     judged = judge(made.motor_parameters, made.surroundings)
-    point = PointModel(
-        made, 0, 0, float(judged.resistance_ohm[0]), float(judged.torque_constant_nm_per_a[0])
-    )
+    point = PointModel(made, 0, 0, float(judged.resistance_ohm[0]), float(judged.torque_constant_nm_per_a[0]))
     T = demand.cycle_s
     assert result.torque_rms_nm[0] == pytest.approx(
         np.sqrt(point.integrate(lambda p: p["torque"] ** 2) / T), rel=PROMISED

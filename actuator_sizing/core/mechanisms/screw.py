@@ -13,6 +13,7 @@ from actuator_sizing.core.mechanisms.linear_load import (
     STAGE_PARAMETERS,
     RotatingDriveOfLinearLoad,
 )
+from actuator_sizing.errors import InputError, Problem
 
 STEEL_DENSITY_KG_M3 = 7850.0  # common practice for plain and alloyed steel
 
@@ -92,6 +93,18 @@ def solid_cylinder_inertia(diameter_m: float, length_m: float, density_kg_m3: fl
     return np.pi * density_kg_m3 * length_m * diameter_m**4 / 32.0
 
 
+def _jammed(lead_m: float, diameter_m: float, friction_coefficient: float) -> Problem:
+    """What to say of a thread whose lead angle and friction angle together reach 90°: turning cannot move it."""
+    return Problem(
+        "axis",
+        None,
+        "thread friction coefficient",
+        got=f"{friction_coefficient:g} with a lead of {1e3 * lead_m:g} mm on {1e3 * diameter_m:g} mm diameter",
+        allowed=f"below {np.pi * diameter_m / lead_m:.3g}, from where on the nut jams however hard the screw turns",
+        remedy="Check lead, screw diameter and friction coefficient.",
+    )
+
+
 @dataclass(frozen=True, kw_only=True)
 class Screw(RotatingDriveOfLinearLoad):
     """Screw and nut: ``φ = 2π x / lead``."""
@@ -112,7 +125,10 @@ class Screw(RotatingDriveOfLinearLoad):
     def _from_friction(self) -> tuple[float, float] | None:
         if np.isnan(self.thread_friction_coefficient) or np.isnan(self.screw_diameter):
             return None
-        return screw_efficiencies(self.lead, self.screw_diameter, self.thread_friction_coefficient)
+        pair = screw_efficiencies(self.lead, self.screw_diameter, self.thread_friction_coefficient)
+        if not pair[0] > 0.0:
+            raise InputError([_jammed(self.lead, self.screw_diameter, self.thread_friction_coefficient)])
+        return pair
 
     @property
     def efficiency_forward(self) -> float:
@@ -126,7 +142,9 @@ class Screw(RotatingDriveOfLinearLoad):
         pair = self._from_friction
         if pair is None or not np.isnan(self.back_driving_efficiency):
             return super().efficiency_back
-        return pair[1] * (2.0 - 1.0 / self.efficiency) if pair[1] > 0.0 else pair[1]
+        if pair[1] > 0.0:
+            return pair[1] * (2.0 - 1.0 / self.efficiency)
+        return pair[1] / self.efficiency  # self-locking: the rest transmits from the motor both ways
 
     @property
     def shaft_inertia_kg_m2(self) -> float:

@@ -55,6 +55,10 @@ class Measure:
     at_s: FloatArray | None = None
     utilisation: FloatArray | None = None
 
+    def instant(self, index: int) -> float:
+        """When the demand of one set is largest; NaN where the check has no instant. [s]"""
+        return np.nan if self.at_s is None else float(self.at_s[index])
+
     def ratio(self) -> FloatArray:
         """Utilisation, shape (S,); infinite where there is demand but no capacity. [-]"""
         if self.utilisation is not None:
@@ -79,7 +83,7 @@ class Need:
 
     def known(self, sets: Sets) -> NDArray[np.bool_]:
         """Which of the sets have it, shape (S,). [-]"""
-        value = getattr(getattr(sets, self.part), self.field)
+        value = np.asarray(getattr(getattr(sets, self.part), self.field))
         return value if value.dtype == bool else ~np.isnan(value)
 
 

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -17,7 +19,7 @@ def _same(value: float, sets: Sets) -> FloatArray:
     return np.full(len(sets), value)
 
 
-def _working(symbol: str, unit: str, measure):  # type: ignore[no-untyped-def]
+def _working(symbol: str, unit: str, measure: Callable[[Sets], Measure]) -> Callable[[Sets, int], str]:
     def working(sets: Sets, i: int) -> str:
         m = measure(sets)
         return (

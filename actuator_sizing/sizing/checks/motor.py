@@ -147,7 +147,7 @@ def _plane_bound(block: Block) -> FloatArray:
 
 def _plane_working(sets: Sets, i: int) -> str:
     m = _plane_measure(sets)
-    at = instant_of(sets, i, float(m.at_s[i]), "torque")  # type: ignore[index]
+    at = instant_of(sets, i, m.instant(i), "torque")
     p = sets.pairs
     unit = at.units[0]
     by_current = float(current_limited_torque(sets)[i])
@@ -235,7 +235,7 @@ def _current_measure(sets: Sets) -> Measure:
 
 def _current_working(sets: Sets, i: int) -> str:
     m = _current_measure(sets)
-    at = instant_of(sets, i, float(m.at_s[i]), "torque")  # type: ignore[index]
+    at = instant_of(sets, i, m.instant(i), "torque")
     return (
         f"{torque_working(at)}; {current_working(at)}; |i| / I_peak = {digits(float(m.demand[i]))} / "
         f"{digits(float(m.capacity[i]))} = {digits(float(m.ratio()[i]))}"
@@ -301,7 +301,7 @@ def _voltage_measure(sets: Sets) -> Measure:
 
 def _voltage_working(sets: Sets, i: int) -> str:
     m = _voltage_measure(sets)
-    at = instant_of(sets, i, float(m.at_s[i]), "voltage")  # type: ignore[index]
+    at = instant_of(sets, i, m.instant(i), "voltage")
     with_slope = sets.pairs.voltage_peak_v[i] > sets.pairs.voltage_peak_without_inductance_v[i]
     note = "" if with_slope else " (the value without L di/dt governs)"
     return (

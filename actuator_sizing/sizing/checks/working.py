@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.core.machine import JudgedMotor, judge
+from actuator_sizing.core.machine import JudgedMotor, current_of_torque, judge
 from actuator_sizing.core.parameters import BASIS_PEAK, BASIS_RMS, GearheadParameters, MotorParameters
 from actuator_sizing.core.quadrature import integrate, interpolate
 from actuator_sizing.core.transmission import stage_factor
@@ -77,9 +77,10 @@ def instant_of(sets: Sets, i: int, at_s: float, largest: str) -> Instant:
         x = np.clip(2.0 * (at_s - demand.start_s[piece]) / demand.duration_s[piece] - 1.0, -1.0, 1.0)
         return float(interpolate(values[piece], np.array([x]))[0])
 
-    piece = int(max(inside, key=lambda p: read(decides, p)))
+    piece = int(max(inside.tolist(), key=lambda p: read(decides, p)))
     n = float(gearhead.ratio[0])
     factor = stage_factor(demand.flow[piece : piece + 1], gearhead.efficiency, gearhead.efficiency_back)
+    torque = np.array([read(c.torque_nm[0], piece)])
     return Instant(
         motor=motor,
         gearhead=gearhead,
@@ -91,8 +92,10 @@ def instant_of(sets: Sets, i: int, at_s: float, largest: str) -> Instant:
         shaft_torque=read(demand.shaft_torque, piece),
         shaft_speed=read(demand.shaft_speed, piece),
         speed=read(c.motor_speed_rad_s[0], piece),
-        torque=read(c.torque_nm[0], piece),
-        current=read(c.current_a[0], piece),
+        torque=float(torque[0]),
+        current=float(
+            current_of_torque(torque, judged.torque_constant_nm_per_a, judged.saturation_per_a2)[0]
+        ),
         current_slope=read(c.current_slope_a_s[0], piece),
         held=bool(demand.brake_closed[piece]) and demand.direction[piece] == 0.0,
     )

@@ -1,0 +1,104 @@
+"""What the model leaves out for one set, said in every report beside what was assumed."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from actuator_sizing.core.machine import ASSUMED_HOT_WINDING_DEGC
+from actuator_sizing.core.thermal import altitude_factor
+
+if TYPE_CHECKING:
+    from actuator_sizing.case.model import Case
+    from actuator_sizing.sizing.results import SetResult
+
+#: Quantities of the axis that a case keeps and no check reads.
+UNUSED_QUANTITIES = ("bus capacitance", "chopper threshold", "brake resistor", "required life")
+
+_PARTS_NOT_CHECKED = {
+    "ball screw": "critical speed, buckling and life of the screw",
+    "lead screw": "critical speed, buckling, wear and life of the screw",
+    "belt": "force, stretch and life of the belt",
+    "rack and pinion": "tooth force and life of rack and pinion",
+}
+
+
+def model_statements(case: Case, best: SetResult) -> tuple[tuple[str, str], ...]:
+    """What the method takes for granted and what it leaves out.
+
+    Parameters
+    ----------
+    case : Case
+        The case. [-]
+    best : SetResult
+        The leading set: what is left out depends on its parts and its energy. [-]
+
+    Returns
+    -------
+    tuple of (subject, statement)
+        Only statements that matter for this case. [-]
+    """
+    s = case.surroundings
+    judged = (
+        f"each motor's winding limit ({ASSUMED_HOT_WINDING_DEGC:g} °C where the sheet states none)"
+        if s.judged_winding_degc != s.judged_winding_degc
+        else f"{s.judged_winding_degc:g} °C"
+    )
+    said = [
+        ("model: hot winding", f"current and voltage are judged with the winding at {judged}"),
+        ("model: minimum bus", f"voltage and speed–torque limits are judged at {s.bus_min_v:g} V"),
+        (
+            "model: standstill",
+            "holding is taken without help from friction, its heat spread over all phases; with the brake "
+            "closed no current flows",
+        ),
+        ("model: cycle", "the cycle repeats for ever; dwell counts in RMS values"),
+        ("model: stiffness", "load, gearhead and motor turn as one rigid body"),
+        ("model: drive rating", _drive_rating(case, best)),
+    ]
+    said += _braking(case, best) + _holding_brake(case, best)
+    if case.mechanism.name in _PARTS_NOT_CHECKED:
+        said.append(("model: mechanism", f"{_PARTS_NOT_CHECKED[case.mechanism.name]} are not checked"))
+    idle = [
+        entry.label
+        for entry in case.entries
+        if entry.table == "axis" and entry.label in UNUSED_QUANTITIES and entry.origin == "stated"
+    ]
+    if idle:
+        said.append(("model: stated, not used", f"no check reads {', '.join(idle)}"))
+    return tuple(said)
+
+
+def _drive_rating(case: Case, best: SetResult) -> str:
+    s, rated = case.surroundings, float(case.drive_parameters.continuous_ambient_degc[best.drive_index])
+    text = "the currents of the drive are taken as stated, whatever the cabinet and the switching frequency"
+    if altitude_factor(s.altitude_m) < 1.0:
+        text += f"; they are not reduced for the altitude of {s.altitude_m:g} m"
+    if rated < s.ambient_degc:
+        text += f"; they hold up to {rated:g} °C, the air around the motor has {s.ambient_degc:g} °C"
+    return text
+
+
+def _braking(case: Case, best: SetResult) -> list[tuple[str, str]]:
+    """Energy that comes back and is not followed further, where the supply does not take it."""
+    returned = best.quantities.get("energy_terminals_regenerated_j")
+    if (
+        case.options.get("supply feeds back") == "yes"
+        or not isinstance(returned, float)
+        or not returned > 0.0
+    ):
+        return []
+    return [
+        (
+            "model: braking",
+            f"the motor returns {returned:.4g} J per cycle; how far that lifts the bus, and what chopper and "
+            "brake resistor bear, is not checked",
+        )
+    ]
+
+
+def _holding_brake(case: Case, best: SetResult) -> list[tuple[str, str]]:
+    if not any(segment.brake_closed for segment in case.segments):
+        return []
+    torque = float(case.motor_parameters.brake_torque_nm[best.motor_index])
+    stated = "" if torque == torque else f"; {best.motor} states none"
+    return [("model: holding brake", f"a brake is taken to hold the load; its torque is not checked{stated}")]
