@@ -18,7 +18,7 @@ CHECK_KEYS = (
     "speed_torque", "rms_current", "winding_temperature", "motor_peak_current", "motor_speed", "voltage",
     "drive_continuous_current", "drive_peak_current", "drive_peak_time", "drive_bus_voltage",
     "gearhead_equivalent_torque", "gearhead_peak_torque", "gearhead_mean_speed", "gearhead_maximum_speed",
-    "inertia_ratio",
+    "inertia_ratio", "settling", "following_error", "stability_reserve", "resonance",
 )  # fmt: skip
 
 MOTOR = dict(

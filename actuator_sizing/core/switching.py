@@ -7,7 +7,7 @@ of the exact solution, so that the result does not depend on the step.
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -20,6 +20,7 @@ FloatArray = NDArray[np.float64]
 
 _PARTS_OF_PERIOD = 20.0  # steps per period of the fastest oscillation, so that no crossing pair is missed
 _MOST_EVENTS = 100_000
+_MOST_TERMS = 40  # of a Taylor series; needed where a step is longer than the fastest decay
 
 
 @dataclass(frozen=True)
@@ -92,6 +93,24 @@ class _Switched:
             if keep:
                 self._steps[mode, h] = found
         return np.asarray(found[0] @ x + found[1] @ u)
+
+    def path(self, x: FloatArray, u: FloatArray, mode: _Mode, h: float) -> Callable[[float], FloatArray]:
+        """States at any instant of a step: the Taylor series of the exact solution, else exponentials."""
+        if h == 0.0:
+            return lambda _: x
+        A, B = self.system(mode)
+        terms = [x]
+        v = (A @ x + B @ u) * h
+        size = np.abs(x).max() + np.abs(v).max()
+        for order in range(1, _MOST_TERMS):
+            terms.append(v)
+            if np.abs(v).max() <= 1e-18 * size:
+                series = np.array(terms)
+                powers = np.arange(len(series))
+                return lambda part: np.asarray((part / h) ** powers @ series)
+            v = A @ v * (h / (order + 1.0))
+            size = max(size, np.abs(v).max())
+        return lambda part: self.step(x, u, mode, part, keep=False)
 
     def pull(self, x: FloatArray, u: FloatArray, mode: _Mode, which: int) -> float:
         """Torque on one mass without its Coulomb friction. [N·m]"""
@@ -197,13 +216,19 @@ def run_open_loop(plant: Plant, inputs: Sequence[Held], step_s: float, start: Fl
         u = np.array([held.voltage_v, held.motor_torque_nm, held.load_torque_nm, 1.0])
         mode = switched.first_mode(x, u, None if mode is None else mode.flank)
         left = held.duration_s
-        while left > 1e-12 * held.duration_s:
-            h = min(step_s, left)
-            x_new = switched.step(x, u, mode, h, keep=h == step_s)
+        # Equal parts, so that one exponential serves all of them; after an event one odd step leads back.
+        part = left / math.ceil(left / step_s)
+        while left > 1e-9 * part:
+            odd = math.fmod(left, part)
+            on_grid = min(odd, part - odd) < 1e-6 * part
+            h = min(part, left) if on_grid else odd
+            if on_grid and abs(h - part) < 1e-6 * part:
+                h = part
+            x_new = switched.step(x, u, mode, h, keep=on_grid)
             low = switched.guards(x_new, u, mode)
             if min(low) < 0.0:
                 h, which = _first_event(switched, x, u, mode, h, low)
-                x_new, mode = switched.after(switched.step(x, u, mode, h, keep=False), u, mode, which)
+                x_new, mode = switched.after(switched.path(x, u, mode, h)(h), u, mode, which)
                 events += 1
                 if events > _MOST_EVENTS:
                     return Course(np.array(times), np.array(states), events, is_complete=False)
@@ -221,12 +246,13 @@ def _first_event(
 
     first, which = h, 0
     begin = switched.guards(x, u, mode)
+    path = switched.path(x, u, mode, h)
     for k, value in enumerate(low):
         if value >= 0.0:
             continue
 
         def guard(part: float, k: int = k) -> float:
-            return switched.guards(switched.step(x, u, mode, part, keep=False), u, mode)[k]
+            return switched.guards(path(part), u, mode)[k]
 
         # A guard that begins at zero belongs to the event just passed: look behind it.
         start = 0.0

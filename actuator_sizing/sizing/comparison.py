@@ -15,6 +15,7 @@ from actuator_sizing.sizing.candidates import candidate_table
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import build_demand, cycle_quantities
 from actuator_sizing.sizing.detail import SetModel, commissioning_quantities, quantities, set_detail
+from actuator_sizing.sizing.dynamic_results import add_dynamics
 from actuator_sizing.sizing.judging import (
     ORDER,
     Verdicts,
@@ -95,6 +96,14 @@ def compare(
     losers = nearest_drives(case, demand, screened.nearest_losers)
     index = np.unique(np.concatenate([screened.survivors, losers]), axis=0)
     sets = evaluate_sets(case, demand, index, _stage(progress, "evaluation"))
+
+    def leading(judged: Sets) -> tuple[IndexArray, NDArray[np.bool_]]:
+        found = judge_sets(judged, checks, limits)
+        fails = found.verdict == ORDER.index(FAILS)
+        ranked = _rank(case, judged, found, index, ranked_by)
+        return ranked[~fails[ranked]][:wanted], fails
+
+    sets = add_dynamics(case, demand, sets, index, leading, _stage(progress, "simulation"))
     verdicts = judge_sets(sets, checks, limits)
     order = _rank(case, sets, verdicts, index, ranked_by)
     listed = _listed(order, verdicts, index, wanted)

@@ -233,6 +233,46 @@ def tuned(axis: AxisPlant, given: Mapping[str, float | str | bool]) -> Tuning:
     return Tuning(used, current, speed, limited)
 
 
+def parse_settings(changes: tuple[str, ...]) -> dict[str, float | str | bool]:
+    """Settings typed as ``name=value``.
+
+    Parameters
+    ----------
+    changes : tuple of str
+        Such as ``"position_gain_per_s=40"``; yes and no for what is switched.
+
+    Returns
+    -------
+    dict
+        By name. [-]
+
+    Raises
+    ------
+    InputError
+        If one is not a name, an equals sign and a value.
+
+    Examples
+    --------
+    >>> parse_settings(("position_gain_per_s=40", "is_delayed=no"))
+    {'position_gain_per_s': 40.0, 'is_delayed': False}
+    """
+    answer: dict[str, float | str | bool] = {}
+    for change in changes:
+        name, equals, text = (part.strip() for part in change.partition("="))
+        if not equals or not name or not text:
+            raise _wrong(name or "settings", repr(change), "name=value", "Write for example is_delayed=no.")
+        if name == "anti_windup":
+            answer[name] = text
+        elif text in ("yes", "no"):
+            answer[name] = text == "yes"
+        else:
+            try:
+                answer[name] = float(text)
+            except ValueError:
+                raise _wrong(name, repr(text), "a number in SI, yes or no", "Correct the value.") from None
+    return answer
+
+
 _GAINS = {
     "position_gain_per_s", "speed_gain_a_s_per_rad", "speed_reset_time_s", "current_gain_v_per_a",
     "current_reset_time_s",

@@ -5,6 +5,12 @@ To add one: declare a `Check` in the file of its group and list it here.
 
 from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets
 from actuator_sizing.sizing.checks.drive import DRIVE_BUS, DRIVE_CONTINUOUS, DRIVE_PEAK, DRIVE_PEAK_TIME
+from actuator_sizing.sizing.checks.dynamics import (
+    FOLLOWING_ERROR,
+    RESONANCE,
+    SETTLING,
+    STABILITY_RESERVE,
+)
 from actuator_sizing.sizing.checks.gearhead import (
     GEARHEAD_EQUIVALENT,
     GEARHEAD_MAX_SPEED,
@@ -37,6 +43,10 @@ CHECKS: tuple[Check, ...] = (
     GEARHEAD_MEAN_SPEED,
     GEARHEAD_MAX_SPEED,
     INERTIA_RATIO,
+    SETTLING,
+    FOLLOWING_ERROR,
+    STABILITY_RESERVE,
+    RESONANCE,
 )
 
 __all__ = ["CHECKS", "Check", "Measure", "Need", "Sets"]

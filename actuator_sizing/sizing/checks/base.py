@@ -19,6 +19,7 @@ from actuator_sizing.core.parameters import (
 if TYPE_CHECKING:
     from actuator_sizing.sizing.block import Block
     from actuator_sizing.sizing.demand import Demand
+    from actuator_sizing.sizing.dynamic_results import DynamicResults
     from actuator_sizing.sizing.evaluation import PairResults
 
 FloatArray = NDArray[np.float64]
@@ -41,6 +42,7 @@ class Sets:
     drive_current_rms_at_s: FloatArray
     overload_a2s: FloatArray  # largest i²t accumulator in the periodic regime
     overload_at_s: FloatArray
+    dynamics: DynamicResults | None = None  # where the case asks how the axis moves
 
     def __len__(self) -> int:
         return len(self.motors)
@@ -72,7 +74,7 @@ class Measure:
 class Need:
     """One datum without which a check cannot be made.
 
-    `part` is ``"motors"``, ``"gearheads"``, ``"drives"`` or ``"pairs"``; `field` its parameter, `column` the
+    `part` is ``"motors"``, ``"gearheads"``, ``"drives"``, ``"pairs"`` or ``"dynamics"``; `field` its parameter, `column` the
     heading a user would fill in (for linear motors `linear_column`).
     """
 
@@ -83,7 +85,10 @@ class Need:
 
     def known(self, sets: Sets) -> NDArray[np.bool_]:
         """Which of the sets have it, shape (S,). [-]"""
-        value = np.asarray(getattr(getattr(sets, self.part), self.field))
+        part = getattr(sets, self.part)
+        if part is None:
+            return np.zeros(len(sets), dtype=bool)
+        value = np.asarray(getattr(part, self.field))
         return value if value.dtype == bool else ~np.isnan(value)
 
 
