@@ -43,7 +43,9 @@ def write_atomically(path: str | Path, content: bytes) -> None:
     replace_folder_files(target.parent, {target.name: content})
 
 
-def replace_folder_files(folder: str | Path, contents: Mapping[str, bytes]) -> tuple[Path, ...]:
+def replace_folder_files(
+    folder: str | Path, contents: Mapping[str, bytes], obsolete: Iterable[str] = ()
+) -> tuple[Path, ...]:
     """Write several files of a folder together: all are replaced, or none is.
 
     Other files in the folder stay. Every file is first written to a temporary sibling; only when all of
@@ -55,6 +57,8 @@ def replace_folder_files(folder: str | Path, contents: Mapping[str, bytes]) -> t
         Target folder, made if missing.
     contents : mapping of str to bytes
         File name, or path relative to `folder` with ``/``, to whole content.
+    obsolete : iterable of str
+        Files of an earlier run, named in the same way, that go when the new ones are in place.
 
     Returns
     -------
@@ -79,7 +83,8 @@ def replace_folder_files(folder: str | Path, contents: Mapping[str, bytes]) -> t
             if target.is_dir():
                 raise IsADirectoryError(errno.EISDIR, os.strerror(errno.EISDIR))
             _write_through(sibling, content)
-        _rename_all(targets, temporary, token)
+        old = [folder / name for name in obsolete if name not in contents]
+        _rename_all(targets, temporary, token, [path for path in old if path.is_file() or path.is_symlink()])
     except OSError as error:
         _discard(temporary, made)
         raise _output_error(current, error) from error
@@ -110,12 +115,12 @@ def _write_through(path: Path, content: bytes) -> None:
         os.fsync(stream.fileno())
 
 
-def _rename_all(targets: list[Path], temporary: list[Path], token: str) -> None:
+def _rename_all(targets: list[Path], temporary: list[Path], token: str, obsolete: list[Path]) -> None:
     """Rename every temporary file into place; put the old files back if one rename fails."""
     moved: list[tuple[Path, Path]] = []  # (old file's new place, where it was)
     placed: list[Path] = []
     try:
-        for index, target in enumerate(targets):
+        for index, target in enumerate((*targets, *obsolete)):
             aside = target.with_name(f".{token}.{index}.old")
             with contextlib.suppress(FileNotFoundError):
                 os.replace(target, aside)

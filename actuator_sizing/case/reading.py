@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
+from dataclasses import replace
 from pathlib import Path
 
 from actuator_sizing.case.columns import fold, nearest
@@ -28,17 +29,20 @@ def read_case(path: str | Path) -> Case:
     Returns
     -------
     Case
-        Everything known about the axis, in SI, each value with its source.
+        Everything known about the axis, in SI, each value with its source; its problems hold what the audit
+        of the data sheets found too, so that a report says it.
 
     Raises
     ------
     InputError
         If the case cannot be used; it carries every problem found.
     """
+    from actuator_sizing.case.audit import audit_catalogs
+
     case, problems = check_case(path)
     if case is None:
         raise InputError(problem for problem in problems if problem.severity == ERROR)
-    return case
+    return replace(case, problems=tuple(dict.fromkeys((*case.problems, *audit_catalogs(case)))))
 
 
 def check_case(path: str | Path) -> tuple[Case | None, tuple[Problem, ...]]:

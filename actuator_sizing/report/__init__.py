@@ -24,6 +24,8 @@ def write_report(
 ) -> tuple[Path, ...]:
     """Write page, PDF, workbook, results, candidates and figures into a folder; whole or not at all.
 
+    Figures and PDF of an earlier run that this one does not make are removed.
+
     Parameters
     ----------
     comparison : Comparison
@@ -50,7 +52,15 @@ def write_report(
     """
     from actuator_sizing.files import replace_folder_files
 
-    return replace_folder_files(folder, render_report(comparison, date=date, pdf=pdf, since=since))
+    files = render_report(comparison, date=date, pdf=pdf, since=since)
+    return replace_folder_files(folder, files, obsolete=_own_names())
+
+
+def _own_names() -> tuple[str, ...]:
+    """Names of files that a report may or may not have: one left by an earlier run would contradict it."""
+    from actuator_sizing.report.figures import FIGURES
+
+    return ("sizing_report.pdf", *(f"figures/{key}.svg" for key in FIGURES))
 
 
 def render_report(
@@ -84,13 +94,14 @@ def render_report(
 
     day = date if date is not None else _today()
     figures = draw_figures(comparison)
+    candidates = render_candidates(comparison)
     revision = None if since is None else revision_since(since, results_dict(comparison))
     document = prepare_document(comparison, day, figures, revision)
     files = {
         "sizing_report.html": render_html(document, figures),
-        "sizing_tables.xlsx": render_workbook(comparison, day),
+        "sizing_tables.xlsx": render_workbook(comparison, day, candidates.rows),
         "results.json": render_json(comparison, revision),
-        "candidates.csv": render_candidates(comparison),
+        "candidates.csv": candidates.content,
     }
     if pdf or (pdf is None and can_write_pdf()):
         files["sizing_report.pdf"] = render_pdf(document, figures)

@@ -107,7 +107,7 @@ def _check(check: CheckResult) -> dict[str, Any]:
         "allowed": _plain(check.allowed),
         "recommended_reserve": _plain(check.recommended_reserve),
         "margin": _plain(check.margin),
-        "verdict": check.verdict,
+        "verdict": check.shown_verdict,
         "advice": bool(check.is_advice),
         "at_time_s": _plain(check.at_time_s),
         "segment": check.segment,

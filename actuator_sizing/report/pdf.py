@@ -86,11 +86,13 @@ def _font_folder() -> str:
 
 
 @lru_cache(maxsize=1)
-def _known_letters() -> frozenset[int]:
-    """Letters that the font of the report has."""
+def _known_letters() -> frozenset[str]:
+    """Letters that the font of the report has, and those that only shape the line."""
     from matplotlib.ft2font import FT2Font
 
-    return frozenset(FT2Font(str(Path(_font_folder()) / "DejaVuSans.ttf")).get_charmap())
+    return frozenset("\n\u200b").union(
+        map(chr, FT2Font(str(Path(_font_folder()) / "DejaVuSans.ttf")).get_charmap())
+    )
 
 
 def _data(document: Document, figures: Mapping[str, DrawnFigure], day: calendar_date) -> dict[str, Any]:
@@ -168,5 +170,5 @@ def _printable(value: Any) -> Any:
 
 
 def _in_font(text: str) -> str:
-    known = _known_letters()
-    return "".join(c if ord(c) in known or c in "\n\u200b" else _REPLACEMENT for c in text)
+    missing = set(text) - _known_letters()
+    return text.translate(dict.fromkeys(map(ord, missing), _REPLACEMENT)) if missing else text

@@ -2,8 +2,7 @@
 
 from __future__ import annotations
 
-from actuator_sizing.report.document.verdict import ADVICE_MET, ADVICE_NOT_MET
-from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
+from actuator_sizing.sizing.results import ADVICE_MET, ADVICE_NOT_MET, FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
 
 _STATES = {
     PASSES: "passes",

@@ -15,7 +15,7 @@ from actuator_sizing.core.machine import amplitude_per_unit_current
 from actuator_sizing.core.plant import Plant, series_stiffness
 from actuator_sizing.core.quadrature import NODES, antiderivative_matrix, to_series
 from actuator_sizing.sizing.demand import Demand
-from actuator_sizing.sizing.detail import SetModel
+from actuator_sizing.sizing.set_model import SetModel
 
 FloatArray = NDArray[np.float64]
 

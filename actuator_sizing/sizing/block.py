@@ -13,8 +13,10 @@ from actuator_sizing.core.moments import (
     SupportPoints,
     gearhead_products,
     gearhead_rows,
+    mean_products,
     motor_columns,
     motor_products,
+    support_points,
 )
 from actuator_sizing.core.parameters import GearheadParameters, MotorParameters, Surroundings
 from actuator_sizing.core.thermal import ThermalNetwork
@@ -58,6 +60,22 @@ class MotorSide:
         )
 
 
+def voltage_points(demand: Demand) -> SupportPoints:
+    """Instants of largest ``|ω|`` mixed with torque, where the voltage can govern."""
+    flat = demand.functions.reshape(6, -1)
+    direction = np.repeat(demand.direction, demand.shaft_speed.shape[1])
+    moving = np.flatnonzero(direction != 0.0)
+    if not len(moving):
+        return SupportPoints(np.empty((0, 6)), np.empty(0))
+    speed = direction[moving] * flat[5, moving]
+    torque = direction[moving] * (flat[1] + flat[2])[moving]
+    along = direction[moving] * flat[0, moving]
+    speed, torque, along = (x / (np.max(np.abs(x)) or 1.0) for x in (speed, torque, along))
+    chosen = {int(moving[(speed + w * torque + u * along).argmax()]) for w, u in ((1e-6, 0.0), (0.3, 0.3))}
+    index = np.array(sorted(chosen))
+    return SupportPoints(flat[:, index].T, direction[index])
+
+
 @dataclass(frozen=True)
 class GearheadSide:
     """N gearheads with the demand brought to their input."""
@@ -69,10 +87,10 @@ class GearheadSide:
     speed_for_voltage: FloatArray  # (W, N, 1) motor speed there, in the sense of the torque
 
     @classmethod
-    def of(
-        cls, gearheads: GearheadParameters, products: FloatArray, peak: SupportPoints, voltage: SupportPoints
-    ) -> GearheadSide:
-        """Prepare N gearheads for mean products and support points of a demand."""
+    def of(cls, gearheads: GearheadParameters, demand: Demand) -> GearheadSide:
+        """Prepare N gearheads for a demand."""
+        products = mean_products(demand.duration_s, demand.functions)
+        peak, voltage = support_points(demand.functions, demand.flow), voltage_points(demand)
         rows = gearhead_rows(gearheads)
         at_peak, at_voltage = (
             (rows @ points.functions.T * points.sign).transpose(2, 0, 1) for points in (peak, voltage)

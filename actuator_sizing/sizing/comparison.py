@@ -14,8 +14,9 @@ from actuator_sizing.errors import InputError, Problem
 from actuator_sizing.sizing.candidates import candidate_table
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import build_demand, cycle_quantities
-from actuator_sizing.sizing.detail import SetModel, commissioning_quantities, quantities, set_detail
+from actuator_sizing.sizing.detail import set_detail
 from actuator_sizing.sizing.dynamic_results import add_dynamics
+from actuator_sizing.sizing.fitting import compatible
 from actuator_sizing.sizing.judging import (
     ORDER,
     Verdicts,
@@ -25,9 +26,11 @@ from actuator_sizing.sizing.judging import (
     judge_sets,
 )
 from actuator_sizing.sizing.provenance import assumptions_of, questions_of
+from actuator_sizing.sizing.quantities import commissioning_quantities, quantities
 from actuator_sizing.sizing.ranking import RANKINGS, nearest_drives, ranking_key
 from actuator_sizing.sizing.results import FAILS, NOT_CHECKED, Comparison, Rejections, SetResult
-from actuator_sizing.sizing.screening import Screened, compatible, screen
+from actuator_sizing.sizing.screening import Screened, screen
+from actuator_sizing.sizing.set_model import SetModel
 from actuator_sizing.sizing.shortlist import evaluate_sets
 from actuator_sizing.version import __version__
 

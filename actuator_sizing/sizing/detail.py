@@ -1,31 +1,20 @@
-"""Curves and quantities of one set, for figures, tables and results."""
+"""Curves of one set, for figures and tables."""
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.case.model import Case
 from actuator_sizing.core.capability import voltage_limited_current
-from actuator_sizing.core.machine import (
-    JudgedMotor,
-    amplitude_per_unit_current,
-    judge,
-    model_voltage,
-    torque_of_current,
-)
-from actuator_sizing.core.parameters import CURRENT_BASES, GearheadParameters, MotorParameters
-from actuator_sizing.core.step_response import StepResponse, voltage_step
-from actuator_sizing.core.thermal import HeatLoss, ThermalNetwork
-from actuator_sizing.core.warm_up import temperature_course, temperatures_after, warm_up
+from actuator_sizing.core.machine import amplitude_per_unit_current, model_voltage, torque_of_current
+from actuator_sizing.core.quadrature import piece_means
+from actuator_sizing.core.warm_up import temperature_course, warm_up
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.checks.motor import current_limited_torque, rerated_continuous_current
-from actuator_sizing.sizing.demand import Demand
-from actuator_sizing.sizing.evaluation import PairCourse, course, heat_loss
 from actuator_sizing.sizing.results import SetDetail
-from actuator_sizing.sizing.thermal_data import thermal_network
+from actuator_sizing.sizing.set_model import SetModel
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -34,52 +23,6 @@ FloatArray = NDArray[np.float64]
 
 _SPEEDS = 241  # points of the speed–torque plane
 _STEP_POINTS = 400
-COMMISSIONING_TIMES_S = (600.0, 1800.0, 3600.0)
-
-
-class SetModel:
-    """One set with its course over the cycle; what the curves are drawn from."""
-
-    def __init__(self, case: Case, demand: Demand, motor: int, gearhead: int, drive: int):
-        """Take the three parts by their index in the catalogs."""
-        self.case, self.demand = case, demand
-        self.motor: MotorParameters = case.motor_parameters.take(slice(motor, motor + 1))
-        self.gearhead: GearheadParameters = case.gearhead_parameters.take(slice(gearhead, gearhead + 1))
-        self.drive = case.drive_parameters.take(slice(drive, drive + 1))
-        self.judged: JudgedMotor = judge(self.motor, case.surroundings)
-        self.course: PairCourse = course(demand, self.motor, self.gearhead, self.judged)
-
-    @property
-    def network(self) -> ThermalNetwork:
-        """Thermal network of the motor."""
-        return thermal_network(self.motor, self.case.surroundings)
-
-    @property
-    def loss(self) -> HeatLoss:
-        """Heat losses over the cycle."""
-        return heat_loss(self.demand, self.motor, self.judged, self.course)
-
-    @property
-    def total_inertia(self) -> float:
-        """Rotor, gearhead and reflected load at the motor shaft. [kg·m²]"""
-        reflected = self.demand.load_inertia / self.gearhead.ratio[0] ** 2
-        return float(self.motor.rotor_inertia_kg_m2[0] + self.gearhead.inertia_kg_m2[0] + reflected)
-
-    def step(self) -> StepResponse:
-        """Voltage step of motor plus load at nominal bus, friction and gravity left out."""
-        voltage = model_voltage(
-            self.case.surroundings.bus_nominal_v,
-            self.case.surroundings.modulation_limit,
-            self.motor.current_basis,
-        )
-        return voltage_step(
-            resistance_ohm=float(self.judged.resistance_ohm[0]),
-            inductance_h=float(self.judged.inductance_h[0]),
-            torque_constant=float(self.judged.torque_constant_nm_per_a[0]),
-            inertia=self.total_inertia,
-            viscous=float(self.motor.viscous_friction_nm_s[0]),
-            voltage=float(voltage[0]),
-        )
 
 
 def set_detail(model: SetModel, sets: Sets, index: int) -> SetDetail:
@@ -131,6 +74,7 @@ def set_detail(model: SetModel, sets: Sets, index: int) -> SetDetail:
         envelope=_envelope(model),
         step_response=pd.DataFrame(dict(zip(("time_s", "current_a", "speed_rad_s"), step, strict=True))),
         levels=_levels(model, sets, index),
+        segments=_segment_frame(model),
     )
 
 
@@ -170,6 +114,28 @@ def _cycle_frame(model: SetModel) -> pd.DataFrame:
         "losses_nm": parts["losses"],
     }
     return pd.DataFrame({name: np.ravel(values) for name, values in flat.items()})
+
+
+def _segment_frame(model: SetModel) -> pd.DataFrame:
+    """RMS torque and current of every segment, and the integral that the RMS current of the cycle is made of."""
+    import pandas as pd
+
+    d, c = model.demand, model.course
+    count = len(model.case.segments)
+
+    def sums(values: FloatArray) -> FloatArray:
+        return np.bincount(d.segment, piece_means(values) * d.duration_s, minlength=count)
+
+    duration = np.bincount(d.segment, d.duration_s, minlength=count)
+    torque, current = sums(c.torque_nm[0] ** 2), sums(c.current_a[0] ** 2)
+    lasting = np.where(duration > 0.0, duration, 1.0)
+    return pd.DataFrame(
+        {
+            "torque_rms_nm": np.sqrt(torque / lasting),
+            "current_rms_a": np.sqrt(current / lasting),
+            "current_squared_a2_s": current,
+        }
+    )
 
 
 def _envelope(model: SetModel) -> pd.DataFrame:
@@ -233,117 +199,3 @@ def _levels(model: SetModel, sets: Sets, index: int) -> dict[str, float]:
         "bus_nominal_v": s.bus_nominal_v,
         "bus_max_v": s.bus_max_v,
     }
-
-
-def quantities(model: SetModel, sets: Sets, index: int) -> dict[str, Any]:
-    """Quantities of one set for results.json: SI, flat, None where not known.
-
-    Parameters
-    ----------
-    model : SetModel
-        The set. [-]
-    sets : Sets
-        Evaluated sets. [-]
-    index : int
-        Which of them the model is. [-]
-
-    Returns
-    -------
-    dict
-        Names carry their unit; currents are in the basis given by ``current_basis``. [-]
-    """
-    p = sets.pairs
-    answer: dict[str, Any] = {name: _known(getattr(p, name)[index]) for name in _FROM_PAIRS}
-    answer["current_basis"] = CURRENT_BASES[int(model.motor.current_basis[0])]
-    answer["speed_torque_margin"] = _margin(sets, index)
-    answer.update(_bus_energies(model, answer))
-    answer.update(_warm_up_quantities(model, answer["winding_max_degc"]))
-    answer["drive_current_peak_a"] = _known(sets.drive_current_peak_a[index])
-    answer["drive_current_rms_a"] = _known(sets.drive_current_rms_a[index])
-    answer["drive_current_basis"] = CURRENT_BASES[int(model.drive.current_basis[0])]
-    for name in ("bus_voltage_max_v", "brake_energy_per_cycle_j", "brake_power_mean_w", "brake_power_peak_w"):
-        answer[name] = None
-    answer.update(_step_quantities(model))
-    return answer
-
-
-_FROM_PAIRS = (
-    "torque_peak_nm", "torque_min_nm", "torque_rms_nm", "shaft_torque_peak_nm",
-    "current_peak_a", "current_rms_a",
-    "speed_peak_rad_s", "speed_rms_rad_s", "speed_mean_abs_rad_s",
-    "voltage_peak_v", "voltage_peak_without_inductance_v", "voltage_peak_at_steps_v", "voltage_available_v",
-    "copper_loss_mean_w", "friction_loss_mean_w",
-    "energy_airgap_motoring_j", "energy_airgap_regenerated_j",
-    "energy_shaft_motoring_j", "energy_shaft_regenerated_j",
-    "energy_terminals_motoring_j", "energy_terminals_regenerated_j", "power_terminals_peak_w",
-    "winding_max_degc", "winding_min_degc", "winding_mean_degc", "housing_max_degc", "housing_mean_degc",
-    "inertia_ratio", "resistance_ohm", "torque_constant_nm_per_a", "judged_winding_degc", "magnet_degc",
-)  # fmt: skip
-
-
-def _known(value: Any) -> float | None:
-    number = float(value)
-    return number if np.isfinite(number) else None
-
-
-def _margin(sets: Sets, index: int) -> float | None:
-    """Smallest of available over required torque less one, over the whole cycle."""
-    current = sets.pairs.torque_peak_nm[index] / current_limited_torque(sets)[index]
-    utilisation = max(float(sets.pairs.plane_utilisation[index]), float(np.nan_to_num(current, nan=0.0)))
-    if np.isnan(current) or utilisation == 0.0:
-        return None
-    return 1.0 / utilisation - 1.0
-
-
-def _bus_energies(model: SetModel, known: dict[str, Any]) -> dict[str, Any]:
-    """Energies at the DC bus from the drive's efficiency, in the direction power flows."""
-    efficiency = float(model.drive.efficiency[0])
-    if not np.isfinite(efficiency):
-        return {"energy_bus_motoring_j": None, "energy_bus_regenerated_j": None}
-    return {
-        "energy_bus_motoring_j": known["energy_terminals_motoring_j"] / efficiency,
-        "energy_bus_regenerated_j": known["energy_terminals_regenerated_j"] * efficiency,
-    }
-
-
-def _warm_up_quantities(model: SetModel, winding_max_degc: float | None) -> dict[str, Any]:
-    """When the winding passes its limit from cold; None where it never does or where data is missing."""
-    limit = float(model.motor.winding_limit_degc[0])
-    if winding_max_degc is not None and not winding_max_degc > limit:
-        return {"time_to_limit_s": None}
-    warming = warm_up(model.network, model.loss, model.case.surroundings.ambient_degc, limit)
-    return {"time_to_limit_s": None if warming is None else _known(warming.time_to_limit_s)}
-
-
-def commissioning_quantities(model: SetModel) -> dict[str, Any]:
-    """Winding and housing temperature after given times from cold, to compare on the machine."""
-    ambient = model.case.surroundings.ambient_degc
-    after = temperatures_after(model.network, model.loss, ambient, COMMISSIONING_TIMES_S)
-    answer: dict[str, Any] = {}
-    for position, time in enumerate(COMMISSIONING_TIMES_S):
-        minutes = f"{time / 60.0:.0f}_min"
-        for body in ("winding", "housing"):
-            value = None if after is None else _known(getattr(after, f"{body}_degc")[position])
-            answer[f"{body}_after_{minutes}_degc"] = value
-    return answer
-
-
-def _step_quantities(model: SetModel) -> dict[str, Any]:
-    step = model.step()
-    answer: dict[str, Any] = {
-        "step_voltage_v": step.voltage_v,
-        "step_inertia_kg_m2": model.total_inertia,
-        "step_electrical_time_constant_s": step.electrical_time_constant_s,
-        "step_mechanical_time_constant_s": step.mechanical_time_constant_s,
-        "step_final_speed_rad_s": step.final_speed_rad_s,
-        "step_rise_time_s": step.rise_time_s,
-        "step_peak_time_s": step.peak_time_s,
-        "step_overshoot_ratio": step.overshoot_ratio,
-        "step_settling_time_s": step.settling_time_s,
-        "step_peak_current_a": step.peak_current_a,
-        "step_peak_current_time_s": step.peak_current_time_s,
-    }
-    for number, pole in enumerate(step.poles_per_s, start=1):
-        answer[f"step_pole_{number}_real_per_s"] = pole.real
-        answer[f"step_pole_{number}_imag_per_s"] = pole.imag
-    return {name: _known(value) for name, value in answer.items()}

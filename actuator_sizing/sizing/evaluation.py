@@ -10,44 +10,19 @@ from dataclasses import dataclass, fields
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.core.capability import terminal_voltage, voltage_limited_current
-from actuator_sizing.core.machine import JudgedMotor, current_of_torque, judge, torque_of_current
-from actuator_sizing.core.moments import gearhead_rows, motor_columns
+from actuator_sizing.core.capability import terminal_voltage
+from actuator_sizing.core.machine import JudgedMotor, current_of_torque, judge
 from actuator_sizing.core.parameters import GearheadParameters, MotorParameters, Surroundings, _Columns
-from actuator_sizing.core.quadrature import (
-    differentiation_matrix,
-    largest,
-    largest_magnitude,
-    series_value,
-    signed_integrals,
-    to_series,
-)
-from actuator_sizing.core.thermal import (
-    HeatLoss,
-    periodic_state,
-    subpiece_counts,
-    subpiece_durations,
-    subpiece_means,
-)
+from actuator_sizing.core.quadrature import largest, largest_magnitude, signed_integrals
+from actuator_sizing.core.thermal import periodic_state
 from actuator_sizing.sizing.demand import Demand
-from actuator_sizing.sizing.thermal_data import fastest_time_constant, thermal_network
+from actuator_sizing.sizing.pair_course import PairCourse, course, heat_loss, per_pair, speed_loss
+from actuator_sizing.sizing.thermal_data import thermal_network
+from actuator_sizing.sizing.torque_plane import torque_plane
 
 FloatArray = NDArray[np.float64]
 
 _CHUNK = 128  # pairs at a time: keeps the (pairs, pieces, nodes) arrays in cache
-
-
-@dataclass(frozen=True)
-class PairCourse:
-    """Courses over the cycle of B pairs at the nodes, shape (B, P, K), at judged temperatures."""
-
-    motor_speed_rad_s: FloatArray
-    torque_nm: FloatArray  # air gap
-    shaft_torque_nm: FloatArray  # motor shaft
-    current_a: FloatArray  # in the motor's basis
-    current_slope_a_s: FloatArray
-    voltage_v: FloatArray
-    voltage_without_inductance_v: FloatArray
 
 
 @dataclass(frozen=True)
@@ -98,92 +73,6 @@ class PairResults(_Columns):
     magnet_degc: FloatArray
 
 
-def _column(values: FloatArray) -> FloatArray:
-    return values[:, None, None]
-
-
-def air_gap_torque(
-    demand: Demand, motors: MotorParameters, gearheads: GearheadParameters
-) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Air-gap torque, motor speed and motor shaft torque at the nodes for B pairs.
-
-    Parameters
-    ----------
-    demand : Demand
-        The cycle at the driven shaft. [-]
-    motors, gearheads : MotorParameters, GearheadParameters
-        B rows each: the pairs. [-]
-
-    Returns
-    -------
-    torque_nm : ndarray, shape (B, P, K)
-        Torque at the air gap. [N·m]
-    speed_rad_s : ndarray, shape (B, P, K)
-        Motor speed. [rad/s]
-    shaft_torque_nm : ndarray, shape (B, P, K)
-        Torque at the motor shaft. [N·m]
-
-    Notes
-    -----
-    ``T = (J_m + J_g) n α + k T_shaft/n + (T_c + T_0) sgn ω + c n ω`` with k by the direction of power of the
-    gearhead; with the holding brake closed there is no torque. Linear in the six functions of `core.moments`,
-    so that one product of matrices serves all pairs.
-    """
-    rows = gearhead_rows(gearheads)
-    motor = motor_columns(motors.rotor_inertia_kg_m2, motors.friction_torque_nm, motors.viscous_friction_nm_s)
-    functions = demand.functions.reshape(6, -1)
-    shape = (len(motors), *demand.shaft_speed.shape)
-    at_shaft = (rows[:, 0] @ functions).reshape(shape)
-    torque = (np.einsum("bi,bij->bj", motor, rows) @ functions).reshape(shape)
-    omega = _column(gearheads.ratio) * demand.shaft_speed
-    return torque, omega, at_shaft
-
-
-def course(
-    demand: Demand, motors: MotorParameters, gearheads: GearheadParameters, judged: JudgedMotor
-) -> PairCourse:
-    """Torque, current and voltage at the nodes for B pairs.
-
-    Parameters
-    ----------
-    demand : Demand
-        The cycle at the driven shaft. [-]
-    motors, gearheads : MotorParameters, GearheadParameters
-        B rows each: the pairs. [-]
-    judged : JudgedMotor
-        The same motors at judged temperatures. [-]
-
-    Returns
-    -------
-    PairCourse
-        Arrays of shape (B, P, K). [-]
-
-    Notes
-    -----
-    ``i = T/K`` (saturation solved), ``u = √((R i + K ω + L di/dt)² + (p ω L i)²)``.
-    """
-    torque, omega, at_shaft = air_gap_torque(demand, motors, gearheads)
-    current = current_of_torque(
-        torque, _column(judged.torque_constant_nm_per_a), _column(judged.saturation_per_a2)
-    )
-    slope = (current @ differentiation_matrix().T) * (2.0 / demand.duration_s[:, None])
-    electrical = (
-        _column(judged.resistance_ohm),
-        _column(judged.inductance_h),
-        _column(judged.torque_constant_nm_per_a),
-        _column(judged.reactance_per_speed),
-    )
-    return PairCourse(
-        omega,
-        torque,
-        at_shaft,
-        current,
-        slope,
-        terminal_voltage(current, omega, slope, *electrical),
-        terminal_voltage(current, omega, np.zeros(1), *electrical),
-    )
-
-
 def evaluate_pairs(
     demand: Demand, motors: MotorParameters, gearheads: GearheadParameters, surroundings: Surroundings
 ) -> PairResults:
@@ -232,10 +121,10 @@ def _evaluate_chunk(
     voltage_at = np.where(
         with_L[0] >= without_L[0], demand.instant(*with_L[1:]), demand.instant(*without_L[1:])
     )
-    plane = _plane(demand, c, judged)
+    plane = torque_plane(demand, c, judged)
     speed_peak, speed_piece, speed_position = largest_magnitude(omega)
 
-    copper = _column(judged.resistance_ohm) * i**2
+    copper = per_pair(judged.resistance_ohm) * i**2
     airgap = T * omega
     terminals = airgap + copper
     shaft = c.shaft_torque_nm * omega
@@ -291,104 +180,6 @@ def _evaluate_chunk(
         judged_winding_degc=judged.winding_degc,
         magnet_degc=judged.magnet_degc,
     )
-
-
-def speed_loss(motors: MotorParameters, speed_rad_s: FloatArray) -> FloatArray:
-    """Friction and iron loss ``T_c |ω| + c ω²`` at the nodes, shape (B, P, K). [W]"""
-    T_c, c = _column(motors.friction_torque_nm), _column(motors.viscous_friction_nm_s)
-    return np.asarray(T_c * np.abs(speed_rad_s) + c * speed_rad_s**2)
-
-
-def heat_loss(demand: Demand, motors: MotorParameters, judged: JudgedMotor, c: PairCourse) -> HeatLoss:
-    """Losses on each piece at reference temperatures, as the thermal model wants them.
-
-    Parameters
-    ----------
-    demand : Demand
-        The cycle. [-]
-    motors : MotorParameters
-        B motors. [-]
-    judged : JudgedMotor
-        The same at judged temperatures, at which the current of `c` was found. [-]
-    c : PairCourse
-        Courses of the pairs. [-]
-
-    Returns
-    -------
-    HeatLoss
-        Pieces on the last axis; a piece that lasts long against the winding's time constant is divided. [-]
-
-    Notes
-    -----
-    The torque is what is given: the current at reference temperatures is the judged one times K over its
-    reference value, and the thermal model scales the loss by the temperatures of each instant.
-    """
-    cold = (judged.torque_constant_nm_per_a / motors.torque_constant_nm_per_a)[:, None, None]
-    copper = _column(motors.resistance_ohm) * (c.current_a * cold) ** 2
-    by_speed = speed_loss(motors, c.motor_speed_rad_s)
-    tau = fastest_time_constant(motors)
-    shortest = float(np.nanmin(tau)) if np.isfinite(tau).any() else np.inf
-    counts = subpiece_counts(demand.duration_s, copper, shortest)
-    return HeatLoss(
-        duration_s=subpiece_durations(demand.duration_s, counts),
-        copper_loss_w=subpiece_means(copper, counts),
-        speed_loss_w=subpiece_means(by_speed, counts),
-        resistance_coefficient_per_k=motors.resistance_coefficient_per_k,
-        resistance_reference_degc=motors.resistance_reference_degc,
-        magnet_coefficient_per_k=motors.magnet_coefficient_per_k,
-        magnet_reference_degc=motors.magnet_reference_degc,
-    )
-
-
-def _plane(demand: Demand, c: PairCourse, judged: JudgedMotor) -> dict[str, FloatArray]:
-    """Where the torque comes closest to what the voltage allows at that speed.
-
-    Motoring and braking have limits of their own; each branch is smooth, so each is searched by itself.
-    """
-    K, s = _column(judged.torque_constant_nm_per_a), _column(judged.saturation_per_a2)
-    motoring, braking = voltage_limited_current(
-        _column(judged.voltage_available_v),
-        np.abs(c.motor_speed_rad_s),
-        _column(judged.resistance_ohm),
-        K,
-        _column(judged.reactance_per_speed),
-    )
-    # Torque rises with current only up to the turning point of the saturation curve.
-    turning = 1.0 / np.sqrt(3.0 * np.where(s > 0.0, s, np.finfo(float).tiny))
-    direction = demand.direction[:, None]
-    torque = c.torque_nm * np.where(direction == 0.0, 1.0, direction)
-    answer: dict[str, FloatArray] = {}
-    for current_limit, demanded in ((motoring, torque), (braking, -torque)):
-        demanded = np.where(direction == 0.0, np.abs(torque), demanded)
-        reachable = np.nan_to_num(current_limit, nan=0.0)
-        capacity = torque_of_current(np.clip(reachable, 0.0, turning), K, s)
-        # Above the no-load speed only braking torque keeps within the voltage, and of it a least one is needed.
-        most = torque_of_current(np.clip(current_limit, -turning, 0.0), K, s)
-        beyond = (capacity <= 0.0) & ~(demanded <= most)  # NaN: no current at all
-        ratio = demanded / np.where(capacity > 0.0, capacity, np.inf)
-        utilisation, piece, position = largest(ratio)
-        at = demand.instant(piece, position)
-        row = np.arange(len(at))
-        there = series_value((demanded[row, piece] @ to_series(demanded.shape[2]).T).T, position)
-        hopeless = beyond.reshape(len(at), -1)
-        first = hopeless.argmax(axis=1)
-        never = hopeless.any(axis=1)
-        utilisation = np.where(never, np.inf, np.maximum(utilisation, 0.0))
-        at = np.where(never, demand.time_s.reshape(-1)[first], at)
-        there = np.where(never, np.abs(demanded.reshape(len(at), -1)[np.arange(len(at)), first]), there)
-        with np.errstate(invalid="ignore", divide="ignore"):
-            available = np.where(never, 0.0, there / utilisation)
-        branch = {
-            "plane_utilisation": utilisation,
-            "plane_torque_nm": there,
-            "plane_capacity_nm": available,
-            "plane_at_s": at,
-        }
-        if not answer:
-            answer = branch
-        worse = utilisation > answer["plane_utilisation"]
-        answer = {key: np.where(worse, branch[key], value) for key, value in answer.items()}
-    return answer
 
 
 def _voltage_at_steps(c: PairCourse, judged: JudgedMotor, rise_s: float) -> FloatArray:

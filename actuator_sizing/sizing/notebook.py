@@ -41,7 +41,9 @@ def checks_frame(checks: Iterable[CheckResult]) -> pd.DataFrame:
         "at_time_s",
         "segment",
     )
-    rows = [{name: getattr(check, name) for name in names} for check in checks]
+    rows = [
+        {name: getattr(check, name) for name in names} | {"verdict": check.shown_verdict} for check in checks
+    ]
     keys = [check.check for check in checks]
     return pd.DataFrame(rows, columns=list(names), index=pd.Index(keys, name="check"))
 

@@ -10,8 +10,8 @@ from actuator_sizing.core.machine import amplitude_per_unit_current
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import Demand
 from actuator_sizing.sizing.evaluation import evaluate_pairs
+from actuator_sizing.sizing.fitting import compatible
 from actuator_sizing.sizing.judging import Verdicts
-from actuator_sizing.sizing.screening import compatible
 
 FloatArray = NDArray[np.float64]
 IndexArray = NDArray[np.intp]

@@ -4,21 +4,26 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
+from functools import cached_property
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
+    from datetime import date
     from pathlib import Path
 
     import pandas as pd
 
     from actuator_sizing.case.model import Case
     from actuator_sizing.sizing.demand import Demand
+    from actuator_sizing.sizing.simulation_results import Simulation
 
 PASSES = "passes"
 LOW_RESERVE = "passes, low reserve"
 FAILS = "fails"
 NOT_CHECKED = "not checked"
 VERDICTS = (PASSES, LOW_RESERVE, NOT_CHECKED, FAILS)
+#: What a check that only advises says instead; it neither passes nor fails.
+ADVICE_MET, ADVICE_NOT_MET = "advice met", "advice not met"
 
 
 @dataclass(frozen=True)
@@ -47,6 +52,13 @@ class CheckResult:
     missing: tuple[str, ...] = ()
     inputs: tuple[tuple[str, str], ...] = ()  # (input used, origin)
     is_advice: bool = False
+
+    @property
+    def shown_verdict(self) -> str:
+        """The verdict as every format words it: advice neither passes nor fails."""
+        if not self.is_advice or self.utilisation is None:
+            return self.verdict
+        return ADVICE_NOT_MET if self.utilisation > self.allowed else ADVICE_MET
 
     @property
     def margin(self) -> float | None:
@@ -96,6 +108,9 @@ class SetDetail:
     #: levels for limit lines, e.g. motor_peak_current_a, drive_peak_current_a, drive_continuous_current_a,
     #: speed_max_rad_s, winding_limit_degc, ambient_degc, voltage_available_v (NaN: not known)
     levels: Mapping[str, float]
+    #: one row per segment of the duty cycle: torque_rms_nm, current_rms_a and current_squared_a2_s, the integral
+    #: of the squared current over the segment; their sum over the cycle time is the squared RMS current
+    segments: pd.DataFrame | None = None
 
 
 @dataclass(frozen=True)
@@ -179,6 +194,13 @@ class Comparison:
         """The leading set; a loser if none passes."""
         return self.sets[0]
 
+    @cached_property
+    def dynamics(self) -> Simulation | None:
+        """The leading set simulated over its cycle; None where its loops cannot be made stable."""
+        from actuator_sizing.sizing.simulation import simulate_leading
+
+        return simulate_leading(self)
+
     @property
     def passes(self) -> bool:
         """Whether a set passes every check."""
@@ -194,6 +216,7 @@ class Comparison:
         self,
         folder: str | Path,
         *,
+        date: date | None = None,
         pdf: bool | None = None,
         since: Mapping[str, Any] | None = None,
     ) -> tuple[Path, ...]:
@@ -203,6 +226,9 @@ class Comparison:
         ----------
         folder : str or Path
             Output folder; made if missing.
+        date : datetime.date or None
+            Date of the report; by default today, or the day in the environment variable
+            ``SOURCE_DATE_EPOCH``.
         pdf : bool or None
             Write the PDF too; None writes it if the optional package for it is installed.
         since : mapping or None
@@ -220,4 +246,4 @@ class Comparison:
         """
         from actuator_sizing.report import write_report
 
-        return write_report(self, folder, pdf=pdf, since=since)
+        return write_report(self, folder, date=date, pdf=pdf, since=since)

@@ -16,20 +16,11 @@ from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
 from actuator_sizing.core.machine import amplitude_per_unit_current
-from actuator_sizing.core.moments import (
-    SupportPoints,
-    mean_products,
-    support_points,
-)
-from actuator_sizing.core.parameters import (
-    BRUSHED,
-    SINUSOIDAL,
-    SIX_STEP,
-    DriveParameters,
-    MotorParameters,
-)
 from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
 from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.drive_side import DriveSide
+from actuator_sizing.sizing.fitting import compatible, fits_axis
+from actuator_sizing.sizing.tallies import Losses, Pool
 
 if TYPE_CHECKING:
     from actuator_sizing.sizing.checks.base import Check
@@ -59,78 +50,6 @@ class Screened:
     lost_check: NDArray[np.intp]  # (R,) index into check_names
     lost_bound: FloatArray  # (R,) lower bound of the utilisation over allowed
     check_names: tuple[str, ...]
-
-
-def compatible(motors: MotorParameters, drives: DriveParameters) -> NDArray[np.bool_]:
-    """Which drive can commutate which motor, shape (M, D). [-]"""
-    served = {
-        BRUSHED: drives.serves_brushed,
-        SIX_STEP: drives.serves_six_step,
-        SINUSOIDAL: drives.serves_sinusoidal,
-    }
-    answer = np.zeros((len(motors), len(drives)), dtype=bool)
-    for commutation, mask in served.items():
-        answer |= (motors.commutation == commutation)[:, None] & mask[None, :]
-    return answer
-
-
-def fits_axis(case: Case) -> tuple[NDArray[np.intp], NDArray[np.intp]]:
-    """Indices of the motors and gearheads that the axis can use at all.
-
-    Parameters
-    ----------
-    case : Case
-        The case. [-]
-
-    Returns
-    -------
-    motors, gearheads : ndarray of int
-        Linear motors where the mechanism is one, rotary ones elsewhere; no winding whose stated nominal
-        voltage is far below the bus, since its insulation is not made for it. [-]
-    """
-    wants_linear = case.mechanism.drives_linear_motor
-    allowed = case.number("largest bus over nominal voltage")
-    with np.errstate(invalid="ignore"):
-        overfed = case.surroundings.bus_nominal_v > allowed * case.motor_parameters.nominal_voltage_v
-    motors = np.flatnonzero((case.motor_parameters.is_linear == wants_linear) & ~overfed)
-    gearheads = np.arange(len(case.gearhead_parameters))
-    if wants_linear:
-        gearheads = np.flatnonzero(case.gearhead_parameters.is_direct)
-    return motors, gearheads
-
-
-class _Pool:
-    """The best `keep` rows by key, then by index, whatever number is added and in whatever order."""
-
-    def __init__(self, keep: int):
-        self.keep = keep
-        self.rows: list[NDArray[np.intp]] = []
-        self.keys: list[FloatArray] = []
-        self.size = 0
-        self.bar = np.inf  # no worse key can get in any more
-
-    def add(self, rows: NDArray[np.intp], keys: FloatArray) -> None:
-        """Offer rows."""
-        good = keys <= self.bar
-        self.rows.append(rows[good])
-        self.keys.append(keys[good])
-        self.size += int(good.sum())
-        if self.size > 4 * self.keep:
-            rows, keys = self._best()
-            self.rows, self.keys, self.size, self.bar = [rows], [keys], len(keys), keys[-1]
-
-    def _best(self) -> tuple[NDArray[np.intp], FloatArray]:
-        rows, keys = np.concatenate(self.rows), np.concatenate(self.keys)
-        if len(keys) > self.keep:
-            good = keys <= np.partition(keys, self.keep - 1)[self.keep - 1]
-            rows, keys = rows[good], keys[good]
-        # Ties fall back on the index, so that the answer does not depend on the block size.
-        order = np.lexsort((*rows.T[::-1], keys))[: self.keep]
-        return rows[order], keys[order]
-
-    def sorted(self, width: int) -> NDArray[np.intp]:
-        """The rows, best first."""
-        return self._best()[0] if self.rows else np.empty((0, width), dtype=np.intp)
 
 
 def screen(
@@ -179,15 +98,10 @@ def screen(
         demand=demand,
         checks=tuple(check for check in checks if check.bound is not None),
         allowed=allowed,
-        drive_side=_DriveSide(case, allowed),
+        drive_side=DriveSide(case, allowed),
         key=key,
     )
-    gearhead_side = GearheadSide.of(
-        case.gearhead_parameters.take(gearhead_index),
-        mean_products(demand.duration_s, demand.functions),
-        support_points(demand.functions, demand.flow),
-        _voltage_points(demand),
-    )
+    gearhead_side = GearheadSide.of(case.gearhead_parameters.take(gearhead_index), demand)
     gearhead_parts = [
         (
             gearhead_index[start : start + _GEARHEADS_PER_BLOCK],
@@ -196,10 +110,10 @@ def screen(
         for start in range(0, len(gearhead_index), _GEARHEADS_PER_BLOCK)
     ]
     total = len(case.motor_parameters) * len(case.gearhead_parameters) * len(drives)
-    losses = _Losses(
+    losses = Losses(
         (*(check.key for check in context.checks), *context.drive_side.names), listed=total <= LISTED_SETS
     )
-    pool, nearest = _Pool(keep), _Pool(losers)
+    pool, nearest = Pool(keep), Pool(losers)
     survivors = screened = 0
     for start in range(0, len(motor_index), _MOTORS_PER_BLOCK):
         m = motor_index[start : start + _MOTORS_PER_BLOCK]
@@ -230,94 +144,18 @@ def screen(
     )
 
 
-class _Losses:
-    """Counts of rejected sets by check and, for catalogs of a size to list, the sets themselves."""
-
-    def __init__(self, names: tuple[str, ...], *, listed: bool):
-        self.names = names
-        self.counts = np.zeros(len(names), dtype=np.int64)
-        self.listed = listed
-        self.rows: list[NDArray[np.intp]] = []
-        self.checks: list[NDArray[np.intp]] = []
-        self.bounds: list[FloatArray] = []
-
-    def add(self, check: NDArray[np.intp], weight: NDArray[np.intp]) -> None:
-        """Count `weight` sets under each check."""
-        self.counts += np.bincount(check, weights=weight, minlength=len(self.names)).astype(np.int64)
-
-    def count(self, check: int, governed: NDArray[np.bool_], drives_per_motor: NDArray[np.intp]) -> None:
-        """Count under one check the sets of the pairs that it governs, (N, M)."""
-        drives = drives_per_motor[0]
-        if np.all(drives_per_motor == drives):
-            self.counts[check] += int(np.count_nonzero(governed)) * int(drives)
-        else:
-            self.counts[check] += int(np.count_nonzero(governed, axis=0) @ drives_per_motor)
-
-    def keep(self, rows: NDArray[np.intp], check: NDArray[np.intp], bound: FloatArray) -> None:
-        """List the sets themselves."""
-        if self.listed:
-            self.rows.append(rows)
-            self.checks.append(check)
-            self.bounds.append(bound)
-
-    def table(self) -> tuple[NDArray[np.intp], NDArray[np.intp], FloatArray]:
-        """All listed sets."""
-        if not self.rows:
-            return np.empty((0, 3), dtype=np.intp), np.empty(0, dtype=np.intp), np.empty(0)
-        return np.concatenate(self.rows), np.concatenate(self.checks), np.concatenate(self.bounds)
-
-
 @dataclass(frozen=True)
 class _Context:
     case: Case
     demand: Demand
     checks: tuple[Check, ...]
     allowed: Mapping[str, float]
-    drive_side: _DriveSide
+    drive_side: DriveSide
     key: str
 
     @property
     def recommended_inertia_ratio(self) -> float:
         return self.case.number("recommended inertia ratio")
-
-
-class _DriveSide:
-    """The drives' limits as amplitudes over the allowed utilisation, and what they cost."""
-
-    def __init__(self, case: Case, allowed: Mapping[str, float]):
-        d, s = case.drive_parameters, case.surroundings
-        amplitude = amplitude_per_unit_current(d.current_basis)
-        self.peak = np.where(np.isnan(d.peak_current_a), np.inf, d.peak_current_a * amplitude)
-        self.continuous = np.where(
-            np.isnan(d.continuous_current_a), np.inf, d.continuous_current_a * amplitude
-        )
-        # The drive's peak current also bounds the torque over speed; the stricter of the two allowed values counts.
-        strict = min(allowed.get("drive_peak_current", np.inf), allowed.get("speed_torque", np.inf))
-        self.peak_allowed = strict
-        self.peak_check = "drive_peak_current" if "drive_peak_current" in allowed else "speed_torque"
-        self.continuous_allowed = allowed.get("drive_continuous_current", np.inf)
-        with np.errstate(invalid="ignore"):
-            bus = np.fmax(s.bus_max_v / d.bus_voltage_max_v, d.bus_voltage_min_v / s.bus_min_v)
-        self.bus = np.nan_to_num(bus, nan=0.0) / allowed.get("drive_bus_voltage", np.inf)
-        self.price = d.price
-        self.mass = d.mass_kg
-        self.names = ("drive_bus_voltage", "drive_continuous_current", self.peak_check)
-
-
-def _voltage_points(demand: Demand) -> SupportPoints:
-    """Instants of largest ``|ω|`` mixed with torque: where the voltage can govern."""
-    flat = demand.functions.reshape(6, -1)
-    direction = np.repeat(demand.direction, demand.shaft_speed.shape[1])
-    moving = np.flatnonzero(direction != 0.0)
-    if not len(moving):
-        return SupportPoints(np.empty((0, 6)), np.empty(0))
-    speed = direction[moving] * flat[5, moving]
-    torque = direction[moving] * (flat[1] + flat[2])[moving]
-    along = direction[moving] * flat[0, moving]
-    speed, torque, along = (x / (np.max(np.abs(x)) or 1.0) for x in (speed, torque, along))
-    chosen = {int(moving[(speed + w * torque + u * along).argmax()]) for w, u in ((1e-6, 0.0), (0.3, 0.3))}
-    index = np.array(sorted(chosen))
-    return SupportPoints(flat[:, index].T, direction[index])
 
 
 def _screen_block(
@@ -326,9 +164,9 @@ def _screen_block(
     motor_index: NDArray[np.intp],
     gearhead_index: NDArray[np.intp],
     served: NDArray[np.bool_],
-    pool: _Pool,
-    nearest: _Pool,
-    losses: _Losses,
+    pool: Pool,
+    nearest: Pool,
+    losses: Losses,
 ) -> int:
     """Screen one block; returns how many sets survive."""
     gearhead_worst, gearhead_check, others = _utilisations(context, block)
@@ -397,25 +235,22 @@ def _screen_drives(
     motor_index: NDArray[np.intp],
     gearhead_index: NDArray[np.intp],
     worst: FloatArray,
-    pool: _Pool,
-    nearest: _Pool,
-    losses: _Losses,
+    pool: Pool,
+    nearest: Pool,
+    losses: Losses,
 ) -> int:
     """Hold the pairs that may pass against every drive; returns how many sets survive."""
     side = context.drive_side
     columns, rows = np.nonzero(passing)  # gearheads, motors
     amplitude = amplitude_per_unit_current(block.motors.current_basis)
     total = 0
-    step = max(1, 2**16 // max(1, len(side.peak)))
+    step = max(1, 2**16 // max(1, len(side)))
     for start in range(0, len(rows), step):
         r, c = rows[start : start + step], columns[start : start + step]
-        peak = (block.current_peak[c, r] * amplitude[r])[:, None]
-        rms = (block.current_rms[c, r] * amplitude[r])[:, None]
         ok = served[r]
-        bus = np.broadcast_to(side.bus[None, :], ok.shape)
-        continuous = rms / (side.continuous * side.continuous_allowed)[None, :]
-        top = peak / (side.peak * side.peak_allowed)[None, :]
-        stack = np.stack([bus, continuous, top])
+        stack = side.utilisations(
+            block.current_peak[c, r] * amplitude[r], block.current_rms[c, r] * amplitude[r]
+        )
         drive_worst = stack.max(axis=0)
         survives = ok & (drive_worst <= 1.0 + _ROUNDING)
         check = len(context.checks) + stack.argmax(axis=0)

@@ -13,7 +13,8 @@ from actuator_sizing.core.machine import amplitude_per_unit_current, judge
 from actuator_sizing.core.windows import overload_accumulator, windowed_rms
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import Demand
-from actuator_sizing.sizing.evaluation import PairResults, course, evaluate_pairs
+from actuator_sizing.sizing.evaluation import PairResults, evaluate_pairs
+from actuator_sizing.sizing.pair_course import course
 
 FloatArray = NDArray[np.float64]
 IndexArray = NDArray[np.intp]

@@ -27,13 +27,14 @@ from actuator_sizing.sizing.stop_run import run_stop
 if TYPE_CHECKING:
     from pathlib import Path
 
-    from actuator_sizing.sizing.demand import Demand
+    from actuator_sizing.sizing.results import Comparison
 
 FloatArray = NDArray[np.float64]
 
 #: Longest run, so that every run ends; about a quarter of a minute without the optional compiler.
 MOST_SAMPLES = 10_000_000
-INPUTS = ("cycle", "step", "sine", "stop")
+#: Longest cycle that a report simulates.
+MOST_REPORT_SAMPLES = 1_000_000
 
 
 def simulate(
@@ -96,6 +97,32 @@ def simulate(
         raise _wrong("cycles", str(cycles), "1 to 1 000 000", "Ask for fewer cycles.")
     axis = axis_plant(case, demand, parts, winding_degc=winding_degc, rate_hz=rate_hz)
     return simulate_set(axis, parts, input, settings or {}, settling_band, cycles)
+
+
+def simulate_leading(comparison: Comparison) -> Simulation | None:
+    """Simulate the leading set of a comparison over its cycle, with the default settings.
+
+    Parameters
+    ----------
+    comparison : Comparison
+        The answer.
+
+    Returns
+    -------
+    Simulation or None
+        None without a set, where no stable settings exist, or for a cycle that is too long.
+    """
+    if not comparison.sets:
+        return None
+    best, case = comparison.sets[0], comparison.case
+    parts = best.motor_index, best.gearhead_index, best.drive_index
+    axis = axis_plant(case, comparison.demand, parts, winding_degc=math.nan, rate_hz=math.nan)
+    if axis.model.demand.cycle_s * axis.rate_hz > MOST_REPORT_SAMPLES:
+        return None
+    try:
+        return simulate_set(axis, parts, "cycle", {}, math.nan, 1)
+    except InputError:
+        return None
 
 
 def simulate_set(

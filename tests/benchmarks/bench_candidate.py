@@ -17,7 +17,7 @@ sys.path.insert(0, str(Path(__file__).parents[2]))
 
 from actuator_sizing.core.quadrature import largest_magnitude, signed_integrals  # noqa: E402
 from actuator_sizing.sizing.demand import build_demand  # noqa: E402
-from actuator_sizing.sizing.evaluation import air_gap_torque  # noqa: E402
+from actuator_sizing.sizing.pair_course import air_gap_torque  # noqa: E402
 from tests.benchmarks.sampled import sample_profile, sampled_set  # noqa: E402
 from tests.made_cases import GEARHEAD, MOTOR, case, cycle  # noqa: E402
 

@@ -9,7 +9,8 @@ from actuator_sizing.core.machine import judge
 from actuator_sizing.core.phases import Phase
 from actuator_sizing.core.quadrature import integrate
 from actuator_sizing.sizing.demand import build_demand
-from actuator_sizing.sizing.evaluation import course, evaluate_pairs, speed_loss
+from actuator_sizing.sizing.evaluation import evaluate_pairs
+from actuator_sizing.sizing.pair_course import course, speed_loss
 from tests.made_cases import DIRECT, GEARHEAD, MOTOR, SURROUNDINGS, case, cycle
 
 LAWS = (

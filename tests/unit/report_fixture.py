@@ -103,6 +103,17 @@ def mean_square(time: np.ndarray, value: np.ndarray) -> float:
     return float(np.sum(dt * (a * a + a * b + b * b)) / 3.0 / (time[-1] - time[0]))
 
 
+def segment_table(cycle: pd.DataFrame) -> pd.DataFrame:
+    """RMS torque and current of each segment, exact for values linear between instants."""
+    rows = []
+    for name in cycle["segment"].drop_duplicates():
+        part = cycle[cycle["segment"] == name]
+        time = part["time_s"].to_numpy()
+        torque, current = (mean_square(time, part[c].to_numpy()) for c in ("motor_torque_nm", "current_a"))
+        rows.append((math.sqrt(torque), math.sqrt(current), current * (time[-1] - time[0])))
+    return pd.DataFrame(rows, columns=["torque_rms_nm", "current_rms_a", "current_squared_a2_s"])
+
+
 def temperatures(
     loss: float, ripple: float, r1: float, r2: float, tau_w: float, tau_h: float
 ) -> tuple[pd.DataFrame, pd.DataFrame]:
@@ -234,6 +245,7 @@ def build_set(motor_index: int, drive_index: int, detailed: bool) -> SetResult:
         warm_up=warm,
         envelope=limits,
         step_response=step_response(constant, resistance, inertia + load_inertia),
+        segments=segment_table(cycle),
         levels={
             "motor_peak_current_a": peak,
             "drive_peak_current_a": drive_peak,

@@ -9,11 +9,13 @@ import math
 
 import numpy as np
 import pytest
+from case_files import add_column, set_cell, small_case, write_folder
 
 from actuator_sizing import audit_case, check_case, start_case
 from actuator_sizing.case import audit_slips
 from actuator_sizing.case.audit import KEPT_PER_IDENTITY, audit_catalogs
 from actuator_sizing.case.audit_slips import name_slip
+from actuator_sizing.case.reading import read_case
 from actuator_sizing.case.writing import csv_bytes
 
 SQRT2, SQRT3 = math.sqrt(2.0), math.sqrt(3.0)
@@ -234,3 +236,15 @@ def test_no_slip_is_invented():
     rng = np.random.default_rng(1)
     for factor in rng.uniform(1.15, 1.30, 20):
         assert name_slip(float(factor), (audit_slips.RMS_PEAK, audit_slips.LINE_PHASE)) == ""
+
+
+def test_contradictions_belong_to_the_case_that_is_sized(tmp_path):
+    tables = small_case()
+    add_column(tables, "motors", "back-EMF constant [Vrms/krpm]", 5.56, "")
+    consistent = read_case(write_folder(tmp_path / "consistent", tables))
+    set_cell(tables, "motors", "M-10", "back-EMF constant", 5.56 * 3**0.5)
+    case = read_case(write_folder(tmp_path / "slip", tables))
+    found = [problem for problem in case.problems if problem not in consistent.problems]
+    assert found
+    assert {(problem.table, problem.row, problem.severity) for problem in found} == {("motors", 2, "warning")}
+    assert set(audit_case(tmp_path / "slip")) == set(case.problems)  # nothing is told twice

@@ -193,12 +193,14 @@ def test_a_middle_sized_motor_wins(name, comparisons):
 
 
 def test_losers_of_every_kind_occur(comparisons):
+    # A drive overloaded for ever loses by its continuous current; no demo axis has the long peaks for which the
+    # peak time alone governs.
     lost = {
         check for each in comparisons.values() for check, sets in each.rejections.by_check.items() if sets
     }
     assert lost >= {
         "speed_torque", "rms_current", "winding_temperature", "motor_speed", "motor_peak_current",
-        "drive_continuous_current", "drive_peak_current", "drive_peak_time", "drive_bus_voltage",
+        "drive_continuous_current", "drive_peak_current", "drive_bus_voltage",
         "gearhead_equivalent_torque", "gearhead_peak_torque", "gearhead_mean_speed", "gearhead_maximum_speed",
     }  # fmt: skip
 

@@ -1,28 +1,23 @@
 """Figures: complete, deterministic, readable by machine, with what they must say at a glance."""
 
 import dataclasses
+import functools
 import xml.etree.ElementTree as ElementTree
 
 import numpy as np
 import pytest
+from report_demo import DEMO_CASES, demo_comparison
 from report_fixture import build_comparison, build_hostile
 
-from actuator_sizing.report.figures import _figures_of, draw_figures, house_style
-from actuator_sizing.report.figures.over_time import draw_current
+from actuator_sizing.report.figures import FIGURES, _figures_of, draw_figures, house_style
+from actuator_sizing.report.figures.over_time import _CAUSES, draw_causes, draw_current
 from actuator_sizing.report.figures.speed_torque import governing_row
 from actuator_sizing.report.figures.style import _spread
 from actuator_sizing.report.figures.temperature import draw_temperature
+from actuator_sizing.report.figures.units import AxisUnits
 from actuator_sizing.report.figures.utilisation import _FAILS_COLOR, _STEPS, draw_utilisation
 
-KEYS = {
-    "speed_torque",
-    "motion",
-    "torque_by_cause",
-    "current",
-    "temperature",
-    "step_response",
-    "utilisation",
-}
+KEYS = set(FIGURES)
 
 
 @pytest.fixture(scope="module")
@@ -140,24 +135,110 @@ def unseen_tick_labels(figure):
                 yield from (tick.label1, tick.label2)
 
 
-def test_no_text_is_clipped(comparison):
+def boxes(figure):
+    """What every text of a figure covers, in pixels."""
     from matplotlib.backends.backend_agg import FigureCanvasAgg
     from matplotlib.text import Text
 
+    canvas = FigureCanvasAgg(figure)
+    canvas.draw()
+    unseen = set(unseen_tick_labels(figure))
+    found = [t for t in figure.findobj(Text) if t.get_text().strip() and t.get_visible() and t not in unseen]
+    # findobj meets an artist once for each way to it
+    return [(t.get_text(), t.get_window_extent(canvas.get_renderer())) for t in dict.fromkeys(found)]
+
+
+@functools.cache
+def drawn_figures(name):
+    """Figures of a demo case or of the fixture with their texts, drawn once: key, figure, boxes."""
+    comparison = build_comparison() if name == "fixture" else demo_comparison(name)
     with house_style():
-        for key, draw in _figures_of(comparison).items():
-            figure = draw()
-            canvas = FigureCanvasAgg(figure)
-            canvas.draw()
-            unseen = set(unseen_tick_labels(figure))
-            for text in figure.findobj(Text):
-                if text.get_text() and text.get_visible() and text not in unseen:
-                    box = text.get_window_extent(canvas.get_renderer())
-                    inside = figure.bbox.padded(1.0)  # a pixel for rounding
-                    assert inside.containsx(box.x0), (key, text.get_text())
-                    assert inside.containsx(box.x1), (key, text.get_text())
-                    assert inside.containsy(box.y0), (key, text.get_text())
-                    assert inside.containsy(box.y1), (key, text.get_text())
+        figures = [(key, draw()) for key, draw in _figures_of(comparison).items()]
+        return [(key, figure, boxes(figure)) for key, figure in figures]
+
+
+def clipped(figure, texts):
+    inside = figure.bbox.padded(1.0)  # a pixel for rounding
+    return [
+        text
+        for text, box in texts
+        if not (inside.contains(box.x0, box.y0) and inside.contains(box.x1, box.y1))
+    ]
+
+
+def overlapping(texts):
+    pairs = []
+    for number, (text, box) in enumerate(texts):
+        small = box.padded(-0.5)  # half a pixel for rounding
+        pairs += [
+            (text, other) for other, beside in texts[number + 1 :] if small.overlaps(beside.padded(-0.5))
+        ]
+    return pairs
+
+
+@pytest.mark.parametrize("name", ["fixture", *DEMO_CASES])
+def test_no_text_is_clipped_or_overlaps_another(name):
+    for key, figure, texts in drawn_figures(name):
+        assert len(texts) > 5, key
+        assert (key, clipped(figure, texts)) == (key, [])
+        assert (key, overlapping(texts)) == (key, [])
+
+
+@pytest.mark.parametrize("name", DEMO_CASES)
+def test_no_legend_lies_over_data(name):
+    for key, figure, _ in drawn_figures(name):
+        legends = [*figure.legends, *(ax.get_legend() for ax in figure.axes if ax.get_legend())]
+        for legend in legends:
+            box = legend.get_window_extent()
+            assert not [ax for ax in figure.axes if box.overlaps(ax.get_window_extent().padded(-0.5))], key
+
+
+def test_the_check_for_overlap_sees_one():
+    """Guards the two tests above: two labels in one place, and one beyond the edge, are found."""
+    from matplotlib.figure import Figure
+
+    figure = Figure()
+    figure.text(0.5, 0.5, "one")
+    figure.text(0.5, 0.5, "two")
+    figure.text(0.99, 0.2, "beyond the edge")
+    texts = boxes(figure)
+    assert overlapping(texts) == [("one", "two")]
+    assert clipped(figure, texts) == ["beyond the edge"]
+
+
+@pytest.mark.parametrize("name", DEMO_CASES)
+def test_the_governing_point_is_that_of_the_check(name):
+    best = demo_comparison(name).best
+    check = best.check("speed_torque")
+    time, segment, speed, torque = governing_row(best, best.detail)
+    assert (time, segment, abs(torque)) == (check.at_time_s, check.segment, check.demand)
+    cycle = best.detail.cycle
+    assert speed == pytest.approx(np.interp(time, cycle["time_s"], cycle["motor_speed_rad_s"]), abs=1e-9)
+
+
+@pytest.mark.parametrize("name", DEMO_CASES)
+def test_causes_are_stacked_to_their_sum(name):
+    """The filled areas reach from zero up to the sum of what asks, down to the sum of what helps."""
+    from matplotlib.collections import PolyCollection
+
+    comparison = demo_comparison(name)
+    detail = comparison.best.detail
+    with house_style():
+        figure = draw_causes(detail, AxisUnits.of(comparison.case))
+    (ax,) = figure.axes
+    areas = [area for area in ax.collections if isinstance(area, PolyCollection)]
+    assert len({area.get_hatch() for area in areas}) == len(
+        {tuple(area.get_facecolor()[0]) for area in areas}
+    )
+    corners = np.concatenate([area.get_paths()[0].vertices for area in areas])
+    names = [cause[0] for cause in _CAUSES]
+    parts = detail.cycle[names].to_numpy()
+    unit = 1e-3 if "[mN·m]" in ax.get_ylabel() else 1.0
+    # exact but for rounding: both are sums of the same doubles
+    assert unit * corners[:, 1].max() == pytest.approx(np.maximum(parts, 0.0).sum(axis=1).max())
+    assert unit * corners[:, 1].min() == pytest.approx(np.minimum(parts, 0.0).sum(axis=1).min(), abs=1e-12)
+    total = next(line for line in ax.lines if line.get_label() == "sum (air gap)")
+    assert unit * total.get_ydata() == pytest.approx(parts.sum(axis=1), abs=1e-9)
 
 
 def test_labels_are_spread_without_overlap_and_in_order():

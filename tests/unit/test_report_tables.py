@@ -5,14 +5,17 @@ import dataclasses
 import io
 import json
 import math
+import re
 import warnings
 from datetime import date
 
 import openpyxl
 import pytest
+from report_demo import DEMO_CASES, demo_comparison
 from report_fixture import HOSTILE, build_comparison, build_hostile
 
-from actuator_sizing.report.candidates_csv import render_candidates
+from actuator_sizing.report import render_report
+from actuator_sizing.report.candidates_csv import MOST_BYTES, render_candidates
 from actuator_sizing.report.json_results import render_json
 from actuator_sizing.report.workbook import render_workbook
 from actuator_sizing.report.workbook.results_sheets import LEADING_CANDIDATES, MOST_CANDIDATES
@@ -104,6 +107,59 @@ def test_key_results_have_named_cells(content, comparison):
     assert "governing_utilisation" in book.defined_names
 
 
+def test_the_rms_current_lives_from_the_rows_of_the_segments(content, comparison):
+    """The stored values obey the formulas: RMS² times duration, summed and divided by the cycle, is RMS²."""
+    formulas, values = load(content), load(content, data_only=True)
+    sheet = values["motion segments"]
+    rms, duration, integral = (
+        [cell.value for cell in column(sheet, title)]
+        for title in ("current RMS [A rms]", "duration [s]", "∫ i² dt [A²·s]")
+    )
+    assert integral == pytest.approx([r * r * d for r, d in zip(rms, duration, strict=True)], rel=1e-12)
+    place = formulas.defined_names["result_current_rms_a"].attr_text.replace("$", "").split("!")
+    last = 1 + len(rms)
+    live = formulas[place[0]][place[1]].value
+    assert live == f"=SQRT(SUM('motion segments'!M2:M{last})/SUM('motion segments'!E2:E{last}))"
+    stored = values[place[0]][place[1]].value
+    assert stored == comparison.best.quantities["current_rms_a"]
+    # the same sum of the same doubles in another order
+    assert math.sqrt(sum(integral) / sum(duration)) == pytest.approx(stored, rel=1e-12)
+
+
+@pytest.mark.parametrize("name", DEMO_CASES)
+def test_segments_of_the_demo_cases_add_up_to_the_rms_current(name):
+    best = demo_comparison(name).best
+    cycle_s = sum(segment.duration_s for segment in demo_comparison(name).case.segments)
+    squares = best.detail.segments["current_squared_a2_s"]
+    assert math.sqrt(squares.sum() / cycle_s) == pytest.approx(best.quantities["current_rms_a"], rel=1e-12)
+
+
+def test_every_sheet_prints_its_table(content):
+    for sheet in load(content).worksheets:
+        assert sheet.print_area.split("!")[1].startswith("$A$1:"), sheet.title
+
+
+def test_the_report_of_a_very_large_comparison_stays_small(comparison):
+    """A million sets leave 20 000 listed candidates; the list is cut where it would pass its size."""
+    import pandas as pd
+
+    long = pd.concat([comparison.candidates] * (20_000 // len(comparison.candidates)), ignore_index=True)
+    wide = long.assign(**{f"utilisation_{n}": long["utilisation"] * (n + 1) / 7.0 for n in range(24)})
+    changed = dataclasses.replace(comparison, candidates=wide)
+    listed = render_candidates(changed)
+    assert MOST_BYTES - 1000 < len(listed.content) <= MOST_BYTES
+    rows = list(csv.reader(io.StringIO(listed.content.decode("utf-8-sig"))))
+    assert len(rows) == listed.rows + 1 < len(wide)
+    assert all(len(row) == len(wide.columns) for row in rows)
+    files = render_report(changed, date=DAY)
+    assert sum(map(len, files.values())) < 5_000_000
+    said = load(files["sizing_tables.xlsx"])["summary"]
+    assert any(
+        f"the first {listed.rows} in candidates.csv" in str(cells[2])
+        for cells in said.iter_rows(values_only=True)
+    )
+
+
 def test_time_series_is_the_cycle_of_the_leading_set(content, comparison):
     sheet = load(content)["time series"]
     torque = [cell.value for cell in column(sheet, "motor torque [N·m]")]
@@ -120,8 +176,13 @@ def test_text_from_tables_is_never_a_formula_or_a_link():
         for cell in row
         if cell.data_type == "f" or cell.hyperlink
     ]
-    assert all(title == "checks" for title, _ in formulas)
-    assert all(value.startswith(("=G", "=1/J")) for _, value in formulas)
+    own = {
+        "checks": r"=G\d+/H\d+|=1/J\d+-1",
+        "motion segments": r"=D\d+\+E\d+|=L\d+\^2\*E\d+",
+        "summary": r"=SQRT\(SUM\('motion segments'!M2:M\d\)/SUM\('motion segments'!E2:E\d\)\)",
+    }
+    assert formulas
+    assert [(title, text) for title, text in formulas if not re.fullmatch(own.get(title, "none"), text)] == []
     motors = [cell.value for cell in column(book["candidates"], "motor")]
     assert motors[0] == HOSTILE[0]
     assert HOSTILE[2] in motors
@@ -146,7 +207,7 @@ def test_a_long_list_of_candidates_goes_to_the_file_beside(comparison):
     said = next(row for row in book["summary"].iter_rows(values_only=True) if row[0] == "candidates listed")
     assert said[1] == len(long)
     assert said[2] == "the first 500 in sheet candidates, all in candidates.csv"
-    assert render_candidates(changed).count(b"\r\n") == len(long) + 1
+    assert render_candidates(changed).rows == len(long)
 
 
 def test_the_workbook_is_the_same_every_time(content, comparison):
@@ -232,14 +293,14 @@ def test_an_empty_comparison_has_no_sets(comparison):
 
 
 def test_candidates_read_back(comparison):
-    rows = list(csv.reader(io.StringIO(render_candidates(comparison).decode("utf-8-sig"))))
+    rows = list(csv.reader(io.StringIO(render_candidates(comparison).content.decode("utf-8-sig"))))
     assert rows[0][-1] == "mass [kg]"
     assert len(rows) == len(comparison.candidates) + 1
     assert float(rows[1][6]) == comparison.candidates["utilisation"].iloc[0]
 
 
 def test_candidates_hold_no_text_that_a_spreadsheet_would_compute():
-    rows = list(csv.reader(io.StringIO(render_candidates(build_hostile()).decode("utf-8-sig"))))
+    rows = list(csv.reader(io.StringIO(render_candidates(build_hostile()).content.decode("utf-8-sig"))))
     texts = [cell for cells in rows[1:] for cell in cells]
     assert "'=1+1" in texts
     assert not [

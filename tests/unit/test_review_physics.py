@@ -6,14 +6,12 @@ import numpy as np
 import pytest
 
 from actuator_sizing.core.machine import judge, torque_of_current
-from actuator_sizing.core.moments import mean_products, support_points
 from actuator_sizing.errors import InputError
 from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
 from actuator_sizing.sizing.checks.motor import VOLTAGE
 from actuator_sizing.sizing.demand import build_demand
 from actuator_sizing.sizing.judging import ORDER, active_checks, judge_sets
 from actuator_sizing.sizing.results import FAILS
-from actuator_sizing.sizing.screening import _voltage_points as voltage_points
 from actuator_sizing.sizing.shortlist import evaluate_sets
 from tests.made_cases import DIRECT, GEARHEAD, MOTOR, SURROUNDINGS, case, cycle
 
@@ -56,12 +54,7 @@ def test_an_ambient_above_the_winding_limit_fails_the_winding_temperature():
 def block_of(made):
     """Every gearhead against every motor, as the screening sees them."""
     demand = build_demand(made)
-    gearheads = GearheadSide.of(
-        made.gearhead_parameters,
-        mean_products(demand.duration_s, demand.functions),
-        support_points(demand.functions, demand.flow),
-        voltage_points(demand),
-    )
+    gearheads = GearheadSide.of(made.gearhead_parameters, demand)
     motors = MotorSide.of(made.motor_parameters, made.surroundings)
     return Block(demand, made.surroundings, 10.0, motors, gearheads)
 

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 from actuator_sizing.report.document.blocks import Cell, Column, Paragraph, Section, Table, Working, row
 from actuator_sizing.report.document.comparing import shown_pair
-from actuator_sizing.report.document.verdict import describe_check, describe_set, shown_verdict
+from actuator_sizing.report.document.verdict import describe_check, describe_set
 from actuator_sizing.report.formatting import percent, quantity
 from actuator_sizing.report.text import clean
 from actuator_sizing.sizing.results import FAILS, NOT_CHECKED
@@ -53,7 +53,7 @@ def _check_row(check: CheckResult) -> tuple[Cell, ...]:
     note = f"{clean(check.formula, 300)}. Source: {clean(check.source, 300)}."
     if check.missing:
         note += f" Missing: {', '.join(clean(item) for item in check.missing)}."
-    share, verdict = None, shown_verdict(check)
+    share, verdict = None, check.shown_verdict
     if check.utilisation is not None and check.allowed > 0.0:
         share = min(check.utilisation / check.allowed, _LONGEST_BAR)  # infinite where there is no capacity
     text = percent(check.utilisation, check.allowed)

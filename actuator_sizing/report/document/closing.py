@@ -13,30 +13,38 @@ if TYPE_CHECKING:
     from actuator_sizing.report.document.blocks import Block
     from actuator_sizing.sizing.results import Comparison
 
+_WINDING = "sensor or resistance, cycle running, both bodies at ambient before"
+_HOUSING = "surface sensor, cycle running, both bodies at ambient before"
 #: Quantity, what to measure, SI unit, how
 _COMMISSIONING = (
     ("current_rms_a", "RMS motor current over one cycle", "A", "drive trace, cycle repeated until warm"),
     ("current_peak_a", "peak motor current", "A", "drive trace, full payload"),
     ("torque_peak_nm", "peak torque (air gap)", "N·m", "peak current times torque constant"),
     ("speed_peak_rad_s", "peak motor speed", "rad/s", "drive trace"),
-    (
-        "voltage_peak_v",
-        "peak motor voltage (model voltage, motor's basis)",
-        "V",
-        "drive trace, lowest bus voltage",
-    ),
+    ("voltage_peak_v", "peak motor voltage (model voltage, motor's basis)", "V", "drive trace, lowest bus"),
     ("bus_voltage_max_v", "highest bus voltage", "V", "while braking from the highest speed"),
     ("bus_voltage_min_v", "lowest bus voltage", "V", "while accelerating at full payload"),
-    (
-        "winding_max_degc",
-        "winding temperature in the periodic state",
-        "°C",
-        "sensor or resistance, after warm-up",
-    ),
-    ("housing_max_degc", "housing temperature in the periodic state", "°C", "surface sensor, after warm-up"),
     ("brake_energy_per_cycle_j", "energy into the brake resistor per cycle", "J", "chopper duty, full speed"),
+    ("winding_after_10_min_degc", "winding, 10 min after a start from cold", "°C", _WINDING),
+    ("winding_after_30_min_degc", "winding, 30 min after a start from cold", "°C", _WINDING),
+    ("winding_after_60_min_degc", "winding, 60 min after a start from cold", "°C", _WINDING),
+    ("winding_max_degc", "winding in the periodic state", "°C", "sensor or resistance, after warm-up"),
+    ("housing_after_10_min_degc", "housing, 10 min after a start from cold", "°C", _HOUSING),
+    ("housing_after_30_min_degc", "housing, 30 min after a start from cold", "°C", _HOUSING),
+    ("housing_after_60_min_degc", "housing, 60 min after a start from cold", "°C", _HOUSING),
+    ("housing_max_degc", "housing in the periodic state", "°C", "surface sensor, after warm-up"),
     ("following_error_max_m", "largest following error", "m", "drive trace, tuned loops"),
     ("following_error_max_rad", "largest following error", "rad", "drive trace, tuned loops"),
+)
+#: What is measured though nothing predicts it; one of the names known is enough.
+_UNPREDICTED = (
+    (("bus_voltage_max_v",), "highest bus voltage", "drive trace while braking from the highest speed"),
+    (("bus_voltage_min_v",), "lowest bus voltage", "drive trace while accelerating at full payload"),
+    (
+        ("following_error_max_m", "following_error_max_rad"),
+        "largest following error",
+        "drive trace, tuned loops",
+    ),
 )
 
 _OUTSIDE = (
@@ -115,6 +123,14 @@ def commissioning_section(comparison: Comparison) -> Section:
         if label == "A" and quantities.get("current_basis"):
             text += f" {quantities['current_basis']}"
         rows.append(row(what, text, how, ""))
+    around = comparison.case.surroundings
+    limits = {
+        "bus_voltage_min_v": f"not predicted; at least {quantity(around.bus_min_v, 'V')} was assumed",
+        "bus_voltage_max_v": f"not predicted; at most {quantity(around.bus_max_v, 'V')} was assumed",
+    }
+    for keys, what, how in _UNPREDICTED:
+        if all(quantities.get(key) is None for key in keys):
+            rows.append(row(what, limits.get(keys[0], "not predicted"), how, ""))
     columns = (
         Column("Measure", weight=2.4),
         Column("Predicted", weight=1.2),
@@ -122,8 +138,9 @@ def commissioning_section(comparison: Comparison) -> Section:
         Column("Measured, date, initials", weight=1.6),
     )
     note = Paragraph(
-        "A measured value that differs by more than its tolerance is a reason to review the inputs, "
-        "friction and payload first."
+        f"Ambient of the prediction: {quantity(around.ambient_degc, '°C')}; a machine in another ambient reads "
+        "about as much higher or lower. A measured value that differs by more than its tolerance is a reason "
+        "to review the inputs, friction and payload first."
     )
     return Section(
         "commissioning",

@@ -43,21 +43,22 @@ def _texts(best: SetResult) -> dict[str, tuple[str, str]]:
     return {
         "speed_torque": (
             "Speed–torque plane of the motor. The path is the duty cycle, arrows give its direction; the "
-            "filled region may last, the outer lines are the peak at minimum, nominal and maximum bus "
-            "voltage. Limits are drawn alike in all quadrants, which leaves out what the voltage adds "
-            "while braking.",
+            "hatched region may last, the outer lines are the peak at minimum, nominal and maximum bus "
+            "voltage, from the data sheets of motor and drive. Limits are drawn alike in all quadrants, which "
+            "leaves out what the voltage adds while braking.",
             f"The cycle reaches {torque} in the air gap and {speed}; RMS torque "
             f"{show('torque_rms_nm', 'N·m')} at RMS speed {show('speed_rms_rad_s', 'rad/s')}.",
         ),
         "temperature": (
             "Winding and housing from cold, both bodies at ambient, to the periodic state, and over the last "
-            "cycle. Computed temperatures, not measured ones.",
+            "cycle; the limit is that of the motor's data sheet or insulation class. Computed temperatures, not "
+            "measured ones.",
             f"The winding reaches {show('winding_max_degc', '°C')}, the housing "
             f"{show('housing_max_degc', '°C')} in the periodic state.",
         ),
         "current": (
-            "Motor current over one cycle with the limits of motor and drive, all in the motor's kind of "
-            "ampere.",
+            "Motor current over one cycle with the limits of motor and drive from their data sheets, all in the "
+            "motor's kind of ampere.",
             f"Peak {show('current_peak_a', 'A')}, RMS {show('current_rms_a', 'A')}.",
         ),
         "motion": (
@@ -65,7 +66,8 @@ def _texts(best: SetResult) -> dict[str, tuple[str, str]]:
             f"One cycle: the motor reaches {speed} and {torque}.",
         ),
         "torque_by_cause": (
-            "Air-gap torque over one cycle, split by what asks for it; the grey area is the sum.",
+            "Air-gap torque over one cycle, stacked by what asks for it: causes that drive along +x above zero, "
+            "causes that act along −x below; the line is their sum.",
             f"The sum peaks at {torque}; the parts are in the workbook, sheet time series.",
         ),
         "step_response": (

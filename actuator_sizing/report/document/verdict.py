@@ -9,9 +9,7 @@ from typing import TYPE_CHECKING
 from actuator_sizing.report.document.blocks import Bullets, Facts, Paragraph, Section
 from actuator_sizing.report.formatting import percent, quantity
 from actuator_sizing.report.text import clean, in_sentence, option, plural
-from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
-
-ADVICE_MET, ADVICE_NOT_MET = "advice met", "advice not met"
+from actuator_sizing.sizing.results import ADVICE_NOT_MET, FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
 
 if TYPE_CHECKING:
     from actuator_sizing.sizing.results import CheckResult, Comparison, SetResult
@@ -44,13 +42,6 @@ def describe_set(item: SetResult) -> str:
     """Name motor, gearhead with ratio, and drive."""
     gearhead = "direct drive" if item.gearhead is None else clean(item.gearhead, 60)
     return f"{clean(item.motor, 60)} + {gearhead} + {clean(item.drive, 60)}"
-
-
-def shown_verdict(check: CheckResult) -> str:
-    """Word the verdict of a check; advice neither passes nor fails."""
-    if not check.is_advice or check.utilisation is None:
-        return check.verdict
-    return ADVICE_NOT_MET if check.utilisation > check.allowed else ADVICE_MET
 
 
 def describe_check(check: CheckResult) -> str:
@@ -117,7 +108,7 @@ def verdict_section(comparison: Comparison) -> Section:
     advice = [
         in_sentence(c.title)
         for c in (comparison.sets[0].checks if comparison.sets else ())
-        if shown_verdict(c) == ADVICE_NOT_MET
+        if c.shown_verdict == ADVICE_NOT_MET
     ]
     if advice:
         notes.insert(0, f"Advice not met, which does not decide the verdict: {_listed(advice)}.")

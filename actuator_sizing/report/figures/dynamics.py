@@ -116,6 +116,10 @@ def _draw_stops(simulation: Simulation) -> Figure:
     for ax in axes:
         ax.axhline(0.0, color=style.QUIET, linewidth=0.8)
         ax.margins(y=0.12)
+    stopped = [simulation.quantities[key] for key in ("controlled_stop_s", "shorted_stop_s")]
+    known = [value for value in stopped if math.isfinite(value)]
+    if known:
+        axes[0].set_xlim(0.0, float(unit.convert(min(3.0 * max(known), float(series["time_s"].max())))))
     style.legend_above(axes[0], columns=2)
     figure.align_ylabels(axes)
     return figure
@@ -214,6 +218,9 @@ def draw_bode(simulation: Simulation) -> Figure:
     gain.axhline(0.0, color=style.INK, linewidth=0.9)
     phase.axhline(-180.0, color=style.INK, linewidth=0.9)
     gain.set_xscale("log")
+    # House style shows text as it is written, so powers of ten must not come as formulas.
+    phase.xaxis.set_major_formatter(lambda value, _: f"{value:g}")
+    gain.xaxis.set_minor_formatter(lambda *_: "")
     gain.set_ylim(-60.0, 60.0)
     phase.set_ylim(-270.0, 0.0)
     phase.set_yticks([-270, -225, -180, -135, -90, -45, 0])

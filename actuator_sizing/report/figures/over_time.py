@@ -17,14 +17,14 @@ if TYPE_CHECKING:
 
     from actuator_sizing.sizing.results import SetDetail, SetResult
 
-#: column of the cycle, name in the legend, colour, dashes
+#: column of the cycle, name in the legend, colour, hatch
 _CAUSES = (
-    ("inertia_load_nm", "load inertia", style.DEMAND, "-"),
-    ("inertia_rotor_nm", "rotor inertia", style.SECOND, (0, (6, 2))),
-    ("gravity_nm", "gravity", style.CONTINUOUS, (0, (3, 1.5))),
-    ("friction_nm", "friction", style.THIRD, (0, (6, 2, 1, 2))),
-    ("process_nm", "process", style.FOURTH, (0, (1.2, 1.4))),
-    ("losses_nm", "losses", style.PEAK_LIMIT, (0, (2, 1, 1, 1, 1, 1))),
+    ("gravity_nm", "gravity", style.CONTINUOUS, "...."),
+    ("friction_nm", "friction", style.THIRD, "xxxx"),
+    ("process_nm", "process", style.FOURTH, "||||"),
+    ("losses_nm", "losses of gear and motor", style.PEAK_LIMIT, "----"),
+    ("inertia_load_nm", "load inertia", style.DEMAND, ""),
+    ("inertia_rotor_nm", "rotor inertia", style.SECOND, "////"),
 )
 
 
@@ -59,7 +59,7 @@ def draw_motion(detail: SetDetail, units: AxisUnits) -> Figure:
 
 
 def draw_causes(detail: SetDetail, units: AxisUnits) -> Figure:
-    """Draw the air-gap torque over one cycle, split by what asks for it.
+    """Draw the air-gap torque over one cycle, stacked by what asks for it: helpers below zero, the rest above.
 
     Parameters
     ----------
@@ -72,18 +72,26 @@ def draw_causes(detail: SetDetail, units: AxisUnits) -> Figure:
     time, unit = _time(cycle)
     total = cycle["motor_torque_nm"].to_numpy(float)
     parts = [cause for cause in _CAUSES if cause[0] in cycle and np.nanmax(np.abs(cycle[cause[0]])) > 0.0]
-    shown = units.effort([*total, *(v for cause in parts for v in cycle[cause[0]])])
-    figure, (ax,) = style.new_axes(3.5, right_in=0.25, top_in=0.78)
-    ax.fill_between(time, 0.0, shown.convert(total), facecolor="#e3e3e3", edgecolor="none", zorder=1)
-    for column, name, color, dash in parts:
-        values = shown.convert(cycle[column].to_numpy(float))
-        ax.plot(time, values, color=color, linestyle=dash, linewidth=1.4, label=name)
-    ax.plot(time, shown.convert(total), color=style.INK, linewidth=2.0, label="sum (air gap)")
-    ax.axhline(0.0, color=style.QUIET, linewidth=0.8)
+    values = [cycle[column].to_numpy(float) for column, *_ in parts]
+    shown = units.effort([*total, *(v for part in values for v in part)])
+    figure, (ax,) = style.new_axes(3.9, right_in=0.25, top_in=0.78)
+    above, below = np.zeros_like(total), np.zeros_like(total)
+    for (_, name, color, hatch), part in zip(parts, values, strict=True):
+        look = {"facecolor": color, "hatch": hatch, "edgecolor": style.INK, "linewidth": 0.0, "zorder": 1.2}
+        for base, piece in ((above, np.maximum(part, 0.0)), (below, np.minimum(part, 0.0))):
+            if np.any(piece):
+                ax.fill_between(time, shown.convert(base), shown.convert(base + piece), label=name, **look)
+                name = "_"  # named once, whether it helps or asks
+            base += piece
+    ax.plot(
+        time, shown.convert(total), color="white", linewidth=4.0, zorder=2.4
+    )  # a rim, seen on any filling
+    ax.plot(time, shown.convert(total), color=style.INK, linewidth=2.0, label="sum (air gap)", zorder=2.5)
+    ax.axhline(0.0, color=style.INK, linewidth=0.8)
     ax.set_ylabel(f"{units.effort_word} at the motor [{shown.label}]")
     ax.set_xlabel(f"time [{unit.label}], positive drives +x")
     _mark_segments([ax], cycle, unit)
-    style.legend_above(ax, columns=4, bbox_to_anchor=(0.0, 1.09))
+    style.legend_above(ax, columns=4, bbox_to_anchor=(0.0, 1.08))
     return figure
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
 from typing import TYPE_CHECKING, Any
 
@@ -168,25 +169,29 @@ def _draw_points(
             markeredgecolor=style.INK,
             markeredgewidth=1.0,
             zorder=6,
-            label=f"governs: {style.shorten(segment, 18)}, {quantity(time, 's', 3)}",
+            label=f"governs: {style.shorten(segment, 18)}, {quantity(time, 's')}",
         )
 
 
 def governing_row(best: SetResult, detail: SetDetail) -> tuple[float, str, float, float] | None:
-    """Find the instant of the cycle that governs the speed–torque check: time, segment, speed, torque."""
-    checks = [c for c in best.checks if c.check == "speed_torque" and c.at_time_s is not None]
-    if not checks:
+    """Place the point that governs the speed–torque check: its time, segment, speed, torque.
+
+    Time, segment and torque are those of the check; the cycle tells the speed at that time and the sign.
+    """
+    check = next((c for c in best.checks if c.check == "speed_torque"), None)
+    if check is None or check.at_time_s is None or check.demand is None:
         return None
-    cycle, at = detail.cycle, float(checks[0].at_time_s or 0.0)
+    cycle, at = detail.cycle, float(check.at_time_s)
     time, speed, torque = (
         cycle[name].to_numpy(float) for name in ("time_s", "motor_speed_rad_s", "motor_torque_nm")
     )
-    segment = str(checks[0].segment or "")
     rows = np.flatnonzero(np.abs(time - at) <= 1e-9 * max(float(time[-1]), 1e-12))
-    if rows.size:  # at a jump, the worse of the two one-sided values
-        row = int(rows[int(np.argmax(np.abs(torque[rows])))])
-        return at, segment, float(speed[row]), float(torque[row])
-    return at, segment, float(np.interp(at, time, speed)), float(np.interp(at, time, torque))
+    if rows.size:  # at a jump, the one-sided value that the check took
+        row = int(rows[int(np.argmin(np.abs(np.abs(torque[rows]) - check.demand)))])
+        found, sign = float(speed[row]), float(torque[row])
+    else:
+        found, sign = float(np.interp(at, time, speed)), float(np.interp(at, time, torque))
+    return at, str(check.segment or ""), found, math.copysign(check.demand, sign)
 
 
 def _set_ranges(ax: Axes, quadrants: tuple[tuple[int, ...], tuple[int, ...]]) -> None:

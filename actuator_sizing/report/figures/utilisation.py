@@ -110,7 +110,8 @@ class _Cells:
         ink = "white" if color == _FAILS_COLOR else style.INK
         weight = "bold" if check.verdict in (FAILS, LOW_RESERVE) else "normal"
         text = _short_percent(check)
-        ax.text(x, y, text, ha="center", va="center", fontsize=6.4, color=ink, fontweight=weight)
+        size = 6.4 if len(text) < 5 else 5.6  # as wide as the cell at most
+        ax.text(x, y, text, ha="center", va="center", fontsize=size, color=ink, fontweight=weight)
 
     def draw(self, ax: Axes) -> None:
         """Draw what was collected, the frames on top."""

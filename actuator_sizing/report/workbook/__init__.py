@@ -25,7 +25,7 @@ _OPTIONS = {
 }
 
 
-def render_workbook(comparison: Comparison, day: date) -> bytes:
+def render_workbook(comparison: Comparison, day: date, rows_in_file: int | None = None) -> bytes:
     """Write summary, candidates, checks, segments, curves, parts and inputs as an ``.xlsx`` workbook.
 
     Parameters
@@ -34,6 +34,8 @@ def render_workbook(comparison: Comparison, day: date) -> bytes:
         The answer.
     day : date
         Date of the report; the workbook is the same, byte for byte, for the same comparison and date.
+    rows_in_file : int or None
+        How many candidates the file beside lists; None if it lists all.
     """
     from xlsxwriter import Workbook
 
@@ -50,7 +52,7 @@ def render_workbook(comparison: Comparison, day: date) -> bytes:
         )
         book.set_calc_mode("auto")
         sheets = Sheets(book)
-        add_summary(sheets, comparison, day)
+        add_summary(sheets, comparison, day, rows_in_file)
         add_candidates(sheets, comparison)
         add_checks(sheets, comparison)
         add_segments(sheets, comparison)

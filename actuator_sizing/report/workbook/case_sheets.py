@@ -5,12 +5,14 @@ from __future__ import annotations
 from typing import TYPE_CHECKING, Any
 
 from actuator_sizing.report.document.inputs import part_entries
+from actuator_sizing.report.figures.units import AxisUnits
 from actuator_sizing.report.workbook.writer import Field, Sheets
 
 if TYPE_CHECKING:
     from actuator_sizing.case.model import Entry
     from actuator_sizing.sizing.results import Comparison
 
+SEGMENTS = "motion segments"
 _ENTRY_FIELDS = (
     Field("table"), Field("row", "integer"), Field("name"), Field("quantity"), Field("as entered"),
     Field("as understood [unit beside]", "number"), Field("unit"), Field("origin"),
@@ -19,22 +21,42 @@ _ENTRY_FIELDS = (
 
 
 def add_segments(sheets: Sheets, comparison: Comparison) -> None:
-    """Write the duty cycle, one row a segment."""
-    linear = comparison.case.mechanism.coordinate == "linear"
-    payload, effort = ("kg", "N") if linear else ("kg·m²", "N·m")
-    fields = (
+    """Write the duty cycle, one row a segment, with the leading set's share of the RMS current in each."""
+    units = AxisUnits.of(comparison.case)
+    payload, effort = ("kg", "N") if units.linear_load else ("kg·m²", "N·m")
+    fields = [
         Field("row", "integer"), Field("segment"), Field("motion law"), Field("start [s]", "number"),
-        Field("duration [s]", "number"), Field("end [s]", "number"), Field(f"payload [{payload}]", "number"),
-        Field(f"process effort [{effort}]", "number"), Field("brake closed"), Field("note"),
-    )  # fmt: skip
-    rows = [
+        Field("duration [s]", "number"), Field("end [s]", "number", formula=lambda r: f"=D{r}+E{r}"),
+        Field(f"payload [{payload}]", "number"), Field(f"process effort [{effort}]", "number"),
+        Field("brake closed"), Field("note"),
+    ]  # fmt: skip
+    rows: list[tuple[Any, ...]] = [
         (
             s.row, s.name, s.law, s.start_s, s.duration_s, s.start_s + s.duration_s, s.payload,
             s.process_effort, s.brake_closed, s.note,
         )
         for s in comparison.case.segments
     ]  # fmt: skip
-    sheets.add_table("motion segments", fields, rows)
+    detail = comparison.sets[0].detail if comparison.sets else None
+    if detail is not None and detail.segments is not None:
+        basis = comparison.sets[0].quantities.get("current_basis") or ""
+        fields += [
+            Field(f"motor {units.effort_word} RMS [{'N' if units.linear_motor else 'N·m'}]", "number"),
+            Field(f"current RMS [A {basis}]".replace(" ]", "]"), "number"),
+            Field("∫ i² dt [A²·s]", "number", formula=lambda r: f"=L{r}^2*E{r}"),
+        ]
+        shares = detail.segments[["torque_rms_nm", "current_rms_a", "current_squared_a2_s"]]
+        rows = [row + tuple(share) for row, share in zip(rows, shares.to_numpy().tolist(), strict=True)]
+    sheets.add_table(SEGMENTS, fields, rows)
+
+
+def rms_formula(comparison: Comparison) -> str | None:
+    """Formula of the RMS current from the rows of the sheet of segments; None where it has no such column."""
+    detail = comparison.sets[0].detail if comparison.sets else None
+    if detail is None or detail.segments is None:
+        return None
+    last = len(comparison.case.segments) + 1
+    return f"=SQRT(SUM('{SEGMENTS}'!M2:M{last})/SUM('{SEGMENTS}'!E2:E{last}))"
 
 
 def add_parts(sheets: Sheets, comparison: Comparison) -> None:

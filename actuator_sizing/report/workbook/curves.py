@@ -20,6 +20,7 @@ _PEAKS = (
     ("torque_peak_nominal_bus_nm", "peak at nominal bus", "dash"),
     ("torque_peak_max_bus_nm", "peak at maximum bus", "round_dot"),
 )
+_CHART_COLUMNS = 12  # of the usual width, which the chart covers
 _DEMAND, _LIMIT, _CONTINUOUS = "#0072B2", "#D55E00", "#009E73"
 
 
@@ -97,6 +98,7 @@ def add_speed_torque(sheets: Sheets, comparison: Comparison) -> None:
     chart.set_size({"width": 760, "height": 460})
     chart.show_na_as_empty_cell()
     description = "Duty cycle of the leading set in the speed-torque plane with its limits"
+    sheets.set_print_area(sheet, last, len(columns) + 1 + _CHART_COLUMNS)
     sheet.insert_chart(1, len(columns) + 1, chart, {"description": description})
 
 
@@ -114,6 +116,7 @@ def _add_frame(sheets: Sheets, name: str, table: pd.DataFrame, units: AxisUnits)
         sheet.set_column(column, column, 18 if field.style == "text" else 13)
     sheets.set_head_height(sheet, fields, [18 if field.style == "text" else 13 for field in fields])
     sheet.autofilter(0, 0, max(len(table), 1), len(fields) - 1)
+    sheets.set_print_area(sheet, len(table), len(fields))
 
 
 def _column_format(values: pd.Series) -> str:

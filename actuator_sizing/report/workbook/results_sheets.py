@@ -6,8 +6,9 @@ import math
 from datetime import date
 from typing import TYPE_CHECKING, Any
 
-from actuator_sizing.report.document.verdict import cover_facts, governing, shown_verdict, verdict_sentence
+from actuator_sizing.report.document.verdict import cover_facts, governing, verdict_sentence
 from actuator_sizing.report.headings import heading, name_and_unit
+from actuator_sizing.report.workbook.case_sheets import rms_formula
 from actuator_sizing.report.workbook.writer import Field, Sheets, row_height
 from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
 
@@ -17,7 +18,7 @@ if TYPE_CHECKING:
     from actuator_sizing.sizing.results import CheckResult, Comparison
 
 #: Of a list with more candidates than the first number, the workbook shows the second; the file beside has all.
-MOST_CANDIDATES, LEADING_CANDIDATES = 20_000, 500
+MOST_CANDIDATES, LEADING_CANDIDATES = 2_000, 500
 _VERDICT_COLORS = {
     PASSES: ("#DDEFE6", "#00583F"),
     LOW_RESERVE: ("#FBEBCB", "#7A4F00"),
@@ -26,7 +27,7 @@ _VERDICT_COLORS = {
 }
 
 
-def add_summary(sheets: Sheets, comparison: Comparison, day: date) -> None:
+def add_summary(sheets: Sheets, comparison: Comparison, day: date, rows_in_file: int | None) -> None:
     """Write what was sized, the answer, and the quantities of the leading set as named cells."""
     sentence, state = verdict_sentence(comparison)
     rows: list[tuple[str, Any, str, str]] = [
@@ -37,10 +38,11 @@ def add_summary(sheets: Sheets, comparison: Comparison, day: date) -> None:
     for name in ("sets_total", "incompatible", "rejected", "evaluated", "confirmed_passing"):
         rows.append((name.replace("_", " "), getattr(counts, name), "sets", name))
     total = len(comparison.candidates)
+    in_file = "all" if rows_in_file in (None, total) else f"the first {rows_in_file}"
     listed = (
         "all in sheet candidates"
         if shown_candidates(comparison) == total
-        else (f"the first {shown_candidates(comparison)} in sheet candidates, all in candidates.csv")
+        else f"the first {shown_candidates(comparison)} in sheet candidates, {in_file} in candidates.csv"
     )
     rows.append(("candidates listed", total, listed, "candidates_listed"))
     if comparison.sets:
@@ -73,6 +75,9 @@ def add_summary(sheets: Sheets, comparison: Comparison, day: date) -> None:
             sheet.set_row(index, row_height(len(value), 46), wrapped)
         if name:
             sheets.book.define_name(name, f"=summary!$B${index + 1}")
+        formula = rms_formula(comparison) if name == "result_current_rms_a" else None
+        if formula is not None and value is not None:
+            sheets.write(sheet, index, 1, Field("", "number", formula=lambda _, text=formula: text), value)
 
 
 def add_candidates(sheets: Sheets, comparison: Comparison) -> None:
@@ -124,7 +129,7 @@ def add_checks(sheets: Sheets, comparison: Comparison) -> None:
                 (
                     item.rank, item.motor, "direct" if item.gearhead is None else item.gearhead, item.drive,
                     check.title, check.group, check.demand, check.capacity, check.unit or "-",
-                    check.utilisation, check.allowed, check.margin, shown_verdict(check), check.is_advice, time,
+                    check.utilisation, check.allowed, check.margin, check.shown_verdict, check.is_advice, time,
                     check.segment, check.formula, check.source, ", ".join(check.missing),
                 )
             )  # fmt: skip

@@ -94,7 +94,12 @@ class Sheets:
             if field.bar and rows:
                 sheet.conditional_format(1, column, len(rows), column, _bar())
         self._set_print(sheet, name)
+        self.set_print_area(sheet, len(rows), len(fields))
         return sheet
+
+    def set_print_area(self, sheet: Worksheet, rows: int, columns: int) -> None:
+        """Print the table and nothing beside it."""
+        sheet.print_area(0, 0, max(rows, 1), columns - 1)
 
     def set_head_height(self, sheet: Worksheet, fields: Sequence[Field], widths: Sequence[int]) -> None:
         """Make the heading row as high as its longest heading, which wraps within its column."""

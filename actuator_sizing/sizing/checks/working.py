@@ -12,6 +12,7 @@ from actuator_sizing.core.parameters import BASIS_PEAK, BASIS_RMS, GearheadParam
 from actuator_sizing.core.quadrature import integrate, interpolate
 from actuator_sizing.core.transmission import stage_factor
 from actuator_sizing.sizing.checks.base import Sets, digits
+from actuator_sizing.sizing.pair_course import course
 
 FloatArray = NDArray[np.float64]
 
@@ -62,8 +63,6 @@ def instant_of(sets: Sets, i: int, at_s: float, largest: str) -> Instant:
     Instant
         Everything that the working of a check names. [-]
     """
-    from actuator_sizing.sizing.evaluation import course
-
     demand = sets.demand
     motor, gearhead = sets.motors.take(slice(i, i + 1)), sets.gearheads.take(slice(i, i + 1))
     judged = judge(motor, sets.surroundings)
@@ -195,8 +194,6 @@ def available_voltage_working(sets: Sets, i: int) -> str:
 
 def rms_working(sets: Sets, i: int) -> str:
     """RMS current from the integral of i² over each segment."""
-    from actuator_sizing.sizing.evaluation import course
-
     demand = sets.demand
     motor, gearhead = sets.motors.take(slice(i, i + 1)), sets.gearheads.take(slice(i, i + 1))
     current = course(demand, motor, gearhead, judge(motor, sets.surroundings)).current_a[0]

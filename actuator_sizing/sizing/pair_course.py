@@ -1,0 +1,166 @@
+"""Courses of torque, current, voltage and loss over the cycle, for motor × gearhead pairs."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from actuator_sizing.core.capability import terminal_voltage
+from actuator_sizing.core.machine import JudgedMotor, current_of_torque
+from actuator_sizing.core.moments import gearhead_rows, motor_columns
+from actuator_sizing.core.parameters import GearheadParameters, MotorParameters
+from actuator_sizing.core.quadrature import differentiation_matrix
+from actuator_sizing.core.thermal import HeatLoss, subpiece_counts, subpiece_durations, subpiece_means
+from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.thermal_data import fastest_time_constant
+
+FloatArray = NDArray[np.float64]
+
+
+@dataclass(frozen=True)
+class PairCourse:
+    """Courses over the cycle of B pairs at the nodes, shape (B, P, K), at judged temperatures."""
+
+    motor_speed_rad_s: FloatArray
+    torque_nm: FloatArray  # air gap
+    shaft_torque_nm: FloatArray  # motor shaft
+    current_a: FloatArray  # in the motor's basis
+    current_slope_a_s: FloatArray
+    voltage_v: FloatArray
+    voltage_without_inductance_v: FloatArray
+
+
+def per_pair(values: FloatArray) -> FloatArray:
+    """Values of B pairs against pieces and nodes, shape (B, 1, 1). [-]"""
+    return values[:, None, None]
+
+
+def air_gap_torque(
+    demand: Demand, motors: MotorParameters, gearheads: GearheadParameters
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Air-gap torque, motor speed and motor shaft torque at the nodes for B pairs.
+
+    Parameters
+    ----------
+    demand : Demand
+        The cycle at the driven shaft. [-]
+    motors, gearheads : MotorParameters, GearheadParameters
+        B rows each: the pairs. [-]
+
+    Returns
+    -------
+    torque_nm : ndarray, shape (B, P, K)
+        Torque at the air gap. [N·m]
+    speed_rad_s : ndarray, shape (B, P, K)
+        Motor speed. [rad/s]
+    shaft_torque_nm : ndarray, shape (B, P, K)
+        Torque at the motor shaft. [N·m]
+
+    Notes
+    -----
+    ``T = (J_m + J_g) n α + k T_shaft/n + (T_c + T_0) sgn ω + c n ω`` with k by the direction of power of the
+    gearhead; with the holding brake closed there is no torque. Linear in the six functions of `core.moments`,
+    so that one product of matrices serves all pairs.
+    """
+    rows = gearhead_rows(gearheads)
+    motor = motor_columns(motors.rotor_inertia_kg_m2, motors.friction_torque_nm, motors.viscous_friction_nm_s)
+    functions = demand.functions.reshape(6, -1)
+    shape = (len(motors), *demand.shaft_speed.shape)
+    at_shaft = (rows[:, 0] @ functions).reshape(shape)
+    torque = (np.einsum("bi,bij->bj", motor, rows) @ functions).reshape(shape)
+    omega = per_pair(gearheads.ratio) * demand.shaft_speed
+    return torque, omega, at_shaft
+
+
+def course(
+    demand: Demand, motors: MotorParameters, gearheads: GearheadParameters, judged: JudgedMotor
+) -> PairCourse:
+    """Torque, current and voltage at the nodes for B pairs.
+
+    Parameters
+    ----------
+    demand : Demand
+        The cycle at the driven shaft. [-]
+    motors, gearheads : MotorParameters, GearheadParameters
+        B rows each: the pairs. [-]
+    judged : JudgedMotor
+        The same motors at judged temperatures. [-]
+
+    Returns
+    -------
+    PairCourse
+        Arrays of shape (B, P, K). [-]
+
+    Notes
+    -----
+    ``i = T/K`` (saturation solved), ``u = √((R i + K ω + L di/dt)² + (p ω L i)²)``.
+    """
+    torque, omega, at_shaft = air_gap_torque(demand, motors, gearheads)
+    current = current_of_torque(
+        torque, per_pair(judged.torque_constant_nm_per_a), per_pair(judged.saturation_per_a2)
+    )
+    slope = (current @ differentiation_matrix().T) * (2.0 / demand.duration_s[:, None])
+    electrical = (
+        per_pair(judged.resistance_ohm),
+        per_pair(judged.inductance_h),
+        per_pair(judged.torque_constant_nm_per_a),
+        per_pair(judged.reactance_per_speed),
+    )
+    return PairCourse(
+        omega,
+        torque,
+        at_shaft,
+        current,
+        slope,
+        terminal_voltage(current, omega, slope, *electrical),
+        terminal_voltage(current, omega, np.zeros(1), *electrical),
+    )
+
+
+def speed_loss(motors: MotorParameters, speed_rad_s: FloatArray) -> FloatArray:
+    """Friction and iron loss ``T_c |ω| + c ω²`` at the nodes, shape (B, P, K). [W]"""
+    T_c, c = per_pair(motors.friction_torque_nm), per_pair(motors.viscous_friction_nm_s)
+    return np.asarray(T_c * np.abs(speed_rad_s) + c * speed_rad_s**2)
+
+
+def heat_loss(demand: Demand, motors: MotorParameters, judged: JudgedMotor, c: PairCourse) -> HeatLoss:
+    """Losses on each piece at reference temperatures, as the thermal model wants them.
+
+    Parameters
+    ----------
+    demand : Demand
+        The cycle. [-]
+    motors : MotorParameters
+        B motors. [-]
+    judged : JudgedMotor
+        The same at judged temperatures, at which the current of `c` was found. [-]
+    c : PairCourse
+        Courses of the pairs. [-]
+
+    Returns
+    -------
+    HeatLoss
+        Pieces on the last axis; a piece that lasts long against the winding's time constant is divided. [-]
+
+    Notes
+    -----
+    The torque is what is given: the current at reference temperatures is the judged one times K over its
+    reference value, and the thermal model scales the loss by the temperatures of each instant.
+    """
+    cold = (judged.torque_constant_nm_per_a / motors.torque_constant_nm_per_a)[:, None, None]
+    copper = per_pair(motors.resistance_ohm) * (c.current_a * cold) ** 2
+    by_speed = speed_loss(motors, c.motor_speed_rad_s)
+    tau = fastest_time_constant(motors)
+    shortest = float(np.nanmin(tau)) if np.isfinite(tau).any() else np.inf
+    counts = subpiece_counts(demand.duration_s, copper, shortest)
+    return HeatLoss(
+        duration_s=subpiece_durations(demand.duration_s, counts),
+        copper_loss_w=subpiece_means(copper, counts),
+        speed_loss_w=subpiece_means(by_speed, counts),
+        resistance_coefficient_per_k=motors.resistance_coefficient_per_k,
+        resistance_reference_degc=motors.resistance_reference_degc,
+        magnet_coefficient_per_k=motors.magnet_coefficient_per_k,
+        magnet_reference_degc=motors.magnet_reference_degc,
+    )

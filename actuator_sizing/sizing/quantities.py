@@ -1,0 +1,128 @@
+"""Single numbers of one set: SI, named with their unit, None where not known."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+
+from actuator_sizing.core.parameters import CURRENT_BASES
+from actuator_sizing.core.warm_up import temperatures_after, warm_up
+from actuator_sizing.sizing.checks import Sets
+from actuator_sizing.sizing.checks.motor import current_limited_torque
+from actuator_sizing.sizing.set_model import SetModel
+
+COMMISSIONING_TIMES_S = (600.0, 1800.0, 3600.0)
+
+_FROM_PAIRS = (
+    "torque_peak_nm", "torque_min_nm", "torque_rms_nm", "shaft_torque_peak_nm",
+    "current_peak_a", "current_rms_a",
+    "speed_peak_rad_s", "speed_rms_rad_s", "speed_mean_abs_rad_s",
+    "voltage_peak_v", "voltage_peak_without_inductance_v", "voltage_peak_at_steps_v", "voltage_available_v",
+    "copper_loss_mean_w", "friction_loss_mean_w",
+    "energy_airgap_motoring_j", "energy_airgap_regenerated_j",
+    "energy_shaft_motoring_j", "energy_shaft_regenerated_j",
+    "energy_terminals_motoring_j", "energy_terminals_regenerated_j", "power_terminals_peak_w",
+    "winding_max_degc", "winding_min_degc", "winding_mean_degc", "housing_max_degc", "housing_mean_degc",
+    "inertia_ratio", "resistance_ohm", "torque_constant_nm_per_a", "judged_winding_degc", "magnet_degc",
+)  # fmt: skip
+
+
+def quantities(model: SetModel, sets: Sets, index: int) -> dict[str, Any]:
+    """Quantities of one set for results.json: SI, flat, None where not known.
+
+    Parameters
+    ----------
+    model : SetModel
+        The set. [-]
+    sets : Sets
+        Evaluated sets. [-]
+    index : int
+        Which of them the model is. [-]
+
+    Returns
+    -------
+    dict
+        Names carry their unit; currents are in the basis given by ``current_basis``. [-]
+    """
+    p = sets.pairs
+    answer: dict[str, Any] = {name: _known(getattr(p, name)[index]) for name in _FROM_PAIRS}
+    answer["current_basis"] = CURRENT_BASES[int(model.motor.current_basis[0])]
+    answer["speed_torque_margin"] = _margin(sets, index)
+    answer.update(_bus_energies(model, answer))
+    answer.update(_warm_up_quantities(model, answer["winding_max_degc"]))
+    answer["drive_current_peak_a"] = _known(sets.drive_current_peak_a[index])
+    answer["drive_current_rms_a"] = _known(sets.drive_current_rms_a[index])
+    answer["drive_current_basis"] = CURRENT_BASES[int(model.drive.current_basis[0])]
+    for name in ("bus_voltage_max_v", "brake_energy_per_cycle_j", "brake_power_mean_w", "brake_power_peak_w"):
+        answer[name] = None
+    answer.update(_step_quantities(model))
+    return answer
+
+
+def _known(value: Any) -> float | None:
+    number = float(value)
+    return number if np.isfinite(number) else None
+
+
+def _margin(sets: Sets, index: int) -> float | None:
+    """Smallest of available over required torque less one, over the whole cycle."""
+    current = sets.pairs.torque_peak_nm[index] / current_limited_torque(sets)[index]
+    utilisation = max(float(sets.pairs.plane_utilisation[index]), float(np.nan_to_num(current, nan=0.0)))
+    if np.isnan(current) or utilisation == 0.0:
+        return None
+    return 1.0 / utilisation - 1.0
+
+
+def _bus_energies(model: SetModel, known: dict[str, Any]) -> dict[str, Any]:
+    """Energies at the DC bus from the drive's efficiency, in the direction power flows."""
+    efficiency = float(model.drive.efficiency[0])
+    if not np.isfinite(efficiency):
+        return {"energy_bus_motoring_j": None, "energy_bus_regenerated_j": None}
+    return {
+        "energy_bus_motoring_j": known["energy_terminals_motoring_j"] / efficiency,
+        "energy_bus_regenerated_j": known["energy_terminals_regenerated_j"] * efficiency,
+    }
+
+
+def _warm_up_quantities(model: SetModel, winding_max_degc: float | None) -> dict[str, Any]:
+    """When the winding passes its limit from cold; None where it never does or where data is missing."""
+    limit = float(model.motor.winding_limit_degc[0])
+    if winding_max_degc is not None and not winding_max_degc > limit:
+        return {"time_to_limit_s": None}
+    warming = warm_up(model.network, model.loss, model.case.surroundings.ambient_degc, limit)
+    return {"time_to_limit_s": None if warming is None else _known(warming.time_to_limit_s)}
+
+
+def commissioning_quantities(model: SetModel) -> dict[str, Any]:
+    """Winding and housing temperature after given times from cold, to compare on the machine."""
+    ambient = model.case.surroundings.ambient_degc
+    after = temperatures_after(model.network, model.loss, ambient, COMMISSIONING_TIMES_S)
+    answer: dict[str, Any] = {}
+    for position, time in enumerate(COMMISSIONING_TIMES_S):
+        minutes = f"{time / 60.0:.0f}_min"
+        for body in ("winding", "housing"):
+            value = None if after is None else _known(getattr(after, f"{body}_degc")[position])
+            answer[f"{body}_after_{minutes}_degc"] = value
+    return answer
+
+
+def _step_quantities(model: SetModel) -> dict[str, Any]:
+    step = model.step()
+    answer: dict[str, Any] = {
+        "step_voltage_v": step.voltage_v,
+        "step_inertia_kg_m2": model.total_inertia,
+        "step_electrical_time_constant_s": step.electrical_time_constant_s,
+        "step_mechanical_time_constant_s": step.mechanical_time_constant_s,
+        "step_final_speed_rad_s": step.final_speed_rad_s,
+        "step_rise_time_s": step.rise_time_s,
+        "step_peak_time_s": step.peak_time_s,
+        "step_overshoot_ratio": step.overshoot_ratio,
+        "step_settling_time_s": step.settling_time_s,
+        "step_peak_current_a": step.peak_current_a,
+        "step_peak_current_time_s": step.peak_current_time_s,
+    }
+    for number, pole in enumerate(step.poles_per_s, start=1):
+        answer[f"step_pole_{number}_real_per_s"] = pole.real
+        answer[f"step_pole_{number}_imag_per_s"] = pole.imag
+    return {name: _known(value) for name, value in answer.items()}
