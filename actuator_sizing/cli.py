@@ -207,9 +207,9 @@ def simulate(
     import math
 
     from actuator_sizing.case.reading import read_case
+    from actuator_sizing.simulation_console import print_simulation
     from actuator_sizing.sizing.simulation import parse_settings
     from actuator_sizing.sizing.simulation import simulate as simulate_set
-    from actuator_sizing.simulation_console import print_simulation
 
     simulation = simulate_set(
         read_case(case),

@@ -70,7 +70,9 @@ def read_samples(
         try:
             unit = parse_unit(unit_text, kinds[name])
         except UnitError as error:
-            raise _wrong(path, None, heading, shown(unit_text), f"a unit of {kinds[name]}", str(error)) from None
+            raise _wrong(
+                path, None, heading, shown(unit_text), f"a unit of {kinds[name]}", str(error)
+            ) from None
         values = np.empty(len(rows))
         for position, (number, cells) in enumerate(rows):
             try:

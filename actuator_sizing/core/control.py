@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, fields, replace
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -180,7 +181,7 @@ class Cascade:
         """
         self.settings = settings
         self._gains = settings.row()
-        self._loop = (compiled_loop() if is_compiled else None) or cascade_loop
+        self._loop: Callable[..., None] = (compiled_loop() if is_compiled else None) or cascade_loop
         self.is_compiled = self._loop is not cascade_loop
         self.change(plant)
         K = plant.torque_constant_nm_per_a
@@ -191,7 +192,9 @@ class Cascade:
         state[MOTOR_ANGLE] = state[LAST_SEEN] = angle_rad
         if settings.encoder_step_rad > 0.0:
             step = settings.encoder_step_rad
-            state[LAST_SEEN] = math.floor(angle_rad / step + 0.5) * step - speed_rad_s * settings.sample_time_s
+            state[LAST_SEEN] = (
+                math.floor(angle_rad / step + 0.5) * step - speed_rad_s * settings.sample_time_s
+            )
         voltage = plant.resistance_ohm * current + K * speed_rad_s
         state[LAST_VOLTAGE] = voltage
         state[FILTERED_SPEED] = speed_rad_s
@@ -222,7 +225,7 @@ class Cascade:
         speed_rad_s: FloatArray,
         feedforward_a: FloatArray,
         load_torque_nm: FloatArray,
-    ) -> Mapping[str, FloatArray]:
+    ) -> Mapping[str, Any]:
         """Run over samples and record what happened at each of them.
 
         Parameters
@@ -258,7 +261,9 @@ class Cascade:
             self._loop(self.state, self._plant, self._free, self._gains, *lists, rows, flag)
             parts.append([np.array(row) for row in rows])
             flags.append(np.array(flag))
-        columns = [np.concatenate(column) for column in zip(*parts, strict=True)] if parts else [np.empty(0)] * 6
+        columns = (
+            [np.concatenate(column) for column in zip(*parts, strict=True)] if parts else [np.empty(0)] * 6
+        )
         return dict(zip(RECORDED, columns, strict=True)) | {
             "saturated": np.concatenate(flags) if flags else np.empty(0)
         }

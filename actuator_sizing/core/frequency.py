@@ -105,8 +105,6 @@ def margins(loop: Callable[[FloatArray], ComplexArray], low_rad_s: float, high_r
     >>> math.degrees(found.phase_margin_rad)
     51.8273
     """
-    from scipy.optimize import brentq
-
     w = np.geomspace(low_rad_s, high_rad_s, _GRID)
     L = loop(w)
 
@@ -116,14 +114,14 @@ def margins(loop: Callable[[FloatArray], ComplexArray], low_rad_s: float, high_r
     phase_margin, crossover = math.inf, math.nan
     gain = np.log(np.abs(L))
     for k in np.flatnonzero(np.sign(gain[:-1]) * np.sign(gain[1:]) < 0.0):
-        here = brentq(lambda x: math.log(abs(at(x))), w[k], w[k + 1], xtol=1e-12 * w[k], rtol=1e-13)
+        here = _crossing(lambda x: math.log(abs(at(x))), w[k], w[k + 1])
         margin = math.remainder(np.angle(at(here)) + math.pi, 2.0 * math.pi)
         if abs(margin) < abs(phase_margin):
             phase_margin, crossover = margin, here
     gain_margin, phase_crossover = math.inf, math.nan
     crossing = (np.sign(L.imag[:-1]) * np.sign(L.imag[1:]) < 0.0) & (L.real[:-1] < 0.0) & (L.real[1:] < 0.0)
     for k in np.flatnonzero(crossing):
-        here = brentq(lambda x: at(x).imag, w[k], w[k + 1], xtol=1e-12 * w[k], rtol=1e-13)
+        here = _crossing(lambda x: at(x).imag, w[k], w[k + 1])
         factor = -1.0 / at(here).real
         if 1.0 < factor < gain_margin:
             gain_margin, phase_crossover = factor, here
@@ -133,6 +131,16 @@ def margins(loop: Callable[[FloatArray], ComplexArray], low_rad_s: float, high_r
         float(phase_margin), float(crossover), float(gain_margin), float(phase_crossover),
         float(sensitivity[peak]), float(w[peak]),
     )  # fmt: skip
+
+
+def _crossing(function: Callable[[float], float], low: float, high: float) -> float:
+    """Zero between two points; the end nearer to zero where rounding took the change of sign away."""
+    from scipy.optimize import brentq
+
+    at_low, at_high = function(low), function(high)
+    if at_low * at_high >= 0.0:
+        return low if abs(at_low) < abs(at_high) else high
+    return float(brentq(function, low, high, xtol=1e-12 * low, rtol=1e-13))
 
 
 def bandwidth(frequency_rad_s: FloatArray, closed: ComplexArray) -> float:
@@ -200,8 +208,9 @@ def step_figures(
         curve = left - 2.0 * middle + right
         if curve < 0.0:
             shift = 0.5 * (left - right) / curve
-            peak, peak_time = float(middle - 0.25 * (left - right) * shift), float(
-                t[k] + shift * (t[k + 1] - t[k])
+            peak, peak_time = (
+                float(middle - 0.25 * (left - right) * shift),
+                float(t[k] + shift * (t[k + 1] - t[k])),
             )
     overshoot = max(peak - 1.0, 0.0)
     outside = np.flatnonzero(np.abs(y - 1.0) > band_ratio)

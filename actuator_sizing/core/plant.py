@@ -94,9 +94,7 @@ class Plant:
     @property
     def antiresonance_rad_s(self) -> float:
         """Load on the spring with the motor locked, ``√(k/J_L)``; NaN if rigid. [rad/s]"""
-        return (
-            math.nan if self.is_rigid else math.sqrt(self.stiffness_nm_per_rad / self.load_inertia_kg_m2)
-        )
+        return math.nan if self.is_rigid else math.sqrt(self.stiffness_nm_per_rad / self.load_inertia_kg_m2)
 
     def matrices(self, *, engaged: bool = True) -> tuple[FloatArray, FloatArray]:
         """System and input matrix of the linear part.

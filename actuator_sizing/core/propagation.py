@@ -48,9 +48,7 @@ def zero_order_hold(A: FloatArray, B: FloatArray, step_s: float) -> tuple[FloatA
     return exponential[:n, :n], exponential[:n, n:]
 
 
-def respond(
-    A: FloatArray, B: FloatArray, start: FloatArray, inputs: FloatArray, step_s: float
-) -> FloatArray:
+def respond(A: FloatArray, B: FloatArray, start: FloatArray, inputs: FloatArray, step_s: float) -> FloatArray:
     """States at evenly spaced instants with every input held from one instant to the next.
 
     Parameters

@@ -117,7 +117,9 @@ class _Switched:
         p = self.plant
         A, B = p.matrices(engaged=self.gap == 0.0 or mode.flank != 0)
         row = (MOTOR_SPEED, LOAD_SPEED)[which]
-        inertia = p.total_inertia_kg_m2 if p.is_rigid else (p.motor_inertia_kg_m2, p.load_inertia_kg_m2)[which]
+        inertia = (
+            p.total_inertia_kg_m2 if p.is_rigid else (p.motor_inertia_kg_m2, p.load_inertia_kg_m2)[which]
+        )
         torque = float(A[row] @ x + B[row] @ u[:3]) * inertia
         if self.gap > 0.0 and mode.flank:
             torque += p.stiffness_nm_per_rad * self.gap * mode.flank * (1.0 if which == 0 else -1.0)
@@ -176,7 +178,9 @@ class _Switched:
         return _Mode(directions[0], directions[1], mode.flank)
 
 
-def run_open_loop(plant: Plant, inputs: Sequence[Held], step_s: float, start: FloatArray | None = None) -> Course:
+def run_open_loop(
+    plant: Plant, inputs: Sequence[Held], step_s: float, start: FloatArray | None = None
+) -> Course:
     """Move the plant through held inputs, every stick, slip and contact located.
 
     Parameters

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Callable
 from dataclasses import dataclass, replace
 from functools import lru_cache
 
@@ -113,7 +114,7 @@ def symmetrical_optimum(
 
 
 def bandwidth_settings(
-    plant: Plant, base: LoopSettings, current_rad_s: float, speed_rad_s: float, position_per_s: float
+    plant: Plant, base: LoopSettings, current_rad_s: float, speed_rad_s: float, position_gain: float
 ) -> LoopSettings:
     """Settings from the wanted bandwidth of each loop.
 
@@ -125,7 +126,7 @@ def bandwidth_settings(
         Everything that is not a gain. [-]
     current_rad_s, speed_rad_s : float
         Bandwidth of current and speed loop. [rad/s]
-    position_per_s : float
+    position_gain : float
         Gain of the position loop, in 1/s. [-]
 
     Returns
@@ -139,7 +140,7 @@ def bandwidth_settings(
         current_reset_time_s=plant.inductance_h / plant.resistance_ohm,
         speed_gain_a_s_per_rad=speed_rad_s * plant.total_inertia_kg_m2 / plant.torque_constant_nm_per_a,
         speed_reset_time_s=4.0 / speed_rad_s,
-        position_gain_per_s=position_per_s,
+        position_gain_per_s=position_gain,
     )
 
 
@@ -184,6 +185,7 @@ class LinearCascade:
         gains = list(used.row())
         gains[EMF_GAIN] *= plant.torque_constant_nm_per_a
         n = len(alive)
+        step: Callable[..., None] = cascade_loop
         A, B = np.zeros((n, n)), np.zeros((n, 4))
         for column in range(n + 4):
             state = [0.0] * STATES
@@ -192,7 +194,7 @@ class LinearCascade:
                 state[alive[column]] = 1.0
             else:
                 inputs[column - n][0] = 1.0
-            cascade_loop(state, *rows, tuple(gains), *inputs, [[0.0] for _ in range(6)], [0])
+            step(state, *rows, tuple(gains), *inputs, [[0.0] for _ in range(6)], [0])
             after = [state[k] for k in alive]
             if column < n:
                 A[:, column] = after
@@ -202,8 +204,7 @@ class LinearCascade:
 
     def poles(self) -> ComplexArray:
         """Poles of one sample of all three loops together; stable inside the unit circle."""
-        poles: ComplexArray = np.linalg.eigvals(self.matrices()[0])
-        return poles
+        return np.asarray(np.linalg.eigvals(self.matrices()[0]), dtype=complex)
 
     @property
     def spectral_radius(self) -> float:

@@ -75,9 +75,7 @@ class AxisPlant:
         """
         model, n = self.model, self.ratio
         mechanism = self.case.mechanism
-        payload = (
-            max(s.payload for s in self.case.segments) if segment is None else segment.payload
-        )
+        payload = max(s.payload for s in self.case.segments) if segment is None else segment.payload
         load = float(mechanism.inertia_at_shaft(np.array([payload]))[0]) / n**2
         coulomb, viscous = self._load_friction(payload)
         stiffness = self.stiffness_at_shaft_nm_per_rad / n**2
@@ -191,7 +189,9 @@ class Commands:
     start_s: FloatArray  # (P,)
     duration_s: FloatArray  # (P,)
     segment: NDArray[np.intp]  # (P,)
-    series: FloatArray  # (6, P, K + 1): angle, speed, current, load torque, position, motor angle per load unit
+    series: (
+        FloatArray  # (6, P, K + 1): angle, speed, current, load torque, position, motor angle per load unit
+    )
     angle_travel_rad: float  # over one cycle
 
     @classmethod
@@ -212,7 +212,9 @@ class Commands:
         held = demand.brake_closed & (demand.direction == 0.0)
         load[held] = 0.0
         ratio = n * axis.case.mechanism.ratio_at(demand.position)[0]
-        nodes = np.stack([speed, torque / model.judged.torque_constant_nm_per_a[0], load, demand.position, ratio])
+        nodes = np.stack(
+            [speed, torque / model.judged.torque_constant_nm_per_a[0], load, demand.position, ratio]
+        )
         coefficients = nodes @ to_series(nodes.shape[2]).T
         half = 0.5 * demand.duration_s[:, None]
         angle = (coefficients[0] @ antiderivative_matrix(NODES).T) * half

@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Callable
+from dataclasses import replace
+from functools import partial
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -32,6 +34,7 @@ from actuator_sizing.sizing.results import FAILS, NOT_CHECKED, Comparison, Rejec
 from actuator_sizing.sizing.screening import Screened, screen
 from actuator_sizing.sizing.set_model import SetModel
 from actuator_sizing.sizing.shortlist import evaluate_sets
+from actuator_sizing.sizing.simulation import simulate_prepared
 from actuator_sizing.version import __version__
 
 if TYPE_CHECKING:
@@ -268,5 +271,10 @@ def _set_result(
         motor_index=motor,
         gearhead_index=gearhead,
         drive_index=drive,
-        detail=set_detail(model, sets, i) if with_curves else None,
+        detail=replace(
+            set_detail(model, sets, i),
+            simulation=partial(simulate_prepared, case, demand, (motor, gearhead, drive)),
+        )
+        if with_curves
+        else None,
     )

@@ -98,9 +98,7 @@ def run_cycle(axis: AxisPlant, settings: LoopSettings, band: float, cycles: int)
             cascade.change(axis.plant(case.segments[segment]))
             current_segment = segment
         _advance(axis, cascade, tally, number, segment, k, band, stride)
-    series = pd.DataFrame(
-        {name: np.concatenate([row[name] for row in tally.rows]) for name in tally.rows[0]}
-    )
+    series = pd.DataFrame({name: np.concatenate([row[name] for row in tally.rows]) for name in tally.rows[0]})
     moves = pd.DataFrame(
         [
             {
@@ -137,7 +135,9 @@ def _chunks(
     for number in range(cycles):
         for segment, end in enumerate(ends):
             border = number * cycle_s + float(end)
-            last = samples if number == cycles - 1 and segment == len(ends) - 1 else math.ceil(border / step_s)
+            last = (
+                samples if number == cycles - 1 and segment == len(ends) - 1 else math.ceil(border / step_s)
+            )
             while k < min(last, samples):
                 count = min(last - k, _CHUNK, samples - k)
                 yield number, segment, np.arange(k, k + count)
@@ -149,8 +149,8 @@ def _advance(
     band: float, stride: int,
 ) -> None:  # fmt: skip
     commands, step = axis.commands, cascade.settings.sample_time_s
-    time = k * step
-    within = time - number * commands.cycle_s
+    time = np.asarray(k * step, dtype=float)
+    within = np.asarray(time - number * commands.cycle_s)
     angle, speed, current, _, position, ratio = commands.at(within, segment)
     load = commands.at(within + 0.5 * step, segment)[3]
     angle = angle + number * commands.angle_travel_rad

@@ -133,8 +133,10 @@ def unit_step(linear: LinearCascade, loop: str) -> tuple[FloatArray, FloatArray]
 
     Returns
     -------
-    time_s, response : ndarray, shape (n,)
-        Until it has settled by the gains; at most 40 000 samples. [s] or [-]
+    time_s : ndarray, shape (n,)
+        Until it has settled by the gains; at most 40 000 samples. [s]
+    response : ndarray, shape (n,)
+        The controlled value. [-]
     """
     A, B, C = linear.system(loop)
     h = linear.settings.sample_time_s
@@ -150,7 +152,7 @@ def unit_step(linear: LinearCascade, loop: str) -> tuple[FloatArray, FloatArray]
     for k in range(count):
         values[k] = C @ x
         x = A @ x + B
-    return np.arange(count) * h, values
+    return np.asarray(np.arange(count) * h, dtype=float), values
 
 
 def _grid(linear: LinearCascade, low: float, top: float) -> FloatArray:

@@ -83,7 +83,8 @@ def run_step(axis: AxisPlant, plant: Plant) -> Run:
         Series; rise, peak, overshoot and settling of the speed; the drop of speed under the load. [-]
     """
     voltage = _nominal_voltage(axis)
-    lasts = min(_SETTLED / max(_slowest(plant), 1e-9), _LONGEST_S)
+    decay = float(-plant.poles_per_s().real.max())
+    lasts = min(_SETTLED / max(decay, 1e-9), _LONGEST_S)
     continuous = float(axis.model.motor.continuous_current_a[0])
     torque = plant.torque_constant_nm_per_a * (continuous if math.isfinite(continuous) else 0.0)
     # A step must resolve the current too, which is over long before the speed is.
@@ -222,8 +223,7 @@ def run_file(path: str | Path, plant: Plant, axis: AxisPlant, most_samples: int)
     torque = samples.get("load torque", np.zeros(len(time)))
     steps = np.diff(time)
     inputs = [
-        Held(float(h), float(u), -float(d))
-        for h, u, d in zip(steps, voltage[:-1], torque[:-1], strict=True)
+        Held(float(h), float(u), -float(d)) for h, u, d in zip(steps, voltage[:-1], torque[:-1], strict=True)
     ]
     course = run_open_loop(plant, inputs, max(float(steps.max()), 1e-12))
     limit = axis.voltage_limit_v

@@ -27,7 +27,7 @@ from actuator_sizing.sizing.stop_run import run_stop
 if TYPE_CHECKING:
     from pathlib import Path
 
-    from actuator_sizing.sizing.results import Comparison
+    from actuator_sizing.sizing.demand import Demand
 
 FloatArray = NDArray[np.float64]
 
@@ -99,25 +99,25 @@ def simulate(
     return simulate_set(axis, parts, input, settings or {}, settling_band, cycles)
 
 
-def simulate_leading(comparison: Comparison) -> Simulation | None:
-    """Simulate the leading set of a comparison over its cycle, with the default settings.
+def simulate_prepared(case: Case, demand: Demand, parts: tuple[int, int, int]) -> Simulation | None:
+    """Simulate the cycle of one set with the default settings, for a report.
 
     Parameters
     ----------
-    comparison : Comparison
-        The answer.
+    case : Case
+        The case. [-]
+    demand : Demand
+        Its cycle. [-]
+    parts : tuple of int
+        Motor, gearhead and drive by their index in the catalogs. [-]
 
     Returns
     -------
     Simulation or None
-        None without a set, where no stable settings exist, or for a cycle that is too long.
+        None where no stable settings exist, or for a cycle of more than a million samples.
     """
-    if not comparison.sets:
-        return None
-    best, case = comparison.sets[0], comparison.case
-    parts = best.motor_index, best.gearhead_index, best.drive_index
-    axis = axis_plant(case, comparison.demand, parts, winding_degc=math.nan, rate_hz=math.nan)
-    if axis.model.demand.cycle_s * axis.rate_hz > MOST_REPORT_SAMPLES:
+    axis = axis_plant(case, demand, parts, winding_degc=math.nan, rate_hz=math.nan)
+    if demand.cycle_s * axis.rate_hz > MOST_REPORT_SAMPLES:
         return None
     try:
         return simulate_set(axis, parts, "cycle", {}, math.nan, 1)

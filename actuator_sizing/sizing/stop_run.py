@@ -45,14 +45,18 @@ def run_stop(axis: AxisPlant, settings: LoopSettings) -> Run:
     plant = axis.plant(axis.case.segments[start["segment"]])
     speed, load, ratio = start["speed"], start["load"], start["ratio"]
     stiff = settings.current_limit_a * plant.torque_constant_nm_per_a
-    rough = plant.total_inertia_kg_m2 * abs(speed) / max(stiff - abs(load), 1e-3 * stiff) if stiff < math.inf else 0.1
+    rough = (
+        plant.total_inertia_kg_m2 * abs(speed) / max(stiff - abs(load), 1e-3 * stiff)
+        if stiff < math.inf
+        else 0.1
+    )
     lasts = min(4.0 * rough + 40.0 * settings.speed_reset_time_s, _LONGEST_S)
     n = max(int(lasts / settings.sample_time_s), 20)
     held = replace(settings, position_gain_per_s=0.0)
     cascade = Cascade(plant, held, speed_rad_s=speed, load_torque_nm=load)
     zero = np.zeros(n)
     seen = cascade.advance(zero, zero, zero, np.full(n, load))
-    time = np.arange(n) * settings.sample_time_s
+    time = np.asarray(np.arange(n) * settings.sample_time_s, dtype=float)
     angle = seen["motor_angle"] - seen["twist"]
     controlled = _figures("controlled_stop", time, seen["motor_speed"], angle, speed, ratio)
 

@@ -27,7 +27,8 @@ ALLOWED_UPWARD = {
 
 # The core knows numbers, not files, tables or clocks.
 CORE_MAY_IMPORT = {
-    "__future__", "abc", "bisect", "cmath", "collections", "dataclasses", "enum", "functools", "itertools",
+    "__future__", "abc", "bisect", "cmath", "collections", "dataclasses", "enum", "functools", "importlib",
+    "itertools",
     "math", "numpy", "operator", "scipy", "types", "typing",
 }  # fmt: skip
 

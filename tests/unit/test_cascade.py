@@ -126,7 +126,10 @@ def test_margins_agree_with_python_control():
 @pytest.mark.parametrize("anti_windup", ["back-calculation", CONDITIONAL])
 def test_limits_hold_and_are_counted(anti_windup):
     s = replace(
-        default_tuning(RIGID, BASE).settings, current_limit_a=2.0, voltage_limit_v=9.0, anti_windup=anti_windup
+        default_tuning(RIGID, BASE).settings,
+        current_limit_a=2.0,
+        voltage_limit_v=9.0,
+        anti_windup=anti_windup,
     )
     n = 8000
     seen = Cascade(RIGID, s).advance(np.full(n, 5.0), np.zeros(n), np.zeros(n), np.zeros(n))
@@ -188,7 +191,9 @@ def test_equilibrium_at_the_start_stays():
 
 def test_default_tuning_names_what_limits():
     assert default_tuning(RIGID, BASE).limited_by == "current loop"
-    assert default_tuning(replace(SOFT, damping_nm_s=0.3), BASE).limited_by == "antiresonance of motor and load"
+    assert (
+        default_tuning(replace(SOFT, damping_nm_s=0.3), BASE).limited_by == "antiresonance of motor and load"
+    )
     assert default_tuning(replace(SOFT, damping_nm_s=1e-4), BASE, current_rise_s=1e-3).limited_by == (
         "stability reserve"
     )

@@ -14,9 +14,9 @@ from actuator_sizing.errors import InputError
 from actuator_sizing.sizing import compare
 from actuator_sizing.sizing.open_loop import ripple
 from actuator_sizing.sizing.simulation import find_set, simulate
-from tests.made_cases import DRIVE, GEARHEAD, MOTOR, case, cycle
+from tests.made_cases import GEARHEAD, MOTOR, case, cycle
 
-SCREW = {"lead": 0.01, "moving mass": 20.0, "guide friction force": 30.0, "efficiency": 0.9}
+SCREW = {"lead": 0.05, "moving mass": 20.0, "guide friction force": 30.0, "efficiency": 0.9}
 MOVE = cycle(
     {"law": "3-4-5 polynomial", "displacement": 0.1, "duration_s": 0.3, "payload": 5.0},
     {"law": "dwell", "duration_s": 0.2, "payload": 5.0},
@@ -40,9 +40,9 @@ def test_the_cycle_follows_its_command(moved):
     q = moved.quantities
     assert 0.0 < q["following_error_peak"] < 1e-3
     assert q["following_error_rms"] <= q["following_error_peak"]
-    # Angle: 0.1 m at 10 mm and a ratio of 5 are 50 turns.
-    assert moved.series["commanded_angle_rad"].max() == pytest.approx(100 * math.pi, rel=1e-9)
-    assert moved.series["motor_angle_rad"].max() == pytest.approx(100 * math.pi, rel=1e-3)
+    # Angle: 0.1 m at 50 mm and a ratio of 5 are 10 turns.
+    assert moved.series["commanded_angle_rad"].max() == pytest.approx(20 * math.pi, rel=1e-9)
+    assert moved.series["motor_angle_rad"].max() == pytest.approx(20 * math.pi, rel=1e-3)
     assert q["current_saturated_s"] == 0.0
     assert q["voltage_saturated_s"] == 0.0
 
@@ -253,7 +253,9 @@ def test_required_bandwidth_is_held_against_the_resonance():
 
 def test_without_stiffness_nothing_is_judged():
     unknown = {**GEARHEAD, "stiffness_nm_per_rad": np.nan}
-    result = compare(made({"settling band": 1e-4, "required speed bandwidth": 1.0}, gearheads=[unknown])).sets[0]
+    result = compare(
+        made({"settling band": 1e-4, "required speed bandwidth": 1.0}, gearheads=[unknown])
+    ).sets[0]
     for key in ("settling", "stability_reserve", "resonance"):
         check = result.check(key)
         assert check.verdict == "not checked"
@@ -279,7 +281,13 @@ def run(capsys, *arguments):
 def potting(monkeypatch):
     monkeypatch.chdir(cli.__file__.rsplit("/actuator_sizing/", 1)[0])
     best = compare(read_case("catalogs_demo/potting_table"), detail=1).best
-    return ["--motor", best.motor, "--drive", best.drive, *(["--gearhead", best.gearhead] if best.gearhead else [])]
+    return [
+        "--motor",
+        best.motor,
+        "--drive",
+        best.drive,
+        *(["--gearhead", best.gearhead] if best.gearhead else []),
+    ]
 
 
 def test_the_command(potting, capsys):

@@ -132,10 +132,17 @@ def _moves(simulation: Simulation) -> Table:
     rows = []
     for move in simulation.moves.itertuples():
         time = float(move.settling_time_s)
-        settled = "no band given" if math.isnan(time) else "not within" if math.isinf(time) else quantity(time, "s")
+        settled = (
+            "no band given" if math.isnan(time) else "not within" if math.isinf(time) else quantity(time, "s")
+        )
         rows.append(
             row(clean(str(move.segment)), quantity(float(move.available_s), "s"), settled,
                 quantity(float(move.overshoot), unit))
         )  # fmt: skip
-    columns = (Column("after"), Column("dwell", True), Column("settled after", True), Column("overshoot", True))
+    columns = (
+        Column("after"),
+        Column("dwell", True),
+        Column("settled after", True),
+        Column("overshoot", True),
+    )
     return Table("Settling after each move", columns, tuple(rows))

@@ -12,7 +12,9 @@ from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digit
 
 FloatArray = NDArray[np.float64]
 
-_STIFFNESS = Need("dynamics", "stiffness_nm_per_rad", "torsional stiffness (or driven shaft stiffness of the axis)")
+_STIFFNESS = Need(
+    "dynamics", "stiffness_nm_per_rad", "torsional stiffness (or driven shaft stiffness of the axis)"
+)
 _SIMULATED = Need("dynamics", "is_simulated", "simulation: only the leading sets are simulated")
 
 
@@ -35,7 +37,9 @@ def _where(*wishes: str) -> Callable[[Sets], NDArray[np.bool_]]:
 
 def _settling_measure(sets: Sets) -> Measure:
     return Measure(
-        _column(sets, "settling_time_s"), _column(sets, "settling_available_s"), _column(sets, "settling_at_s")
+        _column(sets, "settling_time_s"),
+        _column(sets, "settling_available_s"),
+        _column(sets, "settling_at_s"),
     )
 
 
