@@ -36,6 +36,7 @@ __all__ = [
     "convert_case",
     "read_case",
     "read_results",
+    "simulate",
     "start_case",
 ]
 

@@ -117,6 +117,13 @@ def audit(case: Path) -> int:
     type=click.Path(path_type=Path),
     help="Earlier results.json, or its folder: say which inputs changed and what moved.",
 )
+@click.option(
+    "--levers",
+    type=click.IntRange(min=0),
+    default=0,
+    metavar="N",
+    help="For the N nearest losers, find the smallest change of each lever that lets them pass.",
+)
 @click.option("--pdf/--no-pdf", default=None, help="Write the PDF too; default: if its package is installed.")
 @_debug
 def compare(
@@ -126,6 +133,7 @@ def compare(
     detail: int | None,
     as_json: bool,
     since: Path | None,
+    levers: int,
     pdf: bool | None,
 ) -> int:
     """Size CASE and write the report.
@@ -133,7 +141,6 @@ def compare(
     Compares all motor x gearhead x drive sets and ranks those that pass. The report goes to
     reports/<case name>/ below the current folder unless --out says otherwise.
     """
-    from actuator_sizing.case.audit import audit_catalogs
     from actuator_sizing.case.reading import read_case
     from actuator_sizing.console import ProgressBar, print_problems, print_summary
     from actuator_sizing.sizing import compare as compare_sets
@@ -145,14 +152,16 @@ def compare(
         earlier = read_results(since)  # before the report, which may replace it
     understood = read_case(case)
     with ProgressBar() as progress:
-        comparison = compare_sets(understood, rank_by=rank_by, detail=detail, progress=progress)
+        comparison = compare_sets(
+            understood, rank_by=rank_by, detail=detail, levers=levers, progress=progress
+        )
         written: tuple[Path, ...] = ()
         if out is not None or not as_json:
             from actuator_sizing.report import write_report
 
             progress("writing the report", 0.0)
             written = write_report(comparison, out or _report_folder(understood.name), pdf=pdf, since=earlier)
-    print_problems(dict.fromkeys((*understood.problems, *audit_catalogs(understood))), at_most=10)
+    print_problems(understood.problems, at_most=10)
     if as_json:
         from actuator_sizing.report.json_results import render_json
 

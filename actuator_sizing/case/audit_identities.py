@@ -8,8 +8,9 @@ agrees by construction.
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -294,13 +295,14 @@ def _families(catalog: Catalog, motors: MotorParameters) -> Iterator[Identity]:
     """
     parts = [_stated(catalog, key) for key in ("rotor_inertia", "mass", "length")]
     known = np.logical_and.reduce([np.isfinite(part) for part in parts[:2]])
-    frame = np.column_stack([*(np.nan_to_num(part) for part in parts), motors.current_basis])
-    _, member = np.unique(frame, axis=0, return_inverse=True)
-    member = np.asarray(member).reshape(-1)
+    member = np.full(len(known), -1, dtype=np.intp)
+    member[known] = _equal_rows(
+        [*(np.nan_to_num(part)[known] for part in parts), motors.current_basis[known]]
+    )
     K_M = motor_constant(motors.torque_constant_nm_per_a, motors.resistance_ohm)
     yield Identity(
         "resistance_terminal_to_terminal",
-        _against_family(1.0 / K_M**2, np.where(known, member, -1)),
+        _against_family(1.0 / K_M**2, member),
         0.7,
         1.43,
         "the other windings of this frame, in proportion to the square of the torque constant",
@@ -308,12 +310,21 @@ def _families(catalog: Catalog, motors: MotorParameters) -> Iterator[Identity]:
     )
     yield Identity(
         "inductance_terminal_to_terminal",
-        _against_family(motors.inductance_h / motors.resistance_ohm, np.where(known, member, -1)),
+        _against_family(motors.inductance_h / motors.resistance_ohm, member),
         0.6,
         1.67,  # fill factors differ between thick and thin wire, and inductance is a rough value
         "the other windings of this frame, in proportion to the resistance",
         (slip.TERMINAL_PHASE, slip.THREE_HALVES),
     )
+
+
+def _equal_rows(columns: Sequence[NDArray[Any]]) -> NDArray[np.intp]:
+    """Number of each row, the same for equal rows: columns one by one, far faster than sorting whole rows."""
+    number = np.zeros(len(columns[0]), dtype=np.intp)
+    for column in columns:
+        values, place = np.unique(column, return_inverse=True)
+        _, number = np.unique(number * len(values) + place, return_inverse=True)
+    return number
 
 
 def _against_family(value: FloatArray, member: NDArray[np.intp]) -> FloatArray:

@@ -13,6 +13,7 @@ from actuator_sizing.case.tables import (
     CHECK_NAMES,
     DEFAULT_ALLOWED_UTILISATION,
     DEFAULT_RECOMMENDED_RESERVE,
+    FITTING_CHECKS,
     quantity_kinds,
 )
 from actuator_sizing.units import UnitError, parse_unit
@@ -25,7 +26,7 @@ def default_limits() -> dict[str, Limit]:
             key,
             "advice" if key in ADVICE_CHECKS else "yes",
             DEFAULT_ALLOWED_UTILISATION,
-            DEFAULT_RECOMMENDED_RESERVE,
+            0.0 if key in FITTING_CHECKS else DEFAULT_RECOMMENDED_RESERVE,
         )
         for key, _ in CHECK_NAMES
     }

@@ -246,4 +246,4 @@ def _derive_thermal(parsed: ParsedTable, resistance: NDArray[np.float64]) -> Non
             parsed.derive(key, rows & (rest > 0.0), rest, f"{rule}, less the stated part")
             warn_rows(parsed, other, stated_only, "more than the continuous rating allows in total",
                       "Check it against continuous current, resistance and temperature limit.")  # fmt: skip
-    parsed.derive(inner, ~known_inner & ~known_outer, total, f"{rule}; total to ambient, one thermal body")
+    parsed.derive(inner, ~known_inner & ~known_outer, total, f"{rule}; total to ambient")

@@ -46,6 +46,7 @@ CHECK_NAMES: tuple[tuple[str, str], ...] = (
 )
 
 ADVICE_CHECKS = ("inertia_ratio",)  # judged as advice unless the limits table says otherwise
+FITTING_CHECKS = ("drive_bus_voltage",)  # parts fit or do not; a reserve would mean nothing
 DEFAULT_ALLOWED_UTILISATION = 1.0
 DEFAULT_RECOMMENDED_RESERVE = 0.1
 RANKINGS = ("price", "mass", "reserve", "energy")
@@ -290,6 +291,7 @@ __all__ = [
     "COMMON_QUANTITIES",
     "DEFAULT_ALLOWED_UTILISATION",
     "DEFAULT_RECOMMENDED_RESERVE",
+    "FITTING_CHECKS",
     "DRIVE_COLUMNS",
     "DUTY_CYCLE_COLUMNS",
     "GEARHEAD_COLUMNS",

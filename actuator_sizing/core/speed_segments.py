@@ -93,15 +93,7 @@ def plan_constant_speed(request: Request) -> tuple[Phase, ...]:
                 f"the sign of the speed {v:.6g} (SI)",
                 "Correct the sign, or reverse with a 'speed ramp' first.",
             )
-        follows = displacement / v
-        if duration is not None and not _agree(duration, follows):
-            raise MotionError(
-                "duration",
-                f"{duration:.6g} s",
-                f"{follows:.6g} s, which follows from displacement and speed",
-                "Leave 'duration' or 'displacement' empty.",
-            )
-        duration = follows
+        duration = _time_to_cover(displacement, v, duration)
     assert duration is not None
     _check_result(request, duration)
     return (Phase(duration, (0.0, v)),)
@@ -172,12 +164,17 @@ def _ramp_duration(displacement: float, start: float, end: float, duration: floa
             f"the sign of the mean speed {mean:.6g} (SI) of the ramp",
             "Correct the sign, or give 'duration' or 'maximum acceleration' instead.",
         )
-    follows = displacement / mean
+    return _time_to_cover(displacement, mean, duration)
+
+
+def _time_to_cover(displacement: float, mean_speed: float, duration: float | None) -> float:
+    """Time that follows from distance and mean speed; a stated duration must agree with it."""
+    follows = displacement / mean_speed
     if duration is not None and not _agree(duration, follows):
         raise MotionError(
             "duration",
             f"{duration:.6g} s",
-            f"{follows:.6g} s, which follows from displacement and speeds",
+            f"{follows:.6g} s, which follows from displacement and speed",
             "Leave 'duration' or 'displacement' empty.",
         )
     return follows

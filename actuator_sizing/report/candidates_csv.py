@@ -13,7 +13,7 @@ if TYPE_CHECKING:
     from actuator_sizing.sizing.results import Comparison
 
 #: The file ends with the row before it would grow beyond this: a report has to fit into a mail.
-MOST_BYTES = 3_000_000
+MOST_BYTES = 2_000_000
 _BLOCK = 1000  # rows
 _STARTS_FORMULA = ("=", "+", "-", "@", "\t", "\r")
 _QUOTED = frozenset(',"\r\n')

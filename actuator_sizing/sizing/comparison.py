@@ -52,7 +52,12 @@ _NEAREST_LOSERS = 40  # motor × gearhead pairs that came closest, evaluated exa
 
 
 def compare(
-    case: Case, *, rank_by: str | None = None, detail: int | None = None, progress: Progress | None = None
+    case: Case,
+    *,
+    rank_by: str | None = None,
+    detail: int | None = None,
+    levers: int = 0,
+    progress: Progress | None = None,
 ) -> Comparison:
     """Compare every motor × gearhead × drive set of a case.
 
@@ -64,6 +69,8 @@ def compare(
         ``"price"``, ``"mass"``, ``"reserve"`` or ``"energy"``; default: what the case says. [-]
     detail : int, optional
         How many sets to list with all their checks; default: what the case says. [-]
+    levers : int
+        For how many of the nearest losers to find the smallest change that lets them pass. [-]
     progress : callable, optional
         Called with a stage and the part of it that is done, 0 to 1. [-]
 
@@ -100,7 +107,7 @@ def compare(
     if screened.screened == 0:
         raise InputError([_no_set(case)])
     losers = nearest_drives(case, demand, screened.nearest_losers)
-    index = np.unique(np.concatenate([screened.survivors, losers]), axis=0)
+    index = np.unique(np.concatenate([screened.survivors, losers, screened.nearest_by_drive]), axis=0)
     sets = evaluate_sets(case, demand, index, _stage(progress, "evaluation"))
 
     def leading(judged: Sets) -> tuple[IndexArray, NDArray[np.bool_]]:
@@ -117,6 +124,7 @@ def compare(
         _set_result(case, demand, sets, verdicts, index, int(i), rank, with_curves=rank == 1)
         for rank, i in enumerate(listed, start=1)
     )
+    results = _with_levers(case, demand, results, levers, _stage(progress, "levers"))
     survivor_rows = _is_survivor(index, screened.survivors)
     return Comparison(
         case=case,
@@ -130,6 +138,30 @@ def compare(
         questions=questions_of(results),
         version=__version__,
     )
+
+
+def _with_levers(
+    case: Case,
+    demand: Demand,
+    results: tuple[SetResult, ...],
+    count: int,
+    progress: Callable[[float], None] | None,
+) -> tuple[SetResult, ...]:
+    """The results, the nearest losers with what would let them pass."""
+    if count <= 0:
+        return results
+    from actuator_sizing.sizing.levers import levers_of
+
+    chosen = [item.rank for item in results if item.verdict == FAILS][:count]
+    answered = []
+    for item in results:
+        if item.rank in chosen:
+            parts = (item.motor_index, item.gearhead_index, item.drive_index)
+            item = replace(item, levers=levers_of(case, demand, *parts))
+            if progress is not None:
+                progress((chosen.index(item.rank) + 1) / len(chosen))
+        answered.append(item)
+    return tuple(answered)
 
 
 def _stage(progress: Progress | None, name: str) -> Callable[[float], None] | None:

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 from actuator_sizing.core.capability import voltage_limited_current
 from actuator_sizing.core.machine import amplitude_per_unit_current, model_voltage, torque_of_current
 from actuator_sizing.core.quadrature import piece_means
-from actuator_sizing.core.warm_up import temperature_course, warm_up
+from actuator_sizing.core.warm_up import TemperatureCourse, WarmUp, temperature_course, warm_up
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.checks.motor import current_limited_torque, rerated_continuous_current
 from actuator_sizing.sizing.results import SetDetail
@@ -23,6 +23,7 @@ FloatArray = NDArray[np.float64]
 
 _SPEEDS = 241  # points of the speed–torque plane
 _STEP_POINTS = 400
+_TEMPERATURES = ("time_s", "winding_degc", "housing_degc")
 
 
 def set_detail(model: SetModel, sets: Sets, index: int) -> SetDetail:
@@ -51,31 +52,20 @@ def set_detail(model: SetModel, sets: Sets, index: int) -> SetDetail:
     step = model.step().series(_STEP_POINTS)
     return SetDetail(
         cycle=_cycle_frame(model),
-        periodic_temperature=None
-        if periodic is None
-        else pd.DataFrame(
-            {
-                "time_s": periodic.time_s,
-                "winding_degc": periodic.winding_degc,
-                "housing_degc": periodic.housing_degc,
-            }
-        ),
-        warm_up=None
-        if warming is None
-        else pd.DataFrame(
-            {
-                "time_s": warming.time_s,
-                "winding_degc": warming.winding_degc,
-                "housing_degc": warming.housing_degc,
-                "winding_low_degc": warming.winding_low_degc,
-                "winding_high_degc": warming.winding_high_degc,
-            }
-        ),
+        periodic_temperature=_frame(periodic, _TEMPERATURES),
+        warm_up=_frame(warming, (*_TEMPERATURES, "winding_low_degc", "winding_high_degc")),
         envelope=_envelope(model),
         step_response=pd.DataFrame(dict(zip(("time_s", "current_a", "speed_rad_s"), step, strict=True))),
         levels=_levels(model, sets, index),
         segments=_segment_frame(model),
     )
+
+
+def _frame(series: TemperatureCourse | WarmUp | None, names: tuple[str, ...]) -> pd.DataFrame | None:
+    """Some series of a course as columns of the same names."""
+    import pandas as pd
+
+    return None if series is None else pd.DataFrame({name: getattr(series, name) for name in names})
 
 
 def _cycle_frame(model: SetModel) -> pd.DataFrame:
@@ -124,7 +114,8 @@ def _segment_frame(model: SetModel) -> pd.DataFrame:
     count = len(model.case.segments)
 
     def sums(values: FloatArray) -> FloatArray:
-        return np.bincount(d.segment, piece_means(values) * d.duration_s, minlength=count)
+        weights = piece_means(values) * d.duration_s
+        return np.bincount(d.segment, weights, minlength=count).astype(float)
 
     duration = np.bincount(d.segment, d.duration_s, minlength=count)
     torque, current = sums(c.torque_nm[0] ** 2), sums(c.current_a[0] ** 2)

@@ -85,9 +85,13 @@ def judge_sets(sets: Sets, checks: tuple[Check, ...], limits: tuple[Limit, ...])
         utilisation[known, column] = ratio[known]
         # Advice never governs while a limit is there to govern.
         relative[known, column] = ratio[known] / limit.allowed_utilisation if binding else -1.0
+        if check.is_fit:
+            relative[known & ~beyond, column] = -0.5
     _let_numbers_govern(relative, codes, checks)
     binding_columns = np.array([is_binding(c, x) for c, x in zip(checks, limits, strict=True)])
     verdict = np.max(np.where(binding_columns, codes, _PASSES), axis=1, initial=_PASSES).astype(np.int8)
+    unjudged = ~np.any(binding_columns & (codes != NOT_APPLICABLE), axis=1)
+    verdict[unjudged] = _UNKNOWN  # no check that could fail it applies to this set
     governing = relative.argmax(axis=1)
     return Verdicts(
         checks,

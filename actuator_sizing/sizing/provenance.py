@@ -53,7 +53,9 @@ def assumptions_of(case: Case, best: SetResult) -> tuple[tuple[str, str], ...]:
 
 def _subject(entry: Entry) -> str:
     """Name what an entry of the case is about: a row of `axis` is one quantity, elsewhere the column is."""
-    return f"axis: {entry.label}" if entry.table == "axis" else f"{entry.table}: {entry.label}: {entry.column}"
+    return (
+        f"axis: {entry.label}" if entry.table == "axis" else f"{entry.table}: {entry.label}: {entry.column}"
+    )
 
 
 def questions_of(results: tuple[SetResult, ...]) -> tuple[tuple[str, str, str], ...]:

@@ -45,6 +45,8 @@ class Screened:
     survivors: NDArray[np.intp]  # (S, 3)
     #: motor, gearhead index of the rejected pairs that came closest, nearest first
     nearest_losers: NDArray[np.intp]  # (L, 2)
+    #: motor, gearhead, drive index of the sets that only their drive rejects, nearest first
+    nearest_by_drive: NDArray[np.intp]  # (L, 3)
     #: the rejected sets with what governs them, only where all sets are at most `LISTED_SETS`
     lost: NDArray[np.intp]  # (R, 3)
     lost_check: NDArray[np.intp]  # (R,) index into check_names
@@ -93,14 +95,13 @@ def screen(
     # Motors that the same drives serve lie together: their sets are then counted in one stroke.
     motor_index = motor_index[np.argsort(case.motor_parameters.commutation[motor_index], kind="stable")]
     drives = case.drive_parameters
-    context = _Context(
-        case=case,
-        demand=demand,
-        checks=tuple(check for check in checks if check.bound is not None),
-        allowed=allowed,
-        drive_side=DriveSide(case, allowed),
-        key=key,
-    )
+    total = len(case.motor_parameters) * len(case.gearhead_parameters) * len(drives)
+    bounded = tuple(check for check in checks if check.bound is not None)
+    drive_side = DriveSide(case, allowed)
+    names = (*(check.key for check in bounded), *drive_side.names)
+    losses = Losses(names, listed=total <= LISTED_SETS)
+    pools = (Pool(keep), Pool(losers), Pool(losers))
+    run = _Run(case, bounded, allowed, drive_side, key, *pools, losses)
     gearhead_side = GearheadSide.of(case.gearhead_parameters.take(gearhead_index), demand)
     gearhead_parts = [
         (
@@ -109,19 +110,15 @@ def screen(
         )
         for start in range(0, len(gearhead_index), _GEARHEADS_PER_BLOCK)
     ]
-    total = len(case.motor_parameters) * len(case.gearhead_parameters) * len(drives)
-    losses = Losses(
-        (*(check.key for check in context.checks), *context.drive_side.names), listed=total <= LISTED_SETS
-    )
-    pool, nearest = Pool(keep), Pool(losers)
+    recommended = case.number("recommended inertia ratio")
     survivors = screened = 0
     for start in range(0, len(motor_index), _MOTORS_PER_BLOCK):
         m = motor_index[start : start + _MOTORS_PER_BLOCK]
         motor_side = MotorSide.of(case.motor_parameters.take(m), case.surroundings)
         served = compatible(motor_side.motors, drives)
         for g, part in gearhead_parts:
-            block = Block(demand, case.surroundings, context.recommended_inertia_ratio, motor_side, part)
-            survivors += _screen_block(context, block, m, g, served, pool, nearest, losses)
+            block = Block(demand, case.surroundings, recommended, motor_side, part)
+            survivors += _screen_tile(run, _Tile(block, m, g, served))
         screened += int(served.sum()) * len(gearhead_index)
         if progress is not None:
             progress((start + len(m)) / len(motor_index))
@@ -135,8 +132,9 @@ def screen(
         screened=screened,
         rejected_by_check={name: count for name, count in counts.items() if count},
         survivor_count=survivors,
-        survivors=pool.sorted(3),
-        nearest_losers=nearest.sorted(2),
+        survivors=run.pool.sorted(3),
+        nearest_losers=run.nearest.sorted(2),
+        nearest_by_drive=run.by_drive.sorted(3),
         lost=lost,
         lost_check=lost_check,
         lost_bound=lost_bound,
@@ -145,37 +143,44 @@ def screen(
 
 
 @dataclass(frozen=True)
-class _Context:
+class _Run:
+    """What all blocks of one screening share: how to judge, and where to put what is found."""
+
     case: Case
-    demand: Demand
     checks: tuple[Check, ...]
     allowed: Mapping[str, float]
     drive_side: DriveSide
     key: str
+    pool: Pool
+    nearest: Pool
+    by_drive: Pool
+    losses: Losses
 
-    @property
-    def recommended_inertia_ratio(self) -> float:
-        return self.case.number("recommended inertia ratio")
+
+@dataclass(frozen=True)
+class _Tile:
+    """One block with the place of its N gearheads and M motors in the catalogs."""
+
+    block: Block
+    motor_index: NDArray[np.intp]  # (M,)
+    gearhead_index: NDArray[np.intp]  # (N,)
+    served: NDArray[np.bool_]  # (M, D) which drive can commutate which motor
+
+    def pairs(self, gearhead: NDArray[np.intp], motor: NDArray[np.intp]) -> NDArray[np.intp]:
+        """Catalog rows of motor and gearhead for places in the block, shape (n, 2)."""
+        return np.column_stack([self.motor_index[motor], self.gearhead_index[gearhead]])
 
 
-def _screen_block(
-    context: _Context,
-    block: Block,
-    motor_index: NDArray[np.intp],
-    gearhead_index: NDArray[np.intp],
-    served: NDArray[np.bool_],
-    pool: Pool,
-    nearest: Pool,
-    losses: Losses,
-) -> int:
+def _screen_tile(run: _Run, tile: _Tile) -> int:
     """Screen one block; returns how many sets survive."""
-    gearhead_worst, gearhead_check, others = _utilisations(context, block)
-    worst = np.broadcast_to(gearhead_worst, block.mean_square.shape).copy()
+    losses = run.losses
+    gearhead_worst, gearhead_check, others = _utilisations(run, tile.block)
+    worst = np.broadcast_to(gearhead_worst, tile.block.mean_square.shape).copy()
     for _, utilisation in others:
         np.fmax(worst, utilisation, out=worst)  # NaN, not known, is never the worst
     fails = worst > 1.0 + _ROUNDING
 
-    drives_per_motor = served.sum(axis=1)
+    drives_per_motor = tile.served.sum(axis=1)
     left = fails.copy()
     by_gearhead = (
         (number, np.where(gearhead_check == number, gearhead_worst, np.nan))
@@ -187,22 +192,16 @@ def _screen_block(
         left ^= governed
         losses.count(number, governed, drives_per_motor)
         if losses.listed:
-            j, i, drive = np.nonzero(governed[:, :, None] & served)
-            losses.keep(
-                np.column_stack([motor_index[i], gearhead_index[j], drive]),
-                np.full(len(i), number),
-                worst[j, i],
-            )
-    j, i = np.nonzero(fails & (worst <= nearest.bar) & (drives_per_motor > 0))
+            j, i, drive = np.nonzero(governed[:, :, None] & tile.served)
+            losses.keep(np.column_stack([tile.pairs(j, i), drive]), np.full(len(i), number), worst[j, i])
+    j, i = np.nonzero(fails & (worst <= run.nearest.bar) & (drives_per_motor > 0))
     if len(i):
-        nearest.add(np.column_stack([motor_index[i], gearhead_index[j]]), worst[j, i])
-    return _screen_drives(
-        context, block, ~fails, served, motor_index, gearhead_index, worst, pool, nearest, losses
-    )
+        run.nearest.add(tile.pairs(j, i), worst[j, i])
+    return _screen_drives(run, tile, ~fails, worst)
 
 
 def _utilisations(
-    context: _Context, block: Block
+    run: _Run, block: Block
 ) -> tuple[FloatArray, NDArray[np.intp], list[tuple[int, FloatArray]]]:
     """Utilisation over allowed of every motor and gearhead check.
 
@@ -212,11 +211,11 @@ def _utilisations(
     worst = np.zeros((len(block.gearheads), 1))
     check_number = np.zeros(worst.shape, dtype=np.intp)
     others = []
-    for number, check in enumerate(context.checks):
+    for number, check in enumerate(run.checks):
         assert check.bound is not None
         utilisation = check.bound(block)
-        if context.allowed[check.key] != 1.0:
-            utilisation = utilisation / context.allowed[check.key]
+        if run.allowed[check.key] != 1.0:
+            utilisation = utilisation / run.allowed[check.key]
         if check.group == "gearhead":
             utilisation = np.where(block.gearheads.is_direct[:, None], 0.0, utilisation)
             higher = utilisation > worst
@@ -227,72 +226,53 @@ def _utilisations(
     return worst, check_number, others
 
 
-def _screen_drives(
-    context: _Context,
-    block: Block,
-    passing: NDArray[np.bool_],
-    served: NDArray[np.bool_],
-    motor_index: NDArray[np.intp],
-    gearhead_index: NDArray[np.intp],
-    worst: FloatArray,
-    pool: Pool,
-    nearest: Pool,
-    losses: Losses,
-) -> int:
+def _screen_drives(run: _Run, tile: _Tile, passing: NDArray[np.bool_], worst: FloatArray) -> int:
     """Hold the pairs that may pass against every drive; returns how many sets survive."""
-    side = context.drive_side
+    side, block, losses = run.drive_side, tile.block, run.losses
     columns, rows = np.nonzero(passing)  # gearheads, motors
     amplitude = amplitude_per_unit_current(block.motors.current_basis)
     total = 0
     step = max(1, 2**16 // max(1, len(side)))
     for start in range(0, len(rows), step):
         r, c = rows[start : start + step], columns[start : start + step]
-        ok = served[r]
+        ok = tile.served[r]
         stack = side.utilisations(
             block.current_peak[c, r] * amplitude[r], block.current_rms[c, r] * amplitude[r]
         )
         drive_worst = stack.max(axis=0)
         survives = ok & (drive_worst <= 1.0 + _ROUNDING)
-        check = len(context.checks) + stack.argmax(axis=0)
+        check = len(run.checks) + stack.argmax(axis=0)
         out_row, out_drive = np.nonzero(ok & ~survives)
         losses.add(check[out_row, out_drive], np.ones(len(out_row), dtype=np.intp))
-        losses.keep(
-            np.column_stack([motor_index[r[out_row]], gearhead_index[c[out_row]], out_drive]),
-            check[out_row, out_drive],
-            drive_worst[out_row, out_drive],
-        )
+        lost = np.column_stack([tile.pairs(c[out_row], r[out_row]), out_drive])
+        losses.keep(lost, check[out_row, out_drive], drive_worst[out_row, out_drive])
+        run.by_drive.add(lost, drive_worst[out_row, out_drive])
         k, d = np.nonzero(survives)
         total += len(k)
         if len(k):
-            m, g = motor_index[r[k]], gearhead_index[c[k]]
+            sets = np.column_stack([tile.pairs(c[k], r[k]), d])
             bound = np.maximum(worst[c[k], r[k]], drive_worst[k, d])
-            pool.add(np.column_stack([m, g, d]), _key(context, block, m, g, d, r[k], c[k], bound))
-        none = ok.any(axis=1) & ~survives.any(axis=1)
-        if none.any():
-            closest = np.where(ok, drive_worst, np.inf).min(axis=1)
-            nearest.add(np.column_stack([motor_index[r[none]], gearhead_index[c[none]]]), closest[none])
+            run.pool.add(sets, _key(run, block, sets, r[k], c[k], bound))
     return total
 
 
 def _key(
-    context: _Context,
+    run: _Run,
     block: Block,
-    m: NDArray[np.intp],
-    g: NDArray[np.intp],
-    d: NDArray[np.intp],
+    sets: NDArray[np.intp],
     row: NDArray[np.intp],
     column: NDArray[np.intp],
     bound: FloatArray,
 ) -> FloatArray:
     """What the survivors are ordered by; smaller is better, unknown comes last."""
-    case = context.case
-    if context.key == "reserve":
+    case = run.case
+    if run.key == "reserve":
         return bound
-    if context.key == "energy":
+    if run.key == "energy":
         j = block.judged
         loss = j.resistance_ohm[row] / j.torque_constant_nm_per_a[row] ** 2 * block.mean_square[column, row]
         return np.asarray(loss)
-    name = "price" if context.key == "price" else "mass_kg"
+    name = "price" if run.key == "price" else "mass_kg"
     parts = (case.motor_parameters, case.gearhead_parameters, case.drive_parameters)
-    total = sum(getattr(part, name)[index] for part, index in zip(parts, (m, g, d), strict=True))
+    total = sum(getattr(part, name)[index] for part, index in zip(parts, sets.T, strict=True))
     return np.asarray(np.nan_to_num(np.asarray(total), nan=np.finfo(float).max))

@@ -1,7 +1,8 @@
 """Two seconds of the cascade at 16 kHz: the plain loop against a numpy state-space loop, and machine code.
 
 The reference is what a competent user writes: the same cascade with numpy vectors and matrices for the plant, one
-sample at a time. Rounds are interleaved in one process; processor time is taken and the best of each counts, since a shared machine only adds.
+sample at a time. Rounds are interleaved in one process; processor
+time is taken and the best of each counts, since a shared machine only adds.
 
 Run: ``python tests/benchmarks/bench_cascade.py [rounds]``. Goals: at most 60 ms without a compiler and at least 8
 times faster than the reference; with the compiler (extra ``fast``) at least 500 times.
@@ -82,7 +83,8 @@ def main(rounds):
             for key, run in runs.items():
                 for _ in range(1 if key == "numpy" else 4):
                     best[key] = min(best[key], timed(run))
-        line = f"cascade, {name}: plain {best['plain'] * 1e3:.1f} ms, {best['numpy'] / best['plain']:.1f} times the numpy loop"
+        gain = best["numpy"] / best["plain"]
+        line = f"cascade, {name}: plain {best['plain'] * 1e3:.1f} ms, {gain:.1f} times the numpy loop"
         if "compiled" in best:
             line += f"; compiled {best['compiled'] * 1e3:.2f} ms, {best['numpy'] / best['compiled']:.0f} times"
         print(line + f" ({best['numpy'] * 1e3:.0f} ms, {rounds} rounds)")

@@ -438,6 +438,13 @@ def build_hostile() -> Comparison:
     case.entries = tuple(
         entry("axis", text, text, text, text, "", rule=text, source=text) for text in HOSTILE
     ) + (entry("axis", "mass", "mass", "inf kg", math.inf, "kg"), entry("axis", "n", "n", "", None, "A"))
+    case.segments = tuple(
+        SimpleNamespace(
+            **(vars(segment) | {"name": HOSTILE[n], "law": HOSTILE[n + 1], "note": HOSTILE[n + 2]})
+        )
+        for n, segment in enumerate(case.segments)
+    )
+    case.problems = tuple(Problem(text, 2, text, text, text, text, WARNING) for text in HOSTILE)
     case.options = {"title": HOSTILE[1], "revision": HOSTILE[0], "prepared by": HOSTILE[5]}
     candidates = base.candidates.assign(
         motor=[s.motor for s in sets], gearhead=[s.gearhead for s in sets], drive=[s.drive for s in sets]

@@ -12,7 +12,7 @@ import pytest
 from case_files import add_column, set_cell, small_case, write_folder
 
 from actuator_sizing import audit_case, check_case, start_case
-from actuator_sizing.case import audit_slips
+from actuator_sizing.case import audit_identities, audit_slips
 from actuator_sizing.case.audit import KEPT_PER_IDENTITY, audit_catalogs
 from actuator_sizing.case.audit_slips import name_slip
 from actuator_sizing.case.reading import read_case
@@ -248,3 +248,18 @@ def test_contradictions_belong_to_the_case_that_is_sized(tmp_path):
     assert found
     assert {(problem.table, problem.row, problem.severity) for problem in found} == {("motors", 2, "warning")}
     assert set(audit_case(tmp_path / "slip")) == set(case.problems)  # nothing is told twice
+
+
+def test_equal_rows_get_equal_numbers():
+    rng = np.random.default_rng(3)
+    columns = [
+        rng.choice([1.5e-5, 2e-5, 0.0], 400),
+        rng.integers(0, 3, 400).astype(float),
+        rng.integers(0, 2, 400),
+    ]
+    number = audit_identities._equal_rows(columns)
+    names = {}
+    for row, one in zip(zip(*columns, strict=True), number.tolist(), strict=True):
+        assert names.setdefault(row, one) == one
+    assert len(set(names.values())) == len(names) > 10
+    assert audit_identities._equal_rows([np.array([]), np.array([])]).tolist() == []

@@ -32,6 +32,25 @@ def test_folder_files_come_together_and_strangers_stay(tmp_path):
     }
 
 
+def test_obsolete_files_go_and_strangers_stay(tmp_path):
+    for name in ("old.svg", "kept.svg", "stranger.txt"):
+        (tmp_path / name).write_bytes(b"old")
+    replace_folder_files(tmp_path, {"kept.svg": b"new"}, obsolete=("old.svg", "kept.svg", "never_there.svg"))
+    assert {path.name: path.read_bytes() for path in tmp_path.iterdir()} == {
+        "kept.svg": b"new",
+        "stranger.txt": b"old",
+    }
+
+
+def test_obsolete_files_come_back_when_a_new_one_cannot_be_placed(tmp_path):
+    (tmp_path / "old.svg").write_bytes(b"old")
+    (tmp_path / "b").mkdir()
+    with pytest.raises(OutputError):
+        replace_folder_files(tmp_path, {"a": b"new", "b": b"new"}, obsolete=("old.svg",))
+    assert (tmp_path / "old.svg").read_bytes() == b"old"
+    assert not (tmp_path / "a").exists()
+
+
 def test_symbolic_link_is_followed(tmp_path):
     (tmp_path / "real").write_bytes(b"old")
     (tmp_path / "link").symlink_to(tmp_path / "real")

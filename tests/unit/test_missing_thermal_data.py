@@ -19,5 +19,7 @@ def test_motors_without_thermal_resistances(tmp_path):
     assert check.missing
     assert best.quantities["winding_max_degc"] is None
     assert best.quantities["winding_after_30_min_degc"] is None
-    asked = [what for part, what, title in comparison.questions if part == best.motor and title == check.title]
+    asked = [
+        what for part, what, title in comparison.questions if part == best.motor and title == check.title
+    ]
     assert set(asked) == set(check.missing)

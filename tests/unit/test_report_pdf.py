@@ -6,11 +6,15 @@ import sys
 from datetime import date
 
 import pytest
+from report_demo import DEMO_CASES, demo_comparison
 from report_fixture import build_comparison, build_hostile
 
 from actuator_sizing.errors import OutputError
 from actuator_sizing.report import render_report
 from actuator_sizing.report.document import prepare_document
+from actuator_sizing.report.document.comparing import shown_pair
+from actuator_sizing.report.document.inputs import part_entries
+from actuator_sizing.report.document.verdict import verdict_sentence
 from actuator_sizing.report.figures import draw_figures
 from actuator_sizing.report.html import figure_numbers
 from actuator_sizing.report.pdf import _breakable, render_pdf
@@ -55,6 +59,23 @@ def test_text_is_searchable_in_tables_and_figures(text):
         "9c6f2b1d" * 8,
     ):
         assert words in text
+
+
+@pytest.mark.parametrize("name", DEMO_CASES)
+def test_it_tells_verdict_every_check_and_every_unit(name):
+    comparison = demo_comparison(name)
+    reader = pypdf.PdfReader(io.BytesIO(render(comparison)))
+    text = plain(" ".join(page.extract_text() for page in reader.pages))
+    compact = text.replace(" ", "")  # where a line or a cell breaks is the typesetter's affair
+    sentence, _ = verdict_sentence(comparison)
+    assert sentence.replace(" ", "") in compact
+    for check in comparison.best.checks:
+        assert check.title.replace(" ", "") in compact, check.title
+        demand, capacity, unit = shown_pair(check)
+        assert f"{demand} {capacity} {unit}".strip() in text, (check.title, demand, capacity, unit)
+    units = {entry.unit for entry in (*comparison.case.entries, *part_entries(comparison, comparison.best))}
+    assert len(units) > 15
+    assert [unit for unit in units if unit not in text] == []
 
 
 def test_it_is_tagged_titled_and_dated(reader):

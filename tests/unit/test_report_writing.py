@@ -11,7 +11,8 @@ from report_fixture import build_comparison, build_hostile
 
 from actuator_sizing.errors import OutputError
 from actuator_sizing.report import render_report, write_report
-from actuator_sizing.sizing.results import FAILS
+from actuator_sizing.report.figures import FIGURES
+from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, Checks
 
 DAY = date(2025, 3, 4)
 EXPECTED = {"sizing_report.html", "sizing_tables.xlsx", "results.json", "candidates.csv"}
@@ -45,6 +46,19 @@ def test_the_results_do_not_depend_on_the_date(comparison):
     assert other["results.json"] == render_report(comparison, date=DAY)["results.json"]
 
 
+def test_figures_and_pdf_of_an_earlier_run_do_not_stay(comparison, tmp_path):
+    """They would show another result than the page beside them."""
+    write_report(comparison, tmp_path, date=DAY)
+    (tmp_path / "sizing_report.pdf").write_bytes(b"old")
+    (tmp_path / "figures" / "mine.svg").write_bytes(b"<svg/>")
+    best = comparison.best
+    cold = dataclasses.replace(best, detail=dataclasses.replace(best.detail, warm_up=None))
+    write_report(dataclasses.replace(comparison, sets=(cold,)), tmp_path, date=DAY, pdf=False)
+    left = {path.name for path in (tmp_path / "figures").iterdir()}
+    assert left == {f"{key}.svg" for key in FIGURES if key != "temperature"} | {"mine.svg"}
+    assert not (tmp_path / "sizing_report.pdf").exists()
+
+
 @pytest.mark.skipif(os.name == "nt", reason="modes of POSIX")
 def test_a_folder_that_cannot_be_written_is_an_output_error(comparison, tmp_path):
     blocker = tmp_path / "out"
@@ -61,6 +75,22 @@ def test_nothing_is_touched_when_one_file_cannot_be_replaced(comparison, tmp_pat
         write_report(comparison, tmp_path, date=DAY)
     assert (tmp_path / "sizing_report.html").read_text() == "old"
     assert not (tmp_path / "sizing_tables.xlsx").exists()
+
+
+def test_advice_is_worded_as_advice_in_results_and_notebook(comparison):
+    best = comparison.best
+    asked = dataclasses.replace(best.check("inertia_ratio"), utilisation=6.8, verdict=LOW_RESERVE)
+    others = [c for c in best.checks if c.check != "inertia_ratio"]
+    advised = dataclasses.replace(best, checks=Checks((*others, asked)))
+    files = render_report(dataclasses.replace(comparison, sets=(advised,)), date=DAY, pdf=False)
+    (told,) = [
+        check
+        for check in json.loads(files["results.json"])["sets"][0]["checks"]
+        if check["check"] == "inertia_ratio"
+    ]
+    assert (told["verdict"], told["advice"]) == ("advice not met", True)
+    assert advised.checks.table.loc["inertia_ratio", "verdict"] == "advice not met"
+    assert "Advice not met, which does not decide the verdict" in files["sizing_report.html"].decode()
 
 
 def test_hostile_and_empty_comparisons_make_a_report(comparison):

@@ -6,12 +6,14 @@ import numpy as np
 import pytest
 
 from actuator_sizing.core.machine import judge, torque_of_current
+from actuator_sizing.core.quadrature import interpolate
 from actuator_sizing.errors import InputError
 from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
 from actuator_sizing.sizing.checks.motor import VOLTAGE
 from actuator_sizing.sizing.demand import build_demand
 from actuator_sizing.sizing.judging import ORDER, active_checks, judge_sets
-from actuator_sizing.sizing.results import FAILS
+from actuator_sizing.sizing.pair_course import course
+from actuator_sizing.sizing.results import FAILS, NOT_CHECKED
 from actuator_sizing.sizing.shortlist import evaluate_sets
 from tests.made_cases import DIRECT, GEARHEAD, MOTOR, SURROUNDINGS, case, cycle
 
@@ -185,3 +187,91 @@ def test_the_peak_current_of_a_saturated_motor_belongs_to_the_peak_torque():
     )
     assert 0.9 * 5.0 < sets.pairs.torque_peak_nm[0] < 5.0  # close to saturation
     assert torque[0] == pytest.approx(sets.pairs.torque_peak_nm[0], rel=1e-12)  # an inverse, only rounding
+
+
+def sampled_plane_utilisation(made):
+    """Largest torque over voltage-limited torque of the only pair while motoring, on many points of each piece."""
+    demand, motor = build_demand(made), judge(made.motor_parameters, made.surroundings)
+    c = course(demand, made.motor_parameters, made.gearhead_parameters, motor)
+    R, K, s, X, U = (
+        float(value[0])
+        for value in (motor.resistance_ohm, motor.torque_constant_nm_per_a, motor.saturation_per_a2,
+                      motor.reactance_per_speed, motor.voltage_available_v)
+    )  # fmt: skip
+    points = np.linspace(-1.0, 1.0, 20_001)
+    omega = np.abs(interpolate(c.motor_speed_rad_s[0], points))
+    torque = (
+        interpolate(c.torque_nm[0], points)
+        * np.where(demand.direction == 0.0, 1.0, demand.direction)[:, None]
+    )
+    a, b = R**2 + (X * omega) ** 2, R * K * omega
+    with np.errstate(invalid="ignore"):
+        limit = np.nan_to_num((np.sqrt(b**2 - a * ((K * omega) ** 2 - U**2)) - b) / a, nan=0.0)
+    current = np.clip(limit, 0.0, (3.0 * s) ** -0.5)
+    available = K * current * (1.0 - s * current**2)
+    out_of_reach = np.where(torque > 0.0, np.inf, 0.0)
+    return float(np.max(np.where(available > 0.0, torque / np.maximum(available, 1e-12), out_of_reach)))
+
+
+@pytest.mark.parametrize("constant", [0.5, 0.6, 0.66, 0.68, 0.7])
+def test_the_speed_torque_plane_is_searched_between_the_nodes(constant):
+    # Close to the no-load speed and to saturation: the ratio has a pole and a kink, which no polynomial follows.
+    made = case(
+        "rotary load",
+        {"load inertia": 0.05, "friction torque": 0.2},
+        cycle(
+            {"law": "3-4-5 polynomial", "displacement": 1.5, "duration_s": 0.12},
+            {"law": "dwell", "duration_s": 1.0},
+        ),
+        motors=[{**MOTOR, "torque_constant_nm_per_a": constant, "peak_torque_nm": 0.72 * 18.0 * constant}],
+        gearheads=[{**GEARHEAD, "ratio": 20.0}],
+    )
+    exact = judged(made)[0].pairs.plane_utilisation[0]
+    # The largest between samples is above both of its neighbours by their distance squared, 1e-4 of a piece.
+    assert exact == pytest.approx(sampled_plane_utilisation(made), rel=1e-6)
+
+
+def test_a_judged_temperature_for_voltage_does_not_soften_the_continuous_rating():
+    made = _rated_lift()
+    cold = replace(made, surroundings=replace(made.surroundings, judged_winding_degc=20.0))
+    hot_use, cold_use = (
+        dict(zip((c.key for c in v.checks), v.utilisation[0], strict=True))
+        for v in map(_judged, (made, cold))
+    )
+    assert cold_use["rms_current"] == pytest.approx(hot_use["rms_current"], rel=1e-12)
+    assert cold_use["voltage"] != hot_use["voltage"]
+
+
+def test_what_only_fits_or_not_does_not_govern_while_it_fits():
+    made = _rated_lift()
+    verdicts = _judged(made)
+    assert verdicts.checks[int(verdicts.governing[0])].key != "drive_bus_voltage"
+    tight = replace(made, surroundings=replace(made.surroundings, bus_max_v=450.0))
+    verdicts = _judged(tight)
+    assert verdicts.verdict[0] == ORDER.index(FAILS)
+
+
+def test_a_set_that_no_binding_check_concerns_is_not_passed():
+    made = _rated_lift()
+    only = {
+        key: replace(limit, applies="yes" if key == "gearhead_peak_torque" else "no")
+        for key, limit in made.limits.items()
+    }
+    verdicts = _judged(replace(made, limits=only))  # direct drive: no gearhead to judge
+    assert ORDER[int(verdicts.verdict[0])] == NOT_CHECKED
+
+
+def _rated_lift():
+    segments = cycle(
+        {"law": "trapezoid", "displacement": 0.4, "duration_s": 1.0, "payload": 10.0},
+        {"law": "trapezoid", "displacement": -0.4, "duration_s": 1.0},
+        {"law": "dwell", "duration_s": 0.5},
+    )
+    values = {"lead": 0.01, "moving mass": 10.0, "inclination": np.pi / 2, "efficiency": 0.9}
+    # Without saturation current goes as one over K, and the comparison is exact.
+    return case("ball screw", values, segments, motors=[{**MOTOR, "peak_torque_nm": np.nan}])
+
+
+def _judged(made):
+    index = np.zeros((1, 3), dtype=int)
+    return judge_sets(evaluate_sets(made, build_demand(made), index), *active_checks(made.limits))

@@ -19,6 +19,7 @@ from actuator_sizing.report.document.comparing import comparison_section
 from actuator_sizing.report.document.drawings import figures_section
 from actuator_sizing.report.document.dynamics import dynamics_section
 from actuator_sizing.report.document.inputs import assumptions_section, inputs_section
+from actuator_sizing.report.document.levers import levers_section
 from actuator_sizing.report.document.verdict import cover_facts, verdict_section, verdict_sentence
 from actuator_sizing.report.text import clean, option
 
@@ -54,6 +55,9 @@ def prepare_document(
     if revision is not None:
         sections.append(changes_section(revision))
     sections.append(comparison_section(comparison, drawn))
+    losers = levers_section(comparison)
+    if losers is not None:
+        sections.append(losers)
     if comparison.sets:
         best = comparison.sets[0]
         sections += [checks_section(best), working_section(best)]

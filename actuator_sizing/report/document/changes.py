@@ -6,7 +6,8 @@ from typing import TYPE_CHECKING, Any
 
 from actuator_sizing.report.document.blocks import Cell, Column, Paragraph, Section, Table, row
 from actuator_sizing.report.formatting import number, percent, quantity
-from actuator_sizing.report.text import clean, plural
+from actuator_sizing.report.headings import name_and_unit
+from actuator_sizing.report.text import check_name, clean, plural
 from actuator_sizing.units import suffix_unit
 
 if TYPE_CHECKING:
@@ -84,9 +85,15 @@ def changes_section(revision: Revision) -> Section:
                     Column("Result", weight=2.4),
                     Column("Before", numeric=True),
                     Column("Now", numeric=True),
+                    Column("Change", numeric=True, weight=0.8),
                 ),
                 tuple(
-                    row(change.name, _value(change.name, change.old), _value(change.name, change.new))
+                    row(
+                        name_and_unit(change.name)[0],
+                        _value(change.name, change.old),
+                        _value(change.name, change.new),
+                        _relative(change.old, change.new),
+                    )
                     for change in shown_results
                 ),
             )
@@ -100,21 +107,21 @@ def changes_sentence(revision: Revision) -> str:
         f"the earlier comparison (inputs {revision.old_fingerprint[:12]}, version {revision.old_version})"
     )
     if revision.is_same:
-        return f"Nothing changed since {earlier}."
+        return f"Nothing changed since {earlier}: inputs, results and verdicts are the same."
     turned = sum(change.turned for change in revision.checks)
     counts = (
         f"{plural(len(revision.inputs), 'input')} changed since {earlier}, and "
-        f"{plural(turned, 'verdict')} of checks turned."
+        f"{plural(turned, 'verdict')} of single checks turned."
     )
     if revision.old_leader != revision.new_leader:
         return (
-            f"{counts} The leading set was {clean(revision.old_leader)} ({revision.old_verdict}) and is now "
-            f"{clean(revision.new_leader)} ({revision.new_verdict})."
+            f"{counts} The leading set was {clean(revision.old_leader)} (“{revision.old_verdict}”) and is now "
+            f"{clean(revision.new_leader)} (“{revision.new_verdict}”)."
         )
     if revision.old_verdict != revision.new_verdict:
         return (
-            f"{counts} The leading set is the same; its verdict was {revision.old_verdict!r} and is now "
-            + (f"{revision.new_verdict!r}.")
+            f"{counts} The leading set is the same; its verdict was “{revision.old_verdict}” and is now "
+            f"“{revision.new_verdict}”."
         )
     return f"{counts} The leading set is the same, and so is its verdict."
 
@@ -145,10 +152,19 @@ def _verdict_cell(verdict: str, utilisation: float | None, allowed: float) -> Ce
     return Cell(verdict, note="" if utilisation is None else percent(utilisation, allowed), verdict=verdict)
 
 
+def _relative(old: Any, new: Any) -> str:
+    """By how much a number moved, against what it was; empty where that says nothing."""
+    numbers = all(isinstance(value, int | float) and not isinstance(value, bool) for value in (old, new))
+    if not numbers or not old:
+        return ""
+    change = new / old - 1.0
+    return ("+" if change > 0.0 else "") + percent(change, 0.0)
+
+
 def _value(name: str, value: Any) -> str:
     if value is None:
         return "not known"
     if isinstance(value, bool | str):
-        return clean(str(value))
+        return check_name(value) if name == "governing_check" else clean(str(value))
     unit = suffix_unit(name)
     return quantity(float(value), unit) if unit else number(float(value))

@@ -17,7 +17,7 @@ if TYPE_CHECKING:
     from actuator_sizing.sizing.simulation_results import Simulation
 
 _FIGURES = {
-    "cycle_response": "The cycle under the sampled cascade; where current or voltage was limited the panel is shaded.",
+    "cycle_response": "The cycle under the sampled cascade; a panel is shaded where current or voltage was limited.",
     "following_error": "Commanded minus true position of the load over the cycle.",
     "loop_steps": "Unit steps of the loops without limits and friction, each with what is inside it closed.",
     "bode": "Open loops with gain and phase margin; the dashed verticals are resonance and antiresonance.",

@@ -19,6 +19,7 @@ if TYPE_CHECKING:
 # The format allows 32767 letters in a cell; a longer text says that it was cut.
 _MOST_LETTERS = 32_767
 _WIDEST = 42
+_LETTERS_OF_A_PAGE = 260  # across A4 on its side; more would be too small to read
 FONT = "Calibri"
 _BAR_COLOR, _HEAD_COLOR = "#7DB3D8", "#E9EEF2"
 
@@ -93,7 +94,7 @@ class Sheets:
         for column, field in enumerate(fields):
             if field.bar and rows:
                 sheet.conditional_format(1, column, len(rows), column, _bar())
-        self._set_print(sheet, name)
+        self._set_print(sheet, name, sum(max(width, 8) for width in widths))
         self.set_print_area(sheet, len(rows), len(fields))
         return sheet
 
@@ -133,11 +134,12 @@ class Sheets:
             sheet.write_number(row, column, float(value), number_format)
         return 10
 
-    def _set_print(self, sheet: Worksheet, name: str) -> None:
+    def _set_print(self, sheet: Worksheet, name: str, letters: int) -> None:
         sheet.set_landscape()
         sheet.set_paper(9)  # A4
-        sheet.fit_to_pages(1, 0)
+        sheet.fit_to_pages(math.ceil(letters / _LETTERS_OF_A_PAGE), 0)
         sheet.repeat_rows(0)
+        sheet.repeat_columns(0)
         sheet.set_margins(left=0.4, right=0.4, top=0.7, bottom=0.6)
         sheet.set_header(f"&L&10{name}")
         sheet.set_footer("&R&9&P / &N")

@@ -69,13 +69,19 @@ class Measure:
             ratio = self.demand / self.capacity
         return np.where((self.demand == 0.0) & (self.capacity == 0.0), 0.0, ratio)
 
+    def quotient(self, index: int) -> str:
+        """Demand over capacity of one set with its numbers put in, the end of most workings."""
+        return (
+            f"{digits(self.demand[index])} / {digits(self.capacity[index])} = {digits(self.ratio()[index])}"
+        )
+
 
 @dataclass(frozen=True)
 class Need:
     """One datum without which a check cannot be made.
 
-    `part` is ``"motors"``, ``"gearheads"``, ``"drives"``, ``"pairs"`` or ``"dynamics"``; `field` its parameter, `column` the
-    heading a user would fill in (for linear motors `linear_column`).
+    `part` is ``"motors"``, ``"gearheads"``, ``"drives"``, ``"pairs"`` or ``"dynamics"``; `field` its parameter,
+    `column` the heading a user would fill in (for linear motors `linear_column`).
     """
 
     part: str
@@ -127,6 +133,8 @@ class Check:
         Sets → mask of the sets that the check concerns.
     is_advice : bool
         Never fails unless the user makes it a limit.
+    is_fit : bool
+        Parts fit together or do not: such a check governs only where it fails.
     yields_to : str
         Key of the check that fails too wherever this one is infinite, and says by how much.
     """
@@ -144,6 +152,7 @@ class Check:
     applies: Callable[[Sets], NDArray[np.bool_]] = _always
     linear_unit: str = ""
     is_advice: bool = False
+    is_fit: bool = False
     yields_to: str = ""
 
 

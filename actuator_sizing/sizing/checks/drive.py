@@ -21,7 +21,7 @@ def _continuous_working(sets: Sets, i: int) -> str:
     return (
         f"I_rms {over} = {digits(m.demand[i])} A in the drive's basis "
         f"(motor {digits(sets.pairs.current_rms_a[i])} A over the cycle); "
-        f"{digits(m.demand[i])} / {digits(m.capacity[i])} = {digits(m.ratio()[i])}"
+        f"{m.quotient(i)}"
     )
 
 
@@ -46,7 +46,7 @@ def _peak_working(sets: Sets, i: int) -> str:
     m = _peak_measure(sets)
     return (
         f"i_max = {digits(m.demand[i])} A in the drive's basis (motor {digits(sets.pairs.current_peak_a[i])} A); "
-        f"{digits(m.demand[i])} / {digits(m.capacity[i])} = {digits(m.ratio()[i])}"
+        f"{m.quotient(i)}"
     )
 
 
@@ -126,4 +126,5 @@ DRIVE_BUS = Check(
     needs=(Need("drives", "bus_voltage_max_v", "maximum bus voltage"),),
     measure=_bus_measure,
     working=_bus_working,
+    is_fit=True,
 )

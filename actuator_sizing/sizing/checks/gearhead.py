@@ -41,7 +41,7 @@ def _equivalent_working(sets: Sets, i: int) -> str:
     return (
         f"∫ |ω| |T|³ dt = {digits(worked)} rad·(N·m)³, ∫ |ω| dt = {digits(turned)} rad per cycle; "
         f"T_eq = ({digits(worked)} / {digits(turned)})^(1/3) = {digits(float(m.demand[i]))} N·m; "
-        f"{digits(float(m.demand[i]))} / {digits(float(m.capacity[i]))} = {digits(float(m.ratio()[i]))}"
+        f"{m.quotient(i)}"
     )
 
 

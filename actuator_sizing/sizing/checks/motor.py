@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.core.capability import continuous_current
-from actuator_sizing.core.machine import resistance_at, torque_of_current
+from actuator_sizing.core.machine import judge, resistance_at, torque_of_current
 from actuator_sizing.core.parameters import MotorParameters, Surroundings
 from actuator_sizing.core.thermal import altitude_factor
 from actuator_sizing.sizing.block import Block
@@ -63,15 +65,30 @@ def rerated_continuous_current(
         return continuous_current(rise, rating, speed_resistance, loss, hot)
 
 
+def _current_at_limit(
+    motors: MotorParameters, surroundings: Surroundings, K: FloatArray
+) -> FloatArray | float:
+    """Current with the winding at its limit over current as judged, for the same torque (saturation left out).
+
+    The rating belongs to the winding limit; a temperature stated for judging voltage must not soften it.
+    """
+    if np.isnan(surroundings.judged_winding_degc):
+        return 1.0
+    at_limit = judge(motors, replace(surroundings, judged_winding_degc=np.nan))
+    return np.asarray(K / at_limit.torque_constant_nm_per_a)
+
+
 def _rms_measure(sets: Sets) -> Measure:
     capacity = rerated_continuous_current(sets.motors, sets.surroundings, sets.pairs.speed_rms_rad_s)
-    return Measure(sets.pairs.current_rms_a, capacity)
+    K = sets.pairs.torque_constant_nm_per_a
+    return Measure(sets.pairs.current_rms_a * _current_at_limit(sets.motors, sets.surroundings, K), capacity)
 
 
 def _rms_bound(block: Block) -> FloatArray:
     capacity = rerated_continuous_current(block.motors, block.surroundings, block.speed_rms)
+    K = block.judged.torque_constant_nm_per_a
     with np.errstate(divide="ignore"):
-        return block.current_rms / capacity
+        return block.current_rms * _current_at_limit(block.motors, block.surroundings, K) / capacity
 
 
 def _rms_working(sets: Sets, i: int) -> str:
@@ -84,16 +101,19 @@ def _rms_working(sets: Sets, i: int) -> str:
     loss = m.friction_torque_nm[i] * omega + m.viscous_friction_nm_s[i] * omega**2
     altitude = altitude_factor(sets.surroundings.altitude_m)
     rise = (limit - sets.surroundings.ambient_degc) * altitude
-    capacity = _rms_measure(sets).capacity[i]
+    measure = _rms_measure(sets)
+    demand, capacity = float(measure.demand[i]), float(measure.capacity[i])
+    same = demand == p.current_rms_a[i]
+    at_limit = "" if same else f"with K at the winding limit {digits(demand)} A; "
     return (
-        f"{rms_working(sets, i)}; "
+        f"{rms_working(sets, i)}; {at_limit}"
         f"R_th = ({digits(limit)} − {digits(m.continuous_ambient_degc[i])}) °C / ({digits(hot)} Ω · "
         f"({digits(m.continuous_current_a[i])} A)²) = {digits(rating)} K/W; "
         f"ΔT = ({digits(limit)} − {digits(sets.surroundings.ambient_degc)}) · {digits(altitude)} = {digits(rise)} K; "
         f"P_ω at ω_rms {digits(omega)} rad/s = {digits(loss)} W; "
         f"I_cont = √(({digits(rise)} − {digits(share)} · {digits(loss)}) / ({digits(rating)} · {digits(hot)})) "
-        f"= {digits(capacity)} A; I_rms/I_cont = {digits(p.current_rms_a[i])} / {digits(capacity)} "
-        f"= {digits(p.current_rms_a[i] / capacity) if capacity else '∞'}"
+        f"= {digits(capacity)} A; I_rms/I_cont = {digits(demand)} / {digits(capacity)} "
+        f"= {digits(demand / capacity) if capacity else '∞'}"
     )
 
 
@@ -155,10 +175,7 @@ def _plane_working(sets: Sets, i: int) -> str:
         limit = voltage_limit_working(sets, i, at)
     else:
         limit = f"T_available = {digits(by_current)} {unit} at the smaller peak current of motor and drive"
-    return (
-        f"{torque_working(at)}; {limit}; {digits(float(m.demand[i]))} / {digits(float(m.capacity[i]))} "
-        f"= {digits(float(m.ratio()[i]))}"
-    )
+    return f"{torque_working(at)}; {limit}; {m.quotient(i)}"
 
 
 SPEED_TORQUE = Check(
@@ -236,10 +253,7 @@ def _current_measure(sets: Sets) -> Measure:
 def _current_working(sets: Sets, i: int) -> str:
     m = _current_measure(sets)
     at = instant_of(sets, i, m.instant(i), "torque")
-    return (
-        f"{torque_working(at)}; {current_working(at)}; |i| / I_peak = {digits(float(m.demand[i]))} / "
-        f"{digits(float(m.capacity[i]))} = {digits(float(m.ratio()[i]))}"
-    )
+    return f"{torque_working(at)}; {current_working(at)}; |i| / I_peak = {m.quotient(i)}"
 
 
 def _current_bound(block: Block) -> FloatArray:
@@ -271,7 +285,7 @@ def _speed_working(sets: Sets, i: int) -> str:
     return (
         f"ω_max = n · max |ω_shaft| = {digits(float(sets.gearheads.ratio[i]))} · "
         f"{digits(sets.demand.shaft_speed_peak)} {unit} = {digits(float(m.demand[i]))} {unit}; "
-        f"{digits(float(m.demand[i]))} / {digits(float(m.capacity[i]))} = {digits(float(m.ratio()[i]))}"
+        f"{m.quotient(i)}"
     )
 
 
@@ -306,8 +320,7 @@ def _voltage_working(sets: Sets, i: int) -> str:
     note = "" if with_slope else " (the value without L di/dt governs)"
     return (
         f"{torque_working(at)}; {current_working(at)}; {voltage_working(at, with_slope=bool(with_slope))}{note}; "
-        f"{available_voltage_working(sets, i)}; {digits(float(m.demand[i]))} / {digits(float(m.capacity[i]))} "
-        f"= {digits(float(m.ratio()[i]))}"
+        f"{available_voltage_working(sets, i)}; {m.quotient(i)}"
     )
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -37,6 +38,8 @@ class Instant:
     current: float
     current_slope: float
     held: bool
+    load_acceleration: float  # load coordinate
+    causes: Mapping[str, float]  # parts of the torque at the driven shaft
 
     @property
     def units(self) -> tuple[str, str, str]:
@@ -97,6 +100,8 @@ def instant_of(sets: Sets, i: int, at_s: float, largest: str) -> Instant:
         ),
         current_slope=read(c.current_slope_a_s[0], piece),
         held=bool(demand.brake_closed[piece]) and demand.direction[piece] == 0.0,
+        load_acceleration=read(demand.acceleration, piece),
+        causes={cause: read(torque, piece) for cause, torque in demand.torque_by_cause.items()},
     )
 
 
@@ -108,7 +113,10 @@ def torque_working(at: Instant) -> str:
     J = float(m.rotor_inertia_kg_m2[0] + g.inertia_kg_m2[0])
     friction = float(m.friction_torque_nm[0] + g.no_load_torque_nm[0])
     c = float(m.viscous_friction_nm_s[0])
+    parts = " + ".join(f"{cause} {digits(value)}" for cause, value in at.causes.items())
     return (
+        f"T_shaft = {parts} = {digits(at.shaft_torque)} {unit} at the driven shaft, by cause, "
+        f"the load accelerating at {digits(at.load_acceleration)} (SI); "
         f"T = (J_m + J_g) α + k T_shaft/n + (T_c + T_0) sgn ω + c ω = {digits(J)} · {digits(at.acceleration)} "
         f"{alpha_unit} + {digits(at.gearhead_factor)} · {digits(at.shaft_torque)} / {digits(n)} + "
         f"{digits(friction)} · {digits(at.direction)} + {digits(c)} · {digits(at.speed)} "
