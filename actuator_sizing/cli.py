@@ -190,10 +190,14 @@ def compare(
     metavar="cycle|step|sine|stop|FILE",
     help="What is commanded; FILE is a CSV table with time [s], voltage [V] and perhaps load torque [Nm].",
 )
-@click.option("--set", "changes", multiple=True, metavar="SETTING=VALUE", help="Change a setting of the loops.")
+@click.option(
+    "--set", "changes", multiple=True, metavar="SETTING=VALUE", help="Change a setting of the loops."
+)
 @click.option("--rate", type=float, metavar="HZ", help="Sampling rate; default: the drive's control rate.")
 @click.option("--cycles", type=click.IntRange(min=1), default=1, metavar="N", help="How many cycles to run.")
-@click.option("--out", type=click.Path(file_okay=False, path_type=Path), help="Write tables and figures here.")
+@click.option(
+    "--out", type=click.Path(file_okay=False, path_type=Path), help="Write tables and figures here."
+)
 @click.option("--json", "as_json", is_flag=True, help="Print quantities, settings and stops as JSON.")
 @_debug
 def simulate(

@@ -175,9 +175,7 @@ def _take(axis: Axis, row: _Row, column: Column, decimal: str, problems: Problem
     return True
 
 
-def _number(
-    row: _Row, column: Column, decimal: str, problems: ProblemList, coordinate: str
-) -> float | None:
+def _number(row: _Row, column: Column, decimal: str, problems: ProblemList, coordinate: str) -> float | None:
     kind = column.kind_for(coordinate)
     unit_text = row.unit
     try:

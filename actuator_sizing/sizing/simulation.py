@@ -242,22 +242,42 @@ def tuned(axis: AxisPlant, given: Mapping[str, float | str | bool]) -> Tuning:
     changed = {name: value for name, value in given.items()}
     try:
         base = replace(base, **{k: v for k, v in changed.items() if k not in _GAINS})  # type: ignore[arg-type]
-        tuning = default_tuning(plant, base, current_rise_s=axis.case.surroundings.current_loop_rise_s)
+        tuning = _for_every_payload(axis, base)
         used = replace(tuning.settings, **changed)  # type: ignore[arg-type]
     except (ValueError, TypeError) as error:
         raise _wrong("settings", str(error), "settings that mean something", "Change the settings.") from None
     if not changed:
         return tuning
-    for load in {axis.plant(segment).load_inertia_kg_m2 for segment in axis.case.segments}:
-        radius = LinearCascade(replace(plant, load_inertia_kg_m2=load), used).spectral_radius
+    for one in _payloads(axis):
+        radius = LinearCascade(one, used).spectral_radius
         if not radius < 1.0:
-            raise _wrong("settings", f"loops that are unstable (largest pole {radius:.4g} per sample)",
-                         "poles inside the unit circle",
-                         "Lower the gains, or sample faster.")  # fmt: skip
+            raise _wrong(
+                "settings",
+                f"loops that are unstable (largest pole {radius:.4g} per sample)",
+                "poles inside the unit circle",
+                "Lower the gains, or sample faster.",
+            )
     speed = used.speed_gain_a_s_per_rad * plant.torque_constant_nm_per_a / plant.total_inertia_kg_m2
     current = used.current_gain_v_per_a / plant.inductance_h
     limited = tuning.limited_by if not set(changed) & _GAINS else "stated settings"
     return Tuning(used, current, speed, limited)
+
+
+def _payloads(axis: AxisPlant) -> list[Plant]:
+    """The plants of the cycle, the heaviest first."""
+    plants = {axis.plant(segment) for segment in axis.case.segments}
+    return sorted(plants, key=lambda plant: -plant.load_inertia_kg_m2)
+
+
+def _for_every_payload(axis: AxisPlant, base: LoopSettings) -> Tuning:
+    """Settings for the heaviest payload with which the lighter ones are stable too."""
+    plants = _payloads(axis)
+    rise = axis.case.surroundings.current_loop_rise_s
+    for plant in plants:
+        tuning = default_tuning(plant, base, current_rise_s=rise)
+        if all(LinearCascade(other, tuning.settings).spectral_radius < 1.0 for other in plants):
+            return tuning
+    raise ValueError("no settings of the loops are stable with every payload of the cycle")
 
 
 def parse_settings(changes: tuple[str, ...]) -> dict[str, float | str | bool]:

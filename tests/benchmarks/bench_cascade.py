@@ -76,7 +76,9 @@ def main(rounds):
             "plain": lambda p=plant, s=s: Cascade(p, s).advance(ANGLE, SPEED, ZERO, LOAD),
         }
         if compiled_loop() is not None:
-            runs["compiled"] = lambda p=plant, s=s: Cascade(p, s, is_compiled=True).advance(ANGLE, SPEED, ZERO, LOAD)
+            runs["compiled"] = lambda p=plant, s=s: Cascade(p, s, is_compiled=True).advance(
+                ANGLE, SPEED, ZERO, LOAD
+            )
             runs["compiled"]()  # the compiler's own time is not measured
         best = dict.fromkeys(runs, np.inf)
         for _ in range(rounds):
@@ -86,7 +88,9 @@ def main(rounds):
         gain = best["numpy"] / best["plain"]
         line = f"cascade, {name}: plain {best['plain'] * 1e3:.1f} ms, {gain:.1f} times the numpy loop"
         if "compiled" in best:
-            line += f"; compiled {best['compiled'] * 1e3:.2f} ms, {best['numpy'] / best['compiled']:.0f} times"
+            line += (
+                f"; compiled {best['compiled'] * 1e3:.2f} ms, {best['numpy'] / best['compiled']:.0f} times"
+            )
         print(line + f" ({best['numpy'] * 1e3:.0f} ms, {rounds} rounds)")
 
 

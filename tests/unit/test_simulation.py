@@ -302,3 +302,18 @@ def test_the_command(potting, capsys):
     status, shown = run(capsys, *potting, "--set", "position_gain_per_s=1e9")
     assert status == 2
     assert "unstable" in shown.err
+
+
+def test_default_loops_are_stable_with_every_payload():
+    heavy = cycle(
+        {"law": "cycloidal", "displacement": 0.1, "duration_s": 2.0, "payload": 900.0},
+        {"law": "dwell", "duration_s": 0.2},
+        {"law": "cycloidal", "displacement": -0.1, "duration_s": 2.0},
+    )
+    one = dataclasses.replace(made(gearheads=[GEARHEAD]), segments=heavy)
+    found = simulate(one, motor="M0", gearhead="G0", drive="D0")
+    assert found.quantities["following_error_peak"] < 0.01
+    light = dataclasses.replace(
+        found.plant, load_inertia_kg_m2=found.plant.load_inertia_kg_m2 * 20.0 / 920.0
+    )  # moving mass alone; the shaft itself has no inertia here
+    assert LinearCascade(light, found.settings).spectral_radius < 1.0
