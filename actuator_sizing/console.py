@@ -178,6 +178,9 @@ def _governing(result: SetResult) -> Any:
 
 _HEADINGS = ("#", "motor", "gearhead", "ratio", "drive", "price", "governing check", "utilisation", "verdict")
 _RIGHT = (0, 3, 5, 7)  # columns of numbers
+_SPARE = (3, 5)  # ratio and price: the first columns to go where a terminal is narrow
+_TEXTS = (1, 2, 4, 6)  # names of parts and check: the columns that may be cut
+_GAP, _NARROWEST = 2, 8  # letters between columns; letters that a cut column keeps
 
 
 def _row(result: SetResult) -> tuple[str, ...]:
@@ -198,7 +201,7 @@ def _row(result: SetResult) -> tuple[str, ...]:
 
 
 def _print_table(headings: Sequence[str], rows: Sequence[Sequence[str]]) -> None:
-    """Aligned plain text when piped; on a terminal a table that wraps to its width."""
+    """Aligned plain text when piped; on a terminal one line a set, cut to its width."""
     if not sys.stdout.isatty():
         widths = [max(map(len, column)) for column in zip(headings, *rows, strict=True)]
         for cells in (headings, *rows):
@@ -213,12 +216,53 @@ def _print_table(headings: Sequence[str], rows: Sequence[Sequence[str]]) -> None
     from rich.table import Table
     from rich.text import Text
 
-    table = Table(box=SIMPLE_HEAD, pad_edge=False, width=None)
-    for index, heading in enumerate(headings):
-        table.add_column(heading, justify="right" if index in _RIGHT else "left", overflow="fold")
-    for cells in rows:
+    room = shutil.get_terminal_size().columns
+    kept, lines = fit_columns([headings, *rows], room)
+    table = Table(box=SIMPLE_HEAD, pad_edge=False, show_edge=False, padding=(0, 1, 0, 0))
+    for index, heading in zip(kept, lines[0], strict=True):
+        table.add_column(Text(heading), justify="right" if index in _RIGHT else "left", no_wrap=True)
+    for cells in lines[1:]:
         table.add_row(*(Text(cell) for cell in cells))  # Text: a name such as "[b]" is no markup
-    Console(width=shutil.get_terminal_size().columns).print(table)
+    Console(width=room).print(table)
+
+
+def fit_columns(rows: Sequence[Sequence[str]], room: int) -> tuple[list[int], list[list[str]]]:
+    """Leave out what a narrow terminal can spare, then cut the widest columns, so that a row takes one line.
+
+    Parameters
+    ----------
+    rows : sequence of sequence of str
+        Cells, headings first.
+    room : int
+        Letters of a line. [-]
+
+    Returns
+    -------
+    kept : list of int
+        Columns that are left.
+    rows : list of list of str
+        Their cells, the longer ones cut with an ellipsis.
+    """
+    widths = [max(map(len, column)) for column in zip(*rows, strict=True)]
+    kept = list(range(len(widths)))
+
+    def too_wide() -> int:
+        return sum(widths[index] + _GAP for index in kept) - room
+
+    for index in _SPARE:
+        if too_wide() > 0:
+            kept.remove(index)
+    while too_wide() > 0 and max(widths[index] for index in _TEXTS) > _NARROWEST:
+        widths[max(_TEXTS, key=lambda index: widths[index])] -= 1
+    return kept, [[_cut(row[index], widths[index]) for index in kept] for row in rows]
+
+
+def _cut(text: str, width: int) -> str:
+    """Cut a text in its middle: names of one family differ at their ends."""
+    if len(text) <= width:
+        return text
+    tail = (width - 1) // 2
+    return f"{text[: width - 1 - tail]}…{text[len(text) - tail :]}"
 
 
 def _report_line(written: Sequence[Path]) -> str:

@@ -16,7 +16,7 @@ from actuator_sizing.case.raw_tables import RawTable
 from actuator_sizing.case.tables import COMMON_QUANTITIES, TABLES, axis_quantities
 from actuator_sizing.case.text_columns import OddCell
 from actuator_sizing.case.words import canonical_word
-from actuator_sizing.core.mechanisms import MECHANISMS, Mechanism
+from actuator_sizing.core.mechanisms import MECHANISMS, ROTARY, SHAFT, Mechanism
 from actuator_sizing.core.parameters import Surroundings
 from actuator_sizing.errors import WARNING
 from actuator_sizing.units import UnitError, parse_unit, si_unit, to_si
@@ -46,6 +46,14 @@ class Axis:
     def coordinate(self) -> str:
         """``"linear"`` or ``"rotary"``, empty where the mechanism is not known."""
         return self.mechanism.coordinate if self.mechanism else ""
+
+    @property
+    def motion_coordinate(self) -> str:
+        """Kind of the motion of the duty cycle: that of the load, or rotary at the driven shaft."""
+        if self.mechanism is None or self.mechanism.drives_linear_motor:
+            return self.coordinate
+        at_shaft = (self.word("motion_stated_at") or self.mechanism.motion_at) == SHAFT
+        return ROTARY if at_shaft else self.coordinate
 
     def number(self, key: str) -> float:
         """SI value, NaN where nothing is known."""
@@ -255,6 +263,9 @@ def _complete(
                             allowed=column.allowed(axis.coordinate or "rotary"), remedy=remedy)  # fmt: skip
         elif column.default is not None:
             _assume(axis, column.name, column.key, column.default, unit, column.assumed)
+    if axis.mechanism is not None and axis.mechanism.motion_at == SHAFT:
+        if "motion_stated_at" not in axis.values and "motion_stated_at" not in broken:
+            _assume(axis, "motion stated at", "motion_stated_at", SHAFT, "", "usual for this mechanism")
     nominal = axis.number("nominal_bus_voltage")
     if np.isfinite(nominal):
         for key, factor, sign in (("minimum_bus_voltage", 1.0 - BUS_TOLERANCE, "−"),
@@ -289,7 +300,8 @@ def _check(axis: Axis, problems: ProblemList) -> None:
                         got=f"{threshold:g} V", allowed=f"above the maximum bus voltage of {high:g} V",
                         remedy="Below it the chopper burns power from the supply.", severity=WARNING)  # fmt: skip
     stated = axis.rows
-    if np.isfinite(axis.number("thread_friction_coefficient")) and np.isnan(axis.number("screw_diameter")):
+    diameters = axis.number("screw_diameter"), axis.number("thread_mean_diameter")
+    if np.isfinite(axis.number("thread_friction_coefficient")) and np.isnan(diameters).all():
         problems.report(_TABLE, stated.get("thread_friction_coefficient"), "thread friction coefficient",
                         got="no screw diameter", allowed="a screw diameter, which gives the lead angle",
                         remedy="Add the screw diameter, or state the efficiency instead.")  # fmt: skip

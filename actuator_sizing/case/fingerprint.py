@@ -62,6 +62,11 @@ def fingerprint(
     )
     for label, value in axis:
         add("axis", label, value)
+    for name in ("map", "inertias"):
+        rows = [entry for entry in entries if entry.table == name and entry.column not in _NOT_HASHED]
+        order = {row: position for position, row in enumerate(sorted({entry.row or 0 for entry in rows}))}
+        for entry in sorted(rows, key=lambda entry: (entry.row or 0, entry.column)):
+            add(name, order[entry.row or 0], entry.label, entry.column, entry.value_si)
     cycle = [entry for entry in entries if entry.table == "duty_cycle" and entry.column not in _NOT_HASHED]
     order = {row: position for position, row in enumerate(sorted({entry.row or 0 for entry in cycle}))}
     for entry in sorted(cycle, key=lambda entry: (entry.row or 0, entry.column)):

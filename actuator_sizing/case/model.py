@@ -9,7 +9,8 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.core.mechanisms import Mechanism
+from actuator_sizing.core.inertias import Part
+from actuator_sizing.core.mechanisms import SHAFT, Mechanism
 from actuator_sizing.core.motion_laws import Phase
 from actuator_sizing.core.parameters import (
     DriveParameters,
@@ -125,11 +126,17 @@ class Case:
     entries: tuple[Entry, ...]  # axis, duty cycle and limits; catalog entries come from `catalog_entries`
     problems: tuple[Problem, ...]  # warnings and notes only; errors never make a Case
     fingerprint: str
+    parts: tuple[Part, ...] = ()  # inertia inventory; already added to mechanism and gearhead parameters
 
     @property
     def cycle_duration_s(self) -> float:
         """Duration of one cycle. [s]."""
         return sum(segment.duration_s for segment in self.segments)
+
+    @property
+    def motion_at_shaft(self) -> bool:
+        """Whether the duty cycle states the motion of the driven shaft rather than that of the load."""
+        return (self.options.get("motion stated at") or self.mechanism.motion_at) == SHAFT
 
     def number(self, option: str) -> float:
         """Value of an option that is a number and has a default.

@@ -60,6 +60,9 @@ def parse_table(
 def _take_names(parsed: ParsedTable) -> None:
     """Names of the rows: there must be one, short enough to print, and no two alike."""
     first = parsed.table.columns[0]
+    if first.is_number:  # rows are points, not parts
+        parsed.names = ("",) * len(parsed)
+        return
     values = parsed.text(first.key)
     parsed.names = tuple(values)
     lengths = np.fromiter(map(len, parsed.names), dtype=np.int64, count=len(parsed))

@@ -10,9 +10,9 @@ from actuator_sizing.case.sheets import Sheet, is_workbook
 from actuator_sizing.case.tables import (
     ADVICE_CHECKS,
     CHECK_NAMES,
-    DUTY_CYCLE_COLUMNS,
     TABLES,
     axis_quantities,
+    table_for,
 )
 from actuator_sizing.case.writing import write_sheets
 from actuator_sizing.core.mechanisms import MECHANISMS, Mechanism
@@ -27,7 +27,28 @@ _EXAMPLES: dict[str, dict[str, str]] = {
     "ball screw": {"lead": "20"},
     "lead screw": {"displacement": "0.1", "duration": "1"},
     "linear motor": {"inclination": "0"},
+    "winch": {"moving mass": "10", "counterweight mass": "", "payload": "2", "duration": "1"},
+    "conveyor": {"inclination": "0"},
+    "wheel drive": {"inclination": "0", "duration": "1.5"},
+    "gantry": {"inclination": "0"},
+    "arm": {"load inertia": "0.06", "arm mass": "2", "arm mass radius": "120", "payload": "0.2"},
+    "unbalanced table": {"load inertia": "0.5"},
+    "crank-slider": {"inclination": "0", "displacement": "360", "payload": "0"},
+    "Scotch yoke": {"inclination": "0", "displacement": "360", "payload": "0"},
+    "toggle lever": {"inclination": "0", "displacement": "60", "payload": "0"},
+    "eccentric": {"inclination": "0", "displacement": "360", "payload": "0", "moving mass": "2"},
+    "four-bar": {"displacement": "360", "load inertia": "0.2"},
+    "tabulated slider": {"inclination": "0", "displacement": "360", "payload": "0"},
+    "tabulated lever": {"displacement": "360", "load inertia": "0.2"},
+    "fan": {"displacement": "3600", "duration": "10", "payload": "0"},
+    "displacement pump": {"displacement": "3600", "duration": "10", "payload": "0"},
+    "winder": {"payload": "0", "displacement": "0.5", "duration": "1"},
+    "unwinder": {"payload": "0", "displacement": "0.5", "duration": "1"},
 }
+
+# One turn of a plain cam: dwell, lift, dwell, return.
+_MAP_ROWS = (("0", "0"), ("45", "0"), ("90", "5"), ("135", "15"), ("180", "20"), ("225", "20"), ("270", "15"),
+             ("315", "5"), ("360", "0"))  # fmt: skip
 
 
 def start_case(path: str | Path, mechanism: str = DEFAULT_MECHANISM) -> tuple[Path, ...]:
@@ -90,9 +111,10 @@ def _mechanism(word: str) -> type[Mechanism]:
 
 def example_sheets(mechanism: type[Mechanism]) -> tuple[Sheet, ...]:
     """Every table of a new case, from the declarations of its columns."""
-    tables = list(TABLES.values())
-    if mechanism.drives_linear_motor:  # it has no gearhead
-        tables = [table for table in tables if table.name != "gearheads"]
+    left_out = set() if mechanism.needs_map else {"map"}
+    if mechanism.drives_linear_motor:  # it has no gearhead, and nothing turns
+        left_out |= {"gearheads", "inertias"}
+    tables = [table_for(name, mechanism) for name in TABLES if name not in left_out]
     return tuple(_sheet(table, mechanism) for table in tables)
 
 
@@ -107,7 +129,9 @@ def _sheet(table: Table, mechanism: type[Mechanism]) -> Sheet:
     if table.name == "axis":
         rows = _axis_rows(mechanism)
     elif table.name == "duty_cycle":
-        rows = _duty_cycle_rows(mechanism)
+        rows = _duty_cycle_rows(mechanism, columns)
+    elif table.name == "map":
+        rows = list(_MAP_ROWS)
     elif table.name == "limits":
         rows = _limit_rows(columns)
     else:
@@ -128,12 +152,11 @@ def _axis_rows(mechanism: type[Mechanism]) -> list[tuple[str, ...]]:
     return rows
 
 
-def _duty_cycle_rows(mechanism: type[Mechanism]) -> list[tuple[str, ...]]:
+def _duty_cycle_rows(mechanism: type[Mechanism], columns: list[Column]) -> list[tuple[str, ...]]:
     """There, wait, back, wait: a cycle that closes."""
     fitted = _EXAMPLES.get(mechanism.name, {})
     example = {
-        column.name: fitted.get(column.name, column.example_for(mechanism.coordinate))
-        for column in DUTY_CYCLE_COLUMNS
+        column.name: fitted.get(column.name, column.example_for(mechanism.coordinate)) for column in columns
     }
     wait = {
         "motion law": "dwell",
@@ -148,7 +171,7 @@ def _duty_cycle_rows(mechanism: type[Mechanism]) -> list[tuple[str, ...]]:
         example | {"segment": "back", "displacement": f"-{example['displacement']}"},
         wait | {"segment": "wait back"},
     )
-    return [tuple(row.get(column.name, "") for column in DUTY_CYCLE_COLUMNS) for row in segments]
+    return [tuple(row.get(column.name, "") for column in columns) for row in segments]
 
 
 def _limit_rows(columns: list[Column]) -> list[tuple[str, ...]]:

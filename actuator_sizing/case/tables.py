@@ -6,6 +6,7 @@ Catalog columns are declared in `catalog_columns`; bounds are SI.
 
 from __future__ import annotations
 
+from dataclasses import replace
 from functools import cache
 
 from actuator_sizing.case.catalog_columns import DRIVE_COLUMNS, GEARHEAD_COLUMNS, MOTOR_COLUMNS
@@ -21,7 +22,15 @@ from actuator_sizing.case.columns import (
     key_of,
     nearest,
 )
-from actuator_sizing.core.mechanisms import MECHANISMS, Mechanism, Parameter
+from actuator_sizing.core.mechanisms import (
+    LINEAR,
+    LOAD,
+    MECHANISMS,
+    ROTARY,
+    SHAFT,
+    Mechanism,
+    Parameter,
+)
 
 CHECK_NAMES: tuple[tuple[str, str], ...] = (
     ("speed_torque", "peak torque over speed"),
@@ -79,6 +88,8 @@ AXIS_COLUMNS = (
 COMMON_QUANTITIES = (
     Column("mechanism", WORDS, "what carries the load from the driven shaft", required=True,
            words=tuple(MECHANISMS), example="ball screw"),
+    Column("motion stated at", WORDS, "whether the duty cycle states the motion of the load or of the driven "
+           "shaft (default: the load; the shaft for cranks, cams and linkages)", words=(LOAD, SHAFT), example=""),
     Column("title", TEXT, "name of the axis as printed on the report", example="Tray lift"),
     Column("revision", TEXT, "revision of this specification", example="A"),
     Column("prepared by", TEXT, "who stands behind the numbers", example=""),
@@ -215,6 +226,40 @@ DUTY_CYCLE_COLUMNS = (
     Column("note", TEXT, "remark", example=""),
 )  # fmt: skip
 
+MAP_COLUMNS = (
+    Column("shaft angle", "angle", "angle of the driven shaft; rising from row to row", required=True, minimum=-1.0e4,
+           maximum=1.0e4, example="0", unit="deg"),
+    Column("position", ("length", "angle"), "position of the load at that angle", required=True, example=("0", "0"),
+           unit=("mm", "deg")),
+)  # fmt: skip
+
+INERTIA_SHAPES = ("solid cylinder", "hollow cylinder", "block", "point mass", "screw", "pulley", "belt", "coupling",
+                  "brake")  # fmt: skip
+INERTIA_PLACES = ("driven shaft", "load", "motor")
+
+INERTIA_COLUMNS = (
+    Column("part", TEXT, "name of the part", required=True, example="coupling"),
+    Column("shape", WORDS, "what its dimensions mean", required=True, words=INERTIA_SHAPES, example="coupling"),
+    Column("referred to", WORDS, "what it turns or moves with", required=True, words=INERTIA_PLACES, example="motor"),
+    Column("inertia", "inertia", "inertia about its own axis, where it is known; then no size is needed", minimum=0.0,
+           example="0.05", unit="kg·cm²"),
+    Column("mass", "mass", "mass, where it is known; else from size and density", minimum=0.0, unit="kg"),
+    Column("diameter", "length", "outer diameter of a cylinder, screw, pulley, coupling or brake; diameter that a "
+           "belt runs on", positive=True, unit="mm"),
+    Column("inner diameter", "length", "bore of a hollow cylinder, pulley, coupling or brake", minimum=0.0,
+           unit="mm"),
+    Column("length", "length", "length of a cylinder along its axis; of a block along one side", positive=True,
+           unit="mm"),
+    Column("width", "length", "second side of a block", positive=True, unit="mm"),
+    Column("height", "length", "side of a block along the axis that it turns about", positive=True, unit="mm"),
+    Column("density", "density", "density of the material", positive=True, default=7850.0, assumed="steel",
+           unit="kg/m³"),
+    Column("offset", "length", "distance of the part's centre from the axis that it turns about", default=0.0,
+           assumed="on the axis", minimum=0.0, unit="mm"),
+    Column("count", "count", "how many of them", default=1.0, assumed="one", minimum=1.0, maximum=10000.0),
+    Column("source", TEXT, "where the dimensions come from", example=""),
+)  # fmt: skip
+
 LIMIT_COLUMNS = (
     Column("check", WORDS, "which check", required=True, words=tuple(title for _, title in CHECK_NAMES),
            example="RMS current"),
@@ -260,10 +305,47 @@ TABLES: dict[str, Table] = {
         Table("limits", "One row says how one check is judged; checks not listed keep their defaults.",
               LIMIT_COLUMNS),
         Table("tolerances", "One row is the spread of one input quantity.", TOLERANCE_COLUMNS),
+        Table("map", "One row is one point of the curve on which the load follows the driven shaft, for the "
+              "tabulated mechanisms; a smooth spline goes through the points.", MAP_COLUMNS),
+        Table("inertias", "One row is one part of the inertia inventory; its inertia is added to that of the axis.",
+              INERTIA_COLUMNS),
     )
 }  # fmt: skip
 
 CATALOG_TABLES = tuple(name for name, table in TABLES.items() if table.is_catalog)
+
+
+def table_for(name: str, mechanism: type[Mechanism] | None, stated_at: str = "") -> Table:
+    """Table with the kinds of quantity that hold for one mechanism.
+
+    The motion is that of load or driven shaft as stated, a payload is a mass or an inertia as the mechanism
+    says, and process efforts belong to the load.
+    """
+    table = TABLES[name]
+    if mechanism is None or name not in ("duty_cycle", "map"):
+        return table
+    moved = (
+        ROTARY
+        if (stated_at or mechanism.motion_at) == SHAFT and name == "duty_cycle"
+        else mechanism.coordinate
+    )
+    if mechanism.drives_linear_motor:
+        moved = LINEAR
+    carried = LINEAR if mechanism.carries_mass() else ROTARY
+
+    def resolved(column: Column) -> Column:
+        if isinstance(column.kind, str):
+            return column
+        side = moved
+        if column.kind[0] == "mass":
+            side = carried
+        elif column.kind[0] == "force":
+            side = mechanism.coordinate
+        return replace(
+            column, kind=column.kind_for(side), example=column.example_for(side), unit=column.unit_for(side)
+        )
+
+    return replace(table, columns=tuple(resolved(column) for column in table.columns))
 
 
 @cache
@@ -294,9 +376,13 @@ __all__ = [
     "FITTING_CHECKS",
     "DRIVE_COLUMNS",
     "DUTY_CYCLE_COLUMNS",
+    "INERTIA_COLUMNS",
+    "INERTIA_PLACES",
+    "INERTIA_SHAPES",
     "GEARHEAD_COLUMNS",
     "LAW_WORDS",
     "LIMIT_COLUMNS",
+    "MAP_COLUMNS",
     "MOTOR_COLUMNS",
     "RANKINGS",
     "TABLES",
@@ -314,4 +400,5 @@ __all__ = [
     "mechanism_quantities",
     "nearest",
     "quantity_kinds",
+    "table_for",
 ]

@@ -7,11 +7,13 @@ from pathlib import Path
 
 from actuator_sizing.case.axis import Axis, options_of, surroundings_of
 from actuator_sizing.case.catalogs import to_catalog
-from actuator_sizing.case.columns import Column, key_of
+from actuator_sizing.case.columns import Column
 from actuator_sizing.case.drives import understand_drives
 from actuator_sizing.case.fingerprint import fingerprint
 from actuator_sizing.case.gearheads import understand_gearheads
+from actuator_sizing.case.inertias import at_the_motor, table_entries, understand_parts, with_parts
 from actuator_sizing.case.judging import understand_limits, understand_tolerances
+from actuator_sizing.case.mechanics import build_mechanism, check_motion, understand_map
 from actuator_sizing.case.model import MISSING, ORIGINS, STATED, Case, Catalog, Entry
 from actuator_sizing.case.motion import motion_entries, understand_motion
 from actuator_sizing.case.motors import understand_motors
@@ -19,7 +21,8 @@ from actuator_sizing.case.parsed_tables import ParsedTable
 from actuator_sizing.case.parsing import parse_table
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.raw_tables import RawTable
-from actuator_sizing.case.tables import TABLES
+from actuator_sizing.case.tables import TABLES, table_for
+from actuator_sizing.core.mechanisms import SHAFT
 from actuator_sizing.errors import NOTE
 from actuator_sizing.units import si_unit
 
@@ -51,7 +54,14 @@ def understand(
         table: _parse(raw[table], axis, problems) for table in TABLES if table in raw and table != "axis"
     }
     motion = parsed.get("duty_cycle")
-    segments = understand_motion(motion, axis.coordinate, problems) if motion and axis.mechanism else ()
+    segments = (
+        understand_motion(motion, axis.motion_coordinate, problems) if motion and axis.mechanism else ()
+    )
+    mechanism = build_mechanism(axis, understand_map(parsed.get("map"), axis, problems), problems)
+    if mechanism is not None and motion:
+        at_shaft = (axis.word("motion_stated_at") or mechanism.motion_at) == SHAFT
+        check_motion(mechanism, at_shaft, segments, problems)
+    parts = understand_parts(parsed.get("inertias"), axis.mechanism, problems)
     motors, drives = parsed.get("motors"), parsed.get("drives")
     motor_parameters = understand_motors(motors) if motors else None
     drive_parameters = understand_drives(drives) if drives else None
@@ -70,24 +80,28 @@ def understand(
     tolerances = understand_tolerances(parsed.get("tolerances"), decimal, problems)
     if problems.has_errors:
         return None
-    if not (motion and motors and drives and axis.mechanism and motor_parameters and drive_parameters):
+    if not (motion and motors and drives and mechanism and motor_parameters and drive_parameters):
         return None  # a required table is missing, which was reported
-    mechanism = axis.mechanism.from_values(
-        {parameter.name: _number(axis, parameter.name) for parameter in axis.mechanism.parameters}
+    entries = (
+        *axis.entries,
+        *motion_entries(motion, axis.coordinate),
+        *table_entries(parsed.get("map") if mechanism.needs_map else None),
+        *table_entries(parsed.get("inertias")),
+        *limit_entries,
     )
-    entries = (*axis.entries, *motion_entries(motion, axis.coordinate), *limit_entries)
     catalogs = to_catalog(motors), to_catalog(gearheads), to_catalog(drives)
     return Case(
         name=name,
         path=path,
-        mechanism=mechanism,
+        mechanism=with_parts(mechanism, parts),
+        parts=parts,
         surroundings=surroundings_of(axis),
         segments=segments,
         motors=catalogs[0],
         gearheads=catalogs[1],
         drives=catalogs[2],
         motor_parameters=motor_parameters,
-        gearhead_parameters=gearhead_parameters,
+        gearhead_parameters=at_the_motor(gearhead_parameters, parts),
         drive_parameters=drive_parameters,
         limits=limits,
         tolerances=tolerances,
@@ -99,12 +113,8 @@ def understand(
 
 
 def _parse(raw: RawTable, axis: Axis, problems: ProblemList) -> ParsedTable:
-    return parse_table(raw, TABLES[raw.name], problems, axis.coordinate, broad=axis.mechanism is None)
-
-
-def _number(axis: Axis, name: str) -> float | None:
-    value = axis.values.get(key_of(name))
-    return value if isinstance(value, float) else None
+    table = table_for(raw.name, axis.mechanism, axis.word("motion_stated_at"))
+    return parse_table(raw, table, problems, axis.coordinate, broad=axis.mechanism is None)
 
 
 def _direct_drive(axis: Axis) -> bool:

@@ -11,13 +11,15 @@ from actuator_sizing.case.columns import TEXT, WORDS, YES_NO, Column, Table, fol
 from actuator_sizing.case.documentation import column_facts
 from actuator_sizing.case.headings import split_heading
 from actuator_sizing.case.sheets import Sheet
-from actuator_sizing.case.tables import TABLES, axis_quantities
+from actuator_sizing.case.tables import TABLES, axis_quantities, table_for
 from actuator_sizing.errors import InputError, Problem
 
 if TYPE_CHECKING:
     from xlsxwriter.format import Format
     from xlsxwriter.workbook import Workbook
     from xlsxwriter.worksheet import Worksheet
+
+    from actuator_sizing.core.mechanisms import Mechanism
 
 _MAX_ROWS, _MAX_COLUMNS, _MAX_CELL, _MAX_SHEET_NAME = 1_048_576, 16_384, 32_767, 31  # of the xlsx format
 _MAX_LIST = 255  # characters of a data-validation list
@@ -55,25 +57,21 @@ def workbook_bytes(sheets: Sequence[Sheet]) -> bytes:
     options = {"in_memory": True, "strings_to_formulas": False, "strings_to_urls": False}
     book = Workbook(stream, options)
     book.set_properties({"created": datetime(2000, 1, 1)})  # the same tables give the same bytes
-    coordinate = coordinate_of(sheets)
+    mechanism, stated_at = mechanism_of(sheets)
     for sheet in sheets:
-        _write_sheet(book, sheet, coordinate)
+        _write_sheet(book, sheet, mechanism, stated_at)
     book.close()
     return stream.getvalue()
 
 
-def coordinate_of(sheets: Iterable[Sheet]) -> str:
-    """``"linear"`` or ``"rotary"``, as the mechanism in the `axis` table says; rotary if it says nothing."""
+def mechanism_of(sheets: Iterable[Sheet]) -> tuple[type[Mechanism] | None, str]:
+    """Mechanism, and where the motion is stated, as the `axis` table says; None and empty if it says nothing."""
     from actuator_sizing.core.mechanisms import MECHANISMS
 
-    for sheet in sheets:
-        if fold(sheet.name) == "axis":
-            for row in sheet.rows:
-                if len(row) > 1 and fold(row[0]) == "mechanism":
-                    words = {fold(name): mechanism for name, mechanism in MECHANISMS.items()}
-                    if fold(row[1]) in words:
-                        return words[fold(row[1])].coordinate
-    return "rotary"
+    words = {fold(name): mechanism for name, mechanism in MECHANISMS.items()}
+    rows = [row for sheet in sheets if fold(sheet.name) == "axis" for row in sheet.rows if len(row) > 1]
+    said = {fold(row[0]): fold(row[1]) for row in reversed(rows)}
+    return words.get(said.get("mechanism", "")), said.get("motion stated at", "")
 
 
 def _misfits(sheets: Iterable[Sheet]) -> Iterable[Problem]:
@@ -104,9 +102,11 @@ def _misfits(sheets: Iterable[Sheet]) -> Iterable[Problem]:
                 )
 
 
-def _write_sheet(book: Workbook, sheet: Sheet, coordinate: str) -> None:
+def _write_sheet(book: Workbook, sheet: Sheet, mechanism: type[Mechanism] | None, stated_at: str) -> None:
     page = book.add_worksheet(sheet.name)
-    table = next((table for name, table in TABLES.items() if fold(name) == fold(sheet.name)), None)
+    coordinate = mechanism.coordinate if mechanism else "rotary"
+    known = next((name for name in TABLES if fold(name) == fold(sheet.name)), None)
+    table = None if known is None else table_for(known, mechanism, stated_at)
     head = book.add_format({"bold": True, "text_wrap": True, "valign": "top", "bottom": 1})
     decimals: dict[int, Format] = {}
     headings = sheet.rows[0] if sheet.rows else ()

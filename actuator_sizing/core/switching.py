@@ -248,7 +248,7 @@ def _first_event(
     """Instant within the step at which the first guard reaches zero, and which it is."""
     from scipy.optimize import brentq
 
-    first, which = h, 0
+    first, which = math.inf, 0
     begin = switched.guards(x, u, mode)
     path = switched.path(x, u, mode, h)
     for k, value in enumerate(low):
@@ -264,8 +264,10 @@ def _first_event(
             start = next((h * 0.5**n for n in range(50, 0, -1) if guard(h * 0.5**n) > 0.0), 0.0)
         if start == 0.0 and begin[k] <= 0.0:
             at = 0.0
+        elif guard(h) >= 0.0:
+            at = h  # the series and the exponential differ by rounding about the sign at the end
         else:
             at = float(brentq(guard, start, h, xtol=1e-15 * h + 1e-300, rtol=8.9e-16))
-        if at < first or k == 0:
-            first, which = (at, k) if at <= first else (first, which)
+        if at < first:
+            first, which = at, k
     return first, which

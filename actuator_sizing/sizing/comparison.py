@@ -19,6 +19,7 @@ from actuator_sizing.sizing.demand import build_demand, cycle_quantities
 from actuator_sizing.sizing.detail import set_detail
 from actuator_sizing.sizing.dynamic_results import add_dynamics
 from actuator_sizing.sizing.fitting import compatible
+from actuator_sizing.sizing.inertias import inertia_shares
 from actuator_sizing.sizing.judging import (
     ORDER,
     Verdicts,
@@ -136,6 +137,7 @@ def compare(
         cycle=cycle_quantities(demand),
         assumptions=assumptions_of(case, results[0]),
         questions=questions_of(results),
+        inertias=inertia_shares(case, demand, results[0].ratio),
         version=__version__,
     )
 

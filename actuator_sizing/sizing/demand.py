@@ -7,8 +7,8 @@ direction of power in the mechanism and at the driven shaft), so that everything
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass, fields
-from functools import cached_property
+from dataclasses import dataclass, fields, replace
+from functools import cached_property, lru_cache
 from typing import Any
 
 import numpy as np
@@ -18,7 +18,7 @@ from actuator_sizing.case.model import Case, Segment
 from actuator_sizing.core.mechanisms import Mechanism
 from actuator_sizing.core.moments import demand_functions
 from actuator_sizing.core.motion_laws import Phase
-from actuator_sizing.core.quadrature import NODES, integrate, largest_magnitude, lobatto, roots
+from actuator_sizing.core.quadrature import NODES, integrate, interpolate, largest_magnitude, lobatto, roots
 from actuator_sizing.core.transmission import (
     BACK_DRIVING,
     GEAR_EXPONENT,
@@ -31,6 +31,11 @@ from actuator_sizing.core.transmission import (
 FloatArray = NDArray[np.float64]
 
 CAUSES = ("inertia", "gravity", "friction", "process", "losses")
+
+#: Relative interpolation error that a piece may have where the geometry bends: what `NODES` nodes promise.
+_RESOLUTION = 1e-10
+_DEEPEST = 14  # halvings of one stretch; a stretch that short is below a part in ten thousand
+_RESOLVED = ("position", "speed", "effort", "lossless_torque", "shaft_speed", "shaft_acceleration")
 
 
 @dataclass(frozen=True)
@@ -130,16 +135,16 @@ def build_demand(case: Case) -> Demand:
     Demand
         Pieces, node values and their moments; independent of any motor. [-]
     """
-    pieces = list(_pieces(case.segments, case.mechanism))
+    pieces = list(_pieces(case))
     stacked: dict[str, Any] = {
-        f.name: np.array([piece[f.name] for piece in pieces])
-        for f in fields(Demand)
-        if f.name not in ("torque_by_cause", "load_inertia")
+        name: np.array([piece[name] for piece in pieces])
+        for name in (*(f.name for f in fields(Demand)), "lever")
+        if name not in ("torque_by_cause", "load_inertia")
     }
     stacked["flow"] = stacked["flow"].astype(np.int8)
     causes = {cause: np.array([piece["by_cause"][cause] for piece in pieces]) for cause in CAUSES}
-    payloads = np.array([segment.payload for segment in case.segments])
-    inertia = float(np.max(case.mechanism.inertia_at_shaft(payloads)))
+    inertia = _largest_inertia(case, stacked["segment"], stacked["position"], stacked["lever"])
+    del stacked["lever"]
     return Demand(**stacked, torque_by_cause=causes, load_inertia=inertia)
 
 
@@ -184,6 +189,11 @@ class _Stretch:
         """Phase time at the nodes."""
         return np.asarray(self.begin + 0.5 * (lobatto()[0] + 1.0) * (self.end - self.begin))
 
+    @property
+    def middle(self) -> float:
+        """Phase time half way."""
+        return 0.5 * (self.begin + self.end)
+
     def cut(self, at: FloatArray) -> Iterator[_Stretch]:
         """Split at positions on (−1, 1)."""
         borders = [self.begin, *(self.begin + 0.5 * (at + 1.0) * (self.end - self.begin)), self.end]
@@ -191,19 +201,76 @@ class _Stretch:
             yield _Stretch(self.phase, begin, end)
 
 
-def _pieces(segments: tuple[Segment, ...], mechanism: Mechanism) -> Iterator[dict[str, Any]]:
-    start, origin = 0.0, 0.0
-    for index, segment in enumerate(segments):
-        for phase in segment.phases:
-            for reversal_free in _halves(phase):
-                speed = phase.kinematics(reversal_free.tau)[1]
-                for stretch in reversal_free.cut(roots(speed)):
-                    for piece in _same_power(stretch, segment, mechanism, origin):
-                        yield {"segment": index, "start_s": start, **piece}
-                        start += piece["duration_s"]
+def _largest_inertia(case: Case, segment: NDArray[np.intp], position: FloatArray, lever: FloatArray) -> float:
+    """Over every segment with its payload, of load and mechanism at the driven shaft. [kg·m², or kg]"""
+    mechanism = case.mechanism
+    if mechanism.resolved_by_nodes:
+        return float(np.max(mechanism.inertia_at_shaft(np.array([s.payload for s in case.segments]))))
+    return max(
+        mechanism.inertia_over(position[segment == i], lever[segment == i], case.segments[i].payload)
+        for i in np.unique(segment)
+    )
+
+
+@dataclass(frozen=True)
+class _Place:
+    """What a stretch needs to know of its segment: where it starts, and how finely it must be cut."""
+
+    segment: Segment
+    mechanism: Mechanism
+    at_shaft: bool
+    origin: float
+    factors: tuple[float, float, float]  # of the stage, by direction of power
+    scale: Mapping[str, float]  # sizes that interpolation errors are held against; empty: nodes resolve it
+
+    def kinks(self, stated: FloatArray) -> FloatArray:
+        """Kinks of the geometry within a stretch, in the coordinate of the cycle."""
+        ends = np.array([stated.min(), stated.max()]) + self.origin
+        return self.mechanism.borders(ends, self.at_shaft)
+
+
+def _pieces(case: Case) -> Iterator[dict[str, Any]]:
+    start = 0.0
+    for index, place in enumerate(_places(case)):
+        for phase in place.segment.phases:
+            for part in _halves(phase):
+                for smooth in _at_kinks(part, place):
+                    for stretch in smooth.cut(roots(phase.kinematics(smooth.tau)[1])):
+                        for one_way in _one_way(stretch, place):
+                            for piece in _same_power(one_way, place):
+                                yield {"segment": index, "start_s": start, **piece}
+                                start += piece["duration_s"]
+
+
+def _places(case: Case) -> tuple[_Place, ...]:
+    factors = _stage_factors(case.mechanism)
+    places, origin = [], 0.0
+    for segment in case.segments:
+        places.append(_Place(segment, case.mechanism, case.motion_at_shaft, origin, factors, {}))
         if segment.phases:
             last = segment.phases[-1]
             origin += float(last.kinematics(np.array([last.duration_s]))[0][0])
+    if case.mechanism.resolved_by_nodes:
+        return tuple(places)
+    scale: dict[str, float] = {name: 0.0 for name in _RESOLVED}
+    for place in places:
+        for phase in place.segment.phases:
+            for part in _halves(phase):
+                found = _load(part, place)
+                # Causes may cancel, but their rounding does not: the sum of their sizes is the measure.
+                size = found["efforts"].size
+                found |= {"effort": size, "lossless_torque": size * found["lever"]}
+                for name in _RESOLVED:
+                    scale[name] = max(scale[name], float(np.max(np.abs(found[name]))))
+    return tuple(replace(place, scale=scale) for place in places)
+
+
+def _stage_factors(mechanism: Mechanism) -> tuple[float, float, float]:
+    """`stage_factor` at standstill, motoring and back-driving."""
+    forward, back = np.array(mechanism.efficiency_forward), np.array(mechanism.efficiency_back)
+    flows = (STANDSTILL, MOTORING, BACK_DRIVING)
+    first, second, third = (float(stage_factor(np.array(flow), forward, back)) for flow in flows)
+    return first, second, third
 
 
 def _halves(phase: Phase) -> Iterator[_Stretch]:
@@ -215,64 +282,122 @@ def _halves(phase: Phase) -> Iterator[_Stretch]:
         yield _Stretch(phase, float(begin), float(end))
 
 
-def _same_power(
-    stretch: _Stretch, segment: Segment, mechanism: Mechanism, origin: float
-) -> Iterator[dict[str, Any]]:
+def _at_kinks(part: _Stretch, place: _Place) -> Iterator[_Stretch]:
+    """Cut where the geometry has a kink, so that what follows is smooth."""
+    if not place.scale:
+        yield part
+        return
+    stated = part.phase.kinematics(part.tau)[0]
+    found = [roots(stated + place.origin - kink) for kink in place.kinks(stated)]
+    yield from part.cut(np.unique(np.concatenate(found)) if found else np.empty(0))
+
+
+def _one_way(stretch: _Stretch, place: _Place) -> Iterator[_Stretch]:
+    """Cut at dead centres, where the load turns back under a shaft that turns on; resolve what is left."""
+    if not place.scale:
+        yield stretch
+        return
+    for fine in _resolved(stretch, place, ("speed", "shaft_speed")):
+        for one_way in fine.cut(roots(_load(fine, place)["speed"])):
+            yield from _resolved(one_way, place, tuple(place.scale))
+
+
+def _resolved(stretch: _Stretch, place: _Place, names: tuple[str, ...], depth: int = 0) -> Iterator[_Stretch]:
+    """Halve until the interpolant of each function meets the function at the nodes of both halves."""
+    half = stretch.middle
+    parts = (_Stretch(stretch.phase, stretch.begin, half), _Stretch(stretch.phase, half, stretch.end))
+    whole = _load(stretch, place)
+    values = np.array([whole[name] for name in names])
+    allowed = _RESOLUTION * np.array([place.scale[name] for name in names])
+    for part, matrix in zip(parts, _to_halves(), strict=True):
+        exact = _load(part, place, whole["load_direction"])
+        error = np.max(np.abs(values @ matrix - np.array([exact[name] for name in names])), axis=1)
+        if np.any(error > allowed) and depth < _DEEPEST:
+            for finer in parts:
+                yield from _resolved(finer, place, names, depth + 1)
+            return
+    yield stretch
+
+
+@lru_cache(maxsize=1)
+def _to_halves() -> tuple[FloatArray, FloatArray]:
+    """Matrices from node values to the interpolant at the nodes of the first and second half."""
+    first = 0.5 * (lobatto()[0] - 1.0)
+    return interpolate(np.eye(NODES), first), interpolate(np.eye(NODES), first + 1.0)
+
+
+def _same_power(stretch: _Stretch, place: _Place) -> Iterator[dict[str, Any]]:
     """Cut where the power of the load, then that of the driven shaft, changes direction."""
-    for one_way in stretch.cut(roots(_load(stretch, segment, mechanism, origin)["effort"])):
-        torque = _load(one_way, segment, mechanism, origin)["shaft_torque"]
+    for one_way in stretch.cut(roots(_load(stretch, place)["effort"])):
+        torque = _load(one_way, place)["shaft_torque"]
         for piece in one_way.cut(roots(torque)):
-            yield _load(piece, segment, mechanism, origin)
+            loaded = _load(piece, place)
+            yield loaded | {"by_cause": _by_cause(loaded)}
 
 
-def _load(stretch: _Stretch, segment: Segment, mechanism: Mechanism, origin: float) -> dict[str, Any]:
+def _sign(speed: FloatArray) -> float:
+    """Direction of motion on a piece, from its middle; 0 at rest."""
+    middle, scale = speed[NODES // 2], np.max(np.abs(speed))
+    return float(np.sign(middle)) if scale > 0.0 and abs(middle) > 1e-12 * scale else 0.0
+
+
+def _load(stretch: _Stretch, place: _Place, direction_of_load: float | None = None) -> dict[str, Any]:
     """Everything at the nodes of one stretch, with one direction of motion and of power on all of it."""
-    x, v, a, _ = stretch.phase.kinematics(stretch.tau)
-    x = x + origin
-    middle_speed = v[NODES // 2]
-    scale = np.max(np.abs(v))
-    moving = scale > 0.0 and abs(middle_speed) > 1e-12 * scale
-    direction = np.full(NODES, np.sign(middle_speed) if moving else 0.0)
+    segment, mechanism = place.segment, place.mechanism
+    q, dq, ddq, _ = stretch.phase.kinematics(stretch.tau)
+    geometry = mechanism.transfer(q + place.origin, place.at_shaft)
+    x = geometry.position
+    v, a = geometry.load_rate * dq, geometry.load_rate * ddq + geometry.load_bend * dq**2
+    shaft_speed = geometry.shaft_rate * dq
+    shaft_acceleration = geometry.shaft_rate * ddq + geometry.shaft_bend * dq**2
+    lever = geometry.lever
+    load_sign = _sign(v) if direction_of_load is None else direction_of_load
+    direction = np.full(NODES, load_sign)
     efforts = mechanism.efforts(
         x, v, a, direction, np.full(NODES, segment.payload), np.full(NODES, segment.process_effort)
     )
     effort = efforts.total
-    r, dr = mechanism.ratio_at(x)
-    shaft_speed, shaft_acceleration = r * v, r * a + dr * v**2
     load_flow = _flow(effort, direction)
-    factor = float(
-        stage_factor(
-            np.array(load_flow),
-            np.array(mechanism.efficiency_forward),
-            np.array(mechanism.efficiency_back),
-        )
-    )
+    factor = place.factors[load_flow]
+    shaft_direction = np.full(NODES, _sign(shaft_speed))
     inertia_torque = mechanism.shaft_inertia_kg_m2 * shaft_acceleration
-    drag = mechanism.shaft_friction_nm * direction * np.sign(r)
-    torque = effort / r * factor + inertia_torque + drag
+    drag = mechanism.shaft_friction_nm * shaft_direction
+    torque = effort * lever * factor + inertia_torque + drag
     motor_acceleration = (
         shaft_acceleration + mechanism.specific_gravity_m_s2 + mechanism.specific_friction_m_s2 * direction
     )
     return {
         "duration_s": stretch.end - stretch.begin,
-        "direction": direction[0] * np.sign(r[0]),
-        "flow": _flow(torque, direction * np.sign(r)),
+        "direction": shaft_direction[0],
+        "load_direction": load_sign,
+        "lever": lever,
+        "flow": _flow(torque, shaft_direction),
         "brake_closed": segment.brake_closed,
         "position": x,
         "speed": v,
         "acceleration": a,
         "effort": effort,
+        "efforts": efforts,
+        "factor": factor,
+        "drag": drag,
+        "inertia_torque": inertia_torque,
+        "lossless_torque": effort * lever,
         "shaft_speed": shaft_speed,
         "shaft_acceleration": shaft_acceleration,
         "shaft_torque": torque,
         "motor_acceleration": motor_acceleration * (0.0 if segment.brake_closed else 1.0),
-        "by_cause": {
-            "inertia": efforts.inertia / r + inertia_torque,
-            "gravity": efforts.gravity / r,
-            "friction": efforts.friction / r + drag,
-            "process": efforts.process / r,
-            "losses": effort / r * (factor - 1.0),
-        },
+    }
+
+
+def _by_cause(loaded: Mapping[str, Any]) -> dict[str, FloatArray]:
+    """Torque at the driven shaft in its parts."""
+    efforts, lever = loaded["efforts"], loaded["lever"]
+    return {
+        "inertia": efforts.inertia * lever + loaded["inertia_torque"],
+        "gravity": efforts.gravity * lever,
+        "friction": efforts.friction * lever + loaded["drag"],
+        "process": efforts.process * lever,
+        "losses": loaded["lossless_torque"] * (loaded["factor"] - 1.0),
     }
 
 

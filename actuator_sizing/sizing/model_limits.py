@@ -19,6 +19,17 @@ _PARTS_NOT_CHECKED = {
     "lead screw": "critical speed, buckling, wear and life of the screw",
     "belt": "force, stretch and life of the belt",
     "rack and pinion": "tooth force and life of rack and pinion",
+    "winch": "strength and life of the rope, and how it lays itself on the drum",
+    "conveyor": "tension and slip of the belt on its drum",
+    "gantry": "racking of the beam and how evenly the two motors share",
+    "crank-slider": "forces in pins, rod and guide from the angle of the rod",
+    "toggle lever": "forces in pins and links, which grow without limit towards the stretched position",
+    "eccentric": "contact pressure and wear of disc and roller",
+    "four-bar": "forces in pins and links; the coupler is taken without mass",
+    "tabulated slider": "contact and pins of whatever follows the map",
+    "tabulated lever": "contact and pins of whatever follows the map",
+    "winder": "wound-in tension and loss of tension while speed changes",
+    "unwinder": "loss of tension while speed changes",
 }
 
 

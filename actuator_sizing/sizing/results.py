@@ -162,6 +162,21 @@ class SetResult:
 
 
 @dataclass(frozen=True)
+class InertiaShare:
+    """One part of the inertia inventory, or the rest of the axis; all pieces of it together."""
+
+    name: str
+    shape: str
+    referred_to: str  # "driven shaft", "load" or "motor"
+    rule: str  # how its inertia follows from what is stated
+    mass_kg: float  # NaN: not known
+    inertia_kg_m2: float  # about the axis that it turns about
+    at_shaft_kg_m2: float  # referred to the driven shaft, with the largest lever of the cycle
+    at_motor_kg_m2: float  # referred to the motor of the leading set
+    share: float  # of all inertia at the motor but rotor, brake and gearhead
+
+
+@dataclass(frozen=True)
 class Rejections:
     """Why sets lost, over all sets of the catalogs."""
 
@@ -189,6 +204,7 @@ class Comparison:
     cycle: Mapping[str, Any]  # cycle quantities of results.json
     assumptions: tuple[tuple[str, str], ...] = ()  # (subject, what was assumed or derived)
     questions: tuple[tuple[str, str, str], ...] = field(default=())  # (part, data missing, check not made)
+    inertias: tuple[InertiaShare, ...] = ()  # inertia inventory; empty where the case has none
     version: str = ""
 
     @property

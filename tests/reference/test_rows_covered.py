@@ -5,7 +5,7 @@ import re
 from pathlib import Path
 
 FOLDER = Path(__file__).parent
-LEAST_ROWS = 89  # raise it with every row added; a row leaves only with a reason in the commit
+LEAST_ROWS = 90  # raise it with every row added; a row leaves only with a reason in the commit
 ROW = re.compile(r"A(\d{1,2})\.(\d{1,2})")
 
 

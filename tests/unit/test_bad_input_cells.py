@@ -184,7 +184,7 @@ def test_word_that_is_not_allowed_names_the_nearest(tmp_path, write):
         ("drives", "D-2", "commutation", "brushed, stepper"),
         ("duty_cycle", "wait", "motion law", "wiggle"),
         ("duty_cycle", "wait", "brake closed", "perhaps"),
-        ("axis", "mechanism", "value", "winch"),
+        ("axis", "mechanism", "value", "windlass"),
     ],
 )
 def test_other_words_that_are_not_allowed(tmp_path, table, row, column, value):

@@ -9,8 +9,8 @@ import pytest
 from report_demo import DEMO_CASES, demo_comparison
 from report_fixture import build_comparison, build_hostile
 
-from actuator_sizing.report.figures import FIGURES, _figures_of, draw_figures, house_style
-from actuator_sizing.report.figures.over_time import _CAUSES, draw_causes, draw_current
+from actuator_sizing.report.figures import FIGURES, _figures_of, draw, draw_figures, house_style
+from actuator_sizing.report.figures.over_time import _CAUSES, _corners, draw_causes, draw_current
 from actuator_sizing.report.figures.speed_torque import governing_row
 from actuator_sizing.report.figures.style import _spread
 from actuator_sizing.report.figures.temperature import draw_temperature
@@ -245,6 +245,21 @@ def test_labels_are_spread_without_overlap_and_in_order():
     placed = _spread([0.5, 0.51, 0.52, 0.9], 0.1)
     assert np.all(np.diff(placed) >= 0.1 - 1e-12)
     assert np.mean(placed[:3]) == pytest.approx(0.51)
+
+
+def test_a_figure_shows_itself_in_a_notebook(comparison, drawn):
+    figure = draw(comparison, "speed_torque")
+    assert texts(figure._repr_svg_().encode()) == texts(drawn["speed_torque"].svg)
+    assert draw(dataclasses.replace(comparison, sets=()), "motion") is None
+    with pytest.raises(ValueError, match="speed_torque"):
+        draw(comparison, "speed")
+
+
+def test_straight_stretches_lose_only_points_that_add_nothing():
+    time = np.array([0.0, 1.0, 2.0, 3.0, 3.0, 4.0, 5.0, 6.0])
+    straight_jump = np.array([0.0, 1.0, 2.0, 3.0, 0.0, 0.0, 0.0, 0.0])
+    bent = np.array([0.0, 0.0, 0.0, 0.0, 0.0, 0.0, 1.0, 1.0])
+    assert _corners(time, np.array([straight_jump, bent])).tolist() == [0, 3, 4, 5, 6, 7]
 
 
 def test_hostile_names_draw():

@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from abc import abstractmethod
 from dataclasses import dataclass
 from typing import ClassVar
 
 import numpy as np
 
+from actuator_sizing.core.friction import Friction
 from actuator_sizing.core.mechanisms.base import (
     GRAVITY_M_S2,
     LINEAR,
@@ -29,6 +31,12 @@ GUIDE_PARAMETERS = (
               default=0.0, minimum=0.0, example="25 N"),
     Parameter("viscous friction", "linear damping", "friction in proportion to speed",
               default=0.0, minimum=0.0, example="0 N·s/m"),
+    Parameter("breakaway friction force", "force", "friction of guide and seals at the very start of motion; "
+              "counts where it is above the guide friction force", default=0.0, minimum=0.0, example="0 N"),
+    Parameter("Stribeck speed", "linear speed", "speed at which breakaway has mostly given way to sliding",
+              default=0.005, positive=True, minimum=0.0, maximum=100.0, example="5 mm/s"),
+    Parameter("cold grease factor", "ratio", "factor on constant, breakaway and viscous friction while cold",
+              default=1.0, minimum=0.1, maximum=20.0, example="1"),
 )  # fmt: skip
 
 STAGE_PARAMETERS = (
@@ -48,6 +56,7 @@ class LinearLoad(Mechanism):
     """Mass on a straight guide; the subclass says how the driven shaft is connected to it."""
 
     coordinate: ClassVar[str] = LINEAR
+    load_parts_field: ClassVar[str] = "moving_mass"
 
     moving_mass: float
     inclination: float = 0.0
@@ -55,6 +64,25 @@ class LinearLoad(Mechanism):
     guide_friction_coefficient: float = 0.0
     guide_friction_force: float = 0.0
     viscous_friction: float = 0.0
+    breakaway_friction_force: float = 0.0
+    stribeck_speed: float = 0.005
+    cold_grease_factor: float = 1.0
+
+    @property
+    def friction(self) -> Friction:
+        """Friction of the guide that does not depend on the load."""
+        return Friction(
+            self.guide_friction_force,
+            self.breakaway_friction_force,
+            self.stribeck_speed,
+            self.viscous_friction,
+            self.cold_grease_factor,
+        )
+
+    @property
+    def resolved_by_nodes(self) -> bool:
+        """Not where friction bends with speed."""
+        return not self.friction.is_curved
 
     def _mass(self, payload: FloatArray) -> FloatArray:
         return np.asarray(self.moving_mass + self.counterweight_mass + payload)
@@ -71,40 +99,27 @@ class LinearLoad(Mechanism):
         """Newton's second law along the guide; friction only where the load moves."""
         hanging = self.moving_mass + payload
         weight = hanging * GRAVITY_M_S2
-        friction = self.guide_friction_force + self.guide_friction_coefficient * weight * np.cos(
-            self.inclination
-        )
+        normal = weight * np.cos(self.inclination)
         return Efforts(
             inertia=self._mass(payload) * acceleration,
             gravity=weight * np.sin(self.inclination)
             - self.counterweight_mass * GRAVITY_M_S2
             + 0.0 * position,
-            friction=friction * direction + self.viscous_friction * speed,
+            friction=self.friction.effort(speed, direction, self.guide_friction_coefficient * normal),
             process=process + 0.0 * position,
         )
 
 
 @dataclass(frozen=True, kw_only=True)
-class RotatingDriveOfLinearLoad(LinearLoad):
-    """A linear load driven by a turning shaft through one stage of constant ratio."""
+class DrivenLinearLoad(LinearLoad):
+    """A linear load driven by a turning shaft through one lossy stage."""
+
+    shaft_parts_field: ClassVar[str] = "driven_shaft_inertia"
 
     efficiency: float = 1.0
     back_driving_efficiency: float = np.nan
     driven_shaft_inertia: float = 0.0
     driven_shaft_friction_torque: float = 0.0
-
-    @property
-    def shaft_ratio(self) -> float:
-        """Angle of the driven shaft per displacement of the load. [rad/m]"""
-        raise NotImplementedError  # pragma: no cover - every subclass states its geometry
-
-    def ratio_at(self, position: FloatArray) -> tuple[FloatArray, FloatArray]:
-        """Constant ratio, zero derivative."""
-        return np.full_like(position, self.shaft_ratio), np.zeros_like(position)
-
-    def inertia_at_shaft(self, payload: FloatArray) -> FloatArray:
-        """Moving mass over ratio squared, plus what turns with the shaft."""
-        return self._mass(payload) / self.shaft_ratio**2 + self.shaft_inertia_kg_m2
 
     @property
     def efficiency_forward(self) -> float:
@@ -127,5 +142,23 @@ class RotatingDriveOfLinearLoad(LinearLoad):
 
     @property
     def shaft_friction_nm(self) -> float:
-        """Stated friction torque at the driven shaft. [N·m]"""
-        return self.driven_shaft_friction_torque
+        """Stated friction torque at the driven shaft, grease cold or not. [N·m]"""
+        return self.driven_shaft_friction_torque * self.cold_grease_factor
+
+
+@dataclass(frozen=True, kw_only=True)
+class RotatingDriveOfLinearLoad(DrivenLinearLoad):
+    """A driven linear load whose shaft turns in proportion to the displacement."""
+
+    @property
+    @abstractmethod
+    def shaft_ratio(self) -> float:
+        """Angle of the driven shaft per displacement of the load. [rad/m]"""
+
+    def ratio_at(self, position: FloatArray) -> tuple[FloatArray, FloatArray]:
+        """Constant ratio, zero derivative."""
+        return np.full_like(position, self.shaft_ratio), np.zeros_like(position)
+
+    def inertia_at_shaft(self, payload: FloatArray) -> FloatArray:
+        """Moving mass over ratio squared, plus what turns with the shaft."""
+        return self._mass(payload) / self.shaft_ratio**2 + self.shaft_inertia_kg_m2

@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import dataclass
 from typing import ClassVar
 
 import numpy as np
 
-from actuator_sizing.core.mechanisms.base import Parameter
+from actuator_sizing.core.mechanisms.base import Complaint, Parameter
 from actuator_sizing.core.mechanisms.linear_load import (
     GUIDE_PARAMETERS,
     STAGE_PARAMETERS,
@@ -26,13 +27,26 @@ SCREW_PARAMETERS = (
               optional=True, positive=True, minimum=0.0, example="25 mm"),
     Parameter("screw length", "length", "length of the turning screw; gives its inertia", optional=True,
               positive=True, minimum=0.0, example="900 mm"),
-    Parameter("thread friction coefficient", "ratio", "friction in the thread, flank angle included; gives both "
-              "efficiencies through the lead angle", optional=True, minimum=0.0, maximum=2.0, example=""),
+    Parameter("thread friction coefficient", "ratio", "friction in the thread; gives both efficiencies through "
+              "the lead angle", optional=True, minimum=0.0, maximum=2.0, example=""),
+    Parameter("thread mean diameter", "length", "mean diameter of the thread (default: the screw diameter)",
+              optional=True, positive=True, minimum=0.0, example=""),
+    Parameter("flank angle", "angle", "half of the thread angle: 0 square, 15° trapezoidal, 30° metric", default=0.0,
+              minimum=0.0, maximum=1.0, example="0 deg"),
+    Parameter("collar friction coefficient", "ratio", "friction of a plain thrust collar, with the thread friction",
+              default=0.0, minimum=0.0, maximum=2.0, example="0"),
+    Parameter("collar mean diameter", "length", "mean diameter of the thrust collar", default=0.0, minimum=0.0,
+              example="0 mm"),
 )  # fmt: skip
 
 
 def screw_efficiencies(
-    lead_m: float, mean_diameter_m: float, friction_coefficient: float
+    lead_m: float,
+    mean_diameter_m: float,
+    friction_coefficient: float,
+    flank_angle_rad: float = 0.0,
+    collar_friction_coefficient: float = 0.0,
+    collar_diameter_m: float = 0.0,
 ) -> tuple[float, float]:
     """Forward and back-driving efficiency of a screw from lead angle and friction angle.
 
@@ -43,7 +57,13 @@ def screw_efficiencies(
     mean_diameter_m : float
         Mean thread diameter. [m]
     friction_coefficient : float
-        Coefficient in the thread; for a sloped flank divide by the cosine of the half flank angle first. [-]
+        Coefficient in the thread. [-]
+    flank_angle_rad : float
+        Half of the thread angle; a sloped flank presses harder, ``μ' = μ/cos α``. [rad]
+    collar_friction_coefficient : float
+        Coefficient of the thrust collar. [-]
+    collar_diameter_m : float
+        Mean diameter of the collar: mean of outer and inner one for uniform wear. [m]
 
     Returns
     -------
@@ -52,19 +72,22 @@ def screw_efficiencies(
 
     Notes
     -----
-    ``η_f = tan λ / tan(λ + ρ)``, ``η_b = tan(λ − ρ) / tan λ``, ``tan λ = lead/(π d_m)``, ``tan ρ = μ``.
-    Square-thread statics, e.g. Budynas & Nisbett, Shigley's Mechanical Engineering Design, power screws.
+    ``η_f = tan λ / (tan(λ + ρ) + μ_c d_c/d_m)``, ``η_b = (tan(λ − ρ) − μ_c d_c/d_m) / tan λ`` with
+    ``tan λ = lead/(π d_m)``, ``tan ρ = μ'``. Thread statics, e.g. Budynas & Nisbett, Shigley's Mechanical
+    Engineering Design, power screws (the flank angle taken in the axial plane).
 
     Examples
     --------
     >>> screw_efficiencies(0.020, 0.020, 0.15)
     (0.6472, 0.5047)
     """
-    lead_angle = np.arctan(lead_m / (np.pi * mean_diameter_m))
-    friction_angle = np.arctan(friction_coefficient)
+    slope = lead_m / (np.pi * mean_diameter_m)
+    lead_angle = np.arctan(slope)
+    friction_angle = np.arctan(friction_coefficient / np.cos(flank_angle_rad))
+    collar = collar_friction_coefficient * collar_diameter_m / mean_diameter_m
     return (
-        float(np.tan(lead_angle) / np.tan(lead_angle + friction_angle)),
-        float(np.tan(lead_angle - friction_angle) / np.tan(lead_angle)),
+        float(slope / (np.tan(lead_angle + friction_angle) + collar)),
+        float((np.tan(lead_angle - friction_angle) - collar) / slope),
     )
 
 
@@ -115,6 +138,10 @@ class Screw(RotatingDriveOfLinearLoad):
     screw_diameter: float = np.nan
     screw_length: float = np.nan
     thread_friction_coefficient: float = np.nan
+    thread_mean_diameter: float = np.nan
+    flank_angle: float = 0.0
+    collar_friction_coefficient: float = 0.0
+    collar_mean_diameter: float = 0.0
 
     @property
     def shaft_ratio(self) -> float:
@@ -123,12 +150,45 @@ class Screw(RotatingDriveOfLinearLoad):
 
     @property
     def _from_friction(self) -> tuple[float, float] | None:
-        if np.isnan(self.thread_friction_coefficient) or np.isnan(self.screw_diameter):
+        stated = self.thread_mean_diameter
+        diameter = self.screw_diameter if np.isnan(stated) else stated
+        if np.isnan(self.thread_friction_coefficient) or np.isnan(diameter):
             return None
-        pair = screw_efficiencies(self.lead, self.screw_diameter, self.thread_friction_coefficient)
-        if not pair[0] > 0.0:
-            raise InputError([_jammed(self.lead, self.screw_diameter, self.thread_friction_coefficient)])
-        return pair
+        if self._jams(diameter):
+            raise InputError([_jammed(self.lead, diameter, self.thread_friction_coefficient)])
+        return screw_efficiencies(
+            self.lead,
+            diameter,
+            self.thread_friction_coefficient,
+            self.flank_angle,
+            self.collar_friction_coefficient,
+            self.collar_mean_diameter,
+        )
+
+    def _jams(self, diameter: float) -> bool:
+        pressed = self.thread_friction_coefficient / np.cos(self.flank_angle)
+        return bool(pressed * self.lead >= np.pi * diameter)  # lead angle plus friction angle reach 90°
+
+    def complaints(self) -> Iterable[Complaint]:
+        """A thread that jams, a collar without size; self-locking is worth knowing."""
+        try:
+            pair = self._from_friction
+        except InputError as error:
+            for problem in error.problems:
+                yield Complaint(problem.column, problem.got, problem.allowed, problem.remedy)
+            return
+        if self.collar_friction_coefficient > 0.0 and self.collar_mean_diameter == 0.0:
+            yield Complaint("collar mean diameter", "no value beside a collar friction coefficient",
+                            "a diameter above zero", "State it, or leave the collar friction out.")  # fmt: skip
+        if self.collar_friction_coefficient > 0.0 and pair is None:
+            yield Complaint("collar friction coefficient", "no thread friction coefficient",
+                            "both, since they act together",
+                            "State the thread's friction, or put all into the efficiency.")  # fmt: skip
+        if self.efficiency_back <= 0.0:
+            yield Complaint("efficiency" if pair is None else "thread friction coefficient",
+                            f"a self-locking screw (back-driving efficiency {self.efficiency_back:.3g})",
+                            "worth knowing: at rest the screw holds the load by itself",
+                            "Vibration can unlock it; lowering takes torque.", "note")  # fmt: skip
 
     @property
     def efficiency_forward(self) -> float:

@@ -18,6 +18,7 @@ from actuator_sizing.report.document.closing import (
 from actuator_sizing.report.document.comparing import comparison_section
 from actuator_sizing.report.document.drawings import figures_section
 from actuator_sizing.report.document.dynamics import dynamics_section
+from actuator_sizing.report.document.inertias import inertias_section
 from actuator_sizing.report.document.inputs import assumptions_section, inputs_section
 from actuator_sizing.report.document.levers import levers_section
 from actuator_sizing.report.document.verdict import cover_facts, verdict_section, verdict_sentence
@@ -67,6 +68,8 @@ def prepare_document(
         moving = dynamics_section(comparison, drawn)
         if moving is not None:
             sections.append(moving)
+    if comparison.inertias:
+        sections.append(inertias_section(comparison))
     sections += [inputs_section(comparison), assumptions_section(comparison), not_checked_section(comparison)]
     if comparison.sets:
         sections.append(commissioning_section(comparison))

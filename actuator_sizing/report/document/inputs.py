@@ -23,6 +23,8 @@ TITLES = {
     "drives": "Drive of the leading set",
     "limits": "Limits",
     "tolerances": "Tolerances",
+    "map": "Map from driven shaft to load",
+    "inertias": "Inertia inventory",
 }
 
 
@@ -59,7 +61,11 @@ def inputs_section(comparison: Comparison) -> Section:
         )
     ]
     for table, rows in groupby(entries, key=lambda e: e.table):
-        make = _wide_table if table in ("duty_cycle", "limits", "tolerances") else _entry_table
+        make = (
+            _wide_table
+            if table in ("duty_cycle", "limits", "tolerances", "map", "inertias")
+            else _entry_table
+        )
         blocks.append(make(table, list(rows)))
     if comparison.case.problems:
         blocks.append(_remarks_table(comparison.case.problems))

@@ -26,7 +26,7 @@ if TYPE_CHECKING:
 
     from actuator_sizing.sizing.results import Comparison
 
-__all__ = ["FIGURES", "DrawnFigure", "draw_figures", "house_style", "to_svg"]
+__all__ = ["FIGURES", "DrawnFigure", "draw", "draw_figures", "house_style", "to_svg"]
 
 #: Keys of all figures, which name their files.
 FIGURES = (
@@ -71,6 +71,28 @@ def draw_figures(comparison: Comparison) -> dict[str, DrawnFigure]:
             if figure is not None:
                 drawn[key] = DrawnFigure(key, to_svg(figure, key))
     return drawn
+
+
+def draw(comparison: Comparison, key: str) -> Figure | None:
+    """Draw one figure for a notebook; None where the results lack what it shows.
+
+    Parameters
+    ----------
+    comparison : Comparison
+        The answer; the figure shows its best set.
+    key : str
+        One of `FIGURES`.
+
+    Raises
+    ------
+    ValueError
+        If there is no figure of that name.
+    """
+    if key not in FIGURES:
+        raise ValueError(f"No figure {key!r}; there are {', '.join(FIGURES)}.")
+    with house_style():
+        make = _figures_of(comparison).get(key)
+        return None if make is None else make()
 
 
 def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]]:

@@ -17,14 +17,15 @@ if TYPE_CHECKING:
 
     from actuator_sizing.sizing.results import SetDetail, SetResult
 
-#: column of the cycle, name in the legend, colour, hatch
+# Light fillings let the hatch show in grey; only the inertia of the load is dark, and plain.
+#: column of the cycle, name in the legend, filling, hatch
 _CAUSES = (
-    ("gravity_nm", "gravity", style.CONTINUOUS, "...."),
-    ("friction_nm", "friction", style.THIRD, "xxxx"),
-    ("process_nm", "process", style.FOURTH, "||||"),
-    ("losses_nm", "losses of gear and motor", style.PEAK_LIMIT, "----"),
+    ("gravity_nm", "gravity", "#bfe6d8", r"\\\\"),
+    ("friction_nm", "friction", "#f7e0ae", "xxxx"),
+    ("process_nm", "process", "#f0d5e4", "||||"),
+    ("losses_nm", "losses of gear and motor", "#f2b896", "----"),
     ("inertia_load_nm", "load inertia", style.DEMAND, ""),
-    ("inertia_rotor_nm", "rotor inertia", style.SECOND, "////"),
+    ("inertia_rotor_nm", "rotor inertia", "#cfe8f8", "////"),
 )
 
 
@@ -74,13 +75,17 @@ def draw_causes(detail: SetDetail, units: AxisUnits) -> Figure:
     parts = [cause for cause in _CAUSES if cause[0] in cycle and np.nanmax(np.abs(cycle[cause[0]])) > 0.0]
     values = [cycle[column].to_numpy(float) for column, *_ in parts]
     shown = units.effort([*total, *(v for part in values for v in part)])
+    needed = _corners(time, np.array([total, *values]))
+    values, area_time = [part[needed] for part in values], time[needed]
     figure, (ax,) = style.new_axes(3.9, right_in=0.25, top_in=0.78)
-    above, below = np.zeros_like(total), np.zeros_like(total)
+    above, below = np.zeros_like(area_time), np.zeros_like(area_time)
     for (_, name, color, hatch), part in zip(parts, values, strict=True):
         look = {"facecolor": color, "hatch": hatch, "edgecolor": style.INK, "linewidth": 0.0, "zorder": 1.2}
         for base, piece in ((above, np.maximum(part, 0.0)), (below, np.minimum(part, 0.0))):
             if np.any(piece):
-                ax.fill_between(time, shown.convert(base), shown.convert(base + piece), label=name, **look)
+                ax.fill_between(
+                    area_time, shown.convert(base), shown.convert(base + piece), label=name, **look
+                )
                 name = "_"  # named once, whether it helps or asks
             base += piece
     ax.plot(
@@ -93,6 +98,19 @@ def draw_causes(detail: SetDetail, units: AxisUnits) -> Figure:
     _mark_segments([ax], cycle, unit)
     style.legend_above(ax, columns=4, bbox_to_anchor=(0.0, 1.08))
     return figure
+
+
+def _corners(time: Any, curves: Any) -> Any:
+    """Index of the points that are not on the straight line between their neighbours in every curve.
+
+    A filled area draws each point that it is given; most of a duty cycle is straight.
+    """
+    size = np.ptp(curves, axis=1, keepdims=True)
+    before, after = time[1:-1] - time[:-2], time[2:] - time[1:-1]
+    span = np.where(before + after > 0.0, before + after, 1.0)
+    line = curves[:, :-2] + (curves[:, 2:] - curves[:, :-2]) * before / span
+    bent = np.any(np.abs(curves[:, 1:-1] - line) > 1e-9 * size, axis=0)
+    return np.flatnonzero(np.concatenate([[True], bent | (before == 0.0) | (after == 0.0), [True]]))
 
 
 def draw_current(best: SetResult, detail: SetDetail) -> Figure:

@@ -9,6 +9,7 @@ import warnings
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
@@ -108,9 +109,7 @@ def new_axes(
     columns : sequence of float
         Relative widths of the columns; panels come back row by row.
     """
-    from matplotlib.figure import Figure
-
-    figure = Figure(figsize=(WIDTH_IN, height_in))
+    figure = _figure_class()(figsize=(WIDTH_IN, height_in))
     panel_width = (WIDTH_IN - left_in - right_in - column_gap_in * (len(columns) - 1)) / len(columns)
     panel_height = (height_in - bottom_in - top_in - gap_in * (rows - 1)) / rows
     grid = figure.add_gridspec(
@@ -133,6 +132,19 @@ def new_axes(
                 ax.tick_params(labelbottom=False)
             axes.append(ax)
     return figure, axes
+
+
+@lru_cache(maxsize=1)
+def _figure_class() -> type[Figure]:
+    from matplotlib.figure import Figure
+
+    class ShownFigure(Figure):
+        """A figure that shows itself in a notebook, whatever backend is set there."""
+
+        def _repr_svg_(self) -> str:
+            return to_svg(self, f"figure{id(self):x}").decode("utf-8")  # two on one page keep their ids apart
+
+    return ShownFigure
 
 
 @dataclass(frozen=True)

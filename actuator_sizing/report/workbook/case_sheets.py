@@ -23,7 +23,8 @@ _ENTRY_FIELDS = (
 def add_segments(sheets: Sheets, comparison: Comparison) -> None:
     """Write the duty cycle, one row a segment, with the leading set's share of the RMS current in each."""
     units = AxisUnits.of(comparison.case)
-    payload, effort = ("kg", "N") if units.linear_load else ("kg·m²", "N·m")
+    payload = "kg" if comparison.case.mechanism.carries_mass() else "kg·m²"
+    effort = "N" if units.linear_load else "N·m"
     fields = [
         Field("row", "integer"), Field("segment"), Field("motion law"), Field("start [s]", "number"),
         Field("duration [s]", "number"), Field("end [s]", "number", formula=lambda r: f"=D{r}+E{r}"),
