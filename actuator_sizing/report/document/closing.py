@@ -13,8 +13,8 @@ if TYPE_CHECKING:
     from actuator_sizing.report.document.blocks import Block
     from actuator_sizing.sizing.results import Comparison
 
-_WINDING = "sensor or resistance, cycle running, both bodies at ambient before"
-_HOUSING = "surface sensor, cycle running, both bodies at ambient before"
+_WINDING = "sensor or resistance, motor at ambient before"
+_HOUSING = "surface sensor, motor at ambient before"
 #: Quantity, what to measure, SI unit, how
 _COMMISSIONING = (
     ("current_rms_a", "RMS motor current over one cycle", "A", "drive trace, cycle repeated until warm"),
@@ -125,15 +125,15 @@ def commissioning_section(comparison: Comparison) -> Section:
         rows.append(row(what, text, how, ""))
     around = comparison.case.surroundings
     limits = {
-        "bus_voltage_min_v": f"not predicted; at least {quantity(around.bus_min_v, 'V')} was assumed",
-        "bus_voltage_max_v": f"not predicted; at most {quantity(around.bus_max_v, 'V')} was assumed",
+        "bus_voltage_min_v": f"not predicted; {quantity(around.bus_min_v, 'V')} is the least allowed for",
+        "bus_voltage_max_v": f"not predicted; {quantity(around.bus_max_v, 'V')} is the most allowed for",
     }
     for keys, what, how in _UNPREDICTED:
         if all(quantities.get(key) is None for key in keys):
             rows.append(row(what, limits.get(keys[0], "not predicted"), how, ""))
     columns = (
         Column("Measure", weight=2.4),
-        Column("Predicted", weight=1.2),
+        Column("Predicted", weight=1.9),
         Column("How", weight=2.4),
         Column("Measured, date, initials", weight=1.6),
     )

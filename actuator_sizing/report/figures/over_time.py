@@ -80,7 +80,13 @@ def draw_causes(detail: SetDetail, units: AxisUnits) -> Figure:
     figure, (ax,) = style.new_axes(3.9, right_in=0.25, top_in=0.78)
     above, below = np.zeros_like(area_time), np.zeros_like(area_time)
     for (_, name, color, hatch), part in zip(parts, values, strict=True):
-        look = {"facecolor": color, "hatch": hatch, "edgecolor": style.INK, "linewidth": 0.0, "zorder": 1.2}
+        look: dict[str, Any] = {
+            "facecolor": color,
+            "hatch": hatch,
+            "edgecolor": style.INK,
+            "linewidth": 0.0,
+            "zorder": 1.2,
+        }
         for base, piece in ((above, np.maximum(part, 0.0)), (below, np.minimum(part, 0.0))):
             if np.any(piece):
                 ax.fill_between(

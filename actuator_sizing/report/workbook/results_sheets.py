@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from datetime import date
+from functools import partial
 from typing import TYPE_CHECKING, Any
 
 from actuator_sizing.report.document.verdict import cover_facts, governing, verdict_sentence
@@ -77,7 +78,12 @@ def add_summary(sheets: Sheets, comparison: Comparison, day: date, rows_in_file:
             sheets.book.define_name(name, f"=summary!$B${index + 1}")
         formula = rms_formula(comparison) if name == "result_current_rms_a" else None
         if formula is not None and value is not None:
-            sheets.write(sheet, index, 1, Field("", "number", formula=lambda _, text=formula: text), value)
+            sheets.write(sheet, index, 1, Field("", "number", formula=partial(_same, formula)), value)
+
+
+def _same(formula: str, _row: int) -> str:
+    """Make a formula that does not depend on its row."""
+    return formula
 
 
 def add_candidates(sheets: Sheets, comparison: Comparison) -> None:
