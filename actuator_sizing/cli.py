@@ -187,6 +187,72 @@ def compare(
 
 @commands.command()
 @_case_argument("case")
+@click.option("--motor", metavar="NAME", help="Motor; without any part, the best set of 'compare'.")
+@click.option("--gearhead", metavar="NAME", help="Gearhead; without it, direct drive.")
+@click.option("--drive", metavar="NAME", help="Drive.")
+@click.option(
+    "--input",
+    "input_",
+    default="cycle",
+    show_default=True,
+    metavar="cycle|step|sine|stop|FILE",
+    help="What is commanded; FILE is a CSV table with time [s], voltage [V] and perhaps load torque [Nm].",
+)
+@click.option(
+    "--set", "changes", multiple=True, metavar="SETTING=VALUE", help="Change a setting of the loops."
+)
+@click.option("--rate", type=float, metavar="HZ", help="Sampling rate; default: the drive's control rate.")
+@click.option("--cycles", type=click.IntRange(min=1), default=1, metavar="N", help="How many cycles to run.")
+@click.option(
+    "--out", type=click.Path(file_okay=False, path_type=Path), help="Write tables and figures here."
+)
+@click.option("--json", "as_json", is_flag=True, help="Print quantities, settings and stops as JSON.")
+@_debug
+def simulate(
+    case: Path,
+    motor: str | None,
+    gearhead: str | None,
+    drive: str | None,
+    input_: str,
+    changes: tuple[str, ...],
+    rate: float | None,
+    cycles: int,
+    out: Path | None,
+    as_json: bool,
+) -> None:
+    """Simulate one set of CASE.
+
+    Runs the duty cycle in closed loop, or a voltage step, a sinusoid, stops, or samples from a file, and
+    prints errors, settling, saturation, margins and resonance with the settings of the loops.
+    """
+    import math
+
+    from actuator_sizing.case.reading import read_case
+    from actuator_sizing.simulation_console import print_simulation
+    from actuator_sizing.sizing.simulation import parse_settings
+    from actuator_sizing.sizing.simulation import simulate as simulate_set
+
+    simulation = simulate_set(
+        read_case(case),
+        motor=motor,
+        gearhead=gearhead,
+        drive=drive,
+        input=input_,
+        settings=parse_settings(changes),
+        rate_hz=math.nan if rate is None else rate,
+        cycles=cycles,
+    )
+    written = simulation.write(out) if out is not None else ()
+    if as_json:
+        from actuator_sizing.report.simulation_files import render_simulation_json
+
+        click.echo(render_simulation_json(simulation).rstrip(b"\n"))
+    else:
+        print_simulation(simulation, written)
+
+
+@commands.command()
+@_case_argument("case")
 @click.argument("target", type=click.Path(path_type=Path))
 @click.option("--force", is_flag=True, help="Replace TARGET if it exists.")
 @_debug

@@ -170,7 +170,7 @@ def _take(axis: Axis, row: _Row, column: Column, decimal: str, problems: Problem
         return True
     value: float | str | None
     if column.is_number:
-        value = _number(row, column, decimal, problems)
+        value = _number(row, column, decimal, problems, axis.coordinate or "linear")
         unit = si_unit(column.kind_for(axis.coordinate or "rotary"))
     else:
         value, unit = _word(row, column, problems), ""
@@ -183,15 +183,15 @@ def _take(axis: Axis, row: _Row, column: Column, decimal: str, problems: Problem
     return True
 
 
-def _number(row: _Row, column: Column, decimal: str, problems: ProblemList) -> float | None:
-    kind = column.kind_for("linear")
+def _number(row: _Row, column: Column, decimal: str, problems: ProblemList, coordinate: str) -> float | None:
+    kind = column.kind_for(coordinate)
     unit_text = row.unit
     try:
         if not unit_text and column.needs_unit:
             problems.report(_TABLE, row.number, column.name, got=f"{shown(row.value)} without a unit",
                             allowed=f"a unit of {kind}",
                             remedy=f"Write the unit in the unit column, for example "
-                            f"'{column.unit_for('linear') or si_unit(kind)}'.")  # fmt: skip
+                            f"'{column.unit_for(coordinate) or si_unit(kind)}'.")  # fmt: skip
             return None
         unit = parse_unit(unit_text, kind)
     except UnitError as error:

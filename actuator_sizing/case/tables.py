@@ -65,6 +65,10 @@ CHECK_NAMES: tuple[tuple[str, str], ...] = (
     ("gearhead_emergency_torque", "gearhead emergency torque"),
     ("gearhead_jam_torque", "gearhead torque in a jam"),
     ("inertia_ratio", "inertia ratio"),
+    ("settling", "settling within dwell"),
+    ("following_error", "following error"),
+    ("stability_reserve", "stability reserve"),
+    ("resonance", "resonance against bandwidth"),
 )
 
 #: Judged as advice unless the limits table says otherwise: rules of thumb, and events that need not be possible.
@@ -196,6 +200,19 @@ COMMON_QUANTITIES = (
            "current", positive=True, example="", unit="Nm/A"),
     Column("required life", "time", "operating hours the axis must reach", positive=True, example="20000",
            unit="h"),
+    Column("driven shaft stiffness", "torsional stiffness", "stiffness between gearhead and load (coupling, "
+           "screw, belt) at the driven shaft, at the worst position", positive=True, maximum=1.0e12,
+           example="", unit="Nm/rad"),
+    Column("damping ratio", "ratio", "damping of the drive train at its resonance over critical damping (used "
+           "with a stiffness; 0.02 where nothing is stated)", positive=True, maximum=1.0, example="", unit="-"),
+    Column("encoder counts per turn", "count", "resolution of the motor's encoder, quadrature counted",
+           minimum=1.0, maximum=1.0e12, example=""),
+    Column("settling band", ("length", "angle"), "half width of the band around the target in which the load "
+           "must rest within the dwell after each move", positive=True, example=("", ""), unit=("mm", "deg")),
+    Column("allowed following error", ("length", "angle"), "largest difference between command and load "
+           "during the cycle", positive=True, example=("", ""), unit=("mm", "deg")),
+    Column("required speed bandwidth", "frequency", "bandwidth that the speed loop must reach", positive=True,
+           maximum=1.0e6, example="", unit="Hz"),
 )  # fmt: skip
 
 

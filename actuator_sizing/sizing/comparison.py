@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections import Counter
 from collections.abc import Callable
 from dataclasses import replace
+from functools import partial
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -16,6 +17,7 @@ from actuator_sizing.sizing.candidates import candidate_table
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import build_demand, cycle_quantities
 from actuator_sizing.sizing.detail import set_detail
+from actuator_sizing.sizing.dynamic_results import add_dynamics
 from actuator_sizing.sizing.fitting import compatible
 from actuator_sizing.sizing.inertias import inertia_shares
 from actuator_sizing.sizing.judging import (
@@ -33,6 +35,7 @@ from actuator_sizing.sizing.results import FAILS, NOT_CHECKED, Comparison, Rejec
 from actuator_sizing.sizing.screening import Screened, screen
 from actuator_sizing.sizing.set_model import SetModel
 from actuator_sizing.sizing.shortlist import evaluate_sets
+from actuator_sizing.sizing.simulation import simulate_prepared
 from actuator_sizing.version import __version__
 
 if TYPE_CHECKING:
@@ -107,6 +110,14 @@ def compare(
     losers = nearest_drives(case, demand, screened.nearest_losers)
     index = np.unique(np.concatenate([screened.survivors, losers, screened.nearest_by_drive]), axis=0)
     sets = evaluate_sets(case, demand, index, _stage(progress, "evaluation"))
+
+    def leading(judged: Sets) -> tuple[IndexArray, NDArray[np.bool_]]:
+        found = judge_sets(judged, checks, limits)
+        fails = found.verdict == ORDER.index(FAILS)
+        ranked = _rank(case, judged, found, index, ranked_by)
+        return ranked[~fails[ranked]][:wanted], fails
+
+    sets = add_dynamics(case, demand, sets, index, leading, _stage(progress, "simulation"))
     verdicts = judge_sets(sets, checks, limits)
     order = _rank(case, sets, verdicts, index, ranked_by)
     listed = _listed(order, verdicts, index, wanted)
@@ -294,5 +305,10 @@ def _set_result(
         motor_index=motor,
         gearhead_index=gearhead,
         drive_index=drive,
-        detail=set_detail(model, sets, i) if with_curves else None,
+        detail=replace(
+            set_detail(model, sets, i),
+            simulation=partial(simulate_prepared, case, demand, (motor, gearhead, drive)),
+        )
+        if with_curves
+        else None,
     )

@@ -66,7 +66,10 @@ def model_statements(case: Case, best: SetResult) -> tuple[tuple[str, str], ...]
             "closed no current flows",
         ),
         ("model: cycle", "the cycle repeats for ever; dwell counts in RMS values"),
-        ("model: stiffness", "load, gearhead and motor turn as one rigid body"),
+        (
+            "model: stiffness",
+            "sizing takes load, gearhead and motor as one rigid body; resonance is simulated",
+        ),
         ("model: drive rating", _drive_rating(case, best)),
     ]
     said += _holding_brake(case, best)

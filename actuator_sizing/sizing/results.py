@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
+from functools import cached_property
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
@@ -14,6 +15,7 @@ if TYPE_CHECKING:
 
     from actuator_sizing.case.model import Case
     from actuator_sizing.sizing.demand import Demand
+    from actuator_sizing.sizing.simulation_results import Simulation
 
 PASSES = "passes"
 LOW_RESERVE = "passes, low reserve"
@@ -109,6 +111,8 @@ class SetDetail:
     #: one row per segment of the duty cycle: torque_rms_nm, current_rms_a and current_squared_a2_s, the integral
     #: of the squared current over the segment; their sum over the cycle time is the squared RMS current
     segments: pd.DataFrame | None = None
+    #: simulates the cycle under the default loops, when somebody asks for it (None: it was not prepared)
+    simulation: Callable[[], Simulation | None] | None = None
 
 
 @dataclass(frozen=True)
@@ -207,6 +211,12 @@ class Comparison:
     def best(self) -> SetResult:
         """The leading set; a loser if none passes."""
         return self.sets[0]
+
+    @cached_property
+    def dynamics(self) -> Simulation | None:
+        """The leading set simulated over its cycle; None where its loops cannot be made stable."""
+        detail = self.sets[0].detail if self.sets else None
+        return None if detail is None or detail.simulation is None else detail.simulation()
 
     @property
     def passes(self) -> bool:

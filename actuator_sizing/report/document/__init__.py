@@ -17,6 +17,7 @@ from actuator_sizing.report.document.closing import (
 )
 from actuator_sizing.report.document.comparing import comparison_section
 from actuator_sizing.report.document.drawings import figures_section
+from actuator_sizing.report.document.dynamics import dynamics_section
 from actuator_sizing.report.document.inertias import inertias_section
 from actuator_sizing.report.document.inputs import assumptions_section, inputs_section
 from actuator_sizing.report.document.levers import levers_section
@@ -64,6 +65,9 @@ def prepare_document(
         figure_section = figures_section(comparison, drawn)
         if figure_section.blocks:
             sections.append(figure_section)
+        moving = dynamics_section(comparison, drawn)
+        if moving is not None:
+            sections.append(moving)
     if comparison.inertias:
         sections.append(inertias_section(comparison))
     sections += [inputs_section(comparison), assumptions_section(comparison), not_checked_section(comparison)]

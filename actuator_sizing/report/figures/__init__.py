@@ -7,6 +7,12 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from actuator_sizing.report.curves import leading_detail
+from actuator_sizing.report.figures.dynamics import (
+    draw_bode,
+    draw_following_error,
+    draw_loop_steps,
+    draw_response,
+)
 from actuator_sizing.report.figures.over_time import draw_causes, draw_current, draw_motion
 from actuator_sizing.report.figures.speed_torque import draw_speed_torque
 from actuator_sizing.report.figures.step import draw_step_response
@@ -105,4 +111,18 @@ def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]
         "current": lambda: draw_current(best, detail),
         "temperature": lambda: draw_temperature(detail),
         "step_response": lambda: draw_step_response(best, detail, units),
+        **_dynamic_figures(comparison),
     } | figures
+
+
+def _dynamic_figures(comparison: Comparison) -> dict[str, Callable[[], Figure | None]]:
+    """How the leading set moves under its loops."""
+    simulation = comparison.dynamics
+    if simulation is None:
+        return {}
+    return {
+        "cycle_response": lambda: draw_response(simulation),
+        "following_error": lambda: draw_following_error(simulation),
+        "loop_steps": lambda: draw_loop_steps(simulation),
+        "bode": lambda: draw_bode(simulation),
+    }

@@ -6,6 +6,12 @@ To add one: declare a `Check` in the file of its group and list it here.
 from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets
 from actuator_sizing.sizing.checks.bus import BUS_CHECKS
 from actuator_sizing.sizing.checks.drive import DRIVE_BUS, DRIVE_CONTINUOUS, DRIVE_PEAK, DRIVE_PEAK_TIME
+from actuator_sizing.sizing.checks.dynamics import (
+    FOLLOWING_ERROR,
+    RESONANCE,
+    SETTLING,
+    STABILITY_RESERVE,
+)
 from actuator_sizing.sizing.checks.gearhead import (
     GEARHEAD_EQUIVALENT,
     GEARHEAD_MAX_SPEED,
@@ -41,6 +47,10 @@ CHECKS: tuple[Check, ...] = (
     GEARHEAD_MAX_SPEED,
     *STOPPING_CHECKS,
     INERTIA_RATIO,
+    SETTLING,
+    FOLLOWING_ERROR,
+    STABILITY_RESERVE,
+    RESONANCE,
 )
 
 __all__ = ["CHECKS", "Check", "Measure", "Need", "Sets"]

@@ -20,6 +20,7 @@ if TYPE_CHECKING:
     from actuator_sizing.case.model import Case
     from actuator_sizing.sizing.block import Block
     from actuator_sizing.sizing.demand import Demand
+    from actuator_sizing.sizing.dynamic_results import DynamicResults
     from actuator_sizing.sizing.evaluation import PairResults
 
 FloatArray = NDArray[np.float64]
@@ -45,6 +46,7 @@ class Sets:
     drive_current_rms_at_s: FloatArray
     overload_a2s: FloatArray  # largest i²t accumulator in the periodic regime
     overload_at_s: FloatArray
+    dynamics: DynamicResults | None = None  # where the case asks how the axis moves
     _found: dict[Callable[[Sets], Any], Any] = field(default_factory=dict, repr=False)
 
     def __len__(self) -> int:
@@ -120,7 +122,7 @@ class Measure:
 class Need:
     """One datum without which a check cannot be made.
 
-    `part` is ``"motors"``, ``"gearheads"``, ``"drives"`` or ``"pairs"`` with `field` its parameter or the key of
+    `part` is ``"motors"``, ``"gearheads"``, ``"drives"``, ``"pairs"`` or ``"dynamics"`` with `field` its parameter or the key of
     a column of the catalog, or ``"axis"`` with `field` a quantity of that table. `column` is the heading a user
     would fill in (for linear motors `linear_column`). `known_by` tells where the datum is not needed.
     """
@@ -138,6 +140,8 @@ class Need:
         if self.part == "axis":
             return np.full(len(sets), not np.isnan(sets.option(self.field)))
         parameters = getattr(sets, self.part)
+        if parameters is None:
+            return np.zeros(len(sets), dtype=bool)
         if not hasattr(parameters, self.field):
             return ~np.isnan(sets.catalog_values(self.part, self.field))
         value = np.asarray(getattr(parameters, self.field))

@@ -1,0 +1,231 @@
+"""The sampled cascade as one plain-float loop: run as it stands, or compiled from the same source.
+
+Scalars and unrolled rows on purpose: for five states this is an order of magnitude faster in plain Python than
+products of small arrays, and the optional compiler takes the function unchanged.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+from functools import cache
+from typing import Any
+
+#: Places in the vector of states that is carried from call to call.
+(
+    CURRENT, MOTOR_SPEED, TWIST, LOAD_SPEED, MOTOR_ANGLE, SPEED_INTEGRATOR, CURRENT_INTEGRATOR,
+    LAST_VOLTAGE, FILTERED_SPEED, LAST_SEEN, NOTCH_1, NOTCH_2,
+) = range(12)  # fmt: skip
+STATES = 12
+
+#: What is recorded at every sample, before the step.
+RECORDED = ("current", "motor_speed", "twist", "motor_angle", "current_reference", "voltage")
+
+
+def cascade_loop(
+    state: Any,
+    plant: Any,
+    free: Any,
+    gains: Any,
+    angle: Any,
+    speed: Any,
+    feedforward: Any,
+    load: Any,
+    record: Any,
+    saturated: Any,
+) -> None:
+    """Advance the cascade over all samples given.
+
+    Parameters
+    ----------
+    state : sequence of float, shape (12,)
+        States at the start; those at the end afterwards.
+    plant, free : tuple of float
+        Exact zero-order hold with the two masses coupled, and inside the backlash (`plant.sampled`).
+    gains : tuple of float
+        Settings of the loops (`control.LoopSettings.row`).
+    angle, speed, feedforward, load : sequence of float, shape (n,)
+        Commanded angle [rad] and speed [rad/s], current added in advance [A], external torque on the load that
+        speeds it up where positive [N·m].
+    record : sequence of six sequences, shape (6, n)
+        Takes `RECORDED`.
+    saturated : sequence of int, shape (n,)
+        Takes 1 where the current was limited, 2 where the voltage was, 3 for both.
+
+    Notes
+    -----
+    Coulomb friction is implicit in the step: speeds are predicted without it, and the torque that would stop
+    them within the step is limited to the Coulomb level. What sticks is exactly at rest, and nothing chatters.
+    """
+    # Indexed, not unpacked: the compiler knows the length of a tuple but not that of an array.
+    i, w, s, wl, th, iv = state[0], state[1], state[2], state[3], state[4], state[5]
+    ii, last_u, wf, last, n1, n2 = state[6], state[7], state[8], state[9], state[10], state[11]
+    (
+        ai, aw, as_, al, au, am, ad,
+        bi, bw, bs, bl, bu, bm, bd,
+        ci, cw, cs, cl, cu, cm, cd,
+        di, dw, ds, dl, du, dm, dd,
+        ei, ew, es, el, eu, em, ed,
+        rigid, gap, coulomb_motor, coulomb_load,
+    ) = plant  # fmt: skip
+    (
+        k_angle, k_speed_forward, k_speed, k_speed_integral, k_speed_back, conditional,
+        k_current, k_current_integral, k_current_back, k_emf, current_max, voltage_max,
+        reactance, filter_share, delayed, count, period,
+        notch, nb0, nb1, nb2, na1, na2,
+    ) = gains  # fmt: skip
+    current_out, speed_out, twist_out = record[0], record[1], record[2]
+    angle_out, reference_out, voltage_out = record[3], record[4], record[5]
+    voltage_max2 = voltage_max * voltage_max
+    for k in range(len(angle)):
+        # what the drive sees
+        seen = th
+        w_seen = w
+        if count > 0.0:
+            seen = math.floor(th / count + 0.5) * count
+            w_seen = (seen - last) / period
+            last = seen
+        # position and speed
+        w_ref = k_speed_forward * speed[k] + k_angle * (angle[k] - seen)
+        if filter_share < 1.0:
+            wf = wf + filter_share * (w_ref - wf)
+            w_ref = wf
+        error = w_ref - w_seen
+        wanted = k_speed * error + iv
+        if notch > 0.0:
+            passed = nb0 * wanted + n1
+            n1 = nb1 * wanted - na1 * passed + n2
+            n2 = nb2 * wanted - na2 * passed
+            wanted = passed
+        wanted = wanted + feedforward[k]
+        i_ref = wanted
+        flag = 0
+        if wanted > current_max or wanted < -current_max:
+            i_ref = current_max if wanted > 0.0 else -current_max
+            flag = 1
+            if conditional > 0.0:
+                if error * wanted < 0.0:
+                    iv = iv + k_speed_integral * error
+            else:
+                iv = iv + k_speed_integral * error + k_speed_back * (i_ref - wanted)
+        else:
+            iv = iv + k_speed_integral * error
+        # current
+        error = i_ref - i
+        u = k_current * error + ii + k_emf * w_seen
+        cross = reactance * w * i
+        if u * u + cross * cross > voltage_max2:
+            left = voltage_max2 - cross * cross
+            limited = math.sqrt(left) if left > 0.0 else 0.0
+            if u < 0.0:
+                limited = -limited
+            ii = ii + k_current_integral * error + k_current_back * (limited - u)
+            u = limited
+            flag = flag + 2
+        else:
+            ii = ii + k_current_integral * error
+        if delayed > 0.0:
+            applied = last_u
+            last_u = u
+            u = applied
+        current_out[k] = i
+        speed_out[k] = w
+        twist_out[k] = s
+        angle_out[k] = th
+        reference_out[k] = i_ref
+        voltage_out[k] = u
+        saturated[k] = flag
+        # the plant over one sample
+        torque = load[k]
+        if rigid > 0.0:
+            w_new = bi * i + bw * w + bu * u + bd * torque
+            if coulomb_motor > 0.0:
+                friction = -w_new / bd
+                if friction > coulomb_motor:
+                    friction = coulomb_motor
+                elif friction < -coulomb_motor:
+                    friction = -coulomb_motor
+                torque = torque + friction
+                w_new = w_new + bd * friction
+            th = th + ei * i + ew * w + eu * u + ed * torque
+            i = ai * i + aw * w + au * u + ad * torque
+            w = w_new
+            wl = w_new
+        elif -gap < s < gap:
+            w_new = free[7] * i + free[8] * w + free[11] * u
+            l_new = free[24] * wl + free[27] * torque
+            push = 0.0
+            if coulomb_motor > 0.0:
+                push = min(max(-w_new / free[12], -coulomb_motor), coulomb_motor)
+            if coulomb_load > 0.0:
+                torque = torque + min(max(-l_new / free[27], -coulomb_load), coulomb_load)
+            i_new = free[0] * i + free[1] * w + free[4] * u + free[5] * push
+            s = (
+                s + free[14] * i + free[15] * w + free[17] * wl + free[18] * u
+                + free[19] * push + free[20] * torque
+            )  # fmt: skip
+            th = th + free[28] * i + free[29] * w + free[32] * u + free[33] * push
+            w = w_new + free[12] * push
+            wl = free[24] * wl + free[27] * torque
+            i = i_new
+        else:
+            shift = 0.0
+            if gap > 0.0:
+                shift = gap if s > 0.0 else -gap
+                s = s - shift
+            i_new = ai * i + aw * w + as_ * s + al * wl + au * u + ad * torque
+            w_new = bi * i + bw * w + bs * s + bl * wl + bu * u + bd * torque
+            l_new = di * i + dw * w + ds * s + dl * wl + du * u + dd * torque
+            s_new = ci * i + cw * w + cs * s + cl * wl + cu * u + cd * torque + shift
+            th = th + ei * i + ew * w + es * s + el * wl + eu * u + ed * torque
+            if coulomb_load > 0.0:
+                friction = -l_new / dd
+                if friction > coulomb_load:
+                    friction = coulomb_load
+                elif friction < -coulomb_load:
+                    friction = -coulomb_load
+                i_new = i_new + ad * friction
+                w_new = w_new + bd * friction
+                l_new = l_new + dd * friction
+                s_new = s_new + cd * friction
+                th = th + ed * friction
+            if coulomb_motor > 0.0:
+                friction = -w_new / bm
+                if friction > coulomb_motor:
+                    friction = coulomb_motor
+                elif friction < -coulomb_motor:
+                    friction = -coulomb_motor
+                i_new = i_new + am * friction
+                w_new = w_new + bm * friction
+                l_new = l_new + dm * friction
+                s_new = s_new + cm * friction
+                th = th + em * friction
+            i = i_new
+            w = w_new
+            s = s_new
+            wl = l_new
+    state[0] = i
+    state[1] = w
+    state[2] = s
+    state[3] = wl
+    state[4] = th
+    state[5] = iv
+    state[6] = ii
+    state[7] = last_u
+    state[8] = wf
+    state[9] = last
+    state[10] = n1
+    state[11] = n2
+
+
+@cache
+def compiled_loop() -> Callable[..., None] | None:
+    """`cascade_loop` as machine code, or None where the optional compiler is not installed."""
+    from importlib.util import find_spec
+
+    if find_spec("numba") is None:
+        return None
+    from importlib import import_module
+
+    compiled: Callable[..., None] = import_module("numba").njit(cascade_loop)
+    return compiled
