@@ -96,7 +96,8 @@ def not_checked_section(comparison: Comparison) -> Section:
     else:
         blocks.append(
             Paragraph(
-                "Every check of this list that concerns the leading set was made. The assumptions say what no check of this tool judges."
+                "Every check of this list that concerns the leading set was made. The assumptions say what no "
+                "check of this tool judges."
             )
         )
     if comparison.questions:
