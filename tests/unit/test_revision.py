@@ -52,7 +52,9 @@ def test_changed_inputs_and_moved_results_are_named(earlier, later):
     assert "duration_s" not in moved
     assert any(change.title == "Voltage" for change in revision.checks)
     section = changes_section(revision)
-    texts = [cell.text for block in section.blocks if hasattr(block, "rows") for row in block.rows for cell in row]
+    texts = [
+        cell.text for block in section.blocks if hasattr(block, "rows") for row in block.rows for cell in row
+    ]
     assert "39 kg" in texts
 
 
@@ -63,11 +65,15 @@ def test_the_report_and_results_tell_it(earlier, later, tmp_path):
     assert "Changes since the earlier revision" in page
     assert "39 kg" in page
     results = json.loads((tmp_path / "new" / "results.json").read_text(encoding="utf-8"))
-    assert {"moving mass", "minimum bus voltage"} <= {change["label"] for change in results["changes"]["inputs"]}
+    assert {"moving mass", "minimum bus voltage"} <= {
+        change["label"] for change in results["changes"]["inputs"]
+    }
 
 
 @pytest.mark.parametrize(
-    "content", ["", "[]", "{}", '{"schema": "other/1"}', "not json", "[" * 100_000], ids=lambda text: text[:12]
+    "content",
+    ["", "[]", "{}", '{"schema": "other/1"}', "not json", "[" * 100_000],
+    ids=lambda text: text[:12],
 )
 def test_what_is_no_earlier_result_is_refused(tmp_path, content):
     file = tmp_path / "results.json"

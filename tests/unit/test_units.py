@@ -308,7 +308,16 @@ def test_adversarial_spellings_are_refused_at_once(text):
 
 
 def test_suffix_table_names_units_that_exist():
-    labels = {kind.si_unit for kind in KINDS.values()} | {"K", "J/K", "1/A²", "A²", "A²·s", "N²·m²", "W/K", "A/s"}
+    labels = {kind.si_unit for kind in KINDS.values()} | {
+        "K",
+        "J/K",
+        "1/A²",
+        "A²",
+        "A²·s",
+        "N²·m²",
+        "W/K",
+        "A/s",
+    }
     assert set(SUFFIXES.values()) <= labels
     assert suffix_unit("winding_degc") == "°C"
     assert suffix_unit("speed_max_rad_s") == "rad/s"
