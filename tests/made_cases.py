@@ -34,7 +34,7 @@ GEARHEAD = dict(
 
 DIRECT = dict(
     GEARHEAD, is_direct=True, ratio=1.0, efficiency=1.0, efficiency_back=1.0, no_load_torque_nm=0.0,
-    inertia_kg_m2=0.0, mass_kg=0.0, price=0.0,
+    inertia_kg_m2=0.0, mass_kg=0.0, price=0.0, stiffness_nm_per_rad=np.nan, backlash_rad=np.nan,
 )  # fmt: skip
 
 DRIVE = dict(

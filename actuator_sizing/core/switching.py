@@ -203,7 +203,7 @@ def run_open_loop(
     --------
     >>> plant = Plant(resistance_ohm=1.0, inductance_h=1e-3, torque_constant_nm_per_a=0.1,
     ...               motor_inertia_kg_m2=1e-4, motor_coulomb_nm=0.2)
-    >>> run_open_loop(plant, [Held(1.0, 1.5)], 0.01).end[1]  # 1.5 A give 0.15 N·m: it sticks
+    >>> float(run_open_loop(plant, [Held(1.0, 1.5)], 0.01).end[1])  # 1.5 A give 0.15 N·m: it sticks
     0.0
     """
     switched = _Switched(plant)
