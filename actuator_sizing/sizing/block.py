@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, fields, replace
 from functools import cached_property
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -25,8 +26,19 @@ from actuator_sizing.sizing.thermal_data import thermal_network
 
 FloatArray = NDArray[np.float64]
 
-_NOTHING = 1e-200  # in place of zero and less in a denominator
+# The arrays of a block are in single precision, twice as fast; sums that may cancel (mean square, torque) are made
+# in double first. Whoever compares the bounds allows for the rounding (`screening._ROUNDING`).
+_SINGLE = np.float32
+_NOTHING = 1e-30  # in place of zero and less in a denominator
 _TEMPERATURE_SLACK_K = 0.5  # the averaged balance may lie this much above the exact mean
+
+
+def _single(columns: Any) -> Any:
+    """A class of columns with its float arrays in single precision."""
+    values = {f.name: getattr(columns, f.name) for f in fields(columns)}
+    return replace(
+        columns, **{name: v.astype(_SINGLE) for name, v in values.items() if v.dtype == np.float64}
+    )
 
 
 @dataclass(frozen=True)
@@ -51,10 +63,10 @@ class MotorSide:
             motors.rotor_inertia_kg_m2, motors.friction_torque_nm, motors.viscous_friction_nm_s
         )
         return cls(
-            motors,
-            judged,
-            thermal_network(motors, surroundings),
-            np.fmin(by_current, motors.peak_torque_nm),
+            _single(motors),
+            _single(judged),
+            _single(thermal_network(motors, surroundings)),
+            np.fmin(by_current, motors.peak_torque_nm).astype(_SINGLE),
             np.ascontiguousarray(columns.T),
             np.ascontiguousarray(motor_products(columns).T),
         )
@@ -101,11 +113,11 @@ class GearheadSide:
     def part(self, which: slice) -> GearheadSide:
         """Some of the gearheads."""
         return GearheadSide(
-            self.gearheads.take(which),
-            self.products[which],
-            self.torque[:, which],
-            self.torque_for_voltage[:, which],
-            self.speed_for_voltage[:, which],
+            _single(self.gearheads.take(which)),
+            np.ascontiguousarray(self.products[which]),
+            np.ascontiguousarray(self.torque[:, which]),
+            np.ascontiguousarray(self.torque_for_voltage[:, which]),
+            self.speed_for_voltage[:, which].astype(_SINGLE),
         )
 
 
@@ -146,7 +158,7 @@ class Block:
     def mean_square(self) -> FloatArray:
         """Mean square of the air-gap torque, exact, shape (N, M). [N²·m²]"""
         product = self.gearhead_side.products @ self.motor_side.products
-        return np.maximum(product, 0.0, out=product)
+        return np.maximum(product, 0.0).astype(_SINGLE)
 
     @cached_property
     def speed_peak(self) -> FloatArray:
@@ -168,7 +180,7 @@ class Block:
         """Lower bound of the largest air-gap torque, magnitude. [N·m]"""
         peak = np.zeros_like(self.mean_square)
         for part in self.gearhead_side.torque:
-            np.maximum(peak, part @ self.motor_side.columns, out=peak)
+            np.maximum(peak, (part @ self.motor_side.columns).astype(_SINGLE), out=peak)
         return peak
 
     @cached_property
@@ -182,12 +194,12 @@ class Block:
         per_torque = self.judged.resistance_ohm / K
         available = self.judged.voltage_available_v
         # Saturated current over T/K, at most: the turning point of the cubic is at 3/2 of the linear current.
-        most_current = np.where(self.judged.saturation_per_a2 > 0.0, 1.5, 1.0)
+        most_current = np.where(self.judged.saturation_per_a2 > 0.0, _SINGLE(1.5), _SINGLE(1.0))
         voltage = np.zeros_like(self.mean_square)
         plane = np.zeros_like(self.mean_square)
         side = self.gearhead_side
         for part, omega in zip(side.torque_for_voltage, side.speed_for_voltage, strict=True):
-            drop, emf = per_torque * (part @ self.motor_side.columns), K * omega
+            drop, emf = per_torque * (part @ self.motor_side.columns).astype(_SINGLE), K * omega
             # While braking a larger current means less voltage: there the bound needs the most current there can be.
             np.maximum(voltage, np.minimum(drop, most_current * drop) + emf, out=voltage)
             # Above the no-load speed there is no motoring torque at all: the ratio becomes immense.
@@ -210,7 +222,7 @@ class Block:
         """Lower bound of the winding's mean rise in periodic steady state; infinite on runaway. [K]"""
         ambient = self.surroundings.ambient_degc
         m = self.motors
-        cold_K = torque_constant_at(m, np.full(len(m), ambient))  # the magnet is never colder
+        cold_K = torque_constant_at(m, np.full(len(m), ambient, dtype=_SINGLE))  # the magnet is never colder
         R_2 = self.motor_side.network.housing_resistance_k_w
         total = self.motor_side.network.winding_resistance_k_w + np.nan_to_num(R_2, nan=0.0)
         path = np.where(np.isnan(R_2), total, R_2)

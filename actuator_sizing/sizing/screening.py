@@ -29,7 +29,7 @@ FloatArray = NDArray[np.float64]
 
 _MOTORS_PER_BLOCK, _GEARHEADS_PER_BLOCK = 2048, 16  # arrays of 256 kB stay in the L2 cache
 LISTED_SETS = 200_000  # up to so many sets, each loser is listed with what governs it
-_ROUNDING = 1e-9  # bounds are rejected only beyond this part above the allowed value
+_ROUNDING = 1e-5  # of single precision: bounds reject only beyond this part above the allowed value
 
 
 @dataclass(frozen=True)
@@ -118,7 +118,8 @@ def screen(
         served = compatible(motor_side.motors, drives)
         for g, part in gearhead_parts:
             block = Block(demand, case.surroundings, recommended, motor_side, part)
-            survivors += _screen_tile(run, _Tile(block, m, g, served))
+            with np.errstate(over="ignore"):  # immense ratios stand for what is out of reach
+                survivors += _screen_tile(run, _Tile(block, m, g, served))
         screened += int(served.sum()) * len(gearhead_index)
         if progress is not None:
             progress((start + len(m)) / len(motor_index))

@@ -80,8 +80,8 @@ def test_the_bound_of_the_voltage_holds_for_a_saturated_motor_that_brakes():
     sets, verdicts = judged(made)
     bound = VOLTAGE.bound(block_of(made))[0, 0]
     exact = verdicts.utilisation[0, column(verdicts, "voltage")]
-    # 1e-9: rounding of two orders of summation, as the screening allows.
-    assert bound <= exact * (1.0 + 1e-9)
+    # 1e-5: rounding of single precision, as the screening allows.
+    assert bound <= exact * (1.0 + 1e-5)
     assert sets.pairs.voltage_peak_v[0] > 0.0
 
 

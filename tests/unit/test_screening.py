@@ -117,8 +117,8 @@ def test_bounds_are_below_exact_utilisations():
         answer = screened(made)
         exact = {tuple(row): u for row, u in zip(index.tolist(), verdicts.severity, strict=True)}
         for row, bound in zip(answer.lost.tolist(), answer.lost_bound, strict=True):
-            # 1e-9: rounding of two orders of summation.
-            assert bound <= exact[tuple(row)] * (1.0 + 1e-9)
+            # 1e-5: rounding of single precision in the bounds.
+            assert bound <= exact[tuple(row)] * (1.0 + 1e-5)
 
 
 def overloaded(limits=None):
