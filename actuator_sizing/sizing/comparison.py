@@ -31,7 +31,14 @@ from actuator_sizing.sizing.judging import (
 from actuator_sizing.sizing.provenance import assumptions_of, questions_of
 from actuator_sizing.sizing.quantities import commissioning_quantities, quantities
 from actuator_sizing.sizing.ranking import RANKINGS, nearest_drives, ranking_key
-from actuator_sizing.sizing.results import FAILS, NOT_CHECKED, Comparison, Rejections, SetResult
+from actuator_sizing.sizing.results import (
+    FAILS,
+    NOT_CHECKED,
+    Comparison,
+    Rejections,
+    SetDetail,
+    SetResult,
+)
 from actuator_sizing.sizing.screening import Screened, screen
 from actuator_sizing.sizing.set_model import SetModel
 from actuator_sizing.sizing.shortlist import evaluate_sets
@@ -305,10 +312,13 @@ def _set_result(
         motor_index=motor,
         gearhead_index=gearhead,
         drive_index=drive,
-        detail=replace(
-            set_detail(model, sets, i),
-            simulation=partial(simulate_prepared, case, demand, (motor, gearhead, drive)),
-        )
-        if with_curves
-        else None,
+        detail=_detail(model, sets, i, (motor, gearhead, drive)) if with_curves else None,
     )
+
+
+def _detail(model: SetModel, sets: Sets, i: int, parts: tuple[int, int, int]) -> SetDetail:
+    """Curves of one set; its simulation too where the case asks how the axis moves."""
+    detail = set_detail(model, sets, i)
+    if sets.dynamics is None:
+        return detail
+    return replace(detail, simulation=partial(simulate_prepared, model.case, model.demand, parts))

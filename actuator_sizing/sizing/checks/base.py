@@ -123,8 +123,9 @@ class Need:
     """One datum without which a check cannot be made.
 
     `part` is ``"motors"``, ``"gearheads"``, ``"drives"``, ``"pairs"`` or ``"dynamics"`` with `field` its
-    parameter or the key of a column of the catalog, or ``"axis"`` with `field` a quantity of that table. `column` is the heading a user
-    would fill in (for linear motors `linear_column`). `known_by` tells where the datum is not needed.
+    parameter or the key of a column of the catalog, or ``"axis"`` with `field` a quantity of that table. `column`
+    is the heading a user would fill in (for linear motors `linear_column`). `known_by` tells where the datum is
+    not needed.
     """
 
     part: str
