@@ -77,7 +77,11 @@ def judge_sets(sets: Sets, checks: tuple[Check, ...], limits: tuple[Limit, ...])
         known &= ~np.isnan(ratio)
         code = np.full(count, _UNKNOWN, dtype=np.int8)
         code[known] = _PASSES
-        reserve = limit.allowed_utilisation * (1.0 - limit.recommended_reserve)
+        fits = np.full(count, check.is_fit)
+        reserve = np.full(count, limit.allowed_utilisation * (1.0 - limit.recommended_reserve))
+        if check.is_fit_where is not None:
+            fits |= check.is_fit_where(sets)
+            reserve[fits] = limit.allowed_utilisation
         code[known & (ratio > reserve)] = _LOW
         beyond = known & (ratio > limit.allowed_utilisation)
         binding = is_binding(check, limit)
@@ -87,8 +91,7 @@ def judge_sets(sets: Sets, checks: tuple[Check, ...], limits: tuple[Limit, ...])
         utilisation[known, column] = ratio[known]
         # Advice never governs while a limit is there to govern.
         relative[known, column] = ratio[known] / limit.allowed_utilisation if binding else -1.0
-        if check.is_fit:
-            relative[known & ~beyond, column] = -0.5
+        relative[known & ~beyond & fits, column] = -0.5
     _let_numbers_govern(relative, codes, checks)
     binding_columns = np.array([is_binding(c, x) for c, x in zip(checks, limits, strict=True)])
     verdict = np.max(np.where(binding_columns, codes, _PASSES), axis=1, initial=_PASSES).astype(np.int8)

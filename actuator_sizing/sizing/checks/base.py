@@ -186,6 +186,8 @@ class Check:
         Never fails unless the user makes it a limit.
     is_fit : bool
         Parts fit together or do not: such a check governs only where it fails.
+    is_fit_where : callable or None
+        Sets → mask of the sets for which it is such a matter, and a reserve would mean nothing.
     yields_to : str
         Key of the check that fails too wherever this one is infinite, and says by how much.
     """
@@ -204,6 +206,7 @@ class Check:
     linear_unit: str = ""
     is_advice: bool = False
     is_fit: bool = False
+    is_fit_where: Callable[[Sets], NDArray[np.bool_]] | None = None
     yields_to: str = ""
 
 
