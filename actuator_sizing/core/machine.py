@@ -12,13 +12,25 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.core.parameters import BASIS_PEAK, BASIS_RMS, MotorParameters, Surroundings
+from actuator_sizing.core.parameters import (
+    BASIS_DC,
+    BASIS_PEAK,
+    BASIS_RMS,
+    SINUSOIDAL,
+    DriveParameters,
+    MotorParameters,
+    Surroundings,
+)
 
 FloatArray = NDArray[np.float64]
 
 #: Winding temperature at which resistance is judged where neither the case nor the sheet states a limit.
 #: Class B of IEC 60085; an assumption on the hot side, not a rating.
 ASSUMED_HOT_WINDING_DEGC = 130.0
+
+#: Amplitude of a sinusoidal current that gives the torque of one ampere DC in six-step commutation of the same
+#: sinusoidal EMF: ``(3/π) / (√3/2)``, the ratio of the torque constants in `core.conventions`.
+SINE_AMPLITUDE_PER_DC = 2.0 * np.sqrt(3.0) / np.pi
 
 #: Model voltage per volt of line-to-line peak, by current basis (amplitude-invariant sinusoidal machine).
 _VOLTS_PER_LINE_PEAK = {BASIS_RMS: np.sqrt(3.0 / 2.0), BASIS_PEAK: np.sqrt(3.0) / 2.0}
@@ -194,3 +206,18 @@ def amplitude_per_unit_current(basis: NDArray[np.int8]) -> FloatArray:
     Common practice; a DC or block current counts as its own amplitude.
     """
     return np.asarray(np.where(basis == BASIS_RMS, np.sqrt(2.0), 1.0))
+
+
+def motor_amplitude_per_unit_current(motors: MotorParameters) -> FloatArray:
+    """Peak amperes of the drive per ampere of each motor's basis, shape (n,). [-]
+
+    As `amplitude_per_unit_current`, but a motor with sinusoidal commutation whose sheet states A DC is fed with
+    sines, whose amplitude is 2√3/π of the DC ampere for the same torque.
+    """
+    sine = (motors.current_basis == BASIS_DC) & (motors.commutation == SINUSOIDAL)
+    return np.where(sine, SINE_AMPLITUDE_PER_DC, amplitude_per_unit_current(motors.current_basis))
+
+
+def motor_amperes_per_drive_ampere(motors: MotorParameters, drives: DriveParameters) -> FloatArray:
+    """Amperes of the motor's basis that one ampere of the drive's basis is, set by set, shape (n,). [-]"""
+    return amplitude_per_unit_current(drives.current_basis) / motor_amplitude_per_unit_current(motors)

@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
-from actuator_sizing.core.machine import amplitude_per_unit_current
+from actuator_sizing.core.machine import amplitude_per_unit_current, motor_amplitude_per_unit_current
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import Demand
 from actuator_sizing.sizing.evaluation import evaluate_pairs
@@ -75,7 +75,7 @@ def nearest_drives(case: Case, demand: Demand, pairs: IndexArray) -> IndexArray:
     motors = case.motor_parameters.take(pairs[:, 0])
     results = evaluate_pairs(demand, motors, case.gearhead_parameters.take(pairs[:, 1]), case.surroundings)
     drives, s = case.drive_parameters, case.surroundings
-    amplitude = amplitude_per_unit_current(motors.current_basis)[:, None]
+    amplitude = motor_amplitude_per_unit_current(motors)[:, None]
     per_drive = amplitude_per_unit_current(drives.current_basis)[None, :]
     with np.errstate(invalid="ignore"):
         need = np.fmax(

@@ -135,11 +135,9 @@ RMS_CURRENT = Check(
 # -- torque over the speed–torque plane -------------------------------------------------------------
 def current_limited_torque(sets: Sets) -> FloatArray:
     """Air-gap torque at the smaller of the peak currents of motor and drive, shape (S,). [N·m]"""
-    from actuator_sizing.core.machine import amplitude_per_unit_current, saturation_coefficient
+    from actuator_sizing.core.machine import motor_amperes_per_drive_ampere, saturation_coefficient
 
-    to_motor = amplitude_per_unit_current(sets.drives.current_basis) / amplitude_per_unit_current(
-        sets.motors.current_basis
-    )
+    to_motor = motor_amperes_per_drive_ampere(sets.motors, sets.drives)
     current = np.fmin(sets.motors.peak_current_a, sets.drives.peak_current_a * to_motor)
     K = sets.pairs.torque_constant_nm_per_a
     torque = torque_of_current(current, K, saturation_coefficient(sets.motors))
