@@ -183,6 +183,31 @@ def judge(motors: MotorParameters, surroundings: Surroundings) -> JudgedMotor:
     with np.errstate(invalid="ignore"):
         share = np.where(np.isnan(R_1) | np.isnan(R_2), 1.0, R_2 / (R_1 + R_2))
     magnet = surroundings.ambient_degc + share * (winding - surroundings.ambient_degc)
+    return _judged_at(motors, surroundings, winding, magnet)
+
+
+def judge_cold(motors: MotorParameters, surroundings: Surroundings) -> JudgedMotor:
+    """Motors at ambient, as after a long rest, and minimum bus voltage: cold magnets raise the voltage constant.
+
+    Parameters
+    ----------
+    motors : MotorParameters
+        n motors. [-]
+    surroundings : Surroundings
+        Ambient and bus voltages. [-]
+
+    Returns
+    -------
+    JudgedMotor
+        Shape (n,).
+    """
+    ambient = np.full(len(motors), surroundings.ambient_degc)
+    return _judged_at(motors, surroundings, ambient, ambient)
+
+
+def _judged_at(
+    motors: MotorParameters, surroundings: Surroundings, winding: FloatArray, magnet: FloatArray
+) -> JudgedMotor:
     inductance = np.nan_to_num(motors.inductance_h, nan=0.0)
     reactance = inductance * np.nan_to_num(motors.pole_pairs, nan=0.0)
     return JudgedMotor(
