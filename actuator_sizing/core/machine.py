@@ -12,6 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from actuator_sizing.core.conventions import model_factor
 from actuator_sizing.core.parameters import (
     BASIS_DC,
     BASIS_PEAK,
@@ -42,7 +43,8 @@ class JudgedMotor:
 
     winding_degc: FloatArray
     magnet_degc: FloatArray
-    resistance_ohm: FloatArray
+    resistance_ohm: FloatArray  # of the circuit: winding and motor cable
+    cable_ohm: FloatArray  # the cable's part of it
     torque_constant_nm_per_a: FloatArray
     saturation_per_a2: FloatArray
     inductance_h: FloatArray  # zero where not known
@@ -210,10 +212,12 @@ def _judged_at(
 ) -> JudgedMotor:
     inductance = np.nan_to_num(motors.inductance_h, nan=0.0)
     reactance = inductance * np.nan_to_num(motors.pole_pairs, nan=0.0)
+    cable = model_factor(motors.current_basis) * surroundings.cable_ohm
     return JudgedMotor(
         winding_degc=winding,
         magnet_degc=magnet,
-        resistance_ohm=resistance_at(motors, winding),
+        resistance_ohm=resistance_at(motors, winding) + cable,
+        cable_ohm=cable,
         torque_constant_nm_per_a=torque_constant_at(motors, magnet),
         saturation_per_a2=saturation_coefficient(motors),
         inductance_h=inductance,

@@ -6,6 +6,7 @@ Everything here is independent of the drive; a check that needs one combines the
 from __future__ import annotations
 
 from dataclasses import dataclass, fields
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -58,7 +59,8 @@ class PairResults(_Columns):
     plane_torque_nm: FloatArray  # torque there
     plane_capacity_nm: FloatArray
     plane_at_s: FloatArray
-    copper_loss_mean_w: FloatArray  # at judged temperatures
+    copper_loss_mean_w: FloatArray  # winding, at judged temperatures
+    cable_loss_mean_w: FloatArray
     friction_loss_mean_w: FloatArray
     energy_shaft_motoring_j: FloatArray
     energy_shaft_regenerated_j: FloatArray
@@ -76,7 +78,8 @@ class PairResults(_Columns):
     housing_max_degc: FloatArray
     housing_mean_degc: FloatArray
     inertia_ratio: FloatArray
-    resistance_ohm: FloatArray  # at judged temperatures
+    resistance_ohm: FloatArray  # winding, at judged temperatures
+    cable_ohm: FloatArray  # motor cable in the motor's basis
     torque_constant_nm_per_a: FloatArray
     judged_winding_degc: FloatArray
     magnet_degc: FloatArray
@@ -131,9 +134,10 @@ def _evaluate_chunk(
     plane = _worse(torque_plane(demand, c, judged), torque_plane(demand, c_cold, cold), "plane_utilisation")
     speed_peak, speed_piece, speed_position = largest_magnitude(omega)
 
-    copper = per_pair(judged.resistance_ohm) * i**2
+    squared = i**2
     airgap = T * omega
-    terminals = airgap + copper
+    terminals = airgap + per_pair(judged.resistance_ohm) * squared
+    winding_ohm, mean_square = judged.resistance_ohm - judged.cable_ohm, demand.mean(squared)
     shaft = c.shaft_torque_nm * omega
     energy_shaft = signed_integrals(duration, shaft)
     energy_airgap = signed_integrals(duration, airgap)
@@ -153,7 +157,7 @@ def _evaluate_chunk(
         current_peak_a=current_of_torque(
             torque_peak, judged.torque_constant_nm_per_a, judged.saturation_per_a2
         ),
-        current_rms_a=np.sqrt(demand.mean(i**2)),
+        current_rms_a=np.sqrt(mean_square),
         speed_peak_rad_s=speed_peak,
         speed_peak_at_s=demand.instant(speed_piece, speed_position),
         speed_rms_rad_s=gearheads.ratio * demand.shaft_speed_rms,
@@ -165,7 +169,8 @@ def _evaluate_chunk(
         voltage_available_v=judged.voltage_available_v,
         **voltage,
         **plane,
-        copper_loss_mean_w=demand.mean(copper),
+        copper_loss_mean_w=winding_ohm * mean_square,
+        cable_loss_mean_w=judged.cable_ohm * mean_square,
         friction_loss_mean_w=demand.mean(speed_loss(motors, omega)),
         energy_shaft_motoring_j=energy_shaft[0],
         energy_shaft_regenerated_j=energy_shaft[1],
@@ -183,7 +188,8 @@ def _evaluate_chunk(
         housing_max_degc=thermal.housing_max_degc,
         housing_mean_degc=thermal.housing_mean_degc,
         inertia_ratio=reflected / motors.rotor_inertia_kg_m2,
-        resistance_ohm=judged.resistance_ohm,
+        resistance_ohm=winding_ohm,
+        cable_ohm=judged.cable_ohm,
         torque_constant_nm_per_a=judged.torque_constant_nm_per_a,
         judged_winding_degc=judged.winding_degc,
         magnet_degc=judged.magnet_degc,
@@ -202,7 +208,7 @@ def _voltages(demand: Demand, c: PairCourse) -> dict[str, FloatArray]:
     }
 
 
-def _worse(hot: dict[str, FloatArray], cold: dict[str, FloatArray], decides: str) -> dict[str, FloatArray]:
+def _worse(hot: dict[str, FloatArray], cold: dict[str, FloatArray], decides: str) -> dict[str, Any]:
     """Pair by pair what is larger, hot or cold, and which it is."""
     is_cold = cold[decides] > hot[decides]
     chosen = {name: np.where(is_cold, cold[name], value) for name, value in hot.items()}

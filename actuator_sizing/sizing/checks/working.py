@@ -150,8 +150,10 @@ def voltage_working(at: Instant, *, with_slope: bool) -> str:
     slope = at.current_slope if with_slope else 0.0
     along = R * at.current + K * at.speed + L * slope
     across = X * at.speed * at.current
+    cable = float(j.cable_ohm[0])
+    with_cable = f" with {digits(cable)} Ω of cable" if cable > 0.0 else ""
     return (
-        f"R = {digits(R)} Ω at winding {digits(float(j.winding_degc[0]))} °C; "
+        f"R = {digits(R)} Ω at winding {digits(float(j.winding_degc[0]))} °C{with_cable}; "
         f"R i + K ω + L di/dt = {digits(R)} · {digits(at.current)} + {digits(K)} · {digits(at.speed)} + "
         f"{digits(L)} · {digits(slope)} = {digits(along)} V; p ω L i = {digits(X)} · "
         f"{digits(at.speed)} · {digits(at.current)} = {digits(across)} V; u = √({digits(along)}² + "
