@@ -23,6 +23,7 @@ from actuator_sizing.case.parsed_tables import ParsedTable
 from actuator_sizing.case.parsing import parse_table
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.raw_tables import RawTable
+from actuator_sizing.case.resistor import understand_pulses
 from actuator_sizing.case.tables import TABLES, table_for
 from actuator_sizing.core.mechanisms import SHAFT
 from actuator_sizing.errors import NOTE
@@ -73,6 +74,7 @@ def understand(
         at_shaft = (axis.word("motion_stated_at") or mechanism.motion_at) == SHAFT
         check_motion(mechanism, at_shaft, segments, problems)
     parts = understand_parts(parsed.get("inertias"), axis.mechanism, problems)
+    pulses = understand_pulses(parsed.get("resistor_pulses"), problems)
     motors, drives = parsed.get("motors"), parsed.get("drives")
     motor_parameters = understand_motors(motors) if motors else None
     drive_parameters = understand_drives(drives) if drives else None
@@ -102,6 +104,7 @@ def understand(
         *(recording.entries if recording else ()),
         *table_entries(parsed.get("map") if mechanism.needs_map else None),
         *table_entries(parsed.get("inertias")),
+        *table_entries(parsed.get("resistor_pulses")),
         *limit_entries,
     )
     catalogs = to_catalog(motors), to_catalog(gearheads), to_catalog(drives)
@@ -110,6 +113,7 @@ def understand(
         path=path,
         mechanism=with_parts(mechanism, parts),
         parts=parts,
+        resistor_pulses=pulses,
         surroundings=surroundings_of(axis),
         segments=segments,
         motors=catalogs[0],
