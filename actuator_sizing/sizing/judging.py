@@ -31,6 +31,7 @@ class Verdicts:
     verdict: NDArray[np.int8]  # (S,)
     governing: NDArray[np.intp]  # (S,) column of the check that governs
     severity: FloatArray  # (S,) utilisation over allowed of the governing check
+    binds: NDArray[np.bool_]  # (S, C) whether the set can fail the check, or is only advised by it
 
 
 def active_checks(limits: Mapping[str, Limit]) -> tuple[tuple[Check, ...], tuple[Limit, ...]]:
@@ -66,6 +67,7 @@ def judge_sets(sets: Sets, checks: tuple[Check, ...], limits: tuple[Limit, ...])
     utilisation = np.full((count, len(checks)), np.nan)
     codes = np.full((count, len(checks)), NOT_APPLICABLE, dtype=np.int8)
     relative = np.full((count, len(checks)), -np.inf)
+    binds = np.zeros((count, len(checks)), dtype=bool)
     for column, (check, limit) in enumerate(zip(checks, limits, strict=True)):
         applies = check.applies(sets)
         if not applies.any():
@@ -84,18 +86,20 @@ def judge_sets(sets: Sets, checks: tuple[Check, ...], limits: tuple[Limit, ...])
             reserve[fits] = limit.allowed_utilisation
         code[known & (ratio > reserve)] = _LOW
         beyond = known & (ratio > limit.allowed_utilisation)
-        binding = is_binding(check, limit)
+        binding = np.full(count, is_binding(check, limit))
+        if check.binds_where is not None:
+            binding &= check.binds_where(sets)
+        binds[:, column] = binding
         # Advice that was not followed is said in its own row, not in the verdict of the set.
-        code[beyond] = _FAILS if binding else _LOW
+        code[beyond] = np.where(binding, _FAILS, _LOW)[beyond]
         codes[applies, column] = code[applies]
         utilisation[known, column] = ratio[known]
         # Advice never governs while a limit is there to govern.
-        relative[known, column] = ratio[known] / limit.allowed_utilisation if binding else -1.0
-        relative[known & ~beyond & fits, column] = -0.5
+        relative[known, column] = np.where(binding, ratio / limit.allowed_utilisation, -1.0)[known]
+        relative[known & ~beyond & fits & binding, column] = -0.5
     _let_numbers_govern(relative, codes, checks)
-    binding_columns = np.array([is_binding(c, x) for c, x in zip(checks, limits, strict=True)])
-    verdict = np.max(np.where(binding_columns, codes, _PASSES), axis=1, initial=_PASSES).astype(np.int8)
-    unjudged = ~np.any(binding_columns & (codes != NOT_APPLICABLE), axis=1)
+    verdict = np.max(np.where(binds, codes, _PASSES), axis=1, initial=_PASSES).astype(np.int8)
+    unjudged = ~np.any(binds & (codes != NOT_APPLICABLE), axis=1)
     verdict[unjudged] = _UNKNOWN  # no check that could fail it applies to this set
     governing = relative.argmax(axis=1)
     return Verdicts(
@@ -106,6 +110,7 @@ def judge_sets(sets: Sets, checks: tuple[Check, ...], limits: tuple[Limit, ...])
         verdict,
         governing,
         relative[np.arange(count), governing],
+        binds,
     )
 
 
@@ -173,7 +178,7 @@ def check_results(sets: Sets, verdicts: Verdicts, index: int, segment_at: list[s
                 source=check.source,
                 working=check.working(sets, index) if known else "",
                 missing=missing,
-                is_advice=not is_binding(check, limit),
+                is_advice=not verdicts.binds[index, column],
             )
         )
     return Checks(results)

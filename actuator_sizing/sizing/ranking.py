@@ -9,6 +9,7 @@ from actuator_sizing.case.model import Case
 from actuator_sizing.core.machine import amplitude_per_unit_current, motor_amplitude_per_unit_current
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.derating import derated_drives
 from actuator_sizing.sizing.evaluation import evaluate_pairs
 from actuator_sizing.sizing.fitting import compatible
 from actuator_sizing.sizing.judging import Verdicts
@@ -74,7 +75,7 @@ def nearest_drives(case: Case, demand: Demand, pairs: IndexArray) -> IndexArray:
         return np.empty((0, 3), dtype=np.intp)
     motors = case.motor_parameters.take(pairs[:, 0])
     results = evaluate_pairs(demand, motors, case.gearhead_parameters.take(pairs[:, 1]), case.surroundings)
-    drives, s = case.drive_parameters, case.surroundings
+    drives, s = derated_drives(case), case.surroundings
     amplitude = motor_amplitude_per_unit_current(motors)[:, None]
     per_drive = amplitude_per_unit_current(drives.current_basis)[None, :]
     with np.errstate(invalid="ignore"):

@@ -188,6 +188,9 @@ class Check:
         Parts fit together or do not: such a check governs only where it fails.
     is_fit_where : callable or None
         Sets → mask of the sets for which it is such a matter, and a reserve would mean nothing.
+    binds_where : callable or None
+        Sets → mask of the sets whose sheets state what the check needs; it only advises on the others, for which it
+        goes by a rule of thumb or asks.
     yields_to : str
         Key of the check that fails too wherever this one is infinite, and says by how much.
     """
@@ -206,6 +209,7 @@ class Check:
     linear_unit: str = ""
     is_advice: bool = False
     is_fit: bool = False
+    binds_where: Callable[[Sets], NDArray[np.bool_]] | None = None
     is_fit_where: Callable[[Sets], NDArray[np.bool_]] | None = None
     yields_to: str = ""
 
