@@ -22,6 +22,7 @@ from actuator_sizing.case.columns import (
     key_of,
     nearest,
 )
+from actuator_sizing.case.cycle_columns import CYCLES_COLUMNS, DUTY_TYPE_COLUMNS
 from actuator_sizing.core.mechanisms import (
     LINEAR,
     LOAD,
@@ -304,6 +305,8 @@ DUTY_CYCLE_COLUMNS = (
     Column("brake closed", YES_NO, "whether the holding brake carries the load (standstill only)",
            default="no",
            assumed="the motor holds", example="no"),
+    Column("cycle", TEXT, "cycle that the segment belongs to, such as normal, worst or start-up; the one of the row "
+           "above when empty. Each cycle starts at the same place", example=""),
     Column("note", TEXT, "remark", example=""),
 )  # fmt: skip
 
@@ -409,6 +412,9 @@ TABLES: dict[str, Table] = {
               AXIS_COLUMNS, required=True),
         Table("duty_cycle", "One row is one segment of the motion; the rows follow each other and repeat.",
               DUTY_CYCLE_COLUMNS, required=True, repeats_names=True),
+        Table("cycles", "One row says how one named cycle runs, and how often.", CYCLES_COLUMNS, in_template=False),
+        Table("duty_types", "One row is one load of a duty type of IEC 60034-1, made into a cycle; beside or in place "
+              "of the duty cycle.", DUTY_TYPE_COLUMNS, repeats_names=True, in_template=False),
         Table("points", "One row is one point that a segment with the motion law 'spline' passes.",
               POINT_COLUMNS, repeats_names=True, in_template=False),
         Table("process", "One row is one value of a process force along a segment.",
@@ -444,11 +450,11 @@ def table_for(name: str, mechanism: type[Mechanism] | None, stated_at: str = "")
     says, and process efforts belong to the load.
     """
     table = TABLES[name]
-    if mechanism is None or name not in ("duty_cycle", "map"):
+    if mechanism is None or name not in ("duty_cycle", "duty_types", "map"):
         return table
     moved = (
         ROTARY
-        if (stated_at or mechanism.motion_at) == SHAFT and name == "duty_cycle"
+        if (stated_at or mechanism.motion_at) == SHAFT and name != "map"
         else mechanism.coordinate
     )
     if mechanism.drives_linear_motor:

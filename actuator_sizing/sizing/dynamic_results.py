@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, fields, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -40,6 +40,11 @@ class DynamicResults:
     following_error: FloatArray
     following_error_at_s: FloatArray
     sensitivity_peak_ratio: FloatArray
+
+    def take(self, rows: slice) -> DynamicResults:
+        """Some of the sets."""
+        arrays = {f.name: getattr(self, f.name) for f in fields(self)}
+        return replace(self, **{n: v[rows] for n, v in arrays.items() if isinstance(v, np.ndarray)})
 
 
 def add_dynamics(

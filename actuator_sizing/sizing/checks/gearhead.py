@@ -10,7 +10,16 @@ from numpy.typing import NDArray
 from actuator_sizing.core.quadrature import integrate
 from actuator_sizing.core.transmission import GEAR_EXPONENT
 from actuator_sizing.sizing.block import Block
-from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits, has_gearhead
+from actuator_sizing.sizing.checks.base import (
+    OFTEN,
+    SUSTAINED,
+    Check,
+    Measure,
+    Need,
+    Sets,
+    digits,
+    has_gearhead,
+)
 
 FloatArray = NDArray[np.float64]
 
@@ -57,6 +66,7 @@ GEARHEAD_EQUIVALENT = Check(
     bound=lambda block: block.demand.shaft_torque_equivalent / block.gearheads.continuous_torque_nm[:, None],
     working=_equivalent_working,
     applies=has_gearhead,
+    concerns=OFTEN,
 )
 
 
@@ -103,6 +113,7 @@ GEARHEAD_MEAN_SPEED = Check(
     )[:, None],
     working=_working("ω_mean / ω_mean,max", "rad/s", _mean_speed_measure),
     applies=has_gearhead,
+    concerns=SUSTAINED,
 )
 
 

@@ -12,7 +12,7 @@ from actuator_sizing.core.machine import judge, resistance_at, torque_of_current
 from actuator_sizing.core.parameters import MotorParameters, Surroundings
 from actuator_sizing.core.thermal import altitude_factor
 from actuator_sizing.sizing.block import Block
-from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits
+from actuator_sizing.sizing.checks.base import SUSTAINED, Check, Measure, Need, Sets, digits
 from actuator_sizing.sizing.checks.working import (
     available_voltage_working,
     current_working,
@@ -129,6 +129,7 @@ RMS_CURRENT = Check(
     measure=_rms_measure,
     bound=_rms_bound,
     working=_rms_working,
+    concerns=SUSTAINED,
 )
 
 
@@ -208,6 +209,8 @@ def _temperature_measure(sets: Sets) -> Measure:
 
 
 def _temperature_bound(block: Block) -> FloatArray:
+    if not block.repeats:
+        return np.zeros((1, 1))  # a single run may end before anything is warm
     return block.mean_winding_rise / (block.motors.winding_limit_degc - block.surroundings.ambient_degc)
 
 
