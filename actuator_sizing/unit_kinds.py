@@ -137,6 +137,7 @@ KINDS: dict[str, Kind] = {
         _kind("frequency", "Hz", "Hz, kHz, 1/s", _FREQUENCY),
         _kind("density", "kg/m³", "kg/m³, g/cm³, kg/dm³, lb/in³", _dim(kg=1, m=-3)),
         _kind("pressure", "Pa", "Pa, kPa, MPa, bar, N/mm², psi", _PRESSURE, pound_is_force=True),
+        _kind("area", "m²", "mm², cm², m², in²", _dim(m=2)),
         _kind("volume", "m³", "m³, cm³, mm³, l, in³", _dim(m=3)),
         _kind("count", "-", "-, 1"),
         _kind("price", "", "EUR, USD, €, $"),

@@ -166,6 +166,10 @@ COMMON_QUANTITIES = (
            example="", unit="kW"),
     Column("supply internal resistance", "resistance", "resistance of supply and leads; the minimum bus voltage "
            "is then the one without load", positive=True, maximum=1.0e6, example="", unit="Ω"),
+    Column("motor cable length", "length", "length of the cable between drive and motor; its resistance takes "
+           "voltage and adds loss", positive=True, maximum=1.0e4, example="", unit="m"),
+    Column("motor cable cross-section", "area", "cross-section of one conductor of that cable", positive=True,
+           maximum=1.0e-2, example="", unit="mm²"),
     Column("supply feeds back", YES_NO, "whether the supply returns regenerated energy to the mains",
            default="no", assumed="a rectifier does not feed back", example="no"),
     Column("stop reaction time", "time", "from the event that asks for a stop until the drive or the brake is told",

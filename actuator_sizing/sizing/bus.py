@@ -16,11 +16,11 @@ from actuator_sizing.core.bus import (
     sagged_voltage,
     stored_voltage,
 )
-from actuator_sizing.core.machine import judge
+from actuator_sizing.core.machine import judge, judge_cold
 from actuator_sizing.core.parameters import _Columns
 from actuator_sizing.core.quadrature import integrate, largest
 from actuator_sizing.sizing.checks.base import Sets
-from actuator_sizing.sizing.pair_course import course
+from actuator_sizing.sizing.pair_course import course, electrical_course
 
 FloatArray = NDArray[np.float64]
 
@@ -123,7 +123,16 @@ def terminal_runs(sets: Sets, pairs: NDArray[np.intp]) -> tuple[PowerRuns, Float
     judged = judge(motors, sets.surroundings)
     c = course(sets.demand, motors, gearheads, judged)
     power = c.torque_nm * c.motor_speed_rad_s + judged.resistance_ohm[:, None, None] * c.current_a**2
-    voltage = np.maximum(c.voltage_v, c.voltage_without_inductance_v)
+    cold = electrical_course(
+        sets.demand,
+        c.torque_nm,
+        c.motor_speed_rad_s,
+        c.shaft_torque_nm,
+        judge_cold(motors, sets.surroundings),
+    )
+    voltage = np.maximum.reduce(
+        [v for each in (c, cold) for v in (each.voltage_v, each.voltage_without_inductance_v)]
+    )
     return power_runs(sets.demand.duration_s, power), power, voltage
 
 

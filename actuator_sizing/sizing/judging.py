@@ -115,7 +115,11 @@ def _held(
         known &= ~np.isnan(ratio)
         code = np.full(count, _UNKNOWN, dtype=np.int8)
         code[known] = _PASSES
-        reserve = limit.allowed_utilisation * (1.0 - limit.recommended_reserve)
+        fits = np.full(count, check.is_fit)
+        reserve = np.full(count, limit.allowed_utilisation * (1.0 - limit.recommended_reserve))
+        if check.is_fit_where is not None:
+            fits |= check.is_fit_where(sets)
+            reserve[fits] = limit.allowed_utilisation
         code[known & (ratio > reserve)] = _LOW
         beyond = known & (ratio > limit.allowed_utilisation)
         binding = is_binding(check, limit)
@@ -125,8 +129,7 @@ def _held(
         utilisation[known, column] = ratio[known]
         # Advice never governs while a limit is there to govern.
         relative[known, column] = ratio[known] / limit.allowed_utilisation if binding else -1.0
-        if check.is_fit:
-            relative[known & ~beyond, column] = -0.5
+        relative[known & ~beyond & fits, column] = -0.5
     return utilisation, codes, relative
 
 

@@ -58,7 +58,11 @@ def model_statements(case: Case, best: SetResult) -> tuple[tuple[str, str], ...]
         else f"{s.judged_winding_degc:g} °C"
     )
     said = [
-        ("model: hot winding", f"current and voltage are judged with the winding at {judged}"),
+        (
+            "model: hot winding",
+            f"current and voltage are judged with the winding at {judged}; voltage also with the motor at ambient, "
+            "where cold magnets raise it",
+        ),
         ("model: minimum bus", f"voltage and speed–torque limits are judged at {s.bus_min_v:g} V"),
         (
             "model: standstill",

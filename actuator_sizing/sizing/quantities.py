@@ -26,12 +26,12 @@ _FROM_PAIRS = (
     "current_peak_a", "current_rms_a",
     "speed_peak_rad_s", "speed_rms_rad_s", "speed_mean_abs_rad_s",
     "voltage_peak_v", "voltage_peak_without_inductance_v", "voltage_peak_at_steps_v", "voltage_available_v",
-    "copper_loss_mean_w", "friction_loss_mean_w",
+    "copper_loss_mean_w", "cable_loss_mean_w", "friction_loss_mean_w",
     "energy_airgap_motoring_j", "energy_airgap_regenerated_j",
     "energy_shaft_motoring_j", "energy_shaft_regenerated_j",
     "energy_terminals_motoring_j", "energy_terminals_regenerated_j", "power_terminals_peak_w",
     "winding_max_degc", "winding_min_degc", "winding_mean_degc", "housing_max_degc", "housing_mean_degc",
-    "inertia_ratio", "resistance_ohm", "torque_constant_nm_per_a", "judged_winding_degc", "magnet_degc",
+    "inertia_ratio", "resistance_ohm", "cable_ohm", "torque_constant_nm_per_a", "judged_winding_degc", "magnet_degc",
 )  # fmt: skip
 
 

@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
-from actuator_sizing.core.machine import amplitude_per_unit_current
+from actuator_sizing.core.machine import amplitude_per_unit_current, motor_amplitude_per_unit_current
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.cycles import CycleDemand
 from actuator_sizing.sizing.evaluation import evaluate_pairs
@@ -95,7 +95,7 @@ def nearest_drives(cycles: tuple[CycleDemand, ...], pairs: IndexArray) -> IndexA
     peak = np.max([each.current_peak_a for each in results], axis=0)
     rms = np.max([each.current_rms_a for each in results], axis=0)
     drives, s = case.drive_parameters, case.surroundings
-    amplitude = amplitude_per_unit_current(motors.current_basis)[:, None]
+    amplitude = motor_amplitude_per_unit_current(motors)[:, None]
     per_drive = amplitude_per_unit_current(drives.current_basis)[None, :]
     with np.errstate(invalid="ignore"):
         need = np.fmax(

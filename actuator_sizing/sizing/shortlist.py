@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
-from actuator_sizing.core.machine import amplitude_per_unit_current, judge
+from actuator_sizing.core.machine import amplitude_per_unit_current, judge, motor_amplitude_per_unit_current
 from actuator_sizing.core.parameters import DriveParameters
 from actuator_sizing.core.quadrature import piece_means
 from actuator_sizing.core.windows import overload_accumulator, windowed_rms
@@ -120,7 +120,7 @@ def _drive_view(
     motors = case.motor_parameters.take(pairs[:, 0])
     gearheads = case.gearhead_parameters.take(pairs[:, 1])
     drives = case.drive_parameters.take(drive)
-    amplitude = amplitude_per_unit_current(motors.current_basis)
+    amplitude = motor_amplitude_per_unit_current(motors)
     current = course(demand, motors, gearheads, judge(motors, case.surroundings)).current_a
     squared = (current * amplitude[:, None, None]) ** 2
     duration = demand.duration_s

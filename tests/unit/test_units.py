@@ -230,7 +230,7 @@ def test_groups_bind_as_written():
         ("current", "Arms peak", "peak and rms contradict each other"),
         ("voltage", "Vp-p", "'p' is not a known unit"),
         ("power", "KW", "Did you mean 'kW'"),
-        ("length", "mm²", "is not a length"),
+        ("length", "mm²", "is an area, not a length"),
         ("length", "10^40 m", "out of range"),
         ("length", "0 m", "not a factor"),
         ("length", "m^9", "exponent of 9 is out of range"),

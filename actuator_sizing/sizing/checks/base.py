@@ -199,6 +199,8 @@ class Check:
         Parts fit together or do not: such a check governs only where it fails.
     concerns : tuple of str
         How a cycle must run for the check to concern it, as in the table `cycles`; empty: in any way.
+    is_fit_where : callable or None
+        Sets → mask of the sets for which it is such a matter, and a reserve would mean nothing.
     yields_to : str
         Key of the check that fails too wherever this one is infinite, and says by how much.
     """
@@ -218,6 +220,7 @@ class Check:
     is_advice: bool = False
     is_fit: bool = False
     concerns: tuple[str, ...] = ()
+    is_fit_where: Callable[[Sets], NDArray[np.bool_]] | None = None
     yields_to: str = ""
 
     def concerns_cycle(self, runs: str) -> bool:

@@ -57,6 +57,12 @@ def _is_known(sets: Sets) -> NDArray[np.bool_]:
     return ~np.isnan(sets.once(bus_results).voltage_max_v)
 
 
+def _is_held(sets: Sets) -> NDArray[np.bool_]:
+    """Sets whose bus a chopper, or the supply, holds whatever the cycle does: the levels fit or do not."""
+    b = sets.once(bus_results)
+    return np.asarray(~np.isnan(b.threshold_v) | (b.voltage_max_v == sets.surroundings.bus_max_v))
+
+
 def _voltage_working(sets: Sets, i: int) -> str:
     b, m, top = sets.once(bus_results), _voltage_measure(sets), sets.surroundings.bus_max_v
     demand, capacity = float(m.demand[i]), float(m.capacity[i])
@@ -91,6 +97,7 @@ BUS_MAXIMUM = Check(
     ),
     measure=_voltage_measure,
     working=_voltage_working,
+    is_fit_where=_is_held,
 )
 
 
