@@ -23,6 +23,7 @@ from actuator_sizing.case.columns import (
     nearest,
 )
 from actuator_sizing.case.cycle_columns import CYCLES_COLUMNS, DUTY_TYPE_COLUMNS
+from actuator_sizing.case.strength_columns import MECHANISM_STRENGTH, STRENGTH_QUANTITIES
 from actuator_sizing.core.mechanisms import (
     LINEAR,
     LOAD,
@@ -56,6 +57,21 @@ CHECK_NAMES: tuple[tuple[str, str], ...] = (
     ("gearhead_peak_torque", "gearhead peak torque"),
     ("gearhead_mean_speed", "gearhead mean input speed"),
     ("gearhead_maximum_speed", "gearhead maximum input speed"),
+    ("gearhead_thermal_power", "gearhead thermal power"),
+    ("gearhead_life", "gearhead life"),
+    ("shaft_radial_force", "radial force on the shaft"),
+    ("shaft_axial_force", "axial force on the shaft"),
+    ("shaft_bearing_life", "life of the shaft bearings"),
+    ("screw_critical_speed", "critical speed of the screw"),
+    ("screw_dn_value", "DN value of the screw"),
+    ("screw_buckling", "buckling of the screw"),
+    ("screw_static_load", "static load of the screw"),
+    ("screw_life", "life of the screw"),
+    ("screw_pressure_speed", "pressure times speed of the nut"),
+    ("belt_tension", "belt tension"),
+    ("belt_teeth", "belt teeth in mesh"),
+    ("rack_force", "tooth force of the rack"),
+    ("coupling_torque", "coupling torque"),
     ("stop_controlled", "controlled stop"),
     ("stop_shorted", "stop by shorted winding"),
     ("stop_brake", "stop by the holding brake"),
@@ -85,6 +101,9 @@ ADVICE_CHECKS = (
 FITTING_CHECKS = ("drive_bus_voltage", "brake_resistor_value")
 DEFAULT_ALLOWED_UTILISATION = 1.0
 DEFAULT_RECOMMENDED_RESERVE = 0.1
+#: Checks whose common practice keeps a distance: a screw turns at up to 80 % of its critical speed, is loaded to half
+#: its buckling force and to two thirds of its static rating.
+ALLOWED_UTILISATIONS = {"screw_critical_speed": 0.8, "screw_buckling": 0.5, "screw_static_load": 2.0 / 3.0}
 #: Checks whose common practice differs: a bus may come within 5 % of the trip, a holding brake has 1.5 times the
 #: torque of the load.
 RECOMMENDED_RESERVES = {
@@ -179,6 +198,7 @@ COMMON_QUANTITIES = (
            positive=True, example=("", ""), unit=("mm", "deg")),
     Column("allowed drop distance", ("length", "angle"), "way a held load may sink until the holding brake carries "
            "it, when torque is removed", positive=True, example=("", ""), unit=("mm", "deg")),
+    *STRENGTH_QUANTITIES,
     Column("catalog folder", TEXT, "folder with shared catalog tables, relative to the case", example=""),
     Column("direct drive allowed", YES_NO, "whether sets without gearhead are candidates", default="yes",
            assumed="nothing speaks against it", example="yes"),
@@ -240,8 +260,9 @@ def _from_parameter(parameter: Parameter) -> Column:
 
 
 def mechanism_quantities(mechanism: type[Mechanism]) -> tuple[Column, ...]:
-    """Axis quantities of one mechanism beside the common ones."""
-    return tuple(_from_parameter(parameter) for parameter in mechanism.parameters)
+    """Axis quantities of one mechanism beside the common ones: its geometry, then what its parts stand."""
+    geometry = tuple(_from_parameter(parameter) for parameter in mechanism.parameters)
+    return (*geometry, *MECHANISM_STRENGTH.get(mechanism.name, ()))
 
 
 def axis_quantities(mechanism: type[Mechanism] | None = None) -> tuple[Column, ...]:
@@ -499,6 +520,7 @@ def quantity_kinds() -> dict[str, Column]:
 __all__ = [
     "ABSOLUTE_ZERO_DEGC",
     "ADVICE_CHECKS",
+    "ALLOWED_UTILISATIONS",
     "AXIS_COLUMNS",
     "CATALOG_TABLES",
     "CHECK_NAMES",

@@ -170,10 +170,9 @@ def check_results(several: Sets | tuple[Sets, ...], verdicts: Verdicts, index: i
         sets = by_cycle[verdicts.cycle[index, column]]
         measure: Measure = check.measure(sets)
         known = code != _UNKNOWN
+        lacking = [need for need in check.needs if not need.known(sets)[index]]
         missing = tuple(
-            need.linear_column if linear and need.linear_column else need.column
-            for need in check.needs
-            if not need.known(sets)[index]
+            need.linear_column if linear and need.linear_column else need.column for need in lacking
         )
         at = float(measure.at_s[index]) if known and measure.at_s is not None else None
         if at is not None and not np.isfinite(at):
@@ -198,6 +197,7 @@ def check_results(several: Sets | tuple[Sets, ...], verdicts: Verdicts, index: i
                 source=check.source,
                 working=check.working(sets, index) if known else "",
                 missing=missing,
+                missing_from=tuple(need.part for need in lacking),
                 is_advice=not is_binding(check, limit),
             )
         )

@@ -18,7 +18,13 @@ if TYPE_CHECKING:
 #: Checks whose working is shown: the governing one, those that fail, and the nearest to their limit.
 MOST_WORKINGS = 4
 _LONGEST_BAR = 10.0
-_GROUPS = {"motor": "Motor", "drive": "Drive", "gearhead": "Gearhead", "axis": "Axis"}
+_GROUPS = {
+    "motor": "Motor",
+    "drive": "Drive",
+    "gearhead": "Gearhead",
+    "mechanism": "Mechanism",
+    "axis": "Axis",
+}
 
 _COLUMNS = (
     Column("Check", weight=3.4),
