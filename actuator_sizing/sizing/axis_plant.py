@@ -25,6 +25,10 @@ ASSUMED_RATE_HZ = 16_000.0
 ASSUMED_DAMPING_RATIO = 0.02
 
 
+#: Place of the load torque among the commands.
+LOAD_ROW = slice(3, 4)
+
+
 def option_number(case: Case, name: str) -> float:
     """A numeric quantity of the axis table by its name; NaN where it is not stated. [-]"""
     value = case.options.get(name)
@@ -229,24 +233,31 @@ class Commands:
         """Duration of the cycle. [s]"""
         return float(self.duration_s.sum())
 
-    def at(self, time_s: FloatArray, segment: int) -> FloatArray:
+    def at(self, time_s: FloatArray, segment: int, rows: slice = slice(None)) -> FloatArray:
         """Commands at instants within one segment.
 
         Parameters
         ----------
         time_s : ndarray, shape (n,)
-            Instants from the start of the cycle; those outside the segment take its nearest end. [s]
+            Instants from the start of the cycle, ascending; those outside the segment take its nearest end. [s]
         segment : int
             Which segment. [-]
+        rows : slice
+            Which of the quantities.
 
         Returns
         -------
         ndarray, shape (6, n)
-            Angle, speed, current, load torque, position, motor angle per load unit. [-]
+            Angle, speed, current, load torque, position, motor angle per load unit; of these the rows. [-]
         """
         pieces = np.flatnonzero(self.segment == segment)
-        found = np.searchsorted(self.start_s[pieces], time_s, side="right") - 1
-        piece = pieces[np.clip(found, 0, len(pieces) - 1)]
-        x = np.clip(2.0 * (time_s - self.start_s[piece]) / self.duration_s[piece] - 1.0, -1.0, 1.0)
-        basis = legendre.legvander(x, self.series.shape[2] - 1)
-        return np.asarray(np.einsum("qnk,nk->qn", self.series[:, piece], basis))
+        starts = np.concatenate([[0], np.searchsorted(time_s, self.start_s[pieces[1:]]), [len(time_s)]])
+        series = self.series[rows]
+        found = np.empty((len(series), len(time_s)))
+        for piece, first, last in zip(pieces, starts[:-1], starts[1:], strict=True):
+            if first == last:
+                continue
+            x = 2.0 * (time_s[first:last] - self.start_s[piece]) / self.duration_s[piece] - 1.0
+            basis = legendre.legvander(np.clip(x, -1.0, 1.0), series.shape[2] - 1)
+            np.matmul(series[:, piece], basis.T, out=found[:, first:last])
+        return found

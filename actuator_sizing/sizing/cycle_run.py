@@ -11,7 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.core.control import Cascade, LoopSettings, worth_compiling
-from actuator_sizing.sizing.axis_plant import AxisPlant
+from actuator_sizing.sizing.axis_plant import LOAD_ROW, AxisPlant
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -152,7 +152,7 @@ def _advance(
     time = np.asarray(k * step, dtype=float)
     within = np.asarray(time - number * commands.cycle_s)
     angle, speed, current, _, position, ratio = commands.at(within, segment)
-    load = commands.at(within + 0.5 * step, segment)[3]
+    load = commands.at(within + 0.5 * step, segment, LOAD_ROW)[0]
     angle = angle + number * commands.angle_travel_rad
     forward = current * cascade.settings.torque_feedforward_ratio
     seen = cascade.advance(angle, speed, forward, load)
