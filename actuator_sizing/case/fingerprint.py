@@ -71,8 +71,17 @@ def fingerprint(
     for check in sorted(limits):
         limit = limits[check]
         add("limits", check, limit.applies, limit.allowed_utilisation, limit.recommended_reserve)
-    for spread in sorted(tolerances, key=lambda spread: spread.quantity):
-        add("tolerances", spread.quantity, spread.distribution, spread.width, spread.relative)
+    for spread in sorted(tolerances, key=lambda spread: (spread.table, spread.quantity)):
+        add(
+            "tolerances",
+            spread.table,
+            spread.quantity,
+            spread.distribution,
+            spread.width,
+            spread.relative,
+            spread.truncation,
+            *(part for pair in sorted(spread.correlations) for part in (*pair[0], pair[1])),
+        )
     for catalog in catalogs:
         add(catalog.table, len(catalog))
         for column in sorted(TABLES[catalog.table].columns, key=lambda column: column.key):

@@ -103,13 +103,22 @@ class Limit:
 
 @dataclass(frozen=True)
 class Tolerance:
-    """Distribution of one input quantity; kept for the robustness study."""
+    """Distribution of one input quantity, for the robustness study.
+
+    The distribution is about the value of the quantity. `width` is the standard deviation of a normal
+    distribution, before it is truncated, and the half width of a uniform or triangular one.
+    """
 
     row: int
     quantity: str
     distribution: str
-    width: float
+    width: float  # in SI, or a part of the value where `relative`
     relative: bool
+    table: str = ""  # "axis", "duty_cycle" or a catalog
+    truncation: float = 3.0  # standard deviations at which a truncated normal distribution ends
+    #: (table, quantity) of another spread -> correlation of the two as normal scores
+    correlations: tuple[tuple[tuple[str, str], float], ...] = ()
+    source: str = ""
 
 
 @dataclass(frozen=True)

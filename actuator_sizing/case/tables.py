@@ -7,7 +7,6 @@ Catalog columns are declared in `catalog_columns`; bounds are SI.
 from __future__ import annotations
 
 from dataclasses import replace
-from functools import cache
 
 from actuator_sizing.case.catalog_columns import DRIVE_COLUMNS, GEARHEAD_COLUMNS, MOTOR_COLUMNS
 from actuator_sizing.case.columns import (
@@ -416,17 +415,25 @@ LIMIT_COLUMNS = (
            example="10", unit="%"),
 )  # fmt: skip
 
+DISTRIBUTIONS = ("normal", "uniform", "triangular", "truncated normal")
+
 TOLERANCE_COLUMNS = (
     Column("quantity", TEXT, "name of an axis quantity, or of a motor, gearhead or drive column",
            required=True,
-           example="moving mass"),
+           example="resistance terminal-to-terminal"),
     Column("distribution", WORDS, "shape of the spread", required=True,
-           words=("normal", "uniform", "triangular"), example="normal"),
+           words=DISTRIBUTIONS, example="normal"),
     Column("width", TEXT, "standard deviation of a normal, half width of a uniform or triangular "
            "distribution",
-           required=True, example="5"),
+           required=True, example="3"),
     Column("unit", TEXT, "% of the value, or a unit of the quantity", required=True, example="%"),
-    Column("source", TEXT, "where the spread comes from", example="scale tolerance"),
+    Column("table", WORDS, "where the quantity stands; needed where several tables have one of that name",
+           words=("axis", "duty_cycle", "motors", "gearheads", "drives")),
+    Column("truncation", "ratio", "standard deviations from the value at which a truncated normal distribution ends",
+           default=3.0, assumed="three standard deviations", positive=True, maximum=10.0),
+    Column("correlation", TEXT, "how it varies together with other quantities of this table, -1 to 1: 'torque "
+           "constant 0.9; inductance 0.8'"),
+    Column("source", TEXT, "where the spread comes from", example="winding tolerance of the maker"),
 )  # fmt: skip
 
 TABLES: dict[str, Table] = {
@@ -457,7 +464,7 @@ TABLES: dict[str, Table] = {
         Table("drives", "One row is one drive.", DRIVE_COLUMNS, required=True, is_catalog=True),
         Table("limits", "One row says how one check is judged; checks not listed keep their defaults.",
               LIMIT_COLUMNS),
-        Table("tolerances", "One row is the spread of one input quantity.", TOLERANCE_COLUMNS),
+        Table("tolerances", "One row is the spread of one input quantity.", TOLERANCE_COLUMNS, repeats_names=True),
         Table("map", "One row is one point of the curve on which the load follows the driven shaft, for the "
               "tabulated mechanisms; a smooth spline goes through the points.", MAP_COLUMNS),
         Table("inertias", "One row is one part of the inertia inventory; its inertia is added to that of the axis.",
@@ -501,22 +508,6 @@ def table_for(name: str, mechanism: type[Mechanism] | None, stated_at: str = "")
     return replace(table, columns=tuple(resolved(column) for column in table.columns))
 
 
-@cache
-def quantity_kinds() -> dict[str, Column]:
-    """Every quantity that a tolerance may name: folded name -> its declaration."""
-    found: dict[str, Column] = {}
-    for column in (
-        *axis_quantities(),
-        *MOTOR_COLUMNS,
-        *GEARHEAD_COLUMNS,
-        *DRIVE_COLUMNS,
-        *DUTY_CYCLE_COLUMNS,
-    ):
-        if column.is_number:
-            found.setdefault(fold(column.name), column)
-    return found
-
-
 __all__ = [
     "ABSOLUTE_ZERO_DEGC",
     "ADVICE_CHECKS",
@@ -527,6 +518,7 @@ __all__ = [
     "COMMON_QUANTITIES",
     "DEFAULT_ALLOWED_UTILISATION",
     "DEFAULT_RECOMMENDED_RESERVE",
+    "DISTRIBUTIONS",
     "FITTING_CHECKS",
     "DRIVE_COLUMNS",
     "DUTY_CYCLE_COLUMNS",
@@ -554,6 +546,5 @@ __all__ = [
     "key_of",
     "mechanism_quantities",
     "nearest",
-    "quantity_kinds",
     "table_for",
 ]

@@ -14,7 +14,7 @@ from actuator_sizing.case.drives import understand_drives
 from actuator_sizing.case.fingerprint import fingerprint
 from actuator_sizing.case.gearheads import understand_gearheads
 from actuator_sizing.case.inertias import at_the_motor, table_entries, understand_parts, with_parts
-from actuator_sizing.case.judging import understand_limits, understand_tolerances
+from actuator_sizing.case.judging import understand_limits
 from actuator_sizing.case.measuring import understand_recording
 from actuator_sizing.case.mechanics import build_mechanism, check_motion, understand_map
 from actuator_sizing.case.model import MISSING, ORIGINS, STATED, Case, Catalog, Cycle, Entry
@@ -24,6 +24,7 @@ from actuator_sizing.case.parsed_tables import ParsedTable
 from actuator_sizing.case.parsing import parse_table
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.raw_tables import RawTable
+from actuator_sizing.case.spreads import understand_tolerances
 from actuator_sizing.case.tables import TABLES, table_for
 from actuator_sizing.core.mechanisms import SHAFT
 from actuator_sizing.errors import NOTE
@@ -91,7 +92,7 @@ def understand(
                         remedy="Add the table, or set 'direct drive allowed' to yes.")  # fmt: skip
     limits, limit_entries = understand_limits(parsed.get("limits"), problems)
     decimal = raw["tolerances"].decimal if "tolerances" in raw else ""
-    tolerances = understand_tolerances(parsed.get("tolerances"), decimal, problems)
+    tolerances = understand_tolerances(parsed.get("tolerances"), decimal, axis, problems)
     if problems.has_errors:
         return None
     if not (
