@@ -48,7 +48,9 @@ def ranking_key(
     if ranked_by == "reserve":
         key = verdicts.severity
     elif ranked_by == "energy":
-        key = sum(_energy(case, each) * weight for each, weight in zip(several, _weights(several), strict=True))
+        key = sum(
+            _energy(case, each) * weight for each, weight in zip(several, _weights(several), strict=True)
+        )
     else:
         name = "price" if ranked_by == "price" else "mass_kg"
         key = sum(getattr(part, name) for part in (sets.motors, sets.gearheads, sets.drives))
