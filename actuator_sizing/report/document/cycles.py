@@ -31,6 +31,23 @@ _MEANING = {
     f"temperature that the repeating cycles bring; {_FOLLOWED}",
 }
 
+_MIX = {
+    "rest_share_ratio": "time left over, at rest without current",
+    "copper_loss_mean_w": "mean copper loss, winding at judged temperature",
+    "friction_loss_mean_w": "mean friction and iron loss",
+    "speed_mean_abs_rad_s": "mean speed of motor and gearhead input",
+    "torque_rms_nm": "RMS torque (air gap)",
+    "current_rms_a": "RMS current",
+    "speed_rms_rad_s": "RMS speed",
+    "energy_terminals_motoring_per_hour_j": "energy taken at the motor terminals in one hour",
+    "energy_terminals_regenerated_per_hour_j": "energy given back at the motor terminals in one hour",
+    "gearhead_equivalent_torque_nm": "equivalent torque of the gearhead",
+    "winding_mix_degc": "mean temperature of the winding",
+    "housing_mix_degc": "mean temperature of the housing",
+    "housing_time_constant_s": "time constant of the housing",
+    "relative_thermal_life_ratio": "relative thermal life",
+}
+
 
 def cycles_section(comparison: Comparison, figures: Iterable[str] = ()) -> Section | None:
     """Hold the cycles of the leading set against each other; None where the case has one.
@@ -105,9 +122,11 @@ def _mix(comparison: Comparison) -> list[Block]:
     assert mix is not None
     rows = []
     for key, value in mix.items():
-        words, unit = name_and_unit(key)
+        unit = name_and_unit(key)[1]
         shown = "not known" if value is None else number(value) if not unit else quantity(value, unit)
-        rows.append(row(words, shown))
+        if key.endswith("share_ratio"):
+            shown = percent(value, 0.0)
+        rows.append(row(_MIX.get(key, key), shown))
     slow = mix.get("housing_time_constant_s")
     turns = "the time constant of the housing"
     if slow is not None:
