@@ -168,7 +168,8 @@ def paced(
         return segments
     limited = [key for key in _LIMITS if np.isfinite(parsed.number(key)[rows]).any()]
     if by_angle or (factor < 1.0 and limited):
-        problems.report(courses.pace_table, courses.pace_row, "cycles per minute", got=f"a cycle of {courses.cycle_s:.6g} s",
+        problems.report(courses.pace_table, courses.pace_row, "cycles per minute",
+                        got=f"a cycle of {courses.cycle_s:.6g} s",
                         allowed=f"{total:.6g} s, which the rows take" if by_angle
                         else f"at least {total:.6g} s within the limits of the duty cycle",
                         remedy="Give every segment a master angle." if by_angle

@@ -12,14 +12,14 @@ DUTY_TYPES = ("S1", "S2", "S3", "S4", "S5", "S6", "S8", "S10")
 
 CYCLES_COLUMNS = (
     Column("cycle", TEXT, "name of the cycle, as in duty_cycle or duty_types", required=True, example="normal"),
-    Column("runs", WORDS, "repeats: again and again, temperatures in their periodic state; short-time: from cold, "
-           "and cold again before the next run; once from cold: a start after a long rest; once from warm: out of the "
-           "hottest state that the repeating cycles reach. After a cycle that runs once, the first repeating one "
-           "follows", words=RUNS_WORDS, default=REPEATS, assumed="a cycle repeats", example=REPEATS),
+    Column("runs", WORDS, "repeats: again and again, temperatures in their periodic state; short-time: from "
+           "cold, and cold again before the next run; once from cold: a start after a long rest; once from warm: out "
+           "of the hottest state that the repeating cycles reach. After a cycle that runs once, the first repeating "
+           "one follows", words=RUNS_WORDS, default=REPEATS, assumed="a cycle repeats", example=REPEATS),
     Column("share of time", "ratio", "part of the operating time that this cycle takes; what is left over is rest "
            "without current. Weighs energy, losses and wear of the mix; each cycle must pass all the same",
            minimum=0.0, maximum=1.0, example="90", unit="%"),
-    Column("repetitions per hour", "count", "in place of the share: how often the cycle runs in one hour of operation",
+    Column("repetitions per hour", "count", "in place of the share: how often the cycle runs in an hour of operation",
            positive=True, maximum=1.0e6),
     Column("cycles per minute", "count", "pace of this cycle; that of the axis table when empty", positive=True,
            maximum=1.0e6),
@@ -29,9 +29,9 @@ CYCLES_COLUMNS = (
 DUTY_TYPE_COLUMNS = (
     Column("cycle", TEXT, "name of the cycle that is made; rows of one name belong together (S8, S10)", required=True,
            example="hoist"),
-    Column("duty type", WORDS, "S1 continuous; S2 short-time; S3 intermittent; S4 the same with starting; S5 the same "
-           "with electric braking; S6 continuous with intermittent load; S8 related changes of load and speed, one row "
-           "each; S10 discrete constant loads, one row and one cycle each", required=True, words=DUTY_TYPES,
+    Column("duty type", WORDS, "S1 continuous; S2 short-time; S3 intermittent; S4 the same with starting; S5 the "
+           "same with electric braking; S6 continuous with intermittent load; S8 related changes of load and speed, "
+           "one row each; S10 discrete constant loads, one row and one cycle each", required=True, words=DUTY_TYPES,
            example="S5"),
     Column("speed", ("linear speed", "angular speed"), "signed speed under load; 0 only in S10", required=True,
            example=("0.1", "120"), unit=("m/s", "rpm")),

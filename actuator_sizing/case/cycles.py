@@ -57,9 +57,7 @@ def understand_cycles(
     return _as_listed(tuple(made), listed, problems)
 
 
-def _groups(
-    parsed: ParsedTable, others: bool, problems: ProblemList
-) -> list[tuple[str, NDArray[np.intp]]]:
+def _groups(parsed: ParsedTable, others: bool, problems: ProblemList) -> list[tuple[str, NDArray[np.intp]]]:
     """Rows of each cycle by its name; an empty cell means the cycle of the row above."""
     groups: dict[str, tuple[str, list[int]]] = {}
     name = ""

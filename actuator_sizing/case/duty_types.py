@@ -44,7 +44,9 @@ _NEEDS = {
     "S8": ("operating_time",),
 }
 _SEVERAL = ("S8", "S10")  # types with one row for each load
-_LEFT_OUT = "How the speed is reached and left is left out, as the duty type has it: peak torque is that of the load."
+_LEFT_OUT = (
+    "How the speed is reached and left is left out, as the duty type has it: peak torque is that of the load."
+)
 
 
 @dataclass(frozen=True)
@@ -66,9 +68,7 @@ class _Load:
     note: str
 
 
-def understand_duty_types(
-    parsed: ParsedTable, taken: set[str], problems: ProblemList
-) -> tuple[Cycle, ...]:
+def understand_duty_types(parsed: ParsedTable, taken: set[str], problems: ProblemList) -> tuple[Cycle, ...]:
     """Make the cycles of every duty type.
 
     Parameters
@@ -161,7 +161,8 @@ def _times_agree(parsed: ParsedTable, index: int, wrong: object) -> bool:
               "alone", "Fill in the cyclic duration factor.")  # fmt: skip
         return False
     if load.factor == 1.0:
-        wrong("cyclic_duration_factor", "100 %", f"below 100 % in {load.duty_type}", "Use S1 for a load without rest.")
+        wrong("cyclic_duration_factor", "100 %", f"below 100 % in {load.duty_type}",
+              "Use S1 for a load without rest.")  # fmt: skip
         return False
     if known[2] and not known[0] and _times(load)[0] <= 0.0:
         wrong("cyclic_duration_factor", parsed.shown_cell("cyclic_duration_factor", index),

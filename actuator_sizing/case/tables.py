@@ -445,8 +445,8 @@ TABLES: dict[str, Table] = {
         Table("duty_cycle", "One row is one segment of the motion; the rows follow each other and repeat.",
               DUTY_CYCLE_COLUMNS, required=True, repeats_names=True),
         Table("cycles", "One row says how one named cycle runs, and how often.", CYCLES_COLUMNS, in_template=False),
-        Table("duty_types", "One row is one load of a duty type of IEC 60034-1, made into a cycle; beside or in place "
-              "of the duty cycle.", DUTY_TYPE_COLUMNS, repeats_names=True, in_template=False),
+        Table("duty_types", "One row is one load of a duty type of IEC 60034-1, made into a cycle; beside or in "
+              "place of the duty cycle.", DUTY_TYPE_COLUMNS, repeats_names=True, in_template=False),
         Table("points", "One row is one point that a segment with the motion law 'spline' passes.",
               POINT_COLUMNS, repeats_names=True, in_template=False),
         Table("process", "One row is one value of a process force along a segment.",
@@ -484,11 +484,7 @@ def table_for(name: str, mechanism: type[Mechanism] | None, stated_at: str = "")
     table = TABLES[name]
     if mechanism is None or name not in ("duty_cycle", "duty_types", "map"):
         return table
-    moved = (
-        ROTARY
-        if (stated_at or mechanism.motion_at) == SHAFT and name != "map"
-        else mechanism.coordinate
-    )
+    moved = ROTARY if (stated_at or mechanism.motion_at) == SHAFT and name != "map" else mechanism.coordinate
     if mechanism.drives_linear_motor:
         moved = LINEAR
     carried = LINEAR if mechanism.carries_mass() else ROTARY

@@ -2,9 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-
 import numpy as np
+from numpy.typing import ArrayLike
 
 #: Cycle to which a cyclic duration factor refers where nothing else is said; IEC 60034-1 (from memory).
 USUAL_CYCLE_S = 600.0
@@ -56,14 +55,14 @@ def usual_times(duration_factor: float) -> tuple[float, float]:
     return USUAL_CYCLE_S * duration_factor, USUAL_CYCLE_S * (1.0 - duration_factor)
 
 
-def relative_life(share: Sequence[float], excess_k: Sequence[float]) -> float:
+def relative_life(share: ArrayLike, excess_k: ArrayLike) -> float:
     """Thermal life of an insulation under loads that take turns, over its life at the reference temperature.
 
     Parameters
     ----------
-    share : sequence of float
+    share : array_like, shape (n,)
         Part of the time spent at each load; together 1. [-]
-    excess_k : sequence of float
+    excess_k : array_like, shape (n,)
         Temperature of the winding at each load less the reference temperature. [K]
 
     Returns

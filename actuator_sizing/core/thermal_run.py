@@ -28,8 +28,9 @@ class SingleRun:
     ----------
     known : ndarray of bool
         Whether the data suffice.
-    is_bounded : ndarray of bool
-        Whether the temperatures stay numbers that mean something; False also where not known.
+    has_equilibrium : ndarray of bool
+        Whether the run ends at temperatures that mean something; False also where not known. A run needs no
+        equilibrium: the name is that of `PeriodicState`, for which the same checks ask.
     winding_max_degc, winding_min_degc, winding_mean_degc : ndarray
         Winding over the run. [°C]
     winding_max_time_s : ndarray
@@ -39,7 +40,7 @@ class SingleRun:
     """
 
     known: NDArray[np.bool_]
-    is_bounded: NDArray[np.bool_]
+    has_equilibrium: NDArray[np.bool_]
     winding_max_degc: FloatArray
     winding_min_degc: FloatArray
     winding_mean_degc: FloatArray

@@ -124,7 +124,12 @@ def compare(
 
     for number, each in enumerate(cycles):
         moving = add_dynamics(
-            each.case, each.demand, sets[number], index, partial(leading, number), _stage(progress, "simulation")
+            each.case,
+            each.demand,
+            sets[number],
+            index,
+            partial(leading, number),
+            _stage(progress, "simulation"),
         )
         sets = (*sets[:number], moving, *sets[number + 1 :])
     verdicts = judge_sets(sets, checks, limits)

@@ -93,9 +93,7 @@ def _start(
     return ThermalStart(winding, np.max([pairs.housing_max_degc for pairs in warm], axis=0), following)
 
 
-def _part(
-    progress: Callable[[float], None] | None, done: int, count: int
-) -> Callable[[float], None] | None:
+def _part(progress: Callable[[float], None] | None, done: int, count: int) -> Callable[[float], None] | None:
     if progress is None:
         return None
     return lambda part: progress((done + part) / count)

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable
 from dataclasses import dataclass, fields, replace
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -43,8 +44,9 @@ class DynamicResults:
 
     def take(self, rows: slice) -> DynamicResults:
         """Some of the sets."""
-        arrays = {f.name: getattr(self, f.name) for f in fields(self)}
-        return replace(self, **{n: v[rows] for n, v in arrays.items() if isinstance(v, np.ndarray)})
+        values = {f.name: getattr(self, f.name) for f in fields(self)}
+        taken: dict[str, Any] = {n: v[rows] for n, v in values.items() if isinstance(v, np.ndarray)}
+        return replace(self, **taken)
 
 
 def add_dynamics(

@@ -15,8 +15,8 @@ from actuator_sizing.core.capability import terminal_voltage
 from actuator_sizing.core.machine import JudgedMotor, current_of_torque, judge, judge_cold
 from actuator_sizing.core.parameters import GearheadParameters, MotorParameters, Surroundings, _Columns
 from actuator_sizing.core.quadrature import largest, largest_magnitude, signed_integrals
-from actuator_sizing.core.thermal import periodic_state
-from actuator_sizing.core.thermal_run import single_run
+from actuator_sizing.core.thermal import PeriodicState, periodic_state
+from actuator_sizing.core.thermal_run import SingleRun, single_run
 from actuator_sizing.sizing.demand import Demand
 from actuator_sizing.sizing.pair_course import (
     PairCourse,
@@ -157,14 +157,13 @@ def _evaluate_chunk(
     energy_terminals = signed_integrals(duration, terminals)
 
     network, loss = thermal_network(motors, surroundings), heat_loss(demand, motors, judged, c)
+    temperatures: PeriodicState | SingleRun
     if start is None:
         temperatures = periodic_state(network, loss, surroundings.ambient_degc)
-        is_bounded = temperatures.has_equilibrium
     else:
         loss = start.with_following(loss, motors, gearheads, judged)
         state = start.winding_degc, start.housing_degc
         temperatures = single_run(network, loss, surroundings.ambient_degc, *state)
-        is_bounded = temperatures.is_bounded
     reflected = demand.load_inertia / gearheads.ratio**2
     return PairResults(
         torque_peak_nm=torque_peak,
@@ -199,7 +198,7 @@ def _evaluate_chunk(
         energy_terminals_regenerated_j=energy_terminals[1],
         power_terminals_peak_w=largest(terminals)[0],
         thermal_known=temperatures.known,
-        has_equilibrium=is_bounded,
+        has_equilibrium=temperatures.has_equilibrium,
         winding_max_degc=temperatures.winding_max_degc,
         winding_max_at_s=temperatures.winding_max_time_s,
         winding_min_degc=temperatures.winding_min_degc,

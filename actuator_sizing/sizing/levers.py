@@ -290,9 +290,7 @@ def _as_changed(case: Case, cycles: tuple[CycleDemand, ...]) -> tuple[CycleDeman
     """Cycles of a changed case: demands that are known still hold, the rest of the case may be another."""
     if not cycles:
         return cycle_demands(case)
-    return tuple(
-        CycleDemand(one, known.demand) for one, known in zip(case.by_cycle(), cycles, strict=True)
-    )
+    return tuple(CycleDemand(one, known.demand) for one, known in zip(case.by_cycle(), cycles, strict=True))
 
 
 def excess(case: Case, cycles: tuple[CycleDemand, ...] = ()) -> float:

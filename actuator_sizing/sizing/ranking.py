@@ -48,7 +48,7 @@ def ranking_key(
     if ranked_by == "reserve":
         key = verdicts.severity
     elif ranked_by == "energy":
-        key = sum(_energy(case, each) * weight for each, weight in zip(several, _weights(several), strict=True))
+        key = np.asarray(_weights(several)) @ np.array([_energy(case, each) for each in several])
     else:
         name = "price" if ranked_by == "price" else "mass_kg"
         key = sum(getattr(part, name) for part in (sets.motors, sets.gearheads, sets.drives))

@@ -61,9 +61,7 @@ def evaluate_sets(
     Sets
         Everything the checks measure, in the order of `index`. [-]
     """
-    pairs, first_set, pair_of_set = np.unique(
-        index[:, :2], axis=0, return_index=True, return_inverse=True
-    )
+    pairs, first_set, pair_of_set = np.unique(index[:, :2], axis=0, return_index=True, return_inverse=True)
     pair_of_set = pair_of_set.reshape(-1)
     results: list[PairResults] = []
     order: list[IndexArray] = []

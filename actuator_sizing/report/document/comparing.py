@@ -109,6 +109,10 @@ def titles_of(sets: Iterable[SetResult]) -> dict[str, str]:
     return {check.check: check.title for item in sets for check in item.checks}
 
 
+def _named(check: CheckResult) -> str:
+    return f"{check.title}, cycle {clean(check.cycle, 40)}" if check.cycle else check.title
+
+
 def _losers_table(losers: list[SetResult]) -> Table:
     columns = (
         Column("Set", weight=3.0),
@@ -130,7 +134,7 @@ def _losers_table(losers: list[SetResult]) -> Table:
         rows.append(
             row(
                 describe_set(item),
-                check.title if check else check_name(item.governing_check),
+                _named(check) if check else check_name(item.governing_check),
                 f"{demand} {unit}".strip(),
                 f"{capacity} {unit}".strip(),
                 percent(check.utilisation, check.allowed) if check else "not known",
