@@ -302,6 +302,11 @@ def _check(axis: Axis, problems: ProblemList) -> None:
         problems.report(_TABLE, axis.rows.get("chopper_threshold"), "chopper threshold",
                         got=f"{threshold:g} V", allowed=f"above the maximum bus voltage of {high:g} V",
                         remedy="Below it the chopper burns power from the supply.", severity=WARNING)  # fmt: skip
+    hysteresis = axis.number("chopper_hysteresis")
+    if hysteresis >= threshold:
+        problems.report(_TABLE, axis.rows.get("chopper_hysteresis"), "chopper hysteresis",
+                        got=f"{hysteresis:g} V", allowed=f"below the chopper threshold of {threshold:g} V",
+                        remedy="It is a difference, not the voltage at which it switches off.")  # fmt: skip
     length, section = (axis.number(f"motor_cable_{which}") for which in ("length", "cross_section"))
     if np.isnan(length) != np.isnan(section):
         known, other = ("length", "cross-section") if np.isnan(section) else ("cross-section", "length")

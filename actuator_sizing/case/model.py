@@ -167,6 +167,7 @@ class Case:
     problems: tuple[Problem, ...]  # warnings and notes only; errors never make a Case
     fingerprint: str
     recording: Recording | None = None  # a measured cycle in place of planned segments
+    resistor_pulses: tuple[tuple[float, float], ...] = ()  # of the brake resistor: length [s] and energy [J]
     parts: tuple[Part, ...] = ()  # inertia inventory; already added to mechanism and gearhead parameters
     #: every cycle, `segments` being those of the first; empty: one without a name, which repeats
     cycles: tuple[Cycle, ...] = ()

@@ -45,13 +45,16 @@ CHECK_NAMES: tuple[tuple[str, str], ...] = (
     ("drive_peak_time", "drive peak time"),
     ("drive_bus_voltage", "drive bus voltage range"),
     ("bus_maximum_voltage", "highest bus voltage"),
+    ("chopper_release", "chopper release voltage"),
     ("bus_sag", "voltage on a sagging bus"),
+    ("bus_minimum_voltage", "lowest bus voltage"),
     ("brake_resistor_value", "brake resistor value"),
     ("brake_resistor_peak_power", "brake resistor peak power"),
     ("brake_resistor_mean_power", "brake resistor mean power"),
     ("brake_resistor_pulse_energy", "brake resistor pulse energy"),
     ("supply_mean_power", "supply mean power"),
     ("supply_peak_power", "supply peak power"),
+    ("supply_charging_current", "supply charging current"),
     ("gearhead_equivalent_torque", "gearhead equivalent torque"),
     ("gearhead_peak_torque", "gearhead peak torque"),
     ("gearhead_mean_speed", "gearhead mean input speed"),
@@ -97,7 +100,7 @@ ADVICE_CHECKS = (
     "inertia_ratio",
 )
 #: Parts fit or do not; a reserve would mean nothing.
-FITTING_CHECKS = ("drive_bus_voltage", "brake_resistor_value")
+FITTING_CHECKS = ("drive_bus_voltage", "chopper_release", "brake_resistor_value")
 DEFAULT_ALLOWED_UTILISATION = 1.0
 DEFAULT_RECOMMENDED_RESERVE = 0.1
 #: Checks whose common practice keeps a distance: a screw turns at up to 80 % of its critical speed, is loaded to half
@@ -167,11 +170,16 @@ COMMON_QUANTITIES = (
     Column("current loop rise time", "time", "time in which the drive can change the current at a step of "
            "acceleration", default=1.0e-3, assumed="common for a digital current loop", positive=True,
            maximum=10.0, example="1", unit="ms"),
+    Column("supply", WORDS, "what feeds the bus: mains through a rectifier, a DC supply, or a battery, which also "
+           "takes regenerated energy", words=("rectified mains", "DC supply", "battery"), default="rectified mains",
+           assumed="usual for a drive with its own rectifier", example=""),
     Column("bus capacitance", "capacitance", "capacitance on the DC bus besides the drive's own", minimum=0.0,
            example="680", unit="µF"),
     Column("chopper threshold", "voltage", "bus voltage at which the brake chopper switches on",
            positive=True,
            example="385", unit="V"),
+    Column("chopper hysteresis", "voltage", "how far below its threshold the brake chopper switches off again",
+           minimum=0.0, maximum=1.0e4, example="", unit="V"),
     Column("brake resistor", "resistance", "resistance of the brake resistor", positive=True, example="40",
            unit="Ω"),
     Column("brake resistor continuous power", "power", "power the brake resistor stands for ever", positive=True,
@@ -188,6 +196,12 @@ COMMON_QUANTITIES = (
            "voltage and adds loss", positive=True, maximum=1.0e4, example="", unit="m"),
     Column("motor cable cross-section", "area", "cross-section of one conductor of that cable", positive=True,
            maximum=1.0e-2, example="", unit="mm²"),
+    Column("supply current limit", "current", "largest current the supply gives; beyond it only the capacitors "
+           "help", positive=True, maximum=1.0e6, example="", unit="A"),
+    Column("supply charging current", "current", "largest current that a battery, or a supply that feeds back, "
+           "takes", positive=True, maximum=1.0e6, example="", unit="A"),
+    Column("other power on the bus", "power", "what other loads take from the bus all the time", minimum=0.0,
+           maximum=1.0e9, example="", unit="W"),
     Column("supply feeds back", YES_NO, "whether the supply returns regenerated energy to the mains",
            default="no", assumed="a rectifier does not feed back", example="no"),
     Column("stop reaction time", "time", "from the event that asks for a stop until the drive or the brake is told",
@@ -375,6 +389,13 @@ MAP_COLUMNS = (
            unit=("mm", "deg")),
 )  # fmt: skip
 
+RESISTOR_PULSE_COLUMNS = (
+    Column("pulse duration", "time", "length of a pulse; longer from row to row", required=True, positive=True,
+           maximum=1.0e6, example="1", unit="s"),
+    Column("pulse energy", "energy", "energy that the brake resistor takes in one pulse of that length",
+           required=True, positive=True, maximum=1.0e9, example="2", unit="kJ"),
+)  # fmt: skip
+
 INERTIA_SHAPES = ("solid cylinder", "hollow cylinder", "block", "point mass", "screw", "pulley", "belt", "coupling",
                   "brake")  # fmt: skip
 INERTIA_PLACES = ("driven shaft", "load", "motor")
@@ -467,6 +488,8 @@ TABLES: dict[str, Table] = {
         Table("tolerances", "One row is the spread of one input quantity.", TOLERANCE_COLUMNS, repeats_names=True),
         Table("map", "One row is one point of the curve on which the load follows the driven shaft, for the "
               "tabulated mechanisms; a smooth spline goes through the points.", MAP_COLUMNS),
+        Table("resistor_pulses", "One row is one point of the pulse curve of the brake resistor, in place of 'brake "
+              "resistor pulse energy'.", RESISTOR_PULSE_COLUMNS, in_template=False),
         Table("inertias", "One row is one part of the inertia inventory; its inertia is added to that of the axis.",
               INERTIA_COLUMNS),
     )

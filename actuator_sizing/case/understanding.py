@@ -24,6 +24,7 @@ from actuator_sizing.case.parsed_tables import ParsedTable
 from actuator_sizing.case.parsing import parse_table
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.raw_tables import RawTable
+from actuator_sizing.case.resistor import understand_pulses
 from actuator_sizing.case.spreads import understand_tolerances
 from actuator_sizing.case.tables import TABLES, table_for
 from actuator_sizing.core.mechanisms import SHAFT
@@ -77,6 +78,7 @@ def understand(
             table = "duty_types" if cycle.duty_type else "duty_cycle"
             check_motion(mechanism, at_shaft, cycle.segments, problems, table)
     parts = understand_parts(parsed.get("inertias"), axis.mechanism, problems)
+    pulses = understand_pulses(parsed.get("resistor_pulses"), problems)
     motors, drives = parsed.get("motors"), parsed.get("drives")
     motor_parameters = understand_motors(motors) if motors else None
     drive_parameters = understand_drives(drives) if drives else None
@@ -107,6 +109,7 @@ def understand(
         *(recording.entries if recording else ()),
         *table_entries(parsed.get("map") if mechanism.needs_map else None),
         *table_entries(parsed.get("inertias")),
+        *table_entries(parsed.get("resistor_pulses")),
         *limit_entries,
     )
     catalogs = to_catalog(motors), to_catalog(gearheads), to_catalog(drives)
@@ -115,6 +118,7 @@ def understand(
         path=path,
         mechanism=with_parts(mechanism, parts),
         parts=parts,
+        resistor_pulses=pulses,
         surroundings=surroundings_of(axis),
         segments=cycles[0].segments,
         cycles=cycles if any(cycle.name for cycle in cycles) else (),
