@@ -309,7 +309,7 @@ class Stretch:
         blocks, n = -(-count // self._block), self._n
         starts = np.empty((blocks + 1, len(joint)))
         # Taken from ξ itself: polynomials carried along by powers would gather rounding.
-        at = start + self._step * self._block * np.arange(blocks + 1)
+        at = np.asarray(start + self._step * self._block * np.arange(blocks + 1), dtype=float)
         starts[:, n:] = polynomials(at, len(joint) - n)
         starts[0, :n] = joint[:n]
         for k in range(blocks):

@@ -46,7 +46,7 @@ class _Span:
     count: int
 
 
-def run_cycle(axis: AxisPlant, settings: LoopSettings, band: float, cycles: int) -> Run:
+def run_cycle(axis: AxisPlant, settings: LoopSettings, band: float, cycles: int, rows: int = _ROWS) -> Run:
     """Run the duty cycle in closed loop.
 
     Parameters
@@ -59,21 +59,23 @@ def run_cycle(axis: AxisPlant, settings: LoopSettings, band: float, cycles: int)
         Settling band in the coordinate of the load; NaN: settling is not judged. [-]
     cycles : int
         How many cycles, one after the other. [-]
+    rows : int
+        How many rows of the series are kept. [-]
 
     Returns
     -------
     Run
-        Series thinned to 20 000 rows; errors, peaks and settling from every sample. [-]
+        Series thinned to its rows; errors, peaks and settling from every sample. [-]
     """
     commands, case = axis.commands, axis.case
     samples = math.floor(commands.cycle_s * cycles / settings.sample_time_s)
-    stride = max(1, math.ceil(samples / _ROWS))
+    stride = max(1, math.ceil(samples / rows))
     first = commands.at(np.zeros(1), 0)[:, 0]
+    follows = has_lasting_modes(settings)
     cascade = Cascade(
         axis.plant(case.segments[0]), settings, angle_rad=float(first[0]), speed_rad_s=float(first[1]),
-        load_torque_nm=float(first[3]), is_compiled=worth_compiling(samples),
+        load_torque_nm=float(first[3]), is_compiled=not follows and worth_compiling(samples),
     )  # fmt: skip
-    follows = has_lasting_modes(settings) and not cascade.is_compiled
     runner = _Runner(axis, cascade, Tally(axis, band), stride)
     current_segment = 0
     for span in _spans(
@@ -139,7 +141,7 @@ class _Runner:
     def advance(self, span: _Span) -> None:
         """Run over one span."""
         commands, step = self.axis.commands, self.cascade.settings.sample_time_s
-        time = np.arange(span.first, span.first + span.count) * step
+        time = np.asarray(np.arange(span.first, span.first + span.count) * step, dtype=float)
         begin = span.cycle * commands.cycle_s
         # Thinned by the number of the sample, so that spans fit together.
         keep = np.arange(-span.first % self.stride, span.count, self.stride)
@@ -196,8 +198,8 @@ class _Runner:
         """Motor angle per unit of the load's coordinate."""
         commands = self.axis.commands
         if commands.has_constant_ratio:
-            return commands.series[5, :1, 0]
-        return commands.at(within_s, span.segment, slice(5, 6))[0]
+            return np.asarray(commands.series[5, :1, 0])
+        return np.asarray(commands.at(within_s, span.segment, slice(5, 6))[0])
 
 
 def _notes(axis: AxisPlant, cycles: int, stride: int) -> tuple[str, ...]:

@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.core.plant import Plant
-from actuator_sizing.core.quadrature import NODES, antiderivative_matrix, to_series
+from actuator_sizing.core.quadrature import antiderivative_matrix, to_series
 from actuator_sizing.core.stretches import polynomials, shift_matrix
 from actuator_sizing.sizing.set_model import SetModel
 
@@ -18,6 +18,7 @@ FloatArray = NDArray[np.float64]
 
 #: Place of the load torque among the commands.
 LOAD_ROW = slice(3, 4)
+_SHORT = 64  # samples of a piece below which it is not worth a product of its own
 _SAME = 1e-13  # of a ratio: rounding of its series
 _NEGLIGIBLE = 1e-15  # of the largest coefficient of a command: less than its rounding
 
@@ -64,7 +65,7 @@ class Commands:
         )
         coefficients = nodes @ to_series(nodes.shape[2]).T
         half = 0.5 * demand.duration_s[:, None]
-        angle = (coefficients[0] @ antiderivative_matrix(NODES).T) * half
+        angle = (coefficients[0] @ antiderivative_matrix(nodes.shape[2]).T) * half
         gained = angle.sum(axis=1)  # every Legendre polynomial is one at the end of its piece
         angle[:, 0] += np.concatenate([[0.0], np.cumsum(gained)[:-1]])
         padded = np.concatenate([coefficients, np.zeros((*coefficients.shape[:2], 1))], axis=2)
@@ -82,7 +83,9 @@ class Commands:
     def has_constant_ratio(self) -> bool:
         """Whether the motor turns by the same angle for each unit of the load's coordinate."""
         first = self.series[5, 0, 0]
-        return bool(np.all(np.abs(self.series[5] - first * np.eye(1, NODES + 1)) <= _SAME * abs(first)))
+        return bool(
+            np.all(np.abs(self.series[5] - first * np.eye(1, self.series.shape[2])) <= _SAME * abs(first))
+        )
 
     def at(self, time_s: FloatArray, segment: int, rows: slice = slice(None)) -> FloatArray:
         """Commands at instants within one segment.
@@ -104,11 +107,15 @@ class Commands:
         pieces = np.flatnonzero(self.segment == segment)
         starts = np.concatenate([[0], np.searchsorted(time_s, self.start_s[pieces[1:]]), [len(time_s)]])
         series = self.series[rows]
+        if len(time_s) < _SHORT * len(pieces):
+            each = pieces[np.repeat(np.arange(len(pieces)), np.diff(starts))]
+            x = np.clip(2.0 * (time_s - self.start_s[each]) / self.duration_s[each] - 1.0, -1.0, 1.0)
+            return np.asarray(np.einsum("qnk,nk->qn", series[:, each], polynomials(x, series.shape[2])))
         found = np.empty((len(series), len(time_s)))
         for piece, first, last in zip(pieces, starts[:-1], starts[1:], strict=True):
             if first == last:
                 continue
-            x = np.clip(self.argument(piece, time_s[first:last]), -1.0, 1.0)
+            x = np.clip(self.argument(int(piece), time_s[first:last]), -1.0, 1.0)
             np.matmul(series[:, piece], polynomials(x, series.shape[2]).T, out=found[:, first:last])
         return found
 
