@@ -90,7 +90,7 @@ def _dynamics(given: Columns) -> DynamicResults:
     return DynamicResults(**{name: v if name in wishes else np.array([v]) for name, v in values.items()})
 
 
-def _braked(torque: float, closing: float = 0.03, **columns: float) -> Columns:
+def _braked(torque: float, closing: float = 0.03, **columns: Any) -> Columns:
     return {"motor": {"brake_torque_nm": torque},
             "motor_columns": {"brake_closing_time": closing, "brake_energy_per_stop": 500.0, **columns}}  # fmt: skip
 
@@ -117,6 +117,21 @@ FAILING: dict[str, Callable[[], Sets]] = {
     ),
     "motor_speed": lambda: sets_of(motor={"speed_max_rad_s": 50.0}),
     "voltage": lambda: sets_of(motor={"inductance_h": 900.0, "pole_pairs": np.nan}),
+    "jam_temperature": lambda: sets_of(**{"jam duration": 60.0}),
+    "stops_temperature": lambda: sets_of(
+        values={**LEVEL, "moving mass": 2500.0}, gearhead={"ratio": 5.0, "emergency_torque_nm": 1e4},
+        motor={"peak_current_a": 60.0}, **{"stops in a row": 200.0},
+    ),
+    "standstill_hold": lambda: sets_of(
+        values=LIFT, motor={"thermal_resistance_winding_k_w": 95.0, "winding_time_constant_s": 0.2}
+    ),
+    "motor_demagnetisation": lambda: sets_of(
+        motor={"peak_current_a": 28.0}, motor_columns={"demagnetisation_current": 19.0}
+    ),
+    "brush_life": lambda: sets_of(
+        motor={"commutation": 0, "current_basis": 0, "pole_pairs": np.nan},
+        drive={"current_basis": 0, "serves_brushed": True}, motor_columns={"brush_life": 3.6e6}, **LIFE,
+    ),
     "drive_continuous_current": lambda: sets_of(drive={"continuous_current_a": 1.0, "rms_window_s": 0.05}),
     "drive_peak_current": lambda: sets_of(
         drive={"peak_current_a": 1.1, "continuous_current_a": 1.0, "peak_time_s": 20.0}
@@ -184,6 +199,12 @@ FAILING: dict[str, Callable[[], Sets]] = {
     "holding_brake_static": lambda: sets_of(values=LIFT, **_braked(0.2, np.nan)),
     "holding_brake_energy": lambda: sets_of(values=LIFT, **_braked(2.0, brake_energy_per_stop=0.01)),
     "drop_distance": lambda: sets_of(values=LIFT, **_braked(2.0), **{"allowed drop distance": 1e-4}),
+    "holding_brake_wear": lambda: sets_of(
+        values=LIFT, **_braked(2.0, brake_work_until_wear=1.0), **{"brake stops in life": 1e4}
+    ),
+    "holding_brake_stops": lambda: sets_of(
+        **_braked(2.0, brake_stops_allowed=100.0), **{"brake stops in life": 200.0}
+    ),
     "gearhead_emergency_torque": lambda: sets_of(
         gearhead={"ratio": 2.0, "efficiency": 0.5, "efficiency_back": 0.4, "emergency_torque_nm": 10.0},
         values={**LEVEL, "moving mass": 300.0},
@@ -210,6 +231,26 @@ LACKING: dict[str, tuple[Callable[[], Sets], str]] = {
     ),
     "motor_peak_current": (lambda: sets_of(motor={"peak_current_a": np.nan}), "peak current"),
     "motor_speed": (lambda: sets_of(motor={"speed_max_rad_s": np.nan}), "maximum speed"),
+    "jam_temperature": (
+        lambda: sets_of(motor={"winding_limit_degc": np.nan}, **{"jam duration": 0.1}), "winding temperature limit"
+    ),
+    "stops_temperature": (
+        lambda: sets_of(motor={"peak_current_a": np.nan}, **{"stops in a row": 2.0}), "peak current"
+    ),
+    "standstill_hold": (
+        lambda: sets_of(values=LIFT, motor={"thermal_resistance_housing_k_w": np.nan, "mass_kg": np.nan}),
+        "thermal resistance winding-housing",
+    ),
+    "motor_demagnetisation": (
+        lambda: sets_of(motor_columns={"demagnetisation_current": (np.nan, 50.0)}), "demagnetisation current"
+    ),
+    "brush_life": (
+        lambda: sets_of(
+            motor={"commutation": 0, "current_basis": 0, "pole_pairs": np.nan},
+            drive={"current_basis": 0, "serves_brushed": True}, motor_columns={"brush_life": (np.nan, 3.6e6)}, **LIFE,
+        ),
+        "brush life",
+    ),
     "drive_continuous_current": (lambda: sets_of(drive={"continuous_current_a": np.nan}), "continuous current"),
     "drive_peak_current": (lambda: sets_of(drive={"peak_current_a": np.nan}), "peak current"),
     "drive_peak_time": (lambda: sets_of(drive={"peak_time_s": np.nan}), "peak time"),
@@ -297,6 +338,14 @@ LACKING: dict[str, tuple[Callable[[], Sets], str]] = {
     ),
     "drop_distance": (
         lambda: sets_of(values=LIFT, **_braked(2.0, np.nan), **{"allowed drop distance": 1.0}), "brake closing time"
+    ),
+    "holding_brake_wear": (
+        lambda: sets_of(**_braked(2.0, brake_work_until_wear=(np.nan, 1e6)), **{"brake stops in life": 10.0}),
+        "brake work until wear",
+    ),
+    "holding_brake_stops": (
+        lambda: sets_of(**_braked(2.0, brake_stops_allowed=(np.nan, 1e3)), **{"brake stops in life": 10.0}),
+        "brake stops allowed",
     ),
     "gearhead_emergency_torque": (
         lambda: sets_of(gearhead={"emergency_torque_nm": np.nan}), "emergency-stop torque"

@@ -20,6 +20,7 @@ from actuator_sizing.sizing.checks.gearhead import (
     INERTIA_RATIO,
 )
 from actuator_sizing.sizing.checks.gearhead_life import GEARHEAD_LIFE_CHECKS
+from actuator_sizing.sizing.checks.holding import HOLDING_CHECKS
 from actuator_sizing.sizing.checks.motor import (
     MOTOR_PEAK_CURRENT,
     MOTOR_SPEED,
@@ -28,6 +29,7 @@ from actuator_sizing.sizing.checks.motor import (
     VOLTAGE,
     WINDING_TEMPERATURE,
 )
+from actuator_sizing.sizing.checks.overload import OVERLOAD_CHECKS
 from actuator_sizing.sizing.checks.screw import SCREW_CHECKS
 from actuator_sizing.sizing.checks.shaft import SHAFT_CHECKS
 from actuator_sizing.sizing.checks.stopping import STOPPING_CHECKS
@@ -40,6 +42,7 @@ CHECKS: tuple[Check, ...] = (
     MOTOR_PEAK_CURRENT,
     MOTOR_SPEED,
     VOLTAGE,
+    *OVERLOAD_CHECKS,
     DRIVE_CONTINUOUS,
     DRIVE_PEAK,
     DRIVE_PEAK_TIME,
@@ -54,6 +57,7 @@ CHECKS: tuple[Check, ...] = (
     *SCREW_CHECKS,
     *TRACTION_CHECKS,
     *STOPPING_CHECKS,
+    *HOLDING_CHECKS,
     INERTIA_RATIO,
     SETTLING,
     FOLLOWING_ERROR,

@@ -47,7 +47,7 @@ def _lever_known(sets: Sets) -> BoolArray:
     """Stated, or not needed to find the permissible force where the load acts."""
     needs = (*_of_shaft("permissible radial force"), *_of_shaft("radial force position"))
     rest = np.logical_and.reduce([need.known(sets) for need in needs]) & sets.states("shaft force position")
-    return ~rest | ~np.isnan(shaft_bearings(sets).radial_n)
+    return np.asarray(~rest | ~np.isnan(shaft_bearings(sets).radial_n))
 
 
 _RADIAL_NEEDS = (
