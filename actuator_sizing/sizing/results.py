@@ -213,6 +213,7 @@ class Rejections:
     confirmed_passing: int  # pass by exact evaluation
     evaluated: int  # evaluated exactly
     complete: bool  # every survivor was evaluated exactly
+    misfits: Mapping[str, int] = field(default_factory=dict)  # why sets are incompatible -> number of sets
 
 
 @dataclass(frozen=True)
