@@ -13,6 +13,7 @@ from actuator_sizing.case.headings import understand_headings
 from actuator_sizing.case.model import Entry
 from actuator_sizing.case.problem_list import ProblemList, shown
 from actuator_sizing.case.raw_tables import RawTable
+from actuator_sizing.case.strength_columns import MECHANISM_STRENGTH
 from actuator_sizing.case.tables import COMMON_QUANTITIES, TABLES, axis_quantities
 from actuator_sizing.case.text_columns import OddCell
 from actuator_sizing.case.words import canonical_word
@@ -343,8 +344,9 @@ def surroundings_of(axis: Axis) -> Surroundings:
 
 def options_of(axis: Axis) -> dict[str, float | str | None]:
     """Quantities that neither the mechanism nor the surroundings hold, by name."""
+    strength = MECHANISM_STRENGTH.get(axis.mechanism.name, ()) if axis.mechanism else ()
     return {
         column.name: axis.values.get(column.key)
-        for column in COMMON_QUANTITIES
+        for column in (*COMMON_QUANTITIES, *strength)
         if column.key not in IN_SURROUNDINGS
     }

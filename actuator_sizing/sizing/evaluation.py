@@ -15,7 +15,8 @@ from actuator_sizing.core.capability import terminal_voltage
 from actuator_sizing.core.machine import JudgedMotor, current_of_torque, judge, judge_cold
 from actuator_sizing.core.parameters import GearheadParameters, MotorParameters, Surroundings, _Columns
 from actuator_sizing.core.quadrature import largest, largest_magnitude, signed_integrals
-from actuator_sizing.core.thermal import periodic_state
+from actuator_sizing.core.thermal import PeriodicState, periodic_state
+from actuator_sizing.core.thermal_run import SingleRun, single_run
 from actuator_sizing.sizing.demand import Demand
 from actuator_sizing.sizing.pair_course import (
     PairCourse,
@@ -26,6 +27,7 @@ from actuator_sizing.sizing.pair_course import (
     speed_loss,
 )
 from actuator_sizing.sizing.thermal_data import thermal_network
+from actuator_sizing.sizing.thermal_start import ThermalStart
 from actuator_sizing.sizing.torque_plane import torque_plane
 
 FloatArray = NDArray[np.float64]
@@ -86,7 +88,11 @@ class PairResults(_Columns):
 
 
 def evaluate_pairs(
-    demand: Demand, motors: MotorParameters, gearheads: GearheadParameters, surroundings: Surroundings
+    demand: Demand,
+    motors: MotorParameters,
+    gearheads: GearheadParameters,
+    surroundings: Surroundings,
+    start: ThermalStart | None = None,
 ) -> PairResults:
     """Evaluate B pairs exactly.
 
@@ -98,6 +104,8 @@ def evaluate_pairs(
         B rows each: row b of both is pair b. [-]
     surroundings : Surroundings
         Ambient, altitude, bus voltages, judged temperature. [-]
+    start : ThermalStart, optional
+        State of the B pairs before a cycle that runs once; a cycle repeats until its temperatures do. [-]
 
     Returns
     -------
@@ -107,11 +115,12 @@ def evaluate_pairs(
     parts = [
         _evaluate_chunk(
             demand,
-            motors.take(slice(start, start + _CHUNK)),
-            gearheads.take(slice(start, start + _CHUNK)),
+            motors.take(slice(first, first + _CHUNK)),
+            gearheads.take(slice(first, first + _CHUNK)),
             surroundings,
+            None if start is None else start.take(slice(first, first + _CHUNK)),
         )
-        for start in range(0, len(motors), _CHUNK)
+        for first in range(0, len(motors), _CHUNK)
     ]
     return PairResults(
         **{f.name: np.concatenate([getattr(part, f.name) for part in parts]) for f in fields(PairResults)}
@@ -119,7 +128,11 @@ def evaluate_pairs(
 
 
 def _evaluate_chunk(
-    demand: Demand, motors: MotorParameters, gearheads: GearheadParameters, surroundings: Surroundings
+    demand: Demand,
+    motors: MotorParameters,
+    gearheads: GearheadParameters,
+    surroundings: Surroundings,
+    start: ThermalStart | None,
 ) -> PairResults:
     judged = judge(motors, surroundings)
     c = course(demand, motors, gearheads, judged)
@@ -143,9 +156,14 @@ def _evaluate_chunk(
     energy_airgap = signed_integrals(duration, airgap)
     energy_terminals = signed_integrals(duration, terminals)
 
-    thermal = periodic_state(
-        thermal_network(motors, surroundings), heat_loss(demand, motors, judged, c), surroundings.ambient_degc
-    )
+    network, loss = thermal_network(motors, surroundings), heat_loss(demand, motors, judged, c)
+    temperatures: PeriodicState | SingleRun
+    if start is None:
+        temperatures = periodic_state(network, loss, surroundings.ambient_degc)
+    else:
+        loss = start.with_following(loss, motors, gearheads, judged)
+        state = start.winding_degc, start.housing_degc
+        temperatures = single_run(network, loss, surroundings.ambient_degc, *state)
     reflected = demand.load_inertia / gearheads.ratio**2
     return PairResults(
         torque_peak_nm=torque_peak,
@@ -179,14 +197,14 @@ def _evaluate_chunk(
         energy_terminals_motoring_j=energy_terminals[0],
         energy_terminals_regenerated_j=energy_terminals[1],
         power_terminals_peak_w=largest(terminals)[0],
-        thermal_known=thermal.known,
-        has_equilibrium=thermal.has_equilibrium,
-        winding_max_degc=thermal.winding_max_degc,
-        winding_max_at_s=thermal.winding_max_time_s,
-        winding_min_degc=thermal.winding_min_degc,
-        winding_mean_degc=thermal.winding_mean_degc,
-        housing_max_degc=thermal.housing_max_degc,
-        housing_mean_degc=thermal.housing_mean_degc,
+        thermal_known=temperatures.known,
+        has_equilibrium=temperatures.has_equilibrium,
+        winding_max_degc=temperatures.winding_max_degc,
+        winding_max_at_s=temperatures.winding_max_time_s,
+        winding_min_degc=temperatures.winding_min_degc,
+        winding_mean_degc=temperatures.winding_mean_degc,
+        housing_max_degc=temperatures.housing_max_degc,
+        housing_mean_degc=temperatures.housing_mean_degc,
         inertia_ratio=reflected / motors.rotor_inertia_kg_m2,
         resistance_ohm=winding_ohm,
         cable_ohm=judged.cable_ohm,

@@ -6,6 +6,7 @@ from typing import Any
 
 import numpy as np
 
+from actuator_sizing.core.duty_types import usual_times
 from actuator_sizing.core.parameters import CURRENT_BASES
 from actuator_sizing.core.permissible_load import LoadedMachine, intermittent_current, short_time_current
 from actuator_sizing.core.warm_up import temperatures_after, warm_up
@@ -16,11 +17,9 @@ from actuator_sizing.sizing.checks.motor import current_limited_torque
 from actuator_sizing.sizing.set_model import SetModel
 from actuator_sizing.sizing.stops import stop_quantities
 
-#: Usual short times, cyclic duration factors, and the cycle that the latter refer to when nothing else is
-#: said; practice around IEC 60034-1 (from memory).
+#: Usual short times and cyclic duration factors; practice around IEC 60034-1 (from memory).
 SHORT_TIMES_MIN = (10, 30, 60)
 DUTY_FACTORS_PERCENT = (15, 25, 40, 60)
-INTERMITTENT_CYCLE_S = 600.0
 COMMISSIONING_TIMES_S = (600.0, 1800.0, 3600.0)
 
 _FROM_PAIRS = (
@@ -135,9 +134,8 @@ def _permissible_currents(model: SetModel) -> dict[str, Any]:
         key = f"permissible_short_time_{minutes}_min_current_a"
         answer[key] = _known(short_time_current(machine, 60.0 * minutes))
     for percent in DUTY_FACTORS_PERCENT:
-        on = INTERMITTENT_CYCLE_S * percent / 100.0
         key = f"permissible_intermittent_{percent}_percent_current_a"
-        answer[key] = _known(intermittent_current(machine, on, INTERMITTENT_CYCLE_S - on))
+        answer[key] = _known(intermittent_current(machine, *usual_times(percent / 100.0)))
     return answer
 
 

@@ -41,7 +41,7 @@ def sets_of(*, motor=MOTOR, drive=DRIVE, segments=HOLDS, surroundings=SURROUNDIN
 def judged(sets):
     checks, limits = active_checks(sets.case.limits)
     verdicts = judge_sets(sets, checks, limits)
-    results = check_results(sets, verdicts, 0, [s.name for s in sets.case.segments])
+    results = check_results(sets, verdicts, 0)
     return {result.check: result for result in results}
 
 

@@ -40,7 +40,7 @@ def sets_of(
 
 def verdict(sets, key):
     checks, limits = active_checks(sets.case.limits)
-    results = check_results(sets, judge_sets(sets, checks, limits), 0, [s.name for s in sets.case.segments])
+    results = check_results(sets, judge_sets(sets, checks, limits), 0)
     found = [result for result in results if result.check == key]
     return found[0] if found else None
 

@@ -71,6 +71,8 @@ EXACT = {
     "power": {"hp": 550 * LBF * FOOT, "PS": 75 * KGF, "kW": 1e3},
     "energy": {"kWh": 3.6e6, "Ws": 1.0},
     "pressure": {"bar": 1e5, "N/mm²": 1e6, "psi": LBF / INCH**2},
+    "area": {"mm²": 1e-6, "cm²": 1e-4, "in²": INCH**2},
+    "pressure times speed": {"MPa·m/s": 1e6, "N/mm²·m/s": 1e6, "bar·m/s": 1e5, "W/mm²": 1e6},
     "density": {"g/cm³": 1e3, "kg/dm³": 1e3, "kg/l": 1e3},
     "mass": {"lb": LB, "oz": LB / 16, "g": 1e-3, "t": 1e3},
     "length": {"in": INCH, "inch": INCH, '"': INCH, "″": INCH, "ft": FOOT, "mil": 1e-3 * INCH, "µm": 1e-6,

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 from actuator_sizing.sizing.bus import BusResults, bus_results
 from actuator_sizing.sizing.bus_sag import is_soft
 from actuator_sizing.sizing.bus_side import BATTERY, DC_SUPPLY, supply_feeds_back, supply_kind
-from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits
+from actuator_sizing.sizing.checks.base import SUSTAINED, Check, Measure, Need, Sets, digits
 
 FloatArray = NDArray[np.float64]
 
@@ -256,6 +256,7 @@ BRAKE_MEAN = Check(
     measure=_mean_measure,
     working=_ratio_working("P_mean / P_cont", "W", _mean_measure),
     applies=_burns,
+    concerns=SUSTAINED,
 )
 
 
@@ -300,7 +301,12 @@ _EFFICIENCY = Need("drives", "efficiency", "efficiency")
 
 
 def _supply_check(
-    key: str, title: str, option: str, pick: Callable[[BusResults], Measure], formula: str
+    key: str,
+    title: str,
+    option: str,
+    pick: Callable[[BusResults], Measure],
+    formula: str,
+    concerns: tuple[str, ...] = (),
 ) -> Check:
     def measure(sets: Sets) -> Measure:
         m = pick(sets.once(bus_results))
@@ -317,6 +323,7 @@ def _supply_check(
         measure=measure,
         working=_ratio_working("P / P_rated", "W", measure),
         applies=_supply_is_rated,
+        concerns=concerns,
     )
 
 
@@ -326,6 +333,7 @@ SUPPLY_MEAN = _supply_check(
     "supply continuous power",
     lambda b: Measure(b.supply_power_mean_w, b.supply_power_mean_w),
     "energy from the supply per cycle / cycle time ≤ continuous power of the supply",
+    SUSTAINED,
 )
 
 SUPPLY_PEAK = _supply_check(

@@ -40,6 +40,11 @@ def _continuous_measure(sets: Sets) -> Measure:
     return Measure(sets.drive_current_rms_a, sets.drives.continuous_current_a, sets.drive_current_rms_at_s)
 
 
+def _has_mean(sets: Sets) -> NDArray[np.bool_]:
+    """Whether there is a time to take the mean over: a cycle that repeats, else the drive's own window."""
+    return sets.case.cycle.repeats | np.isfinite(sets.drives.rms_window_s)
+
+
 def _continuous_working(sets: Sets, i: int) -> str:
     m = _continuous_measure(sets)
     window = sets.drives.rms_window_s[i]
@@ -75,6 +80,7 @@ DRIVE_CONTINUOUS = Check(
     needs=_CONTINUOUS,
     measure=_continuous_measure,
     working=_continuous_working,
+    applies=_has_mean,
 )
 
 

@@ -12,7 +12,7 @@ from actuator_sizing.core.machine import judge, resistance_at, torque_of_current
 from actuator_sizing.core.parameters import MotorParameters, Surroundings
 from actuator_sizing.core.thermal import altitude_factor
 from actuator_sizing.sizing.block import Block
-from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits
+from actuator_sizing.sizing.checks.base import SUSTAINED, Check, Measure, Need, Sets, digits
 from actuator_sizing.sizing.checks.working import (
     available_voltage_working,
     current_working,
@@ -130,6 +130,7 @@ RMS_CURRENT = Check(
     measure=_rms_measure,
     bound=_rms_bound,
     working=_rms_working,
+    concerns=SUSTAINED,
 )
 
 
@@ -209,6 +210,8 @@ def _temperature_measure(sets: Sets) -> Measure:
 
 
 def _temperature_bound(block: Block) -> FloatArray:
+    if not block.repeats:
+        return np.zeros((1, 1))  # a single run may end before anything is warm
     return block.mean_winding_rise / (block.motors.winding_limit_degc - block.surroundings.ambient_degc)
 
 
@@ -216,14 +219,20 @@ def _temperature_working(sets: Sets, i: int) -> str:
     ambient = sets.surroundings.ambient_degc
     limit = sets.motors.winding_limit_degc[i]
     if not sets.pairs.has_equilibrium[i]:
+        if sets.start is not None:
+            return "in one run the winding grows hotter than any temperature that means something"
         return "no equilibrium: each cycle leaves the winding hotter than the last"
     peak = sets.pairs.winding_max_degc[i]
     if limit <= ambient:
         return f"the air at {digits(ambient)} °C leaves no rise up to the limit of {digits(limit)} °C"
+    over = "in periodic steady state"
+    if sets.start is not None:
+        over = f"in one run from {digits(sets.start.winding_degc[i])} °C"
+        over += "" if sets.start.following is None else " and the cycle that follows"
     mean = sets.pairs.housing_mean_degc[i]
     housing = "one thermal body" if np.isnan(mean) else f"housing mean {digits(mean)} °C"
     return (
-        f"ϑ_max = {digits(peak)} °C in periodic steady state (mean {digits(sets.pairs.winding_mean_degc[i])} °C, "
+        f"ϑ_max = {digits(peak)} °C {over} (mean {digits(sets.pairs.winding_mean_degc[i])} °C, "
         f"{housing}); rise ({digits(peak)} − {digits(ambient)}) / "
         f"({digits(limit)} − {digits(ambient)}) = {digits((peak - ambient) / (limit - ambient))}"
     )
@@ -234,7 +243,8 @@ WINDING_TEMPERATURE = Check(
     title="Winding temperature",
     group="motor",
     unit="K",
-    formula="max over the periodic steady state of ϑ_w − ϑ_a ≤ ϑ_limit − ϑ_a; two bodies, R(ϑ) and K(ϑ) fed back",
+    formula="max over the periodic steady state of ϑ_w − ϑ_a ≤ ϑ_limit − ϑ_a, over its run where a cycle does not "
+    "repeat; two bodies, R(ϑ) and K(ϑ) fed back",
     source="Two-body thermal network; periodic state by the cycle map; classes of IEC 60085",
     needs=(
         _LIMIT,
