@@ -22,6 +22,7 @@ from actuator_sizing.report.document.dynamics import dynamics_section
 from actuator_sizing.report.document.inertias import inertias_section
 from actuator_sizing.report.document.inputs import assumptions_section, inputs_section
 from actuator_sizing.report.document.levers import levers_section
+from actuator_sizing.report.document.power import power_section
 from actuator_sizing.report.document.verdict import cover_facts, verdict_section, verdict_sentence
 from actuator_sizing.report.text import clean, option
 
@@ -70,6 +71,7 @@ def prepare_document(
         figure_section = figures_section(shown, drawn)
         if figure_section.blocks:
             sections.append(figure_section)
+        sections.append(power_section(shown, drawn))
         moving = dynamics_section(shown, drawn)
         if moving is not None:
             sections.append(moving)
