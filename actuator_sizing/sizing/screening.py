@@ -7,8 +7,8 @@ counted under the worst of their checks, the others under the worst check of the
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
-from dataclasses import dataclass
+from collections.abc import Callable, Iterator, Mapping
+from dataclasses import dataclass, fields
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -18,18 +18,24 @@ from actuator_sizing.case.model import Case
 from actuator_sizing.core.machine import amplitude_per_unit_current
 from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
 from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.drive_counts import DriveRanks
 from actuator_sizing.sizing.drive_side import DriveSide
 from actuator_sizing.sizing.fitting import compatible, fits_axis
 from actuator_sizing.sizing.tallies import Losses, Pool
+from actuator_sizing.sizing.tile import BlockBounds, Tile, TileWorker
 
 if TYPE_CHECKING:
     from actuator_sizing.sizing.checks.base import Check
 
 FloatArray = NDArray[np.float64]
 
-_MOTORS_PER_BLOCK, _GEARHEADS_PER_BLOCK = 2048, 16  # arrays of 256 kB stay in the L2 cache
+_MOTORS_PER_BLOCK, _PAIRS_PER_TILE = 2048, 32768  # large enough for numpy, small enough for the cache
 LISTED_SETS = 200_000  # up to so many sets, each loser is listed with what governs it
 _ROUNDING = 1e-5  # of single precision: bounds reject only beyond this part above the allowed value
+_LIMIT = np.float32(1.0 + _ROUNDING)
+_SETS_PER_STEP = 2**16  # sets looked at at once where they are held against the drives one by one
+_KEY_FIELD = {"price": "price", "mass": "mass_kg"}
+_LAST = 1e300  # key of what is not known: after everything else, and a sum of three is still a number
 
 
 @dataclass(frozen=True)
@@ -92,37 +98,30 @@ def screen(
         Counts, survivors and nearest losers. [-]
     """
     motor_index, gearhead_index = fits_axis(case)
-    # Motors that the same drives serve lie together: their sets are then counted in one stroke.
-    motor_index = motor_index[np.argsort(case.motor_parameters.commutation[motor_index], kind="stable")]
     drives = case.drive_parameters
     total = len(case.motor_parameters) * len(case.gearhead_parameters) * len(drives)
     bounded = tuple(check for check in checks if check.bound is not None)
     drive_side = DriveSide(case, allowed)
-    names = (*(check.key for check in bounded), *drive_side.names)
-    losses = Losses(names, listed=total <= LISTED_SETS)
+    losses = Losses((*(check.key for check in bounded), *drive_side.names), listed=total <= LISTED_SETS)
     pools = (Pool(keep), Pool(losers), Pool(losers))
-    run = _Run(case, bounded, allowed, drive_side, key, *pools, losses)
+    run = _Run(case, bounded, allowed, drive_side, key, *pools, losses, TileWorker(_PAIRS_PER_TILE))
     gearhead_side = GearheadSide.of(case.gearhead_parameters.take(gearhead_index), demand)
-    gearhead_parts = [
-        (
-            gearhead_index[start : start + _GEARHEADS_PER_BLOCK],
-            gearhead_side.part(slice(start, start + _GEARHEADS_PER_BLOCK)),
-        )
-        for start in range(0, len(gearhead_index), _GEARHEADS_PER_BLOCK)
-    ]
     recommended = case.number("recommended inertia ratio")
-    survivors = screened = 0
-    for start in range(0, len(motor_index), _MOTORS_PER_BLOCK):
-        m = motor_index[start : start + _MOTORS_PER_BLOCK]
+    ranks: dict[int, DriveRanks] = {}
+    survivors = screened = done = 0
+    for m in _motor_blocks(case, motor_index):
         motor_side = MotorSide.of(case.motor_parameters.take(m), case.surroundings)
-        served = compatible(motor_side.motors, drives)
-        for g, part in gearhead_parts:
-            block = Block(demand, case.surroundings, recommended, motor_side, part)
-            with np.errstate(over="ignore"):  # immense ratios stand for what is out of reach
-                survivors += _screen_tile(run, _Tile(block, m, g, served))
-        screened += int(served.sum()) * len(gearhead_index)
+        served = np.flatnonzero(compatible(motor_side.motors.take(slice(0, 1)), drives)[0])
+        if len(served):
+            kind = int(motor_side.motors.commutation[0])
+            if kind not in ranks:
+                ranks[kind] = DriveRanks(drive_side, served, float(_LIMIT))
+            block = Block(demand, case.surroundings, recommended, motor_side, gearhead_side)
+            survivors += _screen_block(run, block, _Places(m, gearhead_index, served), ranks[kind])
+        screened += len(served) * len(m) * len(gearhead_index)
+        done += len(m)
         if progress is not None:
-            progress((start + len(m)) / len(motor_index))
+            progress(done / len(motor_index))
     counts: dict[str, int] = {}
     for name, number in zip(losses.names, losses.counts, strict=True):
         counts[name] = counts.get(name, 0) + int(number)
@@ -156,124 +155,182 @@ class _Run:
     nearest: Pool
     by_drive: Pool
     losses: Losses
+    worker: TileWorker
 
 
 @dataclass(frozen=True)
-class _Tile:
-    """One block with the place of its N gearheads and M motors in the catalogs."""
+class _Places:
+    """Places in the catalogs of the parts of a block."""
 
-    block: Block
-    motor_index: NDArray[np.intp]  # (M,)
-    gearhead_index: NDArray[np.intp]  # (N,)
-    served: NDArray[np.bool_]  # (M, D) which drive can commutate which motor
+    motors: NDArray[np.intp]  # (M,)
+    gearheads: NDArray[np.intp]  # (N,)
+    drives: NDArray[np.intp]  # (D,) those that can commutate the motors of this block
 
     def pairs(self, gearhead: NDArray[np.intp], motor: NDArray[np.intp]) -> NDArray[np.intp]:
         """Catalog rows of motor and gearhead for places in the block, shape (n, 2)."""
-        return np.column_stack([self.motor_index[motor], self.gearhead_index[gearhead]])
+        return np.column_stack([self.motors[motor], self.gearheads[gearhead]])
+
+    def sets(self, pairs: NDArray[np.intp], drive: NDArray[np.intp]) -> NDArray[np.intp]:
+        """Catalog rows of sets, shape (n, 3)."""
+        return np.column_stack([pairs, self.drives[drive]])
 
 
-def _screen_tile(run: _Run, tile: _Tile) -> int:
-    """Screen one block; returns how many sets survive."""
-    losses = run.losses
-    gearhead_worst, gearhead_check, others = _utilisations(run, tile.block)
-    worst = np.broadcast_to(gearhead_worst, tile.block.mean_square.shape).copy()
-    for _, utilisation in others:
-        np.fmax(worst, utilisation, out=worst)  # NaN, not known, is never the worst
-    fails = worst > 1.0 + _ROUNDING
+def _motor_blocks(case: Case, motor_index: NDArray[np.intp]) -> Iterator[NDArray[np.intp]]:
+    """Motors in blocks that the same drives serve."""
+    commutation = case.motor_parameters.commutation[motor_index]
+    for kind in np.unique(commutation):
+        members = motor_index[commutation == kind]
+        for start in range(0, len(members), _MOTORS_PER_BLOCK):
+            yield members[start : start + _MOTORS_PER_BLOCK]
 
-    drives_per_motor = tile.served.sum(axis=1)
-    left = fails.copy()
-    by_gearhead = (
-        (number, np.where(gearhead_check == number, gearhead_worst, np.nan))
-        for number in np.unique(gearhead_check).tolist()
-    )
-    for number, utilisation in (*others, *by_gearhead):
-        governed = utilisation == worst
+
+@dataclass(frozen=True)
+class _Pairs:
+    """K pairs of a block that only a drive can still reject."""
+
+    gearhead: NDArray[np.intp]  # (K,) place in the block
+    motor: NDArray[np.intp]  # (K,)
+    worst: FloatArray  # (K,) largest bound over allowed
+    torque_peak: FloatArray  # (K,) [N·m]
+    mean_square: FloatArray  # (K,) [N²·m²]
+
+    def take(self, index: NDArray[np.intp]) -> _Pairs:
+        """Some of the pairs."""
+        return _Pairs(*(getattr(self, f.name)[index] for f in fields(self)))
+
+
+def _screen_block(run: _Run, block: Block, places: _Places, ranks: DriveRanks) -> int:
+    """Screen every gearhead against the motors of a block; returns how many sets survive."""
+    bounds = BlockBounds.of(block, run.checks, run.allowed)
+    step = max(1, _PAIRS_PER_TILE // len(block.motors))
+    found: list[_Pairs] = []
+    with np.errstate(over="ignore"):  # immense ratios stand for what is out of reach
+        for start in range(0, len(block.gearheads), step):
+            which = slice(start, start + step)
+            found.append(_screen_tile(run, bounds, which, run.worker.work(bounds, which), places))
+    pairs = _Pairs(*(np.concatenate([getattr(part, f.name) for part in found]) for f in fields(_Pairs)))
+    return _screen_drives(run, block, places, pairs, ranks)
+
+
+def _screen_tile(run: _Run, bounds: BlockBounds, which: slice, tile: Tile, places: _Places) -> _Pairs:
+    """Count the pairs that fail whatever the drive is; returns those that may pass."""
+    losses, worst = run.losses, tile.worst
+    shape = (worst.shape[0], worst.shape[1])
+    fails, left, governed = (run.worker.mask(name, shape) for name in ("fails", "left", "governed"))
+    np.greater(worst, _LIMIT, out=fails)
+    np.copyto(left, fails)
+    for number, utilisation in tile.by_motor:
+        np.equal(utilisation, worst, out=governed)
         governed &= left
         left ^= governed
-        losses.count(number, governed, drives_per_motor)
+        losses.counts[number] += np.count_nonzero(governed) * len(places.drives)
         if losses.listed:
-            j, i, drive = np.nonzero(governed[:, :, None] & tile.served)
-            losses.keep(np.column_stack([tile.pairs(j, i), drive]), np.full(len(i), number), worst[j, i])
-    j, i = np.nonzero(fails & (worst <= run.nearest.bar) & (drives_per_motor > 0))
+            _list(losses, places, which.start, governed, number, worst)
+    # What is left is governed by the gearhead alone.
+    if left.any():
+        check = bounds.gearhead_check[which]
+        np.add.at(losses.counts, check, np.count_nonzero(left, axis=1) * len(places.drives))
+        if losses.listed:
+            for number in np.unique(check).tolist():
+                _list(losses, places, which.start, left & (check == number)[:, None], number, worst)
+    near = np.less_equal(worst, run.nearest.bar, out=governed)
+    near &= fails
+    j, i = _places_of(near)
     if len(i):
-        run.nearest.add(tile.pairs(j, i), worst[j, i])
-    return _screen_drives(run, tile, ~fails, worst)
+        run.nearest.add(places.pairs(which.start + j, i), worst[j, i])
+    j, i = _places_of(np.logical_not(fails, out=fails))
+    values = (part[j, i].astype(float) for part in (worst, tile.torque_peak, tile.mean_square))
+    return _Pairs(which.start + j, i, *values)
 
 
-def _utilisations(
-    run: _Run, block: Block
-) -> tuple[FloatArray, NDArray[np.intp], list[tuple[int, FloatArray]]]:
-    """Utilisation over allowed of every motor and gearhead check.
-
-    Those that depend on the gearhead alone come as the worst of them and which it is, both (N, 1); the others
-    with their number in the list of checks, each (N, M).
-    """
-    worst = np.zeros((len(block.gearheads), 1))
-    check_number = np.zeros(worst.shape, dtype=np.intp)
-    others = []
-    for number, check in enumerate(run.checks):
-        assert check.bound is not None
-        utilisation = check.bound(block)
-        if run.allowed[check.key] != 1.0:
-            utilisation = utilisation / run.allowed[check.key]
-        if check.group == "gearhead":
-            utilisation = np.where(block.gearheads.is_direct[:, None], 0.0, utilisation)
-            higher = utilisation > worst
-            worst = np.where(higher, utilisation, worst)
-            check_number = np.where(higher, number, check_number)
-        else:
-            others.append((number, utilisation))
-    return worst, check_number, others
+def _places_of(mask: NDArray[np.bool_]) -> tuple[NDArray[np.intp], NDArray[np.intp]]:
+    """Row and column of what is true; several times faster than `nonzero` of two dimensions."""
+    j, i = np.divmod(np.flatnonzero(mask), mask.shape[1])
+    return j, i
 
 
-def _screen_drives(run: _Run, tile: _Tile, passing: NDArray[np.bool_], worst: FloatArray) -> int:
+def _list(
+    losses: Losses,
+    places: _Places,
+    first: int,
+    governed: NDArray[np.bool_],
+    number: int,
+    worst: NDArray[np.float32],
+) -> None:
+    """List the sets of pairs that one check governs, each with every drive."""
+    j, i = _places_of(governed)
+    count = len(places.drives)
+    pairs = np.repeat(places.pairs(first + j, i), count, axis=0)
+    sets = places.sets(pairs, np.tile(np.arange(count), len(i)))
+    losses.keep(sets, np.full(len(sets), number), np.repeat(worst[j, i], count))
+
+
+def _screen_drives(run: _Run, block: Block, places: _Places, pairs: _Pairs, ranks: DriveRanks) -> int:
     """Hold the pairs that may pass against every drive; returns how many sets survive."""
-    side, block, losses = run.drive_side, tile.block, run.losses
-    columns, rows = np.nonzero(passing)  # gearheads, motors
-    amplitude = amplitude_per_unit_current(block.motors.current_basis)
+    K = block.judged.torque_constant_nm_per_a
+    per_torque = (amplitude_per_unit_current(block.motors.current_basis) / K)[pairs.motor]
+    peak_a, rms_a = pairs.torque_peak * per_torque, np.sqrt(pairs.mean_square) * per_torque
+    key = _pair_key(run, block, places, pairs)
+    cheapest = _drive_key(run, places.drives).min() if len(places.drives) else 0.0
     total = 0
-    step = max(1, 2**16 // max(1, len(side)))
-    for start in range(0, len(rows), step):
-        r, c = rows[start : start + step], columns[start : start + step]
-        ok = tile.served[r]
-        stack = side.utilisations(
-            block.current_peak[c, r] * amplitude[r], block.current_rms[c, r] * amplitude[r]
-        )
-        drive_worst = stack.max(axis=0)
-        survives = ok & (drive_worst <= 1.0 + _ROUNDING)
-        check = len(run.checks) + stack.argmax(axis=0)
-        out_row, out_drive = np.nonzero(ok & ~survives)
-        losses.add(check[out_row, out_drive], np.ones(len(out_row), dtype=np.intp))
-        lost = np.column_stack([tile.pairs(c[out_row], r[out_row]), out_drive])
-        losses.keep(lost, check[out_row, out_drive], drive_worst[out_row, out_drive])
-        run.by_drive.add(lost, drive_worst[out_row, out_drive])
-        k, d = np.nonzero(survives)
-        total += len(k)
+    step = max(1, _SETS_PER_STEP // len(places.drives))
+    for start in range(0, len(peak_a), step):
+        some = slice(start, start + step)
+        counts = ranks.count(peak_a[some], rms_a[some], run.by_drive.bar)
+        total += int(counts.passing.sum())
+        run.losses.counts[-3:] += counts.rejected
+        # Only what can still get into a list is looked at set by set.
+        wanted = counts.nearly | ((counts.passing > 0) & (key[some] + cheapest <= run.pool.bar))
+        k = start + np.flatnonzero(wanted | run.losses.listed)
         if len(k):
-            sets = np.column_stack([tile.pairs(c[k], r[k]), d])
-            bound = np.maximum(worst[c[k], r[k]], drive_worst[k, d])
-            run.pool.add(sets, _key(run, block, sets, r[k], c[k], bound))
+            _list_sets(run, places, pairs.take(k), peak_a[k], rms_a[k], key[k])
     return total
 
 
-def _key(
-    run: _Run,
-    block: Block,
-    sets: NDArray[np.intp],
-    row: NDArray[np.intp],
-    column: NDArray[np.intp],
-    bound: FloatArray,
-) -> FloatArray:
-    """What the survivors are ordered by; smaller is better, unknown comes last."""
-    case = run.case
+def _list_sets(
+    run: _Run, places: _Places, pairs: _Pairs, peak_a: FloatArray, rms_a: FloatArray, key: FloatArray
+) -> None:
+    """Offer the sets of K pairs with every drive to the lists of survivors and of losers."""
+    stack = run.drive_side.utilisations(peak_a, rms_a, places.drives)
+    drive_worst = stack.max(axis=0)
+    survives = drive_worst <= _LIMIT
+    k, d = _places_of(~survives)
+    lost = places.sets(places.pairs(pairs.gearhead[k], pairs.motor[k]), d)
+    run.losses.keep(lost, len(run.checks) + stack.argmax(axis=0)[k, d], drive_worst[k, d])
+    run.by_drive.add(lost, drive_worst[k, d])
+    k, d = _places_of(survives)
+    if len(k):
+        sets = places.sets(places.pairs(pairs.gearhead[k], pairs.motor[k]), d)
+        if run.key == "reserve":
+            keys = np.maximum(key[k], drive_worst[k, d])
+        else:
+            keys = key[k] + _drive_key(run, places.drives)[d]
+        run.pool.add(sets, keys)
+
+
+def _pair_key(run: _Run, block: Block, places: _Places, pairs: _Pairs) -> FloatArray:
+    """What motor and gearhead add to the key that survivors are ordered by, (K,); smaller is better."""
     if run.key == "reserve":
-        return bound
+        return pairs.worst
     if run.key == "energy":
         j = block.judged
-        loss = j.resistance_ohm[row] / j.torque_constant_nm_per_a[row] ** 2 * block.mean_square[column, row]
-        return np.asarray(loss)
-    name = "price" if run.key == "price" else "mass_kg"
-    parts = (case.motor_parameters, case.gearhead_parameters, case.drive_parameters)
-    total = sum(getattr(part, name)[index] for part, index in zip(parts, sets.T, strict=True))
-    return np.asarray(np.nan_to_num(np.asarray(total), nan=np.finfo(float).max))
+        loss = j.resistance_ohm / j.torque_constant_nm_per_a**2
+        return np.asarray(loss[pairs.motor] * pairs.mean_square)
+    name = _KEY_FIELD[run.key]
+    motors, gearheads = run.case.motor_parameters, run.case.gearhead_parameters
+    return _finite(
+        getattr(motors, name)[places.motors[pairs.motor]]
+        + getattr(gearheads, name)[places.gearheads[pairs.gearhead]]
+    )
+
+
+def _drive_key(run: _Run, drives: NDArray[np.intp]) -> FloatArray:
+    """What drives add to the key, (D,)."""
+    if run.key not in _KEY_FIELD:
+        return np.zeros(len(drives))
+    return _finite(getattr(run.case.drive_parameters, _KEY_FIELD[run.key])[drives])
+
+
+def _finite(values: FloatArray) -> FloatArray:
+    """Unknown values at the end of every order."""
+    return np.asarray(np.nan_to_num(values, nan=_LAST))

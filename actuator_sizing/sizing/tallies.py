@@ -18,11 +18,11 @@ class Pool:
         self.size = 0
         self.bar = np.inf  # no worse key can get in any more
 
-    def add(self, rows: NDArray[np.intp], keys: FloatArray) -> None:
+    def add(self, rows: NDArray[np.intp], keys: FloatArray | NDArray[np.float32]) -> None:
         """Offer rows."""
         good = keys <= self.bar
         self.rows.append(rows[good])
-        self.keys.append(keys[good])
+        self.keys.append(keys[good].astype(float))
         self.size += int(good.sum())
         if self.size > 4 * self.keep:
             rows, keys = self._best()
@@ -52,18 +52,6 @@ class Losses:
         self.rows: list[NDArray[np.intp]] = []
         self.checks: list[NDArray[np.intp]] = []
         self.bounds: list[FloatArray] = []
-
-    def add(self, check: NDArray[np.intp], weight: NDArray[np.intp]) -> None:
-        """Count `weight` sets under each check."""
-        self.counts += np.bincount(check, weights=weight, minlength=len(self.names)).astype(np.int64)
-
-    def count(self, check: int, governed: NDArray[np.bool_], drives_per_motor: NDArray[np.intp]) -> None:
-        """Count under one check the sets of the pairs that it governs, (N, M)."""
-        drives = drives_per_motor[0]
-        if np.all(drives_per_motor == drives):
-            self.counts[check] += int(np.count_nonzero(governed)) * int(drives)
-        else:
-            self.counts[check] += int(np.count_nonzero(governed, axis=0) @ drives_per_motor)
 
     def keep(self, rows: NDArray[np.intp], check: NDArray[np.intp], bound: FloatArray) -> None:
         """List the sets themselves."""
