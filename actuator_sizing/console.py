@@ -284,6 +284,7 @@ class ProgressBar:
         self._started = time.monotonic()
         self._bar: Any = None
         self._task: Any = None
+        self._stage, self._stage_started, self._first_part = "", 0.0, 0.0
 
     def __enter__(self) -> Self:
         return self
@@ -305,7 +306,27 @@ class ProgressBar:
                 return
             self._bar, self._task = _rich_bar()
             self._bar.start()
-        self._bar.update(self._task, completed=part_done, description=clean(stage))
+        self._bar.update(
+            self._task, completed=part_done, description=clean(stage) + self._left(stage, part_done)
+        )
+
+    def _left(self, stage: str, part_done: float) -> str:
+        """Time left in a stage, judged by the part of it that is done."""
+        now = time.monotonic()
+        if stage != self._stage:
+            self._stage, self._stage_started, self._first_part = stage, now, part_done
+        done, took = part_done - self._first_part, now - self._stage_started
+        if done <= 0.0 or took < _PATIENCE_S:
+            return ""
+        minutes, seconds = divmod(round(took * (1.0 - part_done) / done), 60)
+        return f", {minutes}:{seconds:02d} left"
+
+    def tell(self, sentence: str) -> None:
+        """Print a sentence on stderr, above the bar where there is one."""
+        if self._bar is not None:
+            self._bar.console.print(clean(sentence), markup=False, highlight=False)
+        else:
+            click.echo(clean(sentence), err=True)
 
     def __exit__(self, *_exception: object) -> None:
         if self._bar is not None:

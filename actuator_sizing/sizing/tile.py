@@ -25,32 +25,72 @@ _ONE = np.float32(1.0)
 
 @dataclass(frozen=True)
 class BlockBounds:
-    """The bounds of all checks for one block, not yet worked out."""
+    """The bounds of all checks for N gearheads × M motors over every cycle, not yet worked out."""
 
-    block: Block
-    #: number in the list of checks, its ratios, and one over the allowed utilisation
-    by_motor: tuple[tuple[int, tuple[Ratio, ...], float], ...]
+    blocks: tuple[Block, ...]  # one for each cycle
+    sustained: tuple[bool, ...]  # whether the RMS of the cycle counts for the drives
+    #: number in the list of checks, its ratios with the number of their cycle, and one over the allowed utilisation
+    by_motor: tuple[tuple[int, tuple[tuple[int, Ratio], ...], float], ...]
     gearhead_worst: SingleArray  # (N, 1) largest of those that depend on the gearhead alone
     gearhead_check: NDArray[np.intp]  # (N,) which check that is
 
     @classmethod
-    def of(cls, block: Block, checks: tuple[Check, ...], allowed: Mapping[str, float]) -> BlockBounds:
-        """Ask every check for its bound."""
-        count = len(block.gearheads)
+    def of(
+        cls,
+        blocks: tuple[Block, ...],
+        checks: tuple[Check, ...],
+        allowed: Mapping[str, float],
+        concerned: tuple[tuple[str, ...], ...] | None = None,
+        sustained: tuple[bool, ...] | None = None,
+    ) -> BlockBounds:
+        """Ask every check for its bound.
+
+        Parameters
+        ----------
+        blocks : tuple of Block
+            The same gearheads and motors under every cycle. [-]
+        checks : tuple of Check
+            Checks that have a bound. [-]
+        allowed : mapping
+            Allowed utilisation by check key. [-]
+        concerned : tuple of tuple of str, optional
+            Keys of the checks that concern each cycle; default: all. [-]
+        sustained : tuple of bool, optional
+            Whether the RMS of each cycle counts for the drives; default: of all. [-]
+
+        Returns
+        -------
+        BlockBounds
+            Of several cycles the largest bound counts. [-]
+        """
+        gearheads = blocks[0].gearheads
+        count = len(gearheads)
         worst, which = np.zeros(count), np.zeros(count, dtype=np.intp)
         by_motor = []
         for number, check in enumerate(checks):
             assert check.bound is not None
-            bound = check.bound(block)
-            if isinstance(bound, tuple):
-                by_motor.append((number, bound, 1.0 / allowed[check.key]))
-                continue
-            utilisation = bound.reshape(count) / allowed[check.key]
-            if check.group == "gearhead":
-                utilisation = np.where(block.gearheads.is_direct, 0.0, utilisation)
-            higher = utilisation > worst  # NaN, not known, is never the worst
-            worst, which = np.where(higher, utilisation, worst), np.where(higher, number, which)
-        return cls(block, tuple(by_motor), worst.astype(np.float32)[:, None], which)
+            ratios: list[tuple[int, Ratio]] = []
+            for cycle, block in enumerate(blocks):
+                if concerned is not None and check.key not in concerned[cycle]:
+                    continue
+                bound = check.bound(block)
+                if isinstance(bound, tuple):
+                    ratios += [(cycle, ratio) for ratio in bound]
+                    continue
+                utilisation = bound.reshape(count) / allowed[check.key]
+                if check.group == "gearhead":
+                    utilisation = np.where(gearheads.is_direct, 0.0, utilisation)
+                higher = utilisation > worst  # NaN, not known, is never the worst
+                worst, which = np.where(higher, utilisation, worst), np.where(higher, number, which)
+            if ratios:
+                by_motor.append((number, tuple(ratios), 1.0 / allowed[check.key]))
+        return cls(
+            blocks,
+            (True,) * len(blocks) if sustained is None else sustained,
+            tuple(by_motor),
+            worst.astype(np.float32)[:, None],
+            which,
+        )
 
 
 @dataclass(frozen=True)
@@ -60,7 +100,7 @@ class Tile:
     worst: SingleArray  # (N, M) largest utilisation over allowed
     by_motor: tuple[tuple[int, SingleArray], ...]  # the same of each check that depends on the motor
     torque_peak: SingleArray  # (N, M) lower bound [N·m]
-    mean_square: SingleArray  # (N, M) exact [N²·m²]
+    mean_square: SingleArray  # (N, M) exact, of the sustained cycles the largest [N²·m²]
 
 
 class TileWorker:
@@ -108,10 +148,36 @@ class TileWorker:
         Tile
             In buffers that the next call overwrites. [-]
         """
-        block = bounds.block
         gearhead_worst = bounds.gearhead_worst[which]
-        shape = (len(gearhead_worst), len(block.motors))
-        square, peak = self._buffer("square", shape), self._buffer("peak", shape)
+        shape = (len(gearhead_worst), len(bounds.blocks[0].motors))
+        cycles = [self._pair_quantities(block, which, n, shape) for n, block in enumerate(bounds.blocks)]
+        worst, part = self._buffer("worst", shape), self._buffer("part", shape)
+        worst[:] = gearhead_worst
+        found = []
+        for number, ratios, scale in bounds.by_motor:
+            largest = self._buffer(f"check {number}", shape)
+            for place, (cycle, ratio) in enumerate(ratios):
+                self._ratio(ratio, which, *cycles[cycle], part if place else largest)
+                if place:
+                    np.maximum(largest, part, out=largest)
+            if scale != 1.0:
+                np.multiply(largest, np.float32(scale), out=largest)
+            np.maximum(worst, largest, out=worst)
+            found.append((number, largest))
+        square, peak = cycles[0]
+        if not bounds.sustained[0]:
+            square.fill(0.0)
+        for (other_square, other_peak), counts in zip(cycles[1:], bounds.sustained[1:], strict=True):
+            np.maximum(peak, other_peak, out=peak)
+            if counts:
+                np.maximum(square, other_square, out=square)
+        return Tile(worst, tuple(found), peak, square)
+
+    def _pair_quantities(
+        self, block: Block, which: slice, cycle: int, shape: tuple[int, int]
+    ) -> tuple[SingleArray, SingleArray]:
+        """Mean square of the air-gap torque and lower bound of its peak in one cycle."""
+        square, peak = self._buffer(f"square {cycle}", shape), self._buffer(f"peak {cycle}", shape)
         self._product(block.mean_square.part(which), square)
         np.maximum(square, self._row(0.0, shape[1]), out=square)
         peak.fill(0.0)
@@ -119,21 +185,7 @@ class TileWorker:
         for form in block.torque_peak:
             self._product(form.part(which), part)
             np.maximum(peak, part, out=peak)
-        worst = self._buffer("worst", shape)
-        worst[:] = gearhead_worst
-        found = []
-        for number, ratios, scale in bounds.by_motor:
-            largest = self._buffer(f"check {number}", shape)
-            for place, ratio in enumerate(ratios):
-                out = part if place else largest
-                self._ratio(ratio, which, square, peak, out)
-                if place:
-                    np.maximum(largest, part, out=largest)
-            if scale != 1.0:
-                np.multiply(largest, np.float32(scale), out=largest)
-            np.maximum(worst, largest, out=worst)
-            found.append((number, largest))
-        return Tile(worst, tuple(found), peak, square)
+        return square, peak
 
     def _product(self, form: Form, out: SingleArray) -> None:
         """``rows @ columns`` in the precision of the form, into single precision."""

@@ -79,7 +79,7 @@ def test_the_bound_of_the_voltage_holds_for_a_saturated_motor_that_brakes():
         gearheads=[{**GEARHEAD, "ratio": 5.0}],
     )
     sets, verdicts = judged(made)
-    bounds = BlockBounds.of(block_of(made), (VOLTAGE,), {"voltage": 1.0})
+    bounds = BlockBounds.of((block_of(made),), (VOLTAGE,), {"voltage": 1.0})
     bound = TileWorker(1).work(bounds, slice(0, 1)).by_motor[0][1][0, 0]
     exact = verdicts.utilisation[0, column(verdicts, "voltage")]
     # 1e-5: rounding of single precision, as the screening allows.

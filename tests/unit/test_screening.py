@@ -7,7 +7,9 @@ import pytest
 
 from actuator_sizing.case.model import Limit
 from actuator_sizing.core.parameters import DriveParameters
-from actuator_sizing.sizing import drive_counts, screening
+from actuator_sizing.sizing import drive_counts, screening, shard
+from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
+from actuator_sizing.sizing.checks import CHECKS
 from actuator_sizing.sizing.comparison import compare
 from actuator_sizing.sizing.demand import build_demand
 from actuator_sizing.sizing.drive_counts import DriveRanks
@@ -15,6 +17,7 @@ from actuator_sizing.sizing.drive_side import DriveSide
 from actuator_sizing.sizing.judging import ORDER, active_checks, is_binding, judge_sets
 from actuator_sizing.sizing.results import FAILS
 from actuator_sizing.sizing.shortlist import evaluate_sets
+from actuator_sizing.sizing.tile import BlockBounds, TileWorker
 from tests.made_cases import DIRECT, DRIVE, GEARHEAD, MOTOR, case, columns, cycle
 
 LAWS = ("trapezoid", "jerk-limited", "3-4-5 polynomial", "cycloidal", "modified sine", "simple harmonic")
@@ -108,7 +111,9 @@ def test_blocks_of_any_size_give_the_same_answer(monkeypatch):
     made = random_case(4)
     whole = screened(made)
     monkeypatch.setattr(screening, "_MOTORS_PER_BLOCK", 2)
-    monkeypatch.setattr(screening, "_PAIRS_PER_TILE", 2)
+    monkeypatch.setattr(screening, "PAIRS_PER_TILE", 2)
+    monkeypatch.setattr(shard, "PAIRS_PER_TILE", 2)
+    monkeypatch.setattr(screening, "_PAIRS_PER_SHARD", 4)
     pieces = screened(made)
     assert whole.rejected_by_check == pieces.rejected_by_check
     np.testing.assert_array_equal(whole.survivors, pieces.survivors)
@@ -134,6 +139,28 @@ def test_large_catalogs_are_counted_as_small_ones_are_listed(monkeypatch, key, k
             np.testing.assert_array_equal(getattr(counted, name), getattr(listed, name))
         rejected_by_drive += len(listed.nearest_by_drive)
     assert rejected_by_drive > 20  # else the test proves nothing
+
+
+def test_of_several_cycles_the_worst_counts():
+    # The heavier cycle alone, and both together: a lighter one must not lift any bound.
+    made = random_case(3)
+    lighter = replace(made, segments=made.segments[:2])
+    checks = tuple(check for check in CHECKS if check.bound is not None and not check.is_advice)
+    keys = {check.key: 1.0 for check in checks}
+
+    def worst(*demands):
+        motors = MotorSide.of(made.motor_parameters, made.surroundings)
+        sides = [GearheadSide.of(made.gearhead_parameters, demand) for demand in demands]
+        blocks = tuple(
+            Block(demand, made.surroundings, 10.0, motors, side)
+            for demand, side in zip(demands, sides, strict=True)
+        )
+        tile = TileWorker(64).work(BlockBounds.of(blocks, checks, keys), slice(0, 6))
+        return tile.worst.copy(), tile.torque_peak.copy(), tile.mean_square.copy()
+
+    one, other = build_demand(made), build_demand(lighter)
+    for both, first, second in zip(worst(one, other), worst(one), worst(other), strict=True):
+        np.testing.assert_array_equal(both, np.maximum(first, second))
 
 
 def test_the_ranks_of_drives_agree_with_asking_every_drive():
