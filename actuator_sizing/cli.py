@@ -215,6 +215,47 @@ def compare(
 
 
 @commands.command()
+@click.argument("cases", nargs=-1, required=True, type=click.Path(exists=True, path_type=Path))
+@click.option("--name", default="machine", show_default=True, help="Name of the machine, and of its folder.")
+@click.option("--out", type=click.Path(file_okay=False, path_type=Path), help="Folder of the report.")
+@click.option(
+    "--rank-by",
+    type=click.Choice(["price", "mass", "reserve", "energy"]),
+    help="What the passing sets are ranked by; default: what each case says.",
+)
+@click.option("--json", "as_json", is_flag=True, help="Print machine.json; no files unless --out is given.")
+@click.option("--pdf/--no-pdf", default=None, help="Write the PDF too; default: if its package is installed.")
+@_debug
+def machine(
+    cases: tuple[Path, ...], name: str, out: Path | None, rank_by: str | None, as_json: bool, pdf: bool | None
+) -> int:
+    """Size the axes of one machine, one of CASES each.
+
+    Compares every axis by itself, then says which types repeat, what fewer motor types would cost, and what
+    the axes ask together of their bus. The report goes to reports/<name>/. Name a case twice for two equal axes.
+    """
+    from actuator_sizing.console import ProgressBar
+    from actuator_sizing.machine_console import print_machine, read_cases
+    from actuator_sizing.report.machine import write_machine
+    from actuator_sizing.sizing.machine import compare_machine
+
+    understood = read_cases(cases)
+    written: tuple[Path, ...] = ()
+    with ProgressBar() as progress:
+        compared = compare_machine(understood, name=name, rank_by=rank_by, progress=progress)
+        if out is not None or not as_json:
+            progress("writing the report", 0.0)
+            written = write_machine(compared, out or _report_folder(name), pdf=pdf)
+    if as_json:
+        from actuator_sizing.report.machine.results import render_machine_json
+
+        click.echo(render_machine_json(compared).rstrip(b"\n"))
+    else:
+        print_machine(compared, written)
+    return PASSED if compared.passes else NONE_PASSES
+
+
+@commands.command()
 @_case_argument("case")
 @click.option("--motor", metavar="NAME", help="Motor; without any part, the best set of 'compare'.")
 @click.option("--gearhead", metavar="NAME", help="Gearhead; without it, direct drive.")

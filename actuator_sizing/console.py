@@ -203,13 +203,7 @@ def _row(result: SetResult) -> tuple[str, ...]:
 def _print_table(headings: Sequence[str], rows: Sequence[Sequence[str]]) -> None:
     """Aligned plain text when piped; on a terminal one line a set, cut to its width."""
     if not sys.stdout.isatty():
-        widths = [max(map(len, column)) for column in zip(headings, *rows, strict=True)]
-        for cells in (headings, *rows):
-            padded = (
-                cell.rjust(width) if index in _RIGHT else cell.ljust(width)
-                for index, (cell, width) in enumerate(zip(cells, widths, strict=True))
-            )
-            click.echo("  ".join(padded).rstrip())
+        print_plain_table(headings, rows, _RIGHT)
         return
     from rich.box import SIMPLE_HEAD
     from rich.console import Console
@@ -224,6 +218,27 @@ def _print_table(headings: Sequence[str], rows: Sequence[Sequence[str]]) -> None
     for cells in lines[1:]:
         table.add_row(*(Text(cell) for cell in cells))  # Text: a name such as "[b]" is no markup
     Console(width=room).print(table)
+
+
+def print_plain_table(headings: Sequence[str], rows: Sequence[Sequence[str]], right: Sequence[int]) -> None:
+    """Print a table as aligned text.
+
+    Parameters
+    ----------
+    headings : sequence of str
+        Names of the columns.
+    rows : sequence of sequence of str
+        Cells.
+    right : sequence of int
+        Columns of numbers, which stand to the right. [-]
+    """
+    widths = [max(map(len, column)) for column in zip(headings, *rows, strict=True)]
+    for cells in (headings, *rows):
+        padded = (
+            cell.rjust(width) if index in right else cell.ljust(width)
+            for index, (cell, width) in enumerate(zip(cells, widths, strict=True))
+        )
+        click.echo("  ".join(padded).rstrip())
 
 
 def fit_columns(rows: Sequence[Sequence[str]], room: int) -> tuple[list[int], list[list[str]]]:
