@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.core.bus import bus_energy
+from actuator_sizing.core.power_runs import bus_energy
 
 if TYPE_CHECKING:
     import pandas as pd

@@ -16,6 +16,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
+from actuator_sizing.sizing.cycles import CycleDemand
 from actuator_sizing.sizing.demand import Demand
 from actuator_sizing.sizing.drive_side import DriveSide
 from actuator_sizing.sizing.executing import Interruption, work_through
@@ -57,7 +58,7 @@ class Screened:
 
 def screen(
     case: Case,
-    demand: Demand,
+    demand: Demand | tuple[CycleDemand, ...],
     checks: tuple[Check, ...],
     allowed: Mapping[str, float],
     key: str,
@@ -74,8 +75,8 @@ def screen(
     ----------
     case : Case
         The case with its catalogs. [-]
-    demand : Demand
-        The cycle at the driven shaft. [-]
+    demand : Demand or tuple of CycleDemand
+        The cycle at the driven shaft; every cycle, where there are several: of each bound the largest counts. [-]
     checks : tuple of Check
         Checks that can fail a set. [-]
     allowed : mapping
@@ -106,12 +107,11 @@ def screen(
     motor_index, gearhead_index = fits_axis(case)
     drives = case.drive_parameters
     total = len(case.motor_parameters) * len(case.gearhead_parameters) * len(drives)
-    check_keys = tuple(check.key for check in checks if check.bound is not None)
     common = Common(
-        loads=(Load(demand, check_keys),),
+        loads=_loads(demand),
         surroundings=case.surroundings,
         recommended_inertia_ratio=case.number("recommended inertia ratio"),
-        check_keys=check_keys,
+        check_keys=tuple(check.key for check in checks if check.bound is not None),
         allowed=dict(allowed),
         gearheads=case.gearhead_parameters.take(gearhead_index),
         gearhead_index=gearhead_index,
@@ -144,6 +144,12 @@ def screen(
         lost_bound=lost_bound,
         check_names=losses.names,
     )
+
+
+def _loads(demand: Demand | tuple[CycleDemand, ...]) -> tuple[Load, ...]:
+    if isinstance(demand, tuple):
+        return tuple(Load(each.demand, each.cycle.runs) for each in demand)
+    return (Load(demand),)
 
 
 def _shards(case: Case, motor_index: NDArray[np.intp], gearheads: int) -> Iterator[Shard]:

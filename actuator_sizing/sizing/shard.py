@@ -14,7 +14,8 @@ from typing import TYPE_CHECKING
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.core.machine import amplitude_per_unit_current
+from actuator_sizing.case.model import REPEATS
+from actuator_sizing.core.machine import motor_amplitude_per_unit_current
 from actuator_sizing.core.parameters import DriveParameters, GearheadParameters, MotorParameters, Surroundings
 from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
 from actuator_sizing.sizing.demand import Demand
@@ -50,8 +51,7 @@ class Load:
     """One cycle as the screening sees it."""
 
     demand: Demand
-    check_keys: tuple[str, ...]  # checks with a bound that concern it
-    is_sustained: bool = True  # whether its RMS counts for the drives
+    runs: str = REPEATS  # how it runs, which decides the checks that concern it
 
 
 @dataclass(frozen=True)
@@ -170,16 +170,10 @@ def screen_shard(common: Common, shard: Shard, bars: Bars) -> Found:
     found = Found.nothing(common, bars)
     motor_side = MotorSide.of(shard.motors, common.surroundings)
     blocks = tuple(
-        Block(load.demand, common.surroundings, common.recommended_inertia_ratio, motor_side, side)
+        Block(load.demand, common.surroundings, common.recommended_inertia_ratio, motor_side, side, load.runs)
         for load, side in zip(common.loads, common.gearhead_sides, strict=True)
     )
-    bounds = BlockBounds.of(
-        blocks,
-        common.checks,
-        common.allowed,
-        tuple(load.check_keys for load in common.loads),
-        tuple(load.is_sustained for load in common.loads),
-    )
+    bounds = BlockBounds.of(blocks, common.checks, common.allowed)
     run = _Run(common, shard, bounds, found, TileWorker(PAIRS_PER_TILE))
     step = max(1, PAIRS_PER_TILE // len(shard.motors))
     passing: list[_Pairs] = []
@@ -281,7 +275,7 @@ def _screen_drives(run: _Run, pairs: _Pairs) -> int:
     """Hold the pairs that may pass against every drive; returns how many sets survive."""
     common, drives, found = run.common, run.shard.drives, run.found
     motors, K = run.shard.motors, run.bounds.blocks[0].judged.torque_constant_nm_per_a
-    per_torque = (amplitude_per_unit_current(motors.current_basis) / K)[pairs.motor]
+    per_torque = (motor_amplitude_per_unit_current(motors) / K)[pairs.motor]
     peak_a, rms_a = pairs.torque_peak * per_torque, np.sqrt(pairs.mean_square) * per_torque
     key = _pair_key(run, pairs)
     cheapest = common.drive_key[drives].min()

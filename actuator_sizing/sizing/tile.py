@@ -28,7 +28,6 @@ class BlockBounds:
     """The bounds of all checks for N gearheads × M motors over every cycle, not yet worked out."""
 
     blocks: tuple[Block, ...]  # one for each cycle
-    sustained: tuple[bool, ...]  # whether the RMS of the cycle counts for the drives
     #: number in the list of checks, its ratios with the number of their cycle, and one over the allowed utilisation
     by_motor: tuple[tuple[int, tuple[tuple[int, Ratio], ...], float], ...]
     gearhead_worst: SingleArray  # (N, 1) largest of those that depend on the gearhead alone
@@ -40,8 +39,6 @@ class BlockBounds:
         blocks: tuple[Block, ...],
         checks: tuple[Check, ...],
         allowed: Mapping[str, float],
-        concerned: tuple[tuple[str, ...], ...] | None = None,
-        sustained: tuple[bool, ...] | None = None,
     ) -> BlockBounds:
         """Ask every check for its bound.
 
@@ -53,10 +50,6 @@ class BlockBounds:
             Checks that have a bound. [-]
         allowed : mapping
             Allowed utilisation by check key. [-]
-        concerned : tuple of tuple of str, optional
-            Keys of the checks that concern each cycle; default: all. [-]
-        sustained : tuple of bool, optional
-            Whether the RMS of each cycle counts for the drives; default: of all. [-]
 
         Returns
         -------
@@ -71,7 +64,7 @@ class BlockBounds:
             assert check.bound is not None
             ratios: list[tuple[int, Ratio]] = []
             for cycle, block in enumerate(blocks):
-                if concerned is not None and check.key not in concerned[cycle]:
+                if not check.concerns_cycle(block.runs):
                     continue
                 bound = check.bound(block)
                 if isinstance(bound, tuple):
@@ -86,7 +79,6 @@ class BlockBounds:
                 by_motor.append((number, tuple(ratios), 1.0 / allowed[check.key]))
         return cls(
             blocks,
-            (True,) * len(blocks) if sustained is None else sustained,
             tuple(by_motor),
             worst.astype(np.float32)[:, None],
             which,
@@ -100,7 +92,7 @@ class Tile:
     worst: SingleArray  # (N, M) largest utilisation over allowed
     by_motor: tuple[tuple[int, SingleArray], ...]  # the same of each check that depends on the motor
     torque_peak: SingleArray  # (N, M) lower bound [N·m]
-    mean_square: SingleArray  # (N, M) exact, of the sustained cycles the largest [N²·m²]
+    mean_square: SingleArray  # (N, M) exact, of the cycles that repeat the largest [N²·m²]
 
 
 class TileWorker:
@@ -165,11 +157,12 @@ class TileWorker:
             np.maximum(worst, largest, out=worst)
             found.append((number, largest))
         square, peak = cycles[0]
-        if not bounds.sustained[0]:
+        # A cycle that runs once has no mean for the drive's continuous rating.
+        if not bounds.blocks[0].repeats:
             square.fill(0.0)
-        for (other_square, other_peak), counts in zip(cycles[1:], bounds.sustained[1:], strict=True):
+        for block, (other_square, other_peak) in zip(bounds.blocks[1:], cycles[1:], strict=True):
             np.maximum(peak, other_peak, out=peak)
-            if counts:
+            if block.repeats:
                 np.maximum(square, other_square, out=square)
         return Tile(worst, tuple(found), peak, square)
 

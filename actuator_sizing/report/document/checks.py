@@ -18,7 +18,13 @@ if TYPE_CHECKING:
 #: Checks whose working is shown: the governing one, those that fail, and the nearest to their limit.
 MOST_WORKINGS = 4
 _LONGEST_BAR = 10.0
-_GROUPS = {"motor": "Motor", "drive": "Drive", "gearhead": "Gearhead", "axis": "Axis"}
+_GROUPS = {
+    "motor": "Motor",
+    "drive": "Drive",
+    "gearhead": "Gearhead",
+    "mechanism": "Mechanism",
+    "axis": "Axis",
+}
 
 _COLUMNS = (
     Column("Check", weight=3.4),
@@ -61,8 +67,9 @@ def _check_row(check: CheckResult) -> tuple[Cell, ...]:
     where = "whole cycle" if check.at_time_s is None else f"{quantity(check.at_time_s, 's')}"
     if check.verdict == NOT_CHECKED:
         where = ""
-    elif check.segment:
-        where += f", {clean(check.segment, 40)}"
+    else:
+        parts = (clean(check.cycle or "", 40), where, clean(check.segment or "", 40))
+        where = ", ".join(part for part in parts if part)
     return row(
         Cell(title, note=note),
         demand,

@@ -19,6 +19,8 @@ from actuator_sizing.sizing.checks.gearhead import (
     GEARHEAD_PEAK,
     INERTIA_RATIO,
 )
+from actuator_sizing.sizing.checks.gearhead_life import GEARHEAD_LIFE_CHECKS
+from actuator_sizing.sizing.checks.holding import HOLDING_CHECKS
 from actuator_sizing.sizing.checks.motor import (
     MOTOR_PEAK_CURRENT,
     MOTOR_SPEED,
@@ -27,7 +29,11 @@ from actuator_sizing.sizing.checks.motor import (
     VOLTAGE,
     WINDING_TEMPERATURE,
 )
+from actuator_sizing.sizing.checks.overload import OVERLOAD_CHECKS
+from actuator_sizing.sizing.checks.screw import SCREW_CHECKS
+from actuator_sizing.sizing.checks.shaft import SHAFT_CHECKS
 from actuator_sizing.sizing.checks.stopping import STOPPING_CHECKS
+from actuator_sizing.sizing.checks.traction import TRACTION_CHECKS
 
 CHECKS: tuple[Check, ...] = (
     SPEED_TORQUE,
@@ -36,6 +42,7 @@ CHECKS: tuple[Check, ...] = (
     MOTOR_PEAK_CURRENT,
     MOTOR_SPEED,
     VOLTAGE,
+    *OVERLOAD_CHECKS,
     DRIVE_CONTINUOUS,
     DRIVE_PEAK,
     DRIVE_PEAK_TIME,
@@ -45,7 +52,12 @@ CHECKS: tuple[Check, ...] = (
     GEARHEAD_PEAK,
     GEARHEAD_MEAN_SPEED,
     GEARHEAD_MAX_SPEED,
+    *GEARHEAD_LIFE_CHECKS,
+    *SHAFT_CHECKS,
+    *SCREW_CHECKS,
+    *TRACTION_CHECKS,
     *STOPPING_CHECKS,
+    *HOLDING_CHECKS,
     INERTIA_RATIO,
     SETTLING,
     FOLLOWING_ERROR,

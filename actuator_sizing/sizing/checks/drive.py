@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import NDArray
 
 from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits
 
@@ -12,6 +13,11 @@ _PEAK = Need("drives", "peak_current_a", "peak current")
 
 def _continuous_measure(sets: Sets) -> Measure:
     return Measure(sets.drive_current_rms_a, sets.drives.continuous_current_a, sets.drive_current_rms_at_s)
+
+
+def _has_mean(sets: Sets) -> NDArray[np.bool_]:
+    """Whether there is a time to take the mean over: a cycle that repeats, else the drive's own window."""
+    return sets.case.cycle.repeats | np.isfinite(sets.drives.rms_window_s)
 
 
 def _continuous_working(sets: Sets, i: int) -> str:
@@ -35,6 +41,7 @@ DRIVE_CONTINUOUS = Check(
     needs=(_CONTINUOUS,),
     measure=_continuous_measure,
     working=_continuous_working,
+    applies=_has_mean,
 )
 
 
