@@ -200,6 +200,18 @@ DRIVE_COLUMNS = (
            "current "
            "holds", default=40.0, assumed="40 °C, the usual reference site", minimum=-60.0, maximum=200.0,
            example="40", unit="°C"),
+    Column("ambient derating", "temperature coefficient", "part of the continuous current lost per kelvin above that "
+           "ambient", minimum=0.0, maximum=1.0, example="", unit="%/K"),
+    Column("altitude derating per 100 m", "ratio", "part of the continuous current lost per 100 m above 1000 m",
+           minimum=0.0, maximum=1.0, example="", unit="%"),
+    Column("standstill current", "current", "current it gives for ever at standstill, where one leg carries the "
+           "amplitude", positive=True, maximum=1.0e6, example="", unit="A"),
+    Column("maximum output frequency", "frequency", "largest electrical frequency it makes", positive=True,
+           maximum=1.0e6, example="", unit="Hz"),
+    Column("PWM frequency", "frequency", "frequency of its pulses", positive=True, maximum=1.0e8, example="",
+           unit="kHz"),
+    Column("minimum load inductance", "inductance", "smallest inductance between two terminals that it may feed",
+           minimum=0.0, maximum=1.0, example="", unit="mH"),
     Column("minimum bus voltage", "voltage", "lowest DC bus voltage it works at", required=True, minimum=0.0,
            maximum=1.0e5, example="100", unit="V"),
     Column("maximum bus voltage", "voltage", "DC bus voltage at which it switches off", required=True,

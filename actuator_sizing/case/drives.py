@@ -27,7 +27,7 @@ def understand_drives(parsed: ParsedTable) -> DriveParameters:
     """
     check_required(parsed)
     basis = word_codes(parsed, "current_basis", CURRENT_BASES)
-    for key in ("continuous_current", "peak_current"):
+    for key in ("continuous_current", "peak_current", "standstill_current"):
         convert_ampere(parsed, key, basis)
     check_order(parsed, "continuous_current", "peak_current",
                 remedy="Check both values and the ampere (DC, rms, peak) each one means.")  # fmt: skip

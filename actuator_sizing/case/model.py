@@ -143,6 +143,19 @@ class Catalog:
     def __len__(self) -> int:
         return len(self.names)
 
+    def row(self, index: int) -> Catalog:
+        """One part of the catalog by itself."""
+        one = slice(index, index + 1)
+        return replace(
+            self,
+            names=self.names[one],
+            rows=self.rows[one],
+            values={key: column[one] for key, column in self.values.items()},
+            origins={key: column[one] for key, column in self.origins.items()},
+            as_entered={key: column[one] for key, column in self.as_entered.items()},
+            rules={key: {0: rules[index]} for key, rules in self.rules.items() if index in rules},
+        )
+
 
 @dataclass(frozen=True)
 class Case:

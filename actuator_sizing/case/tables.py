@@ -49,6 +49,11 @@ CHECK_NAMES: tuple[tuple[str, str], ...] = (
     ("drive_peak_current", "drive peak current"),
     ("drive_peak_time", "drive peak time"),
     ("drive_bus_voltage", "drive bus voltage range"),
+    ("drive_standstill_current", "drive current at standstill"),
+    ("drive_output_frequency", "electrical frequency"),
+    ("drive_load_inductance", "load inductance"),
+    ("pwm_ripple_loss", "loss by PWM ripple"),
+    ("cable_voltage_drop", "voltage drop of the motor cable"),
     ("bus_maximum_voltage", "highest bus voltage"),
     ("chopper_release", "chopper release voltage"),
     ("bus_sag", "voltage on a sagging bus"),
@@ -99,6 +104,8 @@ CHECK_NAMES: tuple[tuple[str, str], ...] = (
 
 #: Judged as advice unless the limits table says otherwise: rules of thumb, and events that need not be possible.
 ADVICE_CHECKS = (
+    "pwm_ripple_loss",
+    "cable_voltage_drop",
     "stop_shorted",
     "stop_brake",
     "motor_shorted_current",
@@ -108,7 +115,7 @@ ADVICE_CHECKS = (
     "inertia_ratio",
 )
 #: Parts fit or do not; a reserve would mean nothing.
-FITTING_CHECKS = ("drive_bus_voltage", "chopper_release", "brake_resistor_value")
+FITTING_CHECKS = ("drive_bus_voltage", "drive_load_inductance", "chopper_release", "brake_resistor_value")
 DEFAULT_ALLOWED_UTILISATION = 1.0
 DEFAULT_RECOMMENDED_RESERVE = 0.1
 #: Checks whose common practice keeps a distance: a screw turns at up to 80 % of its critical speed, is loaded to half

@@ -245,6 +245,9 @@ class Check:
         How a cycle must run for the check to concern it, as in the table `cycles`; empty: in any way.
     is_fit_where : callable or None
         Sets → mask of the sets for which it is such a matter, and a reserve would mean nothing.
+    binds_where : callable or None
+        Sets → mask of the sets whose sheets state what the check needs; it only advises on the others, for which it
+        goes by a rule of thumb.
     yields_to : str
         Key of the check that fails too wherever this one is infinite, and says by how much.
     """
@@ -264,6 +267,7 @@ class Check:
     is_advice: bool = False
     is_fit: bool = False
     concerns: tuple[str, ...] = ()
+    binds_where: Callable[[Sets], NDArray[np.bool_]] | None = None
     is_fit_where: Callable[[Sets], NDArray[np.bool_]] | None = None
     yields_to: str = ""
 
