@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 from numpy.typing import NDArray
 
+from actuator_sizing.case.columns import fold
 from actuator_sizing.case.model import Case
 from actuator_sizing.core.control import LoopSettings
 from actuator_sizing.core.parameters import CURRENT_BASES
@@ -49,6 +50,7 @@ def simulate(
     winding_degc: float = math.nan,
     settling_band: float = math.nan,
     cycles: int = 1,
+    cycle: str = "",
 ) -> Simulation:
     """Simulate one set of motor, gearhead and drive.
 
@@ -72,6 +74,8 @@ def simulate(
         Half width in the coordinate of the load, m or rad; NaN: what the case says. [-]
     cycles : int
         How many cycles are run one after another; only for ``"cycle"``. [-]
+    cycle : str
+        Name of the cycle, where the case has several; the first one when empty. [-]
 
     Returns
     -------
@@ -88,8 +92,9 @@ def simulate(
     Between samples the plant is propagated exactly; friction that depends on load, and a ratio that changes,
     act as they would on the planned motion.
     """
-    demand = build_demand(case)
     parts = find_set(case, motor, gearhead, drive)
+    case = _of_cycle(case, cycle)
+    demand = build_demand(case)
     _check_finite("rate_hz", rate_hz, "a sampling rate > 0 up to 1 MHz", 0.0, 1.0e6)
     _check_finite("settling_band", settling_band, "a band > 0", 0.0, math.inf)
     _check_finite("winding_degc", winding_degc, "−60 to 400 °C", -60.0, 400.0)
@@ -97,6 +102,18 @@ def simulate(
         raise _wrong("cycles", str(cycles), "1 to 1 000 000", "Ask for fewer cycles.")
     axis = axis_plant(case, demand, parts, winding_degc=winding_degc, rate_hz=rate_hz)
     return simulate_set(axis, parts, input, settings or {}, settling_band, cycles)
+
+
+def _of_cycle(case: Case, name: str) -> Case:
+    """The case with one of its cycles, by name; the first where none is asked for."""
+    several = case.by_cycle()
+    for each in several:
+        if not name or fold(each.cycle.name) == fold(name):
+            return each
+    known = ", ".join(f"'{each.cycle.name}'" for each in several if each.cycle.name)
+    raise _wrong(
+        "cycle", f"'{name}'", known or "a case that names cycles", "Choose one of the cycles of the case."
+    )
 
 
 def simulate_prepared(case: Case, demand: Demand, parts: tuple[int, int, int]) -> Simulation | None:
