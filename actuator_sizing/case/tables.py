@@ -366,8 +366,10 @@ DUTY_CYCLE_COLUMNS = (
 POINT_COLUMNS = (
     Column("segment", TEXT, "segment of the duty cycle with the motion law 'spline'", required=True,
            example="swing"),
-    Column("time", "time", "from the start of the segment; the first point is at 0", required=True, minimum=0.0,
-           maximum=1.0e9, example="0", unit="s"),
+    Column("time", "time", "from the start of the segment; the first point is at 0", minimum=0.0, maximum=1.0e9,
+           example="0", unit="s"),
+    Column("master angle", "angle", "instead of time: turn of the master shaft from the start of the segment, as a "
+           "cam law states it; needs 'cycles per minute'", minimum=0.0, maximum=6.2832, unit="deg"),
     Column("position", ("length", "angle"), "counted from anywhere; the first point is where the segment starts",
            required=True, example="0", unit=("mm", "deg")),
 )  # fmt: skip
