@@ -251,6 +251,10 @@ COMMON_QUANTITIES = (
            assumed="the measured motion is kept", example="no"),
     Column("recorded torque constant", "torque constant", "torque at the driven shaft per ampere of the measured "
            "current", positive=True, example="", unit="Nm/A"),
+    Column("operating time per year", "time", "how long the axis runs its cycle in a year; for the energy of a year",
+           positive=True, maximum=3.1623e7, example="", unit="h"),
+    Column("price of energy per kWh", "price", "what a kilowatt-hour costs", minimum=0.0, maximum=1.0e6, example="",
+           unit="EUR"),
     Column("required life", "time", "operating hours the axis must reach", positive=True, example="20000",
            unit="h"),
     Column("driven shaft stiffness", "torsional stiffness", "stiffness between gearhead and load (coupling, "
