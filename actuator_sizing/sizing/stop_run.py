@@ -14,7 +14,7 @@ from actuator_sizing.core.plant import CURRENT, LOAD_SPEED, MOTOR_ANGLE, MOTOR_S
 from actuator_sizing.core.switching import Held, run_open_loop
 from actuator_sizing.sizing.axis_plant import AxisPlant
 from actuator_sizing.sizing.cycle_run import Run
-from actuator_sizing.sizing.open_loop import no_moves
+from actuator_sizing.sizing.open_loop import left_early, no_moves
 
 FloatArray = NDArray[np.float64]
 
@@ -100,12 +100,12 @@ def run_stop(axis: AxisPlant, settings: LoopSettings) -> Run:
         **controlled,
         **shorted,
     }
-    notes = (
+    notes: tuple[str, ...] = (
         "stops from the instant of the largest speed, counted from the command without a reaction time; gravity "
         "and process act, losses of the transmission are left out; stopped: below 1 % of that speed",
         "shorted winding: resistance and inductance of the winding alone, no current limit",
     )
-    return Run(series, quantities, no_moves(), notes)
+    return Run(series, quantities, no_moves(), notes + left_early(course))
 
 
 def _start(axis: AxisPlant) -> dict[str, Any]:
