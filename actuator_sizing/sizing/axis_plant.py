@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case, Segment
-from actuator_sizing.core.machine import amplitude_per_unit_current
+from actuator_sizing.core.machine import motor_amperes_per_drive_ampere
 from actuator_sizing.core.plant import Plant, series_stiffness
 from actuator_sizing.sizing.demand import Demand
 from actuator_sizing.sizing.loop_commands import Commands
@@ -122,9 +122,7 @@ class AxisPlant:
     def current_limit_a(self) -> float:
         """Peak current of motor and drive in the motor's kind of ampere; infinite where neither is known. [A]"""
         motor, drive = self.model.motor, self.model.drive
-        to_motor = amplitude_per_unit_current(drive.current_basis) / amplitude_per_unit_current(
-            motor.current_basis
-        )
+        to_motor = motor_amperes_per_drive_ampere(motor, drive)
         limit = float(np.fmin(motor.peak_current_a, drive.peak_current_a * to_motor)[0])
         return math.inf if math.isnan(limit) else limit
 

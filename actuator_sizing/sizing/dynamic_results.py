@@ -4,7 +4,8 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, fields, replace
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -48,6 +49,12 @@ class DynamicResults:
     following_error: FloatArray
     following_error_at_s: FloatArray
     sensitivity_peak_ratio: FloatArray
+
+    def take(self, rows: slice) -> DynamicResults:
+        """Some of the sets."""
+        values = {f.name: getattr(self, f.name) for f in fields(self)}
+        taken: dict[str, Any] = {n: v[rows] for n, v in values.items() if isinstance(v, np.ndarray)}
+        return replace(self, **taken)
 
 
 def add_dynamics(
