@@ -128,3 +128,4 @@ class Surroundings:
     modulation_limit: float  # largest line-to-line peak voltage over bus voltage
     judged_winding_degc: float  # NaN: the winding limit of each motor
     current_loop_rise_s: float
+    cable_ohm: float = 0.0  # motor cable, the way there and back

@@ -128,13 +128,15 @@ class Demand:
         return float(np.sqrt(self.mean(self.shaft_speed**2)))
 
 
-def build_demand(case: Case) -> Demand:
+def build_demand(case: Case, *, in_order: bool = False) -> Demand:
     """Cut the cycle of a case into smooth pieces and find what the driven shaft must do.
 
     Parameters
     ----------
     case : Case
         The axis as understood. [-]
+    in_order : bool
+        Whether every instant of a long record is wanted in its order, for simulation; else it is condensed.
 
     Returns
     -------
@@ -146,7 +148,7 @@ def build_demand(case: Case) -> Demand:
 
         payloads = np.array([segment.payload for segment in case.segments])
         largest = float(np.max(case.mechanism.inertia_at_shaft(payloads)))
-        return Demand(**recorded_pieces(case, case.recording), load_inertia=largest)
+        return Demand(**recorded_pieces(case, case.recording, in_order=in_order), load_inertia=largest)
     pieces = list(_pieces(case))
     stacked: dict[str, Any] = {
         name: np.array([piece[name] for piece in pieces])

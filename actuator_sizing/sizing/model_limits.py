@@ -71,7 +71,11 @@ def model_statements(case: Case, best: SetResult) -> tuple[tuple[str, str], ...]
         else f"{s.judged_winding_degc:g} °C"
     )
     said = [
-        ("model: hot winding", f"current and voltage are judged with the winding at {judged}"),
+        (
+            "model: hot winding",
+            f"current and voltage are judged with the winding at {judged}; voltage also with the motor at ambient, "
+            "where cold magnets raise it",
+        ),
         ("model: minimum bus", f"voltage and speed–torque limits are judged at {s.bus_min_v:g} V"),
         (
             "model: standstill",
@@ -106,12 +110,12 @@ def model_statements(case: Case, best: SetResult) -> tuple[tuple[str, str], ...]
 
 def _drive_rating(case: Case, best: SetResult) -> str:
     s, rated = case.surroundings, float(case.drive_parameters.continuous_ambient_degc[best.drive_index])
-    text = "the currents of the drive are taken as stated, whatever the cabinet and the switching frequency"
+    text = "the currents of the drive are taken as stated, whatever the switching frequency"
     if altitude_factor(s.altitude_m) < 1.0:
-        text += f"; they are not reduced for the altitude of {s.altitude_m:g} m"
+        text += f"; its peak current is not reduced for the altitude of {s.altitude_m:g} m"
     if rated < s.ambient_degc:
-        text += f"; they hold up to {rated:g} °C, the air around the motor has {s.ambient_degc:g} °C"
-    return text
+        text += f"; its peak current is not reduced for {s.ambient_degc:g} °C, above the rated {rated:g} °C"
+    return f"{text}; the cabinet is taken to be as warm as the air around the motor"
 
 
 def _holding_brake(case: Case, best: SetResult) -> list[tuple[str, str]]:

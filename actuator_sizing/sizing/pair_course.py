@@ -97,7 +97,13 @@ def course(
     -----
     ``i = T/K`` (saturation solved), ``u = √((R i + K ω + L di/dt)² + (p ω L i)²)``.
     """
-    torque, omega, at_shaft = air_gap_torque(demand, motors, gearheads)
+    return electrical_course(demand, *air_gap_torque(demand, motors, gearheads), judged)
+
+
+def electrical_course(
+    demand: Demand, torque: FloatArray, omega: FloatArray, at_shaft: FloatArray, judged: JudgedMotor
+) -> PairCourse:
+    """Current and voltage at the nodes for what `air_gap_torque` gives, at the temperatures of `judged`."""
     current = current_of_torque(
         torque, per_pair(judged.torque_constant_nm_per_a), per_pair(judged.saturation_per_a2)
     )

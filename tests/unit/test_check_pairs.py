@@ -14,7 +14,7 @@ LIMITS = default_limits()
 
 def results_of(sets):
     verdicts = judge_sets(sets, CHECKS, tuple(LIMITS[check.key] for check in CHECKS))
-    return {r.check: r for r in check_results(sets, verdicts, 0, [s.name for s in sets.case.segments])}
+    return {r.check: r for r in check_results(sets, verdicts, 0)}
 
 
 def test_no_check_is_without_its_pair():

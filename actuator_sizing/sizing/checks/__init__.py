@@ -6,6 +6,7 @@ To add one: declare a `Check` in the file of its group and list it here.
 from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets
 from actuator_sizing.sizing.checks.bus import BUS_CHECKS
 from actuator_sizing.sizing.checks.drive import DRIVE_BUS, DRIVE_CONTINUOUS, DRIVE_PEAK, DRIVE_PEAK_TIME
+from actuator_sizing.sizing.checks.drive_limits import DRIVE_LIMIT_CHECKS
 from actuator_sizing.sizing.checks.dynamics import (
     FOLLOWING_ERROR,
     RESONANCE,
@@ -47,6 +48,7 @@ CHECKS: tuple[Check, ...] = (
     DRIVE_PEAK,
     DRIVE_PEAK_TIME,
     DRIVE_BUS,
+    *DRIVE_LIMIT_CHECKS,
     *BUS_CHECKS,
     GEARHEAD_EQUIVALENT,
     GEARHEAD_PEAK,

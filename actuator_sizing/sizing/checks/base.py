@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, Any, TypeVar
 import numpy as np
 from numpy.typing import NDArray
 
+from actuator_sizing.case.model import REPEATS, SHORT_TIME
 from actuator_sizing.core.parameters import (
     DriveParameters,
     GearheadParameters,
@@ -22,6 +23,7 @@ if TYPE_CHECKING:
     from actuator_sizing.sizing.demand import Demand
     from actuator_sizing.sizing.dynamic_results import DynamicResults
     from actuator_sizing.sizing.evaluation import PairResults
+    from actuator_sizing.sizing.thermal_start import ThermalStart
 
 FloatArray = NDArray[np.float64]
 _T = TypeVar("_T")
@@ -48,6 +50,7 @@ class Sets:
     overload_a2s: FloatArray  # largest i²t accumulator in the periodic regime
     overload_at_s: FloatArray
     dynamics: DynamicResults | None = None  # where the case asks how the axis moves
+    start: ThermalStart | None = None  # of a cycle that does not repeat until its temperatures do
     _found: dict[Callable[[Sets], Any], Any] = field(default_factory=dict, repr=False)
 
     def __len__(self) -> int:
@@ -75,7 +78,9 @@ class Sets:
                 "overload_at_s",
             )
         }
-        return replace(self, **taken, **arrays, _found={})
+        start = None if self.start is None else self.start.take(row)
+        dynamics = None if self.dynamics is None else self.dynamics.take(row)
+        return replace(self, **taken, **arrays, start=start, dynamics=dynamics, _found={})
 
     def option(self, name: str) -> float:
         """Quantity of the `axis` table in SI, NaN where nothing is known."""
@@ -174,6 +179,12 @@ def _always(sets: Sets) -> NDArray[np.bool_]:
     return np.ones(len(sets), dtype=bool)
 
 
+#: Means over a cycle that comes again and again; a single run has none that could be held against a rating.
+SUSTAINED = (REPEATS,)
+#: Wear counts what is done often, from warm or from cold.
+OFTEN = (REPEATS, SHORT_TIME)
+
+
 def everywhere(value: float, sets: Sets) -> FloatArray:
     """The same value for every set, shape (S,), in its own unit. [-]"""
     return np.full(len(sets), value)
@@ -231,6 +242,13 @@ class Check:
         Never fails unless the user makes it a limit.
     is_fit : bool
         Parts fit together or do not: such a check governs only where it fails.
+    concerns : tuple of str
+        How a cycle must run for the check to concern it, as in the table `cycles`; empty: in any way.
+    is_fit_where : callable or None
+        Sets → mask of the sets for which it is such a matter, and a reserve would mean nothing.
+    binds_where : callable or None
+        Sets → mask of the sets whose sheets state what the check needs; it only advises on the others, for which it
+        goes by a rule of thumb.
     yields_to : str
         Key of the check that fails too wherever this one is infinite, and says by how much.
     """
@@ -249,7 +267,14 @@ class Check:
     linear_unit: str = ""
     is_advice: bool = False
     is_fit: bool = False
+    concerns: tuple[str, ...] = ()
+    binds_where: Callable[[Sets], NDArray[np.bool_]] | None = None
+    is_fit_where: Callable[[Sets], NDArray[np.bool_]] | None = None
     yields_to: str = ""
+
+    def concerns_cycle(self, runs: str) -> bool:
+        """Whether a cycle that runs in this way is judged by the check."""
+        return not self.concerns or runs in self.concerns
 
 
 def digits(value: float) -> str:

@@ -9,6 +9,8 @@ from actuator_sizing.core.life import BALL_EXPONENT, ROLLER_EXPONENT
 from actuator_sizing.core.quadrature import integrate
 from actuator_sizing.sizing.block import Block
 from actuator_sizing.sizing.checks.base import (
+    OFTEN,
+    SUSTAINED,
     Check,
     Measure,
     Need,
@@ -70,6 +72,7 @@ GEARHEAD_EQUIVALENT = Check(
     bound=lambda block: block.demand.shaft_torque_equivalent / block.gearheads.continuous_torque_nm[:, None],
     working=_equivalent_working,
     applies=has_gearhead,
+    concerns=OFTEN,
 )
 
 
@@ -116,6 +119,7 @@ GEARHEAD_MEAN_SPEED = Check(
     )[:, None],
     working=quotient_working("ω_mean / ω_mean,max", "rad/s", _mean_speed_measure),
     applies=has_gearhead,
+    concerns=SUSTAINED,
 )
 
 
