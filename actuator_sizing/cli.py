@@ -241,8 +241,8 @@ def simulate(
 
     from actuator_sizing.case.reading import read_case
     from actuator_sizing.simulation_console import print_simulation
-    from actuator_sizing.sizing.simulation import parse_settings
     from actuator_sizing.sizing.simulation import simulate as simulate_set
+    from actuator_sizing.sizing.simulation_request import parse_settings
 
     simulation = simulate_set(
         read_case(case),

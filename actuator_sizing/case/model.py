@@ -103,13 +103,22 @@ class Limit:
 
 @dataclass(frozen=True)
 class Tolerance:
-    """Distribution of one input quantity; kept for the robustness study."""
+    """Distribution of one input quantity, for the robustness study.
+
+    The distribution is about the value of the quantity. `width` is the standard deviation of a normal
+    distribution, before it is truncated, and the half width of a uniform or triangular one.
+    """
 
     row: int
     quantity: str
     distribution: str
-    width: float
+    width: float  # in SI, or a part of the value where `relative`
     relative: bool
+    table: str = ""  # "axis", "duty_cycle" or a catalog
+    truncation: float = 3.0  # standard deviations at which a truncated normal distribution ends
+    #: (table, quantity) of another spread -> correlation of the two as normal scores
+    correlations: tuple[tuple[tuple[str, str], float], ...] = ()
+    source: str = ""
 
 
 @dataclass(frozen=True)
@@ -133,6 +142,19 @@ class Catalog:
 
     def __len__(self) -> int:
         return len(self.names)
+
+    def row(self, index: int) -> Catalog:
+        """One part of the catalog by itself."""
+        one = slice(index, index + 1)
+        return replace(
+            self,
+            names=self.names[one],
+            rows=self.rows[one],
+            values={key: column[one] for key, column in self.values.items()},
+            origins={key: column[one] for key, column in self.origins.items()},
+            as_entered={key: column[one] for key, column in self.as_entered.items()},
+            rules={key: {0: rules[index]} for key, rules in self.rules.items() if index in rules},
+        )
 
 
 @dataclass(frozen=True)
@@ -158,6 +180,7 @@ class Case:
     problems: tuple[Problem, ...]  # warnings and notes only; errors never make a Case
     fingerprint: str
     recording: Recording | None = None  # a measured cycle in place of planned segments
+    resistor_pulses: tuple[tuple[float, float], ...] = ()  # of the brake resistor: length [s] and energy [J]
     parts: tuple[Part, ...] = ()  # inertia inventory; already added to mechanism and gearhead parameters
     #: every cycle, `segments` being those of the first; empty: one without a name, which repeats
     cycles: tuple[Cycle, ...] = ()

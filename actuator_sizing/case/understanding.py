@@ -15,7 +15,7 @@ from actuator_sizing.case.duty_types import check_turns
 from actuator_sizing.case.fingerprint import fingerprint
 from actuator_sizing.case.gearheads import understand_gearheads
 from actuator_sizing.case.inertias import at_the_motor, table_entries, understand_parts, with_parts
-from actuator_sizing.case.judging import understand_limits, understand_tolerances
+from actuator_sizing.case.judging import understand_limits
 from actuator_sizing.case.measuring import understand_recording
 from actuator_sizing.case.mechanics import build_mechanism, check_motion, understand_map
 from actuator_sizing.case.model import MISSING, ORIGINS, STATED, Case, Catalog, Cycle, Entry
@@ -25,6 +25,8 @@ from actuator_sizing.case.parsed_tables import ParsedTable
 from actuator_sizing.case.parsing import parse_table
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.raw_tables import RawTable
+from actuator_sizing.case.resistor import understand_pulses
+from actuator_sizing.case.spreads import understand_tolerances
 from actuator_sizing.case.tables import TABLES, table_for
 from actuator_sizing.core.mechanisms import SHAFT
 from actuator_sizing.errors import NOTE
@@ -79,6 +81,7 @@ def understand(
             if cycle.duty_type:
                 check_turns(cycle, mechanism, at_shaft, problems)
     parts = understand_parts(parsed.get("inertias"), axis.mechanism, problems)
+    pulses = understand_pulses(parsed.get("resistor_pulses"), problems)
     motors, drives = parsed.get("motors"), parsed.get("drives")
     motor_parameters = understand_motors(motors) if motors else None
     drive_parameters = understand_drives(drives) if drives else None
@@ -94,7 +97,7 @@ def understand(
                         remedy="Add the table, or set 'direct drive allowed' to yes.")  # fmt: skip
     limits, limit_entries = understand_limits(parsed.get("limits"), problems)
     decimal = raw["tolerances"].decimal if "tolerances" in raw else ""
-    tolerances = understand_tolerances(parsed.get("tolerances"), decimal, problems)
+    tolerances = understand_tolerances(parsed.get("tolerances"), decimal, axis, problems)
     if problems.has_errors:
         return None
     if not (
@@ -109,6 +112,7 @@ def understand(
         *(recording.entries if recording else ()),
         *table_entries(parsed.get("map") if mechanism.needs_map else None),
         *table_entries(parsed.get("inertias")),
+        *table_entries(parsed.get("resistor_pulses")),
         *limit_entries,
     )
     catalogs = to_catalog(motors), to_catalog(gearheads), to_catalog(drives)
@@ -117,6 +121,7 @@ def understand(
         path=path,
         mechanism=with_parts(mechanism, parts),
         parts=parts,
+        resistor_pulses=pulses,
         surroundings=surroundings_of(axis),
         segments=cycles[0].segments,
         cycles=cycles if any(cycle.name for cycle in cycles) else (),

@@ -57,6 +57,7 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
             "by_check": _plain(counts.by_check),
             "sets_total": int(counts.sets_total),
             "incompatible": int(counts.incompatible),
+            "misfits": _plain(counts.misfits),
             "survivors": int(counts.survivors),
             "confirmed_passing": int(counts.confirmed_passing),
             "evaluated": int(counts.evaluated),

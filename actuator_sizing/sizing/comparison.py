@@ -19,7 +19,7 @@ from actuator_sizing.sizing.cycle_results import curves, cycle_results, cycles_o
 from actuator_sizing.sizing.cycles import CycleDemand, cycle_demands, evaluate_cycles
 from actuator_sizing.sizing.demand import cycle_quantities
 from actuator_sizing.sizing.dynamic_results import add_dynamics
-from actuator_sizing.sizing.fitting import compatible
+from actuator_sizing.sizing.fitting import compatible, misfits
 from actuator_sizing.sizing.inertias import inertia_shares
 from actuator_sizing.sizing.judging import (
     ORDER,
@@ -146,7 +146,7 @@ def compare(
         demand=demand,
         ranked_by=ranked_by,
         sets=results,
-        rejections=_rejections(screened, verdicts, index, survivor_rows),
+        rejections=_rejections(case, screened, verdicts, index, survivor_rows),
         candidates=candidate_table(case, sets, verdicts, index, order, screened),
         cycle=cycle_quantities(demand),
         assumptions=assumptions_of(case, results[0]),
@@ -259,7 +259,7 @@ def _is_survivor(index: IndexArray, survivors: IndexArray) -> NDArray[np.bool_]:
 
 
 def _rejections(
-    screened: Screened, verdicts: Verdicts, index: IndexArray, survivor: NDArray[np.bool_]
+    case: Case, screened: Screened, verdicts: Verdicts, index: IndexArray, survivor: NDArray[np.bool_]
 ) -> Rejections:
     fails = verdicts.verdict == ORDER.index(FAILS)
     failed = survivor & fails
@@ -288,6 +288,7 @@ def _rejections(
         confirmed_passing=int(passing.sum()),
         evaluated=int(survivor.sum()),
         complete=screened.survivor_count == len(screened.survivors),
+        misfits=misfits(case),
     )
 
 

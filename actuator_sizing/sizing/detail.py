@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.core.capability import voltage_limited_current
-from actuator_sizing.core.machine import amplitude_per_unit_current, model_voltage, torque_of_current
+from actuator_sizing.core.machine import model_voltage, motor_amperes_per_drive_ampere, torque_of_current
 from actuator_sizing.core.quadrature import piece_means
 from actuator_sizing.core.warm_up import (
     TemperatureCourse,
@@ -169,9 +169,7 @@ def _envelope(model: SetModel) -> pd.DataFrame:
     used = float(np.abs(model.course.motor_speed_rad_s).max())
     reach = max(1.05 * used, min(top, 1.02 * no_load) if np.isfinite(top) else 1.02 * no_load)
     speed = np.linspace(0.0, reach, _SPEEDS)
-    to_motor = amplitude_per_unit_current(model.drive.current_basis) / amplitude_per_unit_current(
-        motor.current_basis
-    )
+    to_motor = motor_amperes_per_drive_ampere(motor, model.drive)
     peak = np.fmin(motor.peak_current_a, model.drive.peak_current_a * to_motor)
     frame = {"speed_rad_s": speed}
 
@@ -193,9 +191,7 @@ def _envelope(model: SetModel) -> pd.DataFrame:
 
 def _levels(model: SetModel, sets: Sets, index: int) -> dict[str, float]:
     motor, drive, s = model.motor, model.drive, model.case.surroundings
-    to_motor = float(
-        (amplitude_per_unit_current(drive.current_basis) / amplitude_per_unit_current(motor.current_basis))[0]
-    )
+    to_motor = float(motor_amperes_per_drive_ampere(motor, drive)[0])
     return {
         "motor_peak_current_a": float(motor.peak_current_a[0]),
         "motor_continuous_current_a": float(

@@ -31,6 +31,7 @@ class Verdicts:
     verdict: NDArray[np.int8]  # (S,)
     governing: NDArray[np.intp]  # (S,) column of the check that governs
     severity: FloatArray  # (S,) utilisation over allowed of the governing check
+    binds: NDArray[np.bool_]  # (S, C) whether the set can fail the check, or is only advised by it
     cycle: NDArray[np.intp]  # (S, C) cycle in which each check is nearest to its limit
 
 
@@ -68,9 +69,10 @@ def judge_sets(
     """
     several = sets if isinstance(sets, tuple) else (sets,)
     held = [_held(each, checks, limits) for each in several]
-    utilisation, codes, relative = held[0]
+    utilisation, codes, relative, binds = held[0]
     cycle = np.zeros(codes.shape, dtype=np.intp)
-    for number, (other_utilisation, other_codes, other_relative) in enumerate(held[1:], start=1):
+    for number, (other_utilisation, other_codes, other_relative, other_binds) in enumerate(held[1:], start=1):
+        binds = binds | other_binds
         worse = other_codes > codes
         with np.errstate(invalid="ignore"):
             worse |= (other_codes == codes) & (other_utilisation > utilisation)
@@ -79,9 +81,8 @@ def judge_sets(
         codes = np.where(worse, other_codes, codes)
         cycle[worse] = number
     _let_numbers_govern(relative, codes, checks)
-    binding_columns = np.array([is_binding(c, x) for c, x in zip(checks, limits, strict=True)])
-    verdict = np.max(np.where(binding_columns, codes, _PASSES), axis=1, initial=_PASSES).astype(np.int8)
-    unjudged = ~np.any(binding_columns & (codes != NOT_APPLICABLE), axis=1)
+    verdict = np.max(np.where(binds, codes, _PASSES), axis=1, initial=_PASSES).astype(np.int8)
+    unjudged = ~np.any(binds & (codes != NOT_APPLICABLE), axis=1)
     verdict[unjudged] = _UNKNOWN  # no check that could fail it applies to this set
     governing = relative.argmax(axis=1)
     return Verdicts(
@@ -92,18 +93,20 @@ def judge_sets(
         verdict,
         governing,
         relative[np.arange(len(governing)), governing],
+        binds,
         cycle,
     )
 
 
 def _held(
     sets: Sets, checks: tuple[Check, ...], limits: tuple[Limit, ...]
-) -> tuple[FloatArray, NDArray[np.int8], FloatArray]:
-    """Utilisation, code and nearness to the limit of S sets in one cycle, each (S, C)."""
+) -> tuple[FloatArray, NDArray[np.int8], FloatArray, NDArray[np.bool_]]:
+    """Utilisation, code, nearness to the limit and whether it binds, of S sets in one cycle, each (S, C)."""
     count = len(sets)
     utilisation = np.full((count, len(checks)), np.nan)
     codes = np.full((count, len(checks)), NOT_APPLICABLE, dtype=np.int8)
     relative = np.full((count, len(checks)), -np.inf)
+    binds = np.zeros((count, len(checks)), dtype=bool)
     for column, (check, limit) in enumerate(zip(checks, limits, strict=True)):
         applies = check.applies(sets)
         if not check.concerns_cycle(sets.case.cycle.runs) or not applies.any():
@@ -115,19 +118,25 @@ def _held(
         known &= ~np.isnan(ratio)
         code = np.full(count, _UNKNOWN, dtype=np.int8)
         code[known] = _PASSES
-        reserve = limit.allowed_utilisation * (1.0 - limit.recommended_reserve)
+        fits = np.full(count, check.is_fit)
+        reserve = np.full(count, limit.allowed_utilisation * (1.0 - limit.recommended_reserve))
+        if check.is_fit_where is not None:
+            fits |= check.is_fit_where(sets)
+            reserve[fits] = limit.allowed_utilisation
         code[known & (ratio > reserve)] = _LOW
         beyond = known & (ratio > limit.allowed_utilisation)
-        binding = is_binding(check, limit)
+        binding = np.full(count, is_binding(check, limit))
+        if check.binds_where is not None:
+            binding &= check.binds_where(sets)
+        binds[:, column] = binding
         # Advice that was not followed is said in its own row, not in the verdict of the set.
-        code[beyond] = _FAILS if binding else _LOW
+        code[beyond] = np.where(binding, _FAILS, _LOW)[beyond]
         codes[applies, column] = code[applies]
         utilisation[known, column] = ratio[known]
         # Advice never governs while a limit is there to govern.
-        relative[known, column] = ratio[known] / limit.allowed_utilisation if binding else -1.0
-        if check.is_fit:
-            relative[known & ~beyond, column] = -0.5
-    return utilisation, codes, relative
+        relative[known, column] = np.where(binding, ratio / limit.allowed_utilisation, -1.0)[known]
+        relative[known & ~beyond & fits & binding, column] = -0.5
+    return utilisation, codes, relative, binds
 
 
 def _let_numbers_govern(relative: FloatArray, codes: NDArray[np.int8], checks: tuple[Check, ...]) -> None:
@@ -167,10 +176,9 @@ def check_results(several: Sets | tuple[Sets, ...], verdicts: Verdicts, index: i
         sets = by_cycle[verdicts.cycle[index, column]]
         measure: Measure = check.measure(sets)
         known = code != _UNKNOWN
+        lacking = [need for need in check.needs if not need.known(sets)[index]]
         missing = tuple(
-            need.linear_column if linear and need.linear_column else need.column
-            for need in check.needs
-            if not need.known(sets)[index]
+            need.linear_column if linear and need.linear_column else need.column for need in lacking
         )
         at = float(measure.at_s[index]) if known and measure.at_s is not None else None
         if at is not None and not np.isfinite(at):
@@ -195,7 +203,8 @@ def check_results(several: Sets | tuple[Sets, ...], verdicts: Verdicts, index: i
                 source=check.source,
                 working=check.working(sets, index) if known else "",
                 missing=missing,
-                is_advice=not is_binding(check, limit),
+                missing_from=tuple(need.part for need in lacking),
+                is_advice=not verdicts.binds[index, column],
             )
         )
     return Checks(results)

@@ -280,6 +280,9 @@ def single(case: Case, motor: int, gearhead: int, drive: int) -> Case:
     """The case with one motor, gearhead and drive only."""
     return replace(
         case,
+        motors=case.motors.row(motor),
+        gearheads=case.gearheads.row(gearhead),
+        drives=case.drives.row(drive),
         motor_parameters=case.motor_parameters.take(slice(motor, motor + 1)),
         gearhead_parameters=case.gearhead_parameters.take(slice(gearhead, gearhead + 1)),
         drive_parameters=case.drive_parameters.take(slice(drive, drive + 1)),

@@ -13,8 +13,9 @@ import numpy as np
 from actuator_sizing.core.duty_types import relative_life
 from actuator_sizing.core.quadrature import integrate
 from actuator_sizing.core.thermal import HeatLoss, steady_state
-from actuator_sizing.core.transmission import GEAR_EXPONENT
 from actuator_sizing.sizing.checks import Sets
+from actuator_sizing.sizing.checks.gearhead import equivalent_exponent
+from actuator_sizing.sizing.checks.traction import application_factor
 from actuator_sizing.sizing.set_model import SetModel
 
 _MEANS = ("copper_loss_mean_w", "friction_loss_mean_w", "speed_mean_abs_rad_s")
@@ -64,21 +65,23 @@ def mix_quantities(several: tuple[Sets, ...], models: tuple[SetModel, ...], inde
     for name in _ENERGIES:
         answer[name.replace("_j", "_per_hour_j")] = float(3600.0 * (share / span) @ each(name))
     if not several[0].gearheads.is_direct[index]:
-        answer["gearhead_equivalent_torque_nm"] = _equivalent(several, share / span)
+        answer["gearhead_equivalent_torque_nm"] = _equivalent(several, share / span, index)
     answer |= _temperatures(models, share)
     answer["relative_thermal_life_ratio"] = _life(several, index, share)
     return answer
 
 
-def _equivalent(several: tuple[Sets, ...], runs_per_s: Any) -> float:
-    """Equivalent torque at the gearhead's output over all cycles. [N·m]"""
+def _equivalent(several: tuple[Sets, ...], runs_per_s: Any, index: int) -> float:
+    """Equivalent torque at the gearhead's output over all cycles, with the application factor. [N·m]"""
+    exponent = float(equivalent_exponent(several[0])[index])
     worked = turned = 0.0
     for sets, often in zip(several, runs_per_s, strict=True):
         d = sets.demand
         speed = np.abs(d.shaft_speed)
-        worked += often * float(integrate(d.duration_s, speed * np.abs(d.shaft_torque) ** GEAR_EXPONENT))
+        worked += often * float(integrate(d.duration_s, speed * np.abs(d.shaft_torque) ** exponent))
         turned += often * float(integrate(d.duration_s, speed))
-    return float((worked / turned) ** (1.0 / GEAR_EXPONENT)) if turned > 0.0 else 0.0
+    mean = (worked / turned) ** (1.0 / exponent) if turned > 0.0 else 0.0
+    return application_factor(several[0]) * mean
 
 
 def _temperatures(models: tuple[SetModel, ...], share: Any) -> dict[str, float | None]:

@@ -6,9 +6,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
-from actuator_sizing.core.machine import amplitude_per_unit_current
+from actuator_sizing.core.machine import amplitude_per_unit_current, motor_amplitude_per_unit_current
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.cycles import CycleDemand
+from actuator_sizing.sizing.derating import derated_drives
 from actuator_sizing.sizing.evaluation import evaluate_pairs
 from actuator_sizing.sizing.fitting import compatible
 from actuator_sizing.sizing.judging import Verdicts
@@ -94,8 +95,8 @@ def nearest_drives(cycles: tuple[CycleDemand, ...], pairs: IndexArray) -> IndexA
     results = [evaluate_pairs(each.demand, motors, gearheads, case.surroundings) for each in cycles]
     peak = np.max([each.current_peak_a for each in results], axis=0)
     rms = np.max([each.current_rms_a for each in results], axis=0)
-    drives, s = case.drive_parameters, case.surroundings
-    amplitude = amplitude_per_unit_current(motors.current_basis)[:, None]
+    drives, s = derated_drives(case), case.surroundings
+    amplitude = motor_amplitude_per_unit_current(motors)[:, None]
     per_drive = amplitude_per_unit_current(drives.current_basis)[None, :]
     with np.errstate(invalid="ignore"):
         need = np.fmax(

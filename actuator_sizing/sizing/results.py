@@ -36,7 +36,7 @@ class CheckResult:
 
     check: str  # key, e.g. "winding_temperature"
     title: str  # as printed, e.g. "Winding temperature"
-    group: str  # "motor", "drive", "gearhead", "axis"
+    group: str  # "motor", "drive", "gearhead", "mechanism", "axis"
     demand: float | None
     capacity: float | None
     unit: str  # SI unit of demand and capacity
@@ -50,6 +50,7 @@ class CheckResult:
     source: str
     working: str  # the formula with the numbers put in, so that a calculator confirms it
     missing: tuple[str, ...] = ()
+    missing_from: tuple[str, ...] = ()  # for each of them the table that lacks it; "" where it is no table
     inputs: tuple[tuple[str, str], ...] = ()  # (input used, origin)
     is_advice: bool = False
     cycle: str | None = None  # the cycle in which it is nearest to its limit; None where cycles have no names
@@ -212,6 +213,7 @@ class Rejections:
     confirmed_passing: int  # pass by exact evaluation
     evaluated: int  # evaluated exactly
     complete: bool  # every survivor was evaluated exactly
+    misfits: Mapping[str, int] = field(default_factory=dict)  # why sets are incompatible -> number of sets
 
 
 @dataclass(frozen=True)

@@ -15,7 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
-from actuator_sizing.core.machine import amplitude_per_unit_current
+from actuator_sizing.core.machine import motor_amplitude_per_unit_current
 from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
 from actuator_sizing.sizing.cycles import CycleDemand
 from actuator_sizing.sizing.demand import Demand
@@ -244,7 +244,7 @@ def _screen_drives(run: _Run, tile: _Tile, passing: NDArray[np.bool_], worst: Fl
     """Hold the pairs that may pass against every drive; returns how many sets survive."""
     side, block, losses = run.drive_side, tile.block, run.losses
     columns, rows = np.nonzero(passing)  # gearheads, motors
-    amplitude = amplitude_per_unit_current(block.motors.current_basis)
+    amplitude = motor_amplitude_per_unit_current(block.motors)
     total = 0
     step = max(1, 2**16 // max(1, len(side)))
     for start in range(0, len(rows), step):

@@ -9,12 +9,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
-from actuator_sizing.core.machine import amplitude_per_unit_current, judge
+from actuator_sizing.core.machine import amplitude_per_unit_current, judge, motor_amplitude_per_unit_current
 from actuator_sizing.core.parameters import DriveParameters
 from actuator_sizing.core.quadrature import piece_means
 from actuator_sizing.core.windows import overload_accumulator, windowed_rms
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.derating import derated_drives
 from actuator_sizing.sizing.evaluation import PairResults, evaluate_pairs
 from actuator_sizing.sizing.pair_course import course
 from actuator_sizing.sizing.thermal_start import ThermalStart
@@ -95,7 +96,7 @@ def evaluate_sets(
         recommended_inertia_ratio=case.number("recommended inertia ratio"),
         motors=case.motor_parameters.take(index[:, 0]),
         gearheads=case.gearhead_parameters.take(index[:, 1]),
-        drives=case.drive_parameters.take(index[:, 2]),
+        drives=derated_drives(case).take(index[:, 2]),
         pairs=all_pairs.take(pair_of_set),
         drive_current_peak_a=view["peak"],
         drive_current_rms_a=view["rms"],
@@ -117,8 +118,8 @@ def _drive_view(
     """Currents as the drives see them: amplitudes compared, expressed in the basis of each drive."""
     motors = case.motor_parameters.take(pairs[:, 0])
     gearheads = case.gearhead_parameters.take(pairs[:, 1])
-    drives = case.drive_parameters.take(drive)
-    amplitude = amplitude_per_unit_current(motors.current_basis)
+    drives = derated_drives(case).take(drive)
+    amplitude = motor_amplitude_per_unit_current(motors)
     current = course(demand, motors, gearheads, judge(motors, case.surroundings)).current_a
     squared = (current * amplitude[:, None, None]) ** 2
     duration = demand.duration_s

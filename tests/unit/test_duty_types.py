@@ -7,8 +7,8 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from actuator_sizing.case.model import REPEATS, SHORT_TIME, Cycle
 from actuator_sizing.case.cycle_columns import DUTY_TYPES
+from actuator_sizing.case.model import REPEATS, SHORT_TIME, Cycle
 from actuator_sizing.case.reading import check_case, read_case
 from actuator_sizing.case.starting import start_case
 from actuator_sizing.core.duty_types import loaded_time, relative_life

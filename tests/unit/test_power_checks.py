@@ -69,6 +69,30 @@ def test_without_capacitance_or_clamp_the_bus_is_not_checked():
     assert verdict(clamped, "bus_maximum_voltage").demand == 380.0
 
 
+@pytest.mark.parametrize(("limit", "expected"), [(381.0, PASSES), (380.0, PASSES), (379.9, FAILS)])
+def test_a_chopper_within_the_range_of_the_drive_is_a_matter_of_fit(limit, expected):
+    sets = sets_of(drive=dict(DRIVE, bus_voltage_max_v=limit), **RESISTOR)
+    found = verdict(sets, "bus_maximum_voltage")
+    assert found.demand == 380.0
+    assert found.verdict == expected  # no reserve is asked of a level that the cycle cannot raise
+    checks, limits = active_checks(sets.case.limits)
+    verdicts = judge_sets(sets, checks, limits)
+    governs = checks[int(verdicts.governing[0])].key == "bus_maximum_voltage"
+    assert governs == (expected == FAILS)
+
+
+def test_what_is_not_clamped_governs_by_its_number():
+    big = sets_of(drive=dict(DRIVE, capacitance_f=0.05))
+    found = verdict(big, "bus_maximum_voltage")
+    assert 360.0 < found.demand < 420.0
+    checks, limits = active_checks(big.case.limits)
+    verdicts = judge_sets(big, checks, limits)
+    column = [c.key for c in checks].index("bus_maximum_voltage")
+    assert verdicts.utilisation[0, column] == found.utilisation
+    governing = checks[int(verdicts.governing[0])].key
+    assert governing == "bus_maximum_voltage"
+
+
 def test_a_level_axis_with_friction_gives_nothing_back():
     level = {"lead": 0.02, "moving mass": 5.0, "guide friction force": 900.0}
     sets = sets_of(values=level, segments=cycle({"law": "cycloidal", "displacement": 0.1, "duration_s": 3.0}))

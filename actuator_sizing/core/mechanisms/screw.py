@@ -14,9 +14,8 @@ from actuator_sizing.core.mechanisms.linear_load import (
     STAGE_PARAMETERS,
     RotatingDriveOfLinearLoad,
 )
+from actuator_sizing.core.screws import STEEL_DENSITY_KG_M3
 from actuator_sizing.errors import InputError, Problem
-
-STEEL_DENSITY_KG_M3 = 7850.0  # common practice for plain and alloyed steel
 
 _EFFICIENCY, _BACK, _INERTIA, _FRICTION = STAGE_PARAMETERS
 

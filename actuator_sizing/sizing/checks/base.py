@@ -27,6 +27,7 @@ if TYPE_CHECKING:
 
 FloatArray = NDArray[np.float64]
 _T = TypeVar("_T")
+_TABLES = ("motors", "gearheads", "drives")
 
 
 @dataclass(frozen=True)
@@ -86,13 +87,33 @@ class Sets:
         value = self.case.options.get(name)
         return float(value) if isinstance(value, int | float) else np.nan
 
+    def word(self, name: str) -> str:
+        """Word of the `axis` table, empty where nothing is known."""
+        value = self.case.options.get(name)
+        return value if isinstance(value, str) else ""
+
+    def states(self, *names: str) -> bool:
+        """Whether the case states one of these quantities of the `axis` table."""
+        return any(self.word(name) or not np.isnan(self.option(name)) for name in names)
+
     def catalog_values(self, table: str, column: str) -> FloatArray:
         """Column of a catalog for each set, shape (S,), in SI; NaN where nothing is known."""
-        part = ("motors", "gearheads", "drives").index(table)
         values = getattr(self.case, table).values.get(column)
         if values is None:
             return np.full(len(self), np.nan)
-        return np.asarray(values[self.index[:, part]], dtype=float)
+        return np.asarray(values[self.index[:, _TABLES.index(table)]], dtype=float)
+
+    def catalog_word_is(self, table: str, column: str, word: str) -> NDArray[np.bool_]:
+        """Whether the part of each set has this word in a column of its catalog, shape (S,). [-]"""
+        values = getattr(self.case, table).values.get(column)
+        if values is None:
+            return np.zeros(len(self), dtype=bool)
+        return np.asarray(values[self.index[:, _TABLES.index(table)]].astype(object) == word)
+
+    def catalog_asks(self, table: str, *columns: str) -> bool:
+        """Whether a part of the catalog states one of these numbers; then all of its parts are asked."""
+        known = (getattr(self.case, table).values.get(column) for column in columns)
+        return any(values is not None and not np.isnan(values).all() for values in known)
 
 
 @dataclass(frozen=True)
@@ -144,7 +165,7 @@ class Need:
         if self.known_by is not None:
             return self.known_by(sets)
         if self.part == "axis":
-            return np.full(len(sets), not np.isnan(sets.option(self.field)))
+            return np.full(len(sets), sets.states(self.field))
         parameters = getattr(sets, self.part)
         if parameters is None:
             return np.zeros(len(sets), dtype=bool)
@@ -162,6 +183,28 @@ def _always(sets: Sets) -> NDArray[np.bool_]:
 SUSTAINED = (REPEATS,)
 #: Wear counts what is done often, from warm or from cold.
 OFTEN = (REPEATS, SHORT_TIME)
+def everywhere(value: float, sets: Sets) -> FloatArray:
+    """The same value for every set, shape (S,), in its own unit. [-]"""
+    return np.full(len(sets), value)
+
+
+def applies_if(asked: Callable[[Sets], bool]) -> Callable[[Sets], NDArray[np.bool_]]:
+    """Mask of a check that concerns every set or none, by what the case states."""
+    return lambda sets: np.full(len(sets), asked(sets))
+
+
+def quotient_working(
+    symbols: str, unit: str, measure: Callable[[Sets], Measure]
+) -> Callable[[Sets, int], str]:
+    """Working of a check that is nothing but demand over capacity."""
+
+    def working(sets: Sets, i: int) -> str:
+        m = measure(sets)
+        numbers = (digits(float(value[i])) for value in (m.demand, m.capacity))
+        shown = " / ".join(f"{number} {unit}".rstrip() for number in numbers)
+        return f"{symbols} = {shown} = {digits(float(m.ratio()[i]))}"
+
+    return working
 
 
 def has_gearhead(sets: Sets) -> NDArray[np.bool_]:
@@ -199,6 +242,11 @@ class Check:
         Parts fit together or do not: such a check governs only where it fails.
     concerns : tuple of str
         How a cycle must run for the check to concern it, as in the table `cycles`; empty: in any way.
+    is_fit_where : callable or None
+        Sets → mask of the sets for which it is such a matter, and a reserve would mean nothing.
+    binds_where : callable or None
+        Sets → mask of the sets whose sheets state what the check needs; it only advises on the others, for which it
+        goes by a rule of thumb.
     yields_to : str
         Key of the check that fails too wherever this one is infinite, and says by how much.
     """
@@ -218,6 +266,8 @@ class Check:
     is_advice: bool = False
     is_fit: bool = False
     concerns: tuple[str, ...] = ()
+    binds_where: Callable[[Sets], NDArray[np.bool_]] | None = None
+    is_fit_where: Callable[[Sets], NDArray[np.bool_]] | None = None
     yields_to: str = ""
 
     def concerns_cycle(self, runs: str) -> bool:

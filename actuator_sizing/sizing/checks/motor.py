@@ -18,6 +18,7 @@ from actuator_sizing.sizing.checks.working import (
     current_working,
     instant_of,
     rms_working,
+    temperature_working,
     torque_working,
     voltage_limit_working,
     voltage_working,
@@ -136,11 +137,9 @@ RMS_CURRENT = Check(
 # -- torque over the speed–torque plane -------------------------------------------------------------
 def current_limited_torque(sets: Sets) -> FloatArray:
     """Air-gap torque at the smaller of the peak currents of motor and drive, shape (S,). [N·m]"""
-    from actuator_sizing.core.machine import amplitude_per_unit_current, saturation_coefficient
+    from actuator_sizing.core.machine import motor_amperes_per_drive_ampere, saturation_coefficient
 
-    to_motor = amplitude_per_unit_current(sets.drives.current_basis) / amplitude_per_unit_current(
-        sets.motors.current_basis
-    )
+    to_motor = motor_amperes_per_drive_ampere(sets.motors, sets.drives)
     current = np.fmin(sets.motors.peak_current_a, sets.drives.peak_current_a * to_motor)
     K = sets.pairs.torque_constant_nm_per_a
     torque = torque_of_current(current, K, saturation_coefficient(sets.motors))
@@ -168,12 +167,14 @@ def _plane_bound(block: Block) -> FloatArray:
 
 def _plane_working(sets: Sets, i: int) -> str:
     m = _plane_measure(sets)
-    at = instant_of(sets, i, m.instant(i), "torque")
     p = sets.pairs
-    unit = at.units[0]
     by_current = float(current_limited_torque(sets)[i])
-    if p.plane_utilisation[i] >= p.torque_peak_nm[i] / by_current:
-        limit = voltage_limit_working(sets, i, at)
+    by_voltage = bool(p.plane_utilisation[i] >= p.torque_peak_nm[i] / by_current)
+    cold = by_voltage and bool(p.plane_is_cold[i])
+    at = instant_of(sets, i, m.instant(i), "torque", cold=cold)
+    unit = at.units[0]
+    if by_voltage:
+        limit = f"{temperature_working(at, cold=cold)}; {voltage_limit_working(sets, i, at)}"
     else:
         limit = f"T_available = {digits(by_current)} {unit} at the smaller peak current of motor and drive"
     return f"{torque_working(at)}; {limit}; {m.quotient(i)}"
@@ -186,7 +187,7 @@ SPEED_TORQUE = Check(
     unit="N·m",
     linear_unit="N",
     formula="max over the cycle of |T| / T_available(ω), T_available from peak current and from "
-    "√((R i + K ω)² + (p ω L i)²) ≤ U at minimum bus voltage and hot winding",
+    "√((R i + K ω)² + (p ω L i)²) ≤ U at minimum bus voltage, hot winding or motor at ambient, whichever is worse",
     source="Speed–torque plane of a DC-equivalent machine; textbook dq relations at i_d = 0",
     needs=(
         Need("motors", "peak_current_a", "peak current"),
@@ -325,11 +326,13 @@ def _voltage_measure(sets: Sets) -> Measure:
 
 def _voltage_working(sets: Sets, i: int) -> str:
     m = _voltage_measure(sets)
-    at = instant_of(sets, i, m.instant(i), "voltage")
+    cold = bool(sets.pairs.voltage_is_cold[i])
+    at = instant_of(sets, i, m.instant(i), "voltage", cold=cold)
     with_slope = sets.pairs.voltage_peak_v[i] > sets.pairs.voltage_peak_without_inductance_v[i]
     note = "" if with_slope else " (the value without L di/dt governs)"
     return (
-        f"{torque_working(at)}; {current_working(at)}; {voltage_working(at, with_slope=bool(with_slope))}{note}; "
+        f"{torque_working(at)}; {temperature_working(at, cold=cold)}; {current_working(at)}; "
+        f"{voltage_working(at, with_slope=bool(with_slope))}{note}; "
         f"{available_voltage_working(sets, i)}; {m.quotient(i)}"
     )
 
@@ -343,7 +346,8 @@ VOLTAGE = Check(
     title="Voltage",
     group="motor",
     unit="V",
-    formula="max √((R i + K ω + L di/dt)² + (p ω L i)²) ≤ U_bus,min · m in the motor's basis",
+    formula="max √((R i + K ω + L di/dt)² + (p ω L i)²) ≤ U_bus,min · m in the motor's basis; hot (R large) or at "
+    "ambient (cold magnets: K large), whichever is worse",
     source="DC-equivalent machine; textbook dq relations at i_d = 0; the larger of the values with and without "
     "L di/dt counts",
     needs=(),
