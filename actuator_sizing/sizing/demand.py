@@ -20,6 +20,7 @@ from actuator_sizing.core.moments import demand_functions
 from actuator_sizing.core.motion_laws import Phase
 from actuator_sizing.core.process_load import TIME
 from actuator_sizing.core.quadrature import NODES, integrate, interpolate, largest_magnitude, lobatto, roots
+from actuator_sizing.core.record_slices import RecordSlices
 from actuator_sizing.core.transmission import (
     BACK_DRIVING,
     GEAR_EXPONENT,
@@ -62,7 +63,7 @@ class Demand:
     motor_acceleration: FloatArray  # shaft acceleration as the motor's own moving mass feels it
     torque_by_cause: Mapping[str, FloatArray]  # (P, K) parts of shaft_torque
     load_inertia: float  # largest inertia of load and mechanism at the driven shaft
-    heat_start: NDArray[np.intp] | None = None  # first piece of each block of a condensed record
+    slices: RecordSlices | None = None  # of a condensed record, whose pieces are not in the order of time
 
     @cached_property
     def functions(self) -> FloatArray:
@@ -141,14 +142,12 @@ def build_demand(case: Case) -> Demand:
     if case.recording is not None:
         from actuator_sizing.sizing.measured_demand import recorded_pieces
 
-        payloads = np.array([segment.payload for segment in case.segments])
-        largest = float(np.max(case.mechanism.inertia_at_shaft(payloads)))
-        return Demand(**recorded_pieces(case, case.recording), load_inertia=largest)
+        return Demand(**recorded_pieces(case, case.recording))
     pieces = list(_pieces(case))
     stacked: dict[str, Any] = {
         name: np.array([piece[name] for piece in pieces])
         for name in (*(f.name for f in fields(Demand)), "lever")
-        if name not in ("torque_by_cause", "load_inertia", "heat_start")
+        if name not in ("torque_by_cause", "load_inertia", "slices")
     }
     stacked["flow"] = stacked["flow"].astype(np.int8)
     causes = {cause: np.array([piece["by_cause"][cause] for piece in pieces]) for cause in CAUSES}

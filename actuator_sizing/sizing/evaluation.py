@@ -23,6 +23,7 @@ from actuator_sizing.sizing.torque_plane import torque_plane
 FloatArray = NDArray[np.float64]
 
 _CHUNK = 128  # pairs at a time: keeps the (pairs, pieces, nodes) arrays in cache
+_MOST_NODES = 250_000  # in such an array, for a record of hundreds of pieces
 
 
 @dataclass(frozen=True)
@@ -92,14 +93,15 @@ def evaluate_pairs(
     PairResults
         Shape (B,). Integrals are exact on smooth pieces; extrema are refined between the nodes. [-]
     """
+    chunk = int(np.clip(_MOST_NODES // demand.position.size, 8, _CHUNK))
     parts = [
         _evaluate_chunk(
             demand,
-            motors.take(slice(start, start + _CHUNK)),
-            gearheads.take(slice(start, start + _CHUNK)),
+            motors.take(slice(start, start + chunk)),
+            gearheads.take(slice(start, start + chunk)),
             surroundings,
         )
-        for start in range(0, len(motors), _CHUNK)
+        for start in range(0, len(motors), chunk)
     ]
     return PairResults(
         **{f.name: np.concatenate([getattr(part, f.name) for part in parts]) for f in fields(PairResults)}
@@ -133,7 +135,9 @@ def _evaluate_chunk(
     energy_terminals = signed_integrals(duration, terminals)
 
     thermal = periodic_state(
-        thermal_network(motors, surroundings), heat_loss(demand, motors, judged, c), surroundings.ambient_degc
+        thermal_network(motors, surroundings),
+        heat_loss(demand, motors, gearheads, judged, c),
+        surroundings.ambient_degc,
     )
     reflected = demand.load_inertia / gearheads.ratio**2
     return PairResults(
