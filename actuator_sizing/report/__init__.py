@@ -83,6 +83,8 @@ def render_report(
     since : mapping or None
         Earlier results, see `write_report`.
     """
+    from concurrent.futures import ThreadPoolExecutor
+
     from actuator_sizing.report.candidates_csv import render_candidates
     from actuator_sizing.report.document import prepare_document
     from actuator_sizing.report.figures import draw_figures
@@ -94,17 +96,20 @@ def render_report(
 
     day = date if date is not None else _today()
     figures = draw_figures(comparison)
-    candidates = render_candidates(comparison)
     revision = None if since is None else revision_since(since, results_dict(comparison))
     document = prepare_document(comparison, day, figures, revision)
-    files = {
-        "sizing_report.html": render_html(document, figures),
-        "sizing_tables.xlsx": render_workbook(comparison, day, candidates.rows),
-        "results.json": render_json(comparison, revision),
-        "candidates.csv": candidates.content,
-    }
-    if pdf or (pdf is None and can_write_pdf()):
-        files["sizing_report.pdf"] = render_pdf(document, figures)
+    with ThreadPoolExecutor(1) as second_core:  # the typesetter is compiled and lets the other writers run
+        wanted = pdf or (pdf is None and can_write_pdf())
+        typeset = second_core.submit(render_pdf, document, figures) if wanted else None
+        candidates = render_candidates(comparison)
+        files = {
+            "sizing_report.html": render_html(document, figures),
+            "sizing_tables.xlsx": render_workbook(comparison, day, candidates.rows),
+            "results.json": render_json(comparison, revision),
+            "candidates.csv": candidates.content,
+        }
+        if typeset is not None:
+            files["sizing_report.pdf"] = typeset.result()
     return files | {f"figures/{figure.key}.svg": figure.svg for figure in figures.values()}
 
 

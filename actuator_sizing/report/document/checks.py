@@ -67,7 +67,7 @@ def _check_row(check: CheckResult) -> tuple[Cell, ...]:
         Cell(title, note=note),
         demand,
         capacity,
-        unit or "1",
+        unit,
         Cell(text, note=allowed, share=share, verdict=verdict),
         percent(check.margin, 1.0 / check.allowed - 1.0) if check.allowed > 0.0 else "not known",
         Cell(verdict, verdict=verdict),
