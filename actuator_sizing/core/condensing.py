@@ -42,10 +42,10 @@ def condense(columns: FloatArray, weight: FloatArray) -> tuple[IndexArray, Float
     that the match is to rounding in each.
     """
     total = weight.sum()
-    centre = weight @ columns / total
-    spread = np.abs(columns - centre).max(axis=0)
-    moving = spread > 0.0
-    z = np.ascontiguousarray(((columns[:, moving] - centre[moving]) / spread[moving]).T)
+    z = np.array(columns.T, order="C")  # sums along a row are quick
+    z -= (z @ weight / total)[:, None]
+    spread = np.maximum(z.max(axis=1), -z.min(axis=1))
+    z = z[spread > 0.0] / spread[spread > 0.0, None]
     if z.shape[1] <= (len(z) + 1) * (len(z) + 2) // 2:
         return np.arange(z.shape[1]), weight
     share = weight / total

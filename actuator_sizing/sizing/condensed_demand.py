@@ -24,6 +24,7 @@ from actuator_sizing.core.record_slices import SliceSums
 from actuator_sizing.core.transmission import BACK_DRIVING
 from actuator_sizing.sizing.measured_demand import (
     NODES,
+    CutStretches,
     cut_at_signs,
     finished,
     joined,
@@ -65,21 +66,18 @@ def condensed_pieces(case: Case, recording: Recording, borders: FloatArray) -> d
     per_block = int(np.clip(len(borders) // (BLOCKS * _STRETCHES_PER_SLICE), 1, _SLICES_PER_BLOCK))
     edges = np.linspace(0.0, period, BLOCKS * per_block + 1)
     borders = joined(recording, borders, edges)
-    sums, extremes = (
-        SliceSums(len(edges) - 1),
-        _Extremes(
-            _scale(case, recording, borders),
-            max(1, len(borders) // (_GROUPS_PER_KNOT * len(recording.motion.coefficients))),
-        ),
-    )
+    sums = SliceSums(len(edges) - 1)
+    group = max(1, len(borders) // (_GROUPS_PER_KNOT * len(recording.motion.coefficients)))
+    extremes = _Extremes(_scale(case, recording, borders), group)
     pieces: list[FloatArray] = []  # columns: duration, block, class, fields
     share = 0.5 * lobatto(NODES)[1]
     ends = np.searchsorted(borders, edges[::per_block] - 1e-3 * edges[1])
     for block, (begin, end) in enumerate(zip(ends[:-1], ends[1:], strict=True)):
         points = cut_at_signs(case, recording, stretches_between(case, recording, borders[begin : end + 1]))
-        length, flow, direction = points["duration_s"], points["flow"], points["direction"]
-        moments = np.stack([points[name] for name in _MOMENTS], axis=-1)  # (S, K, 3)
-        middle = points["start_s"] + 0.5 * length
+        length, direction = points.column("duration_s"), points.column("direction")
+        flow = points.column("flow").astype(np.int8)
+        moments = np.stack([points.column(name) for name in _MOMENTS], axis=-1)  # (S, K, 3)
+        middle = points.column("start_s") + 0.5 * length
         sums.add((middle * (len(edges) - 1) / period).astype(np.intp), length, flow, direction, moments)
         kinds = 3 * flow.astype(np.intp) + np.sign(direction).astype(np.intp) + 1
         for kind in np.unique(kinds).tolist():
@@ -94,7 +92,7 @@ def condensed_pieces(case: Case, recording: Recording, borders: FloatArray) -> d
 
 
 def _instants(
-    points: dict[str, Any],
+    points: CutStretches,
     mine: NDArray[np.intp],
     block: int,
     kind: int,
@@ -105,7 +103,7 @@ def _instants(
     row, node = mine[index // NODES], index % NODES
     same = np.ones(len(index))
     return np.stack(
-        [weight * same, block * same, kind * same, *(points[name][row, node] for name in _FIELDS)], axis=1
+        [weight * same, block * same, kind * same, *(points.at(name, row, node) for name in _FIELDS)], axis=1
     )
 
 

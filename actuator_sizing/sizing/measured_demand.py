@@ -5,6 +5,7 @@ Up to `EXACT_INTERVALS` stretches stay pieces of their own. A longer record is c
 
 from __future__ import annotations
 
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -47,9 +48,10 @@ def recorded_pieces(case: Case, recording: Recording) -> dict[str, Any]:
         from actuator_sizing.sizing.condensed_demand import condensed_pieces
 
         return condensed_pieces(case, recording, borders)
-    stretches = cut_at_signs(case, recording, stretches_between(case, recording, borders))
-    order = np.argsort(stretches["start_s"])
-    return finished(case, recording, {name: value[order] for name, value in stretches.items()})
+    whole = stretches_between(case, recording, borders)
+    cut = cut_at_signs(case, recording, whole)
+    order = np.argsort(cut.column("start_s"))
+    return finished(case, recording, {name: cut.column(name)[order] for name in whole})
 
 
 def joined(recording: Recording, *instants: FloatArray) -> FloatArray:
@@ -101,9 +103,9 @@ def stretches_between(case: Case, recording: Recording, borders: FloatArray) -> 
     a = geometry.load_rate * ddq + geometry.load_bend * dq**2
     shaft_speed = geometry.shaft_rate * dq
     shaft_acceleration = geometry.shaft_rate * ddq + geometry.shaft_bend * dq**2
-    moving = ~recording.stands(t[:, 1]) & (np.abs(dq.mean(axis=1)) > _STILL * recording.speed_peak)
-    direction = np.where(moving, np.sign(v.mean(axis=1)), 0.0)[:, None]
-    turning = np.where(moving, np.sign(shaft_speed.mean(axis=1)), 0.0)[:, None]
+    moving = ~recording.stands(t[:, 1]) & (np.abs(middle(dq)) > _STILL * recording.speed_peak)
+    direction = np.where(moving, np.sign(middle(v)), 0.0)[:, None]
+    turning = np.where(moving, np.sign(middle(shaft_speed)), 0.0)[:, None]
     recorded, payload = recording.effort_at(t), recording.payload_at(t)
     zero = np.zeros_like(t)
     process = recorded if recording.kind not in (RECORDED_EFFORT, RECORDED_SHAFT) else zero
@@ -142,7 +144,41 @@ def stretches_between(case: Case, recording: Recording, borders: FloatArray) -> 
     }  # fmt: skip
 
 
-def cut_at_signs(case: Case, recording: Recording, stretches: dict[str, Any]) -> dict[str, Any]:
+@dataclass(frozen=True)
+class CutStretches:
+    """Stretches without a change of sign: those that had none, and the parts of the others behind them.
+
+    Attributes
+    ----------
+    whole : dict
+        Every stretch before cutting. [-]
+    kept : ndarray of int, shape (k,)
+        Those of `whole` that had no change of sign. [-]
+    parts : dict
+        What became of the others. [-]
+    """
+
+    whole: dict[str, Any]
+    kept: NDArray[np.intp]
+    parts: dict[str, Any]
+
+    def column(self, name: str) -> FloatArray:
+        """One field of all stretches, in the unit of the field. [-]"""
+        if len(self.kept) == len(self.whole[name]):
+            return np.asarray(self.whole[name])
+        return np.concatenate([self.whole[name][self.kept], self.parts[name]])
+
+    def at(self, name: str, row: NDArray[np.intp], node: NDArray[np.intp]) -> FloatArray:
+        """One field at chosen nodes of chosen stretches, in the unit of the field. [-]"""
+        values = np.empty(len(row))
+        own = row < len(self.kept)
+        values[own] = self.whole[name][self.kept[row[own]], node[own]]
+        if not own.all():
+            values[~own] = self.parts[name][row[~own] - len(self.kept), node[~own]]
+        return values
+
+
+def cut_at_signs(case: Case, recording: Recording, stretches: dict[str, Any]) -> CutStretches:
     """Cut where speed, effort or torque changes sign, to second order of a stretch; the order is lost.
 
     Parameters
@@ -154,14 +190,12 @@ def cut_at_signs(case: Case, recording: Recording, stretches: dict[str, Any]) ->
 
     Returns
     -------
-    dict
+    CutStretches
         The same with the halves in place of what was cut. [-]
     """
     changing = np.zeros(len(stretches["start_s"]), dtype=bool)
     for name in _SIGNED:
         changing |= np.isfinite(_crossings(stretches[name]))
-    if not changing.any():
-        return stretches
     few = {key: value[changing] for key, value in stretches.items()}
     for name in _SIGNED:
         at = _crossings(few[name])
@@ -170,10 +204,10 @@ def cut_at_signs(case: Case, recording: Recording, stretches: dict[str, Any]) ->
             continue
         low = few["start_s"][changes]
         high = low + few["duration_s"][changes]
-        middle = low + at[changes] * (high - low)
-        halves = stretches_between(case, recording, np.stack([low, middle, high], axis=1))
+        between = low + at[changes] * (high - low)
+        halves = stretches_between(case, recording, np.stack([low, between, high], axis=1))
         few = {key: np.concatenate([value[~changes], halves[key]]) for key, value in few.items()}
-    return {key: np.concatenate([value[~changing], few[key]]) for key, value in stretches.items()}
+    return CutStretches(stretches, np.flatnonzero(~changing), few)
 
 
 def finished(case: Case, recording: Recording, nodes: dict[str, Any]) -> dict[str, Any]:
@@ -199,6 +233,11 @@ def finished(case: Case, recording: Recording, nodes: dict[str, Any]) -> dict[st
     }
 
 
+def middle(values: FloatArray) -> FloatArray:
+    """Mean of the nodes of each stretch, shape (S, K) to (S,), in the unit of the values [-]."""
+    return np.asarray(values @ np.full(values.shape[1], 1.0 / values.shape[1]))  # a product beats many short sums
+
+
 def flows(torque: FloatArray, direction: FloatArray) -> NDArray[np.int8]:
     """Direction of power on stretches where neither torque nor direction changes sign.
 
@@ -214,7 +253,7 @@ def flows(torque: FloatArray, direction: FloatArray) -> NDArray[np.int8]:
     ndarray of int, shape (S,)
         STANDSTILL, MOTORING or BACK_DRIVING. [-]
     """
-    power = torque.mean(axis=1) * direction[:, 0]
+    power = middle(torque) * direction[:, 0]
     moving = np.where(power >= 0.0, MOTORING, BACK_DRIVING)
     return np.where(direction[:, 0] == 0.0, STANDSTILL, moving).astype(np.int8)
 
