@@ -15,7 +15,7 @@ from actuator_sizing.report.formatting import percent
 if TYPE_CHECKING:
     from actuator_sizing.case.model import Entry
     from actuator_sizing.report.revision import Revision
-    from actuator_sizing.sizing.results import CheckResult, Comparison, SetResult
+    from actuator_sizing.sizing.results import CheckResult, Comparison, CycleOfSet, CycleResult, SetResult
 
 SCHEMA = "actuator-sizing/results/1"
 
@@ -48,6 +48,8 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
             "remarks": [str(problem) for problem in case.problems],
         },
         "cycle": _plain(comparison.cycle),
+        "cycles": [_cycle(each) for each in comparison.cycles],
+        "inertias": [_plain(asdict(part)) for part in comparison.inertias],
         "ranked_by": comparison.ranked_by,
         "sets": [_set(item) for item in comparison.sets],
         "rejected": {
@@ -55,6 +57,7 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
             "by_check": _plain(counts.by_check),
             "sets_total": int(counts.sets_total),
             "incompatible": int(counts.incompatible),
+            "misfits": _plain(counts.misfits),
             "survivors": int(counts.survivors),
             "confirmed_passing": int(counts.confirmed_passing),
             "evaluated": int(counts.evaluated),
@@ -90,7 +93,31 @@ def _set(item: SetResult) -> dict[str, Any]:
         "mass_kg": _plain(item.mass_kg),
         "quantities": _plain(item.quantities),
         "checks": [_check(check) for check in item.checks],
+        "cycles": [_set_in_cycle(each) for each in item.cycles],
+        "mix": _plain(item.mix),
         "levers": _plain(item.levers),
+    }
+
+
+def _set_in_cycle(each: CycleOfSet) -> dict[str, Any]:
+    return {
+        "cycle": each.name,
+        "verdict": each.verdict,
+        "governing_check": each.governing_check,
+        "quantities": _plain(each.quantities),
+        "utilisations": {check.check: _plain(check.utilisation) for check in each.checks},
+    }
+
+
+def _cycle(each: CycleResult) -> dict[str, Any]:
+    cycle = each.case.cycle
+    return {
+        "cycle": cycle.name,
+        "runs": cycle.runs,
+        "duty_type": cycle.duty_type or None,
+        "share": _plain(cycle.share),
+        "segments": [segment.name for segment in cycle.segments],
+        "quantities": _plain(each.quantities),
     }
 
 
@@ -111,6 +138,7 @@ def _check(check: CheckResult) -> dict[str, Any]:
         "advice": bool(check.is_advice),
         "at_time_s": _plain(check.at_time_s),
         "segment": check.segment,
+        "cycle": check.cycle,
         "formula": check.formula,
         "source": check.source,
         "working": check.working,

@@ -15,6 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case, Segment
+from actuator_sizing.core.life import BALL_EXPONENT, equivalent_load
 from actuator_sizing.core.mechanisms import Mechanism
 from actuator_sizing.core.moments import demand_functions
 from actuator_sizing.core.motion_laws import Phase
@@ -23,10 +24,8 @@ from actuator_sizing.core.quadrature import NODES, integrate, interpolate, large
 from actuator_sizing.core.record_slices import RecordSlices
 from actuator_sizing.core.transmission import (
     BACK_DRIVING,
-    GEAR_EXPONENT,
     MOTORING,
     STANDSTILL,
-    equivalent_torque,
     stage_factor,
 )
 
@@ -37,7 +36,10 @@ CAUSES = ("inertia", "gravity", "friction", "process", "losses")
 #: Relative interpolation error that a piece may have where the geometry bends: what `NODES` nodes promise.
 _RESOLUTION = 1e-10
 _DEEPEST = 14  # halvings of one stretch; a stretch that short is below a part in ten thousand
-_RESOLVED = ("position", "speed", "effort", "lossless_torque", "shaft_speed", "shaft_acceleration")
+_RESOLVED = (
+    "position", "speed", "effort", "lossless_torque", "shaft_speed", "shaft_acceleration", "inertia_torque",
+    "gravity_torque",
+)  # fmt: skip
 
 
 @dataclass(frozen=True)
@@ -107,8 +109,12 @@ class Demand:
 
     @cached_property
     def shaft_torque_equivalent(self) -> float:
-        """Equivalent torque at the driven shaft for the wear of a gearhead. [N·m]"""
-        return equivalent_torque(self.duration_s, self.shaft_speed, self.shaft_torque, GEAR_EXPONENT)[0]
+        """Equivalent torque at the driven shaft for the wear of a gearhead on ball bearings. [N·m]"""
+        return self.equivalent(self.shaft_torque, BALL_EXPONENT)
+
+    def equivalent(self, load: FloatArray, exponent: float) -> float:
+        """Equivalent of a load at the nodes, weighted by the turns of the driven shaft, in its own unit. [-]"""
+        return equivalent_load(self.duration_s, self.shaft_speed, load, exponent)[0]
 
     @cached_property
     def shaft_speed_peak(self) -> float:
@@ -126,13 +132,15 @@ class Demand:
         return float(np.sqrt(self.mean(self.shaft_speed**2)))
 
 
-def build_demand(case: Case) -> Demand:
+def build_demand(case: Case, *, in_order: bool = False) -> Demand:
     """Cut the cycle of a case into smooth pieces and find what the driven shaft must do.
 
     Parameters
     ----------
     case : Case
         The axis as understood. [-]
+    in_order : bool
+        Whether every instant of a long record is wanted in its order, for simulation; else it is condensed.
 
     Returns
     -------
@@ -142,7 +150,7 @@ def build_demand(case: Case) -> Demand:
     if case.recording is not None:
         from actuator_sizing.sizing.measured_demand import recorded_pieces
 
-        return Demand(**recorded_pieces(case, case.recording))
+        return Demand(**recorded_pieces(case, case.recording, in_order=in_order))
     pieces = list(_pieces(case))
     stacked: dict[str, Any] = {
         name: np.array([piece[name] for piece in pieces])
@@ -407,9 +415,9 @@ def _load(stretch: _Stretch, place: _Place, direction_of_load: float | None = No
     load_flow = _flow(effort, direction)
     factor = place.factors[load_flow]
     shaft_direction = np.full(NODES, _sign(shaft_speed))
-    inertia_torque = mechanism.shaft_inertia_kg_m2 * shaft_acceleration
+    inertia_torque, gravity_torque = mechanism.shaft_torques(geometry, shaft_speed, shaft_acceleration)
     drag = mechanism.shaft_friction_nm * shaft_direction
-    torque = effort * lever * factor + inertia_torque + drag
+    torque = effort * lever * factor + inertia_torque + gravity_torque + drag
     motor_acceleration = (
         shaft_acceleration + mechanism.specific_gravity_m_s2 + mechanism.specific_friction_m_s2 * direction
     )
@@ -428,6 +436,7 @@ def _load(stretch: _Stretch, place: _Place, direction_of_load: float | None = No
         "factor": factor,
         "drag": drag,
         "inertia_torque": inertia_torque,
+        "gravity_torque": gravity_torque,
         "lossless_torque": effort * lever,
         "shaft_speed": shaft_speed,
         "shaft_acceleration": shaft_acceleration,
@@ -441,7 +450,7 @@ def _by_cause(loaded: Mapping[str, Any]) -> dict[str, FloatArray]:
     efforts, lever = loaded["efforts"], loaded["lever"]
     return {
         "inertia": efforts.inertia * lever + loaded["inertia_torque"],
-        "gravity": efforts.gravity * lever,
+        "gravity": efforts.gravity * lever + loaded["gravity_torque"],
         "friction": efforts.friction * lever + loaded["drag"],
         "process": efforts.process * lever,
         "losses": loaded["lossless_torque"] * (loaded["factor"] - 1.0),

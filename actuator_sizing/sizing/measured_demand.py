@@ -25,7 +25,7 @@ _PARTS = 4  # of an interval between knots
 _SAME = 1e-12  # of a cycle: instants closer than this are one
 
 
-def recorded_pieces(case: Case, recording: Recording) -> dict[str, Any]:
+def recorded_pieces(case: Case, recording: Recording, *, in_order: bool = False) -> dict[str, Any]:
     """Fields of a `Demand` for a recorded cycle.
 
     Parameters
@@ -34,6 +34,8 @@ def recorded_pieces(case: Case, recording: Recording) -> dict[str, Any]:
         The axis. [-]
     recording : Recording
         The record as understood. [-]
+    in_order : bool
+        Never condense.
 
     Returns
     -------
@@ -44,7 +46,7 @@ def recorded_pieces(case: Case, recording: Recording) -> dict[str, Any]:
     if len(recording.time_s) == 2:  # nothing but a motion: polynomials of fifth degree, in parts
         knots = np.linspace(0.0, knots[-1], _PARTS * (len(knots) - 1) + 1)
     borders = joined(recording, recording.time_s, knots)
-    if len(borders) > EXACT_INTERVALS:
+    if len(borders) > EXACT_INTERVALS and not in_order:
         from actuator_sizing.sizing.condensed_demand import condensed_pieces
 
         return condensed_pieces(case, recording, borders)
@@ -128,10 +130,11 @@ def stretches_between(case: Case, recording: Recording, borders: FloatArray) -> 
             np.array(mechanism.efficiency_back),
         )[:, None]
         causes["losses"] = effort * lever * (factor - 1.0) + zero
-        inertia = mechanism.shaft_inertia_kg_m2 * shaft_acceleration
+        inertia, gravity = mechanism.shaft_torques(geometry, shaft_speed, shaft_acceleration)
         drag = mechanism.shaft_friction_nm * turning
-        torque = effort * lever * factor + inertia + drag
+        torque = effort * lever * factor + inertia + gravity + drag
         causes["inertia"] = causes["inertia"] + inertia
+        causes["gravity"] = causes["gravity"] + gravity
         causes["friction"] = causes["friction"] + drag
     motor = (
         shaft_acceleration + mechanism.specific_gravity_m_s2 + mechanism.specific_friction_m_s2 * direction
@@ -235,7 +238,9 @@ def finished(case: Case, recording: Recording, nodes: dict[str, Any]) -> dict[st
 
 def middle(values: FloatArray) -> FloatArray:
     """Mean of the nodes of each stretch, shape (S, K) to (S,), in the unit of the values [-]."""
-    return np.asarray(values @ np.full(values.shape[1], 1.0 / values.shape[1]))  # a product beats many short sums
+    return np.asarray(
+        values @ np.full(values.shape[1], 1.0 / values.shape[1])
+    )  # a product beats many short sums
 
 
 def flows(torque: FloatArray, direction: FloatArray) -> NDArray[np.int8]:

@@ -67,8 +67,8 @@ def sized(case: Path) -> tuple[float, float, float]:
 def screening(case_path: Path) -> tuple[float, int]:
     """Processor time of screening alone [s], and pieces of the demand."""
     from actuator_sizing.case.reading import read_case
-    from actuator_sizing.sizing.judging import active_checks, is_binding
     from actuator_sizing.sizing.demand import build_demand
+    from actuator_sizing.sizing.judging import active_checks, is_binding
     from actuator_sizing.sizing.screening import screen
 
     case = read_case(case_path)

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from actuator_sizing.report.curves import leading_detail
+from actuator_sizing.report.figures.cycles import draw_cycles
 from actuator_sizing.report.figures.dynamics import (
     draw_bode,
     draw_following_error,
@@ -37,6 +38,7 @@ FIGURES = (
     "current",
     "temperature",
     "step_response",
+    "cycles",
 )
 
 
@@ -99,6 +101,10 @@ def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]
     figures: dict[str, Callable[[], Figure | None]] = {
         "utilisation": lambda: draw_utilisation(comparison.sets)
     }
+    if comparison.cycles:
+        several = comparison
+        figures["cycles"] = lambda: draw_cycles(several)
+    comparison = comparison.governing
     best = comparison.sets[0] if comparison.sets else None
     detail = leading_detail(comparison)
     if best is None or detail is None:

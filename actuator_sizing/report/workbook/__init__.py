@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 from actuator_sizing.report.text import option
 from actuator_sizing.report.workbook.case_sheets import add_inputs, add_parts, add_questions, add_segments
 from actuator_sizing.report.workbook.curves import add_speed_torque, add_time_series, add_warm_up
+from actuator_sizing.report.workbook.cycle_sheets import add_cycles, add_inertias
 from actuator_sizing.report.workbook.results_sheets import add_candidates, add_checks, add_summary
 from actuator_sizing.report.workbook.writer import Sheets
 
@@ -55,10 +56,12 @@ def render_workbook(comparison: Comparison, day: date, rows_in_file: int | None 
         add_summary(sheets, comparison, day, rows_in_file)
         add_candidates(sheets, comparison)
         add_checks(sheets, comparison)
+        add_cycles(sheets, comparison)
         add_segments(sheets, comparison)
         add_time_series(sheets, comparison)
         add_warm_up(sheets, comparison)
         add_speed_torque(sheets, comparison)
+        add_inertias(sheets, comparison)
         add_parts(sheets, comparison)
         add_inputs(sheets, comparison)
         add_questions(sheets, comparison)

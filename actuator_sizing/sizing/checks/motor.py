@@ -12,12 +12,13 @@ from actuator_sizing.core.machine import judge, resistance_at, torque_of_current
 from actuator_sizing.core.parameters import MotorParameters, Surroundings
 from actuator_sizing.core.thermal import altitude_factor
 from actuator_sizing.sizing.block import Block
-from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits
+from actuator_sizing.sizing.checks.base import SUSTAINED, Check, Measure, Need, Sets, digits
 from actuator_sizing.sizing.checks.working import (
     available_voltage_working,
     current_working,
     instant_of,
     rms_working,
+    temperature_working,
     torque_working,
     voltage_limit_working,
     voltage_working,
@@ -129,17 +130,16 @@ RMS_CURRENT = Check(
     measure=_rms_measure,
     bound=_rms_bound,
     working=_rms_working,
+    concerns=SUSTAINED,
 )
 
 
 # -- torque over the speed–torque plane -------------------------------------------------------------
 def current_limited_torque(sets: Sets) -> FloatArray:
     """Air-gap torque at the smaller of the peak currents of motor and drive, shape (S,). [N·m]"""
-    from actuator_sizing.core.machine import amplitude_per_unit_current, saturation_coefficient
+    from actuator_sizing.core.machine import motor_amperes_per_drive_ampere, saturation_coefficient
 
-    to_motor = amplitude_per_unit_current(sets.drives.current_basis) / amplitude_per_unit_current(
-        sets.motors.current_basis
-    )
+    to_motor = motor_amperes_per_drive_ampere(sets.motors, sets.drives)
     current = np.fmin(sets.motors.peak_current_a, sets.drives.peak_current_a * to_motor)
     K = sets.pairs.torque_constant_nm_per_a
     torque = torque_of_current(current, K, saturation_coefficient(sets.motors))
@@ -167,12 +167,14 @@ def _plane_bound(block: Block) -> FloatArray:
 
 def _plane_working(sets: Sets, i: int) -> str:
     m = _plane_measure(sets)
-    at = instant_of(sets, i, m.instant(i), "torque")
     p = sets.pairs
-    unit = at.units[0]
     by_current = float(current_limited_torque(sets)[i])
-    if p.plane_utilisation[i] >= p.torque_peak_nm[i] / by_current:
-        limit = voltage_limit_working(sets, i, at)
+    by_voltage = bool(p.plane_utilisation[i] >= p.torque_peak_nm[i] / by_current)
+    cold = by_voltage and bool(p.plane_is_cold[i])
+    at = instant_of(sets, i, m.instant(i), "torque", cold=cold)
+    unit = at.units[0]
+    if by_voltage:
+        limit = f"{temperature_working(at, cold=cold)}; {voltage_limit_working(sets, i, at)}"
     else:
         limit = f"T_available = {digits(by_current)} {unit} at the smaller peak current of motor and drive"
     return f"{torque_working(at)}; {limit}; {m.quotient(i)}"
@@ -185,7 +187,7 @@ SPEED_TORQUE = Check(
     unit="N·m",
     linear_unit="N",
     formula="max over the cycle of |T| / T_available(ω), T_available from peak current and from "
-    "√((R i + K ω)² + (p ω L i)²) ≤ U at minimum bus voltage and hot winding",
+    "√((R i + K ω)² + (p ω L i)²) ≤ U at minimum bus voltage, hot winding or motor at ambient, whichever is worse",
     source="Speed–torque plane of a DC-equivalent machine; textbook dq relations at i_d = 0",
     needs=(
         Need("motors", "peak_current_a", "peak current"),
@@ -208,6 +210,8 @@ def _temperature_measure(sets: Sets) -> Measure:
 
 
 def _temperature_bound(block: Block) -> FloatArray:
+    if not block.repeats:
+        return np.zeros((1, 1))  # a single run may end before anything is warm
     return block.mean_winding_rise / (block.motors.winding_limit_degc - block.surroundings.ambient_degc)
 
 
@@ -215,14 +219,20 @@ def _temperature_working(sets: Sets, i: int) -> str:
     ambient = sets.surroundings.ambient_degc
     limit = sets.motors.winding_limit_degc[i]
     if not sets.pairs.has_equilibrium[i]:
+        if sets.start is not None:
+            return "in one run the winding grows hotter than any temperature that means something"
         return "no equilibrium: each cycle leaves the winding hotter than the last"
     peak = sets.pairs.winding_max_degc[i]
     if limit <= ambient:
         return f"the air at {digits(ambient)} °C leaves no rise up to the limit of {digits(limit)} °C"
+    over = "in periodic steady state"
+    if sets.start is not None:
+        over = f"in one run from {digits(sets.start.winding_degc[i])} °C"
+        over += "" if sets.start.following is None else " and the cycle that follows"
     mean = sets.pairs.housing_mean_degc[i]
     housing = "one thermal body" if np.isnan(mean) else f"housing mean {digits(mean)} °C"
     return (
-        f"ϑ_max = {digits(peak)} °C in periodic steady state (mean {digits(sets.pairs.winding_mean_degc[i])} °C, "
+        f"ϑ_max = {digits(peak)} °C {over} (mean {digits(sets.pairs.winding_mean_degc[i])} °C, "
         f"{housing}); rise ({digits(peak)} − {digits(ambient)}) / "
         f"({digits(limit)} − {digits(ambient)}) = {digits((peak - ambient) / (limit - ambient))}"
     )
@@ -233,7 +243,8 @@ WINDING_TEMPERATURE = Check(
     title="Winding temperature",
     group="motor",
     unit="K",
-    formula="max over the periodic steady state of ϑ_w − ϑ_a ≤ ϑ_limit − ϑ_a; two bodies, R(ϑ) and K(ϑ) fed back",
+    formula="max over the periodic steady state of ϑ_w − ϑ_a ≤ ϑ_limit − ϑ_a, over its run where a cycle does not "
+    "repeat; two bodies, R(ϑ) and K(ϑ) fed back",
     source="Two-body thermal network; periodic state by the cycle map; classes of IEC 60085",
     needs=(
         _LIMIT,
@@ -315,11 +326,13 @@ def _voltage_measure(sets: Sets) -> Measure:
 
 def _voltage_working(sets: Sets, i: int) -> str:
     m = _voltage_measure(sets)
-    at = instant_of(sets, i, m.instant(i), "voltage")
+    cold = bool(sets.pairs.voltage_is_cold[i])
+    at = instant_of(sets, i, m.instant(i), "voltage", cold=cold)
     with_slope = sets.pairs.voltage_peak_v[i] > sets.pairs.voltage_peak_without_inductance_v[i]
     note = "" if with_slope else " (the value without L di/dt governs)"
     return (
-        f"{torque_working(at)}; {current_working(at)}; {voltage_working(at, with_slope=bool(with_slope))}{note}; "
+        f"{torque_working(at)}; {temperature_working(at, cold=cold)}; {current_working(at)}; "
+        f"{voltage_working(at, with_slope=bool(with_slope))}{note}; "
         f"{available_voltage_working(sets, i)}; {m.quotient(i)}"
     )
 
@@ -333,7 +346,8 @@ VOLTAGE = Check(
     title="Voltage",
     group="motor",
     unit="V",
-    formula="max √((R i + K ω + L di/dt)² + (p ω L i)²) ≤ U_bus,min · m in the motor's basis",
+    formula="max √((R i + K ω + L di/dt)² + (p ω L i)²) ≤ U_bus,min · m in the motor's basis; hot (R large) or at "
+    "ambient (cold magnets: K large), whichever is worse",
     source="DC-equivalent machine; textbook dq relations at i_d = 0; the larger of the values with and without "
     "L di/dt counts",
     needs=(),
