@@ -22,6 +22,7 @@ from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.checks.motor import current_limited_torque, rerated_continuous_current
 from actuator_sizing.sizing.results import SetDetail
 from actuator_sizing.sizing.set_model import SetModel
+from actuator_sizing.sizing.stop_courses import stop_courses
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -68,6 +69,7 @@ def set_detail(model: SetModel, sets: Sets, index: int) -> SetDetail:
         levels=_levels(model, sets, index),
         segments=_segment_frame(model),
         bus=bus_frame(sets.only(index)),
+        stops=stop_courses(sets.only(index)),
     )
 
 

@@ -7,6 +7,7 @@ from typing import Any
 import numpy as np
 
 from actuator_sizing.core.duty_types import usual_times
+from actuator_sizing.core.overload_heat import insulation_life_factor
 from actuator_sizing.core.parameters import CURRENT_BASES
 from actuator_sizing.core.permissible_load import LoadedMachine, intermittent_current, short_time_current
 from actuator_sizing.core.warm_up import temperatures_after, warm_up
@@ -69,7 +70,15 @@ def quantities(model: SetModel, sets: Sets, index: int) -> dict[str, Any]:
     answer.update(energy_quantities(model, sets, index))
     answer.update(stop_quantities(sets, index))
     answer.update(_step_quantities(model))
+    answer["insulation_life_factor_ratio"] = _insulation_life(model, answer["winding_max_degc"])
     return answer
+
+
+def _insulation_life(model: SetModel, winding_max_degc: float | None) -> float | None:
+    """Life of the insulation over its life at the winding limit, by the rule of thumb; None where not known."""
+    if winding_max_degc is None:
+        return None
+    return _known(insulation_life_factor(winding_max_degc, float(model.motor.winding_limit_degc[0])))
 
 
 def _known(value: Any) -> float | None:
