@@ -333,18 +333,17 @@ def _list_sets(run: _Run, pairs: _Pairs, peak_a: FloatArray, rms_a: FloatArray, 
     stack = common.drive_side.utilisations(peak_a, rms_a, drives)
     drive_worst = stack.max(axis=0)
     survives = drive_worst <= LIMIT
-    k, d = _places_of(~survives)
+    # What cannot get into a list is not even written down.
+    k, d = _places_of(~survives & (common.listed | (drive_worst <= found.by_drive.bar)))
     lost = run.sets(run.pairs(pairs.gearhead[k], pairs.motor[k]), d)
     found.losses.keep(lost, len(common.check_keys) + stack.argmax(axis=0)[k, d], drive_worst[k, d])
     found.by_drive.add(lost, drive_worst[k, d])
-    k, d = _places_of(survives)
-    if len(k):
-        sets = run.sets(run.pairs(pairs.gearhead[k], pairs.motor[k]), d)
-        if common.key == "reserve":
-            keys = np.maximum(key[k], drive_worst[k, d])
-        else:
-            keys = key[k] + common.drive_key[drives][d]
-        found.survivors.add(sets, keys)
+    if common.key == "reserve":
+        keys = np.maximum(key[:, None], drive_worst)
+    else:
+        keys = key[:, None] + common.drive_key[drives]
+    k, d = _places_of(survives & (keys <= found.survivors.bar))
+    found.survivors.add(run.sets(run.pairs(pairs.gearhead[k], pairs.motor[k]), d), keys[k, d])
 
 
 def _pair_key(run: _Run, pairs: _Pairs) -> FloatArray:
