@@ -67,16 +67,21 @@ def commands() -> None:
 @commands.command(cls=_StartCommand)
 @click.argument("path", type=click.Path(path_type=Path))
 @click.option("--mechanism", metavar="NAME", help="Mechanism of the axis; the choices stand below.")
+@click.option(
+    "--duty-type",
+    type=click.Choice(["S1", "S2", "S3", "S4", "S5", "S6", "S8", "S10"]),
+    help="Duty type of IEC 60034-1 in place of a duty cycle.",
+)
 @_debug
-def start(path: Path, mechanism: str | None) -> None:
+def start(path: Path, mechanism: str | None, duty_type: str | None) -> None:
     """Write a new case with example rows to PATH.
 
     It is a workbook if PATH ends in .xlsx, else a folder of CSV files. Every table has its headings with
     units, the allowed values, hints and filled example rows.
     """
-    from actuator_sizing.case.starting import start_case
+    from actuator_sizing.case.starting import DEFAULT_MECHANISM, start_case
 
-    written = start_case(path) if mechanism is None else start_case(path, mechanism)
+    written = start_case(path, mechanism or DEFAULT_MECHANISM, duty_type=duty_type or "")
     click.echo(
         f"Started {_files(len(written))} in {path}" if path.suffix.lower() != ".xlsx" else f"Started {path}"
     )
@@ -275,6 +280,7 @@ def machine(
 @click.option(
     "--set", "changes", multiple=True, metavar="SETTING=VALUE", help="Change a setting of the loops."
 )
+@click.option("--cycle", default="", metavar="NAME", help="Cycle of a case with several; default: the first.")
 @click.option("--rate", type=float, metavar="HZ", help="Sampling rate; default: the drive's control rate.")
 @click.option("--cycles", type=click.IntRange(min=1), default=1, metavar="N", help="How many cycles to run.")
 @click.option(
@@ -289,6 +295,7 @@ def simulate(
     drive: str | None,
     input_: str,
     changes: tuple[str, ...],
+    cycle: str,
     rate: float | None,
     cycles: int,
     out: Path | None,
@@ -315,6 +322,7 @@ def simulate(
         settings=parse_settings(changes),
         rate_hz=math.nan if rate is None else rate,
         cycles=cycles,
+        cycle=cycle,
     )
     written = simulation.write(out) if out is not None else ()
     if as_json:
