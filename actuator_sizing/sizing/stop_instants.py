@@ -89,14 +89,19 @@ def stop_instants(sets: Sets) -> StopInstants:
             if not len(pieces) or (moves and sense == 0.0 and segment.brake_closed):
                 continue
             speed = np.abs(demand.shaft_speed[pieces])
-            tried = {int(speed.argmax())}
+            # Of instants equally fast, the one with the largest lever; at a dead centre the load has none at all.
+            lever = np.abs(demand.speed[pieces])
+            tried = {int(np.where(speed >= (1.0 - 1e-9) * speed.max(), lever, -1.0).argmax())}
             if sense and float(np.ptp(pull[pieces])) > 1e-9 * float(np.max(np.abs(pull))):
-                tried.add(int((sense * pull[pieces]).argmin()))
+                led = lever > 1e-9 * lever.max()
+                tried.add(int(np.where(led, sense * pull[pieces], np.inf).argmin()))
             for flat, direction in product(sorted(tried), (sense,) if sense else (1.0, -1.0)):
                 piece, node = np.unravel_index(flat, speed.shape)
                 where = (pieces[piece], node)
                 x = demand.position[where]
-                r = float(mechanism.ratio_at(np.array([x]))[0][0])
+                r = _ratio(sets, where)
+                if moves and not np.isfinite(r):
+                    continue  # at rest in a dead centre nothing pulls at the shaft
                 e = _efforts(sets, x, direction * np.sign(r), segment.payload, segment.process_effort)
                 inertia, gravity, friction, process = (value / abs(r) for value in e)
                 driving = min(direction * np.sign(r) * process, 0.0)
@@ -114,6 +119,15 @@ def stop_instants(sets: Sets) -> StopInstants:
                     )
                 )
     return StopInstants(*(np.array(column) for column in zip(*rows, strict=True)))
+
+
+def _ratio(sets: Sets, where: tuple[np.intp, np.intp]) -> float:
+    """Shaft over load speed at one node, from the motion itself on either side of a dead centre, else geometry."""
+    demand = sets.demand
+    if demand.speed[where] != 0.0:
+        return float(demand.shaft_speed[where] / demand.speed[where])
+    with np.errstate(divide="ignore", invalid="ignore"):
+        return float(sets.case.mechanism.ratio_at(demand.position[where][None])[0][0])
 
 
 def _efforts(
