@@ -8,6 +8,8 @@ from itertools import product
 import numpy as np
 from numpy.typing import NDArray
 
+from actuator_sizing.case.model import Case
+from actuator_sizing.core.mechanisms.base import Transfer
 from actuator_sizing.core.parameters import GearheadParameters, MotorParameters
 from actuator_sizing.sizing.checks.base import Sets
 
@@ -99,19 +101,22 @@ def stop_instants(sets: Sets) -> StopInstants:
                 piece, node = np.unravel_index(flat, speed.shape)
                 where = (pieces[piece], node)
                 x = demand.position[where]
-                r = _ratio(sets, where)
+                geometry, r = _geometry(sets, where)
                 if moves and not np.isfinite(r):
                     continue  # at rest in a dead centre nothing pulls at the shaft
+                own, weight = (
+                    float(part[0]) for part in mechanism.shaft_torques(geometry, np.zeros(1), np.ones(1))
+                )
                 e = _efforts(sets, x, direction * np.sign(r), segment.payload, segment.process_effort)
                 inertia, gravity, friction, process = (value / abs(r) for value in e)
                 driving = min(direction * np.sign(r) * process, 0.0)
-                load = direction * np.sign(r) * gravity + driving
+                load = direction * np.sign(r) * gravity + direction * weight + driving
                 rows.append(
                     (
                         demand.time_s[where],
                         float(speed[piece, node]),
                         abs(r),
-                        inertia / abs(r) + mechanism.shaft_inertia_kg_m2,
+                        inertia / abs(r) + own,
                         load,
                         abs(friction) + mechanism.shaft_friction_nm,
                         direction * mechanism.specific_gravity_m_s2,
@@ -121,13 +126,26 @@ def stop_instants(sets: Sets) -> StopInstants:
     return StopInstants(*(np.array(column) for column in zip(*rows, strict=True)))
 
 
-def _ratio(sets: Sets, where: tuple[np.intp, np.intp]) -> float:
-    """Shaft over load speed at one node, from the motion itself on either side of a dead centre, else geometry."""
-    demand = sets.demand
-    if demand.speed[where] != 0.0:
-        return float(demand.shaft_speed[where] / demand.speed[where])
+def _geometry(sets: Sets, where: tuple[np.intp, np.intp]) -> tuple[Transfer, float]:
+    """Load and shaft at one node and the ratio between them, on the right side of every dead centre."""
+    case, demand = sets.case, sets.demand
+    at_shaft = case.motion_at_shaft and case.recording is None
+    stated = _stated(case, float(demand.time_s[where])) if at_shaft else float(demand.position[where])
     with np.errstate(divide="ignore", invalid="ignore"):
-        return float(sets.case.mechanism.ratio_at(demand.position[where][None])[0][0])
+        geometry = case.mechanism.transfer(np.array([stated]), at_shaft)
+        return geometry, float((geometry.shaft_rate / geometry.load_rate)[0])
+
+
+def _stated(case: Case, time_s: float) -> float:
+    """Coordinate of the duty cycle at an instant. [m or rad]"""
+    origin = 0.0
+    for segment in case.segments:
+        for phase in segment.phases:
+            if time_s <= phase.duration_s:
+                return origin + float(phase.kinematics(max(time_s, 0.0))[0])
+            time_s -= phase.duration_s
+        origin += segment.phases[-1].end()[0] if segment.phases else 0.0
+    return origin
 
 
 def _efforts(
