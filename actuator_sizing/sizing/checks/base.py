@@ -183,6 +183,8 @@ def _always(sets: Sets) -> NDArray[np.bool_]:
 SUSTAINED = (REPEATS,)
 #: Wear counts what is done often, from warm or from cold.
 OFTEN = (REPEATS, SHORT_TIME)
+
+
 def everywhere(value: float, sets: Sets) -> FloatArray:
     """The same value for every set, shape (S,), in its own unit. [-]"""
     return np.full(len(sets), value)
