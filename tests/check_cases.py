@@ -16,7 +16,7 @@ from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import build_demand
 from actuator_sizing.sizing.dynamic_results import DynamicResults
 from actuator_sizing.sizing.shortlist import evaluate_sets
-from tests.made_cases import DIRECT, DRIVE, GEARHEAD, MOTOR, case, cycle
+from tests.made_cases import DIRECT, DRIVE, GEARHEAD, MOTOR, SURROUNDINGS, case, cycle
 
 LEVEL = {"lead": 0.02, "moving mass": 10.0, "guide friction force": 150.0}
 LIFT = {**LEVEL, "inclination": np.pi / 2, "screw diameter": 0.02, "guide friction force": 10.0}
@@ -33,6 +33,12 @@ HELD = cycle(
     {"law": "cycloidal", "displacement": -0.1, "duration_s": 1.0},
     {"law": "dwell", "duration_s": 0.5, "brake_closed": True},
 )
+STANDS = cycle(
+    {"law": "cycloidal", "displacement": 0.1, "duration_s": 1.0},
+    {"law": "dwell", "duration_s": 2.0},
+    {"law": "cycloidal", "displacement": -0.1, "duration_s": 1.0},
+    {"law": "dwell", "duration_s": 2.0},
+)
 RECTIFIER = {"supply feeds back": "no"}
 CHOPPER = {**RECTIFIER, "brake resistor": 60.0, "chopper threshold": 361.0, "brake resistor continuous power": 500.0,
            "brake resistor pulse energy": 1000.0}  # fmt: skip
@@ -42,6 +48,10 @@ LIFE = {"required life": 3.6e7}
 STRONG = dict(MOTOR, peak_current_a=28.0, peak_torque_nm=12.0)
 
 Columns = dict[str, Any]
+
+#: What the comfortable drive states of itself beside its ratings.
+SWITCHING = {"standstill_current": 100.0, "maximum_output_frequency": 600.0, "minimum_load_inductance": 1e-5,
+             "pwm_frequency": 1e6}  # fmt: skip
 
 
 def sets_of(
@@ -56,16 +66,18 @@ def sets_of(
     gearhead_columns: Columns | None = None,
     drive_columns: Columns | None = None,
     dynamics: Columns | None = None,
+    cable_ohm: float = 0.01,
     **options: Any,
 ) -> Sets:
     """One set; `*_columns` are columns of the catalogs by key, a tuple where a second part states another value."""
     motors = [dict(STRONG, **(motor or {}))]
     gearheads = [dict(DIRECT if gearhead is None else dict(GEARHEAD, ratio=2.0), **(gearhead or {}))]
     drives = [dict(DRIVE, **(drive or {}))]
-    tables = {"motors": motor_columns, "gearheads": gearhead_columns, "drives": drive_columns}
+    tables = {"motors": motor_columns, "gearheads": gearhead_columns, "drives": SWITCHING | (drive_columns or {})}
     count = 2 if any(isinstance(v, tuple) for part in tables.values() for v in (part or {}).values()) else 1
     made = case(mechanism, values, segments, motors=motors * count, gearheads=gearheads * count,
-                drives=drives * count, options={"stop reaction time": 0.01, **options})  # fmt: skip
+                drives=drives * count, surroundings=replace(SURROUNDINGS, cable_ohm=cable_ohm),
+                options={"stop reaction time": 0.01, **options})  # fmt: skip
     for name, given in tables.items():
         catalog = getattr(made, name)
         known = {}
@@ -103,6 +115,7 @@ _SHAFT = {
     "permissible_radial_force": 500.0, "radial_force_position": 0.02, "bearing_lever": 0.03,
     "permissible_axial_force": 200.0, "bearing_life": 7.2e7, "bearing_life_speed": 100.0,
 }  # fmt: skip
+_SIMULATED = "simulation: only leading sets with a cycle of at most four million samples are simulated"
 _LOADED = {"shaft radial force": 200.0, "shaft force position": 0.02}
 
 #: Fails this check and nothing else.
@@ -140,10 +153,25 @@ FAILING: dict[str, Callable[[], Sets]] = {
         drive={"continuous_current_a": 1.0, "peak_current_a": 5.0, "peak_time_s": 1e-3}
     ),
     "drive_bus_voltage": lambda: sets_of(drive={"bus_voltage_min_v": 300.0}),
+    "drive_standstill_current": lambda: sets_of(
+        values=LIFT, segments=STANDS, drive_columns={"standstill_current": 0.1}
+    ),
+    "drive_output_frequency": lambda: sets_of(drive_columns={"maximum_output_frequency": 10.0}),
+    "drive_load_inductance": lambda: sets_of(drive_columns={"minimum_load_inductance": 1.0}),
+    "pwm_ripple_loss": lambda: sets_of(drive_columns={"pwm_frequency": 200.0}),
+    "cable_voltage_drop": lambda: sets_of(cable_ohm=25.0),
     "bus_maximum_voltage": lambda: sets_of(values=LIFT, drive={"capacitance_f": 1e-6}, **RECTIFIER),
     "bus_sag": lambda: sets_of(
         gearhead={"ratio": 9.0, "speed_mean_max_rad_s": 600.0}, motor={"peak_current_a": 60.0},
+        drive={"bus_voltage_min_v": 50.0},
         **{"supply internal resistance": 125.0},
+    ),
+    "bus_minimum_voltage": lambda: sets_of(
+        drive={"bus_voltage_min_v": 285.0}, **{"supply internal resistance": 60.0}
+    ),
+    "supply_charging_current": lambda: sets_of(values=LIFT, **{"supply charging current": 1e-3}),
+    "chopper_release": lambda: sets_of(
+        values=LIFT, drive={"brake_resistor_min_ohm": 10.0}, **{**CHOPPER, "chopper hysteresis": 20.0}
     ),
     "brake_resistor_value": lambda: sets_of(values=LIFT, drive={"brake_resistor_min_ohm": 70.0}, **CHOPPER),
     "brake_resistor_peak_power": lambda: sets_of(
@@ -254,9 +282,28 @@ LACKING: dict[str, tuple[Callable[[], Sets], str]] = {
     "drive_continuous_current": (lambda: sets_of(drive={"continuous_current_a": np.nan}), "continuous current"),
     "drive_peak_current": (lambda: sets_of(drive={"peak_current_a": np.nan}), "peak current"),
     "drive_peak_time": (lambda: sets_of(drive={"peak_time_s": np.nan}), "peak time"),
+    "drive_standstill_current": (
+        lambda: sets_of(values=LIFT, segments=STANDS, drive={"continuous_current_a": np.nan}),
+        "continuous current in these surroundings",
+    ),
+    "drive_output_frequency": (
+        lambda: sets_of(drive_columns={"maximum_output_frequency": np.nan}), "maximum output frequency"
+    ),
+    "drive_load_inductance": (
+        lambda: sets_of(drive_columns={"minimum_load_inductance": np.nan}), "minimum load inductance"
+    ),
+    "pwm_ripple_loss": (lambda: sets_of(drive_columns={"pwm_frequency": np.nan}), "PWM frequency"),
     "drive_bus_voltage": (lambda: sets_of(drive={"bus_voltage_max_v": np.nan}), "maximum bus voltage"),
     "bus_maximum_voltage": (
         lambda: sets_of(values=LIFT, drive={"capacitance_f": np.nan}, **RECTIFIER), "internal capacitance"
+    ),
+    "bus_sag": (lambda: sets_of(supply="battery"), "supply current limit"),
+    "bus_minimum_voltage": (
+        lambda: sets_of(drive={"bus_voltage_min_v": np.nan}, **{"supply internal resistance": 1.0}),
+        "minimum bus voltage",
+    ),
+    "supply_charging_current": (
+        lambda: sets_of(supply="battery", **{"supply current limit": 100.0}), "supply charging current"
     ),
     "brake_resistor_value": (lambda: sets_of(values=LIFT, **CHOPPER), "minimum brake resistor"),
     "brake_resistor_peak_power": (
@@ -356,10 +403,10 @@ LACKING: dict[str, tuple[Callable[[], Sets], str]] = {
         "torsional stiffness (or driven shaft stiffness of the axis)",
     ),
     "following_error": (
-        lambda: sets_of(dynamics={"is_simulated": np.nan}), "simulation: only the leading sets are simulated"
+        lambda: sets_of(dynamics={"is_simulated": np.nan}), _SIMULATED
     ),
     "stability_reserve": (
-        lambda: sets_of(dynamics={"is_simulated": np.nan}), "simulation: only the leading sets are simulated"
+        lambda: sets_of(dynamics={"is_simulated": np.nan}), _SIMULATED
     ),
     "resonance": (
         lambda: sets_of(dynamics={"stiffness_nm_per_rad": np.nan}),

@@ -16,6 +16,7 @@ if TYPE_CHECKING:
     from actuator_sizing.case.model import Case
     from actuator_sizing.sizing.demand import Demand
     from actuator_sizing.sizing.simulation_results import Simulation
+    from actuator_sizing.sizing.stop_courses import StopCourses
 
 PASSES = "passes"
 LOW_RESERVE = "passes, low reserve"
@@ -119,6 +120,8 @@ class SetDetail:
     #: one row per segment of the duty cycle: torque_rms_nm, current_rms_a and current_squared_a2_s, the integral
     #: of the squared current over the segment; their sum over the cycle time is the squared RMS current
     segments: pd.DataFrame | None = None
+    #: every way of stopping from its worst instant (None: nothing asks for it)
+    stops: StopCourses | None = None
     #: simulates the cycle under the default loops, when somebody asks for it (None: it was not prepared)
     simulation: Callable[[], Simulation | None] | None = None
 

@@ -22,6 +22,7 @@ from actuator_sizing.report.document.dynamics import dynamics_section
 from actuator_sizing.report.document.inertias import inertias_section
 from actuator_sizing.report.document.inputs import assumptions_section, inputs_section
 from actuator_sizing.report.document.levers import levers_section
+from actuator_sizing.report.document.stopping import stopping_section
 from actuator_sizing.report.document.verdict import cover_facts, verdict_section, verdict_sentence
 from actuator_sizing.report.text import clean, option
 
@@ -70,6 +71,9 @@ def prepare_document(
         figure_section = figures_section(shown, drawn)
         if figure_section.blocks:
             sections.append(figure_section)
+        stopping = stopping_section(shown, drawn)
+        if stopping is not None:
+            sections.append(stopping)
         moving = dynamics_section(shown, drawn)
         if moving is not None:
             sections.append(moving)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
@@ -17,6 +18,7 @@ from actuator_sizing.report.figures.dynamics import (
 from actuator_sizing.report.figures.over_time import draw_causes, draw_current, draw_motion
 from actuator_sizing.report.figures.speed_torque import draw_speed_torque
 from actuator_sizing.report.figures.step import draw_step_response
+from actuator_sizing.report.figures.stopping import draw_stops
 from actuator_sizing.report.figures.style import house_style, to_svg
 from actuator_sizing.report.figures.temperature import draw_temperature
 from actuator_sizing.report.figures.units import AxisUnits
@@ -25,9 +27,9 @@ from actuator_sizing.report.figures.utilisation import draw_utilisation
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
-    from actuator_sizing.sizing.results import Comparison
+    from actuator_sizing.sizing.results import Comparison, SetDetail
 
-__all__ = ["FIGURES", "DrawnFigure", "draw", "draw_figures", "house_style", "to_svg"]
+__all__ = ["FIGURES", "OPTIONAL_FIGURES", "DrawnFigure", "draw", "draw_figures", "house_style", "to_svg"]
 
 #: Keys of all figures, which name their files.
 FIGURES = (
@@ -40,6 +42,8 @@ FIGURES = (
     "step_response",
     "cycles",
 )
+#: Keys of figures that only some cases ask for.
+OPTIONAL_FIGURES = ("stops",)
 
 
 @dataclass(frozen=True)
@@ -83,15 +87,16 @@ def draw(comparison: Comparison, key: str) -> Figure | None:
     comparison : Comparison
         The answer; the figure shows its best set.
     key : str
-        One of `FIGURES`.
+        One of `FIGURES` or `OPTIONAL_FIGURES`.
 
     Raises
     ------
     ValueError
         If there is no figure of that name.
     """
-    if key not in FIGURES:
-        raise ValueError(f"No figure {key!r}; there are {', '.join(FIGURES)}.")
+    known = (*FIGURES, *OPTIONAL_FIGURES)
+    if key not in known:
+        raise ValueError(f"No figure {key!r}; there are {', '.join(known)}.")
     with house_style():
         make = _figures_of(comparison).get(key)
         return None if make is None else make()
@@ -117,8 +122,21 @@ def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]
         "current": lambda: draw_current(best, detail),
         "temperature": lambda: draw_temperature(detail),
         "step_response": lambda: draw_step_response(best, detail, units),
+        **_stop_figures(comparison, detail, units),
         **_dynamic_figures(comparison),
     } | figures
+
+
+def _stop_figures(
+    comparison: Comparison, detail: SetDetail, units: AxisUnits
+) -> dict[str, Callable[[], Figure | None]]:
+    """How the leading set stops, where the case asks for it."""
+    stops = detail.stops
+    if stops is None:
+        return {}
+    value = comparison.case.options.get("allowed stopping distance")
+    allowed = float(value) if isinstance(value, int | float) else math.nan
+    return {"stops": lambda: draw_stops(stops, units, allowed)}
 
 
 def _dynamic_figures(comparison: Comparison) -> dict[str, Callable[[], Figure | None]]:
