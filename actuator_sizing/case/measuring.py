@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 from actuator_sizing.case.axis import Axis
 from actuator_sizing.case.measured_samples import EFFORTS, MEASURED, read_samples_of
 from actuator_sizing.case.model import Entry, Segment
+from actuator_sizing.case.plausible_motion import ABSURD
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.raw_tables import RawTable
 from actuator_sizing.case.recording import (
@@ -234,7 +235,7 @@ def _report_effect(
         rms, peak = acceleration_figures(fit)
         parts.append(f"{rms:.4g} and {peak:.4g} {unit} at {factor * cut_off:g} Hz")
     rms, peak = acceleration_figures(fits[1.0])
-    absurd = peak > (1e5 if coordinate == "linear" else 1e7)
+    absurd = peak > ABSURD[coordinate == "linear"][0]
     problems.report(MEASURED, None, got="acceleration (RMS and peak) " + "; ".join(parts),
                     allowed="a cut-off above which there is only noise" if not absurd
                     else "an acceleration that an axis can have",
