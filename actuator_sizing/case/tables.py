@@ -247,10 +247,17 @@ COMMON_QUANTITIES = (
            positive=True, maximum=1.0e7, example="", unit="s"),
     Column("smoothing cut-off", "frequency", "measured motion is not followed above this frequency; it is a choice "
            "that decides the acceleration", positive=True, maximum=1.0e6, example="", unit="Hz"),
+    Column("standstill speed", ("linear speed", "angular speed"), "a measured motion slower than this throughout "
+           "half a period of the cut-off is taken as standstill; one thousandth of its peak when empty",
+           minimum=0.0, example="", unit=("m/s", "rpm")),
     Column("remove drift", YES_NO, "whether the measured cycle is bent back so that it closes", default="no",
            assumed="the measured motion is kept", example="no"),
     Column("recorded torque constant", "torque constant", "torque at the driven shaft per ampere of the measured "
            "current", positive=True, example="", unit="Nm/A"),
+    Column("operating time per year", "time", "how long the axis runs its cycle in a year; for the energy of a year",
+           positive=True, maximum=3.1623e7, example="", unit="h"),
+    Column("price of energy per kWh", "price", "what a kilowatt-hour costs", minimum=0.0, maximum=1.0e6, example="",
+           unit="EUR"),
     Column("required life", "time", "operating hours the axis must reach", positive=True, example="20000",
            unit="h"),
     Column("driven shaft stiffness", "torsional stiffness", "stiffness between gearhead and load (coupling, "
@@ -366,8 +373,10 @@ DUTY_CYCLE_COLUMNS = (
 POINT_COLUMNS = (
     Column("segment", TEXT, "segment of the duty cycle with the motion law 'spline'", required=True,
            example="swing"),
-    Column("time", "time", "from the start of the segment; the first point is at 0", required=True, minimum=0.0,
-           maximum=1.0e9, example="0", unit="s"),
+    Column("time", "time", "from the start of the segment; the first point is at 0", minimum=0.0, maximum=1.0e9,
+           example="0", unit="s"),
+    Column("master angle", "angle", "instead of time: turn of the master shaft from the start of the segment, as a "
+           "cam law states it; needs 'cycles per minute'", minimum=0.0, maximum=6.2832, unit="deg"),
     Column("position", ("length", "angle"), "counted from anywhere; the first point is where the segment starts",
            required=True, example="0", unit=("mm", "deg")),
 )  # fmt: skip
@@ -394,6 +403,8 @@ MEASURED_COLUMNS = (
            unit=("N", "N·m"), aliases=("load torque", "load effort")),
     Column("shaft torque", "torque", "all that the driven shaft must give, losses of the mechanism included",
            unit="N·m"),
+    Column("payload", ("mass", "inertia"), "carried at that instant, straight between samples",
+           minimum=0.0, example=("", ""), unit=("kg", "kg·m²")),
     Column("current", "current", "of the motor that drove the axis; needs 'recorded torque constant'", unit="A"),
 )  # fmt: skip
 
@@ -520,7 +531,7 @@ def table_for(name: str, mechanism: type[Mechanism] | None, stated_at: str = "")
     says, and process efforts belong to the load.
     """
     table = TABLES[name]
-    if mechanism is None or name not in ("duty_cycle", "duty_types", "map"):
+    if mechanism is None or name not in ("duty_cycle", "duty_types", "map", "measured"):
         return table
     moved = ROTARY if (stated_at or mechanism.motion_at) == SHAFT and name != "map" else mechanism.coordinate
     if mechanism.drives_linear_motor:

@@ -4,8 +4,10 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Callable
+from concurrent.futures import Executor
 from dataclasses import replace
 from functools import partial
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -62,6 +64,9 @@ def compare(
     detail: int | None = None,
     levers: int = 0,
     progress: Progress | None = None,
+    executor: Executor | None = None,
+    checkpoint: Path | None = None,
+    tell: Callable[[str], None] | None = None,
 ) -> Comparison:
     """Compare every motor × gearhead × drive set of a case.
 
@@ -77,6 +82,13 @@ def compare(
         For how many of the nearest losers to find the smallest change that lets them pass. [-]
     progress : callable, optional
         Called with a stage and the part of it that is done, 0 to 1. [-]
+    executor : Executor, optional
+        Where the screening is done, e.g. `workplaces.local_processes` or `workplaces.cluster`; default: here.
+        The answer is the same, bit for bit. [-]
+    checkpoint : Path, optional
+        File that keeps what a long screening has found, so that it can go on after Ctrl-C; deleted when done. [-]
+    tell : callable, optional
+        Called with a sentence about the checkpoint that the user should read. [-]
 
     Returns
     -------
@@ -86,7 +98,9 @@ def compare(
     Raises
     ------
     InputError
-        If no set can be formed at all, or the ranking is not known.
+        If no set can be formed at all, the ranking is not known, or the checkpoint is one of another case.
+    StoppedError
+        If the screening is interrupted and a checkpoint keeps what was found.
     """
     ranked_by = str(rank_by or case.options["rank by"])
     if ranked_by not in RANKINGS:
@@ -99,6 +113,11 @@ def compare(
     checks, limits = active_checks(case.limits)
     binding = tuple(c for c, limit in zip(checks, limits, strict=True) if is_binding(c, limit))
     allowed = {c.key: case.limits[c.key].allowed_utilisation for c in binding}
+    kept = None
+    if checkpoint is not None:
+        from actuator_sizing.sizing.checkpoint import Checkpoint
+
+        kept = Checkpoint(checkpoint, f"{case.fingerprint} {ranked_by} {_KEEP} {_NEAREST_LOSERS}", tell)
     screened = screen(
         case,
         cycles,
@@ -107,13 +126,20 @@ def compare(
         ranked_by,
         keep=_KEEP,
         losers=_NEAREST_LOSERS,
+        executor=executor,
+        checkpoint=kept,
         progress=_stage(progress, "screening"),
     )
     if screened.screened == 0:
         raise InputError([_no_set(case)])
     losers = nearest_drives(cycles, screened.nearest_losers)
     index = np.unique(np.concatenate([screened.survivors, losers, screened.nearest_by_drive]), axis=0)
-    sets = evaluate_cycles(cycles, index, _stage(progress, "evaluation"))
+    try:
+        sets = evaluate_cycles(cycles, index, _stage(progress, "evaluation"))
+    except KeyboardInterrupt:
+        if kept is None:
+            raise
+        raise kept.stopped_later() from None
 
     def leading(number: int, judged: Sets) -> tuple[IndexArray, NDArray[np.bool_]]:
         several = (*sets[:number], judged, *sets[number + 1 :])
@@ -141,6 +167,8 @@ def compare(
     )
     results = _with_levers(case, cycles, results, levers, _stage(progress, "levers"))
     survivor_rows = _is_survivor(index, screened.survivors)
+    if kept is not None:
+        kept.remove()
     return Comparison(
         case=case,
         demand=demand,

@@ -15,6 +15,7 @@ from actuator_sizing.sizing.bus import bus_quantities
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.checks.drive_limits import pwm_ripple
 from actuator_sizing.sizing.checks.motor import current_limited_torque
+from actuator_sizing.sizing.energy import energy_quantities
 from actuator_sizing.sizing.set_model import SetModel
 from actuator_sizing.sizing.stops import stop_quantities
 
@@ -66,6 +67,7 @@ def quantities(model: SetModel, sets: Sets, index: int) -> dict[str, Any]:
     ripple, loss = pwm_ripple(sets)
     answer["pwm_ripple_current_a"], answer["pwm_ripple_loss_w"] = _known(ripple[index]), _known(loss[index])
     answer.update(bus_quantities(sets, index))
+    answer.update(energy_quantities(model, sets, index))
     answer.update(stop_quantities(sets, index))
     answer.update(_step_quantities(model))
     answer["insulation_life_factor_ratio"] = _insulation_life(model, answer["winding_max_degc"])

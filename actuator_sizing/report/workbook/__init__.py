@@ -16,9 +16,9 @@ from actuator_sizing.report.workbook.writer import Sheets
 if TYPE_CHECKING:
     from actuator_sizing.sizing.results import Comparison
 
-__all__ = ["render_workbook"]
+__all__ = ["BOOK_OPTIONS", "render_workbook"]
 
-_OPTIONS = {
+BOOK_OPTIONS = {
     "in_memory": True,
     "strings_to_formulas": False,  # text from tables stays text, also when it begins with "="
     "strings_to_urls": False,
@@ -41,7 +41,7 @@ def render_workbook(comparison: Comparison, day: date, rows_in_file: int | None 
     from xlsxwriter import Workbook
 
     stream = io.BytesIO()
-    with Workbook(stream, _OPTIONS) as book:
+    with Workbook(stream, BOOK_OPTIONS) as book:
         book.set_properties(
             {
                 "title": option(comparison.case, "title", comparison.case.name)[:250],

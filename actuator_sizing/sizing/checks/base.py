@@ -20,6 +20,7 @@ from actuator_sizing.core.parameters import (
 if TYPE_CHECKING:
     from actuator_sizing.case.model import Case
     from actuator_sizing.sizing.block import Block
+    from actuator_sizing.sizing.bounds import Bound
     from actuator_sizing.sizing.demand import Demand
     from actuator_sizing.sizing.dynamic_results import DynamicResults
     from actuator_sizing.sizing.evaluation import PairResults
@@ -231,9 +232,7 @@ class Check:
     measure : callable
         Sets → Measure.
     bound : callable or None
-        Screening block → lower bound of the utilisation, broadcastable to (M, N); NaN where not known.
-    drive_bound : callable or None
-        The same for the part that depends on the drive: (pairs, drives) → (K, D).
+        Screening block → lower bound of the utilisation, as `sizing.bounds` declares it.
     working : callable
         (sets, index) → the formula with its numbers put in.
     applies : callable
@@ -262,7 +261,7 @@ class Check:
     needs: tuple[Need, ...]
     measure: Callable[[Sets], Measure]
     working: Callable[[Sets, int], str]
-    bound: Callable[[Block], FloatArray] | None = None
+    bound: Callable[[Block], Bound] | None = None
     applies: Callable[[Sets], NDArray[np.bool_]] = _always
     linear_unit: str = ""
     is_advice: bool = False

@@ -18,6 +18,7 @@ from actuator_sizing.core.machine import (
 from actuator_sizing.core.parameters import MotorParameters, Surroundings
 from actuator_sizing.core.thermal import altitude_factor
 from actuator_sizing.sizing.block import Block
+from actuator_sizing.sizing.bounds import Bound
 from actuator_sizing.sizing.checks.base import SUSTAINED, Check, Measure, Need, Sets, digits
 from actuator_sizing.sizing.checks.working import (
     available_voltage_working,
@@ -32,6 +33,7 @@ from actuator_sizing.sizing.checks.working import (
 
 FloatArray = NDArray[np.float64]
 
+_IMMENSE = 1e30  # stands for infinite where a product with it must stay a number of single precision
 _CONTINUOUS = Need("motors", "continuous_current_a", "continuous current", "continuous force")
 _PEAK_CURRENT = Need("motors", "peak_current_a", "peak current")
 _LIMIT = Need("motors", "winding_limit_degc", "winding temperature limit")
@@ -59,17 +61,23 @@ def rerated_continuous_current(
         ``√((ΔT − R_2 P_ω)/(R_th R_hot))`` with ``R_th = ΔT_rated/(R_hot I_cont²)``; NaN where data is missing.
         The rating is taken as one near standstill, as sheets state it. [A]
     """
-    limit = motors.winding_limit_degc
-    hot = resistance_at(motors, limit)
-    altitude = altitude_factor(surroundings.altitude_m)
-    rise = (limit - surroundings.ambient_degc) * altitude
-    with np.errstate(divide="ignore", invalid="ignore"):
-        rating = (limit - motors.continuous_ambient_degc) / (hot * motors.continuous_current_a**2)
-    R_2 = motors.thermal_resistance_housing_k_w
-    speed_resistance = np.where(np.isnan(R_2), rating, np.fmin(R_2, rating))
+    rise, rating, speed_resistance, hot = _heat_path(motors, surroundings)
     loss = motors.friction_torque_nm * np.abs(speed_rad_s) + motors.viscous_friction_nm_s * speed_rad_s**2
     with np.errstate(divide="ignore", invalid="ignore"):
         return continuous_current(rise, rating, speed_resistance, loss, hot)
+
+
+def _heat_path(
+    motors: MotorParameters, surroundings: Surroundings
+) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
+    """Permitted rise [K], rise per watt of copper loss and of speed loss [K/W], hot resistance [Ω], each (n,)."""
+    limit = motors.winding_limit_degc
+    hot = resistance_at(motors, limit)
+    rise = (limit - surroundings.ambient_degc) * altitude_factor(surroundings.altitude_m)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        rating = (limit - motors.continuous_ambient_degc) / (hot * motors.continuous_current_a**2)
+    R_2 = motors.thermal_resistance_housing_k_w
+    return rise, rating, np.where(np.isnan(R_2), rating, np.fmin(R_2, rating)), hot
 
 
 def _current_at_limit(
@@ -91,11 +99,17 @@ def _rms_measure(sets: Sets) -> Measure:
     return Measure(sets.pairs.current_rms_a * _current_at_limit(sets.motors, sets.surroundings, K), capacity)
 
 
-def _rms_bound(block: Block) -> FloatArray:
-    capacity = rerated_continuous_current(block.motors, block.surroundings, block.speed_rms)
-    K = block.judged.torque_constant_nm_per_a
-    with np.errstate(divide="ignore"):
-        return block.current_rms * _current_at_limit(block.motors, block.surroundings, K) / capacity
+def _rms_bound(block: Block) -> Bound:
+    m, K = block.motors, block.judged.torque_constant_nm_per_a
+    rise, rating, speed_resistance, hot = _heat_path(m, block.surroundings)
+    per_torque = _current_at_limit(m, block.surroundings, K) / K
+    with np.errstate(divide="ignore", invalid="ignore"):
+        per_square = per_torque**2 * rating * hot / rise
+        share = speed_resistance / rise
+    # In air hotter than the limit no current at all is permitted.
+    per_square = np.where(rise <= 0.0, _IMMENSE, np.where(per_square > 0.0, per_square, 0.0))
+    share = np.where(rise > 0.0, share, 0.0)
+    return (block.of_square(per_square, share * m.friction_torque_nm, share * m.viscous_friction_nm_s),)
 
 
 def _rms_working(sets: Sets, i: int) -> str:
@@ -169,8 +183,8 @@ def _plane_measure(sets: Sets) -> Measure:
     )
 
 
-def _plane_bound(block: Block) -> FloatArray:
-    return np.fmax(block.voltage_plane_utilisation, block.torque_peak / block.torque_limit)
+def _plane_bound(block: Block) -> Bound:
+    return (block.of_peak(block.torque_limit), *block.voltage_plane)
 
 
 def _plane_working(sets: Sets, i: int) -> str:
@@ -217,10 +231,9 @@ def _temperature_measure(sets: Sets) -> Measure:
     return Measure(rise, permitted, sets.pairs.winding_max_at_s)
 
 
-def _temperature_bound(block: Block) -> FloatArray:
-    if not block.repeats:
-        return np.zeros((1, 1))  # a single run may end before anything is warm
-    return block.mean_winding_rise / (block.motors.winding_limit_degc - block.surroundings.ambient_degc)
+def _temperature_bound(block: Block) -> Bound:
+    # A single run may end before anything is warm.
+    return (block.winding_rise,) if block.repeats else ()
 
 
 def _temperature_working(sets: Sets, i: int) -> str:
@@ -275,10 +288,6 @@ def _current_working(sets: Sets, i: int) -> str:
     return f"{torque_working(at)}; {current_working(at)}; |i| / I_peak = {m.quotient(i)}"
 
 
-def _current_bound(block: Block) -> FloatArray:
-    return block.current_peak / block.motors.peak_current_a
-
-
 MOTOR_PEAK_CURRENT = Check(
     key="motor_peak_current",
     title="Motor peak current",
@@ -288,7 +297,7 @@ MOTOR_PEAK_CURRENT = Check(
     source="Peak current of the data sheet (demagnetisation or saturation limit)",
     needs=(_PEAK_CURRENT,),
     measure=_current_measure,
-    bound=_current_bound,
+    bound=lambda block: (block.of_peak(block.judged.torque_constant_nm_per_a * block.motors.peak_current_a),),
     working=_current_working,
 )
 
@@ -308,10 +317,6 @@ def _speed_working(sets: Sets, i: int) -> str:
     )
 
 
-def _speed_bound(block: Block) -> FloatArray:
-    return block.speed_peak / block.motors.speed_max_rad_s
-
-
 MOTOR_SPEED = Check(
     key="motor_speed",
     title="Motor speed",
@@ -322,7 +327,7 @@ MOTOR_SPEED = Check(
     source="Maximum speed of the data sheet",
     needs=(Need("motors", "speed_max_rad_s", "maximum speed", "maximum linear speed"),),
     measure=_speed_measure,
-    bound=_speed_bound,
+    bound=lambda block: (block.of_speed(block.demand.shaft_speed_peak, block.motors.speed_max_rad_s),),
     working=_speed_working,
 )
 
@@ -345,10 +350,6 @@ def _voltage_working(sets: Sets, i: int) -> str:
     )
 
 
-def _voltage_bound(block: Block) -> FloatArray:
-    return block.voltage_peak / block.judged.voltage_available_v
-
-
 VOLTAGE = Check(
     key="voltage",
     title="Voltage",
@@ -360,6 +361,6 @@ VOLTAGE = Check(
     "L di/dt counts",
     needs=(),
     measure=_voltage_measure,
-    bound=_voltage_bound,
+    bound=lambda block: block.voltage,
     working=_voltage_working,
 )
