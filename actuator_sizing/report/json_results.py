@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING, Any
 from actuator_sizing.report.document.comparing import shown_pair
 from actuator_sizing.report.document.inputs import part_entries
 from actuator_sizing.report.formatting import percent
+from actuator_sizing.report.simulation_files import simulation_dict
 
 if TYPE_CHECKING:
     from actuator_sizing.case.model import Entry
@@ -36,6 +37,7 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
     case, counts = comparison.case, comparison.rejections
     best = comparison.sets[0] if comparison.sets else None
     entries = [*case.entries, *part_entries(comparison, best)]
+    moved = comparison.governing.dynamics
     return {
         "schema": SCHEMA,
         "version": comparison.version,
@@ -52,6 +54,7 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
         "inertias": [plain(asdict(part)) for part in comparison.inertias],
         "ranked_by": comparison.ranked_by,
         "sets": [_set(item) for item in comparison.sets],
+        "dynamics": None if moved is None else simulation_dict(moved),
         "rejected": {
             "count": int(counts.rejected),
             "by_check": plain(counts.by_check),
