@@ -11,9 +11,10 @@ from typing import TYPE_CHECKING, Any
 from actuator_sizing.report.document.comparing import shown_pair
 from actuator_sizing.report.document.inputs import part_entries
 from actuator_sizing.report.formatting import percent
+from actuator_sizing.report.lever_text import lever_text
 
 if TYPE_CHECKING:
-    from actuator_sizing.case.model import Entry
+    from actuator_sizing.case.model import Case, Entry
     from actuator_sizing.report.revision import Revision
     from actuator_sizing.sizing.results import CheckResult, Comparison, SetResult
 
@@ -49,7 +50,7 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
         },
         "cycle": _plain(comparison.cycle),
         "ranked_by": comparison.ranked_by,
-        "sets": [_set(item) for item in comparison.sets],
+        "sets": [_set(item, case) for item in comparison.sets],
         "rejected": {
             "count": int(counts.rejected),
             "by_check": _plain(counts.by_check),
@@ -77,7 +78,7 @@ def render_json(comparison: Comparison, revision: Revision | None = None) -> byt
     return (text + "\n").encode("utf-8", "backslashreplace")
 
 
-def _set(item: SetResult) -> dict[str, Any]:
+def _set(item: SetResult, case: Case) -> dict[str, Any]:
     return {
         "rank": int(item.rank),
         "motor": item.motor,
@@ -90,8 +91,16 @@ def _set(item: SetResult) -> dict[str, Any]:
         "mass_kg": _plain(item.mass_kg),
         "quantities": _plain(item.quantities),
         "checks": [_check(check) for check in item.checks],
-        "levers": _plain(item.levers),
+        "levers": [_lever(lever, case) for lever in item.levers],
     }
+
+
+def _lever(lever: Mapping[str, Any], case: Case) -> dict[str, Any]:
+    values = {key: value for key, value in lever.items() if key not in ("changes", "entered")}
+    plain: dict[str, Any] = _plain(values)
+    if "changes" in lever:
+        plain["changes"] = [_lever(change, case) for change in lever["changes"]]
+    return plain | {"displayed": lever_text(case, lever)._asdict()}
 
 
 def _check(check: CheckResult) -> dict[str, Any]:

@@ -33,6 +33,7 @@ from actuator_sizing.sizing.quantities import commissioning_quantities, quantiti
 from actuator_sizing.sizing.ranking import RANKINGS, nearest_drives, ranking_key
 from actuator_sizing.sizing.results import (
     FAILS,
+    LOW_RESERVE,
     NOT_CHECKED,
     Comparison,
     Rejections,
@@ -78,7 +79,8 @@ def compare(
     detail : int, optional
         How many sets to list with all their checks; default: what the case says. [-]
     levers : int
-        For how many of the nearest losers to find the smallest change that lets them pass. [-]
+        For how many of the nearest losers to find the smallest change that lets them pass; where the leading
+        set has low reserve, its levers are found too. [-]
     progress : callable, optional
         Called with a stage and the part of it that is done, 0 to 1. [-]
 
@@ -156,17 +158,20 @@ def _with_levers(
     count: int,
     progress: Callable[[float], None] | None,
 ) -> tuple[SetResult, ...]:
-    """The results, the nearest losers with what would let them pass."""
+    """The results with what would let the nearest losers pass, and the leading set keep the recommended reserve."""
     if count <= 0:
         return results
     from actuator_sizing.sizing.levers import levers_of
 
-    chosen = [item.rank for item in results if item.verdict == FAILS][:count]
+    chosen = [item.rank for item in results[:1] if item.verdict == LOW_RESERVE]
+    chosen += [item.rank for item in results if item.verdict == FAILS][:count]
     answered = []
     for item in results:
         if item.rank in chosen:
             parts = (item.motor_index, item.gearhead_index, item.drive_index)
-            item = replace(item, levers=levers_of(case, demand, *parts))
+            study = levers_of(case, demand, *parts)
+            if study is not None:
+                item = replace(item, levers=study.as_mappings())
             if progress is not None:
                 progress((chosen.index(item.rank) + 1) / len(chosen))
         answered.append(item)

@@ -52,6 +52,16 @@ def rerated_continuous_current(
         ``√((ΔT − R_2 P_ω)/(R_th R_hot))`` with ``R_th = ΔT_rated/(R_hot I_cont²)``; NaN where data is missing.
         The rating is taken as one near standstill, as sheets state it. [A]
     """
+    rise, rating, speed_resistance, hot = _heat_balance(motors, surroundings)
+    loss = motors.friction_torque_nm * np.abs(speed_rad_s) + motors.viscous_friction_nm_s * speed_rad_s**2
+    with np.errstate(divide="ignore", invalid="ignore"):
+        return continuous_current(rise, rating, speed_resistance, loss, hot)
+
+
+def _heat_balance(
+    motors: MotorParameters, surroundings: Surroundings
+) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
+    """Permitted rise [K], rise per watt of copper and of speed loss [K/W], and resistance at the limit [Ω]."""
     limit = motors.winding_limit_degc
     hot = resistance_at(motors, limit)
     altitude = altitude_factor(surroundings.altitude_m)
@@ -59,10 +69,34 @@ def rerated_continuous_current(
     with np.errstate(divide="ignore", invalid="ignore"):
         rating = (limit - motors.continuous_ambient_degc) / (hot * motors.continuous_current_a**2)
     R_2 = motors.thermal_resistance_housing_k_w
-    speed_resistance = np.where(np.isnan(R_2), rating, np.fmin(R_2, rating))
-    loss = motors.friction_torque_nm * np.abs(speed_rad_s) + motors.viscous_friction_nm_s * speed_rad_s**2
-    with np.errstate(divide="ignore", invalid="ignore"):
-        return continuous_current(rise, rating, speed_resistance, loss, hot)
+    return rise, rating, np.where(np.isnan(R_2), rating, np.fmin(R_2, rating)), hot
+
+
+def continuous_torque_squared(motors: MotorParameters, surroundings: Surroundings) -> FloatArray:
+    """Square of the re-rated continuous torque as a polynomial of speed, saturation left out.
+
+    Parameters
+    ----------
+    motors : MotorParameters
+        n motors. [-]
+    surroundings : Surroundings
+        Ambient and altitude. [-]
+
+    Returns
+    -------
+    ndarray, shape (3, n)
+        Coefficients of 1, ω and ω² of ``(K I_cont(ω))²``, see `rerated_continuous_current`. [-]
+    """
+    rise, rating, speed_resistance, hot = _heat_balance(motors, surroundings)
+    K = judge(motors, replace(surroundings, judged_winding_degc=np.nan)).torque_constant_nm_per_a
+    per_kelvin = K**2 / (rating * hot)
+    return np.stack(
+        [
+            per_kelvin * np.maximum(rise, 0.0),
+            -per_kelvin * speed_resistance * motors.friction_torque_nm,
+            -per_kelvin * speed_resistance * motors.viscous_friction_nm_s,
+        ]
+    )
 
 
 def _current_at_limit(
