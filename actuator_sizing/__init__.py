@@ -26,6 +26,7 @@ if TYPE_CHECKING:
     from actuator_sizing.case.starting import start_case
     from actuator_sizing.report.revision import read_results
     from actuator_sizing.sizing import compare
+    from actuator_sizing.sizing.headroom import headroom
     from actuator_sizing.sizing.simulation import simulate
 
 __all__ = [
@@ -34,6 +35,7 @@ __all__ = [
     "check_case",
     "compare",
     "convert_case",
+    "headroom",
     "read_case",
     "read_results",
     "simulate",
@@ -47,6 +49,7 @@ _HOMES = {
     "check_case": "actuator_sizing.case.reading",
     "compare": "actuator_sizing.sizing",
     "convert_case": "actuator_sizing.case.converting",
+    "headroom": "actuator_sizing.sizing.headroom",
     "read_case": "actuator_sizing.case.reading",
     "read_results": "actuator_sizing.report.revision",
     "simulate": "actuator_sizing.sizing.simulation",

@@ -164,9 +164,7 @@ def torque_moments(products: FloatArray, rows: FloatArray, motor: FloatArray) ->
     )
 
 
-def load_factor(
-    acceleration_rms: float, torque_rms_nm: float, power_rate: float, efficiency: float
-) -> float:
+def load_factor(acceleration_rms: float, torque_rms_nm: float, power_rate: float, efficiency: float) -> float:
     """Power rate that a motor must have at least to move a load of this kind through any ratio.
 
     Parameters

@@ -8,9 +8,10 @@ from collections.abc import Mapping
 from dataclasses import asdict
 from typing import TYPE_CHECKING, Any
 
-from actuator_sizing.report.document.comparing import shown_pair
+from actuator_sizing.report.document.comparing import shown_pair, titles_of
 from actuator_sizing.report.document.inputs import part_entries
 from actuator_sizing.report.formatting import percent
+from actuator_sizing.report.headroom_text import headroom_text
 from actuator_sizing.report.lever_text import lever_text
 
 if TYPE_CHECKING:
@@ -48,12 +49,12 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
             "assumptions": [{"subject": subject, "text": text} for subject, text in comparison.assumptions],
             "remarks": [str(problem) for problem in case.problems],
         },
-        "cycle": _plain(comparison.cycle),
+        "cycle": plain(comparison.cycle),
         "ranked_by": comparison.ranked_by,
         "sets": [_set(item, case) for item in comparison.sets],
         "rejected": {
             "count": int(counts.rejected),
-            "by_check": _plain(counts.by_check),
+            "by_check": plain(counts.by_check),
             "sets_total": int(counts.sets_total),
             "incompatible": int(counts.incompatible),
             "survivors": int(counts.survivors),
@@ -61,6 +62,7 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
             "evaluated": int(counts.evaluated),
             "complete": bool(counts.complete),
         },
+        **_decisions(comparison),
         "questions": [
             {"part": part, "missing": missing, "check": check}
             for part, missing, check in comparison.questions
@@ -68,11 +70,32 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
     }
 
 
+def _decisions(comparison: Comparison) -> dict[str, Any]:
+    """What was asked for beyond pass and fail; null where it was not."""
+    windows, headroom, found = comparison.windows, comparison.headroom, comparison.trade_offs
+    titles = titles_of(comparison.sets)
+    limits = None
+    if headroom is not None:
+        limits = plain(headroom.as_mapping())
+        for entry, answer in zip(limits["quantities"], headroom.answers, strict=True):
+            entry["displayed"] = headroom_text(comparison.case, answer, titles)._asdict()
+    return {
+        "trade_offs": None if found is None else plain(found.as_mapping()),
+        "ratio_windows": None
+        if windows is None
+        else {
+            "transmission": windows.assumption,
+            "motors": [plain(window.as_mapping()) for window in windows.motors],
+        },
+        "headroom": limits,
+    }
+
+
 def render_json(comparison: Comparison, revision: Revision | None = None) -> bytes:
     """Write the results as UTF-8 text; the same, byte for byte, for the same comparison."""
     results = results_dict(comparison)
     if revision is not None:
-        results["changes"] = _plain(asdict(revision))
+        results["changes"] = plain(asdict(revision))
     text = json.dumps(results, ensure_ascii=False, allow_nan=False, indent=1)
     # a lone surrogate of a badly decoded table has no UTF-8 form; its escape is valid JSON
     return (text + "\n").encode("utf-8", "backslashreplace")
@@ -83,13 +106,13 @@ def _set(item: SetResult, case: Case) -> dict[str, Any]:
         "rank": int(item.rank),
         "motor": item.motor,
         "gearhead": item.gearhead,
-        "ratio": _plain(item.ratio),
+        "ratio": plain(item.ratio),
         "drive": item.drive,
         "verdict": item.verdict,
         "governing_check": item.governing_check,
-        "price": _plain(item.price),
-        "mass_kg": _plain(item.mass_kg),
-        "quantities": _plain(item.quantities),
+        "price": plain(item.price),
+        "mass_kg": plain(item.mass_kg),
+        "quantities": plain(item.quantities),
         "checks": [_check(check) for check in item.checks],
         "levers": [_lever(lever, case) for lever in item.levers],
     }
@@ -97,10 +120,10 @@ def _set(item: SetResult, case: Case) -> dict[str, Any]:
 
 def _lever(lever: Mapping[str, Any], case: Case) -> dict[str, Any]:
     values = {key: value for key, value in lever.items() if key not in ("changes", "entered")}
-    plain: dict[str, Any] = _plain(values)
+    entry: dict[str, Any] = plain(values)
     if "changes" in lever:
-        plain["changes"] = [_lever(change, case) for change in lever["changes"]]
-    return plain | {"displayed": lever_text(case, lever)._asdict()}
+        entry["changes"] = [_lever(change, case) for change in lever["changes"]]
+    return entry | {"displayed": lever_text(case, lever)._asdict()}
 
 
 def _check(check: CheckResult) -> dict[str, Any]:
@@ -109,16 +132,16 @@ def _check(check: CheckResult) -> dict[str, Any]:
         "check": check.check,
         "title": check.title,
         "group": check.group,
-        "demand": _plain(check.demand),
-        "capacity": _plain(check.capacity),
+        "demand": plain(check.demand),
+        "capacity": plain(check.capacity),
         "unit": check.unit,
-        "utilisation": _plain(check.utilisation),
-        "allowed": _plain(check.allowed),
-        "recommended_reserve": _plain(check.recommended_reserve),
-        "margin": _plain(check.margin),
+        "utilisation": plain(check.utilisation),
+        "allowed": plain(check.allowed),
+        "recommended_reserve": plain(check.recommended_reserve),
+        "margin": plain(check.margin),
         "verdict": check.shown_verdict,
         "advice": bool(check.is_advice),
-        "at_time_s": _plain(check.at_time_s),
+        "at_time_s": plain(check.at_time_s),
         "segment": check.segment,
         "formula": check.formula,
         "source": check.source,
@@ -140,7 +163,7 @@ def _input(entry: Entry) -> dict[str, Any]:
         "row": None if entry.row is None else int(entry.row),
         "label": entry.label,
         "column": entry.column,
-        "value_si": _plain(entry.value_si),
+        "value_si": plain(entry.value_si),
         "unit": entry.unit,
         "as_entered": entry.as_entered,
         "origin": entry.origin,
@@ -149,16 +172,16 @@ def _input(entry: Entry) -> dict[str, Any]:
     }
 
 
-def _plain(value: Any) -> Any:
+def plain(value: Any) -> Any:
     """Turn numpy scalars, arrays and mappings into plain types; what is not a finite number is None."""
     if value is None or isinstance(value, str | bool | int):
         return value
     if isinstance(value, Mapping):
-        return {str(key): _plain(item) for key, item in value.items()}
+        return {str(key): plain(item) for key, item in value.items()}
     if hasattr(value, "tolist"):
-        return _plain(value.tolist())
+        return plain(value.tolist())
     if isinstance(value, list | tuple):
-        return [_plain(item) for item in value]
+        return [plain(item) for item in value]
     if isinstance(value, float):
         return value if math.isfinite(value) else None
     return str(value)

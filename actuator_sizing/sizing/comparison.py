@@ -31,6 +31,7 @@ from actuator_sizing.sizing.judging import (
 from actuator_sizing.sizing.provenance import assumptions_of, questions_of
 from actuator_sizing.sizing.quantities import commissioning_quantities, quantities
 from actuator_sizing.sizing.ranking import RANKINGS, nearest_drives, ranking_key
+from actuator_sizing.sizing.ratio_windows import ratio_windows
 from actuator_sizing.sizing.results import (
     FAILS,
     LOW_RESERVE,
@@ -44,10 +45,12 @@ from actuator_sizing.sizing.screening import Screened, screen
 from actuator_sizing.sizing.set_model import SetModel
 from actuator_sizing.sizing.shortlist import evaluate_sets
 from actuator_sizing.sizing.simulation import simulate_prepared
+from actuator_sizing.sizing.trade_offs import trade_offs
 from actuator_sizing.version import __version__
 
 if TYPE_CHECKING:
     from actuator_sizing.sizing.demand import Demand
+    from actuator_sizing.sizing.headroom import Headroom
 
 IndexArray = NDArray[np.intp]
 Progress = Callable[[str, float], None]
@@ -66,6 +69,8 @@ def compare(
     rank_by: str | None = None,
     detail: int | None = None,
     levers: int = 0,
+    windows: bool = False,
+    headroom: bool = False,
     progress: Progress | None = None,
 ) -> Comparison:
     """Compare every motor × gearhead × drive set of a case.
@@ -81,6 +86,10 @@ def compare(
     levers : int
         For how many of the nearest losers to find the smallest change that lets them pass; where the leading
         set has low reserve, its levers are found too. [-]
+    windows : bool
+        Work out the ratio windows of every motor too.
+    headroom : bool
+        Find what the leading set can do at most too, with the map of payload against cycle time.
     progress : callable, optional
         Called with a stage and the part of it that is done, 0 to 1. [-]
 
@@ -92,7 +101,7 @@ def compare(
     Raises
     ------
     InputError
-        If no set can be formed at all, or the ranking is not known.
+        If no set can be formed at all, the ranking is not known, or ratio windows are asked of a linear motor.
     """
     ranked_by = str(rank_by or case.options["rank by"])
     if ranked_by not in RANKINGS:
@@ -101,6 +110,9 @@ def compare(
         )
     wanted = int(detail or case.number("sets to detail"))
     demand = build_demand(case)
+    found_windows = (
+        ratio_windows(case, demand, progress=_stage(progress, "ratio windows")) if windows else None
+    )
     checks, limits = active_checks(case.limits)
     binding = tuple(c for c, limit in zip(checks, limits, strict=True) if is_binding(c, limit))
     allowed = {c.key: case.limits[c.key].allowed_utilisation for c in binding}
@@ -148,7 +160,17 @@ def compare(
         questions=questions_of(results),
         inertias=inertia_shares(case, demand, results[0].ratio),
         version=__version__,
+        trade_offs=trade_offs(case, sets, verdicts, index, order),
+        windows=found_windows,
+        headroom=_headroom(case, demand, results[0], progress) if headroom else None,
     )
+
+
+def _headroom(case: Case, demand: Demand, best: SetResult, progress: Progress | None) -> Headroom:
+    from actuator_sizing.sizing.headroom import headroom_of
+
+    parts = best.motor_index, best.gearhead_index, best.drive_index
+    return headroom_of(case, demand, parts, with_map=True, progress=progress)
 
 
 def _with_levers(

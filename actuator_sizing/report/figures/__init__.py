@@ -14,10 +14,13 @@ from actuator_sizing.report.figures.dynamics import (
     draw_response,
 )
 from actuator_sizing.report.figures.over_time import draw_causes, draw_current, draw_motion
+from actuator_sizing.report.figures.payload_map import draw_payload_map
+from actuator_sizing.report.figures.ratio_windows import draw_ratio_windows
 from actuator_sizing.report.figures.speed_torque import draw_speed_torque
 from actuator_sizing.report.figures.step import draw_step_response
 from actuator_sizing.report.figures.style import house_style, to_svg
 from actuator_sizing.report.figures.temperature import draw_temperature
+from actuator_sizing.report.figures.trade_offs import draw_trade_offs
 from actuator_sizing.report.figures.units import AxisUnits
 from actuator_sizing.report.figures.utilisation import draw_utilisation
 
@@ -26,7 +29,7 @@ if TYPE_CHECKING:
 
     from actuator_sizing.sizing.results import Comparison
 
-__all__ = ["FIGURES", "DrawnFigure", "draw", "draw_figures", "house_style", "to_svg"]
+__all__ = ["DECISION_FIGURES", "FIGURES", "DrawnFigure", "draw", "draw_figures", "house_style", "to_svg"]
 
 #: Keys of all figures, which name their files.
 FIGURES = (
@@ -38,6 +41,8 @@ FIGURES = (
     "temperature",
     "step_response",
 )
+#: Of what is shown only where it was asked for, or where several sets pass.
+DECISION_FIGURES = ("trade_offs", "ratio_windows", "payload_map")
 
 
 @dataclass(frozen=True)
@@ -81,15 +86,15 @@ def draw(comparison: Comparison, key: str) -> Figure | None:
     comparison : Comparison
         The answer; the figure shows its best set.
     key : str
-        One of `FIGURES`.
+        One of `FIGURES` or `DECISION_FIGURES`.
 
     Raises
     ------
     ValueError
         If there is no figure of that name.
     """
-    if key not in FIGURES:
-        raise ValueError(f"No figure {key!r}; there are {', '.join(FIGURES)}.")
+    if key not in (*FIGURES, *DECISION_FIGURES):
+        raise ValueError(f"No figure {key!r}; there are {', '.join((*FIGURES, *DECISION_FIGURES))}.")
     with house_style():
         make = _figures_of(comparison).get(key)
         return None if make is None else make()
@@ -97,7 +102,8 @@ def draw(comparison: Comparison, key: str) -> Figure | None:
 
 def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]]:
     figures: dict[str, Callable[[], Figure | None]] = {
-        "utilisation": lambda: draw_utilisation(comparison.sets)
+        "utilisation": lambda: draw_utilisation(comparison.sets),
+        **_decision_figures(comparison),
     }
     best = comparison.sets[0] if comparison.sets else None
     detail = leading_detail(comparison)
@@ -113,6 +119,22 @@ def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]
         "step_response": lambda: draw_step_response(best, detail, units),
         **_dynamic_figures(comparison),
     } | figures
+
+
+def _decision_figures(comparison: Comparison) -> dict[str, Callable[[], Figure | None]]:
+    """What was asked for beyond pass and fail."""
+    figures: dict[str, Callable[[], Figure | None]] = {}
+    windows, headroom, found = comparison.windows, comparison.headroom, comparison.trade_offs
+    if windows is not None:
+        leading = [item.motor_index for item in comparison.sets]
+        figures["ratio_windows"] = lambda: draw_ratio_windows(windows, leading)
+    if headroom is not None and headroom.map is not None:
+        drawn = headroom.map
+        figures["payload_map"] = lambda: draw_payload_map(drawn)
+    if found is not None:
+        currency = comparison.case.motors.entered_units.get("price", "")
+        figures["trade_offs"] = lambda: draw_trade_offs(found, currency)
+    return figures
 
 
 def _dynamic_figures(comparison: Comparison) -> dict[str, Callable[[], Figure | None]]:

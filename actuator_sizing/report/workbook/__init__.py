@@ -9,7 +9,12 @@ from typing import TYPE_CHECKING
 from actuator_sizing.report.text import option
 from actuator_sizing.report.workbook.case_sheets import add_inputs, add_parts, add_questions, add_segments
 from actuator_sizing.report.workbook.curves import add_speed_torque, add_time_series, add_warm_up
-from actuator_sizing.report.workbook.decision_sheets import add_levers
+from actuator_sizing.report.workbook.decision_sheets import (
+    add_headroom,
+    add_levers,
+    add_ratio_windows,
+    add_trade_offs,
+)
 from actuator_sizing.report.workbook.results_sheets import add_candidates, add_checks, add_summary
 from actuator_sizing.report.workbook.writer import Sheets
 
@@ -57,6 +62,9 @@ def render_workbook(comparison: Comparison, day: date, rows_in_file: int | None 
         add_candidates(sheets, comparison)
         add_checks(sheets, comparison)
         add_levers(sheets, comparison)
+        add_trade_offs(sheets, comparison)
+        add_ratio_windows(sheets, comparison)
+        add_headroom(sheets, comparison)
         add_segments(sheets, comparison)
         add_time_series(sheets, comparison)
         add_warm_up(sheets, comparison)
