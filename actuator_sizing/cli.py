@@ -94,7 +94,7 @@ def audit(case: Path) -> int:
     """
     from actuator_sizing.case.audit import audit_catalogs
     from actuator_sizing.case.reading import check_case
-    from actuator_sizing.console import count_line, print_problems
+    from actuator_sizing.console import clean, count_line, print_problems
 
     understood, problems = check_case(case)
     if understood is not None:  # reading may have audited already
@@ -105,7 +105,11 @@ def audit(case: Path) -> int:
         return BAD_INPUT
     from actuator_sizing.report.motion_picture import write_motion
 
-    click.echo(f"Motion: {write_motion(understood, _report_folder(understood.name))}")
+    for path, each in zip(
+        write_motion(understood, _report_folder(understood.name)), understood.by_cycle(), strict=True
+    ):
+        named = f" {clean(each.cycle.name)}" if each.cycle.name else ""
+        click.echo(f"Motion{named}: {path}")
     return PASSED
 
 
@@ -243,8 +247,8 @@ def simulate(
 
     from actuator_sizing.case.reading import read_case
     from actuator_sizing.simulation_console import print_simulation
-    from actuator_sizing.sizing.simulation import parse_settings
     from actuator_sizing.sizing.simulation import simulate as simulate_set
+    from actuator_sizing.sizing.simulation_request import parse_settings
 
     simulation = simulate_set(
         read_case(case),

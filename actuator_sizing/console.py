@@ -16,7 +16,7 @@ import click
 from actuator_sizing.errors import ERROR, NOTE, WARNING, Problem
 
 if TYPE_CHECKING:
-    from actuator_sizing.sizing.results import Comparison, SetResult
+    from actuator_sizing.sizing.results import CheckResult, Comparison, SetResult
 
 _SEVERITIES = (ERROR, WARNING, NOTE)
 _COLOURS = {ERROR: "red", WARNING: "yellow", NOTE: "cyan"}
@@ -130,15 +130,14 @@ def verdict_sentence(comparison: Comparison) -> str:
     if governing is None or governing.utilisation is None:
         how = "nothing could be checked"
     elif math.isinf(governing.utilisation):
-        where = f", in segment {clean(governing.segment)}" if governing.segment else ""
+        where = _place(governing)
         how = f"{governing.title} governs, with no capacity left at all{where}; the report shows the working"
     else:
         how = f"{governing.title} governs at {percent(governing.utilisation, governing.allowed)}"
         if governing.allowed != 1.0:
             how += f" of {percent(governing.allowed)} allowed"
         how += f", margin {percent(governing.margin, 0.0)}"
-        if governing.segment:
-            how += f", in segment {clean(governing.segment)}"
+        how += _place(governing)
     if best.verdict == FAILS:
         return f"No set passes. The nearest is {name}: {how}."
     if best.verdict == NOT_CHECKED:
@@ -147,6 +146,12 @@ def verdict_sentence(comparison: Comparison) -> str:
         return f"No set is confirmed. {name} fails nothing, but was not checked for: {clean(wanted)}; {how}."
     reserve = ", with low reserve" if best.verdict == LOW_RESERVE else ""
     return f"{name} passes every check{reserve}: {how}."
+
+
+def _place(check: CheckResult) -> str:
+    """Cycle and segment in which a check governs, as far as they have names."""
+    cycle = f", in the cycle {clean(check.cycle)}" if check.cycle else ""
+    return cycle + (f", in segment {clean(check.segment)}" if check.segment else "")
 
 
 def rejection_lines(comparison: Comparison) -> list[str]:

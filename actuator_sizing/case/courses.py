@@ -30,11 +30,15 @@ class Courses:
         The optional tables.
     cycle_s : float
         Duration of the cycle that 'cycles per minute' asks for; NaN where nothing is said.
+    pace_table, pace_row : str and int or None
+        Where that was said.
     """
 
     points: ParsedTable | None = None
     process: ParsedTable | None = None
     cycle_s: float = float("nan")
+    pace_table: str = "axis"
+    pace_row: int | None = None
 
     def rows_of(self, parsed: ParsedTable | None, segment: str) -> NDArray[np.intp]:
         """Rows of a side table that name a segment."""
@@ -91,20 +95,25 @@ def check_side_tables(duty_cycle: ParsedTable, courses: Courses, problems: Probl
         )
 
 
-def pace_durations(parsed: ParsedTable, courses: Courses, problems: ProblemList) -> bool:
+def pace_durations(
+    parsed: ParsedTable, rows: NDArray[np.intp], courses: Courses, problems: ProblemList
+) -> bool:
     """Turn master angles into durations; says whether the rows give the duration of the cycle themselves.
 
     Parameters
     ----------
     parsed : ParsedTable
         The duty cycle; its durations are filled in.
+    rows : ndarray of int
+        Rows of the cycle. [-]
     courses : Courses
         The pace.
     problems : ProblemList
         Takes angles without a pace, or that do not make one turn.
     """
     angles = parsed.number("master_angle")
-    used = np.isfinite(angles)
+    used = np.zeros(len(parsed), dtype=bool)
+    used[rows] = np.isfinite(angles[rows])
     if not used.any():
         return False
     row = int(parsed.rows[int(np.argmax(used))])
@@ -117,8 +126,9 @@ def pace_durations(parsed: ParsedTable, courses: Courses, problems: ProblemList)
     both = used & np.isfinite(parsed.number("duration"))
     problems.report_rows(_TABLE, parsed.rows, heading, both, got=lambda i: "a master angle and a duration",
                          allowed="one of them", remedy="Clear one of the cells.")  # fmt: skip
-    if used.all() and abs(float(angles.sum()) - 2.0 * np.pi) > _TYPED * 2.0 * np.pi:
-        problems.report(_TABLE, int(parsed.rows[-1]), heading, got=f"{np.degrees(angles.sum()):.6g}° in all",
+    turned = float(angles[rows].sum())
+    if used[rows].all() and abs(turned - 2.0 * np.pi) > _TYPED * 2.0 * np.pi:
+        problems.report(_TABLE, int(parsed.rows[rows[-1]]), heading, got=f"{np.degrees(turned):.6g}° in all",
                         allowed="360° of the master shaft", remedy="Correct the angles.")  # fmt: skip
     parsed.derive("duration", used & ~both, angles / (2.0 * np.pi) * courses.cycle_s,
                   "master angle / 360° of the time of one cycle")  # fmt: skip
@@ -128,6 +138,7 @@ def pace_durations(parsed: ParsedTable, courses: Courses, problems: ProblemList)
 def paced(
     segments: tuple[Segment, ...],
     parsed: ParsedTable,
+    rows: NDArray[np.intp],
     courses: Courses,
     by_angle: bool,
     problems: ProblemList,
@@ -139,7 +150,9 @@ def paced(
     segments : tuple of Segment
         As the rows give them.
     parsed : ParsedTable
-        The rows.
+        The duty cycle.
+    rows : ndarray of int
+        Rows of the cycle. [-]
     courses : Courses
         The pace.
     by_angle : bool
@@ -151,11 +164,12 @@ def paced(
     if not np.isfinite(courses.cycle_s) or not segments:
         return segments
     factor = courses.cycle_s / total
-    if abs(factor - 1.0) <= _TYPED or np.isfinite(parsed.number("master_angle")).all():
+    if abs(factor - 1.0) <= _TYPED or np.isfinite(parsed.number("master_angle")[rows]).all():
         return segments
-    limited = [key for key in _LIMITS if np.isfinite(parsed.number(key)).any()]
+    limited = [key for key in _LIMITS if np.isfinite(parsed.number(key)[rows]).any()]
     if by_angle or (factor < 1.0 and limited):
-        problems.report("axis", None, "cycles per minute", got=f"a cycle of {courses.cycle_s:.6g} s",
+        problems.report(courses.pace_table, courses.pace_row, "cycles per minute",
+                        got=f"a cycle of {courses.cycle_s:.6g} s",
                         allowed=f"{total:.6g} s, which the rows take" if by_angle
                         else f"at least {total:.6g} s within the limits of the duty cycle",
                         remedy="Give every segment a master angle." if by_angle

@@ -63,7 +63,9 @@ def fingerprint(
     )
     for label, value in axis:
         add("axis", label, value)
-    for table in ("map", "inertias", "duty_cycle", "points", "process", "measured"):
+    for table in (
+        "map", "inertias", "resistor_pulses", "duty_cycle", "duty_types", "cycles", "points", "process", "measured",
+    ):  # fmt: skip
         rows = [entry for entry in entries if entry.table == table and entry.column not in _NOT_HASHED]
         order = {row: position for position, row in enumerate(sorted({entry.row or 0 for entry in rows}))}
         for entry in sorted(rows, key=lambda entry: (entry.row or 0, entry.column)):
@@ -71,8 +73,17 @@ def fingerprint(
     for check in sorted(limits):
         limit = limits[check]
         add("limits", check, limit.applies, limit.allowed_utilisation, limit.recommended_reserve)
-    for spread in sorted(tolerances, key=lambda spread: spread.quantity):
-        add("tolerances", spread.quantity, spread.distribution, spread.width, spread.relative)
+    for spread in sorted(tolerances, key=lambda spread: (spread.table, spread.quantity)):
+        add(
+            "tolerances",
+            spread.table,
+            spread.quantity,
+            spread.distribution,
+            spread.width,
+            spread.relative,
+            spread.truncation,
+            *(part for pair in sorted(spread.correlations) for part in (*pair[0], pair[1])),
+        )
     for catalog in catalogs:
         add(catalog.table, len(catalog))
         for column in sorted(TABLES[catalog.table].columns, key=lambda column: column.key):

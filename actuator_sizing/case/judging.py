@@ -1,22 +1,19 @@
-"""The tables `limits` and `tolerances`: how checks are judged, and how inputs spread."""
+"""The table `limits`: how checks are judged."""
 
 from __future__ import annotations
 
 from actuator_sizing.case.catalogs import check_required
-from actuator_sizing.case.cells import CellError, parse_number
-from actuator_sizing.case.columns import fold, nearest
-from actuator_sizing.case.model import Entry, Limit, Tolerance
+from actuator_sizing.case.model import Entry, Limit
 from actuator_sizing.case.parsed_tables import ParsedTable
-from actuator_sizing.case.problem_list import ProblemList, shown
+from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.tables import (
     ADVICE_CHECKS,
+    ALLOWED_UTILISATIONS,
     CHECK_NAMES,
     DEFAULT_ALLOWED_UTILISATION,
     DEFAULT_RECOMMENDED_RESERVE,
     RECOMMENDED_RESERVES,
-    quantity_kinds,
 )
-from actuator_sizing.units import UnitError, parse_unit
 
 
 def default_limits() -> dict[str, Limit]:
@@ -25,7 +22,7 @@ def default_limits() -> dict[str, Limit]:
         key: Limit(
             key,
             "advice" if key in ADVICE_CHECKS else "yes",
-            DEFAULT_ALLOWED_UTILISATION,
+            ALLOWED_UTILISATIONS.get(key, DEFAULT_ALLOWED_UTILISATION),
             RECOMMENDED_RESERVES.get(key, DEFAULT_RECOMMENDED_RESERVE),
         )
         for key, _ in CHECK_NAMES
@@ -85,54 +82,3 @@ def _limit_entry(
         return Entry("limits", row, title, name, "", default, unit, "assumed", "default")
     value = parsed.text(key)[index] if is_word else float(parsed.number(key)[index])
     return Entry("limits", row, title, name, parsed.shown_cell(key, index), value, unit, "stated")
-
-
-def understand_tolerances(
-    parsed: ParsedTable | None, decimal: str, problems: ProblemList
-) -> tuple[Tolerance, ...]:
-    """Spreads of input quantities.
-
-    Parameters
-    ----------
-    parsed : ParsedTable or None
-        The table `tolerances`; None where the case has none.
-    decimal : str
-        Decimal mark of the table.
-    problems : ProblemList
-        Takes what is wrong.
-    """
-    if parsed is None:
-        return ()
-    check_required(parsed)
-    found = []
-    for index, name in enumerate(parsed.names):
-        row = int(parsed.rows[index])
-        column = quantity_kinds().get(fold(str(name)))
-        width, unit_text = str(parsed.text("width")[index]), str(parsed.text("unit")[index])
-        if not name or not width or not unit_text:
-            continue
-        if column is None:
-            close = nearest(str(name), (known.name for known in quantity_kinds().values()))
-            problems.report("tolerances", row, parsed.heading("quantity"), got=shown(name),
-                            allowed="an axis quantity, or a motor, gearhead or drive column with numbers",
-                            remedy=f"Did you mean '{close}'?" if close else "Check the name.")  # fmt: skip
-            continue
-        relative = unit_text == "%"
-        kinds = ("ratio",) if relative else column.kind if isinstance(column.kind, tuple) else (column.kind,)
-        try:
-            unit = parse_unit(unit_text, kinds)
-            value = parse_number(width, decimal)[0] * unit.factor
-        except UnitError as error:
-            problems.report("tolerances", row, parsed.heading("unit"), got=shown(unit_text),
-                            allowed=f"% or a unit of {' or '.join(kinds)}", remedy=str(error))  # fmt: skip
-            continue
-        except CellError as error:
-            problems.report("tolerances", row, parsed.heading("width"), got=shown(width),
-                            allowed="a number > 0", remedy=error.remedy)  # fmt: skip
-            continue
-        if not value > 0.0:
-            problems.report("tolerances", row, parsed.heading("width"), got=f"{width} {unit_text}",
-                            allowed="a number > 0", remedy="Remove the row if there is no spread.")  # fmt: skip
-            continue
-        found.append(Tolerance(row, column.name, str(parsed.text("distribution")[index]), value, relative))
-    return tuple(found)

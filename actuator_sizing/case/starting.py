@@ -9,7 +9,9 @@ from actuator_sizing.case.documentation import columns_page
 from actuator_sizing.case.sheets import Sheet, is_workbook
 from actuator_sizing.case.tables import (
     ADVICE_CHECKS,
+    ALLOWED_UTILISATIONS,
     CHECK_NAMES,
+    DEFAULT_ALLOWED_UTILISATION,
     DEFAULT_RECOMMENDED_RESERVE,
     RECOMMENDED_RESERVES,
     TABLES,
@@ -182,10 +184,12 @@ def _limit_rows(columns: list[Column]) -> list[tuple[str, ...]]:
     """Every check with its default, ready to be changed."""
     rows = []
     for key, title in CHECK_NAMES:
+        allowed = ALLOWED_UTILISATIONS.get(key, DEFAULT_ALLOWED_UTILISATION)
         reserve = RECOMMENDED_RESERVES.get(key, DEFAULT_RECOMMENDED_RESERVE)
         given = {
             "check": title,
             "applies": "advice" if key in ADVICE_CHECKS else "yes",
+            "allowed utilisation": f"{100.0 * allowed:.4g}",
             "recommended reserve": f"{100.0 * reserve:.4g}",
         }
         rows.append(tuple(given.get(column.name, column.example_for("rotary")) for column in columns))

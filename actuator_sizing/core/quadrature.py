@@ -74,6 +74,13 @@ def antiderivative_matrix(count: int = NODES) -> FloatArray:
 
 
 @lru_cache(maxsize=8)
+def cumulative_matrix(count: int = NODES) -> FloatArray:
+    """Matrix from node values to the integrals from −1 to each node, shape (count, count). [-]"""
+    at_nodes = legendre.legvander(lobatto(count)[0], count)
+    return np.asarray(at_nodes @ antiderivative_matrix(count) @ to_series(count))
+
+
+@lru_cache(maxsize=8)
 def _dense_matrix(count: int) -> tuple[FloatArray, FloatArray]:
     points = np.cos(np.pi * np.arange(_DENSE - 1, -1, -1) / (_DENSE - 1))
     return points, legendre.legvander(points, count - 1) @ to_series(count)

@@ -17,7 +17,7 @@ from actuator_sizing.report.lever_text import lever_text
 if TYPE_CHECKING:
     from actuator_sizing.case.model import Case, Entry
     from actuator_sizing.report.revision import Revision
-    from actuator_sizing.sizing.results import CheckResult, Comparison, SetResult
+    from actuator_sizing.sizing.results import CheckResult, Comparison, CycleOfSet, CycleResult, SetResult
 
 SCHEMA = "actuator-sizing/results/1"
 
@@ -50,6 +50,8 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
             "remarks": [str(problem) for problem in case.problems],
         },
         "cycle": plain(comparison.cycle),
+        "cycles": [_cycle(each) for each in comparison.cycles],
+        "inertias": [plain(asdict(part)) for part in comparison.inertias],
         "ranked_by": comparison.ranked_by,
         "sets": [_set(item, case) for item in comparison.sets],
         "rejected": {
@@ -57,6 +59,7 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
             "by_check": plain(counts.by_check),
             "sets_total": int(counts.sets_total),
             "incompatible": int(counts.incompatible),
+            "misfits": plain(counts.misfits),
             "survivors": int(counts.survivors),
             "confirmed_passing": int(counts.confirmed_passing),
             "evaluated": int(counts.evaluated),
@@ -114,7 +117,31 @@ def _set(item: SetResult, case: Case) -> dict[str, Any]:
         "mass_kg": plain(item.mass_kg),
         "quantities": plain(item.quantities),
         "checks": [_check(check) for check in item.checks],
+        "cycles": [_set_in_cycle(each) for each in item.cycles],
+        "mix": plain(item.mix),
         "levers": [_lever(lever, case) for lever in item.levers],
+    }
+
+
+def _set_in_cycle(each: CycleOfSet) -> dict[str, Any]:
+    return {
+        "cycle": each.name,
+        "verdict": each.verdict,
+        "governing_check": each.governing_check,
+        "quantities": plain(each.quantities),
+        "utilisations": {check.check: plain(check.utilisation) for check in each.checks},
+    }
+
+
+def _cycle(each: CycleResult) -> dict[str, Any]:
+    cycle = each.case.cycle
+    return {
+        "cycle": cycle.name,
+        "runs": cycle.runs,
+        "duty_type": cycle.duty_type or None,
+        "share": plain(cycle.share),
+        "segments": [segment.name for segment in cycle.segments],
+        "quantities": plain(each.quantities),
     }
 
 
@@ -143,6 +170,7 @@ def _check(check: CheckResult) -> dict[str, Any]:
         "advice": bool(check.is_advice),
         "at_time_s": plain(check.at_time_s),
         "segment": check.segment,
+        "cycle": check.cycle,
         "formula": check.formula,
         "source": check.source,
         "working": check.working,

@@ -9,7 +9,7 @@ import numpy as np
 from actuator_sizing.case.model import Case, Segment
 from actuator_sizing.core.motion_laws import plan_segment
 from actuator_sizing.core.phases import Phase
-from actuator_sizing.sizing.case_changes import restarted
+from actuator_sizing.sizing.case_changes import every_segment, restarted
 
 #: Laws whose shares are free; the others have theirs from their shape.
 _LAWS = ("trapezoid", "triangular", "jerk-limited")
@@ -43,14 +43,14 @@ class _Shares:
 
 def acceleration_share(case: Case) -> float | None:
     """Largest part of a move that is spent speeding up; None where no move has a share that is free. [-]"""
-    found = [shares.acceleration for shares in map(_shares, case.segments) if shares is not None]
+    found = [shares.acceleration for shares in map(_shares, every_segment(case)) if shares is not None]
     return max(found) if found and case.recording is None else None
 
 
 def largest_share(case: Case) -> float:
     """The share at which the cruise of the move with the longest ramps is used up. [-]"""
     present = acceleration_share(case)
-    together = max(shares.together for shares in map(_shares, case.segments) if shares is not None)
+    together = max(shares.together for shares in map(_shares, every_segment(case)) if shares is not None)
     return (present or 0.0) / together
 
 
@@ -71,13 +71,14 @@ def with_acceleration_share(case: Case, share: float) -> Case:
         Changed. [-]
     """
     factor = share / (acceleration_share(case) or share)
-    made = []
-    for segment in case.segments:
+
+    def planned(segment: Segment) -> Segment:
         shares = _shares(segment)
-        made.append(
-            segment if shares is None else replace(segment, phases=shares.plan(segment.duration_s, factor))
-        )
-    return replace(case, segments=restarted(tuple(made)))
+        if shares is None:
+            return segment
+        return replace(segment, phases=shares.plan(segment.duration_s, factor))
+
+    return case.with_segments(lambda segments: restarted(tuple(planned(s) for s in segments)))
 
 
 def _shares(segment: Segment) -> _Shares | None:

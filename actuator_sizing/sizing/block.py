@@ -9,6 +9,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from actuator_sizing.case.model import REPEATS
 from actuator_sizing.core.machine import JudgedMotor, judge, torque_constant_at, torque_of_current
 from actuator_sizing.core.moments import (
     SupportPoints,
@@ -133,6 +134,12 @@ class Block:
     recommended_inertia_ratio: float
     motor_side: MotorSide
     gearhead_side: GearheadSide
+    runs: str = REPEATS  # how the cycle runs
+
+    @property
+    def repeats(self) -> bool:
+        """Whether the cycle runs until its temperatures are periodic."""
+        return self.runs == REPEATS
 
     @property
     def motors(self) -> MotorParameters:

@@ -5,7 +5,7 @@ What levers and headroom try out. The motion changes in planned segments only; a
 
 from __future__ import annotations
 
-from collections.abc import Collection
+from collections.abc import Callable, Collection
 from dataclasses import dataclass, fields, replace
 
 import numpy as np
@@ -14,6 +14,7 @@ from actuator_sizing.case.model import Case, Segment
 from actuator_sizing.core.parameters import GearheadParameters
 from actuator_sizing.core.phases import Phase, speed_after
 from actuator_sizing.core.process_load import TIME
+from actuator_sizing.sizing.cycles import CycleDemand
 
 _STIFFNESS = "driven shaft stiffness"
 
@@ -34,22 +35,23 @@ def single(case: Case, motor: int, gearhead: int, drive: int) -> Case:
         With the parameters of one set; the catalogs' other columns go along. [-]
     """
 
-    def row(table: str, index: int) -> dict[str, object]:
-        catalog = getattr(case, table)
-        values = {key: column[index : index + 1] for key, column in catalog.values.items()}
-        origins = {key: column[index : index + 1] for key, column in catalog.origins.items()}
-        return {"names": (catalog.names[index],), "rows": catalog.rows[index : index + 1],
-                "values": values, "origins": origins, "as_entered": {}, "rules": {}}  # fmt: skip
-
     return replace(
         case,
-        motors=replace(case.motors, **row("motors", motor)),  # type: ignore[arg-type]
-        gearheads=replace(case.gearheads, **row("gearheads", gearhead)),  # type: ignore[arg-type]
-        drives=replace(case.drives, **row("drives", drive)),  # type: ignore[arg-type]
+        motors=case.motors.row(motor),
+        gearheads=case.gearheads.row(gearhead),
+        drives=case.drives.row(drive),
         motor_parameters=case.motor_parameters.take(slice(motor, motor + 1)),
         gearhead_parameters=case.gearhead_parameters.take(slice(gearhead, gearhead + 1)),
         drive_parameters=case.drive_parameters.take(slice(drive, drive + 1)),
     )
+
+
+def whole_case(cycles: tuple[CycleDemand, ...]) -> Case:
+    """The case that these are all the cycles of."""
+    first = cycles[0].case
+    if len(cycles) < 2:
+        return first
+    return replace(first, cycles=tuple(each.cycle for each in cycles))
 
 
 # -- motion ------------------------------------------------------------------------------------------
@@ -124,7 +126,7 @@ def _stretched(segment: Segment, factor: float) -> Segment:
 
 
 def with_times(case: Case, factor: float, segments: Collection[int]) -> Case:
-    """Some segments last `factor` times as long, over the same way.
+    """Some segments of a case with one cycle last `factor` times as long, over the same way.
 
     Parameters
     ----------
@@ -144,31 +146,43 @@ def with_times(case: Case, factor: float, segments: Collection[int]) -> Case:
     return replace(case, segments=restarted(tuple(made)))
 
 
-def moving_segments(case: Case) -> tuple[int, ...]:
-    """Indices of the segments in which the load moves."""
-    return tuple(i for i, segment in enumerate(case.segments) if moves(segment))
+def _where(case: Case, factor: float, chosen: Callable[[Segment], bool]) -> Case:
+    """The segments that are chosen, of every cycle, last `factor` times as long."""
+    return case.with_segments(
+        lambda segments: restarted(tuple(_stretched(s, factor) if chosen(s) else s for s in segments))
+    )
+
+
+def every_segment(case: Case) -> tuple[Segment, ...]:
+    """The segments of every cycle."""
+    return tuple(segment for one in case.by_cycle() for segment in one.segments)
+
+
+def move_time_s(case: Case) -> float:
+    """Time of all moves of every cycle together. [s]"""
+    return sum(segment.duration_s for segment in every_segment(case) if moves(segment))
 
 
 def with_move_time(case: Case, factor: float) -> Case:
     """Every move takes `factor` times as long; dwells stay."""
-    return with_times(case, factor, moving_segments(case))
+    return _where(case, factor, moves)
 
 
 def with_cycle_time(case: Case, factor: float) -> Case:
-    """The whole cycle takes `factor` times as long, dwells too."""
-    return with_times(case, factor, range(len(case.segments)))
+    """Every cycle takes `factor` times as long, dwells too."""
+    return _where(case, factor, lambda segment: True)
 
 
 def dwell_time_s(case: Case) -> float:
-    """Time per cycle at standstill. [s]"""
-    return sum(segment.duration_s for segment in case.segments if not moves(segment))
+    """Time at standstill in every cycle together. [s]"""
+    return sum(segment.duration_s for segment in every_segment(case) if not moves(segment))
 
 
 def with_dwell_time(case: Case, factor: float) -> Case:
     """Every dwell lasts `factor` times as long; at zero there is none."""
     if factor > 0.0:
-        return with_times(case, factor, [i for i, s in enumerate(case.segments) if not moves(s)])
-    return replace(case, segments=restarted(tuple(s for s in case.segments if moves(s))))
+        return _where(case, factor, lambda segment: not moves(segment))
+    return case.with_segments(lambda segments: restarted(tuple(s for s in segments if moves(s))))
 
 
 def _longer(segment: Segment, added_s: float) -> Segment:
@@ -177,15 +191,19 @@ def _longer(segment: Segment, added_s: float) -> Segment:
 
 
 def with_dwell_added(case: Case, added_s: float) -> Case:
-    """A dwell more at the end of the cycle; the last dwell lasts longer where there is one."""
-    last = case.segments[-1]
+    """A dwell more at the end of every cycle; the last dwell lasts longer where there is one."""
+    return case.with_segments(lambda segments: _dwelling(segments, added_s))
+
+
+def _dwelling(segments: tuple[Segment, ...], added_s: float) -> tuple[Segment, ...]:
+    last = segments[-1]
     if not moves(last):
-        return replace(case, segments=restarted((*case.segments[:-1], _longer(last, added_s))))
+        return restarted((*segments[:-1], _longer(last, added_s)))
     pause = replace(
         last, law="dwell", name="added dwell", phases=(Phase(added_s),), brake_closed=False,
         process_effort=0.0, process=None,
     )  # fmt: skip
-    return replace(case, segments=restarted((*case.segments, pause)))
+    return restarted((*segments, pause))
 
 
 def with_hold(case: Case, after: int, added_s: float) -> Case:
@@ -223,19 +241,18 @@ def payload_unit(case: Case) -> str:
 
 
 def heaviest_payload(case: Case) -> float:
-    """Largest payload of the cycle. [kg]"""
-    return max(segment.payload for segment in case.segments)
+    """Largest payload of every cycle. [kg]"""
+    return max(segment.payload for segment in every_segment(case))
 
 
 def with_payload(case: Case, heaviest: float) -> Case:
     """The heaviest payload becomes `heaviest`, the others in proportion; all alike where there was none."""
     present = heaviest_payload(case)
-    return replace(
-        case,
-        segments=tuple(
+    return case.with_segments(
+        lambda segments: tuple(
             replace(s, payload=s.payload * (heaviest / present) if present > 0.0 else heaviest)
-            for s in case.segments
-        ),
+            for s in segments
+        )
     )
 
 

@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
 from actuator_sizing.core.machine import amplitude_per_unit_current
+from actuator_sizing.sizing.derating import derated_drives
 
 FloatArray = NDArray[np.float64]
 
@@ -17,7 +18,7 @@ class DriveSide:
     """The drives' limits as amplitudes over the allowed utilisation."""
 
     def __init__(self, case: Case, allowed: Mapping[str, float]):
-        d, s = case.drive_parameters, case.surroundings
+        d, s = derated_drives(case), case.surroundings
         amplitude = amplitude_per_unit_current(d.current_basis)
         self.peak = np.where(np.isnan(d.peak_current_a), np.inf, d.peak_current_a * amplitude)
         self.continuous = np.where(

@@ -4,18 +4,22 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, field
+from functools import partial
 
 import numpy as np
+from numpy.typing import NDArray
 
 from actuator_sizing.case.mechanics import check_motion
 from actuator_sizing.case.model import Case
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.errors import InputError
-from actuator_sizing.sizing.demand import Demand, build_demand
+from actuator_sizing.sizing.checks import Sets
+from actuator_sizing.sizing.cycles import CycleDemand, cycle_demands, evaluate_cycles
 from actuator_sizing.sizing.dynamic_results import add_dynamics
 from actuator_sizing.sizing.judging import ORDER, Verdicts, active_checks, is_binding, judge_sets
 from actuator_sizing.sizing.results import FAILS
-from actuator_sizing.sizing.shortlist import evaluate_sets
+
+IndexArray = NDArray[np.intp]
 
 #: What a change shall reach: every check met, or met with the reserve that is recommended.
 PASS, RESERVE = "pass", "reserve"
@@ -59,18 +63,23 @@ class Resizing:
         A case of one set, from `case_changes.single`.
     goal : str
         `PASS` or `RESERVE`.
-    demand : Demand
-        Its cycle, reused by changes that do not touch it.
+    cycles : tuple of CycleDemand
+        Its cycles, reused by changes that do not touch them.
     """
 
     case: Case
-    demand: Demand
+    cycles: tuple[CycleDemand, ...]
     goal: str = PASS
 
     @classmethod
     def of(cls, case: Case, goal: str = PASS) -> Resizing:
         """Prepare a case of one set."""
-        return cls(case, build_demand(case), goal)
+        return cls(case, cycle_demands(case), goal)
+
+    @classmethod
+    def known(cls, case: Case, cycles: tuple[CycleDemand, ...], goal: str = PASS) -> Resizing:
+        """Prepare a case of one set whose cycles ask what those of the whole case ask."""
+        return cls(case, _as_changed(case, cycles), goal)
 
     def outcome(self, changed: Case) -> Outcome:
         """Size the set again.
@@ -89,10 +98,10 @@ class Resizing:
         if not same and not _can_move(changed):
             return Outcome(_WORST, MOTION)
         try:
-            demand = self.demand if same else build_demand(changed)
+            cycles = _as_changed(changed, self.cycles) if same else cycle_demands(changed)
         except InputError:  # a geometry that jams
             return Outcome(_WORST, MOTION)
-        return _worst(_judged(changed, demand), self.goal)
+        return _worst(_judged(cycles), self.goal)
 
     def at(self, change: Callable[[Case, float], Case], value: float) -> Outcome:
         """The outcome after a change to a value, in the unit of the change [-]."""
@@ -103,30 +112,41 @@ def _can_move(case: Case) -> bool:
     if case.recording is not None:
         return True
     problems = ProblemList()
-    check_motion(case.mechanism, case.motion_at_shaft, case.segments, problems)
+    for one in case.by_cycle():
+        check_motion(one.mechanism, one.motion_at_shaft, one.segments, problems)
     return not problems.has_errors
 
 
-def _judged(case: Case, demand: Demand) -> Verdicts:
+def _as_changed(case: Case, cycles: tuple[CycleDemand, ...]) -> tuple[CycleDemand, ...]:
+    """Demands that are known still hold where the rest of the case is another."""
+    return tuple(CycleDemand(one, known.demand) for one, known in zip(case.by_cycle(), cycles, strict=True))
+
+
+def _judged(cycles: tuple[CycleDemand, ...]) -> Verdicts:
     """Verdicts of the one set by the checks that can fail it; simulated where the case asks how it moves."""
-    pairs = zip(*active_checks(case.limits), strict=True)
+    pairs = zip(*active_checks(cycles[0].case.limits), strict=True)
     binding = [(check, limit) for check, limit in pairs if is_binding(check, limit)]
     checks, limits = tuple(check for check, _ in binding), tuple(limit for _, limit in binding)
     index = np.zeros((1, 3), dtype=np.intp)
 
-    def leading(sets: object) -> tuple[np.ndarray, np.ndarray]:
-        fails = judge_sets(sets, checks, limits).verdict == ORDER.index(FAILS)  # type: ignore[arg-type]
+    several = evaluate_cycles(cycles, index)
+
+    def leading(number: int, sets: Sets) -> tuple[IndexArray, NDArray[np.bool_]]:
+        judged = (*several[:number], sets, *several[number + 1 :])
+        fails = judge_sets(judged, checks, limits).verdict == ORDER.index(FAILS)
         return np.flatnonzero(~fails), fails
 
-    sets = add_dynamics(case, demand, evaluate_sets(case, demand, index), index, leading)
-    return judge_sets(sets, checks, limits)
+    for number, each in enumerate(cycles):
+        moving = add_dynamics(each.case, each.demand, several[number], index, partial(leading, number))
+        several = (*several[:number], moving, *several[number + 1 :])
+    return judge_sets(several, checks, limits)
 
 
 def _worst(verdicts: Verdicts, goal: str) -> Outcome:
     shares: dict[str, float] = {}
     for column, (check, limit) in enumerate(zip(verdicts.checks, verdicts.limits, strict=True)):
         utilisation = float(verdicts.utilisation[0, column])
-        if np.isnan(utilisation):
+        if np.isnan(utilisation) or not verdicts.binds[0, column]:
             continue
         kept = 0.0 if goal == PASS else limit.recommended_reserve
         allowed = limit.allowed_utilisation * (1.0 - kept)

@@ -15,8 +15,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
-from actuator_sizing.core.machine import amplitude_per_unit_current
+from actuator_sizing.core.machine import motor_amplitude_per_unit_current
 from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
+from actuator_sizing.sizing.cycles import CycleDemand
 from actuator_sizing.sizing.demand import Demand
 from actuator_sizing.sizing.drive_side import DriveSide
 from actuator_sizing.sizing.fitting import compatible, fits_axis
@@ -56,7 +57,7 @@ class Screened:
 
 def screen(
     case: Case,
-    demand: Demand,
+    demand: Demand | tuple[CycleDemand, ...],
     checks: tuple[Check, ...],
     allowed: Mapping[str, float],
     key: str,
@@ -71,8 +72,8 @@ def screen(
     ----------
     case : Case
         The case with its catalogs. [-]
-    demand : Demand
-        The cycle at the driven shaft. [-]
+    demand : Demand or tuple of CycleDemand
+        The cycle at the driven shaft; every cycle, where there are several: of each bound the largest counts. [-]
     checks : tuple of Check
         Checks that can fail a set. [-]
     allowed : mapping
@@ -102,24 +103,26 @@ def screen(
     losses = Losses(names, listed=total <= LISTED_SETS)
     pools = (Pool(keep), Pool(losers), Pool(losers))
     run = _Run(case, bounded, allowed, drive_side, key, *pools, losses)
-    gearhead_side = GearheadSide.of(case.gearhead_parameters.take(gearhead_index), demand)
-    gearhead_parts = [
-        (
-            gearhead_index[start : start + _GEARHEADS_PER_BLOCK],
-            gearhead_side.part(slice(start, start + _GEARHEADS_PER_BLOCK)),
-        )
-        for start in range(0, len(gearhead_index), _GEARHEADS_PER_BLOCK)
-    ]
+    cycles = demand if isinstance(demand, tuple) else (CycleDemand(case, demand),)
+    gearheads = case.gearhead_parameters.take(gearhead_index)
+    gearhead_sides = [GearheadSide.of(gearheads, each.demand) for each in cycles]
+    gearhead_parts = []
+    for start in range(0, len(gearhead_index), _GEARHEADS_PER_BLOCK):
+        some = slice(start, start + _GEARHEADS_PER_BLOCK)
+        gearhead_parts.append((gearhead_index[some], [side.part(some) for side in gearhead_sides]))
     recommended = case.number("recommended inertia ratio")
     survivors = screened = 0
     for start in range(0, len(motor_index), _MOTORS_PER_BLOCK):
         m = motor_index[start : start + _MOTORS_PER_BLOCK]
         motor_side = MotorSide.of(case.motor_parameters.take(m), case.surroundings)
         served = compatible(motor_side.motors, drives)
-        for g, part in gearhead_parts:
-            block = Block(demand, case.surroundings, recommended, motor_side, part)
+        for g, parts in gearhead_parts:
+            blocks = tuple(
+                Block(each.demand, case.surroundings, recommended, motor_side, part, each.cycle.runs)
+                for each, part in zip(cycles, parts, strict=True)
+            )
             with np.errstate(over="ignore"):  # immense ratios stand for what is out of reach
-                survivors += _screen_tile(run, _Tile(block, m, g, served))
+                survivors += _screen_tile(run, _Tile(blocks, m, g, served))
         screened += int(served.sum()) * len(gearhead_index)
         if progress is not None:
             progress((start + len(m)) / len(motor_index))
@@ -160,12 +163,17 @@ class _Run:
 
 @dataclass(frozen=True)
 class _Tile:
-    """One block with the place of its N gearheads and M motors in the catalogs."""
+    """One block for each cycle with the place of its N gearheads and M motors in the catalogs."""
 
-    block: Block
+    blocks: tuple[Block, ...]
     motor_index: NDArray[np.intp]  # (M,)
     gearhead_index: NDArray[np.intp]  # (N,)
     served: NDArray[np.bool_]  # (M, D) which drive can commutate which motor
+
+    @property
+    def block(self) -> Block:
+        """The block of the first cycle; motors and gearheads are the same in all of them."""
+        return self.blocks[0]
 
     def pairs(self, gearhead: NDArray[np.intp], motor: NDArray[np.intp]) -> NDArray[np.intp]:
         """Catalog rows of motor and gearhead for places in the block, shape (n, 2)."""
@@ -175,7 +183,7 @@ class _Tile:
 def _screen_tile(run: _Run, tile: _Tile) -> int:
     """Screen one block; returns how many sets survive."""
     losses = run.losses
-    gearhead_worst, gearhead_check, others = _utilisations(run, tile.block)
+    gearhead_worst, gearhead_check, others = _utilisations(run, tile.blocks)
     worst = np.broadcast_to(gearhead_worst, tile.block.mean_square.shape).copy()
     for _, utilisation in others:
         np.fmax(worst, utilisation, out=worst)  # NaN, not known, is never the worst
@@ -202,19 +210,24 @@ def _screen_tile(run: _Run, tile: _Tile) -> int:
 
 
 def _utilisations(
-    run: _Run, block: Block
+    run: _Run, blocks: tuple[Block, ...]
 ) -> tuple[FloatArray, NDArray[np.intp], list[tuple[int, FloatArray]]]:
     """Utilisation over allowed of every motor and gearhead check.
 
     Those that depend on the gearhead alone come as the worst of them and which it is, both (N, 1); the others
     with their number in the list of checks, each (N, M).
     """
+    block = blocks[0]
     worst = np.zeros((len(block.gearheads), 1))
     check_number = np.zeros(worst.shape, dtype=np.intp)
     others = []
     for number, check in enumerate(run.checks):
-        assert check.bound is not None
-        utilisation = check.bound(block)
+        bounds = [check.bound(each) for each in blocks if check.bound and check.concerns_cycle(each.runs)]
+        if not bounds:
+            continue
+        utilisation = bounds[0]
+        for other in bounds[1:]:
+            utilisation = np.fmax(utilisation, other)
         if run.allowed[check.key] != 1.0:
             utilisation = utilisation / run.allowed[check.key]
         if check.group == "gearhead":
@@ -231,15 +244,16 @@ def _screen_drives(run: _Run, tile: _Tile, passing: NDArray[np.bool_], worst: Fl
     """Hold the pairs that may pass against every drive; returns how many sets survive."""
     side, block, losses = run.drive_side, tile.block, run.losses
     columns, rows = np.nonzero(passing)  # gearheads, motors
-    amplitude = amplitude_per_unit_current(block.motors.current_basis)
+    amplitude = motor_amplitude_per_unit_current(block.motors)
     total = 0
     step = max(1, 2**16 // max(1, len(side)))
     for start in range(0, len(rows), step):
         r, c = rows[start : start + step], columns[start : start + step]
         ok = tile.served[r]
-        stack = side.utilisations(
-            block.current_peak[c, r] * amplitude[r], block.current_rms[c, r] * amplitude[r]
-        )
+        peak = np.max([each.current_peak[c, r] for each in tile.blocks], axis=0)
+        # A cycle that runs once has no mean for the drive's continuous rating.
+        rms = np.max([each.current_rms[c, r] * each.repeats for each in tile.blocks], axis=0)
+        stack = side.utilisations(peak * amplitude[r], rms * amplitude[r])
         drive_worst = stack.max(axis=0)
         survives = ok & (drive_worst <= 1.0 + _ROUNDING)
         check = len(run.checks) + stack.argmax(axis=0)

@@ -134,15 +134,15 @@ class TradeOffs:
         }
 
 
-def trade_offs(case: Case, sets: Sets, verdicts: Verdicts, index: IndexArray, order: IndexArray) -> TradeOffs:
+def trade_offs(case: Case, several: tuple[Sets, ...], verdicts: Verdicts, index: IndexArray, order: IndexArray) -> TradeOffs:
     """Find the sets that no other one beats.
 
     Parameters
     ----------
     case : Case
         The case. [-]
-    sets : Sets
-        Evaluated sets. [-]
+    several : tuple of Sets
+        Evaluated sets, once for each cycle. [-]
     verdicts : Verdicts
         Their verdicts. [-]
     index : ndarray of int, shape (S, 3)
@@ -156,7 +156,7 @@ def trade_offs(case: Case, sets: Sets, verdicts: Verdicts, index: IndexArray, or
         Exact among the sets that were evaluated.
     """
     passing = order[verdicts.verdict[order] < ORDER.index(NOT_CHECKED)]
-    keys = {name: ranking_key(case, sets, verdicts, index, name)[passing] for name in CRITERIA}
+    keys = {name: ranking_key(case, several, verdicts, index, name)[passing] for name in CRITERIA}
     criteria = tuple(name for name in CRITERIA if len(passing) and np.isfinite(keys[name]).any())
     cost = np.stack([keys[name] for name in criteria], axis=1) if criteria else np.empty((len(passing), 0))
     beaten_by = dominated_by(cost)
@@ -167,7 +167,7 @@ def trade_offs(case: Case, sets: Sets, verdicts: Verdicts, index: IndexArray, or
     made = []
     for row, place in enumerate(passing.tolist()):
         motor, gearhead, drive = (int(i) for i in index[place])
-        direct = bool(sets.gearheads.is_direct[place])
+        direct = bool(several[0].gearheads.is_direct[place])
         made.append(
             TradeOff(
                 names[0][motor], "direct" if direct else names[1][gearhead], names[2][drive],

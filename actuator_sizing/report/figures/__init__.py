@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from actuator_sizing.report.curves import leading_detail
+from actuator_sizing.report.figures.cycles import draw_cycles
 from actuator_sizing.report.figures.dynamics import (
     draw_bode,
     draw_following_error,
@@ -40,6 +41,7 @@ FIGURES = (
     "current",
     "temperature",
     "step_response",
+    "cycles",
 )
 #: Of what is shown only where it was asked for, or where several sets pass.
 DECISION_FIGURES = ("trade_offs", "ratio_windows", "payload_map")
@@ -105,6 +107,10 @@ def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]
         "utilisation": lambda: draw_utilisation(comparison.sets),
         **_decision_figures(comparison),
     }
+    if comparison.cycles:
+        several = comparison
+        figures["cycles"] = lambda: draw_cycles(several)
+    comparison = comparison.governing
     best = comparison.sets[0] if comparison.sets else None
     detail = leading_detail(comparison)
     if best is None or detail is None:

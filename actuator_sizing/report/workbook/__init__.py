@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 from actuator_sizing.report.text import option
 from actuator_sizing.report.workbook.case_sheets import add_inputs, add_parts, add_questions, add_segments
 from actuator_sizing.report.workbook.curves import add_speed_torque, add_time_series, add_warm_up
+from actuator_sizing.report.workbook.cycle_sheets import add_cycles, add_inertias
 from actuator_sizing.report.workbook.decision_sheets import (
     add_headroom,
     add_levers,
@@ -21,9 +22,9 @@ from actuator_sizing.report.workbook.writer import Sheets
 if TYPE_CHECKING:
     from actuator_sizing.sizing.results import Comparison
 
-__all__ = ["render_workbook"]
+__all__ = ["BOOK_OPTIONS", "render_workbook"]
 
-_OPTIONS = {
+BOOK_OPTIONS = {
     "in_memory": True,
     "strings_to_formulas": False,  # text from tables stays text, also when it begins with "="
     "strings_to_urls": False,
@@ -46,7 +47,7 @@ def render_workbook(comparison: Comparison, day: date, rows_in_file: int | None 
     from xlsxwriter import Workbook
 
     stream = io.BytesIO()
-    with Workbook(stream, _OPTIONS) as book:
+    with Workbook(stream, BOOK_OPTIONS) as book:
         book.set_properties(
             {
                 "title": option(comparison.case, "title", comparison.case.name)[:250],
@@ -61,6 +62,7 @@ def render_workbook(comparison: Comparison, day: date, rows_in_file: int | None 
         add_summary(sheets, comparison, day, rows_in_file)
         add_candidates(sheets, comparison)
         add_checks(sheets, comparison)
+        add_cycles(sheets, comparison)
         add_levers(sheets, comparison)
         add_trade_offs(sheets, comparison)
         add_ratio_windows(sheets, comparison)
@@ -69,6 +71,7 @@ def render_workbook(comparison: Comparison, day: date, rows_in_file: int | None 
         add_time_series(sheets, comparison)
         add_warm_up(sheets, comparison)
         add_speed_torque(sheets, comparison)
+        add_inertias(sheets, comparison)
         add_parts(sheets, comparison)
         add_inputs(sheets, comparison)
         add_questions(sheets, comparison)

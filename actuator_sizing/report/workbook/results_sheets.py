@@ -130,6 +130,8 @@ def add_checks(sheets: Sheets, comparison: Comparison) -> None:
         Field("advice only"), Field("at [s]", "number"), Field("segment"),
         Field("formula"), Field("source"), Field("missing data"),
     ]  # fmt: skip
+    if comparison.cycles:
+        fields.append(Field("cycle"))
     rows, live = [], []
     for item in comparison.sets:
         for check in item.checks:
@@ -141,6 +143,7 @@ def add_checks(sheets: Sheets, comparison: Comparison) -> None:
                     check.title, check.group, check.demand, check.capacity, check.unit or "-",
                     check.utilisation, check.allowed, check.margin, check.shown_verdict, check.is_advice, time,
                     check.segment, check.formula, check.source, ", ".join(check.missing),
+                    *((check.cycle,) if comparison.cycles else ()),
                 )
             )  # fmt: skip
             live.append(check)

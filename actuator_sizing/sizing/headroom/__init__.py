@@ -11,8 +11,8 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
 from actuator_sizing.case.model import Case
-from actuator_sizing.sizing.case_changes import single
-from actuator_sizing.sizing.demand import Demand, build_demand
+from actuator_sizing.sizing.case_changes import single, whole_case
+from actuator_sizing.sizing.cycles import CycleDemand, cycle_demands
 from actuator_sizing.sizing.edge_search import narrowed, walk
 from actuator_sizing.sizing.headroom.declared import Extent, extents
 from actuator_sizing.sizing.headroom.payload_map import MapRow, PayloadMap, changed_case, payload_map
@@ -182,25 +182,22 @@ def headroom(
         If a name is not in its catalog.
     """
     parts = find_set(case, motor, gearhead, drive)
-    return headroom_of(case, build_demand(case), parts, with_map=with_map, progress=progress)
+    return headroom_of(cycle_demands(case), parts, with_map=with_map, progress=progress)
 
 
 def headroom_of(
-    case: Case,
-    demand: Demand,
+    cycles: tuple[CycleDemand, ...],
     parts: tuple[int, int, int],
     *,
     with_map: bool,
     progress: Callable[[str, float], None] | None = None,
 ) -> Headroom:
-    """The same for a set by its indices, its cycle known.
+    """The same for a set by its indices, the cycles known.
 
     Parameters
     ----------
-    case : Case
-        The whole case. [-]
-    demand : Demand
-        Its cycle. [-]
+    cycles : tuple of CycleDemand
+        The cycles of the whole case. [-]
     parts : tuple of int
         Motor, gearhead and drive by index into the catalogs. [-]
     with_map : bool
@@ -213,8 +210,8 @@ def headroom_of(
     Headroom
         Limits with the check that bounds each.
     """
-    one = single(case, *parts)
-    resizing = Resizing(one, demand)
+    one = single(whole_case(cycles), *parts)
+    resizing = Resizing.known(one, cycles)
     present = resizing.outcome(one)
     wanted = extents(one)
     answers = []

@@ -77,15 +77,16 @@ def extents(case: Case) -> tuple[Extent, ...]:
 
 
 def _times(case: Case) -> Iterator[Extent]:
-    if not change.moving_segments(case):
+    if change.move_time_s(case) == 0.0:
         return
     cycle = case.cycle_duration_s
     yield Extent(
         "fastest_cycle", "fastest cycle, moves and dwells in proportion", "s", cycle, FASTEST * cycle,
         SLOWEST * cycle, lambda one, value: change.with_cycle_time(one, value / cycle),
     )  # fmt: skip
-    for number, move in enumerate(change.moves_of(case), start=1):
-        yield _move(number, move)
+    if len(case.by_cycle()) == 1:
+        for number, move in enumerate(change.moves_of(case), start=1):
+            yield _move(number, move)
     dwell = change.dwell_time_s(case)
     if dwell > 0.0:
         yield Extent(
@@ -124,7 +125,9 @@ def _own_load(case: Case) -> float:
 
 
 def _hold(case: Case) -> Iterator[Extent]:
-    """Holding the load by the motor at the standstill that takes the most torque."""
+    """Holding the load by the motor at the standstill that takes the most torque, of one cycle."""
+    if len(case.by_cycle()) > 1:
+        return
     torque = {
         i: _holding_torque(case, i) for i, s in enumerate(case.segments) if speed_after(s.phases) == 0.0
     }

@@ -105,7 +105,7 @@ def payload_map(
         None for a measured cycle, or one without moves.
     """
     case = resizing.case
-    if not change.is_planned(case) or not change.moving_segments(case):
+    if not change.is_planned(case) or change.move_time_s(case) == 0.0:
         return None
     present = change.heaviest_payload(case)
     top = _WIDER * max(present, heaviest or 0.0)

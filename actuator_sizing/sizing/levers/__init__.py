@@ -11,9 +11,8 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Any
 
-from actuator_sizing.case.model import Case
-from actuator_sizing.sizing.case_changes import single
-from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.case_changes import single, whole_case
+from actuator_sizing.sizing.cycles import CycleDemand
 from actuator_sizing.sizing.levers.declared import LEVERS, Lever
 from actuator_sizing.sizing.levers.pairs import PairOfLevers, cheapest_pair
 from actuator_sizing.sizing.levers.parts import PartAnswer, other_parts
@@ -63,8 +62,7 @@ class LeverStudy:
 
 
 def levers_of(
-    case: Case,
-    demand: Demand,
+    cycles: tuple[CycleDemand, ...],
     motor: int,
     gearhead: int,
     drive: int,
@@ -74,10 +72,8 @@ def levers_of(
 
     Parameters
     ----------
-    case : Case
-        The whole case. [-]
-    demand : Demand
-        Its cycle. [-]
+    cycles : tuple of CycleDemand
+        The cycles of the whole case. [-]
     motor, gearhead, drive : int
         The set, by index into the catalogs. [-]
     weights : mapping of str to float, optional
@@ -88,11 +84,12 @@ def levers_of(
     LeverStudy or None
         None where the set already has the reserve that is recommended.
     """
+    case = whole_case(cycles)
     one = single(case, motor, gearhead, drive)
-    resizing = Resizing(one, demand, PASS)
+    resizing = Resizing.known(one, cycles, PASS)
     first = resizing.outcome(one)
     if first.is_met:
-        resizing = Resizing(one, demand, RESERVE)
+        resizing = Resizing.known(one, cycles, RESERVE)
         first = resizing.outcome(one)
         if first.is_met:
             return None
@@ -100,6 +97,6 @@ def levers_of(
     return LeverStudy(
         goal=resizing.goal,
         singles=tuple(s.answer for s in found),
-        parts=other_parts(case, demand, motor, gearhead, drive, resizing.goal),
+        parts=other_parts(cycles, case, motor, gearhead, drive, resizing.goal),
         pair=cheapest_pair(resizing, found, weights),
     )

@@ -64,7 +64,7 @@ def _unit(text: str) -> Callable[[Case], str]:
 
 # -- motion ------------------------------------------------------------------------------------------
 def _move_time(case: Case) -> float | None:
-    total = sum(case.segments[i].duration_s for i in change.moving_segments(case))
+    total = change.move_time_s(case)
     return total if change.is_planned(case) and total > 0.0 else None
 
 

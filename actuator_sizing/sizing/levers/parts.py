@@ -12,12 +12,11 @@ from numpy.typing import NDArray
 from actuator_sizing.case.model import Case
 from actuator_sizing.core.machine import amplitude_per_unit_current
 from actuator_sizing.sizing.case_changes import single
-from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.cycles import CycleDemand, evaluate_cycles
 from actuator_sizing.sizing.fitting import compatible, fits_axis
 from actuator_sizing.sizing.judging import ORDER, active_checks, judge_sets
 from actuator_sizing.sizing.resizing import PASS, Resizing
 from actuator_sizing.sizing.results import FAILS, LOW_RESERVE
-from actuator_sizing.sizing.shortlist import evaluate_sets
 
 FloatArray = NDArray[np.float64]
 IndexArray = NDArray[np.intp]
@@ -51,16 +50,16 @@ class PartAnswer:
 
 
 def other_parts(
-    case: Case, demand: Demand, motor: int, gearhead: int, drive: int, goal: str = PASS
+    cycles: tuple[CycleDemand, ...], case: Case, motor: int, gearhead: int, drive: int, goal: str = PASS
 ) -> tuple[PartAnswer, ...]:
     """The cheapest other motor, gearhead or drive that alone lets the set pass, and the one nearest in size.
 
     Parameters
     ----------
+    cycles : tuple of CycleDemand
+        The cycles of the whole case. [-]
     case : Case
         The whole case. [-]
-    demand : Demand
-        Its cycle. [-]
     motor, gearhead, drive : int
         The set, by index into the catalogs. [-]
     goal : str
@@ -87,7 +86,7 @@ def other_parts(
         own = size[base[column]]
         with np.errstate(divide="ignore", invalid="ignore"):
             distance = np.abs(np.log(size[others] / own))
-        trial = _Trial(case, demand, base, column, goal)
+        trial = _Trial(cycles, case, base, column, goal)
         found = [
             trial.first_passing(others[np.argsort(np.nan_to_num(key, nan=np.inf), kind="stable")])
             for key in (price[others], distance)
@@ -101,8 +100,11 @@ def other_parts(
 class _Trial:
     """Other parts of one catalog in a set; each is evaluated once, however it is ordered."""
 
-    def __init__(self, case: Case, demand: Demand, base: IndexArray, column: int, goal: str):
-        self._case, self._demand, self._base, self._column, self._goal = case, demand, base, column, goal
+    def __init__(
+        self, cycles: tuple[CycleDemand, ...], case: Case, base: IndexArray, column: int, goal: str
+    ):
+        self._cycles, self._case = cycles, case
+        self._base, self._column, self._goal = base, column, goal
         self._passes: dict[int, bool] = {}
 
     def first_passing(self, ordered: IndexArray) -> int | None:
@@ -121,7 +123,7 @@ class _Trial:
         if not len(parts):
             return
         checks, limits = active_checks(self._case.limits)
-        verdicts = judge_sets(evaluate_sets(self._case, self._demand, self._sets(parts)), checks, limits)
+        verdicts = judge_sets(evaluate_cycles(self._cycles, self._sets(parts)), checks, limits)
         worst = ORDER.index(FAILS if self._goal == PASS else LOW_RESERVE)
         self._passes.update(zip(parts.tolist(), (verdicts.verdict < worst).tolist(), strict=True))
 
@@ -133,5 +135,5 @@ class _Trial:
     def _confirmed(self, part: int) -> bool:
         """Sized alone, with the simulation where the case asks how the axis moves."""
         alone = single(self._case, *self._sets(np.array([part]))[0].tolist())
-        self._passes[part] = Resizing(alone, self._demand, self._goal).outcome(alone).is_met
+        self._passes[part] = Resizing.known(alone, self._cycles, self._goal).outcome(alone).is_met
         return self._passes[part]
