@@ -27,6 +27,7 @@ if TYPE_CHECKING:
     from actuator_sizing.report.revision import read_results
     from actuator_sizing.sizing import compare
     from actuator_sizing.sizing.headroom import headroom
+    from actuator_sizing.sizing.machine import compare_machine
     from actuator_sizing.sizing.simulation import simulate
 
 __all__ = [
@@ -34,6 +35,7 @@ __all__ = [
     "audit_case",
     "check_case",
     "compare",
+    "compare_machine",
     "convert_case",
     "headroom",
     "read_case",
@@ -48,6 +50,7 @@ _HOMES = {
     "audit_case": "actuator_sizing.case.audit",
     "check_case": "actuator_sizing.case.reading",
     "compare": "actuator_sizing.sizing",
+    "compare_machine": "actuator_sizing.sizing.machine",
     "convert_case": "actuator_sizing.case.converting",
     "headroom": "actuator_sizing.sizing.headroom",
     "read_case": "actuator_sizing.case.reading",

@@ -76,8 +76,8 @@ def sets_of(
     tables = {"motors": motor_columns, "gearheads": gearhead_columns, "drives": SWITCHING | (drive_columns or {})}
     count = 2 if any(isinstance(v, tuple) for part in tables.values() for v in (part or {}).values()) else 1
     made = case(mechanism, values, segments, motors=motors * count, gearheads=gearheads * count,
-                drives=drives * count,
-                surroundings=replace(SURROUNDINGS, cable_ohm=cable_ohm), options={"stop reaction time": 0.01, **options})  # fmt: skip
+                drives=drives * count, surroundings=replace(SURROUNDINGS, cable_ohm=cable_ohm),
+                options={"stop reaction time": 0.01, **options})  # fmt: skip
     for name, given in tables.items():
         catalog = getattr(made, name)
         known = {}
@@ -115,6 +115,7 @@ _SHAFT = {
     "permissible_radial_force": 500.0, "radial_force_position": 0.02, "bearing_lever": 0.03,
     "permissible_axial_force": 200.0, "bearing_life": 7.2e7, "bearing_life_speed": 100.0,
 }  # fmt: skip
+_SIMULATED = "simulation: only leading sets with a cycle of at most four million samples are simulated"
 _LOADED = {"shaft radial force": 200.0, "shaft force position": 0.02}
 
 #: Fails this check and nothing else.
@@ -402,10 +403,10 @@ LACKING: dict[str, tuple[Callable[[], Sets], str]] = {
         "torsional stiffness (or driven shaft stiffness of the axis)",
     ),
     "following_error": (
-        lambda: sets_of(dynamics={"is_simulated": np.nan}), "simulation: only leading sets with a cycle of at most four million samples are simulated"
+        lambda: sets_of(dynamics={"is_simulated": np.nan}), _SIMULATED
     ),
     "stability_reserve": (
-        lambda: sets_of(dynamics={"is_simulated": np.nan}), "simulation: only leading sets with a cycle of at most four million samples are simulated"
+        lambda: sets_of(dynamics={"is_simulated": np.nan}), _SIMULATED
     ),
     "resonance": (
         lambda: sets_of(dynamics={"stiffness_nm_per_rad": np.nan}),

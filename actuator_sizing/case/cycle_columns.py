@@ -41,7 +41,7 @@ DUTY_TYPE_COLUMNS = (
     Column("payload", ("mass", "inertia"), "what is carried under load", default=0.0, assumed="no payload",
            minimum=0.0, example=("12", "0.2"), unit=("kg", "kg·m²")),
     Column("operating time", "time", "time at this load and speed, starting and braking not counted", positive=True,
-           maximum=1.0e7, example="20", unit="s"),
+           maximum=1.0e7, example="8", unit="s"),
     Column("rest time", "time", "time at rest (S3, S4, S5) or without load (S6)", positive=True, maximum=1.0e7,
            unit="s"),
     Column("cyclic duration factor", "ratio", "time under load, starting and braking included, over the time of the "

@@ -53,7 +53,7 @@ def understand_cycles(
             segments = plan_cycle(motion, rows, coordinate, problems, paces.get(fold(name), courses))
             made.append(Cycle(name, segments))
     if types is not None:
-        made += understand_duty_types(types, {fold(cycle.name) for cycle in made}, problems)
+        made += understand_duty_types(types, {fold(cycle.name) for cycle in made}, coordinate, problems)
     return _as_listed(tuple(made), listed, problems)
 
 

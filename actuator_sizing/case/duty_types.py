@@ -6,7 +6,7 @@ time under load in S4 and S5, and the cycle of 10 min where nothing else is said
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -18,15 +18,17 @@ from actuator_sizing.case.motion import assume_defaults
 from actuator_sizing.case.parsed_tables import ParsedTable
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.core.duty_types import loaded_time, usual_times
+from actuator_sizing.core.mechanisms import ROTARY, Mechanism
 from actuator_sizing.core.motion_laws import Phase
 from actuator_sizing.core.permissible_load import rest_time
 from actuator_sizing.core.phases import constant_jerk_phases
 from actuator_sizing.errors import NOTE
 
 _TABLE = "duty_types"
-CONTINUOUS_S = 60.0  # of a constant load: any time gives the same state
+_CONTINUOUS_S = 60.0  # of a constant load on a straight axis: any time gives the same state
+_MOST_TURNS = 20  # that are worked out one by one where the ratio changes within a turn
 #: Times that each type takes beside speed and load.
-_USES = {
+USED_TIMES = {
     "S1": (),
     "S2": ("operating_time", "starting_time", "braking_time"),
     "S3": ("operating_time", "rest_time", "cyclic_duration_factor"),
@@ -36,14 +38,14 @@ _USES = {
     "S8": ("operating_time", "starting_time"),
     "S10": ("share_of_time",),
 }
-_TIMES = tuple(dict.fromkeys(key for keys in _USES.values() for key in keys))
+ALL_TIMES = tuple(dict.fromkeys(key for keys in USED_TIMES.values() for key in keys))
 _NEEDS = {
     "S2": ("operating_time",),
     "S4": ("starting_time",),
     "S5": ("starting_time", "braking_time"),
     "S8": ("operating_time",),
 }
-_SEVERAL = ("S8", "S10")  # types with one row for each load
+SEVERAL_LOADS = ("S8", "S10")  # types with one row for each load
 _LEFT_OUT = (
     "How the speed is reached and left is left out, as the duty type has it: peak torque is that of the load."
 )
@@ -68,7 +70,9 @@ class _Load:
     note: str
 
 
-def understand_duty_types(parsed: ParsedTable, taken: set[str], problems: ProblemList) -> tuple[Cycle, ...]:
+def understand_duty_types(
+    parsed: ParsedTable, taken: set[str], coordinate: str, problems: ProblemList
+) -> tuple[Cycle, ...]:
     """Make the cycles of every duty type.
 
     Parameters
@@ -77,6 +81,8 @@ def understand_duty_types(parsed: ParsedTable, taken: set[str], problems: Proble
         The table with each cell judged.
     taken : set of str
         Names of cycles, folded, that the duty cycle has already.
+    coordinate : str
+        ``"linear"`` or ``"rotary"``: how the motion is stated.
     problems : ProblemList
         Takes times that are missing, too many or contradict each other.
 
@@ -99,14 +105,39 @@ def understand_duty_types(parsed: ParsedTable, taken: set[str], problems: Proble
         if key in taken:
             problems.report(_TABLE, first, "cycle", got=f"'{name}', a cycle of the duty cycle",
                             allowed="a name of its own", remedy="Rename one of them.")  # fmt: skip
-        elif len(kinds) > 1 or (len(members) > 1 and kinds.isdisjoint(_SEVERAL)):
+        elif len(kinds) > 1 or (len(members) > 1 and kinds.isdisjoint(SEVERAL_LOADS)):
             problems.report(_TABLE, int(parsed.rows[members[1]]), "cycle",
                             got=f"a further row of '{name}'",
                             allowed="several rows of one cycle only for S8 or S10, all of the same type",
                             remedy="Give the row a cycle of its own.")  # fmt: skip
         else:
-            cycles += _cycles(name, [_load(parsed, index) for index in members], problems)
+            cycles += _cycles(name, [_load(parsed, index) for index in members], coordinate, problems)
     return tuple(cycles)
+
+
+def check_turns(cycle: Cycle, mechanism: Mechanism, at_shaft: bool, problems: ProblemList) -> None:
+    """Refuse a duty type of many turns of a mechanism whose ratio changes within each of them.
+
+    Parameters
+    ----------
+    cycle : Cycle
+        Made from a duty type.
+    mechanism : Mechanism
+        What it drives.
+    at_shaft : bool
+        The motion is that of the driven shaft.
+    problems : ProblemList
+        Takes the problem.
+    """
+    if mechanism.resolved_by_nodes or not at_shaft:
+        return
+    turned = sum(abs(phase.end()[0] - phase.kinematics(0.0)[0]) for s in cycle.segments for phase in s.phases)
+    if turned > _MOST_TURNS * 2.0 * np.pi:
+        problems.report(_TABLE, cycle.segments[0].row, "operating time",
+                        got=f"{turned / (2.0 * np.pi):.0f} turns of a {mechanism.name}",
+                        allowed=f"at most {_MOST_TURNS} turns, since its ratio changes within each of them",
+                        remedy="Use S1 for the load itself; for heating, state a shorter cycle with the same cyclic "
+                        "duration factor.")  # fmt: skip
 
 
 def _is_usable(parsed: ParsedTable, index: int, problems: ProblemList) -> bool:
@@ -124,8 +155,8 @@ def _is_usable(parsed: ParsedTable, index: int, problems: ProblemList) -> bool:
     def has(key: str) -> bool:
         return bool(np.isfinite(parsed.number(key)[index]))
 
-    for key in _TIMES:
-        if has(key) and key not in _USES[kind]:
+    for key in ALL_TIMES:
+        if has(key) and key not in USED_TIMES[kind]:
             wrong(key, f"{parsed.shown_cell(key, index)} in {kind}", f"no such value, which {kind} leaves out",
                   _other_type(key))  # fmt: skip
         if not has(key) and key in _NEEDS.get(kind, ()):
@@ -206,26 +237,26 @@ def _times(load: _Load) -> tuple[float, float]:
     return loaded - ramps, rest
 
 
-def _cycles(name: str, loads: list[_Load], problems: ProblemList) -> Iterator[Cycle]:
+def _cycles(name: str, loads: list[_Load], coordinate: str, problems: ProblemList) -> Iterator[Cycle]:
     kind = loads[0].duty_type
     if kind == "S10":
         for number, load in enumerate(loads, start=1):
             own = name if len(loads) == 1 else f"{name}, load {number}"
-            yield Cycle(own, _row_up([_steady(load, CONTINUOUS_S, "load")]), REPEATS, load.share, kind)
+            yield Cycle(own, _row_up([_continuous(load, coordinate)]), REPEATS, load.share, kind)
         return
     if kind != "S1" and not any(np.isfinite(load.start_s) for load in loads):
         problems.report(_TABLE, loads[0].row, "duty type", got=kind, allowed="worth knowing", remedy=_LEFT_OUT,
                         severity=NOTE)  # fmt: skip
     runs = SHORT_TIME if kind == "S2" else REPEATS
-    parts = _changes(loads) if kind == "S8" else _one_load(loads[0])
+    if kind == "S1":
+        parts: Iterable[Segment] = [_continuous(loads[0], coordinate)]
+    else:
+        parts = _changes(loads) if kind == "S8" else _one_load(loads[0])
     yield Cycle(name, _row_up(list(parts)), runs, duty_type=kind)
 
 
 def _one_load(load: _Load) -> Iterator[Segment]:
     """Start, load, braking and rest of one load, as far as its type has them."""
-    if load.duty_type == "S1":
-        yield _steady(load, CONTINUOUS_S, "load")
-        return
     operating, rest = (load.operating_s, 0.0) if load.duty_type == "S2" else _times(load)
     if np.isfinite(load.start_s):
         yield _ramp(load, 0.0, load.speed, load.start_s, "start")
@@ -247,6 +278,12 @@ def _changes(loads: list[_Load]) -> Iterator[Segment]:
             yield _ramp(load, before, load.speed, load.start_s, f"change to load {number}")
         yield _steady(load, load.operating_s, f"load {number}")
         before = load.speed
+
+
+def _continuous(load: _Load, coordinate: str) -> Segment:
+    """A load that never ends: one turn of it, where it turns, stands for all."""
+    turns = coordinate == ROTARY and load.speed != 0.0
+    return _steady(load, 2.0 * np.pi / abs(load.speed) if turns else _CONTINUOUS_S, "load")
 
 
 def _steady(load: _Load, duration_s: float, name: str) -> Segment:

@@ -118,7 +118,10 @@ def check_motion(
     for segment in segments:
         complaint, end = _first_complaint(mechanism, at_shaft, segment, origin)
         if complaint is not None:
-            problems.report(table, segment.row, complaint.quantity, got=complaint.got,
+            column = complaint.quantity
+            if table == "duty_types" and column == "displacement":
+                column = "operating time"  # which makes the way there
+            problems.report(table, segment.row, column, got=complaint.got,
                             allowed=complaint.allowed, remedy=complaint.remedy,
                             severity=complaint.severity)  # fmt: skip
         origin = end

@@ -251,6 +251,10 @@ COMMON_QUANTITIES = (
            assumed="the measured motion is kept", example="no"),
     Column("recorded torque constant", "torque constant", "torque at the driven shaft per ampere of the measured "
            "current", positive=True, example="", unit="Nm/A"),
+    Column("operating time per year", "time", "how long the axis runs its cycle in a year; for the energy of a year",
+           positive=True, maximum=3.1623e7, example="", unit="h"),
+    Column("price of energy per kWh", "price", "what a kilowatt-hour costs", minimum=0.0, maximum=1.0e6, example="",
+           unit="EUR"),
     Column("required life", "time", "operating hours the axis must reach", positive=True, example="20000",
            unit="h"),
     Column("driven shaft stiffness", "torsional stiffness", "stiffness between gearhead and load (coupling, "
@@ -366,8 +370,10 @@ DUTY_CYCLE_COLUMNS = (
 POINT_COLUMNS = (
     Column("segment", TEXT, "segment of the duty cycle with the motion law 'spline'", required=True,
            example="swing"),
-    Column("time", "time", "from the start of the segment; the first point is at 0", required=True, minimum=0.0,
-           maximum=1.0e9, example="0", unit="s"),
+    Column("time", "time", "from the start of the segment; the first point is at 0", minimum=0.0, maximum=1.0e9,
+           example="0", unit="s"),
+    Column("master angle", "angle", "instead of time: turn of the master shaft from the start of the segment, as a "
+           "cam law states it; needs 'cycles per minute'", minimum=0.0, maximum=6.2832, unit="deg"),
     Column("position", ("length", "angle"), "counted from anywhere; the first point is where the segment starts",
            required=True, example="0", unit=("mm", "deg")),
 )  # fmt: skip

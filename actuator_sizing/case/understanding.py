@@ -11,6 +11,7 @@ from actuator_sizing.case.columns import Column
 from actuator_sizing.case.courses import side_tables
 from actuator_sizing.case.cycles import understand_cycles
 from actuator_sizing.case.drives import understand_drives
+from actuator_sizing.case.duty_types import check_turns
 from actuator_sizing.case.fingerprint import fingerprint
 from actuator_sizing.case.gearheads import understand_gearheads
 from actuator_sizing.case.inertias import at_the_motor, table_entries, understand_parts, with_parts
@@ -77,6 +78,8 @@ def understand(
         for cycle in cycles:
             table = "duty_types" if cycle.duty_type else "duty_cycle"
             check_motion(mechanism, at_shaft, cycle.segments, problems, table)
+            if cycle.duty_type:
+                check_turns(cycle, mechanism, at_shaft, problems)
     parts = understand_parts(parsed.get("inertias"), axis.mechanism, problems)
     pulses = understand_pulses(parsed.get("resistor_pulses"), problems)
     motors, drives = parsed.get("motors"), parsed.get("drives")

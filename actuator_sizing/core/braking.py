@@ -18,6 +18,7 @@ FloatArray = NDArray[np.float64]
 
 _DECADES = 8  # of speed on which a stop is integrated; the last stretch to rest is one panel
 _ORDER = 16
+_NEWTON_STEPS = 5  # for the instant of the first current peak: to rounding
 _NO_OVERSHOOT = 12.0  # resistance over reactance from which the overshoot is below 1e-15
 
 
@@ -215,14 +216,13 @@ def shorted_current_peak(
     X = np.abs(reactance * speed_rad_s)
     with np.errstate(divide="ignore", invalid="ignore"):
         x = np.where(X > 0.0, resistance_ohm / np.where(X > 0.0, X, 1.0), np.inf)
-    low, high = np.zeros_like(x), np.full_like(x, np.pi)
     overshoots = x < _NO_OVERSHOOT
     x = np.where(overshoots, x, 1.0)
-    for _ in range(55):  # halvings of the bracket: to rounding
-        tau = 0.5 * (low + high)
-        before = x * np.cos(tau) + np.sin(tau) > x * np.exp(-x * tau)
-        low, high = np.where(before, tau, low), np.where(before, high, tau)
-    factor = np.hypot(1.0 - np.exp(-x * low) * np.cos(low), np.exp(-x * low) * np.sin(low))
+    tau = np.pi - np.arctan(x)  # the root but for the right side, which is small there
+    for _ in range(_NEWTON_STEPS):
+        fading = x * np.exp(-x * tau)
+        tau = tau - (x * np.cos(tau) + np.sin(tau) - fading) / (np.cos(tau) - x * np.sin(tau) + x * fading)
+    factor = np.hypot(1.0 - np.exp(-x * tau) * np.cos(tau), np.exp(-x * tau) * np.sin(tau))
     return np.asarray(steady * np.where(overshoots, np.maximum(factor, 1.0), 1.0))
 
 

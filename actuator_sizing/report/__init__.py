@@ -58,9 +58,9 @@ def write_report(
 
 def _own_names() -> tuple[str, ...]:
     """Names of files that a report may or may not have: one left by an earlier run would contradict it."""
-    from actuator_sizing.report.figures import DECISION_FIGURES, FIGURES
+    from actuator_sizing.report.figures import FIGURES, OPTIONAL_FIGURES
 
-    return ("sizing_report.pdf", *(f"figures/{key}.svg" for key in (*FIGURES, *DECISION_FIGURES)))
+    return ("sizing_report.pdf", *(f"figures/{key}.svg" for key in (*FIGURES, *OPTIONAL_FIGURES)))
 
 
 def render_report(
@@ -94,7 +94,7 @@ def render_report(
     from actuator_sizing.report.revision import revision_since
     from actuator_sizing.report.workbook import render_workbook
 
-    day = date if date is not None else _today()
+    day = report_day(date)
     figures = draw_figures(comparison)
     revision = None if since is None else revision_since(since, results_dict(comparison))
     document = prepare_document(comparison, day, figures, revision)
@@ -113,9 +113,11 @@ def render_report(
     return files | {f"figures/{figure.key}.svg": figure.svg for figure in figures.values()}
 
 
-def _today() -> date:
-    """Today, or the day that a reproducible build states."""
-    stated = os.environ.get("SOURCE_DATE_EPOCH", "").strip()
-    if stated.isdigit():
-        return datetime.fromtimestamp(int(stated), UTC).date()
+def report_day(stated: date | None) -> date:
+    """The day that stands on a report: the one asked for, else that of a reproducible build, else today."""
+    if stated is not None:
+        return stated
+    epoch = os.environ.get("SOURCE_DATE_EPOCH", "").strip()
+    if epoch.isdigit():
+        return datetime.fromtimestamp(int(epoch), UTC).date()
     return datetime.now().date()

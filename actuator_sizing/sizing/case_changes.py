@@ -34,7 +34,6 @@ def single(case: Case, motor: int, gearhead: int, drive: int) -> Case:
     Case
         With the parameters of one set; the catalogs' other columns go along. [-]
     """
-
     return replace(
         case,
         motors=case.motors.row(motor),

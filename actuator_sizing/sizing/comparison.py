@@ -111,7 +111,8 @@ def compare(
     Raises
     ------
     InputError
-        If no set can be formed at all, the ranking is not known, ratio windows are asked of a linear motor, or the checkpoint is one of another case.
+        If no set can be formed at all, the ranking is not known, ratio windows are asked of a linear motor, or the
+        checkpoint is one of another case.
     StoppedError
         If the screening is interrupted and a checkpoint keeps what was found.
     """

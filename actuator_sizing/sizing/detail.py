@@ -21,6 +21,7 @@ from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.checks.motor import current_limited_torque, rerated_continuous_current
 from actuator_sizing.sizing.results import SetDetail
 from actuator_sizing.sizing.set_model import SetModel
+from actuator_sizing.sizing.stop_courses import stop_courses
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -66,6 +67,7 @@ def set_detail(model: SetModel, sets: Sets, index: int) -> SetDetail:
         step_response=pd.DataFrame(dict(zip(("time_s", "current_a", "speed_rad_s"), step, strict=True))),
         levels=_levels(model, sets, index),
         segments=_segment_frame(model),
+        stops=stop_courses(sets.only(index)),
     )
 
 

@@ -44,7 +44,7 @@ def fits_axis(case: Case) -> tuple[NDArray[np.intp], NDArray[np.intp]]:
 
 
 def _moves_as_the_axis(case: Case) -> NDArray[np.bool_]:
-    return case.motor_parameters.is_linear == case.mechanism.drives_linear_motor
+    return np.asarray(case.motor_parameters.is_linear == case.mechanism.drives_linear_motor)
 
 
 def _overfed(case: Case) -> NDArray[np.bool_]:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
+from actuator_sizing.case.model import ONCE_COLD, ONCE_WARM, REPEATS, SHORT_TIME
 from actuator_sizing.core.machine import ASSUMED_HOT_WINDING_DEGC
 from actuator_sizing.core.thermal import altitude_factor
 
@@ -16,6 +17,13 @@ UNUSED_QUANTITIES = {"required life": ("gearhead_life", "shaft_bearing_life", "s
 
 #: Checks that judge a holding brake.
 BRAKE_CHECKS = ("holding_brake_static",)
+
+_RUNS = {
+    REPEATS: "repeats for ever",
+    SHORT_TIME: "starts from cold and is cold again before the next run",
+    ONCE_COLD: "runs once from cold, and the first repeating cycle follows",
+    ONCE_WARM: "runs once from the hottest state of the repeating cycles, the first of which follows",
+}
 
 _PARTS_NOT_CHECKED = {
     "belt": "stretch and life of the belt",
@@ -82,7 +90,7 @@ def model_statements(case: Case, best: SetResult) -> tuple[tuple[str, str], ...]
             "holding is taken without help from friction, its heat spread over all phases; with the brake "
             "closed no current flows",
         ),
-        ("model: cycle", "the cycle repeats for ever; dwell counts in RMS values"),
+        ("model: cycle", _cycles(case)),
         (
             "model: stiffness",
             "sizing takes load, gearhead and motor as one rigid body; resonance is simulated",
@@ -108,6 +116,13 @@ def model_statements(case: Case, best: SetResult) -> tuple[tuple[str, str], ...]
     return tuple(said)
 
 
+def _cycles(case: Case) -> str:
+    if len(case.cycles) < 2 and case.cycle.repeats:
+        return "the cycle repeats for ever; dwell counts in RMS values"
+    how = "; ".join(f"'{cycle.name}' {_RUNS[cycle.runs]}" for cycle in case.cycles)
+    return f"every cycle must pass by itself: {how}; dwell counts in RMS values"
+
+
 def _drive_rating(case: Case, best: SetResult) -> str:
     s, rated = case.surroundings, float(case.drive_parameters.continuous_ambient_degc[best.drive_index])
     text = "the currents of the drive are taken as stated, whatever the switching frequency"
@@ -121,7 +136,7 @@ def _drive_rating(case: Case, best: SetResult) -> str:
 def _holding_brake(case: Case, best: SetResult) -> list[tuple[str, str]]:
     """A brake that the cycle relies on and that no check of this set judged."""
     judged = any(check.check in BRAKE_CHECKS and check.utilisation is not None for check in best.checks)
-    if judged or not any(segment.brake_closed for segment in case.segments):
+    if judged or not any(segment.brake_closed for one in case.by_cycle() for segment in one.segments):
         return []
     torque = float(case.motor_parameters.brake_torque_nm[best.motor_index])
     stated = "" if torque == torque else f"; {best.motor} states none"

@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
-from actuator_sizing.core.machine import current_of_torque, judge
+from actuator_sizing.core.machine import current_of_torque, judge, judge_cold
 from actuator_sizing.core.parameters import DriveParameters, GearheadParameters, MotorParameters
 from actuator_sizing.core.quadrature import largest_magnitude
 from actuator_sizing.sizing.checks.base import Check, Sets
@@ -21,10 +21,11 @@ from actuator_sizing.sizing.checks.motor import (
     SPEED_TORQUE,
     VOLTAGE,
 )
+from actuator_sizing.sizing.cycles import CycleDemand
 from actuator_sizing.sizing.demand import Demand
-from actuator_sizing.sizing.evaluation import PairResults
+from actuator_sizing.sizing.evaluation import PairResults, voltage_extremes, worse_of
 from actuator_sizing.sizing.judging import is_binding
-from actuator_sizing.sizing.pair_course import course
+from actuator_sizing.sizing.pair_course import course, electrical_course
 from actuator_sizing.sizing.torque_plane import torque_plane
 
 FloatArray = NDArray[np.float64]
@@ -39,10 +40,14 @@ _WORST = 10.0
 
 @dataclass(frozen=True)
 class MotorLimits:
-    """How far motors are from their own limits on transmissions of any ratio."""
+    """How far motors are from their own limits on transmissions of any ratio, in the worst of the cycles."""
 
-    case: Case
-    demand: Demand
+    cycles: tuple[CycleDemand, ...]
+
+    @property
+    def case(self) -> Case:
+        """The case, with its first cycle."""
+        return self.cycles[0].case
 
     @cached_property
     def checks(self) -> tuple[Check, ...]:
@@ -56,19 +61,18 @@ class MotorLimits:
 
     def missing(self, motors: MotorParameters) -> list[tuple[str, ...]]:
         """Data without which a check cannot be made, by motor; empty where all is known."""
-        sets = self._sets(
-            motors, one_gearhead(1.0).take(np.zeros(len(motors), dtype=np.intp)), self._nothing(len(motors))
-        )
-        lacking: list[list[str]] = [[] for _ in range(len(motors))]
+        count = len(motors)
+        sets = self._sets(self.cycles[0], motors, _repeated(one_gearhead(1.0), count), self._nothing(count))
+        lacking: list[list[str]] = [[] for _ in range(count)]
         for check in self.checks:
+            if not any(check.concerns_cycle(each.cycle.runs) for each in self.cycles):
+                continue
             for need in check.needs:
                 if need.part != "motors":
                     continue
-                linear = bool(need.linear_column) and self.case.mechanism.drives_linear_motor
-                name = need.linear_column if linear else need.column
                 for row in np.flatnonzero(~need.known(sets)):
-                    if name not in lacking[row]:
-                        lacking[row].append(name)
+                    if need.column not in lacking[row]:
+                        lacking[row].append(need.column)
         return [tuple(names) for names in lacking]
 
     def excess(self, motors: MotorParameters, gearheads: GearheadParameters) -> tuple[FloatArray, IndexArray]:
@@ -82,7 +86,7 @@ class MotorLimits:
         Returns
         -------
         excess : ndarray, shape (B,)
-            At most 10; positive where a check fails. NaN where none can be made. [-]
+            At most 10; positive where a check fails. [-]
         check : ndarray of int, shape (B,)
             Index into `checks`. [-]
         """
@@ -95,31 +99,44 @@ class MotorLimits:
         for start in range(0, len(motors), _CHUNK):
             part = slice(start, start + _CHUNK)
             m, g = motors.take(part), gearheads.take(part)
-            sets = self._sets(m, g, self._pairs(m, g))
-            shares = np.stack([check.measure(sets).ratio() / self.allowed(check) for check in self.checks])
-            shares = np.where(np.isnan(shares), -1.0, np.minimum(shares, _WORST + 1.0))
+            shares = np.max([self._shares(each, m, g) for each in self.cycles], axis=0)
             yield shares.max(axis=0) - 1.0, shares.argmax(axis=0)
 
-    def _pairs(self, motors: MotorParameters, gearheads: GearheadParameters) -> PairResults:
+    def _shares(
+        self, each: CycleDemand, motors: MotorParameters, gearheads: GearheadParameters
+    ) -> FloatArray:
+        """Demand over what is allowed in one cycle, shape (C, B); below zero where a check does not concern it."""
+        sets = self._sets(each, motors, gearheads, self._pairs(each.demand, motors, gearheads))
+        shares = np.full((len(self.checks), len(motors)), -1.0)
+        for row, check in enumerate(self.checks):
+            if check.concerns_cycle(each.cycle.runs):
+                ratio = check.measure(sets).ratio() / self.allowed(check)
+                shares[row] = np.where(np.isnan(ratio), -1.0, np.minimum(ratio, _WORST + 1.0))
+        return shares
+
+    def _pairs(self, demand: Demand, motors: MotorParameters, gearheads: GearheadParameters) -> PairResults:
         """What the checks of the motor read of a pair; the rest is not evaluated."""
-        judged = judge(motors, self.case.surroundings)
-        c = course(self.demand, motors, gearheads, judged)
+        judged, cold = judge(motors, self.case.surroundings), judge_cold(motors, self.case.surroundings)
+        c = course(demand, motors, gearheads, judged)
+        c_cold = electrical_course(demand, c.torque_nm, c.motor_speed_rad_s, c.shaft_torque_nm, cold)
         torque_peak, piece, position = largest_magnitude(c.torque_nm)
-        with_L, without_L = largest_magnitude(c.voltage_v), largest_magnitude(c.voltage_without_inductance_v)
+        voltage = worse_of(voltage_extremes(demand, c), voltage_extremes(demand, c_cold), "voltage_peak_v")
+        plane = worse_of(
+            torque_plane(demand, c, judged), torque_plane(demand, c_cold, cold), "plane_utilisation"
+        )
         return replace(
             self._nothing(len(motors)),
             torque_peak_nm=torque_peak,
-            torque_peak_at_s=self.demand.instant(piece, position),
+            torque_peak_at_s=demand.instant(piece, position),
             current_peak_a=current_of_torque(
                 torque_peak, judged.torque_constant_nm_per_a, judged.saturation_per_a2
             ),
-            current_rms_a=np.sqrt(self.demand.mean(c.current_a**2)),
-            speed_peak_rad_s=gearheads.ratio * self.demand.shaft_speed_peak,
-            speed_rms_rad_s=gearheads.ratio * self.demand.shaft_speed_rms,
-            voltage_peak_v=np.maximum(with_L[0], without_L[0]),
+            current_rms_a=np.sqrt(demand.mean(c.current_a**2)),
+            speed_peak_rad_s=gearheads.ratio * demand.shaft_speed_peak,
+            speed_rms_rad_s=gearheads.ratio * demand.shaft_speed_rms,
             voltage_available_v=judged.voltage_available_v,
-            **torque_plane(self.demand, c, judged),  # type: ignore[arg-type]
-            resistance_ohm=judged.resistance_ohm,
+            **voltage,
+            **plane,
             torque_constant_nm_per_a=judged.torque_constant_nm_per_a,
         )
 
@@ -127,15 +144,18 @@ class MotorLimits:
     def _nothing(count: int) -> PairResults:
         return PairResults(**{f.name: np.full(count, np.nan) for f in fields(PairResults)})
 
-    def _sets(self, motors: MotorParameters, gearheads: GearheadParameters, pairs: PairResults) -> Sets:
+    @staticmethod
+    def _sets(
+        each: CycleDemand, motors: MotorParameters, gearheads: GearheadParameters, pairs: PairResults
+    ) -> Sets:
         """Sets of these pairs with a drive that never limits."""
         count = len(motors)
         nothing = np.full(count, np.nan)
         return Sets(
-            case=self.case,
+            case=each.case,
             index=np.zeros((count, 3), dtype=np.intp),
-            demand=self.demand,
-            surroundings=self.case.surroundings,
+            demand=each.demand,
+            surroundings=each.case.surroundings,
             recommended_inertia_ratio=np.nan,
             motors=motors,
             gearheads=gearheads,
@@ -147,6 +167,10 @@ class MotorLimits:
             overload_a2s=nothing,
             overload_at_s=nothing,
         )
+
+
+def _repeated(gearhead: GearheadParameters, count: int) -> GearheadParameters:
+    return gearhead.take(np.zeros(count, dtype=np.intp))
 
 
 def one_gearhead(

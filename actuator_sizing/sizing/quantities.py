@@ -7,6 +7,7 @@ from typing import Any
 import numpy as np
 
 from actuator_sizing.core.duty_types import usual_times
+from actuator_sizing.core.overload_heat import insulation_life_factor
 from actuator_sizing.core.parameters import CURRENT_BASES
 from actuator_sizing.core.permissible_load import LoadedMachine, intermittent_current, short_time_current
 from actuator_sizing.core.warm_up import temperatures_after, warm_up
@@ -14,6 +15,7 @@ from actuator_sizing.sizing.bus import bus_quantities
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.checks.drive_limits import pwm_ripple
 from actuator_sizing.sizing.checks.motor import current_limited_torque
+from actuator_sizing.sizing.energy import energy_quantities
 from actuator_sizing.sizing.set_model import SetModel
 from actuator_sizing.sizing.stops import stop_quantities
 
@@ -65,9 +67,18 @@ def quantities(model: SetModel, sets: Sets, index: int) -> dict[str, Any]:
     ripple, loss = pwm_ripple(sets)
     answer["pwm_ripple_current_a"], answer["pwm_ripple_loss_w"] = _known(ripple[index]), _known(loss[index])
     answer.update(bus_quantities(sets, index))
+    answer.update(energy_quantities(model, sets, index))
     answer.update(stop_quantities(sets, index))
     answer.update(_step_quantities(model))
+    answer["insulation_life_factor_ratio"] = _insulation_life(model, answer["winding_max_degc"])
     return answer
+
+
+def _insulation_life(model: SetModel, winding_max_degc: float | None) -> float | None:
+    """Life of the insulation over its life at the winding limit, by the rule of thumb; None where not known."""
+    if winding_max_degc is None:
+        return None
+    return _known(insulation_life_factor(winding_max_degc, float(model.motor.winding_limit_degc[0])))
 
 
 def _known(value: Any) -> float | None:

@@ -2,170 +2,40 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable
 from dataclasses import dataclass, replace
-from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
-from actuator_sizing.core.moments import gearhead_rows, mean_products, motor_columns
-from actuator_sizing.core.parameters import GearheadParameters
+from actuator_sizing.core.moments import (
+    gearhead_products,
+    gearhead_rows,
+    mean_products,
+    motor_columns,
+    motor_products,
+)
+from actuator_sizing.core.parameters import GearheadParameters, MotorParameters
 from actuator_sizing.core.ratio_windows import TorqueMoments, torque_moments
 from actuator_sizing.errors import InputError, Problem
-from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
 from actuator_sizing.sizing.checks.motor import MOTOR_SPEED, RMS_CURRENT, continuous_torque_squared
-from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.cycles import CycleDemand
 from actuator_sizing.sizing.fitting import fits_axis
 from actuator_sizing.sizing.motor_limits import MotorLimits, one_gearhead
-from actuator_sizing.sizing.ratio_search import RatioInterval, search_intervals
-
-if TYPE_CHECKING:
-    import pandas as pd
+from actuator_sizing.sizing.ratio_results import CatalogRatio, MotorWindow, RatioWindows
+from actuator_sizing.sizing.ratio_search import search_intervals
 
 FloatArray = NDArray[np.float64]
 IndexArray = NDArray[np.intp]
 
 _WIDEST = 1e6  # from one end of a search to the other, where nothing bounds it
-_BOUND_ROUNDING = 1e-5  # of the bounds, which are in single precision
+_ROUNDING = 1e-9  # what the exact evaluation may differ from the closed forms by
 _MOTORS_AT_A_TIME = 512
 
 
-@dataclass(frozen=True)
-class CatalogRatio:
-    """A transmission of the catalog with which one motor keeps its limits, with its own losses and inertia."""
-
-    gearhead: str  # empty: direct drive
-    ratio: float
-
-
-@dataclass(frozen=True)
-class MotorWindow:
-    """The ratios of one motor.
-
-    Attributes
-    ----------
-    motor : str
-        Its name.
-    motor_index : int
-        Its row in the catalog (0-based). [-]
-    intervals : tuple of RatioInterval
-        Closed set of ratios that keep every limit, ascending; empty where none does.
-    best_ratio : float
-        Ratio of the smallest RMS torque; infinite or NaN where there is none. [-]
-    best_torque_rms_nm : float
-        RMS torque there. [N·m]
-    power_rate : float
-        Square of the continuous torque near standstill over rotor inertia, in W/s. [-]
-    power_rate_needed : float
-        Square of the smallest RMS torque over rotor inertia: what the load asks of this motor at best,
-        in W/s. [-]
-    catalog : tuple of CatalogRatio
-        Transmissions of the catalog that keep every limit.
-    missing : tuple of str
-        Data without which the window is not known; it is then empty.
-    reason : str
-        Why there is no window; empty where there is one.
-    """
-
-    motor: str
-    motor_index: int
-    intervals: tuple[RatioInterval, ...]
-    best_ratio: float
-    best_torque_rms_nm: float
-    power_rate: float
-    power_rate_needed: float
-    catalog: tuple[CatalogRatio, ...]
-    missing: tuple[str, ...]
-    reason: str = ""
-
-    def as_mapping(self) -> Mapping[str, Any]:
-        """For results.json; an end without limit is None."""
-        return {
-            "motor": self.motor,
-            "known": not self.missing,
-            "missing": list(self.missing),
-            "reason": self.reason or None,
-            "windows": [interval.as_mapping() for interval in self.intervals],
-            "best_ratio": self.best_ratio,
-            "best_torque_rms_nm": self.best_torque_rms_nm,
-            "power_rate": self.power_rate,
-            "power_rate_needed": self.power_rate_needed,
-            "catalog": [{"gearhead": c.gearhead or None, "ratio": c.ratio} for c in self.catalog],
-        }
-
-
-@dataclass(frozen=True)
-class RatioWindows:
-    """Ratio windows of every motor that fits the axis.
-
-    Attributes
-    ----------
-    transmission : GearheadParameters
-        One row: losses and inertia that the windows are worked out with.
-    assumption : str
-        Where these come from, in words.
-    motors : tuple of MotorWindow
-        In the order of the catalog.
-    catalog_ratios : tuple of float
-        Every ratio of the catalog, ascending. [-]
-    """
-
-    transmission: GearheadParameters
-    assumption: str
-    motors: tuple[MotorWindow, ...]
-    catalog_ratios: tuple[float, ...]
-
-    def of(self, motor: str) -> MotorWindow:
-        """The window of one motor by its name.
-
-        Raises
-        ------
-        KeyError
-            If there is no such motor.
-        """
-        for window in self.motors:
-            if window.motor == motor:
-                return window
-        raise KeyError(motor)
-
-    @property
-    def table(self) -> pd.DataFrame:
-        """One row per motor and window; a motor without one has a row all the same."""
-        import pandas as pd
-
-        return pd.DataFrame([row for window in self.motors for row in _rows(window)])
-
-    def _repr_html_(self) -> str:
-        table = self.table.to_html(index=False, escape=True, float_format="{:.4g}".format, na_rep="-")
-        return f"<p>{self.assumption}</p>{table}"
-
-
-def _rows(window: MotorWindow) -> list[dict[str, Any]]:
-    """Rows of one motor for tables."""
-    intervals: tuple[RatioInterval | None, ...] = window.intervals or (None,)
-    return [
-        {
-            "motor": window.motor,
-            "ratio_from": np.nan if interval is None else interval.low,
-            "ratio_to": np.nan if interval is None else interval.high,
-            "bounded_below_by": "" if interval is None else interval.low_check,
-            "bounded_above_by": "" if interval is None else interval.high_check,
-            "best_ratio": window.best_ratio,
-            "best_torque_rms_nm": window.best_torque_rms_nm,
-            "power_rate": window.power_rate,
-            "power_rate_needed": window.power_rate_needed,
-            "catalog_ratios": ", ".join(f"{c.ratio:.5g}" for c in window.catalog),
-            "why_none": window.reason,
-        }
-        for interval in intervals
-    ]
-
-
 def ratio_windows(
-    case: Case,
-    demand: Demand,
+    cycles: tuple[CycleDemand, ...],
     *,
     transmission: GearheadParameters | None = None,
     progress: Callable[[float], None] | None = None,
@@ -174,10 +44,8 @@ def ratio_windows(
 
     Parameters
     ----------
-    case : Case
-        The case. [-]
-    demand : Demand
-        Its cycle. [-]
+    cycles : tuple of CycleDemand
+        The cycles of the case; a ratio must keep the limits in each of them. [-]
     transmission : GearheadParameters, optional
         One row with the losses and inertia to work with, its ratio of no account; by default the median
         efficiencies of the catalog's gearheads, or an ideal transmission where it has none. [-]
@@ -187,7 +55,8 @@ def ratio_windows(
     Returns
     -------
     RatioWindows
-        Closed sets of ratios that keep RMS, peak, speed and voltage, whatever drive comes after.
+        Closed sets of ratios that keep RMS, peak, speed and voltage, whatever drive comes after. The best ratio is
+        that of the first cycle.
 
     Raises
     ------
@@ -199,8 +68,9 @@ def ratio_windows(
     RMS torque and speed bound a window in closed form (`core.ratio_windows`); within it, and where the torque
     saturates, the ends are roots of the checks themselves, found to rounding, so that a ratio at an end passes.
     """
+    case = cycles[0].case
     motors, gearheads = fits_axis(case)
-    limits = MotorLimits(case, demand)
+    limits = MotorLimits(cycles)
     _refuse_hopeless(case, motors, limits)
     used, assumption = _transmission(case, gearheads) if transmission is None else (
         transmission, "transmission as given"
@@ -249,22 +119,27 @@ def _transmission(case: Case, gearheads: IndexArray) -> tuple[GearheadParameters
 def _of_motors(
     limits: MotorLimits, index: IndexArray, gearheads: IndexArray, transmission: GearheadParameters
 ) -> list[MotorWindow]:
-    case, demand = limits.case, limits.demand
+    case = limits.case
     motors = case.motor_parameters.take(index)
     missing = limits.missing(motors)
-    products = mean_products(demand.duration_s, demand.functions)
     rows = gearhead_rows(replace(transmission, ratio=np.ones(1)))[0]
     columns = motor_columns(
         motors.rotor_inertia_kg_m2, motors.friction_torque_nm, motors.viscous_friction_nm_s
     )
-    moments = [torque_moments(products, rows, column) for column in columns]
     rating = continuous_torque_squared(motors, case.surroundings)
-    closed = [
-        _ClosedForm((), np.inf)
-        if missing[i]
-        else _ClosedForm.of(limits, moments[i], rating[:, i], float(motors.speed_max_rad_s[i]))
-        for i in range(len(motors))
-    ]
+    by_cycle = []
+    for each in limits.cycles:
+        products = mean_products(each.demand.duration_s, each.demand.functions)
+        by_cycle.append([torque_moments(products, rows, column) for column in columns])
+    moments = by_cycle[0]
+    closed = []
+    for i in range(len(motors)):
+        form = _ClosedForm((), np.inf)
+        if not missing[i]:
+            form = _ClosedForm(((0.0, np.inf),), np.inf)
+            for each, of_cycle in zip(limits.cycles, by_cycle, strict=True):
+                form = form.within(limits, each, of_cycle[i], rating[:, i], float(motors.speed_max_rad_s[i]))
+        closed.append(form)
     outer = [form.searched for form in closed]
     found = search_intervals(limits, motors, transmission, outer)
     inside = _catalog(limits, index, gearheads, [bool(m) for m in missing])
@@ -297,21 +172,25 @@ class _ClosedForm:
     rms: tuple[tuple[float, float], ...]
     top: float  # by speed
 
-    @classmethod
-    def of(
-        cls, limits: MotorLimits, moments: TorqueMoments, rating: FloatArray, speed_max: float
+    def within(
+        self,
+        limits: MotorLimits,
+        each: CycleDemand,
+        moments: TorqueMoments,
+        rating: FloatArray,
+        speed_max: float,
     ) -> _ClosedForm:
-        keys = {check.key for check in limits.checks}
-        top = np.inf
-        if MOTOR_SPEED.key in keys and limits.demand.shaft_speed_peak > 0.0:
-            top = limits.allowed(MOTOR_SPEED) * speed_max / limits.demand.shaft_speed_peak
-        intervals: tuple[tuple[float, float], ...] = ((0.0, np.inf),)
-        if RMS_CURRENT.key in keys:
-            speed = limits.demand.shaft_speed_rms
+        """What is left of it when one more cycle must be kept."""
+        top, rms = self.top, self.rms
+        if MOTOR_SPEED in limits.checks and each.demand.shaft_speed_peak > 0.0:
+            top = min(top, limits.allowed(MOTOR_SPEED) * speed_max / each.demand.shaft_speed_peak)
+        if RMS_CURRENT in limits.checks and RMS_CURRENT.concerns_cycle(each.cycle.runs):
+            speed = each.demand.shaft_speed_rms
             # Saturation only asks for more current than this.
             l_0, l_1, l_2 = limits.allowed(RMS_CURRENT) ** 2 * rating * np.array([1.0, speed, speed**2])
-            intervals = moments.ratios_within((float(l_0), float(l_1), float(l_2)))
-        return cls(intervals, top)
+            kept = moments.ratios_within((float(l_0), float(l_1), float(l_2)))
+            rms = tuple((max(a, c), min(b, d)) for a, b in rms for c, d in kept if max(a, c) <= min(b, d))
+        return _ClosedForm(rms, top)
 
     @property
     def searched(self) -> tuple[tuple[float, float], ...]:
@@ -338,21 +217,15 @@ def _finite(low: float, high: float) -> tuple[float, float]:
 def _catalog(
     limits: MotorLimits, index: IndexArray, gearheads: IndexArray, unknown: list[bool]
 ) -> list[tuple[CatalogRatio, ...]]:
-    """Transmissions of the catalog that keep the limits of each motor, by bounds first and then exactly."""
-    case, demand = limits.case, limits.demand
+    """Transmissions of the catalog that keep the limits of each motor, by RMS torque and speed, then exactly."""
+    case = limits.case
     motors, catalog = case.motor_parameters.take(index), case.gearhead_parameters.take(gearheads)
     names = [case.gearheads.names[int(g)] for g in gearheads]
     if not len(gearheads):
         return [()] * len(index)
-    block = Block(
-        demand, case.surroundings, np.nan, MotorSide.of(motors, case.surroundings),
-        GearheadSide.of(catalog, demand).part(slice(0, None)),
-    )  # fmt: skip
     possible = np.broadcast_to(~np.array(unknown)[None, :], (len(gearheads), len(index))).copy()
-    with np.errstate(over="ignore"):
-        for check in limits.checks:
-            assert check.bound is not None
-            possible &= ~(check.bound(block) / limits.allowed(check) > 1.0 + _BOUND_ROUNDING)
+    for each in limits.cycles:
+        possible &= _possible(limits, each, motors, catalog)
     row, column = np.nonzero(possible)  # gearhead, motor
     inside: list[list[CatalogRatio]] = [[] for _ in index]
     if len(row):
@@ -360,3 +233,26 @@ def _catalog(
         for g, m in zip(row[excess <= 0.0], column[excess <= 0.0], strict=True):
             inside[m].append(CatalogRatio(names[g], float(catalog.ratio[g])))
     return [tuple(sorted(found, key=lambda c: (c.ratio, c.gearhead))) for found in inside]
+
+
+def _possible(
+    limits: MotorLimits, each: CycleDemand, motors: MotorParameters, catalog: GearheadParameters
+) -> NDArray[np.bool_]:
+    """Which motors keep speed and, saturation left out, RMS torque on which gearheads, shape (N, M)."""
+    demand = each.demand
+    n = catalog.ratio[:, None]
+    possible = np.ones((len(catalog), len(motors)), dtype=bool)
+    if MOTOR_SPEED in limits.checks:
+        most = limits.allowed(MOTOR_SPEED) * motors.speed_max_rad_s * (1.0 + _ROUNDING)
+        possible &= ~(n * demand.shaft_speed_peak > most)
+    if RMS_CURRENT in limits.checks and RMS_CURRENT.concerns_cycle(each.cycle.runs):
+        columns = motor_columns(
+            motors.rotor_inertia_kg_m2, motors.friction_torque_nm, motors.viscous_friction_nm_s
+        )
+        products = mean_products(demand.duration_s, demand.functions)
+        square = (motor_products(columns) @ gearhead_products(products, gearhead_rows(catalog))).T
+        omega = n * demand.shaft_speed_rms
+        a, b, c = continuous_torque_squared(motors, limits.case.surroundings)
+        most = limits.allowed(RMS_CURRENT) ** 2 * (a + b * omega + c * omega**2)
+        possible &= ~(square > most + _ROUNDING * np.abs(a))
+    return possible

@@ -17,10 +17,10 @@ if TYPE_CHECKING:
     from actuator_sizing.sizing.demand import Demand
     from actuator_sizing.sizing.headroom import Headroom
     from actuator_sizing.sizing.levers import LeverStudy
-    from actuator_sizing.sizing.ratio_windows import RatioWindows
+    from actuator_sizing.sizing.ratio_results import RatioWindows
     from actuator_sizing.sizing.simulation_results import Simulation
-    from actuator_sizing.sizing.trade_offs import TradeOffs
     from actuator_sizing.sizing.stop_courses import StopCourses
+    from actuator_sizing.sizing.trade_offs import TradeOffs
 
 PASSES = "passes"
 LOW_RESERVE = "passes, low reserve"

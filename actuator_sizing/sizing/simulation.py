@@ -6,6 +6,7 @@ import math
 from collections.abc import Mapping
 from typing import TYPE_CHECKING, Any
 
+from actuator_sizing.case.columns import fold
 from actuator_sizing.case.model import Case
 from actuator_sizing.core.parameters import CURRENT_BASES
 from actuator_sizing.core.plant import Plant
@@ -48,6 +49,7 @@ def simulate(
     winding_degc: float = math.nan,
     settling_band: float = math.nan,
     cycles: int = 1,
+    cycle: str = "",
 ) -> Simulation:
     """Simulate one set of motor, gearhead and drive.
 
@@ -71,6 +73,8 @@ def simulate(
         Half width in the coordinate of the load, m or rad; NaN: what the case says. [-]
     cycles : int
         How many cycles are run one after another; only for ``"cycle"``. [-]
+    cycle : str
+        Name of the cycle, where the case has several; the first one when empty. [-]
 
     Returns
     -------
@@ -87,8 +91,9 @@ def simulate(
     Between samples the plant is propagated exactly; friction that depends on load, and a ratio that changes,
     act as they would on the planned motion.
     """
-    demand = build_demand(case, in_order=True)
     parts = find_set(case, motor, gearhead, drive)
+    case = _of_cycle(case, cycle)
+    demand = build_demand(case, in_order=True)
     check_finite("rate_hz", rate_hz, "a sampling rate > 0 up to 1 MHz", 0.0, 1.0e6)
     check_finite("settling_band", settling_band, "a band > 0", 0.0, math.inf)
     check_finite("winding_degc", winding_degc, "−60 to 400 °C", -60.0, 400.0)
@@ -114,6 +119,18 @@ def in_order(case: Case, demand: Demand) -> Demand:
         The same cycle. [-]
     """
     return demand if demand.heat_start is None else build_demand(case, in_order=True)
+
+
+def _of_cycle(case: Case, name: str) -> Case:
+    """The case with one of its cycles, by name; the first where none is asked for."""
+    several = case.by_cycle()
+    for each in several:
+        if not name or fold(each.cycle.name) == fold(name):
+            return each
+    known = ", ".join(f"'{each.cycle.name}'" for each in several if each.cycle.name)
+    raise wrong(
+        "cycle", f"'{name}'", known or "a case that names cycles", "Choose one of the cycles of the case."
+    )
 
 
 def simulate_prepared(case: Case, demand: Demand, parts: tuple[int, int, int]) -> Simulation | None:

@@ -146,6 +146,9 @@ def _chunk(
     row = np.arange(len(distance))
     unknown = np.isnan(delay[:, 0]) | (np.isnan(torque) if torque is not None else False)
     worst = np.where(np.isnan(distance), -1.0, distance).argmax(axis=1)
+    endless = np.isinf(distance)
+    fastest_endless = np.where(endless, found.braking_speed_rad_s, -1.0).argmax(axis=1)
+    worst = np.where(endless.any(axis=1), fastest_endless, worst)
     fastest = found.braking_speed_rad_s.max(axis=1)
     current = shorted_current_peak(fastest, *(value[:, 0, 0] for value in (R, K, X)))
     slowing = (load + friction) / at.inertia_kg_m2

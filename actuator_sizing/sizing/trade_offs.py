@@ -134,7 +134,9 @@ class TradeOffs:
         }
 
 
-def trade_offs(case: Case, several: tuple[Sets, ...], verdicts: Verdicts, index: IndexArray, order: IndexArray) -> TradeOffs:
+def trade_offs(
+    case: Case, several: tuple[Sets, ...], verdicts: Verdicts, index: IndexArray, order: IndexArray
+) -> TradeOffs:
     """Find the sets that no other one beats.
 
     Parameters

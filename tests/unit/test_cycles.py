@@ -10,13 +10,14 @@ from actuator_sizing.case.model import ONCE_COLD, ONCE_WARM, REPEATS, SHORT_TIME
 from actuator_sizing.case.reading import check_case, read_case
 from actuator_sizing.core.thermal import periodic_state, steady_state, temperatures_after
 from actuator_sizing.core.thermal_run import single_run
-from actuator_sizing.errors import ERROR
+from actuator_sizing.errors import ERROR, InputError
 from actuator_sizing.sizing.comparison import compare
 from actuator_sizing.sizing.cycles import cycle_demands, evaluate_cycles
 from actuator_sizing.sizing.judging import active_checks, judge_sets
 from actuator_sizing.sizing.levers import LEVERS, excess, single, smallest_change
 from actuator_sizing.sizing.screening import screen
 from actuator_sizing.sizing.set_model import SetModel
+from actuator_sizing.sizing.simulation import simulate
 from tests.made_cases import DRIVE, GEARHEAD, MOTOR, case, cycle
 from tests.unit.case_files import small_case, write_folder
 
@@ -313,3 +314,64 @@ def test_a_mix_of_one_cycle_with_itself_is_that_cycle():
 
 def test_without_shares_there_is_no_mix():
     assert compare(several(NORMAL, WORST)).best.mix is None
+
+
+# -- a cam law, and one cycle of several simulated -------------------------------------------------------
+
+
+def cam(*points: list[object], head: str = "master angle [deg]", pace: float | str = 60):
+    tables = small_case()
+    tables["axis"].append(["cycles per minute", pace, "", ""])
+    tables["duty_cycle"] = [
+        ["segment", "motion law", "displacement [mm]", "master angle [deg]"],
+        ["cam", "spline", "", ""],
+        ["back", "cycloidal", -40, 120],
+        ["wait", "dwell", "", 60],
+    ]
+    tables["points"] = [["segment", head, "position [mm]"], *(["cam", *point] for point in points)]
+    return tables
+
+
+def test_a_cam_law_is_stated_over_the_master_angle(tmp_path):
+    points = ([0, 0], [60, 10], [120, 32], [180, 40])
+    by_angle = read_case(write_folder(tmp_path / "a", cam(*points)))
+    by_time = cam(*([angle / 360.0, x] for angle, x in points), head="time [s]")
+    by_time["duty_cycle"] = [["segment", "motion law", "displacement [mm]", "duration [s]"],
+                             ["cam", "spline", "", ""], ["back", "cycloidal", -40, 120 / 360],
+                             ["wait", "dwell", "", 60 / 360]]  # fmt: skip
+    timed = read_case(write_folder(tmp_path / "b", by_time))
+    assert by_angle.cycle_duration_s == pytest.approx(1.0)
+    for a, b in zip(by_angle.segments, timed.segments, strict=True):
+        for p, q in zip(a.phases, b.phases, strict=True):
+            assert p.duration_s == pytest.approx(q.duration_s, rel=1e-9)
+            assert p.end() == pytest.approx(q.end(), rel=1e-9, abs=1e-12)
+
+
+@pytest.mark.parametrize(
+    ("tables", "got"),
+    [
+        (cam([0, 0], ["", 10], [180, 40]), "neither time nor master angle"),
+        (cam([0, 0], [90, 10], [170, 40]), "350° in all"),
+        (cam([0, 0], [90, 10], [180, 40], pace=""), "a master angle without pace"),
+    ],
+)
+def test_a_cam_law_with_mistakes_is_told(tmp_path, tables, got):
+    understood, problems = check_case(write_folder(tmp_path, tables))
+    assert understood is None
+    assert any(got in p.got for p in problems if p.severity == ERROR)
+
+
+def test_one_cycle_of_several_is_simulated(tmp_path):
+    made = several(NORMAL, WORST, options={"driven shaft stiffness": 2e4})
+    made = replace(
+        made, drives=replace(made.drives, values={**made.drives.values, "control_rate": np.array([4000.0])})
+    )
+    parts = {
+        "motor": made.motors.names[0],
+        "gearhead": made.gearheads.names[1],
+        "drive": made.drives.names[0],
+    }
+    first, named = simulate(made, **parts), simulate(made, cycle="Worst", **parts)
+    assert named.quantities["current_peak_a"] > first.quantities["current_peak_a"]
+    with pytest.raises(InputError, match="'normal', 'worst'"):
+        simulate(made, cycle="best", **parts)

@@ -7,8 +7,10 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from actuator_sizing.case.cycle_columns import DUTY_TYPES
 from actuator_sizing.case.model import REPEATS, SHORT_TIME, Cycle
 from actuator_sizing.case.reading import check_case, read_case
+from actuator_sizing.case.starting import start_case
 from actuator_sizing.core.duty_types import loaded_time, relative_life
 from actuator_sizing.core.permissible_load import (
     LoadedMachine,
@@ -16,7 +18,7 @@ from actuator_sizing.core.permissible_load import (
     rest_time,
     short_time_current,
 )
-from actuator_sizing.errors import ERROR, NOTE
+from actuator_sizing.errors import ERROR, NOTE, InputError
 from actuator_sizing.sizing.comparison import compare
 from actuator_sizing.sizing.cycles import cycle_demands, evaluate_cycles
 from actuator_sizing.sizing.results import NOT_CHECKED
@@ -189,3 +191,29 @@ def test_a_short_time_duty_is_sized_by_its_temperature(tmp_path):
     # The small case states no thermal data: what takes the place of the RMS current is asked for, not passed.
     assert best.check("winding_temperature").verdict == NOT_CHECKED
     assert best.verdict == NOT_CHECKED
+
+
+@pytest.mark.parametrize("duty_type", DUTY_TYPES)
+@pytest.mark.parametrize("mechanism", ["rotary load", "conveyor", "linear motor", "crank-slider"])
+def test_a_case_started_with_a_duty_type_sizes_to_a_result(tmp_path, mechanism, duty_type):
+    start_case(tmp_path / "new", mechanism, duty_type=duty_type)
+    made = read_case(tmp_path / "new")
+    assert {c.duty_type for c in made.cycles} == {duty_type}
+    assert compare(made).passes
+
+
+def test_start_refuses_a_duty_type_that_it_does_not_know(tmp_path):
+    with pytest.raises(InputError, match="S1, S2"):
+        start_case(tmp_path / "new", duty_type="S9")
+    with pytest.raises(InputError, match="mechanism"):
+        start_case(tmp_path / "new", "toggle lever", duty_type="S1")
+
+
+def test_many_turns_of_a_changing_ratio_are_refused(tmp_path):
+    start_case(tmp_path / "new", "crank-slider", duty_type="S3")
+    table = tmp_path / "new" / "duty_types.csv"
+    table.write_text(table.read_text(encoding="utf-8-sig").replace(",8,", ",80,"), encoding="utf-8")
+    _, problems = check_case(tmp_path / "new")
+    (found,) = [p for p in problems if p.severity == ERROR]
+    assert (found.table, found.column) == ("duty_types", "operating time")
+    assert "turns of a crank-slider" in found.got

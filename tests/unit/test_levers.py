@@ -5,6 +5,7 @@ import pytest
 
 from actuator_sizing.sizing.case_changes import single
 from actuator_sizing.sizing.comparison import compare
+from actuator_sizing.sizing.cycles import cycle_demands
 from actuator_sizing.sizing.demand import build_demand
 from actuator_sizing.sizing.levers import LEVERS, levers_of, smallest_change
 from actuator_sizing.sizing.resizing import RESERVE, Resizing
@@ -123,7 +124,7 @@ TWICE_WRONG = lift(motor={**MOTOR, "continuous_current_a": 2.9, "speed_max_rad_s
 
 @pytest.fixture(scope="module")
 def twice_wrong():
-    return levers_of(TWICE_WRONG, build_demand(TWICE_WRONG), 0, 0, 0)
+    return levers_of(cycle_demands(TWICE_WRONG), 0, 0, 0)
 
 
 def test_the_cheapest_pair_passes_costs_less_than_one_lever_and_needs_both(twice_wrong):

@@ -6,6 +6,7 @@ import pytest
 from actuator_sizing.core.moments import gearhead_rows, mean_products, motor_columns
 from actuator_sizing.core.ratio_windows import TorqueMoments, load_factor, torque_moments
 from actuator_sizing.errors import InputError
+from actuator_sizing.sizing.cycles import cycle_demands
 from actuator_sizing.sizing.demand import build_demand
 from actuator_sizing.sizing.evaluation import evaluate_pairs
 from actuator_sizing.sizing.motor_limits import one_gearhead
@@ -46,7 +47,7 @@ def demand(made):
 
 @pytest.fixture(scope="module")
 def windows(made, demand):
-    return ratio_windows(made, demand)
+    return ratio_windows(cycle_demands(made))
 
 
 def passes(made, demand, motor, ratios, transmission):
@@ -191,7 +192,7 @@ def test_two_separate_intervals_and_none():
 def test_an_axis_that_only_holds_has_no_upper_limit():
     held = cycle({"law": "dwell", "duration_s": 2.0, "process_effort": 30.0})
     made = case("rotary load", TABLE, held, motors=[MOTOR], gearheads=[DIRECT, GEARHEAD])
-    window = ratio_windows(made, build_demand(made)).motors[0]
+    window = ratio_windows(cycle_demands(made)).motors[0]
     (part,) = window.intervals
     assert part.high_check == ""
     assert part.as_mapping()["to"] is None
@@ -204,7 +205,7 @@ def test_a_linear_motor_and_an_empty_catalog_are_told_apart(made):
     )
     linear = case("linear motor", {"moving mass": 6.0}, carriage, motors=[{**MOTOR, "is_linear": True}])
     with pytest.raises(InputError, match="linear motor has no transmission"):
-        ratio_windows(linear, build_demand(linear))
+        ratio_windows(cycle_demands(linear))
     nothing = turning(motors=[{**MOTOR, "is_linear": True}])
     with pytest.raises(InputError, match="no motor that fits the axis"):
-        ratio_windows(nothing, build_demand(nothing))
+        ratio_windows(cycle_demands(nothing))

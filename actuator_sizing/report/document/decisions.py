@@ -16,7 +16,7 @@ if TYPE_CHECKING:
     from collections.abc import Iterable, Mapping
 
     from actuator_sizing.report.document.blocks import Block
-    from actuator_sizing.sizing.ratio_windows import MotorWindow
+    from actuator_sizing.sizing.ratio_results import MotorWindow
     from actuator_sizing.sizing.results import Comparison
     from actuator_sizing.sizing.trade_offs import TradeOff
 
@@ -107,8 +107,8 @@ def _ratio_windows(comparison: Comparison, figures: set[str]) -> Section | None:
     blocks: list[Block] = [
         Paragraph(
             "The ratios at which each motor keeps RMS torque, peak, speed and voltage on this cycle, whatever drive "
-            f"comes after, with a {windows.assumption}. A catalog ratio counts with the losses and inertia of "
-            "its own gearhead; ratio 1 is direct drive. The best ratio has the smallest RMS torque; the power rate is the "
+            f"comes after, with a {windows.assumption}. A catalog ratio counts with losses and inertia of its own "
+            "gearhead; ratio 1 is direct drive. The best ratio has the smallest RMS torque; the power rate is the "
             "square of the continuous torque over rotor inertia, and what the load asks for is its value at the best "
             "ratio."
         )

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
@@ -19,6 +20,7 @@ from actuator_sizing.report.figures.payload_map import draw_payload_map
 from actuator_sizing.report.figures.ratio_windows import draw_ratio_windows
 from actuator_sizing.report.figures.speed_torque import draw_speed_torque
 from actuator_sizing.report.figures.step import draw_step_response
+from actuator_sizing.report.figures.stopping import draw_stops
 from actuator_sizing.report.figures.style import house_style, to_svg
 from actuator_sizing.report.figures.temperature import draw_temperature
 from actuator_sizing.report.figures.trade_offs import draw_trade_offs
@@ -28,9 +30,9 @@ from actuator_sizing.report.figures.utilisation import draw_utilisation
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
-    from actuator_sizing.sizing.results import Comparison
+    from actuator_sizing.sizing.results import Comparison, SetDetail
 
-__all__ = ["DECISION_FIGURES", "FIGURES", "DrawnFigure", "draw", "draw_figures", "house_style", "to_svg"]
+__all__ = ["FIGURES", "OPTIONAL_FIGURES", "DrawnFigure", "draw", "draw_figures", "house_style", "to_svg"]
 
 #: Keys of all figures, which name their files.
 FIGURES = (
@@ -43,8 +45,8 @@ FIGURES = (
     "step_response",
     "cycles",
 )
-#: Of what is shown only where it was asked for, or where several sets pass.
-DECISION_FIGURES = ("trade_offs", "ratio_windows", "payload_map")
+#: Keys of figures that only some cases ask for, or a question beyond pass and fail.
+OPTIONAL_FIGURES = ("stops", "trade_offs", "ratio_windows", "payload_map")
 
 
 @dataclass(frozen=True)
@@ -88,15 +90,16 @@ def draw(comparison: Comparison, key: str) -> Figure | None:
     comparison : Comparison
         The answer; the figure shows its best set.
     key : str
-        One of `FIGURES` or `DECISION_FIGURES`.
+        One of `FIGURES` or `OPTIONAL_FIGURES`.
 
     Raises
     ------
     ValueError
         If there is no figure of that name.
     """
-    if key not in (*FIGURES, *DECISION_FIGURES):
-        raise ValueError(f"No figure {key!r}; there are {', '.join((*FIGURES, *DECISION_FIGURES))}.")
+    known = (*FIGURES, *OPTIONAL_FIGURES)
+    if key not in known:
+        raise ValueError(f"No figure {key!r}; there are {', '.join(known)}.")
     with house_style():
         make = _figures_of(comparison).get(key)
         return None if make is None else make()
@@ -123,6 +126,7 @@ def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]
         "current": lambda: draw_current(best, detail),
         "temperature": lambda: draw_temperature(detail),
         "step_response": lambda: draw_step_response(best, detail, units),
+        **_stop_figures(comparison, detail, units),
         **_dynamic_figures(comparison),
     } | figures
 
@@ -141,6 +145,18 @@ def _decision_figures(comparison: Comparison) -> dict[str, Callable[[], Figure |
         currency = comparison.case.motors.entered_units.get("price", "")
         figures["trade_offs"] = lambda: draw_trade_offs(found, currency)
     return figures
+
+
+def _stop_figures(
+    comparison: Comparison, detail: SetDetail, units: AxisUnits
+) -> dict[str, Callable[[], Figure | None]]:
+    """How the leading set stops, where the case asks for it."""
+    stops = detail.stops
+    if stops is None:
+        return {}
+    value = comparison.case.options.get("allowed stopping distance")
+    allowed = float(value) if isinstance(value, int | float) else math.nan
+    return {"stops": lambda: draw_stops(stops, units, allowed)}
 
 
 def _dynamic_figures(comparison: Comparison) -> dict[str, Callable[[], Figure | None]]:

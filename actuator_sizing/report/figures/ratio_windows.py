@@ -14,7 +14,7 @@ if TYPE_CHECKING:
     from matplotlib.axes import Axes
     from matplotlib.figure import Figure
 
-    from actuator_sizing.sizing.ratio_windows import MotorWindow, RatioWindows
+    from actuator_sizing.sizing.ratio_results import MotorWindow, RatioWindows
 
 #: Rows that one page carries.
 MOST_ROWS = 20

@@ -20,6 +20,7 @@ from actuator_sizing.core.parameters import (
 if TYPE_CHECKING:
     from actuator_sizing.case.model import Case
     from actuator_sizing.sizing.block import Block
+    from actuator_sizing.sizing.bounds import Bound
     from actuator_sizing.sizing.demand import Demand
     from actuator_sizing.sizing.dynamic_results import DynamicResults
     from actuator_sizing.sizing.evaluation import PairResults
@@ -183,6 +184,8 @@ def _always(sets: Sets) -> NDArray[np.bool_]:
 SUSTAINED = (REPEATS,)
 #: Wear counts what is done often, from warm or from cold.
 OFTEN = (REPEATS, SHORT_TIME)
+
+
 def everywhere(value: float, sets: Sets) -> FloatArray:
     """The same value for every set, shape (S,), in its own unit. [-]"""
     return np.full(len(sets), value)
@@ -229,9 +232,7 @@ class Check:
     measure : callable
         Sets → Measure.
     bound : callable or None
-        Screening block → lower bound of the utilisation, broadcastable to (M, N); NaN where not known.
-    drive_bound : callable or None
-        The same for the part that depends on the drive: (pairs, drives) → (K, D).
+        Screening block → lower bound of the utilisation, as `sizing.bounds` declares it.
     working : callable
         (sets, index) → the formula with its numbers put in.
     applies : callable
@@ -260,7 +261,7 @@ class Check:
     needs: tuple[Need, ...]
     measure: Callable[[Sets], Measure]
     working: Callable[[Sets, int], str]
-    bound: Callable[[Block], FloatArray] | None = None
+    bound: Callable[[Block], Bound] | None = None
     applies: Callable[[Sets], NDArray[np.bool_]] = _always
     linear_unit: str = ""
     is_advice: bool = False

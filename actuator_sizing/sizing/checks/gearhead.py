@@ -8,6 +8,7 @@ from numpy.typing import NDArray
 from actuator_sizing.core.life import BALL_EXPONENT, ROLLER_EXPONENT
 from actuator_sizing.core.quadrature import integrate
 from actuator_sizing.sizing.block import Block
+from actuator_sizing.sizing.bounds import Bound, Form, Ratio, single
 from actuator_sizing.sizing.checks.base import (
     OFTEN,
     SUSTAINED,
@@ -148,9 +149,11 @@ def _inertia_measure(sets: Sets) -> Measure:
     return Measure(sets.pairs.inertia_ratio, everywhere(sets.recommended_inertia_ratio, sets))
 
 
-def _inertia_bound(block: Block) -> FloatArray:
-    reflected = block.demand.load_inertia / block.gearheads.ratio**2
-    return reflected[:, None] / block.motors.rotor_inertia_kg_m2 / block.recommended_inertia_ratio
+def _inertia_bound(block: Block) -> Bound:
+    reflected = block.demand.load_inertia / block.gearheads.ratio**2 / block.recommended_inertia_ratio
+    with np.errstate(divide="ignore"):
+        per_rotor = 1.0 / block.motors.rotor_inertia_kg_m2
+    return (Ratio(top=Form(single(reflected)[:, None], single(per_rotor)[None, :])),)
 
 
 def _inertia_working(sets: Sets, i: int) -> str:

@@ -17,7 +17,7 @@ from actuator_sizing.sizing.edge_search import narrowed, walk
 from actuator_sizing.sizing.headroom.declared import Extent, extents
 from actuator_sizing.sizing.headroom.payload_map import MapRow, PayloadMap, changed_case, payload_map
 from actuator_sizing.sizing.resizing import Outcome, Resizing
-from actuator_sizing.sizing.simulation import find_set
+from actuator_sizing.sizing.simulation_request import find_set
 
 if TYPE_CHECKING:
     import pandas as pd

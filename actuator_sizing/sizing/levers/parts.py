@@ -100,9 +100,7 @@ def other_parts(
 class _Trial:
     """Other parts of one catalog in a set; each is evaluated once, however it is ordered."""
 
-    def __init__(
-        self, cycles: tuple[CycleDemand, ...], case: Case, base: IndexArray, column: int, goal: str
-    ):
+    def __init__(self, cycles: tuple[CycleDemand, ...], case: Case, base: IndexArray, column: int, goal: str):
         self._cycles, self._case = cycles, case
         self._base, self._column, self._goal = base, column, goal
         self._passes: dict[int, bool] = {}
