@@ -247,6 +247,9 @@ COMMON_QUANTITIES = (
            positive=True, maximum=1.0e7, example="", unit="s"),
     Column("smoothing cut-off", "frequency", "measured motion is not followed above this frequency; it is a choice "
            "that decides the acceleration", positive=True, maximum=1.0e6, example="", unit="Hz"),
+    Column("standstill speed", ("linear speed", "angular speed"), "a measured motion slower than this throughout "
+           "half a period of the cut-off is taken as standstill; one thousandth of its peak when empty",
+           minimum=0.0, example="", unit=("m/s", "rpm")),
     Column("remove drift", YES_NO, "whether the measured cycle is bent back so that it closes", default="no",
            assumed="the measured motion is kept", example="no"),
     Column("recorded torque constant", "torque constant", "torque at the driven shaft per ampere of the measured "
@@ -400,6 +403,8 @@ MEASURED_COLUMNS = (
            unit=("N", "N·m"), aliases=("load torque", "load effort")),
     Column("shaft torque", "torque", "all that the driven shaft must give, losses of the mechanism included",
            unit="N·m"),
+    Column("payload", ("mass", "inertia"), "carried at that instant, straight between samples",
+           minimum=0.0, example=("", ""), unit=("kg", "kg·m²")),
     Column("current", "current", "of the motor that drove the axis; needs 'recorded torque constant'", unit="A"),
 )  # fmt: skip
 
@@ -526,7 +531,7 @@ def table_for(name: str, mechanism: type[Mechanism] | None, stated_at: str = "")
     says, and process efforts belong to the load.
     """
     table = TABLES[name]
-    if mechanism is None or name not in ("duty_cycle", "duty_types", "map"):
+    if mechanism is None or name not in ("duty_cycle", "duty_types", "map", "measured"):
         return table
     moved = ROTARY if (stated_at or mechanism.motion_at) == SHAFT and name != "map" else mechanism.coordinate
     if mechanism.drives_linear_motor:

@@ -16,6 +16,7 @@ from actuator_sizing.case.fingerprint import fingerprint
 from actuator_sizing.case.gearheads import understand_gearheads
 from actuator_sizing.case.inertias import at_the_motor, table_entries, understand_parts, with_parts
 from actuator_sizing.case.judging import understand_limits
+from actuator_sizing.case.measured_motion import check_recorded_motion
 from actuator_sizing.case.measuring import understand_recording
 from actuator_sizing.case.mechanics import build_mechanism, check_motion, understand_map
 from actuator_sizing.case.model import MISSING, ORIGINS, STATED, Case, Catalog, Cycle, Entry
@@ -73,13 +74,16 @@ def understand(
         recording = understand_recording(raw["measured"], axis, problems, motion is not None)
         cycles = (Cycle("", (recording.segment,)),) if recording else ()
     mechanism = build_mechanism(axis, understand_map(parsed.get("map"), axis, problems), problems)
-    if mechanism is not None and motion:
+    if mechanism is not None and (motion or recording):
         at_shaft = (axis.word("motion_stated_at") or mechanism.motion_at) == SHAFT
-        for cycle in cycles:
-            table = "duty_types" if cycle.duty_type else "duty_cycle"
-            check_motion(mechanism, at_shaft, cycle.segments, problems, table)
-            if cycle.duty_type:
-                check_turns(cycle, mechanism, at_shaft, problems)
+        if recording:
+            check_recorded_motion(mechanism, at_shaft, recording, problems)
+        else:
+            for cycle in cycles:
+                table = "duty_types" if cycle.duty_type else "duty_cycle"
+                check_motion(mechanism, at_shaft, cycle.segments, problems, table)
+                if cycle.duty_type:
+                    check_turns(cycle, mechanism, at_shaft, problems)
     parts = understand_parts(parsed.get("inertias"), axis.mechanism, problems)
     pulses = understand_pulses(parsed.get("resistor_pulses"), problems)
     motors, drives = parsed.get("motors"), parsed.get("drives")

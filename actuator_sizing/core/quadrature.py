@@ -195,6 +195,13 @@ def largest(values: FloatArray) -> tuple[FloatArray, NDArray[np.intp], FloatArra
     others are bracketed on a dense Chebyshev grid and refined by Newton's method on the derivative.
     """
     batch, _, count = values.shape
+    if count == 2:  # straight lines: at an end
+        left, right = values[..., 0], values[..., 1]
+        peak = np.maximum(left, right)
+        piece = peak.argmax(axis=1)
+        rows = np.arange(batch)
+        rises = right[rows, piece] > left[rows, piece]
+        return peak[rows, piece], piece, np.where(rises, 1.0, -1.0)
     points, dense_matrix = _dense_matrix(count)
     series = values @ to_series(count).T
     ceiling = np.abs(series[..., 1:]).sum(axis=2) + series[..., 0]  # |P_k| ≤ 1

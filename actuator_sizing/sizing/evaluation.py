@@ -33,6 +33,7 @@ from actuator_sizing.sizing.torque_plane import torque_plane
 FloatArray = NDArray[np.float64]
 
 _CHUNK = 128  # pairs at a time: keeps the (pairs, pieces, nodes) arrays in cache
+_MOST_NODES = 250_000  # in such an array, for a record of hundreds of pieces
 
 
 @dataclass(frozen=True)
@@ -112,15 +113,16 @@ def evaluate_pairs(
     PairResults
         Shape (B,). Integrals are exact on smooth pieces; extrema are refined between the nodes. [-]
     """
+    chunk = int(np.clip(_MOST_NODES // demand.position.size, 8, _CHUNK))
     parts = [
         _evaluate_chunk(
             demand,
-            motors.take(slice(first, first + _CHUNK)),
-            gearheads.take(slice(first, first + _CHUNK)),
+            motors.take(slice(first, first + chunk)),
+            gearheads.take(slice(first, first + chunk)),
             surroundings,
-            None if start is None else start.take(slice(first, first + _CHUNK)),
+            None if start is None else start.take(slice(first, first + chunk)),
         )
-        for first in range(0, len(motors), _CHUNK)
+        for first in range(0, len(motors), chunk)
     ]
     return PairResults(
         **{f.name: np.concatenate([getattr(part, f.name) for part in parts]) for f in fields(PairResults)}
@@ -156,7 +158,7 @@ def _evaluate_chunk(
     energy_airgap = signed_integrals(duration, airgap)
     energy_terminals = signed_integrals(duration, terminals)
 
-    network, loss = thermal_network(motors, surroundings), heat_loss(demand, motors, judged, c)
+    network, loss = thermal_network(motors, surroundings), heat_loss(demand, motors, gearheads, judged, c)
     temperatures: PeriodicState | SingleRun
     if start is None:
         temperatures = periodic_state(network, loss, surroundings.ambient_degc)

@@ -33,7 +33,7 @@ class SetModel:
     @property
     def loss(self) -> HeatLoss:
         """Heat losses over the cycle."""
-        return heat_loss(self.demand, self.motor, self.judged, self.course)
+        return heat_loss(self.demand, self.motor, self.gearhead, self.judged, self.course)
 
     @property
     def total_inertia(self) -> float:

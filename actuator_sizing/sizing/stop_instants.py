@@ -96,17 +96,21 @@ def stop_instants(sets: Sets) -> StopInstants:
                 piece, node = np.unravel_index(flat, speed.shape)
                 where = (pieces[piece], node)
                 x = demand.position[where]
-                r = float(mechanism.ratio_at(np.array([x]))[0][0])
+                geometry = mechanism.transfer(np.array([x]), False)
+                r = float(geometry.shaft_rate[0])
+                own, weight = (
+                    float(part[0]) for part in mechanism.shaft_torques(geometry, np.zeros(1), np.ones(1))
+                )
                 e = _efforts(sets, x, direction * np.sign(r), segment.payload, segment.process_effort)
                 inertia, gravity, friction, process = (value / abs(r) for value in e)
                 driving = min(direction * np.sign(r) * process, 0.0)
-                load = direction * np.sign(r) * gravity + driving
+                load = direction * np.sign(r) * gravity + direction * weight + driving
                 rows.append(
                     (
                         demand.time_s[where],
                         float(speed[piece, node]),
                         abs(r),
-                        inertia / abs(r) + mechanism.shaft_inertia_kg_m2,
+                        inertia / abs(r) + own,
                         load,
                         abs(friction) + mechanism.shaft_friction_nm,
                         direction * mechanism.specific_gravity_m_s2,

@@ -144,6 +144,38 @@ def test_a_stop_at_the_current_limit_takes_momentum_over_torque():
     assert q["shorted_stop_s"] > 0.0
 
 
+def test_a_stop_counts_its_reaction_time():
+    """Without torque, friction and gravity the axis goes on at its speed: later and longer by exactly that."""
+    one = made(values={"guide friction force": 0.0, "efficiency": 1.0},
+               motors=[{**MOTOR, "friction_torque_nm": 0.0, "viscous_friction_nm_s": 0.0}],
+               gearheads=[{**GEARHEAD, "no_load_torque_nm": 0.0, "backlash_rad": 0.0}])  # fmt: skip
+    names = {"motor": "M0", "gearhead": "G0", "drive": "D0", "input": "stop"}
+    at_once = simulate(one, **names)
+    late = simulate(dataclasses.replace(one, options={**one.options, "stop reaction time": 0.05}), **names)
+    assert late.quantities["stop_reaction_s"] == pytest.approx(0.05)
+    ratio = 2.0 * math.pi / 0.05 * float(one.gearhead_parameters.ratio[find_set(one, "M0", "G0", "D0")[1]])
+    way = 0.05 * late.quantities["stop_from_speed_rad_s"] / ratio
+    for kind in ("controlled", "shorted"):
+        # The winding starts without the current that held the speed: a thousandth of the stop.
+        gone = [s.quantities[f"{kind}_stop_distance"] for s in (late, at_once)]
+        assert gone[0] - gone[1] == pytest.approx(way, rel=0.02)
+        took = [s.quantities[f"{kind}_stop_s"] for s in (late, at_once)]
+        assert took[0] - took[1] == pytest.approx(0.05, rel=0.05)
+    assert any("reaction" in note for note in at_once.notes)
+
+
+@pytest.mark.parametrize("stiffness", [1e4, 1e6, 1e8])
+def test_a_stop_through_a_stiff_loose_gearhead_ends(stiffness):
+    """Millions of periods of the contact: whole blocks of steps, and at most a couple of thousand contacts."""
+    stiff = {**GEARHEAD, "stiffness_nm_per_rad": stiffness, "backlash_rad": 2e-3}
+    found = simulate(made({"damping ratio": 0.001}, gearheads=[stiff]), motor="M0", gearhead="G0", drive="D0",
+                     input="stop")  # fmt: skip
+    assert len(found.series) < 40_000
+    # So stiff that the drive cannot see the contact, it may keep rattling; a number is what it must be.
+    assert math.isfinite(found.quantities["controlled_stop_final_speed_rad_s"])
+    assert found.quantities["controlled_stop_s"] > 0.0 or stiffness == 1e8
+
+
 def samples(folder, text):
     path = folder / "samples.csv"
     path.write_text(text, encoding="utf-8")

@@ -81,7 +81,12 @@ def draw_response(simulation: Simulation) -> Figure:
         ax.axhline(0.0, color=style.QUIET, linewidth=0.8)
     closed = has_voltage
     if closed:
-        axes[2].plot(unit.convert(time), series["voltage_v"], color=style.DEMAND)
+        is_dq = "direct_voltage_v" in series
+        axes[2].plot(unit.convert(time), series["voltage_v"], color=style.DEMAND,
+                     label="quadrature" if is_dq else None)  # fmt: skip
+        if is_dq:
+            axes[2].plot(unit.convert(time), series["direct_voltage_v"], color=style.SECOND,
+                         linestyle=(0, (6, 2)), linewidth=1.2, label="direct")  # fmt: skip
         axes[2].set_ylabel("voltage of the\nDC equivalent [V]")
         saturated = series["saturated"].to_numpy(int)
         shade(axes[1], unit.convert(time), saturated & _CURRENT_LIMITED > 0, "current limited")
