@@ -248,7 +248,8 @@ COMMON_QUANTITIES = (
     Column("smoothing cut-off", "frequency", "measured motion is not followed above this frequency; it is a choice "
            "that decides the acceleration", positive=True, maximum=1.0e6, example="", unit="Hz"),
     Column("standstill speed", ("linear speed", "angular speed"), "a measured motion slower than this throughout "
-           "half a period of the cut-off is taken as standstill; one thousandth of its peak when empty",
+           "half a period of the cut-off is taken as standstill; when empty, what the scatter of the samples "
+           "makes of it, 0.1 to 1 % of the peak speed",
            minimum=0.0, example="", unit=("m/s", "rpm")),
     Column("remove drift", YES_NO, "whether the measured cycle is bent back so that it closes", default="no",
            assumed="the measured motion is kept", example="no"),

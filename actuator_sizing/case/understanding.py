@@ -25,6 +25,7 @@ from actuator_sizing.case.motors import understand_motors
 from actuator_sizing.case.parsed_tables import ParsedTable
 from actuator_sizing.case.parsing import parse_table
 from actuator_sizing.case.partners import understand_partners
+from actuator_sizing.case.plausible_motion import check_plausible
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.raw_tables import RawTable
 from actuator_sizing.case.resistor import understand_pulses
@@ -83,6 +84,7 @@ def understand(
             for cycle in cycles:
                 table = "duty_types" if cycle.duty_type else "duty_cycle"
                 check_motion(mechanism, at_shaft, cycle.segments, problems, table)
+                check_plausible(axis.motion_coordinate, cycle.segments, problems, table)
                 if cycle.duty_type:
                     check_turns(cycle, mechanism, at_shaft, problems)
     parts = understand_parts(parsed.get("inertias"), axis.mechanism, problems)

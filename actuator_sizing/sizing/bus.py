@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, fields
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -103,8 +103,7 @@ def _results(sets: Sets, threshold_v: FloatArray) -> BusResults:
         parts.append(_of_pairs(sets, members, terminal_power(sets, chunk), pair, side.take(members)))
         order.append(members)
     back = np.argsort(np.concatenate(order), kind="stable")
-    names = [f.name for f in fields(BusResults)]
-    return BusResults(**{n: np.concatenate([getattr(part, n) for part in parts])[back] for n in names})
+    return BusResults.joined(parts).take(back)
 
 
 def _of_pairs(

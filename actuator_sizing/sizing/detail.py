@@ -56,7 +56,7 @@ def set_detail(model: SetModel, sets: Sets, index: int) -> SetDetail:
     periodic, warming = _temperatures(model, sets, index)
     step = model.step().series(_STEP_POINTS)
     return SetDetail(
-        cycle=_cycle_frame(model),
+        cycle=_cycle_frame(model.in_time),
         periodic_temperature=_frame(periodic, _TEMPERATURES),
         warm_up=_frame(
             warming,

@@ -15,8 +15,12 @@ if TYPE_CHECKING:
 
     from actuator_sizing.case.model import Case
     from actuator_sizing.sizing.demand import Demand
+    from actuator_sizing.sizing.headroom import Headroom
+    from actuator_sizing.sizing.levers import LeverStudy
+    from actuator_sizing.sizing.ratio_results import RatioWindows
     from actuator_sizing.sizing.simulation_results import Simulation
     from actuator_sizing.sizing.stop_courses import StopCourses
+    from actuator_sizing.sizing.trade_offs import TradeOffs
 
 PASSES = "passes"
 LOW_RESERVE = "passes, low reserve"
@@ -247,6 +251,9 @@ class Comparison:
     inertias: tuple[InertiaShare, ...] = ()  # inertia inventory; empty where the case has none
     version: str = ""
     cycles: tuple[CycleResult, ...] = ()  # where there are several; `demand` and `cycle` are of the first
+    trade_offs: TradeOffs | None = None  # which passing sets no other one beats (None: not looked at)
+    windows: RatioWindows | None = None  # ratio windows of every motor, where they were asked for
+    headroom: Headroom | None = None  # how far the leading set can go, where it was asked for
 
     def by_cycle(self) -> tuple[Comparison, ...]:
         """The comparison once for each cycle, its leading set shown in that cycle alone."""
@@ -294,6 +301,41 @@ class Comparison:
         """The leading set simulated over its cycle; None where its loops cannot be made stable."""
         detail = self.sets[0].detail if self.sets else None
         return None if detail is None or detail.simulation is None else detail.simulation()
+
+    def ratio_windows(self) -> RatioWindows:
+        """Ratio windows of every motor that fits the axis, worked out now unless the report has them already.
+
+        Raises
+        ------
+        InputError
+            If the axis has a linear motor, or no motor fits it.
+        """
+        from actuator_sizing.sizing.cycles import cycle_demands
+        from actuator_sizing.sizing.ratio_windows import ratio_windows
+
+        return self.windows or ratio_windows(cycle_demands(self.case))
+
+    def levers_of(self, rank: int, weights: Mapping[str, float] | None = None) -> LeverStudy | None:
+        """What would let one of the sets pass, or keep the recommended reserve.
+
+        Parameters
+        ----------
+        rank : int
+            Of the set among `sets`, from 1. [-]
+        weights : mapping of str to float, optional
+            What a lever costs more than another in the cheapest pair, by its key. [-]
+
+        Returns
+        -------
+        LeverStudy or None
+            None where the set has the reserve that is recommended.
+        """
+        from actuator_sizing.sizing.cycles import cycle_demands
+        from actuator_sizing.sizing.levers import levers_of
+
+        item = self.sets[rank - 1]
+        parts = item.motor_index, item.gearhead_index, item.drive_index
+        return levers_of(cycle_demands(self.case), *parts, weights)
 
     @property
     def passes(self) -> bool:

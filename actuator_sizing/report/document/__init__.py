@@ -17,6 +17,7 @@ from actuator_sizing.report.document.closing import (
 )
 from actuator_sizing.report.document.comparing import comparison_section
 from actuator_sizing.report.document.cycles import cycles_section
+from actuator_sizing.report.document.decisions import decision_sections
 from actuator_sizing.report.document.drawings import figures_section
 from actuator_sizing.report.document.dynamics import dynamics_section
 from actuator_sizing.report.document.inertias import inertias_section
@@ -62,6 +63,7 @@ def prepare_document(
     losers = levers_section(comparison)
     if losers is not None:
         sections.append(losers)
+    sections += decision_sections(comparison, drawn)
     if comparison.sets:
         best = comparison.sets[0]
         sections += [checks_section(best), working_section(best)]
