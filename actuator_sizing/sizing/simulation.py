@@ -120,7 +120,7 @@ def in_order(case: Case, demand: Demand) -> Demand:
     Demand
         The same cycle. [-]
     """
-    return demand if demand.heat_start is None else build_demand(case, in_order=True)
+    return demand if demand.slices is None else build_demand(case, in_order=True)
 
 
 def _of_cycle(case: Case, name: str) -> Case:
