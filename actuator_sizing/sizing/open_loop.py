@@ -84,7 +84,9 @@ def left_early(course: Course) -> tuple[str, ...]:
         return ()
     at = f"given up at {course.time_s[-1]:.4g} s"
     if course.steps > course.events * 100:
-        return (f"{at} after {course.steps} steps, each a part of the fastest oscillation; ask for a shorter run",)
+        return (
+            f"{at} after {course.steps} steps, each a part of the fastest oscillation; ask for a shorter run",
+        )
     return (
         f"{at} after {course.events} changes between stick, slip and contact; state more damping, a smaller "
         "backlash, or fewer samples",
