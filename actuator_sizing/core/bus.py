@@ -253,7 +253,7 @@ def bus_course(
     start = np.concatenate([[0.0], np.cumsum(durations)[:-1]])
     time, stored, power = [], [], []
     for n, piece in enumerate(runs.piece):
-        if runs.end[0, n] <= runs.begin[0, n]:
+        if runs.end[0, n] <= runs.begin[0, n] or durations[piece] <= 0.0:
             continue
         x = np.linspace(runs.begin[0, n], runs.end[0, n], points)
         half = 0.5 * durations[piece]

@@ -15,9 +15,10 @@ from actuator_sizing.core.quadrature import piece_means
 from actuator_sizing.core.window_bounds import overload_bound, windowed_rms_bound
 from actuator_sizing.core.windows import overload_accumulator, windowed_rms
 from actuator_sizing.sizing.checks import Sets
-from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.demand import Demand, build_demand
 from actuator_sizing.sizing.derating import derated_drives
 from actuator_sizing.sizing.evaluation import PairResults, evaluate_pairs
+from actuator_sizing.sizing.joint_bus import PartnerPower, partner_axis, partner_power
 from actuator_sizing.sizing.pair_course import air_gap_coefficients, course
 from actuator_sizing.sizing.thermal_start import ThermalStart
 
@@ -101,7 +102,17 @@ def evaluate_sets(
         overload_a2s=view.overload,
         overload_at_s=view.overload_at,
         start=start,
+        partners=_partner_powers(case),
     )
+
+
+def _partner_powers(case: Case) -> tuple[PartnerPower, ...]:
+    """What the other axes on the bus draw from it."""
+    found = []
+    for partner in case.partners:
+        axis, index = partner_axis(case, partner)
+        found.append(partner_power(partner, evaluate_sets(axis, build_demand(axis), index)))
+    return tuple(found)
 
 
 def _drive_view(

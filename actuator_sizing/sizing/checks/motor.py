@@ -80,6 +80,33 @@ def _heat_path(
     return rise, rating, np.where(np.isnan(R_2), rating, np.fmin(R_2, rating)), hot
 
 
+def continuous_torque_squared(motors: MotorParameters, surroundings: Surroundings) -> FloatArray:
+    """Square of the re-rated continuous torque as a polynomial of speed, saturation left out.
+
+    Parameters
+    ----------
+    motors : MotorParameters
+        n motors. [-]
+    surroundings : Surroundings
+        Ambient and altitude. [-]
+
+    Returns
+    -------
+    ndarray, shape (3, n)
+        Coefficients of 1, ω and ω² of ``(K I_cont(ω))²``, see `rerated_continuous_current`. [-]
+    """
+    rise, rating, speed_resistance, hot = _heat_path(motors, surroundings)
+    K = judge(motors, replace(surroundings, judged_winding_degc=np.nan)).torque_constant_nm_per_a
+    per_kelvin = K**2 / (rating * hot)
+    return np.stack(
+        [
+            per_kelvin * np.maximum(rise, 0.0),
+            -per_kelvin * speed_resistance * motors.friction_torque_nm,
+            -per_kelvin * speed_resistance * motors.viscous_friction_nm_s,
+        ]
+    )
+
+
 def _current_at_limit(
     motors: MotorParameters, surroundings: Surroundings, K: FloatArray
 ) -> FloatArray | float:
