@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 from actuator_sizing.case.axis import Axis
 from actuator_sizing.case.measured_samples import EFFORTS, MEASURED, read_samples_of
 from actuator_sizing.case.model import Entry, Segment
+from actuator_sizing.case.plausible_motion import ABSURD
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.raw_tables import RawTable
 from actuator_sizing.case.recording import (
@@ -29,7 +30,12 @@ FloatArray = NDArray[np.float64]
 _OPEN = 0.02  # part of the range by which the ends of one cycle may differ unnoticed
 _MOST_KNOTS = 20_000
 _GAP = 10.0  # times the usual spacing
-_STANDSTILL = 1e-3  # of the largest speed: below it for a whole interval between knots, an axis stands
+_STANDSTILL = (
+    1e-3,
+    1e-2,
+)  # of the largest speed: slower than the first an axis stands, than the second perhaps
+_CERTAIN = 4.0  # standard deviations that noise of the speed does not exceed
+_FEW_SAMPLES = 20_000  # tell the scatter of all
 _PER_INTERVAL = 8  # instants between knots at which a motion is looked at
 
 
@@ -229,7 +235,7 @@ def _report_effect(
         rms, peak = acceleration_figures(fit)
         parts.append(f"{rms:.4g} and {peak:.4g} {unit} at {factor * cut_off:g} Hz")
     rms, peak = acceleration_figures(fits[1.0])
-    absurd = peak > (1e5 if coordinate == "linear" else 1e7)
+    absurd = peak > ABSURD[coordinate == "linear"][0]
     problems.report(MEASURED, None, got="acceleration (RMS and peak) " + "; ".join(parts),
                     allowed="a cut-off above which there is only noise" if not absurd
                     else "an acceleration that an axis can have",
@@ -250,11 +256,50 @@ def between_knots(motion: PeriodicSpline) -> FloatArray:
     return np.asarray(motion.knots_s[:-1, None] + step * np.linspace(0.0, 1.0, _PER_INTERVAL + 1))
 
 
-def _standstill(motion: PeriodicSpline, axis: Axis, problems: ProblemList) -> NDArray[np.bool_]:
+def speed_noise(motion: PeriodicSpline, time_s: FloatArray, value: FloatArray, order: int) -> float:
+    """Standard deviation of the smoothed speed that the scatter of the samples leaves.
+
+    Parameters
+    ----------
+    motion : PeriodicSpline
+        Fitted to the samples. [-]
+    time_s : ndarray, shape (n,)
+        Instants of the samples. [s]
+    value : ndarray, shape (n,)
+        Position [m], or speed [m/s] when `order` is 1. [-]
+    order : int
+        0 for position, 1 for speed. [-]
+
+    Returns
+    -------
+    float
+        In m/s, or with rad for m. [-]
+
+    Notes
+    -----
+    White scatter σ of samples Δt apart has the density ``2 σ² Δt`` up to half the sampling frequency; of
+    position, ``σ_v² = 2 σ² Δt (2π)² f_c³/3`` passes a cut-off f_c, of speed ``2 σ² Δt f_c``. First principles.
+    """
+    some = slice(None, None, max(1, len(time_s) // _FEW_SAMPLES))
+    apart = value[some] - motion.values(time_s[some], order)
+    spacing, cut_off = motion.period_s / len(time_s), 0.5 * len(motion.coefficients) / motion.period_s
+    passed = (2.0 * np.pi) ** 2 * cut_off**3 / 3.0 if order == 0 else cut_off
+    return float(np.std(apart) * np.sqrt(2.0 * spacing * passed))
+
+
+def _standstill(
+    motion: PeriodicSpline, t: FloatArray, values: dict[str, FloatArray], axis: Axis, problems: ProblemList
+) -> NDArray[np.bool_]:
     """Intervals between knots in which the axis stands: what is left of its speed is noise."""
     speed = np.abs(motion.values(between_knots(motion), 1)).max(axis=1)
-    stated = axis.number("standstill_speed")
-    threshold = stated if np.isfinite(stated) else _STANDSTILL * float(speed.max())
+    threshold = axis.number("standstill_speed")
+    if not np.isfinite(threshold):
+        noise = (
+            speed_noise(motion, t, values["position"], 0)
+            if "position" in values
+            else (speed_noise(motion, t, values["speed"], 1))
+        )
+        threshold = float(np.clip(_CERTAIN * noise, *(part * speed.max() for part in _STANDSTILL)))
     stands = speed <= threshold
     if stands.any():
         linear = axis.motion_coordinate == "linear"
@@ -284,7 +329,7 @@ def _understood(
     effort = factor * _closed(values[key]) if key else np.zeros(len(time))
     payload = _closed(values["payload"]) if "payload" in values else np.empty(0)
     speed_peak = float(np.abs(motion.values(motion.knots_s, 1)).max())
-    stands = _standstill(motion, axis, problems) if speed_peak > 0.0 else np.ones(1, dtype=bool)
+    stands = _standstill(motion, t, values, axis, problems) if speed_peak > 0.0 else np.ones(1, dtype=bool)
     recording = Recording(time, effort, kind, motion, speed_peak == 0.0, speed_peak, stands, payload)
     digest = hashlib.sha256()
     for name in sorted(values):

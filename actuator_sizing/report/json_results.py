@@ -13,6 +13,7 @@ from actuator_sizing.report.document.inputs import part_entries
 from actuator_sizing.report.formatting import percent
 from actuator_sizing.report.headroom_text import headroom_text
 from actuator_sizing.report.lever_text import lever_text
+from actuator_sizing.report.simulation_files import simulation_dict
 
 if TYPE_CHECKING:
     from actuator_sizing.case.model import Case, Entry
@@ -38,6 +39,7 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
     case, counts = comparison.case, comparison.rejections
     best = comparison.sets[0] if comparison.sets else None
     entries = [*case.entries, *part_entries(comparison, best)]
+    moved = comparison.governing.dynamics
     return {
         "schema": SCHEMA,
         "version": comparison.version,
@@ -53,6 +55,7 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
         "cycles": [_cycle(each) for each in comparison.cycles],
         "inertias": [plain(asdict(part)) for part in comparison.inertias],
         "ranked_by": comparison.ranked_by,
+        "dynamics": None if moved is None else simulation_dict(moved),
         "sets": [_set(item, case) for item in comparison.sets],
         "rejected": {
             "count": int(counts.rejected),

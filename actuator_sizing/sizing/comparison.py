@@ -124,6 +124,7 @@ def compare(
         raise InputError(
             [Problem("axis", None, "rank by", ranked_by, " | ".join(RANKINGS), "Choose one of these.")]
         )
+    case = _with_named_partners(case, progress)
     wanted = int(detail or case.number("sets to detail"))
     cycles = cycle_demands(case)
     demand = cycles[0].demand
@@ -204,6 +205,19 @@ def compare(
         windows=found_windows,
         headroom=_headroom(cycles, results[0], progress) if headroom else None,
     )
+
+
+def _with_named_partners(case: Case, progress: Progress | None) -> Case:
+    """The case with the best set of its own case for every axis on the bus whose parts are not named."""
+    named = []
+    for number, partner in enumerate(case.partners, start=1):
+        if not partner.motor and partner.axis is not None:
+            best = compare(partner.axis, detail=1).best
+            partner = replace(partner, motor=best.motor, gearhead=best.gearhead or "", drive=best.drive)
+        named.append(partner)
+        if progress is not None:
+            progress("axes on the bus", number / len(case.partners))
+    return replace(case, partners=tuple(named))
 
 
 def _headroom(cycles: tuple[CycleDemand, ...], best: SetResult, progress: Progress | None) -> Headroom:

@@ -5,7 +5,7 @@ Everything here is independent of the drive; a check that needs one combines the
 
 from __future__ import annotations
 
-from dataclasses import dataclass, fields
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -124,9 +124,7 @@ def evaluate_pairs(
         )
         for first in range(0, len(motors), chunk)
     ]
-    return PairResults(
-        **{f.name: np.concatenate([getattr(part, f.name) for part in parts]) for f in fields(PairResults)}
-    )
+    return PairResults.joined(parts)
 
 
 def _evaluate_chunk(

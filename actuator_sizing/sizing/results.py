@@ -121,6 +121,9 @@ class SetDetail:
     #: levels for limit lines, e.g. motor_peak_current_a, drive_peak_current_a, drive_continuous_current_a,
     #: speed_max_rad_s, winding_limit_degc, ambient_degc, voltage_available_v (NaN: not known)
     levels: Mapping[str, float]
+    #: the DC bus over one cycle: time_s, bus_power_w (taken), bus_voltage_high_v (fed from the highest voltage of the
+    #: supply, NaN where not known) and bus_voltage_low_v (fed from the lowest)
+    bus: pd.DataFrame | None = None
     #: one row per segment of the duty cycle: torque_rms_nm, current_rms_a and current_squared_a2_s, the integral
     #: of the squared current over the segment; their sum over the cycle time is the squared RMS current
     segments: pd.DataFrame | None = None

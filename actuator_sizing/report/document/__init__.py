@@ -23,6 +23,7 @@ from actuator_sizing.report.document.dynamics import dynamics_section
 from actuator_sizing.report.document.inertias import inertias_section
 from actuator_sizing.report.document.inputs import assumptions_section, inputs_section
 from actuator_sizing.report.document.levers import levers_section
+from actuator_sizing.report.document.power import power_section
 from actuator_sizing.report.document.stopping import stopping_section
 from actuator_sizing.report.document.verdict import cover_facts, verdict_section, verdict_sentence
 from actuator_sizing.report.text import clean, option
@@ -76,6 +77,7 @@ def prepare_document(
         stopping = stopping_section(shown, drawn)
         if stopping is not None:
             sections.append(stopping)
+        sections.append(power_section(shown, drawn))
         moving = dynamics_section(shown, drawn)
         if moving is not None:
             sections.append(moving)

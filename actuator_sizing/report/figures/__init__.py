@@ -17,6 +17,7 @@ from actuator_sizing.report.figures.dynamics import (
 )
 from actuator_sizing.report.figures.over_time import draw_causes, draw_current, draw_motion
 from actuator_sizing.report.figures.payload_map import draw_payload_map
+from actuator_sizing.report.figures.power import draw_bus, draw_energy_flow
 from actuator_sizing.report.figures.ratio_windows import draw_ratio_windows
 from actuator_sizing.report.figures.speed_torque import draw_speed_torque
 from actuator_sizing.report.figures.step import draw_step_response
@@ -42,6 +43,8 @@ FIGURES = (
     "torque_by_cause",
     "current",
     "temperature",
+    "bus",
+    "energy_flow",
     "step_response",
     "cycles",
 )
@@ -125,6 +128,8 @@ def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]
         "torque_by_cause": lambda: draw_causes(detail, units),
         "current": lambda: draw_current(best, detail),
         "temperature": lambda: draw_temperature(detail),
+        "bus": lambda: draw_bus(detail),
+        "energy_flow": lambda: draw_energy_flow(best),
         "step_response": lambda: draw_step_response(best, detail, units),
         **_stop_figures(comparison, detail, units),
         **_dynamic_figures(comparison),

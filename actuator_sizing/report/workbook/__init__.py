@@ -16,6 +16,8 @@ from actuator_sizing.report.workbook.decision_sheets import (
     add_ratio_windows,
     add_trade_offs,
 )
+from actuator_sizing.report.workbook.dynamics_sheet import add_dynamics
+from actuator_sizing.report.workbook.power_sheets import add_bus, add_energy
 from actuator_sizing.report.workbook.results_sheets import add_candidates, add_checks, add_summary
 from actuator_sizing.report.workbook.writer import Sheets
 
@@ -71,6 +73,9 @@ def render_workbook(comparison: Comparison, day: date, rows_in_file: int | None 
         add_time_series(sheets, comparison)
         add_warm_up(sheets, comparison)
         add_speed_torque(sheets, comparison)
+        add_energy(sheets, comparison)
+        add_bus(sheets, comparison)
+        add_dynamics(sheets, comparison)
         add_inertias(sheets, comparison)
         add_parts(sheets, comparison)
         add_inputs(sheets, comparison)
