@@ -154,6 +154,8 @@ def _pulses(
     A bus that never motors dumps one pulse per cycle.
     """
     batch, runs = energy.shape
+    if not np.any(dumped > 0.0):
+        return np.zeros(batch, dtype=np.intp), np.zeros_like(dumped), np.zeros_like(dumped)
     so_far, taking = np.zeros(batch), np.zeros(batch)
     pulse, time = np.zeros((batch, runs)), np.zeros((batch, runs))
     never = ~np.any(energy > 0.0, axis=1)

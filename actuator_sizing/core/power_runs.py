@@ -98,8 +98,11 @@ def power_runs(duration_s: FloatArray, power_w: FloatArray) -> PowerRuns:
     borders = np.ones((batch, pieces, most + 2))
     borders[:, :, 0] = -1.0
     borders[row, piece, rank + 1] = position
-    integral = (series @ antiderivative_matrix(count).T).transpose(2, 0, 1)
-    area = np.stack([series_value(integral, borders[:, :, k]) for k in range(most + 2)], axis=2)
+    # The integral from −1 is zero there and, every Legendre polynomial being 1 at 1, twice the mean at the end.
+    area = np.repeat(2.0 * series[:, :, :1], most + 2, axis=2)
+    area[:, :, 0] = 0.0
+    integral = series[row, piece] @ antiderivative_matrix(count).T
+    area[row, piece, rank + 1] = series_value(integral.T, position)
     energy = 0.5 * duration_s[..., None] * np.diff(area, axis=2)
     shape = (batch, pieces * (most + 1))
     return PowerRuns(
@@ -153,14 +156,17 @@ def bus_pieces(
 
     Returns
     -------
-    duration_s : ndarray, shape (B, N)
-        Length of each run; some are zero. [s]
-    power_w : ndarray, shape (B, N, K)
-        Power at the bus at the nodes of each run. [W]
+    duration_s : ndarray, shape (B, M)
+        Length of each run that lasts in any candidate; some are zero. [s]
+    power_w : ndarray, shape (B, M, K)
+        Power at the bus at the nodes of each of them. [W]
     """
     at_terminals = runs.values(runs.series)
     # At the ends of a run, where the power is nothing but rounding, the sign is that of the run.
     middle = at_terminals[..., at_terminals.shape[2] // 2]
     sign = np.sign(np.where(runs.energy_j == 0.0, middle, runs.energy_j))[..., None]
     at_terminals = np.where(sign > 0.0, np.maximum(at_terminals, 0.0), np.minimum(at_terminals, 0.0))
-    return runs.run_duration_s(), bus_energy(at_terminals, efficiency) + steady_w[:, None, None]
+    duration = runs.run_duration_s()
+    lasts = np.any(duration > 0.0, axis=0)  # runs that pad every candidate are left out
+    power = bus_energy(at_terminals[:, lasts], efficiency) + steady_w[:, None, None]
+    return duration[:, lasts], power

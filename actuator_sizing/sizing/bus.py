@@ -105,7 +105,7 @@ def _of_pairs(
         under = None
         if is_soft(sets):
             under = bus_under_load(sets, needed_voltage(terminals, pair), power, side)
-        return results_of(sets, members, side, drawn(power, cycle_s, side.room_j), cycle_s, under)
+        return results_of(sets, members, side, drawn(sets, power, cycle_s, side.room_j), cycle_s, under)
     # Nothing but the drive between terminals and bus: the runs of the pairs serve all their drives.
     peak, piece, position = largest(terminals.power_w)
     draw = Drawn(
@@ -114,7 +114,7 @@ def _of_pairs(
         peak_at_s=sets.demand.instant(piece, position)[pair],
         mean_square_w2=mean_square_through_drive(terminals, pair, side, sets.demand.duration_s),
         gives_back=np.any(terminals.runs.energy_j < 0.0, axis=1)[pair],
-        returned_peak_w=np.maximum(largest(-terminals.power_w)[0], 0.0)[pair] * side.efficiency,
+        returned_peak_w=_returned_peak(sets, terminals)[pair] * side.efficiency,
     )
     return results_of(sets, members, side, draw, cycle_s, None)
 
@@ -128,14 +128,23 @@ class Drawn:
     peak_at_s: FloatArray
     mean_square_w2: FloatArray
     gives_back: NDArray[np.bool_]
-    returned_peak_w: FloatArray
+    returned_peak_w: FloatArray  # zero where the supply takes nothing back
 
 
-def drawn(power: BusPower, cycle_s: float, room_j: FloatArray) -> Drawn:
+def _returned_peak(sets: Sets, terminals: TerminalPower) -> FloatArray:
+    """Largest power that comes back at the terminals, where a supply takes it. [W]"""
+    if not supply_feeds_back(sets):
+        return np.zeros(len(terminals.power_w))
+    return np.maximum(largest(-terminals.power_w)[0], 0.0)
+
+
+def drawn(sets: Sets, power: BusPower, cycle_s: float, room_j: FloatArray) -> Drawn:
     """What sets draw whose power at the bus is known on pieces.
 
     Parameters
     ----------
+    sets : Sets
+        Says whether the supply takes anything back. [-]
     power : BusPower
         At the bus of S sets. [-]
     cycle_s : float
@@ -149,7 +158,9 @@ def drawn(power: BusPower, cycle_s: float, room_j: FloatArray) -> Drawn:
         Shape (S,). [-]
     """
     most, peak_at = power.largest()
-    back = BusPower(power.duration_s, -power.power_w).largest()[0]
+    back = np.zeros(len(most))
+    if supply_feeds_back(sets):
+        back = BusPower(power.duration_s, -power.power_w).largest()[0]
     return Drawn(
         cycle=bus_cycle(power.runs, np.ones(len(most)), room_j),
         peak_w=np.maximum(most, 0.0),

@@ -114,7 +114,8 @@ def power_at_bus(terminals: TerminalPower, pair: NDArray[np.intp], side: BusSide
 def needed_voltage(terminals: TerminalPower, pair: NDArray[np.intp]) -> FloatArray:
     """Voltage that the motor of each set needs, at the nodes of the pieces of `power_at_bus`, (S, N, K). [V]"""
     series = terminals.voltage_v @ to_series(terminals.voltage_v.shape[2]).T
-    return terminals.runs.take(pair).values(series[pair])
+    runs = terminals.runs.take(pair)
+    return runs.values(series[pair])[:, np.any(runs.run_duration_s() > 0.0, axis=0)]
 
 
 def mean_square_through_drive(

@@ -275,7 +275,7 @@ def _at_offsets(
         needed = _sampled(edges, needed_v @ matrix, place, time, middle, period)
         under = bus_under_load(sets, needed, power, side)
     members = np.arange(len(sets))
-    return results_of(sets, members, side, drawn(power, total, side.room_j), total, under)
+    return results_of(sets, members, side, drawn(sets, power, total, side.room_j), total, under)
 
 
 def _pieces(edges: FloatArray, middle: FloatArray, period: float) -> NDArray[np.intp]:
