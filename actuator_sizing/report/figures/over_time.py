@@ -56,10 +56,10 @@ def draw_motion(cycle: pd.DataFrame, units: AxisUnits, name: str = "") -> Figure
         ),
     )
     figure, axes = style.new_axes(5.4, rows=len(panels), left_in=0.95, right_in=0.25, top_in=0.32)
-    for ax, (column, shown, name) in zip(axes, panels, strict=True):
+    for ax, (column, shown, words) in zip(axes, panels, strict=True):
         ax.plot(time, shown.convert(cycle[column].to_numpy(float)), color=style.DEMAND)
         ax.axhline(0.0, color=style.QUIET, linewidth=0.8)
-        ax.set_ylabel(f"{name}\n[{shown.label}]")
+        ax.set_ylabel(f"{words}\n[{shown.label}]")
         ax.margins(y=0.12)
     figure.align_ylabels(axes)
     _mark_segments(axes, cycle, unit)
