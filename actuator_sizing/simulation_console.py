@@ -44,6 +44,8 @@ def print_simulation(simulation: Simulation, written: Sequence[Path]) -> None:
     written : sequence of Path
         Files that were written.
     """
+    from actuator_sizing.report.loop_settings import setting_unit
+
     click.echo(f"{clean(simulation.label)}, input {clean(simulation.input)}, every {simulation.step_s:.4g} s")
     for line in _answers(simulation):
         click.echo(line)
@@ -52,7 +54,8 @@ def print_simulation(simulation: Simulation, written: Sequence[Path]) -> None:
         click.echo(f"  stop after {clean(str(move.segment))}: {settled}")
     click.echo(f"settings (SI; the speed loop is limited by: {simulation.limited_by})")
     for name, value in simulation.gains.items():
-        click.echo(f"  {name} = {value if isinstance(value, str | bool) else format(value, '.5g')}")
+        shown = value if isinstance(value, str | bool) else format(value, ".5g")
+        click.echo(f"  {name} = {shown} {setting_unit(name)}".rstrip())
     for note in simulation.notes:
         click.echo(f"note: {clean(note)}")
     if written:

@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 from actuator_sizing.case.axis import Axis
 from actuator_sizing.case.measured_samples import EFFORTS, MEASURED, read_samples_of
 from actuator_sizing.case.model import Entry, Segment
+from actuator_sizing.case.plausible_motion import ABSURD
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.raw_tables import RawTable
 from actuator_sizing.case.recording import (
@@ -29,7 +30,12 @@ FloatArray = NDArray[np.float64]
 _OPEN = 0.02  # part of the range by which the ends of one cycle may differ unnoticed
 _MOST_KNOTS = 20_000
 _GAP = 10.0  # times the usual spacing
-_STANDSTILL = 1e-3  # of the largest speed: below it for a whole interval between knots, an axis stands
+_STANDSTILL = (
+    1e-3,
+    1e-2,
+)  # of the largest speed: slower than the first an axis stands, than the second perhaps
+_CERTAIN = 4.0  # standard deviations that noise of the speed does not exceed
+_FEW_SAMPLES = 20_000  # tell the scatter of all
 _PER_INTERVAL = 8  # instants between knots at which a motion is looked at
 
 
@@ -42,6 +48,9 @@ class UnderstoodRecording:
     entries: tuple[Entry, ...]
     rows: NDArray[np.int64]  # of the samples used
     instants_s: FloatArray
+    fits: tuple[
+        tuple[float, PeriodicSpline], ...
+    ]  # cut-off [Hz] and motion: half of the stated one, itself, twice
 
     def row_at(self, time_s: float) -> int:
         """Spreadsheet row of the sample at or after an instant of the cycle."""
@@ -84,9 +93,10 @@ def understand_recording(
         return None
     kept = t < period * (1.0 - 1e-9)
     used = {key: column[kept] for key, column in values.items()}
-    motion = _motion(rows[kept], t[kept], used, period, axis, problems)
-    if motion is None:
+    found = _motion(rows[kept], t[kept], used, period, axis, problems)
+    if found is None:
         return None
+    motion, fits = found
     stretches = int(kept.sum()) + len(motion.coefficients)
     if stretches > EXACT_INTERVALS:
         problems.report(MEASURED, None, got=f"{stretches} stretches between instants",
@@ -95,7 +105,8 @@ def understand_recording(
                         "upper bounds; the voltage that a changing current takes is left out, and bus voltage goes "
                         "by 24 parts of the cycle.",
                         severity=NOTE)  # fmt: skip
-    return _understood(rows[kept], t[kept], used, period, motion, axis, problems)
+    understood = _understood(t[kept], used, period, motion, axis, problems)
+    return UnderstoodRecording(*understood, rows[kept], t[kept], fits)
 
 
 def _period(
@@ -144,7 +155,8 @@ def _motion(
     period: float,
     axis: Axis,
     problems: ProblemList,
-) -> PeriodicSpline | None:
+) -> tuple[PeriodicSpline, tuple[tuple[float, PeriodicSpline], ...]] | None:
+    """The smoothed motion, and with which cut-offs it was tried."""
     still = PeriodicSpline(period, np.zeros(8), 0.0)
     key = next((k for k in ("position", "speed") if k in values and np.any(values[k] != values[k][0])), None)
     gap, after = largest_gap(t, period)
@@ -156,7 +168,9 @@ def _motion(
                         severity=WARNING)  # fmt: skip
     if key is None:
         steady = "speed" in values and values["speed"][0] != 0.0 and "position" not in values
-        return PeriodicSpline(period, np.zeros(8), float(values["speed"][0]) * period) if steady else still
+        return (
+            PeriodicSpline(period, np.zeros(8), float(values["speed"][0]) * period) if steady else still
+        ), ()
     cut_off = axis.number("smoothing_cut_off")
     if knots_for(period, cut_off) > _MOST_KNOTS or period / knots_for(period, cut_off) < gap:
         highest = min(0.5 / gap, 0.5 * _MOST_KNOTS / period)
@@ -176,9 +190,10 @@ def _motion(
     ]
     frequencies = [factor * cut_off for factor in factors]
     fitted = smooth_position(t, values[key], period, frequencies, drift, order)
-    fits = dict(zip(factors, fitted, strict=True))
-    _report_effect(fits, cut_off, axis.motion_coordinate, problems)
-    return fits[1.0]
+    fits = tuple(zip(frequencies, fitted, strict=True))
+    chosen = fitted[factors.index(1.0)]
+    _report_effect(fits, chosen, axis.motion_coordinate, problems)
+    return chosen, fits
 
 
 def _drift(
@@ -220,16 +235,19 @@ def _drift(
 
 
 def _report_effect(
-    fits: dict[float, PeriodicSpline], cut_off: float, coordinate: str, problems: ProblemList
+    fits: tuple[tuple[float, PeriodicSpline], ...],
+    chosen: PeriodicSpline,
+    coordinate: str,
+    problems: ProblemList,
 ) -> None:
     """Say what the cut-off decides: RMS and peak of the acceleration with half and twice of it."""
     unit = "m/s²" if coordinate == "linear" else "rad/s²"
     parts = []
-    for factor, fit in fits.items():
+    for frequency, fit in fits:
         rms, peak = acceleration_figures(fit)
-        parts.append(f"{rms:.4g} and {peak:.4g} {unit} at {factor * cut_off:g} Hz")
-    rms, peak = acceleration_figures(fits[1.0])
-    absurd = peak > (1e5 if coordinate == "linear" else 1e7)
+        parts.append(f"{rms:.4g} and {peak:.4g} {unit} at {frequency:g} Hz")
+    rms, peak = acceleration_figures(chosen)
+    absurd = peak > ABSURD[coordinate == "linear"][0]
     problems.report(MEASURED, None, got="acceleration (RMS and peak) " + "; ".join(parts),
                     allowed="a cut-off above which there is only noise" if not absurd
                     else "an acceleration that an axis can have",
@@ -250,11 +268,50 @@ def between_knots(motion: PeriodicSpline) -> FloatArray:
     return np.asarray(motion.knots_s[:-1, None] + step * np.linspace(0.0, 1.0, _PER_INTERVAL + 1))
 
 
-def _standstill(motion: PeriodicSpline, axis: Axis, problems: ProblemList) -> NDArray[np.bool_]:
+def speed_noise(motion: PeriodicSpline, time_s: FloatArray, value: FloatArray, order: int) -> float:
+    """Standard deviation of the smoothed speed that the scatter of the samples leaves.
+
+    Parameters
+    ----------
+    motion : PeriodicSpline
+        Fitted to the samples. [-]
+    time_s : ndarray, shape (n,)
+        Instants of the samples. [s]
+    value : ndarray, shape (n,)
+        Position [m], or speed [m/s] when `order` is 1. [-]
+    order : int
+        0 for position, 1 for speed. [-]
+
+    Returns
+    -------
+    float
+        In m/s, or with rad for m. [-]
+
+    Notes
+    -----
+    White scatter σ of samples Δt apart has the density ``2 σ² Δt`` up to half the sampling frequency; of
+    position, ``σ_v² = 2 σ² Δt (2π)² f_c³/3`` passes a cut-off f_c, of speed ``2 σ² Δt f_c``. First principles.
+    """
+    some = slice(None, None, max(1, len(time_s) // _FEW_SAMPLES))
+    apart = value[some] - motion.values(time_s[some], order)
+    spacing, cut_off = motion.period_s / len(time_s), 0.5 * len(motion.coefficients) / motion.period_s
+    passed = (2.0 * np.pi) ** 2 * cut_off**3 / 3.0 if order == 0 else cut_off
+    return float(np.std(apart) * np.sqrt(2.0 * spacing * passed))
+
+
+def _standstill(
+    motion: PeriodicSpline, t: FloatArray, values: dict[str, FloatArray], axis: Axis, problems: ProblemList
+) -> NDArray[np.bool_]:
     """Intervals between knots in which the axis stands: what is left of its speed is noise."""
     speed = np.abs(motion.values(between_knots(motion), 1)).max(axis=1)
-    stated = axis.number("standstill_speed")
-    threshold = stated if np.isfinite(stated) else _STANDSTILL * float(speed.max())
+    threshold = axis.number("standstill_speed")
+    if not np.isfinite(threshold):
+        noise = (
+            speed_noise(motion, t, values["position"], 0)
+            if "position" in values
+            else (speed_noise(motion, t, values["speed"], 1))
+        )
+        threshold = float(np.clip(_CERTAIN * noise, *(part * speed.max() for part in _STANDSTILL)))
     stands = speed <= threshold
     if stands.any():
         linear = axis.motion_coordinate == "linear"
@@ -267,14 +324,13 @@ def _standstill(motion: PeriodicSpline, axis: Axis, problems: ProblemList) -> ND
 
 
 def _understood(
-    rows: NDArray[np.int64],
     t: FloatArray,
     values: dict[str, FloatArray],
     period: float,
     motion: PeriodicSpline,
     axis: Axis,
     problems: ProblemList,
-) -> UnderstoodRecording:
+) -> tuple[Recording, Segment, tuple[Entry, ...]]:
     key = next((k for k in EFFORTS if k in values), None)
     kind = {"load_force": RECORDED_EFFORT, "shaft_torque": RECORDED_SHAFT, "current": RECORDED_SHAFT}.get(
         key or "", RECORDED_PROCESS
@@ -284,7 +340,7 @@ def _understood(
     effort = factor * _closed(values[key]) if key else np.zeros(len(time))
     payload = _closed(values["payload"]) if "payload" in values else np.empty(0)
     speed_peak = float(np.abs(motion.values(motion.knots_s, 1)).max())
-    stands = _standstill(motion, axis, problems) if speed_peak > 0.0 else np.ones(1, dtype=bool)
+    stands = _standstill(motion, t, values, axis, problems) if speed_peak > 0.0 else np.ones(1, dtype=bool)
     recording = Recording(time, effort, kind, motion, speed_peak == 0.0, speed_peak, stands, payload)
     digest = hashlib.sha256()
     for name in sorted(values):
@@ -299,7 +355,7 @@ def _understood(
         Entry(MEASURED, None, "measured cycle", "duration used", "", period, "s", "derived",
               "whole cycles of the record"),
     )  # fmt: skip
-    return UnderstoodRecording(recording, segment, entries, rows, t)
+    return recording, segment, entries
 
 
 def _closed(values: FloatArray) -> FloatArray:

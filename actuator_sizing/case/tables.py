@@ -248,7 +248,8 @@ COMMON_QUANTITIES = (
     Column("smoothing cut-off", "frequency", "measured motion is not followed above this frequency; it is a choice "
            "that decides the acceleration", positive=True, maximum=1.0e6, example="", unit="Hz"),
     Column("standstill speed", ("linear speed", "angular speed"), "a measured motion slower than this throughout "
-           "half a period of the cut-off is taken as standstill; one thousandth of its peak when empty",
+           "half a period of the cut-off is taken as standstill; when empty, what the scatter of the samples "
+           "makes of it, 0.1 to 1 % of the peak speed",
            minimum=0.0, example="", unit=("m/s", "rpm")),
     Column("remove drift", YES_NO, "whether the measured cycle is bent back so that it closes", default="no",
            assumed="the measured motion is kept", example="no"),
@@ -422,6 +423,17 @@ RESISTOR_PULSE_COLUMNS = (
            required=True, positive=True, maximum=1.0e9, example="2", unit="kJ"),
 )  # fmt: skip
 
+BUS_PARTNER_COLUMNS = (
+    Column("partner", TEXT, "name of another axis on the same DC bus", required=True, example="shuttle"),
+    Column("case", TEXT, "workbook or folder of its case, relative to this case", required=True,
+           example="../shuttle"),
+    Column("motor", TEXT, "motor of its set; without parts the best set of that case is taken", example=""),
+    Column("gearhead", TEXT, "gearhead of its set; empty for direct drive", example=""),
+    Column("drive", TEXT, "drive of its set", example=""),
+    Column("time offset", "time", "start of its cycle after the start of this axis' cycle; empty: free, and the "
+           "worst is sought", minimum=-1.0e6, maximum=1.0e6, example="", unit="s"),
+)  # fmt: skip
+
 INERTIA_SHAPES = ("solid cylinder", "hollow cylinder", "block", "point mass", "screw", "pulley", "belt", "coupling",
                   "brake")  # fmt: skip
 INERTIA_PLACES = ("driven shaft", "load", "motor")
@@ -516,6 +528,7 @@ TABLES: dict[str, Table] = {
               "tabulated mechanisms; a smooth spline goes through the points.", MAP_COLUMNS),
         Table("resistor_pulses", "One row is one point of the pulse curve of the brake resistor, in place of 'brake "
               "resistor pulse energy'.", RESISTOR_PULSE_COLUMNS, in_template=False),
+        Table("bus_partners", "One row is another axis on the same DC bus.", BUS_PARTNER_COLUMNS, in_template=False),
         Table("inertias", "One row is one part of the inertia inventory; its inertia is added to that of the axis.",
               INERTIA_COLUMNS),
     )

@@ -63,8 +63,8 @@ def cascade_loop(
     A machine in dq states (``turn`` > 0) has equal inductances and a current of the direct axis that is commanded to
     zero. Its cross coupling ``i_d' = p ω i_q``, ``i_q' = −p ω i_d`` turns the current by ``p ω h``: half of it before
     and half after the linear step (G. Strang's splitting, SIAM J. Numer. Anal. 5, 1968), exact but for the product
-    of both parts, which is of third order in the step. The voltage is held in the frame of the rotor and stays
-    within the circle ``u_d² + u_q² ≤ u_max²``, the direct axis first.
+    of both parts, which is of third order in the step. The voltage is held in the frame of the rotor; outside the
+    circle ``u_d² + u_q² ≤ u_max²`` it is shortened and keeps its direction.
     """
     # Indexed, not unpacked: the compiler knows the length of a tuple but not that of an array.
     i, w, s, wl, th, iv = state[0], state[1], state[2], state[3], state[4], state[5]
@@ -132,24 +132,30 @@ def cascade_loop(
         # current
         error = i_ref - i
         u = k_current * error + ii + k_emf * w_seen
-        cross = reactance * w * i
+        limited = u
         u_d = 0.0
         if turn > 0.0:
             u = u + decouple * w_seen * i_d
-            cross = iid - k_current * i_d - decouple * w_seen * i
-            u_d = min(max(cross, -voltage_max), voltage_max)
-            iid = iid - k_current_integral * i_d + k_current_back * (u_d - cross)
-            cross = u_d
-        if u * u + cross * cross > voltage_max2:
-            left = voltage_max2 - cross * cross
-            limited = math.sqrt(left) if left > 0.0 else 0.0
-            if u < 0.0:
-                limited = -limited
-            ii = ii + k_current_integral * error + k_current_back * (limited - u)
-            u = limited
-            flag = flag + 2
+            asked = iid - k_current * i_d - decouple * w_seen * i
+            limited = u
+            u_d = asked
+            size = u * u + u_d * u_d
+            if size > voltage_max2:
+                size = voltage_max / math.sqrt(size)
+                limited = size * u
+                u_d = size * u_d
+                flag = flag + 2
+            iid = iid - k_current_integral * i_d + k_current_back * (u_d - asked)
         else:
-            ii = ii + k_current_integral * error
+            cross = reactance * w * i
+            if u * u + cross * cross > voltage_max2:
+                left = voltage_max2 - cross * cross
+                limited = math.sqrt(left) if left > 0.0 else 0.0
+                if u < 0.0:
+                    limited = -limited
+                flag = flag + 2
+        ii = ii + k_current_integral * error + k_current_back * (limited - u)
+        u = limited
         if delayed > 0.0:
             applied = last_u
             last_u = u

@@ -48,8 +48,8 @@ def candidate_table(
     -------
     pandas.DataFrame
         Columns named with their SI unit; ``evaluated`` says "exactly" or "by bounds". A utilisation by
-        bounds is a lower bound; checks that concern no set have no column. Of several cycles
-        the largest values stand, and the energy of the first. [-]
+        bounds is a lower bound; checks that concern no set have no column. Of several cycles the largest values
+        stand, and the energy of the first. [-]
     """
     import pandas as pd
 

@@ -37,6 +37,7 @@ BLOCKS = 24
 _SLICES_PER_BLOCK = 85  # at most
 _STRETCHES_PER_SLICE = 8  # at least
 _GROUPS_PER_KNOT = 64  # of stretches, in which motion hardly changes: only extremes of torque matter there
+_DRAWN_PARTS = 20  # of a block, each drawn at its largest and smallest torque
 _FEW = 2000  # stretches that tell usual sizes
 _SIGNED_SHARES = (-1.0, -0.5, 0.0, 0.5, 1.0)
 _SHARES = (0.0, 0.02, 0.05, 0.12, 0.25, 0.5, 1.0)  # of three quantities in the directions of extremes
@@ -45,6 +46,9 @@ _FIELDS = (
     *_MOMENTS, "position", "speed", "acceleration", "effort", "shaft_acceleration", "inertia", "gravity",
     "friction", "process", "losses",
 )  # fmt: skip
+
+
+_FIRST_FIELD = 4  # column of a row of instants
 
 
 def condensed_pieces(case: Case, recording: Recording, borders: FloatArray) -> dict[str, Any]:
@@ -69,17 +73,20 @@ def condensed_pieces(case: Case, recording: Recording, borders: FloatArray) -> d
     sums = SliceSums(len(edges) - 1)
     group = max(1, len(borders) // (_GROUPS_PER_KNOT * len(recording.motion.coefficients)))
     extremes = _Extremes(_scale(case, recording, borders), group)
-    pieces: list[FloatArray] = []  # columns: duration, block, class, fields
+    pieces: list[FloatArray] = []  # columns as of `_rows`
+    drawn: list[FloatArray] = []
     share = 0.5 * lobatto(NODES)[1]
     ends = np.searchsorted(borders, edges[::per_block] - 1e-3 * edges[1])
     for block, (begin, end) in enumerate(zip(ends[:-1], ends[1:], strict=True)):
-        points = cut_at_signs(case, recording, stretches_between(case, recording, borders[begin : end + 1]))
+        stretches = stretches_between(case, recording, borders[begin : end + 1])
+        drawn.append(_drawn_instants(stretches, block))
+        points = cut_at_signs(case, recording, stretches)
         length, direction = points.column("duration_s"), points.column("direction")
         flow = points.column("flow").astype(np.int8)
         moments = np.stack([points.column(name) for name in _MOMENTS], axis=-1)  # (S, K, 3)
         middle = points.column("start_s") + 0.5 * length
         sums.add((middle * (len(edges) - 1) / period).astype(np.intp), length, flow, direction, moments)
-        kinds = 3 * flow.astype(np.intp) + np.sign(direction).astype(np.intp) + 1
+        kinds = _kinds(flow, direction)
         for kind in np.unique(kinds).tolist():
             mine = np.flatnonzero(kinds == kind)
             flat = moments[mine].reshape(-1, len(_MOMENTS))
@@ -87,8 +94,10 @@ def condensed_pieces(case: Case, recording: Recording, borders: FloatArray) -> d
             rows_of = partial(_instants, points, mine, block, kind)
             pieces.append(rows_of(index, weight))
             extremes.offer(flat, kind, rows_of)
-    nodes = _constant_pieces(np.concatenate([*pieces, *extremes.found()]), period)
-    return finished(case, recording, nodes) | {"slices": sums.finished(np.diff(edges))}
+    return finished(case, recording, _in_blocks(np.concatenate([*pieces, *extremes.found()]), period)) | {
+        "slices": sums.finished(np.diff(edges)),
+        "drawn": finished(case, recording, _in_time(np.concatenate(drawn), period)),
+    }
 
 
 def _instants(
@@ -99,27 +108,64 @@ def _instants(
     index: NDArray[np.intp],
     weight: FloatArray | float = 0.0,
 ) -> FloatArray:
-    """Rows of chosen nodes of chosen stretches: duration, block, class, then `_FIELDS`."""
+    """Chosen nodes of chosen stretches."""
     row, node = mine[index // NODES], index % NODES
-    same = np.ones(len(index))
-    return np.stack(
-        [weight * same, block * same, kind * same, *(points.at(name, row, node) for name in _FIELDS)], axis=1
-    )
+    first = np.zeros_like(row)
+    time = points.at("start_s", row, first) + points.at("duration_s", row, first) * node / (NODES - 1)
+    return _rows(weight, time, block, kind, [points.at(name, row, node) for name in _FIELDS])
 
 
-def _constant_pieces(rows: FloatArray, period: float) -> dict[str, Any]:
+def _rows(
+    weight: FloatArray | float,
+    time: FloatArray,
+    block: int,
+    kind: NDArray[np.intp] | int,
+    fields: list[FloatArray],
+) -> FloatArray:
+    """Instants as rows: duration that each stands for, instant, block, class, then `_FIELDS`."""
+    same = np.ones(len(time))
+    return np.stack([weight * same, time, block * same, kind * same, *fields], axis=1)
+
+
+def _kinds(flow: NDArray[np.int8], direction: FloatArray) -> NDArray[np.intp]:
+    """Classes in which torque and friction have one sign: direction of power and of motion."""
+    return np.asarray(3 * flow.astype(np.intp) + np.sign(direction).astype(np.intp) + 1)
+
+
+def _drawn_instants(stretches: dict[str, Any], block: int) -> FloatArray:
+    """Instants with the largest and the smallest torque of each part of a block, in order, and its first."""
+    torque = stretches["shaft_torque"][:, 0]
+    edges = np.unique(np.linspace(0, len(torque), _DRAWN_PARTS + 1).astype(np.intp))
+    chosen = {0}
+    for begin, end in zip(edges[:-1].tolist(), edges[1:].tolist(), strict=True):
+        chosen |= {begin + int(torque[begin:end].argmax()), begin + int(torque[begin:end].argmin())}
+    row = np.array(sorted(chosen), dtype=np.intp)
+    kinds = _kinds(stretches["flow"][row], stretches["direction"][row])
+    return _rows(0.0, stretches["start_s"][row], block, kinds, [stretches[name][row, 0] for name in _FIELDS])
+
+
+def _in_time(rows: FloatArray, period: float) -> dict[str, Any]:
+    """Constant pieces from each instant to the next."""
+    return _constant_pieces(rows, np.diff(rows[:, 1], append=period))
+
+
+def _in_blocks(rows: FloatArray, period: float) -> dict[str, Any]:
     """Constant pieces in the order of blocks; within a block, what the load gives back comes last."""
-    duration, block, kind = rows[:, 0].copy(), rows[:, 1], rows[:, 2].astype(np.intp)
+    torque = np.abs(rows[:, _FIRST_FIELD + _FIELDS.index("shaft_torque")])
+    rows = rows[np.lexsort((torque, rows[:, 3] // 3 == BACK_DRIVING, rows[:, 2]))]
     # An extreme lasts next to nothing here: its share of the means is in the condensed instants already.
-    duration = np.maximum(duration, 1e-12 * period)
-    fields = dict(zip(_FIELDS, rows[:, 3:].T, strict=True))
-    order = np.lexsort((np.abs(fields["shaft_torque"]), kind // 3 == BACK_DRIVING, block))
-    duration, kind = duration[order], kind[order]
-    duration *= period / duration.sum()
-    nodes = {name: np.repeat(value[order, None], 2, axis=1) for name, value in fields.items()}
+    duration = np.maximum(rows[:, 0], 1e-12 * period)
+    return _constant_pieces(rows, duration * (period / duration.sum()))
+
+
+def _constant_pieces(rows: FloatArray, duration: FloatArray) -> dict[str, Any]:
+    """Pieces that last as said and keep the instant at which the record holds their values."""
+    kind = rows[:, 3].astype(np.intp)
+    values = zip(_FIELDS, rows[:, _FIRST_FIELD:].T, strict=True)
+    nodes = {name: np.repeat(value[:, None], 2, axis=1) for name, value in values}
     return nodes | {
         "duration_s": duration,
-        "start_s": np.concatenate([[0.0], np.cumsum(duration)[:-1]]),
+        "start_s": rows[:, 1].copy(),
         "flow": (kind // 3).astype(np.int8),
         "direction": (kind % 3 - 1).astype(float),
     }

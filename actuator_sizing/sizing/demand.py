@@ -66,6 +66,7 @@ class Demand:
     torque_by_cause: Mapping[str, FloatArray]  # (P, K) parts of shaft_torque
     load_inertia: float  # largest inertia of load and mechanism at the driven shaft
     slices: RecordSlices | None = None  # of a condensed record, whose pieces are not in the order of time
+    drawn: Demand | None = None  # such a record in the order of time, at instants enough for a drawing
 
     @cached_property
     def functions(self) -> FloatArray:
@@ -150,12 +151,14 @@ def build_demand(case: Case, *, in_order: bool = False) -> Demand:
     if case.recording is not None:
         from actuator_sizing.sizing.measured_demand import recorded_pieces
 
-        return Demand(**recorded_pieces(case, case.recording, in_order=in_order))
+        known = recorded_pieces(case, case.recording, in_order=in_order)
+        drawn = known.pop("drawn", None)
+        return Demand(**known, drawn=None if drawn is None else Demand(**drawn))
     pieces = list(_pieces(case))
     stacked: dict[str, Any] = {
         name: np.array([piece[name] for piece in pieces])
         for name in (*(f.name for f in fields(Demand)), "lever")
-        if name not in ("torque_by_cause", "load_inertia", "slices")
+        if name not in ("torque_by_cause", "load_inertia", "slices", "drawn")
     }
     stacked["flow"] = stacked["flow"].astype(np.int8)
     causes = {cause: np.array([piece["by_cause"][cause] for piece in pieces]) for cause in CAUSES}

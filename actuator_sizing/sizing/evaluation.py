@@ -5,7 +5,7 @@ Everything here is independent of the drive; a check that needs one combines the
 
 from __future__ import annotations
 
-from dataclasses import dataclass, fields
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -124,9 +124,7 @@ def evaluate_pairs(
         )
         for first in range(0, len(motors), chunk)
     ]
-    return PairResults(
-        **{f.name: np.concatenate([getattr(part, f.name) for part in parts]) for f in fields(PairResults)}
-    )
+    return PairResults.joined(parts)
 
 
 def _evaluate_chunk(
@@ -145,8 +143,8 @@ def _evaluate_chunk(
     torque_peak_at = demand.instant(piece, position)
     cold = judge_cold(motors, surroundings)
     c_cold = electrical_course(demand, T, omega, c.shaft_torque_nm, cold)
-    voltage = _worse(_voltages(demand, c), _voltages(demand, c_cold), "voltage_peak_v")
-    plane = _worse(torque_plane(demand, c, judged), torque_plane(demand, c_cold, cold), "plane_utilisation")
+    voltage = worse_of(voltage_extremes(demand, c), voltage_extremes(demand, c_cold), "voltage_peak_v")
+    plane = worse_of(torque_plane(demand, c, judged), torque_plane(demand, c_cold, cold), "plane_utilisation")
     speed_peak, speed_piece, speed_position = largest_magnitude(omega)
 
     squared = i**2
@@ -216,7 +214,7 @@ def _evaluate_chunk(
     )
 
 
-def _voltages(demand: Demand, c: PairCourse) -> dict[str, FloatArray]:
+def voltage_extremes(demand: Demand, c: PairCourse) -> dict[str, FloatArray]:
     """Largest voltage with and without ``L di/dt``, and when."""
     with_L, without_L = largest_magnitude(c.voltage_v), largest_magnitude(c.voltage_without_inductance_v)
     return {
@@ -228,7 +226,7 @@ def _voltages(demand: Demand, c: PairCourse) -> dict[str, FloatArray]:
     }
 
 
-def _worse(hot: dict[str, FloatArray], cold: dict[str, FloatArray], decides: str) -> dict[str, Any]:
+def worse_of(hot: dict[str, FloatArray], cold: dict[str, FloatArray], decides: str) -> dict[str, Any]:
     """Pair by pair what is larger, hot or cold, and which it is."""
     is_cold = cold[decides] > hot[decides]
     chosen = {name: np.where(is_cold, cold[name], value) for name, value in hot.items()}

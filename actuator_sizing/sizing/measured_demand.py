@@ -175,9 +175,11 @@ class CutStretches:
         """One field at chosen nodes of chosen stretches, in the unit of the field. [-]"""
         values = np.empty(len(row))
         own = row < len(self.kept)
-        values[own] = self.whole[name][self.kept[row[own]], node[own]]
-        if not own.all():
-            values[~own] = self.parts[name][row[~own] - len(self.kept), node[~own]]
+        for where, source, rows in (
+            (own, self.whole[name], self.kept[row[own]]),
+            (~own, self.parts[name], row[~own] - len(self.kept)),
+        ):
+            values[where] = source[rows] if source.ndim == 1 else source[rows, node[where]]
         return values
 
 

@@ -3,21 +3,22 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass, fields
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
 from actuator_sizing.core.machine import amplitude_per_unit_current, judge, motor_amplitude_per_unit_current
-from actuator_sizing.core.parameters import DriveParameters
+from actuator_sizing.core.parameters import DriveParameters, _Columns
 from actuator_sizing.core.quadrature import piece_means
 from actuator_sizing.core.window_bounds import overload_bound, windowed_rms_bound
 from actuator_sizing.core.windows import overload_accumulator, windowed_rms
 from actuator_sizing.sizing.checks import Sets
-from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.demand import Demand, build_demand
 from actuator_sizing.sizing.derating import derated_drives
 from actuator_sizing.sizing.evaluation import PairResults, evaluate_pairs
+from actuator_sizing.sizing.joint_bus import PartnerPower, partner_axis, partner_power
 from actuator_sizing.sizing.pair_course import air_gap_coefficients, course
 from actuator_sizing.sizing.thermal_start import ThermalStart
 
@@ -29,7 +30,7 @@ _MOST_NODES = 100_000  # sets times nodes for which an accumulator is followed a
 
 
 @dataclass(frozen=True)
-class _DriveView:
+class _DriveView(_Columns):
     peak: FloatArray
     rms: FloatArray
     rms_at: FloatArray
@@ -83,13 +84,8 @@ def evaluate_sets(
         )
         if progress is not None:
             progress(min(1.0, (first + _PAIRS_PER_CHUNK) / len(pairs)))
-    all_pairs = PairResults(
-        **{f.name: np.concatenate([getattr(part, f.name) for part in results]) for f in fields(PairResults)}
-    )
-    back = np.argsort(np.concatenate(order), kind="stable")
-    view = {
-        f.name: np.concatenate([getattr(part, f.name) for part in views])[back] for f in fields(_DriveView)
-    }
+    all_pairs = PairResults.joined(results)
+    view = _DriveView.joined(views).take(np.argsort(np.concatenate(order), kind="stable"))
     return Sets(
         case=case,
         index=index,
@@ -100,13 +96,23 @@ def evaluate_sets(
         gearheads=case.gearhead_parameters.take(index[:, 1]),
         drives=derated_drives(case).take(index[:, 2]),
         pairs=all_pairs.take(pair_of_set),
-        drive_current_peak_a=view["peak"],
-        drive_current_rms_a=view["rms"],
-        drive_current_rms_at_s=view["rms_at"],
-        overload_a2s=view["overload"],
-        overload_at_s=view["overload_at"],
+        drive_current_peak_a=view.peak,
+        drive_current_rms_a=view.rms,
+        drive_current_rms_at_s=view.rms_at,
+        overload_a2s=view.overload,
+        overload_at_s=view.overload_at,
         start=start,
+        partners=_partner_powers(case),
     )
+
+
+def _partner_powers(case: Case) -> tuple[PartnerPower, ...]:
+    """What the other axes on the bus draw from it."""
+    found = []
+    for partner in case.partners:
+        axis, index = partner_axis(case, partner)
+        found.append(partner_power(partner, evaluate_sets(axis, build_demand(axis), index)))
+    return tuple(found)
 
 
 def _drive_view(

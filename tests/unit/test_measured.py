@@ -268,3 +268,15 @@ def test_the_demo_case_is_two_cycles_of_a_shuttle():
     process = demand.torque_by_cause["process"] * demand.shaft_speed / demand.speed.clip(1e-9, None)
     moving = demand.speed > 0.3
     assert float(np.mean(process[moving])) == pytest.approx(30.0, abs=1.0)
+
+
+@pytest.mark.parametrize("order", [0, 1])
+def test_noise_of_the_speed_is_foretold(order):
+    from actuator_sizing.case.measuring import speed_noise
+
+    t = uneven(20_000, 10.0)
+    value = RNG.normal(0.0, 1e-4, len(t))
+    (spline,) = smooth_position(t, value, 10.0, (20.0,), 0.0, order)
+    found = float(np.std(spline.values(np.linspace(0.0, 10.0, 5000), 1)))
+    # A spline's edge at the cut-off is not sharp: it passes somewhat more of what grows with frequency.
+    assert found / speed_noise(spline, t, value, order) == pytest.approx(1.0, abs=0.35)

@@ -3,6 +3,7 @@
 import dataclasses
 import json
 import math
+import warnings
 
 import numpy as np
 import pytest
@@ -350,3 +351,51 @@ def test_default_loops_are_stable_with_every_payload():
         found.plant, load_inertia_kg_m2=found.plant.load_inertia_kg_m2 * 20.0 / 920.0
     )  # moving mass alone; the shaft itself has no inertia here
     assert LinearCascade(light, found.settings).spectral_radius < 1.0
+
+
+def test_every_setting_has_its_unit(moved):
+    from actuator_sizing.report.loop_settings import SETTING_UNITS
+
+    assert list(SETTING_UNITS) == list(moved.gains)
+
+
+def test_results_and_workbook_hold_the_dynamics_of_the_leading_set():
+    from datetime import date
+    from io import BytesIO
+
+    import openpyxl
+
+    from actuator_sizing.report.json_results import results_dict
+    from actuator_sizing.report.workbook import render_workbook
+
+    one = made({"settling band": 1e-4, "allowed following error": 1e-3}, gearheads=[GEARHEAD])
+    comparison = compare(one)
+    answer = results_dict(comparison)["dynamics"]
+    checks = {check.check: check for check in comparison.best.checks}
+    assert answer["quantities"]["following_error_peak"] == pytest.approx(checks["following_error"].demand)
+    assert answer["quantities"]["speed_sensitivity_peak_ratio"] == pytest.approx(
+        checks["stability_reserve"].demand
+    )
+    assert answer["settings"]["position_gain_per_s"] > 0.0
+    assert answer["limited_by"] in ("current loop", "antiresonance of motor and load", "stability reserve")
+    with warnings.catch_warnings():
+        warnings.simplefilter("ignore")  # openpyxl does not know data bars
+        book = openpyxl.load_workbook(BytesIO(render_workbook(comparison, date(2026, 1, 5))))
+    rows = list(book["dynamics"].iter_rows(values_only=True))
+    assert (
+        "setting",
+        "position_gain_per_s",
+        pytest.approx(answer["settings"]["position_gain_per_s"]),
+        "1/s",
+    ) in rows
+    assert any(row[1] == "following error peak" and row[3] == "m" for row in rows)
+    plain = compare(made(gearheads=[GEARHEAD]))
+    assert results_dict(plain)["dynamics"] is None
+
+
+def test_a_long_record_is_simulated_in_its_order():
+    """The record keeps its order though the comparison condenses it; its planned current is that of the cycle."""
+    case_ = read_case("catalogs_demo/tray_shuttle_measured")
+    best = compare(case_, detail=1).best
+    found = simulate(case_, motor=best.motor, gearhead=best.gearhead, drive=best.drive, rate_hz=2000.0)
+    assert found.quantities["current_rms_a"] == pytest.approx(best.quantities["current_rms_a"], rel=0.03)
