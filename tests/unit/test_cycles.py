@@ -19,10 +19,12 @@ from actuator_sizing.core.thermal_run import single_run
 from actuator_sizing.errors import ERROR, InputError
 from actuator_sizing.report import render_report
 from actuator_sizing.report.motion_picture import write_motion
+from actuator_sizing.sizing.case_changes import single
 from actuator_sizing.sizing.comparison import compare
 from actuator_sizing.sizing.cycles import cycle_demands, evaluate_cycles
 from actuator_sizing.sizing.judging import active_checks, judge_sets
-from actuator_sizing.sizing.levers import LEVERS, excess, single, smallest_change
+from actuator_sizing.sizing.levers import LEVERS, smallest_change
+from actuator_sizing.sizing.resizing import PASS, Resizing
 from actuator_sizing.sizing.screening import screen
 from actuator_sizing.sizing.set_model import SetModel
 from actuator_sizing.sizing.simulation import simulate
@@ -207,15 +209,20 @@ def test_bounds_over_cycles_stay_below_the_exact_utilisations():
 
 def test_a_lever_changes_every_cycle():
     one = single(several(NORMAL, Cycle("worst", turns(14.0))), 0, 1, 0)
-    assert excess(one) > 0.0
+    resizing = Resizing.of(one, PASS)
+    assert not resizing.outcome(resizing.case).is_met
     lever = next(lever for lever in LEVERS if lever.key == "move_time")
-    answer = smallest_change(one, lever)
-    assert answer is not None
-    assert answer.needed is not None
-    changed = lever.changed(one, answer.needed)
-    assert excess(changed) <= 0.0
-    for before, after in zip(one.cycles, changed.cycles, strict=True):
-        assert after.segments[0].duration_s == pytest.approx(answer.needed * before.segments[0].duration_s)
+    found = smallest_change(resizing, lever)
+    assert found is not None
+    assert found.answer.needed is not None
+    changed = lever.changed(resizing.case, found.answer.needed)
+    assert Resizing.of(changed, PASS).outcome(changed).is_met
+    factors = [
+        after.segments[0].duration_s / before.segments[0].duration_s
+        for before, after in zip(one.cycles, changed.cycles, strict=True)
+    ]
+    assert factors[0] == pytest.approx(factors[1])
+    assert factors[0] > 1.0
 
 
 # -- cycles that do not repeat -----------------------------------------------------------------------
