@@ -143,6 +143,9 @@ def audit(case: Path) -> int:
     help="For the N nearest losers, find the smallest change of each lever that lets them pass; for a leading "
     "set with low reserve, the change that gives it more.",
 )
+@click.option(
+    "--trade-offs", is_flag=True, help="Find the sets that no other beats in price, mass, energy and reserve."
+)
 @click.option("--ratios", is_flag=True, help="Work out which transmission ratios each motor can live with.")
 @click.option(
     "--headroom", is_flag=True, help="Find what the leading set can do at most, as 'headroom' does."
@@ -171,6 +174,7 @@ def compare(
     as_json: bool,
     since: Path | None,
     levers: int,
+    trade_offs: bool,
     ratios: bool,
     headroom: bool,
     pdf: bool | None,
@@ -203,6 +207,7 @@ def compare(
             rank_by=rank_by,
             detail=detail,
             levers=levers,
+            trade_offs=trade_offs,
             windows=ratios,
             headroom=headroom,
             progress=progress,
@@ -290,7 +295,12 @@ def machine(
     "--set", "changes", multiple=True, metavar="SETTING=VALUE", help="Change a setting of the loops."
 )
 @click.option("--cycle", default="", metavar="NAME", help="Cycle of a case with several; default: the first.")
-@click.option("--rate", type=float, metavar="HZ", help="Sampling rate; default: the drive's control rate.")
+@click.option(
+    "--rate",
+    type=click.FloatRange(min=0.0, min_open=True),
+    metavar="HZ",
+    help="Sampling rate; default: the drive's control rate.",
+)
 @click.option("--cycles", type=click.IntRange(min=1), default=1, metavar="N", help="How many cycles to run.")
 @click.option(
     "--out", type=click.Path(file_okay=False, path_type=Path), help="Write tables and figures here."
@@ -322,6 +332,8 @@ def simulate(
     from actuator_sizing.sizing.simulation import simulate as simulate_set
     from actuator_sizing.sizing.simulation_request import parse_settings
 
+    if rate is not None and math.isnan(rate):
+        raise click.BadParameter("nan is not a sampling rate", param_hint="--rate")
     simulation = simulate_set(
         read_case(case),
         motor=motor,
