@@ -143,6 +143,9 @@ def audit(case: Path) -> int:
     help="For the N nearest losers, find the smallest change of each lever that lets them pass; for a leading "
     "set with low reserve, the change that gives it more.",
 )
+@click.option(
+    "--trade-offs", is_flag=True, help="Find the sets that no other beats in price, mass, energy and reserve."
+)
 @click.option("--ratios", is_flag=True, help="Work out which transmission ratios each motor can live with.")
 @click.option(
     "--headroom", is_flag=True, help="Find what the leading set can do at most, as 'headroom' does."
@@ -171,6 +174,7 @@ def compare(
     as_json: bool,
     since: Path | None,
     levers: int,
+    trade_offs: bool,
     ratios: bool,
     headroom: bool,
     pdf: bool | None,
@@ -203,6 +207,7 @@ def compare(
             rank_by=rank_by,
             detail=detail,
             levers=levers,
+            trade_offs=trade_offs,
             windows=ratios,
             headroom=headroom,
             progress=progress,

@@ -46,7 +46,7 @@ from actuator_sizing.sizing.results import (
 )
 from actuator_sizing.sizing.screening import Screened, screen
 from actuator_sizing.sizing.set_model import SetModel
-from actuator_sizing.sizing.trade_offs import trade_offs
+from actuator_sizing.sizing.trade_offs import find_trade_offs
 from actuator_sizing.version import __version__
 
 if TYPE_CHECKING:
@@ -69,6 +69,7 @@ def compare(
     rank_by: str | None = None,
     detail: int | None = None,
     levers: int = 0,
+    trade_offs: bool = False,
     windows: bool = False,
     headroom: bool = False,
     progress: Progress | None = None,
@@ -89,6 +90,8 @@ def compare(
     levers : int
         For how many of the nearest losers to find the smallest change that lets them pass; where the leading
         set has low reserve, its levers are found too. [-]
+    trade_offs : bool
+        Find the passing sets that no other one beats in price, mass, energy and reserve at once too.
     windows : bool
         Work out the ratio windows of every motor too.
     headroom : bool
@@ -198,7 +201,7 @@ def compare(
         inertias=inertia_shares(case, demand, results[0].ratio),
         version=__version__,
         cycles=cycle_results(cycles),
-        trade_offs=trade_offs(case, sets, verdicts, index, order),
+        trade_offs=find_trade_offs(case, sets, verdicts, index, order) if trade_offs else None,
         windows=found_windows,
         headroom=_headroom(cycles, results[0], progress) if headroom else None,
     )

@@ -251,7 +251,7 @@ class Comparison:
     inertias: tuple[InertiaShare, ...] = ()  # inertia inventory; empty where the case has none
     version: str = ""
     cycles: tuple[CycleResult, ...] = ()  # where there are several; `demand` and `cycle` are of the first
-    trade_offs: TradeOffs | None = None  # which passing sets no other one beats (None: not looked at)
+    trade_offs: TradeOffs | None = None  # which passing sets no other one beats, where it was asked for
     windows: RatioWindows | None = None  # ratio windows of every motor, where they were asked for
     headroom: Headroom | None = None  # how far the leading set can go, where it was asked for
 

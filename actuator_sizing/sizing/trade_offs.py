@@ -134,7 +134,7 @@ class TradeOffs:
         }
 
 
-def trade_offs(
+def find_trade_offs(
     case: Case, several: tuple[Sets, ...], verdicts: Verdicts, index: IndexArray, order: IndexArray
 ) -> TradeOffs:
     """Find the sets that no other one beats.

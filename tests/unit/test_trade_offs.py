@@ -48,7 +48,7 @@ def turning(**changes):
 
 
 def test_a_comparison_says_by_whom_a_set_is_beaten():
-    found = compare(turning()).trade_offs
+    found = compare(turning(), trade_offs=True).trade_offs
     assert found.criteria == ("price", "mass", "energy", "reserve")
     assert all(one.is_compared == (one.drive != "D2") for one in found.sets)
     dear = [one for one in found.sets if one.drive == "D1"]
@@ -68,7 +68,7 @@ def test_a_criterion_that_is_known_of_no_set_is_left_out():
     made = turning()
     parameters = made.motor_parameters
     blind = type(parameters)(**{**vars(parameters), "price": np.full(2, np.nan)})
-    found = compare(type(made)(**{**vars(made), "motor_parameters": blind})).trade_offs
+    found = compare(type(made)(**{**vars(made), "motor_parameters": blind}), trade_offs=True).trade_offs
     assert found.criteria == ("mass", "energy", "reserve")
     assert found.front
 
@@ -79,4 +79,4 @@ def test_where_nothing_passes_there_is_nothing_to_trade():
         "rotary load", {"load inertia": 0.5},
         cycle({"law": "trapezoid", "displacement": 2.0, "duration_s": 0.6}), motors=[weak], gearheads=[DIRECT],
     )  # fmt: skip
-    assert compare(made).trade_offs.sets == ()
+    assert compare(made, trade_offs=True).trade_offs.sets == ()

@@ -25,7 +25,7 @@ _MOST_RATIOS = 8  # catalog ratios of one motor in a cell
 
 
 def decision_sections(comparison: Comparison, figures: Iterable[str]) -> list[Section]:
-    """The sections that were asked for, and that of the trade-offs where two sets pass."""
+    """The sections that were asked for."""
     drawn = set(figures)
     made = (
         _trade_offs(comparison, drawn),
@@ -65,6 +65,7 @@ def _trade_offs(comparison: Comparison, figures: set[str]) -> Section | None:
         *(Column(title, numeric=True) for title in (_TITLES[name] for name in found.criteria)),
         Column("Beats", numeric=True, weight=0.8),
     )
+    places = {one.parts: place for place, one in enumerate(found.sets)}
     beaten: dict[int, int] = {}
     for one in found.sets:
         if one.dominated_by is not None:
@@ -72,7 +73,7 @@ def _trade_offs(comparison: Comparison, figures: set[str]) -> Section | None:
     rows = tuple(
         row(
             str(place), clean(one.label), *(_value(one, name) for name in found.criteria),
-            f"{beaten.get(found.sets.index(one), 0):d}",
+            f"{beaten.get(places[one.parts], 0):d}",
         )
         for place, one in enumerate(front[:MOST_TRADED], start=1)
     )  # fmt: skip

@@ -48,7 +48,7 @@ FIGURES = (
     "step_response",
     "cycles",
 )
-#: Keys of figures that only some cases ask for, or a question beyond pass and fail.
+#: Keys of figures that only some cases ask for, or an option of the comparison.
 OPTIONAL_FIGURES = ("stops", "trade_offs", "ratio_windows", "payload_map")
 
 

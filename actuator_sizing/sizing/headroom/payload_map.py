@@ -17,7 +17,7 @@ from actuator_sizing.sizing.resizing import Outcome, Resizing
 if TYPE_CHECKING:
     import pandas as pd
 
-_ROWS = 13
+_ROWS = 10
 _WIDER = 1.15  # of the heaviest payload: how far the map goes beyond
 _RESOLUTION = 2e-4  # of a time
 
