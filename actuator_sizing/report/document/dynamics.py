@@ -111,6 +111,11 @@ def _facts(simulation: Simulation) -> tuple[tuple[str, str], ...]:
         ("largest following error of the load", _at_load(simulation, "following_error_peak")),
         ("RMS following error", _at_load(simulation, "following_error_rms")),
     ]
+    step = simulation.quantities.get("encoder_step_over_band_ratio", math.nan)
+    if math.isfinite(step):
+        rows.append(
+            ("step of the encoder at the load over the tightest band", f"{number(100.0 * step, 3)} %")
+        )
     rows += [
         (label, quantity(simulation.quantities[key], unit))
         for label, key, unit in _QUANTITIES
