@@ -99,7 +99,7 @@ def draw_response(simulation: Simulation) -> Figure:
     axes[-1].set_xlabel(f"time [{unit.label}], positive along +x")
     style.legend_above(top, columns=3)
     axes[0].set_xlim(0.0, float(unit.convert(time[-1])))
-    figure.align_ylabels(axes)
+    style.align_labels(axes)
     return figure
 
 
@@ -126,7 +126,7 @@ def _draw_stops(simulation: Simulation) -> Figure:
     if known:
         axes[0].set_xlim(0.0, float(unit.convert(min(3.0 * max(known), float(series["time_s"].max())))))
     style.legend_above(axes[0], columns=2)
-    figure.align_ylabels(axes)
+    style.align_labels(axes)
     return figure
 
 

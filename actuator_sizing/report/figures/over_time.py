@@ -61,7 +61,7 @@ def draw_motion(cycle: pd.DataFrame, units: AxisUnits, name: str = "") -> Figure
         ax.axhline(0.0, color=style.QUIET, linewidth=0.8)
         ax.set_ylabel(f"{label}\n[{shown.label}]")
         ax.margins(y=0.12)
-    figure.align_ylabels(axes)
+    style.align_labels(axes)
     mark_segments(axes, cycle, unit)
     of_cycle = f" in the cycle {style.shorten(name, 40)}" if name else ""
     axes[-1].set_xlabel(f"time{of_cycle} [{unit.label}], all values positive along +x")

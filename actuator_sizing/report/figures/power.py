@@ -69,7 +69,7 @@ def draw_bus(detail: SetDetail) -> Figure | None:
     )
     style.draw_levels(below, _levels(levels, powers, shown))
     below.set_xlabel(f"time [{unit.label}]; power below zero (hatched) comes back")
-    figure.align_ylabels([above, below])
+    style.align_labels([above, below])
     mark_segments([above, below], detail.cycle, unit)
     return figure
 

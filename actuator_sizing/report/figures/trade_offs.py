@@ -13,6 +13,7 @@ if TYPE_CHECKING:
 
     from actuator_sizing.sizing.trade_offs import TradeOff, TradeOffs
 
+_LABEL_PT = 6.8
 _MOST_NUMBERED = 12  # labels that do not yet hide one another
 _MOST_DRAWN = 2_000  # beaten sets; more are a blot
 _UNITS = {"mass": DisplayUnit("kg"), "reserve": DisplayUnit("%", 0.01)}
@@ -62,12 +63,60 @@ def _draw_panel(
     if beaten:
         ax.plot(*zip(*beaten, strict=True), linestyle="none", marker="o", markersize=3.4, markerfacecolor="white",
                 markeredgecolor=style.QUIET, markeredgewidth=0.7, zorder=2, label="beaten")  # fmt: skip
-    for number, (x, y) in enumerate(best[:_MOST_NUMBERED], start=1):
-        ax.annotate(str(number), (x, y), xytext=(4, 4), textcoords="offset points", fontsize=6.8, zorder=4)
     ax.margins(0.09)
+    _number_points(ax, best[:_MOST_NUMBERED])
     across, up = (
         f"{_WORDS[name]} [{unit.label}]" if unit.label else _WORDS[name]
         for name, unit in zip(names, units, strict=True)
     )
     ax.set_xlabel(across)
     ax.set_ylabel(up)
+
+
+def _number_points(ax: Axes, points: list[tuple[float, float]]) -> None:
+    """Number the points in their order; those too close for a number each share a label."""
+    ax.autoscale_view()  # the limits decide where the labels are
+    to_pt = 72.0 / ax.figure.dpi
+    groups: list[tuple[list[int], float, float]] = []  # numbers, and where their label begins [pt]
+    for number, point in enumerate(points, start=1):
+        x, y = (float(value) * to_pt for value in ax.transData.transform(point))
+        mine: tuple[list[int], float, float] = ([number], x, y)
+        while True:
+            near = next((group for group in groups if _collide(group, mine)), None)
+            if near is None:
+                break
+            groups.remove(near)
+            mine = (sorted(near[0] + mine[0]), max(near[1], mine[1]), max(near[2], mine[2]))
+        groups.append(mine)
+    for numbers, x, y in groups:
+        place = tuple(ax.transData.inverted().transform((x / to_pt, y / to_pt)).tolist())
+        ax.annotate(
+            _span(numbers), place, xytext=(4, 3), textcoords="offset points", fontsize=_LABEL_PT, zorder=4
+        )
+
+
+def _collide(one: tuple[list[int], float, float], other: tuple[list[int], float, float]) -> bool:
+    """Whether two labels would touch."""
+    first, second = (one, other) if one[1] <= other[1] else (other, one)
+    return (
+        second[1] - first[1] < 0.66 * _LABEL_PT * len(_span(first[0])) + 2.0
+        and abs(first[2] - second[2]) < 1.35 * _LABEL_PT
+    )
+
+
+def _span(numbers: list[int]) -> str:
+    """Numbers as short as can be.
+
+    Examples
+    --------
+    >>> _span([3]), _span([3, 4]), _span([5, 6, 7]), _span([1, 3, 4, 5])
+    ('3', '3, 4', '5–7', '1, 3–5')
+    """
+    runs: list[list[int]] = []
+    for number in numbers:
+        if runs and number == runs[-1][-1] + 1:
+            runs[-1].append(number)
+        else:
+            runs.append([number])
+    parts = [f"{run[0]}–{run[-1]}" if len(run) > 2 else ", ".join(map(str, run)) for run in runs]
+    return ", ".join(parts)
