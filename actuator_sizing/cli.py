@@ -295,7 +295,13 @@ def machine(
     "--set", "changes", multiple=True, metavar="SETTING=VALUE", help="Change a setting of the loops."
 )
 @click.option("--cycle", default="", metavar="NAME", help="Cycle of a case with several; default: the first.")
-@click.option("--rate", type=float, metavar="HZ", help="Sampling rate; default: the drive's control rate.")
+@click.option(
+    "--rate",
+    type=click.FloatRange(min=0.0, min_open=True),
+    metavar="HZ",
+    help="Sampling rate; default: the drive's control rate.",
+)
+@click.option("--winding", type=float, metavar="°C", help="Winding temperature; default: as the case judges.")
 @click.option("--cycles", type=click.IntRange(min=1), default=1, metavar="N", help="How many cycles to run.")
 @click.option(
     "--out", type=click.Path(file_okay=False, path_type=Path), help="Write tables and figures here."
@@ -311,6 +317,7 @@ def simulate(
     changes: tuple[str, ...],
     cycle: str,
     rate: float | None,
+    winding: float | None,
     cycles: int,
     out: Path | None,
     as_json: bool,
@@ -327,6 +334,8 @@ def simulate(
     from actuator_sizing.sizing.simulation import simulate as simulate_set
     from actuator_sizing.sizing.simulation_request import parse_settings
 
+    if rate is not None and math.isnan(rate):
+        raise click.BadParameter("nan is not a sampling rate", param_hint="--rate")
     simulation = simulate_set(
         read_case(case),
         motor=motor,
@@ -335,6 +344,7 @@ def simulate(
         input=input_,
         settings=parse_settings(changes),
         rate_hz=math.nan if rate is None else rate,
+        winding_degc=math.nan if winding is None else winding,
         cycles=cycles,
         cycle=cycle,
     )

@@ -11,6 +11,7 @@ from actuator_sizing.case.mechanics import out_of_reach
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.recording import RECORDED_PROCESS, Recording
 from actuator_sizing.core.mechanisms import Mechanism
+from actuator_sizing.errors import NOTE
 
 FloatArray = NDArray[np.float64]
 
@@ -45,6 +46,7 @@ def check_recorded_motion(
                         remedy="Correct the record or the geometry: positions count from the first sample, where "
                         "the mechanism stands as the axis table says.")  # fmt: skip
         return
+    _report_torque_effect(mechanism, at_shaft, understood, problems)
     if type(mechanism).motion_complaints is Mechanism.motion_complaints:
         return  # this mechanism follows every motion
     geometry = mechanism.transfer(q, at_shaft)
@@ -61,6 +63,40 @@ def check_recorded_motion(
                                 got=complaint.got, allowed=complaint.allowed, remedy=complaint.remedy,
                                 severity=complaint.severity)  # fmt: skip
                 return
+
+
+def _report_torque_effect(
+    mechanism: Mechanism, at_shaft: bool, understood: UnderstoodRecording, problems: ProblemList
+) -> None:
+    """Say what the cut-off decides at the driven shaft, where the torque there is computed from the motion."""
+    recording = understood.recording
+    if recording.kind != RECORDED_PROCESS:
+        return
+    parts = []
+    low, high = mechanism.reach(at_shaft)
+    for frequency, motion in understood.fits:
+        t = between_knots(motion)
+        q, dq, ddq = motion.kinematics(t)
+        if np.any((q < low) | (q > high)):
+            continue  # of another cut-off than the stated one, which was checked
+        geometry = mechanism.transfer(q, at_shaft)
+        v = geometry.load_rate * dq
+        a = geometry.load_rate * ddq + geometry.load_bend * dq**2
+        speed = geometry.shaft_rate * dq
+        inertia, gravity = mechanism.shaft_torques(
+            geometry, speed, geometry.shaft_rate * ddq + geometry.shaft_bend * dq**2
+        )
+        efforts = mechanism.efforts(
+            geometry.position, v, a, np.sign(v), recording.payload_at(t), recording.effort_at(t)
+        )
+        torque = efforts.total * geometry.lever + inertia + gravity
+        rms, peak = float(np.sqrt(np.mean(torque[:, :-1] ** 2))), float(np.abs(torque).max())
+        parts.append(f"{rms:.4g} and {peak:.4g} at {frequency:g} Hz")
+    unit = "N" if mechanism.drives_linear_motor else "N·m"
+    problems.report(MEASURED, None, got=f"torque at the driven shaft (RMS and peak, without losses) in {unit} "
+                    + "; ".join(parts), allowed="figures that hardly depend on the cut-off",
+                    remedy="Where they do, choose the cut-off with care: it decides the motor.",
+                    severity=NOTE)  # fmt: skip
 
 
 def _process_extremes(recording: Recording, count: int) -> tuple[FloatArray, ...]:

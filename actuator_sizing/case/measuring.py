@@ -48,6 +48,9 @@ class UnderstoodRecording:
     entries: tuple[Entry, ...]
     rows: NDArray[np.int64]  # of the samples used
     instants_s: FloatArray
+    fits: tuple[
+        tuple[float, PeriodicSpline], ...
+    ]  # cut-off [Hz] and motion: half of the stated one, itself, twice
 
     def row_at(self, time_s: float) -> int:
         """Spreadsheet row of the sample at or after an instant of the cycle."""
@@ -90,9 +93,10 @@ def understand_recording(
         return None
     kept = t < period * (1.0 - 1e-9)
     used = {key: column[kept] for key, column in values.items()}
-    motion = _motion(rows[kept], t[kept], used, period, axis, problems)
-    if motion is None:
+    found = _motion(rows[kept], t[kept], used, period, axis, problems)
+    if found is None:
         return None
+    motion, fits = found
     stretches = int(kept.sum()) + len(motion.coefficients)
     if stretches > EXACT_INTERVALS:
         problems.report(MEASURED, None, got=f"{stretches} stretches between instants",
@@ -101,7 +105,8 @@ def understand_recording(
                         "upper bounds; the voltage that a changing current takes is left out, and bus voltage goes "
                         "by 24 parts of the cycle.",
                         severity=NOTE)  # fmt: skip
-    return _understood(rows[kept], t[kept], used, period, motion, axis, problems)
+    understood = _understood(t[kept], used, period, motion, axis, problems)
+    return UnderstoodRecording(*understood, rows[kept], t[kept], fits)
 
 
 def _period(
@@ -150,7 +155,8 @@ def _motion(
     period: float,
     axis: Axis,
     problems: ProblemList,
-) -> PeriodicSpline | None:
+) -> tuple[PeriodicSpline, tuple[tuple[float, PeriodicSpline], ...]] | None:
+    """The smoothed motion, and with which cut-offs it was tried."""
     still = PeriodicSpline(period, np.zeros(8), 0.0)
     key = next((k for k in ("position", "speed") if k in values and np.any(values[k] != values[k][0])), None)
     gap, after = largest_gap(t, period)
@@ -162,7 +168,9 @@ def _motion(
                         severity=WARNING)  # fmt: skip
     if key is None:
         steady = "speed" in values and values["speed"][0] != 0.0 and "position" not in values
-        return PeriodicSpline(period, np.zeros(8), float(values["speed"][0]) * period) if steady else still
+        return (
+            PeriodicSpline(period, np.zeros(8), float(values["speed"][0]) * period) if steady else still
+        ), ()
     cut_off = axis.number("smoothing_cut_off")
     if knots_for(period, cut_off) > _MOST_KNOTS or period / knots_for(period, cut_off) < gap:
         highest = min(0.5 / gap, 0.5 * _MOST_KNOTS / period)
@@ -182,9 +190,10 @@ def _motion(
     ]
     frequencies = [factor * cut_off for factor in factors]
     fitted = smooth_position(t, values[key], period, frequencies, drift, order)
-    fits = dict(zip(factors, fitted, strict=True))
-    _report_effect(fits, cut_off, axis.motion_coordinate, problems)
-    return fits[1.0]
+    fits = tuple(zip(frequencies, fitted, strict=True))
+    chosen = fitted[factors.index(1.0)]
+    _report_effect(fits, chosen, axis.motion_coordinate, problems)
+    return chosen, fits
 
 
 def _drift(
@@ -226,15 +235,18 @@ def _drift(
 
 
 def _report_effect(
-    fits: dict[float, PeriodicSpline], cut_off: float, coordinate: str, problems: ProblemList
+    fits: tuple[tuple[float, PeriodicSpline], ...],
+    chosen: PeriodicSpline,
+    coordinate: str,
+    problems: ProblemList,
 ) -> None:
     """Say what the cut-off decides: RMS and peak of the acceleration with half and twice of it."""
     unit = "m/s²" if coordinate == "linear" else "rad/s²"
     parts = []
-    for factor, fit in fits.items():
+    for frequency, fit in fits:
         rms, peak = acceleration_figures(fit)
-        parts.append(f"{rms:.4g} and {peak:.4g} {unit} at {factor * cut_off:g} Hz")
-    rms, peak = acceleration_figures(fits[1.0])
+        parts.append(f"{rms:.4g} and {peak:.4g} {unit} at {frequency:g} Hz")
+    rms, peak = acceleration_figures(chosen)
     absurd = peak > ABSURD[coordinate == "linear"][0]
     problems.report(MEASURED, None, got="acceleration (RMS and peak) " + "; ".join(parts),
                     allowed="a cut-off above which there is only noise" if not absurd
@@ -312,14 +324,13 @@ def _standstill(
 
 
 def _understood(
-    rows: NDArray[np.int64],
     t: FloatArray,
     values: dict[str, FloatArray],
     period: float,
     motion: PeriodicSpline,
     axis: Axis,
     problems: ProblemList,
-) -> UnderstoodRecording:
+) -> tuple[Recording, Segment, tuple[Entry, ...]]:
     key = next((k for k in EFFORTS if k in values), None)
     kind = {"load_force": RECORDED_EFFORT, "shaft_torque": RECORDED_SHAFT, "current": RECORDED_SHAFT}.get(
         key or "", RECORDED_PROCESS
@@ -344,7 +355,7 @@ def _understood(
         Entry(MEASURED, None, "measured cycle", "duration used", "", period, "s", "derived",
               "whole cycles of the record"),
     )  # fmt: skip
-    return UnderstoodRecording(recording, segment, entries, rows, t)
+    return recording, segment, entries
 
 
 def _closed(values: FloatArray) -> FloatArray:

@@ -16,6 +16,7 @@ from actuator_sizing.errors import ERROR, WARNING, Problem
 
 _TABLE = "bus_partners"
 _SAME_BUS = 0.02  # relative difference of stated bus voltages that nobody minds
+_ANOTHER_BUS = 0.3  # beyond it the partner cannot be on this bus
 
 Reader = Callable[[Path], tuple[Case | None, tuple[Problem, ...]]]
 
@@ -140,10 +141,11 @@ def _same_bus(case: Case, partner: BusPartner, other: Case, problems: ProblemLis
     for which in ("min", "max"):
         mine, theirs = (getattr(each.surroundings, f"bus_{which}_v") for each in (case, other))
         if abs(theirs - mine) > _SAME_BUS * mine:
+            severity = ERROR if abs(theirs - mine) > _ANOTHER_BUS * mine else WARNING
             word = {"min": "minimum", "max": "maximum"}[which]
             _wrong(problems, partner, "case", f"{shown(partner.path)} with a {word} bus voltage of {theirs:g} V",
                    f"the {mine:g} V of this case, since the bus is the same",
-                   "Correct one of the two; the voltage of this case is taken for the bus.", WARNING)  # fmt: skip
+                   "Correct one of the two; the voltage of this case is taken for the bus.", severity)  # fmt: skip
 
 
 def _parts_exist(partner: BusPartner, other: Case, problems: ProblemList) -> bool:

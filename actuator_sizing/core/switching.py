@@ -20,9 +20,9 @@ FloatArray = NDArray[np.float64]
 
 _PARTS_OF_PERIOD = 20.0  # steps per period of the fastest oscillation, so that no crossing pair is missed
 #: Changes of mode before a run is given up, besides one for each input; each takes a millisecond or two.
-_FREE_EVENTS, _MOST_EVENTS = 2_000, 20_000
+_FREE_EVENTS, _MOST_EVENTS = 2_000, 6_000
 _SLACK = 1e-12  # of a level: what rests on it to rounding has not left it
-_MOST_STEPS = 20_000_000  # about ten seconds
+_MOST_STEPS = 5_000_000  # some seconds
 _BLOCK = 256  # steps of one mode that are taken at once
 _KEPT = 20_000  # steps that are recorded; of more, evenly chosen ones
 _MOST_TERMS = 40  # of a Taylor series; needed where a step is longer than the fastest decay
@@ -46,6 +46,7 @@ class Course:
     states: FloatArray
     events: int
     is_complete: bool  # False: stopped at the largest number of events or steps
+    steps: int = 0
 
     @property
     def end(self) -> FloatArray:
@@ -346,7 +347,7 @@ class _Record:
         time, states = np.concatenate(self._times), np.concatenate(self._states)
         if time[-1] != self.time_s:
             time, states = np.append(time, self.time_s), np.vstack([states, self._last])
-        return Course(time, states, self.events, is_complete)
+        return Course(time, states, self.events, is_complete, self.steps)
 
 
 def _first_event(

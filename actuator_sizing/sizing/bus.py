@@ -23,7 +23,6 @@ from actuator_sizing.sizing.bus_sag import BusUnderLoad, bus_under_load, is_soft
 from actuator_sizing.sizing.bus_side import (
     BusSide,
     bus_side,
-    chopper_threshold,
     clamping_threshold,
     supply_feeds_back,
 )
@@ -83,16 +82,7 @@ def own_results(sets: Sets) -> BusResults:
     Regeneration starts from the highest voltage of the supply. Peak and RMS power of the supply leave out what
     the capacitors help; its mean power is what it really gives. Sag is judged from the minimum bus voltage.
     """
-    return _results(sets, clamping_threshold(sets))
-
-
-def results_with_resistor(sets: Sets) -> BusResults:
-    """The bus of every set if its chopper had a resistor, to recommend one, shape (S,). [-]"""
-    return _results(sets, chopper_threshold(sets))
-
-
-def _results(sets: Sets, threshold_v: FloatArray) -> BusResults:
-    side = bus_side(sets, threshold_v)
+    side = bus_side(sets, clamping_threshold(sets))
     pairs, pair_of_set = np.unique(sets.index[:, :2], axis=0, return_inverse=True)
     pair_of_set = pair_of_set.reshape(-1)
     parts, order = [], []

@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 
-from actuator_sizing.sizing.bus import results_with_resistor
 from actuator_sizing.sizing.bus_side import supply_feeds_back
 from actuator_sizing.sizing.checks.base import Sets
 from actuator_sizing.sizing.joint_bus import bus_results
@@ -60,13 +61,16 @@ def _recommended_resistor(sets: Sets) -> dict[str, float]:
     answer = {"brake_resistor_smallest_ohm": float(sets.drives.brake_resistor_min_ohm[0])}
     if supply_feeds_back(sets):
         return answer
-    b = results_with_resistor(sets)
+    stated = sets.option("brake resistor")
+    if np.isnan(stated):  # any value will do: it decides no energy
+        options = {**sets.case.options, "brake resistor": 1.0}
+        sets = replace(sets, case=replace(sets.case, options=options), _found={})
+    b = bus_results(sets)
     peak = float(b.brake_power_peak_w[0])
     if not peak > 0.0:
         return answer
     U, C = float(b.threshold_v[0]), float(b.capacitance_f[0])
     span = float(np.nan_to_num(U**2 - b.release_v[0] ** 2))
-    stated = sets.option("brake resistor")
     strongest = peak if np.isnan(stated) else U**2 / stated
     return answer | {
         "brake_resistor_largest_ohm": U**2 / peak,

@@ -27,7 +27,7 @@ _SETTLED = 6.0  # slowest time constants shown after each step
 _LONGEST_S = 20.0
 _PERIODS, _PER_PERIOD = 20, 60
 _SINE_SHARE = 0.2  # amplitude of the sinusoid over the steady voltage
-_MOST_FILE_ROWS = 200_000
+_MOST_FILE_ROWS = 100_000
 
 
 def no_moves() -> pd.DataFrame:
@@ -82,9 +82,14 @@ def left_early(course: Course) -> tuple[str, ...]:
     """
     if course.is_complete:
         return ()
+    at = f"given up at {course.time_s[-1]:.4g} s"
+    if course.steps > course.events * 100:
+        return (
+            f"{at} after {course.steps} steps, each a part of the fastest oscillation; ask for a shorter run",
+        )
     return (
-        f"given up at {course.time_s[-1]:.4g} s after {course.events} changes between stick, slip and contact; "
-        "state more damping, or a smaller backlash",
+        f"{at} after {course.events} changes between stick, slip and contact; state more damping, a smaller "
+        "backlash, or fewer samples",
     )
 
 

@@ -216,6 +216,6 @@ def _work(
             if checkpoint is None:
                 raise
             raise checkpoint.stopped(found, done, worked / pairs) from None
-    if checkpoint is not None:
+    if checkpoint is not None and shards:
         checkpoint.save(found, done, 1.0, at_once=True)
     return found

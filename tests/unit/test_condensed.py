@@ -289,6 +289,20 @@ def test_noise_at_rest_is_no_motion(tmp_path):
     assert any("standstill" in p.remedy for p in case.problems)
 
 
+def test_what_the_cut_off_decides_is_told(lifted):
+    """RMS and peak of acceleration and of torque at the shaft, with half and twice the stated cut-off."""
+    told = [p.got for p in lifted.problems if p.severity == "note" and " at 12 Hz" in p.got]
+    assert [line.split(" (")[0] for line in told] == ["acceleration", "torque at the driven shaft"]
+    assert all(" at 3 Hz; " in line and " at 6 Hz; " in line for line in told)
+    stated = told[1].split("; ")[1].split(" at ")[0].split(" and ")
+    demand = build_demand(lifted)
+    lossless = demand.shaft_torque - demand.torque_by_cause["losses"]
+    assert float(stated[0]) == pytest.approx(
+        np.sqrt(demand.mean(lossless**2)), rel=0.02
+    )  # noise, here and there
+    assert float(stated[1]) == pytest.approx(demand.peak(lossless), rel=0.1)
+
+
 def test_extreme_directions_cover_every_sign():
     signs = {tuple(np.sign(row)) for row in condensed_demand._directions((-1.0, 0.0, 1.0))}
     assert len(signs) == 26

@@ -271,8 +271,10 @@ def test_a_partner_that_cannot_be_used(tmp_path):
     assert any("a case with 1 errors" in str(problem) for problem in problems), problems
 
 
-def test_another_bus_voltage_is_told(tmp_path):
+@pytest.mark.parametrize(("volts", "usable"), [(60, True), (300, False)])
+def test_another_bus_voltage_is_told(tmp_path, volts, usable):
     other = small_case()
-    next(row for row in other["axis"] if row[0] == "nominal bus voltage")[1] = 60
-    _, problems = check_case(two_cases(tmp_path, ["second", "../other", "", "", "", ""], other=other))
+    next(row for row in other["axis"] if row[0] == "nominal bus voltage")[1] = volts
+    made, problems = check_case(two_cases(tmp_path, ["second", "../other", "", "", "", ""], other=other))
     assert sum("since the bus is the same" in str(problem) for problem in problems) == 2
+    assert (made is not None) == usable

@@ -7,7 +7,6 @@ from typing import TYPE_CHECKING
 from actuator_sizing.report.document.blocks import (
     Cell,
     Column,
-    Facts,
     FigureBlock,
     Paragraph,
     Section,
@@ -64,13 +63,13 @@ def power_section(comparison: Comparison, figures: Iterable[str]) -> Section:
     in_cycle = f" Cycle: {clean(cycle, 60)}." if cycle else ""
     blocks: list[Block] = [
         Paragraph(f"Set {best.rank}: {describe_set(best)}.{in_cycle}"),
-        Facts(_facts(best), "DC bus"),
+        _two_columns("DC bus", _facts(best)),
     ]
     if comparison.case.partners:
         blocks.append(_partners(comparison))
     resistor = _resistor(best)
     if resistor:
-        blocks.append(Facts(resistor, "A brake resistor for this set"))
+        blocks.append(_two_columns("A brake resistor for this set", resistor))
     if "bus" in drawn:
         blocks.append(
             FigureBlock(
@@ -101,6 +100,11 @@ def power_section(comparison: Comparison, figures: Iterable[str]) -> Section:
 def _shown(item: SetResult, key: str, unit: str) -> str:
     value = item.quantities.get(key)
     return quantity(None if value is None else float(value), unit)
+
+
+def _two_columns(caption: str, facts: tuple[tuple[str, str], ...]) -> Table:
+    columns = (Column("Quantity", weight=3.0), Column("Value", numeric=True))
+    return Table(caption, columns, tuple(row(*fact) for fact in facts))
 
 
 def _facts(best: SetResult) -> tuple[tuple[str, str], ...]:

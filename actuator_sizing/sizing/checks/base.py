@@ -28,6 +28,7 @@ if TYPE_CHECKING:
     from actuator_sizing.sizing.thermal_start import ThermalStart
 
 FloatArray = NDArray[np.float64]
+WAY = "m or rad"  # unit of a way of the load: metres or radians by the mechanism
 _T = TypeVar("_T")
 _TABLES = ("motors", "gearheads", "drives")
 
@@ -186,6 +187,11 @@ def _always(sets: Sets) -> NDArray[np.bool_]:
 SUSTAINED = (REPEATS,)
 #: Wear counts what is done often, from warm or from cold.
 OFTEN = (REPEATS, SHORT_TIME)
+
+
+def way_unit(sets: Sets) -> str:
+    """Unit of the way of the load. [-]"""
+    return "m" if sets.case.mechanism.coordinate == "linear" else "rad"
 
 
 def everywhere(value: float, sets: Sets) -> FloatArray:
