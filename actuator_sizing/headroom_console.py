@@ -39,6 +39,8 @@ def print_headroom(found: Headroom, written: Sequence[Path]) -> None:
     if found.map is not None:
         click.echo()
         _print([_MAP_HEADINGS, *map_rows(found.case, found.map, titles)])
+    for note in found.notes:
+        click.echo(f"\n{note}")
     if written:
         click.echo(f"\nFiles: {written[0].parent} ({len(written)})")
 

@@ -11,7 +11,6 @@ from dataclasses import dataclass, fields, replace
 import numpy as np
 
 from actuator_sizing.case.model import Case, Segment
-from actuator_sizing.core.parameters import GearheadParameters
 from actuator_sizing.core.phases import Phase, speed_after
 from actuator_sizing.core.process_load import TIME
 from actuator_sizing.sizing.cycles import CycleDemand
@@ -314,11 +313,6 @@ def gearhead_ratio(case: Case) -> float | None:
 def with_ratio(case: Case, ratio: float) -> Case:
     """Another ratio of the gearhead, all else of it equal."""
     return replace(case, gearhead_parameters=replace(case.gearhead_parameters, ratio=np.array([ratio])))
-
-
-def with_gearhead(case: Case, gearheads: GearheadParameters) -> Case:
-    """Another gearhead for the one set of a case."""
-    return replace(case, gearhead_parameters=gearheads)
 
 
 def stiffness_at_shaft(case: Case) -> float | None:

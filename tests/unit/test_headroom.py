@@ -5,6 +5,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from actuator_sizing.case.model import Cycle
 from actuator_sizing.errors import InputError
 from actuator_sizing.report.headroom_text import headroom_text, map_rows
 from actuator_sizing.sizing.case_changes import moves_of, single, with_cycle_time, with_payload
@@ -160,3 +161,22 @@ def test_payload_of_an_axis_without_one_starts_at_nothing():
     made = headroom(replace(lift(payload=0.0), name="empty"), motor="M0", drive="D0")
     assert made.of("heaviest_payload").present == 0.0
     assert made.of("heaviest_payload").limit > 0.0
+
+
+def test_several_cycles_go_together():
+    first = lift()
+    second = cycle(
+        {"law": "trapezoid", "displacement": 0.6, "duration_s": 1.4, "payload": 90.0},
+        {"law": "trapezoid", "displacement": -0.6, "duration_s": 1.4, "payload": 90.0},
+        {"law": "dwell", "duration_s": 1.0, "brake_closed": True},
+    )
+    both = replace(first, cycles=(Cycle("usual", first.segments), Cycle("heavy", second)))
+    made = headroom(both, motor="M0", drive="D0")
+    assert {answer.key for answer in made.answers} == {
+        "fastest_cycle", "shortest_dwell", "heaviest_payload", "hottest_ambient"
+    }  # fmt: skip
+    assert made.notes
+    payload = made.of("heaviest_payload")
+    assert payload.present == 90.0
+    assert passes(with_payload(made.case, payload.limit))
+    assert not passes(with_payload(made.case, payload.limit * 1.001))

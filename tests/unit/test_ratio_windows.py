@@ -1,8 +1,11 @@
 """Ratio windows against brute force over ratios, the closed forms against what they are the form of."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
+from actuator_sizing.case.model import Cycle
 from actuator_sizing.core.moments import gearhead_rows, mean_products, motor_columns
 from actuator_sizing.core.ratio_windows import TorqueMoments, load_factor, torque_moments
 from actuator_sizing.errors import InputError
@@ -209,3 +212,19 @@ def test_a_linear_motor_and_an_empty_catalog_are_told_apart(made):
     nothing = turning(motors=[{**MOTOR, "is_linear": True}])
     with pytest.raises(InputError, match="no motor that fits the axis"):
         ratio_windows(cycle_demands(nothing))
+
+
+def test_several_cycles_leave_what_each_of_them_leaves():
+    slow = cycle({"law": "trapezoid", "displacement": 4.0, "duration_s": 1.5, "process_effort": 25.0})
+    fast = cycle(
+        {"law": "trapezoid", "displacement": 4.0, "duration_s": 0.4}, {"law": "dwell", "duration_s": 1.0}
+    )
+    made = turning(motors=[LINEAR])
+    alone = [ratio_windows(cycle_demands(replace(made, segments=part))).motors[0] for part in (slow, fast)]
+    both = replace(made, segments=slow, cycles=(Cycle("slow", slow), Cycle("fast", fast)))
+    (one,) = ratio_windows(cycle_demands(both)).motors[0].intervals
+    ends = [window.intervals[0] for window in alone]
+    # Roots of the same functions, found to 2e-13.
+    assert one.low == pytest.approx(max(end.low for end in ends), rel=1e-12)
+    assert one.high == pytest.approx(min(end.high for end in ends), rel=1e-12)
+    assert ends[0].low != ends[1].low

@@ -207,6 +207,7 @@ def _headroom(comparison: Comparison, figures: set[str]) -> Section | None:
             "fails a thousandth beyond. Limits are rounded to their safe side."
         ),
         Table(clean(found.label), columns, rows),
+        *(Paragraph(note, "note") for note in found.notes),
     ]
     if found.map is not None:
         if "payload_map" in figures:

@@ -6,12 +6,12 @@ with the check that fails beyond it. A set that fails as it is, is driven inward
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
 from actuator_sizing.case.model import Case
-from actuator_sizing.sizing.case_changes import single, whole_case
+from actuator_sizing.sizing.case_changes import is_planned, single, whole_case
 from actuator_sizing.sizing.cycles import CycleDemand, cycle_demands
 from actuator_sizing.sizing.edge_search import narrowed, walk
 from actuator_sizing.sizing.headroom.declared import Extent, extents
@@ -96,6 +96,8 @@ class Headroom:
         One per quantity.
     map : PayloadMap or None
         Payload against cycle time, where it was asked for and exists.
+    notes : tuple of str
+        What was left out, and why.
     """
 
     case: Case
@@ -105,6 +107,7 @@ class Headroom:
     present: Outcome
     answers: tuple[HeadroomAnswer, ...]
     map: PayloadMap | None = None
+    notes: tuple[str, ...] = ()
 
     @property
     def label(self) -> str:
@@ -146,6 +149,7 @@ class Headroom:
             "passes": self.present.is_met,
             "quantities": [answer.as_mapping() for answer in self.answers],
             "payload_against_cycle_time": None if self.map is None else self.map.as_mapping(),
+            "notes": list(self.notes),
         }
 
 
@@ -225,7 +229,14 @@ def headroom_of(
     if with_map:
         stage = None if progress is None else (lambda done: progress("payload against cycle time", done))
         drawn = payload_map(resizing, heaviest, stage)
-    return Headroom(one, *names, present, tuple(answers), drawn)
+    return Headroom(one, *names, present, tuple(answers), drawn, tuple(_left_out(one)))
+
+
+def _left_out(one: Case) -> Iterator[str]:
+    if not is_planned(one):
+        yield "The cycle was measured: its motion and its payload stay as they were recorded."
+    elif len(one.by_cycle()) > 1:
+        yield "Times and payloads change in every cycle alike; single moves and holding are left out."
 
 
 def _limit(resizing: Resizing, extent: Extent, present: Outcome) -> HeadroomAnswer:
