@@ -26,6 +26,7 @@ if TYPE_CHECKING:
     from actuator_sizing.case.starting import start_case
     from actuator_sizing.report.revision import read_results
     from actuator_sizing.sizing import compare
+    from actuator_sizing.sizing.robustness.robust import robust
     from actuator_sizing.sizing.simulation import simulate
 
 __all__ = [
@@ -36,6 +37,7 @@ __all__ = [
     "convert_case",
     "read_case",
     "read_results",
+    "robust",
     "simulate",
     "start_case",
 ]
@@ -49,6 +51,7 @@ _HOMES = {
     "convert_case": "actuator_sizing.case.converting",
     "read_case": "actuator_sizing.case.reading",
     "read_results": "actuator_sizing.report.revision",
+    "robust": "actuator_sizing.sizing.robustness.robust",
     "simulate": "actuator_sizing.sizing.simulation",
     "start_case": "actuator_sizing.case.starting",
 }

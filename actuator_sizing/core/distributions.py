@@ -49,9 +49,9 @@ class Distribution:
     def standard_deviation(self) -> float:
         """Standard deviation of what is drawn. [-]"""
         if self.shape == UNIFORM:
-            return self.width / np.sqrt(3.0)
+            return float(self.width / np.sqrt(3.0))
         if self.shape == TRIANGULAR:
-            return self.width / np.sqrt(6.0)
+            return float(self.width / np.sqrt(6.0))
         if self.shape == NORMAL:
             return self.width
         k = self.truncation

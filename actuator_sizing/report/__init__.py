@@ -58,9 +58,9 @@ def write_report(
 
 def _own_names() -> tuple[str, ...]:
     """Names of files that a report may or may not have: one left by an earlier run would contradict it."""
-    from actuator_sizing.report.figures import FIGURES
+    from actuator_sizing.report.figures import FIGURES, ROBUSTNESS_FIGURES
 
-    return ("sizing_report.pdf", *(f"figures/{key}.svg" for key in FIGURES))
+    return ("sizing_report.pdf", *(f"figures/{key}.svg" for key in (*FIGURES, *ROBUSTNESS_FIGURES)))
 
 
 def render_report(

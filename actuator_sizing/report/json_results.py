@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING, Any
 from actuator_sizing.report.document.comparing import shown_pair
 from actuator_sizing.report.document.inputs import part_entries
 from actuator_sizing.report.formatting import percent
+from actuator_sizing.report.robustness_files import robustness_dict
 
 if TYPE_CHECKING:
     from actuator_sizing.case.model import Entry
@@ -33,7 +34,7 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
     dict
         Values in SI; None where not known or not finite.
     """
-    case, counts = comparison.case, comparison.rejections
+    case, counts, study = comparison.case, comparison.rejections, comparison.robustness
     best = comparison.sets[0] if comparison.sets else None
     entries = [*case.entries, *part_entries(comparison, best)]
     return {
@@ -64,7 +65,7 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
             {"part": part, "missing": missing, "check": check}
             for part, missing, check in comparison.questions
         ],
-    }
+    } | ({} if study is None else {"robustness": robustness_dict(study)})
 
 
 def render_json(comparison: Comparison, revision: Revision | None = None) -> bytes:

@@ -40,7 +40,7 @@ def render_simulation_json(simulation: Simulation) -> bytes:
         "moves": simulation.moves.to_dict("records"),
         "notes": list(simulation.notes),
     }
-    return (json.dumps(_known(answer), indent=1, ensure_ascii=False, allow_nan=False) + "\n").encode()
+    return (json.dumps(known_values(answer), indent=1, ensure_ascii=False, allow_nan=False) + "\n").encode()
 
 
 def write_simulation(simulation: Simulation, folder: str | Path) -> tuple[Path, ...]:
@@ -77,12 +77,12 @@ def write_simulation(simulation: Simulation, folder: str | Path) -> tuple[Path, 
     return replace_folder_files(folder, files)
 
 
-def _known(value: Any) -> Any:
-    """Replace what JSON cannot say: NaN and infinity become null."""
+def known_values(value: Any) -> Any:
+    """Replace what JSON cannot say: NaN and infinity become null, numbers of numpy plain ones."""
     if isinstance(value, dict):
-        return {key: _known(entry) for key, entry in value.items()}
+        return {key: known_values(entry) for key, entry in value.items()}
     if isinstance(value, list | tuple):
-        return [_known(entry) for entry in value]
+        return [known_values(entry) for entry in value]
     if hasattr(value, "item"):
         value = value.item()
     if isinstance(value, float) and not math.isfinite(value):

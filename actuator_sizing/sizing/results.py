@@ -15,6 +15,7 @@ if TYPE_CHECKING:
 
     from actuator_sizing.case.model import Case
     from actuator_sizing.sizing.demand import Demand
+    from actuator_sizing.sizing.robustness.results import Robustness
     from actuator_sizing.sizing.simulation_results import Simulation
 
 PASSES = "passes"
@@ -217,6 +218,13 @@ class Comparison:
         """The leading set simulated over its cycle; None where its loops cannot be made stable."""
         detail = self.sets[0].detail if self.sets else None
         return None if detail is None or detail.simulation is None else detail.simulation()
+
+    @cached_property
+    def robustness(self) -> Robustness | None:
+        """How sure the leading set passes, at bounded cost; None where the case states no spread."""
+        from actuator_sizing.sizing.robustness.robust import robust_of_leading
+
+        return robust_of_leading(self)
 
     @property
     def passes(self) -> bool:

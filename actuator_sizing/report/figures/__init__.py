@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import partial
 from typing import TYPE_CHECKING
 
 from actuator_sizing.report.curves import leading_detail
@@ -14,6 +15,12 @@ from actuator_sizing.report.figures.dynamics import (
     draw_response,
 )
 from actuator_sizing.report.figures.over_time import draw_causes, draw_current, draw_motion
+from actuator_sizing.report.figures.robustness import (
+    ROBUSTNESS_FIGURES,
+    draw_probability,
+    draw_sensitivity,
+    draw_swings,
+)
 from actuator_sizing.report.figures.speed_torque import draw_speed_torque
 from actuator_sizing.report.figures.step import draw_step_response
 from actuator_sizing.report.figures.style import house_style, to_svg
@@ -26,7 +33,7 @@ if TYPE_CHECKING:
 
     from actuator_sizing.sizing.results import Comparison
 
-__all__ = ["FIGURES", "DrawnFigure", "draw", "draw_figures", "house_style", "to_svg"]
+__all__ = ["FIGURES", "ROBUSTNESS_FIGURES", "DrawnFigure", "draw", "draw_figures", "house_style", "to_svg"]
 
 #: Keys of all figures, which name their files.
 FIGURES = (
@@ -112,6 +119,7 @@ def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]
         "temperature": lambda: draw_temperature(detail),
         "step_response": lambda: draw_step_response(best, detail, units),
         **_dynamic_figures(comparison),
+        **_robustness_figures(comparison),
     } | figures
 
 
@@ -126,3 +134,12 @@ def _dynamic_figures(comparison: Comparison) -> dict[str, Callable[[], Figure | 
         "loop_steps": lambda: draw_loop_steps(simulation),
         "bode": lambda: draw_bode(simulation),
     }
+
+
+def _robustness_figures(comparison: Comparison) -> dict[str, Callable[[], Figure | None]]:
+    """How sure the leading set passes."""
+    study = comparison.robustness
+    if study is None:
+        return {}
+    draws = (draw_probability, draw_swings, draw_sensitivity)
+    return {key: partial(draw, study) for key, draw in zip(ROBUSTNESS_FIGURES, draws, strict=True)}

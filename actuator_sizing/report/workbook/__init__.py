@@ -10,14 +10,15 @@ from actuator_sizing.report.text import option
 from actuator_sizing.report.workbook.case_sheets import add_inputs, add_parts, add_questions, add_segments
 from actuator_sizing.report.workbook.curves import add_speed_torque, add_time_series, add_warm_up
 from actuator_sizing.report.workbook.results_sheets import add_candidates, add_checks, add_summary
+from actuator_sizing.report.workbook.robustness import add_robustness
 from actuator_sizing.report.workbook.writer import Sheets
 
 if TYPE_CHECKING:
     from actuator_sizing.sizing.results import Comparison
 
-__all__ = ["render_workbook"]
+__all__ = ["OPTIONS", "render_workbook"]
 
-_OPTIONS = {
+OPTIONS = {
     "in_memory": True,
     "strings_to_formulas": False,  # text from tables stays text, also when it begins with "="
     "strings_to_urls": False,
@@ -40,7 +41,7 @@ def render_workbook(comparison: Comparison, day: date, rows_in_file: int | None 
     from xlsxwriter import Workbook
 
     stream = io.BytesIO()
-    with Workbook(stream, _OPTIONS) as book:
+    with Workbook(stream, OPTIONS) as book:
         book.set_properties(
             {
                 "title": option(comparison.case, "title", comparison.case.name)[:250],
@@ -59,6 +60,8 @@ def render_workbook(comparison: Comparison, day: date, rows_in_file: int | None 
         add_time_series(sheets, comparison)
         add_warm_up(sheets, comparison)
         add_speed_torque(sheets, comparison)
+        if comparison.robustness is not None:
+            add_robustness(sheets, comparison.robustness)
         add_parts(sheets, comparison)
         add_inputs(sheets, comparison)
         add_questions(sheets, comparison)
