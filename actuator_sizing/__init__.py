@@ -26,6 +26,7 @@ if TYPE_CHECKING:
     from actuator_sizing.case.starting import start_case
     from actuator_sizing.report.revision import read_results
     from actuator_sizing.sizing import compare
+    from actuator_sizing.sizing.machine import compare_machine
     from actuator_sizing.sizing.robustness.robust import robust
     from actuator_sizing.sizing.simulation import simulate
 
@@ -34,6 +35,7 @@ __all__ = [
     "audit_case",
     "check_case",
     "compare",
+    "compare_machine",
     "convert_case",
     "read_case",
     "read_results",
@@ -48,6 +50,7 @@ _HOMES = {
     "audit_case": "actuator_sizing.case.audit",
     "check_case": "actuator_sizing.case.reading",
     "compare": "actuator_sizing.sizing",
+    "compare_machine": "actuator_sizing.sizing.machine",
     "convert_case": "actuator_sizing.case.converting",
     "read_case": "actuator_sizing.case.reading",
     "read_results": "actuator_sizing.report.revision",

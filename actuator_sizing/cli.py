@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import gc
 import os
 import sys
 import traceback
@@ -12,7 +13,7 @@ from typing import Any, NoReturn, TextIO
 import click
 
 from actuator_sizing import __version__
-from actuator_sizing.errors import ActuatorSizingError, InputError, OutputError
+from actuator_sizing.errors import ActuatorSizingError, InputError, OutputError, StoppedError
 
 PASSED, NONE_PASSES, BAD_INPUT, INTERNAL = 0, 1, 2, 3
 INTERRUPTED, BROKEN_PIPE = 130, 141  # 128 + number of the signal, as shells report it
@@ -66,16 +67,21 @@ def commands() -> None:
 @commands.command(cls=_StartCommand)
 @click.argument("path", type=click.Path(path_type=Path))
 @click.option("--mechanism", metavar="NAME", help="Mechanism of the axis; the choices stand below.")
+@click.option(
+    "--duty-type",
+    type=click.Choice(["S1", "S2", "S3", "S4", "S5", "S6", "S8", "S10"]),
+    help="Duty type of IEC 60034-1 in place of a duty cycle.",
+)
 @_debug
-def start(path: Path, mechanism: str | None) -> None:
+def start(path: Path, mechanism: str | None, duty_type: str | None) -> None:
     """Write a new case with example rows to PATH.
 
     It is a workbook if PATH ends in .xlsx, else a folder of CSV files. Every table has its headings with
     units, the allowed values, hints and filled example rows.
     """
-    from actuator_sizing.case.starting import start_case
+    from actuator_sizing.case.starting import DEFAULT_MECHANISM, start_case
 
-    written = start_case(path) if mechanism is None else start_case(path, mechanism)
+    written = start_case(path, mechanism or DEFAULT_MECHANISM, duty_type=duty_type or "")
     click.echo(
         f"Started {_files(len(written))} in {path}" if path.suffix.lower() != ".xlsx" else f"Started {path}"
     )
@@ -93,7 +99,7 @@ def audit(case: Path) -> int:
     """
     from actuator_sizing.case.audit import audit_catalogs
     from actuator_sizing.case.reading import check_case
-    from actuator_sizing.console import count_line, print_problems
+    from actuator_sizing.console import clean, count_line, print_problems
 
     understood, problems = check_case(case)
     if understood is not None:  # reading may have audited already
@@ -104,7 +110,11 @@ def audit(case: Path) -> int:
         return BAD_INPUT
     from actuator_sizing.report.motion_picture import write_motion
 
-    click.echo(f"Motion: {write_motion(understood, _report_folder(understood.name))}")
+    for path, each in zip(
+        write_motion(understood, _report_folder(understood.name)), understood.by_cycle(), strict=True
+    ):
+        named = f" {clean(each.cycle.name)}" if each.cycle.name else ""
+        click.echo(f"Motion{named}: {path}")
     return PASSED
 
 
@@ -133,6 +143,20 @@ def audit(case: Path) -> int:
     help="For the N nearest losers, find the smallest change of each lever that lets them pass.",
 )
 @click.option("--pdf/--no-pdf", default=None, help="Write the PDF too; default: if its package is installed.")
+@click.option(
+    "--workers",
+    type=click.IntRange(min=1),
+    metavar="N",
+    help="Screen with N processes; default: one, and one for each processor where catalogs are large.",
+)
+@click.option("--cluster", metavar="ADDRESS", help="Screen on the workers of a dask scheduler.")
+@click.option(
+    "--checkpoint",
+    type=click.Path(dir_okay=False, path_type=Path),
+    metavar="FILE",
+    help="Keep what a long screening has found, to go on after Ctrl-C; default where catalogs are large: "
+    "a file beside the report.",
+)
 @_debug
 def compare(
     case: Path,
@@ -143,6 +167,9 @@ def compare(
     since: Path | None,
     levers: int,
     pdf: bool | None,
+    workers: int | None,
+    cluster: str | None,
+    checkpoint: Path | None,
 ) -> int:
     """Size CASE and write the report.
 
@@ -152,6 +179,7 @@ def compare(
     from actuator_sizing.case.reading import read_case
     from actuator_sizing.console import ProgressBar, print_problems, print_summary
     from actuator_sizing.sizing import compare as compare_sets
+    from actuator_sizing.sizing.workplaces import is_kept, workplace
 
     earlier = None
     if since is not None:
@@ -159,16 +187,26 @@ def compare(
 
         earlier = read_results(since)  # before the report, which may replace it
     understood = read_case(case)
-    with ProgressBar() as progress:
+    folder = out or _report_folder(understood.name)
+    if checkpoint is None and is_kept(understood):
+        checkpoint = folder / f"screening-{understood.fingerprint[:12]}.checkpoint"
+    with ProgressBar() as progress, workplace(understood, workers, cluster) as executor:
         comparison = compare_sets(
-            understood, rank_by=rank_by, detail=detail, levers=levers, progress=progress
+            understood,
+            rank_by=rank_by,
+            detail=detail,
+            levers=levers,
+            progress=progress,
+            executor=executor,
+            checkpoint=checkpoint,
+            tell=progress.tell,
         )
         written: tuple[Path, ...] = ()
         if out is not None or not as_json:
             from actuator_sizing.report import write_report
 
             progress("writing the report", 0.0)
-            written = write_report(comparison, out or _report_folder(understood.name), pdf=pdf, since=earlier)
+            written = write_report(comparison, folder, pdf=pdf, since=earlier)
     print_problems(understood.problems, at_most=10)
     if as_json:
         from actuator_sizing.report.json_results import render_json
@@ -183,6 +221,47 @@ def compare(
 
             click.echo("\n" + "\n".join(changes_lines(revision_since(earlier, results_dict(comparison)))))
     return PASSED if comparison.passes else NONE_PASSES
+
+
+@commands.command()
+@click.argument("cases", nargs=-1, required=True, type=click.Path(exists=True, path_type=Path))
+@click.option("--name", default="machine", show_default=True, help="Name of the machine, and of its folder.")
+@click.option("--out", type=click.Path(file_okay=False, path_type=Path), help="Folder of the report.")
+@click.option(
+    "--rank-by",
+    type=click.Choice(["price", "mass", "reserve", "energy"]),
+    help="What the passing sets are ranked by; default: what each case says.",
+)
+@click.option("--json", "as_json", is_flag=True, help="Print machine.json; no files unless --out is given.")
+@click.option("--pdf/--no-pdf", default=None, help="Write the PDF too; default: if its package is installed.")
+@_debug
+def machine(
+    cases: tuple[Path, ...], name: str, out: Path | None, rank_by: str | None, as_json: bool, pdf: bool | None
+) -> int:
+    """Size the axes of one machine, one of CASES each.
+
+    Compares every axis by itself, then says which types repeat, what fewer motor types would cost, and what
+    the axes ask together of their bus. The report goes to reports/<name>/. Name a case twice for two equal axes.
+    """
+    from actuator_sizing.console import ProgressBar
+    from actuator_sizing.machine_console import print_machine, read_cases
+    from actuator_sizing.report.machine import write_machine
+    from actuator_sizing.sizing.machine import compare_machine
+
+    understood = read_cases(cases)
+    written: tuple[Path, ...] = ()
+    with ProgressBar() as progress:
+        compared = compare_machine(understood, name=name, rank_by=rank_by, progress=progress)
+        if out is not None or not as_json:
+            progress("writing the report", 0.0)
+            written = write_machine(compared, out or _report_folder(name), pdf=pdf)
+    if as_json:
+        from actuator_sizing.report.machine.results import render_machine_json
+
+        click.echo(render_machine_json(compared).rstrip(b"\n"))
+    else:
+        print_machine(compared, written)
+    return PASSED if compared.passes else NONE_PASSES
 
 
 @commands.command()
@@ -201,6 +280,7 @@ def compare(
 @click.option(
     "--set", "changes", multiple=True, metavar="SETTING=VALUE", help="Change a setting of the loops."
 )
+@click.option("--cycle", default="", metavar="NAME", help="Cycle of a case with several; default: the first.")
 @click.option("--rate", type=float, metavar="HZ", help="Sampling rate; default: the drive's control rate.")
 @click.option("--cycles", type=click.IntRange(min=1), default=1, metavar="N", help="How many cycles to run.")
 @click.option(
@@ -215,6 +295,7 @@ def simulate(
     drive: str | None,
     input_: str,
     changes: tuple[str, ...],
+    cycle: str,
     rate: float | None,
     cycles: int,
     out: Path | None,
@@ -229,8 +310,8 @@ def simulate(
 
     from actuator_sizing.case.reading import read_case
     from actuator_sizing.simulation_console import print_simulation
-    from actuator_sizing.sizing.simulation import parse_settings
     from actuator_sizing.sizing.simulation import simulate as simulate_set
+    from actuator_sizing.sizing.simulation_request import parse_settings
 
     simulation = simulate_set(
         read_case(case),
@@ -241,6 +322,7 @@ def simulate(
         settings=parse_settings(changes),
         rate_hz=math.nan if rate is None else rate,
         cycles=cycles,
+        cycle=cycle,
     )
     written = simulation.write(out) if out is not None else ()
     if as_json:
@@ -377,6 +459,10 @@ def main(arguments: list[str] | None = None) -> NoReturn:
     for stream in (sys.stdout, sys.stderr):
         if hasattr(stream, "reconfigure"):
             stream.reconfigure(errors="replace")  # an ASCII terminal gets "?" for Ω, not an error
+    if arguments is None:
+        # A process of its own keeps nearly all it makes until its end: looking through that again and again for
+        # garbage in cycles took a tenth of a comparison.
+        gc.set_threshold(50_000, 20, 20)
     state: dict[str, Any] = {}
     try:
         # Not commands.main: it ends a broken pipe with status 1, which here means that no set passes.
@@ -410,6 +496,9 @@ def _tell(error: Exception) -> int:
         print_problems(error.problems)
         click.echo(count_line(error.problems), err=True)
         return BAD_INPUT
+    if isinstance(error, StoppedError):
+        click.echo(str(error), err=True)
+        return INTERRUPTED
     if isinstance(error, OutputError | ActuatorSizingError):
         click.echo(f"Error: {error}", err=True)
         return BAD_INPUT

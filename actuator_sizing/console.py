@@ -16,7 +16,7 @@ import click
 from actuator_sizing.errors import ERROR, NOTE, WARNING, Problem
 
 if TYPE_CHECKING:
-    from actuator_sizing.sizing.results import Comparison, SetResult
+    from actuator_sizing.sizing.results import CheckResult, Comparison, SetResult
 
 _SEVERITIES = (ERROR, WARNING, NOTE)
 _COLOURS = {ERROR: "red", WARNING: "yellow", NOTE: "cyan"}
@@ -130,15 +130,14 @@ def verdict_sentence(comparison: Comparison) -> str:
     if governing is None or governing.utilisation is None:
         how = "nothing could be checked"
     elif math.isinf(governing.utilisation):
-        where = f", in segment {clean(governing.segment)}" if governing.segment else ""
+        where = _place(governing)
         how = f"{governing.title} governs, with no capacity left at all{where}; the report shows the working"
     else:
         how = f"{governing.title} governs at {percent(governing.utilisation, governing.allowed)}"
         if governing.allowed != 1.0:
             how += f" of {percent(governing.allowed)} allowed"
         how += f", margin {percent(governing.margin, 0.0)}"
-        if governing.segment:
-            how += f", in segment {clean(governing.segment)}"
+        how += _place(governing)
     if best.verdict == FAILS:
         return f"No set passes. The nearest is {name}: {how}."
     if best.verdict == NOT_CHECKED:
@@ -147,6 +146,12 @@ def verdict_sentence(comparison: Comparison) -> str:
         return f"No set is confirmed. {name} fails nothing, but was not checked for: {clean(wanted)}; {how}."
     reserve = ", with low reserve" if best.verdict == LOW_RESERVE else ""
     return f"{name} passes every check{reserve}: {how}."
+
+
+def _place(check: CheckResult) -> str:
+    """Cycle and segment in which a check governs, as far as they have names."""
+    cycle = f", in the cycle {clean(check.cycle)}" if check.cycle else ""
+    return cycle + (f", in segment {clean(check.segment)}" if check.segment else "")
 
 
 def rejection_lines(comparison: Comparison) -> list[str]:
@@ -203,13 +208,7 @@ def _row(result: SetResult) -> tuple[str, ...]:
 def _print_table(headings: Sequence[str], rows: Sequence[Sequence[str]]) -> None:
     """Aligned plain text when piped; on a terminal one line a set, cut to its width."""
     if not sys.stdout.isatty():
-        widths = [max(map(len, column)) for column in zip(headings, *rows, strict=True)]
-        for cells in (headings, *rows):
-            padded = (
-                cell.rjust(width) if index in _RIGHT else cell.ljust(width)
-                for index, (cell, width) in enumerate(zip(cells, widths, strict=True))
-            )
-            click.echo("  ".join(padded).rstrip())
+        print_plain_table(headings, rows, _RIGHT)
         return
     from rich.box import SIMPLE_HEAD
     from rich.console import Console
@@ -224,6 +223,27 @@ def _print_table(headings: Sequence[str], rows: Sequence[Sequence[str]]) -> None
     for cells in lines[1:]:
         table.add_row(*(Text(cell) for cell in cells))  # Text: a name such as "[b]" is no markup
     Console(width=room).print(table)
+
+
+def print_plain_table(headings: Sequence[str], rows: Sequence[Sequence[str]], right: Sequence[int]) -> None:
+    """Print a table as aligned text.
+
+    Parameters
+    ----------
+    headings : sequence of str
+        Names of the columns.
+    rows : sequence of sequence of str
+        Cells.
+    right : sequence of int
+        Columns of numbers, which stand to the right. [-]
+    """
+    widths = [max(map(len, column)) for column in zip(headings, *rows, strict=True)]
+    for cells in (headings, *rows):
+        padded = (
+            cell.rjust(width) if index in right else cell.ljust(width)
+            for index, (cell, width) in enumerate(zip(cells, widths, strict=True))
+        )
+        click.echo("  ".join(padded).rstrip())
 
 
 def fit_columns(rows: Sequence[Sequence[str]], room: int) -> tuple[list[int], list[list[str]]]:
@@ -284,6 +304,7 @@ class ProgressBar:
         self._started = time.monotonic()
         self._bar: Any = None
         self._task: Any = None
+        self._stage, self._stage_started, self._first_part = "", 0.0, 0.0
 
     def __enter__(self) -> Self:
         return self
@@ -305,7 +326,27 @@ class ProgressBar:
                 return
             self._bar, self._task = _rich_bar()
             self._bar.start()
-        self._bar.update(self._task, completed=part_done, description=clean(stage))
+        self._bar.update(
+            self._task, completed=part_done, description=clean(stage) + self._left(stage, part_done)
+        )
+
+    def _left(self, stage: str, part_done: float) -> str:
+        """Time left in a stage, judged by the part of it that is done."""
+        now = time.monotonic()
+        if stage != self._stage:
+            self._stage, self._stage_started, self._first_part = stage, now, part_done
+        done, took = part_done - self._first_part, now - self._stage_started
+        if done <= 0.0 or took < _PATIENCE_S:
+            return ""
+        minutes, seconds = divmod(round(took * (1.0 - part_done) / done), 60)
+        return f", {minutes}:{seconds:02d} left"
+
+    def tell(self, sentence: str) -> None:
+        """Print a sentence on stderr, above the bar where there is one."""
+        if self._bar is not None:
+            self._bar.console.print(clean(sentence), markup=False, highlight=False)
+        else:
+            click.echo(clean(sentence), err=True)
 
     def __exit__(self, *_exception: object) -> None:
         if self._bar is not None:

@@ -77,3 +77,7 @@ class OutputError(ActuatorSizingError, OSError):
 
 class ConvergenceError(ActuatorSizingError, RuntimeError):
     """An iteration did not settle; the message says how far it still moves."""
+
+
+class StoppedError(ActuatorSizingError):
+    """The user has stopped the work; the message says what is kept and how to go on."""

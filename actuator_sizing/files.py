@@ -40,7 +40,20 @@ def write_atomically(path: str | Path, content: bytes) -> None:
         If the file cannot be written; what was there before is untouched.
     """
     target = Path(os.path.realpath(path))
-    replace_folder_files(target.parent, {target.name: content})
+    sibling = target.with_name(f".{os.getpid():x}{secrets.token_hex(4)}.new")
+    made: list[Path] = []
+    try:
+        _make_folder(target.parent, made)
+        if target.is_dir():
+            raise IsADirectoryError(errno.EISDIR, os.strerror(errno.EISDIR))
+        _write_through(sibling, content)
+        os.replace(sibling, target)
+    except OSError as error:
+        _discard([sibling], made)
+        raise _output_error(target, error) from error
+    except BaseException:
+        _discard([sibling], made)
+        raise
 
 
 def replace_folder_files(

@@ -41,9 +41,10 @@ _TEMPERATURES = {
 
 #: Code suffix -> label of its SI unit; docstrings, JSON keys and report headings agree through this table.
 SUFFIXES: dict[str, str] = {
-    "nm": "N·m", "n": "N", "kg_m2": "kg·m²", "kg": "kg", "m": "m", "rad": "rad", "s": "s", "v": "V", "a": "A",
-    "a_s": "A/s",
+    "nm": "N·m", "n": "N", "kg_m2": "kg·m²", "kg": "kg", "m": "m", "m2": "m²", "rad": "rad", "s": "s", "v": "V",
+    "a": "A", "a_s": "A/s",
     "w": "W", "j": "J", "ohm": "Ω", "h": "H", "f": "F", "hz": "Hz", "pa": "Pa", "k": "K", "degc": "°C",
+    "w_m2": "W/m²",
     "rad_s": "rad/s", "rad_s2": "rad/s²", "rad_s3": "rad/s³", "m_s": "m/s", "m_s2": "m/s²", "m_s3": "m/s³",
     "nm_per_a": "N·m/A", "n_per_a": "N/A", "v_s_per_rad": "V·s/rad", "v_s_per_m": "V·s/m",
     "rad_per_s_v": "rad/(s·V)", "nm_per_sqrt_w": "N·m/√W", "k_w": "K/W", "j_k": "J/K", "per_k": "1/K",

@@ -63,10 +63,12 @@ GEARHEAD_HEADINGS = (
 )  # fmt: skip
 DRIVE_HEADINGS = (
     "drive", "current basis", "commutation", "continuous current [A]", "peak current [A]",
-    "peak time [s]", "continuous-rating ambient [°C]", "minimum bus voltage [V]",
-    "maximum bus voltage [V]", "internal capacitance [µF]", "chopper threshold [V]",
-    "minimum brake resistor [Ω]", "efficiency [%]", "control rate [kHz]", "mass [kg]", "price [EUR]",
-    "source",
+    "peak time [s]", "continuous-rating ambient [°C]", "ambient derating [%/K]",
+    "altitude derating per 100 m [%]", "maximum output frequency [Hz]", "PWM frequency [kHz]",
+    "minimum load inductance [µH]", "minimum bus voltage [V]",
+    "maximum bus voltage [V]", "internal capacitance [µF]", "chopper threshold [V]", "chopper hysteresis [V]",
+    "minimum brake resistor [Ω]", "efficiency [%]", "stand-by power [W]", "control rate [kHz]", "mass [kg]",
+    "price [EUR]", "source",
 )  # fmt: skip
 
 
@@ -268,12 +270,19 @@ def drives() -> list[Row]:
             "peak current [A]": (3.0 if mains else 2.5) * amperes,
             "peak time [s]": 2.0 if mains else 4.0,
             "continuous-rating ambient [°C]": 40.0,
+            "ambient derating [%/K]": 1.5,
+            "altitude derating per 100 m [%]": 1.0,
+            "maximum output frequency [Hz]": 600.0,
+            "PWM frequency [kHz]": 16.0 if mains else 40.0,
+            "minimum load inductance [µH]": 300.0 if mains else 20.0,
             "minimum bus voltage [V]": low,
             "maximum bus voltage [V]": high,
             "internal capacitance [µF]": _round(feeder.power_w / bus_v**2 * (4e4 if mains else 4e3) + 100.0, 10.0),
             "chopper threshold [V]": _round(0.93 * high, 1.0) if mains else None,
+            "chopper hysteresis [V]": _round(0.02 * high, 1.0) if mains else None,
             "minimum brake resistor [Ω]": _round(0.93 * high / (1.5 * amperes) + 5.0, 1.0) if mains else None,
             "efficiency [%]": 100.0 * feeder.efficiency,
+            "stand-by power [W]": _round((4.0 if mains else 1.5) + 0.002 * feeder.power_w, 0.1),
             "control rate [kHz]": 16.0 if basis != "DC" else 20.0,
             "mass [kg]": feeder.mass,
             "price [EUR]": _round(feeder.price, 1.0),

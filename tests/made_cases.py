@@ -22,7 +22,8 @@ MOTOR = dict(
     friction_torque_nm=0.02, viscous_friction_nm_s=5e-5, continuous_current_a=5.0, continuous_ambient_degc=40.0,
     peak_current_a=18.0, peak_torque_nm=7.5, speed_max_rad_s=600.0, winding_limit_degc=155.0,
     thermal_resistance_winding_k_w=0.6, thermal_resistance_housing_k_w=1.1, winding_time_constant_s=40.0,
-    housing_time_constant_s=1500.0, brake_torque_nm=np.nan, nominal_voltage_v=325.0, mass_kg=2.5, price=300.0,
+    housing_time_constant_s=1500.0, brake_torque_nm=np.nan, brake_coil_w=0.0, nominal_voltage_v=325.0, mass_kg=2.5,
+    price=300.0,
 )  # fmt: skip
 
 GEARHEAD = dict(

@@ -13,9 +13,11 @@ from actuator_sizing.case.headings import understand_headings
 from actuator_sizing.case.model import Entry
 from actuator_sizing.case.problem_list import ProblemList, shown
 from actuator_sizing.case.raw_tables import RawTable
+from actuator_sizing.case.strength_columns import MECHANISM_STRENGTH
 from actuator_sizing.case.tables import COMMON_QUANTITIES, TABLES, axis_quantities
 from actuator_sizing.case.text_columns import OddCell
 from actuator_sizing.case.words import canonical_word
+from actuator_sizing.core.cable import cable_resistance
 from actuator_sizing.core.mechanisms import MECHANISMS, ROTARY, SHAFT, Mechanism
 from actuator_sizing.core.parameters import Surroundings
 from actuator_sizing.errors import WARNING
@@ -26,7 +28,8 @@ _LONGEST_TEXT = 500
 BUS_TOLERANCE = 0.10  # of the nominal bus voltage, where no limits are stated; usual mains tolerance
 IN_SURROUNDINGS = frozenset(
     {"ambient_temperature", "altitude", "nominal_bus_voltage", "minimum_bus_voltage", "maximum_bus_voltage",
-     "modulation_limit", "judged_winding_temperature", "current_loop_rise_time", "mechanism"}
+     "modulation_limit", "judged_winding_temperature", "current_loop_rise_time", "mechanism",
+     "motor_cable_length", "motor_cable_cross_section"}
 )  # fmt: skip
 
 
@@ -299,6 +302,17 @@ def _check(axis: Axis, problems: ProblemList) -> None:
         problems.report(_TABLE, axis.rows.get("chopper_threshold"), "chopper threshold",
                         got=f"{threshold:g} V", allowed=f"above the maximum bus voltage of {high:g} V",
                         remedy="Below it the chopper burns power from the supply.", severity=WARNING)  # fmt: skip
+    hysteresis = axis.number("chopper_hysteresis")
+    if hysteresis >= threshold:
+        problems.report(_TABLE, axis.rows.get("chopper_hysteresis"), "chopper hysteresis",
+                        got=f"{hysteresis:g} V", allowed=f"below the chopper threshold of {threshold:g} V",
+                        remedy="It is a difference, not the voltage at which it switches off.")  # fmt: skip
+    length, section = (axis.number(f"motor_cable_{which}") for which in ("length", "cross_section"))
+    if np.isnan(length) != np.isnan(section):
+        known, other = ("length", "cross-section") if np.isnan(section) else ("cross-section", "length")
+        problems.report(_TABLE, axis.rows.get(f"motor_cable_{known.replace('-', '_')}"), f"motor cable {known}",
+                        got=f"no motor cable {other}", allowed="both of them, or neither",
+                        remedy=f"Add the motor cable {other}; one alone gives no resistance.")  # fmt: skip
     stated = axis.rows
     diameters = axis.number("screw_diameter"), axis.number("thread_mean_diameter")
     if np.isfinite(axis.number("thread_friction_coefficient")) and np.isnan(diameters).all():
@@ -314,6 +328,7 @@ def _check(axis: Axis, problems: ProblemList) -> None:
 
 def surroundings_of(axis: Axis) -> Surroundings:
     """Supply and surroundings of a complete axis."""
+    cable = cable_resistance(axis.number("motor_cable_length"), axis.number("motor_cable_cross_section"))
     return Surroundings(
         ambient_degc=axis.number("ambient_temperature"),
         altitude_m=axis.number("altitude"),
@@ -323,13 +338,15 @@ def surroundings_of(axis: Axis) -> Surroundings:
         modulation_limit=axis.number("modulation_limit"),
         judged_winding_degc=axis.number("judged_winding_temperature"),
         current_loop_rise_s=axis.number("current_loop_rise_time"),
+        cable_ohm=float(np.nan_to_num(cable)),
     )
 
 
 def options_of(axis: Axis) -> dict[str, float | str | None]:
     """Quantities that neither the mechanism nor the surroundings hold, by name."""
+    strength = MECHANISM_STRENGTH.get(axis.mechanism.name, ()) if axis.mechanism else ()
     return {
         column.name: axis.values.get(column.key)
-        for column in COMMON_QUANTITIES
+        for column in (*COMMON_QUANTITIES, *strength)
         if column.key not in IN_SURROUNDINGS
     }

@@ -7,6 +7,7 @@ later product finite.
 from __future__ import annotations
 
 from actuator_sizing.case.columns import TEXT, WORDS, Column
+from actuator_sizing.case.strength_columns import GEARHEAD_STRENGTH_COLUMNS, MOTOR_STRENGTH_COLUMNS
 from actuator_sizing.core.materials import MAGNET_COEFFICIENTS_PER_K, THERMAL_CLASSES
 from actuator_sizing.core.parameters import COMMUTATIONS, CURRENT_BASES
 
@@ -119,6 +120,7 @@ MOTOR_COLUMNS = (
            maximum=100.0, example="", unit="ms"),
     Column("brake energy per stop", "energy", "energy the holding brake takes in one stop from speed",
            positive=True, maximum=1.0e9, example="", unit="J"),
+    *MOTOR_STRENGTH_COLUMNS,
     Column("mass", "mass", "mass of the motor", minimum=0.0, maximum=1.0e6, example="4.5", unit="kg"),
     Column("length", "length", "length of the motor", minimum=0.0, maximum=1.0e3, example="170", unit="mm"),
     Column("price", "price", "price of one piece", minimum=0.0, maximum=1.0e9, example="420", unit="EUR"),
@@ -148,12 +150,14 @@ GEARHEAD_COLUMNS = (
     Column("ratio", "ratio", "input turns per output turn; a number or an exact fraction such as 91/6",
            required=True, positive=True, maximum=1.0e6, fraction=True, example="5"),
     Column("stages", "count", "number of stages", minimum=1.0, maximum=100.0, example="1"),
-    Column("continuous torque", "torque", "permissible equivalent torque at the output", required=True,
-           positive=True, maximum=1.0e8, example="30", unit="Nm"),
+    Column("continuous torque", "torque", "permissible equivalent torque at the output; of a strain-wave gear the "
+           "limit for average torque", required=True, positive=True, maximum=1.0e8, example="30", unit="Nm",
+           aliases=("average torque limit",)),
     Column("peak torque", "torque", "permissible repeated peak torque at the output", positive=True,
-           maximum=1.0e8, example="75", unit="Nm"),
-    Column("emergency-stop torque", "torque", "torque allowed a limited number of times at the output",
-           positive=True, maximum=1.0e8, example="150", unit="Nm"),
+           maximum=1.0e8, example="75", unit="Nm", aliases=("repeated peak torque",)),
+    Column("emergency-stop torque", "torque", "torque allowed a limited number of times at the output; of a "
+           "strain-wave gear the momentary peak, before teeth ratchet",
+           positive=True, maximum=1.0e8, example="150", unit="Nm", aliases=("momentary peak torque",)),
     Column("mean input speed", "angular speed", "permissible mean speed at the input", positive=True,
            maximum=1.0e6, example="3000", unit="rpm"),
     Column("maximum input speed", "angular speed", "permissible speed at the input", required=True,
@@ -166,6 +170,7 @@ GEARHEAD_COLUMNS = (
            maximum=1.0e6, example="0.1", unit="Nm"),
     Column("inertia at input", "inertia", "moment of inertia referred to the input", default=0.0,
            assumed="none stated", minimum=0.0, maximum=1.0e6, example="0.5", unit="kg·cm²"),
+    *GEARHEAD_STRENGTH_COLUMNS,
     Column("torsional stiffness", "torsional stiffness", "at the output with the input locked", positive=True,
            maximum=1.0e12, example="3", unit="Nm/arcmin"),
     Column("backlash", "angle", "at the output", minimum=0.0, maximum=1.0, example="8", unit="arcmin"),
@@ -195,6 +200,18 @@ DRIVE_COLUMNS = (
            "current "
            "holds", default=40.0, assumed="40 °C, the usual reference site", minimum=-60.0, maximum=200.0,
            example="40", unit="°C"),
+    Column("ambient derating", "temperature coefficient", "part of the continuous current lost per kelvin above that "
+           "ambient", minimum=0.0, maximum=1.0, example="", unit="%/K"),
+    Column("altitude derating per 100 m", "ratio", "part of the continuous current lost per 100 m above 1000 m",
+           minimum=0.0, maximum=1.0, example="", unit="%"),
+    Column("standstill current", "current", "current it gives for ever at standstill, where one leg carries the "
+           "amplitude", positive=True, maximum=1.0e6, example="", unit="A"),
+    Column("maximum output frequency", "frequency", "largest electrical frequency it makes", positive=True,
+           maximum=1.0e6, example="", unit="Hz"),
+    Column("PWM frequency", "frequency", "frequency of its pulses", positive=True, maximum=1.0e8, example="",
+           unit="kHz"),
+    Column("minimum load inductance", "inductance", "smallest inductance between two terminals that it may feed",
+           minimum=0.0, maximum=1.0, example="", unit="mH"),
     Column("minimum bus voltage", "voltage", "lowest DC bus voltage it works at", required=True, minimum=0.0,
            maximum=1.0e5, example="100", unit="V"),
     Column("maximum bus voltage", "voltage", "DC bus voltage at which it switches off", required=True,
@@ -204,6 +221,10 @@ DRIVE_COLUMNS = (
     Column("chopper threshold", "voltage", "bus voltage at which its brake chopper switches on",
            positive=True,
            maximum=1.0e5, example="385", unit="V"),
+    Column("chopper hysteresis", "voltage", "how far below its threshold the brake chopper switches off again",
+           minimum=0.0, maximum=1.0e4, example="", unit="V"),
+    Column("stand-by power", "power", "what it takes from the bus all the time: electronics and fan", minimum=0.0,
+           maximum=1.0e6, example="", unit="W"),
     Column("minimum brake resistor", "resistance", "smallest brake resistor it stands", positive=True,
            maximum=1.0e6, example="25", unit="Ω", aliases=("minimum resistor",)),
     Column("efficiency", "ratio", "power to the motor over power from the bus", positive=True, maximum=1.0,

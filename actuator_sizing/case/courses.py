@@ -30,11 +30,15 @@ class Courses:
         The optional tables.
     cycle_s : float
         Duration of the cycle that 'cycles per minute' asks for; NaN where nothing is said.
+    pace_table, pace_row : str and int or None
+        Where that was said.
     """
 
     points: ParsedTable | None = None
     process: ParsedTable | None = None
     cycle_s: float = float("nan")
+    pace_table: str = "axis"
+    pace_row: int | None = None
 
     def rows_of(self, parsed: ParsedTable | None, segment: str) -> NDArray[np.intp]:
         """Rows of a side table that name a segment."""
@@ -48,8 +52,14 @@ class Courses:
         rows = self.rows_of(self.points, segment)
         if self.points is None or not len(rows):
             return ()
-        t, x = self.points.number("time")[rows], self.points.number("position")[rows]
-        return tuple(zip(t.tolist(), x.tolist(), strict=True))
+        t, angle = (self.points.number(key)[rows] for key in ("time", "master_angle"))
+        t = np.where(np.isnan(t), angle / (2.0 * np.pi) * self.cycle_s, t)
+        return tuple(zip(t.tolist(), self.points.number("position")[rows].tolist(), strict=True))
+
+    def turn_of(self, segment: str) -> float:
+        """Turn of the master shaft that the points of a spline take; NaN where they are stated over time."""
+        rows = self.rows_of(self.points, segment)
+        return float(self.points.number("master_angle")[rows[-1]]) if self.points and len(rows) else np.nan
 
 
 def check_side_tables(duty_cycle: ParsedTable, courses: Courses, problems: ProblemList) -> None:
@@ -75,6 +85,8 @@ def check_side_tables(duty_cycle: ParsedTable, courses: Courses, problems: Probl
         for column in table.table.columns:
             if column.required:
                 report_empty_cells(table, column)
+        if table is courses.points:
+            _check_point_instants(table, problems)
         names = [fold(str(name)) for name in table.text("segment")]
         stray = np.array([bool(name) and name not in known for name in names], dtype=bool)
         if table is courses.points:
@@ -91,20 +103,48 @@ def check_side_tables(duty_cycle: ParsedTable, courses: Courses, problems: Probl
         )
 
 
-def pace_durations(parsed: ParsedTable, courses: Courses, problems: ProblemList) -> bool:
+def _check_point_instants(points: ParsedTable, problems: ProblemList) -> None:
+    """Each point of a spline has a time or a master angle, all points of a segment the same of the two."""
+    has_time, has_angle = (
+        np.isfinite(points.number(key)) | points.is_bad(key) for key in ("time", "master_angle")
+    )
+    problems.report_rows("points", points.rows, points.heading("time"), has_time == has_angle,
+                         got=lambda i: "a time and a master angle" if has_time[i] else "neither time nor master angle",
+                         allowed="one of the two", remedy="Fill in one of the cells.")  # fmt: skip
+    first: dict[str, int] = {}
+    mixed = np.zeros(len(points), dtype=bool)
+    for index, name in enumerate(points.text("segment")):
+        mixed[index] = has_time[index] != has_time[first.setdefault(fold(str(name)), index)]
+    problems.report_rows("points", points.rows, points.heading("time"), mixed & (has_time != has_angle),
+                         got="a time after master angles, or the other way round",
+                         allowed="the same for every point of a segment",
+                         remedy="Use one of the two columns for the segment.")  # fmt: skip
+
+
+def pace_durations(
+    parsed: ParsedTable, rows: NDArray[np.intp], courses: Courses, problems: ProblemList
+) -> bool:
     """Turn master angles into durations; says whether the rows give the duration of the cycle themselves.
 
     Parameters
     ----------
     parsed : ParsedTable
         The duty cycle; its durations are filled in.
+    rows : ndarray of int
+        Rows of the cycle. [-]
     courses : Courses
         The pace.
     problems : ProblemList
         Takes angles without a pace, or that do not make one turn.
     """
+    turns = np.full(len(parsed), np.nan)
+    for index in rows[parsed.word_is("motion_law", "spline")[rows]].tolist():
+        turns[index] = courses.turn_of(str(parsed.text("segment")[index]))
+    splines = np.isfinite(turns)
+    parsed.derive("master_angle", splines, turns, "master angle of the last point")
     angles = parsed.number("master_angle")
-    used = np.isfinite(angles)
+    used = np.zeros(len(parsed), dtype=bool)
+    used[rows] = np.isfinite(angles[rows])
     if not used.any():
         return False
     row = int(parsed.rows[int(np.argmax(used))])
@@ -117,10 +157,11 @@ def pace_durations(parsed: ParsedTable, courses: Courses, problems: ProblemList)
     both = used & np.isfinite(parsed.number("duration"))
     problems.report_rows(_TABLE, parsed.rows, heading, both, got=lambda i: "a master angle and a duration",
                          allowed="one of them", remedy="Clear one of the cells.")  # fmt: skip
-    if used.all() and abs(float(angles.sum()) - 2.0 * np.pi) > _TYPED * 2.0 * np.pi:
-        problems.report(_TABLE, int(parsed.rows[-1]), heading, got=f"{np.degrees(angles.sum()):.6g}° in all",
+    turned = float(angles[rows].sum())
+    if used[rows].all() and abs(turned - 2.0 * np.pi) > _TYPED * 2.0 * np.pi:
+        problems.report(_TABLE, int(parsed.rows[rows[-1]]), heading, got=f"{np.degrees(turned):.6g}° in all",
                         allowed="360° of the master shaft", remedy="Correct the angles.")  # fmt: skip
-    parsed.derive("duration", used & ~both, angles / (2.0 * np.pi) * courses.cycle_s,
+    parsed.derive("duration", used & ~both & ~splines, angles / (2.0 * np.pi) * courses.cycle_s,
                   "master angle / 360° of the time of one cycle")  # fmt: skip
     return True
 
@@ -128,6 +169,7 @@ def pace_durations(parsed: ParsedTable, courses: Courses, problems: ProblemList)
 def paced(
     segments: tuple[Segment, ...],
     parsed: ParsedTable,
+    rows: NDArray[np.intp],
     courses: Courses,
     by_angle: bool,
     problems: ProblemList,
@@ -139,7 +181,9 @@ def paced(
     segments : tuple of Segment
         As the rows give them.
     parsed : ParsedTable
-        The rows.
+        The duty cycle.
+    rows : ndarray of int
+        Rows of the cycle. [-]
     courses : Courses
         The pace.
     by_angle : bool
@@ -151,11 +195,12 @@ def paced(
     if not np.isfinite(courses.cycle_s) or not segments:
         return segments
     factor = courses.cycle_s / total
-    if abs(factor - 1.0) <= _TYPED or np.isfinite(parsed.number("master_angle")).all():
+    if abs(factor - 1.0) <= _TYPED or np.isfinite(parsed.number("master_angle")[rows]).all():
         return segments
-    limited = [key for key in _LIMITS if np.isfinite(parsed.number(key)).any()]
+    limited = [key for key in _LIMITS if np.isfinite(parsed.number(key)[rows]).any()]
     if by_angle or (factor < 1.0 and limited):
-        problems.report("axis", None, "cycles per minute", got=f"a cycle of {courses.cycle_s:.6g} s",
+        problems.report(courses.pace_table, courses.pace_row, "cycles per minute",
+                        got=f"a cycle of {courses.cycle_s:.6g} s",
                         allowed=f"{total:.6g} s, which the rows take" if by_angle
                         else f"at least {total:.6g} s within the limits of the duty cycle",
                         remedy="Give every segment a master angle." if by_angle

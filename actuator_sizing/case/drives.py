@@ -27,7 +27,7 @@ def understand_drives(parsed: ParsedTable) -> DriveParameters:
     """
     check_required(parsed)
     basis = word_codes(parsed, "current_basis", CURRENT_BASES)
-    for key in ("continuous_current", "peak_current"):
+    for key in ("continuous_current", "peak_current", "standstill_current"):
         convert_ampere(parsed, key, basis)
     check_order(parsed, "continuous_current", "peak_current",
                 remedy="Check both values and the ampere (DC, rms, peak) each one means.")  # fmt: skip
@@ -35,6 +35,8 @@ def understand_drives(parsed: ParsedTable) -> DriveParameters:
                 remedy="Check both voltages; they are DC bus voltages, not mains voltages.")  # fmt: skip
     check_order(parsed, "chopper_threshold", "maximum_bus_voltage",
                 remedy="The chopper must act before the drive switches off.")  # fmt: skip
+    check_order(parsed, "chopper_hysteresis", "chopper_threshold", strict=True,
+                remedy="It is a difference, not the voltage at which the chopper switches off.")  # fmt: skip
     assume_default(parsed, "continuous_rating_ambient")
     _assume_commutation(parsed)
     served = [

@@ -8,6 +8,7 @@ from actuator_sizing.case.parsed_tables import ParsedTable
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.tables import (
     ADVICE_CHECKS,
+    ALLOWED_UTILISATIONS,
     CHECK_NAMES,
     DEFAULT_ALLOWED_UTILISATION,
     DEFAULT_RECOMMENDED_RESERVE,
@@ -21,7 +22,7 @@ def default_limits() -> dict[str, Limit]:
         key: Limit(
             key,
             "advice" if key in ADVICE_CHECKS else "yes",
-            DEFAULT_ALLOWED_UTILISATION,
+            ALLOWED_UTILISATIONS.get(key, DEFAULT_ALLOWED_UTILISATION),
             RECOMMENDED_RESERVES.get(key, DEFAULT_RECOMMENDED_RESERVE),
         )
         for key, _ in CHECK_NAMES

@@ -93,7 +93,11 @@ def build_mechanism(axis: Axis, points: Points, problems: ProblemList) -> Mechan
 
 
 def check_motion(
-    mechanism: Mechanism, at_shaft: bool, segments: Iterable[Segment], problems: ProblemList
+    mechanism: Mechanism,
+    at_shaft: bool,
+    segments: Iterable[Segment],
+    problems: ProblemList,
+    table: str = "duty_cycle",
 ) -> None:
     """Report segments that leave the geometry or ask for what the load cannot do.
 
@@ -104,15 +108,20 @@ def check_motion(
     at_shaft : bool
         The motion is that of the driven shaft.
     segments : iterable of Segment
-        The duty cycle as planned.
+        One cycle as planned.
     problems : ProblemList
         Takes one problem a segment at most.
+    table : str
+        Where the segments stand.
     """
     origin = 0.0
     for segment in segments:
         complaint, end = _first_complaint(mechanism, at_shaft, segment, origin)
         if complaint is not None:
-            problems.report("duty_cycle", segment.row, complaint.quantity, got=complaint.got,
+            column = complaint.quantity
+            if table == "duty_types" and column == "displacement":
+                column = "operating time"  # which makes the way there
+            problems.report(table, segment.row, column, got=complaint.got,
                             allowed=complaint.allowed, remedy=complaint.remedy,
                             severity=complaint.severity)  # fmt: skip
         origin = end

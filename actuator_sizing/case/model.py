@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 
 import numpy as np
@@ -65,6 +65,32 @@ class Segment:
     )
 
 
+#: How a cycle runs: for ever; from cold each time; once from cold; once out of the warm state of the others.
+REPEATS, SHORT_TIME, ONCE_COLD, ONCE_WARM = "repeats", "short-time", "once from cold", "once from warm"
+
+
+@dataclass(frozen=True)
+class Cycle:
+    """One named cycle: its segments and how it runs."""
+
+    name: str  # empty where a case has one cycle and does not name it
+    segments: tuple[Segment, ...]
+    runs: str = REPEATS
+    share: float = float("nan")  # of the operating time; NaN: no mix is stated
+    duty_type: str = ""  # of IEC 60034-1, where the cycle was made from one
+    row: int | None = None  # in the table `cycles`
+
+    @property
+    def duration_s(self) -> float:
+        """Duration of one run. [s]."""
+        return sum(segment.duration_s for segment in self.segments)
+
+    @property
+    def repeats(self) -> bool:
+        """Whether it runs again and again until its temperatures repeat."""
+        return self.runs == REPEATS
+
+
 @dataclass(frozen=True)
 class Limit:
     """How one check is judged."""
@@ -117,6 +143,19 @@ class Catalog:
     def __len__(self) -> int:
         return len(self.names)
 
+    def row(self, index: int) -> Catalog:
+        """One part of the catalog by itself."""
+        one = slice(index, index + 1)
+        return replace(
+            self,
+            names=self.names[one],
+            rows=self.rows[one],
+            values={key: column[one] for key, column in self.values.items()},
+            origins={key: column[one] for key, column in self.origins.items()},
+            as_entered={key: column[one] for key, column in self.as_entered.items()},
+            rules={key: {0: rules[index]} for key, rules in self.rules.items() if index in rules},
+        )
+
 
 @dataclass(frozen=True)
 class Case:
@@ -141,12 +180,39 @@ class Case:
     problems: tuple[Problem, ...]  # warnings and notes only; errors never make a Case
     fingerprint: str
     recording: Recording | None = None  # a measured cycle in place of planned segments
+    resistor_pulses: tuple[tuple[float, float], ...] = ()  # of the brake resistor: length [s] and energy [J]
     parts: tuple[Part, ...] = ()  # inertia inventory; already added to mechanism and gearhead parameters
+    #: every cycle, `segments` being those of the first; empty: one without a name, which repeats
+    cycles: tuple[Cycle, ...] = ()
 
     @property
     def cycle_duration_s(self) -> float:
         """Duration of one cycle. [s]."""
         return sum(segment.duration_s for segment in self.segments)
+
+    @property
+    def cycle(self) -> Cycle:
+        """The cycle that `segments` are of."""
+        return replace(self.cycles[0], segments=self.segments) if self.cycles else Cycle("", self.segments)
+
+    def by_cycle(self) -> tuple[Case, ...]:
+        """The case once for each of its cycles, with that cycle alone."""
+        if len(self.cycles) < 2:
+            return (self,)
+        return tuple(replace(self, segments=cycle.segments, cycles=(cycle,)) for cycle in self.cycles)
+
+    def with_segments(self, change: Callable[[tuple[Segment, ...]], tuple[Segment, ...]]) -> Case:
+        """The case with the segments of every cycle changed alike.
+
+        Parameters
+        ----------
+        change : callable
+            From the segments of one cycle to others.
+        """
+        if len(self.cycles) < 2:
+            return replace(self, segments=change(self.segments))
+        cycles = tuple(replace(cycle, segments=change(cycle.segments)) for cycle in self.cycles)
+        return replace(self, segments=cycles[0].segments, cycles=cycles)
 
     @property
     def motion_at_shaft(self) -> bool:

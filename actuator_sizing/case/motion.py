@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import replace
 
 import numpy as np
+from numpy.typing import NDArray
 
 from actuator_sizing.case.catalogs import check_required
 from actuator_sizing.case.columns import Column
@@ -25,36 +26,62 @@ _SPEED_TOLERANCE = 1e-6  # of the largest speed of the cycle: typed figures are 
 _CLOSING_TOLERANCE = 1e-6  # of the travel
 
 
-def understand_motion(
-    parsed: ParsedTable, coordinate: str, problems: ProblemList, courses: Courses = NO_COURSES
-) -> tuple[Segment, ...]:
-    """Plan every segment of the duty cycle.
+def prepare_motion(parsed: ParsedTable, courses: Courses, problems: ProblemList) -> None:
+    """Report what is missing in any row, and put the defaults.
 
     Parameters
     ----------
     parsed : ParsedTable
         The table `duty_cycle` with each cell judged.
+    courses : Courses
+        Tables beside the duty cycle.
+    problems : ProblemList
+        Takes what is wrong.
+    """
+    check_required(parsed)
+    assume_defaults(parsed)
+    check_side_tables(parsed, courses, problems)
+
+
+def plan_cycle(
+    parsed: ParsedTable,
+    rows: NDArray[np.intp],
+    coordinate: str,
+    problems: ProblemList,
+    courses: Courses = NO_COURSES,
+) -> tuple[Segment, ...]:
+    """Plan every segment of one cycle.
+
+    Parameters
+    ----------
+    parsed : ParsedTable
+        The table `duty_cycle`, prepared.
+    rows : ndarray of int, shape (n,)
+        Which of its rows make the cycle, in their order. [-]
     coordinate : str
         ``"linear"`` or ``"rotary"``.
     problems : ProblemList
         Takes what cannot be planned and what does not join.
     courses : Courses
-        Tables beside the duty cycle, and its pace.
+        Tables beside the duty cycle, and the pace of this cycle.
 
     Returns
     -------
     tuple of Segment
         In the order of the rows; incomplete where a problem was reported.
     """
-    check_required(parsed)
-    _assume_defaults(parsed)
-    check_side_tables(parsed, courses, problems)
-    by_angle = pace_durations(parsed, courses, problems)
+    by_angle = pace_durations(parsed, rows, courses, problems)
     segments: list[Segment] = []
-    start_s, position, speed = 0.0, 0.0, _speed_before_first(parsed)
-    for index in range(len(parsed)):
-        if not parsed.text("motion_law")[index] or any(bad[index] for bad in parsed.bad.values()):
+    start_s, position, speed = 0.0, 0.0, _speed_before_first(parsed, rows)
+    for index in rows.tolist():
+        if _is_bad(parsed, index):
             speed = np.nan  # the rest can be planned, but not joined to this row
+            continue
+        if np.isnan(speed) and parsed.text("motion_law")[index] in (_CONSTANT, _RAMP):
+            # What the row before would hand over is not known: whatever was said here might not be true.
+            with np.errstate(divide="ignore", invalid="ignore"):
+                own = _own_end_speed(parsed, index)
+            speed = np.nan if own is None else own
             continue
         phases = _plan(parsed, index, 0.0 if np.isnan(speed) else speed, courses, problems)
         if phases is None:
@@ -70,13 +97,19 @@ def understand_motion(
         start_s += segment.duration_s
         position += phases[-1].end()[0]
         speed = 0.0 if abs(end) <= _SPEED_TOLERANCE * _largest_speed(phases) else end
-    if len(segments) == len(parsed) > 0:
+    if len(segments) == len(rows) > 0:
         _check_closing(segments, coordinate, problems)
-        return paced(tuple(segments), parsed, courses, by_angle, problems)
+        return paced(tuple(segments), parsed, rows, courses, by_angle, problems)
     return tuple(segments)
 
 
-def _assume_defaults(parsed: ParsedTable) -> None:
+def _is_bad(parsed: ParsedTable, index: int) -> bool:
+    """Whether a row has no law or a cell that was reported."""
+    return not parsed.text("motion_law")[index] or any(bad[index] for bad in parsed.bad.values())
+
+
+def assume_defaults(parsed: ParsedTable) -> None:
+    """Put the default of every number column where nothing is stated."""
     for column in parsed.table.columns:
         if isinstance(column.default, float):
             parsed.assume(column.key, np.ones(len(parsed), dtype=bool), column.default, column.assumed)
@@ -99,10 +132,12 @@ def _own_end_speed(parsed: ParsedTable, index: int) -> float | None:
     return None
 
 
-def _speed_before_first(parsed: ParsedTable) -> float:
-    """Speed at the start of the cycle: the one in which its last row ends, where that can be known."""
+def _speed_before_first(parsed: ParsedTable, rows: NDArray[np.intp]) -> float:
+    """Speed at the start of the cycle: the one in which its last row ends; NaN where that row is wrong."""
     with np.errstate(divide="ignore", invalid="ignore"):
-        for index in reversed(range(len(parsed))):
+        for index in reversed(rows.tolist()):
+            if _is_bad(parsed, index):
+                return np.nan
             speed = _own_end_speed(parsed, index)
             if speed is not None:
                 return speed

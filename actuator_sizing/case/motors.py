@@ -109,6 +109,7 @@ def understand_motors(parsed: ParsedTable) -> MotorParameters:
         winding_time_constant_s=number("winding_time_constant"),
         housing_time_constant_s=number("housing_time_constant"),
         brake_torque_nm=side("brake_torque", "brake_force"),
+        brake_coil_w=np.nan_to_num(number("brake_coil_power"), nan=0.0),
         nominal_voltage_v=number("nominal_voltage"),
         mass_kg=number("mass"),
         price=number("price"),

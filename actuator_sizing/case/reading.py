@@ -186,8 +186,8 @@ def _add_shared_catalogs(
 
 def _report_missing_tables(raw: dict[str, RawTable], problems: ProblemList) -> None:
     for name, table in TABLES.items():
-        if name == "duty_cycle" and "measured" in raw:
-            continue  # the record is the cycle
+        if name == "duty_cycle" and not raw.keys().isdisjoint(("measured", "duty_types")):
+            continue  # the record, or the duty types, are the cycle
         if table.required and name not in raw and not problems.mentions(name):
             where = ", in the case or in its catalog folder" if table.is_catalog else ""
             columns = ", ".join(

@@ -2,14 +2,19 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from pathlib import Path
 
 from actuator_sizing.case.columns import Column, Table, nearest
+from actuator_sizing.case.cycle_columns import DUTY_TYPES
 from actuator_sizing.case.documentation import columns_page
+from actuator_sizing.case.duty_types import ALL_TIMES, SEVERAL_LOADS, USED_TIMES
 from actuator_sizing.case.sheets import Sheet, is_workbook
 from actuator_sizing.case.tables import (
     ADVICE_CHECKS,
+    ALLOWED_UTILISATIONS,
     CHECK_NAMES,
+    DEFAULT_ALLOWED_UTILISATION,
     DEFAULT_RECOMMENDED_RESERVE,
     RECOMMENDED_RESERVES,
     TABLES,
@@ -48,12 +53,16 @@ _EXAMPLES: dict[str, dict[str, str]] = {
     "unwinder": {"payload": "0", "displacement": "0.5", "duration": "1"},
 }
 
+_NEVER_TURNS_ON = ("toggle lever",)  # between dead centres: no duty type runs on it
+
 # One turn of a plain cam: dwell, lift, dwell, return.
 _MAP_ROWS = (("0", "0"), ("45", "0"), ("90", "5"), ("135", "15"), ("180", "20"), ("225", "20"), ("270", "15"),
              ("315", "5"), ("360", "0"))  # fmt: skip
 
 
-def start_case(path: str | Path, mechanism: str = DEFAULT_MECHANISM) -> tuple[Path, ...]:
+def start_case(
+    path: str | Path, mechanism: str = DEFAULT_MECHANISM, *, duty_type: str = ""
+) -> tuple[Path, ...]:
     """Write a new case with example rows to fill in.
 
     Parameters
@@ -63,6 +72,8 @@ def start_case(path: str | Path, mechanism: str = DEFAULT_MECHANISM) -> tuple[Pa
         empty folder.
     mechanism : str
         Word of a mechanism, e.g. ``"ball screw"``.
+    duty_type : str
+        Duty type of IEC 60034-1, e.g. ``"S3"``, whose table takes the place of the duty cycle; empty: none.
 
     Returns
     -------
@@ -72,12 +83,17 @@ def start_case(path: str | Path, mechanism: str = DEFAULT_MECHANISM) -> tuple[Pa
     Raises
     ------
     InputError
-        If something of that name exists, or the mechanism is not known.
+        If something of that name exists, or the mechanism or duty type is not known.
     OutputError
         If a file cannot be written.
     """
     path = Path(path)
     chosen = _mechanism(mechanism)
+    if duty_type:
+        _check_word("duty_types", "duty type", duty_type, DUTY_TYPES)
+        _check_word(
+            "axis", "mechanism", mechanism, [name for name in MECHANISMS if name not in _NEVER_TURNS_ON]
+        )
     workbook = is_workbook(path)
     if path.exists() and (workbook or not path.is_dir() or any(path.iterdir())):
         raise InputError(
@@ -91,38 +107,46 @@ def start_case(path: str | Path, mechanism: str = DEFAULT_MECHANISM) -> tuple[Pa
             ]
         )
     extras = {} if workbook else {"columns.md": columns_page(chosen).encode()}
-    return write_sheets(path, example_sheets(chosen), extras)
+    return write_sheets(path, example_sheets(chosen, duty_type), extras)
 
 
 def _mechanism(word: str) -> type[Mechanism]:
-    if word in MECHANISMS:
-        return MECHANISMS[word]
-    near = nearest(word, MECHANISMS)
+    _check_word("axis", "mechanism", word, MECHANISMS)
+    return MECHANISMS[word]
+
+
+def _check_word(table: str, column: str, word: str, known: Iterable[str]) -> None:
+    """Refuse a word that is not among the known ones, with the nearest of them."""
+    if word in known:
+        return
+    near = nearest(word, known)
     raise InputError(
         [
             Problem(
-                "axis",
-                column="mechanism",
+                table,
+                column=column,
                 got=f"'{word}'",
-                allowed=f"one of: {', '.join(MECHANISMS)}",
+                allowed=f"one of: {', '.join(known)}",
                 remedy=f"Did you mean '{near}'?" if near else "Choose one of them.",
             )
         ]
     )
 
 
-def example_sheets(mechanism: type[Mechanism]) -> tuple[Sheet, ...]:
+def example_sheets(mechanism: type[Mechanism], duty_type: str = "") -> tuple[Sheet, ...]:
     """Every table of a new case, from the declarations of its columns."""
     left_out = {name for name, table in TABLES.items() if not table.in_template}
+    if duty_type:
+        left_out = left_out - {"duty_types"} | {"duty_cycle"}
     if not mechanism.needs_map:
         left_out.add("map")
     if mechanism.drives_linear_motor:  # it has no gearhead, and nothing turns
         left_out |= {"gearheads", "inertias"}
     tables = [table_for(name, mechanism) for name in TABLES if name not in left_out]
-    return tuple(_sheet(table, mechanism) for table in tables)
+    return tuple(_sheet(table, mechanism, duty_type) for table in tables)
 
 
-def _sheet(table: Table, mechanism: type[Mechanism]) -> Sheet:
+def _sheet(table: Table, mechanism: type[Mechanism], duty_type: str = "") -> Sheet:
     coordinate = mechanism.coordinate
     machine = "linear" if mechanism.drives_linear_motor else "rotary"
     if table.is_catalog:
@@ -134,6 +158,8 @@ def _sheet(table: Table, mechanism: type[Mechanism]) -> Sheet:
         rows = _axis_rows(mechanism)
     elif table.name == "duty_cycle":
         rows = _duty_cycle_rows(mechanism, columns)
+    elif table.name == "duty_types":
+        rows = _duty_type_rows(mechanism, columns, duty_type)
     elif table.name == "map":
         rows = list(_MAP_ROWS)
     elif table.name == "limits":
@@ -178,14 +204,33 @@ def _duty_cycle_rows(mechanism: type[Mechanism], columns: list[Column]) -> list[
     return [tuple(row.get(column.name, "") for column in columns) for row in segments]
 
 
+def _duty_type_rows(
+    mechanism: type[Mechanism], columns: list[Column], duty_type: str
+) -> list[tuple[str, ...]]:
+    """One row with the times that the type takes; two loads where it has several."""
+    fitted = _EXAMPLES.get(mechanism.name, {})
+    example = {c.name: fitted.get(c.name, c.example_for(mechanism.coordinate)) for c in columns}
+    used = USED_TIMES[duty_type]
+    row = example | {"cycle": f"duty {duty_type}", "duty type": duty_type}
+    row |= {c.name: "" for c in columns if c.key in ALL_TIMES and c.key not in used}
+    if duty_type not in SEVERAL_LOADS:
+        return [tuple(row[c.name] for c in columns)]
+    rows = [row | {"payload": "0"}, row]
+    if duty_type == "S10":
+        rows = [row | {"share of time": "70", "payload": "0"}, row | {"share of time": "30"}]
+    return [tuple(each[c.name] for c in columns) for each in rows]
+
+
 def _limit_rows(columns: list[Column]) -> list[tuple[str, ...]]:
     """Every check with its default, ready to be changed."""
     rows = []
     for key, title in CHECK_NAMES:
+        allowed = ALLOWED_UTILISATIONS.get(key, DEFAULT_ALLOWED_UTILISATION)
         reserve = RECOMMENDED_RESERVES.get(key, DEFAULT_RECOMMENDED_RESERVE)
         given = {
             "check": title,
             "applies": "advice" if key in ADVICE_CHECKS else "yes",
+            "allowed utilisation": f"{100.0 * allowed:.4g}",
             "recommended reserve": f"{100.0 * reserve:.4g}",
         }
         rows.append(tuple(given.get(column.name, column.example_for("rotary")) for column in columns))

@@ -21,6 +21,8 @@ from actuator_sizing.case.columns import (
     key_of,
     nearest,
 )
+from actuator_sizing.case.cycle_columns import CYCLES_COLUMNS, DUTY_TYPE_COLUMNS
+from actuator_sizing.case.strength_columns import MECHANISM_STRENGTH, STRENGTH_QUANTITIES
 from actuator_sizing.core.mechanisms import (
     LINEAR,
     LOAD,
@@ -38,31 +40,61 @@ CHECK_NAMES: tuple[tuple[str, str], ...] = (
     ("motor_peak_current", "motor peak current"),
     ("motor_speed", "motor speed"),
     ("voltage", "voltage"),
+    ("jam_temperature", "winding after a jam"),
+    ("stops_temperature", "winding after stops in a row"),
+    ("standstill_hold", "hottest phase while holding"),
+    ("motor_demagnetisation", "demagnetisation"),
+    ("brush_life", "life of the brushes"),
     ("drive_continuous_current", "drive continuous current"),
     ("drive_peak_current", "drive peak current"),
     ("drive_peak_time", "drive peak time"),
     ("drive_bus_voltage", "drive bus voltage range"),
+    ("drive_standstill_current", "drive current at standstill"),
+    ("drive_output_frequency", "electrical frequency"),
+    ("drive_load_inductance", "load inductance"),
+    ("pwm_ripple_loss", "loss by PWM ripple"),
+    ("cable_voltage_drop", "voltage drop of the motor cable"),
     ("bus_maximum_voltage", "highest bus voltage"),
+    ("chopper_release", "chopper release voltage"),
     ("bus_sag", "voltage on a sagging bus"),
+    ("bus_minimum_voltage", "lowest bus voltage"),
     ("brake_resistor_value", "brake resistor value"),
     ("brake_resistor_peak_power", "brake resistor peak power"),
     ("brake_resistor_mean_power", "brake resistor mean power"),
     ("brake_resistor_pulse_energy", "brake resistor pulse energy"),
     ("supply_mean_power", "supply mean power"),
     ("supply_peak_power", "supply peak power"),
+    ("supply_charging_current", "supply charging current"),
     ("gearhead_equivalent_torque", "gearhead equivalent torque"),
     ("gearhead_peak_torque", "gearhead peak torque"),
     ("gearhead_mean_speed", "gearhead mean input speed"),
     ("gearhead_maximum_speed", "gearhead maximum input speed"),
+    ("gearhead_thermal_power", "gearhead thermal power"),
+    ("gearhead_life", "gearhead life"),
+    ("shaft_radial_force", "radial force on the shaft"),
+    ("shaft_axial_force", "axial force on the shaft"),
+    ("shaft_bearing_life", "life of the shaft bearings"),
+    ("screw_critical_speed", "critical speed of the screw"),
+    ("screw_dn_value", "DN value of the screw"),
+    ("screw_buckling", "buckling of the screw"),
+    ("screw_static_load", "static load of the screw"),
+    ("screw_life", "life of the screw"),
+    ("screw_pressure_speed", "pressure times speed of the nut"),
+    ("belt_tension", "belt tension"),
+    ("belt_teeth", "belt teeth in mesh"),
+    ("rack_force", "tooth force of the rack"),
+    ("coupling_torque", "coupling torque"),
     ("stop_controlled", "controlled stop"),
     ("stop_shorted", "stop by shorted winding"),
     ("stop_brake", "stop by the holding brake"),
     ("motor_shorted_current", "short-circuit current"),
+    ("gearhead_emergency_torque", "gearhead emergency torque"),
+    ("gearhead_jam_torque", "gearhead torque in a jam"),
     ("holding_brake_static", "holding brake torque"),
     ("holding_brake_energy", "holding brake energy"),
     ("drop_distance", "drop distance"),
-    ("gearhead_emergency_torque", "gearhead emergency torque"),
-    ("gearhead_jam_torque", "gearhead torque in a jam"),
+    ("holding_brake_wear", "wear of the holding brake"),
+    ("holding_brake_stops", "stops of the holding brake"),
     ("inertia_ratio", "inertia ratio"),
     ("settling", "settling within dwell"),
     ("following_error", "following error"),
@@ -72,17 +104,23 @@ CHECK_NAMES: tuple[tuple[str, str], ...] = (
 
 #: Judged as advice unless the limits table says otherwise: rules of thumb, and events that need not be possible.
 ADVICE_CHECKS = (
+    "pwm_ripple_loss",
+    "cable_voltage_drop",
     "stop_shorted",
     "stop_brake",
     "motor_shorted_current",
+    "standstill_hold",
     "gearhead_emergency_torque",
     "gearhead_jam_torque",
     "inertia_ratio",
 )
 #: Parts fit or do not; a reserve would mean nothing.
-FITTING_CHECKS = ("drive_bus_voltage", "brake_resistor_value")
+FITTING_CHECKS = ("drive_bus_voltage", "drive_load_inductance", "chopper_release", "brake_resistor_value")
 DEFAULT_ALLOWED_UTILISATION = 1.0
 DEFAULT_RECOMMENDED_RESERVE = 0.1
+#: Checks whose common practice keeps a distance: a screw turns at up to 80 % of its critical speed, is loaded to half
+#: its buckling force and to two thirds of its static rating.
+ALLOWED_UTILISATIONS = {"screw_critical_speed": 0.8, "screw_buckling": 0.5, "screw_static_load": 2.0 / 3.0}
 #: Checks whose common practice differs: a bus may come within 5 % of the trip, a holding brake has 1.5 times the
 #: torque of the load.
 RECOMMENDED_RESERVES = {
@@ -147,11 +185,16 @@ COMMON_QUANTITIES = (
     Column("current loop rise time", "time", "time in which the drive can change the current at a step of "
            "acceleration", default=1.0e-3, assumed="common for a digital current loop", positive=True,
            maximum=10.0, example="1", unit="ms"),
+    Column("supply", WORDS, "what feeds the bus: mains through a rectifier, a DC supply, or a battery, which also "
+           "takes regenerated energy", words=("rectified mains", "DC supply", "battery"), default="rectified mains",
+           assumed="usual for a drive with its own rectifier", example=""),
     Column("bus capacitance", "capacitance", "capacitance on the DC bus besides the drive's own", minimum=0.0,
            example="680", unit="µF"),
     Column("chopper threshold", "voltage", "bus voltage at which the brake chopper switches on",
            positive=True,
            example="385", unit="V"),
+    Column("chopper hysteresis", "voltage", "how far below its threshold the brake chopper switches off again",
+           minimum=0.0, maximum=1.0e4, example="", unit="V"),
     Column("brake resistor", "resistance", "resistance of the brake resistor", positive=True, example="40",
            unit="Ω"),
     Column("brake resistor continuous power", "power", "power the brake resistor stands for ever", positive=True,
@@ -164,6 +207,16 @@ COMMON_QUANTITIES = (
            example="", unit="kW"),
     Column("supply internal resistance", "resistance", "resistance of supply and leads; the minimum bus voltage "
            "is then the one without load", positive=True, maximum=1.0e6, example="", unit="Ω"),
+    Column("motor cable length", "length", "length of the cable between drive and motor; its resistance takes "
+           "voltage and adds loss", positive=True, maximum=1.0e4, example="", unit="m"),
+    Column("motor cable cross-section", "area", "cross-section of one conductor of that cable", positive=True,
+           maximum=1.0e-2, example="", unit="mm²"),
+    Column("supply current limit", "current", "largest current the supply gives; beyond it only the capacitors "
+           "help", positive=True, maximum=1.0e6, example="", unit="A"),
+    Column("supply charging current", "current", "largest current that a battery, or a supply that feeds back, "
+           "takes", positive=True, maximum=1.0e6, example="", unit="A"),
+    Column("other power on the bus", "power", "what other loads take from the bus all the time", minimum=0.0,
+           maximum=1.0e9, example="", unit="W"),
     Column("supply feeds back", YES_NO, "whether the supply returns regenerated energy to the mains",
            default="no", assumed="a rectifier does not feed back", example="no"),
     Column("stop reaction time", "time", "from the event that asks for a stop until the drive or the brake is told",
@@ -173,6 +226,7 @@ COMMON_QUANTITIES = (
            positive=True, example=("", ""), unit=("mm", "deg")),
     Column("allowed drop distance", ("length", "angle"), "way a held load may sink until the holding brake carries "
            "it, when torque is removed", positive=True, example=("", ""), unit=("mm", "deg")),
+    *STRENGTH_QUANTITIES,
     Column("catalog folder", TEXT, "folder with shared catalog tables, relative to the case", example=""),
     Column("direct drive allowed", YES_NO, "whether sets without gearhead are candidates", default="yes",
            assumed="nothing speaks against it", example="yes"),
@@ -197,6 +251,10 @@ COMMON_QUANTITIES = (
            assumed="the measured motion is kept", example="no"),
     Column("recorded torque constant", "torque constant", "torque at the driven shaft per ampere of the measured "
            "current", positive=True, example="", unit="Nm/A"),
+    Column("operating time per year", "time", "how long the axis runs its cycle in a year; for the energy of a year",
+           positive=True, maximum=3.1623e7, example="", unit="h"),
+    Column("price of energy per kWh", "price", "what a kilowatt-hour costs", minimum=0.0, maximum=1.0e6, example="",
+           unit="EUR"),
     Column("required life", "time", "operating hours the axis must reach", positive=True, example="20000",
            unit="h"),
     Column("driven shaft stiffness", "torsional stiffness", "stiffness between gearhead and load (coupling, "
@@ -234,8 +292,9 @@ def _from_parameter(parameter: Parameter) -> Column:
 
 
 def mechanism_quantities(mechanism: type[Mechanism]) -> tuple[Column, ...]:
-    """Axis quantities of one mechanism beside the common ones."""
-    return tuple(_from_parameter(parameter) for parameter in mechanism.parameters)
+    """Axis quantities of one mechanism beside the common ones: its geometry, then what its parts stand."""
+    geometry = tuple(_from_parameter(parameter) for parameter in mechanism.parameters)
+    return (*geometry, *MECHANISM_STRENGTH.get(mechanism.name, ()))
 
 
 def axis_quantities(mechanism: type[Mechanism] | None = None) -> tuple[Column, ...]:
@@ -303,14 +362,18 @@ DUTY_CYCLE_COLUMNS = (
     Column("brake closed", YES_NO, "whether the holding brake carries the load (standstill only)",
            default="no",
            assumed="the motor holds", example="no"),
+    Column("cycle", TEXT, "cycle that the segment belongs to, such as normal, worst or start-up; the one of the row "
+           "above when empty. Each cycle starts at the same place", example=""),
     Column("note", TEXT, "remark", example=""),
 )  # fmt: skip
 
 POINT_COLUMNS = (
     Column("segment", TEXT, "segment of the duty cycle with the motion law 'spline'", required=True,
            example="swing"),
-    Column("time", "time", "from the start of the segment; the first point is at 0", required=True, minimum=0.0,
-           maximum=1.0e9, example="0", unit="s"),
+    Column("time", "time", "from the start of the segment; the first point is at 0", minimum=0.0, maximum=1.0e9,
+           example="0", unit="s"),
+    Column("master angle", "angle", "instead of time: turn of the master shaft from the start of the segment, as a "
+           "cam law states it; needs 'cycles per minute'", minimum=0.0, maximum=6.2832, unit="deg"),
     Column("position", ("length", "angle"), "counted from anywhere; the first point is where the segment starts",
            required=True, example="0", unit=("mm", "deg")),
 )  # fmt: skip
@@ -345,6 +408,13 @@ MAP_COLUMNS = (
            maximum=1.0e4, example="0", unit="deg"),
     Column("position", ("length", "angle"), "position of the load at that angle", required=True, example=("0", "0"),
            unit=("mm", "deg")),
+)  # fmt: skip
+
+RESISTOR_PULSE_COLUMNS = (
+    Column("pulse duration", "time", "length of a pulse; longer from row to row", required=True, positive=True,
+           maximum=1.0e6, example="1", unit="s"),
+    Column("pulse energy", "energy", "energy that the brake resistor takes in one pulse of that length",
+           required=True, positive=True, maximum=1.0e9, example="2", unit="kJ"),
 )  # fmt: skip
 
 INERTIA_SHAPES = ("solid cylinder", "hollow cylinder", "block", "point mass", "screw", "pulley", "belt", "coupling",
@@ -416,6 +486,9 @@ TABLES: dict[str, Table] = {
               AXIS_COLUMNS, required=True),
         Table("duty_cycle", "One row is one segment of the motion; the rows follow each other and repeat.",
               DUTY_CYCLE_COLUMNS, required=True, repeats_names=True),
+        Table("cycles", "One row says how one named cycle runs, and how often.", CYCLES_COLUMNS, in_template=False),
+        Table("duty_types", "One row is one load of a duty type of IEC 60034-1, made into a cycle; beside or in "
+              "place of the duty cycle.", DUTY_TYPE_COLUMNS, repeats_names=True, in_template=False),
         Table("points", "One row is one point that a segment with the motion law 'spline' passes.",
               POINT_COLUMNS, repeats_names=True, in_template=False),
         Table("process", "One row is one value of a process force along a segment.",
@@ -436,6 +509,8 @@ TABLES: dict[str, Table] = {
         Table("tolerances", "One row is the spread of one input quantity.", TOLERANCE_COLUMNS, repeats_names=True),
         Table("map", "One row is one point of the curve on which the load follows the driven shaft, for the "
               "tabulated mechanisms; a smooth spline goes through the points.", MAP_COLUMNS),
+        Table("resistor_pulses", "One row is one point of the pulse curve of the brake resistor, in place of 'brake "
+              "resistor pulse energy'.", RESISTOR_PULSE_COLUMNS, in_template=False),
         Table("inertias", "One row is one part of the inertia inventory; its inertia is added to that of the axis.",
               INERTIA_COLUMNS),
     )
@@ -451,13 +526,9 @@ def table_for(name: str, mechanism: type[Mechanism] | None, stated_at: str = "")
     says, and process efforts belong to the load.
     """
     table = TABLES[name]
-    if mechanism is None or name not in ("duty_cycle", "map"):
+    if mechanism is None or name not in ("duty_cycle", "duty_types", "map"):
         return table
-    moved = (
-        ROTARY
-        if (stated_at or mechanism.motion_at) == SHAFT and name == "duty_cycle"
-        else mechanism.coordinate
-    )
+    moved = ROTARY if (stated_at or mechanism.motion_at) == SHAFT and name != "map" else mechanism.coordinate
     if mechanism.drives_linear_motor:
         moved = LINEAR
     carried = LINEAR if mechanism.carries_mass() else ROTARY
@@ -480,6 +551,7 @@ def table_for(name: str, mechanism: type[Mechanism] | None, stated_at: str = "")
 __all__ = [
     "ABSOLUTE_ZERO_DEGC",
     "ADVICE_CHECKS",
+    "ALLOWED_UTILISATIONS",
     "AXIS_COLUMNS",
     "CATALOG_TABLES",
     "CHECK_NAMES",

@@ -9,20 +9,23 @@ from actuator_sizing.case.axis import Axis, options_of, surroundings_of
 from actuator_sizing.case.catalogs import to_catalog
 from actuator_sizing.case.columns import Column
 from actuator_sizing.case.courses import side_tables
+from actuator_sizing.case.cycles import understand_cycles
 from actuator_sizing.case.drives import understand_drives
+from actuator_sizing.case.duty_types import check_turns
 from actuator_sizing.case.fingerprint import fingerprint
 from actuator_sizing.case.gearheads import understand_gearheads
 from actuator_sizing.case.inertias import at_the_motor, table_entries, understand_parts, with_parts
 from actuator_sizing.case.judging import understand_limits
 from actuator_sizing.case.measuring import understand_recording
 from actuator_sizing.case.mechanics import build_mechanism, check_motion, understand_map
-from actuator_sizing.case.model import MISSING, ORIGINS, STATED, Case, Catalog, Entry
-from actuator_sizing.case.motion import motion_entries, understand_motion
+from actuator_sizing.case.model import MISSING, ORIGINS, STATED, Case, Catalog, Cycle, Entry
+from actuator_sizing.case.motion import motion_entries
 from actuator_sizing.case.motors import understand_motors
 from actuator_sizing.case.parsed_tables import ParsedTable
 from actuator_sizing.case.parsing import parse_table
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.raw_tables import RawTable
+from actuator_sizing.case.resistor import understand_pulses
 from actuator_sizing.case.spreads import understand_tolerances
 from actuator_sizing.case.tables import TABLES, table_for
 from actuator_sizing.core.mechanisms import SHAFT
@@ -58,22 +61,27 @@ def understand(
         for table in TABLES
         if table in raw and table not in ("axis", "measured")
     }
-    motion = parsed.get("duty_cycle")
+    motion = parsed.get("duty_cycle") or parsed.get("duty_types")
     courses = side_tables(parsed, axis.number("cycles_per_minute"))
-    segments = (
-        understand_motion(motion, axis.motion_coordinate, problems, courses)
+    cycles = (
+        understand_cycles(parsed, axis.motion_coordinate, problems, courses)
         if motion and axis.mechanism
         else ()
     )
     recording = None
     if "measured" in raw and axis.mechanism:
         recording = understand_recording(raw["measured"], axis, problems, motion is not None)
-        segments = (recording.segment,) if recording else ()
+        cycles = (Cycle("", (recording.segment,)),) if recording else ()
     mechanism = build_mechanism(axis, understand_map(parsed.get("map"), axis, problems), problems)
     if mechanism is not None and motion:
         at_shaft = (axis.word("motion_stated_at") or mechanism.motion_at) == SHAFT
-        check_motion(mechanism, at_shaft, segments, problems)
+        for cycle in cycles:
+            table = "duty_types" if cycle.duty_type else "duty_cycle"
+            check_motion(mechanism, at_shaft, cycle.segments, problems, table)
+            if cycle.duty_type:
+                check_turns(cycle, mechanism, at_shaft, problems)
     parts = understand_parts(parsed.get("inertias"), axis.mechanism, problems)
+    pulses = understand_pulses(parsed.get("resistor_pulses"), problems)
     motors, drives = parsed.get("motors"), parsed.get("drives")
     motor_parameters = understand_motors(motors) if motors else None
     drive_parameters = understand_drives(drives) if drives else None
@@ -96,13 +104,15 @@ def understand(
         (motion or recording) and motors and drives and mechanism and motor_parameters and drive_parameters
     ):
         return None  # a required table is missing, which was reported
-    described = [table for table in (motion, courses.points, courses.process) if table]
+    named = ("duty_cycle", "duty_types", "cycles", "points", "process")
+    described = [parsed[table] for table in named if table in parsed]
     entries = (
         *axis.entries,
         *(entry for table in described for entry in motion_entries(table, axis.coordinate)),
         *(recording.entries if recording else ()),
         *table_entries(parsed.get("map") if mechanism.needs_map else None),
         *table_entries(parsed.get("inertias")),
+        *table_entries(parsed.get("resistor_pulses")),
         *limit_entries,
     )
     catalogs = to_catalog(motors), to_catalog(gearheads), to_catalog(drives)
@@ -111,8 +121,10 @@ def understand(
         path=path,
         mechanism=with_parts(mechanism, parts),
         parts=parts,
+        resistor_pulses=pulses,
         surroundings=surroundings_of(axis),
-        segments=segments,
+        segments=cycles[0].segments,
+        cycles=cycles if any(cycle.name for cycle in cycles) else (),
         motors=catalogs[0],
         gearheads=catalogs[1],
         drives=catalogs[2],

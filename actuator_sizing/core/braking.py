@@ -18,6 +18,8 @@ FloatArray = NDArray[np.float64]
 
 _DECADES = 8  # of speed on which a stop is integrated; the last stretch to rest is one panel
 _ORDER = 16
+_NEWTON_STEPS = 5  # for the instant of the first current peak: to rounding
+_NO_OVERSHOOT = 12.0  # resistance over reactance from which the overshoot is below 1e-15
 
 
 @dataclass(frozen=True)
@@ -181,6 +183,47 @@ def shorted_current(
     """
     X = reactance * speed_rad_s
     return np.asarray(torque_constant * np.abs(speed_rad_s) / np.sqrt(resistance_ohm**2 + X**2))
+
+
+def shorted_current_peak(
+    speed_rad_s: FloatArray, resistance_ohm: FloatArray, torque_constant: FloatArray, reactance: FloatArray
+) -> FloatArray:
+    """First peak of the current after the terminals of a turning machine are shorted, without current before.
+
+    Parameters
+    ----------
+    speed_rad_s : ndarray
+        Motor speed, held over the half electrical turn that the peak takes. [rad/s]
+    resistance_ohm : ndarray
+        Model resistance. [Ω]
+    torque_constant : ndarray
+        Model torque constant K. [N·m/A]
+    reactance : ndarray
+        ``p L``, reactance per speed; zero for a DC machine, whose current rises without overshoot. [Ω·s/rad]
+
+    Returns
+    -------
+    ndarray
+        Largest magnitude, in the motor's basis; up to twice the steady current where the resistance is small. [A]
+
+    Notes
+    -----
+    ``L di/dt = −(R + j ω_e L) i − j K ω`` with ``i = i_d + j i_q``: the steady current times
+    ``|1 − e^{−(x + j)τ}|`` with ``x = R/(ω_e L)``, largest where ``x cos τ + sin τ = x e^{−xτ}``.
+    dq equations, textbook form.
+    """
+    steady = shorted_current(speed_rad_s, resistance_ohm, torque_constant, reactance)
+    X = np.abs(reactance * speed_rad_s)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        x = np.where(X > 0.0, resistance_ohm / np.where(X > 0.0, X, 1.0), np.inf)
+    overshoots = x < _NO_OVERSHOOT
+    x = np.where(overshoots, x, 1.0)
+    tau = np.pi - np.arctan(x)  # the root but for the right side, which is small there
+    for _ in range(_NEWTON_STEPS):
+        fading = x * np.exp(-x * tau)
+        tau = tau - (x * np.cos(tau) + np.sin(tau) - fading) / (np.cos(tau) - x * np.sin(tau) + x * fading)
+    factor = np.hypot(1.0 - np.exp(-x * tau) * np.cos(tau), np.exp(-x * tau) * np.sin(tau))
+    return np.asarray(steady * np.where(overshoots, np.maximum(factor, 1.0), 1.0))
 
 
 @dataclass(frozen=True)

@@ -12,45 +12,14 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.core.quadrature import antiderivative_matrix, series_value, to_series
-from actuator_sizing.core.sign_changes import sign_changes
+from actuator_sizing.core.power_runs import PowerRuns, bus_energy
+from actuator_sizing.core.quadrature import antiderivative_matrix, cumulative_matrix, series_value
 
 FloatArray = NDArray[np.float64]
 
 _HALVINGS = 52  # of a piece: to rounding
 _POINTS = 33  # per clamped run on which the peak power is bracketed
 _NOTHING = 1e-12  # energy below this part of the largest run is rounding, not a pulse
-
-
-@dataclass(frozen=True)
-class PowerRuns:
-    """Power of B candidates over one cycle, cut where it changes sign; N runs in the order of time.
-
-    Runs of no length pad candidates with fewer changes of sign; they carry no energy.
-    """
-
-    piece: NDArray[np.intp]  # (N,)
-    begin: FloatArray  # (B, N) position in the piece, on [−1, 1]
-    end: FloatArray
-    energy_j: FloatArray  # (B, N) taken from the terminals; negative: given back
-    series: FloatArray  # (B, P, K) Legendre coefficients of the power
-    duration_s: FloatArray  # (P,)
-
-    def take(self, index: NDArray[np.intp]) -> PowerRuns:
-        """Rows `index` of the candidates."""
-        return PowerRuns(
-            self.piece,
-            self.begin[index],
-            self.end[index],
-            self.energy_j[index],
-            self.series[index],
-            self.duration_s,
-        )
-
-    def end_time_s(self) -> FloatArray:
-        """When each run ends, shape (B, N). [s]"""
-        start = np.concatenate([[0.0], np.cumsum(self.duration_s)[:-1]])
-        return np.asarray(start[self.piece] + 0.5 * (self.end + 1.0) * self.duration_s[self.piece])
 
 
 @dataclass(frozen=True)
@@ -64,71 +33,10 @@ class BusCycle:
     dumped_energy_j: FloatArray  # per cycle: into the resistor, or back to a supply that takes it
     dumped_power_peak_w: FloatArray
     dumped_pulse_j: FloatArray  # largest between two times of motoring
+    pulses: NDArray[np.intp]  # how many of them in a cycle
+    pulse_energy_j: FloatArray  # (B, N) of the pulse that ends with each run, zero for the other runs
+    pulse_time_s: FloatArray  # (B, N) how long that pulse took
     energy_at_run_j: FloatArray  # (B, N) stored when each run starts
-
-
-def power_runs(duration_s: FloatArray, power_w: FloatArray) -> PowerRuns:
-    """Cut the power of B candidates into runs of one sign.
-
-    Parameters
-    ----------
-    duration_s : ndarray, shape (P,)
-        Length of each smooth piece. [s]
-    power_w : ndarray, shape (B, P, K)
-        Power at the motor terminals at the nodes; positive motoring. [W]
-
-    Returns
-    -------
-    PowerRuns
-        Runs in the order of time, with their energy in closed form of the interpolant. [-]
-    """
-    batch, pieces, count = power_w.shape
-    series = power_w @ to_series(count).T
-    row, piece, position = sign_changes(series)
-    key = row * pieces + piece
-    first = np.searchsorted(key, key, side="left")
-    rank = np.arange(len(key)) - first
-    most = int(rank.max()) + 1 if len(rank) else 0
-    borders = np.ones((batch, pieces, most + 2))
-    borders[:, :, 0] = -1.0
-    borders[row, piece, rank + 1] = position
-    integral = (series @ antiderivative_matrix(count).T).transpose(2, 0, 1)
-    area = np.stack([series_value(integral, borders[:, :, k]) for k in range(most + 2)], axis=2)
-    energy = 0.5 * duration_s[:, None] * np.diff(area, axis=2)
-    shape = (batch, pieces * (most + 1))
-    return PowerRuns(
-        piece=np.repeat(np.arange(pieces), most + 1),
-        begin=borders[:, :, :-1].reshape(shape),
-        end=borders[:, :, 1:].reshape(shape),
-        energy_j=energy.reshape(shape),
-        series=series,
-        duration_s=duration_s,
-    )
-
-
-def bus_energy(terminal_j: FloatArray, efficiency: FloatArray) -> FloatArray:
-    """Energy or power at the bus from that at the motor terminals, by the drive's efficiency.
-
-    Parameters
-    ----------
-    terminal_j : ndarray, shape (B, ...)
-        At the terminals; positive motoring. [J]
-    efficiency : ndarray, shape (B,)
-        Of the drive, in the direction power flows. [-]
-
-    Returns
-    -------
-    ndarray, shape as `terminal_j`
-        ``E/η`` motoring, ``E η`` regenerating. [J]
-
-    Examples
-    --------
-    >>> import numpy as np
-    >>> bus_energy(np.array([[9.0, -10.0]]), np.array([0.9])).tolist()
-    [[10.0, -9.0]]
-    """
-    eta = efficiency.reshape(-1, *[1] * (terminal_j.ndim - 1))
-    return np.asarray(np.where(terminal_j > 0.0, terminal_j / eta, terminal_j * eta))
 
 
 def bus_cycle(runs: PowerRuns, efficiency: FloatArray, room_j: FloatArray) -> BusCycle:
@@ -178,6 +86,8 @@ def bus_cycle(runs: PowerRuns, efficiency: FloatArray, room_j: FloatArray) -> Bu
         dumped[:, n] = np.maximum(after - room_j, 0.0)
     floor = _NOTHING * np.abs(energy).max(axis=1, initial=0.0)[:, None]
     dumped[dumped <= floor] = 0.0
+    clamping = _clamping(runs, efficiency, room_j, at_run, dumped)
+    pulses = _pulses(energy, dumped, clamping.lasts_s)
     reached = np.concatenate([at_run[:, 1:], stored[:, None]], axis=1)
     latest = reached.argmax(axis=1)
     row = np.arange(batch)
@@ -188,48 +98,87 @@ def bus_cycle(runs: PowerRuns, efficiency: FloatArray, room_j: FloatArray) -> Bu
         peak_at_s=np.where(peak > 0.0, runs.end_time_s()[row, latest], np.nan),
         supply_energy_j=supplied.sum(axis=1),
         dumped_energy_j=dumped.sum(axis=1),
-        dumped_power_peak_w=_dumped_power_peak(runs, efficiency, room_j, at_run, dumped),
-        dumped_pulse_j=_largest_pulse(energy, dumped),
+        dumped_power_peak_w=_dumped_power_peak(runs, efficiency, clamping),
+        dumped_pulse_j=pulses[1].max(axis=1, initial=0.0),
+        pulses=pulses[0],
+        pulse_energy_j=pulses[1],
+        pulse_time_s=pulses[2],
         energy_at_run_j=at_run,
     )
 
 
-def _largest_pulse(energy: FloatArray, dumped: FloatArray) -> FloatArray:
-    """Largest energy dumped between two runs of motoring; the cycle wraps, so it is walked twice."""
-    pulse = np.zeros(len(energy))
-    largest = np.zeros(len(energy))
-    motoring = bool(np.any(energy > 0.0))
-    for _ in range(2 if motoring else 1):
-        for n in range(energy.shape[1]):
-            pulse = np.where(energy[:, n] > 0.0, 0.0, pulse) + dumped[:, n]
-            largest = np.maximum(largest, pulse)
-    never = ~np.any(energy > 0.0, axis=1)
-    return np.where(never, dumped.sum(axis=1), largest)
+@dataclass(frozen=True)
+class _Clamping:
+    """The stretches in which the chopper clamps, one entry each, and how long that is in every run."""
+
+    row: NDArray[np.intp]
+    run: NDArray[np.intp]
+    start: FloatArray  # position in the piece of the run
+    lasts_s: FloatArray  # (B, N)
 
 
-def _dumped_power_peak(
+def _clamping(
     runs: PowerRuns, efficiency: FloatArray, room_j: FloatArray, at_run: FloatArray, dumped: FloatArray
-) -> FloatArray:
-    """Largest power while the chopper clamps, for each candidate."""
-    peak = np.zeros(len(dumped))
+) -> _Clamping:
+    """Where in each run the room is full."""
     row, run = np.nonzero(dumped > 0.0)
+    lasts = np.zeros_like(dumped)
     if not len(row):
-        return peak
-    piece = runs.piece[run]
-    series = runs.series[row, piece].T
-    half = 0.5 * runs.duration_s[piece]
-    begin, end = runs.begin[row, run], runs.end[row, run]
+        return _Clamping(row, run, np.empty(0), lasts)
+    series = runs.series[row, runs.piece[run]].T
+    half = 0.5 * np.broadcast_to(runs.piece_duration_s(), dumped.shape)[row, run]
+    low, high = runs.begin[row, run].copy(), runs.end[row, run].copy()
     # Terminal energy that fills the room which is left when the run starts.
     filling = (room_j[row] - at_run[row, run]) / efficiency[row]
     integral = antiderivative_matrix(len(series)) @ series
-    at_begin = series_value(integral, begin)
-    low, high = begin.copy(), end.copy()
+    at_begin = series_value(integral, low)
     late = filling > 0.0
     for _ in range(_HALVINGS if late.any() else 0):
         middle = 0.5 * (low + high)
         before = half * (at_begin - series_value(integral, middle)) < filling
         low, high = np.where(before, middle, low), np.where(before, high, middle)
-    clamped_from = np.where(late, low, begin)
+    start = np.where(late, low, runs.begin[row, run])
+    lasts[row, run] = half * (runs.end[row, run] - start)
+    return _Clamping(row, run, start, lasts)
+
+
+def _pulses(
+    energy: FloatArray, dumped: FloatArray, lasts_s: FloatArray
+) -> tuple[NDArray[np.intp], FloatArray, FloatArray]:
+    """Count of pulses, and energy and time of each at the run that ends it; the cycle wraps, so it is walked twice.
+
+    A bus that never motors dumps one pulse per cycle.
+    """
+    batch, runs = energy.shape
+    so_far, taking = np.zeros(batch), np.zeros(batch)
+    pulse, time = np.zeros((batch, runs)), np.zeros((batch, runs))
+    never = ~np.any(energy > 0.0, axis=1)
+    goes_on = np.zeros(batch, dtype=bool)
+    ends = np.zeros((batch, runs), dtype=bool)
+    for walk in range(2):
+        if walk == 1:
+            so_far, taking = np.where(never, 0.0, so_far), np.where(never, 0.0, taking)
+            goes_on &= ~never
+        for n in reversed(range(runs)):
+            dumps = dumped[:, n] > 0.0
+            ends[:, n] = dumps & ~goes_on
+            goes_on = (goes_on | dumps) & ~(energy[:, n] > 0.0)
+        for n in range(runs):
+            motors = energy[:, n] > 0.0
+            so_far, taking = np.where(motors, 0.0, so_far), np.where(motors, 0.0, taking)
+            so_far, taking = so_far + dumped[:, n], taking + lasts_s[:, n]
+            pulse[:, n], time[:, n] = so_far, taking
+    return ends.sum(axis=1), np.where(ends, pulse, 0.0), np.where(ends, time, 0.0)
+
+
+def _dumped_power_peak(runs: PowerRuns, efficiency: FloatArray, clamping: _Clamping) -> FloatArray:
+    """Largest power while the chopper clamps, for each candidate."""
+    peak = np.zeros(len(clamping.lasts_s))
+    row, run = clamping.row, clamping.run
+    if not len(row):
+        return peak
+    series = runs.series[row, runs.piece[run]].T
+    clamped_from, end = clamping.start, runs.end[row, run]
     grid = 0.5 * (1.0 - np.cos(np.pi * np.arange(_POINTS) / (_POINTS - 1)))
     x = clamped_from + grid[:, None] * (end - clamped_from)
     values = np.stack([-series_value(series, points) for points in x])
@@ -246,6 +195,28 @@ def _dumped_power_peak(
         left, right = np.where(f_a < f_b, a, left), np.where(f_a < f_b, right, b)
     np.maximum.at(peak, row, best * efficiency[row])
     return peak
+
+
+def stored_at_nodes(runs: PowerRuns, cycle: BusCycle) -> FloatArray:
+    """Stored energy at the nodes of every run, for a bus without chopper whose runs are those of its own power.
+
+    Parameters
+    ----------
+    runs : PowerRuns
+        Power at the bus of B candidates. [-]
+    cycle : BusCycle
+        What `bus_cycle` found for it with an efficiency of one and infinite room. [-]
+
+    Returns
+    -------
+    ndarray, shape (B, N, K)
+        Energy above the level of the supply. [J]
+    """
+    half = 0.5 * runs.run_duration_s()[..., None]
+    given = -half * (runs.values(runs.series) @ cumulative_matrix(runs.series.shape[2]).T)
+    stored = cycle.energy_at_run_j[..., None] + given
+    nothing = _NOTHING * np.abs(runs.energy_j).max(axis=1, initial=0.0)[:, None, None]
+    return np.where(stored > nothing, stored, 0.0)
 
 
 def bus_course(
@@ -276,13 +247,14 @@ def bus_course(
         Power that the axis takes from the bus. [W]
     """
     integral = antiderivative_matrix(runs.series.shape[2]) @ runs.series[0].T
-    start = np.concatenate([[0.0], np.cumsum(runs.duration_s)[:-1]])
+    durations = np.ravel(runs.duration_s)
+    start = np.concatenate([[0.0], np.cumsum(durations)[:-1]])
     time, stored, power = [], [], []
     for n, piece in enumerate(runs.piece):
         if runs.end[0, n] <= runs.begin[0, n]:
             continue
         x = np.linspace(runs.begin[0, n], runs.end[0, n], points)
-        half = 0.5 * runs.duration_s[piece]
+        half = 0.5 * durations[piece]
         area = series_value(np.repeat(integral[:, piece : piece + 1], points, axis=1), x)
         taken = bus_energy((half * (area - area[0]))[None], efficiency)[0]
         values = series_value(np.repeat(runs.series[0, piece][:, None], points, axis=1), x)
@@ -347,34 +319,3 @@ def clamp_room(capacitance_f: FloatArray, supply_v: float, threshold_v: FloatArr
     """
     room = 0.5 * capacitance_f * np.maximum(np.square(threshold_v) - supply_v**2, 0.0)
     return np.asarray(np.where(np.isnan(threshold_v), np.inf, room))
-
-
-def sagged_voltage(no_load_v: float, resistance_ohm: float, power_w: FloatArray) -> FloatArray:
-    """Bus voltage of a supply with internal resistance that feeds a power, without help from the capacitors.
-
-    Parameters
-    ----------
-    no_load_v : float
-        Voltage of the supply without load. [V]
-    resistance_ohm : float
-        Internal resistance of supply and leads. [Ω]
-    power_w : ndarray
-        Power taken from the bus; a negative power does not lift the voltage of a rectifier. [W]
-
-    Returns
-    -------
-    ndarray
-        ``U_0/2 + √(U_0²/4 − R P)``; zero beyond the largest power ``U_0²/(4 R)`` that the supply can give. [V]
-
-    Notes
-    -----
-    The stable root of ``P = U (U_0 − U)/R``. First principles.
-
-    Examples
-    --------
-    >>> import numpy as np
-    >>> float(sagged_voltage(48.0, 0.1, np.array(1000.0)))
-    45.817
-    """
-    under = 0.25 * no_load_v**2 - resistance_ohm * np.maximum(power_w, 0.0)
-    return np.asarray(np.where(under >= 0.0, 0.5 * no_load_v + np.sqrt(np.maximum(under, 0.0)), 0.0))

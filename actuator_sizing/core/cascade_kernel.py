@@ -68,6 +68,12 @@ def cascade_loop(
         ei, ew, es, el, eu, em, ed,
         rigid, gap, coulomb_motor, coulomb_load,
     ) = plant  # fmt: skip
+    # Inside the backlash the motor turns without the load and the load without the motor.
+    fai, faw, fau, fam = free[0], free[1], free[4], free[5]
+    fbi, fbw, fbu, fbm = free[7], free[8], free[11], free[12]
+    fci, fcw, fcl, fcu, fcm, fcd = free[14], free[15], free[17], free[18], free[19], free[20]
+    fdl, fdd = free[24], free[27]
+    fei, few, feu, fem = free[28], free[29], free[32], free[33]
     (
         k_angle, k_speed_forward, k_speed, k_speed_integral, k_speed_back, conditional,
         k_current, k_current_integral, k_current_back, k_emf, current_max, voltage_max,
@@ -152,58 +158,55 @@ def cascade_loop(
             w = w_new
             wl = w_new
         elif -gap < s < gap:
-            w_new = free[7] * i + free[8] * w + free[11] * u
-            l_new = free[24] * wl + free[27] * torque
+            w_new = fbi * i + fbw * w + fbu * u
+            l_new = fdl * wl + fdd * torque
             push = 0.0
             if coulomb_motor > 0.0:
-                push = min(max(-w_new / free[12], -coulomb_motor), coulomb_motor)
+                push = -w_new / fbm
+                if push > coulomb_motor:
+                    push = coulomb_motor
+                elif push < -coulomb_motor:
+                    push = -coulomb_motor
             if coulomb_load > 0.0:
-                torque = torque + min(max(-l_new / free[27], -coulomb_load), coulomb_load)
-            i_new = free[0] * i + free[1] * w + free[4] * u + free[5] * push
-            s = (
-                s + free[14] * i + free[15] * w + free[17] * wl + free[18] * u
-                + free[19] * push + free[20] * torque
-            )  # fmt: skip
-            th = th + free[28] * i + free[29] * w + free[32] * u + free[33] * push
-            w = w_new + free[12] * push
-            wl = free[24] * wl + free[27] * torque
+                friction = -l_new / fdd
+                if friction > coulomb_load:
+                    friction = coulomb_load
+                elif friction < -coulomb_load:
+                    friction = -coulomb_load
+                torque = torque + friction
+            i_new = fai * i + faw * w + fau * u + fam * push
+            s = s + fci * i + fcw * w + fcl * wl + fcu * u + fcm * push + fcd * torque
+            th = th + fei * i + few * w + feu * u + fem * push
+            w = w_new + fbm * push
+            wl = fdl * wl + fdd * torque
             i = i_new
         else:
             shift = 0.0
             if gap > 0.0:
                 shift = gap if s > 0.0 else -gap
                 s = s - shift
-            i_new = ai * i + aw * w + as_ * s + al * wl + au * u + ad * torque
-            w_new = bi * i + bw * w + bs * s + bl * wl + bu * u + bd * torque
-            l_new = di * i + dw * w + ds * s + dl * wl + du * u + dd * torque
-            s_new = ci * i + cw * w + cs * s + cl * wl + cu * u + cd * torque + shift
-            th = th + ei * i + ew * w + es * s + el * wl + eu * u + ed * torque
             if coulomb_load > 0.0:
-                friction = -l_new / dd
+                friction = -(di * i + dw * w + ds * s + dl * wl + du * u + dd * torque) / dd
                 if friction > coulomb_load:
                     friction = coulomb_load
                 elif friction < -coulomb_load:
                     friction = -coulomb_load
-                i_new = i_new + ad * friction
-                w_new = w_new + bd * friction
-                l_new = l_new + dd * friction
-                s_new = s_new + cd * friction
-                th = th + ed * friction
+                torque = torque + friction
+            push = 0.0
             if coulomb_motor > 0.0:
-                friction = -w_new / bm
-                if friction > coulomb_motor:
-                    friction = coulomb_motor
-                elif friction < -coulomb_motor:
-                    friction = -coulomb_motor
-                i_new = i_new + am * friction
-                w_new = w_new + bm * friction
-                l_new = l_new + dm * friction
-                s_new = s_new + cm * friction
-                th = th + em * friction
+                push = -(bi * i + bw * w + bs * s + bl * wl + bu * u + bd * torque) / bm
+                if push > coulomb_motor:
+                    push = coulomb_motor
+                elif push < -coulomb_motor:
+                    push = -coulomb_motor
+            th = th + ei * i + ew * w + es * s + el * wl + eu * u + em * push + ed * torque
+            i_new = ai * i + aw * w + as_ * s + al * wl + au * u + am * push + ad * torque
+            w_new = bi * i + bw * w + bs * s + bl * wl + bu * u + bm * push + bd * torque
+            s_new = ci * i + cw * w + cs * s + cl * wl + cu * u + cm * push + cd * torque + shift
+            wl = di * i + dw * w + ds * s + dl * wl + du * u + dm * push + dd * torque
             i = i_new
             w = w_new
             s = s_new
-            wl = l_new
     state[0] = i
     state[1] = w
     state[2] = s

@@ -12,13 +12,26 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.core.parameters import BASIS_PEAK, BASIS_RMS, MotorParameters, Surroundings
+from actuator_sizing.core.conventions import model_factor
+from actuator_sizing.core.parameters import (
+    BASIS_DC,
+    BASIS_PEAK,
+    BASIS_RMS,
+    SINUSOIDAL,
+    DriveParameters,
+    MotorParameters,
+    Surroundings,
+)
 
 FloatArray = NDArray[np.float64]
 
 #: Winding temperature at which resistance is judged where neither the case nor the sheet states a limit.
 #: Class B of IEC 60085; an assumption on the hot side, not a rating.
 ASSUMED_HOT_WINDING_DEGC = 130.0
+
+#: Amplitude of a sinusoidal current that gives the torque of one ampere DC in six-step commutation of the same
+#: sinusoidal EMF: ``(3/π) / (√3/2)``, the ratio of the torque constants in `core.conventions`.
+SINE_AMPLITUDE_PER_DC = 2.0 * np.sqrt(3.0) / np.pi
 
 #: Model voltage per volt of line-to-line peak, by current basis (amplitude-invariant sinusoidal machine).
 _VOLTS_PER_LINE_PEAK = {BASIS_RMS: np.sqrt(3.0 / 2.0), BASIS_PEAK: np.sqrt(3.0) / 2.0}
@@ -30,7 +43,8 @@ class JudgedMotor:
 
     winding_degc: FloatArray
     magnet_degc: FloatArray
-    resistance_ohm: FloatArray
+    resistance_ohm: FloatArray  # of the circuit: winding and motor cable
+    cable_ohm: FloatArray  # the cable's part of it
     torque_constant_nm_per_a: FloatArray
     saturation_per_a2: FloatArray
     inductance_h: FloatArray  # zero where not known
@@ -171,12 +185,39 @@ def judge(motors: MotorParameters, surroundings: Surroundings) -> JudgedMotor:
     with np.errstate(invalid="ignore"):
         share = np.where(np.isnan(R_1) | np.isnan(R_2), 1.0, R_2 / (R_1 + R_2))
     magnet = surroundings.ambient_degc + share * (winding - surroundings.ambient_degc)
+    return _judged_at(motors, surroundings, winding, magnet)
+
+
+def judge_cold(motors: MotorParameters, surroundings: Surroundings) -> JudgedMotor:
+    """Motors at ambient, as after a long rest, and minimum bus voltage: cold magnets raise the voltage constant.
+
+    Parameters
+    ----------
+    motors : MotorParameters
+        n motors. [-]
+    surroundings : Surroundings
+        Ambient and bus voltages. [-]
+
+    Returns
+    -------
+    JudgedMotor
+        Shape (n,).
+    """
+    ambient = np.full(len(motors), surroundings.ambient_degc)
+    return _judged_at(motors, surroundings, ambient, ambient)
+
+
+def _judged_at(
+    motors: MotorParameters, surroundings: Surroundings, winding: FloatArray, magnet: FloatArray
+) -> JudgedMotor:
     inductance = np.nan_to_num(motors.inductance_h, nan=0.0)
     reactance = inductance * np.nan_to_num(motors.pole_pairs, nan=0.0)
+    cable = model_factor(motors.current_basis) * surroundings.cable_ohm
     return JudgedMotor(
         winding_degc=winding,
         magnet_degc=magnet,
-        resistance_ohm=resistance_at(motors, winding),
+        resistance_ohm=resistance_at(motors, winding) + cable,
+        cable_ohm=cable,
         torque_constant_nm_per_a=torque_constant_at(motors, magnet),
         saturation_per_a2=saturation_coefficient(motors),
         inductance_h=inductance,
@@ -194,3 +235,18 @@ def amplitude_per_unit_current(basis: NDArray[np.int8]) -> FloatArray:
     Common practice; a DC or block current counts as its own amplitude.
     """
     return np.asarray(np.where(basis == BASIS_RMS, np.sqrt(2.0), 1.0))
+
+
+def motor_amplitude_per_unit_current(motors: MotorParameters) -> FloatArray:
+    """Peak amperes of the drive per ampere of each motor's basis, shape (n,). [-]
+
+    As `amplitude_per_unit_current`, but a motor with sinusoidal commutation whose sheet states A DC is fed with
+    sines, whose amplitude is 2√3/π of the DC ampere for the same torque.
+    """
+    sine = (motors.current_basis == BASIS_DC) & (motors.commutation == SINUSOIDAL)
+    return np.where(sine, SINE_AMPLITUDE_PER_DC, amplitude_per_unit_current(motors.current_basis))
+
+
+def motor_amperes_per_drive_ampere(motors: MotorParameters, drives: DriveParameters) -> FloatArray:
+    """Amperes of the motor's basis that one ampere of the drive's basis is, set by set, shape (n,). [-]"""
+    return amplitude_per_unit_current(drives.current_basis) / motor_amplitude_per_unit_current(motors)

@@ -66,6 +66,7 @@ class MotorParameters(_Columns):
     winding_time_constant_s: FloatArray
     housing_time_constant_s: FloatArray
     brake_torque_nm: FloatArray
+    brake_coil_w: FloatArray  # heat of the holding brake's coil while it is released; 0 where not stated
     nominal_voltage_v: FloatArray
     mass_kg: FloatArray
     price: FloatArray
@@ -127,3 +128,4 @@ class Surroundings:
     modulation_limit: float  # largest line-to-line peak voltage over bus voltage
     judged_winding_degc: float  # NaN: the winding limit of each motor
     current_loop_rise_s: float
+    cable_ohm: float = 0.0  # motor cable, the way there and back

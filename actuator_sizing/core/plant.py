@@ -10,6 +10,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass, replace
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -148,23 +149,31 @@ class Plant:
         coupled, free : tuple of float
             Rows of states and inputs one after another, then the flags and levels of friction. [-]
         """
-        return self._rows(step_s, engaged=True), self._rows(step_s, engaged=False)
-
-    def _rows(self, step_s: float, *, engaged: bool) -> tuple[float, ...]:
-        Phi, Gamma = zero_order_hold(*self.matrices(engaged=engaged), step_s)
-        Phi = Phi.copy()
-        Phi[4, 4] = 0.0  # the loop adds the angle itself
-        rows: list[float] = []
-        for row in range(5):
-            rows += [*Phi[row, :4].tolist(), *Gamma[row].tolist()]
-        coulomb = (self.motor_coulomb_nm, self.load_coulomb_nm)
-        if self.is_rigid:
-            coulomb = (sum(coulomb), 0.0)
-        return (*rows, float(self.is_rigid), 0.5 * self.backlash_rad, *coulomb)
+        return _sampled(self, step_s)
 
     def rigid(self) -> Plant:
         """The same plant with the spring infinitely stiff."""
         return replace(self, stiffness_nm_per_rad=math.nan, backlash_rad=0.0)
+
+
+@lru_cache(maxsize=128)
+def _sampled(plant: Plant, step_s: float) -> tuple[tuple[float, ...], tuple[float, ...]]:
+    coupled = _rows(plant, step_s, engaged=True)
+    has_gap = plant.backlash_rad > 0.0 and not plant.is_rigid
+    return coupled, _rows(plant, step_s, engaged=False) if has_gap else coupled
+
+
+def _rows(plant: Plant, step_s: float, *, engaged: bool) -> tuple[float, ...]:
+    Phi, Gamma = zero_order_hold(*plant.matrices(engaged=engaged), step_s)
+    Phi = Phi.copy()
+    Phi[4, 4] = 0.0  # the loop adds the angle itself
+    rows: list[float] = []
+    for row in range(5):
+        rows += [*Phi[row, :4].tolist(), *Gamma[row].tolist()]
+    coulomb = (plant.motor_coulomb_nm, plant.load_coulomb_nm)
+    if plant.is_rigid:
+        coulomb = (sum(coulomb), 0.0)
+    return (*rows, float(plant.is_rigid), 0.5 * plant.backlash_rad, *coulomb)
 
 
 def _need(name: str, value: float, good: bool, allowed: str) -> None:

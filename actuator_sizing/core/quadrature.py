@@ -19,6 +19,8 @@ NODES = 16  # relative interpolation error below 1e-10 on half a sine period, pr
 _DENSE = 65  # points per piece on which extrema and sign changes are bracketed
 _NOTHING = 1e-12  # a value this small against the largest one has no sign
 _BORDER = 1e-6  # roots closer than this part of a piece to its border are the border (rounding)
+_MOST_STEPS = 60  # of a search for a root
+_ROUNDING = 4.0 * float(np.finfo(float).eps)  # of a value, against the sum of its terms; of a position
 
 
 @lru_cache(maxsize=8)
@@ -71,6 +73,13 @@ def differentiation_matrix(count: int = NODES) -> FloatArray:
 def antiderivative_matrix(count: int = NODES) -> FloatArray:
     """Matrix from Legendre coefficients to those of the integral from −1, shape (count + 1, count). [-]"""
     return np.asarray(legendre.legint(np.eye(count), lbnd=-1))
+
+
+@lru_cache(maxsize=8)
+def cumulative_matrix(count: int = NODES) -> FloatArray:
+    """Matrix from node values to the integrals from −1 to each node, shape (count, count). [-]"""
+    at_nodes = legendre.legvander(lobatto(count)[0], count)
+    return np.asarray(at_nodes @ antiderivative_matrix(count) @ to_series(count))
 
 
 @lru_cache(maxsize=8)
@@ -324,17 +333,9 @@ def _positive_parts(
     row, bracket = np.nonzero(changes)
     low, high = points[bracket], points[bracket + 1]
     f_low, f_high = dense[row, bracket], dense[row, bracket + 1]
-    slope_series = (series @ _derivative_matrices(series.shape[1])[0])[row].T
     value_series, integral_series = series[row].T, integral[row].T
-    x = low - f_low * (high - low) / (f_high - f_low)
-    for _ in range(3):
-        slope = series_value(slope_series, x)
-        move = series_value(value_series, x) / np.where(slope == 0.0, 1.0, slope)
-        x = np.clip(x - move, low, high)
-    # Where two roots nearly meet Newton is slow: halve the bracket instead.
-    slow = np.abs(series_value(value_series, x)) > 1e-13 * np.abs(value_series).sum(axis=0)
-    if slow.any():
-        x[slow] = _bisected(value_series[:, slow], low[slow], high[slow])
+    secant = low - f_low * (high - low) / (f_high - f_low)
+    x = bracketed_roots(value_series, low, high, f_high > f_low, secant)
     area = series_value(integral_series, x)
     rising = f_high > f_low
     # From -1 to 1: each falling root ends a positive stretch (+F), each rising root starts one (-F).
@@ -343,11 +344,48 @@ def _positive_parts(
     return result + np.where(dense[:, -1] > 0.0, at_end, 0.0)
 
 
-def _bisected(series: FloatArray, low: FloatArray, high: FloatArray) -> FloatArray:
-    """Root of each series between two points of unlike sign, to rounding."""
-    rising = series_value(series, high) > 0.0
-    for _ in range(50):
-        middle = 0.5 * (low + high)
-        above = (series_value(series, middle) > 0.0) == rising
-        low, high = np.where(above, low, middle), np.where(above, middle, high)
-    return np.asarray(0.5 * (low + high))
+def bracketed_roots(
+    series: FloatArray, low: FloatArray, high: FloatArray, rising: NDArray[np.bool_], start: FloatArray
+) -> FloatArray:
+    """Root of each Legendre series between two points of unlike sign, to rounding.
+
+    Parameters
+    ----------
+    series : ndarray, shape (K, n)
+        Coefficients of n series, one per column; the unit is the caller's. [-]
+    low, high : ndarray, shape (n,)
+        Brackets on [−1, 1]. [-]
+    rising : ndarray of bool, shape (n,)
+        Whether the series is positive at `high`. [-]
+    start : ndarray, shape (n,)
+        First guess within the bracket. [-]
+
+    Returns
+    -------
+    ndarray, shape (n,)
+        Roots within the brackets. [-]
+
+    Notes
+    -----
+    Newton's method, halving the bracket where a step would leave it; those that have settled drop out.
+    """
+    result = np.array(start)
+    if not len(result):
+        return result
+    slopes = _derivative_matrices(len(series))[0].T @ series
+    noise = _ROUNDING * np.abs(series).sum(axis=0)
+    active, x, low, high = np.arange(len(result)), result, np.array(low), np.array(high)
+    for _ in range(_MOST_STEPS):
+        value, slope = series_value(series, x), series_value(slopes, x)
+        above = (value > 0.0) == rising
+        low, high = np.where(above, low, x), np.where(above, x, high)
+        with np.errstate(divide="ignore", invalid="ignore"):
+            step = x - value / slope
+        step = np.where((step >= low) & (step <= high), step, 0.5 * (low + high))
+        moving = (np.abs(value) > noise) & (np.abs(step - x) > _ROUNDING)
+        result[active] = step
+        if not moving.any():
+            break
+        active, x, rising, noise = active[moving], step[moving], rising[moving], noise[moving]
+        low, high, series, slopes = low[moving], high[moving], series[:, moving], slopes[:, moving]
+    return result

@@ -8,12 +8,11 @@ import numpy as np
 from numpy.polynomial import legendre
 from numpy.typing import NDArray
 
-from actuator_sizing.core.quadrature import series_value
+from actuator_sizing.core.quadrature import bracketed_roots
 
 FloatArray = NDArray[np.float64]
 
 _DENSE = 65  # points per piece on which sign changes are bracketed, as for extrema
-_HALVINGS = 54  # of a bracket: to rounding
 _NOTHING = 1e-13  # a value this small against the largest one has no sign
 
 
@@ -40,8 +39,8 @@ def sign_changes(series: FloatArray) -> tuple[NDArray[np.intp], NDArray[np.intp]
 
     Notes
     -----
-    Bracketed on a Chebyshev grid and bisected. Two changes within one step of the grid (1/2000 of a piece at
-    its ends, 1/40 in its middle) may be missed together; what they enclose is then next to nothing.
+    Bracketed on a Chebyshev grid and refined by Newton's method. Two changes within one step of the grid
+    (1/2000 of a piece at its ends, 1/40 in its middle) may be missed together; what they enclose is then next to nothing.
     """
     points, matrix = _grid(series.shape[2])
     row, piece = np.nonzero(np.abs(series[..., 1:]).sum(axis=2) > np.abs(series[..., 0]))
@@ -55,8 +54,4 @@ def sign_changes(series: FloatArray) -> tuple[NDArray[np.intp], NDArray[np.intp]
     low, high = points[bracket], points[bracket + 1]
     value = mine[which].T
     rising = sign[which, bracket + 1] > 0.0
-    for _ in range(_HALVINGS if len(which) else 0):
-        middle = 0.5 * (low + high)
-        above = (series_value(value, middle) > 0.0) == rising
-        low, high = np.where(above, low, middle), np.where(above, middle, high)
-    return row[which], piece[which], np.asarray(0.5 * (low + high))
+    return row[which], piece[which], bracketed_roots(value, low, high, rising, 0.5 * (low + high))

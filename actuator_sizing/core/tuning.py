@@ -3,29 +3,16 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Callable
 from dataclasses import dataclass, replace
 from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.core.cascade_kernel import (
-    CURRENT,
-    FILTERED_SPEED,
-    LAST_SEEN,
-    LAST_VOLTAGE,
-    LOAD_SPEED,
-    MOTOR_ANGLE,
-    MOTOR_SPEED,
-    NOTCH_1,
-    NOTCH_2,
-    STATES,
-    TWIST,
-    cascade_loop,
-)
-from actuator_sizing.core.control import EMF_GAIN, LoopSettings
+from actuator_sizing.core.cascade_kernel import CURRENT, MOTOR_ANGLE, MOTOR_SPEED
+from actuator_sizing.core.control import LoopSettings
 from actuator_sizing.core.frequency import Margins, margins, transfer
+from actuator_sizing.core.linear_loop import alive_states, one_sample
 from actuator_sizing.core.plant import Plant
 
 FloatArray = NDArray[np.float64]
@@ -152,17 +139,8 @@ class LinearCascade:
     settings: LoopSettings
 
     def states(self) -> tuple[int, ...]:
-        """Which states of the loop are alive: those of filters, delay and spring only where there are any."""
-        s, idle = self.settings, {LAST_SEEN}
-        if self.plant.is_rigid:
-            idle |= {TWIST, LOAD_SPEED}
-        if s.setpoint_filter_s == 0.0:
-            idle.add(FILTERED_SPEED)
-        if s.notch_rad_s == 0.0:
-            idle |= {NOTCH_1, NOTCH_2}
-        if not s.is_delayed:
-            idle.add(LAST_VOLTAGE)
-        return tuple(k for k in range(STATES) if k not in idle)
+        """Which states of the loop are alive."""
+        return alive_states(self.plant, self.settings)
 
     def matrices(self) -> tuple[FloatArray, FloatArray]:
         """Matrices of one sample.
@@ -176,31 +154,10 @@ class LinearCascade:
 
         Notes
         -----
-        One step of the loop itself from each unit vector: the loop is linear where nothing limits it. Backlash
-        has no linear response and is taken as closed.
+        Backlash has no linear response and is taken as closed.
         """
-        used, alive = self.settings.unlimited(), self.states()
-        plant = replace(self.plant, motor_coulomb_nm=0.0, load_coulomb_nm=0.0, backlash_rad=0.0)
-        rows = plant.sampled(used.sample_time_s)
-        gains = list(used.row())
-        gains[EMF_GAIN] *= plant.torque_constant_nm_per_a
-        n = len(alive)
-        step: Callable[..., None] = cascade_loop
-        A, B = np.zeros((n, n)), np.zeros((n, 4))
-        for column in range(n + 4):
-            state = [0.0] * STATES
-            inputs = [[0.0] for _ in range(4)]
-            if column < n:
-                state[alive[column]] = 1.0
-            else:
-                inputs[column - n][0] = 1.0
-            step(state, *rows, tuple(gains), *inputs, [[0.0] for _ in range(6)], [0])
-            after = [state[k] for k in alive]
-            if column < n:
-                A[:, column] = after
-            else:
-                B[:, column - n] = after
-        return A, B
+        sample = one_sample(self.plant, self.settings)
+        return sample.A, sample.B
 
     def poles(self) -> ComplexArray:
         """Poles of one sample of all three loops together; stable inside the unit circle."""

@@ -152,6 +152,40 @@ def temperature_course(
     return TemperatureCourse(time, winding, housing if has_housing else np.full_like(housing, np.nan))
 
 
+def run_course(
+    network: ThermalNetwork,
+    loss: HeatLoss,
+    ambient_degc: float,
+    winding_degc: float,
+    housing_degc: float,
+    points: int = 200,
+) -> TemperatureCourse | None:
+    """Winding and housing of one candidate over a single run from a given state.
+
+    Parameters
+    ----------
+    network, loss : ThermalNetwork, HeatLoss
+        As for `single_run`; the first candidate is followed.
+    ambient_degc : float
+        Temperature of the surroundings. [°C]
+    winding_degc, housing_degc : float
+        State at the start; a missing housing is taken at the winding's temperature. [°C]
+    points : int
+        About how many points to draw; every piece border is among them. [-]
+
+    Returns
+    -------
+    TemperatureCourse or None
+        None where data are missing.
+    """
+    k, steps, known, has_housing = _single(network, loss, ambient_degc, 0)
+    if not known:
+        return None
+    start = winding_degc if math.isnan(housing_degc) else housing_degc
+    time, winding, housing = np.array(_inside(k, steps, winding_degc, start, points)).T
+    return TemperatureCourse(time, winding, housing if has_housing else np.full_like(housing, np.nan))
+
+
 def temperatures_after(
     network: ThermalNetwork, loss: HeatLoss, ambient_degc: float, times_s: ArrayLike, candidate: int = 0
 ) -> TemperatureCourse | None:

@@ -58,9 +58,9 @@ def write_report(
 
 def _own_names() -> tuple[str, ...]:
     """Names of files that a report may or may not have: one left by an earlier run would contradict it."""
-    from actuator_sizing.report.figures import FIGURES, ROBUSTNESS_FIGURES
+    from actuator_sizing.report.figures import FIGURES, OPTIONAL_FIGURES
 
-    return ("sizing_report.pdf", *(f"figures/{key}.svg" for key in (*FIGURES, *ROBUSTNESS_FIGURES)))
+    return ("sizing_report.pdf", *(f"figures/{key}.svg" for key in (*FIGURES, *OPTIONAL_FIGURES)))
 
 
 def render_report(
@@ -83,6 +83,8 @@ def render_report(
     since : mapping or None
         Earlier results, see `write_report`.
     """
+    from concurrent.futures import ThreadPoolExecutor
+
     from actuator_sizing.report.candidates_csv import render_candidates
     from actuator_sizing.report.document import prepare_document
     from actuator_sizing.report.figures import draw_figures
@@ -92,25 +94,30 @@ def render_report(
     from actuator_sizing.report.revision import revision_since
     from actuator_sizing.report.workbook import render_workbook
 
-    day = date if date is not None else _today()
+    day = report_day(date)
     figures = draw_figures(comparison)
-    candidates = render_candidates(comparison)
     revision = None if since is None else revision_since(since, results_dict(comparison))
     document = prepare_document(comparison, day, figures, revision)
-    files = {
-        "sizing_report.html": render_html(document, figures),
-        "sizing_tables.xlsx": render_workbook(comparison, day, candidates.rows),
-        "results.json": render_json(comparison, revision),
-        "candidates.csv": candidates.content,
-    }
-    if pdf or (pdf is None and can_write_pdf()):
-        files["sizing_report.pdf"] = render_pdf(document, figures)
+    with ThreadPoolExecutor(1) as second_core:  # the typesetter is compiled and lets the other writers run
+        wanted = pdf or (pdf is None and can_write_pdf())
+        typeset = second_core.submit(render_pdf, document, figures) if wanted else None
+        candidates = render_candidates(comparison)
+        files = {
+            "sizing_report.html": render_html(document, figures),
+            "sizing_tables.xlsx": render_workbook(comparison, day, candidates.rows),
+            "results.json": render_json(comparison, revision),
+            "candidates.csv": candidates.content,
+        }
+        if typeset is not None:
+            files["sizing_report.pdf"] = typeset.result()
     return files | {f"figures/{figure.key}.svg": figure.svg for figure in figures.values()}
 
 
-def _today() -> date:
-    """Today, or the day that a reproducible build states."""
-    stated = os.environ.get("SOURCE_DATE_EPOCH", "").strip()
-    if stated.isdigit():
-        return datetime.fromtimestamp(int(stated), UTC).date()
+def report_day(stated: date | None) -> date:
+    """The day that stands on a report: the one asked for, else that of a reproducible build, else today."""
+    if stated is not None:
+        return stated
+    epoch = os.environ.get("SOURCE_DATE_EPOCH", "").strip()
+    if epoch.isdigit():
+        return datetime.fromtimestamp(int(epoch), UTC).date()
     return datetime.now().date()

@@ -16,7 +16,7 @@ from actuator_sizing.report.robustness_files import robustness_dict
 if TYPE_CHECKING:
     from actuator_sizing.case.model import Entry
     from actuator_sizing.report.revision import Revision
-    from actuator_sizing.sizing.results import CheckResult, Comparison, SetResult
+    from actuator_sizing.sizing.results import CheckResult, Comparison, CycleOfSet, CycleResult, SetResult
 
 SCHEMA = "actuator-sizing/results/1"
 
@@ -48,14 +48,17 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
             "assumptions": [{"subject": subject, "text": text} for subject, text in comparison.assumptions],
             "remarks": [str(problem) for problem in case.problems],
         },
-        "cycle": _plain(comparison.cycle),
+        "cycle": plain(comparison.cycle),
+        "cycles": [_cycle(each) for each in comparison.cycles],
+        "inertias": [plain(asdict(part)) for part in comparison.inertias],
         "ranked_by": comparison.ranked_by,
         "sets": [_set(item) for item in comparison.sets],
         "rejected": {
             "count": int(counts.rejected),
-            "by_check": _plain(counts.by_check),
+            "by_check": plain(counts.by_check),
             "sets_total": int(counts.sets_total),
             "incompatible": int(counts.incompatible),
+            "misfits": plain(counts.misfits),
             "survivors": int(counts.survivors),
             "confirmed_passing": int(counts.confirmed_passing),
             "evaluated": int(counts.evaluated),
@@ -72,7 +75,7 @@ def render_json(comparison: Comparison, revision: Revision | None = None) -> byt
     """Write the results as UTF-8 text; the same, byte for byte, for the same comparison."""
     results = results_dict(comparison)
     if revision is not None:
-        results["changes"] = _plain(asdict(revision))
+        results["changes"] = plain(asdict(revision))
     text = json.dumps(results, ensure_ascii=False, allow_nan=False, indent=1)
     # a lone surrogate of a badly decoded table has no UTF-8 form; its escape is valid JSON
     return (text + "\n").encode("utf-8", "backslashreplace")
@@ -83,15 +86,39 @@ def _set(item: SetResult) -> dict[str, Any]:
         "rank": int(item.rank),
         "motor": item.motor,
         "gearhead": item.gearhead,
-        "ratio": _plain(item.ratio),
+        "ratio": plain(item.ratio),
         "drive": item.drive,
         "verdict": item.verdict,
         "governing_check": item.governing_check,
-        "price": _plain(item.price),
-        "mass_kg": _plain(item.mass_kg),
-        "quantities": _plain(item.quantities),
+        "price": plain(item.price),
+        "mass_kg": plain(item.mass_kg),
+        "quantities": plain(item.quantities),
         "checks": [_check(check) for check in item.checks],
-        "levers": _plain(item.levers),
+        "cycles": [_set_in_cycle(each) for each in item.cycles],
+        "mix": plain(item.mix),
+        "levers": plain(item.levers),
+    }
+
+
+def _set_in_cycle(each: CycleOfSet) -> dict[str, Any]:
+    return {
+        "cycle": each.name,
+        "verdict": each.verdict,
+        "governing_check": each.governing_check,
+        "quantities": plain(each.quantities),
+        "utilisations": {check.check: plain(check.utilisation) for check in each.checks},
+    }
+
+
+def _cycle(each: CycleResult) -> dict[str, Any]:
+    cycle = each.case.cycle
+    return {
+        "cycle": cycle.name,
+        "runs": cycle.runs,
+        "duty_type": cycle.duty_type or None,
+        "share": plain(cycle.share),
+        "segments": [segment.name for segment in cycle.segments],
+        "quantities": plain(each.quantities),
     }
 
 
@@ -101,17 +128,18 @@ def _check(check: CheckResult) -> dict[str, Any]:
         "check": check.check,
         "title": check.title,
         "group": check.group,
-        "demand": _plain(check.demand),
-        "capacity": _plain(check.capacity),
+        "demand": plain(check.demand),
+        "capacity": plain(check.capacity),
         "unit": check.unit,
-        "utilisation": _plain(check.utilisation),
-        "allowed": _plain(check.allowed),
-        "recommended_reserve": _plain(check.recommended_reserve),
-        "margin": _plain(check.margin),
+        "utilisation": plain(check.utilisation),
+        "allowed": plain(check.allowed),
+        "recommended_reserve": plain(check.recommended_reserve),
+        "margin": plain(check.margin),
         "verdict": check.shown_verdict,
         "advice": bool(check.is_advice),
-        "at_time_s": _plain(check.at_time_s),
+        "at_time_s": plain(check.at_time_s),
         "segment": check.segment,
+        "cycle": check.cycle,
         "formula": check.formula,
         "source": check.source,
         "working": check.working,
@@ -132,7 +160,7 @@ def _input(entry: Entry) -> dict[str, Any]:
         "row": None if entry.row is None else int(entry.row),
         "label": entry.label,
         "column": entry.column,
-        "value_si": _plain(entry.value_si),
+        "value_si": plain(entry.value_si),
         "unit": entry.unit,
         "as_entered": entry.as_entered,
         "origin": entry.origin,
@@ -141,16 +169,16 @@ def _input(entry: Entry) -> dict[str, Any]:
     }
 
 
-def _plain(value: Any) -> Any:
+def plain(value: Any) -> Any:
     """Turn numpy scalars, arrays and mappings into plain types; what is not a finite number is None."""
     if value is None or isinstance(value, str | bool | int):
         return value
     if isinstance(value, Mapping):
-        return {str(key): _plain(item) for key, item in value.items()}
+        return {str(key): plain(item) for key, item in value.items()}
     if hasattr(value, "tolist"):
-        return _plain(value.tolist())
+        return plain(value.tolist())
     if isinstance(value, list | tuple):
-        return [_plain(item) for item in value]
+        return [plain(item) for item in value]
     if isinstance(value, float):
         return value if math.isfinite(value) else None
     return str(value)

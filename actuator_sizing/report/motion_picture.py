@@ -11,8 +11,10 @@ if TYPE_CHECKING:
 _MOST_POINTS = 20_000  # of a curve; a drawing shows no more
 
 
-def write_motion(case: Case, folder: str | Path) -> Path:
+def write_motion(case: Case, folder: str | Path) -> tuple[Path, ...]:
     """Draw position, speed, acceleration and effort at the load over one cycle as ``motion.svg``.
+
+    Of several cycles each gets a drawing of its own: ``motion_1.svg`` and so on, in the order of the case.
 
     Parameters
     ----------
@@ -23,8 +25,8 @@ def write_motion(case: Case, folder: str | Path) -> Path:
 
     Returns
     -------
-    Path
-        The file written.
+    tuple of Path
+        The files written.
 
     Raises
     ------
@@ -33,9 +35,12 @@ def write_motion(case: Case, folder: str | Path) -> Path:
     """
     from actuator_sizing.files import write_atomically
 
-    path = Path(folder) / "motion.svg"
-    write_atomically(path, render_motion(case))
-    return path
+    several = case.by_cycle()
+    names = ["motion.svg"] if len(several) == 1 else [f"motion_{n}.svg" for n in range(1, len(several) + 1)]
+    paths = tuple(Path(folder) / name for name in names)
+    for path, each in zip(paths, several, strict=True):
+        write_atomically(path, render_motion(each))
+    return paths
 
 
 def render_motion(case: Case) -> bytes:
@@ -69,4 +74,4 @@ def render_motion(case: Case) -> bytes:
         }
     )
     with house_style():
-        return to_svg(draw_motion(cycle, AxisUnits.of(case)), "motion")
+        return to_svg(draw_motion(cycle, AxisUnits.of(case), case.cycle.name), "motion")

@@ -92,11 +92,11 @@ def write_robustness(study: Robustness, folder: str | Path) -> tuple[Path, ...]:
 def _workbook(study: Robustness) -> bytes:
     from xlsxwriter import Workbook
 
-    from actuator_sizing.report.workbook import OPTIONS
+    from actuator_sizing.report.workbook import BOOK_OPTIONS
     from actuator_sizing.report.workbook.writer import Field, Sheets
 
     stream = io.BytesIO()
-    with Workbook(stream, OPTIONS) as book:
+    with Workbook(stream, BOOK_OPTIONS) as book:
         book.set_properties({"title": "Robustness study", "comments": f"actuator_sizing {__version__}",
                              "created": _CREATED})  # fmt: skip
         sheets = Sheets(book)

@@ -7,14 +7,13 @@ from dataclasses import dataclass, replace
 from functools import cached_property
 
 import numpy as np
-from numpy.polynomial import legendre
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case, Segment
-from actuator_sizing.core.machine import amplitude_per_unit_current
+from actuator_sizing.core.machine import motor_amperes_per_drive_ampere
 from actuator_sizing.core.plant import Plant, series_stiffness
-from actuator_sizing.core.quadrature import NODES, antiderivative_matrix, to_series
 from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.loop_commands import Commands
 from actuator_sizing.sizing.set_model import SetModel
 
 FloatArray = NDArray[np.float64]
@@ -123,9 +122,7 @@ class AxisPlant:
     def current_limit_a(self) -> float:
         """Peak current of motor and drive in the motor's kind of ampere; infinite where neither is known. [A]"""
         motor, drive = self.model.motor, self.model.drive
-        to_motor = amplitude_per_unit_current(drive.current_basis) / amplitude_per_unit_current(
-            motor.current_basis
-        )
+        to_motor = motor_amperes_per_drive_ampere(motor, drive)
         limit = float(np.fmin(motor.peak_current_a, drive.peak_current_a * to_motor)[0])
         return math.inf if math.isnan(limit) else limit
 
@@ -137,7 +134,7 @@ class AxisPlant:
     @cached_property
     def commands(self) -> Commands:
         """What the cycle commands."""
-        return Commands.of(self)
+        return Commands.of(self.model, [self.plant(segment) for segment in self.case.segments])
 
 
 def axis_plant(
@@ -180,75 +177,3 @@ def axis_plant(
     if not float(model.judged.inductance_h[0]) > 0.0:
         notes.append("inductance not stated: an electrical time constant of one sample assumed")
     return AxisPlant(model, rate_hz, tuple(notes))
-
-
-@dataclass(frozen=True)
-class Commands:
-    """The cycle at the motor shaft as Legendre series on each piece; the rows are quantities."""
-
-    start_s: FloatArray  # (P,)
-    duration_s: FloatArray  # (P,)
-    segment: NDArray[np.intp]  # (P,)
-    series: (
-        FloatArray  # (6, P, K + 1): angle, speed, current, load torque, position, motor angle per load unit
-    )
-    angle_travel_rad: float  # over one cycle
-
-    @classmethod
-    def of(cls, axis: AxisPlant) -> Commands:
-        """Angle from the integral of speed; load torque is what the plant's own terms leave of the demand."""
-        model, demand, n = axis.model, axis.model.demand, axis.ratio
-        plants = [axis.plant(segment) for segment in axis.case.segments]
-        speed, torque = model.course.motor_speed_rad_s[0], model.course.torque_nm[0]
-
-        def of_segment(name: str) -> FloatArray:
-            return np.array([getattr(plants[s], name) for s in demand.segment])[:, None]
-
-        direction = demand.direction[:, None]
-        coulomb = (of_segment("motor_coulomb_nm") + of_segment("load_coulomb_nm")) * direction
-        viscous = (of_segment("motor_viscous_nm_s") + of_segment("load_viscous_nm_s")) * speed
-        inertia = of_segment("total_inertia_kg_m2") * n * demand.shaft_acceleration
-        load = -(torque - inertia - viscous - coulomb)
-        held = demand.brake_closed & (demand.direction == 0.0)
-        load[held] = 0.0
-        ratio = n * axis.case.mechanism.ratio_at(demand.position)[0]
-        nodes = np.stack(
-            [speed, torque / model.judged.torque_constant_nm_per_a[0], load, demand.position, ratio]
-        )
-        coefficients = nodes @ to_series(nodes.shape[2]).T
-        half = 0.5 * demand.duration_s[:, None]
-        angle = (coefficients[0] @ antiderivative_matrix(NODES).T) * half
-        gained = angle.sum(axis=1)  # every Legendre polynomial is one at the end of its piece
-        angle[:, 0] += np.concatenate([[0.0], np.cumsum(gained)[:-1]])
-        padded = np.concatenate([coefficients, np.zeros((*coefficients.shape[:2], 1))], axis=2)
-        return cls(
-            demand.start_s, demand.duration_s, demand.segment, np.concatenate([angle[None], padded]),
-            float(gained.sum()),
-        )  # fmt: skip
-
-    @property
-    def cycle_s(self) -> float:
-        """Duration of the cycle. [s]"""
-        return float(self.duration_s.sum())
-
-    def at(self, time_s: FloatArray, segment: int) -> FloatArray:
-        """Commands at instants within one segment.
-
-        Parameters
-        ----------
-        time_s : ndarray, shape (n,)
-            Instants from the start of the cycle; those outside the segment take its nearest end. [s]
-        segment : int
-            Which segment. [-]
-
-        Returns
-        -------
-        ndarray, shape (6, n)
-            Angle, speed, current, load torque, position, motor angle per load unit. [-]
-        """
-        pieces = np.flatnonzero(self.segment == segment)
-        found = np.searchsorted(self.start_s[pieces], time_s, side="right") - 1
-        piece = pieces[np.clip(found, 0, len(pieces) - 1)]
-        x = np.clip(2.0 * (time_s - self.start_s[piece]) / self.duration_s[piece] - 1.0, -1.0, 1.0)
-        basis = legendre.legvander(x, self.series.shape[2] - 1)
-        return np.asarray(np.einsum("qnk,nk->qn", self.series[:, piece], basis))

@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, fields, replace
+from dataclasses import dataclass
 from functools import cached_property
-from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
+from actuator_sizing.case.model import REPEATS
 from actuator_sizing.core.machine import JudgedMotor, judge, torque_constant_at, torque_of_current
 from actuator_sizing.core.moments import (
     SupportPoints,
@@ -21,24 +21,13 @@ from actuator_sizing.core.moments import (
 )
 from actuator_sizing.core.parameters import GearheadParameters, MotorParameters, Surroundings
 from actuator_sizing.core.thermal import ThermalNetwork
+from actuator_sizing.sizing.bounds import SINGLE_SLACK, Form, Ratio, form, single
 from actuator_sizing.sizing.demand import Demand
 from actuator_sizing.sizing.thermal_data import thermal_network
 
 FloatArray = NDArray[np.float64]
 
-# The arrays of a block are in single precision, twice as fast; sums that may cancel (mean square, torque) are made
-# in double first. Whoever compares the bounds allows for the rounding (`screening._ROUNDING`).
-_SINGLE = np.float32
-_NOTHING = 1e-30  # in place of zero and less in a denominator
 _TEMPERATURE_SLACK_K = 0.5  # the averaged balance may lie this much above the exact mean
-
-
-def _single(columns: Any) -> Any:
-    """A class of columns with its float arrays in single precision."""
-    values = {f.name: getattr(columns, f.name) for f in fields(columns)}
-    return replace(
-        columns, **{name: v.astype(_SINGLE) for name, v in values.items() if v.dtype == np.float64}
-    )
 
 
 @dataclass(frozen=True)
@@ -63,10 +52,10 @@ class MotorSide:
             motors.rotor_inertia_kg_m2, motors.friction_torque_nm, motors.viscous_friction_nm_s
         )
         return cls(
-            _single(motors),
-            _single(judged),
-            _single(thermal_network(motors, surroundings)),
-            np.fmin(by_current, motors.peak_torque_nm).astype(_SINGLE),
+            motors,
+            judged,
+            thermal_network(motors, surroundings),
+            np.fmin(by_current, motors.peak_torque_nm),
             np.ascontiguousarray(columns.T),
             np.ascontiguousarray(motor_products(columns).T),
         )
@@ -105,27 +94,20 @@ class GearheadSide:
         peak, voltage = support_points(demand.functions, demand.flow), voltage_points(demand)
         rows = gearhead_rows(gearheads)
         at_peak, at_voltage = (
-            (rows @ points.functions.T * points.sign).transpose(2, 0, 1) for points in (peak, voltage)
+            np.ascontiguousarray((rows @ points.functions.T * points.sign).transpose(2, 0, 1))
+            for points in (peak, voltage)
         )
         speed = (voltage.functions[:, 5] * voltage.sign)[:, None] * gearheads.ratio
-        return cls(gearheads, gearhead_products(products, rows).T, at_peak, at_voltage, speed[:, :, None])
-
-    def part(self, which: slice) -> GearheadSide:
-        """Some of the gearheads."""
-        return GearheadSide(
-            _single(self.gearheads.take(which)),
-            np.ascontiguousarray(self.products[which]),
-            np.ascontiguousarray(self.torque[:, which]),
-            np.ascontiguousarray(self.torque_for_voltage[:, which]),
-            self.speed_for_voltage[:, which].astype(_SINGLE),
-        )
+        gram = np.ascontiguousarray(gearhead_products(products, rows).T)
+        return cls(gearheads, gram, at_peak, at_voltage, speed[:, :, None])
 
 
 @dataclass(frozen=True)
 class Block:
-    """N gearheads against M motors; what the bounds of the checks are made of, each (N, M) or narrower.
+    """N gearheads against M motors; what the bounds of the checks are made of.
 
-    Motors lie along the last axis, since there are more of them: long rows are what numpy is fast on.
+    Motors lie along the last axis, since there are more of them: long rows are what numpy is fast on. Nothing of
+    shape (N, M) is worked out here.
     """
 
     demand: Demand
@@ -133,6 +115,12 @@ class Block:
     recommended_inertia_ratio: float
     motor_side: MotorSide
     gearhead_side: GearheadSide
+    runs: str = REPEATS  # how the cycle runs
+
+    @property
+    def repeats(self) -> bool:
+        """Whether the cycle runs until its temperatures are periodic."""
+        return self.runs == REPEATS
 
     @property
     def motors(self) -> MotorParameters:
@@ -155,88 +143,114 @@ class Block:
         return self.motor_side.torque_limit
 
     @cached_property
-    def mean_square(self) -> FloatArray:
-        """Mean square of the air-gap torque, exact, shape (N, M). [N²·m²]"""
-        product = self.gearhead_side.products @ self.motor_side.products
-        return np.maximum(product, 0.0).astype(_SINGLE)
+    def mean_square(self) -> Form:
+        """Mean square of the air-gap torque, exact. [N²·m²]"""
+        return form(self.gearhead_side.products, self.motor_side.products)
 
     @cached_property
-    def speed_peak(self) -> FloatArray:
-        """Largest motor speed, shape (N, 1). [rad/s]"""
-        return np.asarray(self.gearheads.ratio * self.demand.shaft_speed_peak)[:, None]
+    def torque_peak(self) -> tuple[Form, ...]:
+        """Air-gap torque at instants that can govern; the largest is a lower bound of the peak. [N·m]"""
+        return tuple(form(rows, self.motor_side.columns) for rows in self.gearhead_side.torque)
 
-    @cached_property
+    @property
     def speed_rms(self) -> FloatArray:
-        """RMS motor speed, shape (N, 1). [rad/s]"""
-        return np.asarray(self.gearheads.ratio * self.demand.shaft_speed_rms)[:, None]
+        """RMS motor speed, shape (N,). [rad/s]"""
+        return np.asarray(self.gearheads.ratio * self.demand.shaft_speed_rms)
+
+    def of_speed(self, shaft_speed_rad_s: float, limit_rad_s: FloatArray) -> Ratio:
+        """Motor speed over a limit of the motor, shape (M,)."""
+        rows = single(self.gearheads.ratio * shaft_speed_rad_s)[:, None]
+        with np.errstate(divide="ignore"):
+            return Ratio(top=Form(rows, single(1.0 / limit_rad_s)[None, :]))
+
+    def of_square(self, per_square: FloatArray, share: FloatArray, share_viscous: FloatArray) -> Ratio:
+        """RMS over its limit, squared: ``c q / (1 − a ω − b ω²)`` at the RMS speed.
+
+        Parameters
+        ----------
+        per_square : ndarray, shape (M,)
+            Square of current over continuous current, per mean square torque. [1/(N²·m²)]
+        share, share_viscous : ndarray, shape (M,)
+            What speed takes of the permitted rise, a and b. [-]
+
+        Returns
+        -------
+        Ratio
+            A lower bound: the rounding of the denominator is added to it. [-]
+        """
+        omega = self.speed_rms
+        rows = single(np.stack([np.ones_like(omega), omega, omega**2], axis=1))
+        columns = np.stack([np.full_like(share, 1.0 + SINGLE_SLACK), -share, -share_viscous])
+        return Ratio(per_square=single(per_square), bottom=Form(rows, single(columns)), is_squared=True)
 
     @cached_property
-    def current_rms(self) -> FloatArray:
-        """RMS current without saturation: exact for a linear machine, else a lower bound. [A]"""
-        return np.asarray(np.sqrt(self.mean_square) / self.judged.torque_constant_nm_per_a)
-
-    @cached_property
-    def torque_peak(self) -> FloatArray:
-        """Lower bound of the largest air-gap torque, magnitude. [N·m]"""
-        peak = np.zeros_like(self.mean_square)
-        for part in self.gearhead_side.torque:
-            np.maximum(peak, (part @ self.motor_side.columns).astype(_SINGLE), out=peak)
-        return peak
-
-    @cached_property
-    def current_peak(self) -> FloatArray:
-        """Lower bound of the largest current, magnitude. [A]"""
-        return np.asarray(self.torque_peak / self.judged.torque_constant_nm_per_a)
-
-    @cached_property
-    def _voltage(self) -> tuple[FloatArray, FloatArray]:
-        K = self.judged.torque_constant_nm_per_a
-        per_torque = self.judged.resistance_ohm / K
-        available = self.judged.voltage_available_v
+    def voltage(self) -> tuple[Ratio, ...]:
+        """Voltage over available voltage, inductance left out. [-]"""
+        j = self.judged
+        per_torque = j.resistance_ohm / (j.torque_constant_nm_per_a * j.voltage_available_v)
+        emf = (j.torque_constant_nm_per_a / j.voltage_available_v)[None, :]
+        drop = per_torque * self.motor_side.columns
+        straight = np.concatenate([drop, emf])
+        # While braking a larger current means less voltage: there the bound needs the most current there can be.
         # Saturated current over T/K, at most: the turning point of the cubic is at 3/2 of the linear current.
-        most_current = np.where(self.judged.saturation_per_a2 > 0.0, _SINGLE(1.5), _SINGLE(1.0))
-        voltage = np.zeros_like(self.mean_square)
-        plane = np.zeros_like(self.mean_square)
+        saturated = j.saturation_per_a2 > 0.0
+        most = np.concatenate([np.where(saturated, 1.5, 1.0) * drop, emf]) if saturated.any() else None
         side = self.gearhead_side
-        for part, omega in zip(side.torque_for_voltage, side.speed_for_voltage, strict=True):
-            drop, emf = per_torque * (part @ self.motor_side.columns).astype(_SINGLE), K * omega
-            # While braking a larger current means less voltage: there the bound needs the most current there can be.
-            np.maximum(voltage, np.minimum(drop, most_current * drop) + emf, out=voltage)
-            # Above the no-load speed there is no motoring torque at all: the ratio becomes immense.
-            left = np.maximum(np.subtract(available, emf, out=emf), _NOTHING)
-            np.maximum(plane, np.divide(drop, left, out=drop), out=plane)
-        return voltage, plane
-
-    @property
-    def voltage_peak(self) -> FloatArray:
-        """Lower bound of the largest voltage, inductance left out. [V]"""
-        return self._voltage[0]
-
-    @property
-    def voltage_plane_utilisation(self) -> FloatArray:
-        """Lower bound of torque over voltage-limited torque. [-]"""
-        return self._voltage[1]
+        found = []
+        for torque, speed in zip(side.torque_for_voltage, side.speed_for_voltage, strict=True):
+            rows = np.concatenate([torque, speed], axis=1)
+            smaller = None if most is None else form(rows, most)
+            found.append(Ratio(top=form(rows, straight), smaller_top=smaller))
+        return tuple(found)
 
     @cached_property
-    def mean_winding_rise(self) -> FloatArray:
-        """Lower bound of the winding's mean rise in periodic steady state; infinite on runaway. [K]"""
-        ambient = self.surroundings.ambient_degc
-        m = self.motors
-        cold_K = torque_constant_at(m, np.full(len(m), ambient, dtype=_SINGLE))  # the magnet is never colder
+    def voltage_plane(self) -> tuple[Ratio, ...]:
+        """Torque over the torque that the voltage leaves at that speed. [-]"""
+        j = self.judged
+        per_torque = j.resistance_ohm / (j.torque_constant_nm_per_a * j.voltage_available_v)
+        emf = j.torque_constant_nm_per_a / j.voltage_available_v
+        columns = per_torque * self.motor_side.columns
+        left = single(np.stack([np.full_like(emf, 1.0 + SINGLE_SLACK), -emf]))
+        side = self.gearhead_side
+        return tuple(
+            # Above the no-load speed there is no motoring torque at all: the ratio becomes immense.
+            Ratio(
+                top=form(torque, columns),
+                bottom=Form(single(np.concatenate([np.ones_like(speed), speed], axis=1)), left),
+            )
+            for torque, speed in zip(side.torque_for_voltage, side.speed_for_voltage, strict=True)
+        )
+
+    @cached_property
+    def winding_rise(self) -> Ratio:
+        """The winding's mean rise in periodic steady state over the permitted one; immense on runaway. [-]"""
+        m, ambient = self.motors, self.surroundings.ambient_degc
+        K = torque_constant_at(m, np.full(len(m), ambient))  # the magnet is never colder
         R_2 = self.motor_side.network.housing_resistance_k_w
         total = self.motor_side.network.winding_resistance_k_w + np.nan_to_num(R_2, nan=0.0)
         path = np.where(np.isnan(R_2), total, R_2)
         start = m.resistance_ohm * (
             1.0 + m.resistance_coefficient_per_k * (ambient - m.resistance_reference_degc)
         )
-        n = self.gearheads.ratio
-        by_speed = np.stack(
-            [n * self.demand.shaft_speed_mean, (n * self.demand.shaft_speed_rms) ** 2], axis=1
+        feedback = total * m.resistance_ohm * m.resistance_coefficient_per_k / K**2
+        permitted = m.winding_limit_degc - ambient
+        scale = np.where(permitted > 0.0, 1.0 / np.where(permitted > 0.0, permitted, 1.0), 0.0)
+        n, demand = self.gearheads.ratio, self.demand
+        rows = np.stack(
+            [np.ones_like(n), n * demand.shaft_speed_mean, (n * demand.shaft_speed_rms) ** 2], axis=1
         )
-        rise = by_speed @ (path * np.stack([m.friction_torque_nm, m.viscous_friction_nm_s]))
-        rise += (total * start / cold_K**2) * self.mean_square
-        gain = total * m.resistance_ohm * m.resistance_coefficient_per_k / cold_K**2
-        left = np.subtract(1.0, gain * self.mean_square)
-        # A feedback of one or more is runaway: the rise becomes immense.
-        np.divide(rise, np.maximum(left, _NOTHING, out=left), out=rise)
-        return np.asarray(np.subtract(rise, _TEMPERATURE_SLACK_K, out=rise))
+        slack = np.full_like(path, _TEMPERATURE_SLACK_K)
+        columns = np.stack([-slack, path * m.friction_torque_nm, path * m.viscous_friction_nm_s])
+        # The slack comes off the rise, not off the numerator of what the feedback raises.
+        per_square = total * start / K**2 + _TEMPERATURE_SLACK_K * feedback
+        unknown = np.isnan(total) | np.isnan(permitted)
+        return Ratio(
+            top=Form(single(rows), single(np.where(unknown, 0.0, scale * columns))),
+            per_square=single(np.where(unknown, 0.0, scale * per_square)),
+            drain=single(np.where(unknown, 0.0, feedback)),
+        )
+
+    def of_peak(self, limit: FloatArray) -> Ratio:
+        """Peak of the air-gap torque over a limit of the motor, shape (M,)."""
+        with np.errstate(divide="ignore"):
+            return Ratio(per_peak=single(1.0 / limit))

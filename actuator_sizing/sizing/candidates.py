@@ -21,7 +21,7 @@ IndexArray = NDArray[np.intp]
 
 def candidate_table(
     case: Case,
-    sets: Sets,
+    several: tuple[Sets, ...],
     verdicts: Verdicts,
     index: IndexArray,
     order: IndexArray,
@@ -33,8 +33,8 @@ def candidate_table(
     ----------
     case : Case
         The case. [-]
-    sets : Sets
-        Evaluated sets. [-]
+    several : tuple of Sets
+        Evaluated sets, once for each cycle. [-]
     verdicts : Verdicts
         Their verdicts. [-]
     index : ndarray of int, shape (S, 3)
@@ -48,17 +48,19 @@ def candidate_table(
     -------
     pandas.DataFrame
         Columns named with their SI unit; ``evaluated`` says "exactly" or "by bounds". A utilisation by
-        bounds is a lower bound. [-]
+        bounds is a lower bound. Of several cycles the largest values stand, and the energy of the first. [-]
     """
     import pandas as pd
 
-    p = sets.pairs
     frame = _parts(case, index)
     frame["evaluated"] = "exactly"
     frame["verdict"] = np.array(ORDER, dtype=object)[verdicts.verdict]
     keys = np.array([check.key for check in verdicts.checks], dtype=object)
     frame["governing_check"] = keys[verdicts.governing]
     rows = np.arange(len(index))
+    if len(several) > 1:
+        names = np.array([sets.case.cycle.name for sets in several], dtype=object)
+        frame["governing_cycle"] = names[verdicts.cycle[rows, verdicts.governing]]
     frame["governing_utilisation"] = verdicts.utilisation[rows, verdicts.governing]
     for name in (
         "torque_rms_nm",
@@ -70,7 +72,8 @@ def candidate_table(
         "energy_terminals_motoring_j",
         "inertia_ratio",
     ):
-        frame[name] = getattr(p, name)
+        of_cycle = [getattr(sets.pairs, name) for sets in several]
+        frame[name] = of_cycle[0] if name.startswith("energy") else np.max(of_cycle, axis=0)
     for column, check in enumerate(verdicts.checks):
         frame[f"utilisation_{check.key}"] = verdicts.utilisation[:, column]
     frame = frame.iloc[order].reset_index(drop=True)

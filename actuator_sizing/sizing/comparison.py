@@ -4,9 +4,11 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Callable
+from concurrent.futures import Executor
 from dataclasses import replace
 from functools import partial
-from typing import TYPE_CHECKING
+from pathlib import Path
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -15,10 +17,11 @@ from actuator_sizing.case.model import Case
 from actuator_sizing.errors import InputError, Problem
 from actuator_sizing.sizing.candidates import candidate_table
 from actuator_sizing.sizing.checks import Sets
-from actuator_sizing.sizing.demand import build_demand, cycle_quantities
-from actuator_sizing.sizing.detail import set_detail
+from actuator_sizing.sizing.cycle_results import curves, cycle_results, cycles_of_set
+from actuator_sizing.sizing.cycles import CycleDemand, cycle_demands, evaluate_cycles
+from actuator_sizing.sizing.demand import cycle_quantities
 from actuator_sizing.sizing.dynamic_results import add_dynamics
-from actuator_sizing.sizing.fitting import compatible
+from actuator_sizing.sizing.fitting import compatible, misfits
 from actuator_sizing.sizing.inertias import inertia_shares
 from actuator_sizing.sizing.judging import (
     ORDER,
@@ -28,6 +31,7 @@ from actuator_sizing.sizing.judging import (
     is_binding,
     judge_sets,
 )
+from actuator_sizing.sizing.mix import is_weighed, mix_quantities
 from actuator_sizing.sizing.provenance import assumptions_of, questions_of
 from actuator_sizing.sizing.quantities import commissioning_quantities, quantities
 from actuator_sizing.sizing.ranking import RANKINGS, nearest_drives, ranking_key
@@ -36,17 +40,11 @@ from actuator_sizing.sizing.results import (
     NOT_CHECKED,
     Comparison,
     Rejections,
-    SetDetail,
     SetResult,
 )
 from actuator_sizing.sizing.screening import Screened, screen
 from actuator_sizing.sizing.set_model import SetModel
-from actuator_sizing.sizing.shortlist import evaluate_sets
-from actuator_sizing.sizing.simulation import simulate_prepared
 from actuator_sizing.version import __version__
-
-if TYPE_CHECKING:
-    from actuator_sizing.sizing.demand import Demand
 
 IndexArray = NDArray[np.intp]
 Progress = Callable[[str, float], None]
@@ -66,6 +64,9 @@ def compare(
     detail: int | None = None,
     levers: int = 0,
     progress: Progress | None = None,
+    executor: Executor | None = None,
+    checkpoint: Path | None = None,
+    tell: Callable[[str], None] | None = None,
 ) -> Comparison:
     """Compare every motor × gearhead × drive set of a case.
 
@@ -81,6 +82,13 @@ def compare(
         For how many of the nearest losers to find the smallest change that lets them pass. [-]
     progress : callable, optional
         Called with a stage and the part of it that is done, 0 to 1. [-]
+    executor : Executor, optional
+        Where the screening is done, e.g. `workplaces.local_processes` or `workplaces.cluster`; default: here.
+        The answer is the same, bit for bit. [-]
+    checkpoint : Path, optional
+        File that keeps what a long screening has found, so that it can go on after Ctrl-C; deleted when done. [-]
+    tell : callable, optional
+        Called with a sentence about the checkpoint that the user should read. [-]
 
     Returns
     -------
@@ -90,7 +98,9 @@ def compare(
     Raises
     ------
     InputError
-        If no set can be formed at all, or the ranking is not known.
+        If no set can be formed at all, the ranking is not known, or the checkpoint is one of another case.
+    StoppedError
+        If the screening is interrupted and a checkpoint keeps what was found.
     """
     ranked_by = str(rank_by or case.options["rank by"])
     if ranked_by not in RANKINGS:
@@ -98,60 +108,86 @@ def compare(
             [Problem("axis", None, "rank by", ranked_by, " | ".join(RANKINGS), "Choose one of these.")]
         )
     wanted = int(detail or case.number("sets to detail"))
-    demand = build_demand(case)
+    cycles = cycle_demands(case)
+    demand = cycles[0].demand
     checks, limits = active_checks(case.limits)
     binding = tuple(c for c, limit in zip(checks, limits, strict=True) if is_binding(c, limit))
     allowed = {c.key: case.limits[c.key].allowed_utilisation for c in binding}
+    kept = None
+    if checkpoint is not None:
+        from actuator_sizing.sizing.checkpoint import Checkpoint
+
+        kept = Checkpoint(checkpoint, f"{case.fingerprint} {ranked_by} {_KEEP} {_NEAREST_LOSERS}", tell)
     screened = screen(
         case,
-        demand,
+        cycles,
         binding,
         allowed,
         ranked_by,
         keep=_KEEP,
         losers=_NEAREST_LOSERS,
+        executor=executor,
+        checkpoint=kept,
         progress=_stage(progress, "screening"),
     )
     if screened.screened == 0:
         raise InputError([_no_set(case)])
-    losers = nearest_drives(case, demand, screened.nearest_losers)
+    losers = nearest_drives(cycles, screened.nearest_losers)
     index = np.unique(np.concatenate([screened.survivors, losers, screened.nearest_by_drive]), axis=0)
-    sets = evaluate_sets(case, demand, index, _stage(progress, "evaluation"))
+    try:
+        sets = evaluate_cycles(cycles, index, _stage(progress, "evaluation"))
+    except KeyboardInterrupt:
+        if kept is None:
+            raise
+        raise kept.stopped_later() from None
 
-    def leading(judged: Sets) -> tuple[IndexArray, NDArray[np.bool_]]:
-        found = judge_sets(judged, checks, limits)
+    def leading(number: int, judged: Sets) -> tuple[IndexArray, NDArray[np.bool_]]:
+        several = (*sets[:number], judged, *sets[number + 1 :])
+        found = judge_sets(several, checks, limits)
         fails = found.verdict == ORDER.index(FAILS)
-        ranked = _rank(case, judged, found, index, ranked_by)
+        ranked = _rank(case, several, found, index, ranked_by)
         return ranked[~fails[ranked]][:wanted], fails
 
-    sets = add_dynamics(case, demand, sets, index, leading, _stage(progress, "simulation"))
+    for number, each in enumerate(cycles):
+        moving = add_dynamics(
+            each.case,
+            each.demand,
+            sets[number],
+            index,
+            partial(leading, number),
+            _stage(progress, "simulation"),
+        )
+        sets = (*sets[:number], moving, *sets[number + 1 :])
     verdicts = judge_sets(sets, checks, limits)
     order = _rank(case, sets, verdicts, index, ranked_by)
     listed = _listed(order, verdicts, index, wanted)
     results = tuple(
-        _set_result(case, demand, sets, verdicts, index, int(i), rank, with_curves=rank == 1)
+        _set_result(case, cycles, sets, verdicts, index, int(i), rank, with_curves=rank == 1)
         for rank, i in enumerate(listed, start=1)
     )
-    results = _with_levers(case, demand, results, levers, _stage(progress, "levers"))
+    results = _with_levers(case, cycles, results, levers, _stage(progress, "levers"))
     survivor_rows = _is_survivor(index, screened.survivors)
+    if kept is not None:
+        kept.remove()
     return Comparison(
         case=case,
         demand=demand,
         ranked_by=ranked_by,
         sets=results,
-        rejections=_rejections(screened, verdicts, index, survivor_rows),
+        rejections=_rejections(case, screened, verdicts, index, survivor_rows),
         candidates=candidate_table(case, sets, verdicts, index, order, screened),
         cycle=cycle_quantities(demand),
         assumptions=assumptions_of(case, results[0]),
         questions=questions_of(results),
         inertias=inertia_shares(case, demand, results[0].ratio),
         version=__version__,
+        cycles=cycle_results(cycles),
     )
 
 
 def _with_levers(
     case: Case,
-    demand: Demand,
+    cycles: tuple[CycleDemand, ...],
     results: tuple[SetResult, ...],
     count: int,
     progress: Callable[[float], None] | None,
@@ -166,7 +202,7 @@ def _with_levers(
     for item in results:
         if item.rank in chosen:
             parts = (item.motor_index, item.gearhead_index, item.drive_index)
-            item = replace(item, levers=levers_of(case, demand, *parts))
+            item = replace(item, levers=levers_of(case, cycles, *parts))
             if progress is not None:
                 progress((chosen.index(item.rank) + 1) / len(chosen))
         answered.append(item)
@@ -215,7 +251,9 @@ def _no_set(case: Case) -> Problem:
     )
 
 
-def _rank(case: Case, sets: Sets, verdicts: Verdicts, index: IndexArray, ranked_by: str) -> IndexArray:
+def _rank(
+    case: Case, sets: tuple[Sets, ...], verdicts: Verdicts, index: IndexArray, ranked_by: str
+) -> IndexArray:
     """Passing sets first, by the key; then those not fully checked; then the losers, nearest first."""
     key = ranking_key(case, sets, verdicts, index, ranked_by)
     fails = verdicts.verdict == ORDER.index(FAILS)
@@ -249,7 +287,7 @@ def _is_survivor(index: IndexArray, survivors: IndexArray) -> NDArray[np.bool_]:
 
 
 def _rejections(
-    screened: Screened, verdicts: Verdicts, index: IndexArray, survivor: NDArray[np.bool_]
+    case: Case, screened: Screened, verdicts: Verdicts, index: IndexArray, survivor: NDArray[np.bool_]
 ) -> Rejections:
     fails = verdicts.verdict == ORDER.index(FAILS)
     failed = survivor & fails
@@ -278,13 +316,14 @@ def _rejections(
         confirmed_passing=int(passing.sum()),
         evaluated=int(survivor.sum()),
         complete=screened.survivor_count == len(screened.survivors),
+        misfits=misfits(case),
     )
 
 
 def _set_result(
     case: Case,
-    demand: Demand,
-    sets: Sets,
+    cycles: tuple[CycleDemand, ...],
+    several: tuple[Sets, ...],
     verdicts: Verdicts,
     index: IndexArray,
     i: int,
@@ -293,10 +332,12 @@ def _set_result(
     with_curves: bool,
 ) -> SetResult:
     motor, gearhead, drive = (int(x) for x in index[i])
-    model = SetModel(case, demand, motor, gearhead, drive)
+    models = tuple(SetModel(each.case, each.demand, motor, gearhead, drive) for each in cycles)
+    model, sets = models[0], several[0]
     parts = (sets.motors, sets.gearheads, sets.drives)
     price, mass = (float(sum(getattr(part, name)[i] for part in parts)) for name in ("price", "mass_kg"))
     is_direct = bool(sets.gearheads.is_direct[i])
+    own = cycles_of_set(models, several, i, verdicts.checks, verdicts.limits, with_curves=with_curves)
     return SetResult(
         rank=rank,
         motor=case.motors.names[motor],
@@ -307,18 +348,16 @@ def _set_result(
         governing_check=verdicts.checks[int(verdicts.governing[i])].key,
         price=price if np.isfinite(price) else None,
         mass_kg=mass if np.isfinite(mass) else None,
-        quantities=quantities(model, sets, i) | (commissioning_quantities(model) if with_curves else {}),
-        checks=check_results(sets, verdicts, i, [segment.name for segment in case.segments]),
+        quantities=own[0].quantities if own else _quantities(model, sets, i, with_curves),
+        checks=check_results(several, verdicts, i),
         motor_index=motor,
         gearhead_index=gearhead,
         drive_index=drive,
-        detail=_detail(model, sets, i, (motor, gearhead, drive)) if with_curves else None,
+        detail=own[0].detail if own else curves(model, sets, i) if with_curves else None,
+        cycles=own,
+        mix=mix_quantities(several, models, i) if is_weighed(several) else None,
     )
 
 
-def _detail(model: SetModel, sets: Sets, i: int, parts: tuple[int, int, int]) -> SetDetail:
-    """Curves of one set; its simulation too where the case asks how the axis moves."""
-    detail = set_detail(model, sets, i)
-    if sets.dynamics is None:
-        return detail
-    return replace(detail, simulation=partial(simulate_prepared, model.case, model.demand, parts))
+def _quantities(model: SetModel, sets: Sets, i: int, with_curves: bool) -> dict[str, Any]:
+    return quantities(model, sets, i) | (commissioning_quantities(model) if with_curves else {})

@@ -15,6 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case, Segment
+from actuator_sizing.core.life import BALL_EXPONENT, equivalent_load
 from actuator_sizing.core.mechanisms import Mechanism
 from actuator_sizing.core.moments import demand_functions
 from actuator_sizing.core.motion_laws import Phase
@@ -22,10 +23,8 @@ from actuator_sizing.core.process_load import TIME
 from actuator_sizing.core.quadrature import NODES, integrate, interpolate, largest_magnitude, lobatto, roots
 from actuator_sizing.core.transmission import (
     BACK_DRIVING,
-    GEAR_EXPONENT,
     MOTORING,
     STANDSTILL,
-    equivalent_torque,
     stage_factor,
 )
 
@@ -106,8 +105,12 @@ class Demand:
 
     @cached_property
     def shaft_torque_equivalent(self) -> float:
-        """Equivalent torque at the driven shaft for the wear of a gearhead. [N·m]"""
-        return equivalent_torque(self.duration_s, self.shaft_speed, self.shaft_torque, GEAR_EXPONENT)[0]
+        """Equivalent torque at the driven shaft for the wear of a gearhead on ball bearings. [N·m]"""
+        return self.equivalent(self.shaft_torque, BALL_EXPONENT)
+
+    def equivalent(self, load: FloatArray, exponent: float) -> float:
+        """Equivalent of a load at the nodes, weighted by the turns of the driven shaft, in its own unit. [-]"""
+        return equivalent_load(self.duration_s, self.shaft_speed, load, exponent)[0]
 
     @cached_property
     def shaft_speed_peak(self) -> float:
@@ -125,13 +128,15 @@ class Demand:
         return float(np.sqrt(self.mean(self.shaft_speed**2)))
 
 
-def build_demand(case: Case) -> Demand:
+def build_demand(case: Case, *, in_order: bool = False) -> Demand:
     """Cut the cycle of a case into smooth pieces and find what the driven shaft must do.
 
     Parameters
     ----------
     case : Case
         The axis as understood. [-]
+    in_order : bool
+        Whether every instant of a long record is wanted in its order, for simulation; else it is condensed.
 
     Returns
     -------
@@ -143,7 +148,7 @@ def build_demand(case: Case) -> Demand:
 
         payloads = np.array([segment.payload for segment in case.segments])
         largest = float(np.max(case.mechanism.inertia_at_shaft(payloads)))
-        return Demand(**recorded_pieces(case, case.recording), load_inertia=largest)
+        return Demand(**recorded_pieces(case, case.recording, in_order=in_order), load_inertia=largest)
     pieces = list(_pieces(case))
     stacked: dict[str, Any] = {
         name: np.array([piece[name] for piece in pieces])

@@ -8,13 +8,20 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.core.capability import voltage_limited_current
-from actuator_sizing.core.machine import amplitude_per_unit_current, model_voltage, torque_of_current
+from actuator_sizing.core.machine import model_voltage, motor_amperes_per_drive_ampere, torque_of_current
 from actuator_sizing.core.quadrature import piece_means
-from actuator_sizing.core.warm_up import TemperatureCourse, WarmUp, temperature_course, warm_up
+from actuator_sizing.core.warm_up import (
+    TemperatureCourse,
+    WarmUp,
+    run_course,
+    temperature_course,
+    warm_up,
+)
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.checks.motor import current_limited_torque, rerated_continuous_current
 from actuator_sizing.sizing.results import SetDetail
 from actuator_sizing.sizing.set_model import SetModel
+from actuator_sizing.sizing.stop_courses import stop_courses
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -45,20 +52,40 @@ def set_detail(model: SetModel, sets: Sets, index: int) -> SetDetail:
     """
     import pandas as pd
 
-    surroundings = model.case.surroundings
-    limit = float(model.motor.winding_limit_degc[0])
-    periodic = temperature_course(model.network, model.loss, surroundings.ambient_degc)
-    warming = warm_up(model.network, model.loss, surroundings.ambient_degc, limit)
+    periodic, warming = _temperatures(model, sets, index)
     step = model.step().series(_STEP_POINTS)
     return SetDetail(
         cycle=_cycle_frame(model),
         periodic_temperature=_frame(periodic, _TEMPERATURES),
-        warm_up=_frame(warming, (*_TEMPERATURES, "winding_low_degc", "winding_high_degc")),
+        warm_up=_frame(
+            warming,
+            _TEMPERATURES
+            if isinstance(warming, TemperatureCourse)
+            else (*_TEMPERATURES, "winding_low_degc", "winding_high_degc"),
+        ),
         envelope=_envelope(model),
         step_response=pd.DataFrame(dict(zip(("time_s", "current_a", "speed_rad_s"), step, strict=True))),
         levels=_levels(model, sets, index),
         segments=_segment_frame(model),
+        stops=stop_courses(sets.only(index)),
     )
+
+
+def _temperatures(
+    model: SetModel, sets: Sets, index: int
+) -> tuple[TemperatureCourse | None, TemperatureCourse | WarmUp | None]:
+    """The periodic state and the way there; of a cycle that does not repeat nothing and its one run."""
+    ambient = model.case.surroundings.ambient_degc
+    if sets.start is None:
+        limit = float(model.motor.winding_limit_degc[0])
+        return (
+            temperature_course(model.network, model.loss, ambient),
+            warm_up(model.network, model.loss, ambient, limit),
+        )
+    before = sets.start.take(slice(index, index + 1))
+    loss = before.with_following(model.loss, model.motor, model.gearhead, model.judged)
+    state = float(before.winding_degc[0]), float(before.housing_degc[0])
+    return None, run_course(model.network, loss, ambient, *state)
 
 
 def _frame(series: TemperatureCourse | WarmUp | None, names: tuple[str, ...]) -> pd.DataFrame | None:
@@ -144,9 +171,7 @@ def _envelope(model: SetModel) -> pd.DataFrame:
     used = float(np.abs(model.course.motor_speed_rad_s).max())
     reach = max(1.05 * used, min(top, 1.02 * no_load) if np.isfinite(top) else 1.02 * no_load)
     speed = np.linspace(0.0, reach, _SPEEDS)
-    to_motor = amplitude_per_unit_current(model.drive.current_basis) / amplitude_per_unit_current(
-        motor.current_basis
-    )
+    to_motor = motor_amperes_per_drive_ampere(motor, model.drive)
     peak = np.fmin(motor.peak_current_a, model.drive.peak_current_a * to_motor)
     frame = {"speed_rad_s": speed}
 
@@ -168,9 +193,7 @@ def _envelope(model: SetModel) -> pd.DataFrame:
 
 def _levels(model: SetModel, sets: Sets, index: int) -> dict[str, float]:
     motor, drive, s = model.motor, model.drive, model.case.surroundings
-    to_motor = float(
-        (amplitude_per_unit_current(drive.current_basis) / amplitude_per_unit_current(motor.current_basis))[0]
-    )
+    to_motor = float(motor_amperes_per_drive_ampere(motor, drive)[0])
     return {
         "motor_peak_current_a": float(motor.peak_current_a[0]),
         "motor_continuous_current_a": float(

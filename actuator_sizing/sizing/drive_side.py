@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
 from actuator_sizing.core.machine import amplitude_per_unit_current
+from actuator_sizing.sizing.derating import derated_drives
 
 FloatArray = NDArray[np.float64]
 
@@ -17,7 +18,7 @@ class DriveSide:
     """The drives' limits as amplitudes over the allowed utilisation."""
 
     def __init__(self, case: Case, allowed: Mapping[str, float]):
-        d, s = case.drive_parameters, case.surroundings
+        d, s = derated_drives(case), case.surroundings
         amplitude = amplitude_per_unit_current(d.current_basis)
         self.peak = np.where(np.isnan(d.peak_current_a), np.inf, d.peak_current_a * amplitude)
         self.continuous = np.where(
@@ -36,20 +37,22 @@ class DriveSide:
     def __len__(self) -> int:
         return len(self.peak)
 
-    def utilisations(self, peak_a: FloatArray, rms_a: FloatArray) -> FloatArray:
+    def utilisations(self, peak_a: FloatArray, rms_a: FloatArray, drives: NDArray[np.intp]) -> FloatArray:
         """Lower bounds over the allowed utilisation of K pairs on D drives, in the order of `names`.
 
         Parameters
         ----------
         peak_a, rms_a : ndarray, shape (K,)
             Lower bounds of largest and RMS motor current, as amplitudes. [A]
+        drives : ndarray of int, shape (D,)
+            Which drives. [-]
 
         Returns
         -------
         ndarray, shape (3, K, D)
             Bus voltage range, continuous current, peak current. [-]
         """
-        bus = np.broadcast_to(self.bus[None, :], (len(peak_a), len(self)))
-        continuous = rms_a[:, None] / (self.continuous * self.continuous_allowed)[None, :]
-        top = peak_a[:, None] / (self.peak * self.peak_allowed)[None, :]
+        bus = np.broadcast_to(self.bus[drives][None, :], (len(peak_a), len(drives)))
+        continuous = rms_a[:, None] / (self.continuous * self.continuous_allowed)[drives][None, :]
+        top = peak_a[:, None] / (self.peak * self.peak_allowed)[drives][None, :]
         return np.stack([bus, continuous, top])

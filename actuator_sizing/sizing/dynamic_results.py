@@ -4,23 +4,32 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, fields, replace
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
-from actuator_sizing.core.tuning import ANTIRESONANCE_RATIO, NESTING_RATIO, current_bandwidth
+from actuator_sizing.core.tuning import (
+    ANTIRESONANCE_RATIO,
+    NESTING_RATIO,
+    LinearCascade,
+    current_bandwidth,
+)
 from actuator_sizing.errors import InputError
-from actuator_sizing.sizing.axis_plant import ASSUMED_RATE_HZ, axis_plant, option_number
+from actuator_sizing.sizing.axis_plant import ASSUMED_RATE_HZ, AxisPlant, axis_plant, option_number
 from actuator_sizing.sizing.checks import Sets
+from actuator_sizing.sizing.cycle_run import run_cycle
 from actuator_sizing.sizing.demand import Demand
-from actuator_sizing.sizing.simulation import simulate_set
+from actuator_sizing.sizing.loop_tuning import tuned
+from actuator_sizing.sizing.simulation import MOST_REPORT_SAMPLES, in_order
 
 FloatArray = NDArray[np.float64]
 IndexArray = NDArray[np.intp]
 
-_MOST_SIMULATIONS = 60  # in one comparison
+#: What one comparison simulates at most: sets, and samples of all of them (seconds, tens of them at worst).
+_MOST_SIMULATIONS, _MOST_SAMPLES = 60, 2e7
 
 
 @dataclass(frozen=True)
@@ -40,6 +49,12 @@ class DynamicResults:
     following_error: FloatArray
     following_error_at_s: FloatArray
     sensitivity_peak_ratio: FloatArray
+
+    def take(self, rows: slice) -> DynamicResults:
+        """Some of the sets."""
+        values = {f.name: getattr(self, f.name) for f in fields(self)}
+        taken: dict[str, Any] = {n: v[rows] for n, v in values.items() if isinstance(v, np.ndarray)}
+        return replace(self, **taken)
 
 
 def add_dynamics(
@@ -86,19 +101,26 @@ def add_dynamics(
     sets = replace(sets, dynamics=known)
     if math.isnan(band) and math.isnan(error):
         return sets
-    done = 0
-    while done < _MOST_SIMULATIONS:
+    demand = in_order(case, demand)
+    tried: set[int] = set()
+    samples = 0.0
+    while len(tried) < _MOST_SIMULATIONS and samples < _MOST_SAMPLES:
         first = leading(sets)[0]
-        waiting = [int(i) for i in first if np.isnan(known.is_simulated[i]) and not np.isnan(stiffness[i])]
+        waiting = [int(i) for i in first if int(i) not in tried and not np.isnan(stiffness[i])]
         if not waiting:
             break
         columns = {name: getattr(known, name).copy() for name in _SIMULATED}
-        for i in waiting[: _MOST_SIMULATIONS - done]:
-            for name, value in _simulated(case, demand, index[i], band).items():
-                columns[name][i] = value
-            done += 1
+        for i in waiting[: _MOST_SIMULATIONS - len(tried)]:
+            motor, gearhead, drive = (int(p) for p in index[i])
+            axis = axis_plant(case, demand, (motor, gearhead, drive), winding_degc=math.nan, rate_hz=math.nan)
+            tried.add(i)
+            length = demand.cycle_s * axis.rate_hz
+            if samples < _MOST_SAMPLES and length <= MOST_REPORT_SAMPLES:
+                samples += length
+                for name, value in _simulated(axis, band).items():
+                    columns[name][i] = value
             if progress is not None:
-                progress(min(1.0, done / (done + len(waiting))))
+                progress(min(1.0, len(tried) / (len(tried) + len(waiting))))
         known = replace(known, **columns)
         sets = replace(sets, dynamics=known)
     return sets
@@ -110,25 +132,25 @@ _SIMULATED = (
 )  # fmt: skip
 
 
-def _simulated(case: Case, demand: Demand, parts: IndexArray, band: float) -> dict[str, float]:
-    """One set; loops that cannot be made stable settle never."""
-    motor, gearhead, drive = (int(p) for p in parts)
-    axis = axis_plant(case, demand, (motor, gearhead, drive), winding_degc=math.nan, rate_hz=math.nan)
+def _simulated(axis: AxisPlant, band: float) -> dict[str, float]:
+    """One set over its cycle; loops that cannot be made stable settle never."""
     try:
-        q = simulate_set(axis, (motor, gearhead, drive), "cycle", {}, band, 1).quantities
+        tuning = tuned(axis, {})
     except InputError:
         return {"is_simulated": 1.0, "settling_time_s": math.inf, "settling_available_s": 1.0,
                 "following_error": math.inf, "sensitivity_peak_ratio": math.inf}  # fmt: skip
+    q = run_cycle(axis, tuning.settings, band, 1, rows=1).quantities
+    reserve = LinearCascade(axis.plant(), tuning.settings).margins("speed")
     has_stop = not math.isnan(q["settling_time_s"])
     return {
         "is_simulated": 1.0,
         "settling_time_s": q["settling_time_s"] if has_stop else 0.0,
-        "settling_available_s": q["settling_available_s"] if has_stop else case.cycle_duration_s,
+        "settling_available_s": q["settling_available_s"] if has_stop else axis.case.cycle_duration_s,
         "settling_at_s": q["settling_at_s"],
         "following_error": q["following_error_peak"],
         "following_error_at_s": q["following_error_peak_at_s"],
-        "sensitivity_peak_ratio": q["speed_sensitivity_peak_ratio"],
-        "achievable_bandwidth_rad_s": 2.0 * math.pi * q["speed_bandwidth_hz"],
+        "sensitivity_peak_ratio": reserve.sensitivity_peak_ratio,
+        "achievable_bandwidth_rad_s": tuning.speed_rad_s,
     }
 
 

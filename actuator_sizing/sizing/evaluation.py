@@ -6,18 +6,28 @@ Everything here is independent of the drive; a check that needs one combines the
 from __future__ import annotations
 
 from dataclasses import dataclass, fields
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.core.capability import terminal_voltage
-from actuator_sizing.core.machine import JudgedMotor, current_of_torque, judge
+from actuator_sizing.core.machine import JudgedMotor, current_of_torque, judge, judge_cold
 from actuator_sizing.core.parameters import GearheadParameters, MotorParameters, Surroundings, _Columns
 from actuator_sizing.core.quadrature import largest, largest_magnitude, signed_integrals
-from actuator_sizing.core.thermal import periodic_state
+from actuator_sizing.core.thermal import PeriodicState, periodic_state
+from actuator_sizing.core.thermal_run import SingleRun, single_run
 from actuator_sizing.sizing.demand import Demand
-from actuator_sizing.sizing.pair_course import PairCourse, course, heat_loss, per_pair, speed_loss
+from actuator_sizing.sizing.pair_course import (
+    PairCourse,
+    course,
+    electrical_course,
+    heat_loss,
+    per_pair,
+    speed_loss,
+)
 from actuator_sizing.sizing.thermal_data import thermal_network
+from actuator_sizing.sizing.thermal_start import ThermalStart
 from actuator_sizing.sizing.torque_plane import torque_plane
 
 FloatArray = NDArray[np.float64]
@@ -45,11 +55,14 @@ class PairResults(_Columns):
     voltage_peak_without_inductance_v: FloatArray
     voltage_peak_at_steps_v: FloatArray
     voltage_available_v: FloatArray
+    voltage_is_cold: NDArray[np.bool_]  # whether the motor at ambient needs more than the hot one
+    plane_is_cold: NDArray[np.bool_]
     plane_utilisation: FloatArray  # torque over voltage-limited torque, largest over the cycle
     plane_torque_nm: FloatArray  # torque there
     plane_capacity_nm: FloatArray
     plane_at_s: FloatArray
-    copper_loss_mean_w: FloatArray  # at judged temperatures
+    copper_loss_mean_w: FloatArray  # winding, at judged temperatures
+    cable_loss_mean_w: FloatArray
     friction_loss_mean_w: FloatArray
     energy_shaft_motoring_j: FloatArray
     energy_shaft_regenerated_j: FloatArray
@@ -67,14 +80,19 @@ class PairResults(_Columns):
     housing_max_degc: FloatArray
     housing_mean_degc: FloatArray
     inertia_ratio: FloatArray
-    resistance_ohm: FloatArray  # at judged temperatures
+    resistance_ohm: FloatArray  # winding, at judged temperatures
+    cable_ohm: FloatArray  # motor cable in the motor's basis
     torque_constant_nm_per_a: FloatArray
     judged_winding_degc: FloatArray
     magnet_degc: FloatArray
 
 
 def evaluate_pairs(
-    demand: Demand, motors: MotorParameters, gearheads: GearheadParameters, surroundings: Surroundings
+    demand: Demand,
+    motors: MotorParameters,
+    gearheads: GearheadParameters,
+    surroundings: Surroundings,
+    start: ThermalStart | None = None,
 ) -> PairResults:
     """Evaluate B pairs exactly.
 
@@ -86,6 +104,8 @@ def evaluate_pairs(
         B rows each: row b of both is pair b. [-]
     surroundings : Surroundings
         Ambient, altitude, bus voltages, judged temperature. [-]
+    start : ThermalStart, optional
+        State of the B pairs before a cycle that runs once; a cycle repeats until its temperatures do. [-]
 
     Returns
     -------
@@ -95,11 +115,12 @@ def evaluate_pairs(
     parts = [
         _evaluate_chunk(
             demand,
-            motors.take(slice(start, start + _CHUNK)),
-            gearheads.take(slice(start, start + _CHUNK)),
+            motors.take(slice(first, first + _CHUNK)),
+            gearheads.take(slice(first, first + _CHUNK)),
             surroundings,
+            None if start is None else start.take(slice(first, first + _CHUNK)),
         )
-        for start in range(0, len(motors), _CHUNK)
+        for first in range(0, len(motors), _CHUNK)
     ]
     return PairResults(
         **{f.name: np.concatenate([getattr(part, f.name) for part in parts]) for f in fields(PairResults)}
@@ -107,7 +128,11 @@ def evaluate_pairs(
 
 
 def _evaluate_chunk(
-    demand: Demand, motors: MotorParameters, gearheads: GearheadParameters, surroundings: Surroundings
+    demand: Demand,
+    motors: MotorParameters,
+    gearheads: GearheadParameters,
+    surroundings: Surroundings,
+    start: ThermalStart | None,
 ) -> PairResults:
     judged = judge(motors, surroundings)
     c = course(demand, motors, gearheads, judged)
@@ -116,25 +141,29 @@ def _evaluate_chunk(
 
     torque_peak, piece, position = largest_magnitude(T)
     torque_peak_at = demand.instant(piece, position)
-    with_L, without_L = largest_magnitude(c.voltage_v), largest_magnitude(c.voltage_without_inductance_v)
-    voltage_peak = np.maximum(with_L[0], without_L[0])
-    voltage_at = np.where(
-        with_L[0] >= without_L[0], demand.instant(*with_L[1:]), demand.instant(*without_L[1:])
-    )
-    plane = torque_plane(demand, c, judged)
+    cold = judge_cold(motors, surroundings)
+    c_cold = electrical_course(demand, T, omega, c.shaft_torque_nm, cold)
+    voltage = _worse(_voltages(demand, c), _voltages(demand, c_cold), "voltage_peak_v")
+    plane = _worse(torque_plane(demand, c, judged), torque_plane(demand, c_cold, cold), "plane_utilisation")
     speed_peak, speed_piece, speed_position = largest_magnitude(omega)
 
-    copper = per_pair(judged.resistance_ohm) * i**2
+    squared = i**2
     airgap = T * omega
-    terminals = airgap + copper
+    terminals = airgap + per_pair(judged.resistance_ohm) * squared
+    winding_ohm, mean_square = judged.resistance_ohm - judged.cable_ohm, demand.mean(squared)
     shaft = c.shaft_torque_nm * omega
     energy_shaft = signed_integrals(duration, shaft)
     energy_airgap = signed_integrals(duration, airgap)
     energy_terminals = signed_integrals(duration, terminals)
 
-    thermal = periodic_state(
-        thermal_network(motors, surroundings), heat_loss(demand, motors, judged, c), surroundings.ambient_degc
-    )
+    network, loss = thermal_network(motors, surroundings), heat_loss(demand, motors, judged, c)
+    temperatures: PeriodicState | SingleRun
+    if start is None:
+        temperatures = periodic_state(network, loss, surroundings.ambient_degc)
+    else:
+        loss = start.with_following(loss, motors, gearheads, judged)
+        state = start.winding_degc, start.housing_degc
+        temperatures = single_run(network, loss, surroundings.ambient_degc, *state)
     reflected = demand.load_inertia / gearheads.ratio**2
     return PairResults(
         torque_peak_nm=torque_peak,
@@ -146,18 +175,20 @@ def _evaluate_chunk(
         current_peak_a=current_of_torque(
             torque_peak, judged.torque_constant_nm_per_a, judged.saturation_per_a2
         ),
-        current_rms_a=np.sqrt(demand.mean(i**2)),
+        current_rms_a=np.sqrt(mean_square),
         speed_peak_rad_s=speed_peak,
         speed_peak_at_s=demand.instant(speed_piece, speed_position),
         speed_rms_rad_s=gearheads.ratio * demand.shaft_speed_rms,
         speed_mean_abs_rad_s=gearheads.ratio * demand.shaft_speed_mean,
-        voltage_peak_v=voltage_peak,
-        voltage_peak_at_s=voltage_at,
-        voltage_peak_without_inductance_v=without_L[0],
-        voltage_peak_at_steps_v=_voltage_at_steps(c, judged, surroundings.current_loop_rise_s),
+        voltage_peak_at_steps_v=np.maximum(
+            _voltage_at_steps(c, judged, surroundings.current_loop_rise_s),
+            _voltage_at_steps(c_cold, cold, surroundings.current_loop_rise_s),
+        ),
         voltage_available_v=judged.voltage_available_v,
+        **voltage,
         **plane,
-        copper_loss_mean_w=demand.mean(copper),
+        copper_loss_mean_w=winding_ohm * mean_square,
+        cable_loss_mean_w=judged.cable_ohm * mean_square,
         friction_loss_mean_w=demand.mean(speed_loss(motors, omega)),
         energy_shaft_motoring_j=energy_shaft[0],
         energy_shaft_regenerated_j=energy_shaft[1],
@@ -166,20 +197,40 @@ def _evaluate_chunk(
         energy_terminals_motoring_j=energy_terminals[0],
         energy_terminals_regenerated_j=energy_terminals[1],
         power_terminals_peak_w=largest(terminals)[0],
-        thermal_known=thermal.known,
-        has_equilibrium=thermal.has_equilibrium,
-        winding_max_degc=thermal.winding_max_degc,
-        winding_max_at_s=thermal.winding_max_time_s,
-        winding_min_degc=thermal.winding_min_degc,
-        winding_mean_degc=thermal.winding_mean_degc,
-        housing_max_degc=thermal.housing_max_degc,
-        housing_mean_degc=thermal.housing_mean_degc,
+        thermal_known=temperatures.known,
+        has_equilibrium=temperatures.has_equilibrium,
+        winding_max_degc=temperatures.winding_max_degc,
+        winding_max_at_s=temperatures.winding_max_time_s,
+        winding_min_degc=temperatures.winding_min_degc,
+        winding_mean_degc=temperatures.winding_mean_degc,
+        housing_max_degc=temperatures.housing_max_degc,
+        housing_mean_degc=temperatures.housing_mean_degc,
         inertia_ratio=reflected / motors.rotor_inertia_kg_m2,
-        resistance_ohm=judged.resistance_ohm,
+        resistance_ohm=winding_ohm,
+        cable_ohm=judged.cable_ohm,
         torque_constant_nm_per_a=judged.torque_constant_nm_per_a,
         judged_winding_degc=judged.winding_degc,
         magnet_degc=judged.magnet_degc,
     )
+
+
+def _voltages(demand: Demand, c: PairCourse) -> dict[str, FloatArray]:
+    """Largest voltage with and without ``L di/dt``, and when."""
+    with_L, without_L = largest_magnitude(c.voltage_v), largest_magnitude(c.voltage_without_inductance_v)
+    return {
+        "voltage_peak_v": np.maximum(with_L[0], without_L[0]),
+        "voltage_peak_at_s": np.where(
+            with_L[0] >= without_L[0], demand.instant(*with_L[1:]), demand.instant(*without_L[1:])
+        ),
+        "voltage_peak_without_inductance_v": without_L[0],
+    }
+
+
+def _worse(hot: dict[str, FloatArray], cold: dict[str, FloatArray], decides: str) -> dict[str, Any]:
+    """Pair by pair what is larger, hot or cold, and which it is."""
+    is_cold = cold[decides] > hot[decides]
+    chosen = {name: np.where(is_cold, cold[name], value) for name, value in hot.items()}
+    return {**chosen, f"{decides.split('_')[0]}_is_cold": is_cold}
 
 
 def _voltage_at_steps(c: PairCourse, judged: JudgedMotor, rise_s: float) -> FloatArray:

@@ -36,12 +36,48 @@ def fits_axis(case: Case) -> tuple[NDArray[np.intp], NDArray[np.intp]]:
         Linear motors where the mechanism is one, rotary ones elsewhere; no winding whose stated nominal
         voltage is far below the bus, since its insulation is not made for it. [-]
     """
-    wants_linear = case.mechanism.drives_linear_motor
-    allowed = case.number("largest bus over nominal voltage")
-    with np.errstate(invalid="ignore"):
-        overfed = case.surroundings.bus_nominal_v > allowed * case.motor_parameters.nominal_voltage_v
-    motors = np.flatnonzero((case.motor_parameters.is_linear == wants_linear) & ~overfed)
+    motors = np.flatnonzero(_moves_as_the_axis(case) & ~_overfed(case))
     gearheads = np.arange(len(case.gearhead_parameters))
-    if wants_linear:
+    if case.mechanism.drives_linear_motor:
         gearheads = np.flatnonzero(case.gearhead_parameters.is_direct)
     return motors, gearheads
+
+
+def _moves_as_the_axis(case: Case) -> NDArray[np.bool_]:
+    return np.asarray(case.motor_parameters.is_linear == case.mechanism.drives_linear_motor)
+
+
+def _overfed(case: Case) -> NDArray[np.bool_]:
+    """Windings whose stated nominal voltage is too far below the bus."""
+    allowed = case.number("largest bus over nominal voltage")
+    with np.errstate(invalid="ignore"):
+        return case.surroundings.bus_nominal_v > allowed * case.motor_parameters.nominal_voltage_v
+
+
+def misfits(case: Case) -> dict[str, int]:
+    """Count the sets that cannot be built by the first reason met; reasons without a set are left out.
+
+    Parameters
+    ----------
+    case : Case
+        The case. [-]
+
+    Returns
+    -------
+    dict
+        Words to number of sets; the numbers add up to the sets that are not screened. [-]
+    """
+    gearheads, drives = len(case.gearhead_parameters), len(case.drive_parameters)
+    moves, overfed = _moves_as_the_axis(case), _overfed(case)
+    motors, usable = fits_axis(case)
+    unserved = ~compatible(case.motor_parameters.take(motors), case.drive_parameters)
+    kind = "rotary" if case.mechanism.drives_linear_motor else "linear"
+    found = {
+        f"a {kind} motor does not drive this mechanism": int(np.sum(~moves)) * gearheads * drives,
+        "the bus is too high for the nominal voltage of the winding": int(np.sum(moves & overfed))
+        * gearheads
+        * drives,
+        "a linear motor has no gearhead": len(motors) * (gearheads - len(usable)) * drives,
+        "the drive does not commutate the motor": int(unserved.sum()) * len(usable),
+    }
+    return {reason: count for reason, count in found.items() if count}

@@ -15,11 +15,10 @@ from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case, Segment
 from actuator_sizing.core.phases import Phase
-from actuator_sizing.sizing.demand import Demand, build_demand
+from actuator_sizing.sizing.cycles import CycleDemand, cycle_demands, evaluate_cycles
 from actuator_sizing.sizing.fitting import compatible, fits_axis
 from actuator_sizing.sizing.judging import ORDER, active_checks, judge_sets
 from actuator_sizing.sizing.results import FAILS
-from actuator_sizing.sizing.shortlist import evaluate_sets
 
 IndexArray = NDArray[np.intp]
 
@@ -78,19 +77,29 @@ def _stretched(phase: Phase, factor: float) -> Phase:
 
 
 def _with_move_time(case: Case, factor: float) -> Case:
-    slower = (
-        replace(s, phases=tuple(_stretched(p, factor) for p in s.phases)) if _moves(s) else s
-        for s in case.segments
-    )
-    return replace(case, segments=_restarted(tuple(slower)))
+    def slower(segments: tuple[Segment, ...]) -> tuple[Segment, ...]:
+        return _restarted(
+            tuple(
+                replace(s, phases=tuple(_stretched(p, factor) for p in s.phases)) if _moves(s) else s
+                for s in segments
+            )
+        )
+
+    return case.with_segments(slower)
 
 
 def _with_payload(case: Case, factor: float) -> Case:
-    return replace(case, segments=tuple(replace(s, payload=s.payload * factor) for s in case.segments))
+    return case.with_segments(
+        lambda segments: tuple(replace(s, payload=s.payload * factor) for s in segments)
+    )
 
 
 def _with_dwell(case: Case, added_s: float) -> Case:
-    last = case.segments[-1]
+    return case.with_segments(lambda segments: _dwelling(segments, added_s))
+
+
+def _dwelling(segments: tuple[Segment, ...], added_s: float) -> tuple[Segment, ...]:
+    last = segments[-1]
     if _moves(last):
         pause = replace(
             last,
@@ -100,10 +109,10 @@ def _with_dwell(case: Case, added_s: float) -> Case:
             brake_closed=False,
             process_effort=0.0,
         )
-        return replace(case, segments=_restarted((*case.segments, pause)))
+        return _restarted((*segments, pause))
     end = last.phases[-1]
     longer = replace(last, phases=(*last.phases[:-1], replace(end, duration_s=end.duration_s + added_s)))
-    return replace(case, segments=_restarted((*case.segments[:-1], longer)))
+    return _restarted((*segments[:-1], longer))
 
 
 def _with_bus(case: Case, minimum_v: float) -> Case:
@@ -178,7 +187,7 @@ LEVERS: tuple[Lever, ...] = (
         "payload",
         "payload of every segment",
         "-",
-        lambda case: 1.0 if any(s.payload > 0.0 for s in case.segments) else None,
+        lambda case: 1.0 if any(s.payload > 0.0 for one in case.by_cycle() for s in one.segments) else None,
         _with_payload,
         lambda one: (0.0,),
     ),
@@ -271,21 +280,31 @@ def single(case: Case, motor: int, gearhead: int, drive: int) -> Case:
     """The case with one motor, gearhead and drive only."""
     return replace(
         case,
+        motors=case.motors.row(motor),
+        gearheads=case.gearheads.row(gearhead),
+        drives=case.drives.row(drive),
         motor_parameters=case.motor_parameters.take(slice(motor, motor + 1)),
         gearhead_parameters=case.gearhead_parameters.take(slice(gearhead, gearhead + 1)),
         drive_parameters=case.drive_parameters.take(slice(drive, drive + 1)),
     )
 
 
-def excess(case: Case, demand: Demand | None = None) -> float:
+def _as_changed(case: Case, cycles: tuple[CycleDemand, ...]) -> tuple[CycleDemand, ...]:
+    """Cycles of a changed case: demands that are known still hold, the rest of the case may be another."""
+    if not cycles:
+        return cycle_demands(case)
+    return tuple(CycleDemand(one, known.demand) for one, known in zip(case.by_cycle(), cycles, strict=True))
+
+
+def excess(case: Case, cycles: tuple[CycleDemand, ...] = ()) -> float:
     """How far the one set of a case is beyond its limits.
 
     Parameters
     ----------
     case : Case
         A case of one set, from `single`. [-]
-    demand : Demand, optional
-        Its cycle, where that is known already. [-]
+    cycles : tuple of CycleDemand, optional
+        Its cycles, where they are known already. [-]
 
     Returns
     -------
@@ -294,13 +313,13 @@ def excess(case: Case, demand: Demand | None = None) -> float:
     """
     checks, limits = active_checks(case.limits)
     index = np.zeros((1, 3), dtype=np.intp)
-    verdicts = judge_sets(evaluate_sets(case, demand or build_demand(case), index), checks, limits)
+    verdicts = judge_sets(evaluate_cycles(_as_changed(case, cycles), index), checks, limits)
     worst = min(float(verdicts.severity[0]), _WORST) - 1.0
     fails = verdicts.verdict[0] == ORDER.index(FAILS)
     return max(worst, 1e-12) if fails else min(worst, 0.0)
 
 
-def smallest_change(case: Case, lever: Lever, demand: Demand | None = None) -> LeverAnswer | None:
+def smallest_change(case: Case, lever: Lever, cycles: tuple[CycleDemand, ...] = ()) -> LeverAnswer | None:
     """Smallest change of one lever that lets the one set of a case pass.
 
     Parameters
@@ -309,8 +328,8 @@ def smallest_change(case: Case, lever: Lever, demand: Demand | None = None) -> L
         A case of one set, from `single`. [-]
     lever : Lever
         What may change. [-]
-    demand : Demand, optional
-        The cycle of the case, reused for levers that do not touch it. [-]
+    cycles : tuple of CycleDemand, optional
+        The cycles of the case, reused for levers that do not touch them. [-]
 
     Returns
     -------
@@ -326,12 +345,12 @@ def smallest_change(case: Case, lever: Lever, demand: Demand | None = None) -> L
     present = lever.present(case)
     if present is None:
         return None
-    known = demand or build_demand(case)
+    known = cycles or cycle_demands(case)
 
     def beyond(value: float) -> float:
         other = lever.changed(case, value)
         same = other.segments is case.segments and other.mechanism is case.mechanism
-        return excess(other, known if same else None)
+        return excess(other, known if same else ())
 
     best: float | None = None
     for bound in lever.bounds(present):
@@ -374,15 +393,17 @@ def _narrowed(
     return high
 
 
-def other_parts(case: Case, demand: Demand, motor: int, gearhead: int, drive: int) -> tuple[PartAnswer, ...]:
+def other_parts(
+    case: Case, cycles: tuple[CycleDemand, ...], motor: int, gearhead: int, drive: int
+) -> tuple[PartAnswer, ...]:
     """The cheapest other motor, gearhead or drive that alone lets the set pass.
 
     Parameters
     ----------
     case : Case
         The whole case. [-]
-    demand : Demand
-        Its cycle. [-]
+    cycles : tuple of CycleDemand
+        Its cycles. [-]
     motor, gearhead, drive : int
         The set, by index into the catalogs. [-]
 
@@ -407,7 +428,7 @@ def other_parts(case: Case, demand: Demand, motor: int, gearhead: int, drive: in
         if len(others):
             index = np.tile(base, (len(others), 1))
             index[:, column] = others
-            verdicts = judge_sets(evaluate_sets(case, demand, index), checks, limits)
+            verdicts = judge_sets(evaluate_cycles(cycles, index), checks, limits)
             good = others[verdicts.verdict < ORDER.index(FAILS)]
             if len(good):
                 cost = np.nan_to_num(price[good], nan=np.inf)
@@ -417,7 +438,7 @@ def other_parts(case: Case, demand: Demand, motor: int, gearhead: int, drive: in
 
 
 def levers_of(
-    case: Case, demand: Demand, motor: int, gearhead: int, drive: int
+    case: Case, cycles: tuple[CycleDemand, ...], motor: int, gearhead: int, drive: int
 ) -> tuple[Mapping[str, Any], ...]:
     """Every lever of one failing set, for results and report.
 
@@ -425,8 +446,8 @@ def levers_of(
     ----------
     case : Case
         The whole case. [-]
-    demand : Demand
-        Its cycle. [-]
+    cycles : tuple of CycleDemand
+        Its cycles. [-]
     motor, gearhead, drive : int
         The set, by index into the catalogs. [-]
 
@@ -436,7 +457,7 @@ def levers_of(
         Keys lever, title, unit, present, needed (None: no change of this lever helps), helps. [-]
     """
     one = single(case, motor, gearhead, drive)
-    found = (smallest_change(one, lever, demand) for lever in LEVERS)
+    found = (smallest_change(one, lever, cycles) for lever in LEVERS)
     answers: list[LeverAnswer | PartAnswer] = [answer for answer in found if answer is not None]
-    answers += other_parts(case, demand, motor, gearhead, drive)
+    answers += other_parts(case, cycles, motor, gearhead, drive)
     return tuple(answer.as_mapping() for answer in answers)

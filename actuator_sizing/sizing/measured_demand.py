@@ -28,7 +28,7 @@ _GROUP = 32  # stretches of which only the largest and the smallest torque can b
 _FAN = 5  # directions of each of three axes in which extremes are looked for
 
 
-def recorded_pieces(case: Case, recording: Recording) -> dict[str, Any]:
+def recorded_pieces(case: Case, recording: Recording, *, in_order: bool = False) -> dict[str, Any]:
     """Fields of a `Demand` for a recorded cycle.
 
     Parameters
@@ -37,6 +37,8 @@ def recorded_pieces(case: Case, recording: Recording) -> dict[str, Any]:
         The axis. [-]
     recording : Recording
         The record as understood. [-]
+    in_order : bool
+        Never condense.
 
     Returns
     -------
@@ -46,7 +48,7 @@ def recorded_pieces(case: Case, recording: Recording) -> dict[str, Any]:
     borders = np.unique(np.concatenate([recording.time_s, recording.motion.knots_s]))
     borders = borders[np.diff(borders, prepend=-1.0) > 1e-12 * recording.motion.period_s]
     borders[0], borders[-1] = 0.0, recording.motion.period_s
-    if len(borders) <= EXACT_INTERVALS:
+    if in_order or len(borders) <= EXACT_INTERVALS:
         return _finished(_nodes(case, recording, _split(case, recording, borders)))
     return _condensed(case, recording, borders)
 

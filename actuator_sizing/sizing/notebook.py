@@ -27,11 +27,13 @@ def checks_frame(checks: Iterable[CheckResult]) -> pd.DataFrame:
     Returns
     -------
     pandas.DataFrame
-        Columns title, demand, capacity, unit, utilisation, allowed, verdict, at_time_s, segment. [-]
+        Columns title, demand, capacity, unit, utilisation, allowed, verdict, at_time_s, segment,
+        and cycle where cycles have names. [-]
     """
     import pandas as pd
 
-    names = (
+    checks = tuple(checks)
+    names: tuple[str, ...] = (
         "title",
         "demand",
         "capacity",
@@ -42,6 +44,8 @@ def checks_frame(checks: Iterable[CheckResult]) -> pd.DataFrame:
         "at_time_s",
         "segment",
     )
+    if any(check.cycle for check in checks):
+        names = (*names, "cycle")
     rows = [
         {name: getattr(check, name) for name in names} | {"verdict": check.shown_verdict} for check in checks
     ]

@@ -97,7 +97,13 @@ def course(
     -----
     ``i = T/K`` (saturation solved), ``u = √((R i + K ω + L di/dt)² + (p ω L i)²)``.
     """
-    torque, omega, at_shaft = air_gap_torque(demand, motors, gearheads)
+    return electrical_course(demand, *air_gap_torque(demand, motors, gearheads), judged)
+
+
+def electrical_course(
+    demand: Demand, torque: FloatArray, omega: FloatArray, at_shaft: FloatArray, judged: JudgedMotor
+) -> PairCourse:
+    """Current and voltage at the nodes for what `air_gap_torque` gives, at the temperatures of `judged`."""
     current = current_of_torque(
         torque, per_pair(judged.torque_constant_nm_per_a), per_pair(judged.saturation_per_a2)
     )
@@ -151,7 +157,10 @@ def heat_loss(demand: Demand, motors: MotorParameters, judged: JudgedMotor, c: P
     """
     cold = (judged.torque_constant_nm_per_a / motors.torque_constant_nm_per_a)[:, None, None]
     copper = per_pair(motors.resistance_ohm) * (c.current_a * cold) ** 2
-    by_speed = speed_loss(motors, c.motor_speed_rad_s)
+    released = ~(
+        demand.brake_closed & (demand.direction == 0.0)
+    )  # the coil of the brake heats the housing too
+    by_speed = speed_loss(motors, c.motor_speed_rad_s) + per_pair(motors.brake_coil_w) * released[:, None]
     tau = fastest_time_constant(motors)
     shortest = float(np.nanmin(tau)) if np.isfinite(tau).any() else np.inf
     duration = demand.duration_s

@@ -76,7 +76,15 @@ def questions_of(results: tuple[SetResult, ...]) -> tuple[tuple[str, str, str], 
         for check in result.checks:
             if check.verdict != NOT_CHECKED:
                 continue
-            part = {"drive": result.drive, "gearhead": result.gearhead or ""}.get(check.group, result.motor)
-            for datum in check.missing or ("data of the part",):
-                asked[(part, datum, check.title)] = None
+            names = {
+                "motors": result.motor,
+                "gearheads": result.gearhead or "",
+                "drives": result.drive,
+                "axis": "axis",
+            }
+            own = names[{"drive": "drives", "gearhead": "gearheads"}.get(check.group, "motors")]
+            if not check.missing:
+                asked[(own, "data of the part", check.title)] = None
+            for datum, table in zip(check.missing, check.missing_from, strict=True):
+                asked[(names.get(table, own), datum, check.title)] = None
     return tuple(asked)

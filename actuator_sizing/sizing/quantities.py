@@ -6,20 +6,22 @@ from typing import Any
 
 import numpy as np
 
+from actuator_sizing.core.duty_types import usual_times
+from actuator_sizing.core.overload_heat import insulation_life_factor
 from actuator_sizing.core.parameters import CURRENT_BASES
 from actuator_sizing.core.permissible_load import LoadedMachine, intermittent_current, short_time_current
 from actuator_sizing.core.warm_up import temperatures_after, warm_up
 from actuator_sizing.sizing.bus import bus_quantities
 from actuator_sizing.sizing.checks import Sets
+from actuator_sizing.sizing.checks.drive_limits import pwm_ripple
 from actuator_sizing.sizing.checks.motor import current_limited_torque
+from actuator_sizing.sizing.energy import energy_quantities
 from actuator_sizing.sizing.set_model import SetModel
 from actuator_sizing.sizing.stops import stop_quantities
 
-#: Usual short times, cyclic duration factors, and the cycle that the latter refer to when nothing else is
-#: said; practice around IEC 60034-1 (from memory).
+#: Usual short times and cyclic duration factors; practice around IEC 60034-1 (from memory).
 SHORT_TIMES_MIN = (10, 30, 60)
 DUTY_FACTORS_PERCENT = (15, 25, 40, 60)
-INTERMITTENT_CYCLE_S = 600.0
 COMMISSIONING_TIMES_S = (600.0, 1800.0, 3600.0)
 
 _FROM_PAIRS = (
@@ -27,12 +29,12 @@ _FROM_PAIRS = (
     "current_peak_a", "current_rms_a",
     "speed_peak_rad_s", "speed_rms_rad_s", "speed_mean_abs_rad_s",
     "voltage_peak_v", "voltage_peak_without_inductance_v", "voltage_peak_at_steps_v", "voltage_available_v",
-    "copper_loss_mean_w", "friction_loss_mean_w",
+    "copper_loss_mean_w", "cable_loss_mean_w", "friction_loss_mean_w",
     "energy_airgap_motoring_j", "energy_airgap_regenerated_j",
     "energy_shaft_motoring_j", "energy_shaft_regenerated_j",
     "energy_terminals_motoring_j", "energy_terminals_regenerated_j", "power_terminals_peak_w",
     "winding_max_degc", "winding_min_degc", "winding_mean_degc", "housing_max_degc", "housing_mean_degc",
-    "inertia_ratio", "resistance_ohm", "torque_constant_nm_per_a", "judged_winding_degc", "magnet_degc",
+    "inertia_ratio", "resistance_ohm", "cable_ohm", "torque_constant_nm_per_a", "judged_winding_degc", "magnet_degc",
 )  # fmt: skip
 
 
@@ -62,10 +64,21 @@ def quantities(model: SetModel, sets: Sets, index: int) -> dict[str, Any]:
     answer["drive_current_peak_a"] = _known(sets.drive_current_peak_a[index])
     answer["drive_current_rms_a"] = _known(sets.drive_current_rms_a[index])
     answer["drive_current_basis"] = CURRENT_BASES[int(model.drive.current_basis[0])]
+    ripple, loss = pwm_ripple(sets)
+    answer["pwm_ripple_current_a"], answer["pwm_ripple_loss_w"] = _known(ripple[index]), _known(loss[index])
     answer.update(bus_quantities(sets, index))
+    answer.update(energy_quantities(model, sets, index))
     answer.update(stop_quantities(sets, index))
     answer.update(_step_quantities(model))
+    answer["insulation_life_factor_ratio"] = _insulation_life(model, answer["winding_max_degc"])
     return answer
+
+
+def _insulation_life(model: SetModel, winding_max_degc: float | None) -> float | None:
+    """Life of the insulation over its life at the winding limit, by the rule of thumb; None where not known."""
+    if winding_max_degc is None:
+        return None
+    return _known(insulation_life_factor(winding_max_degc, float(model.motor.winding_limit_degc[0])))
 
 
 def _known(value: Any) -> float | None:
@@ -132,9 +145,8 @@ def _permissible_currents(model: SetModel) -> dict[str, Any]:
         key = f"permissible_short_time_{minutes}_min_current_a"
         answer[key] = _known(short_time_current(machine, 60.0 * minutes))
     for percent in DUTY_FACTORS_PERCENT:
-        on = INTERMITTENT_CYCLE_S * percent / 100.0
         key = f"permissible_intermittent_{percent}_percent_current_a"
-        answer[key] = _known(intermittent_current(machine, on, INTERMITTENT_CYCLE_S - on))
+        answer[key] = _known(intermittent_current(machine, *usual_times(percent / 100.0)))
     return answer
 
 

@@ -6,9 +6,10 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
-from actuator_sizing.core.machine import amplitude_per_unit_current
+from actuator_sizing.core.machine import amplitude_per_unit_current, motor_amplitude_per_unit_current
 from actuator_sizing.sizing.checks import Sets
-from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.cycles import CycleDemand
+from actuator_sizing.sizing.derating import derated_drives
 from actuator_sizing.sizing.evaluation import evaluate_pairs
 from actuator_sizing.sizing.fitting import compatible
 from actuator_sizing.sizing.judging import Verdicts
@@ -19,49 +20,65 @@ IndexArray = NDArray[np.intp]
 RANKINGS = ("price", "mass", "reserve", "energy")
 
 
-def ranking_key(case: Case, sets: Sets, verdicts: Verdicts, index: IndexArray, ranked_by: str) -> FloatArray:
+def ranking_key(
+    case: Case, several: tuple[Sets, ...], verdicts: Verdicts, index: IndexArray, ranked_by: str
+) -> FloatArray:
     """Smaller is better, shape (S,); infinite where not known.
 
     Parameters
     ----------
     case : Case
         The case. [-]
-    sets : Sets
-        Evaluated sets. [-]
+    several : tuple of Sets
+        Evaluated sets, once for each cycle. [-]
     verdicts : Verdicts
         Their verdicts. [-]
     index : ndarray of int, shape (S, 3)
         Motor, gearhead and drive. [-]
     ranked_by : str
         Price or mass of the three parts, utilisation over allowed of the governing check, or energy taken
-        at the motor terminals per cycle (less what comes back, if the supply feeds back). [-]
+        at the motor terminals per cycle (less what comes back, if the supply feeds back); of several cycles per
+        second of the mix, or of the first where no mix is stated. [-]
 
     Returns
     -------
     ndarray, shape (S,)
-        In the currency of the catalogs, kg, 1 or J. [-]
+        In the currency of the catalogs, kg, 1, J or W. [-]
     """
+    sets = several[0]
     if ranked_by == "reserve":
         key = verdicts.severity
     elif ranked_by == "energy":
-        key = sets.pairs.energy_terminals_motoring_j
-        if case.options.get("supply feeds back") == "yes":
-            key = key - sets.pairs.energy_terminals_regenerated_j
+        key = np.asarray(_weights(several)) @ np.array([_energy(case, each) for each in several])
     else:
         name = "price" if ranked_by == "price" else "mass_kg"
         key = sum(getattr(part, name) for part in (sets.motors, sets.gearheads, sets.drives))
     return np.asarray(np.nan_to_num(np.asarray(key, dtype=float), nan=np.inf))
 
 
-def nearest_drives(case: Case, demand: Demand, pairs: IndexArray) -> IndexArray:
+def _energy(case: Case, sets: Sets) -> FloatArray:
+    """Energy per run of one cycle that the motor takes for good, shape (S,). [J]"""
+    taken = sets.pairs.energy_terminals_motoring_j
+    if case.options.get("supply feeds back") == "yes":
+        taken = taken - sets.pairs.energy_terminals_regenerated_j
+    return taken
+
+
+def _weights(several: tuple[Sets, ...]) -> list[float]:
+    """What one run of each cycle counts: runs per second of the mix, else the first cycle alone."""
+    cycles = [sets.case.cycle for sets in several]
+    if all(np.isnan(cycle.share) for cycle in cycles):
+        return [float(number == 0) for number in range(len(cycles))]
+    return [float(np.nan_to_num(cycle.share)) / cycle.duration_s for cycle in cycles]
+
+
+def nearest_drives(cycles: tuple[CycleDemand, ...], pairs: IndexArray) -> IndexArray:
     """The drive that shows each losing pair at its best: large enough, then cheapest.
 
     Parameters
     ----------
-    case : Case
-        The case. [-]
-    demand : Demand
-        The cycle. [-]
+    cycles : tuple of CycleDemand
+        The cycles of the case. [-]
     pairs : ndarray of int, shape (L, 2)
         Motor and gearhead of losing pairs. [-]
 
@@ -72,15 +89,19 @@ def nearest_drives(case: Case, demand: Demand, pairs: IndexArray) -> IndexArray:
     """
     if not len(pairs):
         return np.empty((0, 3), dtype=np.intp)
+    case = cycles[0].case
     motors = case.motor_parameters.take(pairs[:, 0])
-    results = evaluate_pairs(demand, motors, case.gearhead_parameters.take(pairs[:, 1]), case.surroundings)
-    drives, s = case.drive_parameters, case.surroundings
-    amplitude = amplitude_per_unit_current(motors.current_basis)[:, None]
+    gearheads = case.gearhead_parameters.take(pairs[:, 1])
+    results = [evaluate_pairs(each.demand, motors, gearheads, case.surroundings) for each in cycles]
+    peak = np.max([each.current_peak_a for each in results], axis=0)
+    rms = np.max([each.current_rms_a for each in results], axis=0)
+    drives, s = derated_drives(case), case.surroundings
+    amplitude = motor_amplitude_per_unit_current(motors)[:, None]
     per_drive = amplitude_per_unit_current(drives.current_basis)[None, :]
     with np.errstate(invalid="ignore"):
         need = np.fmax(
-            results.current_peak_a[:, None] * amplitude / (drives.peak_current_a * per_drive),
-            results.current_rms_a[:, None] * amplitude / (drives.continuous_current_a * per_drive),
+            peak[:, None] * amplitude / (drives.peak_current_a * per_drive),
+            rms[:, None] * amplitude / (drives.continuous_current_a * per_drive),
         )
         bus = np.fmax(s.bus_max_v / drives.bus_voltage_max_v, drives.bus_voltage_min_v / s.bus_min_v)
     need = np.fmax(need, np.nan_to_num(bus, nan=0.0)[None, :])

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from functools import cached_property
 from typing import TYPE_CHECKING, Any
 
@@ -17,6 +17,7 @@ if TYPE_CHECKING:
     from actuator_sizing.sizing.demand import Demand
     from actuator_sizing.sizing.robustness.results import Robustness
     from actuator_sizing.sizing.simulation_results import Simulation
+    from actuator_sizing.sizing.stop_courses import StopCourses
 
 PASSES = "passes"
 LOW_RESERVE = "passes, low reserve"
@@ -37,7 +38,7 @@ class CheckResult:
 
     check: str  # key, e.g. "winding_temperature"
     title: str  # as printed, e.g. "Winding temperature"
-    group: str  # "motor", "drive", "gearhead", "axis"
+    group: str  # "motor", "drive", "gearhead", "mechanism", "axis"
     demand: float | None
     capacity: float | None
     unit: str  # SI unit of demand and capacity
@@ -51,8 +52,15 @@ class CheckResult:
     source: str
     working: str  # the formula with the numbers put in, so that a calculator confirms it
     missing: tuple[str, ...] = ()
+    missing_from: tuple[str, ...] = ()  # for each of them the table that lacks it; "" where it is no table
     inputs: tuple[tuple[str, str], ...] = ()  # (input used, origin)
     is_advice: bool = False
+    cycle: str | None = None  # the cycle in which it is nearest to its limit; None where cycles have no names
+
+    @property
+    def where(self) -> str:
+        """Cycle and segment in which it governs, for one line; empty where neither is known."""
+        return ": ".join(part for part in (self.cycle, self.segment) if part)
 
     @property
     def shown_verdict(self) -> str:
@@ -99,7 +107,8 @@ class SetDetail:
     #: winding_degc and housing_degc against time_s over one cycle in periodic steady state (None: no equilibrium)
     periodic_temperature: pd.DataFrame | None
     #: the same from cold (both at ambient) until periodic or until past the limit: time_s, winding_degc,
-    #: housing_degc and, where it ripples, winding_low_degc, winding_high_degc (None: data missing)
+    #: housing_degc and, where it ripples, winding_low_degc, winding_high_degc (None: data missing); of a cycle that
+    #: does not repeat its one run, with the first of the cycle that follows
     warm_up: pd.DataFrame | None
     #: against speed_rad_s: torque_peak_min_bus_nm, torque_peak_nominal_bus_nm, torque_peak_max_bus_nm,
     #: torque_continuous_nm (NaN where out of reach or not known), all air-gap torque
@@ -112,8 +121,22 @@ class SetDetail:
     #: one row per segment of the duty cycle: torque_rms_nm, current_rms_a and current_squared_a2_s, the integral
     #: of the squared current over the segment; their sum over the cycle time is the squared RMS current
     segments: pd.DataFrame | None = None
+    #: every way of stopping from its worst instant (None: nothing asks for it)
+    stops: StopCourses | None = None
     #: simulates the cycle under the default loops, when somebody asks for it (None: it was not prepared)
     simulation: Callable[[], Simulation | None] | None = None
+
+
+@dataclass(frozen=True)
+class CycleOfSet:
+    """One set in one of several cycles, judged as if the case had no other."""
+
+    name: str
+    verdict: str
+    governing_check: str
+    checks: Checks
+    quantities: Mapping[str, Any]
+    detail: SetDetail | None = None  # of the leading set
 
 
 @dataclass(frozen=True)
@@ -136,6 +159,10 @@ class SetResult:
     drive_index: int
     detail: SetDetail | None = None
     levers: tuple[Mapping[str, Any], ...] = ()
+    #: the set in each of several cycles; empty where there is one. Its own checks then are the worst of them, its
+    #: quantities those of the first
+    cycles: tuple[CycleOfSet, ...] = ()
+    mix: Mapping[str, Any] | None = None  # weighed quantities; None where the cycles have no shares of time
 
     @property
     def label(self) -> str:
@@ -190,6 +217,16 @@ class Rejections:
     confirmed_passing: int  # pass by exact evaluation
     evaluated: int  # evaluated exactly
     complete: bool  # every survivor was evaluated exactly
+    misfits: Mapping[str, int] = field(default_factory=dict)  # why sets are incompatible -> number of sets
+
+
+@dataclass(frozen=True)
+class CycleResult:
+    """One of several cycles of a case."""
+
+    case: Case  # with this cycle alone
+    demand: Demand
+    quantities: Mapping[str, Any]  # as `Comparison.cycle`
 
 
 @dataclass(frozen=True)
@@ -207,6 +244,43 @@ class Comparison:
     questions: tuple[tuple[str, str, str], ...] = field(default=())  # (part, data missing, check not made)
     inertias: tuple[InertiaShare, ...] = ()  # inertia inventory; empty where the case has none
     version: str = ""
+    cycles: tuple[CycleResult, ...] = ()  # where there are several; `demand` and `cycle` are of the first
+
+    def by_cycle(self) -> tuple[Comparison, ...]:
+        """The comparison once for each cycle, its leading set shown in that cycle alone."""
+        if not self.cycles:
+            return (self,)
+        best = self.sets[0]
+        return tuple(
+            replace(
+                self,
+                case=each.case,
+                demand=each.demand,
+                cycle=each.quantities,
+                cycles=(),
+                sets=(
+                    replace(
+                        best,
+                        verdict=own.verdict,
+                        governing_check=own.governing_check,
+                        checks=own.checks,
+                        quantities=own.quantities,
+                        detail=own.detail,
+                        cycles=(),
+                    ),
+                    *self.sets[1:],
+                ),
+            )
+            for each, own in zip(self.cycles, best.cycles, strict=True)
+        )
+
+    @property
+    def governing(self) -> Comparison:
+        """The comparison in the cycle in which the leading set is nearest to its limit."""
+        if not self.cycles or not self.sets:
+            return self
+        name = self.sets[0].check(self.sets[0].governing_check).cycle
+        return next(each for each in self.by_cycle() if each.case.cycle.name == name)
 
     @property
     def best(self) -> SetResult:

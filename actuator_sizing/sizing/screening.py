@@ -7,7 +7,8 @@ counted under the worst of their checks, the others under the worst check of the
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterator, Mapping
+from concurrent.futures import Executor
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -15,21 +16,22 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
-from actuator_sizing.core.machine import amplitude_per_unit_current
-from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
+from actuator_sizing.sizing.cycles import CycleDemand
 from actuator_sizing.sizing.demand import Demand
 from actuator_sizing.sizing.drive_side import DriveSide
+from actuator_sizing.sizing.executing import Interruption, work_through
 from actuator_sizing.sizing.fitting import compatible, fits_axis
-from actuator_sizing.sizing.tallies import Losses, Pool
+from actuator_sizing.sizing.shard import PAIRS_PER_TILE, Common, Found, Load, Shard, drive_keys, screen_shard
 
 if TYPE_CHECKING:
+    from actuator_sizing.sizing.checkpoint import Checkpoint
     from actuator_sizing.sizing.checks.base import Check
 
 FloatArray = NDArray[np.float64]
 
-_MOTORS_PER_BLOCK, _GEARHEADS_PER_BLOCK = 2048, 16  # arrays of 256 kB stay in the L2 cache
+_MOTORS_PER_BLOCK = 2048
+_PAIRS_PER_SHARD = 2**23  # a few tenths of a second
 LISTED_SETS = 200_000  # up to so many sets, each loser is listed with what governs it
-_ROUNDING = 1e-5  # of single precision: bounds reject only beyond this part above the allowed value
 
 
 @dataclass(frozen=True)
@@ -56,13 +58,15 @@ class Screened:
 
 def screen(
     case: Case,
-    demand: Demand,
+    demand: Demand | tuple[CycleDemand, ...],
     checks: tuple[Check, ...],
     allowed: Mapping[str, float],
     key: str,
     *,
     keep: int,
     losers: int,
+    executor: Executor | None = None,
+    checkpoint: Checkpoint | None = None,
     progress: Callable[[float], None] | None = None,
 ) -> Screened:
     """Screen every set of a case.
@@ -71,8 +75,8 @@ def screen(
     ----------
     case : Case
         The case with its catalogs. [-]
-    demand : Demand
-        The cycle at the driven shaft. [-]
+    demand : Demand or tuple of CycleDemand
+        The cycle at the driven shaft; every cycle, where there are several: of each bound the largest counts. [-]
     checks : tuple of Check
         Checks that can fail a set. [-]
     allowed : mapping
@@ -83,6 +87,10 @@ def screen(
         Most survivors kept. [-]
     losers : int
         Most nearest losers kept. [-]
+    executor : Executor, optional
+        Where the shards are worked out; default: here, one after the other. The answer is the same, bit for bit. [-]
+    checkpoint : Checkpoint, optional
+        Where what was found is kept, so that a stopped screening can go on. [-]
     progress : callable, optional
         Called with the part done, 0 to 1. [-]
 
@@ -90,39 +98,34 @@ def screen(
     -------
     Screened
         Counts, survivors and nearest losers. [-]
+
+    Raises
+    ------
+    StoppedError
+        If the work is interrupted and a checkpoint keeps what was found.
     """
     motor_index, gearhead_index = fits_axis(case)
-    # Motors that the same drives serve lie together: their sets are then counted in one stroke.
-    motor_index = motor_index[np.argsort(case.motor_parameters.commutation[motor_index], kind="stable")]
     drives = case.drive_parameters
     total = len(case.motor_parameters) * len(case.gearhead_parameters) * len(drives)
-    bounded = tuple(check for check in checks if check.bound is not None)
-    drive_side = DriveSide(case, allowed)
-    names = (*(check.key for check in bounded), *drive_side.names)
-    losses = Losses(names, listed=total <= LISTED_SETS)
-    pools = (Pool(keep), Pool(losers), Pool(losers))
-    run = _Run(case, bounded, allowed, drive_side, key, *pools, losses)
-    gearhead_side = GearheadSide.of(case.gearhead_parameters.take(gearhead_index), demand)
-    gearhead_parts = [
-        (
-            gearhead_index[start : start + _GEARHEADS_PER_BLOCK],
-            gearhead_side.part(slice(start, start + _GEARHEADS_PER_BLOCK)),
-        )
-        for start in range(0, len(gearhead_index), _GEARHEADS_PER_BLOCK)
-    ]
-    recommended = case.number("recommended inertia ratio")
-    survivors = screened = 0
-    for start in range(0, len(motor_index), _MOTORS_PER_BLOCK):
-        m = motor_index[start : start + _MOTORS_PER_BLOCK]
-        motor_side = MotorSide.of(case.motor_parameters.take(m), case.surroundings)
-        served = compatible(motor_side.motors, drives)
-        for g, part in gearhead_parts:
-            block = Block(demand, case.surroundings, recommended, motor_side, part)
-            with np.errstate(over="ignore"):  # immense ratios stand for what is out of reach
-                survivors += _screen_tile(run, _Tile(block, m, g, served))
-        screened += int(served.sum()) * len(gearhead_index)
-        if progress is not None:
-            progress((start + len(m)) / len(motor_index))
+    common = Common(
+        loads=_loads(demand),
+        surroundings=case.surroundings,
+        recommended_inertia_ratio=case.number("recommended inertia ratio"),
+        check_keys=tuple(check.key for check in checks if check.bound is not None),
+        allowed=dict(allowed),
+        gearheads=case.gearhead_parameters.take(gearhead_index),
+        gearhead_index=gearhead_index,
+        drive_side=DriveSide(case, allowed),
+        drive_key=drive_keys(key, drives),
+        key=key,
+        keep=keep,
+        losers=losers,
+        listed=total <= LISTED_SETS,
+    )
+    shards = tuple(_shards(case, motor_index, len(gearhead_index)))
+    found = _work(common, shards, executor, checkpoint, progress)
+    screened = sum(shard.pairs * len(shard.drives) for shard in shards)
+    losses = found.losses
     counts: dict[str, int] = {}
     for name, number in zip(losses.names, losses.counts, strict=True):
         counts[name] = counts.get(name, 0) + int(number)
@@ -132,10 +135,10 @@ def screen(
         incompatible=total - screened,
         screened=screened,
         rejected_by_check={name: count for name, count in counts.items() if count},
-        survivor_count=survivors,
-        survivors=run.pool.sorted(3),
-        nearest_losers=run.nearest.sorted(2),
-        nearest_by_drive=run.by_drive.sorted(3),
+        survivor_count=found.survivor_count,
+        survivors=found.survivors.best()[0],
+        nearest_losers=found.losers.best()[0],
+        nearest_by_drive=found.by_drive.best()[0],
         lost=lost,
         lost_check=lost_check,
         lost_bound=lost_bound,
@@ -143,137 +146,67 @@ def screen(
     )
 
 
-@dataclass(frozen=True)
-class _Run:
-    """What all blocks of one screening share: how to judge, and where to put what is found."""
-
-    case: Case
-    checks: tuple[Check, ...]
-    allowed: Mapping[str, float]
-    drive_side: DriveSide
-    key: str
-    pool: Pool
-    nearest: Pool
-    by_drive: Pool
-    losses: Losses
+def _loads(demand: Demand | tuple[CycleDemand, ...]) -> tuple[Load, ...]:
+    if isinstance(demand, tuple):
+        return tuple(Load(each.demand, each.cycle.runs) for each in demand)
+    return (Load(demand),)
 
 
-@dataclass(frozen=True)
-class _Tile:
-    """One block with the place of its N gearheads and M motors in the catalogs."""
-
-    block: Block
-    motor_index: NDArray[np.intp]  # (M,)
-    gearhead_index: NDArray[np.intp]  # (N,)
-    served: NDArray[np.bool_]  # (M, D) which drive can commutate which motor
-
-    def pairs(self, gearhead: NDArray[np.intp], motor: NDArray[np.intp]) -> NDArray[np.intp]:
-        """Catalog rows of motor and gearhead for places in the block, shape (n, 2)."""
-        return np.column_stack([self.motor_index[motor], self.gearhead_index[gearhead]])
-
-
-def _screen_tile(run: _Run, tile: _Tile) -> int:
-    """Screen one block; returns how many sets survive."""
-    losses = run.losses
-    gearhead_worst, gearhead_check, others = _utilisations(run, tile.block)
-    worst = np.broadcast_to(gearhead_worst, tile.block.mean_square.shape).copy()
-    for _, utilisation in others:
-        np.fmax(worst, utilisation, out=worst)  # NaN, not known, is never the worst
-    fails = worst > 1.0 + _ROUNDING
-
-    drives_per_motor = tile.served.sum(axis=1)
-    left = fails.copy()
-    by_gearhead = (
-        (number, np.where(gearhead_check == number, gearhead_worst, np.nan))
-        for number in np.unique(gearhead_check).tolist()
-    )
-    for number, utilisation in (*others, *by_gearhead):
-        governed = utilisation == worst
-        governed &= left
-        left ^= governed
-        losses.count(number, governed, drives_per_motor)
-        if losses.listed:
-            j, i, drive = np.nonzero(governed[:, :, None] & tile.served)
-            losses.keep(np.column_stack([tile.pairs(j, i), drive]), np.full(len(i), number), worst[j, i])
-    j, i = np.nonzero(fails & (worst <= run.nearest.bar) & (drives_per_motor > 0))
-    if len(i):
-        run.nearest.add(tile.pairs(j, i), worst[j, i])
-    return _screen_drives(run, tile, ~fails, worst)
+def _shards(case: Case, motor_index: NDArray[np.intp], gearheads: int) -> Iterator[Shard]:
+    """Motors in blocks that the same drives serve, against as many gearheads as make a shard."""
+    commutation = case.motor_parameters.commutation[motor_index]
+    number = 0
+    for kind in np.unique(commutation):
+        members = motor_index[commutation == kind]
+        one = case.motor_parameters.take(members[:1])
+        drives = np.flatnonzero(compatible(one, case.drive_parameters)[0])
+        if not len(drives):
+            continue
+        for start in range(0, len(members), _MOTORS_PER_BLOCK):
+            block = members[start : start + _MOTORS_PER_BLOCK]
+            motors = case.motor_parameters.take(block)
+            tile = max(1, PAIRS_PER_TILE // len(block))
+            span = tile * max(1, _PAIRS_PER_SHARD // (tile * len(block)))
+            for first in range(0, gearheads, span):
+                yield Shard(number, motors, block, drives, first, min(first + span, gearheads))
+                number += 1
 
 
-def _utilisations(
-    run: _Run, block: Block
-) -> tuple[FloatArray, NDArray[np.intp], list[tuple[int, FloatArray]]]:
-    """Utilisation over allowed of every motor and gearhead check.
+def _work(
+    common: Common,
+    shards: tuple[Shard, ...],
+    executor: Executor | None,
+    checkpoint: Checkpoint | None,
+    progress: Callable[[float], None] | None,
+) -> Found:
+    """Work the shards out and add up what they found, going on from a checkpoint where there is one."""
+    found = Found.nothing(common)
+    done: set[int] = set()
+    if checkpoint is not None:
+        found, done = checkpoint.load(found)
+    pairs = sum(shard.pairs for shard in shards)
+    worked = sum(shard.pairs for shard in shards if shard.number in done)
 
-    Those that depend on the gearhead alone come as the worst of them and which it is, both (N, 1); the others
-    with their number in the list of checks, each (N, M).
-    """
-    worst = np.zeros((len(block.gearheads), 1))
-    check_number = np.zeros(worst.shape, dtype=np.intp)
-    others = []
-    for number, check in enumerate(run.checks):
-        assert check.bound is not None
-        utilisation = check.bound(block)
-        if run.allowed[check.key] != 1.0:
-            utilisation = utilisation / run.allowed[check.key]
-        if check.group == "gearhead":
-            utilisation = np.where(block.gearheads.is_direct[:, None], 0.0, utilisation)
-            higher = utilisation > worst
-            worst = np.where(higher, utilisation, worst)
-            check_number = np.where(higher, number, check_number)
-        else:
-            others.append((number, utilisation))
-    return worst, check_number, others
+    def tasks() -> Iterator[tuple[Shard, tuple[object, ...]]]:
+        for shard in shards:
+            if shard.number not in done:
+                yield shard, (common, shard, found.bars)
 
-
-def _screen_drives(run: _Run, tile: _Tile, passing: NDArray[np.bool_], worst: FloatArray) -> int:
-    """Hold the pairs that may pass against every drive; returns how many sets survive."""
-    side, block, losses = run.drive_side, tile.block, run.losses
-    columns, rows = np.nonzero(passing)  # gearheads, motors
-    amplitude = amplitude_per_unit_current(block.motors.current_basis)
-    total = 0
-    step = max(1, 2**16 // max(1, len(side)))
-    for start in range(0, len(rows), step):
-        r, c = rows[start : start + step], columns[start : start + step]
-        ok = tile.served[r]
-        stack = side.utilisations(
-            block.current_peak[c, r] * amplitude[r], block.current_rms[c, r] * amplitude[r]
-        )
-        drive_worst = stack.max(axis=0)
-        survives = ok & (drive_worst <= 1.0 + _ROUNDING)
-        check = len(run.checks) + stack.argmax(axis=0)
-        out_row, out_drive = np.nonzero(ok & ~survives)
-        losses.add(check[out_row, out_drive], np.ones(len(out_row), dtype=np.intp))
-        lost = np.column_stack([tile.pairs(c[out_row], r[out_row]), out_drive])
-        losses.keep(lost, check[out_row, out_drive], drive_worst[out_row, out_drive])
-        run.by_drive.add(lost, drive_worst[out_row, out_drive])
-        k, d = np.nonzero(survives)
-        total += len(k)
-        if len(k):
-            sets = np.column_stack([tile.pairs(c[k], r[k]), d])
-            bound = np.maximum(worst[c[k], r[k]], drive_worst[k, d])
-            run.pool.add(sets, _key(run, block, sets, r[k], c[k], bound))
-    return total
-
-
-def _key(
-    run: _Run,
-    block: Block,
-    sets: NDArray[np.intp],
-    row: NDArray[np.intp],
-    column: NDArray[np.intp],
-    bound: FloatArray,
-) -> FloatArray:
-    """What the survivors are ordered by; smaller is better, unknown comes last."""
-    case = run.case
-    if run.key == "reserve":
-        return bound
-    if run.key == "energy":
-        j = block.judged
-        loss = j.resistance_ohm[row] / j.torque_constant_nm_per_a[row] ** 2 * block.mean_square[column, row]
-        return np.asarray(loss)
-    name = "price" if run.key == "price" else "mass_kg"
-    parts = (case.motor_parameters, case.gearhead_parameters, case.drive_parameters)
-    total = sum(getattr(part, name)[index] for part, index in zip(parts, sets.T, strict=True))
-    return np.asarray(np.nan_to_num(np.asarray(total), nan=np.finfo(float).max))
+    with Interruption(held_back=checkpoint is not None) as interruption:
+        try:
+            for shard, part in work_through(screen_shard, tasks(), executor):
+                found = found.with_found(part)
+                done.add(shard.number)
+                worked += shard.pairs
+                if checkpoint is not None:
+                    checkpoint.save(found, done, worked / pairs)
+                if progress is not None:
+                    progress(worked / pairs)
+                interruption.raise_if_requested()
+        except KeyboardInterrupt:
+            if checkpoint is None:
+                raise
+            raise checkpoint.stopped(found, done, worked / pairs) from None
+    if checkpoint is not None:
+        checkpoint.save(found, done, 1.0, at_once=True)
+    return found

@@ -8,6 +8,7 @@ from actuator_sizing.core.parameters import GearheadParameters, MotorParameters
 from actuator_sizing.core.step_response import StepResponse, voltage_step
 from actuator_sizing.core.thermal import HeatLoss, ThermalNetwork
 from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.derating import derated_drives
 from actuator_sizing.sizing.pair_course import PairCourse, course, heat_loss
 from actuator_sizing.sizing.thermal_data import thermal_network
 
@@ -20,7 +21,7 @@ class SetModel:
         self.case, self.demand = case, demand
         self.motor: MotorParameters = case.motor_parameters.take(slice(motor, motor + 1))
         self.gearhead: GearheadParameters = case.gearhead_parameters.take(slice(gearhead, gearhead + 1))
-        self.drive = case.drive_parameters.take(slice(drive, drive + 1))
+        self.drive = derated_drives(case).take(slice(drive, drive + 1))
         self.judged: JudgedMotor = judge(self.motor, case.surroundings)
         self.course: PairCourse = course(demand, self.motor, self.gearhead, self.judged)
 

@@ -9,12 +9,16 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
-from actuator_sizing.core.machine import amplitude_per_unit_current, judge
+from actuator_sizing.core.machine import amplitude_per_unit_current, judge, motor_amplitude_per_unit_current
+from actuator_sizing.core.parameters import DriveParameters
+from actuator_sizing.core.quadrature import piece_means
 from actuator_sizing.core.windows import overload_accumulator, windowed_rms
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.derating import derated_drives
 from actuator_sizing.sizing.evaluation import PairResults, evaluate_pairs
 from actuator_sizing.sizing.pair_course import course
+from actuator_sizing.sizing.thermal_start import ThermalStart
 
 FloatArray = NDArray[np.float64]
 IndexArray = NDArray[np.intp]
@@ -32,7 +36,11 @@ class _DriveView:
 
 
 def evaluate_sets(
-    case: Case, demand: Demand, index: IndexArray, progress: Callable[[float], None] | None = None
+    case: Case,
+    demand: Demand,
+    index: IndexArray,
+    progress: Callable[[float], None] | None = None,
+    start: ThermalStart | None = None,
 ) -> Sets:
     """Evaluate sets exactly; each distinct motor × gearhead pair only once.
 
@@ -46,29 +54,33 @@ def evaluate_sets(
         Motor, gearhead and drive of each set. [-]
     progress : callable, optional
         Called with the part done, 0 to 1. [-]
+    start : ThermalStart, optional
+        State of the S sets before a cycle that runs once. [-]
 
     Returns
     -------
     Sets
         Everything the checks measure, in the order of `index`. [-]
     """
-    pairs, pair_of_set = np.unique(index[:, :2], axis=0, return_inverse=True)
+    pairs, first_set, pair_of_set = np.unique(index[:, :2], axis=0, return_index=True, return_inverse=True)
     pair_of_set = pair_of_set.reshape(-1)
     results: list[PairResults] = []
     order: list[IndexArray] = []
     views: list[_DriveView] = []
-    for start in range(0, len(pairs), _PAIRS_PER_CHUNK):
-        chunk = pairs[start : start + _PAIRS_PER_CHUNK]
+    for first in range(0, len(pairs), _PAIRS_PER_CHUNK):
+        some = slice(first, first + _PAIRS_PER_CHUNK)
+        chunk = pairs[some]
         motors = case.motor_parameters.take(chunk[:, 0])
         gearheads = case.gearhead_parameters.take(chunk[:, 1])
-        results.append(evaluate_pairs(demand, motors, gearheads, case.surroundings))
-        members = np.flatnonzero((pair_of_set >= start) & (pair_of_set < start + len(chunk)))
+        before = None if start is None else start.take(first_set[some])
+        results.append(evaluate_pairs(demand, motors, gearheads, case.surroundings, before))
+        members = np.flatnonzero((pair_of_set >= first) & (pair_of_set < first + len(chunk)))
         order.append(members)
         views.append(
-            _drive_view(case, demand, chunk, pair_of_set[members] - start, index[members, 2], results[-1])
+            _drive_view(case, demand, chunk, pair_of_set[members] - first, index[members, 2], results[-1])
         )
         if progress is not None:
-            progress(min(1.0, (start + _PAIRS_PER_CHUNK) / len(pairs)))
+            progress(min(1.0, (first + _PAIRS_PER_CHUNK) / len(pairs)))
     all_pairs = PairResults(
         **{f.name: np.concatenate([getattr(part, f.name) for part in results]) for f in fields(PairResults)}
     )
@@ -84,13 +96,14 @@ def evaluate_sets(
         recommended_inertia_ratio=case.number("recommended inertia ratio"),
         motors=case.motor_parameters.take(index[:, 0]),
         gearheads=case.gearhead_parameters.take(index[:, 1]),
-        drives=case.drive_parameters.take(index[:, 2]),
+        drives=derated_drives(case).take(index[:, 2]),
         pairs=all_pairs.take(pair_of_set),
         drive_current_peak_a=view["peak"],
         drive_current_rms_a=view["rms"],
         drive_current_rms_at_s=view["rms_at"],
         overload_a2s=view["overload"],
         overload_at_s=view["overload_at"],
+        start=start,
     )
 
 
@@ -105,21 +118,24 @@ def _drive_view(
     """Currents as the drives see them: amplitudes compared, expressed in the basis of each drive."""
     motors = case.motor_parameters.take(pairs[:, 0])
     gearheads = case.gearhead_parameters.take(pairs[:, 1])
-    drives = case.drive_parameters.take(drive)
-    amplitude = amplitude_per_unit_current(motors.current_basis)
+    drives = derated_drives(case).take(drive)
+    amplitude = motor_amplitude_per_unit_current(motors)
     current = course(demand, motors, gearheads, judge(motors, case.surroundings)).current_a
     squared = (current * amplitude[:, None, None]) ** 2
+    duration = demand.duration_s
     per_drive = amplitude_per_unit_current(drives.current_basis)
+    if not case.cycle.repeats:
+        duration, squared = _with_rest(duration, squared, drives, per_drive)
     rms = results.current_rms_a[pair] * amplitude[pair] / per_drive
     rms_at = np.full(len(pair), np.nan)
     for window in np.unique(drives.rms_window_s[np.isfinite(drives.rms_window_s)]):
         mine = np.flatnonzero(drives.rms_window_s == window)
         wanted, place = np.unique(pair[mine], return_inverse=True)
-        largest, start = windowed_rms(demand.duration_s, squared[wanted], float(window))
+        largest, start = windowed_rms(duration, squared[wanted], float(window))
         rms[mine] = largest[place] / per_drive[mine]
         rms_at[mine] = start[place]
     accumulated, when = _overload(
-        demand, squared, results, pair, amplitude, drives.continuous_current_a * per_drive
+        duration, squared, results, pair, amplitude, drives.continuous_current_a * per_drive
     )
     return _DriveView(
         peak=results.current_peak_a[pair] * amplitude[pair] / per_drive,
@@ -130,8 +146,20 @@ def _drive_view(
     )
 
 
+def _with_rest(
+    duration_s: FloatArray, squared: FloatArray, drives: DriveParameters, per_drive: FloatArray
+) -> tuple[FloatArray, FloatArray]:
+    """The run with a rest so long that no window and no accumulator reaches from one run to the next."""
+    window = float(np.nanmax(drives.rms_window_s, initial=0.0))
+    least = float(np.nanmin((drives.continuous_current_a * per_drive) ** 2, initial=np.inf))
+    heat = float(np.max(piece_means(squared) @ duration_s))
+    rest = max(window, heat / least if least > 0.0 else 0.0, float(duration_s.max()))
+    nothing = np.zeros((len(squared), 1, squared.shape[2]))
+    return np.append(duration_s, rest), np.concatenate([squared, nothing], axis=1)
+
+
 def _overload(
-    demand: Demand,
+    duration_s: FloatArray,
     squared: FloatArray,
     results: PairResults,
     pair: IndexArray,
@@ -146,6 +174,6 @@ def _overload(
     for start in range(0, len(above), _PAIRS_PER_CHUNK):
         some = above[start : start + _PAIRS_PER_CHUNK]
         accumulated[some], when[some] = overload_accumulator(
-            demand.duration_s, squared[pair[some]], continuous_a[some] ** 2
+            duration_s, squared[pair[some]], continuous_a[some] ** 2
         )
     return accumulated, when

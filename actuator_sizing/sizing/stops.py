@@ -6,42 +6,21 @@ Results are computed from entered data and must be measured on the machine; they
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.core.braking import shorted_current, shorted_torque, stop
+from actuator_sizing.core.braking import shorted_current_peak, shorted_torque, stop
 from actuator_sizing.core.machine import JudgedMotor, judge
 from actuator_sizing.core.parameters import _Columns
 from actuator_sizing.sizing.checks.base import Sets
 from actuator_sizing.sizing.checks.motor import current_limited_torque
+from actuator_sizing.sizing.stop_instants import ShaftBalance, StopInstants, stop_instants
 
 FloatArray = NDArray[np.float64]
 
 _SETS_PER_CHUNK = 256
-
-
-@dataclass(frozen=True)
-class StopInstants:
-    """Instants from which a stop can be worst; each field has shape (I,).
-
-    The fastest of each segment and direction, and both directions of each segment at rest. Torques are
-    at the driven shaft, in the sense of the motion that is to end.
-    """
-
-    at_s: FloatArray
-    speed_rad_s: FloatArray  # magnitude, driven shaft
-    ratio: FloatArray  # |dφ/dx|
-    inertia_kg_m2: FloatArray
-    load_nm: FloatArray  # gravity, and process where it drives; positive opposes
-    friction_nm: FloatArray
-    own_load_m_s2: FloatArray  # gravity on the motor's own moving mass (linear motors), as `load_nm`
-    own_friction_m_s2: FloatArray
-
-    def at_rest(self) -> StopInstants:
-        """The same loads, held by the motor when torque is removed."""
-        return replace(self, speed_rad_s=np.zeros_like(self.speed_rad_s))
 
 
 @dataclass(frozen=True)
@@ -52,65 +31,9 @@ class StopResults(_Columns):
     distance_at_s: FloatArray
     time_s: FloatArray
     braking_energy_j: FloatArray  # into motor or brake, largest over the instants
-    current_peak_a: FloatArray  # of the shorted winding at the speed left after the delay
+    current_peak_a: FloatArray  # first peak of the shorted winding at the speed left after the delay
     gearhead_torque_nm: FloatArray  # at its output
-
-
-def stop_instants(sets: Sets) -> StopInstants:
-    """Instants of the cycle that a stop is tried from.
-
-    Parameters
-    ----------
-    sets : Sets
-        Holds case and cycle. [-]
-
-    Returns
-    -------
-    StopInstants
-        At least one for each segment. [-]
-    """
-    demand, mechanism = sets.demand, sets.case.mechanism
-    rows: list[tuple[float, ...]] = []
-    moves = bool(np.any(demand.direction))
-    for number, segment in enumerate(sets.case.segments):
-        for sense in (1.0, -1.0, 0.0):
-            pieces = np.flatnonzero((demand.segment == number) & (demand.direction == sense))
-            if not len(pieces) or (moves and sense == 0.0 and segment.brake_closed):
-                continue
-            speed = np.abs(demand.shaft_speed[pieces])
-            piece, node = np.unravel_index(speed.argmax(), speed.shape)
-            where = (pieces[piece], node)
-            x = demand.position[where]
-            r = float(mechanism.ratio_at(np.array([x]))[0][0])
-            for direction in (sense,) if sense else (1.0, -1.0):
-                e = _efforts(sets, x, direction * np.sign(r), segment.payload, segment.process_effort)
-                inertia, gravity, friction, process = (value / abs(r) for value in e)
-                driving = min(direction * np.sign(r) * process, 0.0)
-                load = direction * np.sign(r) * gravity + driving
-                rows.append(
-                    (
-                        demand.time_s[where],
-                        float(speed[piece, node]),
-                        abs(r),
-                        inertia / abs(r) + mechanism.shaft_inertia_kg_m2,
-                        load,
-                        abs(friction) + mechanism.shaft_friction_nm,
-                        direction * mechanism.specific_gravity_m_s2,
-                        mechanism.specific_friction_m_s2,
-                    )
-                )
-    return StopInstants(*(np.array(column) for column in zip(*rows, strict=True)))
-
-
-def _efforts(
-    sets: Sets, position: float, direction: float, payload: float, process: float
-) -> tuple[float, float, float, float]:
-    """Inertia per acceleration, gravity, Coulomb friction and process effort at the load."""
-    one = np.ones(1)
-    e = sets.case.mechanism.efforts(
-        position * one, 0.0 * one, one, direction * one, payload * one, process * one
-    )
-    return tuple(float(np.ravel(part)[0]) for part in (e.inertia, e.gravity, e.friction, e.process))  # type: ignore[return-value]
+    instant: NDArray[np.intp]  # which of `stop_instants` is the worst
 
 
 def controlled_stops(sets: Sets) -> StopResults:
@@ -159,7 +82,13 @@ def brake_stops(sets: Sets) -> StopResults:
         Shape (S,); NaN where brake torque or closing time are not known. [-]
     """
     closing = sets.catalog_values("motors", "brake_closing_time")
-    return _stops(sets, sets.once(stop_instants), closing, sets.motors.brake_torque_nm)
+    return _stops(sets, sets.once(stop_instants), closing, brake_torque(sets))
+
+
+def brake_torque(sets: Sets) -> FloatArray:
+    """Torque of the holding brake, hot and worn as the case says, shape (S,); NaN where not known. [N·m]"""
+    factor = sets.option("brake torque factor")
+    return np.asarray(sets.motors.brake_torque_nm * (1.0 if np.isnan(factor) else factor))
 
 
 def coasting_stops(sets: Sets) -> StopResults:
@@ -200,18 +129,8 @@ def _chunk(
     torque: FloatArray | None,
 ) -> tuple[FloatArray, ...]:
     motors, gearheads = sets.motors.take(some), sets.gearheads.take(some)
-    n = gearheads.ratio[:, None]
-    own = (motors.rotor_inertia_kg_m2 + gearheads.inertia_kg_m2)[:, None]
-    inertia = own + instants.inertia_kg_m2 / n**2
-    # A linear motor carries its own mass along: gravity and guide friction act on it too.
-    mass = motors.rotor_inertia_kg_m2[:, None]
-    load = instants.load_nm / n + mass * instants.own_load_m_s2
-    friction = (
-        instants.friction_nm / n
-        + motors.friction_torque_nm[:, None]
-        + gearheads.no_load_torque_nm[:, None]
-        + mass * instants.own_friction_m_s2
-    )
+    at = ShaftBalance.of(instants, motors, gearheads)
+    n, load, friction = gearheads.ratio[:, None], at.load_nm, at.friction_nm
     R, K, X = (
         value[some][:, None, None]
         for value in (judged.resistance_ohm, judged.torque_constant_nm_per_a, judged.reactance_per_speed)
@@ -222,22 +141,26 @@ def _chunk(
 
     braking = by_winding if torque is None else torque[:, None]
     delay = (sets.option("stop reaction time") + extra_delay_s)[:, None]
-    found = stop(n * instants.speed_rad_s, inertia, load, friction, delay, braking)
+    found = stop(at.speed_rad_s, at.inertia_kg_m2, load, friction, delay, braking)
     distance = found.angle_rad / (n * instants.ratio)
     row = np.arange(len(distance))
     unknown = np.isnan(delay[:, 0]) | (np.isnan(torque) if torque is not None else False)
     worst = np.where(np.isnan(distance), -1.0, distance).argmax(axis=1)
-    current = shorted_current(found.braking_speed_rad_s, R[:, :, 0], K[:, :, 0], X[:, :, 0]).max(axis=1)
-    slowing = (load + friction) / inertia
+    endless = np.isinf(distance)
+    fastest_endless = np.where(endless, found.braking_speed_rad_s, -1.0).argmax(axis=1)
+    worst = np.where(endless.any(axis=1), fastest_endless, worst)
+    fastest = found.braking_speed_rad_s.max(axis=1)
+    current = shorted_current_peak(fastest, *(value[:, 0, 0] for value in (R, K, X)))
+    slowing = (load + friction) / at.inertia_kg_m2
     if torque is None:
-        energy = 0.5 * inertia * found.braking_speed_rad_s**2
+        energy = 0.5 * at.inertia_kg_m2 * found.braking_speed_rad_s**2
         through = np.full(len(distance), np.nan)
     else:
         with np.errstate(invalid="ignore"):
             energy = np.where(torque[:, None] > 0.0, torque[:, None] * found.braking_angle_rad, 0.0)
-        slowing = slowing + torque[:, None] / inertia
+        slowing = slowing + torque[:, None] / at.inertia_kg_m2
         # What slows the rotor itself does not pass the gearhead.
-        through = np.abs(n * (torque[:, None] - own * slowing)).max(axis=1)
+        through = np.abs(n * (torque[:, None] - at.own_inertia_kg_m2 * slowing)).max(axis=1)
     values = (
         distance[row, worst],
         instants.at_s[worst],
@@ -246,7 +169,7 @@ def _chunk(
         current,
         through,
     )
-    return tuple(np.where(unknown, np.nan, value) for value in values)
+    return (*(np.where(unknown, np.nan, value) for value in values), worst)
 
 
 def gravity_torque(sets: Sets) -> tuple[FloatArray, FloatArray]:
@@ -272,8 +195,8 @@ def gravity_torque(sets: Sets) -> tuple[FloatArray, FloatArray]:
     return torque, np.full(len(sets), float(demand.time_s[piece, node]))
 
 
-def drop_distance(sets: Sets) -> FloatArray:
-    """Way a held load sinks from rest until the holding brake has stopped it.
+def drops(sets: Sets) -> StopResults:
+    """Fall of a held load from rest until the holding brake has stopped it.
 
     Parameters
     ----------
@@ -282,13 +205,17 @@ def drop_distance(sets: Sets) -> FloatArray:
 
     Returns
     -------
-    ndarray, shape (S,)
-        In m or rad of the load, largest over the segments; NaN where brake torque or closing time are not
-        known, infinite where the brake does not hold. [-]
+    StopResults
+        Shape (S,), from the worst segment; NaN where brake torque or closing time are not known, infinite where the
+        brake does not hold. [-]
     """
     closing = sets.catalog_values("motors", "brake_closing_time")
-    resting = sets.once(stop_instants).at_rest()
-    return _stops(sets, resting, closing, sets.motors.brake_torque_nm).distance
+    return _stops(sets, sets.once(stop_instants).at_rest(), closing, brake_torque(sets))
+
+
+def drop_distance(sets: Sets) -> FloatArray:
+    """Way that a held load sinks, in m or rad of the load, shape (S,); NaN and infinite as for `drops`. [-]"""
+    return sets.once(drops).distance
 
 
 def stop_quantities(sets: Sets, index: int) -> dict[str, float | None]:

@@ -6,30 +6,36 @@ import numpy as np
 from numpy.typing import NDArray
 
 FloatArray = NDArray[np.float64]
+IndexArray = NDArray[np.intp]
 
 
 class Pool:
     """The best `keep` rows by key, then by index, whatever number is added and in whatever order."""
 
-    def __init__(self, keep: int):
+    def __init__(self, keep: int, width: int, bar: float = np.inf):
         self.keep = keep
-        self.rows: list[NDArray[np.intp]] = []
-        self.keys: list[FloatArray] = []
-        self.size = 0
-        self.bar = np.inf  # no worse key can get in any more
+        self.bar = bar  # no worse key can get in any more
+        self._rows: list[IndexArray] = [np.empty((0, width), dtype=np.intp)]
+        self._keys: list[FloatArray] = [np.empty(0)]
+        self._size = 0
 
-    def add(self, rows: NDArray[np.intp], keys: FloatArray) -> None:
+    def add(self, rows: IndexArray, keys: FloatArray | NDArray[np.float32]) -> None:
         """Offer rows."""
         good = keys <= self.bar
-        self.rows.append(rows[good])
-        self.keys.append(keys[good])
-        self.size += int(good.sum())
-        if self.size > 4 * self.keep:
-            rows, keys = self._best()
-            self.rows, self.keys, self.size, self.bar = [rows], [keys], len(keys), keys[-1]
+        self._rows.append(rows[good])
+        self._keys.append(keys[good].astype(float))
+        self._size += int(good.sum())
+        if self._size > 4 * self.keep:
+            rows, best = self.best()
+            self._rows, self._keys, self._size, self.bar = [rows], [best], len(best), float(best[-1])
 
-    def _best(self) -> tuple[NDArray[np.intp], FloatArray]:
-        rows, keys = np.concatenate(self.rows), np.concatenate(self.keys)
+    def extend(self, other: Pool) -> None:
+        """Offer what another pool holds."""
+        self.add(*other.best())
+
+    def best(self) -> tuple[IndexArray, FloatArray]:
+        """The rows, best first, and their keys."""
+        rows, keys = np.concatenate(self._rows), np.concatenate(self._keys)
         if len(keys) > self.keep:
             good = keys <= np.partition(keys, self.keep - 1)[self.keep - 1]
             rows, keys = rows[good], keys[good]
@@ -37,9 +43,10 @@ class Pool:
         order = np.lexsort((*rows.T[::-1], keys))[: self.keep]
         return rows[order], keys[order]
 
-    def sorted(self, width: int) -> NDArray[np.intp]:
-        """The rows, best first."""
-        return self._best()[0] if self.rows else np.empty((0, width), dtype=np.intp)
+    def __getstate__(self) -> dict[str, object]:
+        """What travels between processes: the best alone."""
+        rows, keys = self.best()
+        return {"keep": self.keep, "bar": self.bar, "_rows": [rows], "_keys": [keys], "_size": len(keys)}
 
 
 class Losses:
@@ -49,31 +56,22 @@ class Losses:
         self.names = names
         self.counts = np.zeros(len(names), dtype=np.int64)
         self.listed = listed
-        self.rows: list[NDArray[np.intp]] = []
-        self.checks: list[NDArray[np.intp]] = []
-        self.bounds: list[FloatArray] = []
+        self._rows: list[IndexArray] = [np.empty((0, 3), dtype=np.intp)]
+        self._checks: list[IndexArray] = [np.empty(0, dtype=np.intp)]
+        self._bounds: list[FloatArray] = [np.empty(0)]
 
-    def add(self, check: NDArray[np.intp], weight: NDArray[np.intp]) -> None:
-        """Count `weight` sets under each check."""
-        self.counts += np.bincount(check, weights=weight, minlength=len(self.names)).astype(np.int64)
-
-    def count(self, check: int, governed: NDArray[np.bool_], drives_per_motor: NDArray[np.intp]) -> None:
-        """Count under one check the sets of the pairs that it governs, (N, M)."""
-        drives = drives_per_motor[0]
-        if np.all(drives_per_motor == drives):
-            self.counts[check] += int(np.count_nonzero(governed)) * int(drives)
-        else:
-            self.counts[check] += int(np.count_nonzero(governed, axis=0) @ drives_per_motor)
-
-    def keep(self, rows: NDArray[np.intp], check: NDArray[np.intp], bound: FloatArray) -> None:
+    def keep(self, rows: IndexArray, check: IndexArray, bound: FloatArray) -> None:
         """List the sets themselves."""
         if self.listed:
-            self.rows.append(rows)
-            self.checks.append(check)
-            self.bounds.append(bound)
+            self._rows.append(rows)
+            self._checks.append(check)
+            self._bounds.append(bound)
 
-    def table(self) -> tuple[NDArray[np.intp], NDArray[np.intp], FloatArray]:
-        """All listed sets."""
-        if not self.rows:
-            return np.empty((0, 3), dtype=np.intp), np.empty(0, dtype=np.intp), np.empty(0)
-        return np.concatenate(self.rows), np.concatenate(self.checks), np.concatenate(self.bounds)
+    def extend(self, other: Losses) -> None:
+        """Add what another part of the work counted and listed."""
+        self.counts += other.counts
+        self.keep(*other.table())
+
+    def table(self) -> tuple[IndexArray, IndexArray, FloatArray]:
+        """All listed sets, the check that governs each, and its bound over allowed."""
+        return np.concatenate(self._rows), np.concatenate(self._checks), np.concatenate(self._bounds)

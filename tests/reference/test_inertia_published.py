@@ -9,7 +9,8 @@ import numpy as np
 import pytest
 
 from actuator_sizing.core.mechanisms import MECHANISMS
-from actuator_sizing.core.mechanisms.screw import STEEL_DENSITY_KG_M3, solid_cylinder_inertia
+from actuator_sizing.core.mechanisms.screw import solid_cylinder_inertia
+from actuator_sizing.core.screws import STEEL_DENSITY_KG_M3
 from tests.bare_axis import RPM, axis, ramp
 
 ALUMINIUM_DENSITY_KG_M3 = 2700.0

@@ -13,6 +13,7 @@ from types import SimpleNamespace
 import numpy as np
 import pandas as pd
 
+from actuator_sizing.case.model import Cycle
 from actuator_sizing.core.mechanisms import MECHANISMS
 from actuator_sizing.core.parameters import Surroundings
 from actuator_sizing.errors import NOTE, WARNING, Problem
@@ -303,6 +304,17 @@ def entry(table: str, label: str, column: str, entered: str, value: object, unit
     return SimpleNamespace(**(values | more))
 
 
+class _Case(SimpleNamespace):
+    """A case with one cycle that nothing names."""
+
+    def by_cycle(self) -> tuple[SimpleNamespace, ...]:
+        return (self,)
+
+    @property
+    def cycle(self) -> Cycle:
+        return Cycle("", self.segments)
+
+
 def build_case(name: str = "tray_lift", title: str = "Tray lift") -> SimpleNamespace:
     """The parts of a case that the writers read."""
     lift = {"row": 2, "note": "", "brake_closed": False, "process_effort": 0.0}
@@ -340,7 +352,7 @@ def build_case(name: str = "tray_lift", title: str = "Tray lift") -> SimpleNames
     belt = MECHANISMS["belt"].from_values(
         {"pulley diameter": 0.06, "moving mass": 8.0, "inclination": math.pi / 2}
     )
-    return SimpleNamespace(
+    return _Case(
         name=name,
         path=None,
         mechanism=belt,

@@ -21,6 +21,7 @@ TOP = {
     "console": 5,
     "simulation_console": 5,
     "robustness_console": 5,
+    "machine_console": 5,
     "workbench": 5,
     "__main__": 6,
 }

@@ -218,6 +218,31 @@ def test_one_bad_segment_does_not_hide_the_next(tmp_path):
     assert [problem.row for problem in problems_of(tmp_path, tables)] == [2, 5]
 
 
+@pytest.mark.parametrize("law", ["speed ramp", "constant speed"])
+def test_a_row_that_takes_over_the_speed_of_a_bad_row_is_not_blamed(tmp_path, law):
+    tables = small_case()
+    tables["duty_cycle"] = [
+        ["segment", "motion law", "end speed [mm/s]", "duration [s]"],
+        ["faster", "speed ramp", "quick", 1],
+        ["next", law, 0 if law == "speed ramp" else "", 1],
+        ["slower", "speed ramp", 0, 1] if law == "constant speed" else ["wait", "dwell", "", 1],
+    ]
+    errors = [p for p in problems_of(tmp_path, tables) if p.severity == "error"]
+    assert [(p.row, p.column) for p in errors] == [(2, "end speed [mm/s]")]
+
+
+def test_the_first_row_is_not_blamed_for_a_bad_last_row(tmp_path):
+    tables = small_case()
+    tables["duty_cycle"] = [
+        ["segment", "motion law", "end speed [mm/s]", "duration [s]"],
+        ["run", "constant speed", 50, 1],
+        ["faster", "speed ramp", 60, 1],
+        ["slower", "speed ramp", "less", 1],
+    ]
+    errors = [p for p in problems_of(tmp_path, tables) if p.severity == "error"]
+    assert [(p.row, p.column) for p in errors] == [(4, "end speed [mm/s]")]
+
+
 # -- limits and tolerances ----------------------------------------------------------------------------------
 
 

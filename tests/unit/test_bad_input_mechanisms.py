@@ -83,6 +83,14 @@ MAP = [
         (made("lead screw", ("lead", 8, "mm"), ("screw diameter", 20, "mm"), ("thread friction coefficient", 0.1, ""),
               ("collar friction coefficient", 0.1, ""), ("moving mass", 2, "kg"), cycle=LIFT),
          ("axis", None, "collar mean diameter"), "no value beside", "above zero", "leave the collar friction out"),
+        (made("lead screw", ("lead", 100, "mm"), ("screw diameter", 8, "mm"),
+              ("thread friction coefficient", 0.3, ""),
+              ("moving mass", 2, "kg"), cycle=LIFT),
+         ("axis", 8, "thread friction coefficient"), "0.3 with a lead of 100 mm", "below 0.251", "Check lead"),
+        (made("lead screw", ("lead", 100, "mm"), ("screw diameter", 8, "mm"),
+              ("thread friction coefficient", 0.3, ""),
+              ("flank angle", 45, "deg"), ("moving mass", 2, "kg"), cycle=LIFT),
+         ("axis", 8, "thread friction coefficient"), "0.3 with a lead of 100 mm", "below 0.178", "Check lead"),
     ],
 )  # fmt: skip
 def test_geometry_and_motion_that_cannot_be(tmp_path, tables, where, got, allowed, remedy):

@@ -8,12 +8,13 @@ from actuator_sizing.core.bus import (
     bus_course,
     bus_cycle,
     clamp_room,
-    power_runs,
-    sagged_voltage,
+    stored_at_nodes,
     stored_voltage,
 )
+from actuator_sizing.core.power_runs import bus_pieces, power_runs
 from actuator_sizing.core.quadrature import lobatto
 from actuator_sizing.core.sign_changes import sign_changes
+from actuator_sizing.core.supply import sagged_voltage
 
 SUPPLY_V, ETA = 340.0, 0.93
 
@@ -37,7 +38,7 @@ def nodes(duration, coefficients):
     return np.array([[power_at(row, x) for row in coefficients]])
 
 
-def simulated(duration, coefficients, capacitance, threshold_v, cycles=4):
+def simulated(duration, coefficients, capacitance, threshold_v, cycles=4, steady_w=0.0):
     """dU/dt = −p/(C U) from event to event: supply conducts at the bottom, chopper clamps at the top."""
     voltage, dumped, supplied, peak, clamp_peak = SUPPLY_V, 0.0, 0.0, SUPPLY_V, 0.0
     trace = []
@@ -49,9 +50,9 @@ def simulated(duration, coefficients, capacitance, threshold_v, cycles=4):
 
             def power(t, row=row, length=length):
                 p = power_at(row, 2.0 * t / length - 1.0)
-                return p / ETA if p > 0.0 else p * ETA
+                return steady_w + (p / ETA if p > 0.0 else p * ETA)
 
-            t = 0.0 if row.any() else length  # nothing happens in a dwell
+            t = 0.0 if row.any() or steady_w else length  # nothing happens in a dwell
             while t < length * (1.0 - 1e-12):
                 p = power(t + 1e-9 * length)
                 if p >= 0.0 and voltage <= SUPPLY_V * (1 + 1e-12):
@@ -74,7 +75,7 @@ def simulated(duration, coefficients, capacitance, threshold_v, cycles=4):
                     low.terminal, low.direction, high.terminal, high.direction = True, -1, True, 1
                     run = solve_ivp(rate, (t, length), [voltage], events=(low, high), rtol=1e-11, atol=1e-9,
                                     max_step=length / 40)  # fmt: skip
-                    peak = max(peak, run.y[0].max())
+                    peak = max(peak, run.y[0].max(), float(voltage))
                     t, voltage = run.t[-1] + 1e-10 * length, run.y[0, -1]
                     if run.t_events[0].size:
                         voltage = SUPPLY_V
@@ -118,6 +119,41 @@ def test_periodic_state_agrees_with_a_simulation(seed, capacitance, threshold_v)
     assert float(state.dumped_energy_j[0]) == pytest.approx(expected["dumped"], abs=1e-6 * scale)
     assert float(state.supply_energy_j[0]) == pytest.approx(expected["supplied"], abs=1e-6 * scale)
     assert float(state.dumped_power_peak_w[0]) == pytest.approx(expected["clamp"], rel=1e-6)
+
+
+@pytest.mark.parametrize("seed", range(3))
+@pytest.mark.parametrize(
+    ("capacitance", "threshold_v", "steady_w"), [(8e-4, 390.0, 40.0), (3e-3, 400.0, 150.0)]
+)
+def test_what_is_drawn_all_the_time_counts_at_every_instant(seed, capacitance, threshold_v, steady_w):
+    duration, coefficients = cycle_of(seed)
+    expected = simulated(duration, coefficients, capacitance, threshold_v, cycles=6, steady_w=steady_w)
+    terminals = power_runs(duration, nodes(duration, coefficients))
+    runs = power_runs(*bus_pieces(terminals, np.array([ETA]), np.array([steady_w])))
+    room = clamp_room(np.array([capacitance]), SUPPLY_V, np.array([threshold_v]))
+    state = bus_cycle(runs, np.ones(1), room)
+    scale = np.abs(runs.energy_j).sum()
+    voltage = stored_voltage(SUPPLY_V, np.array([capacitance]), state.peak_energy_j)
+    assert float(voltage[0]) == pytest.approx(expected["peak"], rel=1e-6)
+    assert float(state.dumped_energy_j[0]) == pytest.approx(expected["dumped"], abs=1e-6 * scale)
+    assert float(state.supply_energy_j[0]) == pytest.approx(expected["supplied"], abs=1e-6 * scale)
+    assert float(state.dumped_power_peak_w[0]) == pytest.approx(expected["clamp"], rel=1e-6)
+    # The pieces at the bus are those of the terminals: same time, same account.
+    assert float(runs.run_duration_s().sum()) == pytest.approx(float(duration.sum()), rel=1e-12)
+    taken = np.where(terminals.energy_j > 0.0, terminals.energy_j / ETA, terminals.energy_j * ETA).sum()
+    assert float(runs.energy_j.sum()) == pytest.approx(taken + steady_w * duration.sum(), rel=1e-12)
+
+
+@pytest.mark.parametrize("seed", range(4))
+def test_stored_energy_at_the_nodes(seed):
+    duration, coefficients = cycle_of(seed)
+    runs = power_runs(duration, nodes(duration, coefficients) + 400.0)
+    state = bus_cycle(runs, np.ones(1), np.array([np.inf]))
+    stored = stored_at_nodes(runs, state)[0]
+    assert stored[:, 0] == pytest.approx(state.energy_at_run_j[0], abs=1e-12)
+    assert stored.max() == pytest.approx(float(state.peak_energy_j[0]), rel=1e-12)
+    # Each run ends where the next starts.
+    assert stored[:-1, -1] == pytest.approx(state.energy_at_run_j[0, 1:], abs=1e-9)
 
 
 def test_the_simulated_cycles_reach_both_ends():

@@ -6,6 +6,7 @@ import numpy as np
 import pytest
 
 from actuator_sizing.sizing.comparison import compare
+from actuator_sizing.sizing.cycles import cycle_demands
 from actuator_sizing.sizing.demand import build_demand
 from actuator_sizing.sizing.levers import LEVERS, excess, levers_of, single, smallest_change
 from tests.made_cases import DIRECT, DRIVE, GEARHEAD, MOTOR, SURROUNDINGS, case, cycle
@@ -84,6 +85,6 @@ def test_levers_come_with_the_comparison():
     by_name = {entry["lever"]: entry for entry in losers[0].levers}
     assert by_name["other_drive"]["needed"] == "D1"
     again = levers_of(
-        made, build_demand(made), losers[0].motor_index, losers[0].gearhead_index, losers[0].drive_index
+        made, cycle_demands(made), losers[0].motor_index, losers[0].gearhead_index, losers[0].drive_index
     )
     assert again == losers[0].levers

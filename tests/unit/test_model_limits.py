@@ -50,13 +50,13 @@ def test_a_closed_brake_is_not_taken_for_a_checked_one(tmp_path):
 
 
 def test_a_drive_in_hotter_air_or_at_height_is_told(tmp_path):
-    assert "hold up to" not in said(compared(tmp_path, small_case()))["model: drive rating"]
+    assert "not reduced" not in said(compared(tmp_path, small_case()))["model: drive rating"]
     tables = small_case()
     row_of(tables, "axis", "ambient temperature")[1] = 45
     tables["axis"].append(["altitude", 1500, "m", ""])
     told = said(compared(tmp_path, tables))["model: drive rating"]
-    assert "not reduced for the altitude of 1500 m" in told
-    assert "they hold up to 40 °C, the air around the motor has 45 °C" in told
+    assert "peak current is not reduced for the altitude of 1500 m" in told
+    assert "peak current is not reduced for 45 °C, above the rated 40 °C" in told
 
 
 def test_an_assumption_names_the_quantity_it_is_about(tmp_path):
@@ -69,5 +69,5 @@ def test_statements_name_the_mechanism(tmp_path):
     comparison = compared(tmp_path, small_case())
     assert (
         said(comparison)["model: mechanism"]
-        == "critical speed, buckling and life of the screw are not checked"
+        == "not checked: critical speed of the screw; buckling of the screw; life of the screw"
     )

@@ -40,7 +40,7 @@ def sets_of(
 
 def verdict(sets, key):
     checks, limits = active_checks(sets.case.limits)
-    results = check_results(sets, judge_sets(sets, checks, limits), 0, [s.name for s in sets.case.segments])
+    results = check_results(sets, judge_sets(sets, checks, limits), 0)
     found = [result for result in results if result.check == key]
     return found[0] if found else None
 
@@ -67,6 +67,30 @@ def test_without_capacitance_or_clamp_the_bus_is_not_checked():
     assert found.missing == ("internal capacitance",)
     clamped = sets_of(drive=dict(DRIVE, capacitance_f=np.nan), **RESISTOR)
     assert verdict(clamped, "bus_maximum_voltage").demand == 380.0
+
+
+@pytest.mark.parametrize(("limit", "expected"), [(381.0, PASSES), (380.0, PASSES), (379.9, FAILS)])
+def test_a_chopper_within_the_range_of_the_drive_is_a_matter_of_fit(limit, expected):
+    sets = sets_of(drive=dict(DRIVE, bus_voltage_max_v=limit), **RESISTOR)
+    found = verdict(sets, "bus_maximum_voltage")
+    assert found.demand == 380.0
+    assert found.verdict == expected  # no reserve is asked of a level that the cycle cannot raise
+    checks, limits = active_checks(sets.case.limits)
+    verdicts = judge_sets(sets, checks, limits)
+    governs = checks[int(verdicts.governing[0])].key == "bus_maximum_voltage"
+    assert governs == (expected == FAILS)
+
+
+def test_what_is_not_clamped_governs_by_its_number():
+    big = sets_of(drive=dict(DRIVE, capacitance_f=0.05))
+    found = verdict(big, "bus_maximum_voltage")
+    assert 360.0 < found.demand < 420.0
+    checks, limits = active_checks(big.case.limits)
+    verdicts = judge_sets(big, checks, limits)
+    column = [c.key for c in checks].index("bus_maximum_voltage")
+    assert verdicts.utilisation[0, column] == found.utilisation
+    governing = checks[int(verdicts.governing[0])].key
+    assert governing == "bus_maximum_voltage"
 
 
 def test_a_level_axis_with_friction_gives_nothing_back():

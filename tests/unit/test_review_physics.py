@@ -15,6 +15,7 @@ from actuator_sizing.sizing.judging import ORDER, active_checks, judge_sets
 from actuator_sizing.sizing.pair_course import course
 from actuator_sizing.sizing.results import FAILS, NOT_CHECKED
 from actuator_sizing.sizing.shortlist import evaluate_sets
+from actuator_sizing.sizing.tile import BlockBounds, TileWorker
 from tests.made_cases import DIRECT, GEARHEAD, MOTOR, SURROUNDINGS, case, cycle
 
 
@@ -78,7 +79,8 @@ def test_the_bound_of_the_voltage_holds_for_a_saturated_motor_that_brakes():
         gearheads=[{**GEARHEAD, "ratio": 5.0}],
     )
     sets, verdicts = judged(made)
-    bound = VOLTAGE.bound(block_of(made))[0, 0]
+    bounds = BlockBounds.of((block_of(made),), (VOLTAGE,), {"voltage": 1.0})
+    bound = TileWorker(1).work(bounds, slice(0, 1)).by_motor[0][1][0, 0]
     exact = verdicts.utilisation[0, column(verdicts, "voltage")]
     # 1e-5: rounding of single precision, as the screening allows.
     assert bound <= exact * (1.0 + 1e-5)

@@ -1,16 +1,24 @@
 """Screening loses no set that passes, counts every set once, and does not depend on its block size."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
 from actuator_sizing.case.model import Limit
-from actuator_sizing.sizing import screening
+from actuator_sizing.core.parameters import DriveParameters
+from actuator_sizing.sizing import drive_counts, screening, shard
+from actuator_sizing.sizing.block import Block, GearheadSide, MotorSide
+from actuator_sizing.sizing.checks import CHECKS
 from actuator_sizing.sizing.comparison import compare
 from actuator_sizing.sizing.demand import build_demand
+from actuator_sizing.sizing.drive_counts import DriveRanks
+from actuator_sizing.sizing.drive_side import DriveSide
 from actuator_sizing.sizing.judging import ORDER, active_checks, is_binding, judge_sets
 from actuator_sizing.sizing.results import FAILS
 from actuator_sizing.sizing.shortlist import evaluate_sets
-from tests.made_cases import DIRECT, DRIVE, GEARHEAD, MOTOR, case, cycle
+from actuator_sizing.sizing.tile import BlockBounds, TileWorker
+from tests.made_cases import DIRECT, DRIVE, GEARHEAD, MOTOR, case, columns, cycle
 
 LAWS = ("trapezoid", "jerk-limited", "3-4-5 polynomial", "cycloidal", "modified sine", "simple harmonic")
 
@@ -68,12 +76,12 @@ def brute_force(made):
     return index, judge_sets(evaluate_sets(made, demand, index), checks, limits)
 
 
-def screened(made, **options):
+def screened(made, key="price", keep=10_000, **options):
     demand = build_demand(made)
     checks, limits = active_checks(made.limits)
     binding = tuple(c for c, limit in zip(checks, limits, strict=True) if is_binding(c, limit))
     allowed = {c.key: made.limits[c.key].allowed_utilisation for c in binding}
-    return screening.screen(made, demand, binding, allowed, "price", keep=10_000, losers=10, **options)
+    return screening.screen(made, demand, binding, allowed, key, keep=keep, losers=10, **options)
 
 
 @pytest.mark.parametrize("seed", range(200))
@@ -103,11 +111,78 @@ def test_blocks_of_any_size_give_the_same_answer(monkeypatch):
     made = random_case(4)
     whole = screened(made)
     monkeypatch.setattr(screening, "_MOTORS_PER_BLOCK", 2)
-    monkeypatch.setattr(screening, "_GEARHEADS_PER_BLOCK", 1)
+    monkeypatch.setattr(screening, "PAIRS_PER_TILE", 2)
+    monkeypatch.setattr(shard, "PAIRS_PER_TILE", 2)
+    monkeypatch.setattr(screening, "_PAIRS_PER_SHARD", 4)
     pieces = screened(made)
     assert whole.rejected_by_check == pieces.rejected_by_check
     np.testing.assert_array_equal(whole.survivors, pieces.survivors)
     np.testing.assert_array_equal(whole.nearest_losers, pieces.nearest_losers)
+
+
+@pytest.mark.parametrize("key", ["price", "mass", "reserve", "energy"])
+@pytest.mark.parametrize("keep", [3, 10_000])
+def test_large_catalogs_are_counted_as_small_ones_are_listed(monkeypatch, key, keep):
+    # Drives of large catalogs are counted by their ranks, those of small ones set by set.
+    rejected_by_drive = 0
+    for seed in range(20):
+        made = random_case(seed)
+        made = replace(made, motor_parameters=replace(made.motor_parameters, price=np.full(7, np.nan)))
+        listed = screened(made, key=key, keep=keep)
+        with monkeypatch.context() as patch:
+            patch.setattr(screening, "LISTED_SETS", 0)
+            patch.setattr(drive_counts, "_LARGEST_TABLE", 3)
+            counted = screened(made, key=key, keep=keep)
+        assert counted.rejected_by_check == listed.rejected_by_check
+        assert counted.survivor_count == listed.survivor_count
+        for name in ("survivors", "nearest_losers", "nearest_by_drive"):
+            np.testing.assert_array_equal(getattr(counted, name), getattr(listed, name))
+        rejected_by_drive += len(listed.nearest_by_drive)
+    assert rejected_by_drive > 20  # else the test proves nothing
+
+
+def test_of_several_cycles_the_worst_counts():
+    # The heavier cycle alone, and both together: a lighter one must not lift any bound.
+    made = random_case(3)
+    lighter = replace(made, segments=made.segments[:2])
+    checks = tuple(check for check in CHECKS if check.bound is not None and not check.is_advice)
+    keys = {check.key: 1.0 for check in checks}
+
+    def worst(*demands):
+        motors = MotorSide.of(made.motor_parameters, made.surroundings)
+        sides = [GearheadSide.of(made.gearhead_parameters, demand) for demand in demands]
+        blocks = tuple(
+            Block(demand, made.surroundings, 10.0, motors, side)
+            for demand, side in zip(demands, sides, strict=True)
+        )
+        tile = TileWorker(64).work(BlockBounds.of(blocks, checks, keys), slice(0, 6))
+        return tile.worst.copy(), tile.torque_peak.copy(), tile.mean_square.copy()
+
+    one, other = build_demand(made), build_demand(lighter)
+    for both, first, second in zip(worst(one, other), worst(one), worst(other), strict=True):
+        np.testing.assert_array_equal(both, np.maximum(first, second))
+
+
+def test_the_ranks_of_drives_agree_with_asking_every_drive():
+    rng = np.random.default_rng(5)
+    made = random_case(0)
+    drives = [scaled(rng, DRIVE, 1.2, bus_voltage_min_v=100.0, efficiency=0.95,
+                     bus_voltage_max_v=rng.choice([340.0, 400.0])) for _ in range(40)]  # fmt: skip
+    drives[0]["peak_current_a"] = drives[1]["continuous_current_a"] = np.nan
+    made = replace(made, drive_parameters=columns(DriveParameters, drives))
+    allowed = {"drive_peak_current": 0.9, "drive_continuous_current": 0.8, "drive_bus_voltage": 1.0}
+    side = DriveSide(made, allowed)
+    peak, rms = rng.uniform(0.0, 60.0, 500), rng.uniform(0.0, 20.0, 500)
+    every = np.arange(len(drives))
+    stack = side.utilisations(peak, rms, every)
+    worst = stack.max(axis=0)
+    counts = DriveRanks(side, every, 1.0).count(peak, rms, bar=1.05)
+    np.testing.assert_array_equal(counts.passing, (worst <= 1.0).sum(axis=1))
+    governing = stack.argmax(axis=0)[worst > 1.0]
+    assert list(counts.rejected) == np.bincount(governing, minlength=3).tolist()
+    assert min(counts.rejected) > 0
+    near = ((worst > 1.0) & (worst <= 1.05)).any(axis=1)
+    assert not np.any(near & ~counts.nearly)
 
 
 def test_bounds_are_below_exact_utilisations():

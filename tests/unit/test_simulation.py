@@ -13,7 +13,8 @@ from actuator_sizing.core.tuning import LinearCascade
 from actuator_sizing.errors import InputError
 from actuator_sizing.sizing import compare
 from actuator_sizing.sizing.open_loop import ripple
-from actuator_sizing.sizing.simulation import find_set, simulate
+from actuator_sizing.sizing.simulation import simulate
+from actuator_sizing.sizing.simulation_request import find_set
 from tests.made_cases import GEARHEAD, MOTOR, case, cycle
 
 SCREW = {"lead": 0.05, "moving mass": 20.0, "guide friction force": 30.0, "efficiency": 0.9}

@@ -14,9 +14,8 @@ from actuator_sizing.core.mechanisms.linear_load import (
     STAGE_PARAMETERS,
     RotatingDriveOfLinearLoad,
 )
+from actuator_sizing.core.screws import STEEL_DENSITY_KG_M3
 from actuator_sizing.errors import InputError, Problem
-
-STEEL_DENSITY_KG_M3 = 7850.0  # common practice for plain and alloyed steel
 
 _EFFICIENCY, _BACK, _INERTIA, _FRICTION = STAGE_PARAMETERS
 
@@ -116,14 +115,15 @@ def solid_cylinder_inertia(diameter_m: float, length_m: float, density_kg_m3: fl
     return np.pi * density_kg_m3 * length_m * diameter_m**4 / 32.0
 
 
-def _jammed(lead_m: float, diameter_m: float, friction_coefficient: float) -> Problem:
+def _jammed(lead_m: float, diameter_m: float, friction_coefficient: float, flank_angle_rad: float) -> Problem:
     """What to say of a thread whose lead angle and friction angle together reach 90°: turning cannot move it."""
+    most = np.pi * diameter_m / lead_m * np.cos(flank_angle_rad)
     return Problem(
         "axis",
         None,
         "thread friction coefficient",
         got=f"{friction_coefficient:g} with a lead of {1e3 * lead_m:g} mm on {1e3 * diameter_m:g} mm diameter",
-        allowed=f"below {np.pi * diameter_m / lead_m:.3g}, from where on the nut jams however hard the screw turns",
+        allowed=f"below {most:.3g}, from where on the nut jams however hard the screw turns",
         remedy="Check lead, screw diameter and friction coefficient.",
     )
 
@@ -155,7 +155,9 @@ class Screw(RotatingDriveOfLinearLoad):
         if np.isnan(self.thread_friction_coefficient) or np.isnan(diameter):
             return None
         if self._jams(diameter):
-            raise InputError([_jammed(self.lead, diameter, self.thread_friction_coefficient)])
+            raise InputError(
+                [_jammed(self.lead, diameter, self.thread_friction_coefficient, self.flank_angle)]
+            )
         return screw_efficiencies(
             self.lead,
             diameter,

@@ -16,12 +16,14 @@ from actuator_sizing.report.document.closing import (
     sign_off_section,
 )
 from actuator_sizing.report.document.comparing import comparison_section
+from actuator_sizing.report.document.cycles import cycles_section
 from actuator_sizing.report.document.drawings import figures_section
 from actuator_sizing.report.document.dynamics import dynamics_section
 from actuator_sizing.report.document.inertias import inertias_section
 from actuator_sizing.report.document.inputs import assumptions_section, inputs_section
 from actuator_sizing.report.document.levers import levers_section
 from actuator_sizing.report.document.robustness import robustness_section
+from actuator_sizing.report.document.stopping import stopping_section
 from actuator_sizing.report.document.verdict import cover_facts, verdict_section, verdict_sentence
 from actuator_sizing.report.text import clean, option
 
@@ -63,10 +65,17 @@ def prepare_document(
     if comparison.sets:
         best = comparison.sets[0]
         sections += [checks_section(best), working_section(best)]
-        figure_section = figures_section(comparison, drawn)
+        together = cycles_section(comparison, drawn)
+        if together is not None:
+            sections.append(together)
+        shown = comparison.governing  # figures show one cycle
+        figure_section = figures_section(shown, drawn)
         if figure_section.blocks:
             sections.append(figure_section)
-        moving = dynamics_section(comparison, drawn)
+        stopping = stopping_section(shown, drawn)
+        if stopping is not None:
+            sections.append(stopping)
+        moving = dynamics_section(shown, drawn)
         if moving is not None:
             sections.append(moving)
     sure = robustness_section(comparison, drawn)

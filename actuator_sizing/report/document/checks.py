@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from itertools import groupby
 from typing import TYPE_CHECKING
 
@@ -18,17 +19,23 @@ if TYPE_CHECKING:
 #: Checks whose working is shown: the governing one, those that fail, and the nearest to their limit.
 MOST_WORKINGS = 4
 _LONGEST_BAR = 10.0
-_GROUPS = {"motor": "Motor", "drive": "Drive", "gearhead": "Gearhead", "axis": "Axis"}
+_GROUPS = {
+    "motor": "Motor",
+    "drive": "Drive",
+    "gearhead": "Gearhead",
+    "mechanism": "Mechanism",
+    "axis": "Axis",
+}
 
 _COLUMNS = (
-    Column("Check", weight=3.4),
-    Column("Demand", numeric=True),
-    Column("Capacity", numeric=True),
+    Column("Check", weight=4.8),
+    Column("Demand", numeric=True, weight=0.9),
+    Column("Capacity", numeric=True, weight=1.0),
     Column("Unit", weight=0.7),
-    Column("Utilisation", numeric=True, weight=1.7),
-    Column("Margin", numeric=True, weight=1.1),
-    Column("Verdict", weight=1.3),
-    Column("Where in the cycle", weight=1.4),
+    Column("Utilisation", numeric=True, weight=1.35),
+    Column("Margin", numeric=True, weight=0.95),
+    Column("Verdict", weight=1.1),
+    Column("Where in the cycle", weight=1.3),
 )
 
 
@@ -61,13 +68,14 @@ def _check_row(check: CheckResult) -> tuple[Cell, ...]:
     where = "whole cycle" if check.at_time_s is None else f"{quantity(check.at_time_s, 's')}"
     if check.verdict == NOT_CHECKED:
         where = ""
-    elif check.segment:
-        where += f", {clean(check.segment, 40)}"
+    else:
+        parts = (clean(check.cycle or "", 40), where, clean(check.segment or "", 40))
+        where = ", ".join(part for part in parts if part)
     return row(
         Cell(title, note=note),
         demand,
         capacity,
-        unit or "1",
+        unit,
         Cell(text, note=allowed, share=share, verdict=verdict),
         percent(check.margin, 1.0 / check.allowed - 1.0) if check.allowed > 0.0 else "not known",
         Cell(verdict, verdict=verdict),
@@ -90,7 +98,8 @@ def working_section(best: SetResult) -> Section:
         if check.inputs:
             inputs = "; ".join(f"{clean(name)} ({origin})" for name, origin in check.inputs)
             facts.append(("Inputs used", inputs))
-        lines = tuple(clean(line, 2000) for line in check.working.splitlines() if line.strip())
+        steps = re.split(r";\s+|\n", check.working)  # one step a line
+        lines = tuple(clean(step, 2000) for step in steps if step.strip())
         blocks.append(Working(describe_check(check), lines, tuple(facts)))
     return Section("working", "The working of the governing checks", tuple(blocks))
 

@@ -51,8 +51,7 @@ _OUTSIDE = (
     "noise, vibration and cleanliness",
     "electromagnetic compatibility, cables, protection and isolation",
     "explosive atmospheres, hygiene, radiation and earthquake",
-    "strength and life of shafts, keys, couplings, guides and frames",
-    "radial and axial loads on motor and gearhead shafts",
+    "strength and life of shafts, keys, guides and frames",
     "tuning and stability of the control loops on the real machine",
 )
 

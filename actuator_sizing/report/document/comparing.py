@@ -14,7 +14,7 @@ if TYPE_CHECKING:
     from collections.abc import Iterable
 
     from actuator_sizing.report.document.blocks import Block
-    from actuator_sizing.sizing.results import CheckResult, Comparison, SetResult
+    from actuator_sizing.sizing.results import CheckResult, Comparison, Rejections, SetResult
 
 MOST_LEADING = 12
 MOST_LOSERS = 8
@@ -83,8 +83,8 @@ def _counts_text(comparison: Comparison) -> str:
     counts = comparison.rejections
     text = (
         f"The catalogs give {plural(counts.sets_total, 'set')} of motor, gearhead and drive. "
-        f"{plural(counts.incompatible, 'set')} cannot be built, {plural(counts.screened, 'set')} were "
-        "compared by bounds that never reject a set which could pass, and "
+        f"{plural(counts.incompatible, 'set')} cannot be built{_misfits_text(counts)}, "
+        f"{plural(counts.screened, 'set')} were compared by bounds that never reject a set which could pass, and "
         f"{plural(counts.rejected, 'set')} were rejected. {plural(counts.evaluated, 'set')} were "
         f"examined exactly; {plural(counts.confirmed_passing, 'set')} pass."
     )
@@ -94,6 +94,13 @@ def _counts_text(comparison: Comparison) -> str:
             "set that ranks better could be among the rest."
         )
     return text
+
+
+def _misfits_text(counts: Rejections) -> str:
+    if not counts.misfits:
+        return ""
+    reasons = "; ".join(f"{reason}: {plural(count, 'set')}" for reason, count in counts.misfits.items())
+    return f" ({reasons})"
 
 
 def _counts_table(comparison: Comparison) -> Table:
@@ -107,6 +114,10 @@ def _counts_table(comparison: Comparison) -> Table:
 def titles_of(sets: Iterable[SetResult]) -> dict[str, str]:
     """Map the keys of checks to their titles."""
     return {check.check: check.title for item in sets for check in item.checks}
+
+
+def _named(check: CheckResult) -> str:
+    return f"{check.title}, cycle {clean(check.cycle, 40)}" if check.cycle else check.title
 
 
 def _losers_table(losers: list[SetResult]) -> Table:
@@ -130,7 +141,7 @@ def _losers_table(losers: list[SetResult]) -> Table:
         rows.append(
             row(
                 describe_set(item),
-                check.title if check else check_name(item.governing_check),
+                _named(check) if check else check_name(item.governing_check),
                 f"{demand} {unit}".strip(),
                 f"{capacity} {unit}".strip(),
                 percent(check.utilisation, check.allowed) if check else "not known",

@@ -20,8 +20,14 @@ def figures_section(comparison: Comparison, figures: Iterable[str]) -> Section:
     """Place the figures of the leading set that were drawn."""
     best = comparison.sets[0]
     around = comparison.case.surroundings
+    cycle = comparison.case.cycle.name
     conditions = (
-        f"Set: {describe_set(best)}. Inputs: {clean(comparison.case.name)}, ambient "
+        (
+            f"Cycle: {clean(cycle, 60)}, in which the governing check is nearest to its limit. "
+            if cycle
+            else ""
+        )
+        + f"Set: {describe_set(best)}. Inputs: {clean(comparison.case.name)}, ambient "
         f"{quantity(around.ambient_degc, '°C')}, actuator_sizing {comparison.version}."
     )
     texts = _texts(best)

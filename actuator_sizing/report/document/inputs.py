@@ -18,6 +18,8 @@ if TYPE_CHECKING:
 TITLES = {
     "axis": "Axis",
     "duty_cycle": "Duty cycle",
+    "duty_types": "Duty types",
+    "cycles": "Cycles",
     "motors": "Motor of the leading set",
     "gearheads": "Gearhead of the leading set",
     "drives": "Drive of the leading set",
@@ -63,7 +65,7 @@ def inputs_section(comparison: Comparison) -> Section:
     for table, rows in groupby(entries, key=lambda e: e.table):
         make = (
             _wide_table
-            if table in ("duty_cycle", "limits", "tolerances", "map", "inertias")
+            if table in ("duty_cycle", "duty_types", "cycles", "limits", "tolerances", "map", "inertias")
             else _entry_table
         )
         blocks.append(make(table, list(rows)))

@@ -12,6 +12,7 @@ from actuator_sizing.report.text import clean, in_sentence, option, plural
 from actuator_sizing.sizing.results import ADVICE_NOT_MET, FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
 
 if TYPE_CHECKING:
+    from actuator_sizing.case.model import Case
     from actuator_sizing.sizing.results import CheckResult, Comparison, SetResult
 
 
@@ -49,6 +50,8 @@ def describe_check(check: CheckResult) -> str:
     if check.utilisation is not None and math.isinf(check.utilisation):
         return f"{check.title} has no capacity left at all"
     use = f"{percent(check.utilisation, check.allowed)} of the capacity"
+    if check.cycle:
+        use += f" in the cycle {clean(check.cycle, 60)}"
     if check.allowed != 1.0:
         use += f" ({percent(check.allowed)} allowed)"
     if check.margin is None:
@@ -95,7 +98,7 @@ def verdict_section(comparison: Comparison) -> Section:
         if best.mass_kg is not None:
             facts.append(("Mass", quantity(best.mass_kg, "kg")))
     facts += [
-        ("Cycle", f"{plural(len(case.segments), 'segment')}, {quantity(case.cycle_duration_s, 's')}"),
+        *(_cycle_fact(one) for one in case.by_cycle()),
         ("Ambient", f"{quantity(around.ambient_degc, '°C')}, {quantity(around.altitude_m, 'm')} altitude"),
         ("DC bus, minimum / nominal / maximum", _bus(comparison)),
     ]
@@ -121,6 +124,15 @@ def verdict_section(comparison: Comparison) -> Section:
             Paragraph("There is no set to show; see the remarks on the input.", "note"),
             Facts(tuple(facts)),
         ),
+    )
+
+
+def _cycle_fact(case: Case) -> tuple[str, str]:
+    name, runs = clean(case.cycle.name, 60), case.cycle.runs
+    return (
+        f"Cycle {name}".strip(),
+        f"{plural(len(case.segments), 'segment')}, {quantity(case.cycle_duration_s, 's')}"
+        + (f", {runs}" if name else ""),
     )
 
 

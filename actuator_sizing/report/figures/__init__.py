@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
 from dataclasses import dataclass
 from functools import partial
 from typing import TYPE_CHECKING
 
 from actuator_sizing.report.curves import leading_detail
+from actuator_sizing.report.figures.cycles import draw_cycles
 from actuator_sizing.report.figures.dynamics import (
     draw_bode,
     draw_following_error,
@@ -23,6 +25,7 @@ from actuator_sizing.report.figures.robustness import (
 )
 from actuator_sizing.report.figures.speed_torque import draw_speed_torque
 from actuator_sizing.report.figures.step import draw_step_response
+from actuator_sizing.report.figures.stopping import draw_stops
 from actuator_sizing.report.figures.style import house_style, to_svg
 from actuator_sizing.report.figures.temperature import draw_temperature
 from actuator_sizing.report.figures.units import AxisUnits
@@ -31,9 +34,9 @@ from actuator_sizing.report.figures.utilisation import draw_utilisation
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
-    from actuator_sizing.sizing.results import Comparison
+    from actuator_sizing.sizing.results import Comparison, SetDetail
 
-__all__ = ["FIGURES", "ROBUSTNESS_FIGURES", "DrawnFigure", "draw", "draw_figures", "house_style", "to_svg"]
+__all__ = ["FIGURES", "OPTIONAL_FIGURES", "DrawnFigure", "draw", "draw_figures", "house_style", "to_svg"]
 
 #: Keys of all figures, which name their files.
 FIGURES = (
@@ -44,7 +47,10 @@ FIGURES = (
     "current",
     "temperature",
     "step_response",
+    "cycles",
 )
+#: Keys of figures that only some cases ask for.
+OPTIONAL_FIGURES = ("stops", *ROBUSTNESS_FIGURES)
 
 
 @dataclass(frozen=True)
@@ -88,15 +94,16 @@ def draw(comparison: Comparison, key: str) -> Figure | None:
     comparison : Comparison
         The answer; the figure shows its best set.
     key : str
-        One of `FIGURES`.
+        One of `FIGURES` or `OPTIONAL_FIGURES`.
 
     Raises
     ------
     ValueError
         If there is no figure of that name.
     """
-    if key not in FIGURES:
-        raise ValueError(f"No figure {key!r}; there are {', '.join(FIGURES)}.")
+    known = (*FIGURES, *OPTIONAL_FIGURES)
+    if key not in known:
+        raise ValueError(f"No figure {key!r}; there are {', '.join(known)}.")
     with house_style():
         make = _figures_of(comparison).get(key)
         return None if make is None else make()
@@ -106,6 +113,10 @@ def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]
     figures: dict[str, Callable[[], Figure | None]] = {
         "utilisation": lambda: draw_utilisation(comparison.sets)
     }
+    if comparison.cycles:
+        several = comparison
+        figures["cycles"] = lambda: draw_cycles(several)
+    comparison = comparison.governing
     best = comparison.sets[0] if comparison.sets else None
     detail = leading_detail(comparison)
     if best is None or detail is None:
@@ -118,9 +129,22 @@ def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]
         "current": lambda: draw_current(best, detail),
         "temperature": lambda: draw_temperature(detail),
         "step_response": lambda: draw_step_response(best, detail, units),
+        **_stop_figures(comparison, detail, units),
         **_dynamic_figures(comparison),
         **_robustness_figures(comparison),
     } | figures
+
+
+def _stop_figures(
+    comparison: Comparison, detail: SetDetail, units: AxisUnits
+) -> dict[str, Callable[[], Figure | None]]:
+    """How the leading set stops, where the case asks for it."""
+    stops = detail.stops
+    if stops is None:
+        return {}
+    value = comparison.case.options.get("allowed stopping distance")
+    allowed = float(value) if isinstance(value, int | float) else math.nan
+    return {"stops": lambda: draw_stops(stops, units, allowed)}
 
 
 def _dynamic_figures(comparison: Comparison) -> dict[str, Callable[[], Figure | None]]:

@@ -29,7 +29,7 @@ _CAUSES = (
 )
 
 
-def draw_motion(cycle: pd.DataFrame, units: AxisUnits) -> Figure:
+def draw_motion(cycle: pd.DataFrame, units: AxisUnits, name: str = "") -> Figure:
     """Draw position, speed and acceleration of the load over one cycle, and what asks for them.
 
     Parameters
@@ -39,6 +39,8 @@ def draw_motion(cycle: pd.DataFrame, units: AxisUnits) -> Figure:
         as long as no motor is chosen.
     units : AxisUnits
         Units and words to draw in.
+    name : str
+        Name of the cycle, said below; empty where there is one.
     """
     time, unit = _time(cycle)
     effort = "motor_torque_nm" if "motor_torque_nm" in cycle else "effort"
@@ -61,7 +63,8 @@ def draw_motion(cycle: pd.DataFrame, units: AxisUnits) -> Figure:
         ax.margins(y=0.12)
     figure.align_ylabels(axes)
     _mark_segments(axes, cycle, unit)
-    axes[-1].set_xlabel(f"time [{unit.label}], all values positive along +x")
+    of_cycle = f" in the cycle {style.shorten(name, 40)}" if name else ""
+    axes[-1].set_xlabel(f"time{of_cycle} [{unit.label}], all values positive along +x")
     return figure
 
 
@@ -157,6 +160,31 @@ def draw_current(best: SetResult, detail: SetDetail) -> Figure:
     ax.set_xlabel(f"time [{unit.label}], positive current drives +x; limits hold for both signs")
     _mark_segments([ax], cycle, unit)
     return figure
+
+
+def draw_over_cycle(ax: Axes, cycle: pd.DataFrame, values: Any) -> DisplayUnit:
+    """Draw one curve over one cycle into a panel, its segments named above.
+
+    Parameters
+    ----------
+    ax : Axes
+        An empty panel.
+    cycle : DataFrame
+        Curves over one cycle; gives time and segments.
+    values : array_like
+        The curve, in display units.
+
+    Returns
+    -------
+    DisplayUnit
+        Of the time.
+    """
+    time, unit = _time(cycle)
+    ax.plot(time, values, color=style.DEMAND)
+    ax.axhline(0.0, color=style.QUIET, linewidth=0.8)
+    ax.margins(y=0.12)
+    _mark_segments([ax], cycle, unit)
+    return unit
 
 
 def _level(detail: SetDetail, key: str, name: str, color: str, dash: Any) -> style.Level:

@@ -41,8 +41,10 @@ def draw_temperature(detail: SetDetail) -> Figure | None:
         _draw_bodies(axes[1], periodic)
         axes[1].tick_params(labelleft=False)
         axes[1].set_xlabel(axes[1].get_xlabel().replace("time", "last cycle"))
-    else:
+    elif "winding_low_degc" in detail.warm_up:
         axes[0].set_xlabel(f"{axes[0].get_xlabel()}; no equilibrium, the curve ends past the limit")
+    else:
+        axes[0].set_xlabel(f"{axes[0].get_xlabel().replace('time', 'time from the start of the run')}")
     _share_temperatures(axes, detail)
     return figure
 

@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 from actuator_sizing.report.text import option
 from actuator_sizing.report.workbook.case_sheets import add_inputs, add_parts, add_questions, add_segments
 from actuator_sizing.report.workbook.curves import add_speed_torque, add_time_series, add_warm_up
+from actuator_sizing.report.workbook.cycle_sheets import add_cycles, add_inertias
 from actuator_sizing.report.workbook.results_sheets import add_candidates, add_checks, add_summary
 from actuator_sizing.report.workbook.robustness import add_robustness
 from actuator_sizing.report.workbook.writer import Sheets
@@ -16,9 +17,9 @@ from actuator_sizing.report.workbook.writer import Sheets
 if TYPE_CHECKING:
     from actuator_sizing.sizing.results import Comparison
 
-__all__ = ["OPTIONS", "render_workbook"]
+__all__ = ["BOOK_OPTIONS", "render_workbook"]
 
-OPTIONS = {
+BOOK_OPTIONS = {
     "in_memory": True,
     "strings_to_formulas": False,  # text from tables stays text, also when it begins with "="
     "strings_to_urls": False,
@@ -41,7 +42,7 @@ def render_workbook(comparison: Comparison, day: date, rows_in_file: int | None 
     from xlsxwriter import Workbook
 
     stream = io.BytesIO()
-    with Workbook(stream, OPTIONS) as book:
+    with Workbook(stream, BOOK_OPTIONS) as book:
         book.set_properties(
             {
                 "title": option(comparison.case, "title", comparison.case.name)[:250],
@@ -56,12 +57,14 @@ def render_workbook(comparison: Comparison, day: date, rows_in_file: int | None 
         add_summary(sheets, comparison, day, rows_in_file)
         add_candidates(sheets, comparison)
         add_checks(sheets, comparison)
+        add_cycles(sheets, comparison)
         add_segments(sheets, comparison)
         add_time_series(sheets, comparison)
         add_warm_up(sheets, comparison)
         add_speed_torque(sheets, comparison)
         if comparison.robustness is not None:
             add_robustness(sheets, comparison.robustness)
+        add_inertias(sheets, comparison)
         add_parts(sheets, comparison)
         add_inputs(sheets, comparison)
         add_questions(sheets, comparison)

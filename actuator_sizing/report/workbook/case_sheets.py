@@ -31,30 +31,46 @@ def add_segments(sheets: Sheets, comparison: Comparison) -> None:
         Field(f"payload [{payload}]", "number"), Field(f"process effort [{effort}]", "number"),
         Field("brake closed"), Field("note"),
     ]  # fmt: skip
+    views = comparison.by_cycle()
     rows: list[tuple[Any, ...]] = [
         (
             s.row, s.name, s.law, s.start_s, s.duration_s, s.start_s + s.duration_s, s.payload,
             s.process_effort, s.brake_closed, s.note,
         )
-        for s in comparison.case.segments
+        for each in views
+        for s in each.case.segments
     ]  # fmt: skip
-    detail = comparison.sets[0].detail if comparison.sets else None
-    if detail is not None and detail.segments is not None:
+    shares = [share for each in views for share in _shares(each)]
+    if shares:
         basis = comparison.sets[0].quantities.get("current_basis") or ""
         fields += [
             Field(f"motor {units.effort_word} RMS [{'N' if units.linear_motor else 'N·m'}]", "number"),
             Field(f"current RMS [A {basis}]".replace(" ]", "]"), "number"),
             Field("∫ i² dt [A²·s]", "number", formula=lambda r: f"=L{r}^2*E{r}"),
         ]
-        shares = detail.segments[["torque_rms_nm", "current_rms_a", "current_squared_a2_s"]]
-        rows = [row + tuple(share) for row, share in zip(rows, shares.to_numpy().tolist(), strict=True)]
+        rows = [row + share for row, share in zip(rows, shares, strict=True)]
+    if comparison.cycles:
+        fields.append(Field("cycle"))
+        names = [each.case.cycle.name for each in views for _ in each.case.segments]
+        rows = [(*row, name) for row, name in zip(rows, names, strict=True)]
     sheets.add_table(SEGMENTS, fields, rows)
 
 
-def rms_formula(comparison: Comparison) -> str | None:
-    """Formula of the RMS current from the rows of the sheet of segments; None where it has no such column."""
+def _shares(comparison: Comparison) -> list[tuple[float, ...]]:
+    """RMS torque and current, and integral of the squared current, of every segment of one cycle."""
     detail = comparison.sets[0].detail if comparison.sets else None
     if detail is None or detail.segments is None:
+        return []
+    columns = detail.segments[["torque_rms_nm", "current_rms_a", "current_squared_a2_s"]]
+    return [tuple(share) for share in columns.to_numpy().tolist()]
+
+
+def rms_formula(comparison: Comparison) -> str | None:
+    """Formula of the RMS current from the rows of the sheet of segments; None where it has no such column.
+
+    Of several cycles it is that of the first, whose rows come first.
+    """
+    if not _shares(comparison):
         return None
     last = len(comparison.case.segments) + 1
     return f"=SQRT(SUM('{SEGMENTS}'!M2:M{last})/SUM('{SEGMENTS}'!E2:E{last}))"

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Callable
 from typing import TYPE_CHECKING, Any
 
 from actuator_sizing.report.curves import leading_detail
@@ -13,7 +14,7 @@ from actuator_sizing.report.workbook.writer import Field, Sheets
 if TYPE_CHECKING:
     import pandas as pd
 
-    from actuator_sizing.sizing.results import Comparison
+    from actuator_sizing.sizing.results import Comparison, SetDetail
 
 _PEAKS = (
     ("torque_peak_min_bus_nm", "peak at minimum bus", "solid"),
@@ -26,16 +27,12 @@ _DEMAND, _LIMIT, _CONTINUOUS = "#0072B2", "#D55E00", "#009E73"
 
 def add_time_series(sheets: Sheets, comparison: Comparison) -> None:
     """Write one cycle of the leading set in periodic state, both one-sided values at every jump."""
-    detail = leading_detail(comparison)
-    if detail is not None:
-        _add_frame(sheets, "time series", detail.cycle, AxisUnits.of(comparison.case))
+    _add_frames(sheets, "time series", comparison, lambda detail: detail.cycle)
 
 
 def add_warm_up(sheets: Sheets, comparison: Comparison) -> None:
     """Write the temperatures from cold to the periodic state."""
-    detail = leading_detail(comparison)
-    if detail is not None and detail.warm_up is not None:
-        _add_frame(sheets, "warm-up", detail.warm_up, AxisUnits.of(comparison.case))
+    _add_frames(sheets, "warm-up", comparison, lambda detail: detail.warm_up)
 
 
 def add_speed_torque(sheets: Sheets, comparison: Comparison) -> None:
@@ -62,21 +59,23 @@ def add_speed_torque(sheets: Sheets, comparison: Comparison) -> None:
             }
         )
     cycle = list(map(str, detail.cycle.columns))
-    chart.add_series(
-        {
-            "name": "duty cycle",
-            "categories": [
-                "time series", 1, cycle.index("motor_speed_rad_s"), len(detail.cycle),
-                cycle.index("motor_speed_rad_s"),
-            ],
-            "values": [
-                "time series", 1, cycle.index("motor_torque_nm"), len(detail.cycle),
-                cycle.index("motor_torque_nm"),
-            ],
-            "line": {"color": _DEMAND, "width": 2.0},
-            "marker": {"type": "none"},
-        }
-    )  # fmt: skip
+    first = 1
+    for each in comparison.by_cycle():
+        own = leading_detail(each)
+        if own is None:
+            continue
+        end = first + len(own.cycle) - 1
+        speed_at, torque_at = cycle.index("motor_speed_rad_s"), cycle.index("motor_torque_nm")
+        chart.add_series(
+            {
+                "name": f"cycle {each.case.cycle.name}" if comparison.cycles else "duty cycle",
+                "categories": ["time series", first, speed_at, end, speed_at],
+                "values": ["time series", first, torque_at, end, torque_at],
+                "line": {"color": _DEMAND, "width": 2.0},
+                "marker": {"type": "none"},
+            }
+        )
+        first = end + 1
     effort = "N" if units.linear_motor else "N·m"
     speed_unit = "m/s" if units.linear_motor else "rad/s"
     grid = {"visible": True, "line": {"color": "#D9D9D9", "width": 0.5}}
@@ -100,6 +99,23 @@ def add_speed_torque(sheets: Sheets, comparison: Comparison) -> None:
     description = "Duty cycle of the leading set in the speed-torque plane with its limits"
     sheets.set_print_area(sheet, last, len(columns) + 1 + _CHART_COLUMNS)
     sheet.insert_chart(1, len(columns) + 1, chart, {"description": description})
+
+
+def _add_frames(
+    sheets: Sheets, name: str, comparison: Comparison, pick: Callable[[SetDetail], pd.DataFrame | None]
+) -> None:
+    """Write a frame of curves of the leading set, of several cycles one below the other with a column of names."""
+    import pandas as pd
+
+    frames = []
+    for each in comparison.by_cycle():
+        detail = leading_detail(each)
+        frame = None if detail is None else pick(detail)
+        if frame is not None:
+            frames.append(frame.assign(cycle=each.case.cycle.name) if comparison.cycles else frame)
+    if frames:
+        whole = frames[0] if len(frames) == 1 else pd.concat(frames, ignore_index=True)
+        _add_frame(sheets, name, whole, AxisUnits.of(comparison.case))
 
 
 def _add_frame(sheets: Sheets, name: str, table: pd.DataFrame, units: AxisUnits) -> None:

@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, Any
 
 from actuator_sizing.report.document.verdict import cover_facts, governing, verdict_sentence
 from actuator_sizing.report.headings import heading, name_and_unit
+from actuator_sizing.report.text import check_name
 from actuator_sizing.report.workbook.case_sheets import rms_formula
 from actuator_sizing.report.workbook.writer import Field, Sheets, row_height
 from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
@@ -90,7 +91,10 @@ def add_candidates(sheets: Sheets, comparison: Comparison) -> None:
     """Write one row for each listed candidate, best first; of a very long list only the leading ones."""
     table = comparison.candidates.head(shown_candidates(comparison))
     fields = [_candidate_field(name, table[name].dtype.kind) for name in map(str, table.columns)]
-    rows = table.astype(object).where(table.notna(), None).to_numpy().tolist()
+    cells = table.astype(object).where(table.notna(), None)
+    if "governing_check" in cells:
+        cells["governing_check"] = [check_name(key) if key else None for key in cells["governing_check"]]
+    rows = cells.to_numpy().tolist()
     sheet = sheets.add_table("candidates", fields, rows)
     if "verdict" in table and len(table):
         _color_verdicts(sheets, sheet, list(table.columns).index("verdict"), len(table))
@@ -126,6 +130,8 @@ def add_checks(sheets: Sheets, comparison: Comparison) -> None:
         Field("advice only"), Field("at [s]", "number"), Field("segment"),
         Field("formula"), Field("source"), Field("missing data"),
     ]  # fmt: skip
+    if comparison.cycles:
+        fields.append(Field("cycle"))
     rows, live = [], []
     for item in comparison.sets:
         for check in item.checks:
@@ -137,6 +143,7 @@ def add_checks(sheets: Sheets, comparison: Comparison) -> None:
                     check.title, check.group, check.demand, check.capacity, check.unit or "-",
                     check.utilisation, check.allowed, check.margin, check.shown_verdict, check.is_advice, time,
                     check.segment, check.formula, check.source, ", ".join(check.missing),
+                    *((check.cycle,) if comparison.cycles else ()),
                 )
             )  # fmt: skip
             live.append(check)

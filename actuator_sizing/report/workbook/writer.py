@@ -19,6 +19,7 @@ if TYPE_CHECKING:
 # The format allows 32767 letters in a cell; a longer text says that it was cut.
 _MOST_LETTERS = 32_767
 _WIDEST = 42
+_CLEAR_OF_LIMIT = 6e-4  # further from a limit, a tenth of a percent cannot cross it by rounding
 _LETTERS_OF_A_PAGE = 260  # across A4 on its side; more would be too small to read
 FONT = "Calibri"
 _BAR_COLOR, _HEAD_COLOR = "#7DB3D8", "#E9EEF2"
@@ -52,6 +53,8 @@ class Sheets:
     def __init__(self, book: Workbook):
         self.book = book
         self._formats: dict[tuple[Any, ...], Format] = {}
+        self._number_formats: dict[str, Format] = {}
+        self._text_formats: dict[tuple[bool, bool], Format] = {}
 
     def format(self, **properties: Any) -> Format:
         """Make a format once, with the house font."""
@@ -120,19 +123,31 @@ class Sheets:
             value = "infinite" if value > 0 else "-infinite"
         if isinstance(value, str) or field.style == "text":
             text = cell_text(value)
-            quiet: dict[str, Any] = (
-                {} if field.style == "text" else {"font_color": "#595959", "align": "right"}
+            sheet.write_string(
+                row, column, text, self._text_format(field.style == "text", len(text) > _WIDEST)
             )
-            layout: dict[str, Any] = quiet or {"align": "left", "indent": 1}
-            wrapped = {"text_wrap": True} if len(text) > _WIDEST else {}
-            sheet.write_string(row, column, text, self.format(**layout, **wrapped))
             return len(text)
-        number_format = self.format(num_format=_number_format(field.style, float(value)))
+        number_format = self._number_format(_pattern(field.style, float(value)))
         if field.formula is not None:
             sheet.write_formula(row, column, field.formula(row + 1), number_format, float(value))
         else:
             sheet.write_number(row, column, float(value), number_format)
         return 10
+
+    def _text_format(self, is_text: bool, wraps: bool) -> Format:
+        """Format of a text; one in the place of a number stands quiet, where the number would."""
+        key = (is_text, wraps)
+        if key not in self._text_formats:
+            layout: dict[str, Any] = (
+                {"align": "left", "indent": 1} if is_text else {"font_color": "#595959", "align": "right"}
+            )
+            self._text_formats[key] = self.format(**layout, **({"text_wrap": True} if wraps else {}))
+        return self._text_formats[key]
+
+    def _number_format(self, pattern: str) -> Format:
+        if pattern not in self._number_formats:
+            self._number_formats[pattern] = self.format(num_format=pattern)
+        return self._number_formats[pattern]
 
     def _set_print(self, sheet: Worksheet, name: str, letters: int) -> None:
         sheet.set_landscape()
@@ -164,13 +179,15 @@ def _bar() -> dict[str, Any]:
     }
 
 
-def _number_format(style: str, value: float) -> str:
+def _pattern(style: str, value: float) -> str:
     """Choose decimals that keep a number on its side of the limit and do not drown it in digits."""
     if style == "integer":
         return "0"
     if style == "money":
         return "#,##0.00"
     if style == "percent":
+        if abs(value) > _CLEAR_OF_LIMIT and abs(value - 1.0) > _CLEAR_OF_LIMIT:
+            return "0.0%"
         # a margin is held against 0, a utilisation against 1: keep to the stricter of the two
         decimals = max(_decimals(percent(value, limit)) for limit in (0.0, 1.0))
         return f"0.{'0' * decimals}%"
@@ -200,7 +217,9 @@ def cell_text(value: Any) -> str:
     >>> cell_text("=1+1"), cell_text("a\x00b\ud800"), len(cell_text("x" * 40000))
     ('=1+1', 'a\ufffdb\ufffd', 32767)
     """
-    text = re.sub("[\x00-\x08\x0b\x0c\x0e-\x1f\x7f\ud800-\udfff\ufffe\uffff]", "\ufffd", str(value))
+    text = str(value)
+    if not text.isprintable():
+        text = re.sub("[\x00-\x08\x0b\x0c\x0e-\x1f\x7f\ud800-\udfff\ufffe\uffff]", "\ufffd", text)
     if len(text) <= _MOST_LETTERS:
         return text
     ending = f"… ({len(text)} characters)"

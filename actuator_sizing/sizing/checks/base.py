@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, Any, TypeVar
 import numpy as np
 from numpy.typing import NDArray
 
+from actuator_sizing.case.model import REPEATS, SHORT_TIME
 from actuator_sizing.core.parameters import (
     DriveParameters,
     GearheadParameters,
@@ -19,12 +20,15 @@ from actuator_sizing.core.parameters import (
 if TYPE_CHECKING:
     from actuator_sizing.case.model import Case
     from actuator_sizing.sizing.block import Block
+    from actuator_sizing.sizing.bounds import Bound
     from actuator_sizing.sizing.demand import Demand
     from actuator_sizing.sizing.dynamic_results import DynamicResults
     from actuator_sizing.sizing.evaluation import PairResults
+    from actuator_sizing.sizing.thermal_start import ThermalStart
 
 FloatArray = NDArray[np.float64]
 _T = TypeVar("_T")
+_TABLES = ("motors", "gearheads", "drives")
 
 
 @dataclass(frozen=True)
@@ -47,6 +51,7 @@ class Sets:
     overload_a2s: FloatArray  # largest i²t accumulator in the periodic regime
     overload_at_s: FloatArray
     dynamics: DynamicResults | None = None  # where the case asks how the axis moves
+    start: ThermalStart | None = None  # of a cycle that does not repeat until its temperatures do
     _found: dict[Callable[[Sets], Any], Any] = field(default_factory=dict, repr=False)
 
     def __len__(self) -> int:
@@ -74,20 +79,42 @@ class Sets:
                 "overload_at_s",
             )
         }
-        return replace(self, **taken, **arrays, _found={})
+        start = None if self.start is None else self.start.take(row)
+        dynamics = None if self.dynamics is None else self.dynamics.take(row)
+        return replace(self, **taken, **arrays, start=start, dynamics=dynamics, _found={})
 
     def option(self, name: str) -> float:
         """Quantity of the `axis` table in SI, NaN where nothing is known."""
         value = self.case.options.get(name)
         return float(value) if isinstance(value, int | float) else np.nan
 
+    def word(self, name: str) -> str:
+        """Word of the `axis` table, empty where nothing is known."""
+        value = self.case.options.get(name)
+        return value if isinstance(value, str) else ""
+
+    def states(self, *names: str) -> bool:
+        """Whether the case states one of these quantities of the `axis` table."""
+        return any(self.word(name) or not np.isnan(self.option(name)) for name in names)
+
     def catalog_values(self, table: str, column: str) -> FloatArray:
         """Column of a catalog for each set, shape (S,), in SI; NaN where nothing is known."""
-        part = ("motors", "gearheads", "drives").index(table)
         values = getattr(self.case, table).values.get(column)
         if values is None:
             return np.full(len(self), np.nan)
-        return np.asarray(values[self.index[:, part]], dtype=float)
+        return np.asarray(values[self.index[:, _TABLES.index(table)]], dtype=float)
+
+    def catalog_word_is(self, table: str, column: str, word: str) -> NDArray[np.bool_]:
+        """Whether the part of each set has this word in a column of its catalog, shape (S,). [-]"""
+        values = getattr(self.case, table).values.get(column)
+        if values is None:
+            return np.zeros(len(self), dtype=bool)
+        return np.asarray(values[self.index[:, _TABLES.index(table)]].astype(object) == word)
+
+    def catalog_asks(self, table: str, *columns: str) -> bool:
+        """Whether a part of the catalog states one of these numbers; then all of its parts are asked."""
+        known = (getattr(self.case, table).values.get(column) for column in columns)
+        return any(values is not None and not np.isnan(values).all() for values in known)
 
 
 @dataclass(frozen=True)
@@ -139,7 +166,7 @@ class Need:
         if self.known_by is not None:
             return self.known_by(sets)
         if self.part == "axis":
-            return np.full(len(sets), not np.isnan(sets.option(self.field)))
+            return np.full(len(sets), sets.states(self.field))
         parameters = getattr(sets, self.part)
         if parameters is None:
             return np.zeros(len(sets), dtype=bool)
@@ -151,6 +178,36 @@ class Need:
 
 def _always(sets: Sets) -> NDArray[np.bool_]:
     return np.ones(len(sets), dtype=bool)
+
+
+#: Means over a cycle that comes again and again; a single run has none that could be held against a rating.
+SUSTAINED = (REPEATS,)
+#: Wear counts what is done often, from warm or from cold.
+OFTEN = (REPEATS, SHORT_TIME)
+
+
+def everywhere(value: float, sets: Sets) -> FloatArray:
+    """The same value for every set, shape (S,), in its own unit. [-]"""
+    return np.full(len(sets), value)
+
+
+def applies_if(asked: Callable[[Sets], bool]) -> Callable[[Sets], NDArray[np.bool_]]:
+    """Mask of a check that concerns every set or none, by what the case states."""
+    return lambda sets: np.full(len(sets), asked(sets))
+
+
+def quotient_working(
+    symbols: str, unit: str, measure: Callable[[Sets], Measure]
+) -> Callable[[Sets, int], str]:
+    """Working of a check that is nothing but demand over capacity."""
+
+    def working(sets: Sets, i: int) -> str:
+        m = measure(sets)
+        numbers = (digits(float(value[i])) for value in (m.demand, m.capacity))
+        shown = " / ".join(f"{number} {unit}".rstrip() for number in numbers)
+        return f"{symbols} = {shown} = {digits(float(m.ratio()[i]))}"
+
+    return working
 
 
 def has_gearhead(sets: Sets) -> NDArray[np.bool_]:
@@ -175,9 +232,7 @@ class Check:
     measure : callable
         Sets → Measure.
     bound : callable or None
-        Screening block → lower bound of the utilisation, broadcastable to (M, N); NaN where not known.
-    drive_bound : callable or None
-        The same for the part that depends on the drive: (pairs, drives) → (K, D).
+        Screening block → lower bound of the utilisation, as `sizing.bounds` declares it.
     working : callable
         (sets, index) → the formula with its numbers put in.
     applies : callable
@@ -186,6 +241,13 @@ class Check:
         Never fails unless the user makes it a limit.
     is_fit : bool
         Parts fit together or do not: such a check governs only where it fails.
+    concerns : tuple of str
+        How a cycle must run for the check to concern it, as in the table `cycles`; empty: in any way.
+    is_fit_where : callable or None
+        Sets → mask of the sets for which it is such a matter, and a reserve would mean nothing.
+    binds_where : callable or None
+        Sets → mask of the sets whose sheets state what the check needs; it only advises on the others, for which it
+        goes by a rule of thumb.
     yields_to : str
         Key of the check that fails too wherever this one is infinite, and says by how much.
     """
@@ -199,12 +261,19 @@ class Check:
     needs: tuple[Need, ...]
     measure: Callable[[Sets], Measure]
     working: Callable[[Sets, int], str]
-    bound: Callable[[Block], FloatArray] | None = None
+    bound: Callable[[Block], Bound] | None = None
     applies: Callable[[Sets], NDArray[np.bool_]] = _always
     linear_unit: str = ""
     is_advice: bool = False
     is_fit: bool = False
+    concerns: tuple[str, ...] = ()
+    binds_where: Callable[[Sets], NDArray[np.bool_]] | None = None
+    is_fit_where: Callable[[Sets], NDArray[np.bool_]] | None = None
     yields_to: str = ""
+
+    def concerns_cycle(self, runs: str) -> bool:
+        """Whether a cycle that runs in this way is judged by the check."""
+        return not self.concerns or runs in self.concerns
 
 
 def digits(value: float) -> str:

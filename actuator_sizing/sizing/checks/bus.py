@@ -7,8 +7,10 @@ from collections.abc import Callable
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.sizing.bus import BusResults, bus_results, supply_feeds_back
-from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits
+from actuator_sizing.sizing.bus import BusResults, bus_results
+from actuator_sizing.sizing.bus_sag import is_soft
+from actuator_sizing.sizing.bus_side import BATTERY, DC_SUPPLY, supply_feeds_back, supply_kind
+from actuator_sizing.sizing.checks.base import SUSTAINED, Check, Measure, Need, Sets, digits
 
 FloatArray = NDArray[np.float64]
 
@@ -57,12 +59,21 @@ def _is_known(sets: Sets) -> NDArray[np.bool_]:
     return ~np.isnan(sets.once(bus_results).voltage_max_v)
 
 
+def _is_held(sets: Sets) -> NDArray[np.bool_]:
+    """Sets whose bus a chopper, or the supply, holds whatever the cycle does: the levels fit or do not."""
+    b = sets.once(bus_results)
+    stays = b.voltage_max_v == sets.surroundings.bus_max_v
+    return np.asarray(~np.isnan(b.threshold_v) | stays | supply_feeds_back(sets))
+
+
 def _voltage_working(sets: Sets, i: int) -> str:
     b, m, top = sets.once(bus_results), _voltage_measure(sets), sets.surroundings.bus_max_v
     demand, capacity = float(m.demand[i]), float(m.capacity[i])
     verdict = f"{digits(demand)} / {digits(capacity)} = {digits(float(m.ratio()[i]))}"
     if supply_feeds_back(sets):
-        return f"the supply takes regenerated energy back and holds the bus at {digits(top)} V; {verdict}"
+        rise = demand - top
+        by = f" and {digits(rise)} V of its internal resistance" if rise > 0.0 else ""
+        return f"the supply takes regenerated energy back and holds the bus at {digits(top)} V{by}; {verdict}"
     if demand == top:
         return f"nothing comes back beyond the losses; the bus stays at {digits(top)} V; {verdict}"
     if np.isinf(demand):
@@ -91,6 +102,31 @@ BUS_MAXIMUM = Check(
     ),
     measure=_voltage_measure,
     working=_voltage_working,
+    is_fit_where=_is_held,
+)
+
+
+# -- chopper switches off ---------------------------------------------------------------------------
+def _clamps(sets: Sets) -> NDArray[np.bool_]:
+    return np.asarray(_has_resistor(sets) & ~np.isnan(sets.once(bus_results).threshold_v))
+
+
+def _release_measure(sets: Sets) -> Measure:
+    return Measure(_same(sets.surroundings.bus_max_v, sets), sets.once(bus_results).release_v)
+
+
+CHOPPER_RELEASE = Check(
+    key="chopper_release",
+    title="Chopper release voltage",
+    group="drive",
+    unit="V",
+    formula="U_bus,max ≤ U_ch − hysteresis, else the resistor burns power from the supply without end",
+    source=f"{_PRACTICE}; no hysteresis where none is stated",
+    needs=(),
+    measure=_release_measure,
+    working=_ratio_working("U_bus,max / (U_ch − h)", "V", _release_measure),
+    applies=_clamps,
+    is_fit=True,
 )
 
 
@@ -101,7 +137,24 @@ def _sag_measure(sets: Sets) -> Measure:
 
 
 def _sags(sets: Sets) -> NDArray[np.bool_]:
-    return np.full(len(sets), not np.isnan(sets.option("supply internal resistance")))
+    return np.full(len(sets), is_soft(sets))
+
+
+def _limit_is_known(sets: Sets) -> NDArray[np.bool_]:
+    """Rectified mains have no limit of current but their fuses."""
+    regulated = supply_kind(sets) in (DC_SUPPLY, BATTERY)
+    return np.full(len(sets), not regulated or not np.isnan(sets.option("supply current limit")))
+
+
+_CURRENT_LIMIT = Need("axis", "supply current limit", "supply current limit", known_by=_limit_is_known)
+
+
+def _is_bridged(sets: Sets) -> NDArray[np.bool_]:
+    """Sets whose capacitors need not help, or are known."""
+    return ~np.isnan(sets.once(bus_results).voltage_min_v)
+
+
+_CAPACITANCE = Need("drives", "capacitance_f", "internal capacitance", known_by=_is_bridged)
 
 
 BUS_SAG = Check(
@@ -109,11 +162,32 @@ BUS_SAG = Check(
     title="Voltage on a sagging bus",
     group="motor",
     unit="V",
-    formula="max u ≤ U(p) · m in the motor's basis, U(p) = U_min/2 + √(U_min²/4 − R_s p) at each instant",
-    source="Internal resistance of the supply, capacitors left out; first principles",
-    needs=(),
+    formula="max u ≤ U · m in the motor's basis at each instant, U = √(U(p)² − 2 W/C), "
+    "U(p) = U_min/2 + √(U_min²/4 − R_s p), W what the capacitors give beyond the current limit",
+    source="Internal resistance and current limit of the supply; first principles",
+    needs=(_CURRENT_LIMIT, _CAPACITANCE),
     measure=_sag_measure,
     working=_ratio_working("u / U(p) m", "V", _sag_measure),
+    applies=_sags,
+)
+
+
+def _lowest_measure(sets: Sets) -> Measure:
+    b = sets.once(bus_results)
+    return Measure(sets.drives.bus_voltage_min_v, b.voltage_min_v, b.voltage_min_at_s)
+
+
+BUS_MINIMUM = Check(
+    key="bus_minimum_voltage",
+    title="Lowest bus voltage",
+    group="drive",
+    unit="V",
+    formula="U_drive,min ≤ min over the cycle of √(U(p)² − 2 W/C), U(p) = U_min/2 + √(U_min²/4 − R_s p), "
+    "dW/dt = p − I_limit U_low beyond the current limit of the supply, U_low = max(U_drive,min, U_min/2)",
+    source="Internal resistance and current limit of the supply, in periodic steady state; first principles",
+    needs=(Need("drives", "bus_voltage_min_v", "minimum bus voltage"), _CURRENT_LIMIT, _CAPACITANCE),
+    measure=_lowest_measure,
+    working=_ratio_working("U_drive,min / U_lowest", "V", _lowest_measure),
     applies=_sags,
 )
 
@@ -182,12 +256,27 @@ BRAKE_MEAN = Check(
     measure=_mean_measure,
     working=_ratio_working("P_mean / P_cont", "W", _mean_measure),
     applies=_burns,
+    concerns=SUSTAINED,
 )
 
 
 def _pulse_measure(sets: Sets) -> Measure:
-    rating = sets.option("brake resistor pulse energy")
-    return Measure(sets.once(bus_results).brake_pulse_j, _same(rating, sets))
+    b = sets.once(bus_results)
+    if sets.case.resistor_pulses:
+        with np.errstate(divide="ignore", invalid="ignore"):
+            permitted = b.brake_pulse_j / b.brake_pulse_ratio
+        return Measure(b.brake_pulse_j, permitted, None, b.brake_pulse_ratio)
+    return Measure(b.brake_pulse_j, _same(sets.option("brake resistor pulse energy"), sets))
+
+
+def _pulse_is_known(sets: Sets) -> NDArray[np.bool_]:
+    stated = not np.isnan(sets.option("brake resistor pulse energy"))
+    return np.full(len(sets), stated or bool(sets.case.resistor_pulses))
+
+
+def _pulse_working(sets: Sets, i: int) -> str:
+    lasts = float(sets.once(bus_results).brake_pulse_s[i])
+    return f"in {digits(lasts)} s of clamping; E_pulse / E_max = {_pulse_measure(sets).quotient(i)}"
 
 
 BRAKE_PULSE = Check(
@@ -195,11 +284,14 @@ BRAKE_PULSE = Check(
     title="Brake resistor pulse energy",
     group="drive",
     unit="J",
-    formula="largest energy dumped between two times of motoring ≤ pulse energy of the resistor",
+    formula="largest energy dumped between two times of motoring, and what the hysteresis takes more, ≤ pulse energy "
+    "of the resistor, from its curve over the length of the pulse where one is given",
     source=_PRACTICE,
-    needs=(Need("axis", "brake resistor pulse energy", "brake resistor pulse energy"),),
+    needs=(
+        Need("axis", "brake resistor pulse energy", "brake resistor pulse energy", known_by=_pulse_is_known),
+    ),
     measure=_pulse_measure,
-    working=_ratio_working("E_pulse / E_max", "J", _pulse_measure),
+    working=_pulse_working,
     applies=_burns,
 )
 
@@ -209,7 +301,12 @@ _EFFICIENCY = Need("drives", "efficiency", "efficiency")
 
 
 def _supply_check(
-    key: str, title: str, option: str, pick: Callable[[BusResults], Measure], formula: str
+    key: str,
+    title: str,
+    option: str,
+    pick: Callable[[BusResults], Measure],
+    formula: str,
+    concerns: tuple[str, ...] = (),
 ) -> Check:
     def measure(sets: Sets) -> Measure:
         m = pick(sets.once(bus_results))
@@ -226,6 +323,7 @@ def _supply_check(
         measure=measure,
         working=_ratio_working("P / P_rated", "W", measure),
         applies=_supply_is_rated,
+        concerns=concerns,
     )
 
 
@@ -235,6 +333,7 @@ SUPPLY_MEAN = _supply_check(
     "supply continuous power",
     lambda b: Measure(b.supply_power_mean_w, b.supply_power_mean_w),
     "energy from the supply per cycle / cycle time ≤ continuous power of the supply",
+    SUSTAINED,
 )
 
 SUPPLY_PEAK = _supply_check(
@@ -245,13 +344,42 @@ SUPPLY_PEAK = _supply_check(
     "max of the power taken from the bus, without help from the capacitors ≤ peak power of the supply",
 )
 
+
+def _may_charge(sets: Sets) -> NDArray[np.bool_]:
+    """A battery has a limit; a supply that feeds back is held to one where it is stated."""
+    stated = not np.isnan(sets.option("supply charging current"))
+    return np.full(len(sets), supply_kind(sets) == BATTERY or (stated and supply_feeds_back(sets)))
+
+
+def _charging_measure(sets: Sets) -> Measure:
+    b = sets.once(bus_results)
+    current = b.returned_power_peak_w / sets.surroundings.bus_min_v
+    return Measure(current, _same(sets.option("supply charging current"), sets))
+
+
+CHARGING_CURRENT = Check(
+    key="supply_charging_current",
+    title="Supply charging current",
+    group="drive",
+    unit="A",
+    formula="max of the power given back / U_bus,min ≤ largest current that battery or supply takes",
+    source="Power at the terminals times the drive's efficiency, capacitors left out; rating of the supply",
+    needs=(Need("axis", "supply charging current", "supply charging current"),),
+    measure=_charging_measure,
+    working=_ratio_working("I / I_max", "A", _charging_measure),
+    applies=_may_charge,
+)
+
 BUS_CHECKS = (
     BUS_MAXIMUM,
+    CHOPPER_RELEASE,
     BUS_SAG,
+    BUS_MINIMUM,
     BRAKE_VALUE,
     BRAKE_PEAK,
     BRAKE_MEAN,
     BRAKE_PULSE,
     SUPPLY_MEAN,
     SUPPLY_PEAK,
+    CHARGING_CURRENT,
 )

@@ -3,15 +3,46 @@
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import NDArray
 
 from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits
+from actuator_sizing.sizing.derating import derating_of
 
-_CONTINUOUS = Need("drives", "continuous_current_a", "continuous current")
+FloatArray = NDArray[np.float64]
+
+
+def _left(sets: Sets, which: str) -> FloatArray:
+    """What is left of the continuous current of each set's drive."""
+    return np.asarray(getattr(derating_of(sets.case), which)[sets.index[:, 2]])
+
+
+_CONTINUOUS = (
+    Need(
+        "drives",
+        "continuous_current_a",
+        "continuous current",
+        known_by=lambda sets: ~np.isnan(sets.case.drive_parameters.continuous_current_a[sets.index[:, 2]]),
+    ),
+    Need(
+        "drives", "ambient_derating", "ambient derating", known_by=lambda s: ~np.isnan(_left(s, "by_ambient"))
+    ),
+    Need(
+        "drives",
+        "altitude_derating_per_100_m",
+        "altitude derating per 100 m",
+        known_by=lambda s: ~np.isnan(_left(s, "by_altitude")),
+    ),
+)
 _PEAK = Need("drives", "peak_current_a", "peak current")
 
 
 def _continuous_measure(sets: Sets) -> Measure:
     return Measure(sets.drive_current_rms_a, sets.drives.continuous_current_a, sets.drive_current_rms_at_s)
+
+
+def _has_mean(sets: Sets) -> NDArray[np.bool_]:
+    """Whether there is a time to take the mean over: a cycle that repeats, else the drive's own window."""
+    return sets.case.cycle.repeats | np.isfinite(sets.drives.rms_window_s)
 
 
 def _continuous_working(sets: Sets, i: int) -> str:
@@ -20,8 +51,21 @@ def _continuous_working(sets: Sets, i: int) -> str:
     over = f"over any {digits(window)} s" if np.isfinite(window) else "over the cycle"
     return (
         f"I_rms {over} = {digits(m.demand[i])} A in the drive's basis "
-        f"(motor {digits(sets.pairs.current_rms_a[i])} A over the cycle); "
+        f"(motor {digits(sets.pairs.current_rms_a[i])} A over the cycle); {_derating_working(sets, i)}"
         f"{m.quotient(i)}"
+    )
+
+
+def _derating_working(sets: Sets, i: int) -> str:
+    """What ambient and altitude leave of the rating; empty where they leave all of it."""
+    ambient, altitude = (float(_left(sets, which)[i]) for which in ("by_ambient", "by_altitude"))
+    if ambient == altitude == 1.0:
+        return ""
+    rated = float(sets.case.drive_parameters.continuous_current_a[sets.index[i, 2]])
+    return (
+        f"I_cont = {digits(rated)} A · {digits(ambient)} by the ambient of "
+        f"{digits(sets.surroundings.ambient_degc)} °C · {digits(altitude)} by the altitude of "
+        f"{digits(sets.surroundings.altitude_m)} m = {digits(sets.drives.continuous_current_a[i])} A; "
     )
 
 
@@ -30,11 +74,13 @@ DRIVE_CONTINUOUS = Check(
     title="Drive continuous current",
     group="drive",
     unit="A",
-    formula="max over t of √(1/w ∫ i² dt over [t, t + w]) ≤ I_cont,drive; w the drive's window, else the cycle",
-    source="Continuous rating of the data sheet; sliding window, periodic in the cycle",
-    needs=(_CONTINUOUS,),
+    formula="max over t of √(1/w ∫ i² dt over [t, t + w]) ≤ I_cont,drive (1 − k_ϑ (ϑ_a − ϑ_rated)) "
+    "(1 − k_h (h − 1000 m)); w the drive's window, else the cycle",
+    source="Continuous rating and derating of the data sheet; sliding window, periodic in the cycle",
+    needs=_CONTINUOUS,
     measure=_continuous_measure,
     working=_continuous_working,
+    applies=_has_mean,
 )
 
 
@@ -86,7 +132,7 @@ DRIVE_PEAK_TIME = Check(
     unit="A²·s",
     formula="dS/dt = i² − I_cont², S ≥ 0, periodic: max S ≤ (I_peak² − I_cont²) t_peak",
     source="i²t accumulator; common practice of drive protection",
-    needs=(_CONTINUOUS, _PEAK, Need("drives", "peak_time_s", "peak time")),
+    needs=(*_CONTINUOUS, _PEAK, Need("drives", "peak_time_s", "peak time")),
     measure=_time_measure,
     working=_time_working,
     # The accumulator grows for ever when the mean of i² exceeds I_cont²; the largest windowed mean is never below

@@ -15,7 +15,11 @@ FloatArray = NDArray[np.float64]
 _STIFFNESS = Need(
     "dynamics", "stiffness_nm_per_rad", "torsional stiffness (or driven shaft stiffness of the axis)"
 )
-_SIMULATED = Need("dynamics", "is_simulated", "simulation: only the leading sets are simulated")
+_SIMULATED = Need(
+    "dynamics",
+    "is_simulated",
+    "simulation: only leading sets with a cycle of at most four million samples are simulated",
+)
 
 
 def _column(sets: Sets, name: str) -> FloatArray:

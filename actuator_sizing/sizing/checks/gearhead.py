@@ -2,46 +2,60 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
-
 import numpy as np
 from numpy.typing import NDArray
 
+from actuator_sizing.core.life import BALL_EXPONENT, ROLLER_EXPONENT
 from actuator_sizing.core.quadrature import integrate
-from actuator_sizing.core.transmission import GEAR_EXPONENT
 from actuator_sizing.sizing.block import Block
-from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits, has_gearhead
+from actuator_sizing.sizing.bounds import Bound, Form, Ratio, single
+from actuator_sizing.sizing.checks.base import (
+    OFTEN,
+    SUSTAINED,
+    Check,
+    Measure,
+    Need,
+    Sets,
+    digits,
+    everywhere,
+    has_gearhead,
+    quotient_working,
+)
+from actuator_sizing.sizing.checks.traction import application_factor
 
 FloatArray = NDArray[np.float64]
 
 
-def _same(value: float, sets: Sets) -> FloatArray:
-    return np.full(len(sets), value)
+def equivalent_exponent(sets: Sets) -> FloatArray:
+    """Power of the torque in its equivalent, 3 or 10/3 by the bearings of the gears, shape (S,). [-]"""
+    roller = sets.catalog_word_is("gearheads", "gear_bearings", "roller")
+    return np.where(roller, ROLLER_EXPONENT, BALL_EXPONENT)
 
 
-def _working(symbol: str, unit: str, measure: Callable[[Sets], Measure]) -> Callable[[Sets, int], str]:
-    def working(sets: Sets, i: int) -> str:
-        m = measure(sets)
-        return (
-            f"{symbol} = {digits(m.demand[i])} {unit} / {digits(m.capacity[i])} {unit} "
-            f"= {digits(m.ratio()[i])}"
-        )
-
-    return working
+def equivalent_output_torque(sets: Sets) -> FloatArray:
+    """Equivalent torque at the output times the application factor, shape (S,). [N·m]"""
+    demand = sets.demand
+    exponent = equivalent_exponent(sets)
+    ball, roller = demand.shaft_torque_equivalent, demand.shaft_torque_equivalent
+    if np.any(exponent != BALL_EXPONENT):
+        roller = demand.equivalent(demand.shaft_torque, ROLLER_EXPONENT)
+    return application_factor(sets) * np.where(exponent == BALL_EXPONENT, ball, roller)
 
 
 def _equivalent_measure(sets: Sets) -> Measure:
-    return Measure(_same(sets.demand.shaft_torque_equivalent, sets), sets.gearheads.continuous_torque_nm)
+    return Measure(equivalent_output_torque(sets), sets.gearheads.continuous_torque_nm)
 
 
 def _equivalent_working(sets: Sets, i: int) -> str:
-    d, m = sets.demand, _equivalent_measure(sets)
+    d, m, p = sets.demand, _equivalent_measure(sets), float(equivalent_exponent(sets)[i])
+    power = "3" if p == BALL_EXPONENT else "(10/3)"
     turned = float(integrate(d.duration_s, np.abs(d.shaft_speed)))
-    worked = float(integrate(d.duration_s, np.abs(d.shaft_speed) * np.abs(d.shaft_torque) ** GEAR_EXPONENT))
+    worked = float(integrate(d.duration_s, np.abs(d.shaft_speed) * np.abs(d.shaft_torque) ** p))
+    factor = application_factor(sets)
     return (
-        f"∫ |ω| |T|³ dt = {digits(worked)} rad·(N·m)³, ∫ |ω| dt = {digits(turned)} rad per cycle; "
-        f"T_eq = ({digits(worked)} / {digits(turned)})^(1/3) = {digits(float(m.demand[i]))} N·m; "
-        f"{m.quotient(i)}"
+        f"∫ |ω| |T|^{power} dt = {digits(worked)} rad·(N·m)^{power}, ∫ |ω| dt = {digits(turned)} rad per cycle; "
+        f"T_eq = {digits(factor)} · ({digits(worked)} / {digits(turned)})^(1/{power}) = "
+        f"{digits(float(m.demand[i]))} N·m; {m.quotient(i)}"
     )
 
 
@@ -50,13 +64,16 @@ GEARHEAD_EQUIVALENT = Check(
     title="Gearhead equivalent torque",
     group="gearhead",
     unit="N·m",
-    formula="T_eq = (∫ |ω| |T|³ dt / ∫ |ω| dt)^(1/3) at the output ≤ T_continuous",
-    source="Equivalent load weighted by revolutions (form of ISO 3408-5), exponent 3: common practice",
+    formula="T_eq = K_A (∫ |ω| |T|^p dt / ∫ |ω| dt)^(1/p) at the output ≤ T_continuous; p = 3, with roller "
+    "bearings 10/3",
+    source="Equivalent load weighted by revolutions (form of ISO 3408-5), exponents of ISO 281: common practice",
     needs=(Need("gearheads", "continuous_torque_nm", "continuous torque"),),
     measure=_equivalent_measure,
+    # A power mean rises with its exponent and the application factor is at least 1: 3 and 1 give a bound.
     bound=lambda block: block.demand.shaft_torque_equivalent / block.gearheads.continuous_torque_nm[:, None],
     working=_equivalent_working,
     applies=has_gearhead,
+    concerns=OFTEN,
 )
 
 
@@ -64,9 +81,9 @@ def _peak_measure(sets: Sets) -> Measure:
     torque = sets.demand.shaft_torque
     piece, node = np.unravel_index(np.abs(torque).argmax(), torque.shape)
     return Measure(
-        _same(sets.demand.shaft_torque_peak, sets),
+        everywhere(sets.demand.shaft_torque_peak, sets),
         sets.gearheads.peak_torque_nm,
-        _same(float(sets.demand.time_s[piece, node]), sets),
+        everywhere(float(sets.demand.time_s[piece, node]), sets),
     )
 
 
@@ -80,7 +97,7 @@ GEARHEAD_PEAK = Check(
     needs=(Need("gearheads", "peak_torque_nm", "peak torque"),),
     measure=_peak_measure,
     bound=lambda block: block.demand.shaft_torque_peak / block.gearheads.peak_torque_nm[:, None],
-    working=_working("T_max / T_peak", "N·m", _peak_measure),
+    working=quotient_working("T_max / T_peak", "N·m", _peak_measure),
     applies=has_gearhead,
 )
 
@@ -101,8 +118,9 @@ GEARHEAD_MEAN_SPEED = Check(
     bound=lambda block: (
         block.gearheads.ratio * block.demand.shaft_speed_mean / block.gearheads.speed_mean_max_rad_s
     )[:, None],
-    working=_working("ω_mean / ω_mean,max", "rad/s", _mean_speed_measure),
+    working=quotient_working("ω_mean / ω_mean,max", "rad/s", _mean_speed_measure),
     applies=has_gearhead,
+    concerns=SUSTAINED,
 )
 
 
@@ -122,18 +140,20 @@ GEARHEAD_MAX_SPEED = Check(
     bound=lambda block: (
         block.gearheads.ratio * block.demand.shaft_speed_peak / block.gearheads.speed_max_rad_s
     )[:, None],
-    working=_working("ω_max / ω_limit", "rad/s", _max_speed_measure),
+    working=quotient_working("ω_max / ω_limit", "rad/s", _max_speed_measure),
     applies=has_gearhead,
 )
 
 
 def _inertia_measure(sets: Sets) -> Measure:
-    return Measure(sets.pairs.inertia_ratio, _same(sets.recommended_inertia_ratio, sets))
+    return Measure(sets.pairs.inertia_ratio, everywhere(sets.recommended_inertia_ratio, sets))
 
 
-def _inertia_bound(block: Block) -> FloatArray:
-    reflected = block.demand.load_inertia / block.gearheads.ratio**2
-    return reflected[:, None] / block.motors.rotor_inertia_kg_m2 / block.recommended_inertia_ratio
+def _inertia_bound(block: Block) -> Bound:
+    reflected = block.demand.load_inertia / block.gearheads.ratio**2 / block.recommended_inertia_ratio
+    with np.errstate(divide="ignore"):
+        per_rotor = 1.0 / block.motors.rotor_inertia_kg_m2
+    return (Ratio(top=Form(single(reflected)[:, None], single(per_rotor)[None, :])),)
 
 
 def _inertia_working(sets: Sets, i: int) -> str:

@@ -12,12 +12,14 @@ from actuator_sizing.core.machine import judge, resistance_at, torque_of_current
 from actuator_sizing.core.parameters import MotorParameters, Surroundings
 from actuator_sizing.core.thermal import altitude_factor
 from actuator_sizing.sizing.block import Block
-from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits
+from actuator_sizing.sizing.bounds import Bound
+from actuator_sizing.sizing.checks.base import SUSTAINED, Check, Measure, Need, Sets, digits
 from actuator_sizing.sizing.checks.working import (
     available_voltage_working,
     current_working,
     instant_of,
     rms_working,
+    temperature_working,
     torque_working,
     voltage_limit_working,
     voltage_working,
@@ -25,6 +27,7 @@ from actuator_sizing.sizing.checks.working import (
 
 FloatArray = NDArray[np.float64]
 
+_IMMENSE = 1e30  # stands for infinite where a product with it must stay a number of single precision
 _CONTINUOUS = Need("motors", "continuous_current_a", "continuous current", "continuous force")
 _PEAK_CURRENT = Need("motors", "peak_current_a", "peak current")
 _LIMIT = Need("motors", "winding_limit_degc", "winding temperature limit")
@@ -52,17 +55,23 @@ def rerated_continuous_current(
         ``√((ΔT − R_2 P_ω)/(R_th R_hot))`` with ``R_th = ΔT_rated/(R_hot I_cont²)``; NaN where data is missing.
         The rating is taken as one near standstill, as sheets state it. [A]
     """
-    limit = motors.winding_limit_degc
-    hot = resistance_at(motors, limit)
-    altitude = altitude_factor(surroundings.altitude_m)
-    rise = (limit - surroundings.ambient_degc) * altitude
-    with np.errstate(divide="ignore", invalid="ignore"):
-        rating = (limit - motors.continuous_ambient_degc) / (hot * motors.continuous_current_a**2)
-    R_2 = motors.thermal_resistance_housing_k_w
-    speed_resistance = np.where(np.isnan(R_2), rating, np.fmin(R_2, rating))
+    rise, rating, speed_resistance, hot = _heat_path(motors, surroundings)
     loss = motors.friction_torque_nm * np.abs(speed_rad_s) + motors.viscous_friction_nm_s * speed_rad_s**2
     with np.errstate(divide="ignore", invalid="ignore"):
         return continuous_current(rise, rating, speed_resistance, loss, hot)
+
+
+def _heat_path(
+    motors: MotorParameters, surroundings: Surroundings
+) -> tuple[FloatArray, FloatArray, FloatArray, FloatArray]:
+    """Permitted rise [K], rise per watt of copper loss and of speed loss [K/W], hot resistance [Ω], each (n,)."""
+    limit = motors.winding_limit_degc
+    hot = resistance_at(motors, limit)
+    rise = (limit - surroundings.ambient_degc) * altitude_factor(surroundings.altitude_m)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        rating = (limit - motors.continuous_ambient_degc) / (hot * motors.continuous_current_a**2)
+    R_2 = motors.thermal_resistance_housing_k_w
+    return rise, rating, np.where(np.isnan(R_2), rating, np.fmin(R_2, rating)), hot
 
 
 def _current_at_limit(
@@ -84,11 +93,17 @@ def _rms_measure(sets: Sets) -> Measure:
     return Measure(sets.pairs.current_rms_a * _current_at_limit(sets.motors, sets.surroundings, K), capacity)
 
 
-def _rms_bound(block: Block) -> FloatArray:
-    capacity = rerated_continuous_current(block.motors, block.surroundings, block.speed_rms)
-    K = block.judged.torque_constant_nm_per_a
-    with np.errstate(divide="ignore"):
-        return block.current_rms * _current_at_limit(block.motors, block.surroundings, K) / capacity
+def _rms_bound(block: Block) -> Bound:
+    m, K = block.motors, block.judged.torque_constant_nm_per_a
+    rise, rating, speed_resistance, hot = _heat_path(m, block.surroundings)
+    per_torque = _current_at_limit(m, block.surroundings, K) / K
+    with np.errstate(divide="ignore", invalid="ignore"):
+        per_square = per_torque**2 * rating * hot / rise
+        share = speed_resistance / rise
+    # In air hotter than the limit no current at all is permitted.
+    per_square = np.where(rise <= 0.0, _IMMENSE, np.where(per_square > 0.0, per_square, 0.0))
+    share = np.where(rise > 0.0, share, 0.0)
+    return (block.of_square(per_square, share * m.friction_torque_nm, share * m.viscous_friction_nm_s),)
 
 
 def _rms_working(sets: Sets, i: int) -> str:
@@ -129,17 +144,16 @@ RMS_CURRENT = Check(
     measure=_rms_measure,
     bound=_rms_bound,
     working=_rms_working,
+    concerns=SUSTAINED,
 )
 
 
 # -- torque over the speed–torque plane -------------------------------------------------------------
 def current_limited_torque(sets: Sets) -> FloatArray:
     """Air-gap torque at the smaller of the peak currents of motor and drive, shape (S,). [N·m]"""
-    from actuator_sizing.core.machine import amplitude_per_unit_current, saturation_coefficient
+    from actuator_sizing.core.machine import motor_amperes_per_drive_ampere, saturation_coefficient
 
-    to_motor = amplitude_per_unit_current(sets.drives.current_basis) / amplitude_per_unit_current(
-        sets.motors.current_basis
-    )
+    to_motor = motor_amperes_per_drive_ampere(sets.motors, sets.drives)
     current = np.fmin(sets.motors.peak_current_a, sets.drives.peak_current_a * to_motor)
     K = sets.pairs.torque_constant_nm_per_a
     torque = torque_of_current(current, K, saturation_coefficient(sets.motors))
@@ -161,18 +175,20 @@ def _plane_measure(sets: Sets) -> Measure:
     )
 
 
-def _plane_bound(block: Block) -> FloatArray:
-    return np.fmax(block.voltage_plane_utilisation, block.torque_peak / block.torque_limit)
+def _plane_bound(block: Block) -> Bound:
+    return (block.of_peak(block.torque_limit), *block.voltage_plane)
 
 
 def _plane_working(sets: Sets, i: int) -> str:
     m = _plane_measure(sets)
-    at = instant_of(sets, i, m.instant(i), "torque")
     p = sets.pairs
-    unit = at.units[0]
     by_current = float(current_limited_torque(sets)[i])
-    if p.plane_utilisation[i] >= p.torque_peak_nm[i] / by_current:
-        limit = voltage_limit_working(sets, i, at)
+    by_voltage = bool(p.plane_utilisation[i] >= p.torque_peak_nm[i] / by_current)
+    cold = by_voltage and bool(p.plane_is_cold[i])
+    at = instant_of(sets, i, m.instant(i), "torque", cold=cold)
+    unit = at.units[0]
+    if by_voltage:
+        limit = f"{temperature_working(at, cold=cold)}; {voltage_limit_working(sets, i, at)}"
     else:
         limit = f"T_available = {digits(by_current)} {unit} at the smaller peak current of motor and drive"
     return f"{torque_working(at)}; {limit}; {m.quotient(i)}"
@@ -185,7 +201,7 @@ SPEED_TORQUE = Check(
     unit="N·m",
     linear_unit="N",
     formula="max over the cycle of |T| / T_available(ω), T_available from peak current and from "
-    "√((R i + K ω)² + (p ω L i)²) ≤ U at minimum bus voltage and hot winding",
+    "√((R i + K ω)² + (p ω L i)²) ≤ U at minimum bus voltage, hot winding or motor at ambient, whichever is worse",
     source="Speed–torque plane of a DC-equivalent machine; textbook dq relations at i_d = 0",
     needs=(
         Need("motors", "peak_current_a", "peak current"),
@@ -207,22 +223,29 @@ def _temperature_measure(sets: Sets) -> Measure:
     return Measure(rise, permitted, sets.pairs.winding_max_at_s)
 
 
-def _temperature_bound(block: Block) -> FloatArray:
-    return block.mean_winding_rise / (block.motors.winding_limit_degc - block.surroundings.ambient_degc)
+def _temperature_bound(block: Block) -> Bound:
+    # A single run may end before anything is warm.
+    return (block.winding_rise,) if block.repeats else ()
 
 
 def _temperature_working(sets: Sets, i: int) -> str:
     ambient = sets.surroundings.ambient_degc
     limit = sets.motors.winding_limit_degc[i]
     if not sets.pairs.has_equilibrium[i]:
+        if sets.start is not None:
+            return "in one run the winding grows hotter than any temperature that means something"
         return "no equilibrium: each cycle leaves the winding hotter than the last"
     peak = sets.pairs.winding_max_degc[i]
     if limit <= ambient:
         return f"the air at {digits(ambient)} °C leaves no rise up to the limit of {digits(limit)} °C"
+    over = "in periodic steady state"
+    if sets.start is not None:
+        over = f"in one run from {digits(sets.start.winding_degc[i])} °C"
+        over += "" if sets.start.following is None else " and the cycle that follows"
     mean = sets.pairs.housing_mean_degc[i]
     housing = "one thermal body" if np.isnan(mean) else f"housing mean {digits(mean)} °C"
     return (
-        f"ϑ_max = {digits(peak)} °C in periodic steady state (mean {digits(sets.pairs.winding_mean_degc[i])} °C, "
+        f"ϑ_max = {digits(peak)} °C {over} (mean {digits(sets.pairs.winding_mean_degc[i])} °C, "
         f"{housing}); rise ({digits(peak)} − {digits(ambient)}) / "
         f"({digits(limit)} − {digits(ambient)}) = {digits((peak - ambient) / (limit - ambient))}"
     )
@@ -233,7 +256,8 @@ WINDING_TEMPERATURE = Check(
     title="Winding temperature",
     group="motor",
     unit="K",
-    formula="max over the periodic steady state of ϑ_w − ϑ_a ≤ ϑ_limit − ϑ_a; two bodies, R(ϑ) and K(ϑ) fed back",
+    formula="max over the periodic steady state of ϑ_w − ϑ_a ≤ ϑ_limit − ϑ_a, over its run where a cycle does not "
+    "repeat; two bodies, R(ϑ) and K(ϑ) fed back",
     source="Two-body thermal network; periodic state by the cycle map; classes of IEC 60085",
     needs=(
         _LIMIT,
@@ -256,10 +280,6 @@ def _current_working(sets: Sets, i: int) -> str:
     return f"{torque_working(at)}; {current_working(at)}; |i| / I_peak = {m.quotient(i)}"
 
 
-def _current_bound(block: Block) -> FloatArray:
-    return block.current_peak / block.motors.peak_current_a
-
-
 MOTOR_PEAK_CURRENT = Check(
     key="motor_peak_current",
     title="Motor peak current",
@@ -269,7 +289,7 @@ MOTOR_PEAK_CURRENT = Check(
     source="Peak current of the data sheet (demagnetisation or saturation limit)",
     needs=(_PEAK_CURRENT,),
     measure=_current_measure,
-    bound=_current_bound,
+    bound=lambda block: (block.of_peak(block.judged.torque_constant_nm_per_a * block.motors.peak_current_a),),
     working=_current_working,
 )
 
@@ -289,10 +309,6 @@ def _speed_working(sets: Sets, i: int) -> str:
     )
 
 
-def _speed_bound(block: Block) -> FloatArray:
-    return block.speed_peak / block.motors.speed_max_rad_s
-
-
 MOTOR_SPEED = Check(
     key="motor_speed",
     title="Motor speed",
@@ -303,7 +319,7 @@ MOTOR_SPEED = Check(
     source="Maximum speed of the data sheet",
     needs=(Need("motors", "speed_max_rad_s", "maximum speed", "maximum linear speed"),),
     measure=_speed_measure,
-    bound=_speed_bound,
+    bound=lambda block: (block.of_speed(block.demand.shaft_speed_peak, block.motors.speed_max_rad_s),),
     working=_speed_working,
 )
 
@@ -315,17 +331,15 @@ def _voltage_measure(sets: Sets) -> Measure:
 
 def _voltage_working(sets: Sets, i: int) -> str:
     m = _voltage_measure(sets)
-    at = instant_of(sets, i, m.instant(i), "voltage")
+    cold = bool(sets.pairs.voltage_is_cold[i])
+    at = instant_of(sets, i, m.instant(i), "voltage", cold=cold)
     with_slope = sets.pairs.voltage_peak_v[i] > sets.pairs.voltage_peak_without_inductance_v[i]
     note = "" if with_slope else " (the value without L di/dt governs)"
     return (
-        f"{torque_working(at)}; {current_working(at)}; {voltage_working(at, with_slope=bool(with_slope))}{note}; "
+        f"{torque_working(at)}; {temperature_working(at, cold=cold)}; {current_working(at)}; "
+        f"{voltage_working(at, with_slope=bool(with_slope))}{note}; "
         f"{available_voltage_working(sets, i)}; {m.quotient(i)}"
     )
-
-
-def _voltage_bound(block: Block) -> FloatArray:
-    return block.voltage_peak / block.judged.voltage_available_v
 
 
 VOLTAGE = Check(
@@ -333,11 +347,12 @@ VOLTAGE = Check(
     title="Voltage",
     group="motor",
     unit="V",
-    formula="max √((R i + K ω + L di/dt)² + (p ω L i)²) ≤ U_bus,min · m in the motor's basis",
+    formula="max √((R i + K ω + L di/dt)² + (p ω L i)²) ≤ U_bus,min · m in the motor's basis; hot (R large) or at "
+    "ambient (cold magnets: K large), whichever is worse",
     source="DC-equivalent machine; textbook dq relations at i_d = 0; the larger of the values with and without "
     "L di/dt counts",
     needs=(),
     measure=_voltage_measure,
-    bound=_voltage_bound,
+    bound=lambda block: block.voltage,
     working=_voltage_working,
 )

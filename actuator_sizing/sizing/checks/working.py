@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.core.machine import JudgedMotor, current_of_torque, judge
+from actuator_sizing.core.machine import JudgedMotor, current_of_torque, judge, judge_cold
 from actuator_sizing.core.parameters import BASIS_PEAK, BASIS_RMS, GearheadParameters, MotorParameters
 from actuator_sizing.core.quadrature import integrate, interpolate
 from actuator_sizing.core.transmission import stage_factor
@@ -22,7 +22,7 @@ _BASIS_FACTOR = {BASIS_RMS: " · √(3/2)", BASIS_PEAK: " · √3/2"}
 
 @dataclass(frozen=True)
 class Instant:
-    """One set at one instant of the cycle, at judged temperatures."""
+    """One set at one instant of the cycle, at judged temperatures or at ambient."""
 
     motor: MotorParameters  # one row
     gearhead: GearheadParameters  # one row
@@ -47,7 +47,7 @@ class Instant:
         return ("N", "m/s", "m/s²") if self.linear else ("N·m", "rad/s", "rad/s²")
 
 
-def instant_of(sets: Sets, i: int, at_s: float, largest: str) -> Instant:
+def instant_of(sets: Sets, i: int, at_s: float, largest: str, *, cold: bool = False) -> Instant:
     """Set i at an instant; where two pieces meet, the one with the larger `largest` ("torque" or "voltage").
 
     Parameters
@@ -60,6 +60,8 @@ def instant_of(sets: Sets, i: int, at_s: float, largest: str) -> Instant:
         Instant within the cycle. [s]
     largest : str
         What decides between the two sides of a border. [-]
+    cold : bool
+        At ambient instead of the judged temperatures. [-]
 
     Returns
     -------
@@ -68,7 +70,7 @@ def instant_of(sets: Sets, i: int, at_s: float, largest: str) -> Instant:
     """
     demand = sets.demand
     motor, gearhead = sets.motors.take(slice(i, i + 1)), sets.gearheads.take(slice(i, i + 1))
-    judged = judge(motor, sets.surroundings)
+    judged = (judge_cold if cold else judge)(motor, sets.surroundings)
     c = course(demand, motor, gearhead, judged)
     end = demand.start_s + demand.duration_s
     slack = 1e-9 * demand.cycle_s
@@ -148,8 +150,10 @@ def voltage_working(at: Instant, *, with_slope: bool) -> str:
     slope = at.current_slope if with_slope else 0.0
     along = R * at.current + K * at.speed + L * slope
     across = X * at.speed * at.current
+    cable = float(j.cable_ohm[0])
+    with_cable = f" with {digits(cable)} Ω of cable" if cable > 0.0 else ""
     return (
-        f"R = {digits(R)} Ω at winding {digits(float(j.winding_degc[0]))} °C; "
+        f"R = {digits(R)} Ω at winding {digits(float(j.winding_degc[0]))} °C{with_cable}; "
         f"R i + K ω + L di/dt = {digits(R)} · {digits(at.current)} + {digits(K)} · {digits(at.speed)} + "
         f"{digits(L)} · {digits(slope)} = {digits(along)} V; p ω L i = {digits(X)} · "
         f"{digits(at.speed)} · {digits(at.current)} = {digits(across)} V; u = √({digits(along)}² + "
@@ -188,6 +192,13 @@ def voltage_limit_working(sets: Sets, i: int, at: Instant) -> str:
         f"i = ({sign}R K ω + √((R K ω)² − (R² + (p ω L)²)((K ω)² − U²))) / (R² + (p ω L)²) = {digits(current)} A; "
         f"T_available = {digits(K)} · {digits(current)}{saturation} = {digits(torque)} {unit}"
     )
+
+
+def temperature_working(at: Instant, *, cold: bool) -> str:
+    """Which state of the motor governs."""
+    winding, magnet = (digits(float(x[0])) for x in (at.judged.winding_degc, at.judged.magnet_degc))
+    state = "cold, at ambient" if cold else "hot"
+    return f"the motor {state} governs (winding {winding} °C, magnet {magnet} °C)"
 
 
 def available_voltage_working(sets: Sets, i: int) -> str:

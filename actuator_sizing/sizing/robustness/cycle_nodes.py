@@ -5,6 +5,7 @@ Arrays of node values have the shape (P, K, B) here, samples last: long rows are
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from functools import cached_property
 from typing import Any
@@ -14,6 +15,7 @@ from numpy.polynomial import legendre
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
+from actuator_sizing.core.life import BALL_EXPONENT, ROLLER_EXPONENT
 from actuator_sizing.core.machine import saturation_coefficient
 from actuator_sizing.core.process_load import TIME
 from actuator_sizing.core.quadrature import (
@@ -23,7 +25,7 @@ from actuator_sizing.core.quadrature import (
     lobatto,
     to_series,
 )
-from actuator_sizing.core.transmission import BACK_DRIVING, GEAR_EXPONENT, MOTORING, STANDSTILL, stage_factor
+from actuator_sizing.core.transmission import BACK_DRIVING, MOTORING, STANDSTILL, stage_factor
 from actuator_sizing.sizing.demand import Demand
 from actuator_sizing.sizing.robustness.state import Samples
 
@@ -182,15 +184,15 @@ class MovedLoad:
         As in `core.moments`. [-]
     torque : ndarray, shape (P, K, B)
         At the driven shaft. [N·m]
-    torque_equivalent : ndarray, shape (B,)
-        For the wear of a gearhead. [N·m]
+    torque_equivalent : mapping of float to ndarray of shape (B,)
+        For the wear of a gearhead, by exponent. [N·m]
     load_inertia : ndarray, shape (B,)
         Largest, at the driven shaft. [kg·m²]
     """
 
     functions: FloatArray
     torque: FloatArray
-    torque_equivalent: FloatArray
+    torque_equivalent: Mapping[float, FloatArray]
     load_inertia: FloatArray
 
 
@@ -255,9 +257,15 @@ def moved_load(nodes: CycleNodes, samples: Samples) -> MovedLoad:
     each = np.array([s.payload for s in samples.case.segments])
     carried = np.stack([_changed_payload(samples, value) for value in each])
     turned = nodes.mean(np.abs(functions[5]))
-    worked = nodes.mean(np.abs(functions[5]) * np.abs(torque) ** GEAR_EXPONENT)
     with np.errstate(divide="ignore", invalid="ignore"):
-        equivalent = np.where(turned > 0.0, (worked / turned) ** (1.0 / GEAR_EXPONENT), 0.0)
+        equivalent = {
+            p: np.where(
+                turned > 0.0,
+                (nodes.mean(np.abs(functions[5]) * np.abs(torque) ** p) / turned) ** (1.0 / p),
+                0.0,
+            )
+            for p in (BALL_EXPONENT, ROLLER_EXPONENT)
+        }
     return MovedLoad(
         functions=functions,
         torque=torque * np.ones(shape),

@@ -11,13 +11,13 @@ from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case, Limit
 from actuator_sizing.sizing.checks import Check, Sets
-from actuator_sizing.sizing.demand import Demand, build_demand
+from actuator_sizing.sizing.cycles import CycleDemand, cycle_demands, evaluate_cycles
+from actuator_sizing.sizing.demand import Demand
 from actuator_sizing.sizing.judging import NOT_APPLICABLE, ORDER, active_checks, is_binding, judge_sets
 from actuator_sizing.sizing.results import NOT_CHECKED
 from actuator_sizing.sizing.robustness.inputs import SpreadInputs, spread_inputs
 from actuator_sizing.sizing.robustness.sampled_sets import SAMPLED_CHECKS, SAMPLED_QUANTITIES, Sampler
 from actuator_sizing.sizing.robustness.state import Samples, rows_of, samples_of
-from actuator_sizing.sizing.shortlist import evaluate_sets
 
 FloatArray = NDArray[np.float64]
 Progress = Callable[[float], None]
@@ -31,7 +31,7 @@ _UNKNOWN = ORDER.index(NOT_CHECKED)
 
 @dataclass(frozen=True)
 class Judged:
-    """N samples against C checks; `quantities` hold one array of shape (N,) by name."""
+    """N samples against C checks; `quantities` hold one array of shape (N,) by name, the largest of all cycles."""
 
     utilisation: FloatArray  # (N, C), NaN where the check was not made
     quantities: dict[str, FloatArray]
@@ -67,8 +67,8 @@ class SetEvaluator:
     ----------
     case : Case
         A case of one set. [-]
-    demand : Demand
-        Its cycle without spread. [-]
+    cycles : tuple of CycleDemand
+        Its cycles without spread. [-]
     inputs : SpreadInputs
         The d inputs. [-]
     checks, limits : tuple of Check, tuple of Limit
@@ -82,7 +82,7 @@ class SetEvaluator:
     """
 
     case: Case
-    demand: Demand
+    cycles: tuple[CycleDemand, ...]
     inputs: SpreadInputs
     checks: tuple[Check, ...]
     limits: tuple[Limit, ...]
@@ -92,15 +92,16 @@ class SetEvaluator:
 
     @classmethod
     def of(cls, case: Case, demand: Demand | None = None) -> SetEvaluator:
-        """Prepare a case of one set, as from `case_of_set`."""
-        demand = demand if demand is not None else build_demand(case)
+        """Prepare a case of one set, as from `case_of_set`, perhaps with the demand of its one cycle."""
+        one = demand is not None and len(case.cycles) < 2
+        cycles = (CycleDemand(case, demand),) if one and demand is not None else cycle_demands(case)
         inputs = spread_inputs(case)
         checks, limits = active_checks(case.limits)
-        verdicts = judge_sets(evaluate_sets(case, demand, np.zeros((1, 3), dtype=np.intp)), checks, limits)
+        verdicts = judge_sets(evaluate_cycles(cycles, np.zeros((1, 3), dtype=np.intp)), checks, limits)
         known = [i for i, code in enumerate(verdicts.codes[0]) if code not in (NOT_APPLICABLE, _UNKNOWN)]
         return cls(
             case,
-            demand,
+            cycles,
             inputs,
             tuple(checks[i] for i in known),
             tuple(limits[i] for i in known),
@@ -173,8 +174,11 @@ class SetEvaluator:
 
     @cached_property
     def _sampler(self) -> Sampler | None:
-        can = self.demand.heat_start is None and "duration" not in {i.column.name for i in self.inputs.inputs}
-        return Sampler.of(self.case, self.demand) if can else None
+        first = self.cycles[0]
+        can = len(self.cycles) == 1 and first.cycle.repeats and first.demand.heat_start is None
+        if not can or "duration" in {one.column.name for one in self.inputs.inputs}:
+            return None
+        return Sampler.of(self.case, first.demand)
 
     @cached_property
     def _deviation(self) -> tuple[bool, float]:
@@ -187,8 +191,8 @@ class SetEvaluator:
         columns = np.array([check.key in SAMPLED_CHECKS for check in self.checks], dtype=bool)
         try:
             quick = self._quick(values, columns).utilisation[:, columns]
-        except (TypeError, ValueError):
-            return False, np.nan  # a mechanism whose formulas take one value at a time
+        except (AttributeError, TypeError, ValueError):
+            return False, np.nan  # a mechanism or a check whose formulas take one value at a time
         exact = self.exact(values).utilisation[:, columns]
         both = np.isfinite(quick) & np.isfinite(exact)
         same_kind = np.array_equal(np.isfinite(quick), np.isfinite(exact))
@@ -241,18 +245,21 @@ class SetEvaluator:
         )
 
     def _exact_part(self, samples: Samples) -> Judged:
-        """Few samples through the whole chain: one of them with a cycle of its own, or several of the one cycle."""
+        """Few samples through the whole chain: one of them with cycles of its own, or several of the same cycles."""
         everything = tuple(range(len(self.checks)))
-        if len(samples) == 1:
-            case = samples.one(0)
-            demand = build_demand(case) if samples.moves_demand else self.demand
+        case = samples.one(0) if len(samples) == 1 else samples.parts_only()
+        if samples.moves_demand:
+            cycles = cycle_demands(case)
         else:
-            case, demand = samples.parts_only(), self.demand
+            known = zip(case.by_cycle(), self.cycles, strict=True)
+            cycles = tuple(CycleDemand(one, each.demand) for one, each in known)
         index = np.repeat(np.arange(len(samples), dtype=np.intp)[:, None], 3, axis=1)
-        sets = evaluate_sets(case, demand, index)
-        return Judged(self._judge(sets, everything), _quantities(sets))
+        sets = evaluate_cycles(cycles, index)
+        found = [_quantities(each) for each in sets]
+        largest = {name: np.fmax.reduce([one[name] for one in found]) for name in SAMPLED_QUANTITIES}
+        return Judged(self._judge(sets, everything), largest)
 
-    def _judge(self, sets: Sets, columns: tuple[int, ...]) -> FloatArray:
+    def _judge(self, sets: Sets | tuple[Sets, ...], columns: tuple[int, ...]) -> FloatArray:
         checks, limits = tuple(self.checks[i] for i in columns), tuple(self.limits[i] for i in columns)
         return judge_sets(sets, checks, limits).utilisation
 

@@ -210,10 +210,11 @@ def _duty_value(case: Case, name: str) -> float:
     """Largest payload, process effort of largest magnitude, or duration of the cycle. [-]"""
     if name == "duration":
         return case.cycle_duration_s
+    segments = [segment for one in case.by_cycle() for segment in one.segments]
     if name == "payload":
-        return max(segment.payload for segment in case.segments)
-    efforts = [segment.process_effort for segment in case.segments]
-    for segment in case.segments:
+        return max(segment.payload for segment in segments)
+    efforts = [segment.process_effort for segment in segments]
+    for segment in segments:
         if segment.process is not None:
             efforts += segment.process.efforts
     return max(efforts, key=abs)

@@ -101,7 +101,7 @@ def robust(
         raise InputError(problems)
     demand = None if comparison is None else comparison.demand
     if named:
-        from actuator_sizing.sizing.simulation import find_set
+        from actuator_sizing.sizing.simulation_request import find_set
 
         parts = find_set(case, motor, gearhead, drive)
     else:

@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
-from dataclasses import dataclass, fields
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, fields, replace
 from functools import cached_property
 from typing import cast
 
@@ -12,11 +12,19 @@ from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
 from actuator_sizing.core.capability import terminal_voltage
-from actuator_sizing.core.machine import JudgedMotor, amplitude_per_unit_current, current_of_torque, judge
+from actuator_sizing.core.life import BALL_EXPONENT, ROLLER_EXPONENT
+from actuator_sizing.core.machine import (
+    JudgedMotor,
+    current_of_torque,
+    judge,
+    judge_cold,
+    motor_amperes_per_drive_ampere,
+)
 from actuator_sizing.core.moments import gearhead_rows, motor_columns
 from actuator_sizing.core.thermal import HeatLoss, subpiece_counts, subpiece_durations, subpiece_means
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.derating import derated_drives
 from actuator_sizing.sizing.evaluation import PairResults
 from actuator_sizing.sizing.robustness.cycle_nodes import (
     CycleNodes,
@@ -77,6 +85,13 @@ class Sampler:
         matrices = tuple(subpiece_means(eye[:, None, :], np.array([count])).T for count in counts)
         return subpiece_durations(duration, counts), matrices
 
+    @cached_property
+    def _released(self) -> FloatArray:
+        """One in the parts of the cycle in which the coil of the brake is fed, shape (S,). [-]"""
+        demand = self.nodes.demand
+        fed = ~(demand.brake_closed & (demand.direction == 0.0))
+        return np.repeat(fed, [len(matrix) for matrix in self._parts[1]]).astype(float)
+
     def _means(self, values: FloatArray) -> FloatArray:
         """Means over the parts of the cycle, shape (P, K, B) to (B, S)."""
         matrices = self._parts[1]
@@ -114,6 +129,8 @@ class Sampler:
         The equations are those of `sizing.evaluation`, at the fewest nodes that hold the cycle. The largest values
         between nodes are taken from a parabola through the densest three points of the leading piece.
         """
+        surrounded = replace(self.case, drive_parameters=samples.drives, surroundings=samples.surroundings)
+        samples = replace(samples, drives=derated_drives(surrounded))
         slices = [slice(start, start + chunk) for start in range(0, len(samples), chunk)]
         parts = [_Course(self, samples.part(which)).columns() for which in slices]
         columns = {name: np.concatenate([part[name] for part in parts]) for name in parts[0]}
@@ -123,7 +140,9 @@ class Sampler:
         if samples.moves_demand:
             moved = SampledDemand(
                 shaft_torque_peak=columns["shaft_torque_peak_nm"],
-                shaft_torque_equivalent=columns["shaft_torque_equivalent_nm"],
+                shaft_torque_equivalents={
+                    p: columns[_equivalent(p)] for p in (BALL_EXPONENT, ROLLER_EXPONENT)
+                },
                 shaft_torque=self.demand.shaft_torque,
                 time_s=self.demand.time_s,
             )
@@ -154,9 +173,23 @@ class SampledDemand:
     """
 
     shaft_torque_peak: FloatArray  # (B,)
-    shaft_torque_equivalent: FloatArray  # (B,)
+    shaft_torque_equivalents: Mapping[float, FloatArray]  # by exponent, (B,)
     shaft_torque: FloatArray  # (P, K)
     time_s: FloatArray  # (P, K)
+
+    @property
+    def shaft_torque_equivalent(self) -> FloatArray:
+        """With the exponent of ball bearings, shape (B,). [N·m]"""
+        return self.shaft_torque_equivalents[BALL_EXPONENT]
+
+    def equivalent(self, _load: FloatArray, exponent: float) -> FloatArray:
+        """Equivalent torque of the samples, whose course over the cycle is not kept, shape (B,). [N·m]"""
+        return self.shaft_torque_equivalents[exponent]
+
+
+def _equivalent(exponent: float) -> str:
+    """Name of the column with the equivalent torque."""
+    return f"shaft_torque_equivalent_{exponent:.3g}_nm"
 
 
 def _without_spread(case: Case) -> Samples:
@@ -196,9 +229,7 @@ class _Course:
             self.torque = (flat @ of_torque).reshape(shape)
             self.speed = self.nodes.demand.shaft_speed[..., None] * gearheads.ratio
         self.judged: JudgedMotor = judge(motors, samples.surroundings)
-        self.current = current_of_torque(
-            self.torque, self.judged.torque_constant_nm_per_a, self.judged.saturation_per_a2
-        )
+        self.current = _current(self.torque, self.judged)
 
     def heat_loss(self) -> HeatLoss:
         """Losses of every sample at reference temperatures."""
@@ -207,6 +238,7 @@ class _Course:
         means = self.sampler._means
         by_speed = m.friction_torque_nm[:, None] * means(np.abs(self.speed))
         by_speed += m.viscous_friction_nm_s[:, None] * means(self.speed**2)
+        by_speed += m.brake_coil_w[:, None] * self.sampler._released
         return HeatLoss(
             duration_s=self.sampler._parts[0],
             copper_loss_w=(m.resistance_ohm * cold**2)[:, None] * means(self.current**2),
@@ -236,8 +268,12 @@ class _Course:
         return np.asarray(np.fmax(np.fmax(at_nodes[piece, column], values.max(axis=0)), vertex))
 
     def plane(self) -> FloatArray:
-        """Largest torque over voltage-limited torque, as in `torque_plane`."""
-        judged, each = self.judged, np.arange(len(self.samples))
+        """Largest torque over voltage-limited torque, as in `torque_plane`, hot or cold, whichever is worse."""
+        cold = judge_cold(self.samples.motors, self.samples.surroundings)
+        return np.fmax(self._plane(self.judged), self._plane(cold))
+
+    def _plane(self, judged: JudgedMotor) -> FloatArray:
+        each = np.arange(len(self.samples))
         direction = self.nodes.demand.direction[:, None, None]
         along = self.torque * np.where(direction == 0.0, 1.0, direction)
         omega = np.abs(self.speed)
@@ -262,9 +298,7 @@ class _Course:
         s, nodes, judged = self.samples, self.nodes, self.judged
         squared = self.current**2
         torque_peak = self.largest(np.abs, self.torque)
-        current_peak = np.asarray(
-            current_of_torque(torque_peak, judged.torque_constant_nm_per_a, judged.saturation_per_a2)
-        )
+        current_peak = _current(torque_peak, judged)
         mean_square = nodes.mean(squared)
         heat = hottest_winding(
             self.sampler._heat_plan,
@@ -272,8 +306,7 @@ class _Course:
             self.heat_loss(),
             s.surroundings.ambient_degc,
         )
-        of_motor = amplitude_per_unit_current(s.motors.current_basis)
-        per_drive = of_motor / amplitude_per_unit_current(s.drives.current_basis)
+        per_drive = 1.0 / motor_amperes_per_drive_ampere(s.motors, s.drives)
         in_drive = squared.reshape(-1, len(s)) * per_drive**2
         history = self.sampler._history
         return self._of_load() | {
@@ -284,11 +317,11 @@ class _Course:
             "voltage_peak_v": self._voltage(),
             "voltage_available_v": judged.voltage_available_v,
             "plane_utilisation": self.plane(),
-            "copper_loss_mean_w": judged.resistance_ohm * mean_square,
+            "copper_loss_mean_w": (judged.resistance_ohm - judged.cable_ohm) * mean_square,
             "thermal_known": heat.known,
             "has_equilibrium": heat.has_equilibrium,
             "winding_max_degc": heat.winding_max_degc,
-            "resistance_ohm": judged.resistance_ohm,
+            "resistance_ohm": judged.resistance_ohm - judged.cable_ohm,
             "torque_constant_nm_per_a": judged.torque_constant_nm_per_a,
             "judged_winding_degc": judged.winding_degc,
             "magnet_degc": judged.magnet_degc,
@@ -316,12 +349,17 @@ class _Course:
             "speed_mean_abs_rad_s": nodes.mean(np.abs(self.speed)),
             "inertia_ratio": self.moved.load_inertia / n**2 / J,
             "shaft_torque_peak_nm": self.largest(np.abs, self.moved.torque),
-            "shaft_torque_equivalent_nm": self.moved.torque_equivalent,
+            **{_equivalent(p): torque for p, torque in self.moved.torque_equivalent.items()},
         }
 
     def _voltage(self) -> FloatArray:
-        """Largest of the voltages with and without L di/dt."""
-        judged = self.judged
+        """Largest of the voltages with and without L di/dt, hot or cold."""
+        cold = judge_cold(self.samples.motors, self.samples.surroundings)
+        return np.fmax(
+            self._voltage_of(self.judged, self.current), self._voltage_of(cold, _current(self.torque, cold))
+        )
+
+    def _voltage_of(self, judged: JudgedMotor, current: FloatArray) -> FloatArray:
         electrical = (
             judged.resistance_ohm,
             judged.inductance_h,
@@ -333,7 +371,12 @@ class _Course:
             with_slope = terminal_voltage(current, speed, slope, *electrical)
             return np.maximum(with_slope, terminal_voltage(current, speed, np.zeros(1), *electrical))
 
-        return self.largest(voltage, self.current, self.speed, self.nodes.slope(self.current))
+        return self.largest(voltage, current, self.speed, self.nodes.slope(current))
+
+
+def _current(torque: FloatArray, judged: JudgedMotor) -> FloatArray:
+    """Current for an air-gap torque at the temperatures of `judged`. [A]"""
+    return np.asarray(current_of_torque(torque, judged.torque_constant_nm_per_a, judged.saturation_per_a2))
 
 
 def _overload(

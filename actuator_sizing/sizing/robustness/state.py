@@ -127,8 +127,9 @@ class Samples:
 
         moved = {name: float(value[index]) for name, value in self.mechanism.items()}
         mechanism = replace(self.case.mechanism, **moved) if moved else self.case.mechanism  # type: ignore[type-var]
+        changes = {name: Change(c.factor[row], c.added[row]) for name, c in self.segments.items()}
         return replace(
-            self.case,
+            self.case.with_segments(lambda segments: _segments(segments, changes)),
             motor_parameters=self.motors.take(row),
             gearhead_parameters=self.gearheads.take(row),
             drive_parameters=self.drives.take(row),
@@ -136,7 +137,6 @@ class Samples:
                 self.surroundings, **{k: number(v) for k, v in vars(self.surroundings).items()}
             ),
             mechanism=mechanism,
-            segments=_segments(self.case.segments, {n: self.part(row).segments[n] for n in self.segments}),
             options={**self.case.options, **{name: float(v[index]) for name, v in self.options.items()}},
         )
 

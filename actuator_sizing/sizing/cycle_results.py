@@ -1,0 +1,106 @@
+"""What each cycle of a case says of one set: its checks alone, its quantities and its curves."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from functools import partial
+
+from actuator_sizing.case.model import Limit
+from actuator_sizing.sizing.checks import Check, Sets
+from actuator_sizing.sizing.cycles import CycleDemand
+from actuator_sizing.sizing.demand import cycle_quantities
+from actuator_sizing.sizing.detail import set_detail
+from actuator_sizing.sizing.judging import ORDER, check_results, judge_sets
+from actuator_sizing.sizing.quantities import commissioning_quantities, quantities
+from actuator_sizing.sizing.results import CycleOfSet, CycleResult, SetDetail
+from actuator_sizing.sizing.set_model import SetModel
+from actuator_sizing.sizing.simulation import simulate_prepared
+
+
+def cycle_results(cycles: tuple[CycleDemand, ...]) -> tuple[CycleResult, ...]:
+    """Every cycle of a case that has several; nothing else names them.
+
+    Parameters
+    ----------
+    cycles : tuple of CycleDemand
+        The cycles. [-]
+
+    Returns
+    -------
+    tuple of CycleResult
+        Empty where there is only one. [-]
+    """
+    if len(cycles) < 2:
+        return ()
+    return tuple(CycleResult(each.case, each.demand, cycle_quantities(each.demand)) for each in cycles)
+
+
+def cycles_of_set(
+    models: tuple[SetModel, ...],
+    several: tuple[Sets, ...],
+    index: int,
+    checks: tuple[Check, ...],
+    limits: tuple[Limit, ...],
+    *,
+    with_curves: bool,
+) -> tuple[CycleOfSet, ...]:
+    """One set in each of several cycles.
+
+    Parameters
+    ----------
+    models : tuple of SetModel
+        The set, once for each cycle. [-]
+    several : tuple of Sets
+        Evaluated sets, once for each cycle. [-]
+    index : int
+        Which of them it is. [-]
+    checks, limits : tuple
+        Active checks and their limits. [-]
+    with_curves : bool
+        Whether the curves are wanted too. [-]
+
+    Returns
+    -------
+    tuple of CycleOfSet
+        Empty where there is only one cycle. [-]
+    """
+    if len(several) < 2:
+        return ()
+    found = []
+    for model, sets in zip(models, several, strict=True):
+        one = sets.only(index)
+        alone = judge_sets(one, checks, limits)
+        numbers = quantities(model, one, 0)
+        if with_curves:
+            numbers |= commissioning_quantities(model)
+        found.append(
+            CycleOfSet(
+                name=sets.case.cycle.name,
+                verdict=ORDER[int(alone.verdict[0])],
+                governing_check=checks[int(alone.governing[0])].key,
+                checks=check_results(one, alone, 0),
+                quantities=numbers,
+                detail=curves(model, one, 0) if with_curves else None,
+            )
+        )
+    return tuple(found)
+
+
+def curves(model: SetModel, sets: Sets, index: int) -> SetDetail:
+    """Curves of one set; its simulation too where the case asks how the axis moves.
+
+    Parameters
+    ----------
+    model : SetModel
+        The set. [-]
+    sets : Sets
+        Evaluated sets. [-]
+    index : int
+        Which of them the model is. [-]
+    """
+    detail = set_detail(model, sets, index)
+    if sets.dynamics is None:
+        return detail
+    motor, gearhead, drive = (int(part) for part in sets.index[index])
+    parts = (motor, gearhead, drive)
+    return replace(detail, simulation=partial(simulate_prepared, model.case, model.demand, parts))
