@@ -64,11 +64,10 @@ class CycleNodes:
         """Mean over the cycle, shape (P, K, B) to (B,). [-]"""
         return np.asarray(self.weights @ values.reshape(len(self.weights), -1))
 
-    def slope(self, values: FloatArray) -> FloatArray:
-        """Derivative with respect to time, shape (P, K, B), per second. [-]"""
-        return np.asarray(
-            (differentiation_matrix(self.count) @ values) * (2.0 / self.demand.duration_s)[:, None, None]
-        )
+    def slope(self, values: FloatArray, pieces: NDArray[np.intp]) -> FloatArray:
+        """Derivative with respect to time on some pieces, shape (p, K, B), per second. [-]"""
+        scale = (2.0 / self.demand.duration_s[pieces])[:, None, None]
+        return np.asarray((differentiation_matrix(self.count) @ values) * scale)
 
     @cached_property
     def dense(self) -> FloatArray:

@@ -17,7 +17,7 @@ from actuator_sizing.sizing.robustness.cycle_nodes import CycleNodes
 
 FloatArray = NDArray[np.float64]
 
-_PER_PIECE = 13  # instants on each piece
+_PER_PIECE = 9  # instants on each piece
 
 
 @dataclass(frozen=True)
@@ -58,6 +58,11 @@ class CurrentHistory:
         )
         inside = inside + wraps[:, None] * total + turns * total
         return cls(time, integral, inside / window_s)
+
+    def of_basis(self, basis: FloatArray) -> CurrentHistory:
+        """The same for squares that are sums over a basis: columns of shape (P·K, n), weights of shape (n, B)."""
+        window = None if self.window is None else self.window @ basis
+        return CurrentHistory(self.time_s, self.integral @ basis, window)
 
     def windowed_square(self, squared: FloatArray) -> FloatArray:
         """Largest mean square over the window, squares of shape (P·K, B) to (B,). [A²]"""

@@ -9,13 +9,22 @@ from numpy.typing import NDArray
 
 from actuator_sizing.core.thermal import HeatLoss, ThermalNetwork, periodic_state, steady_state
 from actuator_sizing.core.thermal_cycle import cycle_map, newton_step, runs_away
-from actuator_sizing.core.thermal_kernel import ARRAYS, Steps, coefficients, sub_steps
+from actuator_sizing.core.thermal_kernel import (
+    ARRAYS,
+    Steps,
+    coefficients,
+    select_coefficients,
+    select_steps,
+    sub_steps,
+)
 from actuator_sizing.core.thermal_network import known_candidates, select_candidates
 
 FloatArray = NDArray[np.float64]
 
 _ITERATIONS = 4
-_SETTLED_K = 1e-3  # Newton is quadratic: the step after one that small is below a millionth of it
+#: The last step of Newton's method: it is quadratic, so that what is left after it is a thousandth of this; and what
+#: the cycle may miss its start by, of which the hottest instant moves by an unknown part.
+_SETTLED_K, _SHORT_K = 0.5, 0.02
 
 
 @dataclass(frozen=True)
@@ -30,11 +39,14 @@ class HeatPlan:
         Length of each step. [s]
     offset_k : tuple of float
         Start of the cycle above the steady state of the mean loss, winding and housing. [K]
+    loss_w : float
+        Mean copper loss that this offset belongs to. [W]
     """
 
     piece: list[int]
     duration_s: list[float]
     offset_k: tuple[float, float]
+    loss_w: float
 
     @classmethod
     def of(cls, network: ThermalNetwork, loss: HeatLoss, ambient_degc: float) -> HeatPlan:
@@ -47,7 +59,9 @@ class HeatPlan:
             np.nan_to_num(periodic.housing_start_degc[0] - steady.housing_degc[0]),
         )
         known = np.isfinite(offset[0])
-        return cls(steps.piece, steps.duration, (float(offset[0]), float(offset[1])) if known else (0.0, 0.0))
+        mean = float(loss.copper_loss_w[0] @ loss.duration_s / np.sum(loss.duration_s))
+        offsets = (float(offset[0]), float(offset[1])) if known else (0.0, 0.0)
+        return cls(steps.piece, steps.duration, offsets, mean)
 
 
 @dataclass(frozen=True)
@@ -91,22 +105,29 @@ def hottest_winding(
     ambient = np.broadcast_to(np.asarray(ambient_degc, dtype=float), known.shape)
     with np.errstate(all="ignore"):
         steady = steady_state(network, loss, ambient)  # type: ignore[arg-type]
-        x1 = np.where(steady.has_equilibrium, steady.winding_degc + plan.offset_k[0], ambient)
+        share = loss.copper_loss_w @ loss.duration_s / (np.sum(loss.duration_s) * plan.loss_w)
+        x1 = np.where(steady.has_equilibrium, steady.winding_degc + share * plan.offset_k[0], ambient)
         housing = steady.has_equilibrium & np.isfinite(steady.housing_degc)
-        x2 = np.where(housing, steady.housing_degc + plan.offset_k[1], ambient)
+        x2 = np.where(housing, steady.housing_degc + share * plan.offset_k[1], ambient)
         k = coefficients(network, loss, ambient)
         steps = _steps(plan, network, loss)
         open_, hottest = known.copy(), np.full(len(known), np.nan)
         for _ in range(_ITERATIONS):
-            at = cycle_map(k, steps, ARRAYS, x1, x2)
-            move1, move2 = newton_step(at)
-            good = ~runs_away(k, at, ARRAYS) & (np.abs(move1) + np.abs(move2) <= _SETTLED_K)
-            settled = open_ & good  # each sample by itself, whatever the others need
-            hottest = np.where(settled, at.hottest_winding + move1, hottest)
-            open_ &= ~settled
             if not open_.any():
                 break
-            x1, x2 = x1 + move1, x2 + move2
+            left = open_.copy()
+            own, course = select_coefficients(k, left), select_steps(steps, left)
+            at = cycle_map(own, course, ARRAYS, x1[left], x2[left])
+            move1, move2 = newton_step(at)
+            # The start moves by `move`, the end by `move` less what the cycle was short of: between them lies the
+            # hottest instant, each sample by itself whatever the others need.
+            settled = (np.abs(at.move1) <= _SHORT_K) & (np.abs(move1) + np.abs(move2) <= _SETTLED_K)
+            settled &= ~runs_away(own, at, ARRAYS)
+            done = np.flatnonzero(left)[settled]
+            hottest[done] = (at.hottest_winding + move1 - 0.5 * at.move1)[settled]
+            open_[done] = False
+            x1[left] += move1
+            x2[left] += move2
     found = known & ~open_
     if open_.any():
         solved = periodic_state(*select_candidates(network, loss, open_), ambient[open_])
