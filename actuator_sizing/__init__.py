@@ -26,6 +26,7 @@ if TYPE_CHECKING:
     from actuator_sizing.case.starting import start_case
     from actuator_sizing.report.revision import read_results
     from actuator_sizing.sizing import compare
+    from actuator_sizing.sizing.headroom import headroom
     from actuator_sizing.sizing.machine import compare_machine
     from actuator_sizing.sizing.robustness.robust import robust
     from actuator_sizing.sizing.simulation import simulate
@@ -37,6 +38,7 @@ __all__ = [
     "compare",
     "compare_machine",
     "convert_case",
+    "headroom",
     "read_case",
     "read_results",
     "robust",
@@ -52,6 +54,7 @@ _HOMES = {
     "compare": "actuator_sizing.sizing",
     "compare_machine": "actuator_sizing.sizing.machine",
     "convert_case": "actuator_sizing.case.converting",
+    "headroom": "actuator_sizing.sizing.headroom",
     "read_case": "actuator_sizing.case.reading",
     "read_results": "actuator_sizing.report.revision",
     "robust": "actuator_sizing.sizing.robustness.robust",

@@ -140,7 +140,15 @@ def audit(case: Path) -> int:
     type=click.IntRange(min=0),
     default=0,
     metavar="N",
-    help="For the N nearest losers, find the smallest change of each lever that lets them pass.",
+    help="For the N nearest losers, find the smallest change of each lever that lets them pass; for a leading "
+    "set with low reserve, the change that gives it more.",
+)
+@click.option(
+    "--trade-offs", is_flag=True, help="Find the sets that no other beats in price, mass, energy and reserve."
+)
+@click.option("--ratios", is_flag=True, help="Work out which transmission ratios each motor can live with.")
+@click.option(
+    "--headroom", is_flag=True, help="Find what the leading set can do at most, as 'headroom' does."
 )
 @click.option("--pdf/--no-pdf", default=None, help="Write the PDF too; default: if its package is installed.")
 @click.option(
@@ -166,6 +174,9 @@ def compare(
     as_json: bool,
     since: Path | None,
     levers: int,
+    trade_offs: bool,
+    ratios: bool,
+    headroom: bool,
     pdf: bool | None,
     workers: int | None,
     cluster: str | None,
@@ -196,6 +207,9 @@ def compare(
             rank_by=rank_by,
             detail=detail,
             levers=levers,
+            trade_offs=trade_offs,
+            windows=ratios,
+            headroom=headroom,
             progress=progress,
             executor=executor,
             checkpoint=checkpoint,
@@ -281,7 +295,12 @@ def machine(
     "--set", "changes", multiple=True, metavar="SETTING=VALUE", help="Change a setting of the loops."
 )
 @click.option("--cycle", default="", metavar="NAME", help="Cycle of a case with several; default: the first.")
-@click.option("--rate", type=float, metavar="HZ", help="Sampling rate; default: the drive's control rate.")
+@click.option(
+    "--rate",
+    type=click.FloatRange(min=0.0, min_open=True),
+    metavar="HZ",
+    help="Sampling rate; default: the drive's control rate.",
+)
 @click.option("--cycles", type=click.IntRange(min=1), default=1, metavar="N", help="How many cycles to run.")
 @click.option(
     "--out", type=click.Path(file_okay=False, path_type=Path), help="Write tables and figures here."
@@ -313,6 +332,8 @@ def simulate(
     from actuator_sizing.sizing.simulation import simulate as simulate_set
     from actuator_sizing.sizing.simulation_request import parse_settings
 
+    if rate is not None and math.isnan(rate):
+        raise click.BadParameter("nan is not a sampling rate", param_hint="--rate")
     simulation = simulate_set(
         read_case(case),
         motor=motor,
@@ -331,6 +352,49 @@ def simulate(
         click.echo(render_simulation_json(simulation).rstrip(b"\n"))
     else:
         print_simulation(simulation, written)
+
+
+@commands.command()
+@_case_argument("case")
+@click.option("--motor", metavar="NAME", help="Motor; without any part, the best set of 'compare'.")
+@click.option("--gearhead", metavar="NAME", help="Gearhead; without it, direct drive.")
+@click.option("--drive", metavar="NAME", help="Drive.")
+@click.option("--map", "with_map", is_flag=True, help="Work out the map of payload against cycle time too.")
+@click.option(
+    "--out", type=click.Path(file_okay=False, path_type=Path), help="Write tables, results and the map here."
+)
+@click.option("--json", "as_json", is_flag=True, help="Print the limits as JSON.")
+@_debug
+def headroom(
+    case: Path,
+    motor: str | None,
+    gearhead: str | None,
+    drive: str | None,
+    with_map: bool,
+    out: Path | None,
+    as_json: bool,
+) -> int:
+    """Find what one set of CASE can do at most.
+
+    Drives cycle time, each move, payload, ambient, holding and dwell to their limits, one at a time, and names
+    the check that bounds each.
+    """
+    from actuator_sizing.case.reading import read_case
+    from actuator_sizing.console import ProgressBar
+    from actuator_sizing.headroom_console import print_headroom
+    from actuator_sizing.report.headroom_files import render_headroom_json, write_headroom
+    from actuator_sizing.sizing.headroom import headroom as find_headroom
+
+    with ProgressBar() as progress:
+        found = find_headroom(
+            read_case(case), motor=motor, gearhead=gearhead, drive=drive, with_map=with_map, progress=progress
+        )
+    written = write_headroom(found, out) if out is not None else ()
+    if as_json:
+        click.echo(render_headroom_json(found).rstrip(b"\n"))
+    else:
+        print_headroom(found, written)
+    return PASSED if found.present.is_met else NONE_PASSES
 
 
 @commands.command()

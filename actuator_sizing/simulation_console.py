@@ -18,11 +18,13 @@ if TYPE_CHECKING:
 _AT_LOAD = {"following_error_peak", "following_error_rms", "overshoot", "encoder_step_at_load"}
 _SHOWN = (
     "following_error_peak", "following_error_peak_at_s", "following_error_rms", "overshoot", "settling_time_s",
-    "settling_available_s", "current_peak_a", "current_rms_a", "voltage_peak_v", "current_saturated_s",
+    "settling_available_s", "current_peak_a", "current_rms_a", "direct_current_peak_a", "voltage_peak_v",
+    "current_saturated_s",
     "voltage_saturated_s", "encoder_step_at_load", "step_voltage_v", "step_final_speed_rad_s", "step_rise_time_s",
     "step_peak_time_s", "step_overshoot_ratio", "step_settling_time_s", "step_peak_current_a",
     "load_step_nm", "load_step_speed_change_rad_s", "sine_frequency_hz", "sine_amplitude_v", "ripple_current_a",
     "ripple_current_phase_rad", "ripple_speed_rad_s", "ripple_speed_phase_rad", "stop_from_speed_rad_s",
+    "stop_reaction_s",
     "controlled_stop_s", "controlled_stop_distance", "shorted_stop_s", "shorted_stop_distance",
     "shorted_stop_peak_current_a", "final_speed_rad_s", "final_angle_rad", "speed_peak_rad_s", "events",
     "resonance_hz", "antiresonance_hz", "current_bandwidth_hz", "speed_bandwidth_hz", "position_bandwidth_hz",
@@ -42,6 +44,8 @@ def print_simulation(simulation: Simulation, written: Sequence[Path]) -> None:
     written : sequence of Path
         Files that were written.
     """
+    from actuator_sizing.report.loop_settings import setting_unit
+
     click.echo(f"{clean(simulation.label)}, input {clean(simulation.input)}, every {simulation.step_s:.4g} s")
     for line in _answers(simulation):
         click.echo(line)
@@ -50,7 +54,8 @@ def print_simulation(simulation: Simulation, written: Sequence[Path]) -> None:
         click.echo(f"  stop after {clean(str(move.segment))}: {settled}")
     click.echo(f"settings (SI; the speed loop is limited by: {simulation.limited_by})")
     for name, value in simulation.gains.items():
-        click.echo(f"  {name} = {value if isinstance(value, str | bool) else format(value, '.5g')}")
+        shown = value if isinstance(value, str | bool) else format(value, ".5g")
+        click.echo(f"  {name} = {shown} {setting_unit(name)}".rstrip())
     for note in simulation.notes:
         click.echo(f"note: {clean(note)}")
     if written:

@@ -73,7 +73,11 @@ def sets_of(
     motors = [dict(STRONG, **(motor or {}))]
     gearheads = [dict(DIRECT if gearhead is None else dict(GEARHEAD, ratio=2.0), **(gearhead or {}))]
     drives = [dict(DRIVE, **(drive or {}))]
-    tables = {"motors": motor_columns, "gearheads": gearhead_columns, "drives": SWITCHING | (drive_columns or {})}
+    tables = {
+        "motors": motor_columns,
+        "gearheads": gearhead_columns,
+        "drives": SWITCHING | (drive_columns or {}),
+    }
     count = 2 if any(isinstance(v, tuple) for part in tables.values() for v in (part or {}).values()) else 1
     made = case(mechanism, values, segments, motors=motors * count, gearheads=gearheads * count,
                 drives=drives * count, surroundings=replace(SURROUNDINGS, cable_ohm=cable_ohm),

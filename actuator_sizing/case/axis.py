@@ -314,6 +314,11 @@ def _check(axis: Axis, problems: ProblemList) -> None:
                         got=f"no motor cable {other}", allowed="both of them, or neither",
                         remedy=f"Add the motor cable {other}; one alone gives no resistance.")  # fmt: skip
     stated = axis.rows
+    if axis.number("screw_root_diameter") >= axis.number("screw_diameter"):
+        problems.report(_TABLE, stated.get("screw_root_diameter"), "screw root diameter",
+                        got=f"{1e3 * axis.number('screw_root_diameter'):g} mm",
+                        allowed=f"below the screw diameter of {1e3 * axis.number('screw_diameter'):g} mm",
+                        remedy="Check both diameters and their units.")  # fmt: skip
     diameters = axis.number("screw_diameter"), axis.number("thread_mean_diameter")
     if np.isfinite(axis.number("thread_friction_coefficient")) and np.isnan(diameters).all():
         problems.report(_TABLE, stated.get("thread_friction_coefficient"), "thread friction coefficient",

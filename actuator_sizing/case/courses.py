@@ -109,7 +109,8 @@ def _check_point_instants(points: ParsedTable, problems: ProblemList) -> None:
         np.isfinite(points.number(key)) | points.is_bad(key) for key in ("time", "master_angle")
     )
     problems.report_rows("points", points.rows, points.heading("time"), has_time == has_angle,
-                         got=lambda i: "a time and a master angle" if has_time[i] else "neither time nor master angle",
+                         got=lambda i: "a time and a master angle" if has_time[i]
+                         else "neither time nor master angle",
                          allowed="one of the two", remedy="Fill in one of the cells.")  # fmt: skip
     first: dict[str, int] = {}
     mixed = np.zeros(len(points), dtype=bool)

@@ -64,7 +64,8 @@ def fingerprint(
     for label, value in axis:
         add("axis", label, value)
     for table in (
-        "map", "inertias", "resistor_pulses", "duty_cycle", "duty_types", "cycles", "points", "process", "measured",
+        "map", "inertias", "resistor_pulses", "bus_partners", "duty_cycle", "duty_types", "cycles", "points",
+        "process", "measured",
     ):  # fmt: skip
         rows = [entry for entry in entries if entry.table == table and entry.column not in _NOT_HASHED]
         order = {row: position for position, row in enumerate(sorted({entry.row or 0 for entry in rows}))}

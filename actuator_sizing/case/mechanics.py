@@ -143,7 +143,7 @@ def _first_complaint(
         if complaint is not None or astray:
             continue
         if np.min(q) < low - margin or np.max(q) > high + margin:
-            complaint = _out_of_reach(mechanism, at_shaft, q, low, high)
+            complaint = out_of_reach(mechanism, at_shaft, q, low, high)
             continue
         geometry = mechanism.transfer(q, at_shaft)
         v = geometry.load_rate * dq
@@ -153,7 +153,9 @@ def _first_complaint(
     return complaint, end
 
 
-def _out_of_reach(mechanism: Mechanism, at_shaft: bool, q: np.ndarray, low: float, high: float) -> Complaint:
+def out_of_reach(mechanism: Mechanism, at_shaft: bool, q: np.ndarray, low: float, high: float) -> Complaint:
+    """What to say of a motion q that leaves the reach from `low` to `high`, in m or rad of the stated motion."""
+
     def shown(value: float) -> str:
         if not np.isfinite(value):
             return "any distance"

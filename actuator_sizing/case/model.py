@@ -158,6 +158,20 @@ class Catalog:
 
 
 @dataclass(frozen=True)
+class BusPartner:
+    """Another axis on the same DC bus: one row of the table `bus_partners`."""
+
+    row: int
+    name: str
+    path: str  # of its case, relative to the case that names it
+    motor: str  # empty: the best set of that case
+    gearhead: str  # empty: direct drive, or the best set
+    drive: str
+    offset_s: float  # start of its cycle after that of this axis; NaN: free
+    axis: Case | None = None  # its case, once it has been read
+
+
+@dataclass(frozen=True)
 class Case:
     """Everything known about one axis."""
 
@@ -180,6 +194,7 @@ class Case:
     problems: tuple[Problem, ...]  # warnings and notes only; errors never make a Case
     fingerprint: str
     recording: Recording | None = None  # a measured cycle in place of planned segments
+    partners: tuple[BusPartner, ...] = ()  # other axes on the same bus
     resistor_pulses: tuple[tuple[float, float], ...] = ()  # of the brake resistor: length [s] and energy [J]
     parts: tuple[Part, ...] = ()  # inertia inventory; already added to mechanism and gearhead parameters
     #: every cycle, `segments` being those of the first; empty: one without a name, which repeats

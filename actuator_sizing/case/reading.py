@@ -45,13 +45,17 @@ def read_case(path: str | Path) -> Case:
     return replace(case, problems=tuple(dict.fromkeys((*case.problems, *audit_catalogs(case)))))
 
 
-def check_case(path: str | Path) -> tuple[Case | None, tuple[Problem, ...]]:
+def check_case(
+    path: str | Path, *, with_partners: bool = True
+) -> tuple[Case | None, tuple[Problem, ...]]:
     """Read a case and give it with every problem, warning and note; does not raise for wrong input.
 
     Parameters
     ----------
     path : str or Path
         A workbook (``.xlsx``) or a folder of CSV files.
+    with_partners : bool
+        Read the cases of other axes on its bus too.
 
     Returns
     -------
@@ -61,6 +65,7 @@ def check_case(path: str | Path) -> tuple[Case | None, tuple[Problem, ...]]:
         Errors first.
     """
     from actuator_sizing.case.axis import Axis, understand_axis
+    from actuator_sizing.case.partners import join_partners
     from actuator_sizing.case.understanding import understand
 
     place, problems = Path(path), ProblemList()
@@ -75,6 +80,9 @@ def check_case(path: str | Path) -> tuple[Case | None, tuple[Problem, ...]]:
     _report_missing_tables(raw, problems)
     name = place.resolve().stem if place.is_file() else place.resolve().name
     case = understand(raw, axis, problems, name, place)
+    if case is not None and case.partners and with_partners:
+        case = join_partners(case, place, problems, lambda other: check_case(other, with_partners=False))
+        case = None if problems.has_errors else replace(case, problems=problems.finished())
     return case, problems.finished()
 
 

@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 from actuator_sizing.case.raw_tables import MAX_ROWS, RawTable
 
 _DELIMITERS = ",;\t"
+_HEAD = 20_000  # characters that show how the rows are written
 _FEW_BYTES = 200_000  # below this the ordinary way is as quick, and its messages name the cell
 
 
@@ -36,16 +37,23 @@ def read_samples(path: Path, name: str) -> NumberTable | None:
             return None
         with path.open(encoding="utf-8-sig", errors="strict", newline="") as stream:
             line = stream.readline().rstrip("\r\n")
-            second = stream.readline()
+            head = stream.read(_HEAD).splitlines()[:-1]
     except (OSError, UnicodeDecodeError):
         return None
-    delimiter = max(_DELIMITERS, key=second.count)
+    delimiter = max(_DELIMITERS, key=line.count)  # of the headings: a comma in the rows may be a decimal one
     headings = tuple(cell.strip().strip('"').strip() for cell in line.split(delimiter))
-    if not all(headings) or len(headings) != second.count(delimiter) + 1 or len(headings) < 2:
+    if (
+        not all(headings)
+        or any(len(headings) != row.count(delimiter) + 1 for row in head)
+        or len(headings) < 2
+    ):
         return None
+    marks = {mark for mark in ".," if mark != delimiter and any(mark in row for row in head)}
+    if len(marks) > 1:
+        return None  # thousands separators
     import pandas as pd
 
-    decimal = "," if "," in second and delimiter != "," else "."
+    decimal = marks.pop() if marks else "."
     try:
         frame = pd.read_csv(path, sep=delimiter, decimal=decimal, header=0, names=list(range(len(headings))),
                             dtype=np.float64, encoding="utf-8-sig", na_filter=False, nrows=MAX_ROWS + 1,

@@ -247,6 +247,10 @@ COMMON_QUANTITIES = (
            positive=True, maximum=1.0e7, example="", unit="s"),
     Column("smoothing cut-off", "frequency", "measured motion is not followed above this frequency; it is a choice "
            "that decides the acceleration", positive=True, maximum=1.0e6, example="", unit="Hz"),
+    Column("standstill speed", ("linear speed", "angular speed"), "a measured motion slower than this throughout "
+           "half a period of the cut-off is taken as standstill; when empty, what the scatter of the samples "
+           "makes of it, 0.1 to 1 % of the peak speed",
+           minimum=0.0, example="", unit=("m/s", "rpm")),
     Column("remove drift", YES_NO, "whether the measured cycle is bent back so that it closes", default="no",
            assumed="the measured motion is kept", example="no"),
     Column("recorded torque constant", "torque constant", "torque at the driven shaft per ampere of the measured "
@@ -400,6 +404,8 @@ MEASURED_COLUMNS = (
            unit=("N", "N·m"), aliases=("load torque", "load effort")),
     Column("shaft torque", "torque", "all that the driven shaft must give, losses of the mechanism included",
            unit="N·m"),
+    Column("payload", ("mass", "inertia"), "carried at that instant, straight between samples",
+           minimum=0.0, example=("", ""), unit=("kg", "kg·m²")),
     Column("current", "current", "of the motor that drove the axis; needs 'recorded torque constant'", unit="A"),
 )  # fmt: skip
 
@@ -415,6 +421,17 @@ RESISTOR_PULSE_COLUMNS = (
            maximum=1.0e6, example="1", unit="s"),
     Column("pulse energy", "energy", "energy that the brake resistor takes in one pulse of that length",
            required=True, positive=True, maximum=1.0e9, example="2", unit="kJ"),
+)  # fmt: skip
+
+BUS_PARTNER_COLUMNS = (
+    Column("partner", TEXT, "name of another axis on the same DC bus", required=True, example="shuttle"),
+    Column("case", TEXT, "workbook or folder of its case, relative to this case", required=True,
+           example="../shuttle"),
+    Column("motor", TEXT, "motor of its set; without parts the best set of that case is taken", example=""),
+    Column("gearhead", TEXT, "gearhead of its set; empty for direct drive", example=""),
+    Column("drive", TEXT, "drive of its set", example=""),
+    Column("time offset", "time", "start of its cycle after the start of this axis' cycle; empty: free, and the "
+           "worst is sought", minimum=-1.0e6, maximum=1.0e6, example="", unit="s"),
 )  # fmt: skip
 
 INERTIA_SHAPES = ("solid cylinder", "hollow cylinder", "block", "point mass", "screw", "pulley", "belt", "coupling",
@@ -511,6 +528,7 @@ TABLES: dict[str, Table] = {
               "tabulated mechanisms; a smooth spline goes through the points.", MAP_COLUMNS),
         Table("resistor_pulses", "One row is one point of the pulse curve of the brake resistor, in place of 'brake "
               "resistor pulse energy'.", RESISTOR_PULSE_COLUMNS, in_template=False),
+        Table("bus_partners", "One row is another axis on the same DC bus.", BUS_PARTNER_COLUMNS, in_template=False),
         Table("inertias", "One row is one part of the inertia inventory; its inertia is added to that of the axis.",
               INERTIA_COLUMNS),
     )
@@ -526,7 +544,7 @@ def table_for(name: str, mechanism: type[Mechanism] | None, stated_at: str = "")
     says, and process efforts belong to the load.
     """
     table = TABLES[name]
-    if mechanism is None or name not in ("duty_cycle", "duty_types", "map"):
+    if mechanism is None or name not in ("duty_cycle", "duty_types", "map", "measured"):
         return table
     moved = ROTARY if (stated_at or mechanism.motion_at) == SHAFT and name != "map" else mechanism.coordinate
     if mechanism.drives_linear_motor:

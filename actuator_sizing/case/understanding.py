@@ -16,6 +16,7 @@ from actuator_sizing.case.fingerprint import fingerprint
 from actuator_sizing.case.gearheads import understand_gearheads
 from actuator_sizing.case.inertias import at_the_motor, table_entries, understand_parts, with_parts
 from actuator_sizing.case.judging import understand_limits
+from actuator_sizing.case.measured_motion import check_recorded_motion
 from actuator_sizing.case.measuring import understand_recording
 from actuator_sizing.case.mechanics import build_mechanism, check_motion, understand_map
 from actuator_sizing.case.model import MISSING, ORIGINS, STATED, Case, Catalog, Cycle, Entry
@@ -23,6 +24,8 @@ from actuator_sizing.case.motion import motion_entries
 from actuator_sizing.case.motors import understand_motors
 from actuator_sizing.case.parsed_tables import ParsedTable
 from actuator_sizing.case.parsing import parse_table
+from actuator_sizing.case.partners import understand_partners
+from actuator_sizing.case.plausible_motion import check_plausible
 from actuator_sizing.case.problem_list import ProblemList
 from actuator_sizing.case.raw_tables import RawTable
 from actuator_sizing.case.resistor import understand_pulses
@@ -73,14 +76,19 @@ def understand(
         recording = understand_recording(raw["measured"], axis, problems, motion is not None)
         cycles = (Cycle("", (recording.segment,)),) if recording else ()
     mechanism = build_mechanism(axis, understand_map(parsed.get("map"), axis, problems), problems)
-    if mechanism is not None and motion:
+    if mechanism is not None and (motion or recording):
         at_shaft = (axis.word("motion_stated_at") or mechanism.motion_at) == SHAFT
-        for cycle in cycles:
-            table = "duty_types" if cycle.duty_type else "duty_cycle"
-            check_motion(mechanism, at_shaft, cycle.segments, problems, table)
-            if cycle.duty_type:
-                check_turns(cycle, mechanism, at_shaft, problems)
+        if recording:
+            check_recorded_motion(mechanism, at_shaft, recording, problems)
+        else:
+            for cycle in cycles:
+                table = "duty_types" if cycle.duty_type else "duty_cycle"
+                check_motion(mechanism, at_shaft, cycle.segments, problems, table)
+                check_plausible(axis.motion_coordinate, cycle.segments, problems, table)
+                if cycle.duty_type:
+                    check_turns(cycle, mechanism, at_shaft, problems)
     parts = understand_parts(parsed.get("inertias"), axis.mechanism, problems)
+    partners = understand_partners(parsed.get("bus_partners"))
     pulses = understand_pulses(parsed.get("resistor_pulses"), problems)
     motors, drives = parsed.get("motors"), parsed.get("drives")
     motor_parameters = understand_motors(motors) if motors else None
@@ -113,6 +121,7 @@ def understand(
         *table_entries(parsed.get("map") if mechanism.needs_map else None),
         *table_entries(parsed.get("inertias")),
         *table_entries(parsed.get("resistor_pulses")),
+        *table_entries(parsed.get("bus_partners")),
         *limit_entries,
     )
     catalogs = to_catalog(motors), to_catalog(gearheads), to_catalog(drives)
@@ -122,6 +131,7 @@ def understand(
         mechanism=with_parts(mechanism, parts),
         parts=parts,
         resistor_pulses=pulses,
+        partners=partners,
         surroundings=surroundings_of(axis),
         segments=cycles[0].segments,
         cycles=cycles if any(cycle.name for cycle in cycles) else (),

@@ -13,11 +13,16 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.core.power_runs import PowerRuns, bus_energy
-from actuator_sizing.core.quadrature import antiderivative_matrix, cumulative_matrix, series_value
+from actuator_sizing.core.quadrature import (
+    antiderivative_matrix,
+    bracketed_roots,
+    cumulative_matrix,
+    refined_maximum,
+    series_value,
+)
 
 FloatArray = NDArray[np.float64]
 
-_HALVINGS = 52  # of a piece: to rounding
 _POINTS = 33  # per clamped run on which the peak power is bracketed
 _NOTHING = 1e-12  # energy below this part of the largest run is rounding, not a pulse
 
@@ -127,17 +132,16 @@ def _clamping(
         return _Clamping(row, run, np.empty(0), lasts)
     series = runs.series[row, runs.piece[run]].T
     half = 0.5 * np.broadcast_to(runs.piece_duration_s(), dumped.shape)[row, run]
-    low, high = runs.begin[row, run].copy(), runs.end[row, run].copy()
+    low, high = runs.begin[row, run], runs.end[row, run]
     # Terminal energy that fills the room which is left when the run starts.
     filling = (room_j[row] - at_run[row, run]) / efficiency[row]
-    integral = antiderivative_matrix(len(series)) @ series
-    at_begin = series_value(integral, low)
     late = filling > 0.0
-    for _ in range(_HALVINGS if late.any() else 0):
-        middle = 0.5 * (low + high)
-        before = half * (at_begin - series_value(integral, middle)) < filling
-        low, high = np.where(before, middle, low), np.where(before, high, middle)
-    start = np.where(late, low, runs.begin[row, run])
+    given = -(antiderivative_matrix(len(series)) @ series[:, late])
+    given[0] -= series_value(given, low[late]) + filling[late] / half[late]
+    start = low.copy()
+    start[late] = bracketed_roots(
+        given, low[late], high[late], np.ones(int(late.sum()), dtype=bool), 0.5 * (low + high)[late]
+    )
     lasts[row, run] = half * (runs.end[row, run] - start)
     return _Clamping(row, run, start, lasts)
 
@@ -181,18 +185,16 @@ def _dumped_power_peak(runs: PowerRuns, efficiency: FloatArray, clamping: _Clamp
     clamped_from, end = clamping.start, runs.end[row, run]
     grid = 0.5 * (1.0 - np.cos(np.pi * np.arange(_POINTS) / (_POINTS - 1)))
     x = clamped_from + grid[:, None] * (end - clamped_from)
-    values = np.stack([-series_value(series, points) for points in x])
+    values = -series_value(series, x)
     top = values.argmax(axis=0)
     column = np.arange(len(row))
     best = values[top, column]
     left = x[np.maximum(top - 1, 0), column]
     right = x[np.minimum(top + 1, _POINTS - 1), column]
     inner = (top > 0) & (top < _POINTS - 1)
-    for _ in range(40 if inner.any() else 0):  # thirds: the maximum between neighbours of the grid
-        a, b = left + (right - left) / 3.0, right - (right - left) / 3.0
-        f_a, f_b = -series_value(series, a), -series_value(series, b)
-        best = np.maximum(best, np.where(inner, np.maximum(f_a, f_b), best))
-        left, right = np.where(f_a < f_b, a, left), np.where(f_a < f_b, right, b)
+    mine = -series[:, inner]
+    at = refined_maximum(mine.T, x[top, column][inner], left[inner], right[inner])
+    best[inner] = np.maximum(best[inner], series_value(mine, at))
     np.maximum.at(peak, row, best * efficiency[row])
     return peak
 
@@ -251,7 +253,7 @@ def bus_course(
     start = np.concatenate([[0.0], np.cumsum(durations)[:-1]])
     time, stored, power = [], [], []
     for n, piece in enumerate(runs.piece):
-        if runs.end[0, n] <= runs.begin[0, n]:
+        if runs.end[0, n] <= runs.begin[0, n] or durations[piece] <= 0.0:
             continue
         x = np.linspace(runs.begin[0, n], runs.end[0, n], points)
         half = 0.5 * durations[piece]

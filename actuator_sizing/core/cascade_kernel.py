@@ -14,12 +14,15 @@ from typing import Any
 #: Places in the vector of states that is carried from call to call.
 (
     CURRENT, MOTOR_SPEED, TWIST, LOAD_SPEED, MOTOR_ANGLE, SPEED_INTEGRATOR, CURRENT_INTEGRATOR,
-    LAST_VOLTAGE, FILTERED_SPEED, LAST_SEEN, NOTCH_1, NOTCH_2,
-) = range(12)  # fmt: skip
-STATES = 12
+    LAST_VOLTAGE, FILTERED_SPEED, LAST_SEEN, NOTCH_1, NOTCH_2, DIRECT_CURRENT, DIRECT_INTEGRATOR,
+    LAST_DIRECT_VOLTAGE,
+) = range(15)  # fmt: skip
+STATES = 15
 
 #: What is recorded at every sample, before the step.
 RECORDED = ("current", "motor_speed", "twist", "motor_angle", "current_reference", "voltage")
+#: The same, of the direct axis of a sinusoidal machine; recorded only where it is simulated.
+RECORDED_DIRECT = ("direct_current", "direct_voltage")
 
 
 def cascade_loop(
@@ -38,7 +41,7 @@ def cascade_loop(
 
     Parameters
     ----------
-    state : sequence of float, shape (12,)
+    state : sequence of float, shape (15,)
         States at the start; those at the end afterwards.
     plant, free : tuple of float
         Exact zero-order hold with the two masses coupled, and inside the backlash (`plant.sampled`).
@@ -47,8 +50,8 @@ def cascade_loop(
     angle, speed, feedforward, load : sequence of float, shape (n,)
         Commanded angle [rad] and speed [rad/s], current added in advance [A], external torque on the load that
         speeds it up where positive [N·m].
-    record : sequence of six sequences, shape (6, n)
-        Takes `RECORDED`.
+    record : sequence of eight sequences, shape (8, n)
+        Takes `RECORDED` and, of a machine in dq states, `RECORDED_DIRECT`.
     saturated : sequence of int, shape (n,)
         Takes 1 where the current was limited, 2 where the voltage was, 3 for both.
 
@@ -56,10 +59,17 @@ def cascade_loop(
     -----
     Coulomb friction is implicit in the step: speeds are predicted without it, and the torque that would stop
     them within the step is limited to the Coulomb level. What sticks is exactly at rest, and nothing chatters.
+
+    A machine in dq states (``turn`` > 0) has equal inductances and a current of the direct axis that is commanded to
+    zero. Its cross coupling ``i_d' = p ω i_q``, ``i_q' = −p ω i_d`` turns the current by ``p ω h``: half of it before
+    and half after the linear step (G. Strang's splitting, SIAM J. Numer. Anal. 5, 1968), exact but for the product
+    of both parts, which is of third order in the step. The voltage is held in the frame of the rotor; outside the
+    circle ``u_d² + u_q² ≤ u_max²`` it is shortened and keeps its direction.
     """
     # Indexed, not unpacked: the compiler knows the length of a tuple but not that of an array.
     i, w, s, wl, th, iv = state[0], state[1], state[2], state[3], state[4], state[5]
     ii, last_u, wf, last, n1, n2 = state[6], state[7], state[8], state[9], state[10], state[11]
+    i_d, iid, last_d = state[12], state[13], state[14]
     (
         ai, aw, as_, al, au, am, ad,
         bi, bw, bs, bl, bu, bm, bd,
@@ -79,10 +89,13 @@ def cascade_loop(
         k_current, k_current_integral, k_current_back, k_emf, current_max, voltage_max,
         reactance, filter_share, delayed, count, period,
         notch, nb0, nb1, nb2, na1, na2,
+        turn, keep_d, gain_d, decouple,
     ) = gains  # fmt: skip
     current_out, speed_out, twist_out = record[0], record[1], record[2]
     angle_out, reference_out, voltage_out = record[3], record[4], record[5]
+    direct_out, direct_voltage_out = record[6], record[7]
     voltage_max2 = voltage_max * voltage_max
+    cosine, sine = math.cos(turn * w), math.sin(turn * w)
     for k in range(len(angle)):
         # what the drive sees
         seen = th
@@ -119,21 +132,37 @@ def cascade_loop(
         # current
         error = i_ref - i
         u = k_current * error + ii + k_emf * w_seen
-        cross = reactance * w * i
-        if u * u + cross * cross > voltage_max2:
-            left = voltage_max2 - cross * cross
-            limited = math.sqrt(left) if left > 0.0 else 0.0
-            if u < 0.0:
-                limited = -limited
-            ii = ii + k_current_integral * error + k_current_back * (limited - u)
-            u = limited
-            flag = flag + 2
+        limited = u
+        u_d = 0.0
+        if turn > 0.0:
+            u = u + decouple * w_seen * i_d
+            asked = iid - k_current * i_d - decouple * w_seen * i
+            limited = u
+            u_d = asked
+            size = u * u + u_d * u_d
+            if size > voltage_max2:
+                size = voltage_max / math.sqrt(size)
+                limited = size * u
+                u_d = size * u_d
+                flag = flag + 2
+            iid = iid - k_current_integral * i_d + k_current_back * (u_d - asked)
         else:
-            ii = ii + k_current_integral * error
+            cross = reactance * w * i
+            if u * u + cross * cross > voltage_max2:
+                left = voltage_max2 - cross * cross
+                limited = math.sqrt(left) if left > 0.0 else 0.0
+                if u < 0.0:
+                    limited = -limited
+                flag = flag + 2
+        ii = ii + k_current_integral * error + k_current_back * (limited - u)
+        u = limited
         if delayed > 0.0:
             applied = last_u
             last_u = u
             u = applied
+            applied = last_d
+            last_d = u_d
+            u_d = applied
         current_out[k] = i
         speed_out[k] = w
         twist_out[k] = s
@@ -141,6 +170,12 @@ def cascade_loop(
         reference_out[k] = i_ref
         voltage_out[k] = u
         saturated[k] = flag
+        if turn > 0.0:
+            direct_out[k] = i_d
+            direct_voltage_out[k] = u_d
+            turned = cosine * i_d + sine * i
+            i = cosine * i - sine * i_d
+            i_d = keep_d * turned + gain_d * u_d
         # the plant over one sample
         torque = load[k]
         if rigid > 0.0:
@@ -207,6 +242,11 @@ def cascade_loop(
             i = i_new
             w = w_new
             s = s_new
+        if turn > 0.0:
+            cosine, sine = math.cos(turn * w), math.sin(turn * w)
+            turned = cosine * i_d + sine * i
+            i = cosine * i - sine * i_d
+            i_d = turned
     state[0] = i
     state[1] = w
     state[2] = s
@@ -219,6 +259,9 @@ def cascade_loop(
     state[9] = last
     state[10] = n1
     state[11] = n2
+    state[12] = i_d
+    state[13] = iid
+    state[14] = last_d
 
 
 @cache

@@ -15,6 +15,7 @@ IndexArray = NDArray[np.intp]
 
 _FIRST_TRY = 300  # points; the means of thousands nearly always lie within the hull of some hundred
 _MATCHED = 1e-12  # residual of the scaled means: rounding
+_ROUNDS = 30  # per moment; some two are the rule
 
 
 def condense(columns: FloatArray, weight: FloatArray) -> tuple[IndexArray, FloatArray]:
@@ -36,35 +37,75 @@ def condense(columns: FloatArray, weight: FloatArray) -> tuple[IndexArray, Float
 
     Notes
     -----
-    Lawson & Hanson's algorithm for least squares with weights not below zero ends at such a set. The columns
-    are centred and scaled first, so that the match is to rounding in each.
+    The algorithm of Lawson and Hanson for least squares with weights not below zero (Solving Least Squares
+    Problems, ch. 23, quoted from memory) ends at such a set. The columns are centred and scaled first, so
+    that the match is to rounding in each.
     """
     total = weight.sum()
-    centre = weight @ columns / total
-    spread = np.abs(columns - centre).max(axis=0)
-    moving = spread > 0.0
-    z = (columns[:, moving] - centre[moving]) / spread[moving]
-    count = z.shape[1]
-    pairs = [z[:, i] * z[:, j] for i in range(count) for j in range(i, count)]
-    design = np.stack([np.ones(len(z)), *z.T, *pairs])
-    if len(z) <= len(design):
-        return np.arange(len(z)), weight
-    wanted = design @ (weight / total)
-    return _fitting(design, wanted, total)
+    z = np.array(columns.T, order="C")  # sums along a row are quick
+    z -= (z @ weight / total)[:, None]
+    spread = np.maximum(z.max(axis=1), -z.min(axis=1))
+    z = z[spread > 0.0] / spread[spread > 0.0, None]
+    if z.shape[1] <= (len(z) + 1) * (len(z) + 2) // 2:
+        return np.arange(z.shape[1]), weight
+    share = weight / total
+    products = (z * share) @ z.T
+    wanted = np.concatenate([[1.0], z @ share, products[np.triu_indices(len(z))]])
+    index, kept = _fitting(z, wanted)
+    return index, kept * total
 
 
-def _fitting(design: FloatArray, wanted: FloatArray, total: float) -> tuple[IndexArray, FloatArray]:
+def _moments(z: FloatArray) -> FloatArray:
+    """One, the columns and their products at each point, shape (m, n)."""
+    count = len(z)
+    return np.stack([np.ones(z.shape[1]), *z, *(z[i] * z[j] for i in range(count) for j in range(i, count))])
+
+
+def _fitting(z: FloatArray, wanted: FloatArray) -> tuple[IndexArray, FloatArray]:
     """Weights that give the wanted sums; looked for among few of the points first."""
-    from scipy.optimize import nnls
-
-    count = design.shape[1]
-    outer = np.unique(np.concatenate([design.argmax(axis=1), design.argmin(axis=1)]))
+    count = z.shape[1]
+    outer = np.concatenate([z.argmax(axis=1), z.argmin(axis=1)])
     step = max(1, count // _FIRST_TRY)
     while True:
-        tried = np.union1d(np.arange(0, count, step), outer)
-        found, residual = nnls(design[:, tried], wanted, maxiter=100 * len(design))
+        tried = np.unique(np.concatenate([np.arange(0, count, step), outer]))
+        kept, found, residual = _not_below_zero(_moments(z[:, tried]), wanted)
         if step == 1 or residual <= _MATCHED:
-            break
+            return tried[kept], found
         step = max(1, step // 4)
-    kept = np.flatnonzero(found > 0.0)
-    return tried[kept], found[kept] * total
+
+
+def _not_below_zero(design: FloatArray, wanted: FloatArray) -> tuple[IndexArray, FloatArray, float]:
+    """Columns with weights above zero whose sum comes nearest to `wanted`, and how far it stays away."""
+    chosen: list[int] = []
+    weights: FloatArray = np.zeros(0)
+    barred = np.zeros(design.shape[1], dtype=bool)  # of no help, by rounding
+    for _ in range(_ROUNDS * len(wanted)):
+        missing = wanted - design[:, chosen] @ weights
+        residual = float(np.linalg.norm(missing))
+        gain = missing @ design
+        gain[chosen] = -np.inf
+        gain[barred] = -np.inf
+        best = int(np.argmax(gain))
+        if residual <= _MATCHED or not gain[best] > 0.0:
+            break
+        chosen, weights = [*chosen, best], np.append(weights, 0.0)
+        while True:
+            free = np.linalg.lstsq(design[:, chosen], wanted, rcond=None)[0]
+            if free.min() > 0.0:
+                weights = np.asarray(free, dtype=np.float64)
+                break
+            falling = free <= 0.0
+            reach = np.min(weights[falling] / np.maximum(weights[falling] - free[falling], 1e-300))
+            weights = np.maximum(weights + reach * (free - weights), 0.0)
+            stays = ~falling | (weights > 1e-15)
+            if stays.all():
+                stays[np.argmin(weights)] = False
+            if not stays[-1] and reach == 0.0:
+                barred[best] = True
+            chosen = [c for c, stay in zip(chosen, stays, strict=True) if stay]
+            weights = weights[stays]
+    return (
+        np.array(chosen, dtype=np.intp),
+        weights,
+        float(np.linalg.norm(wanted - design[:, chosen] @ weights)),
+    )

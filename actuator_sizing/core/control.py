@@ -20,6 +20,7 @@ from actuator_sizing.core.cascade_kernel import (
     MOTOR_ANGLE,
     MOTOR_SPEED,
     RECORDED,
+    RECORDED_DIRECT,
     STATES,
     TWIST,
     cascade_loop,
@@ -31,6 +32,7 @@ FloatArray = NDArray[np.float64]
 
 BACK_CALCULATION, CONDITIONAL = "back-calculation", "conditional"
 EMF_GAIN = 9  # place in `LoopSettings.row` of the only gain that is relative to the plant
+_NO_DIRECT_AXIS = (0.0, 1.0, 0.0, 0.0)
 _CHUNK = 65_536  # samples held in memory at a time
 #: Above so many samples the compiler's start is worth its time, where it is installed.
 _WORTH_COMPILING = 2_000_000
@@ -66,6 +68,9 @@ class LoopSettings:
         Resolution of the motor's encoder; 0: ideal.
     is_delayed : bool
         Whether the voltage acts one sample after the measurement.
+    is_dq : bool
+        Whether a sinusoidal machine with known reactance has a direct axis of its own, commanded to zero current
+        and decoupled as far as the back-EMF is; else it is held at zero and the reactance only takes voltage away.
     """
 
     sample_time_s: float
@@ -86,6 +91,7 @@ class LoopSettings:
     anti_windup: str = BACK_CALCULATION
     encoder_step_rad: float = 0.0
     is_delayed: bool = True
+    is_dq: bool = False
 
     def __post_init__(self) -> None:
         """Refuse settings that mean nothing."""
@@ -132,6 +138,7 @@ class LoopSettings:
             self.encoder_step_rad,
             h,
             *self._notch(),
+            *_NO_DIRECT_AXIS,
         )
 
     def _notch(self) -> tuple[float, ...]:
@@ -154,6 +161,7 @@ class LoopSettings:
             voltage_limit_v=math.inf,
             encoder_step_rad=0.0,
             reactance_ohm_s=0.0,
+            is_dq=False,
         )
 
 
@@ -217,6 +225,8 @@ class Cascade:
         self._plant, self._free = plant.sampled(self.settings.sample_time_s)
         gains = list(self._gains)
         gains[EMF_GAIN] = self.settings.back_emf_feedforward_ratio * plant.torque_constant_nm_per_a
+        if self.settings.is_dq:
+            gains[-len(_NO_DIRECT_AXIS) :] = direct_axis(plant, self.settings)
         self._gains = tuple(gains)
 
     def advance(
@@ -240,33 +250,67 @@ class Cascade:
         Returns
         -------
         dict of str to ndarray, shape (n,)
-            `cascade_kernel.RECORDED` and ``saturated``: 1 current, 2 voltage, 3 both. [-]
+            `cascade_kernel.RECORDED` and ``saturated``: 1 current, 2 voltage, 3 both; of a machine in dq states
+            `RECORDED_DIRECT` too. [-]
         """
         n = len(angle_rad)
+        names = (*RECORDED, *RECORDED_DIRECT) if self.settings.is_dq else RECORDED
         inputs = (angle_rad, speed_rad_s, feedforward_a, load_torque_nm)
         if self.is_compiled:
-            record, saturated = np.empty((len(RECORDED), n)), np.zeros(n, dtype=np.int64)
+            record = np.zeros((len(RECORDED) + len(RECORDED_DIRECT), n))
+            saturated = np.zeros(n, dtype=np.int64)
             state = np.array(self.state)
             arrays = [np.ascontiguousarray(x, dtype=float) for x in inputs]
             self._loop(state, self._plant, self._free, self._gains, *arrays, record, saturated)
             self.state = state.tolist()
-            return dict(zip(RECORDED, record, strict=True)) | {"saturated": saturated}
+            return dict(zip(names, record, strict=False)) | {"saturated": saturated}
         parts: list[list[FloatArray]] = []
         flags: list[FloatArray] = []
         for start in range(0, n, _CHUNK):
             lists = [np.asarray(x[start : start + _CHUNK], dtype=float).tolist() for x in inputs]
             count = len(lists[0])
-            rows = [[0.0] * count for _ in RECORDED]
+            rows = [[0.0] * count for _ in names]
             flag = [0] * count
-            self._loop(self.state, self._plant, self._free, self._gains, *lists, rows, flag)
+            room = rows if len(rows) > len(RECORDED) else [*rows, [], []]
+            self._loop(self.state, self._plant, self._free, self._gains, *lists, room, flag)
             parts.append([np.array(row) for row in rows])
             flags.append(np.array(flag))
         columns = (
-            [np.concatenate(column) for column in zip(*parts, strict=True)] if parts else [np.empty(0)] * 6
+            [np.concatenate(column) for column in zip(*parts, strict=True)]
+            if parts
+            else [np.empty(0)] * len(names)
         )
-        return dict(zip(RECORDED, columns, strict=True)) | {
+        return dict(zip(names, columns, strict=True)) | {
             "saturated": np.concatenate(flags) if flags else np.empty(0)
         }
+
+
+def direct_axis(plant: Plant, settings: LoopSettings) -> tuple[float, float, float, float]:
+    """What the loop needs of the direct axis.
+
+    Parameters
+    ----------
+    plant : Plant
+        Motor with its reactance; without one there is no direct axis. [-]
+    settings : LoopSettings
+        The loops. [-]
+
+    Returns
+    -------
+    tuple of float
+        Half the turn of the current per speed and sample, decay over a sample, current per volt over a sample, and
+        the decoupling voltage per speed and current. [-]
+    """
+    if not plant.reactance_ohm_s > 0.0:
+        return _NO_DIRECT_AXIS
+    h, R, L = settings.sample_time_s, plant.resistance_ohm, plant.inductance_h
+    keep = math.exp(-R * h / L)
+    return (
+        0.5 * h * plant.reactance_ohm_s / L,
+        keep,
+        (1.0 - keep) / R,
+        settings.back_emf_feedforward_ratio * plant.reactance_ohm_s,
+    )
 
 
 def worth_compiling(samples: int) -> bool:

@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy.special import ndtr, ndtri
 
 FloatArray = NDArray[np.float64]
 
@@ -56,8 +56,8 @@ class Distribution:
             return self.width
         k = self.truncation
         density = np.exp(-0.5 * k * k) / np.sqrt(2.0 * np.pi)
-        # 2 Φ(k) − 1; the variance lost with the tails is 2 k φ(k) over it.
-        return float(self.width * np.sqrt(1.0 - 2.0 * k * density / (2.0 * ndtr(k) - 1.0)))
+        # 2 Φ(k) − 1 = erf(k/√2); the variance lost with the tails is 2 k φ(k) over it.
+        return float(self.width * np.sqrt(1.0 - 2.0 * k * density / math.erf(k / math.sqrt(2.0))))
 
     def of_scores(self, scores: FloatArray) -> FloatArray:
         """Values whose ranks are those of standard normal scores.
@@ -84,6 +84,8 @@ class Distribution:
         """
         if self.shape == NORMAL:
             return np.asarray(self.centre + self.width * scores)
+        from scipy.special import ndtr, ndtri
+
         tail = ndtr(-np.abs(scores))  # at most one half
         if self.shape == UNIFORM:
             distance = 1.0 - 2.0 * tail

@@ -22,14 +22,16 @@ _FIRST_LOOP, _MOST_LOOP = 32, 2048  # samples left to the loop after a short mod
 
 
 def has_lasting_modes(settings: LoopSettings) -> bool:
-    """Whether stretches exist at all: an encoder with steps changes the mode with every count.
+    """Whether stretches exist at all.
+
+    An encoder with steps changes the mode with every count, and cross coupling of two axes is no linear system.
 
     Parameters
     ----------
     settings : LoopSettings
         The loops. [-]
     """
-    return settings.encoder_step_rad == 0.0
+    return settings.encoder_step_rad == 0.0 and not settings.is_dq
 
 
 class Follower:

@@ -10,13 +10,17 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.core.cascade_kernel import (
+    DIRECT_CURRENT,
+    DIRECT_INTEGRATOR,
     FILTERED_SPEED,
+    LAST_DIRECT_VOLTAGE,
     LAST_SEEN,
     LAST_VOLTAGE,
     LOAD_SPEED,
     NOTCH_1,
     NOTCH_2,
     RECORDED,
+    RECORDED_DIRECT,
     STATES,
     TWIST,
     cascade_loop,
@@ -64,7 +68,7 @@ def alive_states(plant: Plant, settings: LoopSettings) -> tuple[int, ...]:
     settings : LoopSettings
         The loops. [-]
     """
-    idle = {LAST_SEEN}
+    idle = {LAST_SEEN, DIRECT_CURRENT, DIRECT_INTEGRATOR, LAST_DIRECT_VOLTAGE}
     if plant.is_rigid:
         idle |= {TWIST, LOAD_SPEED}
     if settings.setpoint_filter_s == 0.0:
@@ -109,10 +113,10 @@ def one_sample(plant: Plant, settings: LoopSettings, *, engaged: bool = True) ->
             state[alive[column]] = 1.0
         else:
             inputs[column - n][0] = 1.0
-        record = [[0.0] for _ in RECORDED]
+        record = [[0.0] for _ in (*RECORDED, *RECORDED_DIRECT)]
         loop(state, rows, rows, tuple(gains), *inputs, record, [0])
-        asked = state[LAST_VOLTAGE] if settings.is_delayed else record[-1][0]
+        asked = state[LAST_VOLTAGE] if settings.is_delayed else record[RECORDED.index("voltage")][0]
         step[:, column] = [state[k] for k in alive]
-        output[:, column] = [*(row[0] for row in record), asked]
+        output[:, column] = [*(row[0] for row in record[: len(RECORDED)]), asked]
     push = [rows[7 * k + 5] if k <= 4 else 0.0 for k in alive]  # the motor's column of `Plant.sampled`
     return OneSample(alive, step[:, :n], step[:, n:], output[:, :n], output[:, n:], np.array(push))

@@ -6,6 +6,7 @@ Rotary machines use N·m, rad/s and kg·m²; for a linear machine the same field
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, fields
 from typing import Self
 
@@ -31,6 +32,12 @@ class _Columns:
     def take(self, index: NDArray[np.intp] | slice) -> Self:
         """Rows `index` of every column."""
         return type(self)(**{f.name: getattr(self, f.name)[index] for f in fields(self)})  # type: ignore[arg-type]
+
+    @classmethod
+    def joined(cls, parts: Sequence[Self]) -> Self:
+        """Rows of several, one after the other."""
+        names = [f.name for f in fields(cls)]  # type: ignore[arg-type]
+        return cls(**{name: np.concatenate([getattr(part, name) for part in parts]) for name in names})
 
 
 @dataclass(frozen=True)

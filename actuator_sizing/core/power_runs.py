@@ -160,6 +160,7 @@ def bus_pieces(
     """
     at_terminals = runs.values(runs.series)
     # At the ends of a run, where the power is nothing but rounding, the sign is that of the run.
-    sign = np.sign(runs.energy_j)[..., None]
+    middle = at_terminals[..., at_terminals.shape[2] // 2]
+    sign = np.sign(np.where(runs.energy_j == 0.0, middle, runs.energy_j))[..., None]
     at_terminals = np.where(sign > 0.0, np.maximum(at_terminals, 0.0), np.minimum(at_terminals, 0.0))
     return runs.run_duration_s(), bus_energy(at_terminals, efficiency) + steady_w[:, None, None]

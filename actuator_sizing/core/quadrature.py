@@ -195,6 +195,13 @@ def largest(values: FloatArray) -> tuple[FloatArray, NDArray[np.intp], FloatArra
     others are bracketed on a dense Chebyshev grid and refined by Newton's method on the derivative.
     """
     batch, _, count = values.shape
+    if count == 2:  # straight lines: at an end
+        left, right = values[..., 0], values[..., 1]
+        peak = np.maximum(left, right)
+        piece = peak.argmax(axis=1)
+        rows = np.arange(batch)
+        rises = right[rows, piece] > left[rows, piece]
+        return peak[rows, piece], piece, np.where(rises, 1.0, -1.0)
     points, dense_matrix = _dense_matrix(count)
     series = values @ to_series(count).T
     ceiling = np.abs(series[..., 1:]).sum(axis=2) + series[..., 0]  # |P_k| ≤ 1
@@ -245,6 +252,24 @@ def _newton_extremum(series: FloatArray, start: FloatArray, grid: FloatArray) ->
     nearest = np.searchsorted(grid, start)
     low = grid[np.clip(nearest - 1, 0, len(grid) - 1)]
     high = grid[np.clip(nearest + 1, 0, len(grid) - 1)]
+    return refined_maximum(series, start, low, high)
+
+
+def refined_maximum(series: FloatArray, start: FloatArray, low: FloatArray, high: FloatArray) -> FloatArray:
+    """Where Legendre series are largest near a start, by Newton's method on the derivative.
+
+    Parameters
+    ----------
+    series : ndarray, shape (n, K)
+        Coefficients of n series, one per row; the unit is the caller's. [-]
+    start, low, high : ndarray, shape (n,)
+        Best point of a grid, and its neighbours, which the search does not leave. [-]
+
+    Returns
+    -------
+    ndarray, shape (n,)
+        Positions on [−1, 1]. [-]
+    """
     first, second = _derivative_matrices(series.shape[1])
     slope_series, bend_series = (series @ first).T, (series @ second).T
     x = start
@@ -270,18 +295,23 @@ def series_value(series: FloatArray, x: FloatArray) -> FloatArray:
     ----------
     series : ndarray, shape (K, n)
         Coefficients of n series, one per column; the unit is the caller's. [-]
-    x : ndarray, shape (n,)
+    x : ndarray, shape (n,) or (m, n)
         Where to evaluate each of them, on [−1, 1]. [-]
 
     Returns
     -------
-    ndarray, shape (n,)
+    ndarray, shape of `x`
         Values, in the unit of `series`. [-]
     """
-    ahead = np.zeros_like(x)
-    now = np.zeros_like(x)
-    for k in range(len(series) - 1, 0, -1):
-        ahead, now = now, series[k] + ((2 * k + 1) / (k + 1)) * x * now - ((k + 1) / (k + 2)) * ahead
+    shape = np.broadcast_shapes(series.shape[1:], x.shape)
+    ahead, now, spare = (np.zeros(shape) for _ in range(3))
+    for k in range(len(series) - 1, 0, -1):  # in place: this is the innermost loop of the package
+        np.multiply(x, now, out=spare)
+        spare *= (2 * k + 1) / (k + 1)
+        ahead *= (k + 1) / (k + 2)
+        spare += series[k]
+        spare -= ahead
+        ahead, now, spare = now, spare, ahead
     return np.asarray(series[0] + x * now - 0.5 * ahead)
 
 

@@ -40,7 +40,8 @@ def sign_changes(series: FloatArray) -> tuple[NDArray[np.intp], NDArray[np.intp]
     Notes
     -----
     Bracketed on a Chebyshev grid and refined by Newton's method. Two changes within one step of the grid
-    (1/2000 of a piece at its ends, 1/40 in its middle) may be missed together; what they enclose is then next to nothing.
+    (1/2000 of a piece at its ends, 1/40 in its middle) may be missed together; what they enclose is
+    then next to nothing.
     """
     points, matrix = _grid(series.shape[2])
     row, piece = np.nonzero(np.abs(series[..., 1:]).sum(axis=2) > np.abs(series[..., 0]))

@@ -19,7 +19,12 @@ from actuator_sizing.core.propagation import zero_order_hold
 FloatArray = NDArray[np.float64]
 
 _PARTS_OF_PERIOD = 20.0  # steps per period of the fastest oscillation, so that no crossing pair is missed
-_MOST_EVENTS = 100_000
+#: Changes of mode before a run is given up, besides one for each input; each takes a millisecond or two.
+_FREE_EVENTS, _MOST_EVENTS = 2_000, 6_000
+_SLACK = 1e-12  # of a level: what rests on it to rounding has not left it
+_MOST_STEPS = 5_000_000  # some seconds
+_BLOCK = 256  # steps of one mode that are taken at once
+_KEPT = 20_000  # steps that are recorded; of more, evenly chosen ones
 _MOST_TERMS = 40  # of a Taylor series; needed where a step is longer than the fastest decay
 
 
@@ -35,12 +40,13 @@ class Held:
 
 @dataclass(frozen=True)
 class Course:
-    """States at the ends of all steps and events; columns of `core.plant`."""
+    """States at events and at the ends of steps; columns of `core.plant`."""
 
     time_s: FloatArray
     states: FloatArray
     events: int
-    is_complete: bool  # False: stopped at the largest number of events
+    is_complete: bool  # False: stopped at the largest number of events or steps
+    steps: int = 0
 
     @property
     def end(self) -> FloatArray:
@@ -57,6 +63,25 @@ class _Mode:
     flank: int
 
 
+@dataclass(frozen=True)
+class _Conditions:
+    """Linear functions of the states that stay above zero, or within a level where there is one."""
+
+    rows: FloatArray  # (3, 5)
+    constants: FloatArray
+    levels: FloatArray  # NaN: above zero
+    slack: FloatArray
+
+    def at(self, states: FloatArray) -> FloatArray:
+        """Numbers that are above zero while the mode lasts, shape (..., 3)."""
+        value = states @ self.rows.T + self.constants
+        return np.asarray(np.where(np.isnan(self.levels), value, self.levels - np.abs(value)))
+
+    def broken(self, states: FloatArray) -> NDArray[np.bool_]:
+        """Which are no longer met, shape (..., 3)."""
+        return np.asarray(self.at(states) < -self.slack)
+
+
 class _Switched:
     """The plant in its modes; with one mass all friction is on the motor."""
 
@@ -65,7 +90,18 @@ class _Switched:
         self.gap = 0.0 if plant.is_rigid else 0.5 * plant.backlash_rad
         both = plant.motor_coulomb_nm + plant.load_coulomb_nm
         self.levels = (both, 0.0) if plant.is_rigid else (plant.motor_coulomb_nm, plant.load_coulomb_nm)
+        self._pulls = {engaged: self._pull_parts(engaged) for engaged in (True, False)}
         self._steps: dict[tuple[_Mode, float], tuple[FloatArray, FloatArray]] = {}
+        self._blocks: dict[tuple[_Mode, float], tuple[FloatArray, FloatArray]] = {}
+
+    def _pull_parts(self, engaged: bool) -> tuple[tuple[FloatArray, FloatArray], ...]:
+        """Torque on motor and load by states and inputs, without Coulomb friction."""
+        p = self.plant
+        A, B = p.matrices(engaged=engaged)
+        both = p.total_inertia_kg_m2
+        inertias = (both, both) if p.is_rigid else (p.motor_inertia_kg_m2, p.load_inertia_kg_m2)
+        rows = zip((MOTOR_SPEED, LOAD_SPEED), inertias, strict=True)
+        return tuple((A[row] * inertia, B[row] * inertia) for row, inertia in rows)
 
     def system(self, mode: _Mode) -> tuple[FloatArray, FloatArray]:
         """Matrices; inputs are voltage, both torques, and one for what the mode adds."""
@@ -94,6 +130,16 @@ class _Switched:
                 self._steps[mode, h] = found
         return np.asarray(found[0] @ x + found[1] @ u)
 
+    def steps(self, x: FloatArray, u: FloatArray, mode: _Mode, h: float, count: int) -> FloatArray:
+        """States after 1 to count exact steps of length h, shape (count, 5)."""
+        if count < _BLOCK and (mode, h) not in self._blocks:
+            states = np.empty((count, 5))
+            for k in range(count):
+                states[k] = x = self.step(x, u, mode, h, keep=True)
+            return states
+        powers, gains = self.block(mode, h)
+        return np.asarray(powers[:count] @ x + gains[:count] @ u)
+
     def path(self, x: FloatArray, u: FloatArray, mode: _Mode, h: float) -> Callable[[float], FloatArray]:
         """States at any instant of a step: the Taylor series of the exact solution, else exponentials."""
         if h == 0.0:
@@ -114,35 +160,51 @@ class _Switched:
 
     def pull(self, x: FloatArray, u: FloatArray, mode: _Mode, which: int) -> float:
         """Torque on one mass without its Coulomb friction. [N·m]"""
-        p = self.plant
-        A, B = p.matrices(engaged=self.gap == 0.0 or mode.flank != 0)
-        row = (MOTOR_SPEED, LOAD_SPEED)[which]
-        inertia = (
-            p.total_inertia_kg_m2 if p.is_rigid else (p.motor_inertia_kg_m2, p.load_inertia_kg_m2)[which]
-        )
-        torque = float(A[row] @ x + B[row] @ u[:3]) * inertia
-        if self.gap > 0.0 and mode.flank:
-            torque += p.stiffness_nm_per_rad * self.gap * mode.flank * (1.0 if which == 0 else -1.0)
-        return torque
+        row, constant = self._pull_row(u, mode, which)
+        return float(row @ x) + constant
 
-    def guards(self, x: FloatArray, u: FloatArray, mode: _Mode) -> list[float]:
-        """Numbers that stay above zero while the mode lasts: motor, load, flanks."""
-        values = []
-        for which, direction in enumerate((mode.motor, mode.load)):
-            level = self.levels[which]
-            if level == 0.0:
-                values.append(math.inf)
-            elif direction:
-                values.append(float(x[(MOTOR_SPEED, LOAD_SPEED)[which]]) * direction)
+    def _pull_row(self, u: FloatArray, mode: _Mode, which: int) -> tuple[FloatArray, float]:
+        engaged = self.gap == 0.0 or mode.flank != 0
+        row, column = self._pulls[engaged][which]
+        constant = float(column @ u[:3])
+        if self.gap > 0.0 and mode.flank:
+            push = self.plant.stiffness_nm_per_rad * self.gap * mode.flank
+            constant += push if which == 0 else -push
+        return row, constant
+
+    def conditions(self, u: FloatArray, mode: _Mode) -> _Conditions:
+        """What holds while the mode lasts, as linear functions of the states: motor, load, flanks."""
+        rows, constants = np.zeros((3, 5)), np.full(3, math.inf)
+        levels, slack = np.full(3, math.nan), np.zeros(3)
+        for which, (direction, row) in enumerate(((mode.motor, MOTOR_SPEED), (mode.load, LOAD_SPEED))):
+            if self.levels[which] == 0.0:
+                continue
+            if direction:
+                rows[which, row], constants[which] = direction, 0.0
             else:
-                values.append(level - abs(self.pull(x, u, mode, which)))
-        if self.gap == 0.0:
-            values.append(math.inf)
-        elif mode.flank:
-            values.append(mode.flank * float(x[TWIST]) - self.gap)
-        else:
-            values.append(self.gap - abs(float(x[TWIST])))
-        return values
+                rows[which], constants[which] = self._pull_row(u, mode, which)
+                levels[which] = self.levels[which]
+                slack[which] = _SLACK * self.levels[which]
+        if self.gap > 0.0:
+            rows[2, TWIST] = mode.flank or 1.0
+            constants[2] = -self.gap if mode.flank else 0.0
+            slack[2] = _SLACK * self.gap
+            if not mode.flank:
+                levels[2] = self.gap
+        return _Conditions(rows, constants, levels, slack)
+
+    def block(self, mode: _Mode, h: float) -> tuple[FloatArray, FloatArray]:
+        """Exact steps of length h, 2 h, ... from one state under the same inputs."""
+        if (mode, h) not in self._blocks:
+            A, B = self.system(mode)
+            Phi, Gamma = zero_order_hold(A, B, h)
+            powers, gains = Phi[None], Gamma[None]
+            while len(powers) < _BLOCK:
+                last, last_gain = powers[-1], gains[-1]
+                gains = np.concatenate([gains, last_gain + last @ gains])
+                powers = np.concatenate([powers, powers @ last])
+            self._blocks[mode, h] = powers, gains
+        return self._blocks[mode, h]
 
     def after(self, x: FloatArray, u: FloatArray, mode: _Mode, which: int) -> tuple[FloatArray, _Mode]:
         """States and mode once guard `which` has reached zero."""
@@ -197,7 +259,8 @@ def run_open_loop(
     Returns
     -------
     Course
-        States at every step and event; not complete after 100 000 events. [-]
+        States at steps and events, at most 20 000 of the steps; not complete after 2000 events more than
+        there are inputs. [-]
 
     Examples
     --------
@@ -213,52 +276,96 @@ def run_open_loop(
     if fastest > 0.0:
         step_s = min(step_s, 2.0 * math.pi / fastest / _PARTS_OF_PERIOD)
     x = np.zeros(5) if start is None else np.asarray(start, dtype=float)
-    time, times, states = 0.0, [0.0], [x]
+    steps = sum(max(held.duration_s / step_s, 1.0) for held in inputs)
+    record = _Record(x, max(1, math.ceil(steps / _KEPT)))
+    most_events = min(_FREE_EVENTS + len(inputs), _MOST_EVENTS)
     mode: _Mode | None = None
-    events = 0
     for held in inputs:
         u = np.array([held.voltage_v, held.motor_torque_nm, held.load_torque_nm, 1.0])
         mode = switched.first_mode(x, u, None if mode is None else mode.flank)
-        left = held.duration_s
         # Equal parts, so that one exponential serves all of them; after an event one odd step leads back.
-        part = left / math.ceil(left / step_s)
-        while left > 1e-9 * part:
-            odd = math.fmod(left, part)
-            on_grid = min(odd, part - odd) < 1e-6 * part
-            h = min(part, left) if on_grid else odd
-            if on_grid and abs(h - part) < 1e-6 * part:
-                h = part
-            x_new = switched.step(x, u, mode, h, keep=on_grid)
-            low = switched.guards(x_new, u, mode)
-            if min(low) < 0.0:
-                h, which = _first_event(switched, x, u, mode, h, low)
-                x_new, mode = switched.after(switched.path(x, u, mode, h)(h), u, mode, which)
-                events += 1
-                if events > _MOST_EVENTS:
-                    return Course(np.array(times), np.array(states), events, is_complete=False)
-            time, left, x = time + h, left - h, x_new
-            times.append(time)
-            states.append(x)
-    return Course(np.array(times), np.array(states), events, is_complete=True)
+        parts = math.ceil(held.duration_s / step_s)
+        part, begin, done = held.duration_s / parts, record.time_s, 0
+        odd = 0.0  # already gone of the next part
+        while done < parts:
+            if record.events > most_events or record.steps > _MOST_STEPS:
+                return record.course(is_complete=False)
+            conditions = switched.conditions(u, mode)
+            if odd == 0.0 and parts - done > 1:
+                states = switched.steps(x, u, mode, part, min(_BLOCK, parts - done))
+                broken = np.flatnonzero(conditions.broken(states).any(axis=1))
+                good = int(broken[0]) if len(broken) else len(states)
+                if good:
+                    x = states[good - 1]
+                    record.add(
+                        np.asarray(begin + part * np.arange(done + 1.0, done + good + 1.0)), states[:good]
+                    )
+                    done += good
+                if not len(broken):
+                    continue
+            h = part - odd
+            x_new = switched.step(x, u, mode, h, keep=odd == 0.0)
+            broken_now = conditions.broken(x_new)
+            if not broken_now.any():
+                done, odd, x = done + 1, 0.0, x_new
+                record.add(np.array([begin + part * done]), x[None])
+                continue
+            h, which = _first_event(switched, x, u, mode, h, broken_now)
+            x, mode = switched.after(switched.path(x, u, mode, h)(h), u, mode, which)
+            odd += h
+            record.event(begin + part * done + odd, x)
+            if part - odd <= 1e-9 * part:
+                done, odd = done + 1, 0.0
+    return record.course(is_complete=True)
+
+
+class _Record:
+    """States as they come, thinned where there are very many."""
+
+    def __init__(self, start: FloatArray, stride: int):
+        self.stride, self.steps, self.events = stride, 0, 0
+        self.time_s, self._last = 0.0, start
+        self._times, self._states = [np.zeros(1)], [start[None]]
+
+    def add(self, times: FloatArray, states: FloatArray) -> None:
+        """Take in steps of which every so manieth is kept."""
+        first = -self.steps % self.stride
+        self._times.append(times[first :: self.stride])
+        self._states.append(states[first :: self.stride])
+        self.steps += len(times)
+        self.time_s, self._last = float(times[-1]), states[-1]
+
+    def event(self, time_s: float, state: FloatArray) -> None:
+        """Take in an event."""
+        self._times.append(np.array([time_s]))
+        self._states.append(state[None])
+        self.events += 1
+        self.time_s, self._last = time_s, state
+
+    def course(self, *, is_complete: bool) -> Course:
+        """What was recorded, the last state always among it."""
+        time, states = np.concatenate(self._times), np.concatenate(self._states)
+        if time[-1] != self.time_s:
+            time, states = np.append(time, self.time_s), np.vstack([states, self._last])
+        return Course(time, states, self.events, is_complete, self.steps)
 
 
 def _first_event(
-    switched: _Switched, x: FloatArray, u: FloatArray, mode: _Mode, h: float, low: list[float]
+    switched: _Switched, x: FloatArray, u: FloatArray, mode: _Mode, h: float, broken: NDArray[np.bool_]
 ) -> tuple[float, int]:
-    """Instant within the step at which the first guard reaches zero, and which it is."""
+    """Instant within the step at which the first condition reaches zero, and which it is."""
     from scipy.optimize import brentq
 
     first, which = math.inf, 0
-    begin = switched.guards(x, u, mode)
+    conditions = switched.conditions(u, mode)
+    begin = conditions.at(x)
     path = switched.path(x, u, mode, h)
-    for k, value in enumerate(low):
-        if value >= 0.0:
-            continue
+    for k in np.flatnonzero(broken):
 
-        def guard(part: float, k: int = k) -> float:
-            return switched.guards(path(part), u, mode)[k]
+        def guard(part: float, k: int = int(k)) -> float:
+            return float(conditions.at(path(part))[k])
 
-        # A guard that begins at zero belongs to the event just passed: look behind it.
+        # A condition that begins at zero belongs to the event just passed: look behind it.
         start = 0.0
         if begin[k] <= 0.0:
             start = next((h * 0.5**n for n in range(50, 0, -1) if guard(h * 0.5**n) > 0.0), 0.0)
@@ -269,5 +376,5 @@ def _first_event(
         else:
             at = float(brentq(guard, start, h, xtol=1e-15 * h + 1e-300, rtol=8.9e-16))
         if at < first:
-            first, which = at, k
+            first, which = at, int(k)
     return first, which

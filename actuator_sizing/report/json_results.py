@@ -8,13 +8,16 @@ from collections.abc import Mapping
 from dataclasses import asdict
 from typing import TYPE_CHECKING, Any
 
-from actuator_sizing.report.document.comparing import shown_pair
+from actuator_sizing.report.document.comparing import shown_pair, titles_of
 from actuator_sizing.report.document.inputs import part_entries
 from actuator_sizing.report.formatting import percent
+from actuator_sizing.report.headroom_text import headroom_text
+from actuator_sizing.report.lever_text import lever_text
 from actuator_sizing.report.robustness_files import robustness_dict
+from actuator_sizing.report.simulation_files import simulation_dict
 
 if TYPE_CHECKING:
-    from actuator_sizing.case.model import Entry
+    from actuator_sizing.case.model import Case, Entry
     from actuator_sizing.report.revision import Revision
     from actuator_sizing.sizing.results import CheckResult, Comparison, CycleOfSet, CycleResult, SetResult
 
@@ -37,6 +40,7 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
     case, counts, study = comparison.case, comparison.rejections, comparison.robustness
     best = comparison.sets[0] if comparison.sets else None
     entries = [*case.entries, *part_entries(comparison, best)]
+    moved = comparison.governing.dynamics
     return {
         "schema": SCHEMA,
         "version": comparison.version,
@@ -52,7 +56,8 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
         "cycles": [_cycle(each) for each in comparison.cycles],
         "inertias": [plain(asdict(part)) for part in comparison.inertias],
         "ranked_by": comparison.ranked_by,
-        "sets": [_set(item) for item in comparison.sets],
+        "dynamics": None if moved is None else simulation_dict(moved),
+        "sets": [_set(item, case) for item in comparison.sets],
         "rejected": {
             "count": int(counts.rejected),
             "by_check": plain(counts.by_check),
@@ -64,11 +69,33 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
             "evaluated": int(counts.evaluated),
             "complete": bool(counts.complete),
         },
+        **_decisions(comparison),
         "questions": [
             {"part": part, "missing": missing, "check": check}
             for part, missing, check in comparison.questions
         ],
     } | ({} if study is None else {"robustness": robustness_dict(study)})
+
+
+def _decisions(comparison: Comparison) -> dict[str, Any]:
+    """What was asked for beyond pass and fail; null where it was not."""
+    windows, headroom, found = comparison.windows, comparison.headroom, comparison.trade_offs
+    titles = titles_of(comparison.sets)
+    limits = None
+    if headroom is not None:
+        limits = plain(headroom.as_mapping())
+        for entry, answer in zip(limits["quantities"], headroom.answers, strict=True):
+            entry["displayed"] = headroom_text(comparison.case, answer, titles)._asdict()
+    return {
+        "trade_offs": None if found is None else plain(found.as_mapping()),
+        "ratio_windows": None
+        if windows is None
+        else {
+            "transmission": windows.assumption,
+            "motors": [plain(window.as_mapping()) for window in windows.motors],
+        },
+        "headroom": limits,
+    }
 
 
 def render_json(comparison: Comparison, revision: Revision | None = None) -> bytes:
@@ -81,7 +108,7 @@ def render_json(comparison: Comparison, revision: Revision | None = None) -> byt
     return (text + "\n").encode("utf-8", "backslashreplace")
 
 
-def _set(item: SetResult) -> dict[str, Any]:
+def _set(item: SetResult, case: Case) -> dict[str, Any]:
     return {
         "rank": int(item.rank),
         "motor": item.motor,
@@ -96,7 +123,7 @@ def _set(item: SetResult) -> dict[str, Any]:
         "checks": [_check(check) for check in item.checks],
         "cycles": [_set_in_cycle(each) for each in item.cycles],
         "mix": plain(item.mix),
-        "levers": plain(item.levers),
+        "levers": [_lever(lever, case) for lever in item.levers],
     }
 
 
@@ -120,6 +147,14 @@ def _cycle(each: CycleResult) -> dict[str, Any]:
         "segments": [segment.name for segment in cycle.segments],
         "quantities": plain(each.quantities),
     }
+
+
+def _lever(lever: Mapping[str, Any], case: Case) -> dict[str, Any]:
+    values = {key: value for key, value in lever.items() if key not in ("changes", "entered")}
+    entry: dict[str, Any] = plain(values)
+    if "changes" in lever:
+        entry["changes"] = [_lever(change, case) for change in lever["changes"]]
+    return entry | {"displayed": lever_text(case, lever)._asdict()}
 
 
 def _check(check: CheckResult) -> dict[str, Any]:

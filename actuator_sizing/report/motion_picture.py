@@ -60,6 +60,7 @@ def render_motion(case: Case) -> bytes:
     from actuator_sizing.sizing.demand import build_demand
 
     demand = build_demand(case)
+    demand = demand.drawn or demand
     points, nodes = demand.position.shape
     step = max(1, points * nodes // _MOST_POINTS)
     names = np.array([segment.name for segment in case.segments], dtype=object)

@@ -15,18 +15,20 @@ if TYPE_CHECKING:
 SCHEMA = "actuator-sizing/simulation/1"
 
 
-def render_simulation_json(simulation: Simulation) -> bytes:
-    """Write quantities, settings, stops and notes as JSON; what is not known is null.
+def simulation_dict(simulation: Simulation) -> dict[str, Any]:
+    """Collect quantities, settings, stops and notes in plain types; what is not known is None.
 
     Parameters
     ----------
     simulation : Simulation
         The answer.
+
+    Returns
+    -------
+    dict
+        In SI, by name.
     """
     answer = {
-        "schema": SCHEMA,
-        "version": __version__,
-        "case": simulation.case_name,
         "input": simulation.input,
         "motor": simulation.motor,
         "gearhead": None if simulation.gearhead == "direct" else simulation.gearhead,
@@ -40,7 +42,22 @@ def render_simulation_json(simulation: Simulation) -> bytes:
         "moves": simulation.moves.to_dict("records"),
         "notes": list(simulation.notes),
     }
-    return (json.dumps(known_values(answer), indent=1, ensure_ascii=False, allow_nan=False) + "\n").encode()
+    known: dict[str, Any] = known_values(answer)
+    return known
+
+
+def render_simulation_json(simulation: Simulation) -> bytes:
+    """Write quantities, settings, stops and notes as JSON; what is not known is null.
+
+    Parameters
+    ----------
+    simulation : Simulation
+        The answer.
+    """
+    answer = {"schema": SCHEMA, "version": __version__, "case": simulation.case_name} | simulation_dict(
+        simulation
+    )
+    return (json.dumps(answer, indent=1, ensure_ascii=False, allow_nan=False) + "\n").encode()
 
 
 def write_simulation(simulation: Simulation, folder: str | Path) -> tuple[Path, ...]:

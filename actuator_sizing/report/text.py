@@ -80,3 +80,18 @@ def plural(count: int, noun: str) -> str:
     ('1 set', '12\u202f000 sets')
     """
     return f"{count:,} {noun}{'' if count == 1 else 's'}".replace(",", "\N{NARROW NO-BREAK SPACE}")
+
+
+#: Where the energy of a cycle goes, in the order of the way from the supply to the load: key and words.
+ENERGY_PARTS = (
+    ("supply", "from the supply"),
+    ("steady", "stand-by and other loads"),
+    ("resistor", "brake resistor"),
+    ("drive", "drive"),
+    ("cable", "motor cable"),
+    ("winding", "winding (copper)"),
+    ("motor_friction", "motor friction and iron"),
+    ("gearhead", "gearhead"),
+    ("mechanism", "mechanism and guides"),
+    ("work", "work on process and payload"),
+)

@@ -188,20 +188,17 @@ class Block:
         """Voltage over available voltage, inductance left out. [-]"""
         j = self.judged
         per_torque = j.resistance_ohm / (j.torque_constant_nm_per_a * j.voltage_available_v)
-        emf = (j.torque_constant_nm_per_a / j.voltage_available_v)[None, :]
+        emf = single(j.torque_constant_nm_per_a / j.voltage_available_v)[None, :]
         drop = per_torque * self.motor_side.columns
-        straight = np.concatenate([drop, emf])
         # While braking a larger current means less voltage: there the bound needs the most current there can be.
         # Saturated current over T/K, at most: the turning point of the cubic is at 3/2 of the linear current.
         saturated = j.saturation_per_a2 > 0.0
-        most = np.concatenate([np.where(saturated, 1.5, 1.0) * drop, emf]) if saturated.any() else None
+        most = single(np.where(saturated, 1.5, 1.0)) if saturated.any() else None
         side = self.gearhead_side
-        found = []
-        for torque, speed in zip(side.torque_for_voltage, side.speed_for_voltage, strict=True):
-            rows = np.concatenate([torque, speed], axis=1)
-            smaller = None if most is None else form(rows, most)
-            found.append(Ratio(top=form(rows, straight), smaller_top=smaller))
-        return tuple(found)
+        return tuple(
+            Ratio(top=form(torque, drop), braking=most, offset=Form(single(speed), emf))
+            for torque, speed in zip(side.torque_for_voltage, side.speed_for_voltage, strict=True)
+        )
 
     @cached_property
     def voltage_plane(self) -> tuple[Ratio, ...]:

@@ -37,16 +37,16 @@ class Form:
 class Ratio:
     """Lower bound of a utilisation or of its square, for N gearheads against M motors.
 
-    ``(top + per_peak · T̂ + per_square · q) / (bottom − drain · q)`` with ``q`` the mean square of the air-gap torque
-    and ``T̂`` a lower bound of its peak. A denominator of zero or less stands for what is out of reach: the ratio
-    becomes immense. What is not known is left out, so that a bound without its data is zero.
+    ``(top + offset + per_peak · T̂ + per_square · q) / (bottom − drain · q)`` with ``q`` the mean square of the
+    air-gap torque and ``T̂`` a lower bound of its peak. A denominator of zero or less stands for what is out of
+    reach: the ratio becomes immense. What is not known is left out, so that a bound without its data is zero.
 
     Attributes
     ----------
-    top, bottom : Form or None
-        Shape (N, M); 0 and 1 where left out.
-    smaller_top : Form or None
-        Where given, the smaller of the two tops counts.
+    top, offset, bottom : Form or None
+        Shape (N, M); 0, 0 and 1 where left out.
+    braking : ndarray, shape (M,), or None
+        Factor of at least 1 by which a negative top counts.
     per_peak, per_square, drain : ndarray, shape (M,), or None
         Of the motors; 0 where left out.
     is_squared : bool
@@ -54,7 +54,8 @@ class Ratio:
     """
 
     top: Form | None = None
-    smaller_top: Form | None = None
+    braking: FloatArray | None = None
+    offset: Form | None = None
     per_peak: FloatArray | None = None
     per_square: FloatArray | None = None
     bottom: Form | None = None

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, fields
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
@@ -15,14 +15,14 @@ from actuator_sizing.sizing.bus_power import (
     BusPower,
     TerminalPower,
     mean_square_through_drive,
+    needed_voltage,
     power_at_bus,
     terminal_power,
 )
-from actuator_sizing.sizing.bus_sag import bus_under_load, is_soft, sag
+from actuator_sizing.sizing.bus_sag import BusUnderLoad, bus_under_load, is_soft, sag
 from actuator_sizing.sizing.bus_side import (
     BusSide,
     bus_side,
-    chopper_threshold,
     clamping_threshold,
     supply_feeds_back,
 )
@@ -31,8 +31,6 @@ from actuator_sizing.sizing.checks.base import Sets
 FloatArray = NDArray[np.float64]
 
 _PAIRS_PER_CHUNK = 128
-#: Continuous power of a brake resistor over the mean that it burns; common practice asks for 30 to 50 %.
-RESISTOR_RESERVE = 1.3
 
 
 @dataclass(frozen=True)
@@ -66,8 +64,8 @@ class BusResults(_Columns):
     voltage_min_at_s: FloatArray
 
 
-def bus_results(sets: Sets) -> BusResults:
-    """The bus of every set over the cycle, in periodic steady state.
+def own_results(sets: Sets) -> BusResults:
+    """The bus of every set over the cycle, in periodic steady state, as if the axis had it to itself.
 
     Parameters
     ----------
@@ -84,16 +82,7 @@ def bus_results(sets: Sets) -> BusResults:
     Regeneration starts from the highest voltage of the supply. Peak and RMS power of the supply leave out what
     the capacitors help; its mean power is what it really gives. Sag is judged from the minimum bus voltage.
     """
-    return _results(sets, clamping_threshold(sets))
-
-
-def results_with_resistor(sets: Sets) -> BusResults:
-    """The bus of every set if its chopper had a resistor, to recommend one, shape (S,). [-]"""
-    return _results(sets, chopper_threshold(sets))
-
-
-def _results(sets: Sets, threshold_v: FloatArray) -> BusResults:
-    side = bus_side(sets, threshold_v)
+    side = bus_side(sets, clamping_threshold(sets))
     pairs, pair_of_set = np.unique(sets.index[:, :2], axis=0, return_inverse=True)
     pair_of_set = pair_of_set.reshape(-1)
     parts, order = [], []
@@ -104,56 +93,125 @@ def _results(sets: Sets, threshold_v: FloatArray) -> BusResults:
         parts.append(_of_pairs(sets, members, terminal_power(sets, chunk), pair, side.take(members)))
         order.append(members)
     back = np.argsort(np.concatenate(order), kind="stable")
-    names = [f.name for f in fields(BusResults)]
-    return BusResults(**{n: np.concatenate([getattr(part, n) for part in parts])[back] for n in names})
+    return BusResults.joined(parts).take(back)
 
 
 def _of_pairs(
     sets: Sets, members: NDArray[np.intp], terminals: TerminalPower, pair: NDArray[np.intp], side: BusSide
 ) -> BusResults:
-    demand = sets.demand
-    soft = is_soft(sets)
-    power = power_at_bus(terminals, pair, side) if soft or np.any(side.steady_w > 0.0) else None
-    if power is None:
-        # Nothing but the drive between terminals and bus: the runs of the pairs serve all their drives.
-        peak, piece, position = largest(terminals.power_w)
-        peak_at = demand.instant(piece, position)[pair]
-        most = np.maximum(peak, 0.0)[pair] / side.efficiency
-        square = mean_square_through_drive(terminals, pair, side, demand.duration_s)
-        cycle = bus_cycle(terminals.runs.take(pair), side.efficiency, side.room_j)
-        gives_back = np.any(terminals.runs.energy_j < 0.0, axis=1)[pair]
-        returned_peak = np.maximum(largest(-terminals.power_w)[0], 0.0)[pair] * side.efficiency
-    else:
-        most, peak_at = power.largest()
-        most = np.maximum(most, 0.0)
-        square = power.mean_square(demand.cycle_s)
-        cycle = bus_cycle(power.runs, np.ones(len(side)), side.room_j)
-        gives_back = np.any(power.runs.energy_j < 0.0, axis=1)
-        returned_peak = np.maximum(BusPower(power.duration_s, -power.power_w).largest()[0], 0.0)
-    under = bus_under_load(sets, terminals, pair, power, side) if soft and power is not None else None
+    cycle_s = sets.demand.cycle_s
+    if is_soft(sets) or np.any(side.steady_w > 0.0):
+        power = power_at_bus(terminals, pair, side)
+        under = None
+        if is_soft(sets):
+            under = bus_under_load(sets, needed_voltage(terminals, pair), power, side)
+        return results_of(sets, members, side, drawn(power, cycle_s, side.room_j), cycle_s, under)
+    # Nothing but the drive between terminals and bus: the runs of the pairs serve all their drives.
+    peak, piece, position = largest(terminals.power_w)
+    draw = Drawn(
+        cycle=bus_cycle(terminals.runs.take(pair), side.efficiency, side.room_j),
+        peak_w=np.maximum(peak, 0.0)[pair] / side.efficiency,
+        peak_at_s=sets.demand.instant(piece, position)[pair],
+        mean_square_w2=mean_square_through_drive(terminals, pair, side, sets.demand.duration_s),
+        gives_back=np.any(terminals.runs.energy_j < 0.0, axis=1)[pair],
+        returned_peak_w=np.maximum(largest(-terminals.power_w)[0], 0.0)[pair] * side.efficiency,
+    )
+    return results_of(sets, members, side, draw, cycle_s, None)
+
+
+@dataclass(frozen=True)
+class Drawn:
+    """What S sets draw from the bus and give back; each field but `cycle` has shape (S,)."""
+
+    cycle: BusCycle
+    peak_w: FloatArray
+    peak_at_s: FloatArray
+    mean_square_w2: FloatArray
+    gives_back: NDArray[np.bool_]
+    returned_peak_w: FloatArray
+
+
+def drawn(power: BusPower, cycle_s: float, room_j: FloatArray) -> Drawn:
+    """What sets draw whose power at the bus is known on pieces.
+
+    Parameters
+    ----------
+    power : BusPower
+        At the bus of S sets. [-]
+    cycle_s : float
+        Time after which it repeats. [s]
+    room_j : ndarray, shape (S,)
+        Of the capacitors, as in `bus_cycle`. [J]
+
+    Returns
+    -------
+    Drawn
+        Shape (S,). [-]
+    """
+    most, peak_at = power.largest()
+    back = BusPower(power.duration_s, -power.power_w).largest()[0]
+    return Drawn(
+        cycle=bus_cycle(power.runs, np.ones(len(most)), room_j),
+        peak_w=np.maximum(most, 0.0),
+        peak_at_s=peak_at,
+        mean_square_w2=power.mean_square(cycle_s),
+        gives_back=np.any(power.runs.energy_j < 0.0, axis=1),
+        returned_peak_w=np.maximum(back, 0.0),
+    )
+
+
+def results_of(
+    sets: Sets,
+    members: NDArray[np.intp],
+    side: BusSide,
+    draw: Drawn,
+    cycle_s: float,
+    under: BusUnderLoad | None,
+) -> BusResults:
+    """Results from what sets draw.
+
+    Parameters
+    ----------
+    sets : Sets
+        All sets. [-]
+    members : ndarray of int, shape (S,)
+        Which of them the rest is about. [-]
+    side : BusSide
+        What their bus is made of. [-]
+    draw : Drawn
+        What they draw. [-]
+    cycle_s : float
+        Time after which it repeats. [s]
+    under : BusUnderLoad or None
+        Their voltage under load; None where the supply is stiff. [-]
+
+    Returns
+    -------
+    BusResults
+        Shape (S,). [-]
+    """
+    cycle, feeds_back = draw.cycle, supply_feeds_back(sets)
     droop = sag(sets, members, under)
     known = np.where(np.isnan(side.stated_efficiency), np.nan, 1.0)
-    feeds_back = supply_feeds_back(sets)
     returned = cycle.dumped_energy_j if feeds_back else np.zeros(len(side))
-    returned_peak = returned_peak if feeds_back else np.zeros(len(side))
-    burnt = _resistor(sets, side, cycle, feeds_back=feeds_back)
+    returned_peak = draw.returned_peak_w if feeds_back else np.zeros(len(side))
+    burnt = _resistor(sets, side, cycle, cycle_s, feeds_back=feeds_back)
     extra = np.where(burnt["brake_energy_j"] > 0.0, burnt["brake_energy_j"] - cycle.dumped_energy_j, 0.0)
-    highest = _highest_voltage(sets, side, cycle, gives_back, returned_peak)
     return BusResults(
         capacitance_f=side.capacitance_f,
         threshold_v=side.threshold_v,
         release_v=side.release_v,
         steady_power_w=side.steady_w,
         room_j=side.room_j,
-        voltage_max_v=highest,
+        voltage_max_v=_highest_voltage(sets, side, cycle, draw.gives_back, returned_peak),
         voltage_max_at_s=cycle.peak_at_s,
         **burnt,
-        returned_power_mean_w=returned / demand.cycle_s,
+        returned_power_mean_w=returned / cycle_s,
         returned_power_peak_w=returned_peak,
-        supply_power_mean_w=known * (cycle.supply_energy_j + extra - returned) / demand.cycle_s,
-        supply_power_peak_w=known * most,
-        supply_power_peak_at_s=peak_at,
-        supply_power_rms_w=known * np.sqrt(square),
+        supply_power_mean_w=known * (cycle.supply_energy_j + extra - returned) / cycle_s,
+        supply_power_peak_w=known * draw.peak_w,
+        supply_power_peak_at_s=draw.peak_at_s,
+        supply_power_rms_w=known * np.sqrt(draw.mean_square_w2),
         sag_utilisation=droop.utilisation,
         sag_voltage_needed_v=droop.needed_v,
         sag_voltage_available_v=droop.available_v,
@@ -178,7 +236,9 @@ def _highest_voltage(
     return np.where(gives_back, highest, top)  # nothing comes back: the capacitance does not matter
 
 
-def _resistor(sets: Sets, side: BusSide, cycle: BusCycle, *, feeds_back: bool) -> dict[str, FloatArray]:
+def _resistor(
+    sets: Sets, side: BusSide, cycle: BusCycle, cycle_s: float, *, feeds_back: bool
+) -> dict[str, FloatArray]:
     """What the resistor burns; each pulse takes what the hysteresis costs on top of the ideal clamp."""
     clamps = ~np.isnan(side.threshold_v) & (not feeds_back)
     burns = clamps & (cycle.dumped_energy_j > 0.0)
@@ -201,70 +261,6 @@ def _resistor(sets: Sets, side: BusSide, cycle: BusCycle, *, feeds_back: bool) -
         "brake_pulse_j": pulse_j,
         "brake_pulse_s": np.where(burns, cycle.pulse_time_s[row, longest], 0.0),
         "brake_pulse_ratio": ratio,
-        "brake_power_mean_w": energy / sets.demand.cycle_s,
+        "brake_power_mean_w": energy / cycle_s,
         "brake_power_peak_w": np.where(clamps, cycle.dumped_power_peak_w, 0.0),
-    }
-
-
-def bus_quantities(sets: Sets, index: int) -> dict[str, float | None]:
-    """Quantities of the bus of one set for results.json.
-
-    Parameters
-    ----------
-    sets : Sets
-        Evaluated sets. [-]
-    index : int
-        Which set. [-]
-
-    Returns
-    -------
-    dict
-        SI values; None where not known. [-]
-    """
-    b = sets.once(bus_results)
-    low = sets.surroundings.bus_min_v
-    answer = {
-        "bus_voltage_max_v": b.voltage_max_v[index],
-        "bus_voltage_min_v": b.voltage_min_v[index],
-        "bus_capacitance_f": b.capacitance_f[index],
-        "bus_steady_power_w": b.steady_power_w[index],
-        "brake_energy_per_cycle_j": b.brake_energy_j[index],
-        "brake_pulse_energy_j": b.brake_pulse_j[index],
-        "brake_power_mean_w": b.brake_power_mean_w[index],
-        "brake_power_peak_w": b.brake_power_peak_w[index],
-        "returned_power_mean_w": b.returned_power_mean_w[index],
-        "returned_power_peak_w": b.returned_power_peak_w[index],
-        "supply_power_mean_w": b.supply_power_mean_w[index],
-        "supply_power_peak_w": b.supply_power_peak_w[index],
-        "supply_power_rms_w": b.supply_power_rms_w[index],
-        "supply_current_mean_a": b.supply_power_mean_w[index] / low,
-        "supply_current_peak_a": b.supply_power_peak_w[index] / low,
-        "supply_current_rms_a": b.supply_power_rms_w[index] / low,
-        **_recommended_resistor(sets.only(index)),
-    }
-    return {name: float(value) if np.isfinite(value) else None for name, value in answer.items()}
-
-
-def _recommended_resistor(sets: Sets) -> dict[str, float]:
-    """What a brake resistor must be, for one set: from the smallest to the largest value, pulse and continuous power.
-
-    Nothing but the smallest value where no chopper is known, or where nothing has to be burnt.
-    """
-    answer = {"brake_resistor_smallest_ohm": float(sets.drives.brake_resistor_min_ohm[0])}
-    if supply_feeds_back(sets):
-        return answer
-    b = results_with_resistor(sets)
-    peak = float(b.brake_power_peak_w[0])
-    if not peak > 0.0:
-        return answer
-    U, C = float(b.threshold_v[0]), float(b.capacitance_f[0])
-    span = float(np.nan_to_num(U**2 - b.release_v[0] ** 2))
-    stated = sets.option("brake resistor")
-    strongest = peak if np.isnan(stated) else U**2 / stated
-    return answer | {
-        "brake_resistor_largest_ohm": U**2 / peak,
-        "brake_resistor_recommended_power_w": RESISTOR_RESERVE * float(b.brake_power_mean_w[0]),
-        "brake_resistor_recommended_pulse_j": float(b.brake_pulse_j[0]),
-        # It switches most often while half the power of the resistor comes back.
-        "chopper_switching_frequency_max_hz": strongest / (2.0 * C * span) if span > 0.0 else np.nan,
     }

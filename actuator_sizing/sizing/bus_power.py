@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from actuator_sizing.core.machine import judge, judge_cold
 from actuator_sizing.core.power_runs import PowerRuns, bus_energy, bus_pieces, power_runs
-from actuator_sizing.core.quadrature import largest, lobatto
+from actuator_sizing.core.quadrature import largest, lobatto, to_series
 from actuator_sizing.sizing.bus_side import BusSide
 from actuator_sizing.sizing.checks.base import Sets
 from actuator_sizing.sizing.pair_course import course, electrical_course
@@ -109,6 +109,12 @@ def power_at_bus(terminals: TerminalPower, pair: NDArray[np.intp], side: BusSide
         Shape (S, ...). [-]
     """
     return BusPower(*bus_pieces(terminals.runs.take(pair), side.efficiency, side.steady_w))
+
+
+def needed_voltage(terminals: TerminalPower, pair: NDArray[np.intp]) -> FloatArray:
+    """Voltage that the motor of each set needs, at the nodes of the pieces of `power_at_bus`, (S, N, K). [V]"""
+    series = terminals.voltage_v @ to_series(terminals.voltage_v.shape[2]).T
+    return terminals.runs.take(pair).values(series[pair])
 
 
 def mean_square_through_drive(

@@ -12,7 +12,7 @@ from actuator_sizing.core.parameters import _Columns
 from actuator_sizing.core.power_runs import power_runs
 from actuator_sizing.core.quadrature import lobatto, to_series
 from actuator_sizing.core.supply import sagged_voltage
-from actuator_sizing.sizing.bus_power import BusPower, TerminalPower
+from actuator_sizing.sizing.bus_power import BusPower
 from actuator_sizing.sizing.bus_side import BATTERY, DC_SUPPLY, BusSide, supply_kind
 from actuator_sizing.sizing.checks.base import Sets
 
@@ -46,19 +46,15 @@ def is_soft(sets: Sets) -> bool:
     return not np.all(np.isnan(stated)) or supply_kind(sets) in (DC_SUPPLY, BATTERY)
 
 
-def bus_under_load(
-    sets: Sets, terminals: TerminalPower, pair: NDArray[np.intp], power: BusPower, side: BusSide
-) -> BusUnderLoad:
+def bus_under_load(sets: Sets, needed_v: FloatArray, power: BusPower, side: BusSide) -> BusUnderLoad:
     """Lowest bus voltage that the supply leaves, from its minimum voltage, over the cycle.
 
     Parameters
     ----------
     sets : Sets
         Holds supply and surroundings. [-]
-    terminals : TerminalPower
-        Of B pairs. [-]
-    pair : ndarray of int, shape (S,)
-        Pair of each set. [-]
+    needed_v : ndarray, shape (S, N, K)
+        Voltage that the motor needs, at the nodes of the pieces of `power`. [V]
     power : BusPower
         At the bus of the sets. [-]
     side : BusSide
@@ -77,8 +73,7 @@ def bus_under_load(
     periodic steady state. Safe side: a higher voltage means more power at the same current.
     """
     resistance = float(np.nan_to_num(sets.option("supply internal resistance"), nan=0.0))
-    first = terminals.runs.take(pair)
-    needed = first.values(terminals.voltage_v[pair] @ to_series(terminals.voltage_v.shape[2]).T)
+    needed = needed_v
     duration, watts = power.duration_s, power.power_w
     deficit = np.zeros_like(watts)
     limited = np.isfinite(side.limit_w)

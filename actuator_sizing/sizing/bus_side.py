@@ -44,20 +44,15 @@ def supply_feeds_back(sets: Sets) -> bool:
     return sets.case.options.get("supply feeds back") == "yes" or supply_kind(sets) == BATTERY
 
 
-def chopper_threshold(sets: Sets) -> FloatArray:
-    """Bus voltage at which a chopper switches on, with a resistor or not, shape (S,). [V]
-
-    The threshold of the `axis` table counts before the drive's own.
-    """
-    stated = sets.option("chopper threshold")
-    return sets.drives.chopper_threshold_v if np.isnan(stated) else np.full(len(sets), stated)
-
-
 def clamping_threshold(sets: Sets) -> FloatArray:
-    """Bus voltage at which a chopper with its resistor holds the bus, shape (S,); NaN where there is none. [V]"""
+    """Bus voltage at which a chopper with its resistor holds the bus, shape (S,); NaN where there is none. [V]
+
+    The threshold of the `axis` table counts before the drive's own; without a brake resistor nothing clamps.
+    """
     if np.isnan(sets.option("brake resistor")):
         return np.full(len(sets), np.nan)
-    return chopper_threshold(sets)
+    stated = sets.option("chopper threshold")
+    return sets.drives.chopper_threshold_v if np.isnan(stated) else np.full(len(sets), stated)
 
 
 def steady_power(sets: Sets) -> FloatArray:

@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
 from actuator_sizing.sizing.checks import Sets
-from actuator_sizing.sizing.judging import ORDER, Verdicts
+from actuator_sizing.sizing.judging import NOT_APPLICABLE, ORDER, Verdicts
 from actuator_sizing.sizing.results import FAILS
 from actuator_sizing.sizing.screening import Screened
 
@@ -48,7 +48,8 @@ def candidate_table(
     -------
     pandas.DataFrame
         Columns named with their SI unit; ``evaluated`` says "exactly" or "by bounds". A utilisation by
-        bounds is a lower bound. Of several cycles the largest values stand, and the energy of the first. [-]
+        bounds is a lower bound; checks that concern no set have no column. Of several cycles the largest values
+        stand, and the energy of the first. [-]
     """
     import pandas as pd
 
@@ -74,7 +75,9 @@ def candidate_table(
     ):
         of_cycle = [getattr(sets.pairs, name) for sets in several]
         frame[name] = of_cycle[0] if name.startswith("energy") else np.max(of_cycle, axis=0)
-    for column, check in enumerate(verdicts.checks):
+    concerned = np.any(verdicts.codes != NOT_APPLICABLE, axis=0)
+    for column in np.flatnonzero(concerned).tolist():
+        check = verdicts.checks[column]
         frame[f"utilisation_{check.key}"] = verdicts.utilisation[:, column]
     frame = frame.iloc[order].reset_index(drop=True)
     if len(screened.lost):

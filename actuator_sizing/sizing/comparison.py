@@ -8,7 +8,7 @@ from concurrent.futures import Executor
 from dataclasses import replace
 from functools import partial
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -35,8 +35,10 @@ from actuator_sizing.sizing.mix import is_weighed, mix_quantities
 from actuator_sizing.sizing.provenance import assumptions_of, questions_of
 from actuator_sizing.sizing.quantities import commissioning_quantities, quantities
 from actuator_sizing.sizing.ranking import RANKINGS, nearest_drives, ranking_key
+from actuator_sizing.sizing.ratio_windows import ratio_windows
 from actuator_sizing.sizing.results import (
     FAILS,
+    LOW_RESERVE,
     NOT_CHECKED,
     Comparison,
     Rejections,
@@ -44,7 +46,11 @@ from actuator_sizing.sizing.results import (
 )
 from actuator_sizing.sizing.screening import Screened, screen
 from actuator_sizing.sizing.set_model import SetModel
+from actuator_sizing.sizing.trade_offs import find_trade_offs
 from actuator_sizing.version import __version__
+
+if TYPE_CHECKING:
+    from actuator_sizing.sizing.headroom import Headroom
 
 IndexArray = NDArray[np.intp]
 Progress = Callable[[str, float], None]
@@ -63,6 +69,9 @@ def compare(
     rank_by: str | None = None,
     detail: int | None = None,
     levers: int = 0,
+    trade_offs: bool = False,
+    windows: bool = False,
+    headroom: bool = False,
     progress: Progress | None = None,
     executor: Executor | None = None,
     checkpoint: Path | None = None,
@@ -79,7 +88,14 @@ def compare(
     detail : int, optional
         How many sets to list with all their checks; default: what the case says. [-]
     levers : int
-        For how many of the nearest losers to find the smallest change that lets them pass. [-]
+        For how many of the nearest losers to find the smallest change that lets them pass; where the leading
+        set has low reserve, its levers are found too. [-]
+    trade_offs : bool
+        Find the passing sets that no other one beats in price, mass, energy and reserve at once too.
+    windows : bool
+        Work out the ratio windows of every motor too.
+    headroom : bool
+        Find what the leading set can do at most too, with the map of payload against cycle time.
     progress : callable, optional
         Called with a stage and the part of it that is done, 0 to 1. [-]
     executor : Executor, optional
@@ -98,7 +114,8 @@ def compare(
     Raises
     ------
     InputError
-        If no set can be formed at all, the ranking is not known, or the checkpoint is one of another case.
+        If no set can be formed at all, the ranking is not known, ratio windows are asked of a linear motor, or the
+        checkpoint is one of another case.
     StoppedError
         If the screening is interrupted and a checkpoint keeps what was found.
     """
@@ -107,9 +124,11 @@ def compare(
         raise InputError(
             [Problem("axis", None, "rank by", ranked_by, " | ".join(RANKINGS), "Choose one of these.")]
         )
+    case = _with_named_partners(case, progress)
     wanted = int(detail or case.number("sets to detail"))
     cycles = cycle_demands(case)
     demand = cycles[0].demand
+    found_windows = ratio_windows(cycles, progress=_stage(progress, "ratio windows")) if windows else None
     checks, limits = active_checks(case.limits)
     binding = tuple(c for c, limit in zip(checks, limits, strict=True) if is_binding(c, limit))
     allowed = {c.key: case.limits[c.key].allowed_utilisation for c in binding}
@@ -182,7 +201,30 @@ def compare(
         inertias=inertia_shares(case, demand, results[0].ratio),
         version=__version__,
         cycles=cycle_results(cycles),
+        trade_offs=find_trade_offs(case, sets, verdicts, index, order) if trade_offs else None,
+        windows=found_windows,
+        headroom=_headroom(cycles, results[0], progress) if headroom else None,
     )
+
+
+def _with_named_partners(case: Case, progress: Progress | None) -> Case:
+    """The case with the best set of its own case for every axis on the bus whose parts are not named."""
+    named = []
+    for number, partner in enumerate(case.partners, start=1):
+        if not partner.motor and partner.axis is not None:
+            best = compare(partner.axis, detail=1).best
+            partner = replace(partner, motor=best.motor, gearhead=best.gearhead or "", drive=best.drive)
+        named.append(partner)
+        if progress is not None:
+            progress("axes on the bus", number / len(case.partners))
+    return replace(case, partners=tuple(named))
+
+
+def _headroom(cycles: tuple[CycleDemand, ...], best: SetResult, progress: Progress | None) -> Headroom:
+    from actuator_sizing.sizing.headroom import headroom_of
+
+    parts = best.motor_index, best.gearhead_index, best.drive_index
+    return headroom_of(cycles, parts, with_map=True, progress=progress)
 
 
 def _with_levers(
@@ -192,17 +234,20 @@ def _with_levers(
     count: int,
     progress: Callable[[float], None] | None,
 ) -> tuple[SetResult, ...]:
-    """The results, the nearest losers with what would let them pass."""
+    """The results with what would let the nearest losers pass, and the leading set keep the recommended reserve."""
     if count <= 0:
         return results
     from actuator_sizing.sizing.levers import levers_of
 
-    chosen = [item.rank for item in results if item.verdict == FAILS][:count]
+    chosen = [item.rank for item in results[:1] if item.verdict == LOW_RESERVE]
+    chosen += [item.rank for item in results if item.verdict == FAILS][:count]
     answered = []
     for item in results:
         if item.rank in chosen:
             parts = (item.motor_index, item.gearhead_index, item.drive_index)
-            item = replace(item, levers=levers_of(case, cycles, *parts))
+            study = levers_of(cycles, *parts)
+            if study is not None:
+                item = replace(item, levers=study.as_mappings())
             if progress is not None:
                 progress((chosen.index(item.rank) + 1) / len(chosen))
         answered.append(item)

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
-from functools import partial
+from functools import cache, partial
 
 from actuator_sizing.case.model import Limit
 from actuator_sizing.sizing.checks import Check, Sets
@@ -103,4 +103,5 @@ def curves(model: SetModel, sets: Sets, index: int) -> SetDetail:
         return detail
     motor, gearhead, drive = (int(part) for part in sets.index[index])
     parts = (motor, gearhead, drive)
-    return replace(detail, simulation=partial(simulate_prepared, model.case, model.demand, parts))
+    # Page, workbook, results and figures all ask for it: simulated once.
+    return replace(detail, simulation=cache(partial(simulate_prepared, model.case, model.demand, parts)))

@@ -87,7 +87,9 @@ def run_cycle(axis: AxisPlant, settings: LoopSettings, band: float, cycles: int,
         runner.advance(span)
     tally = runner.tally
     moves = tally.moves(settings.sample_time_s)
-    return Run(tally.series(), tally.quantities(moves, settings), moves, _notes(axis, cycles, stride))
+    return Run(
+        tally.series(), tally.quantities(moves, settings), moves, _notes(axis, settings, cycles, stride)
+    )
 
 
 def _spans(
@@ -153,6 +155,14 @@ class _Runner:
         error = lag / self._ratio(span, time - begin)
         self.tally.add(seen, error, time)
         self.tally.watch_stop(span.segment, time, error, begin)
+        direct = {
+            column: seen[name][keep]
+            for name, column in (
+                ("direct_current", "direct_current_a"),
+                ("direct_voltage", "direct_voltage_v"),
+            )
+            if name in seen
+        }
         self.tally.rows.append(
             {
                 "time_s": time[keep],
@@ -168,6 +178,7 @@ class _Runner:
                 "current_a": seen["current"][keep],
                 "voltage_v": seen["voltage"][keep],
                 "saturated": seen["saturated"][keep],
+                **direct,
             }
         )
 
@@ -202,7 +213,7 @@ class _Runner:
         return np.asarray(commands.at(within_s, span.segment, slice(5, 6))[0])
 
 
-def _notes(axis: AxisPlant, cycles: int, stride: int) -> tuple[str, ...]:
+def _notes(axis: AxisPlant, settings: LoopSettings, cycles: int, stride: int) -> tuple[str, ...]:
     notes = [f"{cycles} cycle{'s' if cycles > 1 else ''} from equilibrium at the start of the cycle"]
     if stride > 1:
         notes.append(f"series: every {stride}th sample; errors and peaks are those of all samples")

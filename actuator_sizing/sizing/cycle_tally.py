@@ -49,6 +49,7 @@ class Tally:
     current_peak: float = 0.0
     current_square: float = 0.0
     voltage_peak: float = 0.0
+    direct_peak: float = math.nan  # of a machine in dq states
     stops: list[_Stop] = field(default_factory=list)
     rows: list[dict[str, FloatArray]] = field(default_factory=list)
 
@@ -77,7 +78,11 @@ class Tally:
             self.current_saturated += int(np.count_nonzero(flags & 1))
             self.voltage_saturated += int(np.count_nonzero(flags & 2))
         self.current_peak = max(self.current_peak, _largest(seen["current"]))
-        self.voltage_peak = max(self.voltage_peak, _largest(seen["voltage"]))
+        voltage = seen["voltage"]
+        if "direct_current" in seen:
+            voltage = np.hypot(voltage, seen["direct_voltage"])
+            self.direct_peak = float(np.fmax(self.direct_peak, _largest(seen["direct_current"])))
+        self.voltage_peak = max(self.voltage_peak, _largest(voltage))
 
     def watch_stop(self, segment: int, time_s: FloatArray, error: FloatArray, start_s: float) -> None:
         """Follow the error through a dwell that comes after a move.
@@ -167,6 +172,7 @@ class Tally:
             "following_error_rms": math.sqrt(self.error_square / self.samples),
             "current_peak_a": self.current_peak,
             "current_rms_a": math.sqrt(self.current_square / self.samples),
+            "direct_current_peak_a": self.direct_peak,
             "voltage_peak_v": self.voltage_peak,
             "current_saturated_s": self.current_saturated * h,
             "voltage_saturated_s": self.voltage_saturated * h,

@@ -21,6 +21,7 @@ from actuator_sizing.core.moments import demand_functions
 from actuator_sizing.core.motion_laws import Phase
 from actuator_sizing.core.process_load import TIME
 from actuator_sizing.core.quadrature import NODES, integrate, interpolate, largest_magnitude, lobatto, roots
+from actuator_sizing.core.record_slices import RecordSlices
 from actuator_sizing.core.transmission import (
     BACK_DRIVING,
     MOTORING,
@@ -35,7 +36,10 @@ CAUSES = ("inertia", "gravity", "friction", "process", "losses")
 #: Relative interpolation error that a piece may have where the geometry bends: what `NODES` nodes promise.
 _RESOLUTION = 1e-10
 _DEEPEST = 14  # halvings of one stretch; a stretch that short is below a part in ten thousand
-_RESOLVED = ("position", "speed", "effort", "lossless_torque", "shaft_speed", "shaft_acceleration")
+_RESOLVED = (
+    "position", "speed", "effort", "lossless_torque", "shaft_speed", "shaft_acceleration", "inertia_torque",
+    "gravity_torque",
+)  # fmt: skip
 
 
 @dataclass(frozen=True)
@@ -61,7 +65,8 @@ class Demand:
     motor_acceleration: FloatArray  # shaft acceleration as the motor's own moving mass feels it
     torque_by_cause: Mapping[str, FloatArray]  # (P, K) parts of shaft_torque
     load_inertia: float  # largest inertia of load and mechanism at the driven shaft
-    heat_start: NDArray[np.intp] | None = None  # first piece of each block of a condensed record
+    slices: RecordSlices | None = None  # of a condensed record, whose pieces are not in the order of time
+    drawn: Demand | None = None  # such a record in the order of time, at instants enough for a drawing
 
     @cached_property
     def functions(self) -> FloatArray:
@@ -146,14 +151,14 @@ def build_demand(case: Case, *, in_order: bool = False) -> Demand:
     if case.recording is not None:
         from actuator_sizing.sizing.measured_demand import recorded_pieces
 
-        payloads = np.array([segment.payload for segment in case.segments])
-        largest = float(np.max(case.mechanism.inertia_at_shaft(payloads)))
-        return Demand(**recorded_pieces(case, case.recording, in_order=in_order), load_inertia=largest)
+        known = recorded_pieces(case, case.recording, in_order=in_order)
+        drawn = known.pop("drawn", None)
+        return Demand(**known, drawn=None if drawn is None else Demand(**drawn))
     pieces = list(_pieces(case))
     stacked: dict[str, Any] = {
         name: np.array([piece[name] for piece in pieces])
         for name in (*(f.name for f in fields(Demand)), "lever")
-        if name not in ("torque_by_cause", "load_inertia", "heat_start")
+        if name not in ("torque_by_cause", "load_inertia", "slices", "drawn")
     }
     stacked["flow"] = stacked["flow"].astype(np.int8)
     causes = {cause: np.array([piece["by_cause"][cause] for piece in pieces]) for cause in CAUSES}
@@ -413,9 +418,9 @@ def _load(stretch: _Stretch, place: _Place, direction_of_load: float | None = No
     load_flow = _flow(effort, direction)
     factor = place.factors[load_flow]
     shaft_direction = np.full(NODES, _sign(shaft_speed))
-    inertia_torque = mechanism.shaft_inertia_kg_m2 * shaft_acceleration
+    inertia_torque, gravity_torque = mechanism.shaft_torques(geometry, shaft_speed, shaft_acceleration)
     drag = mechanism.shaft_friction_nm * shaft_direction
-    torque = effort * lever * factor + inertia_torque + drag
+    torque = effort * lever * factor + inertia_torque + gravity_torque + drag
     motor_acceleration = (
         shaft_acceleration + mechanism.specific_gravity_m_s2 + mechanism.specific_friction_m_s2 * direction
     )
@@ -434,6 +439,7 @@ def _load(stretch: _Stretch, place: _Place, direction_of_load: float | None = No
         "factor": factor,
         "drag": drag,
         "inertia_torque": inertia_torque,
+        "gravity_torque": gravity_torque,
         "lossless_torque": effort * lever,
         "shaft_speed": shaft_speed,
         "shaft_acceleration": shaft_acceleration,
@@ -447,7 +453,7 @@ def _by_cause(loaded: Mapping[str, Any]) -> dict[str, FloatArray]:
     efforts, lever = loaded["efforts"], loaded["lever"]
     return {
         "inertia": efforts.inertia * lever + loaded["inertia_torque"],
-        "gravity": efforts.gravity * lever,
+        "gravity": efforts.gravity * lever + loaded["gravity_torque"],
         "friction": efforts.friction * lever + loaded["drag"],
         "process": efforts.process * lever,
         "losses": loaded["lossless_torque"] * (loaded["factor"] - 1.0),

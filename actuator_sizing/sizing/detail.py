@@ -17,6 +17,7 @@ from actuator_sizing.core.warm_up import (
     temperature_course,
     warm_up,
 )
+from actuator_sizing.sizing.bus_detail import bus_frame, bus_levels
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.checks.motor import current_limited_torque, rerated_continuous_current
 from actuator_sizing.sizing.results import SetDetail
@@ -55,7 +56,7 @@ def set_detail(model: SetModel, sets: Sets, index: int) -> SetDetail:
     periodic, warming = _temperatures(model, sets, index)
     step = model.step().series(_STEP_POINTS)
     return SetDetail(
-        cycle=_cycle_frame(model),
+        cycle=_cycle_frame(model.in_time),
         periodic_temperature=_frame(periodic, _TEMPERATURES),
         warm_up=_frame(
             warming,
@@ -67,6 +68,7 @@ def set_detail(model: SetModel, sets: Sets, index: int) -> SetDetail:
         step_response=pd.DataFrame(dict(zip(("time_s", "current_a", "speed_rad_s"), step, strict=True))),
         levels=_levels(model, sets, index),
         segments=_segment_frame(model),
+        bus=bus_frame(sets.only(index)),
         stops=stop_courses(sets.only(index)),
     )
 
@@ -212,4 +214,5 @@ def _levels(model: SetModel, sets: Sets, index: int) -> dict[str, float]:
         "bus_min_v": s.bus_min_v,
         "bus_nominal_v": s.bus_nominal_v,
         "bus_max_v": s.bus_max_v,
+        **bus_levels(sets, index),
     }

@@ -102,7 +102,8 @@ class DriveRanks:
         DriveCounts
             The same as by `DriveSide.utilisations` of every set. [-]
         """
-        slope = peak_a / np.maximum(rms_a, np.finfo(float).tiny)
+        with np.errstate(over="ignore"):  # a pair without mean current, as in a cycle that runs once
+            slope = peak_a / np.maximum(rms_a, np.finfo(float).tiny)
         rejected = self._rejected(peak_a, rms_a)
         by_peak = int(self._by_peak.count(peak_a, slope)[0].sum())
         by_continuous = int(rejected.sum()) - by_peak

@@ -13,6 +13,8 @@ from actuator_sizing.sizing.derating import derated_drives
 
 FloatArray = NDArray[np.float64]
 
+_NOTHING = 1e-30  # in place of the current that derating leaves none of
+
 
 class DriveSide:
     """The drives' limits as amplitudes over the allowed utilisation."""
@@ -20,9 +22,9 @@ class DriveSide:
     def __init__(self, case: Case, allowed: Mapping[str, float]):
         d, s = derated_drives(case), case.surroundings
         amplitude = amplitude_per_unit_current(d.current_basis)
-        self.peak = np.where(np.isnan(d.peak_current_a), np.inf, d.peak_current_a * amplitude)
-        self.continuous = np.where(
-            np.isnan(d.continuous_current_a), np.inf, d.continuous_current_a * amplitude
+        self.peak, self.continuous = (
+            np.where(np.isnan(current), np.inf, np.maximum(current * amplitude, _NOTHING))
+            for current in (d.peak_current_a, d.continuous_current_a)
         )
         # The drive's peak current also bounds the torque over speed; the stricter of the two allowed values counts.
         strict = min(allowed.get("drive_peak_current", np.inf), allowed.get("speed_torque", np.inf))

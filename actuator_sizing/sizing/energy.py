@@ -7,7 +7,7 @@ from dataclasses import dataclass, fields
 import numpy as np
 
 from actuator_sizing.core.quadrature import integrate
-from actuator_sizing.sizing.bus import bus_results
+from actuator_sizing.sizing.bus import own_results
 from actuator_sizing.sizing.checks.base import Sets
 from actuator_sizing.sizing.set_model import SetModel
 
@@ -63,7 +63,7 @@ def energy_account(model: SetModel, sets: Sets, index: int) -> EnergyAccount:
     copper loss is that at judged temperatures, as everywhere at the terminals.
     """
     d, c, p = model.demand, model.course, sets.pairs
-    b = sets.once(bus_results)
+    b = sets.once(own_results)
     T = d.cycle_s
     held = np.where(d.brake_closed & (d.direction == 0.0), 0.0, 1.0)[:, None]
 

@@ -5,7 +5,7 @@ Everything here is independent of the drive; a check that needs one combines the
 
 from __future__ import annotations
 
-from dataclasses import dataclass, fields
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -33,6 +33,7 @@ from actuator_sizing.sizing.torque_plane import torque_plane
 FloatArray = NDArray[np.float64]
 
 _CHUNK = 128  # pairs at a time: keeps the (pairs, pieces, nodes) arrays in cache
+_MOST_NODES = 250_000  # in such an array, for a record of hundreds of pieces
 
 
 @dataclass(frozen=True)
@@ -112,19 +113,18 @@ def evaluate_pairs(
     PairResults
         Shape (B,). Integrals are exact on smooth pieces; extrema are refined between the nodes. [-]
     """
+    chunk = int(np.clip(_MOST_NODES // demand.position.size, 8, _CHUNK))
     parts = [
         _evaluate_chunk(
             demand,
-            motors.take(slice(first, first + _CHUNK)),
-            gearheads.take(slice(first, first + _CHUNK)),
+            motors.take(slice(first, first + chunk)),
+            gearheads.take(slice(first, first + chunk)),
             surroundings,
-            None if start is None else start.take(slice(first, first + _CHUNK)),
+            None if start is None else start.take(slice(first, first + chunk)),
         )
-        for first in range(0, len(motors), _CHUNK)
+        for first in range(0, len(motors), chunk)
     ]
-    return PairResults(
-        **{f.name: np.concatenate([getattr(part, f.name) for part in parts]) for f in fields(PairResults)}
-    )
+    return PairResults.joined(parts)
 
 
 def _evaluate_chunk(
@@ -143,8 +143,8 @@ def _evaluate_chunk(
     torque_peak_at = demand.instant(piece, position)
     cold = judge_cold(motors, surroundings)
     c_cold = electrical_course(demand, T, omega, c.shaft_torque_nm, cold)
-    voltage = _worse(_voltages(demand, c), _voltages(demand, c_cold), "voltage_peak_v")
-    plane = _worse(torque_plane(demand, c, judged), torque_plane(demand, c_cold, cold), "plane_utilisation")
+    voltage = worse_of(voltage_extremes(demand, c), voltage_extremes(demand, c_cold), "voltage_peak_v")
+    plane = worse_of(torque_plane(demand, c, judged), torque_plane(demand, c_cold, cold), "plane_utilisation")
     speed_peak, speed_piece, speed_position = largest_magnitude(omega)
 
     squared = i**2
@@ -156,7 +156,7 @@ def _evaluate_chunk(
     energy_airgap = signed_integrals(duration, airgap)
     energy_terminals = signed_integrals(duration, terminals)
 
-    network, loss = thermal_network(motors, surroundings), heat_loss(demand, motors, judged, c)
+    network, loss = thermal_network(motors, surroundings), heat_loss(demand, motors, gearheads, judged, c)
     temperatures: PeriodicState | SingleRun
     if start is None:
         temperatures = periodic_state(network, loss, surroundings.ambient_degc)
@@ -214,7 +214,7 @@ def _evaluate_chunk(
     )
 
 
-def _voltages(demand: Demand, c: PairCourse) -> dict[str, FloatArray]:
+def voltage_extremes(demand: Demand, c: PairCourse) -> dict[str, FloatArray]:
     """Largest voltage with and without ``L di/dt``, and when."""
     with_L, without_L = largest_magnitude(c.voltage_v), largest_magnitude(c.voltage_without_inductance_v)
     return {
@@ -226,7 +226,7 @@ def _voltages(demand: Demand, c: PairCourse) -> dict[str, FloatArray]:
     }
 
 
-def _worse(hot: dict[str, FloatArray], cold: dict[str, FloatArray], decides: str) -> dict[str, Any]:
+def worse_of(hot: dict[str, FloatArray], cold: dict[str, FloatArray], decides: str) -> dict[str, Any]:
     """Pair by pair what is larger, hot or cold, and which it is."""
     is_cold = cold[decides] > hot[decides]
     chosen = {name: np.where(is_cold, cold[name], value) for name, value in hot.items()}

@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Limit
 from actuator_sizing.sizing.checks import CHECKS, Check, Measure, Sets
+from actuator_sizing.sizing.checks.base import WAY, way_unit
 from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES, CheckResult, Checks
 
 FloatArray = NDArray[np.float64]
@@ -184,6 +185,7 @@ def check_results(several: Sets | tuple[Sets, ...], verdicts: Verdicts, index: i
         if at is not None and not np.isfinite(at):
             at = None
         unit = check.linear_unit if linear and check.linear_unit else check.unit
+        unit = way_unit(sets) if unit == WAY else unit
         results.append(
             CheckResult(
                 check=check.key,

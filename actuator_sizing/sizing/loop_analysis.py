@@ -92,7 +92,7 @@ def loop_analysis(linear: LinearCascade) -> LoopAnalysis:
     weakest = int(stiffness.argmin())
     table["disturbance_stiffness_nm_per_rad"] = stiffness
     quantities["disturbance_stiffness_min_nm_per_rad"] = float(stiffness[weakest])
-    quantities["disturbance_stiffness_min_hz"] = float(table["frequency_hz"][weakest])
+    quantities["disturbance_stiffness_min_at_hz"] = float(table["frequency_hz"][weakest])
     return LoopAnalysis(quantities, pd.DataFrame(table), _frame(steps))
 
 

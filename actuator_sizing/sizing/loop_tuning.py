@@ -18,6 +18,9 @@ _GAINS = {
 }  # fmt: skip
 
 
+_SWITCHES = {"is_delayed", "is_dq"}
+
+
 def tuned(axis: AxisPlant, given: Mapping[str, float | str | bool]) -> Tuning:
     """Settings of the loops: the default ones, with what the user replaces.
 
@@ -43,6 +46,9 @@ def tuned(axis: AxisPlant, given: Mapping[str, float | str | bool]) -> Tuning:
         if name not in names or name == "sample_time_s":
             raise wrong(name, "an unknown setting", ", ".join(n for n in names if n != "sample_time_s"),
                          "Use one of these names; the sampling rate has its own argument.")  # fmt: skip
+        if (name in _SWITCHES) != isinstance(given[name], bool):
+            allowed = "yes or no" if name in _SWITCHES else "a number"
+            raise wrong(name, repr(given[name]), allowed, "Write for example is_delayed=no.")
     plant = axis.plant()
     turn = option_number(axis.case, "encoder counts per turn")
     base = LoopSettings(

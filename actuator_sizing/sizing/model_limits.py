@@ -33,7 +33,7 @@ _PARTS_NOT_CHECKED = {
     "crank-slider": "forces in pins, rod and guide from the angle of the rod",
     "toggle lever": "forces in pins and links, which grow without limit towards the stretched position",
     "eccentric": "contact pressure and wear of disc and roller",
-    "four-bar": "forces in pins and links; the coupler is taken without mass",
+    "four-bar": "forces in pins and links",
     "tabulated slider": "contact and pins of whatever follows the map",
     "tabulated lever": "contact and pins of whatever follows the map",
     "winder": "wound-in tension and loss of tension while speed changes",

@@ -27,7 +27,7 @@ _SETTLED = 6.0  # slowest time constants shown after each step
 _LONGEST_S = 20.0
 _PERIODS, _PER_PERIOD = 20, 60
 _SINE_SHARE = 0.2  # amplitude of the sinusoid over the steady voltage
-_MOST_FILE_ROWS = 200_000
+_MOST_FILE_ROWS = 100_000
 
 
 def no_moves() -> pd.DataFrame:
@@ -64,6 +64,32 @@ def course_frame(course: Course) -> pd.DataFrame:
             "motor_angle_rad": x[:, MOTOR_ANGLE],
             "load_angle_rad": x[:, MOTOR_ANGLE] - x[:, TWIST],
         }
+    )
+
+
+def left_early(course: Course) -> tuple[str, ...]:
+    """A note where a run was given up before its end.
+
+    Parameters
+    ----------
+    course : Course
+        The run. [-]
+
+    Returns
+    -------
+    tuple of str
+        Empty for a complete run.
+    """
+    if course.is_complete:
+        return ()
+    at = f"given up at {course.time_s[-1]:.4g} s"
+    if course.steps > course.events * 100:
+        return (
+            f"{at} after {course.steps} steps, each a part of the fastest oscillation; ask for a shorter run",
+        )
+    return (
+        f"{at} after {course.events} changes between stick, slip and contact; state more damping, a smaller "
+        "backlash, or fewer samples",
     )
 
 
@@ -121,7 +147,7 @@ def run_step(axis: AxisPlant, plant: Plant) -> Run:
         f"voltage step of {voltage:.5g} V at rest, load torque step of {torque:.5g} at {loaded:.4g} s; "
         "no controller, no limit of current; gravity left out",
     )
-    return Run(course_frame(whole), quantities, no_moves(), notes)
+    return Run(course_frame(whole), quantities, no_moves(), notes + left_early(whole))
 
 
 def run_sine(axis: AxisPlant, plant: Plant) -> Run:
@@ -162,7 +188,7 @@ def run_sine(axis: AxisPlant, plant: Plant) -> Run:
         f"voltage held for {h:.3g} s at a time; amplitude and phase of the ripple without friction, from the "
         "response at the frequency itself",
     )
-    return Run(course_frame(course), quantities, no_moves(), notes)
+    return Run(course_frame(course), quantities, no_moves(), notes + left_early(course))
 
 
 def ripple(plant: Plant, frequency_rad_s: float) -> tuple[complex, complex]:
@@ -230,8 +256,7 @@ def run_file(path: str | Path, plant: Plant, axis: AxisPlant, most_samples: int)
     notes = [f"{len(time)} samples, each held until the next; no controller, gravity left out"]
     if float(np.abs(voltage).max()) > limit:
         notes.append(f"the file asks for more than the {limit:.5g} V of the lowest bus; it was not limited")
-    if not course.is_complete:
-        notes.append("stopped early: friction and backlash switched more often than the run allows")
+    notes += left_early(course)
     end = course.end
     quantities = {
         "final_speed_rad_s": float(end[MOTOR_SPEED]),

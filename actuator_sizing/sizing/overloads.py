@@ -5,22 +5,15 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.core.machine import amplitude_per_unit_current, current_of_torque, judge, resistance_at
+from actuator_sizing.core.machine import current_of_torque, judge, resistance_at
 from actuator_sizing.core.overload_heat import after_current, phase_excess, standstill_phase_factor
 from actuator_sizing.core.transmission import STANDSTILL, stage_factor
 from actuator_sizing.sizing.checks.base import Sets
+from actuator_sizing.sizing.checks.motor import peak_current
 from actuator_sizing.sizing.stops import controlled_stops
 from actuator_sizing.sizing.thermal_data import thermal_network
 
 FloatArray = NDArray[np.float64]
-
-
-def peak_current(sets: Sets) -> FloatArray:
-    """Smaller peak current of motor and drive in the motor's basis, shape (S,); NaN where neither is known. [A]"""
-    to_motor = amplitude_per_unit_current(sets.drives.current_basis) / amplitude_per_unit_current(
-        sets.motors.current_basis
-    )
-    return np.asarray(np.fmin(sets.motors.peak_current_a, sets.drives.peak_current_a * to_motor))
 
 
 def after_peak_current(sets: Sets, duration_s: FloatArray, phase_factor: FloatArray | float) -> FloatArray:

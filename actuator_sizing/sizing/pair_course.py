@@ -11,12 +11,16 @@ from actuator_sizing.core.capability import terminal_voltage
 from actuator_sizing.core.machine import JudgedMotor, current_of_torque
 from actuator_sizing.core.moments import gearhead_rows, motor_columns
 from actuator_sizing.core.parameters import GearheadParameters, MotorParameters
-from actuator_sizing.core.quadrature import differentiation_matrix, piece_means
+from actuator_sizing.core.quadrature import differentiation_matrix
+from actuator_sizing.core.record_slices import RecordSlices
 from actuator_sizing.core.thermal import HeatLoss, subpiece_counts, subpiece_durations, subpiece_means
 from actuator_sizing.sizing.demand import Demand
 from actuator_sizing.sizing.thermal_data import fastest_time_constant
 
 FloatArray = NDArray[np.float64]
+
+_PARTS_PER_CONSTANT = 20  # of the winding's time constant, in which the loss of a record is averaged
+_FEWEST_PARTS = 24  # of its cycle
 
 
 @dataclass(frozen=True)
@@ -35,6 +39,23 @@ class PairCourse:
 def per_pair(values: FloatArray) -> FloatArray:
     """Values of B pairs against pieces and nodes, shape (B, 1, 1). [-]"""
     return values[:, None, None]
+
+
+def air_gap_coefficients(motors: MotorParameters, gearheads: GearheadParameters) -> FloatArray:
+    """How the air-gap torque depends on the six functions of `core.moments`.
+
+    Parameters
+    ----------
+    motors, gearheads : MotorParameters, GearheadParameters
+        B rows each: the pairs. [-]
+
+    Returns
+    -------
+    ndarray, shape (B, 6)
+        Coefficients in SI. [-]
+    """
+    motor = motor_columns(motors.rotor_inertia_kg_m2, motors.friction_torque_nm, motors.viscous_friction_nm_s)
+    return np.asarray(np.einsum("bi,bij->bj", motor, gearhead_rows(gearheads)))
 
 
 def air_gap_torque(
@@ -64,12 +85,10 @@ def air_gap_torque(
     gearhead; with the holding brake closed there is no torque. Linear in the six functions of `core.moments`,
     so that one product of matrices serves all pairs.
     """
-    rows = gearhead_rows(gearheads)
-    motor = motor_columns(motors.rotor_inertia_kg_m2, motors.friction_torque_nm, motors.viscous_friction_nm_s)
     functions = demand.functions.reshape(6, -1)
     shape = (len(motors), *demand.shaft_speed.shape)
-    at_shaft = (rows[:, 0] @ functions).reshape(shape)
-    torque = (np.einsum("bi,bij->bj", motor, rows) @ functions).reshape(shape)
+    at_shaft = (gearhead_rows(gearheads)[:, 0] @ functions).reshape(shape)
+    torque = (air_gap_coefficients(motors, gearheads) @ functions).reshape(shape)
     omega = per_pair(gearheads.ratio) * demand.shaft_speed
     return torque, omega, at_shaft
 
@@ -131,17 +150,23 @@ def speed_loss(motors: MotorParameters, speed_rad_s: FloatArray) -> FloatArray:
     return np.asarray(T_c * np.abs(speed_rad_s) + c * speed_rad_s**2)
 
 
-def heat_loss(demand: Demand, motors: MotorParameters, judged: JudgedMotor, c: PairCourse) -> HeatLoss:
+def heat_loss(
+    demand: Demand,
+    motors: MotorParameters,
+    gearheads: GearheadParameters,
+    judged: JudgedMotor,
+    c: PairCourse,
+) -> HeatLoss:
     """Losses on each piece at reference temperatures, as the thermal model wants them.
 
     Parameters
     ----------
     demand : Demand
         The cycle. [-]
-    motors : MotorParameters
-        B motors. [-]
+    motors, gearheads : MotorParameters, GearheadParameters
+        B pairs. [-]
     judged : JudgedMotor
-        The same at judged temperatures, at which the current of `c` was found. [-]
+        The same motors at judged temperatures, at which the current of `c` was found. [-]
     c : PairCourse
         Courses of the pairs. [-]
 
@@ -164,9 +189,10 @@ def heat_loss(demand: Demand, motors: MotorParameters, judged: JudgedMotor, c: P
     tau = fastest_time_constant(motors)
     shortest = float(np.nanmin(tau)) if np.isfinite(tau).any() else np.inf
     duration = demand.duration_s
-    if demand.heat_start is not None:  # the order within a block of a record is not known: its mean heats it
-        copper, by_speed = (_block_means(duration, demand.heat_start, loss) for loss in (copper, by_speed))
-        duration = np.add.reduceat(duration, demand.heat_start)
+    if demand.slices is not None:
+        duration, copper, by_speed = _loss_of_slices(
+            demand, demand.slices, motors, gearheads, copper, shortest
+        )
     counts = subpiece_counts(duration, copper, shortest)
     return HeatLoss(
         duration_s=subpiece_durations(duration, counts),
@@ -179,7 +205,28 @@ def heat_loss(demand: Demand, motors: MotorParameters, judged: JudgedMotor, c: P
     )
 
 
-def _block_means(duration_s: FloatArray, start: NDArray[np.intp], loss: FloatArray) -> FloatArray:
-    """Means over blocks of pieces, as constant node values, shape (B, P, K) to (B, G, K)."""
-    total = np.add.reduceat(piece_means(loss) * duration_s, start, axis=1)
-    return np.repeat((total / np.add.reduceat(duration_s, start))[..., None], loss.shape[2], axis=2)
+def _loss_of_slices(
+    demand: Demand,
+    slices: RecordSlices,
+    motors: MotorParameters,
+    gearheads: GearheadParameters,
+    copper: FloatArray,
+    time_constant_s: float,
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Copper and speed loss of a condensed record as constant pieces, groups of its slices in order of time.
+
+    Copper loss is laid out as the square of the torque; its mean over the cycle is that of the condensed
+    instants, where saturation is solved.
+    """
+    first = slices.grouped(min(time_constant_s / _PARTS_PER_CONSTANT, demand.cycle_s / _FEWEST_PARTS))
+    duration = np.add.reduceat(slices.duration_s, first)
+    squared = np.add.reduceat(slices.squared_torque(air_gap_coefficients(motors, gearheads)), first, axis=1)
+    total = squared.sum(axis=1, keepdims=True)
+    heat = demand.mean(copper)[:, None] * demand.cycle_s
+    heat = heat * np.divide(squared, total, out=np.zeros_like(squared), where=total > 0.0)
+    by_speed = slices.speed_loss(motors.friction_torque_nm, motors.viscous_friction_nm_s, gearheads.ratio)
+    by_speed = np.add.reduceat(by_speed, first, axis=1)
+    heat, by_speed = (
+        np.repeat((energy / duration)[..., None], copper.shape[2], axis=2) for energy in (heat, by_speed)
+    )
+    return duration, heat, by_speed

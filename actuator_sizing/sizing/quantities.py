@@ -11,7 +11,7 @@ from actuator_sizing.core.overload_heat import insulation_life_factor
 from actuator_sizing.core.parameters import CURRENT_BASES
 from actuator_sizing.core.permissible_load import LoadedMachine, intermittent_current, short_time_current
 from actuator_sizing.core.warm_up import temperatures_after, warm_up
-from actuator_sizing.sizing.bus import bus_quantities
+from actuator_sizing.sizing.bus_quantities import bus_quantities
 from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.checks.drive_limits import pwm_ripple
 from actuator_sizing.sizing.checks.motor import current_limited_torque

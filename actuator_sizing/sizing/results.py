@@ -15,9 +15,13 @@ if TYPE_CHECKING:
 
     from actuator_sizing.case.model import Case
     from actuator_sizing.sizing.demand import Demand
+    from actuator_sizing.sizing.headroom import Headroom
+    from actuator_sizing.sizing.levers import LeverStudy
+    from actuator_sizing.sizing.ratio_results import RatioWindows
     from actuator_sizing.sizing.robustness.results import Robustness
     from actuator_sizing.sizing.simulation_results import Simulation
     from actuator_sizing.sizing.stop_courses import StopCourses
+    from actuator_sizing.sizing.trade_offs import TradeOffs
 
 PASSES = "passes"
 LOW_RESERVE = "passes, low reserve"
@@ -118,6 +122,9 @@ class SetDetail:
     #: levels for limit lines, e.g. motor_peak_current_a, drive_peak_current_a, drive_continuous_current_a,
     #: speed_max_rad_s, winding_limit_degc, ambient_degc, voltage_available_v (NaN: not known)
     levels: Mapping[str, float]
+    #: the DC bus over one cycle: time_s, bus_power_w (taken), bus_voltage_high_v (fed from the highest voltage of the
+    #: supply, NaN where not known) and bus_voltage_low_v (fed from the lowest)
+    bus: pd.DataFrame | None = None
     #: one row per segment of the duty cycle: torque_rms_nm, current_rms_a and current_squared_a2_s, the integral
     #: of the squared current over the segment; their sum over the cycle time is the squared RMS current
     segments: pd.DataFrame | None = None
@@ -245,6 +252,9 @@ class Comparison:
     inertias: tuple[InertiaShare, ...] = ()  # inertia inventory; empty where the case has none
     version: str = ""
     cycles: tuple[CycleResult, ...] = ()  # where there are several; `demand` and `cycle` are of the first
+    trade_offs: TradeOffs | None = None  # which passing sets no other one beats, where it was asked for
+    windows: RatioWindows | None = None  # ratio windows of every motor, where they were asked for
+    headroom: Headroom | None = None  # how far the leading set can go, where it was asked for
 
     def by_cycle(self) -> tuple[Comparison, ...]:
         """The comparison once for each cycle, its leading set shown in that cycle alone."""
@@ -299,6 +309,41 @@ class Comparison:
         from actuator_sizing.sizing.robustness.robust import robust_of_leading
 
         return robust_of_leading(self)
+
+    def ratio_windows(self) -> RatioWindows:
+        """Ratio windows of every motor that fits the axis, worked out now unless the report has them already.
+
+        Raises
+        ------
+        InputError
+            If the axis has a linear motor, or no motor fits it.
+        """
+        from actuator_sizing.sizing.cycles import cycle_demands
+        from actuator_sizing.sizing.ratio_windows import ratio_windows
+
+        return self.windows or ratio_windows(cycle_demands(self.case))
+
+    def levers_of(self, rank: int, weights: Mapping[str, float] | None = None) -> LeverStudy | None:
+        """What would let one of the sets pass, or keep the recommended reserve.
+
+        Parameters
+        ----------
+        rank : int
+            Of the set among `sets`, from 1. [-]
+        weights : mapping of str to float, optional
+            What a lever costs more than another in the cheapest pair, by its key. [-]
+
+        Returns
+        -------
+        LeverStudy or None
+            None where the set has the reserve that is recommended.
+        """
+        from actuator_sizing.sizing.cycles import cycle_demands
+        from actuator_sizing.sizing.levers import levers_of
+
+        item = self.sets[rank - 1]
+        parts = item.motor_index, item.gearhead_index, item.drive_index
+        return levers_of(cycle_demands(self.case), *parts, weights)
 
     @property
     def passes(self) -> bool:

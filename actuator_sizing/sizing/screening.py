@@ -8,8 +8,9 @@ counted under the worst of their checks, the others under the worst check of the
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Mapping
-from concurrent.futures import Executor
+from concurrent.futures import Executor, ProcessPoolExecutor, ThreadPoolExecutor
 from dataclasses import dataclass
+from importlib.util import find_spec
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -31,6 +32,7 @@ FloatArray = NDArray[np.float64]
 
 _MOTORS_PER_BLOCK = 2048
 _PAIRS_PER_SHARD = 2**23  # a few tenths of a second
+_COMPILED_PAIRS = 1e8
 LISTED_SETS = 200_000  # up to so many sets, each loser is listed with what governs it
 
 
@@ -121,6 +123,7 @@ def screen(
         keep=keep,
         losers=losers,
         listed=total <= LISTED_SETS,
+        compiled=total > LISTED_SETS and _is_compiled(len(motor_index) * len(gearhead_index), executor),
     )
     shards = tuple(_shards(case, motor_index, len(gearhead_index)))
     found = _work(common, shards, executor, checkpoint, progress)
@@ -144,6 +147,12 @@ def screen(
         lost_bound=lost_bound,
         check_names=losses.names,
     )
+
+
+def _is_compiled(pairs: int, executor: Executor | None) -> bool:
+    """Whether the optional compiler pays: it takes seconds to load. The workers of a cluster may not have it."""
+    local = executor is None or isinstance(executor, ThreadPoolExecutor | ProcessPoolExecutor)
+    return local and pairs >= _COMPILED_PAIRS and find_spec("numba") is not None
 
 
 def _loads(demand: Demand | tuple[CycleDemand, ...]) -> tuple[Load, ...]:
@@ -207,6 +216,6 @@ def _work(
             if checkpoint is None:
                 raise
             raise checkpoint.stopped(found, done, worked / pairs) from None
-    if checkpoint is not None:
+    if checkpoint is not None and shards:
         checkpoint.save(found, done, 1.0, at_once=True)
     return found

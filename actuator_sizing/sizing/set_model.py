@@ -18,12 +18,17 @@ class SetModel:
 
     def __init__(self, case: Case, demand: Demand, motor: int, gearhead: int, drive: int):
         """Take the three parts by their index in the catalogs."""
-        self.case, self.demand = case, demand
+        self.case, self.demand, self.parts = case, demand, (motor, gearhead, drive)
         self.motor: MotorParameters = case.motor_parameters.take(slice(motor, motor + 1))
         self.gearhead: GearheadParameters = case.gearhead_parameters.take(slice(gearhead, gearhead + 1))
         self.drive = derated_drives(case).take(slice(drive, drive + 1))
         self.judged: JudgedMotor = judge(self.motor, case.surroundings)
         self.course: PairCourse = course(demand, self.motor, self.gearhead, self.judged)
+
+    @property
+    def in_time(self) -> SetModel:
+        """The set over the cycle in the order of time, for drawings; itself unless a record was condensed."""
+        return self if self.demand.drawn is None else SetModel(self.case, self.demand.drawn, *self.parts)
 
     @property
     def network(self) -> ThermalNetwork:
@@ -33,7 +38,7 @@ class SetModel:
     @property
     def loss(self) -> HeatLoss:
         """Heat losses over the cycle."""
-        return heat_loss(self.demand, self.motor, self.judged, self.course)
+        return heat_loss(self.demand, self.motor, self.gearhead, self.judged, self.course)
 
     @property
     def total_inertia(self) -> float:

@@ -6,7 +6,7 @@ on how the work is shared out, so that the sum of the shards is the same, bit fo
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, fields
 from functools import cached_property
 from typing import TYPE_CHECKING
@@ -71,6 +71,9 @@ class Common:
     keep: int
     losers: int
     listed: bool  # whether every loser is listed
+    compiled: bool = (
+        False  # whether the optional compiler works out the bounds; not where every loser is listed
+    )
 
     @property
     def checks(self) -> tuple[Check, ...]:
@@ -175,12 +178,7 @@ def screen_shard(common: Common, shard: Shard, bars: Bars) -> Found:
     )
     bounds = BlockBounds.of(blocks, common.checks, common.allowed)
     run = _Run(common, shard, bounds, found, TileWorker(PAIRS_PER_TILE))
-    step = max(1, PAIRS_PER_TILE // len(shard.motors))
-    passing: list[_Pairs] = []
-    with np.errstate(over="ignore"):  # immense ratios stand for what is out of reach
-        for start in range(shard.first_gearhead, shard.end_gearhead, step):
-            which = slice(start, min(start + step, shard.end_gearhead))
-            passing.append(_screen_tile(run, which, run.worker.work(bounds, which)))
+    passing = list(_compiled_rows(run) if common.compiled else _tiles(run))
     pairs = _Pairs(*(np.concatenate([getattr(part, f.name) for part in passing]) for f in fields(_Pairs)))
     return Found(_screen_drives(run, pairs), found.losses, found.survivors, found.losers, found.by_drive)
 
@@ -217,6 +215,40 @@ class _Pairs:
     def take(self, index: NDArray[np.intp]) -> _Pairs:
         """Some of the pairs."""
         return _Pairs(*(getattr(self, f.name)[index] for f in fields(self)))
+
+
+def _tiles(run: _Run) -> Iterator[_Pairs]:
+    """Screen the shard in tiles; gives the pairs that may pass."""
+    shard = run.shard
+    step = max(1, PAIRS_PER_TILE // len(shard.motors))
+    with np.errstate(over="ignore"):  # immense ratios stand for what is out of reach
+        for start in range(shard.first_gearhead, shard.end_gearhead, step):
+            which = slice(start, min(start + step, shard.end_gearhead))
+            yield _screen_tile(run, which, run.worker.work(run.bounds, which))
+
+
+def _compiled_rows(run: _Run) -> Iterator[_Pairs]:
+    """The same by compiled loops."""
+    from actuator_sizing.sizing.compiled_bounds import BoundsKernel
+
+    shard, losses, drives = run.shard, run.found.losses, len(run.shard.drives)
+    kernel = BoundsKernel(run.bounds, float(LIMIT))
+    first = shard.first_gearhead
+    while first < shard.end_gearhead:
+        rows = kernel.work(first, shard.end_gearhead, run.found.losers.bar)
+        for (number, _, _), count in zip(run.bounds.by_motor, rows.by_motor, strict=True):
+            losses.counts[number] += count * drives
+        check = run.bounds.gearhead_check[first : first + len(rows.by_gearhead)]
+        np.add.at(losses.counts, check, rows.by_gearhead * drives)
+        near = rows.worst > LIMIT
+        run.found.losers.add(run.pairs(rows.gearhead[near], rows.motor[near]), rows.worst[near])
+        kept = ~near
+        yield _Pairs(
+            rows.gearhead[kept],
+            rows.motor[kept],
+            *(part[kept].astype(float) for part in (rows.worst, rows.torque_peak, rows.mean_square)),
+        )
+        first += len(rows.by_gearhead)
 
 
 def _screen_tile(run: _Run, which: slice, tile: Tile) -> _Pairs:
@@ -301,18 +333,17 @@ def _list_sets(run: _Run, pairs: _Pairs, peak_a: FloatArray, rms_a: FloatArray, 
     stack = common.drive_side.utilisations(peak_a, rms_a, drives)
     drive_worst = stack.max(axis=0)
     survives = drive_worst <= LIMIT
-    k, d = _places_of(~survives)
+    # What cannot get into a list is not even written down.
+    k, d = _places_of(~survives & (common.listed | (drive_worst <= found.by_drive.bar)))
     lost = run.sets(run.pairs(pairs.gearhead[k], pairs.motor[k]), d)
     found.losses.keep(lost, len(common.check_keys) + stack.argmax(axis=0)[k, d], drive_worst[k, d])
     found.by_drive.add(lost, drive_worst[k, d])
-    k, d = _places_of(survives)
-    if len(k):
-        sets = run.sets(run.pairs(pairs.gearhead[k], pairs.motor[k]), d)
-        if common.key == "reserve":
-            keys = np.maximum(key[k], drive_worst[k, d])
-        else:
-            keys = key[k] + common.drive_key[drives][d]
-        found.survivors.add(sets, keys)
+    if common.key == "reserve":
+        keys = np.maximum(key[:, None], drive_worst)
+    else:
+        keys = key[:, None] + common.drive_key[drives]
+    k, d = _places_of(survives & (keys <= found.survivors.bar))
+    found.survivors.add(run.sets(run.pairs(pairs.gearhead[k], pairs.motor[k]), d), keys[k, d])
 
 
 def _pair_key(run: _Run, pairs: _Pairs) -> FloatArray:

@@ -3,31 +3,34 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass, fields
+from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.case.model import Case
 from actuator_sizing.core.machine import amplitude_per_unit_current, judge, motor_amplitude_per_unit_current
-from actuator_sizing.core.parameters import DriveParameters
+from actuator_sizing.core.parameters import DriveParameters, _Columns
 from actuator_sizing.core.quadrature import piece_means
+from actuator_sizing.core.window_bounds import overload_bound, windowed_rms_bound
 from actuator_sizing.core.windows import overload_accumulator, windowed_rms
 from actuator_sizing.sizing.checks import Sets
-from actuator_sizing.sizing.demand import Demand
+from actuator_sizing.sizing.demand import Demand, build_demand
 from actuator_sizing.sizing.derating import derated_drives
 from actuator_sizing.sizing.evaluation import PairResults, evaluate_pairs
-from actuator_sizing.sizing.pair_course import course
+from actuator_sizing.sizing.joint_bus import PartnerPower, partner_axis, partner_power
+from actuator_sizing.sizing.pair_course import air_gap_coefficients, course
 from actuator_sizing.sizing.thermal_start import ThermalStart
 
 FloatArray = NDArray[np.float64]
 IndexArray = NDArray[np.intp]
 
 _PAIRS_PER_CHUNK = 256
+_MOST_NODES = 100_000  # sets times nodes for which an accumulator is followed at a time
 
 
 @dataclass(frozen=True)
-class _DriveView:
+class _DriveView(_Columns):
     peak: FloatArray
     rms: FloatArray
     rms_at: FloatArray
@@ -81,13 +84,8 @@ def evaluate_sets(
         )
         if progress is not None:
             progress(min(1.0, (first + _PAIRS_PER_CHUNK) / len(pairs)))
-    all_pairs = PairResults(
-        **{f.name: np.concatenate([getattr(part, f.name) for part in results]) for f in fields(PairResults)}
-    )
-    back = np.argsort(np.concatenate(order), kind="stable")
-    view = {
-        f.name: np.concatenate([getattr(part, f.name) for part in views])[back] for f in fields(_DriveView)
-    }
+    all_pairs = PairResults.joined(results)
+    view = _DriveView.joined(views).take(np.argsort(np.concatenate(order), kind="stable"))
     return Sets(
         case=case,
         index=index,
@@ -98,13 +96,23 @@ def evaluate_sets(
         gearheads=case.gearhead_parameters.take(index[:, 1]),
         drives=derated_drives(case).take(index[:, 2]),
         pairs=all_pairs.take(pair_of_set),
-        drive_current_peak_a=view["peak"],
-        drive_current_rms_a=view["rms"],
-        drive_current_rms_at_s=view["rms_at"],
-        overload_a2s=view["overload"],
-        overload_at_s=view["overload_at"],
+        drive_current_peak_a=view.peak,
+        drive_current_rms_a=view.rms,
+        drive_current_rms_at_s=view.rms_at,
+        overload_a2s=view.overload,
+        overload_at_s=view.overload_at,
         start=start,
+        partners=_partner_powers(case),
     )
+
+
+def _partner_powers(case: Case) -> tuple[PartnerPower, ...]:
+    """What the other axes on the bus draw from it."""
+    found = []
+    for partner in case.partners:
+        axis, index = partner_axis(case, partner)
+        found.append(partner_power(partner, evaluate_sets(axis, build_demand(axis), index)))
+    return tuple(found)
 
 
 def _drive_view(
@@ -120,23 +128,30 @@ def _drive_view(
     gearheads = case.gearhead_parameters.take(pairs[:, 1])
     drives = derated_drives(case).take(drive)
     amplitude = motor_amplitude_per_unit_current(motors)
-    current = course(demand, motors, gearheads, judge(motors, case.surroundings)).current_a
-    squared = (current * amplitude[:, None, None]) ** 2
-    duration = demand.duration_s
     per_drive = amplitude_per_unit_current(drives.current_basis)
-    if not case.cycle.repeats:
-        duration, squared = _with_rest(duration, squared, drives, per_drive)
+    signal: _Course | _Slices
+    if demand.slices is None:
+        current = course(demand, motors, gearheads, judge(motors, case.surroundings)).current_a
+        duration, squared = demand.duration_s, (current * amplitude[:, None, None]) ** 2
+        if not case.cycle.repeats:
+            duration, squared = _with_rest(duration, squared, drives, per_drive)
+        signal = _Course(duration, squared)
+    else:
+        peak = results.current_peak_a
+        torque = np.where(results.torque_peak_nm > 0.0, results.torque_peak_nm, 1.0)
+        # The current per torque is largest at the peak: with saturation this is above the true square.
+        factor = (amplitude * peak / torque) ** 2
+        squared = demand.slices.squared_torque(air_gap_coefficients(motors, gearheads)) * factor[:, None]
+        signal = _Slices(demand.slices.duration_s, squared, amplitude * peak)
     rms = results.current_rms_a[pair] * amplitude[pair] / per_drive
     rms_at = np.full(len(pair), np.nan)
     for window in np.unique(drives.rms_window_s[np.isfinite(drives.rms_window_s)]):
         mine = np.flatnonzero(drives.rms_window_s == window)
         wanted, place = np.unique(pair[mine], return_inverse=True)
-        largest, start = windowed_rms(duration, squared[wanted], float(window))
+        largest, start = signal.windowed_rms(wanted, float(window))
         rms[mine] = largest[place] / per_drive[mine]
         rms_at[mine] = start[place]
-    accumulated, when = _overload(
-        duration, squared, results, pair, amplitude, drives.continuous_current_a * per_drive
-    )
+    accumulated, when = _overload(signal, results, pair, amplitude, drives.continuous_current_a * per_drive)
     return _DriveView(
         peak=results.current_peak_a[pair] * amplitude[pair] / per_drive,
         rms=rms,
@@ -144,6 +159,35 @@ def _drive_view(
         overload=accumulated / per_drive**2,
         overload_at=when,
     )
+
+
+@dataclass(frozen=True)
+class _Course:
+    """Squares of currents over the cycle: windows are exact."""
+
+    duration_s: FloatArray
+    squared: FloatArray  # (B, P, K)
+
+    def windowed_rms(self, pairs: IndexArray, window_s: float) -> tuple[FloatArray, FloatArray]:
+        return windowed_rms(self.duration_s, self.squared[pairs], window_s)
+
+    def overload(self, pairs: IndexArray, continuous_squared: FloatArray) -> tuple[FloatArray, FloatArray]:
+        return overload_accumulator(self.duration_s, self.squared[pairs], continuous_squared)
+
+
+@dataclass(frozen=True)
+class _Slices:
+    """Squares of currents in slices of a condensed record: windows are bounded from above."""
+
+    duration_s: FloatArray
+    squared: FloatArray  # (B, M), integrals
+    peak: FloatArray  # (B,)
+
+    def windowed_rms(self, pairs: IndexArray, window_s: float) -> tuple[FloatArray, FloatArray]:
+        return windowed_rms_bound(self.duration_s, self.squared[pairs], self.peak[pairs], window_s)
+
+    def overload(self, pairs: IndexArray, continuous_squared: FloatArray) -> tuple[FloatArray, FloatArray]:
+        return overload_bound(self.duration_s, self.squared[pairs], continuous_squared)
 
 
 def _with_rest(
@@ -159,21 +203,19 @@ def _with_rest(
 
 
 def _overload(
-    duration_s: FloatArray,
-    squared: FloatArray,
+    signal: _Course | _Slices,
     results: PairResults,
     pair: IndexArray,
     amplitude: FloatArray,
     continuous_a: FloatArray,
 ) -> tuple[FloatArray, FloatArray]:
-    """Largest i²t accumulator per set; asked of the exact method only where the peak exceeds the rating."""
+    """Largest i²t accumulator per set; asked for only where the peak exceeds the rating."""
     peak = results.current_peak_a[pair] * amplitude[pair]
     accumulated, when = np.zeros(len(pair)), np.full(len(pair), np.nan)
     accumulated[np.isnan(continuous_a)] = np.nan
     above = np.flatnonzero(peak > continuous_a)
-    for start in range(0, len(above), _PAIRS_PER_CHUNK):
-        some = above[start : start + _PAIRS_PER_CHUNK]
-        accumulated[some], when[some] = overload_accumulator(
-            duration_s, squared[pair[some]], continuous_a[some] ** 2
-        )
+    size = max(1, _MOST_NODES // signal.squared[0].size)
+    for start in range(0, len(above), size):
+        some = above[start : start + size]
+        accumulated[some], when[some] = signal.overload(pair[some], continuous_a[some] ** 2)
     return accumulated, when

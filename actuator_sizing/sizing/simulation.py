@@ -88,8 +88,9 @@ def simulate(
 
     Notes
     -----
-    Between samples the plant is propagated exactly; friction that depends on load, and a ratio that changes,
-    act as they would on the planned motion.
+    Between samples the plant is propagated exactly; friction that depends on load, and a ratio that changes, act as
+    they would on the planned motion. A sinusoidal machine with pole pairs has both axes in the closed loop (setting
+    ``is_dq``); without a controller its direct axis is held at zero current.
     """
     parts = find_set(case, motor, gearhead, drive)
     case = _of_cycle(case, cycle)
@@ -100,7 +101,8 @@ def simulate(
     if not 1 <= cycles <= 1_000_000:
         raise wrong("cycles", str(cycles), "1 to 1 000 000", "Ask for fewer cycles.")
     axis = axis_plant(case, demand, parts, winding_degc=winding_degc, rate_hz=rate_hz)
-    return simulate_set(axis, parts, input, settings or {}, settling_band, cycles)
+    in_dq = {"is_dq": axis.plant().reactance_ohm_s > 0.0}
+    return simulate_set(axis, parts, input, {**in_dq, **(settings or {})}, settling_band, cycles)
 
 
 def in_order(case: Case, demand: Demand) -> Demand:
@@ -118,7 +120,7 @@ def in_order(case: Case, demand: Demand) -> Demand:
     Demand
         The same cycle. [-]
     """
-    return demand if demand.heat_start is None else build_demand(case, in_order=True)
+    return demand if demand.slices is None else build_demand(case, in_order=True)
 
 
 def _of_cycle(case: Case, name: str) -> Case:

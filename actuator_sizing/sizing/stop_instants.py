@@ -8,6 +8,8 @@ from itertools import product
 import numpy as np
 from numpy.typing import NDArray
 
+from actuator_sizing.case.model import Case
+from actuator_sizing.core.mechanisms.base import Transfer
 from actuator_sizing.core.parameters import GearheadParameters, MotorParameters
 from actuator_sizing.sizing.checks.base import Sets
 
@@ -89,24 +91,32 @@ def stop_instants(sets: Sets) -> StopInstants:
             if not len(pieces) or (moves and sense == 0.0 and segment.brake_closed):
                 continue
             speed = np.abs(demand.shaft_speed[pieces])
-            tried = {int(speed.argmax())}
+            # Of instants equally fast, the one with the largest lever; at a dead centre the load has none at all.
+            lever = np.abs(demand.speed[pieces])
+            tried = {int(np.where(speed >= (1.0 - 1e-9) * speed.max(), lever, -1.0).argmax())}
             if sense and float(np.ptp(pull[pieces])) > 1e-9 * float(np.max(np.abs(pull))):
-                tried.add(int((sense * pull[pieces]).argmin()))
+                led = lever > 1e-9 * lever.max()
+                tried.add(int(np.where(led, sense * pull[pieces], np.inf).argmin()))
             for flat, direction in product(sorted(tried), (sense,) if sense else (1.0, -1.0)):
                 piece, node = np.unravel_index(flat, speed.shape)
                 where = (pieces[piece], node)
                 x = demand.position[where]
-                r = float(mechanism.ratio_at(np.array([x]))[0][0])
+                geometry, r = _geometry(sets, where)
+                if moves and not np.isfinite(r):
+                    continue  # at rest in a dead centre nothing pulls at the shaft
+                own, weight = (
+                    float(part[0]) for part in mechanism.shaft_torques(geometry, np.zeros(1), np.ones(1))
+                )
                 e = _efforts(sets, x, direction * np.sign(r), segment.payload, segment.process_effort)
                 inertia, gravity, friction, process = (value / abs(r) for value in e)
                 driving = min(direction * np.sign(r) * process, 0.0)
-                load = direction * np.sign(r) * gravity + driving
+                load = direction * np.sign(r) * gravity + direction * weight + driving
                 rows.append(
                     (
                         demand.time_s[where],
                         float(speed[piece, node]),
                         abs(r),
-                        inertia / abs(r) + mechanism.shaft_inertia_kg_m2,
+                        inertia / abs(r) + own,
                         load,
                         abs(friction) + mechanism.shaft_friction_nm,
                         direction * mechanism.specific_gravity_m_s2,
@@ -114,6 +124,28 @@ def stop_instants(sets: Sets) -> StopInstants:
                     )
                 )
     return StopInstants(*(np.array(column) for column in zip(*rows, strict=True)))
+
+
+def _geometry(sets: Sets, where: tuple[np.intp, np.intp]) -> tuple[Transfer, float]:
+    """Load and shaft at one node and the ratio between them, on the right side of every dead centre."""
+    case, demand = sets.case, sets.demand
+    at_shaft = case.motion_at_shaft and case.recording is None
+    stated = _stated(case, float(demand.time_s[where])) if at_shaft else float(demand.position[where])
+    with np.errstate(divide="ignore", invalid="ignore"):
+        geometry = case.mechanism.transfer(np.array([stated]), at_shaft)
+        return geometry, float((geometry.shaft_rate / geometry.load_rate)[0])
+
+
+def _stated(case: Case, time_s: float) -> float:
+    """Coordinate of the duty cycle at an instant. [m or rad]"""
+    origin = 0.0
+    for segment in case.segments:
+        for phase in segment.phases:
+            if time_s <= phase.duration_s:
+                return origin + float(phase.kinematics(max(time_s, 0.0))[0])
+            time_s -= phase.duration_s
+        origin += segment.phases[-1].end()[0] if segment.phases else 0.0
+    return origin
 
 
 def _efforts(

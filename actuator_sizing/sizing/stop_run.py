@@ -3,18 +3,23 @@
 from __future__ import annotations
 
 import math
-from dataclasses import replace
-from typing import Any
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import NDArray
 
+from actuator_sizing.core.cascade_kernel import CURRENT_INTEGRATOR, LAST_VOLTAGE
 from actuator_sizing.core.control import Cascade, LoopSettings
-from actuator_sizing.core.plant import CURRENT, LOAD_SPEED, MOTOR_ANGLE, MOTOR_SPEED, TWIST
-from actuator_sizing.core.switching import Held, run_open_loop
-from actuator_sizing.sizing.axis_plant import AxisPlant
+from actuator_sizing.core.plant import CURRENT, LOAD_SPEED, MOTOR_ANGLE, MOTOR_SPEED, TWIST, Plant
+from actuator_sizing.core.switching import Course, Held, run_open_loop
+from actuator_sizing.sizing.axis_plant import AxisPlant, option_number
 from actuator_sizing.sizing.cycle_run import Run
-from actuator_sizing.sizing.open_loop import no_moves
+from actuator_sizing.sizing.open_loop import left_early, no_moves
+
+if TYPE_CHECKING:
+    import pandas as pd
 
 FloatArray = NDArray[np.float64]
 
@@ -36,76 +41,123 @@ def run_stop(axis: AxisPlant, settings: LoopSettings) -> Run:
     Returns
     -------
     Run
-        Stopping time and distance of the load from the command, gravity and process included, losses of the
-        transmission left out (they would help); no reaction time. [-]
+        Stopping time and distance of the load from the command, the reaction time of the case included, gravity
+        and process included, losses of the transmission left out (they would help). [-]
     """
     import pandas as pd
 
     start = _start(axis)
     plant = axis.plant(axis.case.segments[start["segment"]])
-    speed, load, ratio = start["speed"], start["load"], start["ratio"]
+    reaction_s = option_number(axis.case, "stop reaction time")
+    coast = _coast(plant, start, 0.0 if math.isnan(reaction_s) else reaction_s)
+    controlled = _joined(coast, *_controlled(plant, settings, coast, start["load"]))
+    course, shorted = _shorted(plant, coast, start["load"])
+    quantities: dict[str, Any] = {
+        "stop_from_s": start["time"],
+        "stop_from_speed_rad_s": start["speed"],
+        "stop_load_torque_nm": start["load"],
+        "stop_reaction_s": coast.time_s[-1],
+        **_figures("controlled_stop", controlled, start),
+        **_figures("shorted_stop", shorted, start),
+        "shorted_stop_peak_current_a": float(np.abs(course.states[:, CURRENT]).max()),
+    }
+    notes: tuple[str, ...] = (
+        "stops from the instant of the largest speed, counted from the command"
+        + (", stop reaction time not stated: taken as none" if math.isnan(reaction_s) else
+           f", {reaction_s:.4g} s of reaction included in which the motor gives no torque")
+        + "; gravity and process act, losses of the transmission are left out; stopped: below 1 % of that speed",
+        "shorted winding: resistance and inductance of the winding alone, no current limit",
+    )  # fmt: skip
+    series = pd.concat(
+        [_thinned(controlled, "controlled"), _thinned(shorted, "shorted winding")], ignore_index=True
+    )
+    return Run(series, quantities, no_moves(), notes + left_early(course))
+
+
+def _coast(plant: Plant, start: Mapping[str, Any], reaction_s: float) -> Course:
+    """From the command until the drive acts: no torque of the motor; without reaction time the start alone."""
+    speed, load = start["speed"], start["load"]
+    x = np.zeros(5)
+    x[MOTOR_SPEED] = x[LOAD_SPEED] = speed
+    if not plant.is_rigid:
+        x[TWIST] = (plant.load_viscous_nm_s * speed - load) / plant.stiffness_nm_per_rad
+        x[TWIST] += math.copysign(0.5 * plant.backlash_rad, x[TWIST])
+    if reaction_s > 0.0:
+        idle = replace(plant, torque_constant_nm_per_a=0.0)
+        return run_open_loop(idle, [Held(reaction_s, 0.0, load)], reaction_s / _ROUGH_PARTS, x)
+    viscous = plant.motor_viscous_nm_s + plant.load_viscous_nm_s
+    x[CURRENT] = (viscous * speed - load) / max(plant.torque_constant_nm_per_a, 1e-300)
+    return Course(np.zeros(1), x[None], 0, is_complete=True)
+
+
+def _controlled(
+    plant: Plant, settings: LoopSettings, coast: Course, load: float
+) -> tuple[FloatArray, FloatArray, NDArray[np.int64]]:
+    """The speed loop commanded to zero: time, states, and where a limit acted."""
+    x = coast.end
     stiff = settings.current_limit_a * plant.torque_constant_nm_per_a
     rough = (
-        plant.total_inertia_kg_m2 * abs(speed) / max(stiff - abs(load), 1e-3 * stiff)
+        plant.total_inertia_kg_m2 * abs(x[MOTOR_SPEED]) / max(stiff - abs(load), 1e-3 * stiff)
         if stiff < math.inf
         else 0.1
     )
     lasts = min(4.0 * rough + 40.0 * settings.speed_reset_time_s, _LONGEST_S)
     n = max(int(lasts / settings.sample_time_s), 20)
     held = replace(settings, position_gain_per_s=0.0)
-    cascade = Cascade(plant, held, speed_rad_s=speed, load_torque_nm=load)
+    cascade = Cascade(plant, held, speed_rad_s=float(x[MOTOR_SPEED]), load_torque_nm=load)
+    if len(coast.time_s) > 1:  # the drive begins with a winding without current
+        emf = plant.torque_constant_nm_per_a * float(x[MOTOR_SPEED])
+        cascade.state[:5] = [0.0, *x[1:].tolist()]
+        cascade.state[LAST_VOLTAGE] = emf
+        cascade.state[CURRENT_INTEGRATOR] = emf * (1.0 - held.back_emf_feedforward_ratio)
     zero = np.zeros(n)
     seen = cascade.advance(zero, zero, zero, np.full(n, load))
+    states = np.zeros((n, 5))
+    for column, name in ((CURRENT, "current"), (MOTOR_SPEED, "motor_speed"), (TWIST, "twist"),
+                         (MOTOR_ANGLE, "motor_angle")):  # fmt: skip
+        states[:, column] = seen[name]
     time = np.asarray(np.arange(n) * settings.sample_time_s, dtype=float)
-    angle = seen["motor_angle"] - seen["twist"]
-    controlled = _figures("controlled_stop", time, seen["motor_speed"], angle, speed, ratio)
+    return time, states, np.asarray(seen["saturated"], dtype=np.int64)
 
-    x = np.zeros(5)
-    x[CURRENT] = (plant.motor_viscous_nm_s * speed + plant.load_viscous_nm_s * speed - load) / max(
-        plant.torque_constant_nm_per_a, 1e-300
-    )
-    x[MOTOR_SPEED] = x[LOAD_SPEED] = speed
-    if not plant.is_rigid:
-        x[TWIST] = (plant.load_viscous_nm_s * speed - load) / plant.stiffness_nm_per_rad
-        x[TWIST] += math.copysign(0.5 * plant.backlash_rad, x[TWIST])
+
+def _shorted(plant: Plant, coast: Course, load: float) -> tuple[Course, _Way]:
+    """The winding shorted: the current starts from its value."""
     slow = plant.resistance_ohm * plant.total_inertia_kg_m2 / plant.torque_constant_nm_per_a**2
-    shorted_s = min(12.0 * slow + 5.0 * plant.inductance_h / plant.resistance_ohm, _LONGEST_S)
-    course = run_open_loop(plant, [Held(shorted_s, 0.0, load)], shorted_s / _ROUGH_PARTS, x)
-    states = course.states
-    shorted = _figures(
-        "shorted_stop", course.time_s, states[:, MOTOR_SPEED], states[:, MOTOR_ANGLE] - states[:, TWIST],
-        speed, ratio,
+    lasts = min(12.0 * slow + 5.0 * plant.inductance_h / plant.resistance_ohm, _LONGEST_S)
+    course = run_open_loop(plant, [Held(lasts, 0.0, load)], lasts / _ROUGH_PARTS, coast.end)
+    return course, _joined(coast, course.time_s, course.states, np.zeros(len(course.time_s), dtype=np.int64))
+
+
+@dataclass(frozen=True)
+class _Way:
+    """A stop from its command on."""
+
+    time_s: FloatArray
+    speed_rad_s: FloatArray
+    current_a: FloatArray
+    load_angle_rad: FloatArray
+    saturated: NDArray[np.int64]
+
+
+def _joined(coast: Course, time: FloatArray, states: FloatArray, saturated: NDArray[np.int64]) -> _Way:
+    before = len(coast.time_s) - 1
+    x = np.concatenate([coast.states[:before], states])
+    return _Way(
+        np.concatenate([coast.time_s[:before], coast.time_s[-1] + time]),
+        x[:, MOTOR_SPEED], x[:, CURRENT], x[:, MOTOR_ANGLE] - x[:, TWIST],
+        np.concatenate([np.zeros(before, dtype=np.int64), saturated]),
     )  # fmt: skip
-    shorted["shorted_stop_peak_current_a"] = float(np.abs(states[:, CURRENT]).max())
-    stride = max(1, n // 4000)
-    series = pd.concat(
-        [
-            pd.DataFrame(
-                {"stop": "controlled", "time_s": time[::stride], "motor_speed_rad_s": seen["motor_speed"][::stride],
-                 "current_a": seen["current"][::stride], "load_angle_rad": angle[::stride],
-                 "saturated": seen["saturated"][::stride]}
-            ),
-            pd.DataFrame(
-                {"stop": "shorted winding", "time_s": course.time_s, "motor_speed_rad_s": states[:, MOTOR_SPEED],
-                 "current_a": states[:, CURRENT], "load_angle_rad": states[:, MOTOR_ANGLE] - states[:, TWIST],
-                 "saturated": 0}
-            ),
-        ],
-        ignore_index=True,
+
+
+def _thinned(way: _Way, name: str) -> pd.DataFrame:
+    import pandas as pd
+
+    every = slice(None, None, max(1, len(way.time_s) // 4000))
+    return pd.DataFrame(
+        {"stop": name, "time_s": way.time_s[every], "motor_speed_rad_s": way.speed_rad_s[every],
+         "current_a": way.current_a[every], "load_angle_rad": way.load_angle_rad[every],
+         "saturated": way.saturated[every]}
     )  # fmt: skip
-    quantities: dict[str, Any] = {
-        "stop_from_s": start["time"],
-        "stop_from_speed_rad_s": speed,
-        "stop_load_torque_nm": load,
-        **controlled,
-        **shorted,
-    }
-    notes = (
-        "stops from the instant of the largest speed, counted from the command without a reaction time; gravity "
-        "and process act, losses of the transmission are left out; stopped: below 1 % of that speed",
-        "shorted winding: resistance and inductance of the winding alone, no current limit",
-    )
-    return Run(series, quantities, no_moves(), notes)
 
 
 def _start(axis: AxisPlant) -> dict[str, Any]:
@@ -124,17 +176,13 @@ def _start(axis: AxisPlant) -> dict[str, Any]:
     }
 
 
-def _figures(
-    name: str, time: FloatArray, speed: FloatArray, angle: FloatArray, start: float, ratio: float
-) -> dict[str, float]:
+def _figures(name: str, way: _Way, start: Mapping[str, Any]) -> dict[str, float]:
     """Time and distance until the speed stays near zero; NaN if it does not."""
-    moving = np.flatnonzero(np.abs(speed) > _STANDS * abs(start))
-    if not len(moving) or moving[-1] == len(speed) - 1:
-        return {f"{name}_s": math.nan, f"{name}_distance": math.nan,
-                f"{name}_final_speed_rad_s": float(speed[-1])}  # fmt: skip
-    last = int(moving[-1]) + 1
-    return {
-        f"{name}_s": float(time[last]),
-        f"{name}_distance": float(angle[last] - angle[0]) / ratio,
-        f"{name}_final_speed_rad_s": float(speed[-1]),
-    }
+    moving = np.flatnonzero(np.abs(way.speed_rad_s) > _STANDS * abs(start["speed"]))
+    answer = {f"{name}_s": math.nan, f"{name}_distance": math.nan,
+              f"{name}_final_speed_rad_s": float(way.speed_rad_s[-1])}  # fmt: skip
+    if len(moving) and moving[-1] < len(way.speed_rad_s) - 1:
+        last = int(moving[-1]) + 1
+        gone = float(way.load_angle_rad[last] - way.load_angle_rad[0])
+        answer |= {f"{name}_s": float(way.time_s[last]), f"{name}_distance": gone / start["ratio"]}
+    return answer

@@ -117,7 +117,7 @@ def _stops(
         some = slice(start, min(start + _SETS_PER_CHUNK, len(sets)))
         mine = None if torque is None else torque[some]
         parts.append(_chunk(sets, some, instants, judged, extra_delay_s[some], mine))
-    return StopResults(*(np.concatenate(column) for column in zip(*parts, strict=True)))
+    return StopResults.joined(parts)
 
 
 def _chunk(
@@ -127,7 +127,7 @@ def _chunk(
     judged: JudgedMotor,
     extra_delay_s: FloatArray,
     torque: FloatArray | None,
-) -> tuple[FloatArray, ...]:
+) -> StopResults:
     motors, gearheads = sets.motors.take(some), sets.gearheads.take(some)
     at = ShaftBalance.of(instants, motors, gearheads)
     n, load, friction = gearheads.ratio[:, None], at.load_nm, at.friction_nm
@@ -161,15 +161,19 @@ def _chunk(
         slowing = slowing + torque[:, None] / at.inertia_kg_m2
         # What slows the rotor itself does not pass the gearhead.
         through = np.abs(n * (torque[:, None] - at.own_inertia_kg_m2 * slowing)).max(axis=1)
-    values = (
-        distance[row, worst],
-        instants.at_s[worst],
-        found.time_s.max(axis=1),
-        energy.max(axis=1),
-        current,
-        through,
+
+    def known(values: FloatArray) -> FloatArray:
+        return np.where(unknown, np.nan, values)
+
+    return StopResults(
+        distance=known(distance[row, worst]),
+        distance_at_s=known(instants.at_s[worst]),
+        time_s=known(found.time_s.max(axis=1)),
+        braking_energy_j=known(energy.max(axis=1)),
+        current_peak_a=known(current),
+        gearhead_torque_nm=known(through),
+        instant=worst,
     )
-    return (*(np.where(unknown, np.nan, value) for value in values), worst)
 
 
 def gravity_torque(sets: Sets) -> tuple[FloatArray, FloatArray]:

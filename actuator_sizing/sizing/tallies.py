@@ -26,19 +26,30 @@ class Pool:
         self._keys.append(keys[good].astype(float))
         self._size += int(good.sum())
         if self._size > 4 * self.keep:
-            rows, best = self.best()
-            self._rows, self._keys, self._size, self.bar = [rows], [best], len(best), float(best[-1])
+            self._trim()
 
-    def extend(self, other: Pool) -> None:
-        """Offer what another pool holds."""
-        self.add(*other.best())
+    def _trim(self) -> None:
+        """Let go what cannot be among the best; what ties with the last of them stays as long as it is not much."""
+        rows, keys = self._gathered()
+        if len(keys) > 2 * self.keep:
+            rows, keys = self.best()
+        self._rows, self._keys, self._size, self.bar = [rows], [keys], len(keys), float(keys.max())
 
-    def best(self) -> tuple[IndexArray, FloatArray]:
-        """The rows, best first, and their keys."""
+    def _gathered(self) -> tuple[IndexArray, FloatArray]:
+        """The best in no order, with those that tie with the last of them."""
         rows, keys = np.concatenate(self._rows), np.concatenate(self._keys)
         if len(keys) > self.keep:
             good = keys <= np.partition(keys, self.keep - 1)[self.keep - 1]
             rows, keys = rows[good], keys[good]
+        return rows, keys
+
+    def extend(self, other: Pool) -> None:
+        """Offer what another pool holds."""
+        self.add(*other._gathered())
+
+    def best(self) -> tuple[IndexArray, FloatArray]:
+        """The rows, best first, and their keys."""
+        rows, keys = self._gathered()
         # Ties fall back on the index, so that the answer does not depend on the block size.
         order = np.lexsort((*rows.T[::-1], keys))[: self.keep]
         return rows[order], keys[order]

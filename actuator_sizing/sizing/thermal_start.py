@@ -49,7 +49,9 @@ class ThermalStart:
         """
         if self.following is None:
             return loss
-        after = heat_loss(self.following, motors, judged, course(self.following, motors, gearheads, judged))
+        after = heat_loss(
+            self.following, motors, gearheads, judged, course(self.following, motors, gearheads, judged)
+        )
         return replace(
             loss,
             duration_s=np.concatenate([loss.duration_s, after.duration_s]),

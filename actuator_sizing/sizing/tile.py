@@ -19,7 +19,7 @@ SingleArray = NDArray[np.float32]
 
 # In place of zero and less in a denominator. Where torque is out of reach and the winding runs away too, the torque
 # is to govern, as it does when the set is evaluated exactly: of infinite checks the first in the list counts.
-_TINY, _RUNAWAY = 1e-30, 1e-12
+TINY, RUNAWAY = 1e-30, 1e-12
 _ONE = np.float32(1.0)
 
 
@@ -198,9 +198,11 @@ class TileWorker:
         started = ratio.top is not None
         if ratio.top is not None:
             self._product(ratio.top.part(which), out)
-        if ratio.smaller_top is not None:
-            self._product(ratio.smaller_top.part(which), spare)
-            np.minimum(out, spare, out=out)
+        if ratio.braking is not None:
+            np.minimum(out, np.multiply(out, ratio.braking, out=spare), out=out)
+        if ratio.offset is not None:
+            self._product(ratio.offset.part(which), spare)
+            np.add(out, spare, out=out)
         for quantity, factor in ((peak, ratio.per_peak), (square, ratio.per_square)):
             if factor is None:
                 continue
@@ -227,6 +229,6 @@ class TileWorker:
                 np.subtract(whole, bottom, out=bottom)
         elif ratio.bottom is not None:
             self._product(ratio.bottom.part(which), bottom)
-        floor = _TINY if ratio.drain is None else _RUNAWAY
+        floor = TINY if ratio.drain is None else RUNAWAY
         np.maximum(bottom, self._row(floor, shape[1]), out=bottom)
         np.divide(out, bottom, out=out)

@@ -1,4 +1,4 @@
-"""Where large work is done: processes of this machine, or a cluster. Both are executors of `concurrent.futures`."""
+"""Where large work is done: processes or threads of this machine, or a cluster, each an executor."""
 
 from __future__ import annotations
 
@@ -6,8 +6,9 @@ import math
 import os
 import signal
 from collections.abc import Iterator
-from concurrent.futures import Executor, ProcessPoolExecutor
+from concurrent.futures import Executor, ProcessPoolExecutor, ThreadPoolExecutor
 from contextlib import contextmanager
+from importlib.util import find_spec
 from typing import Any
 
 from actuator_sizing.case.model import Case
@@ -53,6 +54,27 @@ def local_processes(workers: int | None = None) -> Iterator[Executor]:
 
 def _ignore_interrupt() -> None:
     signal.signal(signal.SIGINT, signal.SIG_IGN)
+
+
+@contextmanager
+def local_threads(workers: int | None = None) -> Iterator[Executor]:
+    """Threads of this process, which share its processors where the optional compiler (extra `fast`) is at work.
+
+    Parameters
+    ----------
+    workers : int, optional
+        How many; default: one for each processor. [-]
+
+    Yields
+    ------
+    Executor
+        Ends with the block; what is not begun by then is left.
+    """
+    pool = ThreadPoolExecutor(workers or os.cpu_count())
+    try:
+        yield pool
+    finally:
+        pool.shutdown(wait=True, cancel_futures=True)
 
 
 @contextmanager
@@ -130,7 +152,8 @@ def workplace(
         with cluster(address) as executor:
             yield executor
     elif workers is not None and workers > 1 or workers is None and is_shared(case):
-        with local_processes(workers) as executor:
+        compiled = is_shared(case) and find_spec("numba") is not None
+        with local_threads(workers) if compiled else local_processes(workers) as executor:
             yield executor
     else:
         yield None

@@ -19,7 +19,8 @@ from scipy.optimize import fsolve
 
 import actuator_sizing as act
 from actuator_sizing.case.model import Tolerance
-from actuator_sizing.sizing.robustness.evaluator import SetEvaluator, case_of_set
+from actuator_sizing.sizing.case_changes import single
+from actuator_sizing.sizing.robustness.evaluator import SetEvaluator
 from actuator_sizing.sizing.thermal_data import thermal_network
 from tests.benchmarks.sampled import sample_profile, sampled_set
 
@@ -82,7 +83,7 @@ def main():
     name = sys.argv[2] if len(sys.argv) > 2 else "tray_shuttle"
     case = replace(act.read_case(DEMO / name), tolerances=SPREADS)
     best = act.compare(case).best
-    evaluator = SetEvaluator.of(case_of_set(case, best.motor_index, best.gearhead_index, best.drive_index))
+    evaluator = SetEvaluator.of(single(case, best.motor_index, best.gearhead_index, best.drive_index))
     values = evaluator.inputs.of_scores(
         np.random.default_rng(0).standard_normal((count, len(evaluator.inputs)))
     )

@@ -11,6 +11,7 @@ import numpy as np
 import pytest
 from scipy.optimize import brentq
 
+from actuator_sizing.core.bus import clamp_room, stored_voltage
 from actuator_sizing.core.capability import terminal_voltage, voltage_limited_current
 from actuator_sizing.core.mechanisms.base import GRAVITY_M_S2
 from actuator_sizing.core.step_response import voltage_step
@@ -91,6 +92,19 @@ def test_flywheel_gives_an_energy_pulse():
 
     assert given(16.85) < 6000.0 < given(16.95)  # half of the last printed digit either way
     assert given(16.8772) == pytest.approx(6000.0, rel=5e-5 / 16.8772)
+
+
+@pytest.mark.published("A8.6")
+def test_capacitor_energy_and_rise_of_the_link():
+    """OpenStax, College Physics, Ex. 19.11 (defibrillator) [M]: 400 J at 10 kV are 8.00 µF.
+
+    And by the definition E = C U²/2 [D]: 470 µF take 12.7781 J from 325 to 400 V, and stand at 411.649 V after 15 J.
+    """
+    one_farad = float(clamp_room(np.array(1.0), 0.0, np.array(10e3)))
+    assert 1e6 * 400.0 / one_farad == pytest.approx(8.00, abs=5e-3)
+    link = np.array(470e-6)
+    assert float(clamp_room(link, 325.0, np.array(400.0))) == pytest.approx(12.7781, abs=5e-5)
+    assert float(stored_voltage(325.0, link, np.array(15.0))) == pytest.approx(411.649, abs=5e-4)
 
 
 @pytest.mark.published("A8.7")

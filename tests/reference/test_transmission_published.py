@@ -11,10 +11,21 @@ import numpy as np
 import pytest
 
 from actuator_sizing.core.mechanisms.base import GRAVITY_M_S2
+from actuator_sizing.core.moments import gearhead_rows, mean_products, motor_columns
+from actuator_sizing.core.ratio_windows import load_factor, torque_moments
+from actuator_sizing.sizing.motor_limits import one_gearhead
 from tests.bare_axis import POUND_INCH_NM, RPM, axis, ramp, steady
 from tests.made_cases import segment
 
 BOOK_GRAVITY_M_S2 = 9.81
+
+
+def _moments(made, efficiency):
+    """Torque moments of the first motor of an axis on a transmission without inertia."""
+    m = made.case.motor_parameters
+    columns = motor_columns(m.rotor_inertia_kg_m2, m.friction_torque_nm, m.viscous_friction_nm_s)
+    products = mean_products(made.demand.duration_s, made.demand.functions)
+    return torque_moments(products, gearhead_rows(one_gearhead(1.0, efficiency=efficiency))[0], columns[0])
 
 
 @pytest.mark.published("A3.7")
@@ -58,6 +69,8 @@ def test_ratio_of_largest_acceleration():
     assert np.all(np.delete(torque, 4) > 100.01)
     assert made.pairs.speed_peak_rad_s[4] == pytest.approx(25.0, rel=1e-12)  # after one second
     assert made.pairs.inertia_ratio[4] == pytest.approx(1.0, rel=1e-12)  # matched inertias
+    # The same from the closed form of the ratio windows.
+    assert _moments(made, 1.0).best_ratio() == pytest.approx(4.0, rel=1e-12)
 
 
 @pytest.mark.published("A3.9")
@@ -140,6 +153,13 @@ def test_range_of_feasible_ratios():
     assert np.all(rms[2] < rms[5:])
     # the smallest is √(J β/η) with the load factor β = 3000 W/s of the source
     assert rms[2] == pytest.approx(math.sqrt(3e-4 * 3000.0 / 0.9), rel=1e-6)
+    # The same from the closed form of the ratio windows.
+    moments = _moments(made, 0.9)
+    ((low, high),) = moments.ratios_within((4.0, 0.0, 0.0))
+    assert (1.0 / high, 1.0 / low, 1.0 / moments.best_ratio()) == pytest.approx(
+        (smallest, largest, best), abs=1e-6
+    )
+    assert load_factor(60.0, 20.0, 300.0, 1.0) == pytest.approx(3000.0, abs=1e-6)
 
 
 @pytest.mark.published("A3.16")

@@ -247,7 +247,14 @@ def build_set(motor_index: int, drive_index: int, detailed: bool) -> SetResult:
         envelope=limits,
         step_response=step_response(constant, resistance, inertia + load_inertia),
         segments=segment_table(cycle),
+        bus=bus_table(cycle),
         levels={
+            "chopper_threshold_v": 390.0,
+            "chopper_release_v": 382.0,
+            "drive_bus_max_v": 420.0,
+            "drive_bus_min_v": 180.0,
+            "supply_continuous_power_w": math.nan,
+            "supply_peak_power_w": 2000.0,
             "motor_peak_current_a": peak,
             "drive_peak_current_a": drive_peak,
             "drive_continuous_current_a": drive_continuous,
@@ -275,6 +282,7 @@ def build_set(motor_index: int, drive_index: int, detailed: bool) -> SetResult:
         "speed_torque_margin": 1.0 / float(use.max()) - 1.0,
         "inertia_ratio": load_inertia / inertia,
         "bus_voltage_max_v": None,
+        **{f"energy_{part}_per_cycle_j": joules for part, joules in ENERGY_J.items()},
     }
     return SetResult(
         rank=0,
@@ -295,6 +303,21 @@ def build_set(motor_index: int, drive_index: int, detailed: bool) -> SetResult:
     )
 
 
+#: What a cycle takes from the supply, and where it goes; the parts add up.
+ENERGY_J = {
+    "supply": 310.0, "steady": 12.0, "resistor": 46.0, "drive": 21.0, "cable": 0.0, "winding": 64.0,
+    "motor_friction": 18.0, "gearhead": 37.0, "mechanism": 52.0, "work": 60.0,
+}  # fmt: skip
+
+
+def bus_table(cycle: pd.DataFrame) -> pd.DataFrame:
+    """Power of the motor as that of the bus, which a chopper holds while it comes back."""
+    power = cycle["motor_torque_nm"] * cycle["motor_speed_rad_s"]
+    high = np.where(power < 0.0, 390.0, 358.0)
+    return pd.DataFrame({"time_s": cycle["time_s"], "bus_power_w": power, "bus_voltage_high_v": high,
+                         "bus_voltage_low_v": np.full(len(cycle), 290.0)})  # fmt: skip
+
+
 def entry(table: str, label: str, column: str, entered: str, value: object, unit: str, **more: object):
     """An input as the reader hands it over."""
     values = {
@@ -305,7 +328,9 @@ def entry(table: str, label: str, column: str, entered: str, value: object, unit
 
 
 class _Case(SimpleNamespace):
-    """A case with one cycle that nothing names."""
+    """A case with one cycle that nothing names, alone on its bus."""
+
+    partners = ()
 
     def by_cycle(self) -> tuple[SimpleNamespace, ...]:
         return (self,)

@@ -9,7 +9,8 @@ from tempfile import TemporaryDirectory
 
 from actuator_sizing.case.model import Case, Tolerance
 from actuator_sizing.case.reading import read_case
-from actuator_sizing.sizing.robustness.evaluator import SetEvaluator, case_of_set
+from actuator_sizing.sizing.case_changes import single
+from actuator_sizing.sizing.robustness.evaluator import SetEvaluator
 from tests.unit.case_files import small_case, write_folder
 
 PARTS = {"motor": "M-10", "gearhead": "G-3", "drive": "D-1"}
@@ -51,4 +52,4 @@ def evaluator(*spreads: Tolerance) -> SetEvaluator:
         case.gearheads.names.index(PARTS["gearhead"]),
         case.drives.names.index(PARTS["drive"]),
     )
-    return SetEvaluator.of(case_of_set(case, *parts))
+    return SetEvaluator.of(single(case, *parts))

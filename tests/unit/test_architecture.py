@@ -17,14 +17,9 @@ LAYERS = {
     "version": 0, "errors": 0, "files": 0, "units": 0, "core": 1, "case": 2, "sizing": 3, "report": 4,
 }  # fmt: skip
 TOP = {
-    "cli": 5,
-    "console": 5,
-    "simulation_console": 5,
-    "robustness_console": 5,
-    "machine_console": 5,
-    "workbench": 5,
-    "__main__": 6,
-}
+    "cli": 5, "console": 5, "simulation_console": 5, "headroom_console": 5, "machine_console": 5,
+    "robustness_console": 5, "workbench": 5, "__main__": 6,
+}  # fmt: skip
 
 # Upward arrows that are wanted: a convenience method that calls a writer, imported when it is called.
 ALLOWED_UPWARD = {

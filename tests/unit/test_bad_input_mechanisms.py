@@ -80,6 +80,18 @@ MAP = [
         (made("unwinder", ("web tension", 5, "N"), ("web thickness", 1, "mm"), ("web width", 100, "mm"),
               ("web density", 900, "kg/m³"), ("core diameter", 50, "mm"), ("start diameter", 40, "mm"), cycle=LIFT),
          ("axis", 11, "start diameter"), "40 mm", "50 mm", "Correct"),
+        (made("crank-slider", *CRANK, ("rod mass", -1, "kg")),
+         ("axis", 9, "rod mass"), "-1 kg", "a number ≥ 0 kg", "Check the value"),
+        (made("crank-slider", *CRANK, ("rod inertia", 1, "kg·m²")),
+         ("axis", 9, "rod inertia"), "a rod without mass", "'rod mass' above 0", "State the mass"),
+        (made("tabulated slider", ("moving mass", 2, "kg")) | {"map": MAP, "duty_cycle": [
+            ["segment", "motion law", "displacement [deg]", "duration [s]"],
+            ["out", "cycloidal", 400, 1.0], ["back", "cycloidal", -400, 1.0]]},
+         ("duty_cycle", 2, "displacement"), "a way to 400°", "from 0° to 360°", "Shorten the stroke"),
+        (made("tabulated slider", ("moving mass", 2, "kg"), ("motion stated at", "load", ""),
+              ("start angle", 90, "deg"), cycle=[LIFT[0], ["out", "cycloidal", 30, 1.0],
+                                                ["back", "cycloidal", -30, 1.0]]) | {"map": MAP},
+         ("duty_cycle", 2, "displacement"), "a way to 30 mm", "from -10.", "state the motion at the shaft"),
         (made("lead screw", ("lead", 8, "mm"), ("screw diameter", 20, "mm"), ("thread friction coefficient", 0.1, ""),
               ("collar friction coefficient", 0.1, ""), ("moving mass", 2, "kg"), cycle=LIFT),
          ("axis", None, "collar mean diameter"), "no value beside", "above zero", "leave the collar friction out"),
@@ -101,6 +113,27 @@ def test_geometry_and_motion_that_cannot_be(tmp_path, tables, where, got, allowe
     assert got in problem.got
     assert allowed in problem.allowed
     assert remedy in problem.remedy
+
+
+@pytest.mark.parametrize(
+    ("motion", "got", "allowed"),
+    [
+        (["cycloidal", 50, 1e-6], "an acceleration of 3.14e+11 m/s²", "below 1e5 m/s²"),
+        (["jerk-limited", 50, 2.6e-3], "a jerk of", "below 1e9 m/s³"),
+    ],
+)
+def test_absurd_accelerations_and_jerks_are_told(tmp_path, motion, got, allowed):
+    tables = small_case()
+    heading = ["segment", "motion law", "displacement [mm]", "duration [s]", "jerk share"]
+    share = 0.01 if motion[0] == "jerk-limited" else ""
+    tables["duty_cycle"] = [heading, ["out", *motion, share], ["back", "cycloidal", -50, 1.0, ""]]
+    warning = the_only(problems_of(tmp_path, tables))
+    assert (warning.severity, warning.table, warning.row, warning.column) == (
+        "warning", "duty_cycle", 2, "displacement",
+    )  # fmt: skip
+    assert got in warning.got
+    assert allowed in warning.allowed
+    assert "units" in warning.remedy
 
 
 def test_self_locking_is_said(tmp_path):

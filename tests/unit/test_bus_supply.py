@@ -9,7 +9,8 @@ from scipy.integrate import solve_ivp
 from actuator_sizing.case.reading import read_case
 from actuator_sizing.core.supply import charged_voltage, permitted_pulse
 from actuator_sizing.errors import InputError
-from actuator_sizing.sizing.bus import bus_quantities, bus_results
+from actuator_sizing.sizing.bus_quantities import bus_quantities
+from actuator_sizing.sizing.joint_bus import bus_results
 from actuator_sizing.sizing.results import FAILS, NOT_CHECKED, PASSES
 from tests.made_cases import DRIVE
 from tests.unit.case_files import small_case, write_folder

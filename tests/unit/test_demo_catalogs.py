@@ -13,7 +13,8 @@ from actuator_sizing.case.reading import check_case
 from actuator_sizing.sizing import compare
 
 DEMO = Path(__file__).parents[2] / "catalogs_demo"
-CASES = ("tray_lift", "potting_table", "tray_shuttle", "roof_vent_arm", "peat_press", "shade_winch", "fan")
+CASES = ("tray_lift", "potting_table", "tray_shuttle", "roof_vent_arm", "peat_press", "shade_winch", "fan",
+         "tray_conveyor", "irrigation_pump")  # fmt: skip
 PRINTED = 5e-4  # four significant digits: half a unit in the last place of 1.000 is 5e-4 of it
 
 

@@ -5,7 +5,8 @@ import pytest
 
 from actuator_sizing.case.reading import check_case
 from actuator_sizing.core.condensing import condense
-from actuator_sizing.core.measured import find_period, smooth_position
+from actuator_sizing.core.measured import find_period
+from actuator_sizing.core.periodic_spline import smooth_position
 from actuator_sizing.sizing.demand import build_demand
 from tests.unit.case_files import small_case, write_folder
 
@@ -30,7 +31,7 @@ def test_spline_gives_back_a_smooth_motion(order):
             2 * w * t + n * np.pi / 2
         )
 
-    spline = smooth_position(t, exact(t, order), 2.0, 10.0, 0.0, order)
+    (spline,) = smooth_position(t, exact(t, order), 2.0, [10.0], 0.0, order)
     at = np.linspace(0.0, 2.0, 333)
     # Degree 5, knots every 1/20 of the period of the faster wave: (ωh)⁶/… below 1e-6, its second derivative 1e-4.
     for n, tolerance in ((1, 1e-5), (2, 1e-3)):
@@ -42,10 +43,9 @@ def test_noise_shrinks_with_the_cut_off():
     t = uneven(20_000, 1.0)
     x = np.sin(2 * np.pi * t) + RNG.normal(0.0, 1e-3, len(t))
     errors = [
-        float(np.sqrt(np.mean((smooth_position(t, x, 1.0, f, 0.0).values(t, 2) + (2 * np.pi) ** 2
-                               * np.sin(2 * np.pi * t)) ** 2)))
-        for f in (10.0, 20.0, 40.0)
-    ]  # fmt: skip
+        float(np.sqrt(np.mean((spline.values(t, 2) + (2 * np.pi) ** 2 * np.sin(2 * np.pi * t)) ** 2)))
+        for spline in smooth_position(t, x, 1.0, (10.0, 20.0, 40.0), 0.0)
+    ]
     # Of white noise the second derivative grows with the cut-off to the power 5/2: about 5.7 times per octave.
     assert errors[0] < errors[1] / 3.0 < errors[2] / 9.0
 
@@ -132,7 +132,7 @@ def test_a_recorded_torque_is_exact_between_samples(tmp_path, count):
 
 def test_condensed_agrees_with_every_stretch(tmp_path, monkeypatch):
     """The same noisy record with motion, condensed and in full."""
-    import actuator_sizing.sizing.measured_demand as measured_demand
+    from actuator_sizing.sizing import measured_demand
 
     t = uneven(5000, 3.0).round(6)
     x = (100 * (1 - np.cos(2 * np.pi * t / 3.0)) + RNG.normal(0, 0.02, len(t))).round(4)
@@ -170,6 +170,8 @@ def test_current_becomes_torque(tmp_path):
 
 
 def test_long_files_are_read_the_short_way_with_the_same_result(tmp_path):
+    from actuator_sizing.case.sample_files import read_samples
+
     t = np.arange(30_000) * 1e-4
     T = np.sin(2 * np.pi * t / 3.0).round(5)
     rows = list(zip(t.round(4).tolist(), T.tolist(), strict=True))
@@ -177,6 +179,7 @@ def test_long_files_are_read_the_short_way_with_the_same_result(tmp_path):
     prints = set()
     for delimiter, decimal in ((",", "."), (";", ",")):
         folder = write_folder(tmp_path / decimal / "c", tables, delimiter=delimiter, decimal=decimal)
+        assert read_samples(folder / "measured.csv", "measured") is not None
         case, _ = check_case(folder)
         prints.add(case.fingerprint)
         text = (folder / "measured.csv").read_text("utf-8")
@@ -265,3 +268,15 @@ def test_the_demo_case_is_two_cycles_of_a_shuttle():
     process = demand.torque_by_cause["process"] * demand.shaft_speed / demand.speed.clip(1e-9, None)
     moving = demand.speed > 0.3
     assert float(np.mean(process[moving])) == pytest.approx(30.0, abs=1.0)
+
+
+@pytest.mark.parametrize("order", [0, 1])
+def test_noise_of_the_speed_is_foretold(order):
+    from actuator_sizing.case.measuring import speed_noise
+
+    t = uneven(20_000, 10.0)
+    value = RNG.normal(0.0, 1e-4, len(t))
+    (spline,) = smooth_position(t, value, 10.0, (20.0,), 0.0, order)
+    found = float(np.std(spline.values(np.linspace(0.0, 10.0, 5000), 1)))
+    # A spline's edge at the cut-off is not sharp: it passes somewhat more of what grows with frequency.
+    assert found / speed_noise(spline, t, value, order) == pytest.approx(1.0, abs=0.35)

@@ -45,19 +45,21 @@ STAGE = {"efficiency": 0.85, "driven shaft inertia": 2e-3, "driven shaft frictio
 # name: values without losses, losses, cycle, map
 SPEC = {
     "crank-slider": ({"crank radius": 0.04, "rod length": 0.15, "slide offset": 0.012, "moving mass": 3.0,
-                      "inclination": 0.6, "start angle": 0.4, "driven shaft inertia": 2e-3},
+                      "inclination": 0.6, "start angle": 0.4, "driven shaft inertia": 2e-3, "rod mass": 0.9,
+                      "rod centre": 0.06, "rod inertia": 2.5e-3},
                       STAGE | FRICTION, TURN, ()),
     "Scotch yoke": ({"crank radius": 0.04, "moving mass": 3.0, "inclination": -0.4, "start angle": 0.4},
                     STAGE | FRICTION, TURN, ()),
     "toggle lever": ({"lever length": 0.06, "link length": 0.07, "moving mass": 3.0, "start angle": -1.1,
-                      "inclination": 0.3}, STAGE | FRICTION, BACK_AND_FORTH, ()),
+                      "inclination": 0.3, "link mass": 1.1}, STAGE | FRICTION, BACK_AND_FORTH, ()),
     "eccentric": ({"eccentricity": 0.008, "disc radius": 0.03, "roller radius": 0.012, "moving mass": 2.0,
                    "return spring rate": 5e3, "return spring preload": 150.0, "inclination": 1.2,
                    "driven shaft inertia": 1e-3},
                   STAGE | FRICTION, TURN, ()),
     "four-bar": ({"crank radius": 0.04, "coupler length": 0.15, "rocker length": 0.1, "ground length": 0.16,
                   "load inertia": 0.05, "lever mass": 1.2, "lever mass radius": 0.1, "lever mass angle": 0.2,
-                  "start angle": 0.3, "driven shaft inertia": 1e-3}, STAGE | TURNING, TURN, ()),
+                  "start angle": 0.3, "driven shaft inertia": 1e-3, "coupler mass": 1.4, "coupler centre": 0.11,
+                  "coupler inertia": 4e-3, "ground inclination": 0.5}, STAGE | TURNING, TURN, ()),
     "tabulated slider": ({"map period": 2 * np.pi, "moving mass": 2.0, "inclination": 0.9}, STAGE | FRICTION,
                          TURN, CAM),
     "tabulated lever": ({"load inertia": 0.05, "lever mass": 1.2, "lever mass radius": 0.1, "start angle": 1.0},
@@ -109,11 +111,27 @@ def energies(name, v, payload):
     def rod(angle, crank, length, offset=0.0):
         return crank * sp.cos(angle) + sp.sqrt(length**2 - (crank * sp.sin(angle) - offset) ** 2)
 
+    def link(m, centre, inertia, pin, far, length, up):
+        """A rigid link between two moving points: its centre's speed, its own turning, its height."""
+        along = [(f - p) / length for p, f in zip(pin, far, strict=True)]
+        middle = [p + centre * e for p, e in zip(pin, along, strict=True)]
+        turn = along[0] * sp.diff(along[1], q) - along[1] * sp.diff(along[0], q)
+        T = (m * sum(sp.diff(x, q) ** 2 for x in middle) + inertia * turn**2) * w**2 / 2
+        return T, m * G * sum(x * u for x, u in zip(middle, up, strict=True))
+
     angle = q + v.get("start angle", 0.0)
-    if name == "crank-slider":
-        return slider(rod(angle, v["crank radius"], v["rod length"], v["slide offset"]))
-    if name == "toggle lever":
-        return slider(rod(angle, v["lever length"], v["link length"]))
+    if name in ("crank-slider", "toggle lever"):
+        a, b, e, m, s, J_rod = (
+            (v["crank radius"], v["rod length"], v["slide offset"], v["rod mass"], v["rod centre"], v["rod inertia"])
+            if name == "crank-slider"
+            else (v["lever length"], v["link length"], 0.0, v["link mass"], v["link length"] / 2,
+                  v["link mass"] * v["link length"] ** 2 / 12)
+        )  # fmt: skip
+        x = rod(angle, a, b, e)
+        T, V = slider(x)
+        up = (sp.sin(v["inclination"]), sp.cos(v["inclination"]))  # along the slide and across it
+        T_rod, V_rod = link(m, s, J_rod, (a * sp.cos(angle), a * sp.sin(angle)), (x, sp.Float(e)), b, up)
+        return T + T_rod, V + V_rod
     if name == "Scotch yoke":
         return slider(v["crank radius"] * sp.cos(angle))
     if name == "eccentric":
@@ -130,7 +148,13 @@ def energies(name, v, payload):
         # A sin ψ + B cos ψ + C = 0
         psi = 2 * sp.atan((-A - sp.sqrt(A**2 + B**2 - C**2)) / (C - B))
         T = (v["load inertia"] * sp.diff(psi, q) ** 2 + J) * w**2 / 2
-        return T, v["lever mass"] * v["lever mass radius"] * G * sp.sin(psi + v["lever mass angle"])
+        V = v["lever mass"] * v["lever mass radius"] * G * sp.sin(psi + v["lever mass angle"])
+        crank_pin = (a * sp.cos(angle), a * sp.sin(angle))
+        rocker_pin = (d + c * sp.cos(psi), c * sp.sin(psi))
+        up = (sp.sin(v["ground inclination"]), sp.cos(v["ground inclination"]))
+        own = (v["coupler mass"], v["coupler centre"], v["coupler inertia"])
+        T_coupler, V_coupler = link(*own, crank_pin, rocker_pin, b, up)
+        return T + T_coupler, V + V_coupler
     if name == "arm":
         m, lm, mc, lc = (
             v[p] for p in ("arm mass", "arm mass radius", "counterweight mass", "counterweight radius")

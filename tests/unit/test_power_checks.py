@@ -6,10 +6,10 @@ import numpy as np
 import pytest
 
 from actuator_sizing.core.mechanisms.base import GRAVITY_M_S2
-from actuator_sizing.sizing.bus import bus_results
 from actuator_sizing.sizing.checks import CHECKS
 from actuator_sizing.sizing.checks.motor import current_limited_torque
 from actuator_sizing.sizing.demand import build_demand
+from actuator_sizing.sizing.joint_bus import bus_results
 from actuator_sizing.sizing.judging import active_checks, check_results, judge_sets
 from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
 from actuator_sizing.sizing.shortlist import evaluate_sets

@@ -80,3 +80,14 @@ def test_sign_split_of_a_sine_with_three_crossings():
     # Sixteen nodes interpolate one and a half periods to about 1e-7.
     assert positive[0] == pytest.approx(1.5 * loop, abs=1e-6)
     assert negative[0] == pytest.approx(1.5 * loop, abs=1e-6)
+
+
+def test_straight_pieces_peak_at_an_end():
+    values = np.random.default_rng(3).normal(size=(7, 40, 2))
+    values[2] = 0.25  # constant: any place will do
+    maximum, piece, position = largest(values)
+    np.testing.assert_array_equal(maximum, values.max(axis=(1, 2)))
+    there = 0.5 * (
+        values[np.arange(7), piece, 0] * (1 - position) + values[np.arange(7), piece, 1] * (1 + position)
+    )
+    np.testing.assert_array_equal(there, maximum)

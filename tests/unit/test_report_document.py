@@ -52,8 +52,8 @@ def text_of(document):
 
 def test_sections_come_in_the_order_of_thought(document):
     assert [s.key for s in document.sections] == [
-        "summary", "comparison", "checks", "working", "figures", "inputs", "assumptions", "not_checked",
-        "commissioning", "cautions", "sign_off",
+        "summary", "comparison", "checks", "working", "figures", "power", "dynamics", "inputs", "assumptions",
+        "not_checked", "commissioning", "cautions", "sign_off",
     ]  # fmt: skip
 
 

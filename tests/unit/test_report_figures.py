@@ -272,3 +272,10 @@ def test_the_user_s_matplotlib_settings_stay(comparison):
     with matplotlib.rc_context({"font.size": 23.0}):
         draw_figures(dataclasses.replace(comparison, sets=comparison.sets[:1]))
         assert matplotlib.rcParams["font.size"] == 23.0
+
+
+@pytest.mark.parametrize(("angle", "label", "shown"), [(6.0, "°", 343.77), (200.0, "turns", 31.831)])
+def test_an_angle_of_many_turns_is_drawn_in_turns(angle, label, shown):
+    unit = AxisUnits(linear_load=False, linear_motor=False).position([0.0, -angle])
+    assert unit.label == label
+    assert unit.convert(angle) == pytest.approx(shown, rel=1e-4)

@@ -91,7 +91,7 @@ def test_tables_have_captions_and_scoped_headers(page):
 
 def test_figures_have_a_text_for_those_who_cannot_see_them(page):
     drawings = [attributes for tag, attributes in outline(page).attributes if tag == "svg"]
-    assert len(drawings) == 7
+    assert len(drawings) == 9
     assert all(a.get("role") == "img" and len(a.get("aria-label", "")) > 20 for a in drawings)
 
 

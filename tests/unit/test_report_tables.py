@@ -48,7 +48,7 @@ def column(sheet, title):
 def test_sheets(content):
     assert load(content).sheetnames == [
         "summary", "candidates", "checks", "motion segments", "time series", "warm-up", "speed-torque limits",
-        "parts used", "inputs and assumptions", "questions",
+        "energy", "bus", "parts used", "inputs and assumptions", "questions",
     ]  # fmt: skip
 
 

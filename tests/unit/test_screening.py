@@ -18,7 +18,7 @@ from actuator_sizing.sizing.judging import ORDER, active_checks, is_binding, jud
 from actuator_sizing.sizing.results import FAILS
 from actuator_sizing.sizing.shortlist import evaluate_sets
 from actuator_sizing.sizing.tile import BlockBounds, TileWorker
-from tests.made_cases import DIRECT, DRIVE, GEARHEAD, MOTOR, case, columns, cycle
+from tests.made_cases import DIRECT, DRIVE, GEARHEAD, MOTOR, case, catalog, columns, cycle
 
 LAWS = ("trapezoid", "jerk-limited", "3-4-5 polynomial", "cycloidal", "modified sine", "simple harmonic")
 
@@ -169,7 +169,9 @@ def test_the_ranks_of_drives_agree_with_asking_every_drive():
     drives = [scaled(rng, DRIVE, 1.2, bus_voltage_min_v=100.0, efficiency=0.95,
                      bus_voltage_max_v=rng.choice([340.0, 400.0])) for _ in range(40)]  # fmt: skip
     drives[0]["peak_current_a"] = drives[1]["continuous_current_a"] = np.nan
-    made = replace(made, drive_parameters=columns(DriveParameters, drives))
+    made = replace(
+        made, drives=catalog("drives", len(drives)), drive_parameters=columns(DriveParameters, drives)
+    )
     allowed = {"drive_peak_current": 0.9, "drive_continuous_current": 0.8, "drive_bus_voltage": 1.0}
     side = DriveSide(made, allowed)
     peak, rms = rng.uniform(0.0, 60.0, 500), rng.uniform(0.0, 20.0, 500)

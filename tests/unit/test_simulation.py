@@ -3,6 +3,7 @@
 import dataclasses
 import json
 import math
+import warnings
 
 import numpy as np
 import pytest
@@ -142,6 +143,38 @@ def test_a_stop_at_the_current_limit_takes_momentum_over_torque():
     assert q["controlled_stop_s"] == pytest.approx(expected, rel=0.2)
     assert q["controlled_stop_distance"] * q["stop_from_speed_rad_s"] > 0.0
     assert q["shorted_stop_s"] > 0.0
+
+
+def test_a_stop_counts_its_reaction_time():
+    """Without torque, friction and gravity the axis goes on at its speed: later and longer by exactly that."""
+    one = made(values={"guide friction force": 0.0, "efficiency": 1.0},
+               motors=[{**MOTOR, "friction_torque_nm": 0.0, "viscous_friction_nm_s": 0.0}],
+               gearheads=[{**GEARHEAD, "no_load_torque_nm": 0.0, "backlash_rad": 0.0}])  # fmt: skip
+    names = {"motor": "M0", "gearhead": "G0", "drive": "D0", "input": "stop"}
+    at_once = simulate(one, **names)
+    late = simulate(dataclasses.replace(one, options={**one.options, "stop reaction time": 0.05}), **names)
+    assert late.quantities["stop_reaction_s"] == pytest.approx(0.05)
+    ratio = 2.0 * math.pi / 0.05 * float(one.gearhead_parameters.ratio[find_set(one, "M0", "G0", "D0")[1]])
+    way = 0.05 * late.quantities["stop_from_speed_rad_s"] / ratio
+    for kind in ("controlled", "shorted"):
+        # The winding starts without the current that held the speed: a thousandth of the stop.
+        gone = [s.quantities[f"{kind}_stop_distance"] for s in (late, at_once)]
+        assert gone[0] - gone[1] == pytest.approx(way, rel=0.02)
+        took = [s.quantities[f"{kind}_stop_s"] for s in (late, at_once)]
+        assert took[0] - took[1] == pytest.approx(0.05, rel=0.05)
+    assert any("reaction" in note for note in at_once.notes)
+
+
+@pytest.mark.parametrize("stiffness", [1e4, 1e6, 1e8])
+def test_a_stop_through_a_stiff_loose_gearhead_ends(stiffness):
+    """Millions of periods of the contact: whole blocks of steps, and at most a couple of thousand contacts."""
+    stiff = {**GEARHEAD, "stiffness_nm_per_rad": stiffness, "backlash_rad": 2e-3}
+    found = simulate(made({"damping ratio": 0.001}, gearheads=[stiff]), motor="M0", gearhead="G0", drive="D0",
+                     input="stop")  # fmt: skip
+    assert len(found.series) < 40_000
+    # So stiff that the drive cannot see the contact, it may keep rattling; a number is what it must be.
+    assert math.isfinite(found.quantities["controlled_stop_final_speed_rad_s"])
+    assert found.quantities["controlled_stop_s"] > 0.0 or stiffness == 1e8
 
 
 def samples(folder, text):
@@ -318,3 +351,51 @@ def test_default_loops_are_stable_with_every_payload():
         found.plant, load_inertia_kg_m2=found.plant.load_inertia_kg_m2 * 20.0 / 920.0
     )  # moving mass alone; the shaft itself has no inertia here
     assert LinearCascade(light, found.settings).spectral_radius < 1.0
+
+
+def test_every_setting_has_its_unit(moved):
+    from actuator_sizing.report.loop_settings import SETTING_UNITS
+
+    assert list(SETTING_UNITS) == list(moved.gains)
+
+
+def test_results_and_workbook_hold_the_dynamics_of_the_leading_set():
+    from datetime import date
+    from io import BytesIO
+
+    import openpyxl
+
+    from actuator_sizing.report.json_results import results_dict
+    from actuator_sizing.report.workbook import render_workbook
+
+    one = made({"settling band": 1e-4, "allowed following error": 1e-3}, gearheads=[GEARHEAD])
+    comparison = compare(one)
+    answer = results_dict(comparison)["dynamics"]
+    checks = {check.check: check for check in comparison.best.checks}
+    assert answer["quantities"]["following_error_peak"] == pytest.approx(checks["following_error"].demand)
+    assert answer["quantities"]["speed_sensitivity_peak_ratio"] == pytest.approx(
+        checks["stability_reserve"].demand
+    )
+    assert answer["settings"]["position_gain_per_s"] > 0.0
+    assert answer["limited_by"] in ("current loop", "antiresonance of motor and load", "stability reserve")
+    with warnings.catch_warnings():
+        warnings.simplefilter("ignore")  # openpyxl does not know data bars
+        book = openpyxl.load_workbook(BytesIO(render_workbook(comparison, date(2026, 1, 5))))
+    rows = list(book["dynamics"].iter_rows(values_only=True))
+    assert (
+        "setting",
+        "position_gain_per_s",
+        pytest.approx(answer["settings"]["position_gain_per_s"]),
+        "1/s",
+    ) in rows
+    assert any(row[1] == "following error peak" and row[3] == "m" for row in rows)
+    plain = compare(made(gearheads=[GEARHEAD]))
+    assert results_dict(plain)["dynamics"] is None
+
+
+def test_a_long_record_is_simulated_in_its_order():
+    """The record keeps its order though the comparison condenses it; its planned current is that of the cycle."""
+    case_ = read_case("catalogs_demo/tray_shuttle_measured")
+    best = compare(case_, detail=1).best
+    found = simulate(case_, motor=best.motor, gearhead=best.gearhead, drive=best.drive, rate_hz=2000.0)
+    assert found.quantities["current_rms_a"] == pytest.approx(best.quantities["current_rms_a"], rel=0.03)

@@ -11,10 +11,9 @@ from scipy.integrate import solve_ivp
 from actuator_sizing.core.braking import shorted_current_peak, shorted_torque, stop
 from actuator_sizing.core.machine import judge
 from actuator_sizing.core.overload_heat import after_current, phase_excess, standstill_phase_factor
-from actuator_sizing.sizing.checks.motor import current_limited_torque
+from actuator_sizing.sizing.checks.motor import current_limited_torque, peak_current
 from actuator_sizing.sizing.overloads import (
     jam_temperature,
-    peak_current,
     stop_heating_time,
     stops_temperature,
 )

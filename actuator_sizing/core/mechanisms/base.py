@@ -89,6 +89,8 @@ class Transfer:
         Load coordinate x, counted from the start of the cycle, dx/dq and d²x/dq². [-]
     shaft_rate, shaft_bend : ndarray
         dφ/dq and d²φ/dq² of the driven shaft. [-]
+    shaft_angle : ndarray or None
+        φ itself where the geometry changes with it; None where it does not matter. [rad]
     """
 
     position: FloatArray
@@ -96,6 +98,7 @@ class Transfer:
     load_bend: FloatArray
     shaft_rate: FloatArray
     shaft_bend: FloatArray
+    shaft_angle: FloatArray | None = None
 
     @property
     def lever(self) -> FloatArray:
@@ -253,6 +256,27 @@ class Mechanism(ABC):
     def shaft_inertia_kg_m2(self) -> float:
         """Inertia of what turns with the driven shaft, behind the stage's efficiency. [kg·m²]"""
         return 0.0
+
+    def shaft_torques(
+        self, geometry: Transfer, speed: FloatArray, acceleration: FloatArray
+    ) -> tuple[FloatArray, FloatArray]:
+        """Torque of inertia and of gravity of what moves with the driven shaft rather than with the load.
+
+        Parameters
+        ----------
+        geometry : Transfer
+            Where the mechanism stands. [-]
+        speed : ndarray
+            Speed of the driven shaft. [rad/s]
+        acceleration : ndarray
+            Acceleration of the driven shaft. [rad/s²]
+
+        Returns
+        -------
+        inertia, gravity : ndarray
+            At the driven shaft, behind the stage's efficiency. [N·m]
+        """
+        return self.shaft_inertia_kg_m2 * acceleration, np.zeros_like(acceleration)
 
     @property
     def shaft_friction_nm(self) -> float:

@@ -84,8 +84,12 @@ class LinearLoad(Mechanism):
         """Not where friction bends with speed."""
         return not self.friction.is_curved
 
+    def _hanging(self, payload: FloatArray) -> FloatArray:
+        """What weighs on the guide."""
+        return np.asarray(self.moving_mass + payload)
+
     def _mass(self, payload: FloatArray) -> FloatArray:
-        return np.asarray(self.moving_mass + self.counterweight_mass + payload)
+        return np.asarray(self._hanging(payload) + self.counterweight_mass)
 
     def efforts(
         self,
@@ -97,8 +101,7 @@ class LinearLoad(Mechanism):
         process: FloatArray,
     ) -> Efforts:
         """Newton's second law along the guide; friction only where the load moves."""
-        hanging = self.moving_mass + payload
-        weight = hanging * GRAVITY_M_S2
+        weight = self._hanging(payload) * GRAVITY_M_S2
         normal = weight * np.cos(self.inclination)
         return Efforts(
             inertia=self._mass(payload) * acceleration,

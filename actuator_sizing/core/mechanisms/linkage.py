@@ -13,10 +13,12 @@ from actuator_sizing.core.mechanisms.base import (
     Complaint,
     FloatArray,
     Parameter,
+    Transfer,
     back_driving_efficiency,
 )
 from actuator_sizing.core.mechanisms.driven_slider import START_ANGLE
 from actuator_sizing.core.mechanisms.linear_load import STAGE_PARAMETERS
+from actuator_sizing.core.mechanisms.links import MovingLink, link_parameters
 from actuator_sizing.core.mechanisms.rotary import TURNING_PARAMETERS, TurningLoad
 from actuator_sizing.core.mechanisms.shaft_map import ShaftMap
 
@@ -102,6 +104,9 @@ class FourBar(DrivenLever):
                   example="100 mm"),
         Parameter("ground length", "length", "distance of the axes of crank and rocker", positive=True, minimum=0.0,
                   example="160 mm"),
+        *link_parameters("coupler", "crank pin"),
+        Parameter("ground inclination", "angle", "of the line from crank axis to rocker axis above the horizontal; "
+                  "only the coupler's weight asks", default=0.0, minimum=-10.0, maximum=10.0, example="0 deg"),
         *LEVER_PARAMETERS,
     )  # fmt: skip
 
@@ -109,11 +114,53 @@ class FourBar(DrivenLever):
     coupler_length: float
     rocker_length: float
     ground_length: float
+    coupler_mass: float = 0.0
+    coupler_centre: float = np.nan
+    coupler_inertia: float = np.nan
+    ground_inclination: float = 0.0
+
+    @property
+    def coupler(self) -> MovingLink:
+        """The link between crank and rocker."""
+        return MovingLink(self.coupler_mass, self.coupler_length, self.coupler_centre, self.coupler_inertia)
+
+    @property
+    def shaft_inertia_kg_m2(self) -> float:
+        """Stated inertia at the driven shaft, and the coupler's mass at the crank pin. [kg·m²]"""
+        return self.driven_shaft_inertia + self.coupler.driven_pin_kg * self.crank_radius**2
+
+    def _inertia(self, payload: FloatArray) -> FloatArray:
+        return np.asarray(super()._inertia(payload) + self.coupler.far_pin_kg * self.rocker_length**2)
+
+    def _held(self, position: FloatArray, payload: FloatArray) -> FloatArray:
+        psi = position + self.start_position + self.ground_inclination
+        weight = self.coupler.far_pin_kg * GRAVITY_M_S2 * self.rocker_length
+        return np.asarray(super()._held(position, payload) + weight * np.cos(psi))
+
+    def shaft_torques(
+        self, geometry: Transfer, speed: FloatArray, acceleration: FloatArray
+    ) -> tuple[FloatArray, FloatArray]:
+        """Coupler: its mass at the crank pin, and its turning, ``ΔJ (β'² φ̈ + β' β'' φ̇²)``."""
+        inertia, gravity = super().shaft_torques(geometry, speed, acceleration)
+        coupler = self.coupler
+        if geometry.shaft_angle is None or coupler.mass_kg == 0.0:
+            return inertia, gravity
+        _, (turn, bend) = self._angles(geometry.shaft_angle)
+        inertia = inertia + coupler.turning_kg_m2 * turn * (turn * acceleration + bend * speed**2)
+        weight = coupler.driven_pin_kg * GRAVITY_M_S2 * self.crank_radius
+        return inertia, gravity + weight * np.cos(geometry.shaft_angle + self.ground_inclination)
 
     def load_of_shaft(self, angle: FloatArray) -> tuple[FloatArray, FloatArray, FloatArray]:
-        """Rocker angle with two derivatives, by differentiating the loop.
+        """Rocker angle with two derivatives."""
+        return self._angles(angle)[0]
 
-        ``ψ' = a sin(φ − β)/(c sin(ψ − β))``; the second derivative from the same with β'.
+    def _angles(
+        self, angle: FloatArray
+    ) -> tuple[tuple[FloatArray, FloatArray, FloatArray], tuple[FloatArray, FloatArray]]:
+        """ψ, ψ', ψ'' of the rocker and β', β'' of the coupler, by differentiating the loop.
+
+        ``ψ' = a sin(φ − β)/(c sin(ψ − β))``, ``β' = a sin(φ − ψ)/(b sin(ψ − β))``; the second derivatives from
+        the same.
         """
         a, b, c, d = self.crank_radius, self.coupler_length, self.rocker_length, self.ground_length
         X, Y = a * np.cos(angle) - d, a * np.sin(angle)  # crank pin seen from the rocker's axis
@@ -128,7 +175,8 @@ class FourBar(DrivenLever):
             dbeta = a * np.sin(angle - psi) / (b * apart)
             lean = np.cos(psi - beta) * (dpsi - dbeta)
             ddpsi = a * np.cos(angle - beta) * (1.0 - dbeta) / (c * apart) - dpsi * lean / apart
-        return psi, dpsi, ddpsi
+            ddbeta = a * np.cos(angle - psi) * (1.0 - dpsi) / (b * apart) - dbeta * lean / apart
+        return (psi, dpsi, ddpsi), (dbeta, ddbeta)
 
     def complaints(self) -> Iterable[Complaint]:
         """Links with which the crank cannot turn all the way round (Grashof)."""
@@ -141,3 +189,4 @@ class FourBar(DrivenLever):
                             "coupler and rocker that close at every crank angle: their sum above ground plus "
                             "crank, their difference below ground minus crank",
                             "Change a length, or describe the part of a turn that is used by a map.")  # fmt: skip
+        yield from self.coupler.complaints("coupler")

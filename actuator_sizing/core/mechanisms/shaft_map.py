@@ -100,7 +100,9 @@ class ShaftMap(Mechanism):
             value, slope, _ = self.load_of_shaft(phi)
             with np.errstate(divide="ignore", invalid="ignore"):
                 step = (value - position) / slope
-            phi = np.clip(phi - np.nan_to_num(step), below, above)
+            before, phi = phi, np.clip(phi - np.nan_to_num(step), below, above)
+            if np.array_equal(before, phi):
+                break
         return np.asarray(phi)
 
     def ratio_at(self, position: FloatArray) -> tuple[FloatArray, FloatArray]:
@@ -112,10 +114,12 @@ class ShaftMap(Mechanism):
         """Load and shaft over the stated coordinate."""
         one, zero = np.ones_like(stated), np.zeros_like(stated)
         if at_shaft:
-            x, u, du = self.load_of_shaft(self.start_angle + stated)
-            return Transfer(x - self.start_position, u, du, one, zero)
-        r, dr = self.ratio_at(stated)
-        return Transfer(stated, one, zero, r, dr)
+            angle = self.start_angle + stated
+            x, u, du = self.load_of_shaft(angle)
+            return Transfer(x - self.start_position, u, du, one, zero, angle)
+        angle = self.shaft_of_load(stated + self.start_position)
+        _, u, du = self.load_of_shaft(angle)
+        return Transfer(stated, one, zero, 1.0 / u, -du / u**3, angle)
 
     def borders(self, stated: FloatArray, at_shaft: bool) -> FloatArray:
         """Kinks of the curve, in the stated coordinate."""

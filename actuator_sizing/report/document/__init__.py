@@ -17,11 +17,13 @@ from actuator_sizing.report.document.closing import (
 )
 from actuator_sizing.report.document.comparing import comparison_section
 from actuator_sizing.report.document.cycles import cycles_section
+from actuator_sizing.report.document.decisions import decision_sections
 from actuator_sizing.report.document.drawings import figures_section
 from actuator_sizing.report.document.dynamics import dynamics_section
 from actuator_sizing.report.document.inertias import inertias_section
 from actuator_sizing.report.document.inputs import assumptions_section, inputs_section
 from actuator_sizing.report.document.levers import levers_section
+from actuator_sizing.report.document.power import power_section
 from actuator_sizing.report.document.robustness import robustness_section
 from actuator_sizing.report.document.stopping import stopping_section
 from actuator_sizing.report.document.verdict import cover_facts, verdict_section, verdict_sentence
@@ -62,6 +64,7 @@ def prepare_document(
     losers = levers_section(comparison)
     if losers is not None:
         sections.append(losers)
+    sections += decision_sections(comparison, drawn)
     if comparison.sets:
         best = comparison.sets[0]
         sections += [checks_section(best), working_section(best)]
@@ -75,6 +78,7 @@ def prepare_document(
         stopping = stopping_section(shown, drawn)
         if stopping is not None:
             sections.append(stopping)
+        sections.append(power_section(shown, drawn))
         moving = dynamics_section(shown, drawn)
         if moving is not None:
             sections.append(moving)

@@ -31,12 +31,24 @@ def figures_section(comparison: Comparison, figures: Iterable[str]) -> Section:
         f"{quantity(around.ambient_degc, '°C')}, actuator_sizing {comparison.version}."
     )
     texts = _texts(best)
+    if not comparison.case.cycle.repeats:
+        texts["temperature"] = _single_run(best)
     blocks = tuple(
         FigureBlock(key, f"{texts[key][0]} {conditions}", texts[key][1])
         for key in texts
         if key in set(figures)
     )
     return Section("figures", "Figures", blocks)
+
+
+def _single_run(best: SetResult) -> tuple[str, str]:
+    """Caption and alternative text of the temperatures of a cycle that does not repeat."""
+    return (
+        "Winding and housing over one run of the cycle and, where one follows, over the next; the limit is that of "
+        "the motor's data sheet or insulation class. Computed temperatures, not measured ones.",
+        f"The winding reaches {set_quantity(best, 'winding_max_degc', '°C')}, the housing "
+        f"{set_quantity(best, 'housing_max_degc', '°C')}.",
+    )
 
 
 def _texts(best: SetResult) -> dict[str, tuple[str, str]]:

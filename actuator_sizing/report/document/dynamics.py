@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 
 from actuator_sizing.report.document.blocks import Column, Facts, FigureBlock, Paragraph, Section, Table, row
 from actuator_sizing.report.formatting import number, quantity
+from actuator_sizing.report.loop_settings import setting_unit
 from actuator_sizing.report.text import clean
 
 if TYPE_CHECKING:
@@ -36,7 +37,7 @@ _QUANTITIES = (
 
 
 def dynamics_section(comparison: Comparison, figures: Iterable[str]) -> Section | None:
-    """Place the simulation of the leading set; None where there is none.
+    """Place the simulation of the leading set, or how to get it; None without any set.
 
     Parameters
     ----------
@@ -46,11 +47,9 @@ def dynamics_section(comparison: Comparison, figures: Iterable[str]) -> Section 
         Keys of the figures that were drawn.
     """
     drawn = set(figures)
-    if not drawn & set(_FIGURES):
-        return None
     simulation = comparison.dynamics
     if simulation is None:
-        return None
+        return _without(comparison)
     blocks: list[Block] = [
         Paragraph(
             f"Simulated with default settings of the loops, sampled every {quantity(simulation.step_s, 's')}; the "
@@ -63,9 +62,9 @@ def dynamics_section(comparison: Comparison, figures: Iterable[str]) -> Section 
         blocks.append(_moves(simulation))
     blocks.append(
         Facts(
-            tuple((name, clean(value) if isinstance(value, str) else _plain(value))
+            tuple((name, f"{clean(value) if isinstance(value, str) else _plain(value)} {setting_unit(name)}".rstrip())
                   for name, value in simulation.gains.items()),
-            "Settings of the loops, in SI and in the motor's kind of ampere",
+            "Settings of the loops, in SI and in the motor's kind of ampere; change them by --set NAME=VALUE",
         )
     )  # fmt: skip
     peak = _at_load(simulation, "following_error_peak")
@@ -75,6 +74,26 @@ def dynamics_section(comparison: Comparison, figures: Iterable[str]) -> Section 
         if key in drawn
     ]
     return Section("dynamics", "Dynamics", tuple(blocks))
+
+
+def _without(comparison: Comparison) -> Section | None:
+    """How to get this section, or why the leading set could not be simulated."""
+    if not comparison.sets:
+        return None
+    best = comparison.sets[0]
+    command = " ".join(
+        ["actuator-sizing simulate CASE", f'--motor "{clean(best.motor)}"',
+         *([f'--gearhead "{clean(best.gearhead)}"'] if best.gearhead else []), f'--drive "{clean(best.drive)}"']
+    )  # fmt: skip
+    asked = best.detail is not None and best.detail.simulation is not None
+    why = (
+        "The leading set was not simulated: no settings of the loops are stable with reserve, or its cycle has more "
+        "than four million samples. "
+        if asked
+        else "Not asked for. State settling band, allowed following error or required speed bandwidth in the table "
+        "axis, and settling, following error, stability reserve and resonance are judged and shown here. "
+    )
+    return Section("dynamics", "Dynamics", (Paragraph(f"{why}This set alone, at once: {command}"),))
 
 
 def _plain(value: float | bool) -> str:

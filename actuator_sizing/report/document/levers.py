@@ -1,58 +1,64 @@
-"""What would let the nearest losers pass: one table per set that was asked about."""
+"""What would let the nearest losers pass, and give the leading set its reserve: one table per set asked about."""
 
 from __future__ import annotations
 
-from collections.abc import Mapping
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
 from actuator_sizing.report.document.blocks import Column, Paragraph, Section, Table, row
-from actuator_sizing.report.formatting import number, quantity
-from actuator_sizing.report.text import check_name, clean
+from actuator_sizing.report.document.verdict import governing
+from actuator_sizing.report.formatting import number
+from actuator_sizing.report.lever_text import lever_text
+from actuator_sizing.report.text import check_name, clean, in_sentence
+from actuator_sizing.sizing.results import FAILS
 
 if TYPE_CHECKING:
     from actuator_sizing.report.document.blocks import Block
-    from actuator_sizing.sizing.results import Comparison
+    from actuator_sizing.sizing.results import Comparison, SetResult
 
 _COLUMNS = (
-    Column("Change", weight=2.2),
-    Column("Now", numeric=True, weight=1.2),
-    Column("Needed", numeric=True, weight=1.2),
-    Column("In words", weight=2.4),
+    Column("Change", weight=2.3),
+    Column("Now", numeric=True, weight=1.1),
+    Column("Needed", numeric=True, weight=1.3),
+    Column("In words", weight=2.2),
 )
 
 
 def levers_section(comparison: Comparison) -> Section | None:
-    """The smallest single changes, for the sets they were worked out for; None where there are none."""
+    """The smallest changes, for the sets they were worked out for; None where there are none."""
     blocks: list[Block] = []
     for item in comparison.sets:
         if not item.levers:
             continue
-        caption = f"{clean(item.label)}, lost by {check_name(item.governing_check)}"
-        blocks.append(Table(caption, _COLUMNS, tuple(row(*_cells(lever)) for lever in item.levers)))
+        rows = tuple(row(*lever_text(comparison.case, lever)) for lever in item.levers)
+        blocks.append(Table(_caption(item), _COLUMNS, rows))
+        blocks.append(Paragraph(_about_pairs(item), "note"))
     if not blocks:
         return None
     lead = Paragraph(
-        "Each line changes one thing and leaves all else as it is; the set then passes every check. Values are the "
-        "smallest change found, sized again with the changed value."
+        "Each line changes one thing and leaves all else as it is; the set then meets what the caption of its table "
+        "says. Values are the smallest change found, sized again with the changed value and rounded to its safe side."
     )
     return Section("levers", "What would let the nearest losers pass", (lead, *blocks))
 
 
-def _cells(lever: Mapping[str, Any]) -> tuple[str, str, str, str]:
-    title, unit, present, needed = (lever[key] for key in ("title", "unit", "present", "needed"))
-    if needed is None:
-        return clean(title), _shown(present, unit), "-", "no change of this alone helps"
-    if isinstance(needed, str):
-        return clean(title), clean(present), clean(needed), "cheapest that passes"
-    change = needed - present
-    if unit == "-" and present != 0.0:
-        words = f"{number(abs(change) / abs(present) * 100.0, 3)} % {'more' if change > 0 else 'less'}"
-    else:
-        words = f"{_shown(abs(change), 'K' if unit == '°C' else unit)} {'more' if change > 0 else 'less'}"
-    return clean(title), _shown(present, unit), _shown(needed, unit), words
+def _caption(item: SetResult) -> str:
+    check = governing(item)
+    name = in_sentence(check.title) if check else check_name(item.governing_check)
+    if item.verdict == FAILS:
+        return f"{clean(item.label)}, lost by {name}: every check met"
+    return f"{clean(item.label)}, least reserve in {name}: every check met with the recommended reserve"
 
 
-def _shown(value: Any, unit: str) -> str:
-    if isinstance(value, str):
-        return clean(value)
-    return number(float(value), 4) if unit in ("-", "") else quantity(float(value), unit)
+def _about_pairs(item: SetResult) -> str:
+    """Say what a pair of levers saves, and how its cost is counted."""
+    alone = [lever["cost"] for lever in item.levers if lever.get("unit") and lever.get("cost") is not None]
+    pair = next((lever for lever in item.levers if lever["lever"] == "pair"), None)
+    counted = (
+        "The cost of a change is its size against the present value; of ambient against the rise that the winding is "
+        "permitted, of an added dwell against the cycle. A pair costs the sum."
+    )
+    if pair is None:
+        return f"No pair of levers was found that costs less than the cheapest lever alone. {counted}"
+    if not alone:
+        return f"The pair costs {number(pair['cost'], 3)}; no lever helps alone. {counted}"
+    return f"The pair costs {number(pair['cost'], 3)}, the cheapest lever alone {number(min(alone), 3)}. {counted}"

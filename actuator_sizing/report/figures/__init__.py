@@ -17,6 +17,9 @@ from actuator_sizing.report.figures.dynamics import (
     draw_response,
 )
 from actuator_sizing.report.figures.over_time import draw_causes, draw_current, draw_motion
+from actuator_sizing.report.figures.payload_map import draw_payload_map
+from actuator_sizing.report.figures.power import draw_bus, draw_energy_flow
+from actuator_sizing.report.figures.ratio_windows import draw_ratio_windows
 from actuator_sizing.report.figures.robustness import (
     ROBUSTNESS_FIGURES,
     draw_probability,
@@ -28,6 +31,7 @@ from actuator_sizing.report.figures.step import draw_step_response
 from actuator_sizing.report.figures.stopping import draw_stops
 from actuator_sizing.report.figures.style import house_style, to_svg
 from actuator_sizing.report.figures.temperature import draw_temperature
+from actuator_sizing.report.figures.trade_offs import draw_trade_offs
 from actuator_sizing.report.figures.units import AxisUnits
 from actuator_sizing.report.figures.utilisation import draw_utilisation
 
@@ -46,11 +50,13 @@ FIGURES = (
     "torque_by_cause",
     "current",
     "temperature",
+    "bus",
+    "energy_flow",
     "step_response",
     "cycles",
 )
-#: Keys of figures that only some cases ask for.
-OPTIONAL_FIGURES = ("stops", *ROBUSTNESS_FIGURES)
+#: Keys of figures that only some cases ask for, or an option of the comparison.
+OPTIONAL_FIGURES = ("stops", "trade_offs", "ratio_windows", "payload_map", *ROBUSTNESS_FIGURES)
 
 
 @dataclass(frozen=True)
@@ -111,7 +117,8 @@ def draw(comparison: Comparison, key: str) -> Figure | None:
 
 def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]]:
     figures: dict[str, Callable[[], Figure | None]] = {
-        "utilisation": lambda: draw_utilisation(comparison.sets)
+        "utilisation": lambda: draw_utilisation(comparison.sets),
+        **_decision_figures(comparison),
     }
     if comparison.cycles:
         several = comparison
@@ -128,11 +135,29 @@ def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]
         "torque_by_cause": lambda: draw_causes(detail, units),
         "current": lambda: draw_current(best, detail),
         "temperature": lambda: draw_temperature(detail),
+        "bus": lambda: draw_bus(detail),
+        "energy_flow": lambda: draw_energy_flow(best),
         "step_response": lambda: draw_step_response(best, detail, units),
         **_stop_figures(comparison, detail, units),
         **_dynamic_figures(comparison),
         **_robustness_figures(comparison),
     } | figures
+
+
+def _decision_figures(comparison: Comparison) -> dict[str, Callable[[], Figure | None]]:
+    """What was asked for beyond pass and fail."""
+    figures: dict[str, Callable[[], Figure | None]] = {}
+    windows, headroom, found = comparison.windows, comparison.headroom, comparison.trade_offs
+    if windows is not None:
+        leading = [item.motor_index for item in comparison.sets]
+        figures["ratio_windows"] = lambda: draw_ratio_windows(windows, leading)
+    if headroom is not None and headroom.map is not None:
+        drawn = headroom.map
+        figures["payload_map"] = lambda: draw_payload_map(drawn)
+    if found is not None:
+        currency = comparison.case.motors.entered_units.get("price", "")
+        figures["trade_offs"] = lambda: draw_trade_offs(found, currency)
+    return figures
 
 
 def _stop_figures(

@@ -43,5 +43,5 @@ def draw_cycles(comparison: Comparison) -> Figure | None:
     low, high = min(ax.get_ylim()[0] for ax in axes), max(ax.get_ylim()[1] for ax in axes)
     for ax in axes:
         ax.set_ylim(low, high)
-    figure.align_ylabels(axes)
+    style.align_labels(axes)
     return figure

@@ -81,7 +81,12 @@ def draw_response(simulation: Simulation) -> Figure:
         ax.axhline(0.0, color=style.QUIET, linewidth=0.8)
     closed = has_voltage
     if closed:
-        axes[2].plot(unit.convert(time), series["voltage_v"], color=style.DEMAND)
+        is_dq = "direct_voltage_v" in series
+        axes[2].plot(unit.convert(time), series["voltage_v"], color=style.DEMAND,
+                     label="quadrature" if is_dq else None)  # fmt: skip
+        if is_dq:
+            axes[2].plot(unit.convert(time), series["direct_voltage_v"], color=style.SECOND,
+                         linestyle=(0, (6, 2)), linewidth=1.2, label="direct")  # fmt: skip
         axes[2].set_ylabel("voltage of the\nDC equivalent [V]")
         saturated = series["saturated"].to_numpy(int)
         shade(axes[1], unit.convert(time), saturated & _CURRENT_LIMITED > 0, "current limited")
@@ -90,11 +95,11 @@ def draw_response(simulation: Simulation) -> Figure:
         style.draw_levels(axes[2], _both_signs(simulation.settings.voltage_limit_v, "lowest bus", "V"))
         for ax in axes[1:]:
             if ax.get_legend_handles_labels()[0]:
-                ax.legend(loc="upper right")
+                ax.legend(loc="upper right", frameon=True, framealpha=0.85, edgecolor="none")
     axes[-1].set_xlabel(f"time [{unit.label}], positive along +x")
     style.legend_above(top, columns=3)
     axes[0].set_xlim(0.0, float(unit.convert(time[-1])))
-    figure.align_ylabels(axes)
+    style.align_labels(axes)
     return figure
 
 
@@ -121,7 +126,7 @@ def _draw_stops(simulation: Simulation) -> Figure:
     if known:
         axes[0].set_xlim(0.0, float(unit.convert(min(3.0 * max(known), float(series["time_s"].max())))))
     style.legend_above(axes[0], columns=2)
-    figure.align_ylabels(axes)
+    style.align_labels(axes)
     return figure
 
 

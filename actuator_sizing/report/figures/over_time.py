@@ -42,7 +42,7 @@ def draw_motion(cycle: pd.DataFrame, units: AxisUnits, name: str = "") -> Figure
     name : str
         Name of the cycle, said below; empty where there is one.
     """
-    time, unit = _time(cycle)
+    time, unit = time_axis(cycle)
     effort = "motor_torque_nm" if "motor_torque_nm" in cycle else "effort"
     whose = f"motor {units.effort_word}" if effort == "motor_torque_nm" else "effort at the load"
     panels = (
@@ -56,13 +56,13 @@ def draw_motion(cycle: pd.DataFrame, units: AxisUnits, name: str = "") -> Figure
         ),
     )
     figure, axes = style.new_axes(5.4, rows=len(panels), left_in=0.95, right_in=0.25, top_in=0.32)
-    for ax, (column, shown, name) in zip(axes, panels, strict=True):
+    for ax, (column, shown, label) in zip(axes, panels, strict=True):
         ax.plot(time, shown.convert(cycle[column].to_numpy(float)), color=style.DEMAND)
         ax.axhline(0.0, color=style.QUIET, linewidth=0.8)
-        ax.set_ylabel(f"{name}\n[{shown.label}]")
+        ax.set_ylabel(f"{label}\n[{shown.label}]")
         ax.margins(y=0.12)
-    figure.align_ylabels(axes)
-    _mark_segments(axes, cycle, unit)
+    style.align_labels(axes)
+    mark_segments(axes, cycle, unit)
     of_cycle = f" in the cycle {style.shorten(name, 40)}" if name else ""
     axes[-1].set_xlabel(f"time{of_cycle} [{unit.label}], all values positive along +x")
     return figure
@@ -79,7 +79,7 @@ def draw_causes(detail: SetDetail, units: AxisUnits) -> Figure:
         Units and words to draw in.
     """
     cycle = detail.cycle
-    time, unit = _time(cycle)
+    time, unit = time_axis(cycle)
     total = cycle["motor_torque_nm"].to_numpy(float)
     parts = [cause for cause in _CAUSES if cause[0] in cycle and np.nanmax(np.abs(cycle[cause[0]])) > 0.0]
     values = [cycle[column].to_numpy(float) for column, *_ in parts]
@@ -110,7 +110,7 @@ def draw_causes(detail: SetDetail, units: AxisUnits) -> Figure:
     ax.axhline(0.0, color=style.INK, linewidth=0.8)
     ax.set_ylabel(f"{units.effort_word} at the motor [{shown.label}]")
     ax.set_xlabel(f"time [{unit.label}], positive drives +x")
-    _mark_segments([ax], cycle, unit)
+    mark_segments([ax], cycle, unit)
     style.legend_above(ax, columns=4, bbox_to_anchor=(0.0, 1.08))
     return figure
 
@@ -139,7 +139,7 @@ def draw_current(best: SetResult, detail: SetDetail) -> Figure:
         Curves and levels of the set, in the motor's kind of ampere.
     """
     cycle = detail.cycle
-    time, unit = _time(cycle)
+    time, unit = time_axis(cycle)
     current = cycle["current_a"].to_numpy(float)
     figure, (ax,) = style.new_axes(3.3, top_in=0.32)
     ax.plot(time, current, color=style.DEMAND)
@@ -158,7 +158,7 @@ def draw_current(best: SetResult, detail: SetDetail) -> Figure:
     basis = best.quantities.get("current_basis")
     ax.set_ylabel(current_label(basis))
     ax.set_xlabel(f"time [{unit.label}], positive current drives +x; limits hold for both signs")
-    _mark_segments([ax], cycle, unit)
+    mark_segments([ax], cycle, unit)
     return figure
 
 
@@ -179,11 +179,11 @@ def draw_over_cycle(ax: Axes, cycle: pd.DataFrame, values: Any) -> DisplayUnit:
     DisplayUnit
         Of the time.
     """
-    time, unit = _time(cycle)
+    time, unit = time_axis(cycle)
     ax.plot(time, values, color=style.DEMAND)
     ax.axhline(0.0, color=style.QUIET, linewidth=0.8)
     ax.margins(y=0.12)
-    _mark_segments([ax], cycle, unit)
+    mark_segments([ax], cycle, unit)
     return unit
 
 
@@ -192,13 +192,14 @@ def _level(detail: SetDetail, key: str, name: str, color: str, dash: Any) -> sty
     return style.Level(value, f"{name} {number(value, 3)} A", color, dash)
 
 
-def _time(cycle: pd.DataFrame) -> tuple[Any, DisplayUnit]:
+def time_axis(cycle: pd.DataFrame) -> tuple[Any, DisplayUnit]:
+    """Take the instants of curves over a cycle in the unit that suits its length, and that unit."""
     time = cycle["time_s"].to_numpy(float)
     unit = display_unit("s", (float(time[-1]),))
     return unit.convert(time), unit
 
 
-def _mark_segments(axes: list[Axes], cycle: pd.DataFrame, unit: DisplayUnit) -> None:
+def mark_segments(axes: list[Axes], cycle: pd.DataFrame, unit: DisplayUnit) -> None:
     """Draw the borders of the segments through every panel and name them over the first one."""
     time = unit.convert(cycle["time_s"].to_numpy(float))
     names = cycle["segment"].astype(str).to_numpy()

@@ -48,5 +48,5 @@ def draw_step_response(best: SetResult, detail: SetDetail, units: AxisUnits) -> 
     style.draw_levels(bottom, [style.Level(shown, text, style.QUIET, style.QUIET_DASH)])
     bottom.set_ylabel(f"motor speed\n[{speed_unit.label}]")
     bottom.set_xlabel(f"time after the step [{unit.label}], positive along +x")
-    figure.align_ylabels([top, bottom])
+    style.align_labels([top, bottom])
     return figure

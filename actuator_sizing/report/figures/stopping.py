@@ -70,5 +70,5 @@ def draw_stops(stops: StopCourses, units: AxisUnits, allowed: float = math.nan) 
     shaded = "shaded: reaction time" + ("; hatched: the brake closes" if closing == closing else "")
     axes[-1].set_xlabel(f"time since the command [{time_unit.label}]; {shaded}")
     style.legend_above(axes[0], columns=2)
-    figure.align_ylabels(axes)
+    style.align_labels(axes)
     return figure

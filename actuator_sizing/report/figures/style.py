@@ -32,6 +32,7 @@ GRID = "#d9d9d9"
 LIMIT_DASH, CONTINUOUS_DASH, QUIET_DASH = (0, (6, 2)), (0, (3, 1.5)), (0, (1, 1.5))
 
 WIDTH_IN = 7.2
+_TWO_LINES_IN = 0.33  # what a label of two lines takes beside its axis
 FONT_STACK = ["DejaVu Sans", "Verdana", "Arial", "sans-serif"]
 
 _STYLE: dict[str, Any] = {
@@ -69,16 +70,26 @@ _STYLE: dict[str, Any] = {
     "path.simplify": True,
 }
 _LOCK = threading.RLock()  # matplotlib's settings are global
+_is_applied = False
 
 
 @contextmanager
 def house_style() -> Iterator[None]:
     """Apply the look while a figure is drawn or written; leaves the user's settings as they were."""
+    global _is_applied
     import matplotlib
 
-    settings: dict[Any, Any] = {**matplotlib.rcParamsDefault}
-    with _LOCK, matplotlib.rc_context(settings | _STYLE | {"backend": "agg"}):
-        yield
+    with _LOCK:
+        if _is_applied:  # by the same thread: setting all again for every figure costs as much as drawing it
+            yield
+            return
+        settings: dict[Any, Any] = {**matplotlib.rcParamsDefault}
+        with matplotlib.rc_context(settings | _STYLE | {"backend": "agg"}):
+            _is_applied = True
+            try:
+                yield
+            finally:
+                _is_applied = False
 
 
 def new_axes(
@@ -132,6 +143,13 @@ def new_axes(
                 ax.tick_params(labelbottom=False)
             axes.append(ax)
     return figure, axes
+
+
+def align_labels(axes: Sequence[Axes]) -> None:
+    """Put y labels of two lines at the edge of the figure, without measuring every label of a tick."""
+    for ax in axes:
+        place = ax.get_position()
+        ax.yaxis.set_label_coords((_TWO_LINES_IN / WIDTH_IN - place.x0) / place.width, 0.5)
 
 
 @lru_cache(maxsize=1)

@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import Any
 
 from actuator_sizing.report.formatting import DisplayUnit, display_unit
 
+_MANY_TURNS = 20  # beyond which an angle is counted in turns
 DIRECTIONS = "positive along +x of the axis"
 
 
@@ -45,7 +47,10 @@ class AxisUnits:
 
     def position(self, values: Any) -> DisplayUnit:
         """Choose the unit of the load's position."""
-        return display_unit("m", values) if self.linear_load else display_unit("rad", values)
+        if self.linear_load:
+            return display_unit("m", values)
+        many = max((abs(value) for value in values), default=0.0) > _MANY_TURNS * math.tau
+        return DisplayUnit("turns", math.tau) if many else display_unit("rad", values)
 
     def speed(self) -> DisplayUnit:
         """Choose the unit of the load's speed."""

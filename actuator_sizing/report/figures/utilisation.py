@@ -21,7 +21,7 @@ if TYPE_CHECKING:
 #: Rows that one page carries.
 MOST_ROWS = 25
 #: Checks that its width carries; those with the least reserve are drawn.
-MOST_COLUMNS = 18
+MOST_COLUMNS = 16
 _LABEL_LETTERS = 38  # of the three names together
 
 # From nothing used to all of it used, in steps that stay ordered in grey; above the limit one dark colour.

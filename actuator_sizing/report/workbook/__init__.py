@@ -10,6 +10,14 @@ from actuator_sizing.report.text import option
 from actuator_sizing.report.workbook.case_sheets import add_inputs, add_parts, add_questions, add_segments
 from actuator_sizing.report.workbook.curves import add_speed_torque, add_time_series, add_warm_up
 from actuator_sizing.report.workbook.cycle_sheets import add_cycles, add_inertias
+from actuator_sizing.report.workbook.decision_sheets import (
+    add_headroom,
+    add_levers,
+    add_ratio_windows,
+    add_trade_offs,
+)
+from actuator_sizing.report.workbook.dynamics_sheet import add_dynamics
+from actuator_sizing.report.workbook.power_sheets import add_bus, add_energy
 from actuator_sizing.report.workbook.results_sheets import add_candidates, add_checks, add_summary
 from actuator_sizing.report.workbook.robustness import add_robustness
 from actuator_sizing.report.workbook.writer import Sheets
@@ -58,10 +66,17 @@ def render_workbook(comparison: Comparison, day: date, rows_in_file: int | None 
         add_candidates(sheets, comparison)
         add_checks(sheets, comparison)
         add_cycles(sheets, comparison)
+        add_levers(sheets, comparison)
+        add_trade_offs(sheets, comparison)
+        add_ratio_windows(sheets, comparison)
+        add_headroom(sheets, comparison)
         add_segments(sheets, comparison)
         add_time_series(sheets, comparison)
         add_warm_up(sheets, comparison)
         add_speed_torque(sheets, comparison)
+        add_energy(sheets, comparison)
+        add_bus(sheets, comparison)
+        add_dynamics(sheets, comparison)
         if comparison.robustness is not None:
             add_robustness(sheets, comparison.robustness)
         add_inertias(sheets, comparison)

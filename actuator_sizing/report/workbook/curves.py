@@ -41,7 +41,7 @@ def add_speed_torque(sheets: Sheets, comparison: Comparison) -> None:
     if detail is None:
         return
     units = AxisUnits.of(comparison.case)
-    _add_frame(sheets, "speed-torque limits", detail.envelope, units)
+    add_frame(sheets, "speed-torque limits", detail.envelope, units)
     sheet = sheets.book.get_worksheet_by_name("speed-torque limits")
     chart = sheets.book.add_chart({"type": "scatter", "subtype": "straight"})
     columns = list(map(str, detail.envelope.columns))
@@ -115,10 +115,10 @@ def _add_frames(
             frames.append(frame.assign(cycle=each.case.cycle.name) if comparison.cycles else frame)
     if frames:
         whole = frames[0] if len(frames) == 1 else pd.concat(frames, ignore_index=True)
-        _add_frame(sheets, name, whole, AxisUnits.of(comparison.case))
+        add_frame(sheets, name, whole, AxisUnits.of(comparison.case))
 
 
-def _add_frame(sheets: Sheets, name: str, table: pd.DataFrame, units: AxisUnits) -> None:
+def add_frame(sheets: Sheets, name: str, table: pd.DataFrame, units: AxisUnits) -> None:
     """Write a frame of curves; what is not known leaves its cell empty, so that charts show a gap."""
     fields = [Field(_curve_heading(str(column), units), _style(table[column])) for column in table.columns]
     sheet = sheets.add_table(name, fields, [])

@@ -24,9 +24,11 @@ if TYPE_CHECKING:
     from actuator_sizing.sizing.demand import Demand
     from actuator_sizing.sizing.dynamic_results import DynamicResults
     from actuator_sizing.sizing.evaluation import PairResults
+    from actuator_sizing.sizing.joint_bus import PartnerPower
     from actuator_sizing.sizing.thermal_start import ThermalStart
 
 FloatArray = NDArray[np.float64]
+WAY = "m or rad"  # unit of a way of the load: metres or radians by the mechanism
 _T = TypeVar("_T")
 _TABLES = ("motors", "gearheads", "drives")
 
@@ -50,6 +52,7 @@ class Sets:
     drive_current_rms_at_s: FloatArray
     overload_a2s: FloatArray  # largest i²t accumulator in the periodic regime
     overload_at_s: FloatArray
+    partners: tuple[PartnerPower, ...] = ()  # other axes on the same bus
     dynamics: DynamicResults | None = None  # where the case asks how the axis moves
     start: ThermalStart | None = None  # of a cycle that does not repeat until its temperatures do
     _found: dict[Callable[[Sets], Any], Any] = field(default_factory=dict, repr=False)
@@ -184,6 +187,11 @@ def _always(sets: Sets) -> NDArray[np.bool_]:
 SUSTAINED = (REPEATS,)
 #: Wear counts what is done often, from warm or from cold.
 OFTEN = (REPEATS, SHORT_TIME)
+
+
+def way_unit(sets: Sets) -> str:
+    """Unit of the way of the load. [-]"""
+    return "m" if sets.case.mechanism.coordinate == "linear" else "rad"
 
 
 def everywhere(value: float, sets: Sets) -> FloatArray:

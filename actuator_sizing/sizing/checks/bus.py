@@ -3,14 +3,16 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.sizing.bus import BusResults, bus_results
+from actuator_sizing.sizing.bus import BusResults
 from actuator_sizing.sizing.bus_sag import is_soft
 from actuator_sizing.sizing.bus_side import BATTERY, DC_SUPPLY, supply_feeds_back, supply_kind
 from actuator_sizing.sizing.checks.base import SUSTAINED, Check, Measure, Need, Sets, digits
+from actuator_sizing.sizing.joint_bus import bus_results, joint_rule
 
 FloatArray = NDArray[np.float64]
 
@@ -370,7 +372,18 @@ CHARGING_CURRENT = Check(
     applies=_may_charge,
 )
 
-BUS_CHECKS = (
+
+def _of_all_axes(check: Check) -> Check:
+    """The check with a word in its working on the other axes on the bus, where there are any."""
+
+    def working(sets: Sets, i: int) -> str:
+        rule = joint_rule(sets)
+        return f"{check.working(sets, i)}; {rule}" if rule else check.working(sets, i)
+
+    return replace(check, working=working)
+
+
+_CHECKS = (
     BUS_MAXIMUM,
     CHOPPER_RELEASE,
     BUS_SAG,
@@ -383,3 +396,5 @@ BUS_CHECKS = (
     SUPPLY_PEAK,
     CHARGING_CURRENT,
 )
+
+BUS_CHECKS = tuple(map(_of_all_axes, _CHECKS))

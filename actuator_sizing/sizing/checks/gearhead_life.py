@@ -7,6 +7,8 @@ from numpy.typing import NDArray
 
 from actuator_sizing.core.life import stated_life
 from actuator_sizing.sizing.checks.base import (
+    OFTEN,
+    SUSTAINED,
     Check,
     Measure,
     Need,
@@ -38,6 +40,7 @@ GEARHEAD_THERMAL = Check(
     measure=_thermal_measure,
     working=quotient_working("P_mean / P_thermal", "W", _thermal_measure),
     applies=lambda sets: has_gearhead(sets) & sets.catalog_asks("gearheads", "thermal_power"),
+    concerns=SUSTAINED,
 )
 
 
@@ -87,6 +90,7 @@ GEARHEAD_LIFE = Check(
     applies=lambda sets: (
         has_gearhead(sets) & sets.states("required life") & sets.catalog_asks("gearheads", "rated_life")
     ),
+    concerns=OFTEN,
 )
 
 GEARHEAD_LIFE_CHECKS = (GEARHEAD_THERMAL, GEARHEAD_LIFE)

@@ -11,6 +11,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.sizing.checks.base import (
+    WAY,
     Check,
     Measure,
     Need,
@@ -18,6 +19,7 @@ from actuator_sizing.sizing.checks.base import (
     digits,
     everywhere,
     quotient_working,
+    way_unit,
 )
 from actuator_sizing.sizing.checks.stopping import (
     BRAKE_TORQUE,
@@ -25,7 +27,6 @@ from actuator_sizing.sizing.checks.stopping import (
     REACTION,
     STOP_SOURCE,
     has_brake,
-    way_unit,
 )
 from actuator_sizing.sizing.stops import brake_stops, brake_torque, drop_distance, gravity_torque
 
@@ -127,7 +128,7 @@ DROP_DISTANCE = Check(
     key="drop_distance",
     title="Drop distance",
     group="motor",
-    unit="m or rad",
+    unit=WAY,
     formula="way of the held load from rest over reaction and closing time and until the brake has stopped it "
     "≤ allowed drop distance",
     source=STOP_SOURCE + ". Removing torque (STO of IEC 61800-5-2) does not hold a load",

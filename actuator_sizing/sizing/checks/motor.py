@@ -8,7 +8,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.core.capability import continuous_current
-from actuator_sizing.core.machine import judge, resistance_at, torque_of_current
+from actuator_sizing.core.machine import (
+    judge,
+    motor_amperes_per_drive_ampere,
+    resistance_at,
+    saturation_coefficient,
+    torque_of_current,
+)
 from actuator_sizing.core.parameters import MotorParameters, Surroundings
 from actuator_sizing.core.thermal import altitude_factor
 from actuator_sizing.sizing.block import Block
@@ -72,6 +78,33 @@ def _heat_path(
         rating = (limit - motors.continuous_ambient_degc) / (hot * motors.continuous_current_a**2)
     R_2 = motors.thermal_resistance_housing_k_w
     return rise, rating, np.where(np.isnan(R_2), rating, np.fmin(R_2, rating)), hot
+
+
+def continuous_torque_squared(motors: MotorParameters, surroundings: Surroundings) -> FloatArray:
+    """Square of the re-rated continuous torque as a polynomial of speed, saturation left out.
+
+    Parameters
+    ----------
+    motors : MotorParameters
+        n motors. [-]
+    surroundings : Surroundings
+        Ambient and altitude. [-]
+
+    Returns
+    -------
+    ndarray, shape (3, n)
+        Coefficients of 1, ω and ω² of ``(K I_cont(ω))²``, see `rerated_continuous_current`. [-]
+    """
+    rise, rating, speed_resistance, hot = _heat_path(motors, surroundings)
+    K = judge(motors, replace(surroundings, judged_winding_degc=np.nan)).torque_constant_nm_per_a
+    per_kelvin = K**2 / (rating * hot)
+    return np.stack(
+        [
+            per_kelvin * np.maximum(rise, 0.0),
+            -per_kelvin * speed_resistance * motors.friction_torque_nm,
+            -per_kelvin * speed_resistance * motors.viscous_friction_nm_s,
+        ]
+    )
 
 
 def _current_at_limit(
@@ -149,14 +182,16 @@ RMS_CURRENT = Check(
 
 
 # -- torque over the speed–torque plane -------------------------------------------------------------
+def peak_current(sets: Sets) -> FloatArray:
+    """Smaller peak current of motor and drive in the motor's basis, shape (S,); NaN where neither is known. [A]"""
+    to_motor = motor_amperes_per_drive_ampere(sets.motors, sets.drives)
+    return np.asarray(np.fmin(sets.motors.peak_current_a, sets.drives.peak_current_a * to_motor))
+
+
 def current_limited_torque(sets: Sets) -> FloatArray:
     """Air-gap torque at the smaller of the peak currents of motor and drive, shape (S,). [N·m]"""
-    from actuator_sizing.core.machine import motor_amperes_per_drive_ampere, saturation_coefficient
-
-    to_motor = motor_amperes_per_drive_ampere(sets.motors, sets.drives)
-    current = np.fmin(sets.motors.peak_current_a, sets.drives.peak_current_a * to_motor)
     K = sets.pairs.torque_constant_nm_per_a
-    torque = torque_of_current(current, K, saturation_coefficient(sets.motors))
+    torque = torque_of_current(peak_current(sets), K, saturation_coefficient(sets.motors))
     # A peak torque stated on the sheet is a limit of its own, also where the current would allow more.
     return np.fmin(torque, sets.motors.peak_torque_nm)
 

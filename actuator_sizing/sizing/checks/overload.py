@@ -19,11 +19,11 @@ from actuator_sizing.sizing.checks.base import (
     everywhere,
     quotient_working,
 )
+from actuator_sizing.sizing.checks.motor import peak_current
 from actuator_sizing.sizing.overloads import (
     held_stretches,
     hold_excess,
     jam_temperature,
-    peak_current,
     stop_heating_time,
     stops_temperature,
 )

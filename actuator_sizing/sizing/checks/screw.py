@@ -17,6 +17,8 @@ from actuator_sizing.core.screws import (
     sliding_speed_per_turn,
 )
 from actuator_sizing.sizing.checks.base import (
+    OFTEN,
+    SUSTAINED,
     Check,
     Measure,
     Need,
@@ -219,6 +221,7 @@ SCREW_LIFE = Check(
             and sets.states("screw dynamic load rating", "screw static load rating")
         )
     ),
+    concerns=OFTEN,
 )
 
 
@@ -258,6 +261,7 @@ SCREW_PRESSURE = Check(
     measure=_pressure_measure,
     working=quotient_working("p v / (p v)_allowed", "W/m²", _pressure_measure),
     applies=applies_if(lambda sets: sets.states(*_PRESSURE)),
+    concerns=SUSTAINED,
 )
 
 SCREW_CHECKS = (

@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from actuator_sizing.core.life import stated_life
 from actuator_sizing.sizing.checks.base import (
+    OFTEN,
     Check,
     Measure,
     Need,
@@ -156,6 +157,7 @@ SHAFT_LIFE = Check(
     measure=_life_measure,
     working=_life_working,
     applies=lambda sets: _turns(sets) & states_radial_force(sets) & sets.states("required life"),
+    concerns=OFTEN,
 )
 
 SHAFT_CHECKS = (SHAFT_RADIAL, SHAFT_AXIAL, SHAFT_LIFE)

@@ -8,7 +8,17 @@ import numpy as np
 from numpy.typing import NDArray
 
 from actuator_sizing.core.transmission import MOTORING, stage_factor
-from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits, everywhere, has_gearhead
+from actuator_sizing.sizing.checks.base import (
+    WAY,
+    Check,
+    Measure,
+    Need,
+    Sets,
+    digits,
+    everywhere,
+    has_gearhead,
+    way_unit,
+)
 from actuator_sizing.sizing.checks.motor import current_limited_torque
 from actuator_sizing.sizing.stops import (
     StopResults,
@@ -29,11 +39,6 @@ BRAKE_TORQUE = Need("motors", "brake_torque_nm", "brake torque", "brake force")
 CLOSING = Need("motors", "brake_closing_time", "brake closing time")
 STOP_SOURCE = "J dω/dt = −T_brake − T_load − T_friction after the reaction time; losses of stages left out; " \
     "first principles. Computed: measure it on the machine"  # fmt: skip
-
-
-def way_unit(sets: Sets) -> str:
-    """Unit of the way of the load. [-]"""
-    return "m" if sets.case.mechanism.coordinate == "linear" else "rad"
 
 
 def has_brake(sets: Sets) -> NDArray[np.bool_]:
@@ -85,7 +90,7 @@ def _stop_check(
         key=key,
         title=title,
         group="motor",
-        unit="m or rad",
+        unit=WAY,
         formula=formula,
         source=STOP_SOURCE,
         needs=(REACTION, *needs),

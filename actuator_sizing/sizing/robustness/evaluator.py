@@ -17,7 +17,7 @@ from actuator_sizing.sizing.judging import NOT_APPLICABLE, ORDER, active_checks,
 from actuator_sizing.sizing.results import NOT_CHECKED
 from actuator_sizing.sizing.robustness.inputs import SpreadInputs, spread_inputs
 from actuator_sizing.sizing.robustness.sampled_sets import SAMPLED_CHECKS, SAMPLED_QUANTITIES, Sampler
-from actuator_sizing.sizing.robustness.state import Samples, rows_of, samples_of
+from actuator_sizing.sizing.robustness.state import Samples, samples_of
 
 FloatArray = NDArray[np.float64]
 Progress = Callable[[float], None]
@@ -35,28 +35,6 @@ class Judged:
 
     utilisation: FloatArray  # (N, C), NaN where the check was not made
     quantities: dict[str, FloatArray]
-
-
-def case_of_set(case: Case, motor: int, gearhead: int, drive: int) -> Case:
-    """The case with one motor, gearhead and drive, catalogs included.
-
-    Parameters
-    ----------
-    case : Case
-        The whole case. [-]
-    motor, gearhead, drive : int
-        The set, by index into the catalogs. [-]
-    """
-    m, g, d = (np.array([index]) for index in (motor, gearhead, drive))
-    return replace(
-        case,
-        motor_parameters=case.motor_parameters.take(m),
-        gearhead_parameters=case.gearhead_parameters.take(g),
-        drive_parameters=case.drive_parameters.take(d),
-        motors=rows_of(case.motors, m),
-        gearheads=rows_of(case.gearheads, g),
-        drives=rows_of(case.drives, d),
-    )
 
 
 @dataclass(frozen=True)
@@ -92,7 +70,7 @@ class SetEvaluator:
 
     @classmethod
     def of(cls, case: Case, demand: Demand | None = None) -> SetEvaluator:
-        """Prepare a case of one set, as from `case_of_set`, perhaps with the demand of its one cycle."""
+        """Prepare a case of one set, as from `case_changes.single`, perhaps with the demand of its one cycle."""
         one = demand is not None and len(case.cycles) < 2
         cycles = (CycleDemand(case, demand),) if one and demand is not None else cycle_demands(case)
         inputs = spread_inputs(case)
@@ -175,7 +153,7 @@ class SetEvaluator:
     @cached_property
     def _sampler(self) -> Sampler | None:
         first = self.cycles[0]
-        can = len(self.cycles) == 1 and first.cycle.repeats and first.demand.heat_start is None
+        can = len(self.cycles) == 1 and first.cycle.repeats and first.demand.slices is None
         if not can or "duration" in {one.column.name for one in self.inputs.inputs}:
             return None
         return Sampler.of(self.case, first.demand)

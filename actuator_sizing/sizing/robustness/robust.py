@@ -11,7 +11,8 @@ from numpy.typing import NDArray
 from actuator_sizing.case.model import Case
 from actuator_sizing.core.proportion import SCORE_95
 from actuator_sizing.errors import InputError, Problem
-from actuator_sizing.sizing.robustness.evaluator import SetEvaluator, case_of_set
+from actuator_sizing.sizing.case_changes import single
+from actuator_sizing.sizing.robustness.evaluator import SetEvaluator
 from actuator_sizing.sizing.robustness.results import Robustness
 from actuator_sizing.sizing.robustness.study import (
     REPLICATES,
@@ -111,7 +112,7 @@ def robust(
     shortlist: list[dict[str, Any]] = []
     if probability is not None and comparison is not None:
         parts, shortlist = _first_that_passes(comparison, probability, samples, exact, seed, progress)
-    evaluator = SetEvaluator.of(case_of_set(case, *parts), demand)
+    evaluator = SetEvaluator.of(single(case, *parts), demand)
     sampling = _sampling(evaluator, samples, exact, sensitivity, seed, probability)
     return _study(evaluator, sampling, progress, shortlist, probability)
 
@@ -133,7 +134,7 @@ def robust_of_leading(comparison: Comparison) -> Robustness | None:
     if not case.tolerances or not comparison.sets:
         return None
     try:
-        evaluator = SetEvaluator.of(case_of_set(case, *_parts(comparison.best)), comparison.demand)
+        evaluator = SetEvaluator.of(single(case, *_parts(comparison.best)), comparison.demand)
     except InputError:
         return None  # wider than the value of this part: `robust` tells
     if not len(evaluator.inputs) or not evaluator.at_once.any():
@@ -192,7 +193,7 @@ def _first_that_passes(
     passing = [item for item in comparison.sets if item.verdict != FAILS][:_SHORTLIST]
     rows: list[dict[str, Any]] = []
     for place, item in enumerate(passing):
-        evaluator = SetEvaluator.of(case_of_set(comparison.case, *_parts(item)), comparison.demand)
+        evaluator = SetEvaluator.of(single(comparison.case, *_parts(item)), comparison.demand)
         sampling = _sampling(evaluator, samples, exact, 0, seed, wanted)
         values = draw(evaluator, sampling)
         # What fails checks that are judged at once needs no dear samples any more: the others only make it worse.

@@ -18,8 +18,7 @@ from actuator_sizing.core.parameters import (
     MotorParameters,
     Surroundings,
 )
-from actuator_sizing.core.phases import Phase
-from actuator_sizing.core.process_load import ProcessLoad
+from actuator_sizing.sizing.case_changes import restarted, stretched
 from actuator_sizing.sizing.robustness.inputs import SpreadInput, SpreadInputs
 
 FloatArray = NDArray[np.float64]
@@ -258,7 +257,7 @@ def _segments(segments: tuple[Segment, ...], changes: Mapping[str, Change]) -> t
     if not changes:
         return segments
     payload, process, duration = (changes.get(name) for name in ("payload", "process force", "duration"))
-    made, start = [], 0.0
+    made = []
     for segment in segments:
         new = segment
         if payload is not None:
@@ -269,31 +268,9 @@ def _segments(segments: tuple[Segment, ...], changes: Mapping[str, Change]) -> t
                 load = replace(load, efforts=tuple(float(process.of(e)[0]) for e in load.efforts))
             new = replace(new, process_effort=float(process.of(segment.process_effort)[0]), process=load)
         if duration is not None:
-            new = _stretched(new, float(duration.factor[0]))
-        made.append(replace(new, start_s=start))
-        start += new.duration_s
-    return tuple(made)
-
-
-def _stretched(segment: Segment, factor: float) -> Segment:
-    load = segment.process
-    if isinstance(load, ProcessLoad) and load.over == "time":
-        load = replace(load, knots=tuple(knot * factor for knot in load.knots))
-    return replace(
-        segment,
-        phases=tuple(_stretched_phase(phase, factor) for phase in segment.phases),
-        duration_s=segment.duration_s * factor,
-        process=load,
-    )
-
-
-def _stretched_phase(phase: Phase, factor: float) -> Phase:
-    return replace(
-        phase,
-        duration_s=phase.duration_s * factor,
-        polynomial=tuple(c / factor**k for k, c in enumerate(phase.polynomial)),
-        sine_frequency_rad_s=phase.sine_frequency_rad_s / factor,
-    )
+            new = stretched(new, float(duration.factor[0]))
+        made.append(new)
+    return restarted(tuple(made)) if duration is not None else tuple(made)
 
 
 __all__ = ["Change", "Samples", "rows_of", "samples_of"]
