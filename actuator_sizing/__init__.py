@@ -28,6 +28,7 @@ if TYPE_CHECKING:
     from actuator_sizing.sizing import compare
     from actuator_sizing.sizing.headroom import headroom
     from actuator_sizing.sizing.machine import compare_machine
+    from actuator_sizing.sizing.robustness.robust import robust
     from actuator_sizing.sizing.simulation import simulate
 
 __all__ = [
@@ -40,6 +41,7 @@ __all__ = [
     "headroom",
     "read_case",
     "read_results",
+    "robust",
     "simulate",
     "start_case",
 ]
@@ -55,6 +57,7 @@ _HOMES = {
     "headroom": "actuator_sizing.sizing.headroom",
     "read_case": "actuator_sizing.case.reading",
     "read_results": "actuator_sizing.report.revision",
+    "robust": "actuator_sizing.sizing.robustness.robust",
     "simulate": "actuator_sizing.sizing.simulation",
     "start_case": "actuator_sizing.case.starting",
 }

@@ -402,6 +402,78 @@ def headroom(
 
 @commands.command()
 @_case_argument("case")
+@click.option("--motor", metavar="NAME", help="Motor; without any part, the best set of 'compare'.")
+@click.option("--gearhead", metavar="NAME", help="Gearhead; without it, direct drive.")
+@click.option("--drive", metavar="NAME", help="Drive.")
+@click.option("--samples", type=click.IntRange(min=1), metavar="N", help="Samples; default 10000.")
+@click.option(
+    "--exact",
+    type=click.IntRange(min=1),
+    metavar="N",
+    help="How many of them go through the whole chain where a check needs it; default 1000, or 200 where each "
+    "takes tens of milliseconds.",
+)
+@click.option("--seed", type=click.IntRange(min=0), default=0, show_default=True, help="Of everything drawn.")
+@click.option(
+    "--probability",
+    type=float,
+    metavar="P",
+    help="Look for the first set of the ranking that passes with this probability, such as 0.99.",
+)
+@click.option(
+    "--out", type=click.Path(file_okay=False, path_type=Path), help="Write tables and figures here."
+)
+@click.option("--json", "as_json", is_flag=True, help="Print the whole study as JSON.")
+@_debug
+def robust(
+    case: Path,
+    motor: str | None,
+    gearhead: str | None,
+    drive: str | None,
+    samples: int | None,
+    exact: int | None,
+    seed: int,
+    probability: float | None,
+    out: Path | None,
+    as_json: bool,
+) -> int:
+    """Say how sure a set of CASE passes.
+
+    Draws the spreads that the table 'tolerances' states and prints the probability of passing each check and
+    all of them, with its interval, and which input drives it. The exit status is 0 when the probability that was
+    asked for is reached, else 1; without one, 0 when the set passes in more than half of the samples.
+    """
+    from actuator_sizing.case.reading import read_case
+    from actuator_sizing.console import ProgressBar
+    from actuator_sizing.robustness_console import print_robustness
+    from actuator_sizing.sizing.robustness.robust import SAMPLES
+    from actuator_sizing.sizing.robustness.robust import robust as robust_set
+
+    understood = read_case(case)
+    with ProgressBar() as progress:
+        study = robust_set(
+            understood,
+            motor=motor,
+            gearhead=gearhead,
+            drive=drive,
+            samples=SAMPLES if samples is None else samples,
+            exact=exact,
+            seed=seed,
+            probability=probability,
+            progress=progress,
+        )
+    written = study.write(out) if out is not None else ()
+    if as_json:
+        from actuator_sizing.report.robustness_files import render_robustness_json
+
+        click.echo(render_robustness_json(study).rstrip(b"\n"))
+    else:
+        print_robustness(study, written)
+    return PASSED if study.passes_with(0.5 if probability is None else probability) else NONE_PASSES
+
+
+@commands.command()
+@_case_argument("case")
 @click.argument("target", type=click.Path(path_type=Path))
 @click.option("--force", is_flag=True, help="Replace TARGET if it exists.")
 @_debug

@@ -167,7 +167,7 @@ def apply(at: Local, g_slow: Number, g_fast: Number, v1: Number, v2: Number) -> 
     )
 
 
-def coefficients(network: ThermalNetwork, loss: HeatLoss, ambient_degc: float) -> Coefficients:
+def coefficients(network: ThermalNetwork, loss: HeatLoss, ambient_degc: FloatArray | float) -> Coefficients:
     """Rates of every candidate as arrays of shape (B,)."""
     two = network.has_housing
     R_1, C_1 = network.winding_resistance_k_w, network.winding_capacity_j_k
@@ -175,7 +175,7 @@ def coefficients(network: ThermalNetwork, loss: HeatLoss, ambient_degc: float) -
     R_2 = np.where(two, network.housing_resistance_k_w, 1.0)
     rate = 1.0 / (R_1 * C_1)
     return Coefficients(
-        np.full(len(R_1), float(ambient_degc)),
+        np.array(np.broadcast_to(np.asarray(ambient_degc, dtype=float), R_1.shape)),
         1.0 / C_1,
         np.where(two, rate, 0.0),
         np.where(two, 0.0, rate),

@@ -147,7 +147,9 @@ class _Answer:
             self.columns[name][rows] = value
 
 
-def periodic_state(network: ThermalNetwork, loss: HeatLoss, ambient_degc: float) -> PeriodicState:
+def periodic_state(
+    network: ThermalNetwork, loss: HeatLoss, ambient_degc: FloatArray | float
+) -> PeriodicState:
     """Periodic steady state under a repeating cycle, or the finding that there is none.
 
     Parameters
@@ -156,7 +158,7 @@ def periodic_state(network: ThermalNetwork, loss: HeatLoss, ambient_degc: float)
         Thermal data, fields of shape (B,).
     loss : HeatLoss
         Losses, pieces on the last axis, shape (B, P); `subpiece_means` splits pieces whose loss varies.
-    ambient_degc : float
+    ambient_degc : float, or ndarray of shape (B,)
         Temperature of the surroundings. [°C]
 
     Returns
@@ -179,7 +181,8 @@ def periodic_state(network: ThermalNetwork, loss: HeatLoss, ambient_degc: float)
     rows = np.flatnonzero(known)
     with np.errstate(all="ignore"):  # candidates on their way to runaway overflow, and are dropped
         chosen = select_candidates(network, loss, rows)
-        k, steps = coefficients(*chosen, ambient_degc), sub_steps(*chosen)
+        ambient = np.broadcast_to(np.asarray(ambient_degc, dtype=float), known.shape)[rows]
+        k, steps = coefficients(*chosen, ambient), sub_steps(*chosen)
         if len(rows) > _FEW:
             _solve_many(answer, rows, k, steps)
         else:

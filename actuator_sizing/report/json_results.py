@@ -13,6 +13,7 @@ from actuator_sizing.report.document.inputs import part_entries
 from actuator_sizing.report.formatting import percent
 from actuator_sizing.report.headroom_text import headroom_text
 from actuator_sizing.report.lever_text import lever_text
+from actuator_sizing.report.robustness_files import robustness_dict
 from actuator_sizing.report.simulation_files import simulation_dict
 
 if TYPE_CHECKING:
@@ -36,7 +37,7 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
     dict
         Values in SI; None where not known or not finite.
     """
-    case, counts = comparison.case, comparison.rejections
+    case, counts, study = comparison.case, comparison.rejections, comparison.robustness
     best = comparison.sets[0] if comparison.sets else None
     entries = [*case.entries, *part_entries(comparison, best)]
     moved = comparison.governing.dynamics
@@ -73,7 +74,7 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
             {"part": part, "missing": missing, "check": check}
             for part, missing, check in comparison.questions
         ],
-    }
+    } | ({} if study is None else {"robustness": robustness_dict(study)})
 
 
 def _decisions(comparison: Comparison) -> dict[str, Any]:

@@ -42,7 +42,7 @@ def simulation_dict(simulation: Simulation) -> dict[str, Any]:
         "moves": simulation.moves.to_dict("records"),
         "notes": list(simulation.notes),
     }
-    known: dict[str, Any] = _known(answer)
+    known: dict[str, Any] = known_values(answer)
     return known
 
 
@@ -94,12 +94,12 @@ def write_simulation(simulation: Simulation, folder: str | Path) -> tuple[Path, 
     return replace_folder_files(folder, files)
 
 
-def _known(value: Any) -> Any:
-    """Replace what JSON cannot say: NaN and infinity become null."""
+def known_values(value: Any) -> Any:
+    """Replace what JSON cannot say: NaN and infinity become null, numbers of numpy plain ones."""
     if isinstance(value, dict):
-        return {key: _known(entry) for key, entry in value.items()}
+        return {key: known_values(entry) for key, entry in value.items()}
     if isinstance(value, list | tuple):
-        return [_known(entry) for entry in value]
+        return [known_values(entry) for entry in value]
     if hasattr(value, "item"):
         value = value.item()
     if isinstance(value, float) and not math.isfinite(value):

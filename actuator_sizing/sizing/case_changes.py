@@ -113,7 +113,7 @@ def restarted(segments: tuple[Segment, ...]) -> tuple[Segment, ...]:
     return tuple(made)
 
 
-def _stretched(segment: Segment, factor: float) -> Segment:
+def stretched(segment: Segment, factor: float) -> Segment:
     """A segment that takes `factor` times as long; a process load over time goes along."""
     process = segment.process
     if process is not None and process.over == TIME:
@@ -140,14 +140,14 @@ def with_times(case: Case, factor: float, segments: Collection[int]) -> Case:
     Case
         Changed; the other segments follow at once. [-]
     """
-    made = (_stretched(s, factor) if i in segments else s for i, s in enumerate(case.segments))
+    made = (stretched(s, factor) if i in segments else s for i, s in enumerate(case.segments))
     return replace(case, segments=restarted(tuple(made)))
 
 
 def _where(case: Case, factor: float, chosen: Callable[[Segment], bool]) -> Case:
     """The segments that are chosen, of every cycle, last `factor` times as long."""
     return case.with_segments(
-        lambda segments: restarted(tuple(_stretched(s, factor) if chosen(s) else s for s in segments))
+        lambda segments: restarted(tuple(stretched(s, factor) if chosen(s) else s for s in segments))
     )
 
 

@@ -11,6 +11,7 @@ if TYPE_CHECKING:
     import pandas as pd
 
     from actuator_sizing.sizing.results import CheckResult, Comparison, SetResult
+    from actuator_sizing.sizing.robustness.results import Robustness
 
 _SHOWN = 12
 
@@ -83,3 +84,16 @@ def comparison_html(comparison: Comparison) -> str:
         f"<p><b>{escape(comparison.case.name)}</b>, ranked by {escape(comparison.ranked_by)}: "
         f"{counts.confirmed_passing} of {counts.sets_total} sets pass, {counts.rejected} rejected</p>{table}"
     )
+
+
+def robustness_html(study: Robustness) -> str:
+    """Probabilities of one set: all checks together, then each of them."""
+    found = study.probability
+    head = (
+        f"<p><b>{escape(study.label)}</b> passes every check in {found['probability']:.4g} of {found['samples']} "
+        f"samples (95 % interval {found['probability_low']:.4g} to {found['probability_high']:.4g})</p>"
+    )
+    names = ["title", "nominal_utilisation", "utilisation_q95", "allowed_utilisation", "probability",
+             "probability_low", "probability_high", "samples"]  # fmt: skip
+    table = study.checks.set_index("check")[names]
+    return head + str(table.to_html(escape=True, float_format="{:.4g}".format, na_rep="not known"))

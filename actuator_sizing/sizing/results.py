@@ -18,6 +18,7 @@ if TYPE_CHECKING:
     from actuator_sizing.sizing.headroom import Headroom
     from actuator_sizing.sizing.levers import LeverStudy
     from actuator_sizing.sizing.ratio_results import RatioWindows
+    from actuator_sizing.sizing.robustness.results import Robustness
     from actuator_sizing.sizing.simulation_results import Simulation
     from actuator_sizing.sizing.stop_courses import StopCourses
     from actuator_sizing.sizing.trade_offs import TradeOffs
@@ -304,6 +305,13 @@ class Comparison:
         """The leading set simulated over its cycle; None where its loops cannot be made stable."""
         detail = self.sets[0].detail if self.sets else None
         return None if detail is None or detail.simulation is None else detail.simulation()
+
+    @cached_property
+    def robustness(self) -> Robustness | None:
+        """How sure the leading set passes, at bounded cost; None where the case states no spread."""
+        from actuator_sizing.sizing.robustness.robust import robust_of_leading
+
+        return robust_of_leading(self)
 
     def ratio_windows(self) -> RatioWindows:
         """Ratio windows of every motor that fits the axis, worked out now unless the report has them already.

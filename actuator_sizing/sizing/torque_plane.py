@@ -60,7 +60,7 @@ def _largest_of_branch(
     branch: int, demand: Demand, demanded: FloatArray, omega: FloatArray, judged: JudgedMotor
 ) -> dict[str, FloatArray]:
     batch, _, nodes = demanded.shape
-    ratio, capacity = _ratio(branch, demanded, omega, judged, np.arange(batch)[:, None, None])
+    ratio, capacity = plane_ratio(branch, demanded, omega, judged, np.arange(batch)[:, None, None])
     first = ratio.reshape(batch, -1).argmax(axis=1)
     piece, node = np.divmod(first, nodes)
     rows = np.arange(batch)
@@ -71,7 +71,7 @@ def _largest_of_branch(
     top_torque, top_speed = (
         s[..., 0] + np.abs(s[..., 1:]).sum(axis=2) for s in (torque_series, speed_series)
     )
-    _, at_top = _ratio(branch, top_torque, top_speed, judged, rows[:, None])
+    _, at_top = plane_ratio(branch, top_torque, top_speed, judged, rows[:, None])
     floor = 0.98 * np.minimum(capacity.min(axis=2), at_top)
     open_ = np.isfinite(best)  # beyond reach at a node already: nothing is worse
     row, column = np.nonzero((top_torque > np.where(open_, best, 0.0)[:, None] * floor) & open_[:, None])
@@ -81,7 +81,7 @@ def _largest_of_branch(
         x = low[:, None] + (high - low)[:, None] * np.linspace(0.0, 1.0, _POINTS)
         basis = legendre.legvander(x, nodes - 1)
         T, w = (np.einsum("ndk,nk->nd", basis, s[row, column]) for s in (torque_series, speed_series))
-        value, _ = _ratio(branch, T, np.abs(w), judged, row[:, None])
+        value, _ = plane_ratio(branch, T, np.abs(w), judged, row[:, None])
         top = value.argmax(axis=1)
         low, high = (x[np.arange(len(row)), np.clip(top + k, 0, _POINTS - 1)] for k in (-1, 1))
     if len(row):
@@ -102,7 +102,7 @@ def _largest_of_branch(
     }
 
 
-def _ratio(
+def plane_ratio(
     branch: int, demanded: FloatArray, omega: FloatArray, judged: JudgedMotor, row: NDArray[np.intp]
 ) -> tuple[FloatArray, FloatArray]:
     """Ratio and capacity at points whose motor is `row` (broadcast); infinite where the torque is out of reach."""

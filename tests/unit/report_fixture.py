@@ -390,6 +390,7 @@ def build_case(name: str = "tray_lift", title: str = "Tray lift") -> SimpleNames
                     "Check whether the sheet gives µH.", WARNING),
             Problem("axis", 9, "colour", "blue", "", "The column is not known and was not used.", NOTE),
         ),
+        tolerances=(),
         fingerprint="9c6f2b1d" * 8,
         cycle_duration_s=2.0 * (MOVE + DWELL),
         catalog_entries=lambda table, index: parts[table],

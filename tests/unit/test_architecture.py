@@ -17,8 +17,8 @@ LAYERS = {
     "version": 0, "errors": 0, "files": 0, "units": 0, "core": 1, "case": 2, "sizing": 3, "report": 4,
 }  # fmt: skip
 TOP = {
-    "cli": 5, "console": 5, "simulation_console": 5, "headroom_console": 5, "machine_console": 5, "workbench": 5,
-    "__main__": 6,
+    "cli": 5, "console": 5, "simulation_console": 5, "headroom_console": 5, "machine_console": 5,
+    "robustness_console": 5, "workbench": 5, "__main__": 6,
 }  # fmt: skip
 
 # Upward arrows that are wanted: a convenience method that calls a writer, imported when it is called.
@@ -26,6 +26,8 @@ ALLOWED_UPWARD = {
     ("actuator_sizing.sizing.results", "actuator_sizing.report"),
     ("actuator_sizing.sizing.simulation_results", "actuator_sizing.report.figures.dynamics"),
     ("actuator_sizing.sizing.simulation_results", "actuator_sizing.report.simulation_files"),
+    ("actuator_sizing.sizing.robustness.results", "actuator_sizing.report.figures.robustness"),
+    ("actuator_sizing.sizing.robustness.results", "actuator_sizing.report.robustness_files"),
 }
 
 # The core knows numbers, not files, tables or clocks.

@@ -24,6 +24,7 @@ from actuator_sizing.report.document.inertias import inertias_section
 from actuator_sizing.report.document.inputs import assumptions_section, inputs_section
 from actuator_sizing.report.document.levers import levers_section
 from actuator_sizing.report.document.power import power_section
+from actuator_sizing.report.document.robustness import robustness_section
 from actuator_sizing.report.document.stopping import stopping_section
 from actuator_sizing.report.document.verdict import cover_facts, verdict_section, verdict_sentence
 from actuator_sizing.report.text import clean, option
@@ -81,6 +82,9 @@ def prepare_document(
         moving = dynamics_section(shown, drawn)
         if moving is not None:
             sections.append(moving)
+    sure = robustness_section(comparison, drawn)
+    if sure is not None:
+        sections.append(sure)
     if comparison.inertias:
         sections.append(inertias_section(comparison))
     sections += [inputs_section(comparison), assumptions_section(comparison), not_checked_section(comparison)]

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import partial
 from typing import TYPE_CHECKING
 
 from actuator_sizing.report.curves import leading_detail
@@ -19,6 +20,12 @@ from actuator_sizing.report.figures.over_time import draw_causes, draw_current, 
 from actuator_sizing.report.figures.payload_map import draw_payload_map
 from actuator_sizing.report.figures.power import draw_bus, draw_energy_flow
 from actuator_sizing.report.figures.ratio_windows import draw_ratio_windows
+from actuator_sizing.report.figures.robustness import (
+    ROBUSTNESS_FIGURES,
+    draw_probability,
+    draw_sensitivity,
+    draw_swings,
+)
 from actuator_sizing.report.figures.speed_torque import draw_speed_torque
 from actuator_sizing.report.figures.step import draw_step_response
 from actuator_sizing.report.figures.stopping import draw_stops
@@ -49,7 +56,7 @@ FIGURES = (
     "cycles",
 )
 #: Keys of figures that only some cases ask for, or an option of the comparison.
-OPTIONAL_FIGURES = ("stops", "trade_offs", "ratio_windows", "payload_map")
+OPTIONAL_FIGURES = ("stops", "trade_offs", "ratio_windows", "payload_map", *ROBUSTNESS_FIGURES)
 
 
 @dataclass(frozen=True)
@@ -133,6 +140,7 @@ def _figures_of(comparison: Comparison) -> dict[str, Callable[[], Figure | None]
         "step_response": lambda: draw_step_response(best, detail, units),
         **_stop_figures(comparison, detail, units),
         **_dynamic_figures(comparison),
+        **_robustness_figures(comparison),
     } | figures
 
 
@@ -175,3 +183,12 @@ def _dynamic_figures(comparison: Comparison) -> dict[str, Callable[[], Figure | 
         "loop_steps": lambda: draw_loop_steps(simulation),
         "bode": lambda: draw_bode(simulation),
     }
+
+
+def _robustness_figures(comparison: Comparison) -> dict[str, Callable[[], Figure | None]]:
+    """How sure the leading set passes."""
+    study = comparison.robustness
+    if study is None:
+        return {}
+    draws = (draw_probability, draw_swings, draw_sensitivity)
+    return {key: partial(draw, study) for key, draw in zip(ROBUSTNESS_FIGURES, draws, strict=True)}

@@ -19,6 +19,7 @@ from actuator_sizing.report.workbook.decision_sheets import (
 from actuator_sizing.report.workbook.dynamics_sheet import add_dynamics
 from actuator_sizing.report.workbook.power_sheets import add_bus, add_energy
 from actuator_sizing.report.workbook.results_sheets import add_candidates, add_checks, add_summary
+from actuator_sizing.report.workbook.robustness import add_robustness
 from actuator_sizing.report.workbook.writer import Sheets
 
 if TYPE_CHECKING:
@@ -76,6 +77,8 @@ def render_workbook(comparison: Comparison, day: date, rows_in_file: int | None 
         add_energy(sheets, comparison)
         add_bus(sheets, comparison)
         add_dynamics(sheets, comparison)
+        if comparison.robustness is not None:
+            add_robustness(sheets, comparison.robustness)
         add_inertias(sheets, comparison)
         add_parts(sheets, comparison)
         add_inputs(sheets, comparison)

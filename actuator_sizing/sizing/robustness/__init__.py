@@ -1,0 +1,1 @@
+"""How sure a set passes: spread inputs, samples of it, probabilities, sensitivities and corners."""
