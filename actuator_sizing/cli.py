@@ -301,6 +301,7 @@ def machine(
     metavar="HZ",
     help="Sampling rate; default: the drive's control rate.",
 )
+@click.option("--winding", type=float, metavar="°C", help="Winding temperature; default: as the case judges.")
 @click.option("--cycles", type=click.IntRange(min=1), default=1, metavar="N", help="How many cycles to run.")
 @click.option(
     "--out", type=click.Path(file_okay=False, path_type=Path), help="Write tables and figures here."
@@ -316,6 +317,7 @@ def simulate(
     changes: tuple[str, ...],
     cycle: str,
     rate: float | None,
+    winding: float | None,
     cycles: int,
     out: Path | None,
     as_json: bool,
@@ -342,6 +344,7 @@ def simulate(
         input=input_,
         settings=parse_settings(changes),
         rate_hz=math.nan if rate is None else rate,
+        winding_degc=math.nan if winding is None else winding,
         cycles=cycles,
         cycle=cycle,
     )

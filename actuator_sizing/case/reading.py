@@ -45,9 +45,7 @@ def read_case(path: str | Path) -> Case:
     return replace(case, problems=tuple(dict.fromkeys((*case.problems, *audit_catalogs(case)))))
 
 
-def check_case(
-    path: str | Path, *, with_partners: bool = True
-) -> tuple[Case | None, tuple[Problem, ...]]:
+def check_case(path: str | Path, *, with_partners: bool = True) -> tuple[Case | None, tuple[Problem, ...]]:
     """Read a case and give it with every problem, warning and note; does not raise for wrong input.
 
     Parameters

@@ -133,7 +133,7 @@ def _set_in_cycle(each: CycleOfSet) -> dict[str, Any]:
         "verdict": each.verdict,
         "governing_check": each.governing_check,
         "quantities": plain(each.quantities),
-        "utilisations": {check.check: plain(check.utilisation) for check in each.checks},
+        "utilisations": plain(each.utilisations),
     }
 
 

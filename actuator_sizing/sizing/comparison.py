@@ -382,7 +382,7 @@ def _set_result(
     parts = (sets.motors, sets.gearheads, sets.drives)
     price, mass = (float(sum(getattr(part, name)[i] for part in parts)) for name in ("price", "mass_kg"))
     is_direct = bool(sets.gearheads.is_direct[i])
-    own = cycles_of_set(models, several, i, verdicts.checks, verdicts.limits, with_curves=with_curves)
+    own = cycles_of_set(models, several, i, verdicts, with_curves=with_curves)
     return SetResult(
         rank=rank,
         motor=case.motors.names[motor],

@@ -21,7 +21,6 @@ from actuator_sizing.case.recording import Recording
 from actuator_sizing.core.condensing import condense
 from actuator_sizing.core.quadrature import lobatto
 from actuator_sizing.core.record_slices import SliceSums
-from actuator_sizing.core.transmission import BACK_DRIVING
 from actuator_sizing.sizing.measured_demand import (
     NODES,
     CutStretches,
@@ -150,9 +149,9 @@ def _in_time(rows: FloatArray, period: float) -> dict[str, Any]:
 
 
 def _in_blocks(rows: FloatArray, period: float) -> dict[str, Any]:
-    """Constant pieces in the order of blocks; within a block, what the load gives back comes last."""
-    torque = np.abs(rows[:, _FIRST_FIELD + _FIELDS.index("shaft_torque")])
-    rows = rows[np.lexsort((torque, rows[:, 3] // 3 == BACK_DRIVING, rows[:, 2]))]
+    """Constant pieces in the order of blocks; within a block by falling power: what the load gives comes last."""
+    torque, speed = (rows[:, _FIRST_FIELD + _FIELDS.index(name)] for name in ("shaft_torque", "shaft_speed"))
+    rows = rows[np.lexsort((-torque * speed, rows[:, 2]))]
     # An extreme lasts next to nothing here: its share of the means is in the condensed instants already.
     duration = np.maximum(rows[:, 0], 1e-12 * period)
     return _constant_pieces(rows, duration * (period / duration.sum()))

@@ -5,13 +5,12 @@ from __future__ import annotations
 from dataclasses import replace
 from functools import cache, partial
 
-from actuator_sizing.case.model import Limit
-from actuator_sizing.sizing.checks import Check, Sets
+from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.cycles import CycleDemand
 from actuator_sizing.sizing.demand import cycle_quantities
 from actuator_sizing.sizing.detail import set_detail
-from actuator_sizing.sizing.judging import ORDER, check_results, judge_sets
-from actuator_sizing.sizing.quantities import commissioning_quantities, quantities
+from actuator_sizing.sizing.judging import NOT_APPLICABLE, ORDER, Verdicts, check_results
+from actuator_sizing.sizing.quantities import commissioning_quantities, pair_quantities, quantities
 from actuator_sizing.sizing.results import CycleOfSet, CycleResult, SetDetail
 from actuator_sizing.sizing.set_model import SetModel
 from actuator_sizing.sizing.simulation import simulate_prepared
@@ -39,8 +38,7 @@ def cycles_of_set(
     models: tuple[SetModel, ...],
     several: tuple[Sets, ...],
     index: int,
-    checks: tuple[Check, ...],
-    limits: tuple[Limit, ...],
+    verdicts: Verdicts,
     *,
     with_curves: bool,
 ) -> tuple[CycleOfSet, ...]:
@@ -54,33 +52,41 @@ def cycles_of_set(
         Evaluated sets, once for each cycle. [-]
     index : int
         Which of them it is. [-]
-    checks, limits : tuple
-        Active checks and their limits. [-]
+    verdicts : Verdicts
+        Their verdicts. [-]
     with_curves : bool
-        Whether the curves are wanted too. [-]
+        Whether checks and curves are wanted too, as for the leading set. [-]
 
     Returns
     -------
     tuple of CycleOfSet
         Empty where there is only one cycle. [-]
     """
-    if len(several) < 2:
-        return ()
     found = []
-    for model, sets in zip(models, several, strict=True):
-        one = sets.only(index)
-        alone = judge_sets(one, checks, limits)
-        numbers = quantities(model, one, 0)
-        if with_curves:
+    for number, alone in enumerate(verdicts.alone):
+        model, sets = models[number], several[number]
+        if with_curves or number == 0:
+            numbers = quantities(model, sets, index)
+        else:  # what no study is needed for
+            numbers = pair_quantities(sets, index)
+        if with_curves and number == 0:
             numbers |= commissioning_quantities(model)
+        used = zip(
+            verdicts.checks, alone.utilisation[index].tolist(), alone.codes[index].tolist(), strict=True
+        )
         found.append(
             CycleOfSet(
                 name=sets.case.cycle.name,
-                verdict=ORDER[int(alone.verdict[0])],
-                governing_check=checks[int(alone.governing[0])].key,
-                checks=check_results(one, alone, 0),
+                verdict=ORDER[int(alone.verdict[index])],
+                governing_check=verdicts.checks[int(alone.governing[index])].key,
+                utilisations={
+                    check.key: None if use != use else use
+                    for check, use, code in used
+                    if code != NOT_APPLICABLE
+                },
                 quantities=numbers,
-                detail=curves(model, one, 0) if with_curves else None,
+                checks=check_results(sets, alone, index) if with_curves else None,
+                detail=curves(model, sets, index) if with_curves else None,
             )
         )
     return tuple(found)

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -20,6 +20,9 @@ ORDER = (PASSES, LOW_RESERVE, NOT_CHECKED, FAILS)
 _PASSES, _LOW, _UNKNOWN, _FAILS = range(4)
 NOT_APPLICABLE = -1
 
+#: Utilisation, code, nearness to the limit and whether it binds, each (S, C).
+_Held = tuple[FloatArray, NDArray[np.int8], FloatArray, NDArray[np.bool_]]
+
 
 @dataclass(frozen=True)
 class Verdicts:
@@ -34,6 +37,7 @@ class Verdicts:
     severity: FloatArray  # (S,) utilisation over allowed of the governing check
     binds: NDArray[np.bool_]  # (S, C) whether the set can fail the check, or is only advised by it
     cycle: NDArray[np.intp]  # (S, C) cycle in which each check is nearest to its limit
+    alone: tuple[Verdicts, ...] = ()  # in each of several cycles, as if there were no other
 
 
 def active_checks(limits: Mapping[str, Limit]) -> tuple[tuple[Check, ...], tuple[Limit, ...]]:
@@ -81,6 +85,18 @@ def judge_sets(
         relative = np.where(worse, other_relative, relative)
         codes = np.where(worse, other_codes, codes)
         cycle[worse] = number
+    found = _verdicts(checks, limits, (utilisation, codes, relative.copy(), binds), cycle)
+    if len(held) < 2:
+        return found
+    here = np.zeros_like(cycle)
+    return replace(found, alone=tuple(_verdicts(checks, limits, each, here) for each in held))
+
+
+def _verdicts(
+    checks: tuple[Check, ...], limits: tuple[Limit, ...], held: _Held, cycle: NDArray[np.intp]
+) -> Verdicts:
+    """Verdict and governing check of each set from what its checks say."""
+    utilisation, codes, relative, binds = held
     _let_numbers_govern(relative, codes, checks)
     verdict = np.max(np.where(binds, codes, _PASSES), axis=1, initial=_PASSES).astype(np.int8)
     unjudged = ~np.any(binds & (codes != NOT_APPLICABLE), axis=1)
@@ -99,9 +115,7 @@ def judge_sets(
     )
 
 
-def _held(
-    sets: Sets, checks: tuple[Check, ...], limits: tuple[Limit, ...]
-) -> tuple[FloatArray, NDArray[np.int8], FloatArray, NDArray[np.bool_]]:
+def _held(sets: Sets, checks: tuple[Check, ...], limits: tuple[Limit, ...]) -> _Held:
     """Utilisation, code, nearness to the limit and whether it binds, of S sets in one cycle, each (S, C)."""
     count = len(sets)
     utilisation = np.full((count, len(checks)), np.nan)

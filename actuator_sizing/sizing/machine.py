@@ -6,11 +6,12 @@ from collections import Counter
 from collections.abc import Callable, Sequence
 from concurrent.futures import Executor
 from dataclasses import dataclass
+from functools import cached_property
 from typing import TYPE_CHECKING, Any
 
 from actuator_sizing.errors import InputError, Problem
 from actuator_sizing.sizing.comparison import compare
-from actuator_sizing.sizing.machine_bus import CommonBus, common_buses
+from actuator_sizing.sizing.machine_bus import AxisPower, CommonBus, axis_power, common_buses
 from actuator_sizing.sizing.machine_motors import MotorTypes, motor_types
 from actuator_sizing.version import __version__
 
@@ -39,14 +40,14 @@ class MachineAxis:
         return self.comparison.passes
 
     @property
-    def cycle_s(self) -> float:
-        """Duration of its cycle. [s]"""
-        return self.comparison.demand.cycle_s
+    def cycle_s(self) -> float | None:
+        """Duration of its cycle; None where it has several. [s]"""
+        return None if self.comparison.cycles else self.comparison.demand.cycle_s
 
-    def quantity(self, name: str) -> float | None:
-        """A quantity of the leading set in SI; None where not known."""
-        value: Any = self.best.quantities.get(name)
-        return float(value) if isinstance(value, int | float) else None
+    @cached_property
+    def power(self) -> AxisPower | None:
+        """Power of the leading set at the bus; None where not known."""
+        return axis_power(self.comparison)
 
 
 @dataclass(frozen=True)
@@ -87,11 +88,7 @@ class Machine:
     @property
     def energy_per_hour_j(self) -> float | None:
         """Energy that the leading sets take from their buses in an hour, nothing that comes back counted off. [J]"""
-        energies = (axis.quantity("energy_bus_motoring_j") for axis in self.axes)
-        return _total(
-            None if energy is None else energy / axis.cycle_s * 3600.0
-            for energy, axis in zip(energies, self.axes, strict=True)
-        )
+        return _total(None if axis.power is None else axis.power.taken_w * 3600.0 for axis in self.axes)
 
 
 def _total(values: Any) -> float | None:

@@ -39,7 +39,8 @@ class CommonBus:
     power_peak_most_w: float | None
     #: sum of what the axes give back at most, in the same sense
     power_returned_most_w: float | None
-    #: largest and smallest summed power where all cycles start together; None unless their lengths fit together
+    #: largest and smallest summed power where all cycles start together; None where an axis has several cycles, or
+    #: their lengths do not go into one another
     power_peak_together_w: float | None
     power_returned_together_w: float | None
     peak_together_at_s: float | None
@@ -77,54 +78,73 @@ def common_buses(names: Sequence[str], comparisons: Sequence[Comparison]) -> tup
     )
 
 
+@dataclass(frozen=True)
+class AxisPower:
+    """Power of the leading set of one axis at the bus."""
+
+    #: means over the mix of the cycles; where they have no shares, of the cycle that takes most
+    taken_w: float  # stand-by power included
+    returned_w: float
+    courses: tuple[tuple[FloatArray, FloatArray], ...]  # instants and power over each cycle
+
+
+def axis_power(comparison: Comparison) -> AxisPower | None:
+    """Power of the leading set at the bus; None where the efficiency of its drive is not known. [-]"""
+    best = comparison.best
+    efficiency = float(comparison.case.drive_parameters.efficiency[best.drive_index])
+    runs: Sequence[Any] = best.cycles or (best,)
+    if np.isnan(efficiency) or any(run.quantities.get("energy_bus_motoring_j") is None for run in runs):
+        return None
+    steady = float(best.quantities.get("bus_steady_power_w") or 0.0)
+    courses = []
+    for run in runs:
+        if run.detail is None:
+            return None
+        cycle = run.detail.cycle
+        power = cycle["motor_torque_nm"] * cycle["motor_speed_rad_s"]
+        power += run.quantities["resistance_ohm"] * cycle["current_a"] ** 2
+        at_bus = bus_energy(power.to_numpy()[None, :], np.array([efficiency]))[0] + steady
+        courses.append((cycle["time_s"].to_numpy(), at_bus))
+    if best.mix is not None:
+        taken = best.mix["energy_terminals_motoring_per_hour_j"] / efficiency / 3600.0
+        returned = best.mix["energy_terminals_regenerated_per_hour_j"] * efficiency / 3600.0
+        return AxisPower(taken + steady, returned, tuple(courses))
+    spans = [each.demand.cycle_s for each in comparison.cycles] or [comparison.demand.cycle_s]
+    taken, returned = max(
+        (run.quantities["energy_bus_motoring_j"] / span, run.quantities["energy_bus_regenerated_j"] / span)
+        for run, span in zip(runs, spans, strict=True)
+    )
+    return AxisPower(taken + steady, returned, tuple(courses))
+
+
 def _bus(voltage: float, names: Sequence[str], comparisons: Sequence[Comparison]) -> CommonBus:
-    courses = [_power(comparison) for comparison in comparisons]
-    unknown = tuple(name for name, course in zip(names, courses, strict=True) if course is None)
+    powers = [axis_power(comparison) for comparison in comparisons]
+    unknown = tuple(name for name, power in zip(names, powers, strict=True) if power is None)
     if unknown:
         return CommonBus(voltage, tuple(names), unknown, *(None,) * 8)
-    known = [course for course in courses if course is not None]
-    taken, returned = (
-        [
-            comparison.best.quantities[f"energy_bus_{way}_j"] / comparison.demand.cycle_s
-            for comparison in comparisons
-        ]
-        for way in ("motoring", "regenerated")
-    )
-    together = _together(names, known)
+    known = [power for power in powers if power is not None]
+    single = all(len(power.courses) == 1 for power in known)
+    together = _together(names, [power.courses[0] for power in known]) if single else None
     highest = lowest = at = None
     if together is not None:
-        power = together["power_w"].to_numpy()
-        highest, lowest = float(power.max()), float(max(-power.min(), 0.0))
-        at = float(together["time_s"].iloc[int(power.argmax())])
+        summed = together["power_w"].to_numpy()
+        highest, lowest = float(summed.max()), float(max(-summed.min(), 0.0))
+        at = float(together["time_s"].iloc[int(summed.argmax())])
+    taken, returned = sum(power.taken_w for power in known), sum(power.returned_w for power in known)
+    extremes = [np.concatenate([course for _, course in power.courses]) for power in known]
     return CommonBus(
         bus_nominal_v=voltage,
         axes=tuple(names),
         unknown=(),
-        power_mean_most_w=float(sum(taken)),
-        power_mean_least_w=float(sum(taken) - sum(returned)),
-        power_peak_most_w=float(sum(max(power.max(), 0.0) for _, power in known)),
-        power_returned_most_w=float(sum(max(-power.min(), 0.0) for _, power in known)),
+        power_mean_most_w=float(taken),
+        power_mean_least_w=float(taken - returned),
+        power_peak_most_w=float(sum(max(power.max(), 0.0) for power in extremes)),
+        power_returned_most_w=float(sum(max(-power.min(), 0.0) for power in extremes)),
         power_peak_together_w=highest,
         power_returned_together_w=lowest,
         peak_together_at_s=at,
         together=together,
     )
-
-
-def _power(comparison: Comparison) -> tuple[FloatArray, FloatArray] | None:
-    """Instants and power at the bus of the leading set over one cycle; None where it is not known."""
-    best = comparison.best
-    resistance: Any = best.quantities.get("resistance_ohm")
-    efficiency = float(comparison.case.drive_parameters.efficiency[best.drive_index])
-    unknown = (
-        resistance is None or np.isnan(efficiency) or best.quantities.get("energy_bus_motoring_j") is None
-    )
-    if best.detail is None or unknown:
-        return None
-    cycle = best.detail.cycle
-    terminals = cycle["motor_torque_nm"] * cycle["motor_speed_rad_s"] + resistance * cycle["current_a"] ** 2
-    power = bus_energy(terminals.to_numpy()[None, :], np.array([efficiency]))[0]
-    return cycle["time_s"].to_numpy(), power
 
 
 def _together(names: Sequence[str], courses: Sequence[tuple[FloatArray, FloatArray]]) -> pd.DataFrame | None:

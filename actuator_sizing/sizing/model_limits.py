@@ -87,8 +87,8 @@ def model_statements(case: Case, best: SetResult) -> tuple[tuple[str, str], ...]
         ("model: minimum bus", f"voltage and speed–torque limits are judged at {s.bus_min_v:g} V"),
         (
             "model: standstill",
-            "holding is taken without help from friction, its heat spread over all phases; with the brake "
-            "closed no current flows",
+            "holding is taken without help from friction, its heat spread over all phases but in the check of "
+            "the hottest phase; with the brake closed no current flows",
         ),
         ("model: cycle", _cycles(case)),
         (

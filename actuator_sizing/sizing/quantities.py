@@ -55,8 +55,7 @@ def quantities(model: SetModel, sets: Sets, index: int) -> dict[str, Any]:
     dict
         Names carry their unit; currents are in the basis given by ``current_basis``. [-]
     """
-    p = sets.pairs
-    answer: dict[str, Any] = {name: _known(getattr(p, name)[index]) for name in _FROM_PAIRS}
+    answer = pair_quantities(sets, index)
     answer["current_basis"] = CURRENT_BASES[int(model.motor.current_basis[0])]
     answer["speed_torque_margin"] = _margin(sets, index)
     answer.update(_bus_energies(model, answer))
@@ -79,6 +78,11 @@ def _insulation_life(model: SetModel, winding_max_degc: float | None) -> float |
     if winding_max_degc is None:
         return None
     return _known(insulation_life_factor(winding_max_degc, float(model.motor.winding_limit_degc[0])))
+
+
+def pair_quantities(sets: Sets, index: int) -> dict[str, Any]:
+    """Those quantities of one set that its evaluation has found: of motor and gearhead, without the drive."""
+    return {name: _known(getattr(sets.pairs, name)[index]) for name in _FROM_PAIRS}
 
 
 def _known(value: Any) -> float | None:

@@ -141,8 +141,11 @@ class CycleOfSet:
     name: str
     verdict: str
     governing_check: str
-    checks: Checks
-    quantities: Mapping[str, Any]
+    utilisations: Mapping[str, float | None]  # by key of the check, None where not checked
+    quantities: Mapping[
+        str, Any
+    ]  # of the leading set, and in the first cycle, all; else those of motor and gearhead
+    checks: Checks | None = None  # of the leading set
     detail: SetDetail | None = None  # of the leading set
 
 
@@ -273,7 +276,7 @@ class Comparison:
                         best,
                         verdict=own.verdict,
                         governing_check=own.governing_check,
-                        checks=own.checks,
+                        checks=own.checks or best.checks,
                         quantities=own.quantities,
                         detail=own.detail,
                         cycles=(),

@@ -210,6 +210,10 @@ def simulate_set(
         run = run_stop(axis, tuning.settings)
     else:
         run = run_file(input_, plant, axis, MOST_SAMPLES)
+    answers = dict(run.quantities)
+    stated = [value for value in bands.values() if not math.isnan(value)]
+    if stated and answers.get("encoder_step_at_load", 0.0) > 0.0:
+        answers["encoder_step_over_band_ratio"] = answers["encoder_step_at_load"] / min(stated)
     linear = LinearCascade(plant, tuning.settings)
     analysis = loop_analysis(linear)
     gearhead = case.gearheads.names[parts[1]]
@@ -224,7 +228,7 @@ def simulate_set(
         limited_by=tuning.limited_by,
         step_s=tuning.settings.sample_time_s,
         series=run.series,
-        quantities={**_plant_quantities(plant, tuning, axis), **analysis.quantities, **run.quantities},
+        quantities={**_plant_quantities(plant, tuning, axis), **analysis.quantities, **answers},
         moves=run.moves,
         steps=analysis.steps,
         frequency=analysis.frequency,

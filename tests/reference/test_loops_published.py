@@ -27,6 +27,7 @@ def step_of(numerator, denominator, duration, step):
     return np.arange(count) * step, states @ num[::-1]
 
 
+@pytest.mark.published("A7.2")
 def test_absolute_optimum():
     """4.3 % overshoot (M, D; W. Leonhard, Control of Electrical Drives): e^-pi, peak at 2 pi T, 65.53 deg."""
     T = 1e-3
@@ -39,6 +40,7 @@ def test_absolute_optimum():
     assert math.isinf(loop.gain_margin_ratio)
 
 
+@pytest.mark.published("A7.3")
 def test_symmetrical_optimum():
     """43.4 %, 8.1 % with prefilter, 36.87 deg (M, D; the same book)."""
     T = 1e-3
@@ -51,6 +53,7 @@ def test_symmetrical_optimum():
     assert math.degrees(loop.phase_margin_rad) == pytest.approx(36.8699, abs=1e-4)
 
 
+@pytest.mark.published("A7.3")
 def test_symmetrical_optimum_settings_give_that_loop():
     """Our gains put into ``K_p (1 + 1/(s T_i)) K/(s J)/(1 + s T)`` give the loop above (D)."""
     J, K, T = 3e-3, 0.6, 2e-3
@@ -61,11 +64,13 @@ def test_symmetrical_optimum_settings_give_that_loop():
     assert prefilter == 4 * T
 
 
+@pytest.mark.published("A7.4")
 def test_current_loop_by_absolute_optimum():
     """0.75 V/A and 30 ms (I; Modelica Standard Library, DCMachines.DCPM_CurrentControlled; our arithmetic)."""
     assert absolute_optimum(0.05, 1.5e-3, 1e-3) == pytest.approx((0.75, 0.03), rel=1e-12)
 
 
+@pytest.mark.published("A7.5")
 def test_second_order_figures():
     """16/(s²+4s+16): 16.3 %, 0.907 s, 51.83 deg (I; A. Nagoor Kani, Control Systems, Ex. 3.6)."""
     time, value = step_of([16.0], [1.0, 4.0, 16.0], 6.0, 1e-3)
@@ -78,6 +83,7 @@ def test_second_order_figures():
     assert math.degrees(loop.phase_margin_rad) == pytest.approx(51.8273, abs=1e-4)
 
 
+@pytest.mark.published("A7.1")
 def test_geared_two_rotor_system():
     """4.2 Hz (S; B. K. Sarkar, Theory of Machines, illustration 12 p. 298); ratio of both frequencies (D)."""
     G = 84e9
@@ -94,6 +100,23 @@ def test_geared_two_rotor_system():
     assert plant.antiresonance_rad_s / two_pi == pytest.approx(3.56562, abs=0.01)
 
 
+@pytest.mark.published("A7.6")
+def test_geared_two_rotor_system_in_pounds_and_inches():
+    """84.8 Hz (S; T. Bevan, The Theory of Machines, ch. 15, Ex. 11(a), p. 587), gears without inertia.
+
+    The open solution takes g = 32.3 ft/s², which is kept here; with 32.2 ft/s² it is 84.6 Hz.
+    """
+    g = 32.3 * 12.0  # in/s²
+    k = 12e6 * math.pi * 2.75**4 / 32 / 66.5  # lbf·in/rad of the equivalent shaft
+    plant = Plant(
+        resistance_ohm=1.0, inductance_h=1.0, torque_constant_nm_per_a=1.0, motor_inertia_kg_m2=1500.0 / g,
+        load_inertia_kg_m2=50_000.0 * 0.6**2 / g, stiffness_nm_per_rad=k,
+    )  # fmt: skip
+    assert plant.resonance_rad_s / (2 * math.pi) == pytest.approx(84.8, abs=0.05)  # half the last printed digit
+    assert plant.resonance_rad_s / (2 * math.pi) == pytest.approx(84.7603, abs=5e-4)
+
+
+@pytest.mark.published("A4.1")
 def test_dc_motor_speed_tutorial():
     """Poles −2.0025 and −9.9975, 0.1 rad/s, 2.07 s (S; Control Tutorials, Univ. of Michigan, CC BY-SA)."""
     plant = Plant(
@@ -109,6 +132,7 @@ def test_dc_motor_speed_tutorial():
     assert figures.settling_time_s == pytest.approx(2.0651, abs=2e-3)
 
 
+@pytest.mark.published("A4.9")
 def test_dc_motor_transfer_function():
     """s² + 10.1 s + 101, gain 0.990 (S; Franklin, Powell, Emami-Naeini, 6th ed., Example 3.17)."""
     plant = Plant(

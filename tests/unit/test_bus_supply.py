@@ -12,7 +12,7 @@ from actuator_sizing.errors import InputError
 from actuator_sizing.sizing.bus_quantities import bus_quantities
 from actuator_sizing.sizing.joint_bus import bus_results
 from actuator_sizing.sizing.results import FAILS, NOT_CHECKED, PASSES
-from tests.made_cases import DRIVE
+from tests.made_cases import DRIVE, MOTOR
 from tests.unit.case_files import small_case, write_folder
 from tests.unit.test_power_checks import MOVES, RESISTOR, sets_of, verdict
 
@@ -280,3 +280,37 @@ def test_curves_that_cannot_be(tmp_path, rows, words):
 def test_hysteresis_is_a_difference(tmp_path):
     with pytest.raises(InputError, match="chopper hysteresis"):
         case_with(tmp_path, ["chopper threshold", 60, "V", ""], ["chopper hysteresis", 60, "V", ""])
+
+
+# -- one check alone ----------------------------------------------------------------------------------
+#: Needs nine tenths of the voltage there is on a stiff bus.
+FAST_MOTOR = dict(MOTOR, torque_constant_nm_per_a=1.07, peak_torque_nm=np.nan)
+SOUND = dict(DRIVE, brake_resistor_min_ohm=33.0, bus_voltage_max_v=420.0)
+
+
+def sound(drive=SOUND, **options):
+    """A bus that passes everything, but for what is changed."""
+    return sets_of(drive=drive, **{**RESISTOR, **options})
+
+
+@pytest.mark.parametrize(
+    ("key", "change"),
+    [
+        ("bus_maximum_voltage", lambda b: {"drive": dict(SOUND, bus_voltage_max_v=379.0)}),
+        ("brake_resistor_value", lambda b: {"drive": dict(SOUND, brake_resistor_min_ohm=61.0)}),
+        ("brake_resistor_peak_power", lambda b: {"brake resistor": 1.01 * 380.0**2 / b.brake_power_peak_w[0]}),
+        ("brake_resistor_mean_power", lambda b: {"brake resistor continuous power": 0.99 * b.brake_power_mean_w[0]}),
+        ("brake_resistor_pulse_energy", lambda b: {"brake resistor pulse energy": 0.99 * b.brake_pulse_j[0]}),
+        ("supply_mean_power", lambda b: {"supply continuous power": 0.99 * b.supply_power_mean_w[0],
+                                         "supply peak power": 1e5}),
+        ("supply_peak_power", lambda b: {"supply peak power": 0.99 * b.supply_power_peak_w[0],
+                                         "supply continuous power": 1e5}),
+        ("bus_minimum_voltage", lambda b: {"drive": dict(SOUND, bus_voltage_min_v=287.0),
+                                           "supply internal resistance": 2.0}),
+        ("bus_sag", lambda b: {"motor": FAST_MOTOR, "supply internal resistance": 12.0}),
+    ],
+)  # fmt: skip
+def test_one_thing_wrong_fails_one_check(key, change):
+    good = sound()
+    assert fails(good) == set()
+    assert fails(sound(**change(good.once(bus_results)))) == {key}

@@ -1,20 +1,30 @@
 """Several named cycles in one case: read, judged by the worst, weighed where shares are stated."""
 
+import json
 import math
+import warnings
 from dataclasses import replace
+from datetime import date
+from io import BytesIO
 
 import numpy as np
 import pytest
+from openpyxl import load_workbook
 
 from actuator_sizing.case.model import ONCE_COLD, ONCE_WARM, REPEATS, SHORT_TIME, Case, Cycle
 from actuator_sizing.case.reading import check_case, read_case
+from actuator_sizing.console import verdict_sentence
 from actuator_sizing.core.thermal import periodic_state, steady_state, temperatures_after
 from actuator_sizing.core.thermal_run import single_run
 from actuator_sizing.errors import ERROR, InputError
+from actuator_sizing.report import render_report
+from actuator_sizing.report.motion_picture import write_motion
+from actuator_sizing.sizing.case_changes import single
 from actuator_sizing.sizing.comparison import compare
 from actuator_sizing.sizing.cycles import cycle_demands, evaluate_cycles
 from actuator_sizing.sizing.judging import active_checks, judge_sets
-from actuator_sizing.sizing.levers import LEVERS, excess, single, smallest_change
+from actuator_sizing.sizing.levers import LEVERS, smallest_change
+from actuator_sizing.sizing.resizing import PASS, Resizing
 from actuator_sizing.sizing.screening import screen
 from actuator_sizing.sizing.set_model import SetModel
 from actuator_sizing.sizing.simulation import simulate
@@ -199,15 +209,20 @@ def test_bounds_over_cycles_stay_below_the_exact_utilisations():
 
 def test_a_lever_changes_every_cycle():
     one = single(several(NORMAL, Cycle("worst", turns(14.0))), 0, 1, 0)
-    assert excess(one) > 0.0
+    resizing = Resizing.of(one, PASS)
+    assert not resizing.outcome(resizing.case).is_met
     lever = next(lever for lever in LEVERS if lever.key == "move_time")
-    answer = smallest_change(one, lever)
-    assert answer is not None
-    assert answer.needed is not None
-    changed = lever.changed(one, answer.needed)
-    assert excess(changed) <= 0.0
-    for before, after in zip(one.cycles, changed.cycles, strict=True):
-        assert after.segments[0].duration_s == pytest.approx(answer.needed * before.segments[0].duration_s)
+    found = smallest_change(resizing, lever)
+    assert found is not None
+    assert found.answer.needed is not None
+    changed = lever.changed(resizing.case, found.answer.needed)
+    assert Resizing.of(changed, PASS).outcome(changed).is_met
+    factors = [
+        after.segments[0].duration_s / before.segments[0].duration_s
+        for before, after in zip(one.cycles, changed.cycles, strict=True)
+    ]
+    assert factors[0] == pytest.approx(factors[1])
+    assert factors[0] > 1.0
 
 
 # -- cycles that do not repeat -----------------------------------------------------------------------
@@ -375,3 +390,69 @@ def test_one_cycle_of_several_is_simulated(tmp_path):
     assert named.quantities["current_peak_a"] > first.quantities["current_peak_a"]
     with pytest.raises(InputError, match="'normal', 'worst'"):
         simulate(made, cycle="best", **parts)
+
+
+# -- reports -----------------------------------------------------------------------------------------
+
+
+@pytest.fixture(scope="module")
+def reported(tmp_path_factory):
+    rows = [["normal", "repeats", 70, ""], ["<b>worst</b>", "once from warm", "", 2]]
+    tables = with_cycles(rows)
+    for row in tables["duty_cycle"]:
+        row[-1] = row[-1].replace("worst", "<b>worst</b>")
+    tables["inertias"] = [["part", "shape", "referred to", "inertia [kg·cm²]"],
+                          ["coupling", "coupling", "driven shaft", 0.4]]  # fmt: skip
+    comparison = compare(read_case(write_folder(tmp_path_factory.mktemp("reported"), tables)))
+    return comparison, render_report(comparison, date=date(2025, 1, 1), pdf=False)
+
+
+def test_results_hold_every_cycle_the_mix_and_the_inertias(reported):
+    comparison, files = reported
+    results = json.loads(files["results.json"])
+    assert [(c["cycle"], c["runs"]) for c in results["cycles"]] == [
+        ("normal", REPEATS),
+        ("<b>worst</b>", ONCE_WARM),
+    ]
+    best = results["sets"][0]
+    assert {c["cycle"] for c in best["checks"]} <= {"normal", "<b>worst</b>"}
+    worst = {c["check"]: c["utilisation"] for c in best["checks"]}
+    for key, use in worst.items():
+        own = [each["utilisations"].get(key) for each in best["cycles"]]
+        assert use is None or use == max(u for u in own if u is not None), key
+    assert best["mix"]["rest_share_ratio"] == pytest.approx(0.3 - 2 * 2.0 / 3600.0)
+    parts = {part["name"]: part for part in results["inertias"]}
+    assert parts["coupling"]["at_shaft_kg_m2"] == pytest.approx(4e-5)
+    assert sum(part["share"] for part in results["inertias"]) == pytest.approx(1.0)
+    assert comparison.best.mix is not None
+
+
+def test_page_and_workbook_name_the_cycles_and_escape_them(reported):
+    _, files = reported
+    page = files["sizing_report.html"].decode()
+    assert "<b>worst</b>" not in page
+    assert "&lt;b&gt;worst&lt;/b&gt;" in page
+    assert "figures/cycles.svg" in files
+    with warnings.catch_warnings():
+        # openpyxl cannot keep the data bars of today's format; it reads the cells all the same
+        warnings.filterwarnings("ignore", message=".*extension is not supported", category=UserWarning)
+        book = load_workbook(BytesIO(files["sizing_tables.xlsx"]))
+    assert {"cycles", "mix of cycles", "inertia inventory"} <= set(book.sheetnames)
+    assert [book["cycles"].cell(r, 1).value for r in (2, 3)] == ["normal", "<b>worst</b>"]
+    segments = book["motion segments"]
+    heads = [cell.value for cell in segments[1]]
+    names = [segments.cell(row, heads.index("cycle") + 1).value for row in range(2, 10)]
+    assert names == ["normal"] * 4 + ["<b>worst</b>"] * 4
+
+
+def test_the_terminal_and_the_notebook_name_the_cycle(reported):
+    comparison, _ = reported
+    governing = comparison.best.check(comparison.best.governing_check)
+    assert f"in the cycle {governing.cycle}" in verdict_sentence(comparison)
+    assert "cycle" in comparison.best.checks.table.columns
+
+
+def test_every_cycle_gets_its_picture(tmp_path):
+    paths = write_motion(several(NORMAL, WORST), tmp_path)
+    assert [path.name for path in paths] == ["motion_1.svg", "motion_2.svg"]
+    assert b"worst" in paths[1].read_bytes()

@@ -11,6 +11,7 @@ import pandas as pd
 import pytest
 from click.testing import CliRunner
 
+from actuator_sizing.case.reading import read_case
 from actuator_sizing.cli import NONE_PASSES, commands
 from actuator_sizing.errors import InputError
 from actuator_sizing.report.machine import render_machine, write_machine
@@ -152,6 +153,27 @@ def test_the_sum_over_time_is_that_of_the_axes_and_keeps_the_energy():
     # 2e-3: straight lines between the nodes of pieces on which the power is curved.
     assert net == pytest.approx(bus.power_mean_least_w, rel=2e-3)
     assert frame["time_s"].iloc[-1] == pytest.approx(1.5, rel=1e-12)
+
+
+def test_several_cycles_of_an_axis_count_with_their_shares():
+    made = read_case("catalogs_demo/tray_conveyor")
+    machine = compare_machine([made])
+    best, one = machine.axes[0].best, machine.axes[0]
+    assert len(best.cycles) > 1
+    assert one.cycle_s is None
+    bus = machine.buses[0]
+    peaks = [each.quantities["supply_power_peak_w"] for each in best.cycles]
+    # 1e-3: taken at the nodes of the pieces.
+    assert bus.power_peak_most_w == pytest.approx(max(peaks), rel=1e-3)
+    means = [
+        each.quantities["energy_bus_motoring_j"] / cycle.demand.cycle_s
+        for each, cycle in zip(best.cycles, one.comparison.cycles, strict=True)
+    ]
+    steady = best.quantities["bus_steady_power_w"]
+    assert steady > 0.0
+    assert min(means) <= one.power.taken_w - steady <= max(means)
+    assert bus.power_peak_together_w is None
+    assert f"{len(best.cycles)} cycles" in render_machine(machine, pdf=False)["machine_report.html"].decode()
 
 
 def test_axes_of_different_voltage_have_buses_of_their_own_and_an_unknown_efficiency_is_said():

@@ -353,6 +353,13 @@ def test_default_loops_are_stable_with_every_payload():
     assert LinearCascade(light, found.settings).spectral_radius < 1.0
 
 
+def test_the_step_of_the_encoder_is_held_against_the_band():
+    found = simulate(made({"settling band": 1e-4, "encoder counts per turn": 4096.0}), **NAMES, cycles=1)
+    step = 0.05 / 4096.0 / 5.0 if found.gearhead == "G1" else math.nan
+    assert found.quantities["encoder_step_at_load"] == pytest.approx(step, rel=1e-9)
+    assert found.quantities["encoder_step_over_band_ratio"] == pytest.approx(step / 1e-4, rel=1e-9)
+
+
 def test_every_setting_has_its_unit(moved):
     from actuator_sizing.report.loop_settings import SETTING_UNITS
 
@@ -399,3 +406,18 @@ def test_a_long_record_is_simulated_in_its_order():
     best = compare(case_, detail=1).best
     found = simulate(case_, motor=best.motor, gearhead=best.gearhead, drive=best.drive, rate_hz=2000.0)
     assert found.quantities["current_rms_a"] == pytest.approx(best.quantities["current_rms_a"], rel=0.03)
+
+
+def test_a_cycle_too_long_for_a_comparison_is_not_checked():
+    """It does not fail: nothing was found wrong with it, and the page says what to do."""
+    long = cycle(
+        {"law": "cycloidal", "displacement": 0.1, "duration_s": 2.0},
+        {"law": "dwell", "duration_s": 400.0},
+        {"law": "cycloidal", "displacement": -0.1, "duration_s": 2.0},
+    )
+    one = dataclasses.replace(made({"settling band": 1e-4}, gearheads=[GEARHEAD]), segments=long)
+    comparison = compare(one)
+    check = comparison.best.check("settling")
+    assert check.verdict == "not checked"
+    assert "four million samples" in check.missing[0]
+    assert comparison.dynamics is None

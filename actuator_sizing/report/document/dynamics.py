@@ -53,7 +53,7 @@ def dynamics_section(comparison: Comparison, figures: Iterable[str]) -> Section 
     blocks: list[Block] = [
         Paragraph(
             f"Simulated with default settings of the loops, sampled every {quantity(simulation.step_s, 's')}; the "
-            f"speed loop is limited by: {simulation.limited_by}. Conditions: {clean('; '.join(simulation.notes))}."
+            f"speed loop is limited by: {simulation.limited_by}. Conditions: {'; '.join(map(clean, simulation.notes))}."
         ),
         Facts(_facts(simulation), "Errors and bandwidths"),
         _margins(simulation),
@@ -111,6 +111,11 @@ def _facts(simulation: Simulation) -> tuple[tuple[str, str], ...]:
         ("largest following error of the load", _at_load(simulation, "following_error_peak")),
         ("RMS following error", _at_load(simulation, "following_error_rms")),
     ]
+    step = simulation.quantities.get("encoder_step_over_band_ratio", math.nan)
+    if math.isfinite(step):
+        rows.append(
+            ("step of the encoder at the load over the tightest band", f"{number(100.0 * step, 3)} %")
+        )
     rows += [
         (label, quantity(simulation.quantities[key], unit))
         for label, key, unit in _QUANTITIES

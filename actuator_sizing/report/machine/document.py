@@ -114,7 +114,7 @@ def _axes_section(machine: Machine) -> Section:
         Column("Utilisation", numeric=True, weight=1.1),
         Column("Price", numeric=True),
         Column("Mass", numeric=True),
-        Column("Energy per cycle", numeric=True, weight=1.1),
+        Column("Mean power", numeric=True, weight=1.1),
         Column("Cycle", numeric=True),
     )
     total = row(
@@ -124,13 +124,14 @@ def _axes_section(machine: Machine) -> Section:
         "",
         money(machine.price),
         quantity(machine.mass_kg, "kg"),
-        f"{quantity(machine.energy_per_hour_j, 'J')} per hour" if machine.energy_per_hour_j else NOT_KNOWN,
+        NOT_KNOWN if machine.energy_per_hour_j is None else quantity(machine.energy_per_hour_j / 3600.0, "W"),
         "",
     )
     rows = (*(_axis_row(axis) for axis in machine.axes), total)
     notes = [
-        "Prices are in the currency of the catalogs. Energy is taken from the DC bus; nothing that comes back is "
-        "counted off. Each axis has its own report: actuator-sizing compare.",
+        "Prices are in the currency of the catalogs. Power is taken from the DC bus, as a mean over the cycle; "
+        "nothing that comes back is counted off; a mean of 1 W is 3.6 kJ an hour. Of several cycles the mix counts, "
+        "or without shares of time the cycle that takes most. Each axis has its own report: actuator-sizing compare.",
     ]
     return Section(
         "axes",
@@ -148,8 +149,8 @@ def _axis_row(axis: MachineAxis) -> tuple[Cell, ...]:
         percent(check.utilisation, check.allowed) if check else "-",
         money(best.price),
         quantity(best.mass_kg, "kg"),
-        quantity(axis.quantity("energy_bus_motoring_j"), "J"),
-        quantity(axis.cycle_s, "s"),
+        quantity(None if axis.power is None else axis.power.taken_w, "W"),
+        f"{len(axis.comparison.cycles)} cycles" if axis.cycle_s is None else quantity(axis.cycle_s, "s"),
     )
 
 
@@ -272,7 +273,13 @@ def _bus_facts(bus: CommonBus) -> list[tuple[str, str]]:
     if len(bus.axes) == 1:
         return facts
     if bus.power_peak_together_w is None:
-        return [*facts, ("Started together", "the lengths of the cycles do not go into one another")]
+        return [
+            *facts,
+            (
+                "Started together",
+                "not defined: several cycles on an axis, or lengths that do not go into one another",
+            ),
+        ]
     return [
         *facts,
         (
@@ -296,7 +303,7 @@ def _basis_section(machine: Machine) -> Section:
                     "Drives are judged one for each axis. Supply, capacitance, chopper and brake resistor of a "
                     "common bus are not sized here.",
                     "Power is that of the leading sets in periodic steady state, losses of the drives by their "
-                    "efficiency; stand-by power of the drives is left out.",
+                    "efficiency, stand-by power and further loads as each case states them.",
                 )
             ),
             Facts(

@@ -75,8 +75,8 @@ def _axis(axis: MachineAxis) -> dict[str, Any]:
         "governing_utilisation": check.utilisation if check else None,
         "price": best.price,
         "mass_kg": best.mass_kg,
-        "energy_bus_motoring_j": axis.quantity("energy_bus_motoring_j"),
-        "energy_bus_regenerated_j": axis.quantity("energy_bus_regenerated_j"),
+        "power_taken_mean_w": None if axis.power is None else axis.power.taken_w,
+        "power_returned_mean_w": None if axis.power is None else axis.power.returned_w,
     }
 
 

@@ -82,8 +82,8 @@ def _add_axes(sheets: Sheets, machine: Machine) -> None:
         Field("mass [kg]", "number"),
         Field("governing check"),
         Field("utilisation", "percent", bar=True),
-        Field("energy per cycle [J]", "number"),
-        Field("energy returned per cycle [J]", "number"),
+        Field("mean power taken [W]", "number"),
+        Field("mean power returned [W]", "number"),
         Field("cycle [s]", "number"),
         Field("nominal bus voltage [V]", "number"),
     )
@@ -101,8 +101,8 @@ def _add_axes(sheets: Sheets, machine: Machine) -> None:
                 best.mass_kg,
                 check.title if check else "",
                 check.utilisation if check else None,
-                axis.quantity("energy_bus_motoring_j"),
-                axis.quantity("energy_bus_regenerated_j"),
+                None if axis.power is None else axis.power.taken_w,
+                None if axis.power is None else axis.power.returned_w,
                 axis.cycle_s,
                 axis.comparison.case.surroundings.bus_nominal_v,
             )
