@@ -53,7 +53,8 @@ def dynamics_section(comparison: Comparison, figures: Iterable[str]) -> Section 
     blocks: list[Block] = [
         Paragraph(
             f"Simulated with default settings of the loops, sampled every {quantity(simulation.step_s, 's')}; the "
-            f"speed loop is limited by: {simulation.limited_by}. Conditions: {'; '.join(map(clean, simulation.notes))}."
+            f"speed loop is limited by: {simulation.limited_by}. Conditions: "
+            f"{'; '.join(map(clean, simulation.notes))}."
         ),
         Facts(_facts(simulation), "Errors and bandwidths"),
         _margins(simulation),
