@@ -156,7 +156,7 @@ def _place(check: CheckResult) -> str:
 
 def rejection_lines(comparison: Comparison) -> list[str]:
     """How many sets there were, how many passed, and which checks the others lost by."""
-    from actuator_sizing.case.tables import CHECK_NAMES
+    from actuator_sizing.case.check_names import CHECK_NAMES
 
     counts = comparison.rejections
     titles = dict(CHECK_NAMES)

@@ -3,10 +3,7 @@
 from __future__ import annotations
 
 from actuator_sizing.case.catalogs import check_required
-from actuator_sizing.case.model import Entry, Limit
-from actuator_sizing.case.parsed_tables import ParsedTable
-from actuator_sizing.case.problem_list import ProblemList
-from actuator_sizing.case.tables import (
+from actuator_sizing.case.check_names import (
     ADVICE_CHECKS,
     ALLOWED_UTILISATIONS,
     CHECK_NAMES,
@@ -14,6 +11,9 @@ from actuator_sizing.case.tables import (
     DEFAULT_RECOMMENDED_RESERVE,
     RECOMMENDED_RESERVES,
 )
+from actuator_sizing.case.model import Entry, Limit
+from actuator_sizing.case.parsed_tables import ParsedTable
+from actuator_sizing.case.problem_list import ProblemList
 
 
 def default_limits() -> dict[str, Limit]:

@@ -5,18 +5,20 @@ from __future__ import annotations
 from collections.abc import Iterable
 from pathlib import Path
 
-from actuator_sizing.case.columns import Column, Table, nearest
-from actuator_sizing.case.cycle_columns import DUTY_TYPES
-from actuator_sizing.case.documentation import columns_page
-from actuator_sizing.case.duty_types import ALL_TIMES, SEVERAL_LOADS, USED_TIMES
-from actuator_sizing.case.sheets import Sheet, is_workbook
-from actuator_sizing.case.tables import (
+from actuator_sizing.case.check_names import (
     ADVICE_CHECKS,
     ALLOWED_UTILISATIONS,
     CHECK_NAMES,
     DEFAULT_ALLOWED_UTILISATION,
     DEFAULT_RECOMMENDED_RESERVE,
     RECOMMENDED_RESERVES,
+)
+from actuator_sizing.case.columns import Column, Table, nearest
+from actuator_sizing.case.cycle_columns import DUTY_TYPES
+from actuator_sizing.case.documentation import columns_page
+from actuator_sizing.case.duty_types import ALL_TIMES, SEVERAL_LOADS, USED_TIMES
+from actuator_sizing.case.sheets import Sheet, is_workbook
+from actuator_sizing.case.tables import (
     TABLES,
     axis_quantities,
     table_for,

@@ -6,8 +6,8 @@ import pytest
 from case_files import add_column, row_of, set_cell, small_case, write_folder
 from test_bad_input_cells import problems_of, the_only
 
+from actuator_sizing.case.check_names import CHECK_NAMES
 from actuator_sizing.case.reading import check_case
-from actuator_sizing.case.tables import CHECK_NAMES
 
 # -- axis ---------------------------------------------------------------------------------------------------
 

@@ -8,9 +8,9 @@ import shutil
 import pytest
 from case_files import add_column, row_of, set_cell, small_case, write_folder, write_workbook
 
+from actuator_sizing.case.check_names import CHECK_NAMES
 from actuator_sizing.case.model import Case
 from actuator_sizing.case.reading import check_case, read_case
-from actuator_sizing.case.tables import CHECK_NAMES
 from actuator_sizing.errors import InputError
 
 

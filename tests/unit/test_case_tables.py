@@ -6,8 +6,9 @@ import math
 
 import pytest
 
+from actuator_sizing.case.check_names import CHECK_NAMES
 from actuator_sizing.case.columns import Column, find, fold, nearest
-from actuator_sizing.case.tables import CHECK_NAMES, LAW_WORDS, TABLES, axis_quantities, mechanism_quantities
+from actuator_sizing.case.tables import LAW_WORDS, TABLES, axis_quantities, mechanism_quantities
 from actuator_sizing.case.words import canonical_word, canonical_words
 from actuator_sizing.core.mechanisms import MECHANISMS
 from actuator_sizing.core.motion_laws import LAWS

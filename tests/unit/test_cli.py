@@ -118,9 +118,9 @@ def test_a_report_that_cannot_be_written_says_so(case, run, tmp_path):
 
 
 def test_a_name_cannot_lead_out_of_the_reports_folder():
-    assert str(cli._report_folder("../../etc")) == os.path.join("reports", "_.._etc")
-    assert str(cli._report_folder("..")) == os.path.join("reports", "case")
-    assert str(cli._report_folder("a\nb")) == os.path.join("reports", "a_b")
+    assert str(cli.report_folder("../../etc")) == os.path.join("reports", "_.._etc")
+    assert str(cli.report_folder("..")) == os.path.join("reports", "case")
+    assert str(cli.report_folder("a\nb")) == os.path.join("reports", "a_b")
 
 
 # -- audit -------------------------------------------------------------------------------------------
