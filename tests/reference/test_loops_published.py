@@ -112,7 +112,9 @@ def test_geared_two_rotor_system_in_pounds_and_inches():
         resistance_ohm=1.0, inductance_h=1.0, torque_constant_nm_per_a=1.0, motor_inertia_kg_m2=1500.0 / g,
         load_inertia_kg_m2=50_000.0 * 0.6**2 / g, stiffness_nm_per_rad=k,
     )  # fmt: skip
-    assert plant.resonance_rad_s / (2 * math.pi) == pytest.approx(84.8, abs=0.05)  # half the last printed digit
+    assert plant.resonance_rad_s / (2 * math.pi) == pytest.approx(
+        84.8, abs=0.05
+    )  # half the last printed digit
     assert plant.resonance_rad_s / (2 * math.pi) == pytest.approx(84.7603, abs=5e-4)
 
 
