@@ -309,6 +309,8 @@ class Comparison:
     @cached_property
     def robustness(self) -> Robustness | None:
         """How sure the leading set passes, at bounded cost; None where the case states no spread."""
+        if not self.case.tolerances:
+            return None
         from actuator_sizing.sizing.robustness.robust import robust_of_leading
 
         return robust_of_leading(self)
