@@ -60,7 +60,7 @@ def charged_voltage(no_load_v: float, resistance_ohm: float, returned_w: FloatAr
     --------
     >>> import numpy as np
     >>> float(charged_voltage(48.0, 0.1, np.array(1000.0)))
-    49.9999
+    50.0
     """
     return np.asarray(0.5 * no_load_v + np.sqrt(0.25 * no_load_v**2 + resistance_ohm * returned_w))
 

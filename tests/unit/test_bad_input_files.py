@@ -355,9 +355,9 @@ def test_catalog_of_200_000_rows(tmp_path):
         for number in range(100_000):
             writer.writerow([f"M-{number}", *first[1:]])
             writer.writerow([f"B-{number}", *second[1:]])
-    before, start = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss, time.perf_counter()
+    before, start = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss, time.process_time()
     case = read_case(folder)
-    seconds = time.perf_counter() - start
+    seconds = time.process_time() - start
     grown = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss - before
     assert len(case.motors) == len(case.motor_parameters) == 200_000
     assert case.motors.as_entered["motor"][199_998] == "M-99999"

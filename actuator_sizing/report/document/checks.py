@@ -28,10 +28,10 @@ _GROUPS = {
 }
 
 _COLUMNS = (
-    Column("Check", weight=4.8),
+    Column("Check", weight=4.6),
     Column("Demand", numeric=True, weight=0.9),
     Column("Capacity", numeric=True, weight=1.0),
-    Column("Unit", weight=0.7),
+    Column("Unit", weight=0.9),
     Column("Utilisation", numeric=True, weight=1.35),
     Column("Margin", numeric=True, weight=0.95),
     Column("Verdict", weight=1.1),

@@ -53,10 +53,20 @@ FIGURES = (
     "bus",
     "energy_flow",
     "step_response",
-    "cycles",
 )
 #: Keys of figures that only some cases ask for, or an option of the comparison.
-OPTIONAL_FIGURES = ("stops", "trade_offs", "ratio_windows", "payload_map", *ROBUSTNESS_FIGURES)
+OPTIONAL_FIGURES = (
+    "cycles",
+    "stops",
+    "trade_offs",
+    "ratio_windows",
+    "payload_map",
+    "cycle_response",
+    "following_error",
+    "loop_steps",
+    "bode",
+    *ROBUSTNESS_FIGURES,
+)
 
 
 @dataclass(frozen=True)
