@@ -206,7 +206,7 @@ def test_a_long_list_of_candidates_goes_to_the_file_beside(comparison):
     assert book["candidates"].max_row == 1 + LEADING_CANDIDATES
     said = next(row for row in book["summary"].iter_rows(values_only=True) if row[0] == "candidates listed")
     assert said[1] == len(long)
-    assert said[2] == "the first 500 in sheet candidates, all in candidates.csv"
+    assert said[2] == "the first 250 in sheet candidates, all in candidates.csv"
     assert render_candidates(changed).rows == len(long)
 
 

@@ -20,7 +20,7 @@ if TYPE_CHECKING:
     from actuator_sizing.sizing.results import CheckResult, Comparison
 
 #: Of a list with more candidates than the first number, the workbook shows the second; the file beside has all.
-MOST_CANDIDATES, LEADING_CANDIDATES = 2_000, 500
+MOST_CANDIDATES, LEADING_CANDIDATES = 1_000, 250
 _VERDICT_COLORS = {
     PASSES: ("#DDEFE6", "#00583F"),
     LOW_RESERVE: ("#FBEBCB", "#7A4F00"),
