@@ -296,3 +296,17 @@ def test_gearhead_in_a_stop_carries_what_slows_the_load():
 def test_every_check_of_these_files_is_in_the_list():
     keys = {check.key for check in CHECKS}
     assert {"bus_maximum_voltage", "supply_peak_power", "drop_distance", "gearhead_jam_torque"} <= keys
+
+
+def test_a_resistor_too_small_fails_also_where_the_cycle_gives_nothing_back():
+    """A stop from speed fires the chopper all the same."""
+    slow = cycle(
+        {"law": "cycloidal", "displacement": 0.1, "duration_s": 20.0}, {"law": "dwell", "duration_s": 1.0},
+        {"law": "cycloidal", "displacement": -0.1, "duration_s": 20.0},
+    )  # fmt: skip
+    values = {"lead": 0.02, "moving mass": 5.0, "guide friction force": 200.0}
+    drive = dict(DRIVE, brake_resistor_min_ohm=80.0)
+    sets = sets_of(values=values, segments=slow, drive=drive, **RESISTOR)
+    assert float(bus_results(sets).brake_energy_j[0]) == 0.0
+    found = verdict(sets, "brake_resistor_value")
+    assert (found.verdict, found.utilisation) == (FAILS, pytest.approx(80.0 / 60.0))

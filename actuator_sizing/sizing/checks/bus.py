@@ -195,6 +195,11 @@ BUS_MINIMUM = Check(
 
 
 # -- brake resistor ---------------------------------------------------------------------------------
+def _connects(sets: Sets) -> NDArray[np.bool_]:
+    """Sets whose chopper and resistor belong together, also on a cycle that gives nothing back: a stop will."""
+    return np.asarray(_clamps(sets) | _burns(sets))
+
+
 def _value_measure(sets: Sets) -> Measure:
     return Measure(sets.drives.brake_resistor_min_ohm, _same(sets.option("brake resistor"), sets))
 
@@ -209,7 +214,7 @@ BRAKE_VALUE = Check(
     needs=(Need("drives", "brake_resistor_min_ohm", "minimum brake resistor"),),
     measure=_value_measure,
     working=_ratio_working("R_min / R", "Ω", _value_measure),
-    applies=_burns,
+    applies=_connects,
     is_fit=True,
 )
 
