@@ -14,8 +14,9 @@ CYCLES_COLUMNS = (
     Column("cycle", TEXT, "name of the cycle, as in duty_cycle or duty_types", required=True, example="normal"),
     Column("runs", WORDS, "repeats: again and again, temperatures in their periodic state; short-time: from "
            "cold, and cold again before the next run; once from cold: a start after a long rest; once from warm: out "
-           "of the hottest state that the repeating cycles reach. After a cycle that runs once, the first repeating "
-           "one follows", words=RUNS_WORDS, default=REPEATS, assumed="a cycle repeats", example=REPEATS),
+           "of the hottest state that the repeating cycles reach. After a cycle that runs once, the repeating one "
+           "that then gets hottest follows", words=RUNS_WORDS, default=REPEATS, assumed="a cycle repeats",
+           example=REPEATS),
     Column("share of time", "ratio", "part of the operating time that this cycle takes; what is left over is rest "
            "without current. Weighs energy, losses and wear of the mix; each cycle must pass all the same",
            minimum=0.0, maximum=1.0, example="90", unit="%"),

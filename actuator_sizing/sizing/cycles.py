@@ -84,7 +84,9 @@ def _start(
     """State before a cycle that does not repeat."""
     ambient = np.full(count, each.case.surroundings.ambient_degc)
     repeating = [number for number, other in enumerate(cycles) if other.cycle.repeats]
-    following = cycles[repeating[0]].demand if repeating and each.cycle.runs != SHORT_TIME else None
+    following: tuple[Demand, ...] = ()
+    if each.cycle.runs != SHORT_TIME:
+        following = tuple(cycles[number].demand for number in repeating)
     if each.cycle.runs != ONCE_WARM:
         return ThermalStart(ambient, ambient, following)
     warm = [found[number].pairs for number in repeating]

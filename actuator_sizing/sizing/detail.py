@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 from actuator_sizing.core.capability import voltage_limited_current
 from actuator_sizing.core.machine import model_voltage, motor_amperes_per_drive_ampere, torque_of_current
 from actuator_sizing.core.quadrature import piece_means
+from actuator_sizing.core.thermal_run import single_run
 from actuator_sizing.core.warm_up import (
     TemperatureCourse,
     WarmUp,
@@ -23,6 +24,7 @@ from actuator_sizing.sizing.checks.motor import current_limited_torque, rerated_
 from actuator_sizing.sizing.results import SetDetail
 from actuator_sizing.sizing.set_model import SetModel
 from actuator_sizing.sizing.stop_courses import stop_courses
+from actuator_sizing.sizing.thermal_start import with_following
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -85,8 +87,12 @@ def _temperatures(
             warm_up(model.network, model.loss, ambient, limit),
         )
     before = sets.start.take(slice(index, index + 1))
-    loss = before.with_following(model.loss, model.motor, model.gearhead, model.judged)
-    state = float(before.winding_degc[0]), float(before.housing_degc[0])
+    state, loss = (float(before.winding_degc[0]), float(before.housing_degc[0])), model.loss
+    after = before.losses_after(model.motor, model.gearhead, model.judged)
+    if after:
+        run = single_run(model.network, loss, ambient, *state, after)
+        if run.known[0]:
+            loss = with_following(loss, after[int(run.follower[0])], float(run.winding_max_time_s[0]))
     return None, run_course(model.network, loss, ambient, *state)
 
 

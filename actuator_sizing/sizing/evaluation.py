@@ -161,9 +161,9 @@ def _evaluate_chunk(
     if start is None:
         temperatures = periodic_state(network, loss, surroundings.ambient_degc)
     else:
-        loss = start.with_following(loss, motors, gearheads, judged)
         state = start.winding_degc, start.housing_degc
-        temperatures = single_run(network, loss, surroundings.ambient_degc, *state)
+        after = start.losses_after(motors, gearheads, judged)
+        temperatures = single_run(network, loss, surroundings.ambient_degc, *state, after)
     reflected = demand.load_inertia / gearheads.ratio**2
     return PairResults(
         torque_peak_nm=torque_peak,

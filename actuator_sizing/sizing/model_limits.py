@@ -21,8 +21,8 @@ BRAKE_CHECKS = ("holding_brake_static",)
 _RUNS = {
     REPEATS: "repeats for ever",
     SHORT_TIME: "starts from cold and is cold again before the next run",
-    ONCE_COLD: "runs once from cold, and the first repeating cycle follows",
-    ONCE_WARM: "runs once from the hottest state of the repeating cycles, the first of which follows",
+    ONCE_COLD: "runs once from cold, and the repeating cycle that then gets hottest follows",
+    ONCE_WARM: "runs once from the hottest state of the repeating cycles, and the one that then gets hottest follows",
 }
 
 _PARTS_NOT_CHECKED = {

@@ -112,7 +112,7 @@ class SetDetail:
     periodic_temperature: pd.DataFrame | None
     #: the same from cold (both at ambient) until periodic or until past the limit: time_s, winding_degc,
     #: housing_degc and, where it ripples, winding_low_degc, winding_high_degc (None: data missing); of a cycle that
-    #: does not repeat its one run, with the first of the cycle that follows
+    #: does not repeat its one run, with the cycle that follows, up to the hottest instant
     warm_up: pd.DataFrame | None
     #: against speed_rad_s: torque_peak_min_bus_nm, torque_peak_nominal_bus_nm, torque_peak_max_bus_nm,
     #: torque_continuous_nm (NaN where out of reach or not known), all air-gap torque

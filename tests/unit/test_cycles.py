@@ -3,7 +3,7 @@
 import json
 import math
 import warnings
-from dataclasses import replace
+from dataclasses import fields, replace
 from datetime import date
 from io import BytesIO
 
@@ -14,7 +14,7 @@ from openpyxl import load_workbook
 from actuator_sizing.case.model import ONCE_COLD, ONCE_WARM, REPEATS, SHORT_TIME, Case, Cycle
 from actuator_sizing.case.reading import check_case, read_case
 from actuator_sizing.console import verdict_sentence
-from actuator_sizing.core.thermal import periodic_state, steady_state, temperatures_after
+from actuator_sizing.core.thermal import HeatLoss, periodic_state, steady_state, temperatures_after
 from actuator_sizing.core.thermal_run import single_run
 from actuator_sizing.errors import ERROR, InputError
 from actuator_sizing.report import render_report
@@ -28,6 +28,7 @@ from actuator_sizing.sizing.resizing import PASS, Resizing
 from actuator_sizing.sizing.screening import screen
 from actuator_sizing.sizing.set_model import SetModel
 from actuator_sizing.sizing.simulation import simulate
+from actuator_sizing.sizing.thermal_start import with_following
 from tests.made_cases import DRIVE, GEARHEAD, MOTOR, case, cycle
 from tests.unit.case_files import small_case, write_folder
 
@@ -271,6 +272,59 @@ def test_the_cycle_that_follows_counts_too():
     sets, _ = judged(several(NORMAL, Cycle("wait", rest, ONCE_WARM)))
     assert sets[1].pairs.winding_max_at_s[0] > 0.1
     assert sets[1].pairs.winding_max_degc[0] > sets[0].pairs.winding_max_degc[0]
+
+
+def hold(torque: float, span_s: float):
+    return cycle({"law": "dwell", "duration_s": span_s, "process_effort": torque})
+
+
+#: A run whose speed heats the housing.
+RUN = Cycle("run", cycle({"law": "cycloidal", "displacement": 2e4, "duration_s": 600.0}), ONCE_WARM)
+FAST = {**MOTOR, "viscous_friction_nm_s": 2e-3}
+
+
+def test_what_follows_a_run_repeats_until_the_winding_has_risen_onto_the_warmer_housing():
+    hottest = {}
+    for span in (0.5, 2.0, 60.0, 300.0):
+        sets, _ = judged(several(Cycle("hold", hold(10.0, span)), RUN, motors=[FAST]))
+        hottest[span] = float(sets[1].pairs.winding_max_degc[0])
+        assert hottest[span] > sets[0].pairs.winding_max_degc[0] + 10.0
+    assert np.ptp(list(hottest.values())) < 0.1, hottest  # physically the same hold
+
+
+def test_jumped_cycles_after_a_run_are_those_of_it_repeated():
+    short = Cycle("short", turns(9.0, 0.5, 0.2))
+    made = several(short, RUN, motors=[FAST])
+    after, run = model(made, 0), model(made, 1)
+    ambient = made.surroundings.ambient_degc
+    warm = periodic_state(run.network, after.loss, ambient)
+    start = warm.winding_max_degc, warm.housing_max_degc
+    found = single_run(run.network, run.loss, ambient, *start, (after.loss,))
+    parts = [run.loss] + [after.loss] * 286  # 5 time constants of the winding
+    repeated = HeatLoss(
+        np.concatenate([part.duration_s for part in parts]),
+        np.concatenate([part.copper_loss_w for part in parts], axis=1),
+        np.concatenate([part.speed_loss_w for part in parts], axis=1),
+        *(getattr(run.loss, f.name) for f in fields(HeatLoss)[3:]),
+    )
+    all_through = single_run(run.network, repeated, ambient, *start)
+    assert found.winding_max_time_s[0] > 610.0
+    assert found.winding_max_degc[0] == pytest.approx(all_through.winding_max_degc[0], abs=0.02)
+    assert found.housing_max_degc[0] == pytest.approx(all_through.housing_max_degc[0], abs=0.02)
+    # What is drawn of very many cycles by their mean reaches the same maximum.
+    drawn = with_following(run.loss, after.loss, 1e5)
+    assert len(drawn.duration_s) < 3000
+    assert drawn.duration_s.sum() == pytest.approx(1e5, abs=short.duration_s)
+
+
+def test_the_order_of_the_repeating_cycles_does_not_matter_to_a_run():
+    light, heavy = Cycle("light", hold(4.0, 300.0)), Cycle("heavy", hold(10.0, 300.0))
+    either = [judged(several(*cycles, RUN, motors=[FAST]))[0][2].pairs for cycles in
+              ((light, heavy), (heavy, light))]  # fmt: skip
+    for name in ("winding_max_degc", "winding_max_at_s", "winding_mean_degc", "housing_max_degc"):
+        assert getattr(either[0], name)[0] == getattr(either[1], name)[0], name
+    alone = judged(several(heavy, RUN, motors=[FAST]))[0][1].pairs
+    assert either[0].winding_max_degc[0] == pytest.approx(alone.winding_max_degc[0], abs=1e-9)
 
 
 def test_means_and_wear_are_not_judged_in_a_single_run():

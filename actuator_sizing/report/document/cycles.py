@@ -18,9 +18,9 @@ if TYPE_CHECKING:
     from actuator_sizing.sizing.results import Comparison
 
 _FOLLOWED = (
-    "the first repeating cycle follows, and the hottest instant of both counts. RMS current, mean powers and wear "
-    "are not judged in it; the drive is taken to have rested before it, bus and brake resistor to stand as if it "
-    "repeated."
+    "the repeating cycle that then gets hottest follows, and the hottest instant of both counts. RMS current, "
+    "mean powers and wear are not judged in it; the drive is taken to have rested before it, bus and brake resistor "
+    "to stand as if it repeated."
 )
 _MEANING = {
     "repeats": "A cycle that repeats is judged in its periodic state, as if it ran for ever.",

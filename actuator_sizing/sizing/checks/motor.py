@@ -276,7 +276,7 @@ def _temperature_working(sets: Sets, i: int) -> str:
     over = "in periodic steady state"
     if sets.start is not None:
         over = f"in one run from {digits(sets.start.winding_degc[i])} °C"
-        over += "" if sets.start.following is None else " and the cycle that follows"
+        over += " and the cycle that follows" if sets.start.following else ""
     mean = sets.pairs.housing_mean_degc[i]
     housing = "one thermal body" if np.isnan(mean) else f"housing mean {digits(mean)} °C"
     return (
