@@ -57,6 +57,14 @@ class DynamicResults:
         return replace(self, **taken)
 
 
+def wishes(case: Case) -> DynamicResults:
+    """What a case asks of the moving axis, as of one set that nothing is known of yet."""
+    band, error = option_number(case, "settling band"), option_number(case, "allowed following error")
+    required = 2.0 * math.pi * option_number(case, "required speed bandwidth")
+    unknown = (np.full(1, np.nan) for _ in range(9))
+    return DynamicResults(band, error, required, np.zeros(1, dtype=bool), *unknown)
+
+
 def add_dynamics(
     case: Case,
     demand: Demand,

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from pathlib import Path
 
 import numpy as np
 import pandas as pd
@@ -15,6 +16,8 @@ import actuator_sizing as act
 from actuator_sizing.errors import InputError
 from actuator_sizing.sizing.robustness.sampled_sets import SAMPLED_CHECKS
 from tests.unit.robust_case import PARTS, evaluator, plain_case, spread, with_spreads
+
+DEMO = Path(__file__).parents[2] / "catalogs_demo"
 
 
 def study(*spreads, **options):
@@ -251,6 +254,79 @@ def test_missing_data_is_not_a_pass():
     found = act.robust(replace(case, drive_parameters=drives), **PARTS, samples=50, sensitivity=0, exact=5)
     assert "drive_peak_time" not in set(found.checks["check"])
     assert any("peak time" in title.lower() for title in found.not_checked)
+
+
+# -- checks that apply to some samples only --------------------------------------------------------------------
+
+
+def lift(capacitance_f, pulse_j, *spreads, **options):
+    """The demo lift, whose resistor burns or not with the capacitance of the bus and the payload."""
+    case = act.read_case(DEMO / "tray_lift")
+    stated = {"bus capacitance": capacitance_f, "brake resistor pulse energy": pulse_j} | options
+    spreads = spreads or (spread("payload", 0.3, "duty_cycle", shape="uniform"),)
+    case = replace(case, options=case.options | stated, tolerances=spreads)
+    return replace(case, options={key: value for key, value in case.options.items() if value is not None})
+
+
+LIFT_PARTS = {"motor": "sine-80m-325f", "gearhead": "planet-60-3", "drive": "feed-325-3rms"}
+
+
+@pytest.fixture(scope="module")
+def burns_when_heavy():
+    return act.robust(lift(0.0182, 1.0), **LIFT_PARTS, samples=40, exact=40, sensitivity=0)
+
+
+def test_a_check_that_applies_only_with_the_spread(burns_when_heavy):
+    """Without spread nothing burns; a heavier payload gives pulses far beyond a resistor of 1 J."""
+    found = row(burns_when_heavy.checks, "brake_resistor_pulse_energy")
+    assert np.isnan(found["nominal_utilisation"])
+    assert found["utilisation_q99"] > 10.0
+    assert 0.0 < burns_when_heavy.probability["probability"] <= found["probability"] < 1.0
+    assert any(
+        "Brake resistor pulse energy" in note and "applies to" in note for note in burns_when_heavy.notes
+    )
+    worst = row(burns_when_heavy.corners, "brake_resistor_pulse_energy")
+    assert worst["corner"] == "payload high"
+    assert not worst["passes"]
+
+
+def test_a_study_with_such_checks_is_drawn_and_written(burns_when_heavy, tmp_path):
+    assert burns_when_heavy.write(tmp_path / "study")
+
+
+@pytest.mark.parametrize("capacitance_f", [0.0155, 0.0162], ids=["burns without spread", "just not"])
+def test_where_a_check_does_not_apply_it_is_passed(capacitance_f, tmp_path):
+    """No rating is exceeded in any sample: those without a pulse pass like those with one."""
+    study = act.robust(lift(capacitance_f, 1500.0), **LIFT_PARTS, samples=40, exact=40, sensitivity=0)
+    for check in ("brake_resistor_peak_power", "brake_resistor_mean_power", "brake_resistor_pulse_energy"):
+        found = row(study.checks, check)
+        assert found["utilisation_q99"] < 1.0
+        assert found["probability"] == 1.0
+        assert row(study.corners, check)["passes"]
+        assert row(study.corners, check)["corner"] == "payload high"
+    assert study.write(tmp_path / "study")
+
+
+def test_what_cannot_be_checked_in_a_sample_is_not_passed():
+    study = act.robust(lift(0.0182, None), **LIFT_PARTS, samples=40, exact=40, sensitivity=0)
+    assert row(study.checks, "brake_resistor_pulse_energy")["probability"] < 1.0
+    assert any("not checked in" in note and "Brake resistor pulse energy" in note for note in study.notes)
+
+
+def test_advice_where_the_sheet_states_nothing_fails_no_sample(burns_when_heavy):
+    """The drive states no standstill current: the rule of thumb is advice, as in a comparison."""
+    found = row(burns_when_heavy.checks, "drive_standstill_current")
+    assert found["advice"]
+    assert found["probability"] < burns_when_heavy.probability["probability"]
+
+
+def test_checks_that_need_a_simulation_are_named_as_left_out():
+    options = {"settling band": 1e-4, "driven shaft stiffness": 1000.0}
+    study = act.robust(lift(560e-6, 1500.0, **options), **LIFT_PARTS, samples=5, exact=5, sensitivity=0)
+    left_out = [note for note in study.notes if "needs a simulation" in note]
+    assert any(note.endswith("Settling within dwell") for note in left_out)
+    assert not any("ollowing error" in note for note in left_out)  # not asked for
+    assert "settling" not in set(study.checks["check"])
 
 
 def test_the_first_set_that_passes_often_enough():

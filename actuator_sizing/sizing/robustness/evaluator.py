@@ -13,7 +13,8 @@ from actuator_sizing.case.model import Case, Limit
 from actuator_sizing.sizing.checks import Check, Sets
 from actuator_sizing.sizing.cycles import CycleDemand, cycle_demands, evaluate_cycles
 from actuator_sizing.sizing.demand import Demand
-from actuator_sizing.sizing.judging import NOT_APPLICABLE, ORDER, active_checks, is_binding, judge_sets
+from actuator_sizing.sizing.dynamic_results import wishes
+from actuator_sizing.sizing.judging import NOT_APPLICABLE, ORDER, Verdicts, active_checks, judge_sets
 from actuator_sizing.sizing.results import NOT_CHECKED
 from actuator_sizing.sizing.robustness.inputs import SpreadInputs, spread_inputs
 from actuator_sizing.sizing.robustness.sampled_sets import SAMPLED_CHECKS, SAMPLED_QUANTITIES, Sampler
@@ -34,7 +35,14 @@ class Judged:
     """N samples against C checks; `quantities` hold one array of shape (N,) by name, the largest of all cycles."""
 
     utilisation: FloatArray  # (N, C), NaN where the check was not made
+    codes: NDArray[np.int8]  # (N, C), as of `Verdicts`; NOT_APPLICABLE also where nothing was judged
+    binds: NDArray[np.bool_]  # (N, C), whether the sample can fail the check, or is only advised by it
     quantities: dict[str, FloatArray]
+
+    @property
+    def applies(self) -> NDArray[np.bool_]:
+        """Samples to which each check applies, shape (N, C)."""
+        return np.asarray(self.codes != NOT_APPLICABLE)
 
 
 @dataclass(frozen=True)
@@ -50,11 +58,14 @@ class SetEvaluator:
     inputs : SpreadInputs
         The d inputs. [-]
     checks, limits : tuple of Check, tuple of Limit
-        The C checks that apply to the set and whose data are known. [-]
+        The C active checks, without those of `not_checked` and `simulated`. Which apply is decided in every
+        sample: a brake resistor that idles without spread may burn with it. [-]
     not_checked : tuple of Check
         Checks that apply, but whose data are missing. [-]
     nominal : ndarray, shape (C,)
-        Utilisation without spread. [-]
+        Utilisation without spread; NaN where the check does not apply. [-]
+    simulated : tuple of Check
+        Checks that the case asks for, left out because they need a simulation of every sample. [-]
     put_aside : tuple of Check
         Checks that were left out because they need the whole chain for every sample. [-]
     """
@@ -66,6 +77,7 @@ class SetEvaluator:
     limits: tuple[Limit, ...]
     not_checked: tuple[Check, ...]
     nominal: FloatArray
+    simulated: tuple[Check, ...] = ()
     put_aside: tuple[Check, ...] = ()
 
     @classmethod
@@ -75,8 +87,11 @@ class SetEvaluator:
         cycles = (CycleDemand(case, demand),) if one and demand is not None else cycle_demands(case)
         inputs = spread_inputs(case)
         checks, limits = active_checks(case.limits)
-        verdicts = judge_sets(evaluate_cycles(cycles, np.zeros((1, 3), dtype=np.intp)), checks, limits)
-        known = [i for i, code in enumerate(verdicts.codes[0]) if code not in (NOT_APPLICABLE, _UNKNOWN)]
+        sets = evaluate_cycles(cycles, np.zeros((1, 3), dtype=np.intp))
+        verdicts = judge_sets(sets, checks, limits)
+        of_motion = [any(need.part == "dynamics" for need in check.needs) for check in checks]
+        asked = replace(sets[0], dynamics=wishes(case))
+        known = [i for i, code in enumerate(verdicts.codes[0]) if code != _UNKNOWN and not of_motion[i]]
         return cls(
             case,
             cycles,
@@ -85,18 +100,13 @@ class SetEvaluator:
             tuple(limits[i] for i in known),
             tuple(c for c, code in zip(checks, verdicts.codes[0], strict=True) if code == _UNKNOWN),
             verdicts.utilisation[0, known],
+            tuple(c for c, moves in zip(checks, of_motion, strict=True) if moves and c.applies(asked).any()),
         )
 
     @cached_property
     def allowed(self) -> FloatArray:
         """Allowed utilisation of each check, shape (C,). [-]"""
         return np.array([limit.allowed_utilisation for limit in self.limits])
-
-    @cached_property
-    def binding(self) -> NDArray[np.bool_]:
-        """Checks that a set can fail, shape (C,)."""
-        pairs = zip(self.checks, self.limits, strict=True)
-        return np.array([is_binding(check, limit) for check, limit in pairs], dtype=bool)
 
     @cached_property
     def at_once(self) -> NDArray[np.bool_]:
@@ -112,7 +122,7 @@ class SetEvaluator:
             checks=tuple(self.checks[i] for i in kept),
             limits=tuple(self.limits[i] for i in kept),
             nominal=self.nominal[kept],
-            put_aside=tuple(self.checks[i] for i in np.flatnonzero(~self.at_once)),
+            put_aside=tuple(self.checks[i] for i in np.flatnonzero(~self.at_once & ~np.isnan(self.nominal))),
         )
         # They depend on the set and its inputs, not on the checks left, and are dear.
         other.__dict__.update(_sampler=self._sampler, _deviation=self._deviation, one_by_one=self.one_by_one)
@@ -190,14 +200,21 @@ class SetEvaluator:
         return self._quick(values, self.at_once)
 
     def _quick(self, values: FloatArray, columns: NDArray[np.bool_]) -> Judged:
-        utilisation = np.full((len(values), len(self.checks)), np.nan)
+        shape = (len(values), len(self.checks))
+        utilisation, codes = np.full(shape, np.nan), np.full(shape, NOT_APPLICABLE, dtype=np.int8)
+        binds = np.zeros(shape, dtype=bool)
         sampler = self._sampler
         if sampler is None or not columns.any() or not len(values):
-            return Judged(utilisation, {})
+            return Judged(utilisation, codes, binds, {})
         sets = sampler.sets(self.samples(values))
         chosen = np.flatnonzero(columns)
-        utilisation[:, chosen] = self._judge(sets, tuple(chosen))
-        return Judged(utilisation, _quantities(sets))
+        found = self._judge(sets, tuple(chosen))
+        utilisation[:, chosen], codes[:, chosen], binds[:, chosen] = (
+            found.utilisation,
+            found.codes,
+            found.binds,
+        )
+        return Judged(utilisation, codes, binds, _quantities(sets))
 
     def exact(self, values: FloatArray, progress: Progress | None = None) -> Judged:
         """Judge samples by every check through the whole exact chain.
@@ -219,6 +236,8 @@ class SetEvaluator:
                 progress(min(1.0, (start + size) / count))
         return Judged(
             np.concatenate([part.utilisation for part in parts]),
+            np.concatenate([part.codes for part in parts]),
+            np.concatenate([part.binds for part in parts]),
             {name: np.concatenate([part.quantities[name] for part in parts]) for name in SAMPLED_QUANTITIES},
         )
 
@@ -235,11 +254,12 @@ class SetEvaluator:
         sets = evaluate_cycles(cycles, index)
         found = [_quantities(each) for each in sets]
         largest = {name: np.fmax.reduce([one[name] for one in found]) for name in SAMPLED_QUANTITIES}
-        return Judged(self._judge(sets, everything), largest)
+        verdicts = self._judge(sets, everything)
+        return Judged(verdicts.utilisation, verdicts.codes, verdicts.binds, largest)
 
-    def _judge(self, sets: Sets | tuple[Sets, ...], columns: tuple[int, ...]) -> FloatArray:
+    def _judge(self, sets: Sets | tuple[Sets, ...], columns: tuple[int, ...]) -> Verdicts:
         checks, limits = tuple(self.checks[i] for i in columns), tuple(self.limits[i] for i in columns)
-        return judge_sets(sets, checks, limits).utilisation
+        return judge_sets(sets, checks, limits)
 
 
 def _quantities(sets: Sets) -> dict[str, FloatArray]:

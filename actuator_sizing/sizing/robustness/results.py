@@ -45,7 +45,7 @@ class Robustness:
     corners : DataFrame
         Worst corner of the bounded inputs for each check.
     not_checked : tuple of str
-        Titles of checks whose data are missing: they are part of no probability.
+        Titles of checks whose data are missing without spread: they are part of no probability.
     largest_deviation : float
         Of samples taken at once from the whole chain, over what is allowed; NaN where none were. [-]
     notes : tuple of str
@@ -94,6 +94,7 @@ class Robustness:
     def weakest_that_move(self) -> tuple[str, ...]:
         """Keys of the checks on which an input acts, weakest first."""
         moving = self.swings["utilisation_low"] != self.swings["utilisation_high"]
+        moving &= self.swings["utilisation_nominal"].notna()  # else it applies with the spread only
         known = set(self.swings.loc[moving, "check"])
         return tuple(check for check in self.weakest_first if check in known)
 

@@ -16,12 +16,14 @@ from actuator_sizing.sizing.robustness.evaluator import SetEvaluator
 from actuator_sizing.sizing.robustness.results import Robustness
 from actuator_sizing.sizing.robustness.study import (
     REPLICATES,
+    Sampled,
     Sampling,
     check_table,
     corner_table,
     draw,
     input_table,
     judge_samples,
+    partly_made,
     passes_all,
     probability,
     quantity_table,
@@ -249,6 +251,10 @@ def _study(
         evaluator = evaluator.at_once_only()
     sampled = judge_samples(evaluator, draw(evaluator, sampling), sampling.exact, progress)
     swings = swing_table(evaluator)
+    corners = corner_table(evaluator, swings)
+    ends = swings[["utilisation_low", "utilisation_high"]].notna().any(axis=1)
+    checks = check_table(evaluator, sampled, {*corners["check"], *swings.loc[ends, "check"]})
+    shown = frozenset(checks["check"])
     direct = bool(case.gearhead_parameters.is_direct[0])
     return Robustness(
         case_name=case.name,
@@ -261,28 +267,38 @@ def _study(
         seed=sampling.seed,
         probability=probability(passes_all(evaluator, sampled)),
         inputs=input_table(evaluator),
-        checks=check_table(evaluator, sampled),
+        checks=checks,
         quantities=quantity_table(sampled),
         sensitivity=sensitivity_table(evaluator, sampling),
-        swings=swings,
-        corners=corner_table(evaluator, swings),
+        swings=swings[swings["check"].isin(shown)].reset_index(drop=True),
+        corners=corners,
         not_checked=tuple(check.title for check in evaluator.not_checked),
         largest_deviation=evaluator.largest_deviation,
-        notes=_notes(evaluator, sampling, sampled.exact is not None),
+        notes=_notes(evaluator, sampling, sampled, shown),
         shortlist=pd.DataFrame(shortlist),
         wanted_probability=np.nan if wanted is None else wanted,
     )
 
 
-def _notes(evaluator: SetEvaluator, sampling: Sampling, uses_exact: bool) -> tuple[str, ...]:
+def _notes(
+    evaluator: SetEvaluator, sampling: Sampling, sampled: Sampled, shown: frozenset[str]
+) -> tuple[str, ...]:
     """Conditions that a reader must know."""
     inputs = evaluator.inputs
     notes = [f"not used: {text}" for text in inputs.left_out]
     notes += [f"not sampled here, see the command robust: {check.title}" for check in evaluator.put_aside]
-    slow = [
-        check.title for check, quick in zip(evaluator.checks, evaluator.at_once, strict=True) if not quick
+    if evaluator.put_aside:
+        notes.append("nor are checks that apply only with the spread")
+    notes += [
+        f"not sampled, needs a simulation of every sample: {check.title}" for check in evaluator.simulated
     ]
-    if uses_exact:
+    notes += partly_made(evaluator, sampled)
+    slow = [
+        check.title
+        for check, quick in zip(evaluator.checks, evaluator.at_once, strict=True)
+        if not quick and check.key in shown
+    ]
+    if sampled.exact is not None and slow:
         notes.append(f"from {sampling.exact} samples through the whole chain: {', '.join(slow)}; all checks together "
                      "too")  # fmt: skip
     if evaluator.at_once.any():

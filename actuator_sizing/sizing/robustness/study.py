@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Collection
 from dataclasses import dataclass
 from itertools import product
 from typing import TYPE_CHECKING, Any
@@ -62,13 +62,16 @@ class Sampled:
 
     quick: Judged
     exact: Judged | None
+    at_once: NDArray[np.bool_]  # (C,) checks of `quick`
 
-    def of_check(self, column: int) -> FloatArray:
-        """Utilisation of one check in the samples in which it was made. [-]"""
-        quick = self.quick.utilisation[:, column]
-        if self.exact is None or not np.all(np.isnan(quick)):
-            return quick
-        return self.exact.utilisation[:, column]
+    def of_check(self, column: int) -> Judged:
+        """The samples in which one check was made."""
+        return self.quick if self.exact is None or self.at_once[column] else self.exact
+
+
+def passing(judged: Judged, allowed: FloatArray) -> NDArray[np.bool_]:
+    """Samples that pass each check, shape (N, C): one that does not apply is passed, one not checked is not."""
+    return ~judged.applies | (judged.utilisation <= allowed)
 
 
 def judge_samples(
@@ -89,25 +92,38 @@ def judge_samples(
     """
     quick = evaluator.quick(values)
     if evaluator.at_once.all():
-        return Sampled(quick, None)
+        return Sampled(quick, None, evaluator.at_once)
     report = None if progress is None else lambda part: progress("exact samples", part)
-    return Sampled(quick, evaluator.exact(values[:exact], report))
+    return Sampled(quick, evaluator.exact(values[:exact], report), evaluator.at_once)
 
 
-def check_table(evaluator: SetEvaluator, sampled: Sampled) -> pd.DataFrame:
-    """Probability, its interval and quantiles of the utilisation of each check."""
+def check_table(evaluator: SetEvaluator, sampled: Sampled, tried: Collection[str] = ()) -> pd.DataFrame:
+    """Probability, its interval and quantiles of the utilisation of each check that applies at all.
+
+    Parameters
+    ----------
+    evaluator : SetEvaluator
+        The set. [-]
+    sampled : Sampled
+        Its samples. [-]
+    tried : collection of str
+        Checks that apply at a swing or in a corner, be it in no sample. [-]
+    """
     import pandas as pd
 
     rows: list[dict[str, Any]] = []
     for column, (check, allowed) in enumerate(zip(evaluator.checks, evaluator.allowed, strict=True)):
-        use = sampled.of_check(column)
+        judged = sampled.of_check(column)
+        use, applies = judged.utilisation[:, column], judged.applies[:, column]
+        if np.isnan(evaluator.nominal[column]) and not applies.any() and check.key not in tried:
+            continue
         row: dict[str, Any] = {
             "check": check.key,
             "title": check.title,
-            "advice": not evaluator.binding[column],
+            "advice": bool(applies.any() and not judged.binds[applies, column].any()),
             "nominal_utilisation": evaluator.nominal[column],
             "allowed_utilisation": allowed,
-        } | probability(use <= allowed)
+        } | probability(passing(judged, evaluator.allowed)[:, column])
         # Infinite utilisations are the highest of all; a sample without data is none.
         known = np.sort(use[~np.isnan(use)])
         row |= {f"utilisation_q{round(100 * q):02d}": _quantile(known, q) for q in QUANTILES}
@@ -137,8 +153,26 @@ def probability(passes: NDArray[np.bool_]) -> dict[str, Any]:
 def passes_all(evaluator: SetEvaluator, sampled: Sampled) -> NDArray[np.bool_]:
     """Samples that pass every check that a set can fail: all of them, or those of the whole chain."""
     judged = sampled.quick if sampled.exact is None else sampled.exact
-    use = judged.utilisation[:, evaluator.binding]
-    return np.asarray(np.all(use <= evaluator.allowed[evaluator.binding], axis=1))
+    return np.asarray(np.all(passing(judged, evaluator.allowed) | ~judged.binds, axis=1))
+
+
+def partly_made(evaluator: SetEvaluator, sampled: Sampled) -> tuple[str, ...]:
+    """Say which checks apply to some samples only, and which lack data in samples."""
+    partly: dict[tuple[int, int], list[str]] = {}
+    lacking: dict[tuple[int, int], list[str]] = {}
+    for column, check in enumerate(evaluator.checks):
+        judged = sampled.of_check(column)
+        applies = judged.applies[:, column]
+        unknown = applies & np.isnan(judged.utilisation[:, column])
+        if applies.any() and not applies.all():
+            partly.setdefault((int(np.count_nonzero(applies)), len(applies)), []).append(check.title)
+        if unknown.any():
+            lacking.setdefault((int(np.count_nonzero(unknown)), len(unknown)), []).append(check.title)
+    found = [f"applies to {count} of {of} samples, counts as passed in the others; quantiles are of the former: "
+             f"{', '.join(titles)}" for (count, of), titles in partly.items()]  # fmt: skip
+    found += [f"not checked in {count} of {of} samples for lack of data, which do not count as passed: "
+              f"{', '.join(titles)}" for (count, of), titles in lacking.items()]  # fmt: skip
+    return tuple(found)
 
 
 def quantity_table(sampled: Sampled) -> pd.DataFrame:
@@ -219,7 +253,9 @@ def _indices(
         a, b = scores[:, :d], scores[:, d:]
         designs.append(np.concatenate([a[None], b[None], exchanged(a, b, groups)]))
     scores = np.stack(designs)  # (R, 2 + G, n, d)
-    use = evaluator.quick(evaluator.inputs.of_scores(scores.reshape(-1, d))).utilisation[:, columns]
+    judged = evaluator.quick(evaluator.inputs.of_scores(scores.reshape(-1, d)))
+    # What does not apply uses nothing of its limit.
+    use = np.where(judged.applies, judged.utilisation, 0.0)[:, columns]
     most = _CLIPPED * evaluator.allowed[columns]
     use = np.minimum(np.nan_to_num(use, nan=np.inf, posinf=np.inf), most)
     results = use.reshape(REPLICATES, 2 + len(groups), n, -1)
@@ -229,11 +265,11 @@ def _indices(
 # -- swings and corners -----------------------------------------------------------------------------------
 
 
-def judge_few(evaluator: SetEvaluator, values: FloatArray) -> FloatArray:
-    """Utilisation of every check for few values of the inputs, through the whole chain where it is needed. [-]"""
+def judge_few(evaluator: SetEvaluator, values: FloatArray) -> Judged:
+    """Every check for few values of the inputs, through the whole chain where it is needed."""
     if evaluator.at_once.all():
-        return evaluator.quick(values).utilisation
-    return evaluator.exact(values).utilisation
+        return evaluator.quick(values)
+    return evaluator.exact(values)
 
 
 def swing_table(evaluator: SetEvaluator) -> pd.DataFrame:
@@ -244,7 +280,7 @@ def swing_table(evaluator: SetEvaluator) -> pd.DataFrame:
     values = np.repeat(inputs.nominal[None], 2 * len(inputs), axis=0)
     for i, one in enumerate(inputs.inputs):
         values[2 * i : 2 * i + 2, i] = one.swing
-    use = judge_few(evaluator, values)
+    use = judge_few(evaluator, values).utilisation
     rows = [
         {
             "check": check.key,
@@ -304,11 +340,15 @@ def corner_table(evaluator: SetEvaluator, swings: pd.DataFrame) -> pd.DataFrame:
     values = np.repeat(inputs.nominal[None], len(sides), axis=0)
     for place, i in enumerate(bounded):
         values[:, i] = np.array(inputs.inputs[i].distribution.bounds)[sides[:, place]]
-    use = np.nan_to_num(judge_few(evaluator, values), nan=np.inf, posinf=np.inf)
+    judged = judge_few(evaluator, values)
+    # The worst is one without data, the best one to which the check does not apply.
+    use = np.where(judged.applies, np.nan_to_num(judged.utilisation, nan=np.inf, posinf=np.inf), -np.inf)
     worst = use.argmax(axis=0)
     rows = []
     for column, check in enumerate(evaluator.checks):
         at = worst[column]
+        if not judged.applies[at, column]:
+            continue  # in no corner
         same = (
             np.ptp(use[:, column]) <= 1e-12 * use[at, column] if np.isfinite(use[:, column]).all() else False
         )
@@ -325,9 +365,9 @@ def _likely_corners(evaluator: SetEvaluator, swings: pd.DataFrame, bounded: list
     corners = []
     for check in evaluator.checks:
         mine = swings[swings["check"] == check.key]
-        worse = (mine["utilisation_high"].to_numpy(float) > mine["utilisation_low"].to_numpy(float)).astype(
-            int
-        )
+        # Where a check does not apply is the better side.
+        low, high = (mine[f"utilisation_{end}"].fillna(-np.inf).to_numpy(float) for end in ("low", "high"))
+        worse = (high > low).astype(int)
         corners.append(worse[bounded])
     return np.unique(np.array(corners, dtype=np.intp), axis=0)
 
