@@ -50,6 +50,10 @@ def _ratio_working(symbols: str, unit: str, measure: Callable[[Sets], Measure]) 
     return working
 
 
+#: Without it less would be taken from the bus than the motor needs: on the safe side for braking alone.
+_EFFICIENCY = Need("drives", "efficiency", "efficiency")
+
+
 # -- highest voltage --------------------------------------------------------------------------------
 def _voltage_measure(sets: Sets) -> Measure:
     b = sets.once(bus_results)
@@ -152,8 +156,9 @@ _CURRENT_LIMIT = Need("axis", "supply current limit", "supply current limit", kn
 
 
 def _is_bridged(sets: Sets) -> NDArray[np.bool_]:
-    """Sets whose capacitors need not help, or are known."""
-    return ~np.isnan(sets.once(bus_results).voltage_min_v)
+    """Sets whose capacitors need not help, or are known; without an efficiency nothing is known of that yet."""
+    b = sets.once(bus_results)
+    return np.asarray(~np.isnan(b.voltage_min_v) | np.isnan(b.supply_power_peak_w))
 
 
 _CAPACITANCE = Need("drives", "capacitance_f", "internal capacitance", known_by=_is_bridged)
@@ -167,7 +172,7 @@ BUS_SAG = Check(
     formula="max u ≤ U · m in the motor's basis at each instant, U = √(U(p)² − 2 W/C), "
     "U(p) = U_min/2 + √(U_min²/4 − R_s p), W what the capacitors give beyond the current limit",
     source="Internal resistance and current limit of the supply; first principles",
-    needs=(_CURRENT_LIMIT, _CAPACITANCE),
+    needs=(_EFFICIENCY, _CURRENT_LIMIT, _CAPACITANCE),
     measure=_sag_measure,
     working=_ratio_working("u / U(p) m", "V", _sag_measure),
     applies=_sags,
@@ -187,7 +192,12 @@ BUS_MINIMUM = Check(
     formula="U_drive,min ≤ min over the cycle of √(U(p)² − 2 W/C), U(p) = U_min/2 + √(U_min²/4 − R_s p), "
     "dW/dt = p − I_limit U_low beyond the current limit of the supply, U_low = max(U_drive,min, U_min/2)",
     source="Internal resistance and current limit of the supply, in periodic steady state; first principles",
-    needs=(Need("drives", "bus_voltage_min_v", "minimum bus voltage"), _CURRENT_LIMIT, _CAPACITANCE),
+    needs=(
+        _EFFICIENCY,
+        Need("drives", "bus_voltage_min_v", "minimum bus voltage"),
+        _CURRENT_LIMIT,
+        _CAPACITANCE,
+    ),
     measure=_lowest_measure,
     working=_ratio_working("U_drive,min / U_lowest", "V", _lowest_measure),
     applies=_sags,
@@ -299,9 +309,6 @@ BRAKE_PULSE = Check(
 
 
 # -- supply -----------------------------------------------------------------------------------------
-_EFFICIENCY = Need("drives", "efficiency", "efficiency")
-
-
 def _supply_check(
     key: str,
     title: str,
