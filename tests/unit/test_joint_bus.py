@@ -190,6 +190,26 @@ def test_the_bound_is_never_below_the_exact_sum(soft):
             assert float(bound.voltage_min_v[0]) <= float(exact.voltage_min_v[0])
 
 
+@pytest.mark.parametrize(("segments", "offset_s"), [(SHORT, 0.2), (SHORT, np.nan), (ODD, np.nan)])
+def test_a_partner_whose_drive_hides_its_losses_leaves_the_supply_unknown(segments, offset_s):
+    stated = partner(segments, offset_s)
+    silent_axis = replace(
+        stated.axis, drive_parameters=replace(stated.axis.drive_parameters, efficiency=np.array([np.nan]))
+    )
+    rated = {"supply peak power": 1e5, "supply continuous power": 1e5, "supply internal resistance": 0.1}
+    for other, expected in ((stated, "passes"), (replace(stated, axis=silent_axis), "not checked")):
+        sets = sets_of(other, **rated)
+        for key in ("supply_peak_power", "supply_mean_power", "bus_sag", "bus_minimum_voltage"):
+            found = verdict(sets, key)
+            assert found.verdict == expected, key
+            if expected != "passes":
+                assert found.missing == ("efficiency of the drives of all other axes on the bus",)
+    b = sets.once(bus_results)
+    for name in ("supply_power_mean_w", "supply_power_peak_w", "supply_power_rms_w", "voltage_min_v"):
+        assert np.isnan(getattr(b, name)).all(), name
+    assert np.isfinite(b.voltage_max_v).all()  # all that comes back counted: on the safe side
+
+
 def test_a_partner_alone_fails_the_supply():
     own = sets_of().once(own_results)
     rated = {"supply peak power": 1.2 * float(own.supply_power_peak_w[0]), "supply continuous power": 1e4}

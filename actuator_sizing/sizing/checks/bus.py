@@ -12,7 +12,7 @@ from actuator_sizing.sizing.bus import BusResults
 from actuator_sizing.sizing.bus_sag import is_soft
 from actuator_sizing.sizing.bus_side import BATTERY, DC_SUPPLY, supply_feeds_back, supply_kind
 from actuator_sizing.sizing.checks.base import SUSTAINED, Check, Measure, Need, Sets, digits
-from actuator_sizing.sizing.joint_bus import bus_results, joint_rule
+from actuator_sizing.sizing.joint_bus import bus_results, joint_rule, partners_known
 
 FloatArray = NDArray[np.float64]
 
@@ -51,7 +51,11 @@ def _ratio_working(symbols: str, unit: str, measure: Callable[[Sets], Measure]) 
 
 
 #: Without it less would be taken from the bus than the motor needs: on the safe side for braking alone.
-_EFFICIENCY = Need("drives", "efficiency", "efficiency")
+_EFFICIENCY = (
+    Need("drives", "efficiency", "efficiency"),
+    Need("axis", "bus_partners", "efficiency of the drives of all other axes on the bus",
+         known_by=lambda sets: np.full(len(sets), partners_known(sets))),
+)  # fmt: skip
 
 
 # -- highest voltage --------------------------------------------------------------------------------
@@ -172,7 +176,7 @@ BUS_SAG = Check(
     formula="max u ≤ U · m in the motor's basis at each instant, U = √(U(p)² − 2 W/C), "
     "U(p) = U_min/2 + √(U_min²/4 − R_s p), W what the capacitors give beyond the current limit",
     source="Internal resistance and current limit of the supply; first principles",
-    needs=(_EFFICIENCY, _CURRENT_LIMIT, _CAPACITANCE),
+    needs=(*_EFFICIENCY, _CURRENT_LIMIT, _CAPACITANCE),
     measure=_sag_measure,
     working=_ratio_working("u / U(p) m", "V", _sag_measure),
     applies=_sags,
@@ -193,7 +197,7 @@ BUS_MINIMUM = Check(
     "dW/dt = p − I_limit U_low beyond the current limit of the supply, U_low = max(U_drive,min, U_min/2)",
     source="Internal resistance and current limit of the supply, in periodic steady state; first principles",
     needs=(
-        _EFFICIENCY,
+        *_EFFICIENCY,
         Need("drives", "bus_voltage_min_v", "minimum bus voltage"),
         _CURRENT_LIMIT,
         _CAPACITANCE,
@@ -328,7 +332,7 @@ def _supply_check(
         unit="W",
         formula=formula,
         source="Power at the terminals over the drive's efficiency; ratings of the supply",
-        needs=(_EFFICIENCY, Need("axis", option, option)),
+        needs=(*_EFFICIENCY, Need("axis", option, option)),
         measure=measure,
         working=_ratio_working("P / P_rated", "W", measure),
         applies=_supply_is_rated,
