@@ -298,3 +298,15 @@ def test_another_bus_voltage_is_told(tmp_path, volts, usable):
     made, problems = check_case(two_cases(tmp_path, ["second", "../other", "", "", "", ""], other=other))
     assert sum("since the bus is the same" in str(problem) for problem in problems) == 2
     assert (made is not None) == usable
+
+
+def test_a_partner_with_several_cycles_is_not_taken_for_its_first(tmp_path):
+    other = complete()
+    head, *rows = other["duty_cycle"]
+    other["duty_cycle"] = [["cycle", *head], *([name, *row] for name in ("light", "heavy") for row in rows)]
+    made, problems = check_case(two_cases(tmp_path, ["second", "../other", "", "", "", ""], other=other))
+    assert made is None
+    told = [str(problem) for problem in problems if "a case with 2 cycles" in str(problem)]
+    assert len(told) == 1
+    assert "bus_partners" in told[0]
+    assert "one cycle that asks most" in told[0]
