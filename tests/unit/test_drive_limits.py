@@ -121,6 +121,16 @@ def test_the_amplitude_of_a_long_hold_is_compared():
     assert fails(again) == {"drive_standstill_current"}
 
 
+def test_a_stated_standstill_current_is_derated_as_the_continuous_one():
+    both = replace(HOT, altitude_m=1800.0)
+    sets = sets_of(
+        surroundings=both, ambient_derating=0.02, altitude_derating_per_100_m=0.01, standstill_current=6.0
+    )
+    found = judged(sets)["drive_standstill_current"]
+    assert found.capacity == pytest.approx(6.0 * (1.0 - 0.16) * (1.0 - 0.08), rel=1e-12)
+    assert "0.7728" in found.working
+
+
 def test_short_stops_do_not_count():
     # The last dwell goes on into the first move; no stop of this cycle reaches a second.
     assert judged(sets_of(segments=RESTS))["drive_standstill_current"].demand == 0.0

@@ -17,6 +17,7 @@ from actuator_sizing.core.machine import (
 )
 from actuator_sizing.core.parameters import BRUSHED, SINUSOIDAL
 from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits
+from actuator_sizing.sizing.derating import derating_of
 from actuator_sizing.sizing.pair_course import course
 
 FloatArray = NDArray[np.float64]
@@ -91,18 +92,27 @@ def _running(lasts_s: FloatArray, slow: BoolArray) -> FloatArray:
     return answer
 
 
+def _stated_standstill(sets: Sets) -> tuple[FloatArray, FloatArray]:
+    """Standstill current of the sheet, and what the surroundings leave of it: as of the continuous one. [A], [-]"""
+    left = derating_of(sets.case)
+    factor = (left.by_ambient * left.by_altitude)[sets.index[:, 2]]
+    return sets.catalog_values("drives", "standstill_current"), factor
+
+
 def _standstill_measure(sets: Sets) -> Measure:
     held = sets.once(_held)
     per_drive = amplitude_per_unit_current(sets.drives.current_basis)
-    stated = sets.catalog_values("drives", "standstill_current")
-    capacity = np.where(np.isnan(stated), STANDSTILL_SHARE * sets.drives.continuous_current_a, stated)
+    stated, left = _stated_standstill(sets)
+    capacity = np.where(np.isnan(stated), STANDSTILL_SHARE * sets.drives.continuous_current_a, stated * left)
     return Measure(held.amplitude_a / per_drive, capacity, held.at_s)
 
 
 def _standstill_working(sets: Sets, i: int) -> str:
-    stated = float(sets.catalog_values("drives", "standstill_current")[i])
+    stated, left = (float(column[i]) for column in _stated_standstill(sets))
     m = _standstill_measure(sets)
     rule = f"{digits(float(m.capacity[i]))} A as stated"
+    if left != 1.0:
+        rule = f"{digits(stated)} A as stated · {digits(left)} left in these surroundings"
     if np.isnan(stated):
         rule = f"I_cont / √2 = {digits(float(sets.drives.continuous_current_a[i]))} / √2 A, {_RULE}"
     return f"I_held = {digits(float(m.demand[i]))} A in the drive's basis; I_0 = {rule}; {m.quotient(i)}"
