@@ -6,8 +6,10 @@ import numpy as np
 import pytest
 from scipy.optimize import brentq
 
+from actuator_sizing.case.reading import read_case
 from actuator_sizing.core.drive_limits import derating_factor, ripple_current, ripple_loss
 from actuator_sizing.core.parameters import BRUSHED, SINUSOIDAL, SIX_STEP
+from actuator_sizing.sizing.checks.drive_limits import _held
 from actuator_sizing.sizing.demand import build_demand
 from actuator_sizing.sizing.judging import active_checks, check_results, judge_sets
 from actuator_sizing.sizing.levers import single
@@ -144,6 +146,18 @@ def test_without_a_stated_current_the_rule_of_thumb_only_advises():
     assert found.verdict == LOW_RESERVE
     assert found.utilisation > 1.0
     assert "drive_standstill_current" not in fails(weak)
+
+
+def test_a_long_record_is_held_as_long_as_in_its_order():
+    made = read_case("catalogs_demo/tray_shuttle_measured")
+    index = np.array([[0, 0, 0], [3, 2, 1]])
+    condensed, full = (
+        evaluate_sets(made, build_demand(made, in_order=in_order), index) for in_order in (False, True)
+    )
+    assert condensed.demand.slices is not None
+    found, expected = (_held(sets) for sets in (condensed, full))
+    assert expected.amplitude_a.min() > 0.0
+    np.testing.assert_array_equal(found.amplitude_a, expected.amplitude_a)
 
 
 # -- electrical frequency -----------------------------------------------------------------------------
