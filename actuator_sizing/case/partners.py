@@ -86,6 +86,12 @@ def join_partners(case: Case, place: Path, problems: ProblemList, read: Reader) 
             got = f"{shown(partner.path)}, which names {left_out.name} as its partner"
             _wrong(problems, partner, "case", got, "every axis of the bus in this table",
                    "Add a row for it if it is on this bus.", WARNING)  # fmt: skip
+        if len(other.cycles) > 1:
+            # One of them alone may be the mildest, and the sum would look better than the bus ever is.
+            _wrong(problems, partner, "case", f"{shown(partner.path)}, a case with {len(other.cycles)} cycles",
+                   "a case with one cycle", "Name a copy of that case with the one cycle that asks most of the bus, "
+                   "and the parts of that axis here.")  # fmt: skip
+            continue
         _same_bus(case, partner, other, problems)
         if _parts_exist(partner, other, problems):
             joined.append(replace(partner, axis=replace(other, partners=())))

@@ -223,12 +223,12 @@ def results_of(
         supply_power_peak_w=known * draw.peak_w,
         supply_power_peak_at_s=draw.peak_at_s,
         supply_power_rms_w=known * np.sqrt(draw.mean_square_w2),
-        sag_utilisation=droop.utilisation,
-        sag_voltage_needed_v=droop.needed_v,
-        sag_voltage_available_v=droop.available_v,
-        sag_at_s=droop.at_s,
-        voltage_min_v=droop.lowest_v,
-        voltage_min_at_s=droop.lowest_at_s,
+        sag_utilisation=known * droop.utilisation,
+        sag_voltage_needed_v=known * droop.needed_v,
+        sag_voltage_available_v=known * droop.available_v,
+        sag_at_s=known * droop.at_s,
+        voltage_min_v=known * droop.lowest_v,
+        voltage_min_at_s=known * droop.lowest_at_s,
     )
 
 

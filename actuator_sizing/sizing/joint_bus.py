@@ -179,16 +179,21 @@ def partner_power(partner: BusPartner, sets: Sets) -> PartnerPower:
     )
 
 
+def partners_known(sets: Sets) -> bool:
+    """Whether the drives of all other axes on the bus state their efficiency."""
+    return not any(np.isnan(partner.results.supply_power_peak_w[0]) for partner in sets.partners)
+
+
 def _joint_side(sets: Sets, partners: tuple[PartnerPower, ...]) -> BusSide:
     """The bus with the capacitors of every drive on it; those that are not known count as nothing."""
     more = sum(partner.capacitance_f for partner in partners)
-    if more == 0.0:
-        return bus_side(sets, clamping_threshold(sets))
-    outside = float(np.nan_to_num(sets.option("bus capacitance"), nan=0.0)) + more
-    options = {**sets.case.options, "bus capacitance": outside}
-    return bus_side(
-        replace(sets, case=replace(sets.case, options=options), _found={}), clamping_threshold(sets)
-    )
+    if more != 0.0:
+        outside = float(np.nan_to_num(sets.option("bus capacitance"), nan=0.0)) + more
+        options = {**sets.case.options, "bus capacitance": outside}
+        sets = replace(sets, case=replace(sets.case, options=options), _found={})
+    side = bus_side(sets, clamping_threshold(sets))
+    # What the bus gives is known only where the losses of every drive on it are.
+    return side if partners_known(sets) else replace(side, stated_efficiency=np.full(len(side), np.nan))
 
 
 def _repeats(period_s: float, partners: tuple[PartnerPower, ...]) -> int | None:
@@ -341,6 +346,7 @@ def _coinciding(sets: Sets, own: BusResults, partners: tuple[PartnerPower, ...],
     """Extremes of all axes at once, and nothing that one gives back counted on by another."""
     alone = [partner.results for partner in partners]
     peaks = sum(float(r.supply_power_peak_w[0]) for r in alone)
+    known = np.where(np.isnan(side.stated_efficiency), np.nan, 1.0)
     free = replace(
         sets, case=replace(sets.case, options={**sets.case.options, "brake resistor": None}), _found={}
     )
@@ -357,12 +363,11 @@ def _coinciding(sets: Sets, own: BusResults, partners: tuple[PartnerPower, ...],
     clamps = ~np.isnan(side.threshold_v) & (not feeds_back)
     under = None
     if is_soft(sets):
-        under = bus_under_load(sets, needed, BusPower(power.duration_s, power.power_w + peaks), side)
+        under = bus_under_load(
+            sets, needed, BusPower(power.duration_s, power.power_w + np.nan_to_num(peaks)), side
+        )
     droop = sag(sets, np.arange(len(sets)), under)
-    known = np.where(np.isnan(own.supply_power_mean_w), np.nan, 1.0)
-    mean = known * taken + 0.0 * sum(
-        float(r.supply_power_mean_w[0]) for r in alone
-    )  # unknown if one of them is
+    mean = known * taken
     rms = own.supply_power_rms_w + sum(float(r.supply_power_rms_w[0]) for r in alone)
     pulse = np.where(clamps, own.brake_pulse_j + sum(_largest_return(partner) for partner in partners), 0.0)
     with np.errstate(divide="ignore", invalid="ignore"):
@@ -380,12 +385,12 @@ def _coinciding(sets: Sets, own: BusResults, partners: tuple[PartnerPower, ...],
         supply_power_mean_w=mean,
         supply_power_peak_w=own.supply_power_peak_w + peaks,
         supply_power_rms_w=rms,
-        sag_utilisation=droop.utilisation,
-        sag_voltage_needed_v=droop.needed_v,
-        sag_voltage_available_v=droop.available_v,
-        sag_at_s=droop.at_s,
-        voltage_min_v=droop.lowest_v,
-        voltage_min_at_s=droop.lowest_at_s,
+        sag_utilisation=known * droop.utilisation,
+        sag_voltage_needed_v=known * droop.needed_v,
+        sag_voltage_available_v=known * droop.available_v,
+        sag_at_s=known * droop.at_s,
+        voltage_min_v=known * droop.lowest_v,
+        voltage_min_at_s=known * droop.lowest_at_s,
     )
 
 

@@ -102,7 +102,8 @@ def axis_power(comparison: Comparison) -> AxisPower | None:
             return None
         cycle = run.detail.cycle
         power = cycle["motor_torque_nm"] * cycle["motor_speed_rad_s"]
-        power += run.quantities["resistance_ohm"] * cycle["current_a"] ** 2
+        circuit_ohm = run.quantities["resistance_ohm"] + run.quantities["cable_ohm"]  # the cable heats too
+        power += circuit_ohm * cycle["current_a"] ** 2
         at_bus = bus_energy(power.to_numpy()[None, :], np.array([efficiency]))[0] + steady
         courses.append((cycle["time_s"].to_numpy(), at_bus))
     if best.mix is not None:

@@ -139,6 +139,19 @@ def test_what_a_dc_supply_must_state():
     assert verdict(sets_of(), "bus_minimum_voltage") is None  # rectified mains without resistance are stiff
 
 
+@pytest.mark.parametrize("key", ["bus_sag", "bus_minimum_voltage"])
+@pytest.mark.parametrize(
+    "supply", [{"supply internal resistance": 4.0}, {**SOFT, "supply current limit": LIMIT_A}]
+)
+def test_what_a_drive_loses_makes_the_bus_sag(key, supply):
+    assert verdict(sets_of(**supply), key).verdict != NOT_CHECKED
+    silent = sets_of(drive=dict(DRIVE, efficiency=np.nan), **supply)
+    found = verdict(silent, key)
+    assert found.verdict == NOT_CHECKED
+    assert found.missing == ("efficiency",)
+    assert bus_quantities(silent, 0)["bus_voltage_min_v"] is None
+
+
 def test_droop_alone_fails_the_minimum():
     sets = sets_of(drive=dict(DRIVE, bus_voltage_min_v=280.0), **{"supply internal resistance": 4.0})
     peak = float(sets.once(bus_results).supply_power_peak_w[0])

@@ -6,8 +6,10 @@ import numpy as np
 import pytest
 from scipy.optimize import brentq
 
+from actuator_sizing.case.reading import read_case
 from actuator_sizing.core.drive_limits import derating_factor, ripple_current, ripple_loss
 from actuator_sizing.core.parameters import BRUSHED, SINUSOIDAL, SIX_STEP
+from actuator_sizing.sizing.checks.drive_limits import _held
 from actuator_sizing.sizing.demand import build_demand
 from actuator_sizing.sizing.judging import active_checks, check_results, judge_sets
 from actuator_sizing.sizing.levers import single
@@ -121,6 +123,16 @@ def test_the_amplitude_of_a_long_hold_is_compared():
     assert fails(again) == {"drive_standstill_current"}
 
 
+def test_a_stated_standstill_current_is_derated_as_the_continuous_one():
+    both = replace(HOT, altitude_m=1800.0)
+    sets = sets_of(
+        surroundings=both, ambient_derating=0.02, altitude_derating_per_100_m=0.01, standstill_current=6.0
+    )
+    found = judged(sets)["drive_standstill_current"]
+    assert found.capacity == pytest.approx(6.0 * (1.0 - 0.16) * (1.0 - 0.08), rel=1e-12)
+    assert "0.7728" in found.working
+
+
 def test_short_stops_do_not_count():
     # The last dwell goes on into the first move; no stop of this cycle reaches a second.
     assert judged(sets_of(segments=RESTS))["drive_standstill_current"].demand == 0.0
@@ -134,6 +146,18 @@ def test_without_a_stated_current_the_rule_of_thumb_only_advises():
     assert found.verdict == LOW_RESERVE
     assert found.utilisation > 1.0
     assert "drive_standstill_current" not in fails(weak)
+
+
+def test_a_long_record_is_held_as_long_as_in_its_order():
+    made = read_case("catalogs_demo/tray_shuttle_measured")
+    index = np.array([[0, 0, 0], [3, 2, 1]])
+    condensed, full = (
+        evaluate_sets(made, build_demand(made, in_order=in_order), index) for in_order in (False, True)
+    )
+    assert condensed.demand.slices is not None
+    found, expected = (_held(sets) for sets in (condensed, full))
+    assert expected.amplitude_a.min() > 0.0
+    np.testing.assert_array_equal(found.amplitude_a, expected.amplitude_a)
 
 
 # -- electrical frequency -----------------------------------------------------------------------------

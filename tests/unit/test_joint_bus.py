@@ -190,6 +190,26 @@ def test_the_bound_is_never_below_the_exact_sum(soft):
             assert float(bound.voltage_min_v[0]) <= float(exact.voltage_min_v[0])
 
 
+@pytest.mark.parametrize(("segments", "offset_s"), [(SHORT, 0.2), (SHORT, np.nan), (ODD, np.nan)])
+def test_a_partner_whose_drive_hides_its_losses_leaves_the_supply_unknown(segments, offset_s):
+    stated = partner(segments, offset_s)
+    silent_axis = replace(
+        stated.axis, drive_parameters=replace(stated.axis.drive_parameters, efficiency=np.array([np.nan]))
+    )
+    rated = {"supply peak power": 1e5, "supply continuous power": 1e5, "supply internal resistance": 0.1}
+    for other, expected in ((stated, "passes"), (replace(stated, axis=silent_axis), "not checked")):
+        sets = sets_of(other, **rated)
+        for key in ("supply_peak_power", "supply_mean_power", "bus_sag", "bus_minimum_voltage"):
+            found = verdict(sets, key)
+            assert found.verdict == expected, key
+            if expected != "passes":
+                assert found.missing == ("efficiency of the drives of all other axes on the bus",)
+    b = sets.once(bus_results)
+    for name in ("supply_power_mean_w", "supply_power_peak_w", "supply_power_rms_w", "voltage_min_v"):
+        assert np.isnan(getattr(b, name)).all(), name
+    assert np.isfinite(b.voltage_max_v).all()  # all that comes back counted: on the safe side
+
+
 def test_a_partner_alone_fails_the_supply():
     own = sets_of().once(own_results)
     rated = {"supply peak power": 1.2 * float(own.supply_power_peak_w[0]), "supply continuous power": 1e4}
@@ -278,3 +298,15 @@ def test_another_bus_voltage_is_told(tmp_path, volts, usable):
     made, problems = check_case(two_cases(tmp_path, ["second", "../other", "", "", "", ""], other=other))
     assert sum("since the bus is the same" in str(problem) for problem in problems) == 2
     assert (made is not None) == usable
+
+
+def test_a_partner_with_several_cycles_is_not_taken_for_its_first(tmp_path):
+    other = complete()
+    head, *rows = other["duty_cycle"]
+    other["duty_cycle"] = [["cycle", *head], *([name, *row] for name in ("light", "heavy") for row in rows)]
+    made, problems = check_case(two_cases(tmp_path, ["second", "../other", "", "", "", ""], other=other))
+    assert made is None
+    told = [str(problem) for problem in problems if "a case with 2 cycles" in str(problem)]
+    assert len(told) == 1
+    assert "bus_partners" in told[0]
+    assert "one cycle that asks most" in told[0]

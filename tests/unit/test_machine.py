@@ -127,6 +127,14 @@ def test_the_peak_of_one_axis_is_that_of_its_own_report(three):
     assert bus.power_peak_together_w == bus.power_peak_most_w
 
 
+def test_the_heat_of_the_cable_comes_from_the_bus():
+    made = axis(60.0, 0.3, 0.5)
+    made = replace(made, surroundings=replace(made.surroundings, cable_ohm=2.0))
+    bus, best = compare_machine([made]).buses[0], compare(made).best
+    # 1e-3: taken at the nodes of the pieces.
+    assert bus.power_peak_most_w == pytest.approx(best.quantities["supply_power_peak_w"], rel=1e-3)
+
+
 def test_equal_axes_that_start_together_double_every_figure():
     one, two = axis(60.0, 0.3, 0.5), axis(60.0, 0.3, 0.5)
     alone, both = compare_machine([one]).buses[0], compare_machine([one, two]).buses[0]

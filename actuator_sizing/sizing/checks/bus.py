@@ -12,7 +12,7 @@ from actuator_sizing.sizing.bus import BusResults
 from actuator_sizing.sizing.bus_sag import is_soft
 from actuator_sizing.sizing.bus_side import BATTERY, DC_SUPPLY, supply_feeds_back, supply_kind
 from actuator_sizing.sizing.checks.base import SUSTAINED, Check, Measure, Need, Sets, digits
-from actuator_sizing.sizing.joint_bus import bus_results, joint_rule
+from actuator_sizing.sizing.joint_bus import bus_results, joint_rule, partners_known
 
 FloatArray = NDArray[np.float64]
 
@@ -48,6 +48,14 @@ def _ratio_working(symbols: str, unit: str, measure: Callable[[Sets], Measure]) 
         )
 
     return working
+
+
+#: Without it less would be taken from the bus than the motor needs: on the safe side for braking alone.
+_EFFICIENCY = (
+    Need("drives", "efficiency", "efficiency"),
+    Need("axis", "bus_partners", "efficiency of the drives of all other axes on the bus",
+         known_by=lambda sets: np.full(len(sets), partners_known(sets))),
+)  # fmt: skip
 
 
 # -- highest voltage --------------------------------------------------------------------------------
@@ -152,8 +160,9 @@ _CURRENT_LIMIT = Need("axis", "supply current limit", "supply current limit", kn
 
 
 def _is_bridged(sets: Sets) -> NDArray[np.bool_]:
-    """Sets whose capacitors need not help, or are known."""
-    return ~np.isnan(sets.once(bus_results).voltage_min_v)
+    """Sets whose capacitors need not help, or are known; without an efficiency nothing is known of that yet."""
+    b = sets.once(bus_results)
+    return np.asarray(~np.isnan(b.voltage_min_v) | np.isnan(b.supply_power_peak_w))
 
 
 _CAPACITANCE = Need("drives", "capacitance_f", "internal capacitance", known_by=_is_bridged)
@@ -167,7 +176,7 @@ BUS_SAG = Check(
     formula="max u ≤ U · m in the motor's basis at each instant, U = √(U(p)² − 2 W/C), "
     "U(p) = U_min/2 + √(U_min²/4 − R_s p), W what the capacitors give beyond the current limit",
     source="Internal resistance and current limit of the supply; first principles",
-    needs=(_CURRENT_LIMIT, _CAPACITANCE),
+    needs=(*_EFFICIENCY, _CURRENT_LIMIT, _CAPACITANCE),
     measure=_sag_measure,
     working=_ratio_working("u / U(p) m", "V", _sag_measure),
     applies=_sags,
@@ -187,7 +196,12 @@ BUS_MINIMUM = Check(
     formula="U_drive,min ≤ min over the cycle of √(U(p)² − 2 W/C), U(p) = U_min/2 + √(U_min²/4 − R_s p), "
     "dW/dt = p − I_limit U_low beyond the current limit of the supply, U_low = max(U_drive,min, U_min/2)",
     source="Internal resistance and current limit of the supply, in periodic steady state; first principles",
-    needs=(Need("drives", "bus_voltage_min_v", "minimum bus voltage"), _CURRENT_LIMIT, _CAPACITANCE),
+    needs=(
+        *_EFFICIENCY,
+        Need("drives", "bus_voltage_min_v", "minimum bus voltage"),
+        _CURRENT_LIMIT,
+        _CAPACITANCE,
+    ),
     measure=_lowest_measure,
     working=_ratio_working("U_drive,min / U_lowest", "V", _lowest_measure),
     applies=_sags,
@@ -304,9 +318,6 @@ BRAKE_PULSE = Check(
 
 
 # -- supply -----------------------------------------------------------------------------------------
-_EFFICIENCY = Need("drives", "efficiency", "efficiency")
-
-
 def _supply_check(
     key: str,
     title: str,
@@ -326,7 +337,7 @@ def _supply_check(
         unit="W",
         formula=formula,
         source="Power at the terminals over the drive's efficiency; ratings of the supply",
-        needs=(_EFFICIENCY, Need("axis", option, option)),
+        needs=(*_EFFICIENCY, Need("axis", option, option)),
         measure=measure,
         working=_ratio_working("P / P_rated", "W", measure),
         applies=_supply_is_rated,

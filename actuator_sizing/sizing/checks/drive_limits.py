@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -17,6 +17,8 @@ from actuator_sizing.core.machine import (
 )
 from actuator_sizing.core.parameters import BRUSHED, SINUSOIDAL
 from actuator_sizing.sizing.checks.base import Check, Measure, Need, Sets, digits
+from actuator_sizing.sizing.demand import Demand, build_demand
+from actuator_sizing.sizing.derating import derating_of
 from actuator_sizing.sizing.pair_course import course
 
 FloatArray = NDArray[np.float64]
@@ -36,6 +38,12 @@ RIPPLE_SHARE = 0.1
 CABLE_SHARE = 0.05
 
 _PAIRS_PER_CHUNK = 128
+_PIECES_PER_CHUNK = 1_000_000  # of all its pairs together
+_ROUNDING = 1e-9  # of a sum of durations
+_BY_PIECE = (
+    "segment", "start_s", "duration_s", "direction", "flow", "brake_closed", "position", "speed", "acceleration",
+    "effort", "shaft_speed", "shaft_acceleration", "shaft_torque", "motor_acceleration",
+)  # fmt: skip
 _RULE = "rule of thumb"
 
 
@@ -53,56 +61,72 @@ class _Held:
 def _held(sets: Sets) -> _Held:
     """Largest current of the sets while the field hardly turns for `HELD_S` or longer."""
     pairs, pair = np.unique(sets.index[:, :2], axis=0, return_inverse=True)
-    found = [
-        _held_by(sets, pairs[start : start + _PAIRS_PER_CHUNK])
-        for start in range(0, len(pairs), _PAIRS_PER_CHUNK)
-    ]
+    demand = sets.demand
+    if demand.slices is not None:  # condensed: stretches of time are known only in order
+        demand = build_demand(sets.case, in_order=True)
+    size = int(np.clip(_PIECES_PER_CHUNK // len(demand.duration_s), 1, _PAIRS_PER_CHUNK))
+    found = [_held_by(sets, demand, pairs[start : start + size]) for start in range(0, len(pairs), size)]
     current, at = (np.concatenate(column)[pair.reshape(-1)] for column in zip(*found, strict=True))
     return _Held(current * motor_amplitude_per_unit_current(sets.motors), at)
 
 
-def _held_by(sets: Sets, pairs: NDArray[np.intp]) -> tuple[FloatArray, FloatArray]:
-    motors, demand = sets.case.motor_parameters.take(pairs[:, 0]), sets.demand
+def _held_by(sets: Sets, demand: Demand, pairs: NDArray[np.intp]) -> tuple[FloatArray, FloatArray]:
+    motors = sets.case.motor_parameters.take(pairs[:, 0])
     gearheads = sets.case.gearhead_parameters.take(pairs[:, 1])
-    c = course(demand, motors, gearheads, judge(motors, sets.surroundings))
-    per_speed = np.nan_to_num(motors.pole_pairs, nan=1.0)[:, None] / (2.0 * np.pi)
-    slow = per_speed * np.abs(c.motor_speed_rad_s).max(axis=2) < SLOW_HZ
-    # Length of the stretch of slow pieces that each belongs to; the cycle wraps, so it is walked twice each way.
-    lasts = np.where(slow, demand.duration_s, 0.0)
-    total = np.minimum(
-        _running(lasts, slow) + _running(lasts[:, ::-1], slow[:, ::-1])[:, ::-1] - lasts, demand.cycle_s
-    )
-    counts = slow & (total >= HELD_S)
-    peak = np.where(counts, np.abs(c.current_a).max(axis=2), 0.0)
+    per_speed = np.nan_to_num(motors.pole_pairs, nan=1.0) * gearheads.ratio / (2.0 * np.pi)
+    slow = per_speed[:, None] * np.abs(demand.shaft_speed).max(axis=1) < SLOW_HZ
+    counts = slow & (_stretches(demand.duration_s, slow) >= HELD_S * (1.0 - _ROUNDING))
+    kept = np.flatnonzero(counts.any(axis=0))
+    if not len(kept):
+        return np.zeros(len(pairs)), np.full(len(pairs), np.nan)
+    part = replace(demand, **{name: getattr(demand, name)[kept] for name in _BY_PIECE})
+    c = course(part, motors, gearheads, judge(motors, sets.surroundings))
+    peak = np.where(counts[:, kept], np.abs(c.current_a).max(axis=2), 0.0)
     piece = peak.argmax(axis=1)
     row = np.arange(len(pairs))
-    at = np.where(peak[row, piece] > 0.0, demand.start_s[piece] + 0.5 * demand.duration_s[piece], np.nan)
+    at = np.where(peak[row, piece] > 0.0, part.start_s[piece] + 0.5 * part.duration_s[piece], np.nan)
     return peak[row, piece], at
 
 
-def _running(lasts_s: FloatArray, slow: BoolArray) -> FloatArray:
-    """Time since the field last turned, at the end of each piece, periodic; at most two cycles."""
-    since = np.zeros(len(lasts_s))
-    answer = np.zeros_like(lasts_s)
-    for _ in range(2):
-        for n in range(lasts_s.shape[1]):
-            since = np.where(slow[:, n], since + lasts_s[:, n], 0.0)
-            answer[:, n] = since
-    return answer
+def _stretches(duration_s: FloatArray, slow: BoolArray) -> FloatArray:
+    """Length of the stretch of slow pieces that each piece belongs to, periodic, zero where it is fast."""
+    # Thresholds of one speed: pairs that are slow on as many pieces are slow on the same ones.
+    _, first, of_row = np.unique(slow.sum(axis=1), return_index=True, return_inverse=True)
+    answer = np.zeros((len(first), slow.shape[1]))
+    for row, is_slow in enumerate(slow[first]):
+        fast = np.flatnonzero(~is_slow)
+        if not len(fast):
+            answer[row] = duration_s.sum()
+            continue
+        # From the first fast piece on, no stretch wraps: each ends before the next fast piece.
+        turned = np.roll(np.where(is_slow, duration_s, 0.0), -fast[0])
+        starts = fast - fast[0]
+        lasts = np.repeat(np.add.reduceat(turned, starts), np.diff(starts, append=len(turned)))
+        answer[row] = np.where(is_slow, np.roll(lasts, fast[0]), 0.0)
+    return answer[of_row.reshape(-1)]
+
+
+def _stated_standstill(sets: Sets) -> tuple[FloatArray, FloatArray]:
+    """Standstill current of the sheet, and what the surroundings leave of it: as of the continuous one. [A], [-]"""
+    left = derating_of(sets.case)
+    factor = (left.by_ambient * left.by_altitude)[sets.index[:, 2]]
+    return sets.catalog_values("drives", "standstill_current"), factor
 
 
 def _standstill_measure(sets: Sets) -> Measure:
     held = sets.once(_held)
     per_drive = amplitude_per_unit_current(sets.drives.current_basis)
-    stated = sets.catalog_values("drives", "standstill_current")
-    capacity = np.where(np.isnan(stated), STANDSTILL_SHARE * sets.drives.continuous_current_a, stated)
+    stated, left = _stated_standstill(sets)
+    capacity = np.where(np.isnan(stated), STANDSTILL_SHARE * sets.drives.continuous_current_a, stated * left)
     return Measure(held.amplitude_a / per_drive, capacity, held.at_s)
 
 
 def _standstill_working(sets: Sets, i: int) -> str:
-    stated = float(sets.catalog_values("drives", "standstill_current")[i])
+    stated, left = (float(column[i]) for column in _stated_standstill(sets))
     m = _standstill_measure(sets)
     rule = f"{digits(float(m.capacity[i]))} A as stated"
+    if left != 1.0:
+        rule = f"{digits(stated)} A as stated · {digits(left)} left in these surroundings"
     if np.isnan(stated):
         rule = f"I_cont / √2 = {digits(float(sets.drives.continuous_current_a[i]))} / √2 A, {_RULE}"
     return f"I_held = {digits(float(m.demand[i]))} A in the drive's basis; I_0 = {rule}; {m.quotient(i)}"
