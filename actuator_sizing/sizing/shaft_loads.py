@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from actuator_sizing.core.life import BALL_EXPONENT, ROLLER_EXPONENT
 from actuator_sizing.sizing.checks.base import Sets
+from actuator_sizing.sizing.checks.traction import application_factor
 
 FloatArray = NDArray[np.float64]
 
@@ -30,7 +31,7 @@ def radial_force(sets: Sets) -> FloatArray:
     -------
     ndarray, shape (P, K)
         As stated; else of both strands of a belt, ``2 F_pretension``, whose sum the load does not change; else of
-        the teeth of a rack, ``|F|/cos α``. Never negative. [N]
+        the teeth of a rack, ``K_A |F|/cos α`` with the application factor. Never negative. [N]
     """
     shape = sets.demand.effort.shape
     stated = sets.option("shaft radial force")
@@ -39,7 +40,8 @@ def radial_force(sets: Sets) -> FloatArray:
     pretension = sets.option("belt pretension")
     if not np.isnan(pretension):
         return np.full(shape, 2.0 * pretension)
-    return np.asarray(np.abs(sets.demand.effort) / np.cos(sets.option("pressure angle")))
+    force = application_factor(sets) * np.abs(sets.demand.effort)
+    return np.asarray(force / np.cos(sets.option("pressure angle")))
 
 
 @dataclass(frozen=True)

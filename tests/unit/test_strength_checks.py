@@ -140,6 +140,14 @@ def test_bearings_of_the_gears_choose_the_exponent(bearing, exponent):
     )
 
 
+def test_shocks_load_gearhead_and_coupling_alike():
+    sets = sets_of(gearhead={}, **{"application factor": 2.0, "coupling torque limit": 10.0})
+    peak = 2.0 * sets.demand.shaft_torque_peak
+    for key in ("gearhead_peak_torque", "coupling_torque"):
+        assert measured(sets, key)[0] == pytest.approx(peak, rel=1e-6), key
+    assert "application factor 2" in CHECK["gearhead_peak_torque"].working(sets, 0)
+
+
 def test_thermal_power_is_the_mean_of_what_enters():
     sets = sets_of(segments=STEADY, gearhead={}, gearhead_columns={"thermal_power": 100.0})
     omega = 0.1 * 2.0 * np.pi / 0.02
@@ -155,6 +163,9 @@ def test_radial_forces_of_belt_and_rack():
         "rack and pinion", {"pinion diameter": 0.05, "moving mass": 5.0}, STEADY, **{"pressure angle": 0.35}
     )
     assert radial_force(rack) == pytest.approx(600.0 / np.cos(0.35), rel=1e-12)
+    shocks = {"pressure angle": 0.35, "application factor": 2.0}
+    shocked = sets_of("rack and pinion", {"pinion diameter": 0.05, "moving mass": 5.0}, STEADY, **shocks)
+    assert radial_force(shocked) == pytest.approx(1200.0 / np.cos(0.35), rel=1e-12)
     own = sets_of("belt", {"pulley diameter": 0.05, "moving mass": 5.0},
                   **{"belt pretension": 150.0, "shaft radial force": 90.0})  # fmt: skip
     assert np.all(radial_force(own) == 90.0)
