@@ -15,6 +15,7 @@ from actuator_sizing.core.screws import (
     STEEL_MODULUS_PA,
     buckling_force,
     critical_speed,
+    is_slender,
     nut_half_loads,
     nut_life,
 )
@@ -81,6 +82,18 @@ def test_johnson_meets_euler_with_the_same_slope():
     assert buckling_force(d, 1e-3, "fixed-fixed", strength) == pytest.approx(
         strength * np.pi * d**2 / 4.0, rel=1e-4
     )
+
+
+@pytest.mark.parametrize("slender", [60.0, 100.0, 120.0, 132.0, 133.0, 150.0])
+def test_a_yield_strength_is_asked_for_while_the_softest_steel_could_need_johnson(slender):
+    d = 0.02
+    L = slender * d / 4.0
+    euler, soft = (buckling_force(d, L, "supported-supported", strength) for strength in (np.nan, 235e6))
+    assert is_slender(d, L, "supported-supported") == (soft == pytest.approx(euler, rel=1e-12))
+    if slender == 100.0:  # Euler would allow a soft screw too much
+        s250 = buckling_force(d, L, "supported-supported", 250e6)
+        assert euler / s250 == pytest.approx(1.187, abs=5e-4)
+        assert not is_slender(d, L, "supported-supported")
 
 
 def test_life_of_a_screw_under_a_steady_force():
