@@ -184,6 +184,19 @@ def test_radial_forces_of_belt_and_rack():
     assert np.all(radial_force(own) == 90.0)
 
 
+def test_a_belt_with_a_slack_strand_pulls_with_the_whole_force():
+    belt = {"pulley diameter": 0.05, "moving mass": 5.0}
+    tight, slack, shocked = (
+        radial_force(sets_of("belt", belt, STEADY, **given))
+        for given in (
+            {"belt pretension": 400.0},
+            {"belt pretension": 250.0},
+            {"belt pretension": 400.0, "application factor": 1.5},
+        )
+    )
+    assert (tight.max(), slack.max(), shocked.max()) == pytest.approx((800.0, 600.0, 900.0), rel=1e-12)
+
+
 def test_permissible_radial_force_moves_with_the_lever():
     columns = {"permissible_radial_force": 500.0, "radial_force_position": 0.02, "bearing_lever": 0.03}
     loaded = {"shaft radial force": 200.0}
