@@ -9,6 +9,7 @@ FloatArray = NDArray[np.float64]
 
 STEEL_MODULUS_PA = 210e9  # Young's modulus of steel, common practice
 STEEL_DENSITY_KG_M3 = 7850.0  # plain and alloyed steel, common practice
+SOFTEST_STEEL_YIELD_PA = 235e6  # weakest steel that screws are made of (S235 of EN 10025), common practice
 
 #: How the ends of a screw are held: (root of the frequency equation of its bending, effective length for
 #: buckling over its length). Roots of beam theory (cosh λ cos λ = −1, sin λ = 0, tan λ = tanh λ, cosh λ cos λ = 1),
@@ -99,7 +100,7 @@ def buckling_force(root_diameter_m: float, length_m: float, fixity: str, yield_p
 
 
 def is_slender(root_diameter_m: float, length_m: float, fixity: str) -> bool:
-    """Whether Euler holds for any usual steel: slenderness of at least 100 (yield strength up to 410 MPa).
+    """Whether Euler holds whatever the steel: slenderness of at least √(2 π² E/σ_y) of the softest, 133.
 
     Parameters
     ----------
@@ -113,9 +114,15 @@ def is_slender(root_diameter_m: float, length_m: float, fixity: str) -> bool:
     Returns
     -------
     bool
-        Common practice for plain steel; a screw that is not slender needs its yield strength.
+        A screw that is not slender needs its yield strength.
+
+    Notes
+    -----
+    There Euler's stress is half the yield strength, as in `buckling_force`; the softer the steel, the more slender
+    a screw must be for Euler.
     """
-    return slenderness(root_diameter_m, length_m, fixity) >= 100.0
+    transition = np.sqrt(2.0 * np.pi**2 * STEEL_MODULUS_PA / SOFTEST_STEEL_YIELD_PA)
+    return bool(slenderness(root_diameter_m, length_m, fixity) >= transition)
 
 
 def sliding_speed_per_turn(mean_diameter_m: float, lead_m: float) -> float:

@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from actuator_sizing.core.life import BALL_EXPONENT, ROLLER_EXPONENT
 from actuator_sizing.sizing.checks.base import Sets
+from actuator_sizing.sizing.checks.traction import application_factor
 
 FloatArray = NDArray[np.float64]
 
@@ -29,17 +30,23 @@ def radial_force(sets: Sets) -> FloatArray:
     Returns
     -------
     ndarray, shape (P, K)
-        As stated; else of both strands of a belt, ``2 F_pretension``, whose sum the load does not change; else of
-        the teeth of a rack, ``|F|/cos α``. Never negative. [N]
+        As stated; else of both strands of a belt, ``max(2 F_pretension, K_A |F|)``; else of the teeth of a rack,
+        ``K_A |F|/cos α``; with the application factor. Never negative. [N]
+
+    Notes
+    -----
+    While both strands of a belt are tight the load does not change their sum; beyond twice the pretension one is
+    slack and the other carries the whole force. First principles, strands taken as parallel.
     """
     shape = sets.demand.effort.shape
     stated = sets.option("shaft radial force")
     if not np.isnan(stated):
         return np.full(shape, stated)
+    force = np.asarray(application_factor(sets) * np.abs(sets.demand.effort))
     pretension = sets.option("belt pretension")
     if not np.isnan(pretension):
-        return np.full(shape, 2.0 * pretension)
-    return np.asarray(np.abs(sets.demand.effort) / np.cos(sets.option("pressure angle")))
+        return np.maximum(2.0 * pretension, force)
+    return np.asarray(force / np.cos(sets.option("pressure angle")))
 
 
 @dataclass(frozen=True)

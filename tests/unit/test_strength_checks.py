@@ -15,6 +15,7 @@ from actuator_sizing.core.screws import (
     STEEL_MODULUS_PA,
     buckling_force,
     critical_speed,
+    is_slender,
     nut_half_loads,
     nut_life,
 )
@@ -83,6 +84,18 @@ def test_johnson_meets_euler_with_the_same_slope():
     )
 
 
+@pytest.mark.parametrize("slender", [60.0, 100.0, 120.0, 132.0, 133.0, 150.0])
+def test_a_yield_strength_is_asked_for_while_the_softest_steel_could_need_johnson(slender):
+    d = 0.02
+    L = slender * d / 4.0
+    euler, soft = (buckling_force(d, L, "supported-supported", strength) for strength in (np.nan, 235e6))
+    assert is_slender(d, L, "supported-supported") == (soft == pytest.approx(euler, rel=1e-12))
+    if slender == 100.0:  # Euler would allow a soft screw too much
+        s250 = buckling_force(d, L, "supported-supported", 250e6)
+        assert euler / s250 == pytest.approx(1.187, abs=5e-4)
+        assert not is_slender(d, L, "supported-supported")
+
+
 def test_life_of_a_screw_under_a_steady_force():
     sets = sets_of(segments=STEADY, **{"screw dynamic load rating": 2e4}, **LIFE)
     force = 600.0 + 150.0  # process and friction of the guide
@@ -140,6 +153,14 @@ def test_bearings_of_the_gears_choose_the_exponent(bearing, exponent):
     )
 
 
+def test_shocks_load_gearhead_and_coupling_alike():
+    sets = sets_of(gearhead={}, **{"application factor": 2.0, "coupling torque limit": 10.0})
+    peak = 2.0 * sets.demand.shaft_torque_peak
+    for key in ("gearhead_peak_torque", "coupling_torque"):
+        assert measured(sets, key)[0] == pytest.approx(peak, rel=1e-6), key
+    assert "application factor 2" in CHECK["gearhead_peak_torque"].working(sets, 0)
+
+
 def test_thermal_power_is_the_mean_of_what_enters():
     sets = sets_of(segments=STEADY, gearhead={}, gearhead_columns={"thermal_power": 100.0})
     omega = 0.1 * 2.0 * np.pi / 0.02
@@ -155,9 +176,25 @@ def test_radial_forces_of_belt_and_rack():
         "rack and pinion", {"pinion diameter": 0.05, "moving mass": 5.0}, STEADY, **{"pressure angle": 0.35}
     )
     assert radial_force(rack) == pytest.approx(600.0 / np.cos(0.35), rel=1e-12)
+    shocks = {"pressure angle": 0.35, "application factor": 2.0}
+    shocked = sets_of("rack and pinion", {"pinion diameter": 0.05, "moving mass": 5.0}, STEADY, **shocks)
+    assert radial_force(shocked) == pytest.approx(1200.0 / np.cos(0.35), rel=1e-12)
     own = sets_of("belt", {"pulley diameter": 0.05, "moving mass": 5.0},
                   **{"belt pretension": 150.0, "shaft radial force": 90.0})  # fmt: skip
     assert np.all(radial_force(own) == 90.0)
+
+
+def test_a_belt_with_a_slack_strand_pulls_with_the_whole_force():
+    belt = {"pulley diameter": 0.05, "moving mass": 5.0}
+    tight, slack, shocked = (
+        radial_force(sets_of("belt", belt, STEADY, **given))
+        for given in (
+            {"belt pretension": 400.0},
+            {"belt pretension": 250.0},
+            {"belt pretension": 400.0, "application factor": 1.5},
+        )
+    )
+    assert (tight.max(), slack.max(), shocked.max()) == pytest.approx((800.0, 600.0, 900.0), rel=1e-12)
 
 
 def test_permissible_radial_force_moves_with_the_lever():

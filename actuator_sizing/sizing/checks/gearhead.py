@@ -81,10 +81,17 @@ def _peak_measure(sets: Sets) -> Measure:
     torque = sets.demand.shaft_torque
     piece, node = np.unravel_index(np.abs(torque).argmax(), torque.shape)
     return Measure(
-        everywhere(sets.demand.shaft_torque_peak, sets),
+        everywhere(application_factor(sets) * sets.demand.shaft_torque_peak, sets),
         sets.gearheads.peak_torque_nm,
         everywhere(float(sets.demand.time_s[piece, node]), sets),
     )
+
+
+_peak_quotient = quotient_working("K_A T_max / T_peak", "N·m", _peak_measure)
+
+
+def _peak_working(sets: Sets, i: int) -> str:
+    return f"application factor {digits(application_factor(sets))}; {_peak_quotient(sets, i)}"
 
 
 GEARHEAD_PEAK = Check(
@@ -92,12 +99,13 @@ GEARHEAD_PEAK = Check(
     title="Gearhead peak torque",
     group="gearhead",
     unit="N·m",
-    formula="max |T_output| ≤ T_peak",
+    formula="K_A max |T_output| ≤ T_peak",
     source="Repeated peak torque of the data sheet",
     needs=(Need("gearheads", "peak_torque_nm", "peak torque"),),
     measure=_peak_measure,
+    # The application factor is at least 1: 1 gives a bound.
     bound=lambda block: block.demand.shaft_torque_peak / block.gearheads.peak_torque_nm[:, None],
-    working=quotient_working("T_max / T_peak", "N·m", _peak_measure),
+    working=_peak_working,
     applies=has_gearhead,
 )
 

@@ -123,7 +123,7 @@ def _buckling_measure(sets: Sets) -> Measure:
 
 
 def _has_strength(sets: Sets) -> NDArray[np.bool_]:
-    """Stated, or not needed since Euler holds."""
+    """Stated, or not needed since Euler holds for the softest steel."""
     beam = _beam(sets)
     enough = sets.states("screw yield strength") or beam is None or is_slender(*beam)
     return np.full(len(sets), enough)
@@ -134,8 +134,8 @@ SCREW_BUCKLING = Check(
     title="Buckling of the screw",
     group="mechanism",
     unit="N",
-    formula="max |F| ≤ π² E I/(K L)², or A σ_y (1 − σ_y s²/(4 π² E)) where that is not slender; the whole force "
-    "taken as pressing",
+    formula="max |F| ≤ π² E I/(K L)², or A σ_y (1 − σ_y s²/(4 π² E)) below a slenderness s of √(2 π² E/σ_y); "
+    "the whole force taken as pressing",
     source="Euler and J. B. Johnson; twofold safety against it is common practice (allowed utilisation)",
     needs=(
         *_SLENDER_NEEDS,

@@ -79,8 +79,8 @@ SHAFT_RADIAL = Check(
     unit="N",
     formula="max F_radial ≤ F_permissible (a + x_sheet)/(a + x) at the output shaft of the gearhead, without one of "
     "the motor",
-    source="Permissible force of the data sheet, moved at equal moment about the bearings; belt 2 F_pretension, "
-    "rack |F|/cos α",
+    source="Permissible force of the data sheet, moved at equal moment about the bearings; belt "
+    "max(2 F_pretension, K_A |F|), rack K_A |F|/cos α",
     needs=_RADIAL_NEEDS,
     measure=_radial_measure,
     working=quotient_working("F_radial / F_permissible", "N", _radial_measure),
