@@ -105,7 +105,8 @@ def _workbook(study: Robustness) -> bytes:
             ("case", study.case_name), ("set", study.label),
             ("probability of passing all checks", found["probability"]),
             ("95 % interval from (Wilson)", found["probability_low"]), ("to", found["probability_high"]),
-            ("samples of all checks", found["samples"]), ("samples", study.samples), ("seed", study.seed),
+            ("samples of all checks", found["samples"]), ("samples", study.samples),
+            ("samples through the whole chain", study.exact_samples), ("seed", study.seed),
         ]  # fmt: skip
         rows += [("note", note) for note in study.notes]
         rows += [("not checked", title) for title in study.not_checked]

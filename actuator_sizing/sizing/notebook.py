@@ -91,7 +91,8 @@ def robustness_html(study: Robustness) -> str:
     found = study.probability
     head = (
         f"<p><b>{escape(study.label)}</b> passes every check in {found['probability']:.4g} of {found['samples']} "
-        f"samples (95 % interval {found['probability_low']:.4g} to {found['probability_high']:.4g})</p>"
+        f"samples (95 % interval {found['probability_low']:.4g} to {found['probability_high']:.4g}); {study.samples} "
+        f"were asked for, {study.exact_samples} went through the whole chain</p>"
     )
     names = ["title", "nominal_utilisation", "utilisation_q95", "allowed_utilisation", "probability",
              "probability_low", "probability_high", "samples"]  # fmt: skip

@@ -13,6 +13,7 @@ from click.testing import CliRunner
 
 import actuator_sizing as act
 from actuator_sizing.cli import commands, main
+from actuator_sizing.robustness_console import print_robustness
 from tests.unit.case_files import small_case, write_folder
 from tests.unit.robust_case import PARTS, spread, with_spreads
 
@@ -67,6 +68,31 @@ def test_the_command_prints_one_screen_and_writes_files(case_path, tmp_path):
     sheet = book["robust inputs"]
     sources = [cell.value for cell in sheet[1]]
     assert sheet.cell(2, sources.index("source") + 1).data_type == "s"  # hostile text stays text
+
+
+def test_an_input_that_needs_the_whole_chain_is_printed_with_its_sample_counts(tmp_path):
+    folder = tmp_path / "belt"
+    assert run("start", folder, "--mechanism", "belt").exception is None
+    with (folder / "tolerances.csv").open("a", encoding="utf-8") as table:
+        table.write("guide friction force,uniform,10,%,axis,,,\n")
+    result = run("robust", folder, "--samples", 60, "--exact", 20, "--seed", 1, "--out", tmp_path / "out")
+    assert result.exception is None
+    headline = result.output.splitlines()[0]
+    assert "of 20 samples" in headline
+    assert "Of 60 samples asked for" in headline
+    assert "20 went through the whole chain" in headline
+
+
+def test_a_study_without_indices_can_be_ranked_and_drawn(capsys):
+    study = act.robust(
+        with_spreads(spread("torque constant", 0.05, "motors")), **PARTS, samples=20, exact=5, sensitivity=0
+    )
+    assert study.sensitivity.empty
+    assert {str(study.sensitivity[name].dtype) for name in study.sensitivity.columns[2:]} == {"float64"}
+    print_robustness(study, ())
+    assert "total index" not in capsys.readouterr().out
+    assert "robust_sensitivity" not in study.figures()
+    assert "20 were asked for, 5 went through the whole chain" in study._repr_html_()
 
 
 def test_json_is_json_and_says_what_it_is(case_path):

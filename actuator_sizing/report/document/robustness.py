@@ -63,7 +63,25 @@ def probability_sentence(study: Robustness) -> str:
     return (
         f"{clean(study.label)} passes every check sampled in {percent(found['probability'], 1.0)} of "
         f"{found['samples']} samples of the stated spreads (95 % interval {low} to {high}, by Wilson; seed "
-        f"{study.seed})."
+        f"{study.seed}).{_asked_and_judged(study)}"
+    )
+
+
+def _asked_and_judged(study: Robustness) -> str:
+    """Say how many samples were asked for and how each check used them; empty where all were judged at once."""
+    if study.exact_samples == 0:
+        return ""
+    at_once = (
+        int((study.checks["samples"] == study.samples).sum()) if study.exact_samples < study.samples else 0
+    )
+    slow = len(study.checks) - at_once
+    judged, why = "none was judged at once", "with these spreads no check can be judged at once"
+    if at_once:
+        judged = f"{at_once} checks were judged at once in all of them"
+        why = f"{slow} checks cannot be judged at once"
+    return (
+        f" Of {study.samples} samples asked for, {judged}; {study.exact_samples} went through the whole chain, as "
+        f"{why}. The option exact says how many do."
     )
 
 

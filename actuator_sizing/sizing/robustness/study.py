@@ -218,7 +218,7 @@ def sensitivity_table(evaluator: SetEvaluator, sampling: Sampling) -> pd.DataFra
     columns = np.flatnonzero(evaluator.at_once)
     groups = evaluator.inputs.groups
     if not len(columns) or not groups or sampling.sensitivity == 0:
-        return pd.DataFrame(columns=names)
+        return _with_float_indices(pd.DataFrame(columns=names))
     indices = _indices(evaluator, sampling, columns, groups)
     rows = []
     for place, column in enumerate(columns):
@@ -233,7 +233,12 @@ def sensitivity_table(evaluator: SetEvaluator, sampling: Sampling) -> pd.DataFra
                     *(f[place, g] for f in figures),
                 )
             )
-    return pd.DataFrame(rows, columns=names)
+    return _with_float_indices(pd.DataFrame(rows, columns=names))
+
+
+def _with_float_indices(table: pd.DataFrame) -> pd.DataFrame:
+    """Without rows pandas knows no type, and what is no number cannot be ranked."""
+    return table.astype(dict.fromkeys(table.columns[2:], float))
 
 
 def _indices(
