@@ -118,7 +118,13 @@ def print_summary(comparison: Comparison, written: Sequence[Path]) -> None:
 
 
 def verdict_sentence(comparison: Comparison) -> str:
-    """Say in one or two sentences which set wins, which check governs, and by how much."""
+    """Say which set wins, which check governs and by how much, and what the limits keep from deciding."""
+    from actuator_sizing.case.judging import loosened_checks
+
+    return " ".join((_verdict(comparison), *loosened_checks(comparison.case.limits)))
+
+
+def _verdict(comparison: Comparison) -> str:
     from actuator_sizing.report.formatting import percent
     from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED
 
@@ -145,7 +151,9 @@ def verdict_sentence(comparison: Comparison) -> str:
         wanted = "; ".join(f"{c.title} (missing: {', '.join(c.missing) or 'data'})" for c in missing)
         return f"No set is confirmed. {name} fails nothing, but was not checked for: {clean(wanted)}; {how}."
     reserve = ", with low reserve" if best.verdict == LOW_RESERVE else ""
-    return f"{name} passes every check{reserve}: {how}."
+    loose = any(limit.applies == "no" for limit in comparison.case.limits.values())
+    every = "every check that was judged" if loose else "every check"
+    return f"{name} passes {every}{reserve}: {how}."
 
 
 def _place(check: CheckResult) -> str:

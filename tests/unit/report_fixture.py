@@ -13,6 +13,7 @@ from types import SimpleNamespace
 import numpy as np
 import pandas as pd
 
+from actuator_sizing.case.judging import default_limits
 from actuator_sizing.case.model import Cycle
 from actuator_sizing.core.mechanisms import MECHANISMS
 from actuator_sizing.core.parameters import Surroundings
@@ -391,6 +392,7 @@ def build_case(name: str = "tray_lift", title: str = "Tray lift") -> SimpleNames
             Problem("axis", 9, "colour", "blue", "", "The column is not known and was not used.", NOTE),
         ),
         tolerances=(),
+        limits=default_limits(),
         fingerprint="9c6f2b1d" * 8,
         cycle_duration_s=2.0 * (MOVE + DWELL),
         catalog_entries=lambda table, index: parts[table],

@@ -263,3 +263,20 @@ def test_equal_rows_get_equal_numbers():
         assert names.setdefault(row, one) == one
     assert len(set(names.values())) == len(names) > 10
     assert audit_identities._equal_rows([np.array([]), np.array([])]).tolist() == []
+
+
+def test_checks_that_the_limits_loosen_are_warned_of(tmp_path):
+    tables = small_case()
+    tables["limits"] = [
+        ["check", "applies", "allowed utilisation [%]"],
+        ["RMS current", "no", ""],
+        ["voltage", "no", ""],
+        ["inertia ratio", "no", ""],
+        ["winding temperature", "yes", 130],
+        ["motor speed", "advice", 150],
+    ]
+    found = [p for p in audit_case(write_folder(tmp_path / "case", tables)) if p.table == "limits"]
+    assert [p.severity for p in found] == ["warning", "warning"]
+    off, over = sorted(found, key=lambda p: p.column != "applies")
+    assert off.got == "no for RMS current, voltage"  # advice decides nothing
+    assert over.got == "winding temperature (130 %)"

@@ -1,16 +1,18 @@
 """The prepared document: order, honesty of the verdict, everything that a reviewer needs."""
 
+import copy
 import dataclasses
 from datetime import date
 
 import pytest
 from report_fixture import build_comparison, build_hostile
 
+from actuator_sizing import console
 from actuator_sizing.report.document import prepare_document
 from actuator_sizing.report.document.blocks import Bullets, Facts, Paragraph, Table, Working
 from actuator_sizing.report.document.verdict import verdict_sentence
 from actuator_sizing.report.text import clean
-from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
+from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES, Checks
 
 DAY = date(2025, 3, 4)
 
@@ -90,6 +92,54 @@ def test_each_verdict_has_its_own_words(comparison, verdict, words):
     sentence, state = verdict_sentence(changed)
     assert words in sentence
     assert state == verdict
+
+
+def limited(comparison, **changes):
+    """The comparison of a case with some limits changed."""
+    limits = dict(comparison.case.limits)
+    for key, change in changes.items():
+        limits[key] = dataclasses.replace(limits[key], **change)
+    case = copy.copy(comparison.case)
+    case.limits = limits
+    return dataclasses.replace(comparison, case=case)
+
+
+def test_checks_switched_off_or_overstretched_stand_beside_the_verdict(comparison):
+    changed = limited(
+        comparison,
+        rms_current={"applies": "no"},
+        motor_speed={"applies": "no"},
+        winding_temperature={"allowed_utilisation": 1.2},
+    )
+    off = "Not judged, switched off in the table limits: RMS current, motor speed."
+    over = "Allowed above 100 % in the table limits: winding temperature (120 %)."
+    document = prepare_document(changed, DAY)
+    bullets = next(b for b in section(document, "summary").blocks if isinstance(b, Bullets))
+    for sentence in (off, over):
+        assert sentence in document.verdict
+        assert sentence in bullets.items
+        assert sentence in console.verdict_sentence(changed)
+        assert sentence not in console.verdict_sentence(comparison)
+        assert sentence not in verdict_sentence(comparison)[0]
+    assert "every check that was judged" in console.verdict_sentence(changed)
+
+
+def test_a_matter_of_fit_nearer_to_its_limit_is_not_denied(comparison):
+    plain, _ = verdict_sentence(comparison)
+    assert "; no other check is nearer to its limit." in plain
+    governs = comparison.best.check("voltage")
+
+    def with_nearer(**changes):
+        nearer = dataclasses.replace(
+            governs, check="drive_bus_voltage", title="Drive bus voltage range", utilisation=1.0, **changes
+        )
+        best = dataclasses.replace(comparison.best, checks=Checks((*comparison.best.checks, nearer)))
+        return verdict_sentence(dataclasses.replace(comparison, sets=(best, *comparison.sets[1:])))[0]
+
+    said = with_nearer()
+    assert "matters of fit, such as drive bus voltage range, are listed below" in said
+    assert "no other check is nearer" not in said
+    assert "nearer" not in with_nearer(is_advice=True)
 
 
 def test_a_failing_set_names_the_checks_it_fails(comparison):

@@ -6,12 +6,15 @@ import math
 from datetime import date
 from typing import TYPE_CHECKING
 
+from actuator_sizing.case.judging import loosened_checks
 from actuator_sizing.report.document.blocks import Bullets, Facts, Paragraph, Section
 from actuator_sizing.report.formatting import percent, quantity
 from actuator_sizing.report.text import clean, in_sentence, option, plural
 from actuator_sizing.sizing.results import ADVICE_NOT_MET, FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
 
 if TYPE_CHECKING:
+    from collections.abc import Sequence
+
     from actuator_sizing.case.model import Case
     from actuator_sizing.sizing.results import CheckResult, Comparison, SetResult
 
@@ -60,14 +63,38 @@ def describe_check(check: CheckResult) -> str:
 
 
 def verdict_sentence(comparison: Comparison) -> tuple[str, str]:
-    """Put the answer into one sentence, and its verdict."""
+    """Put the answer into one sentence and its verdict, with what the limits keep from deciding."""
+    sentence, verdict = _answer(comparison)
+    return " ".join((sentence, *loosened_checks(comparison.case.limits))), verdict
+
+
+def _nearness(check: CheckResult | None, others: Sequence[CheckResult]) -> str:
+    """Say that no check is nearer to its limit, as far as that is true."""
+    if check is None or check.utilisation is None:
+        return ""
+    used = check.utilisation / check.allowed
+    nearer = [c for c in others if c.utilisation is not None and c.utilisation / c.allowed > used]
+    if not nearer:
+        return "; no other check is nearer to its limit"
+    fits = [in_sentence(c.title) for c in nearer if not c.is_advice]
+    if not fits:
+        return ""  # advice, which is told by itself
+    return (
+        "; no other check of those that judge load is nearer to its limit (matters of fit, such as "
+        f"{fits[0]}, are listed below)"
+    )
+
+
+def _answer(comparison: Comparison) -> tuple[str, str]:
     if not comparison.sets:
         return "No set could be compared: no motor, gearhead and drive of the catalogs fit together.", FAILS
     best = comparison.sets[0]
     name, check = describe_set(best), governing(best)
-    reason = f" {_capital(describe_check(check))}; no other check is nearer to its limit." if check else ""
+    reason = f" {_capital(describe_check(check))}{_nearness(check, best.checks)}." if check else ""
     open_checks = [in_sentence(c.title) for c in best.checks if c.verdict == NOT_CHECKED and not c.is_advice]
     every = "every check that could be made" if open_checks else "every check"
+    if not open_checks and any(limit.applies == "no" for limit in comparison.case.limits.values()):
+        every = "every check that was judged"
     if open_checks:
         reason += f" Not checked for want of data: {_listed(open_checks)}."
     if best.verdict == PASSES:
@@ -115,6 +142,7 @@ def verdict_section(comparison: Comparison) -> Section:
     ]
     if advice:
         notes.insert(0, f"Advice not met, which does not decide the verdict: {_listed(advice)}.")
+    notes[:0] = loosened_checks(case.limits)
     return Section(
         "summary",
         "The chosen set" if comparison.passes else "The leading set",
