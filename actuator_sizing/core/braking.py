@@ -33,10 +33,10 @@ class Stop:
     braking_time_s: FloatArray
 
 
-@lru_cache(maxsize=1)
-def _speed_shares() -> tuple[FloatArray, FloatArray]:
+@lru_cache(maxsize=2)
+def _speed_shares(order: int) -> tuple[FloatArray, FloatArray]:
     """Nodes and weights on (0, 1), one panel per decade, so that a stop that fades out is resolved too."""
-    x, w = legendre.leggauss(_ORDER)
+    x, w = legendre.leggauss(order)
     borders = np.concatenate([[0.0], 10.0 ** np.arange(-_DECADES, 1)])
     low, width = borders[:-1, None], np.diff(borders)[:, None]
     return (low + 0.5 * (x + 1.0) * width).ravel(), (0.5 * w * width).ravel()
@@ -49,6 +49,7 @@ def stop(
     friction_nm: FloatArray,
     delay_s: FloatArray,
     braking_nm: FloatArray | Callable[[FloatArray], FloatArray],
+    order: int = _ORDER,
 ) -> Stop:
     """Stop after a delay without torque, then by a torque that depends on speed.
 
@@ -66,6 +67,8 @@ def stop(
         From command to braking torque; gravity and friction act meanwhile. [s]
     braking_nm : ndarray or callable
         Constant braking torque, or a function of speeds, shape (..., n), to torques of that shape. [N·m]
+    order : int
+        Nodes per decade of speed for such a function; few tell which of many stops is the longest. [-]
 
     Returns
     -------
@@ -95,7 +98,7 @@ def stop(
     fall_speed, fall_angle = falling * remaining, 0.5 * falling * remaining**2
     start = np.where(falls, fall_speed, left)
     against = np.where(falls, -load, load) + friction
-    time, angle = _braked(start, J, against, braking_nm)
+    time, angle = _braked(start, J, against, braking_nm, order)
     excursion = np.where(falls, np.maximum(free_angle, fall_angle + angle - free_angle), free_angle + angle)
     waited = np.where(rests & ~falls, moving, delay)
     return Stop(
@@ -112,6 +115,7 @@ def _braked(
     J: FloatArray,
     against: FloatArray,
     braking_nm: FloatArray | Callable[[FloatArray], FloatArray],
+    order: int,
 ) -> tuple[FloatArray, FloatArray]:
     if not callable(braking_nm):
         torque = braking_nm + against
@@ -119,7 +123,7 @@ def _braked(
             time = np.where(torque > 0.0, J * start / torque, np.inf)
         time = np.where(start == 0.0, 0.0, np.where(np.isnan(torque), np.nan, time))
         return time, np.asarray(0.5 * start * time)
-    shares, weights = _speed_shares()
+    shares, weights = _speed_shares(order)
     omega = start[..., None] * shares
     torque = braking_nm(omega) + against[..., None]
     # A torque that is gone on the way leaves the axis running for ever.

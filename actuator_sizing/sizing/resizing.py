@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass, field
-from functools import partial
+from functools import cached_property, partial
 
 import numpy as np
 from numpy.typing import NDArray
@@ -17,7 +17,7 @@ from actuator_sizing.sizing.checks import Sets
 from actuator_sizing.sizing.cycles import CycleDemand, cycle_demands, evaluate_cycles
 from actuator_sizing.sizing.dynamic_results import add_dynamics
 from actuator_sizing.sizing.judging import ORDER, Verdicts, active_checks, is_binding, judge_sets
-from actuator_sizing.sizing.results import FAILS
+from actuator_sizing.sizing.results import FAILS, NOT_CHECKED
 
 IndexArray = NDArray[np.intp]
 
@@ -41,11 +41,14 @@ class Outcome:
         Key of the check that decides, or `MOTION`.
     shares : mapping of str to float
         Demand over what is allowed, by check. [-]
+    unknown : frozenset of str
+        Binding checks that apply but lack data.
     """
 
     excess: float
     check: str
     shares: dict[str, float] = field(default_factory=dict)
+    unknown: frozenset[str] = frozenset()
 
     @property
     def is_met(self) -> bool:
@@ -92,8 +95,22 @@ class Resizing:
         Returns
         -------
         Outcome
-            A motion that the mechanism cannot make is as far beyond as can be. [-]
+            A motion that the mechanism cannot make is as far beyond as can be, and so is a check that can be judged
+            as the case is but lacks data after the change. [-]
         """
+        if changed is self.case:
+            return self._present
+        found = self._sized(changed)
+        if found.is_met and found.unknown:
+            for check in sorted(found.unknown & self._present.shares.keys()):
+                return Outcome(_WORST, check, {**found.shares, check: _WORST + 1.0}, found.unknown)
+        return found
+
+    @cached_property
+    def _present(self) -> Outcome:
+        return self._sized(self.case)
+
+    def _sized(self, changed: Case) -> Outcome:
         same = changed.segments is self.case.segments and changed.mechanism is self.case.mechanism
         if not same and not _can_move(changed):
             return Outcome(_WORST, MOTION)
@@ -144,6 +161,8 @@ def _judged(cycles: tuple[CycleDemand, ...]) -> Verdicts:
 
 def _worst(verdicts: Verdicts, goal: str) -> Outcome:
     shares: dict[str, float] = {}
+    lacks = verdicts.binds[0] & (verdicts.codes[0] == ORDER.index(NOT_CHECKED))
+    unknown = frozenset(verdicts.checks[column].key for column in np.flatnonzero(lacks))
     for column, (check, limit) in enumerate(zip(verdicts.checks, verdicts.limits, strict=True)):
         utilisation = float(verdicts.utilisation[0, column])
         if np.isnan(utilisation) or not verdicts.binds[0, column]:
@@ -157,6 +176,6 @@ def _worst(verdicts: Verdicts, goal: str) -> Outcome:
         if shares.get(check.key, 0.0) > _WORST and shares.get(check.yields_to, 0.0) > 1.0:
             del shares[check.key]
     if not shares:
-        return Outcome(-1.0, "")
+        return Outcome(-1.0, "", {}, unknown)
     governing = max(shares, key=lambda key: shares[key])
-    return Outcome(shares[governing] - 1.0, governing, shares)
+    return Outcome(shares[governing] - 1.0, governing, shares, unknown)

@@ -6,12 +6,13 @@ Results are computed from entered data and must be measured on the machine; they
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Callable
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.core.braking import shorted_current_peak, shorted_torque, stop
+from actuator_sizing.core.braking import Stop, shorted_current_peak, shorted_torque, stop
 from actuator_sizing.core.machine import JudgedMotor, judge
 from actuator_sizing.core.parameters import _Columns
 from actuator_sizing.sizing.checks.base import Sets
@@ -21,6 +22,9 @@ from actuator_sizing.sizing.stop_instants import ShaftBalance, StopInstants, sto
 FloatArray = NDArray[np.float64]
 
 _SETS_PER_CHUNK = 256
+#: Instants, the longest by a rough integration, from which a stop by the winding is integrated in full.
+_FEW = 6
+_ROUGH_ORDER = 1
 
 
 @dataclass(frozen=True)
@@ -139,9 +143,11 @@ def _chunk(
     def by_winding(omega: FloatArray) -> FloatArray:
         return shorted_torque(omega, R, K, X)
 
-    braking = by_winding if torque is None else torque[:, None]
     delay = (sets.option("stop reaction time") + extra_delay_s)[:, None]
-    found = stop(at.speed_rad_s, at.inertia_kg_m2, load, friction, delay, braking)
+    if torque is None:
+        found = _stops_by_winding(at, delay, by_winding, n * instants.ratio)
+    else:
+        found = stop(at.speed_rad_s, at.inertia_kg_m2, load, friction, delay, torque[:, None])
     distance = found.angle_rad / (n * instants.ratio)
     row = np.arange(len(distance))
     unknown = np.isnan(delay[:, 0]) | (np.isnan(torque) if torque is not None else False)
@@ -173,6 +179,37 @@ def _chunk(
         current_peak_a=known(current),
         gearhead_torque_nm=known(through),
         instant=worst,
+    )
+
+
+def _stops_by_winding(
+    at: ShaftBalance, delay_s: FloatArray, braking: Callable[[FloatArray], FloatArray], scale: FloatArray
+) -> Stop:
+    """Stops by a torque that must be integrated, in full only from the instants that can be the worst.
+
+    Angle and time of the others are zero, or infinite.
+    """
+    given = (at.speed_rad_s, at.inertia_kg_m2, at.load_nm, at.friction_nm)
+    if at.speed_rad_s.shape[1] <= 2 * _FEW:
+        return stop(*given, delay_s, braking)
+    rough = stop(*given, delay_s, braking, _ROUGH_ORDER)
+    longest = [
+        np.argpartition(np.nan_to_num(-values, nan=np.inf), _FEW, axis=1)[:, :_FEW]
+        for values in (rough.angle_rad / scale, rough.time_s)
+    ]
+    chosen = np.concatenate(longest, axis=1)
+    whole = np.broadcast_arrays(*given)
+    found = stop(*(np.take_along_axis(value, chosen, axis=1) for value in whole), delay_s, braking)
+
+    def placed(all_: FloatArray, some: FloatArray) -> FloatArray:
+        answer = np.where(np.isfinite(all_), 0.0, all_)
+        np.put_along_axis(answer, chosen, some, axis=1)
+        return answer
+
+    return replace(
+        rough,
+        time_s=placed(rough.time_s, found.time_s),
+        angle_rad=placed(rough.angle_rad, found.angle_rad),
     )
 
 

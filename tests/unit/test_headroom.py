@@ -50,7 +50,7 @@ def test_at_each_limit_the_set_passes_and_a_thousandth_beyond_it_fails(found):
         assert passes(extent.changed(found.case, answer.limit)), extent.key
         outward = 1.0 if extent.outward > extent.present else -1.0
         beyond = answer.limit * (1.0 + outward * np.sign(answer.limit) * 1e-3)
-        outcome = Resizing.of(extent.changed(found.case, beyond)).outcome(extent.changed(found.case, beyond))
+        outcome = Resizing.of(found.case).outcome(extent.changed(found.case, beyond))
         assert not outcome.is_met, extent.key
         assert outcome.check == answer.check, extent.key
     assert bounded >= 5
@@ -180,3 +180,10 @@ def test_several_cycles_go_together():
     assert payload.present == 90.0
     assert passes(with_payload(made.case, payload.limit))
     assert not passes(with_payload(made.case, payload.limit * 1.001))
+
+
+def test_a_check_that_loses_its_data_on_the_way_is_not_met():
+    """No derating is stated: beyond the ambient of its data sheet nobody knows what the drive carries."""
+    answer = headroom(lift(), motor="M0", drive="D0").of("hottest_ambient")
+    assert answer.limit == pytest.approx(DRIVE["continuous_ambient_degc"], rel=1e-3)
+    assert answer.check == "drive_continuous_current"

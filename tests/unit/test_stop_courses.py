@@ -1,13 +1,21 @@
 """Courses of stops for the diagram: they end where the stops of the checks end, and the report shows them."""
 
+from dataclasses import replace
+from pathlib import Path
+
 import numpy as np
 import pytest
 from scipy.integrate import solve_ivp
 
+import actuator_sizing as act
 from actuator_sizing.core.stop_course import stop_course
 from actuator_sizing.report.figures import house_style
 from actuator_sizing.report.figures.stopping import LOOKS, draw_stops
 from actuator_sizing.report.figures.units import AxisUnits
+from actuator_sizing.sizing import stop_instants
+from actuator_sizing.sizing import stops as stops_of_sets
+from actuator_sizing.sizing.demand import build_demand
+from actuator_sizing.sizing.shortlist import evaluate_sets
 from actuator_sizing.sizing.stop_courses import (
     BRAKE,
     COASTING,
@@ -19,6 +27,7 @@ from actuator_sizing.sizing.stop_courses import (
 from actuator_sizing.sizing.stops import brake_stops, coasting_stops, controlled_stops, drops, shorted_stops
 from tests.check_cases import LEVEL, LIFT, sets_of
 
+DEMO = Path(__file__).parents[2] / "catalogs_demo"
 BRAKED = {"motor": {"brake_torque_nm": 2.0}, "motor_columns": {"brake_closing_time": 0.03}}
 STUDIES = {CONTROLLED: controlled_stops, SHORTED: shorted_stops, BRAKE: brake_stops, COASTING: coasting_stops,
            DROP: drops}  # fmt: skip
@@ -70,3 +79,44 @@ def test_the_diagram_names_every_way_and_the_limit():
     assert any("allowed" in text.get_text() for text in figure.axes[1].texts)
     assert "reaction time" in figure.axes[1].get_xlabel()
     assert all("safe" not in label for label in legend)
+
+
+@pytest.mark.parametrize("name", ["roof_vent_arm", "shade_winch", "tray_lift"])
+def test_no_instant_that_is_left_out_is_worse(name, monkeypatch):
+    case = act.read_case(DEMO / name)
+    motors, gearheads = len(case.motors.names), len(case.gearheads.names)
+    closing = {**case.motors.values, "brake_closing_time": np.full(motors, 0.03)}
+    case = replace(case, motors=replace(case.motors, values=closing))
+    some = np.array([(m, (7 * m) % gearheads, 0) for m in range(0, motors, 3)][:8], dtype=np.intp)
+
+    def stops():
+        sets = evaluate_sets(case, build_demand(case), some)
+        # Every motor with a brake, so that falls and brake stops are known.
+        sets = replace(
+            sets, motors=replace(sets.motors, brake_torque_nm=sets.motors.continuous_current_a * 0.5)
+        )
+        return [
+            study(sets) for study in (controlled_stops, shorted_stops, brake_stops, coasting_stops, drops)
+        ]
+
+    few = stops()
+    monkeypatch.setattr(stop_instants, "_candidates", lambda instants: np.arange(len(instants.at_s)))
+    monkeypatch.setattr(stops_of_sets, "_FEW", 10**6)
+    for one, other in zip(few, stops(), strict=True):
+        for field in ("distance", "time_s", "braking_energy_j", "current_peak_a", "gearhead_torque_nm"):
+            assert getattr(one, field) == pytest.approx(getattr(other, field), rel=1e-9, nan_ok=True), field
+
+
+def test_on_an_arm_the_stop_begins_where_gravity_drives_most_at_full_speed():
+    """The speed is the same all along the plateau: its first node is not the worst."""
+    case = act.read_case(DEMO / "roof_vent_arm")
+    demand = build_demand(case)
+    sets = evaluate_sets(case, demand, np.zeros((1, 3), dtype=np.intp))
+    instants = stop_instants.stop_instants(sets)
+    sense, speed = demand.direction[:, None], np.abs(demand.shaft_speed)
+    process = np.minimum(sense * demand.torque_by_cause["process"], 0.0)  # counts where it drives
+    pull = sense * demand.torque_by_cause["gravity"] + process
+    fastest = speed > (1.0 - 1e-9) * speed.max()
+    assert np.ptp(pull[fastest]) > 0.1 * np.abs(pull).max()
+    tried = instants.speed_rad_s > (1.0 - 1e-9) * speed.max()
+    assert instants.load_nm[tried].min() == pytest.approx(pull[fastest].min(), rel=1e-6)

@@ -11,6 +11,7 @@ from scipy.integrate import solve_ivp
 from actuator_sizing.core.braking import shorted_current_peak, shorted_torque, stop
 from actuator_sizing.core.machine import judge
 from actuator_sizing.core.overload_heat import after_current, phase_excess, standstill_phase_factor
+from actuator_sizing.sizing.checks.holding import BRAKE_ENERGY
 from actuator_sizing.sizing.checks.motor import current_limited_torque, peak_current
 from actuator_sizing.sizing.overloads import (
     jam_temperature,
@@ -255,3 +256,13 @@ def test_brake_coil_heats_the_housing_while_released():
     # 10 W through the 1.1 K/W of the housing, and a little more copper loss from a hotter winding.
     rise = float(heated.pairs.housing_mean_degc[0] - plain.pairs.housing_mean_degc[0])
     assert 11.0 < rise < 11.5
+
+
+def test_energy_of_the_holding_brake_counts_on_a_level_axis_too():
+    columns = {"brake_closing_time": 0.03, "brake_energy_per_stop": 0.01}
+    glides = {**LEVEL, "guide friction force": 10.0}
+    sets = sets_of(values=glides, motor={"brake_torque_nm": 2.0}, motor_columns=columns)
+    assert BRAKE_ENERGY.applies(sets).all()
+    assert float(BRAKE_ENERGY.measure(sets).ratio()[0]) > 0.0
+    blank = sets_of(values=LEVEL, motor={"brake_torque_nm": 2.0}, motor_columns={"brake_closing_time": 0.03})
+    assert not BRAKE_ENERGY.applies(blank).any()

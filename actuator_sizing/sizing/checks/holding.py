@@ -106,7 +106,11 @@ BRAKE_ENERGY = Check(
     ),
     measure=_energy_measure,
     working=_energy_working,
-    applies=lambda sets: _gravity_acts(sets) & has_brake(sets),
+    # On a level axis too: where the catalog states the energy, or where the brake shall stop a load.
+    applies=lambda sets: (
+        has_brake(sets)
+        & (_gravity_acts(sets) | ~np.isnan(sets.catalog_values("motors", "brake_energy_per_stop")))
+    ),
 )
 
 
