@@ -29,7 +29,7 @@ BUS_TOLERANCE = 0.10  # of the nominal bus voltage, where no limits are stated; 
 IN_SURROUNDINGS = frozenset(
     {"ambient_temperature", "altitude", "nominal_bus_voltage", "minimum_bus_voltage", "maximum_bus_voltage",
      "modulation_limit", "judged_winding_temperature", "current_loop_rise_time", "mechanism",
-     "motor_cable_length", "motor_cable_cross_section"}
+     "motor_cable_length", "motor_cable_cross_section", "lowest_ambient_temperature"}
 )  # fmt: skip
 
 
@@ -297,6 +297,11 @@ def _check(axis: Axis, problems: ProblemList) -> None:
             problems.report(_TABLE, axis.rows.get(key), key.replace("_", " "), got=f"{value:g} V",
                             allowed=f"{side} the nominal bus voltage of {nominal:g} V",
                             remedy="Check the three bus voltages.")  # fmt: skip
+    coldest, ambient = axis.number("lowest_ambient_temperature"), axis.number("ambient_temperature")
+    if coldest > ambient:
+        problems.report(_TABLE, axis.rows.get("lowest_ambient_temperature"), "lowest ambient temperature",
+                        got=f"{coldest:g} °C", allowed=f"at most the ambient temperature of {ambient:g} °C",
+                        remedy="Check both temperatures.")  # fmt: skip
     threshold = axis.number("chopper_threshold")
     if threshold < high:
         problems.report(_TABLE, axis.rows.get("chopper_threshold"), "chopper threshold",
@@ -344,6 +349,7 @@ def surroundings_of(axis: Axis) -> Surroundings:
         judged_winding_degc=axis.number("judged_winding_temperature"),
         current_loop_rise_s=axis.number("current_loop_rise_time"),
         cable_ohm=float(np.nan_to_num(cable)),
+        lowest_ambient_degc=axis.number("lowest_ambient_temperature"),
     )
 
 

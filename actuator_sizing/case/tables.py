@@ -77,6 +77,9 @@ COMMON_QUANTITIES = (
     Column("prepared by", TEXT, "who stands behind the numbers", example=""),
     Column("ambient temperature", "temperature", "air around the motor, in the hottest room", default=40.0,
            assumed="40 °C, the usual reference site", minimum=-60.0, maximum=200.0, example="40", unit="°C"),
+    Column("lowest ambient temperature", "temperature", "air around the motor on the coldest day: cold magnets "
+           "need more voltage (default: the ambient temperature)", minimum=-60.0, maximum=200.0, example="",
+           unit="°C"),
     Column("altitude", "length", "height above sea level; cooling weakens above 1000 m", default=0.0,
            assumed="at or below 1000 m", minimum=-500.0, maximum=9000.0, example="200", unit="m"),
     Column("nominal bus voltage", "voltage", "DC bus voltage as planned", required=True, positive=True,

@@ -189,21 +189,22 @@ def judge(motors: MotorParameters, surroundings: Surroundings) -> JudgedMotor:
 
 
 def judge_cold(motors: MotorParameters, surroundings: Surroundings) -> JudgedMotor:
-    """Motors at ambient, as after a long rest, and minimum bus voltage: cold magnets raise the voltage constant.
+    """Motors at the lowest ambient, as after a long rest, and minimum bus voltage: cold magnets raise K.
 
     Parameters
     ----------
     motors : MotorParameters
         n motors. [-]
     surroundings : Surroundings
-        Ambient and bus voltages. [-]
+        Ambient, the lowest where it is stated, and bus voltages. [-]
 
     Returns
     -------
     JudgedMotor
         Shape (n,).
     """
-    ambient = np.full(len(motors), surroundings.ambient_degc)
+    # Of the two the colder: a spread or a change may move the ambient below what is stated as the lowest.
+    ambient = np.full(len(motors), np.fmin(surroundings.lowest_ambient_degc, surroundings.ambient_degc))
     return _judged_at(motors, surroundings, ambient, ambient)
 
 

@@ -6,6 +6,7 @@ Rotary machines use N·m, rad/s and kg·m²; for a linear machine the same field
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass, fields
 from typing import Self
@@ -136,3 +137,4 @@ class Surroundings:
     judged_winding_degc: float  # NaN: the winding limit of each motor
     current_loop_rise_s: float
     cable_ohm: float = 0.0  # motor cable, the way there and back
+    lowest_ambient_degc: float = math.nan  # NaN: the ambient

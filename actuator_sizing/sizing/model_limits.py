@@ -78,11 +78,16 @@ def model_statements(case: Case, best: SetResult) -> tuple[tuple[str, str], ...]
         if s.judged_winding_degc != s.judged_winding_degc
         else f"{s.judged_winding_degc:g} °C"
     )
+    coldest = (
+        "ambient, which is taken as the coldest since no lowest ambient temperature is stated"
+        if s.lowest_ambient_degc != s.lowest_ambient_degc
+        else f"the lowest ambient of {s.lowest_ambient_degc:g} °C"
+    )
     said = [
         (
             "model: hot winding",
-            f"current and voltage are judged with the winding at {judged}; voltage also with the motor at ambient, "
-            "where cold magnets raise it",
+            f"current and voltage are judged with the winding at {judged}; voltage also with the motor at {coldest}: "
+            "cold magnets raise it",
         ),
         ("model: minimum bus", f"voltage and speed–torque limits are judged at {s.bus_min_v:g} V"),
         (

@@ -10,6 +10,7 @@ from actuator_sizing.core.cable import cable_resistance
 from actuator_sizing.core.machine import judge, judge_cold
 from actuator_sizing.errors import InputError
 from actuator_sizing.sizing.checks import CHECKS
+from actuator_sizing.sizing.comparison import compare
 from actuator_sizing.sizing.demand import build_demand
 from actuator_sizing.sizing.shortlist import evaluate_sets
 from tests.made_cases import DIRECT, MOTOR, SURROUNDINGS, case, segment
@@ -41,7 +42,7 @@ def test_the_worse_of_hot_and_cold_is_judged(torque):
     hot, cold = (voltage(f(sets.motors, sets.surroundings), torque) for f in (judge, judge_cold))
     assert float(sets.pairs.voltage_peak_v[0]) == pytest.approx(max(hot, cold), rel=1e-12)
     assert bool(sets.pairs.voltage_is_cold[0]) == (cold > hot)
-    assert ("cold, at ambient" in VOLTAGE.working(sets, 0)) == (cold > hot)
+    assert ("cold, at the lowest ambient" in VOLTAGE.working(sets, 0)) == (cold > hot)
 
 
 def test_both_states_govern_somewhere():
@@ -56,6 +57,24 @@ def test_the_cold_motor_is_at_ambient():
     assert cold.winding_degc.tolist() == cold.magnet_degc.tolist() == [SURROUNDINGS.ambient_degc]
     K = MOTOR["torque_constant_nm_per_a"] * (1.0 - 0.0011 * 10.0)  # 10 K above the reference of 25 °C
     assert float(cold.torque_constant_nm_per_a[0]) == pytest.approx(K, rel=1e-12)
+
+
+def test_a_stated_lowest_ambient_is_the_cold_one(tmp_path):
+    usual, cold = steady(PLAIN, 0.2), steady(PLAIN, 0.2, lowest_ambient_degc=5.0)
+    K = MOTOR["torque_constant_nm_per_a"] * (1.0 + 0.0011 * 20.0)  # 20 K below the reference of 25 °C
+    judged = judge_cold(cold.motors, cold.surroundings)
+    assert float(judged.torque_constant_nm_per_a[0]) == pytest.approx(K, rel=1e-12)
+    assert float(cold.pairs.voltage_peak_v[0]) == pytest.approx(voltage(judged, 0.2), rel=1e-12)
+    assert float(cold.pairs.voltage_peak_v[0]) > float(usual.pairs.voltage_peak_v[0])
+    assert cold.pairs.winding_max_degc[0] == usual.pairs.winding_max_degc[0]  # heat stays with the hot room
+    made = read_case(write_folder(tmp_path / "case", with_axis(("lowest ambient temperature", 5, "°C", ""))))
+    assert made.surroundings.lowest_ambient_degc == pytest.approx(5.0)
+    assert any("lowest ambient of 5 °C" in text for _, text in compare(made).assumptions)
+
+
+def test_a_lowest_ambient_above_the_ambient_is_a_slip(tmp_path):
+    with pytest.raises(InputError, match="lowest ambient temperature"):
+        read_case(write_folder(tmp_path / "case", with_axis(("lowest ambient temperature", 90, "°C", ""))))
 
 
 def test_a_constant_magnet_is_judged_hot_where_the_motor_drives():

@@ -236,7 +236,8 @@ SPEED_TORQUE = Check(
     unit="N·m",
     linear_unit="N",
     formula="max over the cycle of |T| / T_available(ω), T_available from peak current and from "
-    "√((R i + K ω)² + (p ω L i)²) ≤ U at minimum bus voltage, hot winding or motor at ambient, whichever is worse",
+    "√((R i + K ω)² + (p ω L i)²) ≤ U at minimum bus voltage, hot winding or motor at the "
+    "lowest ambient, whichever is worse",
     source="Speed–torque plane of a DC-equivalent machine; textbook dq relations at i_d = 0",
     needs=(
         Need("motors", "peak_current_a", "peak current"),
@@ -383,7 +384,7 @@ VOLTAGE = Check(
     group="motor",
     unit="V",
     formula="max √((R i + K ω + L di/dt)² + (p ω L i)²) ≤ U_bus,min · m in the motor's basis; hot (R large) or at "
-    "ambient (cold magnets: K large), whichever is worse",
+    "the lowest ambient (cold magnets: K large), whichever is worse",
     source="DC-equivalent machine; textbook dq relations at i_d = 0; the larger of the values with and without "
     "L di/dt counts",
     needs=(),

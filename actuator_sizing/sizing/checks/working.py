@@ -201,7 +201,7 @@ def voltage_limit_working(sets: Sets, i: int, at: Instant) -> str:
 def temperature_working(at: Instant, *, cold: bool) -> str:
     """Which state of the motor governs."""
     winding, magnet = (digits(float(x[0])) for x in (at.judged.winding_degc, at.judged.magnet_degc))
-    state = "cold, at ambient" if cold else "hot"
+    state = "cold, at the lowest ambient" if cold else "hot"
     return f"the motor {state} governs (winding {winding} °C, magnet {magnet} °C)"
 
 
