@@ -72,7 +72,8 @@ def _draw_last_step(ax: Axes, last: float, highest: float, unit: str) -> None:
     """Say that the flat top is the last payload of the grid that passes, and not a limit."""
     ax.axhline(last, color=style.QUIET, linestyle=style.QUIET_DASH, linewidth=1.0, zorder=2)
     tried = "heaviest that was tried" if last == highest else "last step that passes"
-    ax.annotate(f"{tried}, {number(last, 4)} {unit}", (1.0, last), xycoords=("axes fraction", "data"), xytext=(-4, -3),
+    words = f"{tried}, {number(last, 4)} {unit}"
+    ax.annotate(words, (1.0, last), xycoords=("axes fraction", "data"), xytext=(-4, -3),
                 textcoords="offset points", ha="right", va="top", fontsize=7.0, color=style.QUIET,
                 bbox={"facecolor": "white", "edgecolor": "none", "pad": 0.6}, zorder=5)  # fmt: skip
 
