@@ -49,12 +49,13 @@ def write_headroom(found: Headroom, folder: str | Path) -> tuple[Path, ...]:
     from actuator_sizing.files import replace_folder_files
     from actuator_sizing.report.figures import house_style, to_svg
     from actuator_sizing.report.figures.payload_map import draw_payload_map
+    from actuator_sizing.report.headroom_text import payload_unit
 
     files = {"headroom.json": render_headroom_json(found), "headroom.csv": _csv(found.table)}
     if found.map is not None:
         files["payload_map.csv"] = _csv(found.map.table)
         with house_style():
-            figure = draw_payload_map(found.map)
+            figure = draw_payload_map(found.map, payload_unit(found.case, found.map))
             if figure is not None:
                 files["payload_map.svg"] = to_svg(figure, "payload_map")
     return replace_folder_files(folder, files, obsolete=("payload_map.csv", "payload_map.svg"))

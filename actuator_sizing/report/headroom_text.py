@@ -88,10 +88,15 @@ def safe_side(value: float, unit: DisplayUnit, *, down: bool) -> str:
     return f"{number(shown, _DIGITS)} {unit.label}".rstrip()
 
 
+def payload_unit(case: Case, drawn: PayloadMap) -> DisplayUnit:
+    """The unit in which the map shows its payload: the one in which it was typed."""
+    top = max(r.payload for r in drawn.rows)
+    return user_unit(case, _PLACES["heaviest_payload"], drawn.payload_unit, top)
+
+
 def map_rows(case: Case, drawn: PayloadMap, titles: Mapping[str, str]) -> Iterator[tuple[str, ...]]:
     """Rows of the map as texts: payload, shortest and longest cycle, each with what bounds it."""
-    top = max(r.payload for r in drawn.rows)
-    unit = user_unit(case, _PLACES["heaviest_payload"], drawn.payload_unit, top)
+    unit = payload_unit(case, drawn)
     seconds = DisplayUnit("s")
     for one in drawn.rows:
         payload = _shown(one.payload, unit) + (" (as stated)" if one.payload == drawn.present_payload else "")

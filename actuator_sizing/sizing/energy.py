@@ -12,6 +12,7 @@ from actuator_sizing.sizing.checks.base import Sets
 from actuator_sizing.sizing.set_model import SetModel
 
 HOUR_S = 3600.0
+_NOISE = 1e-9  # of the energy that goes back and forth
 #: Parts of the torque at the driven shaft that do work on the load, against those that only heat.
 _WORK, _HEAT = ("process", "gravity", "inertia"), ("friction", "losses")
 
@@ -69,7 +70,10 @@ def energy_account(model: SetModel, sets: Sets, index: int) -> EnergyAccount:
 
     def by_cause(causes: tuple[str, ...]) -> float:
         torque = sum(d.torque_by_cause[cause] for cause in causes)
-        return float(integrate(d.duration_s, held * torque * d.shaft_speed))
+        power = held * torque * d.shaft_speed
+        energy = float(integrate(d.duration_s, power))
+        # What is given and taken back alike leaves only the noise of the last bits.
+        return energy if abs(energy) > _NOISE * float(integrate(d.duration_s, np.abs(power))) else 0.0
 
     at_motor = float(integrate(d.duration_s, c.shaft_torque_nm[0] * c.motor_speed_rad_s[0]))
     at_load = float(integrate(d.duration_s, held * d.shaft_torque * d.shaft_speed))

@@ -118,3 +118,14 @@ def test_energy_of_a_case_reaches_its_results(tmp_path):
     ]
     best = compare(read_case(write_folder(tmp_path / "case", tables))).best
     assert best.quantities["energy_work_per_cycle_j"] is not None
+
+
+def test_work_that_comes_back_whole_is_none_at_all():
+    level = {**SCREW, "inclination": 0.0}
+    back_and_forth = cycle({"law": "trapezoid", "displacement": 0.3, "duration_s": 0.6, "payload": 12.0},
+                           {"law": "dwell", "duration_s": 0.4, "payload": 12.0},
+                           {"law": "trapezoid", "displacement": -0.3, "duration_s": 0.6, "payload": 12.0},
+                           {"law": "dwell", "duration_s": 0.4, "payload": 12.0})  # fmt: skip
+    account = energy_account(*study(level, back_and_forth), 0)
+    assert account.work_j == 0.0
+    assert account.mechanism_j > 1.0

@@ -29,8 +29,15 @@ def levers_section(comparison: Comparison) -> Section | None:
     for item in comparison.sets:
         if not item.levers:
             continue
-        rows = tuple(row(*lever_text(comparison.case, lever)) for lever in item.levers)
-        blocks.append(Table(_caption(item), _COLUMNS, rows))
+        texts = [(lever["helps"], lever_text(comparison.case, lever)) for lever in item.levers]
+        helping = tuple(row(*text) for helps, text in texts if helps)
+        idle = "; ".join(text.change for helps, text in texts if not helps)
+        if helping:
+            blocks.append(Table(_caption(item), _COLUMNS, helping))
+        else:
+            blocks.append(Paragraph(f"{_caption(item)}."))
+        if idle:
+            blocks.append(Paragraph(f"No change of one of these alone helps: {idle}.", "note"))
         blocks.append(Paragraph(_about_pairs(item), "note"))
     if not blocks:
         return None

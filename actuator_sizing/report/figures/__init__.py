@@ -34,6 +34,7 @@ from actuator_sizing.report.figures.temperature import draw_temperature
 from actuator_sizing.report.figures.trade_offs import draw_trade_offs
 from actuator_sizing.report.figures.units import AxisUnits
 from actuator_sizing.report.figures.utilisation import draw_utilisation
+from actuator_sizing.report.headroom_text import payload_unit
 
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
@@ -163,7 +164,7 @@ def _decision_figures(comparison: Comparison) -> dict[str, Callable[[], Figure |
         figures["ratio_windows"] = lambda: draw_ratio_windows(windows, leading)
     if headroom is not None and headroom.map is not None:
         drawn = headroom.map
-        figures["payload_map"] = lambda: draw_payload_map(drawn)
+        figures["payload_map"] = lambda: draw_payload_map(drawn, payload_unit(comparison.case, drawn))
     if found is not None:
         currency = comparison.case.motors.entered_units.get("price", "")
         figures["trade_offs"] = lambda: draw_trade_offs(found, currency)

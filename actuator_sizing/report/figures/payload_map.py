@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from actuator_sizing.report.figures import style
-from actuator_sizing.report.formatting import display_unit
+from actuator_sizing.report.formatting import DisplayUnit, display_unit, number
 from actuator_sizing.report.text import check_name, in_sentence
 
 if TYPE_CHECKING:
@@ -21,18 +21,20 @@ _MARKERS = ("o", "s", "^", "D", "v", "X")
 _ROOM = 1.35  # of the times that matter
 
 
-def draw_payload_map(drawn: PayloadMap) -> Figure | None:
+def draw_payload_map(drawn: PayloadMap, unit: DisplayUnit | None = None) -> Figure | None:
     """Draw the map of one set; None where it passes nowhere.
 
     Parameters
     ----------
     drawn : PayloadMap
         The map.
+    unit : DisplayUnit, optional
+        Of the payload; by default the usual one for its size.
     """
     rows = [row for row in drawn.rows if row.shortest_s is not None]
     if not rows:
         return None
-    unit = display_unit(drawn.payload_unit, (max(row.payload for row in drawn.rows),))
+    unit = unit or display_unit(drawn.payload_unit, (max(row.payload for row in drawn.rows),))
     payload = np.array([unit.convert(row.payload) for row in rows])
     shortest = np.array([row.shortest_s for row in rows], dtype=float)
     longest = np.array([drawn.slowest_s if row.longest_s is None else row.longest_s for row in rows])
@@ -53,14 +55,27 @@ def draw_payload_map(drawn: PayloadMap) -> Figure | None:
         for t, p, check in zip(time, payload, checks, strict=True):
             if check and np.isfinite(t):
                 place = names.setdefault(check, len(names)) % len(_COLORS)
-                ax.plot([t], [p], marker=_MARKERS[place], markersize=4.6, color=_COLORS[place], zorder=3)
+                ax.plot([t], [p], marker=_MARKERS[place], markersize=4.6, color=_COLORS[place], zorder=3,
+                        clip_on=t > latest)  # fmt: skip
     _draw_present(ax, drawn, float(unit.convert(drawn.present_payload)))
     ax.set_xlim(max(0.0, 0.75 * float(np.nanmin(shortest))), latest)
-    ax.set_ylim(0.0, float(unit.convert(drawn.rows[-1].payload)))
+    highest = float(unit.convert(drawn.rows[-1].payload))
+    ax.set_ylim(0.0, 1.04 * highest)  # a mark on the last row is whole
+    _draw_last_step(ax, float(payload[-1]), highest, unit.label)
     ax.set_xlabel("cycle time [s]")
     ax.set_ylabel(f"heaviest payload [{unit.label}]")
     _draw_key(ax, names)
     return figure
+
+
+def _draw_last_step(ax: Axes, last: float, highest: float, unit: str) -> None:
+    """Say that the flat top is the last payload of the grid that passes, and not a limit."""
+    ax.axhline(last, color=style.QUIET, linestyle=style.QUIET_DASH, linewidth=1.0, zorder=2)
+    tried = "heaviest that was tried" if last == highest else "last step that passes"
+    words = f"{tried}, {number(last, 4)} {unit}"
+    ax.annotate(words, (1.0, last), xycoords=("axes fraction", "data"), xytext=(-4, -3),
+                textcoords="offset points", ha="right", va="top", fontsize=7.0, color=style.QUIET,
+                bbox={"facecolor": "white", "edgecolor": "none", "pad": 0.6}, zorder=5)  # fmt: skip
 
 
 def _draw_present(ax: Axes, drawn: PayloadMap, payload: float) -> None:
@@ -94,9 +109,10 @@ def _draw_key(ax: Axes, names: dict[str, int]) -> None:
             label="every check met",
         )
     ]
+    handles.append(Line2D([], [], linestyle="none", label="bounded by"))
     handles += [
         Line2D([], [], color=_COLORS[k % len(_COLORS)], marker=_MARKERS[k % len(_MARKERS)], markersize=4.6,
-               linestyle="none", label=f"bounded by {style.shorten(titles.get(name, check_name(name)), 26)}")
+               linestyle="none", label=style.shorten(titles.get(name, check_name(name)), 26))
         for name, k in names.items()
     ]  # fmt: skip
     ax.legend(handles=handles, loc="upper left", bbox_to_anchor=(1.01, 1.0), borderaxespad=0.0, fontsize=7.4,

@@ -70,10 +70,11 @@ def shown_rows(windows: RatioWindows, leading: Sequence[int]) -> list[MotorWindo
 
 
 def _reach(windows: RatioWindows, rows: Sequence[MotorWindow]) -> tuple[float, float]:
-    """Ends of the axis: every window that has an end, and the catalog ratios around them."""
+    """Ends of the axis: every window that has an end, the catalog ratios in them, and the best ratios."""
     ends = [value for row in rows for part in row.intervals for value, check in
             ((part.low, part.low_check), (part.high, part.high_check)) if check]  # fmt: skip
     ends += [c.ratio for row in rows for c in row.catalog]
+    ends += [row.best_ratio for row in rows if 0.0 < row.best_ratio < math.inf]
     if not ends:
         ends = list(windows.catalog_ratios) or [1.0]
     return min(ends) / _MARGIN, max(ends) * _MARGIN
@@ -87,7 +88,7 @@ def _draw_row(ax: Axes, y: int, row: MotorWindow, low: float, high: float) -> No
         )
     for mark in {c.ratio for c in row.catalog}:
         ax.plot([mark, mark], [y - 0.36, y + 0.36], color=style.INK, linewidth=1.8, solid_capstyle="butt")
-    if math.isfinite(row.best_ratio) and low <= row.best_ratio <= high:
+    if low <= row.best_ratio <= high:
         ax.plot(
             [row.best_ratio], [y], marker="D", markersize=4.2, color=style.PEAK_LIMIT, markeredgecolor="white"
         )
