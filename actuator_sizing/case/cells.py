@@ -51,7 +51,7 @@ def remedy_for(error: CellError, default: float | str | None, assumed: str) -> s
     error : CellError
         What is wrong.
     default : float, str or None
-        Value that an empty cell counts as, in SI; None: it means not known.
+        Value that an empty cell counts as, in SI; None: it means not known. [-]
     assumed : str
         That value in words.
     """
