@@ -120,8 +120,10 @@ def print_summary(comparison: Comparison, written: Sequence[Path]) -> None:
 def verdict_sentence(comparison: Comparison) -> str:
     """Say which set wins, which check governs and by how much, and what the limits keep from deciding."""
     from actuator_sizing.case.judging import loosened_checks
+    from actuator_sizing.report.document.verdict import unheld_load
 
-    return " ".join((_verdict(comparison), *loosened_checks(comparison.case.limits)))
+    told = _verdict(comparison), *loosened_checks(comparison.case.limits), unheld_load(comparison)
+    return " ".join(filter(None, told))
 
 
 def _verdict(comparison: Comparison) -> str:

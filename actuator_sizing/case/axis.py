@@ -7,7 +7,7 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from actuator_sizing.case.cells import CellError, is_missing, parse_number, tidy
+from actuator_sizing.case.cells import CellError, is_missing, parse_number, remedy_for, tidy
 from actuator_sizing.case.columns import TEXT, WORDS, Column, allowed_text, find, nearest
 from actuator_sizing.case.headings import understand_headings
 from actuator_sizing.case.model import Entry
@@ -211,7 +211,7 @@ def _number(row: _Row, column: Column, decimal: str, problems: ProblemList, coor
         got = row.value.fault if isinstance(row.value, OddCell) else shown(row.value)
         allowed = error.allowed if error.allowed != "a number" else allowed_text(column, unit)
         problems.report(_TABLE, row.number, column.name, got=got, allowed=allowed,
-                        remedy=error.remedy)  # fmt: skip
+                        remedy=remedy_for(error, column.default, column.assumed))  # fmt: skip
         return None
     slack = 1e-12 * abs(value)
     outside = value < column.minimum - slack or value > column.maximum + slack or not np.isfinite(value)
@@ -266,6 +266,12 @@ def _complete(
                             allowed=column.allowed(axis.coordinate or "rotary"), remedy=remedy)  # fmt: skip
         elif column.default is not None:
             _assume(axis, column.name, column.key, column.default, unit, column.assumed)
+            if (
+                column.key == "inclination" and column.default == 0.0
+            ):  # upright, as a winch has it, hides no load
+                problems.report(_TABLE, axis.rows.get(column.key), column.name, got="no value, taken as level",
+                                allowed="an angle: it decides the load of gravity",
+                                remedy="State 0 if the axis is level.", severity=WARNING)  # fmt: skip
     if axis.mechanism is not None and axis.mechanism.motion_at == SHAFT:
         if "motion_stated_at" not in axis.values and "motion_stated_at" not in broken:
             _assume(axis, "motion stated at", "motion_stated_at", SHAFT, "", "usual for this mechanism")

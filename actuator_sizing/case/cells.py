@@ -43,6 +43,24 @@ class CellError(ValueError):
         super().__init__(remedy)
 
 
+def remedy_for(error: CellError, default: float | str | None, assumed: str) -> str:
+    """Advice for a wrong cell of a column; an empty cell is no way out where it counts as a value.
+
+    Parameters
+    ----------
+    error : CellError
+        What is wrong.
+    default : float, str or None
+        Value that an empty cell counts as, in SI; None: it means not known. [-]
+    assumed : str
+        That value in words.
+    """
+    if default is None or "the cell empty if the value is not known" not in error.remedy:
+        return error.remedy
+    counts = assumed or f"{default}"
+    return f"Write a number; where it is not known the worst case, for an empty cell counts as a value: {counts}."
+
+
 def tidy(text: str) -> str:
     """Cell text without outer, doubled or exotic blanks and invisible characters; minus and quotes folded."""
     return " ".join(text.translate(_INVISIBLE).translate(_BLANKS).translate(_FOLDED).split())

@@ -49,6 +49,7 @@ SEVERAL_LOADS = ("S8", "S10")  # types with one row for each load
 _LEFT_OUT = (
     "How the speed is reached and left is left out, as the duty type has it: peak torque is that of the load."
 )
+_CARRIED = "The payload is carried at rest too; only the process force ends with the time under load."
 
 
 @dataclass(frozen=True)
@@ -247,6 +248,9 @@ def _cycles(name: str, loads: list[_Load], coordinate: str, problems: ProblemLis
     if kind != "S1" and not any(np.isfinite(load.start_s) for load in loads):
         problems.report(_TABLE, loads[0].row, "duty type", got=kind, allowed="worth knowing", remedy=_LEFT_OUT,
                         severity=NOTE)  # fmt: skip
+    if kind in ("S3", "S4", "S5") and loads[0].payload > 0.0:
+        problems.report(_TABLE, loads[0].row, "payload", got=kind, allowed="worth knowing", remedy=_CARRIED,
+                        severity=NOTE)  # fmt: skip
     runs = SHORT_TIME if kind == "S2" else REPEATS
     if kind == "S1":
         parts: Iterable[Segment] = [_continuous(loads[0], coordinate)]
@@ -267,7 +271,8 @@ def _one_load(load: _Load) -> Iterator[Segment]:
         yield replace(_steady(load, rest, "no load"), payload=0.0, process_effort=0.0)
     elif rest > 0.0:
         still = _segment(load, "rest", "dwell", (Phase(rest),))
-        yield replace(still, payload=0.0, process_effort=0.0, brake_closed=load.brake_closed)
+        # What is carried stays on at rest: gravity acts on it still, and to leave it out would be the unsafe side.
+        yield replace(still, process_effort=0.0, brake_closed=load.brake_closed)
 
 
 def _changes(loads: list[_Load]) -> Iterator[Segment]:

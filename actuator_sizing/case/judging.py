@@ -71,7 +71,7 @@ def understand_limits(
         problems.report("limits", None, parsed.heading("applies"), got="no check with 'yes'",
                         allowed="yes for at least one check, or nothing could fail",
                         remedy="Write yes for the checks that a set must pass.")  # fmt: skip
-    if parsed is not None:
+    elif parsed is not None:
         _warn_of_looseness(parsed, limits, problems)
     return limits, entries
 

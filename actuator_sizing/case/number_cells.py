@@ -7,7 +7,7 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
-from actuator_sizing.case.cells import CellError, is_missing, parse_number, tidy
+from actuator_sizing.case.cells import CellError, is_missing, parse_number, remedy_for, tidy
 from actuator_sizing.case.columns import Column, allowed_text
 from actuator_sizing.case.headings import Heading
 from actuator_sizing.case.model import MISSING, STATED
@@ -143,7 +143,7 @@ def _report_wrong(
         where,
         got=lambda i: wrong[i][0] if i in text.odd else shown(wrong[i][0]),
         allowed=allowed,
-        remedy=lambda i: wrong[i][1].remedy,
+        remedy=lambda i: remedy_for(wrong[i][1], heading.column.default, heading.column.assumed),
     )
 
 

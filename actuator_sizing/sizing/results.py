@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass, field, replace
+from dataclasses import dataclass, field, fields, replace
 from functools import cached_property
 from typing import TYPE_CHECKING, Any
 
@@ -36,8 +36,10 @@ ADVICE_MET, ADVICE_NOT_MET = "advice met", "advice not met"
 class CheckResult:
     """One check of one set.
 
-    `demand`, `capacity` and `utilisation` are None where the check could not be made; `missing` then names
-    the data to ask the supplier for. `at_time_s` is None where no instant governs.
+    `verdict` is what counts towards the set, where advice that is not met is at most a low reserve; `shown_verdict`
+    is what is printed, here as in every report. `demand`, `capacity` and `utilisation` are None where the check
+    could not be made; `missing` then names the data to ask the supplier for. `at_time_s` is None where no instant
+    governs.
     """
 
     check: str  # key, e.g. "winding_temperature"
@@ -60,6 +62,20 @@ class CheckResult:
     inputs: tuple[tuple[str, str], ...] = ()  # (input used, origin)
     is_advice: bool = False
     cycle: str | None = None  # the cycle in which it is nearest to its limit; None where cycles have no names
+
+    def __repr__(self) -> str:
+        values = (
+            f"shown_verdict={self.shown_verdict!r}"
+            if f.name == "verdict"
+            else f"{f.name}={getattr(self, f.name)!r}"
+            for f in fields(self)
+        )
+        return f"CheckResult({', '.join(values)})"
+
+    def _repr_html_(self) -> str:
+        from actuator_sizing.sizing.notebook import checks_html
+
+        return checks_html((self,))
 
     @property
     def where(self) -> str:

@@ -266,7 +266,8 @@ def test_limits_that_nothing_could_fail(tmp_path, word):
         "Write yes for the checks that a set must pass.",
     )
     tables["limits"][1][1] = "yes"
-    assert problems_of(tmp_path / "one", tables) == ()
+    found = [(p.table, p.severity) for p in problems_of(tmp_path / "one", tables)]
+    assert found == ([("limits", "warning")] if word == "no" else [])
 
 
 @pytest.mark.parametrize(
@@ -288,3 +289,19 @@ def test_wrong_tolerance(tmp_path, row, column, got):
     assert (problem.table, problem.row, problem.column, problem.got) == ("tolerances", 2, column, got)
     assert problem.allowed
     assert problem.remedy
+
+
+def test_an_inclination_that_is_not_stated_is_warned_of(tmp_path):
+    for value in ("", None):
+        tables = change(small_case(), "inclination", "")
+        if value is None:
+            tables["axis"].remove(row_of(tables, "axis", "inclination"))
+        problem = the_only(problems_of(tmp_path / str(value), tables))
+        assert (problem.table, problem.column, problem.severity) == ("axis", "inclination", "warning")
+        assert problem.got == "no value, taken as level"
+
+
+def test_an_empty_cell_is_no_advice_where_it_counts_as_a_value(tmp_path):
+    problem = the_only(problems_of(tmp_path, change(small_case(), "inclination", "NaN")))
+    assert "worst case" in problem.remedy
+    assert "Leave" not in problem.remedy

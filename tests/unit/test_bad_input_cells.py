@@ -405,3 +405,14 @@ def test_all_tables_are_told_at_once(tmp_path):
     row_of(tables, "axis", "lead")[1] = "e"
     problems = problems_of(tmp_path, tables)
     assert sorted(problem.got for problem in problems) == ["'a'", "'b'", "'c'", "'d'", "'e'"]
+
+
+@FORMS
+@pytest.mark.parametrize("column", ["payload", "process force"])
+def test_an_empty_cell_is_no_advice_where_it_counts_as_nothing(tmp_path, write, column):
+    tables = small_case()
+    set_cell(tables, "duty_cycle", "up", column, "NaN")
+    problem = the_only(problems_of(tmp_path, tables, write))
+    assert (problem.table, problem.column.partition(" [")[0]) == ("duty_cycle", column)
+    assert "worst case" in problem.remedy
+    assert "Leave" not in problem.remedy

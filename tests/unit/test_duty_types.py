@@ -79,6 +79,18 @@ def test_every_type_has_the_parts_of_its_definition(tmp_path):
     assert by_name["g"].segments[0].phases[0].kinematics(0.0)[1] == pytest.approx(0.05)  # from the last load
 
 
+def test_what_is_carried_is_carried_at_rest_too(tmp_path):
+    made = tables(
+        ["c", "S3", 6, 50, 600, "", 25, "", "", "", 12], ["e", "S6", 6, 50, "", "", 40, "", "", "", 12]
+    )
+    made["duty_types"][0] = [*HEAD, "payload [kg]"]
+    found = read_case(write_folder(tmp_path, made))
+    load, rest = found.cycles[0].segments
+    assert (load.payload, rest.payload, rest.process_effort) == (12.0, 12.0, 0.0)
+    assert found.cycles[1].segments[1].payload == 0.0  # no load is what S6 says
+    assert [p.row for p in found.problems if p.column == "payload" and p.severity == NOTE] == [2]
+
+
 def test_a_duty_type_stands_beside_the_duty_cycle(tmp_path):
     made = tables(["hot", "S1", 6, 50, "", "", "", "", "", ""], keep_duty_cycle=True)
     _, problems = check_case(write_folder(tmp_path / "a", made))

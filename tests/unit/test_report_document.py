@@ -3,14 +3,16 @@
 import copy
 import dataclasses
 from datetime import date
+from types import SimpleNamespace
 
+import numpy as np
 import pytest
 from report_fixture import build_comparison, build_hostile
 
 from actuator_sizing import console
 from actuator_sizing.report.document import prepare_document
 from actuator_sizing.report.document.blocks import Bullets, Facts, Paragraph, Table, Working
-from actuator_sizing.report.document.verdict import verdict_sentence
+from actuator_sizing.report.document.verdict import unheld_load, verdict_sentence
 from actuator_sizing.report.text import clean
 from actuator_sizing.sizing.results import FAILS, LOW_RESERVE, NOT_CHECKED, PASSES, Checks
 
@@ -261,3 +263,24 @@ def test_text_of_users_is_made_printable(text, shown):
 def test_hostile_names_prepare():
     document = prepare_document(build_hostile(), DAY)
     assert max(map(len, text_of(document).splitlines())) < 2000
+
+
+def test_advice_not_met_shows_itself_as_such():
+    check = dataclasses.replace(
+        build_comparison().best.check("voltage"), is_advice=True, utilisation=1.5, verdict=LOW_RESERVE
+    )
+    assert "shown_verdict='advice not met'" in repr(check)
+    assert LOW_RESERVE not in repr(check)
+    assert "advice not met" in check._repr_html_()
+    assert check.verdict == LOW_RESERVE
+
+
+def test_a_load_that_no_brake_holds_is_told(comparison):
+    def told(gravity, brake):
+        case = copy.copy(comparison.case)
+        case.motor_parameters = SimpleNamespace(brake_torque_nm=np.full(len(case.motors), brake))
+        demand = SimpleNamespace(torque_by_cause={"gravity": np.array([[0.0, -gravity]])})
+        return unheld_load(dataclasses.replace(comparison, case=case, demand=demand))
+
+    assert "no brake of it holds the load when torque is removed" in told(2.0, np.nan)
+    assert told(2.0, 3.0) == told(0.0, np.nan) == ""

@@ -6,11 +6,15 @@ import math
 from datetime import date
 from typing import TYPE_CHECKING
 
+import numpy as np
+
 from actuator_sizing.case.judging import loosened_checks
 from actuator_sizing.report.document.blocks import Bullets, Facts, Paragraph, Section
 from actuator_sizing.report.formatting import percent, quantity
 from actuator_sizing.report.text import clean, in_sentence, option, plural
 from actuator_sizing.sizing.results import ADVICE_NOT_MET, FAILS, LOW_RESERVE, NOT_CHECKED, PASSES
+
+_NO_GRAVITY = 1e-9  # N·m, N or m/s²: what rounding leaves of a balanced or level axis
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -142,7 +146,7 @@ def verdict_section(comparison: Comparison) -> Section:
     ]
     if advice:
         notes.insert(0, f"Advice not met, which does not decide the verdict: {_listed(advice)}.")
-    notes[:0] = loosened_checks(case.limits)
+    notes[:0] = (*loosened_checks(case.limits), *filter(None, (unheld_load(comparison),)))
     return Section(
         "summary",
         "The chosen set" if comparison.passes else "The leading set",
@@ -152,6 +156,21 @@ def verdict_section(comparison: Comparison) -> Section:
             Paragraph("There is no set to show; see the remarks on the input.", "note"),
             Facts(tuple(facts)),
         ),
+    )
+
+
+def unheld_load(comparison: Comparison) -> str:
+    """Say that nothing holds the load of the leading set without torque; empty where gravity does not act."""
+    if not comparison.sets or comparison.demand is None:
+        return ""
+    best, case = comparison.sets[0], comparison.case
+    gravity = float(np.abs(comparison.demand.torque_by_cause["gravity"]).max(initial=0.0))
+    gravity += abs(case.mechanism.specific_gravity_m_s2)  # on the moving part of a linear motor
+    if gravity <= _NO_GRAVITY or float(case.motor_parameters.brake_torque_nm[best.motor_index]) > 0.0:
+        return ""
+    return (
+        f"Gravity acts, and {clean(best.motor, 60)} states no holding brake: no brake of it holds the load when "
+        "torque is removed."
     )
 
 
