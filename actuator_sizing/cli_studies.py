@@ -64,7 +64,12 @@ def machine(
 @click.option(
     "--set", "changes", multiple=True, metavar="SETTING=VALUE", help="Change a setting of the loops."
 )
-@click.option("--cycle", default="", metavar="NAME", help="Cycle of a case with several; default: the first.")
+@click.option(
+    "--cycle",
+    default="",
+    metavar="NAME",
+    help="Cycle of a case with several; default: the first, for stops the fastest.",
+)
 @click.option(
     "--rate",
     type=click.FloatRange(min=0.0, min_open=True),

@@ -33,6 +33,7 @@ _SHOWN = (
     "position_phase_margin_rad", "disturbance_stiffness_min_nm_per_rad",
 )  # fmt: skip
 _DISTANCES = {"controlled_stop_distance", "shorted_stop_distance"}
+_STOPS = {"controlled_stop_s", "shorted_stop_s"}
 
 
 def print_simulation(simulation: Simulation, written: Sequence[Path]) -> None:
@@ -47,7 +48,12 @@ def print_simulation(simulation: Simulation, written: Sequence[Path]) -> None:
     """
     from actuator_sizing.report.loop_settings import setting_unit
 
-    click.echo(f"{clean(simulation.label)}, input {clean(simulation.input)}, every {simulation.step_s:.4g} s")
+    of_cycle = f" of the cycle '{clean(simulation.cycle)}'" if simulation.cycle else ""
+    has_cycle = simulation.input in ("cycle", "stop")
+    click.echo(
+        f"{clean(simulation.label)}, input {clean(simulation.input)}{of_cycle if has_cycle else ''}, "
+        f"every {simulation.step_s:.4g} s"
+    )
     for line in _answers(simulation):
         click.echo(line)
     for move in simulation.moves.itertuples():
@@ -76,6 +82,8 @@ def _answers(simulation: Simulation) -> Iterator[str]:
     load = "m" if simulation.is_linear_load else "rad"
     for name in _SHOWN:
         value = simulation.quantities.get(name)
+        if name in _STOPS and value is not None and math.isnan(value):
+            yield _does_not_stop(simulation, name.removesuffix("_s"))
         if value is None or (isinstance(value, float) and math.isnan(value)):
             continue
         unit = load if name in _AT_LOAD | _DISTANCES else suffix_unit(name) or ""
@@ -84,4 +92,17 @@ def _answers(simulation: Simulation) -> Iterator[str]:
             if name.endswith(label) and name not in _AT_LOAD:
                 words = name[: -len(label)]
                 break
+        if name in _DISTANCES:
+            sense = "along" if value >= 0.0 else "against"
+            yield f"  {words.replace('_', ' ')}: {abs(float(value)):.5g} {unit} {sense} +x"
+            continue
         yield f"  {words.replace('_', ' ')}: {float(value):.5g} {unit}".rstrip(" -")
+
+
+def _does_not_stop(simulation: Simulation, name: str) -> str:
+    speed, time = (simulation.quantities[f"{name}_{what}"] for what in ("final_speed_rad_s", "watched_s"))
+    unit = "m/s" if simulation.is_linear_motor else "rad/s"
+    return (
+        f"  {name.replace('_', ' ')}: does not come to rest; after {time:.4g} s the motor still moves at "
+        f"{speed:.4g} {unit}"
+    )

@@ -74,7 +74,8 @@ def simulate(
     cycles : int
         How many cycles are run one after another; only for ``"cycle"``. [-]
     cycle : str
-        Name of the cycle, where the case has several; the first one when empty. [-]
+        Name of the cycle, where the case has several; when empty the first one, for ``"stop"`` the one in which
+        the driven shaft is fastest. [-]
 
     Returns
     -------
@@ -93,8 +94,11 @@ def simulate(
     ``is_dq``); without a controller its direct axis is held at zero current.
     """
     parts = find_set(case, motor, gearhead, drive)
-    case = _of_cycle(case, cycle)
-    demand = build_demand(case, in_order=True)
+    if str(input) == "stop" and not cycle:
+        case, demand = _fastest(case)
+    else:
+        case = _of_cycle(case, cycle)
+        demand = build_demand(case, in_order=True)
     check_finite("rate_hz", rate_hz, "a sampling rate > 0 up to 1 MHz", 0.0, 1.0e6)
     check_finite("settling_band", settling_band, "a band > 0", 0.0, math.inf)
     check_finite("winding_degc", winding_degc, "−60 to 400 °C", -60.0, 400.0)
@@ -133,6 +137,12 @@ def _of_cycle(case: Case, name: str) -> Case:
     raise wrong(
         "cycle", f"'{name}'", known or "a case that names cycles", "Choose one of the cycles of the case."
     )
+
+
+def _fastest(case: Case) -> tuple[Case, Demand]:
+    """The case with the cycle in which the driven shaft is fastest; stops from the others are shorter as a rule."""
+    found = [(each, build_demand(each, in_order=True)) for each in case.by_cycle()]
+    return max(found, key=lambda one: one[1].shaft_speed_peak)
 
 
 def simulate_prepared(case: Case, demand: Demand, parts: tuple[int, int, int]) -> Simulation | None:
@@ -219,6 +229,7 @@ def simulate_set(
     gearhead = case.gearheads.names[parts[1]]
     return Simulation(
         case_name=case.name,
+        cycle=case.cycle.name,
         input=word,
         motor=case.motors.names[parts[0]],
         gearhead="direct" if bool(axis.model.gearhead.is_direct[0]) else gearhead,

@@ -47,6 +47,8 @@ class Simulation:
         Conditions and assumptions.
     bands : mapping of str to float
         Settling band and allowed error in the coordinate of the load (NaN: not given).
+    cycle : str
+        Name of the cycle; empty where the case does not name it.
     """
 
     case_name: str
@@ -68,6 +70,7 @@ class Simulation:
     is_linear_load: bool
     is_linear_motor: bool
     bands: Mapping[str, float] = field(default_factory=dict)
+    cycle: str = ""
 
     @property
     def label(self) -> str:

@@ -19,6 +19,7 @@ from actuator_sizing.core.thermal_run import single_run
 from actuator_sizing.errors import ERROR, InputError
 from actuator_sizing.report import render_report
 from actuator_sizing.report.motion_picture import write_motion
+from actuator_sizing.simulation_console import print_simulation
 from actuator_sizing.sizing.case_changes import single
 from actuator_sizing.sizing.comparison import compare
 from actuator_sizing.sizing.cycles import cycle_demands, evaluate_cycles
@@ -444,6 +445,16 @@ def test_one_cycle_of_several_is_simulated(tmp_path):
     assert named.quantities["current_peak_a"] > first.quantities["current_peak_a"]
     with pytest.raises(InputError, match="'normal', 'worst'"):
         simulate(made, cycle="best", **parts)
+
+
+def test_stops_are_those_of_the_fastest_cycle_and_its_name_is_printed(capsys):
+    made = several(NORMAL, WORST)
+    parts = {"motor": "M0", "gearhead": made.gearheads.names[1], "drive": "D0", "input": "stop"}
+    found, named = simulate(made, **parts), simulate(made, cycle="worst", **parts)
+    assert found.cycle == "worst"
+    assert found.quantities["stop_from_speed_rad_s"] == named.quantities["stop_from_speed_rad_s"]
+    print_simulation(found, ())
+    assert "input stop of the cycle 'worst'" in capsys.readouterr().out
 
 
 # -- reports -----------------------------------------------------------------------------------------

@@ -12,6 +12,7 @@ from actuator_sizing import cli
 from actuator_sizing.case.reading import read_case
 from actuator_sizing.core.tuning import LinearCascade
 from actuator_sizing.errors import InputError
+from actuator_sizing.simulation_console import print_simulation
 from actuator_sizing.sizing import compare
 from actuator_sizing.sizing.open_loop import ripple
 from actuator_sizing.sizing.simulation import simulate
@@ -143,6 +144,34 @@ def test_a_stop_at_the_current_limit_takes_momentum_over_torque():
     assert q["controlled_stop_s"] == pytest.approx(expected, rel=0.2)
     assert q["controlled_stop_distance"] * q["stop_from_speed_rad_s"] > 0.0
     assert q["shorted_stop_s"] > 0.0
+
+
+@pytest.mark.parametrize("reaction_s", [0.0, 0.05])
+def test_a_shorted_stop_counts_the_reactance_as_the_comparison_does(reaction_s):
+    """A heavy rotor: the transient, which the steady torque of the comparison leaves out, is 3e-3 of the way."""
+    heavy = made({"stop reaction time": reaction_s}, motors=[{**MOTOR, "rotor_inertia_kg_m2": 2e-2}])
+    found = simulate(heavy, motor="M0", gearhead="G0", drive="D0", input="stop")
+    assert found.plant.is_rigid
+    assert found.plant.reactance_ohm_s > 0.0
+    q, compared = found.quantities, compare(heavy).sets
+    stop = next(s for s in compared if s.gearhead is None).quantities
+    assert q["shorted_stop_distance"] == pytest.approx(stop["stop_shorted_distance_m"], rel=4e-3)
+    assert q["shorted_stop_peak_current_a"] == pytest.approx(stop["stop_shorted_current_a"], rel=0.02)
+
+
+def test_a_shorted_stop_that_never_ends_and_a_stop_along_minus_x_are_said_in_words(capsys):
+    """A hanging load goes on sinking, whatever the shorted winding does."""
+    down = cycle({"law": "3-4-5 polynomial", "displacement": -0.1, "duration_s": 0.3},
+                 {"law": "dwell", "duration_s": 0.2})  # fmt: skip
+    values = SCREW | {"inclination": math.pi / 2.0, "guide friction force": 1.0}
+    found = simulate(case("ball screw", values, down), motor="M0", gearhead="G0", drive="D0", input="stop")
+    assert math.isnan(found.quantities["shorted_stop_s"])
+    assert found.quantities["controlled_stop_distance"] < 0.0
+    print_simulation(found, ())
+    shown = capsys.readouterr().out
+    assert "shorted stop: does not come to rest" in shown
+    assert "m against +x" in shown
+    assert "distance: -" not in shown
 
 
 def test_a_stop_counts_its_reaction_time():
