@@ -266,9 +266,7 @@ def _complete(
                             allowed=column.allowed(axis.coordinate or "rotary"), remedy=remedy)  # fmt: skip
         elif column.default is not None:
             _assume(axis, column.name, column.key, column.default, unit, column.assumed)
-            if (
-                column.key == "inclination" and column.default == 0.0
-            ):  # upright, as a winch has it, hides no load
+            if column.key == "inclination" and column.default == 0.0:  # upright, as of a winch, hides no load
                 problems.report(_TABLE, axis.rows.get(column.key), column.name, got="no value, taken as level",
                                 allowed="an angle: it decides the load of gravity",
                                 remedy="State 0 if the axis is level.", severity=WARNING)  # fmt: skip

@@ -199,7 +199,8 @@ def _stops_by_winding(
     ]
     chosen = np.concatenate(longest, axis=1)
     whole = np.broadcast_arrays(*given)
-    found = stop(*(np.take_along_axis(value, chosen, axis=1) for value in whole), delay_s, braking)
+    speed, inertia, load, friction = (np.take_along_axis(value, chosen, axis=1) for value in whole)
+    found = stop(speed, inertia, load, friction, delay_s, braking)
 
     def placed(all_: FloatArray, some: FloatArray) -> FloatArray:
         answer = np.where(np.isfinite(all_), 0.0, all_)
