@@ -5,7 +5,8 @@ from __future__ import annotations
 import numpy as np
 import pytest
 from case_files import small_case, write_folder
-from test_bad_input_cells import problems_of as all_problems_of, the_only
+from test_bad_input_cells import problems_of as all_problems_of
+from test_bad_input_cells import the_only
 
 from actuator_sizing.case.reading import check_case
 from actuator_sizing.case.starting import start_case
