@@ -46,7 +46,7 @@ def run_stop(axis: AxisPlant, settings: LoopSettings) -> Run:
     -------
     Run
         Stopping time and distance of the load from the command, the reaction time of the case included, gravity
-        and process included, losses of the transmission left out (they would help). [-]
+        and a process that drives included, losses of the transmission left out (they would help). [-]
     """
     import pandas as pd
 
@@ -82,7 +82,8 @@ def run_stop(axis: AxisPlant, settings: LoopSettings) -> Run:
         "stops from the instant of the largest speed, counted from the command"
         + (", stop reaction time not stated: taken as none" if math.isnan(reaction_s) else
            f", {reaction_s:.4g} s of reaction included in which the motor gives no torque")
-        + "; gravity and process act, losses of the transmission are left out; stopped: below 1 % of that speed",
+        + "; gravity acts, and process where it drives; losses of the transmission are left out; "
+        "stopped: below 1 % of that speed",
         f"{model}; resistance and inductance of the winding alone, no current limit",
     )  # fmt: skip
     series = pd.concat(
@@ -228,7 +229,10 @@ def _start(axis: AxisPlant) -> dict[str, Any]:
     demand, n = axis.model.demand, axis.ratio
     speed = n * demand.shaft_speed
     piece, node = np.unravel_index(int(np.abs(speed).argmax()), speed.shape)
-    load = -(demand.torque_by_cause["gravity"] + demand.torque_by_cause["process"])[piece, node] / n
+    process = float(demand.torque_by_cause["process"][piece, node])
+    if process * speed[piece, node] > 0.0:
+        process = 0.0  # it opposes the motion, which shortens a stop, and would turn round what is at rest
+    load = -(float(demand.torque_by_cause["gravity"][piece, node]) + process) / n
     position = demand.position[piece : piece + 1, node]
     return {
         "segment": int(demand.segment[piece]),

@@ -4,6 +4,7 @@ import dataclasses
 import json
 import math
 import warnings
+from pathlib import Path
 
 import numpy as np
 import pytest
@@ -18,6 +19,8 @@ from actuator_sizing.sizing.open_loop import ripple
 from actuator_sizing.sizing.simulation import simulate
 from actuator_sizing.sizing.simulation_request import find_set
 from tests.made_cases import GEARHEAD, MOTOR, case, cycle
+
+DEMO = Path(__file__).parents[2] / "catalogs_demo"
 
 SCREW = {"lead": 0.05, "moving mass": 20.0, "guide friction force": 30.0, "efficiency": 0.9}
 MOVE = cycle(
@@ -450,3 +453,13 @@ def test_a_cycle_too_long_for_a_comparison_is_not_checked():
     assert check.verdict == "not checked"
     assert "four million samples" in check.missing[0]
     assert comparison.dynamics is None
+
+
+def test_a_process_that_opposes_does_not_turn_the_axis_round_after_a_stop():
+    """The air of a fan brakes it and is gone at rest."""
+    found = simulate(read_case(DEMO / "fan"), input="stop")
+    for way in ("controlled", "shorted"):
+        left = found.quantities[f"{way}_stop_final_speed_rad_s"]
+        # stopped is below 1 % of the speed at the command
+        assert abs(left) <= 0.01 * found.quantities["stop_from_speed_rad_s"]
+        assert math.isfinite(found.quantities[f"{way}_stop_s"])
