@@ -67,8 +67,10 @@ def test_a_check_without_any_capacity_is_told_in_one_line(case, run):
     assert status == 1
     assert first.startswith("No set passes. The nearest is ")
     assert "governs, with no capacity left at all" in first
-    assert first.endswith("; the report shows the working.")
-    assert len(first) < 240
+    sentence, end, honesty = first.partition("; the report shows the working.")
+    assert end
+    assert len(sentence) < 220
+    assert "drive bus voltage range" in honesty  # what was switched off is said beside the verdict
 
 
 def test_compare_prints_the_verdict_first_and_writes_the_report(case, run, tmp_path):

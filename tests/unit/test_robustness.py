@@ -273,7 +273,8 @@ LIFT_PARTS = {"motor": "sine-80m-325f", "gearhead": "planet-60-3", "drive": "fee
 
 @pytest.fixture(scope="module")
 def burns_when_heavy():
-    return act.robust(lift(0.0182, 1.0), **LIFT_PARTS, samples=40, exact=40, sensitivity=0)
+    made = lift(0.0182, 1.0, **{"brake resistor": 100.0})  # no smaller than the chopper allows
+    return act.robust(made, **LIFT_PARTS, samples=40, exact=40, sensitivity=0)
 
 
 def test_a_check_that_applies_only_with_the_spread(burns_when_heavy):
