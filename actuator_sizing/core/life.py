@@ -78,7 +78,7 @@ def rating_life(rating: FloatArray, load: FloatArray, exponent: FloatArray | flo
 
     Notes
     -----
-    ISO 281 for bearings, ISO 3408-5 clause 7.2 for ball screws.
+    ISO 281 for bearings, ISO 3408-5 for ball screws, both in the form that public texts give.
 
     Examples
     --------

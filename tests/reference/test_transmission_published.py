@@ -178,7 +178,7 @@ def test_belt_conveyor():
 
 @pytest.mark.published("A9.3")
 def test_equivalent_load_of_a_ball_screw():
-    """ISO 3408-5:2006 clause 7.1 [I: clauses seen, formula in public texts]: 4, 1.5, 0.5 kN at 20, 50, 30 %.
+    """ISO 3408-5:2006 [I: scope seen, formula in public texts]: 4, 1.5, 0.5 kN at 20, 50, 30 %.
 
     The screw is driven by a torque in proportion to the force, so that the equivalent torque over the lead is
     the equivalent force; weights are revolutions.
@@ -194,7 +194,7 @@ def test_equivalent_load_of_a_ball_screw():
     force = demand.shaft_torque_equivalent * math.tau / lead
     assert demand.shaft_speed_mean / RPM == pytest.approx(1140.0, rel=1e-12)
     assert force == pytest.approx(1559.35, abs=5e-3)
-    assert (20e3 / force) ** 3 == pytest.approx(2109.89, abs=5e-3)  # clause 7.2, million revolutions
+    assert (20e3 / force) ** 3 == pytest.approx(2109.89, abs=5e-3)  # million revolutions
 
 
 @pytest.mark.published("A9.4")

@@ -207,8 +207,7 @@ SCREW_LIFE = Check(
     unit="s",
     formula="required life ≤ 10⁶ (C_a/F_m)³ turns / mean speed, F_m = (∫ |ω| |F|³ dt / ∫ |ω| dt)^(1/3); with preload "
     "both halves of the nut, L = (L_1^(−10/9) + L_2^(−10/9))^(−9/10)",
-    source="ISO 3408-5, clauses 7.1 and 7.2 (form known from public texts; preload from memory); life that nine of "
-    "ten reach",
+    source="Form of ISO 3408-5 as public texts give it; preload from memory; life that nine of ten reach",
     needs=(
         Need("axis", "required life", "required life"),
         Need("axis", "screw dynamic load rating", "screw dynamic load rating"),
