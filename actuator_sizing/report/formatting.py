@@ -168,7 +168,7 @@ _DISPLAY: dict[str, tuple[str, tuple[tuple[str, float], ...]]] = {
     "m": ("length", (("m", 10.0), ("mm", 0.0))),
     "kg·m²": ("inertia", (("kg·m²", 1.0), ("kg·cm²", 1e-6), ("g·cm²", 0.0))),
     "kg": ("mass", (("kg", 1.0), ("g", 0.0))),
-    "s": ("time", (("min", 600.0), ("s", 1.0), ("ms", 0.0))),
+    "s": ("time", (("h", 36000.0), ("min", 600.0), ("s", 1.0), ("ms", 0.0))),
     "H": ("inductance", (("mH", 0.0),)),
     "F": ("capacitance", (("mF", 1e-3), ("µF", 0.0))),
     "Ω": ("resistance", (("Ω", 0.1), ("mΩ", 0.0))),
