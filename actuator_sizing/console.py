@@ -175,9 +175,8 @@ def rejection_lines(comparison: Comparison) -> list[str]:
         f"{at_least}{_grouped(counts.confirmed_passing)} pass",
         f"{_grouped(counts.rejected)} rejected",
     ]
-    undecided = counts.screened - counts.rejected - counts.confirmed_passing
-    if counts.complete and undecided > 0:
-        parts.append(f"{_grouped(undecided)} not checked")
+    if counts.not_checked:
+        parts.append(f"{_grouped(counts.not_checked)} not checked")
     if counts.incompatible:
         parts.append(f"{_grouped(counts.incompatible)} incompatible")
     if not counts.complete:

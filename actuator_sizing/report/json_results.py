@@ -67,6 +67,7 @@ def results_dict(comparison: Comparison) -> dict[str, Any]:
             "survivors": int(counts.survivors),
             "confirmed_passing": int(counts.confirmed_passing),
             "evaluated": int(counts.evaluated),
+            "not_checked": int(counts.not_checked),
             "complete": bool(counts.complete),
         },
         **_decisions(comparison),

@@ -245,6 +245,11 @@ class Rejections:
     complete: bool  # every survivor was evaluated exactly
     misfits: Mapping[str, int] = field(default_factory=dict)  # why sets are incompatible -> number of sets
 
+    @property
+    def not_checked(self) -> int:
+        """Evaluated sets that neither pass nor fail, since a check that binds lacks its data."""
+        return self.evaluated - self.confirmed_passing - (self.rejected + self.survivors - self.screened)
+
 
 @dataclass(frozen=True)
 class CycleResult:

@@ -434,7 +434,7 @@ def build_comparison() -> Comparison:
         demand=None,  # type: ignore[arg-type]
         ranked_by="price",
         sets=ranked,
-        rejections=Rejections(len(ranked) + 10, 10, len(ranked), len(losers), counts, passing, passing,
+        rejections=Rejections(len(ranked) + 10, 10, len(ranked), len(losers), counts, len(ranked), passing,
                               len(ranked), True),
         candidates=candidates,
         cycle={

@@ -88,6 +88,8 @@ def _counts_text(comparison: Comparison) -> str:
         f"{plural(counts.rejected, 'set')} were rejected. {plural(counts.evaluated, 'set')} were "
         f"examined exactly; {plural(counts.confirmed_passing, 'set')} pass."
     )
+    if counts.not_checked:
+        text += f" {plural(counts.not_checked, 'set')} neither pass nor fail, for a check lacks its data."
     if not counts.complete:
         text += (
             f" Not all of the {plural(counts.survivors, 'set')} that might pass were examined exactly: a "
