@@ -75,9 +75,5 @@ class OutputError(ActuatorSizingError, OSError):
     """A result could not be written; what was there before is untouched."""
 
 
-class ConvergenceError(ActuatorSizingError, RuntimeError):
-    """An iteration did not settle; the message says how far it still moves."""
-
-
 class StoppedError(ActuatorSizingError):
     """The user has stopped the work; the message says what is kept and how to go on."""

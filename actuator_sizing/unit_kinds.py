@@ -13,7 +13,6 @@ INCH_M = 0.0254  # international inch, exact by definition (1959)
 GRAVITY_M_S2 = 9.80665  # standard acceleration of gravity, CGPM 1901, exact by definition
 
 Dimension = tuple[float, ...]  # exponents of kg, m, s, A, K, rad
-BASE_NAMES = ("mass", "length", "time", "current", "temperature", "angle")
 
 
 def _dim(kg: float = 0, m: float = 0, s: float = 0, A: float = 0, K: float = 0, rad: float = 0) -> Dimension:

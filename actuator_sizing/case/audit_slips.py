@@ -22,7 +22,6 @@ POUND_INCH = (8.8507, "×8.85: lb·in and N·m mixed up")
 OUNCE_INCH = (141.61, "×141.6: oz·in and N·m mixed up")
 POUND_MASS = (32.174, "×32.2: lb·ft² and lb·ft·s² mixed up")
 INCH_MASS = (386.09, "×386: lb·in² and lb·in·s² mixed up")
-MINUTES = (60.0, "×60: seconds and minutes mixed up")
 
 Slip = tuple[float, str]
 

@@ -13,7 +13,6 @@ from actuator_sizing.case.raw_tables import RawTable
 from actuator_sizing.case.tables import CATALOG_TABLES, TABLES
 from actuator_sizing.errors import ERROR, WARNING, InputError, Problem
 
-WORKBOOK_ENDINGS = (".xlsx", ".xlsm")
 CSV_ENDINGS = (".csv", ".tsv")
 CATALOG_WORKBOOK = "catalog.xlsx"
 

@@ -67,7 +67,7 @@ def shorted_stops(sets: Sets) -> StopResults:
     Returns
     -------
     StopResults
-        Shape (S,); the current is the quasi-steady one. [-]
+        Shape (S,); the current is its first peak. [-]
     """
     return _stops(sets, sets.once(stop_instants), np.zeros(len(sets)), None)
 

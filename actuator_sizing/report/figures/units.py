@@ -9,7 +9,6 @@ from typing import Any
 from actuator_sizing.report.formatting import DisplayUnit, display_unit
 
 _MANY_TURNS = 20  # beyond which an angle is counted in turns
-DIRECTIONS = "positive along +x of the axis"
 
 
 @dataclass(frozen=True)
